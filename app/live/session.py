@@ -1,0 +1,85 @@
+"""The open drawing and its history: every change is one undo command that holds before and after."""
+
+from collections.abc import Callable
+
+from PySide6.QtCore import QObject, Signal
+from PySide6.QtGui import QUndoCommand, QUndoStack
+
+from app.model.drawing import Drawing
+from app.model.edits import Change, EditRefused, diff
+
+GESTURE_COMMAND = 1
+
+
+class Session(QObject):
+    """Owns the drawing. `edit` is the only door through which it changes."""
+
+    changed = Signal(object)  # Change
+    refused = Signal(str)
+    replaced = Signal()  # another drawing was opened
+
+    def __init__(self, drawing: Drawing | None = None, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._drawing = drawing or Drawing()
+        self.revision = 0
+        self.history = QUndoStack(self)
+        self._gestures = 0
+
+    @property
+    def drawing(self) -> Drawing:
+        """The drawing as it stands."""
+        return self._drawing
+
+    def open(self, drawing: Drawing) -> None:
+        """Put another drawing in place; its history starts empty."""
+        self.history.clear()
+        self._drawing = drawing
+        self.revision += 1
+        self.replaced.emit()
+
+    def new_gesture(self) -> int:
+        """A token; edits that carry the same one become one undo step."""
+        self._gestures += 1
+        return self._gestures
+
+    def edit(self, text: str, change: Callable[[Drawing], Drawing], gesture: int = 0) -> bool:
+        """Apply a pure edit. A refusal is told through `refused` and leaves all as it was."""
+        before = self._drawing
+        try:
+            after = change(before)
+        except EditRefused as refusal:
+            self.refused.emit(str(refusal))
+            return False
+        if after == before:
+            return True
+        self.history.push(_Edit(self, before, after, text, gesture))
+        return True
+
+    def _put(self, drawing: Drawing) -> None:
+        change: Change = diff(self._drawing, drawing)
+        self._drawing = drawing
+        self.revision += 1
+        self.changed.emit(change)
+
+
+class _Edit(QUndoCommand):
+    def __init__(self, session: Session, before: Drawing, after: Drawing, text: str, gesture: int) -> None:
+        super().__init__(text)
+        self._session, self._before, self._after, self._gesture = session, before, after, gesture
+
+    def redo(self) -> None:
+        self._session._put(self._after)
+
+    def undo(self) -> None:
+        self._session._put(self._before)
+
+    def id(self) -> int:
+        return GESTURE_COMMAND if self._gesture else -1
+
+    def mergeWith(self, other: QUndoCommand) -> bool:
+        if not isinstance(other, _Edit) or other._gesture != self._gesture:
+            return False
+        self._after = other._after
+        self.setText(other.text())
+        self.setObsolete(self._after == self._before)
+        return True

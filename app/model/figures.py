@@ -1,0 +1,66 @@
+"""How a figure is written for people: rounding as the trade prints it, always with its unit.
+
+Judging is done on unrounded figures; these functions only write them down.
+"""
+
+import math
+
+MINUS = "\N{MINUS SIGN}"
+THIN = "\N{NARROW NO-BREAK SPACE}"
+
+
+def plain(value: float, digits: int, unit: str = "", *, sign: bool = False) -> str:
+    """A number with a true minus, thousands set apart, and its unit; `–` where there is none."""
+    if math.isnan(value):
+        return "–"
+    if math.isinf(value):
+        return f"{'' if value > 0 else MINUS}∞{' ' + unit if unit else ''}"
+    shown = f"{abs(value):,.{digits}f}".replace(",", THIN)
+    nought = float(f"{abs(value):.{digits}f}") == 0.0
+    mark = MINUS if value < 0 and not nought else "+" if sign and not nought else ""
+    return f"{mark}{shown} {unit}" if unit else f"{mark}{shown}"
+
+
+def volts(value: float) -> str:
+    """Under 1 kV to 0.1 V, above to 0.01 kV: 388.0 V, 10.73 kV."""
+    return plain(value, 1, "V") if not abs(value) >= 999.95 else plain(value / 1e3, 2, "kV")
+
+
+def nameplate(value: float) -> str:
+    """A rated or nameplate voltage: 400 V, 10 725 V."""
+    return plain(value, 0 if float(value).is_integer() else 1, "V")
+
+
+def amps(value: float) -> str:
+    """0.1 A under 100 A, else whole."""
+    return plain(value, 1 if not abs(value) >= 99.95 else 0, "A")
+
+
+def power(value_kw: float, unit: str = "kW") -> str:
+    """A flow: 88.6 kW, 4.93 kW, 1 240 kW."""
+    size = abs(value_kw)
+    return plain(value_kw, 0 if size >= 999.5 else 1 if size >= 9.995 else 2, unit)
+
+
+def loss(value_kw: float, *, sign: bool = False) -> str:
+    """A loss to 0.01 kW, under 0.1 kW in whole watts: 1.64 kW, 68 W."""
+    if abs(value_kw) < 0.0995:
+        return plain(value_kw * 1e3, 0, "W", sign=sign)
+    return plain(value_kw, 2, "kW", sign=sign)
+
+
+def percent(value: float, digits: int = 1, *, sign: bool = False) -> str:
+    """97.0 %."""
+    return plain(value, digits, "%", sign=sign)
+
+
+def length(value_m: float) -> str:
+    """1.15 km, 320 m."""
+    if abs(value_m) >= 1000:
+        return f"{round(value_m / 1e3, 3):g}".replace("-", MINUS) + " km"
+    return f"{round(value_m, 1):g} m"
+
+
+def typed(value: float) -> str:
+    """A number as a person would type it, exact to the last bit: 0.125, 11000."""
+    return str(int(value)) if float(value).is_integer() and abs(value) < 1e15 else repr(float(value))

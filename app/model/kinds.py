@@ -1,0 +1,215 @@
+"""The kinds of element a drawing can hold; every quantity carries its unit in its name."""
+
+from typing import Annotated, Any, Literal
+
+from msgspec import Struct
+from msgspec import field as held
+
+from app.model.fields import field, plain, text
+
+Point = tuple[float, float]
+
+
+class Element(Struct, frozen=True, kw_only=True, tag_field="kind"):
+    """What all kinds share. `part` names the part it was made from; `kept` holds file keys we do not know."""
+
+    name: Annotated[str, text("Name", longest=80)] = ""
+    note: Annotated[str, text("Note", longest=400)] = ""
+    part: str = ""
+    kept: dict[str, Any] = held(default_factory=dict)
+
+
+class Node(Element, frozen=True, kw_only=True):
+    """A point where branches and attachments meet. x and y are in steps of the drawing grid."""
+
+    x: float = 0.0
+    y: float = 0.0
+    nominal_v: (
+        Annotated[
+            float,
+            field(
+                "Nominal voltage", "V", gt=0, le=500e3, help="Blank: follows from the supply or transformer."
+            ),
+        ]
+        | None
+    ) = None
+
+
+class Joint(Node, frozen=True, kw_only=True, tag="joint"):
+    """A bare node: where two branches join, or a branch ends."""
+
+
+class Busbar(Node, frozen=True, kw_only=True, tag="busbar"):
+    """A node drawn as a bar, centred on x, y."""
+
+    length: float = 5.0
+    upright: bool = True
+
+
+class Branch(Element, frozen=True, kw_only=True):
+    """Anything that runs from one node to another; `via` are its bends, in grid steps."""
+
+    start: str
+    end: str
+    via: tuple[Point, ...] = ()
+
+
+class Line(Branch, frozen=True, kw_only=True):
+    """A cable or overhead line from its own data per kilometre."""
+
+    type: Annotated[str, text("Type", help="Such as 4×240 Al; a label for the schedule.")] = ""
+    length_m: Annotated[float, field("Length", "m", ge=0, le=1e6)] = 100.0
+    parallel: Annotated[int, field("In parallel", "runs", ge=1, le=50)] = 1
+    conductor: Annotated[
+        Literal["Al", "Cu"], plain("Conductor", help="Sets how resistance grows when hot.")
+    ] = "Al"
+    area_mm2: Annotated[float, field("Cross-section", "mm²", gt=0, le=5000)] | None = None
+    r20_ohm_per_km: Annotated[
+        float, field("Resistance at 20 °C", "Ω/km", ge=0, le=1000, help="Of one conductor of one run.")
+    ] = 0.125
+    x_ohm_per_km: Annotated[float, field("Reactance", "Ω/km", ge=0, le=1000)] = 0.072
+    c_uf_per_km: Annotated[float, field("Capacitance", "µF/km", ge=0, le=100)] | None = None
+    temperature_degc: (
+        Annotated[
+            float, field("Conductor at", "°C", ge=-60, le=250, help="Operating temperature of the conductor.")
+        ]
+        | None
+    ) = None
+    rating_a: (
+        Annotated[float, field("Rating", "A", gt=0, le=1e6, help="As installed, of one run.")] | None
+    ) = None
+
+
+class Cable(Line, frozen=True, kw_only=True, tag="cable"):
+    """A cable between two nodes."""
+
+
+class OverheadLine(Line, frozen=True, kw_only=True, tag="overhead_line"):
+    """An overhead line between two nodes."""
+
+
+class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
+    """A two-winding transformer; winding 1 is at `start`, winding 2 at `end`."""
+
+    rating_kva: Annotated[float, field("Rating", "kVA", gt=0, le=1e6)] = 100.0
+    v1_v: Annotated[float, field("Winding 1", "V", gt=0, le=500e3, help="Rated no-load voltage.")] = 11000.0
+    v2_v: Annotated[float, field("Winding 2", "V", gt=0, le=500e3, help="Rated no-load voltage.")] = 400.0
+    vector_group: Annotated[
+        str, text("Vector group", longest=8, help="Such as Dyn11; Ii0 for single-phase.")
+    ] = "Dyn11"
+    uk_percent: Annotated[
+        float, field("Impedance uk", "%", ge=0, le=40, help="Short-circuit voltage at rated current.")
+    ] = 4.0
+    load_loss_w: Annotated[float, field("Load loss Pk", "W", ge=0, le=1e7)] | None = None
+    no_load_loss_w: Annotated[float, field("No-load loss P0", "W", ge=0, le=1e7)] | None = None
+    no_load_current_percent: Annotated[float, field("No-load current i0", "%", ge=0, le=50)] | None = None
+    parallel: Annotated[int, field("In parallel", "units", ge=1, le=20)] = 1
+    tapped: Annotated[Literal["winding 1", "winding 2"], plain("Taps on")] = "winding 1"
+    tap_step_percent: Annotated[float, field("Tap step", "%", gt=0, le=20)] = 2.5
+    taps_up: Annotated[int, field("Taps above", "notches", ge=0, le=40)] = 2
+    taps_down: Annotated[int, field("Taps below", "notches", ge=0, le=40)] = 2
+    tap: Annotated[
+        int,
+        field("Tap", "notch", ge=-40, le=40, help="Notches above (+) or below (−) the nameplate voltage."),
+    ] = 0
+
+
+class Switch(Branch, frozen=True, kw_only=True, tag="switch"):
+    """A switch; open, it parts the layout."""
+
+    closed: Annotated[bool, plain("Closed")] = True
+    rating_a: Annotated[float, field("Rating", "A", gt=0, le=1e6)] | None = None
+
+
+class Attachment(Element, frozen=True, kw_only=True):
+    """Anything that hangs on one node; dx, dy say where it is drawn from the node, in grid steps."""
+
+    node: str
+    dx: float = 0.0
+    dy: float = 3.0
+
+
+class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
+    """Where power comes in; its voltage is held."""
+
+    nominal_v: Annotated[float, field("Nominal voltage", "V", gt=0, le=500e3)] = 400.0
+    held_percent: Annotated[
+        float, field("Held at", "% of nominal", gt=0, le=200, help="Voltage at the supply point.")
+    ] = 100.0
+    angle_deg: Annotated[float, field("Angle", "°", ge=-360, le=360)] = 0.0
+    wires: Annotated[
+        Literal["three-phase", "two-wire"],
+        plain("System", help="Two-wire: one circuit out and back, single-phase or two phases."),
+    ] = "three-phase"
+
+
+class Load(Attachment, frozen=True, kw_only=True, tag="load"):
+    """A demand. Exactly one of demand_kva and demand_kw is given."""
+
+    demand_kva: Annotated[float, field("Demand", "kVA", ge=0, le=1e6)] | None = 10.0
+    demand_kw: Annotated[float, field("Demand", "kW", ge=0, le=1e6)] | None = None
+    power_factor: Annotated[float, field("Power factor", "", ge=0, le=1)] = 0.95
+    leading: Annotated[bool, plain("Leading", help="Current ahead of voltage.")] = False
+    constant_current_percent: Annotated[float, field("Constant current", "%", ge=0, le=100)] | None = None
+    constant_impedance_percent: (
+        Annotated[
+            float, field("Constant impedance", "%", ge=0, le=100, help="What is left over is constant power.")
+        ]
+        | None
+    ) = None
+    reference_v: (
+        Annotated[float, field("Stated at", "V", gt=0, le=500e3, help="Voltage the demand is stated at.")]
+        | None
+    ) = None
+
+
+class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
+    """Fixed infeed: PV, hydro or a set running at fixed power."""
+
+    output_kw: Annotated[float, field("Output", "kW", ge=0, le=1e6)] = 10.0
+    output_kvar: Annotated[
+        float, field("Reactive output", "kvar", ge=-1e6, le=1e6, help="Positive feeds in, negative absorbs.")
+    ] = 0.0
+
+
+class Capacitor(Attachment, frozen=True, kw_only=True, tag="capacitor"):
+    """A shunt capacitor; its kvar go with the square of the voltage."""
+
+    rating_kvar: Annotated[float, field("Rating", "kvar", ge=0, le=1e6)] = 10.0
+    rated_v: Annotated[float, field("Rated voltage", "V", gt=0, le=500e3)] | None = None
+    connected: Annotated[bool, plain("Connected")] = True
+
+
+AnyElement = (
+    Joint | Busbar | Cable | OverheadLine | Transformer | Switch | Supply | Load | Generator | Capacitor
+)
+KINDS: dict[str, type[Element]] = {
+    "supply": Supply,
+    "busbar": Busbar,
+    "joint": Joint,
+    "cable": Cable,
+    "overhead_line": OverheadLine,
+    "transformer": Transformer,
+    "switch": Switch,
+    "load": Load,
+    "generator": Generator,
+    "capacitor": Capacitor,
+}
+KIND_WORDS = {k: k.replace("_", " ") for k in KINDS}
+LETTERS = {
+    "supply": "S",
+    "busbar": "B",
+    "joint": "J",
+    "cable": "C",
+    "overhead_line": "O",
+    "transformer": "T",
+    "switch": "W",
+    "load": "L",
+    "generator": "G",
+    "capacitor": "K",
+}
+
+
+def kind_of(element: Element) -> str:
+    """The kind's word as it stands in the file."""
+    return str(element.__struct_config__.tag)

@@ -1,0 +1,1 @@
+"""Drawing to solver rows to results by id. Knows no Qt."""

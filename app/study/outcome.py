@@ -1,0 +1,162 @@
+"""What a study answers: tables keyed by id, findings, assumptions, balance. Frozen, unrounded."""
+
+from dataclasses import dataclass
+from enum import Enum
+from typing import Any, Generic, TypeVar
+
+import numpy as np
+from numpy.typing import NDArray
+
+from solver.status import Status
+
+State = TypeVar("State")
+
+
+@dataclass(frozen=True, slots=True)
+class NodeState:
+    """One node in one case. Volts are between lines (three-phase) or between the two wires."""
+
+    live: bool
+    nominal_v: float
+    voltage_v: float
+    percent: float
+    angle_deg: float
+    drop_percent: float  # of nominal, below the supply of its tree (percent of supply minus percent here)
+    route_m: float  # route length from the supply
+
+
+@dataclass(frozen=True, slots=True)
+class BranchState:
+    """One branch in one case. Powers are those that enter at `start` and leave at `end`, so a branch
+    fed from its end carries negative power. `forward`: fed from its start."""
+
+    live: bool
+    forward: bool
+    current_a: float  # worst of both ends; of all parallel runs together; winding fed side for a transformer
+    start_a: float
+    end_a: float
+    start_kw: float
+    start_kvar: float
+    end_kw: float
+    end_kvar: float
+    loss_kw: float
+    copper_kw: float  # series loss of line or winding
+    iron_kw: float  # no-load loss of a transformer
+    loss_kvar: float
+    loading_percent: float  # nan where no rating is given
+    drop_percent: float  # voltage lost along it, % of nominal of each end; negative is a rise
+    resistance_ohm: float  # at operating temperature, parallel runs merged; transformer: seen at winding 2
+    reactance_ohm: float
+
+
+@dataclass(frozen=True, slots=True)
+class AttachmentState:
+    """One attachment in one case. Power is drawn by loads (positive) and fed in by supplies,
+    generators and capacitors (positive)."""
+
+    live: bool
+    kw: float
+    kvar: float
+    current_a: float
+    voltage_v: float
+
+
+@dataclass(frozen=True)
+class Table(Generic[State]):
+    """Rows by id, one array a column: (row,) or (row, case)."""
+
+    state: type[State]
+    ids: tuple[str, ...]
+    columns: dict[str, NDArray[Any]]
+    rows: dict[str, int]
+
+    def __contains__(self, id: object) -> bool:
+        return id in self.rows
+
+    def at(self, id: str, case: int = 0) -> State:
+        """The figures of one element in one case."""
+        row = self.rows[id]
+        return self.state(
+            **{
+                name: (column[row] if column.ndim == 1 else column[row, case]).item()
+                for name, column in self.columns.items()
+            }
+        )
+
+    def column(self, name: str) -> NDArray[Any]:
+        """One column, shape (row,) or (row, case)."""
+        return self.columns[name]
+
+
+@dataclass(frozen=True, slots=True)
+class Balance:
+    """Where the power of all supplies goes, one entry a case. supply + generation = load + loss."""
+
+    supply_kw: NDArray[np.float64]
+    supply_kvar: NDArray[np.float64]
+    generation_kw: NDArray[np.float64]
+    load_kw: NDArray[np.float64]
+    load_kvar: NDArray[np.float64]
+    line_kw: NDArray[np.float64]
+    copper_kw: NDArray[np.float64]
+    iron_kw: NDArray[np.float64]
+    loss_kw: NDArray[np.float64]
+    closure: NDArray[np.float64]  # |supply + generation - load - loss| / supply, complex power
+
+
+class Verdict(Enum):
+    """How a finding judges; differs on screen by shape as well as colour."""
+
+    HOLDS = "holds"
+    NEAR = "near the limit"
+    FAILS = "fails"
+    BLOCKS = "not solved"
+    NOTE = "note"
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One judged check. `margin` is signed: negative fails. Structural findings carry only the sentence."""
+
+    check: str  # such as "voltage low", "loading", "closed loop"
+    verdict: Verdict
+    ids: tuple[str, ...]
+    sentence: str
+    value: float | None = None
+    limit: float | None = None
+    margin: float | None = None
+    unit: str = ""
+    whose: str = ""  # whose limit it is
+    case: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Assumption:
+    """A value that was not given and what was put in its place."""
+
+    id: str
+    field: str
+    value: float
+    unit: str
+    basis: str
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """Everything one solve of a drawing yields. Where status is not SOLVED the tables still list every
+    element, but no figures: dead rows, with nan."""
+
+    status: Status
+    sentence: str
+    cases: tuple[str, ...]
+    nodes: Table[NodeState]
+    branches: Table[BranchState]
+    attachments: Table[AttachmentState]
+    balance: Balance
+    findings: tuple[Finding, ...]
+    assumptions: tuple[Assumption, ...]
+    upstream: dict[str, str]  # node id -> branch id that feeds it
+    zones: dict[str, int]  # node id -> number of its voltage zone (parted by transformers)
+    largest_share: float | None  # of the load that still solves, where there is no operating point
+    to_blame: str | None  # the branch that sets it
+    seconds: dict[str, float]  # timings by stage
