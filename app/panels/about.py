@@ -1,0 +1,74 @@
+"""The about box with its cautions, and the list of keys."""
+
+from importlib.metadata import version
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import (
+    QDialog,
+    QDialogButtonBox,
+    QGridLayout,
+    QLabel,
+    QScrollArea,
+    QVBoxLayout,
+    QWidget,
+)
+
+from app.canvas.view import SHORTCUTS
+from app.study.cautions import CAUTIONS
+
+
+def _plain(text: str, name: str = "") -> QLabel:
+    label = QLabel(text)
+    label.setTextFormat(Qt.TextFormat.PlainText)
+    label.setWordWrap(True)
+    label.setObjectName(name)
+    return label
+
+
+class About(QDialog):
+    """What this is, which version, and what it does not decide."""
+
+    def __init__(self, parent: QWidget) -> None:
+        super().__init__(parent)
+        self.setWindowTitle("About Farend")
+        self.setMinimumWidth(460)
+        down = QVBoxLayout(self)
+        down.setContentsMargins(28, 24, 28, 20)
+        down.setSpacing(10)
+        down.addWidget(_plain("Farend", "title"))
+        down.addWidget(_plain(f"Version {version('farend')} · MIT licence", "soft"))
+        down.addWidget(
+            _plain("A drawing board for small electricity distribution layouts, solved as you touch it.")
+        )
+        for caution in CAUTIONS:
+            down.addWidget(_plain(f"–  {caution}"))
+        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
+        buttons.rejected.connect(self.reject)
+        down.addWidget(buttons)
+
+
+class Keys(QDialog):
+    """Every key and gesture of the board."""
+
+    def __init__(self, parent: QWidget) -> None:
+        super().__init__(parent)
+        self.setWindowTitle("Keys")
+        self.resize(560, 560)
+        grid = QGridLayout()
+        grid.setColumnStretch(1, 1)
+        grid.setHorizontalSpacing(24)
+        for row, (keys, what) in enumerate(SHORTCUTS):
+            name = _plain(keys, "strong")
+            name.setWordWrap(False)
+            grid.addWidget(name, row, 0, Qt.AlignmentFlag.AlignTop)
+            grid.addWidget(_plain(what), row, 1)
+        inside = QWidget()
+        inside.setLayout(grid)
+        scroll = QScrollArea()
+        scroll.setWidgetResizable(True)
+        scroll.setWidget(inside)
+        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
+        buttons.rejected.connect(self.reject)
+        down = QVBoxLayout(self)
+        down.addWidget(scroll)
+        down.addWidget(buttons)

@@ -1,0 +1,146 @@
+"""The window: puts board, panels and services together. Wiring only."""
+
+import sys
+from pathlib import Path
+
+from PySide6.QtCore import QByteArray, QPointF, QSize, Qt, QTimer
+from PySide6.QtGui import QCloseEvent
+from PySide6.QtWidgets import (
+    QApplication,
+    QHBoxLayout,
+    QMainWindow,
+    QSplitter,
+    QToolTip,
+    QVBoxLayout,
+    QWidget,
+)
+
+from app.canvas.board import Board
+from app.canvas.theme import Theme
+from app.canvas.view import BoardView
+from app.live.attention import Attention
+from app.live.document import Document
+from app.live.preferences import Preferences
+from app.live.session import Session
+from app.live.solving import Solving
+from app.panels.card import Card
+from app.panels.findings import FindingsBar
+from app.panels.head import Head
+from app.panels.menus import Menus
+from app.panels.shelf import Shelf
+from app.panels.strip import VoltageStrip
+from app.panels.style import sheet
+from app.panels.tape import LossTape
+
+REFUSAL_SHOWN_MS = 6000
+
+
+class Window(QMainWindow):
+    """One open drawing."""
+
+    def __init__(self, preferences: Preferences | None = None) -> None:
+        super().__init__()
+        self.preferences = preferences or Preferences()
+        self.session = Session(parent=self)
+        self.document = Document(self.session, parent=self)
+        self.solving = Solving(self.session, parent=self)
+        self.attention = Attention(self)
+        self.theme = Theme(self)
+        self.theme.wear(self.preferences.theme, self.preferences.symbols)
+        self._make_parts()
+        self._lay_out()
+        self._wire()
+        self._dress()
+        self._mark()
+
+    def _make_parts(self) -> None:
+        shared = (self.session, self.solving, self.attention, self.theme)
+        self.board = Board(*shared)
+        self.view = BoardView(self.board, self.session, self.attention, self.theme)
+        self.shelf = Shelf(self.session, self.theme, self.preferences)
+        self.card = Card(*shared)
+        self.strip = VoltageStrip(*shared)
+        self.tape = LossTape(*shared)
+        self.findings = FindingsBar(*shared)
+        self.head = Head(*shared)
+        self.menus = Menus(self)
+
+    def _lay_out(self) -> None:
+        self.middle = QSplitter(Qt.Orientation.Vertical)
+        self.middle.addWidget(self.view)
+        self.middle.addWidget(self.strip)
+        self.middle.setStretchFactor(0, 3)
+        self.middle.setStretchFactor(1, 1)
+        across = QHBoxLayout()
+        for part, stretch in ((self.shelf, 0), (self.middle, 1), (self.card, 0)):
+            across.addWidget(part, stretch)
+        down = QVBoxLayout()
+        down.addWidget(self.head)
+        down.addLayout(across, 1)
+        down.addWidget(self.tape)
+        down.addWidget(self.findings)
+        for layout in (across, down):
+            layout.setSpacing(0)
+            layout.setContentsMargins(0, 0, 0, 0)
+        whole = QWidget()
+        whole.setObjectName("whole")
+        whole.setLayout(down)
+        self.setCentralWidget(whole)
+        self.setMinimumSize(QSize(760, 520))
+        self.resize(1440, 900)
+        if self.preferences.geometry:
+            self.restoreGeometry(QByteArray(self.preferences.geometry))
+
+    def _wire(self) -> None:
+        self.shelf.picked.connect(self.view.place)
+        self.view.placing_ended.connect(self.shelf.rest)
+        self.view.refused.connect(self.tell_refusal)
+        self.session.refused.connect(lambda sentence: self.tell_refusal(sentence, None))
+        self.session.history.cleanChanged.connect(lambda _clean: self._mark())
+        self.session.replaced.connect(self._opened)
+        self.document.saved.connect(self._mark)
+        self.theme.changed.connect(self._dress)
+
+    def _dress(self) -> None:
+        self.setStyleSheet(sheet(self.theme.palette))
+
+    def _mark(self) -> None:
+        path = self.document.path
+        self.setWindowTitle(f"{path.name if path else 'New drawing'}[*] – Farend")
+        self.setWindowModified(self.document.modified)
+
+    def _opened(self) -> None:
+        self.attention.select(())
+        self._mark()
+        QTimer.singleShot(0, self.view.fit)
+
+    def tell_refusal(self, sentence: str, at: QPointF | None) -> None:
+        """Show why an edit was refused, where the hand is."""
+        where = (
+            self.view.mapToGlobal(self.view.mapFromScene(at)) if at is not None else self.view.cursor().pos()
+        )
+        QToolTip.showText(where, sentence, self.view, self.view.rect(), REFUSAL_SHOWN_MS)
+        self.findings.tell(sentence)
+
+    def closeEvent(self, event: QCloseEvent) -> None:
+        if not self.menus.may_leave():
+            event.ignore()
+            return
+        self.preferences.geometry = bytes(self.saveGeometry().data())
+        self.solving.stop()
+        self.document.close()
+        event.accept()
+
+
+def open_window(path: Path | None = None) -> int:
+    """Open the window, on a file where one is given; returns the exit code."""
+    app = QApplication.instance() or QApplication(sys.argv[:1])
+    assert isinstance(app, QApplication)
+    app.setApplicationName("Farend")
+    window = Window()
+    window.show()
+    if path is not None:
+        window.menus.open_path(path)
+    else:
+        window.menus.offer_recovery()
+    return app.exec()
