@@ -2,7 +2,7 @@
 
 from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 from PySide6.QtCore import QObject
 from PySide6.QtGui import QAction, QActionGroup, QKeySequence
@@ -18,7 +18,7 @@ Do = Callable[[], Any]
 
 
 class Menus(QObject):
-    """Built once for a window; `window` offers session, document, solving, view, theme, preferences, shelf."""
+    """Built once for a window, which offers its session, document, solving, view, theme and shelf."""
 
     def __init__(self, window: Any) -> None:
         super().__init__(window)
