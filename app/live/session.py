@@ -32,9 +32,9 @@ class Session(QObject):
 
     def open(self, drawing: Drawing) -> None:
         """Put another drawing in place; its history starts empty."""
-        self.history.clear()
         self._drawing = drawing
         self.revision += 1
+        self.history.clear()
         self.replaced.emit()
 
     def new_gesture(self) -> int:
@@ -43,7 +43,10 @@ class Session(QObject):
         return self._gestures
 
     def edit(self, text: str, change: Callable[[Drawing], Drawing], gesture: int = 0) -> bool:
-        """Apply a pure edit. A refusal is told through `refused` and leaves all as it was."""
+        """Apply a pure edit. A refusal is told through `refused` and leaves all as it was.
+
+        The edit runs before anything is pushed: an error inside `redo` would stay on the stack.
+        """
         before = self._drawing
         try:
             after = change(before)
@@ -77,6 +80,7 @@ class _Edit(QUndoCommand):
         return GESTURE_COMMAND if self._gesture else -1
 
     def mergeWith(self, other: QUndoCommand) -> bool:
+        """Join the edits of one gesture; Qt asks only where no save lies between them."""
         if not isinstance(other, _Edit) or other._gesture != self._gesture:
             return False
         self._after = other._after

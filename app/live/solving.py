@@ -1,9 +1,36 @@
 """The live solution: one solve per turn of the event loop, in a worker where a solve outlasts a frame."""
 
-from PySide6.QtCore import QObject, Signal
+from __future__ import annotations
 
+from collections.abc import Callable
+from typing import TYPE_CHECKING
+
+from PySide6.QtCore import QObject, Qt, QTimer, Signal
+
+from app.live.curves import Curves
+from app.live.lane import Job, Lane, Pace
 from app.live.session import Session
+from app.model.drawing import Drawing
+from app.model.edits import Change
 from app.study.outcome import Outcome
+from solver.status import Status
+
+if TYPE_CHECKING:
+    from app.study import TapCurve
+
+PAUSE_MS = 120  # the hand must rest this long before curves of other transformers are drawn anew
+
+
+def _run(drawing: Drawing) -> Outcome:
+    from app.study import run  # the window is up before the first solve loads the physics
+
+    return run(drawing)
+
+
+def _tap_curve(drawing: Drawing, id: str) -> TapCurve:
+    from app.study import tap_curve
+
+    return tap_curve(drawing, id)
 
 
 class Solving(QObject):
@@ -15,24 +42,183 @@ class Solving(QObject):
     reference: the outcome when the drag began, while one goes on, else None
     """
 
-    solved = Signal(object)  # Outcome, solved or not
+    solved = Signal(object)  # Outcome, solved or not; also when a drag ends, as the changes shown go away
     went_stale = Signal()
+    curved = Signal(str)  # the tap curve of this transformer is new
+    _arrived = Signal(object)  # Job, from the worker
 
     outcome: Outcome | None
     problem: Outcome | None
     stale: bool
     reference: Outcome | None
 
-    def __init__(self, session: Session, parent: QObject | None = None) -> None:
+    def __init__(
+        self,
+        session: Session,
+        parent: QObject | None = None,
+        *,
+        run: Callable[[Drawing], Outcome] = _run,
+        tap_curve: Callable[[Drawing, str], TapCurve] = _tap_curve,
+        pace: Pace | None = None,
+    ) -> None:
         super().__init__(parent)
-        self.outcome = self.problem = self.reference = None
-        self.stale = True
+        self._session, self._run, self._tap_curve = session, run, tap_curve
+        self._pace = pace or Pace()
+        self._lane = Lane(self._arrived.emit)
+        self._curves = Curves(session.drawing)
+        self._forget()
+        self._turn = self._timer(0, self._begin)
+        self._rest = self._timer(PAUSE_MS, self._begin_curve)
+        self._arrived.connect(self._land, Qt.ConnectionType.QueuedConnection)
+        session.changed.connect(self._follow)
+        session.replaced.connect(self._start_over)
+        self.destroyed.connect(self._lane.close)
+        self._ask()
 
     def begin_drag(self) -> None:
         """Remember the figures as they stand, for the change shown while dragging."""
+        self.settle_solve()
+        self.reference = self.outcome
 
     def end_drag(self) -> None:
         """Forget them."""
+        if self.reference is not None:
+            self.reference = None
+            if self.outcome is not None:
+                self.solved.emit(self.outcome)
+
+    def curve(self, id: str) -> TapCurve | None:
+        """The newest tap curve known of a transformer; a newer one is drawn soon where it has aged."""
+        if self._curves.want(id) and not self._rest.isActive():
+            self._rest.start(0 if self._curves.known(id) is None else PAUSE_MS)
+        return self._curves.known(id)
+
+    def curve_is_current(self, id: str) -> bool:
+        """True where the curve belongs to the drawing as it stands."""
+        return self._curves.current(id)
 
     def settle(self) -> None:
         """Finish whatever is pending at once (tests, export, exit)."""
+        self.settle_solve()
+        while (id := self._curves.wanted()) is not None:
+            self._take(self._here(self._curve_job(id)))
+
+    def settle_solve(self) -> None:
+        """Finish a pending solve at once; curves may wait."""
+        job = self._lane.land()
+        if job is not None and not self._owed:
+            self._take(job)
+        if self._owed:
+            self._take(self._here(self._solve_job()))
+
+    def stop(self) -> None:
+        """Stop: nothing is solved or told after this."""
+        self._turn.stop()
+        self._rest.stop()
+        self._lane.close()
+
+    # what happens -------------------------------------------------------------------------------
+
+    def _timer(self, pause_ms: int, slot: Callable[[], None]) -> QTimer:
+        timer = QTimer(self, singleShot=True, interval=pause_ms)
+        timer.timeout.connect(slot)
+        return timer
+
+    def _forget(self) -> None:
+        self.outcome = self.problem = self.reference = None
+        self.stale = True
+        self._newest = getattr(self, "_newest", 0)  # number of the newest drawing that differs electrically
+        self._shape = self._newest  # number since which its topology stands
+        self._owed = True
+
+    def _start_over(self) -> None:
+        self._newest += 1
+        self._forget()
+        self._curves = Curves(self._session.drawing)
+        self.went_stale.emit()
+        self._ask()
+
+    def _follow(self, change: Change) -> None:
+        self._curves.follow(self._session.drawing, change)
+        if not (change.topology or change.parameter or change.rest):
+            return
+        self._newest += 1
+        if change.topology or change.rest:
+            self._shape = self._newest
+        self._owed = True
+        self._rest.stop()
+        if not self.stale:
+            self.stale = True
+            self.went_stale.emit()
+        self._ask()
+
+    def _ask(self) -> None:
+        if not self._turn.isActive():
+            self._turn.start()
+
+    def _begin(self) -> None:
+        if not self._owed or self._lane.flight is not None:
+            return
+        job = self._solve_job()
+        if self._pace.slow:
+            self._lane.start(job)
+        else:
+            self._take(self._here(job))
+
+    def _begin_curve(self) -> None:
+        if self._lane.flight is not None or self._owed:
+            return  # asked again when the solve has landed
+        id = self._curves.wanted()
+        if id is None:
+            return
+        job = self._curve_job(id)
+        if self._pace.slow:
+            self._lane.start(job)
+        else:
+            self._take(self._here(job))
+
+    def _solve_job(self) -> Job:
+        self._owed = False
+        drawing = self._session.drawing
+        return Job("", self._newest, lambda: self._run(drawing))
+
+    def _curve_job(self, id: str) -> Job:
+        drawing = self._session.drawing
+        return Job(id, self._curves.begin(id), lambda: self._tap_curve(drawing, id))
+
+    @staticmethod
+    def _here(job: Job) -> Job:
+        job.run()
+        return job
+
+    def _land(self, job: Job) -> None:
+        if job is not self._lane.flight:
+            return  # `settle` has taken it already
+        self._lane.land()
+        if self._owed:
+            self._ask()
+        self._take(job)
+
+    def _take(self, job: Job) -> None:
+        if job.key:
+            self._take_curve(job)
+        else:
+            self._take_outcome(job)
+        if self._curves.wanted() is not None and not self._rest.isActive():
+            self._rest.start(0 if job.key else PAUSE_MS)
+
+    def _take_outcome(self, job: Job) -> None:
+        self._pace.note(job.seconds)
+        outcome: Outcome = job.answer()
+        if job.number < self._shape:
+            return
+        solved = outcome.status is Status.SOLVED
+        self.problem = None if solved else outcome
+        if solved or self.outcome is None or self.outcome.status is not Status.SOLVED:
+            self.outcome = outcome
+        self.stale = self.outcome is not outcome or job.number < self._newest
+        self.solved.emit(outcome)
+
+    def _take_curve(self, job: Job) -> None:
+        if self._curves.put(job.key, job.number, job.answer()):
+            self.curved.emit(job.key)
