@@ -1,29 +1,48 @@
 """Edits: pure functions from drawing to drawing. They may refuse, with a reason for people."""
 
-from dataclasses import dataclass
+from app.model.changes import (
+    change,
+    put,
+    reattach,
+    reconnect,
+    remove,
+    remove_case,
+    rename,
+    set_case,
+    set_frequency,
+    set_limits,
+    set_project,
+    set_tap,
+    swap_ends,
+    turn_bar,
+)
+from app.model.checks import EditRefused
+from app.model.diffing import Change, added, diff
+from app.model.drawing_on import drop, extend, join, move, reroute, split_branch
 
-from app.model.drawing import Drawing
-
-
-class EditRefused(ValueError):
-    """The reason, as one sentence that names element, field, value and what is allowed."""
-
-
-@dataclass(frozen=True, slots=True)
-class Change:
-    """What differs between two drawings."""
-
-    geometry: frozenset[str]
-    parameter: frozenset[str]
-    topology: frozenset[str]
-    rest: bool  # project, limits, cases, parts, frequency
-
-    @property
-    def ids(self) -> frozenset[str]:
-        """Every element touched."""
-        return self.geometry | self.parameter | self.topology
-
-
-def diff(before: Drawing, after: Drawing) -> Change:
-    """What differs between two drawings."""
-    raise NotImplementedError
+__all__ = [
+    "Change",
+    "EditRefused",
+    "added",
+    "change",
+    "diff",
+    "drop",
+    "extend",
+    "join",
+    "move",
+    "put",
+    "reattach",
+    "reconnect",
+    "remove",
+    "remove_case",
+    "rename",
+    "reroute",
+    "set_case",
+    "set_frequency",
+    "set_limits",
+    "set_project",
+    "set_tap",
+    "split_branch",
+    "swap_ends",
+    "turn_bar",
+]

@@ -8,6 +8,8 @@ from typing import Annotated, Any, Literal, Union
 
 import msgspec
 
+from app.model.figures import typed
+
 
 def field(
     label: str,
@@ -20,7 +22,8 @@ def field(
     help: str = "",
 ) -> msgspec.Meta:
     """Metadata of one field: the card, the file check, the sheet and the docs all read it."""
-    return msgspec.Meta(ge=ge, gt=gt, le=le, lt=lt, extra={"label": label, "unit": unit, "help": help})
+    bounds: dict[str, Any] = {"ge": ge, "gt": gt, "le": le, "lt": lt}
+    return msgspec.Meta(**bounds, extra={"label": label, "unit": unit, "help": help})
 
 
 def text(label: str, *, longest: int = 120, help: str = "") -> msgspec.Meta:
@@ -49,6 +52,7 @@ class Field:
     le: float | None
     lt: float | None
     help: str
+    longest: int = 120
 
     @property
     def allowed(self) -> str:
@@ -59,11 +63,11 @@ class Field:
         if self.type is bool:
             return "yes or no"
         if self.type is str:
-            return "text"
-        low = f"at least {self.ge:g}" if self.ge is not None else ""
-        low = f"more than {self.gt:g}" if self.gt is not None else low
-        high = f"at most {self.le:g}" if self.le is not None else ""
-        high = f"less than {self.lt:g}" if self.lt is not None else high
+            return f"text of at most {self.longest} characters"
+        low = f"at least {typed(self.ge)}" if self.ge is not None else ""
+        low = f"more than {typed(self.gt)}" if self.gt is not None else low
+        high = f"at most {typed(self.le)}" if self.le is not None else ""
+        high = f"less than {typed(self.lt)}" if self.lt is not None else high
         words = " and ".join(w for w in (low, high) if w)
         kind = "a whole number" if self.type is int else "a number"
         return f"{kind}, {words}{unit}" if words else f"{kind}{unit and ' in' + unit}"
@@ -112,5 +116,6 @@ def _read(name: str, hint: Any, default: Any) -> Field | None:
         gt=meta.gt,
         le=meta.le,
         lt=meta.lt,
+        longest=meta.max_length or 120,
         **meta.extra,
     )
