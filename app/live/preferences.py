@@ -73,7 +73,9 @@ class Preferences:
     def add_recent(self, path: Path) -> None:
         """Put a drawing at the head of the recent ones."""
         whole = path.absolute()
-        self._keep("recent", [str(p) for p in [whole, *(p for p in self.recent if p != whole)]][:RECENT_FILES])
+        self._keep(
+            "recent", [str(p) for p in [whole, *(p for p in self.recent if p != whole)]][:RECENT_FILES]
+        )
 
     def forget(self, path: Path) -> None:
         """Take a drawing that is gone off the recent ones."""
