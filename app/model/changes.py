@@ -12,6 +12,7 @@ from app.model.checks import (
     fault,
     fault_of_fields,
     fault_of_id,
+    fault_of_part,
     fault_of_value,
     misfit,
     shown,
@@ -48,6 +49,7 @@ def put(drawing: Drawing, fresh: Mapping[str, Element]) -> Drawing:
     elements: dict[str, AnyElement] = {**drawing.elements, **cast(dict[str, AnyElement], fresh)}
     for id, one in fresh.items():
         refuse_if(fault_of_id(id) or fault(id, one) or misfit(elements, id, one))
+        refuse_if(fault_of_part(drawing.parts, id, one))
     ousted = {
         i for i in fresh if isinstance(drawing.elements.get(i), Node) and not isinstance(fresh[i], Node)
     }

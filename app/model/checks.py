@@ -8,6 +8,7 @@ from typing import Any
 from msgspec import Struct
 
 from app.model import taps
+from app.model.drawing import Part, Symbol
 from app.model.fields import Field, fields_of
 from app.model.figures import typed
 from app.model.kinds import KIND_WORDS, Attachment, Branch, Busbar, Element, Load, Node, Transformer, kind_of
@@ -36,8 +37,51 @@ def fault_of_id(id: str) -> str | None:
 
 def fault(id: str, element: Element) -> str | None:
     """The sentence against the values of one element, or None where all is well."""
-    words = fault_of_fields(element) or _fault_of_place(element) or _fault_across(element)
+    words = fault_of_fields(element) or fault_of_the_rest(element)
     return f"{called(id, element)}: {words}" if words else None
+
+
+def fault_of_the_rest(element: Element) -> str | None:
+    """The sentence against what bounds of single fields do not say, without the element's name."""
+    return _fault_of_place(element) or _fault_across(element)
+
+
+def fault_of_part(parts: Mapping[str, Part], id: str, element: Element) -> str | None:
+    """The sentence against the part an element says it was made from, or None."""
+    if not element.part:
+        return None
+    part = parts.get(element.part)
+    if part is None:
+        known = ", ".join(list(parts)[:8]) or "blank, since the drawing carries no parts"
+        return f"{called(id, element)}: Part is {shown(element.part)}, allowed is {known}."
+    if type(part.element) is not type(element):
+        word = KIND_WORDS[kind_of(part.element)]
+        return f"{called(id, element)}: Part is {element.part}, a {word}, allowed is a part of its own kind."
+    return None
+
+
+SVG_LONGEST = 256 * 1024
+MOST_TERMINALS = 16
+
+
+def fault_of_symbol(symbol: Symbol) -> str | None:
+    """The sentence against a symbol's size and terminals, without its part's name, or None."""
+    size = len(symbol.svg.encode("utf-8", "replace"))
+    if not symbol.svg.strip():
+        return "Symbol is blank, allowed is SVG text."
+    if size > SVG_LONGEST:
+        return f"Symbol has {size / 1024:.0f} KiB of SVG text, allowed is at most {SVG_LONGEST // 1024} KiB."
+    if _UNPRINTABLE.search(symbol.svg.replace("\r", "")):
+        return "Symbol holds control characters, allowed is SVG text."
+    for label, span in (("width", symbol.width), ("height", symbol.height)):
+        if not (_is_number(span, whole=False) and 0 < span <= 1e6):
+            return f"Symbol {label} is {quantity(span, '')}, allowed is more than 0 and at most 1000000."
+    if len(symbol.terminals) > MOST_TERMINALS:
+        return f"Symbol has {len(symbol.terminals)} terminals, allowed are at most {MOST_TERMINALS}."
+    for x, y in symbol.terminals:
+        if not (_on_paper(x) and _on_paper(y) and 0 <= x <= symbol.width and 0 <= y <= symbol.height):
+            return f"Symbol terminal is {shown((x, y))}, allowed is a point inside the picture."
+    return None
 
 
 def misfit(elements: Mapping[str, Element], id: str, element: Element) -> str | None:
@@ -96,8 +140,15 @@ def _fault_of_text(about: Field, value: Any) -> str | None:
         return f"{about.label} is {shown(value)}, allowed is text."
     if len(value) > about.longest:
         return f"{about.label} has {len(value)} characters, allowed are at most {about.longest}."
+    return fault_of_writing(about.label, value, lines=about.name == "note")
+
+
+def fault_of_writing(label: str, value: str, *, lines: bool = False) -> str | None:
+    """The sentence against characters that no sheet or picture could carry, or None."""
     if _UNPRINTABLE.search(value):
-        return f"{about.label} is {shown(value)}, allowed is text without control characters."
+        return f"{label} is {shown(value)}, allowed is text without control characters."
+    if not lines and "\n" in value:
+        return f"{label} is {shown(value)}, allowed is one line of text."
     return None
 
 

@@ -54,6 +54,7 @@ class Symbol(Struct, frozen=True, kw_only=True):
     width: float
     height: float
     terminals: tuple[Point, ...] = ()
+    kept: dict[str, Any] = held(default_factory=dict)
 
 
 class Part(Struct, frozen=True, kw_only=True):

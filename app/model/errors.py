@@ -1,0 +1,5 @@
+"""What goes wrong with files, for people."""
+
+
+class FileError(ValueError):
+    """Why a file cannot be read or written, as one sentence."""

@@ -1,0 +1,287 @@
+"""JSON text to drawings, parts and clips; whatever is wrong gives one sentence, and nothing comes half."""
+
+import json
+import math
+from collections.abc import Mapping
+from functools import cache
+from typing import Any, TypeVar
+
+import msgspec
+from msgspec import Struct, structs
+
+from app.model.changes import ends, fault_of_cases, fault_of_frequency, fault_of_limits
+from app.model.checks import (
+    called,
+    fault_of_fields,
+    fault_of_id,
+    fault_of_part,
+    fault_of_symbol,
+    fault_of_the_rest,
+    fault_of_value,
+    fault_of_writing,
+    misfit,
+    shown,
+)
+from app.model.drawing import Case, Drawing, Limits, Part, Project, Symbol
+from app.model.errors import FileError
+from app.model.fields import fields_of
+from app.model.kinds import KIND_WORDS, KINDS, AnyElement, Attachment, Branch, Element
+from app.model.versions import migrate
+
+LARGEST = 200 * 1024 * 1024
+DEEPEST = 40
+MOST_PARTS = 1000
+Kind = TypeVar("Kind", bound=Struct)
+
+
+def raw_object(data: bytes, key: str, what: str) -> dict[str, Any]:
+    """The JSON object in a file of ours, brought up to the current version; `key` marks what it is."""
+    if len(data) > LARGEST:
+        raise FileError(f"has {len(data) >> 20} MiB, allowed are at most {LARGEST >> 20} MiB.")
+    text = _text(data)
+    try:
+        raw = json.loads(text, object_pairs_hook=_once, parse_float=_finite, parse_constant=_no_constant)
+    except json.JSONDecodeError as error:
+        raise FileError(_where(text, error)) from None
+    except RecursionError:
+        raise FileError("is nested too deeply to be a file of ours.") from None
+    except FileError:
+        raise
+    except ValueError:
+        raise FileError("holds a number with too many digits.") from None
+    if not isinstance(raw, dict) or key not in raw:
+        raise FileError(f'is JSON, but no {what}: it has no key "{key}".')
+    return migrate(raw, key)
+
+
+def _text(data: bytes) -> str:
+    if not data.strip():
+        raise FileError("is empty.")
+    if b"\x00" in data[:4096]:
+        raise FileError("is not text in UTF-8, so it is no file of ours.")
+    try:
+        return data.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise FileError(f"is not text in UTF-8: byte {error.start + 1} is foreign to it.") from None
+
+
+def _where(text: str, error: json.JSONDecodeError) -> str:
+    place = f"line {error.lineno}, column {error.colno}"
+    unclosed = error.msg.startswith("Unterminated string")
+    if not text[error.pos :].strip() or unclosed or (error.lineno >= text.rstrip().count("\n") + 1):
+        if not text.rstrip().endswith("}") and text.lstrip().startswith("{"):
+            return f"is cut off: it ends in the middle, after {place}."
+    return f"is not JSON: it stops making sense at {place}."
+
+
+def _once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    made = dict(pairs)
+    if len(made) != len(pairs):
+        seen: set[str] = set()
+        twice = next(k for k, _ in pairs if k in seen or seen.add(k))  # type: ignore[func-returns-value]
+        raise FileError(f"says {shown(twice)} twice in one place{_beside(made)}, allowed is once.")
+    return made
+
+
+def _beside(made: Mapping[str, Any]) -> str:
+    return f" ({shown(made['id'])})" if isinstance(made.get("id"), str) else ""
+
+
+def _finite(written: str) -> float:
+    value = float(written)
+    if not math.isfinite(value):
+        raise FileError(f"holds the number {shown(written)}, allowed are finite numbers.")
+    return value
+
+
+def _no_constant(written: str) -> float:
+    raise FileError(f"holds {written}, allowed are finite numbers.")
+
+
+def drawing_from(raw: dict[str, Any]) -> Drawing:
+    """The drawing in a file's object."""
+    parts = parts_from(raw.get("parts", []))
+    elements = elements_from(raw.get("elements", []), parts)
+    frequency = raw.get("frequency_hz", Drawing().frequency_hz)
+    cases = tuple(
+        struct_from(Case, one, f"Case {number}") for number, one in enumerate(_list(raw, "cases", [{}]), 1)
+    )
+    limits = struct_from(Limits, raw.get("limits", {}), "Limits")
+    _refuse_if(fault_of_frequency(frequency) or fault_of_cases(cases) or fault_of_limits(limits))
+    return Drawing(
+        project=struct_from(Project, raw.get("project", {}), "Project"),
+        frequency_hz=float(frequency),
+        limits=limits,
+        cases=cases,
+        elements=elements,
+        parts=parts,
+        kept=_kept(raw, _known(Drawing) | {"farend"}, "The file"),
+    )
+
+
+def _list(raw: Mapping[str, Any], key: str, default: list[Any]) -> list[Any]:
+    found = raw.get(key, default)
+    if not isinstance(found, list):
+        raise FileError(f'"{key}" is {shown(found)}, allowed is a list.')
+    return found
+
+
+def elements_from(found: Any, parts: Mapping[str, Part]) -> dict[str, AnyElement]:
+    """The elements of a file, each checked by itself and then against the others."""
+    elements: dict[str, AnyElement] = {}
+    for number, one in enumerate(_list({"elements": found}, "elements", []), 1):
+        if not isinstance(one, dict):
+            raise FileError(f"Element {number} is {shown(one)}, allowed is an object with id and kind.")
+        id = one.get("id")
+        if not isinstance(id, str):
+            given = "missing" if id is None else shown(id)
+            raise FileError(f"Element {number}: id is {given}, allowed is text such as T1.")
+        _refuse_if(fault_of_id(id))
+        if id in elements:
+            raise FileError(f"The id {shown(id)} is given to two elements, allowed is one.")
+        elements[id] = element_from(one, id)
+    for id, element in elements.items():
+        _refuse_if(misfit(elements, id, element) or fault_of_part(parts, id, element))
+    return elements
+
+
+def element_from(raw: dict[str, Any], id: str, *, loose: bool = False) -> AnyElement:
+    """One element; a `loose` one, in a part, stands on no nodes."""
+    kind = raw.get("kind")
+    made_of = KINDS.get(kind) if isinstance(kind, str) else None
+    if made_of is None:
+        given = "missing" if kind is None else shown(kind)
+        raise FileError(f"{id}: kind is {given}, allowed is one of {', '.join(KINDS)}.")
+    if loose:
+        raw = {**_unbound(made_of), **raw}
+    where = f"{id} ({KIND_WORDS[str(kind)]})"
+    made: Any = struct_from(made_of, raw, where, frozenset({"id", "kind"}))
+    words = _fault_of_texts(made) or fault_of_the_rest(made)
+    _refuse_if(f"{called(id, made)}: {words}" if words else None)
+    if loose and any(ends(made)):
+        raise FileError(
+            f"{where}: stands on {shown(ends(made)[0])}, allowed is a part that stands on no node."
+        )
+    return made
+
+
+def _unbound(kind: type[Element]) -> dict[str, Any]:
+    if issubclass(kind, Branch):
+        return {"start": "", "end": ""}
+    return {"node": ""} if issubclass(kind, Attachment) else {}
+
+
+def _fault_of_texts(element: Element) -> str | None:
+    """Characters; all else about labelled fields is held by their bounds."""
+    words = fault_of_writing("Name", element.name) if element.name else None
+    if not words and element.note:
+        words = fault_of_writing("Note", element.note, lines=True)
+    written = getattr(element, "type", "")
+    return words or (fault_of_writing("Type", written) if written else None)
+
+
+def parts_from(found: Any) -> dict[str, Part]:
+    """The parts that a file carries, by id."""
+    parts: dict[str, Part] = {}
+    entries = _list({"parts": found}, "parts", [])
+    if len(entries) > MOST_PARTS:
+        raise FileError(f"There are {len(entries)} parts, allowed are at most {MOST_PARTS}.")
+    for number, one in enumerate(entries, 1):
+        id = one.get("id") if isinstance(one, dict) else None
+        if not isinstance(id, str):
+            raise FileError(f"Part {number}: id is missing, allowed is text such as P1.")
+        _refuse_if(fault_of_id(id))
+        if id in parts:
+            raise FileError(f"The id {shown(id)} is given to two parts, allowed is one.")
+        parts[id] = part_from(one, id)
+    return parts
+
+
+def part_from(raw: Any, where: str) -> Part:
+    """One part, with its symbol."""
+    element = raw.get("element") if isinstance(raw, dict) else None
+    if not isinstance(element, dict):
+        raise FileError(f"Part {where}: element is {shown(element)}, allowed is an object with its kind.")
+    symbol = raw.get("symbol")
+    drawn = None if symbol is None else struct_from(Symbol, symbol, f"Part {where}")
+    words = fault_of_symbol(drawn) if drawn else None
+    made = Part(
+        name=raw.get("name"),
+        element=element_from(element, where, loose=True),
+        symbol=drawn,
+        kept=_kept(raw, _known(Part) | {"id"}, f"Part {where}"),
+    )
+    words = words or fault_of_fields(made)
+    _refuse_if(f"Part {where}: {words}" if words else None)
+    return made
+
+
+def struct_from(kind: type[Kind], raw: Any, where: str, reserved: frozenset[str] = frozenset()) -> Kind:
+    """A struct from its object: known keys by type and bounds, foreign keys kept."""
+    if not isinstance(raw, dict):
+        raise FileError(f"{where} is {shown(raw)}, allowed is an object.")
+    known = _known(kind)
+    if raw.keys() <= known | reserved:
+        fields: dict[str, Any] = raw
+    else:
+        kept = _kept(raw, known | reserved, where)
+        fields = {**{k: v for k, v in raw.items() if k in known or k in reserved}, "kept": kept}
+    try:
+        made = msgspec.convert(fields, kind)
+    except msgspec.ValidationError as error:
+        raise FileError(f"{where}: {_diagnosis(kind, raw, str(error))}") from None
+    if not reserved:
+        words = fault_of_fields(made)
+        _refuse_if(f"{where}: {words}" if words else None)
+    return made
+
+
+@cache
+def _known(kind: type[Struct]) -> frozenset[str]:
+    return frozenset(f.name for f in structs.fields(kind)) - {"kept"}
+
+
+def _kept(raw: Mapping[str, Any], known: frozenset[str], where: str) -> dict[str, Any]:
+    """Keys we do not know, to be written back as they came."""
+    kept = {k: v for k, v in raw.items() if k not in known}
+    if kept and _depth(kept) > DEEPEST:
+        raise FileError(f"{where}: is nested deeper than {DEEPEST} levels.")
+    try:
+        json.dumps(kept, ensure_ascii=False).encode()
+    except UnicodeEncodeError:
+        raise FileError(f"{where}: holds half a character, allowed is whole text.") from None
+    return kept
+
+
+def _depth(value: Any) -> int:
+    level, depth = [value], 0
+    while level:
+        depth += 1
+        level = [
+            inner
+            for one in level
+            if isinstance(one, dict | list)
+            for inner in (one.values() if isinstance(one, dict) else one)
+        ]
+    return depth
+
+
+def _diagnosis(kind: type[Struct], raw: Mapping[str, Any], said: str) -> str:
+    """Which field it was, in our words; `said` is what the type check had to say."""
+    for name, about in fields_of(kind).items():
+        if name in raw and (words := fault_of_value(about, raw[name])):
+            return words
+    for name in ("start", "end", "node"):
+        if name in _known(kind) and not isinstance(raw.get(name), str):
+            given = "missing" if name not in raw else shown(raw[name])
+            return f"{name} is {given}, allowed is the id of a node."
+    path = said.rpartition("`$.")[2].rstrip("`") if "`$." in said else ""
+    field = path.split("[")[0].split(".")[0]
+    if field in raw:
+        return f"{field} is {shown(raw[field])}, allowed is: {said.split(' - at ')[0].lower()}."
+    return f"{said}."
+
+
+def _refuse_if(sentence: str | None) -> None:
+    if sentence:
+        raise FileError(sentence)

@@ -1,0 +1,84 @@
+"""What a person typed into a field, turned into an edit; `80 kW` typed as kVA goes where it belongs."""
+
+from typing import Any
+
+from app.model.changes import change, element
+from app.model.checks import EditRefused, called, quantity, shown
+from app.model.drawing import Drawing
+from app.model.fields import Field, fields_of
+from app.model.kinds import AnyElement, Load, Transformer
+from app.model.units import UnitError, parse, parse_ratio
+
+YES = ("yes", "true", "on", "1", "y", "closed", "connected", "leading")
+NO = ("no", "false", "off", "0", "n", "open", "disconnected", "lagging")
+
+
+def change_text(drawing: Drawing, id: str, field: str, text: str) -> Drawing:
+    """Set one field from what was typed, with or without a unit; empty blanks an optional field."""
+    one = element(drawing, id)
+    about = fields_of(type(one)).get(field)
+    if about is None:
+        raise EditRefused(f"{called(id, one)}: there is no field {shown(field)}.")
+    try:
+        return change(drawing, id, **_read(one, about, text.strip()))
+    except UnitError as error:
+        raise EditRefused(f"{called(id, one)}, {about.label}: {error}") from None
+
+
+def value_of(about: Field, text: str) -> Any:
+    """The value of one field from what was typed; raises UnitError with the reason."""
+    if about.choices:
+        return _choice(about, text)
+    if about.type is str:
+        return text
+    if not text and about.optional:
+        return None
+    if about.type is bool:
+        return _yes_or_no(about, text)
+    number = parse(text, about.unit)
+    if about.type is int:
+        if not number.is_integer():
+            raise UnitError(f"{quantity(number, about.unit)} is not allowed, allowed is {about.allowed}.")
+        return int(number)
+    return number
+
+
+def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:
+    if isinstance(one, Transformer) and about.name in ("v1_v", "v2_v") and "/" in text:
+        return _both_windings(text, about)
+    try:
+        return {about.name: value_of(about, text)}
+    except UnitError:
+        other = {"demand_kva": "demand_kw", "demand_kw": "demand_kva"}.get(about.name)
+        if other is None or not isinstance(one, Load):
+            raise
+        try:
+            return {other: value_of(fields_of(Load)[other], text)}
+        except UnitError:
+            pass
+        raise
+
+
+def _both_windings(text: str, about: Field) -> dict[str, Any]:
+    try:
+        first, second = parse_ratio(text)
+    except UnitError:
+        return {about.name: value_of(about, text)}
+    return {"v1_v": first, "v2_v": second}
+
+
+def _choice(about: Field, text: str) -> str:
+    wanted = text.casefold()
+    exact = [c for c in about.choices if c.casefold() == wanted]
+    near = exact or [c for c in about.choices if wanted and c.casefold().startswith(wanted)]
+    if len(near) != 1:
+        raise UnitError(f"{shown(text)} is not allowed, allowed is {about.allowed}.")
+    return near[0]
+
+
+def _yes_or_no(about: Field, text: str) -> bool:
+    if text.casefold() in YES:
+        return True
+    if text.casefold() in NO:
+        return False
+    raise UnitError(f"{shown(text)} is not allowed, allowed is {about.allowed}.")

@@ -1,0 +1,87 @@
+"""Drawings, parts and clips as JSON text: stable order, one element a line, every number to the last bit."""
+
+import json
+from collections.abc import Iterable, Mapping
+from functools import cache
+from typing import Any
+
+from msgspec import NODEFAULT, UNSET, Struct, structs
+
+from app.model.drawing import Drawing, Part
+from app.model.kinds import AnyElement, kind_of
+from app.model.versions import CURRENT
+
+_BLANK = (None, "", ())
+
+
+def drawing_text(drawing: Drawing) -> str:
+    """The whole file."""
+    head = {"frequency_hz": _plain(drawing.frequency_hz), **_unless_known(drawing.kept, Drawing, "farend")}
+    lines = [
+        f'"farend": {CURRENT}',
+        f'"project": {_line(body(drawing.project))}',
+        *(f"{_line(key)}: {_line(value)}" for key, value in head.items()),
+        f'"limits": {_line(body(drawing.limits))}',
+        f'"cases": {listed(body(case) for case in drawing.cases)}',
+        f'"elements": {listed(element_body(i, e) for i, e in drawing.elements.items())}',
+        f'"parts": {listed(part_body(i, p) for i, p in drawing.parts.items())}',
+    ]
+    return "{\n" + ",\n".join(lines) + "\n}\n"
+
+
+def listed(bodies: Iterable[Mapping[str, Any]]) -> str:
+    """A list with one entry a line."""
+    lines = [_line(one) for one in bodies]
+    return "[\n" + ",\n".join(lines) + "\n]" if lines else "[]"
+
+
+def element_body(id: str, element: AnyElement) -> dict[str, Any]:
+    """One element as its line in the file; blank fields are left out."""
+    return {**({"id": id} if id else {}), "kind": kind_of(element), **body(element, ("id", "kind"))}
+
+
+def part_body(id: str, part: Part) -> dict[str, Any]:
+    """One part as its line in the file."""
+    made: dict[str, Any] = {"id": id} if id else {}
+    made |= {"name": part.name, "element": element_body("", part.element)}
+    if part.symbol is not None:
+        made["symbol"] = body(part.symbol)
+    return made | _unless_known(part.kept, Part, "id")
+
+
+def body(struct: Struct, reserved: tuple[str, ...] = ()) -> dict[str, Any]:
+    """The fields of a struct and the foreign keys it keeps."""
+    made = {}
+    for name, may_be_left_out in _fields(type(struct)):
+        value = getattr(struct, name)
+        if not (may_be_left_out and value in _BLANK):
+            made[name] = _plain(value)
+    kept = struct.kept  # type: ignore[attr-defined]
+    return made | _unless_known(kept, type(struct), *reserved) if kept else made
+
+
+@cache
+def _fields(kind: type[Struct]) -> tuple[tuple[str, bool], ...]:
+    """Fields in their order, and whether blank is what they are where the file says nothing."""
+    blank = {"start", "end", "node"}
+    return tuple(
+        (f.name, f.default in _BLANK or (f.default in (NODEFAULT, UNSET) and f.name in blank))
+        for f in structs.fields(kind)
+        if f.name != "kept"
+    )
+
+
+def _unless_known(kept: Mapping[str, Any], kind: type[Struct], *reserved: str) -> dict[str, Any]:
+    known = {f.name for f in structs.fields(kind)} - {"kept"}
+    return {k: v for k, v in kept.items() if k not in known and k not in reserved}
+
+
+def _plain(value: Any) -> Any:
+    """Whole numbers are written as such: 11000, not 11000.0; all else to the last bit."""
+    if isinstance(value, float) and value.is_integer() and abs(value) < 1e15 and str(value) != "-0.0":
+        return int(value)
+    return tuple(_plain(v) for v in value) if isinstance(value, tuple) else value
+
+
+def _line(value: Any) -> str:
+    return json.dumps(value, ensure_ascii=False, allow_nan=False)
