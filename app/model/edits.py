@@ -17,19 +17,31 @@ from app.model.changes import (
     turn_bar,
 )
 from app.model.checks import EditRefused
+from app.model.clipboard import Clip, copy, paste
 from app.model.diffing import Change, added, diff
 from app.model.drawing_on import drop, extend, join, move, reroute, split_branch
+from app.model.keeping import carried, forget_part, keep_part, set_symbol
+from app.model.parts import made_from
+from app.model.typing_in import change_text
 
 __all__ = [
     "Change",
+    "Clip",
     "EditRefused",
     "added",
+    "carried",
     "change",
+    "change_text",
+    "copy",
     "diff",
     "drop",
     "extend",
+    "forget_part",
     "join",
+    "keep_part",
+    "made_from",
     "move",
+    "paste",
     "put",
     "reattach",
     "reconnect",
@@ -41,6 +53,7 @@ __all__ = [
     "set_frequency",
     "set_limits",
     "set_project",
+    "set_symbol",
     "set_tap",
     "split_branch",
     "swap_ends",

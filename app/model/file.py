@@ -11,7 +11,7 @@ from app.model.errors import FileError
 from app.model.reading import LARGEST, drawing_from, raw_object
 from app.model.writing import drawing_text
 
-__all__ = ["FileError", "decode", "encode", "load", "read_bytes", "save", "write_bytes"]
+__all__ = ["FileError", "decode", "encode", "load", "read_bytes", "save", "sentence", "write_bytes"]
 
 
 def encode(drawing: Drawing) -> bytes:
@@ -24,7 +24,7 @@ def decode(data: bytes) -> Drawing:
     try:
         return drawing_from(raw_object(data, "farend", "drawing"))
     except FileError as error:
-        raise FileError(_sentence("The file", str(error))) from None
+        raise FileError(sentence("The file", str(error))) from None
 
 
 def load(path: str | Path) -> Drawing:
@@ -34,7 +34,7 @@ def load(path: str | Path) -> Drawing:
     try:
         return drawing_from(raw_object(data, "farend", "drawing"))
     except FileError as error:
-        raise FileError(_sentence(path.name, str(error))) from None
+        raise FileError(sentence(path.name, str(error))) from None
 
 
 def save(drawing: Drawing, path: str | Path) -> None:
@@ -42,7 +42,7 @@ def save(drawing: Drawing, path: str | Path) -> None:
     write_bytes(Path(path), encode(drawing))
 
 
-def _sentence(name: str, words: str) -> str:
+def sentence(name: str, words: str) -> str:
     """`x.farend is empty.` but `x.farend: T2 (transformer): …`."""
     verb = words.startswith(("is ", "has ", "says ", "holds ", "was "))
     return f"{name} {words}" if verb else f"{name}: {words}"

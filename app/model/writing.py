@@ -19,9 +19,9 @@ def drawing_text(drawing: Drawing) -> str:
     head = {"frequency_hz": _plain(drawing.frequency_hz), **_unless_known(drawing.kept, Drawing, "farend")}
     lines = [
         f'"farend": {CURRENT}',
-        f'"project": {_line(body(drawing.project))}',
-        *(f"{_line(key)}: {_line(value)}" for key, value in head.items()),
-        f'"limits": {_line(body(drawing.limits))}',
+        f'"project": {line(body(drawing.project))}',
+        *(f"{line(key)}: {line(value)}" for key, value in head.items()),
+        f'"limits": {line(body(drawing.limits))}',
         f'"cases": {listed(body(case) for case in drawing.cases)}',
         f'"elements": {listed(element_body(i, e) for i, e in drawing.elements.items())}',
         f'"parts": {listed(part_body(i, p) for i, p in drawing.parts.items())}',
@@ -31,7 +31,7 @@ def drawing_text(drawing: Drawing) -> str:
 
 def listed(bodies: Iterable[Mapping[str, Any]]) -> str:
     """A list with one entry a line."""
-    lines = [_line(one) for one in bodies]
+    lines = [line(one) for one in bodies]
     return "[\n" + ",\n".join(lines) + "\n]" if lines else "[]"
 
 
@@ -83,5 +83,6 @@ def _plain(value: Any) -> Any:
     return tuple(_plain(v) for v in value) if isinstance(value, tuple) else value
 
 
-def _line(value: Any) -> str:
+def line(value: Any) -> str:
+    """Any plain value as one line of JSON."""
     return json.dumps(value, ensure_ascii=False, allow_nan=False)
