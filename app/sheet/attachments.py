@@ -1,0 +1,160 @@
+"""Loads as drawn and as served, and everything that feeds in: supplies, generators, capacitors."""
+
+import math
+
+from app.model.drawing import label
+from app.model.kinds import Attachment, Capacitor, Generator, Load, Supply
+from app.sheet.nodes import node_cell
+from app.sheet.subject import Entry, Extreme, Plan, Subject, by_element, kind_name
+from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.study.outcome import AttachmentState
+
+LOADS = "loads"
+SOURCES = "sources"
+NODE = Column("node", "At", style=Style.TEXT, width=14)
+VOLTS = Column("u", "U", "V", style=Style.VOLTS, width=10)
+KW = Column("kw", "P", "kW", digits=2)
+KVAR = Column("kvar", "Q", "kvar", digits=2)
+KVA = Column("kva", "S", "kVA", digits=2)
+AMPS = Column("current", "I", "A", style=Style.AMPS, width=8)
+STATE = Column("state", "State", style=Style.VERDICT, width=10)
+
+
+def load_tables(subject: Subject) -> list[SheetTable]:
+    """Every load: what is stated, how it follows the voltage, what it draws."""
+    loads = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Load)}
+    data = (
+        NODE,
+        Column("demand", "Demand", "kW", digits=2),
+        Column("demand_kva", "Demand", "kVA", digits=2),
+        Column("pf", "Power factor", digits=2, width=8),
+        Column("side", "Current", style=Style.TEXT, width=9),
+        Column("model", "Load model", style=Style.TEXT, width=20),
+        Column("i_share", "Constant current", "%", digits=0),
+        Column("z_share", "Constant impedance", "%", digits=0, width=10),
+        Column("reference", "Stated at", "V", digits=0),
+    )
+    plan = Plan(
+        LOADS, "Loads", "Loads", data, (VOLTS, KW, KVAR, KVA, AMPS),
+        (Extreme("kw_max", "kw", True, "P, most"),), (STATE,),
+        note="P = demand · case % · (shares of constant power + current · U/Us + impedance · (U/Us)²); Us "
+        "is the voltage the demand is stated at.",
+    )  # fmt: skip
+    return by_element(subject, plan, [_load(subject, i, e) for i, e in loads.items()])
+
+
+def _load(subject: Subject, id: str, load: Load) -> Entry:
+    states = [subject.outcome.attachments.at(id, c) for c in range(len(subject.cases))]
+    data = subject.identity(id) | {
+        "node": text(label(subject.drawing, load.node)),
+        "pf": given(load.power_factor),
+        "side": given("leading" if load.leading else "lagging" if load.power_factor < 1 else ""),
+        "i_share": subject.value(id, "constant_current_percent"),
+        "z_share": subject.value(id, "constant_impedance_percent"),
+        "reference": subject.value(id, "reference_v"),
+        "model": text(model_words(load)),
+    }
+    if load.demand_kw is not None:
+        data["demand"] = given(load.demand_kw)
+        if load.power_factor > 0:
+            data["demand_kva"] = Cell(load.demand_kw / load.power_factor, "{demand}/{pf}")
+    elif load.demand_kva is not None:
+        data["demand_kva"] = given(load.demand_kva)
+        data["demand"] = Cell(load.demand_kva * load.power_factor, "{demand_kva}*{pf}")
+    figures = [_served(subject, id, load, s, c) for c, s in enumerate(states)]
+    return Entry(id, data, figures, lambda worst: {"state": text("fed") if worst else subject.unfed()})
+
+
+def model_words(load: Load) -> str:
+    """`constant power`, or the shares: `60 % P, 40 % I`."""
+    current = load.constant_current_percent or 0.0
+    impedance = load.constant_impedance_percent or 0.0
+    shares = {"power": 100 - current - impedance, "current": current, "impedance": impedance}
+    for word, share in shares.items():
+        if share == 100:
+            return f"constant {word}"
+    letters = zip("PIZ", shares.values(), strict=True)
+    return ", ".join(f"{share:g} % {letter}" for letter, share in letters if share)
+
+
+def _served(subject: Subject, id: str, load: Load, state: AttachmentState, case: int) -> Cells:
+    if not state.live:
+        return {}
+    found = _flow(subject, load, state, case)
+    share = "((100-{i_share}-{z_share})+{i_share}*{u}/{reference}+{z_share}*({u}/{reference})^2)/100"
+    scaled = {"case_percent": Ref("load_percent", "cases", str(case))}
+    found["kw"] = Cell(state.kw, "{demand}*{case_percent}/100*" + share, scaled)
+    return found
+
+
+def _flow(subject: Subject, hung: Attachment, state: AttachmentState, case: int) -> Cells:
+    """Volts, kW, kvar, kVA and amps of anything that hangs on a node."""
+    root = subject.root(hung.node)
+    return {
+        "u": Cell(state.voltage_v, "{at}", {"at": node_cell(subject, hung.node, "u", case)}),
+        "kw": Cell(state.kw),
+        "kvar": Cell(state.kvar),
+        "kva": Cell(math.hypot(state.kw, state.kvar), "SQRT({kw}^2+{kvar}^2)"),
+        "current": Cell(state.current_a, f"{{kva}}*1000/({root}*{{u}})"),
+    }
+
+
+def source_tables(subject: Subject) -> list[SheetTable]:
+    """Everything that feeds in, as stated and as found."""
+    kinds = (Supply, Generator, Capacitor)
+    hung = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, kinds)}
+    data = (
+        Column("kind", "Kind", style=Style.TEXT, width=11),
+        NODE,
+        Column("rating", "Stated", digits=0),
+        Column("unit", "", style=Style.TEXT, width=6),
+        Column("rest", "As", style=Style.TEXT, width=26),
+    )
+    pf = Column("pf", "Power factor", digits=3, width=8)
+    plan = Plan(
+        SOURCES, "Supplies", "Supplies, generators and capacitors", data, (VOLTS, KW, KVAR, KVA, pf, AMPS),
+        (Extreme("kva_max", "kva", True, "S, most"),), (STATE,),
+        note="Power is counted as fed into the layout.",
+    )  # fmt: skip
+    return by_element(subject, plan, [_source(subject, i, e) for i, e in hung.items()])
+
+
+def _source(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> Entry:
+    states = [subject.outcome.attachments.at(id, c) for c in range(len(subject.cases))]
+    data = subject.identity(id) | {
+        "kind": text(kind_name(hung)),
+        "node": text(label(subject.drawing, hung.node)),
+    }
+    figures = [_fed_in(subject, id, hung, s, c) for c, s in enumerate(states)]
+    off = text("off") if isinstance(hung, Capacitor) and not hung.connected else subject.unfed()
+    return Entry(
+        id, data | _stated(hung), figures, lambda worst: {"state": text("connected") if worst else off}
+    )
+
+
+def _stated(hung: Supply | Generator | Capacitor) -> Cells:
+    if isinstance(hung, Supply):
+        angle = f", {hung.angle_deg:g}°" if hung.angle_deg else ""
+        words = f"{hung.wires}, held at {hung.held_percent:g} %{angle}"
+        return {"rating": given(hung.nominal_v), "unit": text("V"), "rest": given(words)}
+    if isinstance(hung, Generator):
+        way = "feeds in" if hung.output_kvar >= 0 else "absorbs"
+        words = f"fixed output, {way} {abs(hung.output_kvar):g} kvar"
+        return {"rating": given(hung.output_kw), "unit": text("kW"), "rest": given(words)}
+    words = f"at {hung.rated_v:g} V" if hung.rated_v is not None else "at nominal voltage, assumed"
+    return {"rating": given(hung.rating_kvar), "unit": text("kvar"), "rest": given(words)}
+
+
+def _fed_in(
+    subject: Subject, id: str, hung: Supply | Generator | Capacitor, state: AttachmentState, case: int
+) -> Cells:
+    if not state.live or (isinstance(hung, Capacitor) and not hung.connected):
+        return {}
+    found = _flow(subject, hung, state, case)
+    kva = math.hypot(state.kw, state.kvar)
+    if kva and not isinstance(hung, Capacitor):
+        found["pf"] = Cell(abs(state.kw) / kva, "ABS({kw})/{kva}")
+    rated = subject.value(id, "rated_v").value if isinstance(hung, Capacitor) else None
+    if isinstance(rated, float):
+        found["kvar"] = Cell(state.kvar, f"{{rating}}*({{u}}/{rated!r})^2")
+    return found

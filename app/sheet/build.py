@@ -1,0 +1,186 @@
+"""The schedule to build: open points, cable list with totals, transformer order text, taps to set."""
+
+from collections import defaultdict
+
+from app.model import taps
+from app.model.kinds import Line, Switch, Transformer
+from app.sheet.lines import KEY as LINES
+from app.sheet.lines import LOADING, MARGIN, judge_loading
+from app.sheet.nodes import VERDICT
+from app.sheet.subject import FROM_TO, Entry, Extreme, Plan, Subject, by_element, kind_name
+from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
+from app.sheet.transformers import fed_winding
+
+TAB = "Build list"
+FIRST = Column("item", "What", style=Style.LONG, width=34)
+MOST_TERMS = 150  # cells a total adds up before it is written as a plain figure
+
+
+def switch_tables(subject: Subject) -> list[SheetTable]:
+    """Every switch, closed or an open point."""
+    switches = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Switch)}
+    if not switches:
+        return []
+    plan = Plan(
+        "switches",
+        "Switches",
+        "Switches and open points",
+        (
+            *FROM_TO,
+            Column("state", "State", style=Style.TEXT, width=12),
+            Column("rating", "Rating", "A", digits=0),
+        ),
+        (Column("current", "I", "A", style=Style.AMPS), LOADING),
+        (Extreme("loading_max", "loading", True, "Loading, most"),),
+        (MARGIN, VERDICT),
+    )
+    return by_element(subject, plan, [_switch(subject, i, e) for i, e in switches.items()])
+
+
+def _switch(subject: Subject, id: str, switch: Switch) -> Entry:
+    states = [subject.state(id, c) for c in range(len(subject.cases))]
+    data = subject.identity(id) | subject.ends(id, switch)
+    data |= {
+        "state": given("closed" if switch.closed else "OPEN POINT"),
+        "rating": subject.value(id, "rating_a"),
+    }
+    figures: list[Cells] = []
+    for state in states:
+        found: Cells = {}
+        if switch.closed and state.live:
+            found["current"] = Cell(state.current_a)
+            found["most"] = Cell(subject.drawing.limits.loading_percent)
+            if switch.rating_a is not None:
+                found["loading"] = Cell(state.loading_percent, "{current}/{rating}*100")
+        figures.append(found)
+    if not switch.closed:
+        return Entry(id, data, figures, lambda worst: {"verdict": text("open")})
+    live = any(s.live for s in states)
+    return Entry(id, data, figures, judge_loading(subject, live, switch.rating_a is not None))
+
+
+def build_tables(subject: Subject) -> list[SheetTable]:
+    """What to buy, lay and set."""
+    found = [_cable_list(subject), _orders(subject), _settings(subject), _open_points(subject)]
+    return [t for t in found if t.rows]
+
+
+def _cable_list(subject: Subject) -> SheetTable:
+    groups: dict[tuple[str, str, str, float], list[str]] = defaultdict(list)
+    for id, e in subject.drawing.elements.items():
+        if isinstance(e, Line):
+            groups[(kind_name(e), e.type, e.conductor, e.area_mm2 or 0.0)].append(id)
+    columns = (
+        FIRST,
+        Column("conductor", "Metal", style=Style.TEXT, width=12),
+        Column("area", "Section", "mm²", digits=0, width=10),
+        Column("routes", "Routes", digits=0, width=9),
+        Column("length", "Length to lay, all runs", "m", digits=0, width=14),
+        Column("ids", "Where", style=Style.LONG, width=40),
+    )
+    rows: dict[str, Cells] = {}
+    for number, ((kind, type, metal, area), ids) in enumerate(sorted(groups.items())):
+        rows[str(number)] = {
+            "item": text(f"{type or 'type not stated'}, {kind}"),
+            "conductor": text(metal),
+            "area": given(area) if area else text(""),
+            "routes": Cell(len(ids)),
+            "length": _total(subject, ids),
+            "ids": text(", ".join(ids)),
+        }
+    note = "Route lengths as drawn times parallel runs; nothing added for ends, slack or waste."
+    return table("cable_list", TAB, "Cable and line list", columns, rows, note=note, held=0)
+
+
+def _total(subject: Subject, ids: list[str]) -> Cell:
+    metres = sum(e.length_m * e.parallel for i in ids if isinstance(e := subject.drawing.elements[i], Line))
+    if len(ids) > MOST_TERMS:
+        return Cell(metres)
+    refs = {f"l{n}": Ref("length", LINES, i) for n, i in enumerate(ids)}
+    refs |= {f"n{n}": Ref("runs", LINES, i) for n, i in enumerate(ids)}
+    return Cell(metres, "+".join(f"{{l{n}}}*{{n{n}}}" for n in range(len(ids))), refs)
+
+
+def _transformers(subject: Subject) -> dict[str, Transformer]:
+    return {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Transformer)}
+
+
+def _orders(subject: Subject) -> SheetTable:
+    columns = (
+        FIRST,
+        Column("count", "Units", digits=0, width=12),
+        Column("text", "Order text", style=Style.LONG, width=60),
+    )
+    rows = {
+        id: {
+            "item": text(subject.tell(id)),
+            "count": given(t.parallel),
+            "text": text(order_words(subject, id, t)),
+        }
+        for id, t in _transformers(subject).items()
+    }
+    return table("orders", TAB, "Transformers to order", columns, rows, held=0)
+
+
+def order_words(subject: Subject, id: str, t: Transformer) -> str:
+    """The order text of one unit; a value nobody stated says so."""
+
+    def loss(field: str, mark: str, unit: str) -> str:
+        value = subject.value(id, field)
+        if not isinstance(value.value, float):
+            return f"{mark} not stated"
+        return f"{mark} {value.value:g} {unit}" + (" (assumed)" if value.origin.value == "assumed" else "")
+
+    ladder = f"+{t.taps_up} −{t.taps_down} × {t.tap_step_percent:g} %"
+    if t.taps_up == t.taps_down:
+        ladder = f"±{t.taps_up} × {t.tap_step_percent:g} %"
+    return ", ".join(
+        (
+            f"{t.rating_kva:g} kVA",
+            f"{t.v1_v:g}/{t.v2_v:g} V no-load",
+            t.vector_group,
+            f"{subject.drawing.frequency_hz:g} Hz",
+            f"uk {t.uk_percent:g} %",
+            loss("load_loss_w", "Pk", "W"),
+            loss("no_load_loss_w", "P0", "W"),
+            loss("no_load_current_percent", "i0", "%"),
+            f"taps {ladder} on {t.tapped}",
+        )
+    )
+
+
+def _settings(subject: Subject) -> SheetTable:
+    columns = (
+        FIRST,
+        Column("winding", "Set on", style=Style.TEXT, width=12),
+        Column("position", "Position from the top", digits=0, width=10),
+        Column("of", "of", digits=0, width=9),
+        Column("plate", "Nameplate volts", "V", digits=0, width=14),
+        Column("words", "Tap to set", style=Style.LONG, width=40),
+    )
+    rows = {
+        id: {
+            "item": text(subject.tell(id)),
+            "winding": given(t.tapped),
+            "position": Cell(t.taps_up - t.tap + 1),
+            "of": Cell(t.taps_up + t.taps_down + 1),
+            "plate": given(round(taps.nameplate_v(t, t.tap), 3)),
+            "words": text(taps.words(t, t.tap, fed_winding(subject, id))),
+        }
+        for id, t in _transformers(subject).items()
+    }
+    note = "Positions count from the highest nameplate volts. Makers number differently: go by the volts."
+    return table("settings", TAB, "Taps to set on site", columns, rows, note=note, held=0)
+
+
+def _open_points(subject: Subject) -> SheetTable:
+    columns = (FIRST, Column("between", "Between", style=Style.LONG, width=60))
+    rows = {
+        id: {
+            "item": text(subject.tell(id)),
+            "between": text(f"{subject.tell(e.start)} and {subject.tell(e.end)}: keep open"),
+        }
+        for id, e in subject.drawing.elements.items()
+        if isinstance(e, Switch) and not e.closed
+    }
+    return table("open_points", TAB, "Open points", columns, rows, held=0)

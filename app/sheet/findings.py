@@ -1,0 +1,63 @@
+"""Every finding: what was judged, value, limit and whose it is, signed margin, case, verdict."""
+
+import math
+
+from app.sheet.head import verdict_words
+from app.sheet.nodes import VERDICT
+from app.sheet.subject import Subject
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, table, text
+from app.study.outcome import Finding, Verdict
+
+COLUMNS = (
+    VERDICT,
+    Column("check", "Check", style=Style.TEXT, width=16),
+    Column("where", "Where", style=Style.LONG, width=22),
+    Column("value", "Value", digits=1, near="limit"),
+    Column("limit", "Limit", digits=1),
+    Column("margin", "Margin", digits=2, near="0"),
+    Column("unit", "Unit", style=Style.TEXT, width=7),
+    Column("case", "Case", style=Style.TEXT, width=20),
+    Column("whose", "Whose limit", style=Style.LONG, width=26),
+    Column("sentence", "In words", style=Style.LONG, width=60),
+)
+
+
+def finding_tables(subject: Subject) -> list[SheetTable]:
+    """All findings, as the study ranks them."""
+    rows = {str(n): _row(subject, f) for n, f in enumerate(subject.outcome.findings)}
+    note = (
+        "One row for each element that fails or is near its limit, at its worst case; where none is, "
+        "the element nearest to it. A negative margin fails."
+        if subject.solved
+        else f"NOT SOLVED. {subject.outcome.sentence}"
+    )
+    return [table("findings", "Findings", "Findings", COLUMNS, rows, note=note, held=0)]
+
+
+def _row(subject: Subject, finding: Finding) -> Cells:
+    found = {
+        "verdict": text(verdict_words(finding.verdict)),
+        "check": text(finding.check),
+        "where": text(", ".join(subject.tell(i) for i in finding.ids)),
+        "unit": text(finding.unit),
+        "case": text(finding.case),
+        "whose": text(finding.whose),
+        "sentence": text(finding.sentence),
+    }
+    if finding.value is None or finding.limit is None or finding.margin is None:
+        return found
+    found |= {"value": Cell(finding.value), "limit": Cell(finding.limit)}
+    found["margin"] = Cell(finding.margin, _margin_formula(finding))
+    if finding.verdict in (Verdict.FAILS, Verdict.HOLDS, Verdict.NEAR):
+        held = "holds" if finding.margin < 0 else verdict_words(finding.verdict)
+        found["verdict"] = Cell(verdict_words(finding.verdict), f'IF({{margin}}<0,"FAIL","{held}")')
+    return found
+
+
+def _margin_formula(finding: Finding) -> str:
+    """Value − limit for a lower limit, limit − value for an upper one, whichever the margin is."""
+    value, limit = finding.value or 0.0, finding.limit or 0.0
+    for formula, margin in (("{value}-{limit}", value - limit), ("{limit}-{value}", limit - value)):
+        if math.isclose(margin, finding.margin or 0.0, rel_tol=1e-9, abs_tol=1e-12):
+            return formula
+    return ""

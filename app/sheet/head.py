@@ -1,0 +1,205 @@
+"""The head of the sheet, the basis it stands on, what was assumed, and the cautions."""
+
+from importlib.metadata import PackageNotFoundError, version
+
+from app.model.fields import fields_of
+from app.sheet.subject import FAIL, Subject, kind_name
+from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
+from app.study.cautions import CAUTIONS
+from app.study.outcome import Verdict
+
+ITEM = Column("item", "Item", style=Style.TEXT, width=24)
+SAYS = Column("value", "Value", style=Style.LONG, width=70)
+UNITS = (
+    "V, A, kW, kvar, kVA; losses of one element in W; lengths in m. Volts are between lines unless headed "
+    "otherwise."
+)
+ALPHA = {"Cu": 0.00393, "Al": 0.00403}
+KINDS_OF_CELL = (
+    ("Stated on the drawing", Origin.GIVEN, "an input"),
+    ("Assumed", Origin.ASSUMED, "an input that was left blank; confirm it"),
+    ("Solved", Origin.SOLVED, "a result, or a formula over other cells that gives the same result"),
+)
+
+
+def program() -> str:
+    """Program and version as the head states them."""
+    try:
+        return f"Farend {version('farend')}"
+    except PackageNotFoundError:
+        return "Farend, version not known"
+
+
+def verdict_words(verdict: Verdict) -> str:
+    """A verdict as the sheet writes it."""
+    return FAIL if verdict is Verdict.FAILS else verdict.value
+
+
+def head_tables(subject: Subject) -> list[SheetTable]:
+    """Project, revision, who and when, and in one line how it came out."""
+    project = subject.drawing.project
+    rows: dict[str, Cells] = {}
+    for name, field in fields_of(type(project)).items():
+        if name != "note":
+            rows[name] = {"item": text(field.label), "value": given(getattr(project, name))}
+    rows["frequency"] = {"item": text("Frequency"), "value": given(f"{subject.drawing.frequency_hz:g} Hz")}
+    rows["units"] = {"item": text("Units"), "value": text(UNITS)}
+    rows["program"] = {"item": text("Worked out with"), "value": text(program())}
+    rows["result"] = {"item": text("Result"), "value": text(result_words(subject))}
+    if project.note:
+        rows["note"] = {"item": text("Note"), "value": given(project.note)}
+    key = {
+        word: {"item": Cell(word, origin=origin), "value": text(meaning)}
+        for word, origin, meaning in KINDS_OF_CELL
+    }
+    title = project.title or "Untitled layout"
+    return [
+        table("head", "Head", title, (ITEM, SAYS), rows, held=0),
+        table("key", "Head", "How cells are marked", (ITEM, SAYS), key, held=0),
+    ]
+
+
+def result_words(subject: Subject) -> str:
+    """`NOT SOLVED` with the reason, or how many checks fail and which is the worst."""
+    outcome = subject.outcome
+    if not subject.solved:
+        words = f"NOT SOLVED. {outcome.sentence}"
+        if outcome.largest_share is not None:
+            words += (
+                f" The largest share of the load that still solves is {outcome.largest_share * 100:.1f} %"
+            )
+            words += f", set by {subject.tell(outcome.to_blame)}." if outcome.to_blame else "."
+        return words
+    failing = [f for f in outcome.findings if f.verdict is Verdict.FAILS]
+    if not failing:
+        return "Solved. Every check holds."
+    worst = f" {failing[0].sentence}"
+    return f"Solved. {len(failing)} check{'s fail:' if len(failing) > 1 else ' fails:'}{worst}"
+
+
+def basis_tables(subject: Subject) -> list[SheetTable]:
+    """Limits, constants, rules, cases and every assumed value."""
+    return [_limits(subject), _rules(subject), _cases(subject), _constants(), _assumed(subject)]
+
+
+BASIS = "Basis"
+VALUE = Column("value", "Value", digits=1, width=12)
+UNIT = Column("unit", "Unit", style=Style.TEXT, width=18)
+
+
+def _limits(subject: Subject) -> SheetTable:
+    limits = subject.drawing.limits
+    whose = limits.name or "chosen for this drawing; no standard is claimed"
+    columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=40))
+    rows = {}
+    for name in ("low", "high", "drop", "loading"):
+        field = fields_of(type(limits))[name + "_percent"]
+        value = getattr(limits, field.name)
+        rows[name] = {
+            "item": text(field.label),
+            "value": given("not judged" if value is None else value),
+            "unit": text("" if value is None else field.unit),
+            "whose": given(whose) if value is not None else text(""),
+        }
+    return table("limits", BASIS, "Limits", columns, rows, held=0)
+
+
+RULES = (
+    ("Network", "Backward/forward sweep of the radial layout, to a closure below 1e-6 of the supply."),
+    (
+        "Load model",
+        "Each load states its shares of constant power, current and impedance; blank is constant power.",
+    ),
+    (
+        "Conductor temperature",
+        "R = R20·[1 + α·(θ − 20 °C)] at the stated operating temperature, the same in every case "
+        "(IEC 60287-1-1:2006, from memory). R20 is the maker's or the table's value as typed in.",
+    ),
+    (
+        "Transformer",
+        "Short-circuit impedance from uk and Pk, magnetising branch from i0 and P0 "
+        "(IEC 60076-1:2011 and IEC 60076-8:1997, editions from memory); uk and Pk are the nameplate's, the "
+        "same at every tap.",
+    ),
+    ("Voltage drop", "Difference of the volts at both ends, not a projection."),
+    ("Judging", "On unrounded figures; a figure close to its limit is printed with more digits."),
+    (
+        "Demand",
+        "Used as stated on the drawing; no diversity is applied beyond the percentages of the case.",
+    ),
+)
+
+
+def _rules(subject: Subject) -> SheetTable:
+    rows = {item: {"item": text(item), "value": text(words)} for item, words in RULES}
+    return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0)
+
+
+def _cases(subject: Subject) -> SheetTable:
+    columns = (
+        ITEM,
+        Column("supply_percent", "Supply voltage", "% of held", digits=1, width=12),
+        Column("load_percent", "Loads", "% of stated", digits=1, width=18),
+        Column("generation_percent", "Generation", "% of stated", digits=1, width=14),
+    )
+    rows: dict[str, Cells] = {}
+    for number, case in enumerate(subject.drawing.cases):
+        rows[str(number)] = {
+            "item": given(case.name),
+            "supply_percent": given(case.supply_percent),
+            "load_percent": given(case.load_percent),
+            "generation_percent": given(case.generation_percent),
+        }
+    return table("cases", BASIS, "Cases", columns, rows, held=0)
+
+
+def _constants() -> SheetTable:
+    columns = (ITEM, VALUE, UNIT, Column("source", "Source", style=Style.LONG, width=40))
+    names = {"Cu": "α of copper", "Al": "α of aluminium"}
+    rows = {
+        metal: {
+            "item": text(names[metal]),
+            "value": given(alpha),
+            "unit": text("per K at 20 °C"),
+            "source": text("IEC 60287-1-1, from memory"),
+        }
+        for metal, alpha in ALPHA.items()
+    }
+    return table("constants", BASIS, "Constants", columns, rows, held=0)
+
+
+def _assumed(subject: Subject) -> SheetTable:
+    columns = (
+        Column("item", "Element", style=Style.TEXT, width=24),
+        VALUE,
+        UNIT,
+        Column("field", "Field", style=Style.TEXT, width=22),
+        Column("basis", "Assumed because", style=Style.LONG, width=50),
+    )
+    rows: dict[str, Cells] = {}
+    for put in subject.outcome.assumptions:
+        element = subject.drawing.elements.get(put.id)
+        field = None if element is None else fields_of(type(element)).get(put.field)
+        rows[f"{put.id} {put.field}"] = {
+            "item": text(subject.tell(put.id)),
+            "field": text(field.label if field else put.field),
+            "value": Cell(put.value, digits=None, origin=Origin.ASSUMED),
+            "unit": text(put.unit),
+            "basis": text(put.basis),
+        }
+    note = "" if rows else "Nothing was assumed: every value is stated."
+    return table("assumed", BASIS, "Assumed values, to be confirmed", columns, rows, note=note, held=0)
+
+
+def note_tables(subject: Subject) -> list[SheetTable]:
+    """Cautions, and the remarks people wrote beside elements."""
+    rows = {str(n): {"item": text(f"{n}"), "value": text(words)} for n, words in enumerate(CAUTIONS, 1)}
+    found = [table("cautions", "Cautions", "Cautions", (ITEM, SAYS), rows, held=0)]
+    remarks = {
+        id: {"item": text(f"{subject.tell(id)}, {kind_name(e)}"), "value": given(e.note)}
+        for id, e in subject.drawing.elements.items()
+        if e.note
+    }
+    if remarks:
+        found.append(table("remarks", "Cautions", "Remarks on elements", (ITEM, SAYS), remarks, held=0))
+    return found

@@ -1,0 +1,25 @@
+"""All tables of the sheet, in the order a reviewer reads them."""
+
+from app.model.drawing import Drawing
+from app.sheet.attachments import load_tables, source_tables
+from app.sheet.balance import balance_tables
+from app.sheet.build import build_tables, switch_tables
+from app.sheet.findings import finding_tables
+from app.sheet.head import basis_tables, head_tables, note_tables
+from app.sheet.lines import line_tables
+from app.sheet.nodes import node_tables
+from app.sheet.subject import Subject
+from app.sheet.table import SheetTable
+from app.sheet.transformers import transformer_tables
+from app.study.outcome import Outcome
+
+PARTS = (
+    head_tables, basis_tables, node_tables, line_tables, transformer_tables, load_tables, source_tables,
+    switch_tables, balance_tables, finding_tables, build_tables, note_tables,
+)  # fmt: skip
+
+
+def tables(drawing: Drawing, outcome: Outcome) -> tuple[SheetTable, ...]:
+    """The sheet as tables, the same for a workbook, text files or a page."""
+    subject = Subject(drawing, outcome)
+    return tuple(t for part in PARTS for t in part(subject))

@@ -1,0 +1,141 @@
+"""Transformers: nameplate, tap in words, flow, loading, volts given out, iron and copper loss, excitation."""
+
+import math
+
+from app.model import taps
+from app.model.kinds import Transformer
+from app.sheet.lines import LOADING, LOSS, MARGIN, judge_loading
+from app.sheet.nodes import VERDICT, node_cell
+from app.sheet.subject import FROM_TO, Entry, Extreme, Plan, Subject, by_element
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
+from app.study.outcome import BranchState
+
+KEY = "transformers"
+DATA = (
+    *FROM_TO,
+    Column("kva", "Rating, one unit", "kVA", digits=0, width=8),
+    Column("units", "Parallel", "units", digits=0, width=8),
+    Column("v1", "Winding 1", "V", digits=0, width=9),
+    Column("v2", "Winding 2", "V", digits=0, width=9),
+    Column("group", "Vector group", style=Style.TEXT, width=8),
+    Column("uk", "uk", "%", digits=1, width=6),
+    Column("pk", "Pk", "W", digits=0, width=7),
+    Column("p0", "P0", "W", digits=0, width=7),
+    Column("i0", "i0", "%", digits=1, width=6),
+    Column("tapped", "Taps on", style=Style.TEXT, width=10),
+    Column("notch", "Tap", "notch", digits=0, width=6),
+    Column("tap_percent", "Tap", "%", digits=1, width=6),
+    Column("words", "Ratio as tapped", style=Style.LONG, width=24),
+)
+FIGURES = (
+    Column("i1", "I, winding 1", "A", style=Style.AMPS),
+    Column("i2", "I, winding 2", "A", style=Style.AMPS),
+    Column("s", "S fed in", "kVA", digits=2),
+    LOADING,
+    Column("u_out", "U given out", "V", style=Style.VOLTS, width=10),
+    Column("iron", "Iron", "W", digits=0, width=7),
+    Column("copper", "Copper", "W", digits=0, width=8),
+    LOSS,
+    Column("excitation", "Excitation", "% of rated", digits=1, width=10),
+)
+EXTREMES = (
+    Extreme("loading_max", "loading", True, "Loading, most"),
+    Extreme("loss_max", "loss", True, "Loss, most"),
+    Extreme("excitation_max", "excitation", True, "Excitation, most"),
+)
+NOTE = (
+    "Pk, P0, uk and i0 are of one unit. Copper = Pk·(I/Ir)². S = √3·U·I at the fed winding. "
+    "Excitation is the fed winding's voltage over its rated voltage as tapped."
+)
+
+
+def transformer_tables(subject: Subject) -> list[SheetTable]:
+    """Every transformer."""
+    found = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Transformer)}
+    plan = Plan(
+        KEY, "Transformers", "Transformers", DATA, FIGURES, EXTREMES, (MARGIN, VERDICT), NOTE
+    )  # fmt: skip
+    return by_element(subject, plan, [_entry(subject, i, e) for i, e in found.items()])
+
+
+def fed_winding(subject: Subject, id: str) -> int:
+    """The winding that power enters; 1 where nothing feeds it."""
+    states = [subject.state(id, c) for c in range(len(subject.cases))]
+    return 2 if any(s.live and not s.forward for s in states) else 1
+
+
+def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
+    states = [subject.state(id, c) for c in range(len(subject.cases))]
+    figures = [_figures(subject, id, t, s, c) for c, s in enumerate(states)]
+    judge = judge_loading(subject, any(s.live for s in states), True)
+    return Entry(id, _data(subject, id, t), figures, judge)
+
+
+def _data(subject: Subject, id: str, t: Transformer) -> Cells:
+    percent = t.tap * t.tap_step_percent
+    return (
+        subject.identity(id)
+        | subject.ends(id, t)
+        | {
+            "kva": subject.value(id, "rating_kva"),
+            "units": given(t.parallel),
+            "v1": subject.value(id, "v1_v"),
+            "v2": subject.value(id, "v2_v"),
+            "group": given(t.vector_group),
+            "uk": subject.value(id, "uk_percent"),
+            "pk": subject.value(id, "load_loss_w"),
+            "p0": subject.value(id, "no_load_loss_w"),
+            "i0": subject.value(id, "no_load_current_percent"),
+            "tapped": given(t.tapped),
+            "notch": given(t.tap),
+            "tap_percent": Cell(percent, f"{{notch}}*{t.tap_step_percent!r}"),
+            "words": text(taps.words(t, t.tap, fed_winding(subject, id))),
+        }
+    )
+
+
+def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case: int) -> Cells:
+    if not state.live:
+        return {}
+    fed, out = (t.start, t.end) if state.forward else (t.end, t.start)
+    i_fed = "i1" if state.forward else "i2"
+    root = subject.root(t.start)
+    fed_volts = subject.outcome.nodes.at(fed, case).voltage_v
+    s_kw, s_kvar = (state.start_kw, state.start_kvar) if state.forward else (state.end_kw, state.end_kvar)
+    fed_cell = {"fed": node_cell(subject, fed, "u", case)}
+    tapped = _tapped(t, 1 if state.forward else 2)
+    rated = taps.windings(t, t.tap)[0 if state.forward else 1]
+    return {
+        "i1": Cell(state.start_a),
+        "i2": Cell(state.end_a),
+        "s": Cell(math.hypot(s_kw, s_kvar), f"{root}*{{fed}}*{{{i_fed}}}/1000", fed_cell),
+        "loading": Cell(state.loading_percent, _loading(root, state.forward)),
+        "u_out": Cell(
+            subject.outcome.nodes.at(out, case).voltage_v,
+            "{out}",
+            {"out": node_cell(subject, out, "u", case)},
+        ),
+        "iron": Cell(state.iron_kw * 1e3, f"{{units}}*{{p0}}*({{fed}}/({tapped}))^2", fed_cell),
+        "copper": Cell(state.copper_kw * 1e3, _copper(root, state.forward)),
+        "loss": Cell(state.loss_kw * 1e3, "{iron}+{copper}"),
+        "excitation": Cell(fed_volts / rated * 100, f"{{fed}}/({tapped})*100", fed_cell),
+        "most": Cell(subject.drawing.limits.loading_percent),
+    }
+
+
+def _tapped(t: Transformer, winding: int) -> str:
+    """Rated voltage of a winding at its tap, as a formula."""
+    plain = f"{{v{winding}}}"
+    return f"{plain}*(1+{{tap_percent}}/100)" if t.tapped == f"winding {winding}" else plain
+
+
+def _loading(root: str, forward: bool) -> str:
+    """Current of the fed winding over its rated current."""
+    w = 1 if forward else 2
+    return f"{root}*{{v{w}}}*{{i{w}}}/({{kva}}*1000*{{units}})*100"
+
+
+def _copper(root: str, forward: bool) -> str:
+    """Load loss at the current of the winding that gives out, which carries no magnetising current."""
+    w = 2 if forward else 1
+    return f"{{units}}*{{pk}}*({root}*{{v{w}}}*{{i{w}}}/({{kva}}*1000*{{units}}))^2"
