@@ -1,0 +1,169 @@
+"""The rows of a network put in the order of the sweep: one row a place, loads gathered at their nodes."""
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from solver.forest import Forest
+from solver.network import Complex, Index, Network, Real
+
+
+@dataclass(frozen=True, slots=True)
+class Placed:
+    """What one sweep reads. The last axis of every array is the batch, or 1 long.
+
+    root : (zone, k, batch) complex [V] of the supplied zones, at depth 0
+    z : (live, k, k, batch) complex [ohm] of the line that feeds each place, 0 at the root of a zone
+    y : (live, k, k, batch) complex [S] at each place: shunts, half the line charging, magnetising
+        branches and constant-impedance loads; None where there is none
+    power : (live, k, batch) complex [VA] conjugate of the constant-power part; None where there is none
+    current : (live, k, batch) complex [A] conjugate of the constant-current part; None where there is none
+    ratio : (fed zone, 1, batch) complex, feeding side over fed side, of the transformer of each fed zone
+    series : (fed zone, 1, batch) complex [ohm] at the fed side
+    level : (zone, batch) float [V] no-load voltage of each zone
+    """
+
+    root: Complex
+    z: Complex
+    y: Complex | None
+    power: Complex | None
+    current: Complex | None
+    ratio: Complex
+    series: Complex
+    level: Real
+
+    def take(self, points: Index) -> "Placed":
+        """The same with some operating points only."""
+
+        def some(a: Complex | None) -> Complex | None:
+            return a if a is None or a.shape[-1] == 1 else np.ascontiguousarray(a[..., points])
+
+        names = ("root", "z", "y", "power", "current", "ratio", "series", "level")
+        return replace(self, **{name: some(getattr(self, name)) for name in names})
+
+
+def put(network: Network, forest: Forest) -> Placed:
+    """Gathers the rows of a network at the places of its forest.
+
+    network : Network
+    forest : Forest, of that network
+    Returns : Placed
+    """
+    supplied = int(forest.depth_zone[1])
+    root = network.source_voltage[forest.zone_source[:supplied]]
+    ratio, series = fed_transformers(network, forest)
+    power, current, load_y = _loads(network, forest)
+    lines = network.line_z if network.line_z.shape[0] else np.zeros((1, *network.line_z.shape[1:]), complex)
+    z = lines[forest.feeder]
+    z[forest.zone_start[:-1]] = 0
+    return Placed(
+        root=root,
+        z=z,
+        y=_admittance(network, forest, load_y),
+        power=power,
+        current=current,
+        ratio=ratio[:, None, :],
+        series=series[:, None, :],
+        level=_levels(forest, root, ratio),
+    )
+
+
+def fed_transformers(network: Network, forest: Forest) -> tuple[Complex, Complex]:
+    """Ratio (feeding over fed side) and series impedance (at the fed side) of every fed zone's transformer.
+
+    network : Network
+    forest : Forest, of that network
+    Returns : ratio (fed zone, batch) complex, impedance (fed zone, batch) complex [ohm]
+    """
+    rows = forest.zone_transformer[int(forest.depth_zone[1]) :]
+    back = (forest.transformer_way[rows] < 0)[:, None]
+    a, z = network.transformer_ratio[rows], network.transformer_z[rows]
+    return np.where(back, 1 / a, a), np.where(back, z * np.abs(a) ** 2, z)
+
+
+def magnetising(network: Network, forest: Forest) -> Complex:
+    """Magnetising admittance of every fed zone's transformer at the side that is fed.
+
+    network : Network
+    forest : Forest, of that network
+    Returns : (fed zone, batch) complex [S]
+    """
+    rows = forest.zone_transformer[int(forest.depth_zone[1]) :]
+    back = (forest.transformer_way[rows] < 0)[:, None]
+    y = network.transformer_y[rows]
+    return np.where(back, y * np.abs(network.transformer_ratio[rows]) ** 2, y)
+
+
+def _levels(forest: Forest, root: Complex, ratio: Complex) -> Real:
+    width = max(root.shape[-1], ratio.shape[-1])
+    supplied = root.shape[0]
+    level = np.empty((forest.zone_source.size, width))
+    level[:supplied] = np.abs(root).max(axis=1)
+    for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
+        above = level[forest.zone[forest.zone_fed[start:stop]]]
+        level[start:stop] = above / np.abs(ratio[start - supplied : stop - supplied])
+    return level
+
+
+def _loads(network: Network, forest: Forest) -> tuple[Complex | None, Complex | None, Complex | None]:
+    where = forest.place[network.load_node]
+    live = where >= 0
+    where, drawn = where[live], np.conj(network.load_power[live])
+    mix, reference = network.load_mix[live], network.load_reference[live]
+    parts: list[Complex | None] = []
+    for kind in range(3):
+        share = mix[:, kind]
+        if not share.any():
+            parts.append(None)
+            continue
+        part = drawn * share[:, None, None]
+        parts.append(gather(where, part if kind == 0 else part / reference**kind, forest.order.size))
+    return parts[0], parts[1], parts[2]
+
+
+def gather(where: Index, values: Complex, size: int) -> Complex:
+    """Adds rows up at their places.
+
+    where : (row,) place of each row
+    values : (row, ...) complex
+    size : number of places
+    Returns : (place, ...) complex
+    """
+    total = np.zeros((size, *values.shape[1:]), dtype=np.complex128)
+    if where.size and np.bincount(where, minlength=1).max() == 1:
+        total[where] = values
+    else:
+        np.add.at(total, where, values)
+    return total
+
+
+def _admittance(network: Network, forest: Forest, load_y: Complex | None) -> Complex | None:
+    k, live = network.conductors, forest.order.size
+    parts: list[tuple[Index, Complex]] = []
+    if load_y is not None and load_y.any():
+        parts.append((np.arange(live), _diagonal(load_y)))
+    shunts = np.flatnonzero(forest.place[network.shunt_node] >= 0)
+    if shunts.size:
+        parts.append((forest.place[network.shunt_node[shunts]], network.shunt_y[shunts]))
+    if network.line_y.any():
+        lines = np.flatnonzero(forest.line_way)
+        half = network.line_y[lines] / 2
+        parts.append((forest.place[network.line_from[lines]], half))
+        parts.append((forest.place[network.line_to[lines]], half))
+    iron = magnetising(network, forest)
+    if iron.any():
+        fed = forest.zone_fed[int(forest.depth_zone[1]) :]
+        parts.append((fed, _diagonal(np.repeat(iron[:, None, :], k, axis=1))))
+    if not parts:
+        return None
+    total = gather(*parts[0], live)
+    for where, values in parts[1:]:
+        total = total + gather(where, values, live)
+    return total
+
+
+def _diagonal(values: Complex) -> Complex:
+    row, k, width = values.shape
+    matrix = np.zeros((row, k, k, width), dtype=np.complex128)
+    matrix[:, np.arange(k), np.arange(k)] = values
+    return matrix

@@ -1,0 +1,178 @@
+"""From a network to its solution: trees, sweeps, then every branch and load from the settled voltages."""
+
+import numpy as np
+
+from solver.forest import Forest, Trouble, grow
+from solver.network import Complex, Network, Real
+from solver.placed import Placed, fed_transformers, gather, magnetising, put
+from solver.settle import settle
+from solver.solution import Solution
+from solver.status import Status
+from solver.sweep import backward, drawn, times
+
+
+def solve(
+    network: Network, *, forest: Forest | Trouble | None = None, warm: Complex | None = None
+) -> Solution:
+    """Solves every operating point of a network of radial trees.
+
+    network : Network
+    forest : Forest or Trouble of a network with the same connections, where it is known already
+    warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
+    Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
+        NOT_SETTLED where the sweeps still moved, INVALID where loops are closed or supplies joined
+    Source : see solver.sweep
+    """
+    forest = grow(network) if forest is None else forest
+    width = batch(network)
+    if isinstance(forest, Trouble):
+        return _unsolved(network, forest, width)
+    placed = put(network, forest)
+    start = _no_load(placed, forest, network.conductors, width)
+    if warm is not None:
+        guess = np.broadcast_to(warm[forest.order], start.shape)
+        start = np.where(np.isfinite(guess), guess, start)
+    settled = settle(placed, forest, start)
+    return _answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
+
+
+def batch(network: Network) -> int:
+    """Number of operating points of a network: the longest last axis.
+
+    network : Network
+    Returns : B
+    """
+    names = ("source_voltage", "line_z", "line_y", "transformer_ratio", "transformer_z", "transformer_y")
+    return max(getattr(network, n).shape[-1] for n in (*names, "load_power", "load_reference", "shunt_y"))
+
+
+def _no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:
+    """(live, k, batch) voltage of every zone with nothing connected."""
+    supplied = placed.root.shape[0]
+    zone = np.empty((forest.zone_source.size, k, width), dtype=np.complex128)
+    zone[:supplied] = placed.root
+    for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
+        above = zone[forest.zone[forest.zone_fed[start:stop]]]
+        zone[start:stop] = above / placed.ratio[start - supplied : stop - supplied]
+    return zone[forest.zone]
+
+
+def _answer(
+    network: Network,
+    forest: Forest,
+    placed: Placed,
+    voltage: Complex,
+    status: tuple[Status, ...],
+    iterations: np.ndarray,
+) -> Solution:
+    with np.errstate(all="ignore"):
+        inflow = backward(placed, forest, drawn(placed, voltage))
+        everywhere = _blank(network.node_count, voltage)
+        everywhere[forest.order] = voltage
+        lines = _lines(network, forest, everywhere, inflow)
+        transformers = _transformers(network, forest, voltage, inflow)
+        load_power, load_current = _loads(network, everywhere)
+        at_shunt = everywhere[network.shunt_node]
+        shunt_power = at_shunt * np.conj(times(network.shunt_y, at_shunt))
+        source_current = _blank(network.source_node.size, voltage)
+        supplied = int(forest.depth_zone[1])
+        source_current[forest.zone_source[:supplied]] = inflow[forest.zone_start[:supplied]]
+        source_power = everywhere[network.source_node] * np.conj(source_current)
+    drawn_power = _sum(load_power) + _sum(shunt_power)
+    lost = _sum(lines[2]) + _sum(lines[3]) + _sum(transformers[2]) + _sum(transformers[3])
+    given = _sum(source_power)
+    size = np.maximum(np.abs(given), np.nansum(np.abs(load_power), axis=(0, 1)))
+    gap = np.abs(given - drawn_power - lost)
+    closure = np.divide(gap, size, out=np.where(gap > 0, np.inf, gap), where=size > 0)
+    return Solution(
+        network,
+        forest,
+        status,
+        everywhere,
+        lines[0],
+        lines[1],
+        transformers[0],
+        transformers[1],
+        load_power,
+        load_current,
+        shunt_power,
+        source_current,
+        source_power,
+        iterations,
+        closure,
+        lines[2],
+        lines[3],
+        transformers[2],
+        transformers[3],
+    )
+
+
+def _sum(power: Complex) -> Complex:
+    """(batch,) of all live rows; nan where the point has no answer is kept by the sources."""
+    return np.nansum(power.reshape(-1, power.shape[-1]), axis=0)
+
+
+def _blank(rows: int, like: Complex) -> Complex:
+    return np.full((rows, *like.shape[1:]), complex(np.nan, np.nan))
+
+
+def _lines(
+    network: Network, forest: Forest, voltage: Complex, inflow: Complex
+) -> tuple[Complex, Complex, Complex, Complex]:
+    way = forest.line_way
+    child = np.where(way > 0, network.line_to, network.line_from)
+    series = inflow[forest.place[child]] * way[:, None, None]
+    series[way == 0] = complex(np.nan, np.nan)
+    first, last = voltage[network.line_from], voltage[network.line_to]
+    lost = np.conj(series) * times(network.line_z, series)
+    if not network.line_y.any():
+        return series, series, lost.sum(axis=1), np.zeros_like(lost[:, 0]) * lost[:, 0]
+    half = network.line_y / 2
+    first_charge, last_charge = times(half, first), times(half, last)
+    charging = first * np.conj(first_charge) + last * np.conj(last_charge)
+    return series + first_charge, series - last_charge, lost.sum(axis=1), charging.sum(axis=1)
+
+
+def _transformers(
+    network: Network, forest: Forest, voltage: Complex, inflow: Complex
+) -> tuple[Complex, Complex, Complex, Complex]:
+    supplied = int(forest.depth_zone[1])
+    rows, fed = forest.zone_transformer[supplied:], forest.zone_fed[supplied:]
+    ratio, series = (a[:, None, :] for a in fed_transformers(network, forest))
+    secondary = inflow[forest.zone_start[supplied:-1]]
+    feeding = voltage[fed]
+    iron = magnetising(network, forest)[:, None, :] * feeding
+    primary = secondary / np.conj(ratio) + iron
+    forward = (forest.transformer_way[rows] > 0)[:, None, None]
+    count = network.transformer_from.size
+    tables = [_blank(count, voltage) for _ in range(4)]
+    tables[0][rows] = np.where(forward, primary, -secondary)
+    tables[1][rows] = np.where(forward, secondary, -primary)
+    tables[2][rows] = np.abs(secondary) ** 2 * series
+    tables[3][rows] = feeding * np.conj(iron)
+    return tables[0], tables[1], tables[2].sum(axis=1), tables[3].sum(axis=1)
+
+
+def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
+    at = voltage[network.load_node]
+    size = np.abs(at) / network.load_reference
+    constant, linear, square = (network.load_mix[:, i][:, None, None] for i in range(3))
+    power = network.load_power * (constant + size * (linear + size * square))
+    return power, np.conj(power / at)
+
+
+def _unsolved(network: Network, trouble: Trouble, width: int) -> Solution:
+    like = np.empty((0, network.conductors, width), dtype=np.complex128)
+    line, transformer = network.line_from.size, network.transformer_from.size
+    load, shunt, source = network.load_node.size, network.shunt_node.size, network.source_node.size
+    sizes = (network.node_count, line, line, transformer, transformer, load, load, shunt, source, source)
+    whole = [_blank(n, like)[:, 0] for n in (line, line, transformer, transformer)]
+    return Solution(
+        network,
+        trouble,
+        (Status.INVALID,) * width,
+        *(_blank(n, like) for n in sizes),
+        np.zeros(width, dtype=np.intp),
+        np.full(width, np.nan),
+        *whole,
+    )
