@@ -26,8 +26,9 @@ class EditRefused(ValueError):
 
 def called(id: str, element: Element) -> str:
     """How a sentence names an element: `House, T2 (transformer)`."""
-    name = f"{element.name}, " if element.name and element.name != id else ""
-    return f"{name}{id} ({KIND_WORDS[kind_of(element)]})"
+    name = element.name if fault_of_value(fields_of(type(element))["name"], element.name) is None else ""
+    lead = f"{name}, " if name and name != id else ""
+    return f"{lead}{id} ({KIND_WORDS[kind_of(element)]})"
 
 
 def fault_of_id(id: str) -> str | None:

@@ -22,7 +22,7 @@ from app.model.kinds import (
     Supply,
     Transformer,
 )
-from app.model.levels import nominal_levels
+from app.model.levels import TWO_WIRE, nominal_levels
 
 HALF_SPAN = 4.0  # a branch dropped on empty paper runs this many steps to either side
 
@@ -76,10 +76,13 @@ def extend(
 
 
 def suited(drawing: Drawing, t: Transformer, near: str) -> Transformer:
-    """The transformer, turned where its winding 2 suits the near node's voltage better."""
+    """The transformer, turned where its winding 2 suits the near node's voltage better; single-phase
+    where the layout there has two wires."""
     level = nominal_levels(drawing).get(near)
     if level is None:
         return t
+    if level.wires == TWO_WIRE and not t.vector_group.startswith("I"):
+        t = replace(t, vector_group="Ii0")
     one, two = (abs(math.log(v / level.volts)) for v in (t.v1_v, t.v2_v))
     return taps.turned(t) if two < one else t
 
