@@ -265,7 +265,7 @@ def nearest(outlines: Iterable[Outline], point: QPointF, radius: float) -> Hit:
         rank = (_RANK[outline.kind], gap)
         if best is None or rank < best:
             best = rank
-            index = segment if outline.kind is HitKind.BRANCH else outline.index
+            index = segment if len(outline.points) > 1 else outline.index
             found = Hit(outline.kind, outline.id, index)
     return found
 

@@ -1,0 +1,68 @@
+"""The spots each caption, tag and block of node figures would take, best first."""
+
+from collections.abc import Iterator
+
+from PySide6.QtCore import QRectF, QSizeF
+
+from app.canvas import gauge
+from app.canvas.attachment_item import AttachmentItem
+from app.canvas.branch_item import BranchItem
+from app.canvas.element_item import ElementItem
+from app.canvas.lettering import LEFT, RIGHT
+from app.canvas.node_item import NodeItem
+from app.canvas.placing import Spot, around, beside, strips
+
+UNDER = 8.0
+
+
+def covered(item: ElementItem) -> Iterator[QRectF]:
+    """The boxes an element itself takes up."""
+    if isinstance(item, BranchItem | AttachmentItem):
+        yield from strips(item.points)
+    yield item.core()
+
+
+def caption_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
+    """Names: over a bar's end, away from the node for attachments, above level branches."""
+    width, height = room.width(), room.height()
+    if isinstance(item, BranchItem):
+        yield from beside(item.points, _half(item), width, height, "a")
+    elif isinstance(item, AttachmentItem):
+        yield from around(item.core(), width, height, _ATTACHMENT[item.facing])
+    elif isinstance(item, NodeItem) and item.bar and not item.upright:
+        yield from around(item.core(), width, height, "lr3412ab")
+    else:
+        yield from around(item.core(), width, height, "a43b12lr", gap=4.0)
+
+
+_ATTACHMENT = {"b": "rlb12a", "a": "rla43b", "r": "rab41l", "l": "lab32r"}
+
+
+def tag_spots(item: BranchItem, room: QSizeF) -> Iterator[Spot]:
+    """Tags: under level branches, right of upright ones."""
+    yield from beside(item.points, _half(item), room.width(), room.height(), "b")
+
+
+def figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
+    """Volts and gauge: under the foot of a bar with the gauge in line with it, else round the node."""
+    width, height = room.width(), room.height()
+    core = item.core()
+    if item.upright:
+        left = core.center().x() - gauge.WIDTH / 2 + 2
+        yield Spot(QRectF(left, core.bottom() + UNDER, width, height), LEFT)
+        yield Spot(QRectF(core.left() - width, core.bottom() + UNDER, width, height), RIGHT)
+        yield from around(core, width, height, "1234ba")
+    elif item.bar:
+        yield from around(core, width, height, "21ba34")
+    else:
+        yield from around(core, width, height, "b12a43", gap=UNDER)
+        for away in (30.0, 60.0, 90.0):
+            yield from around(core, width, height, "ba", gap=away)
+
+
+def _half(item: BranchItem) -> float:
+    if item.worn is None:
+        return 6.0
+    core = item.core()
+    level = abs(item.angle) % 180 < 45 or abs(item.angle) % 180 > 135
+    return (core.height() if level else core.width()) / 2

@@ -1,0 +1,177 @@
+"""The drawing board: the paper, tied to session, solution, attention and theme."""
+
+from PySide6.QtCore import QPointF, QRectF, Qt
+
+from app.canvas.branch_item import BranchItem
+from app.canvas.element_item import ElementItem, Look
+from app.canvas.geometry import Hit, HitKind, Outline, handles, longest, nearest
+from app.canvas.handles import Handles
+from app.canvas.ladder import TapLadder
+from app.canvas.node_item import NodeItem
+from app.canvas.paper import Paper
+from app.canvas.placing import Taken, Wish, around, place
+from app.canvas.tag import Tag
+from app.canvas.theme import Theme
+from app.live.attention import Attention
+from app.live.session import Session
+from app.live.solving import Solving
+from app.model.edits import Change
+from app.model.kinds import Branch, Transformer
+
+LADDER_GAP = 6.0
+
+
+class Board(Paper):
+    """The scene a person works on."""
+
+    def __init__(
+        self, session: Session, solving: Solving, attention: Attention, theme: Theme, parent=None
+    ) -> None:
+        super().__init__(Look(theme.palette, theme.symbols), parent)
+        self.session, self.solving, self.attention, self.theme = session, solving, attention, theme
+        self.ladders: dict[str, TapLadder] = {}
+        self._handles = Handles(self.look)
+        self.addItem(self._handles)
+        session.changed.connect(self._follow)
+        session.replaced.connect(self._start_over)
+        solving.solved.connect(lambda _: self.refresh())
+        solving.went_stale.connect(self._grey)
+        attention.selected.connect(lambda _: self._light())
+        attention.hovered.connect(lambda _: self._light())
+        attention.case_shown.connect(lambda _: self.refresh())
+        theme.changed.connect(self._dress)
+        self._start_over()
+
+    def item_of(self, id: str) -> ElementItem | None:
+        """The item that draws an element."""
+        return self.items_by_id.get(id)
+
+    def ladder_of(self, id: str) -> TapLadder | None:
+        """The tap ladder shown at a transformer, if one is."""
+        return self.ladders.get(id)
+
+    def hit(self, at: QPointF, radius_px: float = 8.0) -> Hit:
+        """What lies under a point of the scene."""
+        for id, ladder in self.ladders.items():
+            if ladder.isVisible() and ladder.sceneBoundingRect().contains(at):
+                return Hit(HitKind.LADDER, id)
+        return nearest(self._outlines(at, radius_px), at, radius_px)
+
+    def _outlines(self, at: QPointF, radius: float) -> list[Outline]:
+        box = QRectF(at.x() - radius, at.y() - radius, 2 * radius, 2 * radius)
+        found = list(self._handles.outlines)
+        for item in self.items(box, Qt.ItemSelectionMode.IntersectsItemBoundingRect):
+            if isinstance(item, ElementItem):
+                found += _outlines(item)
+        return found
+
+    # what happens -------------------------------------------------------------------------------
+
+    def _start_over(self) -> None:
+        self.look.stale = self.solving.stale
+        self.lay_out(self.session.drawing)
+        self.refresh()
+        self._light()
+
+    def _follow(self, change: Change) -> None:
+        drawing = self.session.drawing
+        ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
+        self.lay(drawing, ids)
+        self.arrange()
+        gone = self.attention.selection - drawing.elements.keys()
+        if gone:
+            self.attention.select(self.attention.selection - gone)
+        self._light()
+
+    def refresh(self) -> None:
+        """Write the figures of the case shown."""
+        outcome = self.solving.outcome
+        self._grey()
+        if outcome is None:
+            return
+        case = min(self.attention.case, len(outcome.cases) - 1)
+        grown = self.show_outcome(self.session.drawing, outcome, case, self.solving.reference)
+        if self.solving.reference is not None:
+            self.widen()
+        elif grown:
+            self.arrange()
+            self._place_ladders()
+        for ladder in self.ladders.values():
+            ladder.follow()
+
+    def _grey(self) -> None:
+        if self.look.stale != self.solving.stale:
+            self.look.stale = self.solving.stale
+            self.update()
+
+    def _dress(self) -> None:
+        self.look.palette, self.look.symbols = self.theme.palette, self.theme.symbols
+        self.lay(self.session.drawing, self.session.drawing.elements)
+        self.arrange()
+        self._place_ladders()
+        self.update()
+
+    # selection, hover, ladders ------------------------------------------------------------------
+
+    def _light(self) -> None:
+        chosen, hover = self.attention.selection, self.attention.hover
+        for id, item in self.items_by_id.items():
+            item.light(id in chosen, id == hover)
+            tag = self.tags.get(id)
+            if isinstance(tag, Tag):
+                tag.light(id in chosen or id == hover)
+        self._take_handles()
+        self._raise_ladders()
+
+    def _take_handles(self) -> None:
+        chosen = self.attention.selection
+        (id,) = chosen if len(chosen) == 1 else ("",)
+        item, element = self.items_by_id.get(id), self.session.drawing.elements.get(id)
+        if isinstance(item, BranchItem) and isinstance(element, Branch):
+            self._handles.hold(handles(element, id, item.points))
+        else:
+            self._handles.hold([])
+
+    def _raise_ladders(self) -> None:
+        """A ladder stands at each selected transformer."""
+        elements = self.session.drawing.elements
+        wanted = {i for i in self.attention.selection if isinstance(elements.get(i), Transformer)}
+        for id in self.ladders.keys() - wanted:
+            self.removeItem(self.ladders.pop(id))
+        for id in wanted - self.ladders.keys():
+            ladder = TapLadder(self, id, self.session, self.solving, self.theme)
+            ladder.setZValue(8)
+            self.ladders[id] = ladder
+            if ladder.scene() is not self:
+                self.addItem(ladder)
+        self._place_ladders()
+
+    def _place_ladders(self) -> None:
+        if not self.ladders:
+            return
+        taken = Taken(b.spot.box for b in self._blocks() if b.lines)
+        for item in self.items_by_id.values():
+            taken.add(item.core())
+        for id, ladder in self.ladders.items():
+            item = self.items_by_id[id]
+            box = ladder.boundingRect()
+            core = item.core().united(self.captions[id].spot.box)
+            spots = around(core, box.width(), box.height(), "a43rlb12", LADDER_GAP)
+            spot = place([Wish((id, "ladder"), spots)], taken)[id, "ladder"]
+            ladder.setPos(spot.box.topLeft() - box.topLeft())
+            if isinstance(item, BranchItem):
+                item.embrace(spot.box.united(core).united(self.tags[id].spot.box))
+
+
+def _outlines(item: ElementItem) -> list[Outline]:
+    if isinstance(item, NodeItem):
+        points = item.ends if item.bar else item.ends[:1]
+        return [Outline(HitKind.NODE, item.id, points, reach=3.0)]
+    core = item.core()
+    symbol, reach = (core.center(),), min(core.width(), core.height()) / 2
+    if not isinstance(item, BranchItem):
+        return [Outline(HitKind.ATTACHMENT, item.id, symbol, reach=reach)]
+    found = [Outline(HitKind.BRANCH, item.id, tuple(item.points), reach=item.flow.width / 2)]
+    if item.worn is not None:
+        found.append(Outline(HitKind.BRANCH, item.id, symbol, longest(item.points), reach))
+    return found

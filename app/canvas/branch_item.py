@@ -1,0 +1,145 @@
+"""Cables, overhead lines, transformers and switches: a route as broad as it is loaded."""
+
+import math
+from dataclasses import dataclass
+
+from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtGui import QPainterPath, QPainterPathStroker, QPen, QPolygonF, QTransform
+
+from app.canvas.element_item import ElementItem, dress, halo_colour, paint_worn
+from app.canvas.geometry import along, distance, longest, pose, route
+from app.canvas.standing import Standing, breadth, colour, pen
+from app.canvas.symbol_shapes import Glyph
+from app.canvas.user_symbol import Worn
+from app.model.drawing import Drawing
+from app.model.kinds import OverheadLine
+
+MARGIN = 14.0
+HALO = 9.0
+POLE = 3.5
+STEP = 0.25  # a change of breadth below this is not repainted
+
+
+@dataclass(frozen=True, slots=True)
+class Flow:
+    """What a branch shows: breadth in px, and the way power runs (True from start to end, None: no arrow)."""
+
+    width: float = 2.0
+    forward: bool | None = None
+
+    @staticmethod
+    def of(loading_percent: float, forward: bool | None) -> "Flow":
+        """The breadth in steps that the eye can tell."""
+        return Flow(round(breadth(loading_percent) / STEP) * STEP, forward)
+
+
+class BranchItem(ElementItem):
+    """A line, with the symbol of a transformer or switch on its longest run."""
+
+    def __init__(self, id: str, look) -> None:
+        super().__init__(id, look)
+        self.setZValue(1)
+        self.points: list[QPointF] = []
+        self.at = QPointF()
+        self.angle = 0.0
+        self.worn: Glyph | Worn | None = None
+        self.flow = Flow()
+        self._poles: list[QPointF] = []
+        self._runs: list[list[QPointF]] = []
+        self._halo = QPainterPath()
+        self._embraced = QRectF()
+
+    def lay(self, drawing: Drawing) -> None:
+        element = drawing.elements[self.id]
+        self.points = route(drawing, self.id)
+        self.at, self.angle = pose(self.points)
+        self.worn = dress(drawing, element, self.look.symbols)
+        self._runs = self._cut()
+        whole = sum(distance(a, b) for a, b in zip(self.points, self.points[1:], strict=False))
+        poles = isinstance(element, OverheadLine) and self.worn is None
+        self._poles = [along(self.points, whole * share) for share in (0.2, 0.8)] if poles else []
+        self._halo = self._around()
+        self._bound()
+
+    def _bound(self) -> None:
+        box = QPolygonF(self.points).boundingRect().united(self.core()).united(self._embraced)
+        self.bound(box.adjusted(-MARGIN, -MARGIN, MARGIN, MARGIN))
+
+    def embrace(self, box: QRectF) -> None:
+        """Spread the light of selection over the words and the tap ladder too; an empty box draws it in."""
+        if box != self._embraced:
+            self._embraced = box
+            self._bound()
+
+    def show_flow(self, flow: Flow) -> None:
+        """Breadth and direction; repaints only where they are new."""
+        if flow != self.flow:
+            self.flow = flow
+            self.update()
+
+    def core(self) -> QRectF:
+        if self.worn is None:
+            return QRectF(self.at.x() - 5, self.at.y() - 5, 10, 10)
+        turn = QTransform().translate(self.at.x(), self.at.y()).rotate(self.angle)
+        return turn.mapRect(self.worn.box)
+
+    def _cut(self) -> list[list[QPointF]]:
+        """The route on either side of the symbol."""
+        if self.worn is None:
+            return [self.points]
+        at = longest(self.points)
+        half = min(self.worn.half, distance(*self.points[at : at + 2]) / 2)
+        step = QPointF(math.cos(math.radians(self.angle)), math.sin(math.radians(self.angle))) * half
+        return [[*self.points[: at + 1], self.at - step], [self.at + step, *self.points[at + 1 :]]]
+
+    def _around(self) -> QPainterPath:
+        line = QPainterPath(self.points[0])
+        for point in self.points[1:]:
+            line.lineTo(point)
+        stroker = QPainterPathStroker()
+        stroker.setWidth(2 * HALO)
+        stroker.setCapStyle(Qt.PenCapStyle.RoundCap)
+        stroker.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
+        halo = stroker.createStroke(line)
+        if self.worn is not None:
+            symbol = QPainterPath()
+            symbol.addRoundedRect(self.core().adjusted(-HALO, -HALO, HALO, HALO), HALO, HALO)
+            halo = halo.united(symbol)
+        return halo.simplified()
+
+    def paint(self, painter, option, widget=None) -> None:
+        palette, stale = self.look.palette, self.look.stale
+        if self.lit:
+            painter.fillPath(self._lit_shape(), halo_colour(palette, self.selected))
+        painter.setPen(pen(self.standing, self.flow.width, palette, stale))
+        painter.setBrush(Qt.BrushStyle.NoBrush)
+        for run in self._runs:
+            painter.drawPolyline(run)
+        hue = colour(self.standing, palette, stale)
+        if self._poles:
+            painter.setPen(QPen(hue, 1.6))
+            painter.setBrush(palette.paper)
+            for point in self._poles:
+                painter.drawEllipse(point, POLE + self.flow.width / 4, POLE + self.flow.width / 4)
+        if self.worn is not None:
+            alarmed = self.standing in (Standing.NEAR, Standing.FAILED, Standing.DEAD) and not stale
+            paint_worn(
+                painter, self.worn, self.at, self.angle, hue if alarmed else palette.ink, palette.paper
+            )
+        elif self.flow.forward is not None:
+            self._paint_arrow(painter, hue)
+
+    def _lit_shape(self) -> QPainterPath:
+        if not self.selected or self._embraced.isEmpty():
+            return self._halo
+        whole = QPainterPath()
+        whole.addRoundedRect(self._embraced.adjusted(-HALO, -HALO, HALO, HALO), 10, 10)
+        return whole.united(self._halo)
+
+    def _paint_arrow(self, painter, hue) -> None:
+        turn = self.angle if self.flow.forward else self.angle + 180
+        reach = 5.0 + self.flow.width * 0.7
+        head = QPolygonF([QPointF(reach, 0), QPointF(-reach * 0.7, -reach), QPointF(-reach * 0.7, reach)])
+        painter.setPen(Qt.PenStyle.NoPen)
+        painter.setBrush(hue)
+        painter.drawPolygon(QTransform().translate(self.at.x(), self.at.y()).rotate(turn).map(head))

@@ -1,0 +1,105 @@
+"""What the drawn items share: the look they wear, their place on the paper, light under the hand."""
+
+from dataclasses import dataclass, field
+
+from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtGui import QColor, QPainter
+from PySide6.QtWidgets import QGraphicsItem, QStyleOptionGraphicsItem, QWidget
+
+from app.canvas.palette import LIGHT, Palette
+from app.canvas.standing import Standing
+from app.canvas.symbol_shapes import Glyph
+from app.canvas.symbols import glyph_of, paint_glyph
+from app.canvas.user_symbol import Worn, wear
+from app.model.drawing import Drawing
+from app.model.kinds import Element
+
+
+@dataclass
+class Look:
+    """What every item wears just now; one for the whole board."""
+
+    palette: Palette = field(default_factory=lambda: LIGHT)
+    symbols: str = "IEC"
+    stale: bool = False
+    printing: bool = False
+
+
+def dress(drawing: Drawing, element: Element, symbols: str) -> Glyph | Worn | None:
+    """The user's own symbol where the element's part has one, else ours."""
+    part = drawing.parts.get(element.part)
+    if part is not None and part.symbol is not None:
+        return wear(part.symbol, element)
+    return glyph_of(element, symbols)
+
+
+def paint_worn(
+    painter: QPainter, worn: Glyph | Worn, at: QPointF, angle: float, ink: QColor, paper: QColor
+) -> None:
+    """Either sort of symbol at a point."""
+    if isinstance(worn, Worn):
+        worn.paint(painter, at, angle)
+    else:
+        paint_glyph(painter, worn, at, angle, ink, paper)
+
+
+def halo_colour(palette: Palette, selected: bool) -> QColor:
+    """The light around what is selected, fainter around what is under the hand."""
+    colour = QColor(palette.good)
+    strength = (0.20 if palette.dark else 0.13) if selected else 0.08
+    colour.setAlphaF(strength)
+    return colour
+
+
+class ElementItem(QGraphicsItem):
+    """One element on the board, in scene coordinates; the board tells it what to show."""
+
+    def __init__(self, id: str, look: Look) -> None:
+        super().__init__()
+        self.id = id
+        self.look = look
+        self.standing = Standing.PLAIN
+        self.selected = False
+        self.hovered = False
+        self._bounds = QRectF()
+        self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
+
+    def lay(self, drawing: Drawing) -> None:
+        """Read place and data from the drawing."""
+        raise NotImplementedError
+
+    def core(self) -> QRectF:
+        """The box its symbol covers; captions keep off it."""
+        raise NotImplementedError
+
+    def stand(self, standing: Standing) -> None:
+        """Show how the element stands; repaints only where that is new."""
+        if standing is not self.standing:
+            self.standing = standing
+            self.update()
+
+    def light(self, selected: bool, hovered: bool) -> None:
+        """Selection and hover."""
+        if (selected, hovered) != (self.selected, self.hovered):
+            self.selected, self.hovered = selected, hovered
+            self.update()
+
+    @property
+    def lit(self) -> bool:
+        """Selected or under the hand, and on a screen."""
+        return (self.selected or self.hovered) and not self.look.printing
+
+    def bound(self, box: QRectF) -> None:
+        """Take up this box."""
+        if box != self._bounds:
+            self.prepareGeometryChange()
+            self._bounds = box
+        self.update()
+
+    def boundingRect(self) -> QRectF:
+        return self._bounds
+
+    def paint(
+        self, painter: QPainter, option: QStyleOptionGraphicsItem, widget: QWidget | None = None
+    ) -> None:
+        raise NotImplementedError

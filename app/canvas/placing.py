@@ -1,0 +1,130 @@
+"""Where captions and tags go: each tries its spots in order and takes the first that is free."""
+
+import math
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
+
+from PySide6.QtCore import QPointF, QRectF
+
+from app.canvas.lettering import CENTRE, LEFT, RIGHT
+
+CELL = 80.0
+CLEAR = 3.0  # kept free around everything
+AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
+
+
+@dataclass(frozen=True, slots=True)
+class Spot:
+    """A place for a block of text and how its lines align there."""
+
+    box: QRectF
+    align: float = CENTRE
+
+
+@dataclass(frozen=True, slots=True)
+class Wish:
+    """One block and the spots it would take, best first."""
+
+    key: tuple[str, str]
+    spots: Iterable[Spot]
+
+
+class Taken:
+    """Boxes that are in use, found again by the cells they touch."""
+
+    def __init__(self, boxes: Iterable[QRectF] = ()) -> None:
+        self._cells: dict[tuple[int, int], list[QRectF]] = {}
+        for box in boxes:
+            self.add(box)
+
+    def add(self, box: QRectF) -> None:
+        """Put a box in use."""
+        for cell in _cells(box):
+            self._cells.setdefault(cell, []).append(box)
+
+    def overlap(self, box: QRectF) -> float:
+        """How much of a box lies on boxes in use, px²; overlaps count each."""
+        near = {id(b): b for cell in _cells(box) for b in self._cells.get(cell, ())}
+        return sum(_shared_area(box, other) for other in near.values())
+
+
+def place(wishes: Iterable[Wish], taken: Taken) -> dict[tuple[str, str], Spot]:
+    """Each block at its first free spot, or where it hides least; earlier wishes come first."""
+    placed = {}
+    for wish in wishes:
+        best: tuple[float, Spot] | None = None
+        for spot in wish.spots:
+            over = taken.overlap(spot.box.adjusted(-CLEAR, -CLEAR, CLEAR, CLEAR))
+            if best is None or over < best[0]:
+                best = (over, spot)
+            if over == 0:
+                break
+        if best is not None:
+            placed[wish.key] = best[1]
+            taken.add(best[1].box)
+    return placed
+
+
+def around(core: QRectF, width: float, height: float, sides: str, gap: float = 6.0) -> Iterator[Spot]:
+    """Spots beside a box: b(elow), a(bove), l(eft), r(ight), and the four corners 1 2 3 4 from the lower
+    right clockwise (lower right, lower left, upper left, upper right)."""
+    mid, right, left = core.center(), core.right() + gap, core.left() - gap - width
+    above, below = core.top() - gap - height, core.bottom() + gap
+    table = {
+        "b": (mid.x() - width / 2, below, CENTRE),
+        "a": (mid.x() - width / 2, above, CENTRE),
+        "r": (right, mid.y() - height / 2, LEFT),
+        "l": (left, mid.y() - height / 2, RIGHT),
+        "1": (right, below, LEFT),
+        "2": (left, below, RIGHT),
+        "3": (left, above, RIGHT),
+        "4": (right, above, LEFT),
+    }
+    for side in sides:
+        x, y, align = table[side]
+        yield Spot(QRectF(x, y, width, height), align)
+
+
+def beside(points: list[QPointF], core: float, width: float, height: float, first: str) -> Iterator[Spot]:
+    """Spots along a route, at its longest run first: `first` is "b" or "a" on level runs.
+
+    core is half the breadth that must stay free at the middle of the longest run (a symbol's), px.
+    """
+    runs = sorted(zip(points, points[1:], strict=False), key=lambda r: -_length(*r))
+    flip = "a" if first == "b" else "b"
+    for away in AWAY:
+        for nth, (a, b) in enumerate(runs):
+            level = abs(b.x() - a.x()) >= abs(b.y() - a.y())
+            sides = first + flip if level else "rl" if first == "b" else "lr"
+            for share in (0.5, 0.36, 0.64, 0.22, 0.78):
+                at = a + (b - a) * share
+                off = _length(a, b) * abs(share - 0.5)
+                reach = core if nth == 0 and off < core + (width if level else height) / 2 else 4.0
+                box = QRectF(at.x() - 1, at.y() - reach, 2, 2 * reach)
+                box = box if level else QRectF(at.x() - reach, at.y() - 1, 2 * reach, 2)
+                yield from around(box, width, height, sides, gap=7.0 + away)
+
+
+def strips(points: list[QPointF], half: float = 3.0) -> Iterator[QRectF]:
+    """The boxes a route covers."""
+    for a, b in zip(points, points[1:], strict=False):
+        count = 1 if a.x() == b.x() or a.y() == b.y() else max(1, math.ceil(_length(a, b) / 24))
+        for k in range(count):
+            p, q = a + (b - a) * (k / count), a + (b - a) * ((k + 1) / count)
+            yield QRectF(p, q).normalized().adjusted(-half, -half, half, half)
+
+
+def _length(a: QPointF, b: QPointF) -> float:
+    return math.hypot(b.x() - a.x(), b.y() - a.y())
+
+
+def _cells(box: QRectF) -> Iterator[tuple[int, int]]:
+    for x in range(math.floor(box.left() / CELL), math.floor(box.right() / CELL) + 1):
+        for y in range(math.floor(box.top() / CELL), math.floor(box.bottom() / CELL) + 1):
+            yield x, y
+
+
+def _shared_area(one: QRectF, other: QRectF) -> float:
+    width = min(one.right(), other.right()) - max(one.left(), other.left())
+    height = min(one.bottom(), other.bottom()) - max(one.top(), other.top())
+    return width * height if width > 0 and height > 0 else 0.0

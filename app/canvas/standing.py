@@ -1,0 +1,118 @@
+"""How an element stands, and how that looks: colour, dash, shape and breadth, readable without colour."""
+
+import math
+from collections.abc import Mapping
+from dataclasses import replace
+from enum import Enum
+
+from PySide6.QtCore import QPointF, Qt
+from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen, QPolygonF
+
+from app.canvas.palette import Palette
+from app.model.drawing import Drawing
+from app.study.findings import judge
+from app.study.outcome import Finding, Outcome, State, Table, Verdict
+
+
+class Standing(Enum):
+    """In order of alarm."""
+
+    PLAIN = 0  # no figures yet
+    GOOD = 1
+    DEAD = 2
+    NEAR = 3
+    FAILED = 4
+
+
+_STANDING = {
+    Verdict.HOLDS: Standing.GOOD,
+    Verdict.NEAR: Standing.NEAR,
+    Verdict.FAILS: Standing.FAILED,
+    Verdict.BLOCKS: Standing.FAILED,
+}
+_COLOUR = {
+    Standing.PLAIN: "soft",
+    Standing.GOOD: "flow",
+    Standing.DEAD: "soft",
+    Standing.NEAR: "near",
+    Standing.FAILED: "failed",
+}
+_DASH = {Standing.NEAR: (18.0, 5.0), Standing.FAILED: (7.0, 4.0), Standing.DEAD: (1.0, 5.0)}
+
+
+def standings(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Standing]:
+    """The worst verdict on each element in one case; elements that no check names are left out."""
+    worst: dict[str, Standing] = {}
+    for finding in _findings(drawing, outcome, case):
+        standing = _STANDING.get(finding.verdict, Standing.PLAIN)
+        for id in finding.ids:
+            worst[id] = max(worst.get(id, standing), standing, key=lambda s: s.value)
+    return worst
+
+
+def _findings(drawing: Drawing, outcome: Outcome, case: int) -> list[Finding]:
+    """The outcome names the worst case of each check; with several cases the one shown is judged alone."""
+    known = all(id in drawing.elements for id in (*outcome.nodes.ids, *outcome.branches.ids))
+    if len(outcome.cases) < 2 or not known:
+        return list(outcome.findings)
+    shown = (outcome.cases[case],)
+    of_case = judge(drawing, _one_case(outcome.nodes, case), _one_case(outcome.branches, case), shown)
+    return [f for f in outcome.findings if not f.case] + of_case
+
+
+def _one_case(table: Table[State], case: int) -> Table[State]:
+    columns = {n: c if c.ndim == 1 else c[:, case : case + 1] for n, c in table.columns.items()}
+    return replace(table, columns=columns)
+
+
+def of_row(live: bool, id: str, worst: Mapping[str, Standing]) -> Standing:
+    """A live element stands as its worst check; a dead one is dead unless a check fails on it."""
+    judged = worst.get(id, Standing.GOOD)
+    return judged if live or judged is Standing.FAILED else Standing.DEAD
+
+
+def colour(standing: Standing, palette: Palette, stale: bool = False) -> QColor:
+    """The colour of a line, bar or frame."""
+    return palette.soft if stale else QColor(getattr(palette, _COLOUR[standing]))
+
+
+def breadth(loading_percent: float) -> float:
+    """The breadth of a line, px: grows evenly with loading up to 150 %; thin where no rating is known."""
+    if math.isnan(loading_percent):
+        return 2.0
+    return 2.0 + 0.05 * min(max(loading_percent, 0.0), 150.0)
+
+
+def pen(standing: Standing, width: float, palette: Palette, stale: bool = False) -> QPen:
+    """A line's pen: near the limit in long dashes, failed in short ones, dead in dots."""
+    made = QPen(colour(standing, palette, stale), width)
+    made.setCapStyle(Qt.PenCapStyle.FlatCap)
+    made.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
+    dash = _DASH.get(standing)
+    if dash:
+        made.setDashPattern([d / width for d in dash])
+    return made
+
+
+def mark(painter: QPainter, standing: Standing, at: QPointF, palette: Palette, stale: bool = False) -> None:
+    """The sign of a state, 12 px across: a triangle near the limit, a crossed diamond where it fails."""
+    if standing not in (Standing.NEAR, Standing.FAILED):
+        return
+    painter.setPen(Qt.PenStyle.NoPen)
+    painter.setBrush(colour(standing, palette, stale))
+    if standing is Standing.NEAR:
+        painter.drawPolygon(QPolygonF([at + QPointF(0, -5.5), at + QPointF(6, 5), at + QPointF(-6, 5)]))
+        cut = _strokes(((0, -1.6), (0, 1.2)), ((0, 3.2), (0, 3.4)))
+    else:
+        painter.drawPolygon(QPolygonF([at + QPointF(x, y) for x, y in ((0, -7), (7, 0), (0, 7), (-7, 0))]))
+        cut = _strokes(((-2.2, -2.2), (2.2, 2.2)), ((-2.2, 2.2), (2.2, -2.2)))
+    line = QPen(palette.raised, 1.5, Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap)
+    painter.strokePath(cut.translated(at), line)
+
+
+def _strokes(*lines: tuple[tuple[float, float], tuple[float, float]]) -> QPainterPath:
+    path = QPainterPath()
+    for a, b in lines:
+        path.moveTo(*a)
+        path.lineTo(*b)
+    return path

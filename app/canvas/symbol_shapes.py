@@ -1,0 +1,199 @@
+"""The shapes of our default symbols, after IEC 60617 or ANSI/IEEE 315 (from memory of both standards).
+
+A branch's symbol runs along x, its start at the left. An attachment's is fed from above.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from functools import lru_cache
+
+from PySide6.QtCore import QPointF, QRectF
+from PySide6.QtGui import QPainterPath
+
+STROKE = 2.0
+RING = 15.0  # a transformer's winding
+ROUND = 18.0  # supply and generator
+
+
+@dataclass(frozen=True)
+class Glyph:
+    """One symbol. `half` is how far its terminals lie from its middle."""
+
+    half: float
+    strokes: QPainterPath
+    solid: QPainterPath = field(default_factory=QPainterPath)
+    mask: QPainterPath = field(default_factory=QPainterPath)  # hides the line behind
+    letters: str = ""
+    letters_y: float = 0.0
+    upright: tuple[tuple[QPointF, QPainterPath], ...] = ()  # marks that never turn
+
+    @property
+    def box(self) -> QRectF:
+        """All of it, with the breadth of its strokes."""
+        whole = self.strokes.boundingRect().united(self.solid.boundingRect())
+        return whole.adjusted(-STROKE, -STROKE, STROKE, STROKE)
+
+
+@lru_cache(maxsize=256)
+def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
+    """The symbol of a kind; `variant` is open or closed, or a transformer's vector group."""
+    ansi = symbols == "ANSI"
+    draw: dict[str, Callable[[], Glyph]] = {
+        "supply": _supply,
+        "generator": lambda: _generator(ansi),
+        "load": lambda: _load(ansi),
+        "capacitor": lambda: _capacitor(ansi, variant == "open"),
+        "transformer": lambda: _coils() if ansi else _rings(variant),
+        "switch": lambda: _switch(ansi, variant == "open"),
+        "busbar": _busbar,
+        "joint": _joint,
+        "cable": lambda: _cable(ansi),
+        "overhead_line": lambda: _overhead(ansi),
+    }
+    return draw[kind]()
+
+
+def _path(*strokes: tuple[tuple[float, float], ...]) -> QPainterPath:
+    path = QPainterPath()
+    for first, *rest in strokes:
+        path.moveTo(*first)
+        for point in rest:
+            path.lineTo(*point)
+    return path
+
+
+def _ring(x: float, y: float, radius: float) -> QPainterPath:
+    path = QPainterPath()
+    path.addEllipse(QPointF(x, y), radius, radius)
+    return path
+
+
+def _wave(width: float, height: float, y: float = 0.0) -> QPainterPath:
+    path = QPainterPath(QPointF(-width, y))
+    path.cubicTo(-width * 0.6, y - height * 1.9, -width * 0.4, y - height * 1.9, 0, y)
+    path.cubicTo(width * 0.4, y + height * 1.9, width * 0.6, y + height * 1.9, width, y)
+    return path
+
+
+def _supply() -> Glyph:
+    ring = _ring(0, 0, ROUND)
+    return Glyph(ROUND, ring, mask=ring, upright=((QPointF(), _wave(10, 6)),))
+
+
+def _joined(*paths: QPainterPath) -> QPainterPath:
+    whole = QPainterPath()
+    for path in paths:
+        whole.addPath(path)
+    return whole
+
+
+def _generator(ansi: bool) -> Glyph:
+    ring = _ring(0, 0, ROUND)
+    if ansi:
+        return Glyph(ROUND, ring, mask=ring, letters="G")
+    wave = (QPointF(), _wave(5, 3, y=10))
+    return Glyph(ROUND, ring, mask=ring, letters="G", letters_y=-3, upright=(wave,))
+
+
+def _load(ansi: bool) -> Glyph:
+    head = _path(((-8, -8), (8, -8), (0, 8), (-8, -8)))
+    return Glyph(8, head, QPainterPath() if ansi else head, mask=head)
+
+
+def _capacitor(ansi: bool, apart: bool) -> Glyph:
+    lower = _path(((-12, 4), (12, 4)))
+    if ansi:
+        lower = QPainterPath(QPointF(-12, 9))
+        lower.quadTo(0, -1, 12, 9)
+    lead = ((0, -12), (0, -4)) if not apart else ((0, -12), (7, -5))
+    return Glyph(12, _joined(_path(lead, ((-12, -4), (12, -4)), ((0, 4), (0, 12))), lower))
+
+
+def _rings(group: str) -> Glyph:
+    reach = RING * 0.62
+    one, two = _ring(-reach, 0, RING), _ring(reach, 0, RING)
+    marks = tuple(
+        (QPointF(side * (reach + 3.5), 0), mark)
+        for side, mark in zip((-1, 1), _connections(group), strict=False)
+        if mark is not None
+    )
+    return Glyph(reach + RING, _joined(one, two), mask=one.united(two), upright=marks)
+
+
+def _connections(group: str) -> tuple[QPainterPath | None, QPainterPath | None]:
+    """The small delta, star or zigzag of either winding, read from the vector group."""
+    letters = [c for c in group if c in "DYZdyz"]
+    made = [_CONNECTION[c.lower()]() for c in letters[:2]]
+    return (made[0], made[1]) if len(made) == 2 else (None, None)
+
+
+def _delta() -> QPainterPath:
+    return _path(((0, -4.6), (4.4, 3), (-4.4, 3), (0, -4.6)))
+
+
+def _star() -> QPainterPath:
+    return _path(((0, 0), (0, 4.8)), ((0, 0), (-4.2, -3.4)), ((0, 0), (4.2, -3.4)))
+
+
+def _zigzag() -> QPainterPath:
+    return _path(((-3.5, -4), (3.5, -4), (-3.5, 4), (3.5, 4)))
+
+
+_CONNECTION: dict[str, Callable[[], QPainterPath]] = {"d": _delta, "y": _star, "z": _zigzag}
+
+
+def _coils() -> Glyph:
+    half, loop = 18.0, 10.0
+    path = _path(((-half, 0), (-8, 0)), ((half, 0), (8, 0)))
+    for k in range(4):
+        top = (k - 2) * loop
+        path.arcMoveTo(QRectF(-8 - loop / 2, top, loop, loop), 90)
+        path.arcTo(QRectF(-8 - loop / 2, top, loop, loop), 90, -180)
+        path.arcMoveTo(QRectF(8 - loop / 2, top, loop, loop), 90)
+        path.arcTo(QRectF(8 - loop / 2, top, loop, loop), 90, 180)
+    return Glyph(half, path)
+
+
+def _switch(ansi: bool, apart: bool) -> Glyph:
+    tip = 3.2 if ansi else 0.0
+    blade = ((-12 + tip * 0.8, -tip * 0.5), (10, -11)) if apart else ((-12 + tip, 0), (12 - tip, 0))
+    path = _path(((-20, 0), (-12 - tip, 0)), blade, ((12 + tip, 0), (20, 0)))
+    if ansi:
+        ends = _joined(_ring(-12, 0, tip), _ring(12, 0, tip))
+        return Glyph(20, _joined(path, ends), mask=ends)
+    return Glyph(20, _joined(path, _path(((12, -6), (12, 6)))), _ring(-12, 0, 2.6))
+
+
+def _busbar() -> Glyph:
+    bar = QPainterPath()
+    bar.addRoundedRect(QRectF(-18, -3, 36, 6), 3, 3)
+    return Glyph(18, bar, bar)
+
+
+def _joint() -> Glyph:
+    return Glyph(18, _path(((-18, 0), (18, 0))), _ring(0, 0, 5))
+
+
+def _cable(ansi: bool) -> Glyph:
+    """A run between its two ends: ticks, or the half circles of sealing ends."""
+    if not ansi:
+        return Glyph(20, _joined(_wave(17, 6), _path(((-17, -5), (-17, 5)), ((17, -5), (17, 5)))))
+    ends = QPainterPath()
+    for x, way in ((-19, 180), (7, -180)):
+        ends.arcMoveTo(QRectF(x, -6, 12, 12), 90)
+        ends.arcTo(QRectF(x, -6, 12, 12), 90, way)
+    return Glyph(20, _joined(_wave(11, 5), ends))
+
+
+def _overhead(ansi: bool) -> Glyph:
+    """A run on its poles."""
+    run = _path(((-20, -4), (20, -4)))
+    if ansi:
+        poles = _path(
+            ((-11, -9), (-11, 11)), ((11, -9), (11, 11)), ((-15, -4), (-7, -4)), ((7, -4), (15, -4))
+        )
+        return Glyph(20, _joined(run, poles))
+    rings = _joined(_ring(-10, -4, 4), _ring(10, -4, 4))
+    gaps = _path(((-20, -4), (-14, -4)), ((-6, -4), (6, -4)), ((14, -4), (20, -4)))
+    feet = _path(((-10, 0), (-10, 11)), ((10, 0), (10, 11)))
+    return Glyph(20, _joined(gaps, rings, feet))

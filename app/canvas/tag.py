@@ -1,0 +1,185 @@
+"""Text beside elements: captions, the rounded tags of branches, the figures and gauge of nodes."""
+
+import math
+
+from PySide6.QtCore import QPointF, QRectF, QSizeF, Qt
+from PySide6.QtGui import QPen
+from PySide6.QtWidgets import QGraphicsItem
+
+from app.canvas import gauge, lettering
+from app.canvas.element_item import Look
+from app.canvas.lettering import LEFT, Line
+from app.canvas.placing import Spot
+from app.canvas.standing import Standing, colour, mark
+
+ROUNDING = 12.0  # sizes grow in steps, so that a changing figure does not make its neighbours jump
+SMALLEST_ZOOM = 0.45
+
+
+class Caption(QGraphicsItem):
+    """Lines of text at a spot. It repaints only when the text is another."""
+
+    PAD = QSizeF(2, 1)
+
+    def __init__(self, id: str, look: Look) -> None:
+        super().__init__()
+        self.id = id
+        self.look = look
+        self.lines: tuple[Line, ...] = ()
+        self.standing = Standing.PLAIN
+        self.spot = Spot(QRectF())
+        self._room = QSizeF()
+        self.setZValue(4)
+        self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
+        self.hide()
+
+    @property
+    def text(self) -> str:
+        """The bare text."""
+        return lettering.words(self.lines)
+
+    @property
+    def room(self) -> QSizeF:
+        """What it needs, in steps."""
+        return self._room
+
+    def write(self, lines: tuple[Line, ...], standing: Standing = Standing.PLAIN) -> bool:
+        """Take new text; True where it needs another spot. The same text changes nothing."""
+        if lines == self.lines and standing is self.standing:
+            return False
+        self.lines, self.standing = lines, standing
+        self.setVisible(bool(lines))
+        self.update()
+        room = self._needed()
+        fits = room.width() <= self._room.width() and room.height() == self._room.height()
+        if not fits:
+            self._room = room
+        return not fits
+
+    def shrink(self) -> bool:
+        """Give back room that is not needed any more; True where there was some."""
+        room = self._needed()
+        smaller = room != self._room
+        self._room = room
+        return smaller
+
+    def _needed(self) -> QSizeF:
+        if not self.lines:
+            return QSizeF(0, 0)
+        bare = lettering.size(self.lines)
+        width = math.ceil((bare.width() + self._extra()) / ROUNDING) * ROUNDING
+        return QSizeF(width + 2 * self.PAD.width(), self._height(bare.height()) + 2 * self.PAD.height())
+
+    def _extra(self) -> float:
+        return 0.0
+
+    def _height(self, bare: float) -> float:
+        return bare
+
+    def settle(self, spot: Spot) -> None:
+        """Stand at this spot from now on."""
+        if spot != self.spot:
+            self.prepareGeometryChange()
+            self.spot = spot
+            self.update()
+
+    def boundingRect(self) -> QRectF:
+        return self.spot.box.adjusted(-1, -1, 1, 1)
+
+    def paint(self, painter, option, widget=None) -> None:
+        if self.lines and (self.look.printing or painter.worldTransform().m11() >= SMALLEST_ZOOM):
+            self._paint(painter)
+
+    def _paint(self, painter) -> None:
+        self._letter(painter, self.spot.box, None)
+
+    def _letter(self, painter, box, over) -> None:
+        w, h = self.PAD.width(), self.PAD.height()
+        lettering.paint(
+            painter,
+            self.lines,
+            box.topLeft() + QPointF(w, h),
+            box.width() - 2 * w,
+            self.look.palette,
+            self.spot.align,
+            over,
+        )
+
+
+class Figures(Caption):
+    """A caption whose figures go grey when they do not belong to the drawing as it stands."""
+
+    def _paint(self, painter) -> None:
+        self._letter(painter, self.spot.box, self.look.palette.soft if self.look.stale else None)
+
+
+class Tag(Figures):
+    """A rounded card on the paper; near and failed carry their mark and frame."""
+
+    PAD = QSizeF(8, 4)
+
+    def __init__(self, id: str, look: Look) -> None:
+        super().__init__(id, look)
+        self.setZValue(5)
+        self.lit = False
+
+    def light(self, lit: bool) -> None:
+        """Join the light of its branch."""
+        if lit != self.lit:
+            self.lit = lit
+            self.update()
+
+    def _extra(self) -> float:
+        return 18.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
+
+    def _paint(self, painter) -> None:
+        palette, stale = self.look.palette, self.look.stale
+        alarmed = self.standing in (Standing.NEAR, Standing.FAILED)
+        frame = colour(self.standing, palette, stale) if alarmed else palette.faint
+        if self.lit and not self.look.printing and not alarmed:
+            frame = palette.good
+        painter.setPen(QPen(frame, 1.5 if alarmed or self.lit else 1.0))
+        painter.setBrush(palette.raised)
+        painter.drawRoundedRect(self.spot.box.adjusted(0.5, 0.5, -0.5, -0.5), 6, 6)
+        box = self.spot.box.adjusted(self._extra(), 0, 0, 0)
+        if alarmed:
+            mark(painter, self.standing, QPointF(box.left() - 4, box.center().y()), palette, stale)
+        self._letter(painter, box, palette.soft if stale else None)
+
+
+class NodeFigures(Figures):
+    """Volts and percent with the gauge at their left."""
+
+    def __init__(self, id: str, look: Look) -> None:
+        super().__init__(id, look)
+        self.reading: gauge.Reading | None = None
+
+    def read(self, reading: gauge.Reading | None) -> None:
+        """Take new limits and voltages; repaints only where they are new."""
+        if reading != self.reading:
+            self.reading = reading
+            self.update()
+
+    def _extra(self) -> float:
+        marked = 16.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
+        return gauge.WIDTH + 4 + marked if len(self.lines) > 1 else 0.0
+
+    def _height(self, bare: float) -> float:
+        return max(bare, gauge.HEIGHT) if len(self.lines) > 1 else bare
+
+    def _paint(self, painter) -> None:
+        palette, stale = self.look.palette, self.look.stale
+        box = self.spot.box
+        bare = lettering.size(self.lines)
+        if self.reading is not None and len(self.lines) > 1:
+            top = box.center().y() - gauge.HEIGHT / 2
+            gauge.paint(painter, QPointF(box.left(), top), self.reading, self.standing, palette, stale)
+        down = (box.height() - bare.height()) / 2 - self.PAD.height()
+        text = box.adjusted(self._extra(), down, 0, 0)
+        if self.standing in (Standing.NEAR, Standing.FAILED) and len(self.lines) > 1:
+            mark(painter, self.standing, QPointF(text.left() - 8, box.center().y()), palette, stale)
+        w, h = self.PAD.width(), self.PAD.height()
+        over = palette.soft if stale else None
+        lettering.paint(
+            painter, self.lines, text.topLeft() + QPointF(w, h), bare.width(), palette, LEFT, over
+        )

@@ -1,0 +1,147 @@
+"""What the board writes beside each element: names, data in a line, figures, and changes during a drag."""
+
+import math
+
+from app.canvas.lettering import Line, Run, Style
+from app.model import figures
+from app.model.drawing import Drawing
+from app.model.kinds import (
+    AnyElement,
+    Capacitor,
+    Generator,
+    Joint,
+    Load,
+    Supply,
+    Switch,
+    Transformer,
+)
+from app.model.kinds import (
+    Line as LineElement,
+)
+from app.study.outcome import BranchState, NodeState
+
+Lines = tuple[Line, ...]
+
+
+def caption(drawing: Drawing, id: str) -> Lines:
+    """The name, and what it is in a line or two."""
+    element = drawing.elements[id]
+    bare = isinstance(element, Joint) and not element.name
+    name = ((Run(element.name or id, Style.QUIET if bare else Style.NAME),),)
+    return name + tuple((Run(text, Style.QUIET),) for text in describe(element))
+
+
+def describe(element: AnyElement) -> tuple[str, ...]:
+    """The data of an element in the fewest words."""
+    match element:
+        case Transformer():
+            return _transformer(element)
+        case LineElement():
+            return (_line(element),)
+        case Switch():
+            return ("closed" if element.closed else "open",)
+        case Supply():
+            held = f"held at {figures.typed(element.held_percent)} %"
+            two = ", two-wire" if element.wires == "two-wire" else ""
+            return (f"{_kilovolts(element.nominal_v)}{two}", held)
+        case Load():
+            return (_load(element),)
+        case Generator():
+            kvar = (
+                f" {figures.plain(element.output_kvar, 1, 'kvar', sign=True)}" if element.output_kvar else ""
+            )
+            return (f"{figures.typed(element.output_kw)} kW{kvar}",)
+        case Capacitor():
+            return (f"{figures.typed(element.rating_kvar)} kvar" + ("" if element.connected else ", off"),)
+    return ()
+
+
+def _transformer(t: Transformer) -> tuple[str, ...]:
+    units = f"{t.parallel} × " if t.parallel > 1 else ""
+    first = f"{units}{figures.typed(t.rating_kva)} kVA {_ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
+    if not t.tap:
+        return (first,)
+    return first, f"tap {figures.percent(t.tap * t.tap_step_percent, _digits(t.tap_step_percent), sign=True)}"
+
+
+def _digits(step: float) -> int:
+    return next((d for d in (0, 1, 2) if math.isclose(step, round(step, d))), 3)
+
+
+def _ratio(v1: float, v2: float) -> str:
+    if max(v1, v2) < 1000:
+        return f"{figures.typed(v1)}/{figures.typed(v2)} V"
+    return f"{figures.typed(v1 / 1000)}/{figures.typed(v2 / 1000)} kV"
+
+
+def _kilovolts(volts: float) -> str:
+    return f"{figures.typed(volts / 1000)} kV" if volts >= 1000 else f"{figures.typed(volts)} V"
+
+
+def _line(line: LineElement) -> str:
+    runs = f"{line.parallel} × " if line.parallel > 1 else ""
+    area = f"{figures.typed(line.area_mm2)} mm² {line.conductor}" if line.area_mm2 else ""
+    what = line.type or area
+    return f"{runs}{what} {figures.length(line.length_m)}".strip()
+
+
+def _load(load: Load) -> str:
+    demand, unit = (load.demand_kw, "kW") if load.demand_kva is None else (load.demand_kva, "kVA")
+    leading = " leading" if load.leading else ""
+    return f"{figures.typed(demand or 0.0)} {unit} {load.power_factor:g}{leading}"
+
+
+def sent_kw(state: BranchState) -> tuple[float, bool]:
+    """The power that enters a branch, and whether it runs from start to end."""
+    if state.start_kw >= 0 and (state.end_kw >= 0 or state.forward):
+        return state.start_kw, True
+    return -state.end_kw, False
+
+
+def branch_figures(state: BranchState, angle: float, before: BranchState | None) -> Lines:
+    """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
+    if not state.live:
+        return ()
+    kw, forward = sent_kw(state)
+    rated = not math.isnan(state.loading_percent)
+    load = figures.percent(state.loading_percent) if rated else figures.amps(state.current_a)
+    first: Line = (Run(f"{figures.power(kw)} {arrow(angle, forward)} {load}"),)
+    second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
+    if before is not None and before.live:
+        if rated:
+            first += change(state.loading_percent - before.loading_percent, 1, "%")
+        second += loss_change(state.loss_kw - before.loss_kw)
+    return first, second
+
+
+def arrow(angle: float, forward: bool) -> str:
+    """The way the power runs on the paper, to the nearest quarter turn."""
+    turn = angle if forward else angle + 180
+    return "→↓←↑"[round(turn / 90) % 4]
+
+
+def node_figures(state: NodeState, before: NodeState | None) -> Lines:
+    """Volts, and percent of nominal under them."""
+    if not state.live:
+        return ((Run("dead", Style.QUIET),),)
+    first: Line = (Run(figures.volts(state.voltage_v)),)
+    second: Line = (Run(figures.percent(state.percent), Style.QUIET),)
+    if before is not None and before.live:
+        delta = state.voltage_v - before.voltage_v
+        scale, digits, unit = (1.0, 1, "V") if abs(state.voltage_v) < 999.95 else (1e-3, 3, "kV")
+        second += change(delta * scale, digits, unit)
+    return first, second
+
+
+def change(delta: float, digits: int, unit: str) -> Line:
+    """▲ 5.8 V; nothing where it would read as nought."""
+    if math.isnan(delta) or float(f"{abs(delta):.{digits}f}") == 0.0:
+        return ()
+    return (Run(f"{'▲' if delta > 0 else '▼'} {figures.plain(abs(delta), digits, unit)}", Style.CHANGE),)
+
+
+def loss_change(delta_kw: float) -> Line:
+    """▼ 40 W."""
+    if math.isnan(delta_kw) or abs(delta_kw) < 0.0005:
+        return ()
+    return (Run(f"{'▲' if delta_kw > 0 else '▼'} {figures.loss(abs(delta_kw))}", Style.CHANGE),)
