@@ -2,8 +2,22 @@
 
 from solver.forest import Forest, Joined, Loop, Trouble, grow
 from solver.network import Network
+from solver.share import Share, largest_share
 from solver.solution import Solution
 from solver.solve import batch, solve
 from solver.status import Status
 
-__all__ = ["Forest", "Joined", "Loop", "Network", "Solution", "Status", "Trouble", "batch", "grow", "solve"]
+__all__ = [
+    "Forest",
+    "Joined",
+    "Loop",
+    "Network",
+    "Share",
+    "Solution",
+    "Status",
+    "Trouble",
+    "batch",
+    "grow",
+    "largest_share",
+    "solve",
+]

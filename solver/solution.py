@@ -3,8 +3,6 @@
 from dataclasses import dataclass
 from functools import cached_property
 
-import numpy as np
-
 from solver.forest import Forest, Trouble
 from solver.network import Complex, Index, Network, Real
 from solver.status import Status
@@ -28,7 +26,12 @@ class Solution:
     source_current : (source, k, batch) complex [A] supplied
     source_power : (source, k, batch) complex [VA] supplied
     iterations : (batch,) int, sweeps taken
-    closure : (batch,) float, |sum of supplied - drawn - lost| over the larger of supplied and drawn
+    closure : (batch,) float, |supplied - drawn - lost| over the larger of supplied and drawn, with the
+        losses summed branch by branch from their currents and voltages
+    line_series_loss : (line, batch) complex [VA] of all conductors, I² Z
+    line_charging : (line, batch) complex [VA] drawn by the admittance at both ends, V² conj(Y)
+    transformer_series_loss : (transformer, batch) complex [VA], I² Z; its real part is the copper loss
+    transformer_magnetising_loss : (transformer, batch) complex [VA], V² conj(Y); real part the iron loss
     """
 
     network: Network

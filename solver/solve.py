@@ -3,12 +3,13 @@
 import numpy as np
 
 from solver.forest import Forest, Trouble, grow
-from solver.network import Complex, Network, Real
-from solver.placed import Placed, fed_transformers, gather, magnetising, put
+from solver.load import drawn
+from solver.network import Complex, Network
+from solver.placed import Placed, fed_transformers, magnetising, put
 from solver.settle import settle
 from solver.solution import Solution
 from solver.status import Status
-from solver.sweep import backward, drawn, times
+from solver.sweep import backward, currents, times
 
 
 def solve(
@@ -66,7 +67,7 @@ def _answer(
     iterations: np.ndarray,
 ) -> Solution:
     with np.errstate(all="ignore"):
-        inflow = backward(placed, forest, drawn(placed, voltage))
+        inflow = backward(placed, forest, currents(placed, voltage))
         everywhere = _blank(network.node_count, voltage)
         everywhere[forest.order] = voltage
         lines = _lines(network, forest, everywhere, inflow)
@@ -155,9 +156,7 @@ def _transformers(
 
 def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
     at = voltage[network.load_node]
-    size = np.abs(at) / network.load_reference
-    constant, linear, square = (network.load_mix[:, i][:, None, None] for i in range(3))
-    power = network.load_power * (constant + size * (linear + size * square))
+    power = drawn(network.load_power, network.load_mix[:, None, None, :], at, network.load_reference)
     return power, np.conj(power / at)
 
 

@@ -19,7 +19,7 @@ def times(matrix: Complex, vector: Complex) -> Complex:
     return np.einsum("rijb,rjb->rib", matrix, vector)
 
 
-def drawn(placed: Placed, voltage: Complex) -> Complex:
+def currents(placed: Placed, voltage: Complex) -> Complex:
     """Current that leaves every place: loads and admittances at the voltage they see.
 
     I = conj(S / V) for constant power, conj(S0) / Vref · V / |V| for constant current, Y V for the rest.
@@ -123,4 +123,4 @@ def sweep(placed: Placed, forest: Forest, voltage: Complex) -> Complex:
     Source : Shirmohammadi, Hong, Semlyen, Luo, A compensation-based power flow method for weakly meshed
         distribution and transmission networks, IEEE Trans. Power Systems 3 (1988) 753-762
     """
-    return forward(placed, forest, backward(placed, forest, drawn(placed, voltage)))
+    return forward(placed, forest, backward(placed, forest, currents(placed, voltage)))
