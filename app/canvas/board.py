@@ -76,8 +76,11 @@ class Board(Paper):
     def _follow(self, change: Change) -> None:
         drawing = self.session.drawing
         ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
-        self.lay(drawing, ids)
-        self.arrange()
+        grown = self.lay(drawing, ids)
+        if self.solving.reference is not None:
+            self.widen()
+        elif grown or change.rest:
+            self.arrange()
         gone = self.attention.selection - drawing.elements.keys()
         if gone:
             self.attention.select(self.attention.selection - gone)

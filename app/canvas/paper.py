@@ -42,18 +42,25 @@ class Paper(QGraphicsScene):
         self.lay(drawing, drawing.elements)
         self.arrange()
 
-    def lay(self, drawing: Drawing, ids: Iterable[str]) -> None:
-        """Read these elements again, and whatever hangs on them: made, moved, changed or gone."""
+    def lay(self, drawing: Drawing, ids: Iterable[str]) -> bool:
+        """Read these elements again, and whatever hangs on them: made, moved, changed or gone.
+
+        True where words must find new places."""
+        moved = False
         for id in sorted(_with_neighbours(drawing, frozenset(ids)), key=_rank(drawing)):
             element = drawing.elements.get(id)
             if id in self.items_by_id and not _fits(self.items_by_id[id], element):
                 self._take_off(id)
+                moved = True
             if element is None:
                 continue
             if id not in self.items_by_id:
                 self._put_on(id, element)
-            self.items_by_id[id].lay(drawing)
-            self.captions[id].write(wording.caption(drawing, id))
+            item, covered = self.items_by_id[id], self.items_by_id[id].boundingRect()
+            item.lay(drawing)
+            moved |= item.boundingRect() != covered
+            moved |= self.captions[id].write(wording.caption(drawing, id))
+        return moved
 
     def _put_on(self, id: str, element: object) -> None:
         item: ElementItem

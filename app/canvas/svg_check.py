@@ -199,18 +199,21 @@ def _pixels(text: str) -> float | None:
 
 def _weigh(contents: Contents) -> None:
     """Writes out every <use> in thought: refuses circles and pictures that would grow too large."""
-    known: dict[str, int] = {}
+    known: dict[str, tuple[int, int]] = {}  # id -> elements and depth once written out
 
-    def weight(id: str, path: tuple[str, ...]) -> int:
+    def weigh(id: str, path: tuple[str, ...]) -> tuple[int, int]:
         if id in path:
             raise SymbolRefused(f"The picture's part #{id} uses itself.")
-        if len(path) > DEEPEST:
-            raise SymbolRefused(f"The picture is nested more than {DEEPEST} deep.")
         if id not in known:
-            uses = contents.within.get(id, Counter())
-            inner = sum(n * weight(used, (*path, id)) for used, n in uses.items())
-            known[id] = 1 + contents.weight[id] + inner
+            if len(path) > DEEPEST:
+                raise SymbolRefused(f"The picture's parts use each other more than {DEEPEST} deep.")
+            uses = [(n, weigh(used, (*path, id))) for used, n in contents.within.get(id, Counter()).items()]
+            drawn = 1 + contents.weight[id] + sum(n * inner for n, (inner, _) in uses)
+            known[id] = drawn, 1 + max((deep for _, (_, deep) in uses), default=0)
         return known[id]
 
-    if weight("", ()) > MOST_DRAWN:
+    drawn, deep = weigh("", ())
+    if drawn > MOST_DRAWN:
         raise SymbolRefused(f"The picture would draw more than {MOST_DRAWN} elements.")
+    if deep > DEEPEST:
+        raise SymbolRefused(f"The picture's parts use each other more than {DEEPEST} deep.")

@@ -1,7 +1,6 @@
 """Painting the default symbols: on the board, and as icons for the shelf."""
 
 import math
-from functools import lru_cache
 
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QIcon, QPainter, QPen, QPixmap
@@ -106,7 +105,6 @@ def symbol_pixmap(kind: str, symbols: str, palette: Palette, size: int, scale: f
 _SHOWN = {"switch": "open"}
 
 
-@lru_cache(maxsize=256)
 def icon(kind: str, symbols: str, palette: Palette, size: int = 32) -> QIcon:
     """The symbol of a kind as an icon that stays sharp on dense screens."""
     made = QIcon()

@@ -59,9 +59,10 @@ def describe(element: AnyElement) -> tuple[str, ...]:
 def _transformer(t: Transformer) -> tuple[str, ...]:
     units = f"{t.parallel} × " if t.parallel > 1 else ""
     first = f"{units}{figures.typed(t.rating_kva)} kVA {_ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
-    if not t.tap:
+    if not t.taps_up + t.taps_down:
         return (first,)
-    return first, f"tap {figures.percent(t.tap * t.tap_step_percent, _digits(t.tap_step_percent), sign=True)}"
+    digits = _digits(t.tap_step_percent) if t.tap else 0
+    return first, f"tap {figures.percent(t.tap * t.tap_step_percent, digits, sign=True)}"
 
 
 def _digits(step: float) -> int:

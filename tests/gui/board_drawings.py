@@ -65,7 +65,12 @@ EVERY_KIND = Drawing(
 
 
 def figures(
-    drawing: Drawing, *, seed: int = 1, failing: tuple[str, ...] = (), near: tuple[str, ...] = (), dead: str = ""
+    drawing: Drawing,
+    *,
+    seed: int = 1,
+    failing: tuple[str, ...] = (),
+    near: tuple[str, ...] = (),
+    dead: str = "",
 ) -> Outcome:
     """An outcome of the right form with made-up figures, the same for the same seed."""
     made = np.random.default_rng(seed)

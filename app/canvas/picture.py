@@ -1,0 +1,170 @@
+"""The diagram with its results as a picture: SVG, PNG or PDF, with the board's own items."""
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import replace
+from pathlib import Path
+
+from PySide6.QtCore import QMarginsF, QPointF, QRectF, QSizeF, Qt
+from PySide6.QtGui import (
+    QColor,
+    QImage,
+    QPageLayout,
+    QPageSize,
+    QPainter,
+    QPdfWriter,
+    QPen,
+)
+from PySide6.QtSvg import QSvgGenerator
+from PySide6.QtWidgets import QApplication
+
+from app.canvas import lettering
+from app.canvas.element_item import Look
+from app.canvas.lettering import Line, Run, Style
+from app.canvas.palette import LIGHT, Palette
+from app.canvas.paper import Paper
+from app.model import figures
+from app.model.drawing import Drawing
+from app.study.cautions import CAUTIONS
+from app.study.outcome import Outcome
+from solver.status import Status
+
+MARGIN = 36.0
+NARROWEST = 760.0  # the foot needs this much
+SHARP = 2.0  # PNG pixels a scene pixel
+DPI = 96
+LARGEST_PNG = 12_000  # px a side
+SUFFIXES = (".svg", ".png", ".pdf")
+
+
+def picture(
+    drawing: Drawing,
+    outcome: Outcome | None,
+    path: Path | str,
+    palette: Palette = LIGHT,
+    symbols: str = "IEC",
+    case: int = 0,
+) -> None:
+    """Draw one case to a file; its ending says how. Raises OSError where it cannot be written."""
+    path = Path(path)
+    if path.suffix.lower() not in SUFFIXES:
+        raise ValueError(f"{path.name}: a picture ends in one of {', '.join(SUFFIXES)}.")
+    running = QApplication.instance() or QApplication(["farend"])
+    page = Page(drawing, outcome, palette, symbols, case)
+    {".svg": _svg, ".png": _png, ".pdf": _pdf}[path.suffix.lower()](page, path)
+    del page, running
+
+
+class Page:
+    """The drawing and its foot, laid out once, painted on any device."""
+
+    def __init__(
+        self, drawing: Drawing, outcome: Outcome | None, palette: Palette, symbols: str, case: int
+    ) -> None:
+        self.palette = palette
+        self._paper = Paper(Look(palette, symbols, printing=True))
+        self._paper.lay_out(drawing)
+        if outcome is not None and outcome.status is Status.SOLVED:
+            self._paper.show_outcome(drawing, outcome, case, None)
+            self._paper.arrange()
+        self.title = drawing.project.title or "Drawing"
+        self._head = _head(drawing, outcome, case)
+        self._cautions = tuple((Run(caution, Style.QUIET),) for caution in CAUTIONS)
+        self._content = self._paper.content()
+        feet = [lettering.size(part) for part in (self._head, self._cautions)]
+        wide = max(self._content.width(), NARROWEST, feet[0].width() + feet[1].width() + 2 * MARGIN)
+        self._foot = max(foot.height() for foot in feet)
+        self.size = QSizeF(wide + 2 * MARGIN, self._content.height() + self._foot + 4 * MARGIN)
+
+    def wear(self, palette: Palette) -> None:
+        """Change the colours."""
+        self.palette = self._paper.look.palette = palette
+
+    def paint(self, painter: QPainter) -> None:
+        """At one device unit a scene pixel; scale the painter beforehand."""
+        painter.setRenderHints(QPainter.RenderHint.Antialiasing | QPainter.RenderHint.TextAntialiasing)
+        painter.fillRect(QRectF(QPointF(), self.size), self.palette.paper)
+        target = QRectF(0, 1.5 * MARGIN, self._content.width(), self._content.height())
+        target.moveLeft((self.size.width() - target.width()) / 2)
+        self._paper.render(painter, target, self._content)
+        rule = self.size.height() - self._foot - 1.5 * MARGIN
+        painter.setPen(QPen(self.palette.faint, 1.0))
+        painter.drawLine(QPointF(MARGIN, rule), QPointF(self.size.width() - MARGIN, rule))
+        top = rule + MARGIN / 2
+        lettering.paint(painter, self._head, QPointF(MARGIN, top), 0, self.palette)
+        wide = lettering.size(self._cautions).width()
+        left = self.size.width() - MARGIN - wide
+        lettering.paint(painter, self._cautions, QPointF(left, top), wide, self.palette)
+
+
+def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, ...]:
+    project = drawing.project
+    marks = [
+        project.place,
+        f"drawing {project.number}" if project.number else "",
+        f"rev {project.revision}" if project.revision else "",
+        project.date,
+        project.author,
+        project.status,
+    ]
+    lines: list[Line] = [(Run(project.title or "Untitled drawing", Style.NAME),)]
+    lines.append((Run(" · ".join(m for m in marks if m), Style.QUIET),))
+    if outcome is None or outcome.status is not Status.SOLVED:
+        sentence = outcome.sentence if outcome is not None else "Not solved."
+        return *lines, (Run(sentence, Style.FIGURE),)
+    balance = outcome.balance
+    supply, lost = (figures.power(balance.supply_kw[case]), figures.loss(balance.loss_kw[case]))
+    lines.append((Run(f"Supply {supply}", Style.FIGURE), Run(f"lost {lost}", Style.FIGURE)))
+    lines.append((Run(f"Case: {outcome.cases[case]}", Style.QUIET),))
+    return tuple(lines)
+
+
+@contextmanager
+def _painting(device: object, path: Path) -> Iterator[QPainter]:
+    painter = QPainter()
+    if not painter.begin(device):  # type: ignore[arg-type]
+        raise OSError(f"{path} cannot be written.")
+    try:
+        yield painter
+    finally:
+        painter.end()
+
+
+def _svg(page: Page, path: Path) -> None:
+    generator = QSvgGenerator()
+    generator.setFileName(str(path))
+    generator.setTitle(page.title)
+    generator.setDescription("Drawn with Farend. " + CAUTIONS[0])
+    generator.setResolution(DPI)
+    generator.setSize(page.size.toSize())
+    generator.setViewBox(QRectF(QPointF(), page.size))
+    with _painting(generator, path) as painter:
+        page.paint(painter)
+
+
+def _png(page: Page, path: Path) -> None:
+    scale = min(SHARP, LARGEST_PNG / max(page.size.width(), page.size.height()))
+    image = QImage((page.size * scale).toSize(), QImage.Format.Format_RGB32)
+    image.fill(page.palette.paper)
+    with _painting(image, path) as painter:
+        painter.scale(scale, scale)
+        page.paint(painter)
+    if not image.save(str(path), b"PNG"):
+        raise OSError(f"{path} cannot be written.")
+
+
+def _pdf(page: Page, path: Path) -> None:
+    """Vectors on one sheet of the drawing's own size; white paper where the palette is light."""
+    if not page.palette.dark:
+        page.wear(replace(page.palette, paper=QColor(Qt.GlobalColor.white)))
+    writer = QPdfWriter(str(path))
+    writer.setTitle(page.title)
+    writer.setCreator("Farend")
+    writer.setResolution(600)
+    sheet = QPageSize(page.size * (72 / DPI), QPageSize.Unit.Point, "", QPageSize.SizeMatchPolicy.ExactMatch)
+    layout = QPageLayout(sheet, QPageLayout.Orientation.Portrait, QMarginsF(0, 0, 0, 0))
+    writer.setPageLayout(layout)
+    with _painting(writer, path) as painter:
+        scale = writer.width() / page.size.width()
+        painter.scale(scale, scale)
+        page.paint(painter)
