@@ -47,6 +47,14 @@ def set_symbol(drawing: Drawing, part_id: str, symbol: Symbol | None) -> Drawing
     return replace(drawing, parts={**drawing.parts, part_id: replace(part, symbol=symbol)})
 
 
+def rename_part(drawing: Drawing, part_id: str, name: str) -> Drawing:
+    """Give a part another name; elements made from it stay made from it."""
+    made = replace(_part(drawing, part_id), name=name.strip())
+    words = fault_of_fields(made) if made.name else "Part is blank, allowed is a name."
+    refuse_if(f"Part {part_id}: {words}" if words else None)
+    return replace(drawing, parts={**drawing.parts, part_id: made})
+
+
 def forget_part(drawing: Drawing, part_id: str) -> Drawing:
     """Take a part out of the drawing; elements made from it stay, with their values."""
     _part(drawing, part_id)
