@@ -1,6 +1,6 @@
 """What a study answers: tables keyed by id, findings, assumptions, balance. Frozen, unrounded."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from enum import Enum
 from typing import Any, Generic, TypeVar
 
@@ -160,3 +160,6 @@ class Outcome:
     largest_share: float | None  # of the load that still solves, where there is no operating point
     to_blame: str | None  # the branch that sets it
     seconds: dict[str, float]  # timings by stage
+    fed_from: dict[str, str] = field(
+        default_factory=dict
+    )  # node id -> the node before it, seen from the supply

@@ -1,0 +1,156 @@
+"""The results as text: aligned tables with units in their heads, findings, assumptions, cautions."""
+
+from collections.abc import Callable, Iterable, Sequence
+from typing import Any
+
+from app.model.drawing import Drawing, label
+from app.model.figures import plain, typed
+from app.model.kinds import KIND_WORDS, Branch, Transformer, kind_of
+from app.study.cautions import CAUTIONS
+from app.study.outcome import Outcome, Table
+from solver.status import Status
+
+Column = tuple[str, Callable[[Any], str]]
+SHOWN_ASSUMPTIONS = 40
+
+
+def figure(name: str, digits: int) -> Callable[[Any], str]:
+    """How one column is written."""
+    return lambda state: plain(float(getattr(state, name)), digits)
+
+
+def level(state: Any) -> str:
+    """Volts to 0.1 V under 1 kV, else whole volts to two digits of a kilovolt."""
+    return plain(state.voltage_v, 1 if state.nominal_v < 1000 else 0)
+
+
+NODE_COLUMNS: tuple[Column, ...] = (
+    ("nominal V", figure("nominal_v", 0)),
+    ("V", level),
+    ("% nom.", figure("percent", 2)),
+    ("angle °", figure("angle_deg", 2)),
+    ("drop %", figure("drop_percent", 2)),
+    ("route m", figure("route_m", 0)),
+)
+BRANCH_COLUMNS: tuple[Column, ...] = (
+    ("A", figure("current_a", 1)),
+    ("kW in", figure("start_kw", 2)),
+    ("kvar in", figure("start_kvar", 2)),
+    ("kW out", figure("end_kw", 2)),
+    ("kvar out", figure("end_kvar", 2)),
+    ("loss kW", figure("loss_kw", 3)),
+    ("loading %", figure("loading_percent", 1)),
+    ("drop %", figure("drop_percent", 2)),
+)
+ATTACHMENT_COLUMNS: tuple[Column, ...] = (
+    ("V", figure("voltage_v", 1)),
+    ("kW", figure("kw", 2)),
+    ("kvar", figure("kvar", 2)),
+    ("A", figure("current_a", 1)),
+)
+
+
+def printed(drawing: Drawing, outcome: Outcome) -> str:
+    """The whole text."""
+    parts = [_head(drawing, outcome)]
+    if outcome.status is Status.SOLVED:
+        for case, name in enumerate(outcome.cases):
+            parts += _case(drawing, outcome, case, name)
+    parts += [_findings(outcome), _assumptions(drawing, outcome)]
+    parts.append("Cautions\n" + "\n".join(f"  {c}" for c in CAUTIONS))
+    return "\n\n".join(part for part in parts if part) + "\n"
+
+
+def _head(drawing: Drawing, outcome: Outcome) -> str:
+    project = drawing.project
+    title = project.title or "Untitled"
+    about = ", ".join(w for w in (project.place, project.number, _revision(project.revision)) if w)
+    return f"{title}{': ' + about if about else ''}\n{outcome.sentence}"
+
+
+def _revision(revision: str) -> str:
+    return f"revision {revision}" if revision else ""
+
+
+def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]:
+    return [
+        f"Case: {name}",
+        _table(drawing, "Nodes", outcome.nodes, NODE_COLUMNS, case),
+        _table(drawing, "Branches", outcome.branches, BRANCH_COLUMNS, case),
+        _table(drawing, "Loads and infeeds", outcome.attachments, ATTACHMENT_COLUMNS, case),
+        _balance(outcome, case),
+    ]
+
+
+def _table(drawing: Drawing, title: str, table: Table[Any], columns: Sequence[Column], case: int) -> str:
+    if not table.ids:
+        return ""
+    lines = [["id", "name", "kind", "from", "to", *(head for head, _ in columns)]]
+    for id in table.ids:
+        element, state = drawing.elements[id], table.at(id, case)
+        ends = (element.start, element.end) if isinstance(element, Branch) else ("", "")
+        kind = KIND_WORDS[kind_of(element)]
+        if isinstance(element, Transformer):
+            kind += f" tap {plain(element.tap, 0, sign=True)}"
+        figures = (
+            [write(state) for _, write in columns] if state.live else ["dead"] + [""] * (len(columns) - 1)
+        )
+        lines.append([id, element.name, kind, *ends, *figures])
+    return f"{title}\n{aligned(_without_empty(lines), len(columns))}"
+
+
+def _without_empty(lines: list[list[str]]) -> list[list[str]]:
+    kept = [i for i in range(len(lines[0])) if any(line[i] for line in lines[1:])]
+    return [[line[i] for i in kept] for line in lines]
+
+
+def aligned(lines: Sequence[Sequence[str]], figures: int) -> str:
+    """Columns side by side; the last `figures` of them to the right."""
+    widths = [max(len(line[i]) for line in lines) for i in range(len(lines[0]))]
+    first = len(widths) - figures
+    rows = (
+        "  ".join(
+            t.rjust(w) if i >= first else t.ljust(w)
+            for i, (t, w) in enumerate(zip(line, widths, strict=True))
+        )
+        for line in lines
+    )
+    return "\n".join(f"  {row}".rstrip() for row in rows)
+
+
+def _balance(outcome: Outcome, case: int) -> str:
+    b = outcome.balance
+    rows = (
+        ("supply", b.supply_kw), ("generation", b.generation_kw), ("loads", b.load_kw),
+        ("loss", b.loss_kw), ("  lines", b.line_kw), ("  windings", b.copper_kw), ("  iron", b.iron_kw),
+    )  # fmt: skip
+    lines = [["", "kW"], *([word, plain(float(column[case]), 3)] for word, column in rows)]
+    closure = f"  closure {b.closure[case]:.1e} of the supply"
+    return f"Balance\n{aligned(lines, 1)}\n{closure}"
+
+
+def _findings(outcome: Outcome) -> str:
+    if not outcome.findings:
+        return ""
+    lines = (f"  {f.verdict.value.upper()}: {f.sentence}{_margin(f)}" for f in outcome.findings)
+    return "Findings\n" + "\n".join(lines)
+
+
+def _margin(finding: Any) -> str:
+    if finding.margin is None:
+        return ""
+    digits = next((d for d in range(1, 7) if abs(finding.margin) >= 10**-d), 6)
+    return f" Margin {plain(finding.margin, max(digits, 1), finding.unit, sign=True)}."
+
+
+def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
+    told = [
+        f"  {label(drawing, a.id)}: {a.field} {typed(a.value)} {a.unit} ({a.basis})"
+        for a in outcome.assumptions[:SHOWN_ASSUMPTIONS]
+    ]
+    return "Assumed, because left blank\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
+
+
+def _more(assumptions: Sequence[Any]) -> Iterable[str]:
+    over = len(assumptions) - SHOWN_ASSUMPTIONS
+    return [f"  and {over} more, see --json"] if over > 0 else []

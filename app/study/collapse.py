@@ -1,0 +1,61 @@
+"""Where there is no operating point: how much of the load could be carried, and what bars the rest."""
+
+import math
+from dataclasses import dataclass
+
+from app.model.drawing import Drawing
+from app.model.figures import percent
+from app.study.layout import Layout
+from app.study.outcome import Finding, Verdict
+from app.study.rows import Rows
+from app.study.words import tell
+from solver import Share, Solution, Status, largest_share
+
+
+@dataclass(frozen=True, slots=True)
+class Collapse:
+    """What bars the operating point.
+
+    share : float, largest share of the loads that still solves; nan where the sweep only failed to settle
+    branch : id of the branch to blame, or None
+    finding : the sentence
+    """
+
+    share: float
+    branch: str | None
+    finding: Finding
+
+
+def collapse_of(drawing: Drawing, layout: Layout, rows: Rows, solution: Solution) -> Collapse:
+    """The largest share of the load that still solves in the case that can carry least.
+
+    drawing : the drawing, for names
+    layout : its graph
+    rows : its rows
+    solution : that has a case with no operating point
+
+    Returns : Collapse
+    Source : see solver.share
+    """
+    cases = [i for i, s in enumerate(solution.status) if s is not Status.SOLVED]
+    found = [(largest_share(rows.network, case), case) for case in cases]
+    least, case = min(found, key=lambda f: f[0].share)
+    branch = _branch(layout, rows, least)
+    name = drawing.cases[case].name
+    where = f" in case {name}" if len(drawing.cases) > 1 else ""
+    if least.share >= 1 or math.isinf(least.share):
+        words = f"The sweep did not settle{where}, though the load seems bearable."
+        return Collapse(math.nan, None, Finding("not settled", Verdict.BLOCKS, (), words, case=name))
+    words = f"The layout cannot carry its load{where}: only {percent(100 * least.share)} of it still solves"
+    words += f", and {tell(drawing, branch)} stands in the way." if branch else "."
+    ids = (branch,) if branch else ()
+    finding = Finding("no operating point", Verdict.BLOCKS, ids, words, case=name)
+    return Collapse(least.share, branch, finding)
+
+
+def _branch(layout: Layout, rows: Rows, share: Share) -> str | None:
+    if share.line is not None:
+        return layout.branch_ids[rows.lines[share.line]]
+    if share.transformer is not None:
+        return layout.branch_ids[rows.units[share.transformer]]
+    return None

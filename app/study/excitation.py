@@ -1,0 +1,63 @@
+"""Transformers whose core is driven beyond what they bear for good."""
+
+import numpy as np
+
+from app.model import taps
+from app.model.drawing import Drawing
+from app.model.kinds import Transformer
+from app.study.findings import Check, findings_of
+from app.study.layout import Layout
+from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict
+from app.study.words import tell
+
+AT_LOAD, AT_NO_LOAD = 105.0, 110.0  # % of the rated voltage at the tap
+IDLE = 5.0  # % loading, below which a transformer counts as unloaded
+WHOSE = "advice after IEC 60076-1, from memory"
+
+
+def excitation_findings(
+    drawing: Drawing,
+    layout: Layout,
+    nodes: Table[NodeState],
+    branches: Table[BranchState],
+    cases: tuple[str, ...],
+) -> list[Finding]:
+    """Voltage of the fed winding over its rated voltage at the tap: 105 % at load, 110 % at no load.
+
+    Advice, so that it never fails: beyond it a finding says near.
+
+    drawing : the drawing, for names
+    layout : its graph
+    nodes : table, voltage_v (node, case) [V]
+    branches : table, loading_percent (branch, case) [%]
+    cases : names of the cases
+
+    Returns : list of Finding, none where every transformer is within
+    Source : IEC 60076-1, operation at a higher than rated voltage (from memory)
+    """
+    rows = [i for i, b in enumerate(layout.branches) if isinstance(b, Transformer)]
+    if not rows:
+        return []
+    forward = branches.column("forward")
+    rated, fed = [], []
+    for row in rows:
+        unit = layout.branches[row]
+        assert isinstance(unit, Transformer)
+        rated.append(taps.windings(unit, unit.tap)[0 if forward[row] else 1])
+        fed.append(layout.start[row] if forward[row] else layout.end[row])
+    driven = 100 * nodes.column("voltage_v")[fed] / np.array(rated)[:, None]
+    idle = branches.column("loading_percent")[rows] < IDLE
+    ids = tuple(branches.ids[row] for row in rows)
+
+    def subject(row: int, case: int, value: str) -> str:
+        state = "at no load" if idle[row, case] else "at load"
+        return f"{tell(drawing, ids[row])} is driven at {value} of its rated voltage {state}"
+
+    found: list[Finding] = []
+    for limit, off in ((AT_LOAD, idle), (AT_NO_LOAD, ~idle)):
+        value = np.where(off, np.nan, driven)
+        check = Check(
+            "over-excitation", ids, value, limit, False, 0.0, subject, "the most advised for good is"
+        )
+        found += [f for f in findings_of(check, WHOSE, cases, Verdict.NEAR) if f.verdict is Verdict.NEAR]
+    return found

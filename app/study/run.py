@@ -1,0 +1,128 @@
+"""The one path from a drawing to its outcome: window, headless commands and tests all walk it."""
+
+from time import perf_counter
+
+from app.model.drawing import Drawing
+from app.study.assumptions import assumptions_of
+from app.study.collapse import Collapse, collapse_of
+from app.study.excitation import excitation_findings
+from app.study.findings import judge
+from app.study.layout import NONE, Layout, lay_out
+from app.study.outcome import Finding, Outcome, Verdict
+from app.study.results import tables_of
+from app.study.rows import Rows, rows_of
+from app.study.structure import structure_findings
+from app.study.zones import Zones, zones_of
+from solver import Solution, Status, solve
+
+RANK = {
+    v: i for i, v in enumerate((Verdict.BLOCKS, Verdict.FAILS, Verdict.NEAR, Verdict.HOLDS, Verdict.NOTE))
+}
+
+
+def run(drawing: Drawing) -> Outcome:
+    """Solve a drawing in all its loading cases at once and judge what comes out.
+
+    drawing : the drawing; its values are taken as checked by the model
+
+    Returns : Outcome with a row for every element; figures only where every case is solved
+    Source : see solver
+    """
+    clock = [perf_counter()]
+
+    def lap() -> float:
+        clock.append(perf_counter())
+        return clock[-1] - clock[-2]
+
+    layout = lay_out(drawing)
+    zones = zones_of(drawing, layout)
+    found = structure_findings(drawing, layout, zones)
+    seconds = {"structure": lap()}
+    barred = not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found)
+    rows: Rows | None = None
+    solution: Solution | None = None
+    if not barred:
+        rows = rows_of(drawing, layout, zones)
+        seconds["rows"] = lap()
+        solution = solve(rows.network)
+        seconds["solve"] = lap()
+    outcome = _outcome(drawing, layout, zones, found, rows, solution, seconds)
+    seconds["results"] = lap()
+    seconds["total"] = clock[-1] - clock[0]
+    return outcome
+
+
+def _outcome(
+    drawing: Drawing,
+    layout: Layout,
+    zones: Zones,
+    found: list[Finding],
+    rows: Rows | None,
+    solution: Solution | None,
+    seconds: dict[str, float],
+) -> Outcome:
+    cases = tuple(case.name for case in drawing.cases)
+    status = _status(solution)
+    collapse: Collapse | None = None
+    tables = tables_of(layout, zones, rows, solution if status is Status.SOLVED else None, len(cases))
+    if status is Status.SOLVED:
+        found = found + judge(drawing, tables.nodes, tables.branches, cases)
+        found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
+    elif rows is not None and solution is not None:
+        collapse = collapse_of(drawing, layout, rows, solution)
+        found = [collapse.finding, *found]
+    found.sort(key=lambda f: RANK[f.verdict])
+    return Outcome(
+        status=status,
+        sentence=_sentence(status, found),
+        cases=cases,
+        nodes=tables.nodes,
+        branches=tables.branches,
+        attachments=tables.attachments,
+        balance=tables.balance,
+        findings=tuple(found),
+        assumptions=assumptions_of(layout, zones),
+        upstream=_upstream(layout),
+        zones=dict(zip(layout.node_ids, layout.zone, strict=True)),
+        largest_share=collapse.share if collapse else None,
+        to_blame=collapse.branch if collapse else None,
+        seconds=seconds,
+        fed_from=_fed_from(layout),
+    )
+
+
+def _status(solution: Solution | None) -> Status:
+    """The worst of all cases."""
+    if solution is None:
+        return Status.INVALID
+    for status in (Status.INVALID, Status.NO_OPERATING_POINT, Status.NOT_SETTLED):
+        if status in solution.status:
+            return status
+    return Status.SOLVED
+
+
+def _sentence(status: Status, found: list[Finding]) -> str:
+    if status is Status.SOLVED:
+        failing = sum(f.verdict is Verdict.FAILS for f in found)
+        if not failing:
+            return "Solved. Every limit holds."
+        return f"Solved. {failing} check{'' if failing == 1 else 's'} fail{'s' if failing == 1 else ''}."
+    if status is Status.INVALID and found and found[0].verdict is not Verdict.BLOCKS:
+        return found[0].sentence
+    return status.value
+
+
+def _upstream(layout: Layout) -> dict[str, str]:
+    return {
+        id: layout.branch_ids[branch]
+        for id, branch, node in zip(layout.node_ids, layout.fed_by, range(len(layout.nodes)), strict=True)
+        if branch != NONE and layout.live(node)
+    }
+
+
+def _fed_from(layout: Layout) -> dict[str, str]:
+    return {
+        id: layout.node_ids[layout.far(branch, node)]
+        for id, branch, node in zip(layout.node_ids, layout.fed_by, range(len(layout.nodes)), strict=True)
+        if branch != NONE and layout.live(node)
+    }

@@ -1,0 +1,198 @@
+"""What is wrong with the layout as drawn, before anything is solved: loops, dead parts, wrong levels."""
+
+from app.model import assumed, taps
+from app.model.drawing import Drawing
+from app.model.figures import typed
+from app.model.kinds import Generator, Joint, Load, Transformer
+from app.study.layout import NONE, Layout, is_bare
+from app.study.outcome import Finding, Verdict
+from app.study.words import list_of, tell
+from app.study.zones import Zones, level_findings
+
+LATER = "Closed rings are not solved in this version."
+
+
+def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+    """Everything that bars a solution or parts the layout, worst first.
+
+    drawing : the drawing
+    layout : its graph
+    zones : its voltage levels
+
+    Returns : list of Finding; BLOCKS bars a solution, FAILS and NOTE do not
+    """
+    if not drawing.elements:
+        return [Finding("nothing drawn", Verdict.NOTE, (), "Nothing is drawn yet. Begin with a supply.")]
+    if not layout.supplies:
+        words = "No supply: nothing feeds this layout. Put a supply on the node where power comes in."
+        return [Finding("no supply", Verdict.BLOCKS, (), words)]
+    return [
+        *_joined(drawing, layout),
+        *_loops(drawing, layout),
+        *level_findings(drawing, layout, zones),
+        *_groups(drawing, layout, zones),
+        *_plates(drawing, layout),
+        *_dead(drawing, layout),
+        *_loose_ends(drawing, layout),
+    ]
+
+
+def _joined(drawing: Drawing, layout: Layout) -> list[Finding]:
+    found = []
+    for one, other in layout.joined:
+        path = list(layout.climb(layout.at[other]))
+        ids = [layout.branch_ids[b] for b in path]
+        pair = (layout.attachment_ids[one], layout.attachment_ids[other])
+        if ids:
+            words = (
+                f"Supplies {list_of(drawing, pair)} are joined through {list_of(drawing, ids)}. "
+                f"{LATER} Open a switch or remove one of these branches, so that each feeds its own part."
+            )
+        else:
+            node = tell(drawing, layout.node_ids[layout.at[other]])
+            words = (
+                f"Supplies {list_of(drawing, pair)} both stand on {node}. Leave one of them, so that each "
+                "feeds its own part."
+            )
+        found.append(Finding("supplies joined", Verdict.BLOCKS, (*pair, *ids), words))
+    return found
+
+
+def _loops(drawing: Drawing, layout: Layout) -> list[Finding]:
+    found = []
+    for branch in layout.closing:
+        if layout.supply_of[layout.tree[layout.start[branch]]] == NONE:
+            continue
+        ring = layout.ring(branch)
+        ids = tuple(layout.branch_ids[b] for b in ring)
+        bare = all(is_bare(layout.branches[b]) for b in ring)
+        check = "zero-impedance loop" if bare else "closed loop"
+        found.append(Finding(check, Verdict.BLOCKS, ids, _loop_words(drawing, layout, ring, ids, bare)))
+    return found
+
+
+def _loop_words(drawing: Drawing, layout: Layout, ring: list[int], ids: tuple[str, ...], bare: bool) -> str:
+    if len(ids) == 1:
+        return f"{tell(drawing, ids[0])} begins and ends on the same node. Move one end or remove it."
+    named = list_of(drawing, ids)
+    if bare:
+        return (
+            f"{named} form a loop without any impedance: how it shares the current is not determined. "
+            "Open or remove one of them."
+        )
+    if len(ids) == 2:
+        kinds = {type(layout.branches[b]) for b in ring}
+        alike = " If they are equal, draw one and set how many are in parallel." if len(kinds) == 1 else ""
+        return f"{named} run side by side and close a loop. {LATER} Remove one of them.{alike}"
+    last = list_of(drawing, ids, "or")
+    return f"{named} form a closed loop. {LATER} Open a switch or remove one of: {last}."
+
+
+def _groups(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+    found = []
+    for row, branch in enumerate(layout.branches):
+        tree = layout.tree[layout.start[row]]
+        if not isinstance(branch, Transformer) or layout.supply_of[tree] == NONE:
+            continue
+        id = layout.branch_ids[row]
+        read = taps.group(branch.vector_group)
+        if read is None:
+            words = (
+                f"{tell(drawing, id)}: vector group {branch.vector_group!r} is not known. "
+                f"Allowed is {taps.GROUP_ALLOWED}."
+            )
+        elif (read[0] == "I") == bool(zones.two_wire[tree]):
+            continue
+        else:
+            words = _wrong_system(drawing, id, branch.vector_group, layout, tree, bool(zones.two_wire[tree]))
+        found.append(Finding("vector group", Verdict.BLOCKS, (id,), words))
+    return found
+
+
+def _wrong_system(drawing: Drawing, id: str, group: str, layout: Layout, tree: int, two_wire: bool) -> str:
+    supply = tell(drawing, layout.attachment_ids[layout.supply_of[tree]])
+    if two_wire:
+        return (
+            f"{tell(drawing, id)} has the three-phase vector group {group}, but {supply} is two-wire. "
+            "Allowed there is Ii0 or Ii6."
+        )
+    return (
+        f"{tell(drawing, id)} has the single-phase vector group {group}, but {supply} is three-phase. "
+        "Allowed there is a three-phase group such as Dyn11."
+    )
+
+
+def _plates(drawing: Drawing, layout: Layout) -> list[Finding]:
+    """Transformer figures that contradict each other: more loss than the impedance or current can carry."""
+    found = []
+    for row, unit in enumerate(layout.branches):
+        if not isinstance(unit, Transformer):
+            continue
+        id, hundredth = layout.branch_ids[row], unit.rating_kva * 10
+        for loss, limit, words in (
+            (
+                "load_loss_w",
+                "uk_percent",
+                "load loss Pk of {} W is more than its impedance uk of {} % allows",
+            ),
+            (
+                "no_load_loss_w",
+                "no_load_current_percent",
+                "no-load loss P0 of {} W is more than its no-load current i0 of {} % carries",
+            ),
+        ):
+            watts, most = assumed.value(unit, loss), assumed.value(unit, limit)
+            if watts > most * hundredth * (1 + 1e-12):
+                told = words.format(typed(watts), typed(most))
+                sentence = f"{tell(drawing, id)}: {told}; at {typed(unit.rating_kva)} kVA it is at most "
+                sentence += f"{typed(most * hundredth)} W."
+                found.append(Finding("transformer data", Verdict.BLOCKS, (id,), sentence))
+    return found
+
+
+def _dead(drawing: Drawing, layout: Layout) -> list[Finding]:
+    parts: dict[int, list[str]] = {tree: [] for tree, supply in enumerate(layout.supply_of) if supply == NONE}
+    if not parts:
+        return []
+    needy: dict[int, list[str]] = {tree: [] for tree in parts}
+    for row, id in enumerate(layout.node_ids):
+        if layout.tree[row] in parts:
+            parts[layout.tree[row]].append(id)
+    for row, id in enumerate(layout.attachment_ids):
+        tree = layout.tree[layout.at[row]]
+        if tree in parts:
+            parts[tree].append(id)
+            if isinstance(layout.attachments[row], Load | Generator):
+                needy[tree].append(id)
+    for row, id in enumerate(layout.branch_ids):
+        tree = layout.tree[layout.start[row]]
+        if tree in parts and tree == layout.tree[layout.end[row]]:
+            parts[tree].append(id)
+    return [_dead_finding(drawing, tuple(ids), needy[tree]) for tree, ids in parts.items()]
+
+
+def _dead_finding(drawing: Drawing, ids: tuple[str, ...], needy: list[str]) -> Finding:
+    named = list_of(drawing, ids)
+    verb = "is" if len(ids) == 1 else "are"
+    if needy:
+        words = f"No supply reaches {list_of(drawing, needy)}: {named} {verb} dead."
+        return Finding("dead part", Verdict.FAILS, ids, words)
+    return Finding(
+        "dead part", Verdict.NOTE, ids, f"No supply reaches {named}: dead, and nothing draws there."
+    )
+
+
+def _loose_ends(drawing: Drawing, layout: Layout) -> list[Finding]:
+    """Live joints where one branch ends and nothing hangs."""
+    meeting = [0] * len(layout.nodes)
+    for row in (*layout.start, *layout.end):
+        meeting[row] += 1
+    hung = set(layout.at)
+    found = []
+    for row, node in enumerate(layout.nodes):
+        if meeting[row] == 1 and row not in hung and isinstance(node, Joint) and layout.live(row):
+            branch = layout.branch_ids[layout.fed_by[row]]
+            id = layout.node_ids[row]
+            words = f"{tell(drawing, branch)} ends at {tell(drawing, id)}, where nothing is connected."
+            found.append(Finding("loose end", Verdict.NOTE, (id, branch), words))
+    return found

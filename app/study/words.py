@@ -1,0 +1,40 @@
+"""How findings name elements and string them together."""
+
+import math
+from collections.abc import Sequence
+
+from app.model.drawing import Drawing
+
+MANY = 6
+
+
+def tell(drawing: Drawing, id: str) -> str:
+    """An element by name and id, such as `House (B3)`; by id alone where it has no name."""
+    element = drawing.elements.get(id)
+    return f"{element.name} ({id})" if element is not None and element.name else id
+
+
+def list_of(drawing: Drawing, ids: Sequence[str], last: str = "and") -> str:
+    """`A`, `A and B`, `A, B and C`; beyond six only how many more there are."""
+    told = [tell(drawing, id) for id in ids[:MANY]]
+    if len(ids) > MANY:
+        told.append(f"{len(ids) - MANY} more")
+        last = "and"
+    return told[0] if len(told) == 1 else ", ".join(told[:-1]) + f" {last} " + told[-1]
+
+
+def slip(stated: float, other: float) -> str:
+    """The likely slip behind two voltages that should agree: kV for V, or phase for line volts."""
+    ratio = max(stated, other) / min(stated, other)
+    low, high = f"{min(stated, other):g} V", f"{max(stated, other):g} V"
+    if _near(ratio, 1000):
+        return f" {low} is {high} divided by 1000: were kilovolts typed as volts?"
+    if _near(ratio, math.sqrt(3)):
+        return f" {low} is {high} divided by √3: is one phase to neutral, the other between phases?"
+    if _near(ratio, 1000 / math.sqrt(3)) or _near(ratio, 1000 * math.sqrt(3)):
+        return " The ratio is 1000 and √3 together: were kilovolts typed as volts, and phase for line?"
+    return ""
+
+
+def _near(ratio: float, what: float) -> bool:
+    return abs(ratio / what - 1) < 0.02

@@ -1,0 +1,152 @@
+"""Voltage zones: the nominal voltage of each, how many wires its supply has, and what contradicts it."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model.drawing import Drawing
+from app.model.kinds import Supply, Transformer
+from app.study.layout import NONE, Layout
+from app.study.outcome import Assumption, Finding, Verdict
+from app.study.words import slip, tell
+
+APART = 1.15  # a winding this far from the level of its node is at the wrong level; 433 V on 400 V is not
+
+
+@dataclass(frozen=True, slots=True)
+class Zones:
+    """What holds in each zone and each tree.
+
+    nominal_v : (zone,) float [V], between lines or between the two wires; nan where nothing says
+    two_wire : (tree,) bool, the supply of the tree has two wires
+    basis : per zone, whose voltage it is, as words
+    assumed : per zone, true where no supply and no node states the voltage
+    """
+
+    nominal_v: NDArray[np.float64]
+    two_wire: NDArray[np.bool_]
+    basis: tuple[str, ...]
+    assumed: tuple[bool, ...]
+
+
+def zones_of(drawing: Drawing, layout: Layout) -> Zones:
+    """The nominal voltage of every zone: its supply's, else a node's, else the rated voltage that feeds it.
+
+    drawing : the drawing
+    layout : its graph
+
+    Returns : Zones, nominal_v (zone,) float [V]
+    Source : common practice, no source
+    """
+    count = layout.zone_count
+    nominal, basis, assumed = [math.nan] * count, [""] * count, [False] * count
+
+    def settle(zone: int, volts: float, whose: str, by_winding: bool = False) -> None:
+        if math.isnan(nominal[zone]):
+            nominal[zone], basis[zone], assumed[zone] = volts, whose, by_winding
+
+    for row in layout.supplies:
+        supply = layout.attachments[row]
+        assert isinstance(supply, Supply)
+        settle(layout.zone[layout.at[row]], supply.nominal_v, tell(drawing, layout.attachment_ids[row]))
+    for row, node in enumerate(layout.nodes):
+        if node.nominal_v is not None:
+            settle(layout.zone[row], node.nominal_v, tell(drawing, layout.node_ids[row]))
+    windings = list(_windings(layout))
+    for fed_only in (True, False):  # the winding that feeds the zone speaks before those that leave it
+        for branch, at, number, volts in windings:
+            if not fed_only or layout.fed_by[at] == branch:
+                words = f"rated voltage of winding {number} of {tell(drawing, layout.branch_ids[branch])}"
+                settle(layout.zone[at], volts, words, True)
+    two_wire = [_is_two_wire(layout, supply) for supply in layout.supply_of]
+    return Zones(np.array(nominal), np.array(two_wire, dtype=bool), tuple(basis), tuple(assumed))
+
+
+def level_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+    """What contradicts the level of its zone: a node that states another, a winding of another level.
+
+    drawing : the drawing
+    layout : its graph
+    zones : nominal_v (zone,) float [V]
+
+    Returns : list of findings that block
+    """
+    found = []
+    for row, node in enumerate(layout.nodes):
+        volts = zones.nominal_v[layout.zone[row]]
+        if node.nominal_v is not None and not math.isclose(node.nominal_v, volts, rel_tol=1e-9):
+            id, whose = layout.node_ids[row], zones.basis[layout.zone[row]]
+            sentence = (
+                f"{tell(drawing, id)} states {node.nominal_v:g} V but is joined without a transformer to "
+                f"{whose}, which states {volts:g} V.{slip(node.nominal_v, volts)}"
+            )
+            found.append(Finding("mixed levels", Verdict.BLOCKS, (id,), sentence))
+    for row in layout.supplies:
+        supply = layout.attachments[row]
+        assert isinstance(supply, Supply)
+        volts = zones.nominal_v[layout.zone[layout.at[row]]]
+        if not math.isclose(supply.nominal_v, volts, rel_tol=1e-9):
+            id, whose = layout.attachment_ids[row], zones.basis[layout.zone[layout.at[row]]]
+            sentence = (
+                f"{tell(drawing, id)} states {supply.nominal_v:g} V but is joined without a transformer to "
+                f"{whose}, which states {volts:g} V.{slip(supply.nominal_v, volts)}"
+            )
+            found.append(Finding("mixed levels", Verdict.BLOCKS, (id,), sentence))
+    return found + _winding_findings(drawing, layout, zones)
+
+
+def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+    found = []
+    for branch, node, number, volts in _windings(layout):
+        level = zones.nominal_v[layout.zone[node]]
+        if 1 / APART <= volts / level <= APART:
+            continue
+        unit = layout.branches[branch]
+        assert isinstance(unit, Transformer)
+        id, at = layout.branch_ids[branch], layout.node_ids[node]
+        other = unit.v2_v if number == 1 else unit.v1_v
+        turned = 1 / APART <= other / level <= APART
+        cure = " Its other winding fits: swap its ends." if turned else slip(volts, level)
+        sentence = (
+            f"Winding {number} of {tell(drawing, id)} is rated {volts:g} V but stands at "
+            f"{tell(drawing, at)}, which is at {level:g} V.{cure}"
+        )
+        found.append(Finding("mixed levels", Verdict.BLOCKS, (id, at), sentence))
+    return found
+
+
+def level_assumptions(layout: Layout, zones: Zones) -> list[Assumption]:
+    """The zones whose nominal voltage nobody states, with the winding it was taken from.
+
+    layout : the graph of the drawing
+    zones : nominal_v (zone,) float [V]
+
+    Returns : list of Assumption, one a zone, at the first node of the zone
+    """
+    first: dict[int, str] = {}
+    for row, id in enumerate(layout.node_ids):
+        first.setdefault(layout.zone[row], id)
+    return [
+        Assumption(id, "nominal_v", float(zones.nominal_v[zone]), "V", zones.basis[zone])
+        for zone, id in first.items()
+        if zones.assumed[zone]
+    ]
+
+
+def _windings(layout: Layout) -> list[tuple[int, int, int, float]]:
+    """Every winding: branch row, node row, winding number, rated volts."""
+    found = []
+    for row, branch in enumerate(layout.branches):
+        if isinstance(branch, Transformer):
+            found.append((row, layout.start[row], 1, branch.v1_v))
+            found.append((row, layout.end[row], 2, branch.v2_v))
+    return found
+
+
+def _is_two_wire(layout: Layout, supply: int) -> bool:
+    if supply == NONE:
+        return False
+    held = layout.attachments[supply]
+    return isinstance(held, Supply) and held.wires == "two-wire"
