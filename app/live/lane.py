@@ -1,4 +1,4 @@
-"""A lane for slow work: one job in flight, the newest waits, what is overtaken is never begun. Knows no Qt."""
+"""A lane for slow work: one job in flight, the newest waits, what is overtaken never begins. No Qt."""
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
