@@ -4,13 +4,14 @@ import math
 
 from app.model.drawing import label
 from app.model.kinds import Attachment, Capacitor, Generator, Load, Supply
+from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import node_cell
-from app.sheet.subject import Entry, Extreme, Plan, Subject, by_element, kind_name
+from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
 from app.study.outcome import AttachmentState
 
 LOADS = "loads"
-SOURCES = "sources"
+SOURCES = "supplies"
 NODE = Column("node", "At", style=Style.TEXT, width=14)
 VOLTS = Column("u", "U", "V", style=Style.VOLTS, width=10)
 KW = Column("kw", "P", "kW", digits=2)
@@ -28,8 +29,8 @@ def load_tables(subject: Subject) -> list[SheetTable]:
         Column("demand", "Demand", "kW", digits=2),
         Column("demand_kva", "Demand", "kVA", digits=2),
         Column("pf", "Power factor", digits=2, width=8),
-        Column("side", "Current", style=Style.TEXT, width=9),
-        Column("model", "Load model", style=Style.TEXT, width=20),
+        Column("side", "Current", style=Style.TEXT, width=10),
+        Column("model", "Load model", style=Style.TEXT, width=18),
         Column("i_share", "Constant current", "%", digits=0),
         Column("z_share", "Constant impedance", "%", digits=0, width=10),
         Column("reference", "Stated at", "V", digits=0),
@@ -108,7 +109,7 @@ def source_tables(subject: Subject) -> list[SheetTable]:
         NODE,
         Column("rating", "Stated", digits=0),
         Column("unit", "", style=Style.TEXT, width=6),
-        Column("rest", "As", style=Style.TEXT, width=26),
+        Column("rest", "As", style=Style.TEXT, width=30),
     )
     pf = Column("pf", "Power factor", digits=3, width=8)
     plan = Plan(

@@ -2,14 +2,15 @@
 
 from app.model.kinds import Generator, Supply, Switch
 from app.sheet.attachments import LOADS, SOURCES
+from app.sheet.elements import figure, sum_of_case
 from app.sheet.lines import KEY as LINES
-from app.sheet.subject import Subject, case_row, kind_name, span_of_case
+from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, table, text
 from app.sheet.transformers import KEY as TRANSFORMERS
 
 TAB = "Balance"
 COLUMNS = (
-    Column("case", "Case", style=Style.TEXT, width=22),
+    Column("case", "Case", style=Style.TEXT, width=26),
     Column("supply", "Supplies", "kW", digits=2),
     Column("generation", "Generators", "kW", digits=2, width=10),
     Column("load", "Loads", "kW", digits=2),
@@ -66,7 +67,7 @@ def _sum(subject: Subject, key: str, column: str, value: float, case: int, scale
     kinds = {LOADS: ("load",), LINES: ("cable", "overhead line"), TRANSFORMERS: ("transformer",)}
     if not any(kind_name(e) in kinds[key] for e in subject.drawing.elements.values()):
         return Cell(value)
-    formula, refs = span_of_case(subject, key, column, case)
+    formula, refs = sum_of_case(subject, key, column, case)
     return Cell(value, formula + scale, refs)
 
 
@@ -75,8 +76,7 @@ def _fed(subject: Subject, kind: type[Supply] | type[Generator], value: float, c
     ids = [i for i, e in subject.drawing.elements.items() if isinstance(e, kind)]
     if not ids or len(ids) > MOST_TERMS:
         return Cell(value)
-    key = SOURCES if subject.one_case else SOURCES + "_by_case"
-    refs = {f"p{n}": Ref("kw", key, i if subject.one_case else case_row(i, case)) for n, i in enumerate(ids)}
+    refs = {f"p{n}": figure(subject, SOURCES, i, "kw", case) for n, i in enumerate(ids)}
     return Cell(value, "SUM(" + ",".join("{" + name + "}" for name in refs) + ")", refs)
 
 
@@ -86,9 +86,8 @@ MOST_TERMS = 200  # a spreadsheet program takes 255 in one SUM
 def _split(subject: Subject) -> SheetTable:
     """Loss of every branch that loses anything, the largest first."""
     columns = [
-        Column("id", "Branch", style=Style.TEXT, width=22),
-        Column("name", "Name", style=Style.TEXT),
-        Column("kind", "Kind", style=Style.TEXT),
+        Column("branch", "Branch", style=Style.TEXT, width=26),
+        Column("kind", "Kind", style=Style.TEXT, width=12),
     ]
     table_ = subject.outcome.branches
     loss = table_.column("loss_kw")
@@ -106,13 +105,13 @@ def _split(subject: Subject) -> SheetTable:
 
 def _lost(subject: Subject, id: str) -> Cells:
     element = subject.drawing.elements[id]
-    found = {"id": text(id), "name": text(element.name), "kind": text(kind_name(element))}
+    found = {"branch": text(subject.tell(id)), "kind": text(kind_name(element))}
     key = TRANSFORMERS if kind_name(element) == "transformer" else LINES
     for case in range(len(subject.cases)):
         state = subject.state(id, case)
         if not state.live:
             continue
-        own = Ref("loss", key, id) if subject.one_case else Ref("loss", key + "_by_case", case_row(id, case))
+        own = figure(subject, key, id, "loss", case)
         found[f"kw{case}"] = Cell(state.loss_kw, "{own}/1000", {"own": own})
         total = float(subject.outcome.balance.loss_kw[case])
         if total:

@@ -4,10 +4,11 @@ from collections import defaultdict
 
 from app.model import taps
 from app.model.kinds import Line, Switch, Transformer
+from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import KEY as LINES
 from app.sheet.lines import LOADING, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
-from app.sheet.subject import FROM_TO, Entry, Extreme, Plan, Subject, by_element, kind_name
+from app.sheet.subject import FROM_TO, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
 from app.sheet.transformers import fed_winding
 

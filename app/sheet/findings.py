@@ -10,15 +10,15 @@ from app.study.outcome import Finding, Verdict
 
 COLUMNS = (
     VERDICT,
-    Column("check", "Check", style=Style.TEXT, width=16),
-    Column("where", "Where", style=Style.LONG, width=22),
+    Column("check", "Check", style=Style.TEXT, width=14),
+    Column("where", "Where", style=Style.LONG, width=20),
     Column("value", "Value", digits=1, near="limit"),
     Column("limit", "Limit", digits=1),
     Column("margin", "Margin", digits=2, near="0"),
     Column("unit", "Unit", style=Style.TEXT, width=7),
-    Column("case", "Case", style=Style.TEXT, width=20),
-    Column("whose", "Whose limit", style=Style.LONG, width=26),
-    Column("sentence", "In words", style=Style.LONG, width=60),
+    Column("case", "Case", style=Style.TEXT, width=18),
+    Column("whose", "Whose limit", style=Style.LONG, width=20),
+    Column("sentence", "In words", style=Style.LONG, width=50),
 )
 
 
@@ -48,7 +48,7 @@ def _row(subject: Subject, finding: Finding) -> Cells:
         return found
     found |= {"value": Cell(finding.value), "limit": Cell(finding.limit)}
     found["margin"] = Cell(finding.margin, _margin_formula(finding))
-    if finding.verdict in (Verdict.FAILS, Verdict.HOLDS, Verdict.NEAR):
+    if (finding.margin < 0) is (finding.verdict is Verdict.FAILS):  # advice may be passed without failing
         held = "holds" if finding.margin < 0 else verdict_words(finding.verdict)
         found["verdict"] = Cell(verdict_words(finding.verdict), f'IF({{margin}}<0,"FAIL","{held}")')
     return found

@@ -16,6 +16,9 @@ VERDICTS = (
     ("not solved", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
     ("near", {"font_color": NEAR, "bg_color": ASSUMED_FILL}),
     ("dead", {"italic": True, "font_color": "#5B6B79", "bg_color": HEAD}),
+    ("NOT SOLVED", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
+    ("Solved. Every check holds", {"bold": True, "font_color": GOOD, "bg_color": "#DDF0EE"}),
+    ("Solved.", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
     ("holds", {"font_color": GOOD, "bg_color": "#DDF0EE"}),
 )
 
@@ -45,7 +48,7 @@ class Formats:
         if isinstance(cell.value, str):
             look |= {"num_format": "@"} if not cell.formula else {}
             look |= {"quote_prefix": True} if quoted else {}
-            look |= {"text_wrap": True, "align": "left"}
+            look |= {"text_wrap": True, "align": "left", "indent": 1}
         elif cell.value is not None:
             look |= {"num_format": number_format(column, cell), "align": "right"}
         if column.style is Style.VERDICT:

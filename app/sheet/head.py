@@ -1,5 +1,6 @@
 """The head of the sheet, the basis it stands on, what was assumed, and the cautions."""
 
+from dataclasses import replace
 from importlib.metadata import PackageNotFoundError, version
 
 from app.model.fields import fields_of
@@ -7,6 +8,7 @@ from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Verdict
+from solver.line import ALPHA
 
 ITEM = Column("item", "Item", style=Style.TEXT, width=24)
 SAYS = Column("value", "Value", style=Style.LONG, width=70)
@@ -14,7 +16,6 @@ UNITS = (
     "V, A, kW, kvar, kVA; losses of one element in W; lengths in m. Volts are between lines unless headed "
     "otherwise."
 )
-ALPHA = {"Cu": 0.00393, "Al": 0.00403}
 KINDS_OF_CELL = (
     ("Stated on the drawing", Origin.GIVEN, "an input"),
     ("Assumed", Origin.ASSUMED, "an input that was left blank; confirm it"),
@@ -46,6 +47,9 @@ def head_tables(subject: Subject) -> list[SheetTable]:
     rows["units"] = {"item": text("Units"), "value": text(UNITS)}
     rows["program"] = {"item": text("Worked out with"), "value": text(program())}
     rows["result"] = {"item": text("Result"), "value": text(result_words(subject))}
+    count = len(subject.outcome.assumptions)
+    assumed = f"{count}, listed under Basis; confirm them before relying on this sheet." if count else "none"
+    rows["assumed"] = {"item": text("Assumed values"), "value": text(assumed)}
     if project.note:
         rows["note"] = {"item": text("Note"), "value": given(project.note)}
     key = {
@@ -54,8 +58,8 @@ def head_tables(subject: Subject) -> list[SheetTable]:
     }
     title = project.title or "Untitled layout"
     return [
-        table("head", "Head", title, (ITEM, SAYS), rows, held=0),
-        table("key", "Head", "How cells are marked", (ITEM, SAYS), key, held=0),
+        table("head", "Head", title, (ITEM, SAYS), rows, held=0, plain=True),
+        table("key", "Head", "How cells are marked", (ITEM, SAYS), key, held=0, plain=True),
     ]
 
 
@@ -132,7 +136,7 @@ RULES = (
 
 def _rules(subject: Subject) -> SheetTable:
     rows = {item: {"item": text(item), "value": text(words)} for item, words in RULES}
-    return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0)
+    return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
 
 
 def _cases(subject: Subject) -> SheetTable:
@@ -163,29 +167,33 @@ def _constants() -> SheetTable:
             "unit": text("per K at 20 °C"),
             "source": text("IEC 60287-1-1, from memory"),
         }
-        for metal, alpha in ALPHA.items()
+        for metal, alpha in sorted(ALPHA.items())
     }
     return table("constants", BASIS, "Constants", columns, rows, held=0)
 
 
 def _assumed(subject: Subject) -> SheetTable:
     columns = (
-        Column("item", "Element", style=Style.TEXT, width=24),
+        Column("item", "Field", style=Style.TEXT, width=26),
         VALUE,
         UNIT,
-        Column("field", "Field", style=Style.TEXT, width=22),
+        Column("of", "Of", style=Style.LONG, width=40),
         Column("basis", "Assumed because", style=Style.LONG, width=50),
     )
-    rows: dict[str, Cells] = {}
+    alike: dict[tuple[str, float, str, str], list[str]] = {}
     for put in subject.outcome.assumptions:
         element = subject.drawing.elements.get(put.id)
         field = None if element is None else fields_of(type(element)).get(put.field)
-        rows[f"{put.id} {put.field}"] = {
-            "item": text(subject.tell(put.id)),
-            "field": text(field.label if field else put.field),
-            "value": Cell(put.value, digits=None, origin=Origin.ASSUMED),
-            "unit": text(put.unit),
-            "basis": text(put.basis),
+        shared = (field.label if field else put.field, put.value, put.unit, put.basis)
+        alike.setdefault(shared, []).append(put.id)
+    rows: dict[str, Cells] = {}
+    for number, ((field_name, value, unit, basis), ids) in enumerate(alike.items()):
+        rows[str(number)] = {
+            "item": text(field_name),
+            "value": replace(given(float(value)), origin=Origin.ASSUMED),
+            "unit": text(unit),
+            "of": text(", ".join(subject.tell(i) for i in ids)),
+            "basis": text(basis),
         }
     note = "" if rows else "Nothing was assumed: every value is stated."
     return table("assumed", BASIS, "Assumed values, to be confirmed", columns, rows, note=note, held=0)
@@ -193,13 +201,15 @@ def _assumed(subject: Subject) -> SheetTable:
 
 def note_tables(subject: Subject) -> list[SheetTable]:
     """Cautions, and the remarks people wrote beside elements."""
-    rows = {str(n): {"item": text(f"{n}"), "value": text(words)} for n, words in enumerate(CAUTIONS, 1)}
-    found = [table("cautions", "Cautions", "Cautions", (ITEM, SAYS), rows, held=0)]
+    rows = {str(n): {"item": text(f"{n}."), "value": text(words)} for n, words in enumerate(CAUTIONS, 1)}
+    found = [table("cautions", "Cautions", "Cautions", (ITEM, SAYS), rows, held=0, plain=True)]
     remarks = {
         id: {"item": text(f"{subject.tell(id)}, {kind_name(e)}"), "value": given(e.note)}
         for id, e in subject.drawing.elements.items()
         if e.note
     }
     if remarks:
-        found.append(table("remarks", "Cautions", "Remarks on elements", (ITEM, SAYS), remarks, held=0))
+        found.append(
+            table("remarks", "Cautions", "Remarks on elements", (ITEM, SAYS), remarks, held=0, plain=True)
+        )
     return found

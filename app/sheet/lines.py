@@ -4,23 +4,13 @@ import math
 from collections.abc import Callable
 
 from app.model.kinds import Line
+from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT, node_cell
-from app.sheet.subject import (
-    FAIL,
-    FROM_TO,
-    HOLDS,
-    Entry,
-    Extreme,
-    Plan,
-    Subject,
-    by_element,
-    kind_name,
-    limit,
-)
+from app.sheet.subject import FAIL, FROM_TO, HOLDS, Subject, kind_name, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
 from app.study.outcome import BranchState
 
-KEY = "lines"
+KEY = "cables"
 DATA = (
     *FROM_TO,
     Column("kind", "Kind", style=Style.TEXT, width=12),
@@ -34,7 +24,7 @@ DATA = (
     Column("theta", "Conductor at", "°C", digits=0, width=9),
     Column("r", "R hot, whole", "Ω", digits=5, width=9),
     Column("xt", "X, whole", "Ω", digits=5, width=9),
-    Column("iz", "Iz, one run", "A", digits=0, width=8),
+    Column("iz", "Iz, one run", "A", digits=0, width=10),
 )
 DROP = (
     Column("du", "ΔU", "V", digits=1, width=8),
@@ -132,9 +122,10 @@ def drop_cells(subject: Subject, fed: str, far: str, case: int) -> Cells:
     near_end, far_end = subject.outcome.nodes.at(fed, case), subject.outcome.nodes.at(far, case)
     ends = {"fed": node_cell(subject, fed, "u", case), "far": node_cell(subject, far, "u", case)}
     lost = near_end.voltage_v - far_end.voltage_v
+    un = {"un": Ref("un", "busbars", far)}
     return {
         "du": Cell(lost, "{fed}-{far}", ends),
-        "du_percent": Cell(lost / far_end.nominal_v * 100, "{du}/{un}*100", {"un": Ref("un", "nodes", far)}),
+        "du_percent": Cell(lost / far_end.nominal_v * 100, "{du}/{un}*100", un),
         "cumulative": Cell(far_end.drop_percent, "{drop}", {"drop": node_cell(subject, far, "drop", case)}),
     }
 

@@ -3,11 +3,12 @@
 import math
 from collections.abc import Callable
 
-from app.sheet.subject import FAIL, HOLDS, Entry, Extreme, Plan, Subject, by_element, case_row, limit
+from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
+from app.sheet.subject import FAIL, HOLDS, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style
 from app.study.outcome import NodeState
 
-KEY = "nodes"
+KEY = "busbars"
 PHASE = Column("u_phase", "U phase", "V", style=Style.VOLTS, near="low_phase high_phase", width=10)
 BASE = Column("u_120", "U, 120 V base", "V", digits=1, near="low_120 high_120")
 VERDICT = Column("verdict", "Verdict", style=Style.VERDICT, width=10)
@@ -49,9 +50,7 @@ def node_tables(subject: Subject) -> list[SheetTable]:
 
 def node_cell(subject: Subject, node: str, column: str, case: int) -> Ref:
     """Where a figure of a node in a case stands."""
-    if subject.one_case:
-        return Ref(column, KEY, node)
-    return Ref(column, KEY + "_by_case", case_row(node, case))
+    return figure(subject, KEY, node, column, case)
 
 
 def _entry(subject: Subject, id: str) -> Entry:

@@ -7,7 +7,6 @@ from xlsxwriter.utility import quote_sheetname, xl_rowcol_to_cell
 
 from app.sheet.table import Cell, Ref, Row, SheetTable
 
-TITLE_ROWS = 1
 BETWEEN = 2  # blank rows between tables of one tab
 
 
@@ -22,8 +21,8 @@ class Place:
 
     @property
     def head(self) -> int:
-        """The row of the column heads."""
-        return self.top + (2 if self.table.note else 1)
+        """The row of the column heads; of a plain table, the row before its first."""
+        return _head(self.table, self.top)
 
     @property
     def below(self) -> int:
@@ -34,13 +33,17 @@ class Place:
 Places = dict[str, Place]
 
 
+def _head(t: SheetTable, top: int) -> int:
+    return top + (1 if t.note else 0) + (0 if t.plain else 1)
+
+
 def lay(tables: Iterable[SheetTable]) -> Places:
     """Tables of one tab one below the other, in their order."""
     next_row: dict[str, int] = {}
     places: Places = {}
     for t in tables:
         top = next_row.get(t.tab, 0)
-        head = top + (2 if t.note else 1)
+        head = _head(t, top)
         columns = {c.key: i for i, c in enumerate(t.columns)}
         rows = {r.key: head + 1 + i for i, r in enumerate(t.rows)}
         places[t.key] = Place(t, top, columns, rows)

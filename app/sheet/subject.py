@@ -1,7 +1,6 @@
 """What every table looks up: names, values given or assumed, wires, limits, which cases there are."""
 
-from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import cached_property
 
 from app.model.drawing import Drawing, label
@@ -13,11 +12,8 @@ from app.sheet.table import (
     Column,
     Origin,
     Ref,
-    SheetTable,
     Style,
     given,
-    names,
-    table,
     text,
 )
 from app.study.layout import NONE, Layout, lay_out
@@ -109,138 +105,6 @@ FROM_TO = (Column("from", "From", style=Style.TEXT, width=14), Column("to", "To"
 def limit(name: str) -> Ref:
     """The cell of the Basis that holds a limit."""
     return Ref("value", "limits", name)
-
-
-def case_row(id: str, case: int) -> str:
-    """The row of an element in a case where cases have rows of their own."""
-    return f"{id}\x1f{case}"
-
-
-@dataclass(frozen=True, slots=True)
-class Entry:
-    """An element's cells: what is stated once, what each case yields, and how it is judged.
-
-    `judge` makes the judged cells from the extremes found over the cases.
-    """
-
-    id: str
-    data: Cells
-    figures: Sequence[Cells]
-    judge: Callable[[dict[str, float]], Cells]
-
-
-@dataclass(frozen=True, slots=True)
-class Extreme:
-    """The worst of a figure over the cases; `key` names it in judged formulas."""
-
-    key: str
-    of: str
-    most: bool
-    head: str
-
-
-@dataclass(frozen=True, slots=True)
-class Plan:
-    """The columns of a table of elements, before it is known how many cases there are."""
-
-    key: str
-    tab: str
-    title: str
-    data: tuple[Column, ...]
-    figures: tuple[Column, ...]
-    extremes: tuple[Extreme, ...]
-    judged: tuple[Column, ...]
-    note: str = ""
-
-
-def by_element(subject: Subject, plan: Plan, entries: Iterable[Entry]) -> list[SheetTable]:
-    """One table with one case; with more, a table of the worst and one of every case."""
-    entries = list(entries)
-    return [_one_case(plan, entries)] if subject.one_case else _many_cases(subject, plan, entries)
-
-
-def _one_case(plan: Plan, entries: list[Entry]) -> SheetTable:
-    rows = {}
-    for entry in entries:
-        figures = entry.figures[0]
-        worst = {e.key: v for e in plan.extremes if (v := _number(figures.get(e.of, BLANK))) is not None}
-        own = {e.key: Ref(e.of) for e in plan.extremes if e.key != e.of}
-        rows[entry.id] = entry.data | figures | _also(entry.judge(worst), own)
-    columns = (*IDENTITY, *plan.data, *plan.figures, *plan.judged)
-    return table(plan.key, plan.tab, plan.title, columns, rows, note=plan.note)
-
-
-def _many_cases(subject: Subject, plan: Plan, entries: list[Entry]) -> list[SheetTable]:
-    every = plan.key + "_by_case"
-    shown = {c.key: c for c in plan.figures}
-    extremes: list[Column] = []
-    for e in plan.extremes:
-        extremes.append(replace(shown[e.of], key=e.key, head=e.head))
-        extremes.append(Column(e.key + "_case", "in case", style=Style.TEXT, width=16))
-    rows, cases = {}, {}
-    for entry in entries:
-        worst = _worst(subject, plan, entry, every)
-        known = {e.key: v for e in plan.extremes if (v := _number(worst.get(e.key, BLANK))) is not None}
-        rows[entry.id] = entry.data | worst | entry.judge(known)
-        for case, figures in enumerate(entry.figures):
-            cells = {"id": entry.data["id"], "name": entry.data["name"]}
-            cells |= {"number": Cell(case + 1), "case": text(subject.cases[case])} | figures
-            cases[case_row(entry.id, case)] = _reaching(cells, plan, entry.id)
-    columns = (*IDENTITY, *plan.data, *extremes, *plan.judged)
-    case_columns = (*IDENTITY, *CASE, *plan.figures)
-    return [
-        table(plan.key, plan.tab, plan.title, columns, rows, note=plan.note),
-        table(every, plan.tab + ", cases", plan.title + ": every case", case_columns, cases, held=4),
-    ]
-
-
-def _worst(subject: Subject, plan: Plan, entry: Entry, every: str) -> Cells:
-    """The extremes of one element as formulas over its rows of the table of cases."""
-    first, last = case_row(entry.id, 0), case_row(entry.id, len(entry.figures) - 1)
-    found: Cells = {}
-    for e in plan.extremes:
-        values = {c: v for c, f in enumerate(entry.figures) if (v := _number(f.get(e.of, BLANK))) is not None}
-        if not values:
-            continue
-        case = (max if e.most else min)(values, key=values.__getitem__)
-        span = {"span": Ref(e.of, every, first, last)}
-        word = "MAX" if e.most else "MIN"
-        found[e.key] = Cell(values[case], word + "({span})", span)
-        spans = span | {"cases": Ref("case", every, first, last)}
-        pick = "INDEX({cases},MATCH({" + e.key + "},{span},0))"
-        found[e.key + "_case"] = Cell(subject.cases[case], pick, spans)
-    return found
-
-
-def _number(cell: Cell) -> float | None:
-    return float(cell.value) if isinstance(cell.value, int | float) and cell.value == cell.value else None
-
-
-def _also(cells: Cells, refs: dict[str, Ref]) -> Cells:
-    """Cells whose formulas may also name `refs`."""
-    return {key: replace(c, refs={**refs, **c.refs}) if c.formula and refs else c for key, c in cells.items()}
-
-
-def _reaching(cells: Cells, plan: Plan, id: str) -> Cells:
-    """Figures of a case whose formulas name data that stands in the table of elements."""
-    stated = {c.key for c in plan.data}
-    return {
-        key: replace(c, refs={**{n: Ref(n, plan.key, id) for n in names(c.formula) if n in stated}, **c.refs})
-        if c.formula
-        else c
-        for key, c in cells.items()
-    }
-
-
-def span_of_case(subject: Subject, key: str, column: str, case: int) -> tuple[str, dict[str, Ref]]:
-    """The sum of a column of a table of elements in one case, as a formula and what it reads."""
-    if subject.one_case:
-        return "SUM({span})", {"span": Ref(column, key)}
-    every = key + "_by_case"
-    return f"SUMIF({{numbers}},{case + 1},{{span}})", {
-        "span": Ref(column, every),
-        "numbers": Ref("number", every),
-    }
 
 
 def kind_name(element: Element) -> str:

@@ -78,12 +78,12 @@ class Row:
 
     key: str
     cells: tuple[Cell, ...]
-    total: bool = False
 
 
 @dataclass(frozen=True, slots=True)
 class SheetTable:
-    """One table; tables of one `tab` share a worksheet. `held`: columns that stay in sight."""
+    """One table; tables of one `tab` share a worksheet. `held`: columns that stay in sight;
+    `plain`: its columns need no heads, as each row says what it is."""
 
     key: str
     tab: str
@@ -92,6 +92,7 @@ class SheetTable:
     rows: tuple[Row, ...]
     note: str = ""
     held: int = 2
+    plain: bool = False
 
     def position(self, column: str) -> int:
         """Where a column stands."""
@@ -114,14 +115,12 @@ def table(
     *,
     note: str = "",
     held: int = 2,
-    totals: frozenset[str] = frozenset(),
+    plain: bool = False,
 ) -> SheetTable:
     """Rows given cell by cell, put in the order of the columns; a cell left out stays blank."""
     columns = tuple(columns)
-    made = tuple(
-        Row(name, tuple(_rounded(c, cells) for c in columns), name in totals) for name, cells in rows.items()
-    )
-    return SheetTable(key, tab, title, columns, made, note, held)
+    made = tuple(Row(name, tuple(_rounded(c, cells) for c in columns)) for name, cells in rows.items())
+    return SheetTable(key, tab, title, columns, made, note, held, plain)
 
 
 def _rounded(column: Column, cells: Cells) -> Cell:

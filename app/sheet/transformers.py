@@ -4,9 +4,10 @@ import math
 
 from app.model import taps
 from app.model.kinds import Transformer
+from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import LOADING, LOSS, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT, node_cell
-from app.sheet.subject import FROM_TO, Entry, Extreme, Plan, Subject, by_element
+from app.sheet.subject import FROM_TO, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.outcome import BranchState
 
@@ -44,8 +45,9 @@ EXTREMES = (
     Extreme("excitation_max", "excitation", True, "Excitation, most"),
 )
 NOTE = (
-    "Pk, P0, uk and i0 are of one unit. Copper = Pk·(I/Ir)². S = √3·U·I at the fed winding. "
-    "Excitation is the fed winding's voltage over its rated voltage as tapped."
+    "Pk, P0, uk and i0 are of one unit. Loading is that of the worse winding. Copper = Pk·(I/Ir)² of the "
+    "winding that gives out. S = √3·U·I of the fed one; excitation is its voltage over its rated voltage as "
+    "tapped."
 )
 
 
@@ -109,14 +111,14 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         "i1": Cell(state.start_a),
         "i2": Cell(state.end_a),
         "s": Cell(math.hypot(s_kw, s_kvar), f"{root}*{{fed}}*{{{i_fed}}}/1000", fed_cell),
-        "loading": Cell(state.loading_percent, _loading(root, state.forward)),
+        "loading": Cell(state.loading_percent, _loading(root)),
         "u_out": Cell(
             subject.outcome.nodes.at(out, case).voltage_v,
             "{out}",
             {"out": node_cell(subject, out, "u", case)},
         ),
         "iron": Cell(state.iron_kw * 1e3, f"{{units}}*{{p0}}*({{fed}}/({tapped}))^2", fed_cell),
-        "copper": Cell(state.copper_kw * 1e3, _copper(root, state.forward)),
+        "copper": Cell(state.copper_kw * 1e3, _copper(root, t, state.forward)),
         "loss": Cell(state.loss_kw * 1e3, "{iron}+{copper}"),
         "excitation": Cell(fed_volts / rated * 100, f"{{fed}}/({tapped})*100", fed_cell),
         "most": Cell(subject.drawing.limits.loading_percent),
@@ -129,13 +131,12 @@ def _tapped(t: Transformer, winding: int) -> str:
     return f"{plain}*(1+{{tap_percent}}/100)" if t.tapped == f"winding {winding}" else plain
 
 
-def _loading(root: str, forward: bool) -> str:
-    """Current of the fed winding over its rated current."""
-    w = 1 if forward else 2
-    return f"{root}*{{v{w}}}*{{i{w}}}/({{kva}}*1000*{{units}})*100"
+def _loading(root: str) -> str:
+    """The winding nearer to its rated current; rated currents are those of the nameplate voltages."""
+    return f"{root}*MAX({{v1}}*{{i1}},{{v2}}*{{i2}})/({{kva}}*1000*{{units}})*100"
 
 
-def _copper(root: str, forward: bool) -> str:
+def _copper(root: str, t: Transformer, forward: bool) -> str:
     """Load loss at the current of the winding that gives out, which carries no magnetising current."""
     w = 2 if forward else 1
-    return f"{{units}}*{{pk}}*({root}*{{v{w}}}*{{i{w}}}/({{kva}}*1000*{{units}}))^2"
+    return f"{{units}}*{{pk}}*({root}*{_tapped(t, w)}*{{i{w}}}/({{kva}}*1000*{{units}}))^2"

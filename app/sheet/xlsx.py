@@ -24,6 +24,7 @@ OPTIONS = {
 }
 A4, LETTER = 9, 1
 LINE = 13.5  # points a line of text takes
+CHARACTER = 0.93  # of a digit, by which widths are told, the usual letter is this wide
 FOOTER_LONGEST = 60
 
 
@@ -90,11 +91,12 @@ def _table(sheet: Worksheet, formats: Formats, places: Places, place: Place, wid
         sheet.write_string(place.top + 1, 0, shown(t.note), formats.of(**ink))
     if not t.rows:
         return
-    _heads(sheet, formats, place, widths)
+    if not t.plain:
+        _heads(sheet, formats, place, widths)
     for row in t.rows:
         _row(sheet, formats, places, place, row, widths)
     for i, column in enumerate(t.columns):
-        if column.style is Style.VERDICT:
+        if column.style is Style.VERDICT or t.key == "head":
             _verdicts(sheet, formats, place, i)
 
 
@@ -104,11 +106,12 @@ def _heads(sheet: Worksheet, formats: Formats, place: Place, widths: list[float]
         words = shown(column.head) + (f"\n{column.unit}" if column.unit else "")
         left = column.style in (Style.TEXT, Style.LONG)
         look = formats.of(
-            bold=True, text_wrap=True, bg_color=HEAD, bottom=2, bottom_color=INK, valign="bottom",
+            bold=True, text_wrap=True, bg_color=HEAD, bottom=1, bottom_color=INK, valign="bottom",
             align="left" if left else "center" if column.style is Style.VERDICT else "right",
+            indent=1 if left else 0,
         )  # fmt: skip
         _write(sheet, place, place.head, i, words, look, widths)
-        lines = max(lines, _lines(words, _room(place, i, widths) * 0.92))
+        lines = max(lines, _lines(words, _room(place, i, widths) + 1))
     sheet.set_row(place.head, LINE * lines + 3)
 
 
@@ -126,7 +129,7 @@ def _row(
             _write(sheet, place, at, i, value, look, widths)
         if isinstance(value, str):
             lines = max(lines, _lines(value, _room(place, i, widths)))
-    sheet.set_row(at, LINE * min(lines, 30) + 1.5)
+    sheet.set_row(at, LINE * min(lines, 30) + 2)
 
 
 def _write(
@@ -149,7 +152,7 @@ def _room(place: Place, column: int, widths: list[float]) -> float:
     """Characters a line of a cell holds."""
     spec = place.table.columns[column]
     runs_on = spec.style is Style.LONG and column == len(place.table.columns) - 1
-    return sum(widths[column:]) if runs_on else widths[column]
+    return (sum(widths[column:]) if runs_on else widths[column]) - 1
 
 
 def _lines(words: str, room: float) -> int:
@@ -158,7 +161,7 @@ def _lines(words: str, room: float) -> int:
     for paragraph in words.split("\n"):
         count, used = count + 1, 0.0
         for word in paragraph.split(" "):
-            length = len(word) * 1.05
+            length = len(word) * CHARACTER
             if used and used + 1 + length > room:
                 count, used = count + 1, 0.0
             count += int(length // max(room, 1)) if length > room else 0
@@ -181,7 +184,7 @@ def _print_setup(sheet: Worksheet, stacked: list[Place], drawing: Drawing) -> No
     sheet.set_paper(LETTER if drawing.frequency_hz >= 55 else A4)
     sheet.set_margins(left=0.45, right=0.45, top=0.55, bottom=0.75)
     sheet.fit_to_pages(1, 0)
-    sheet.set_footer(_footer(drawing))
+    sheet.set_footer(_footer(drawing), {"scale_with_doc": False})
     if len(stacked) == 1 and first.table.rows:
         sheet.freeze_panes(first.head + 1, first.table.held)
         sheet.repeat_rows(first.head)
