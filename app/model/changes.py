@@ -92,7 +92,7 @@ def _as_typed(struct: Struct, fields: Mapping[str, Any]) -> dict[str, Any]:
         kind = about[name].type if name in about else None
         if name in ("x", "y", "dx", "dy", "length"):
             kind = float
-        if kind is float and isinstance(value, int) and not isinstance(value, bool):
+        if kind is float and isinstance(value, int) and not isinstance(value, bool) and abs(value) < 2**53:
             value = float(value)
         elif kind is int and isinstance(value, float) and value.is_integer():
             value = int(value)

@@ -133,7 +133,7 @@ def fault_of_value(about: Field, value: Any) -> str | None:
 def _is_number(value: Any, *, whole: bool) -> bool:
     if isinstance(value, bool) or not isinstance(value, int if whole else int | float):
         return False
-    return math.isfinite(value)
+    return isinstance(value, int) or math.isfinite(value)
 
 
 def _fault_of_text(about: Field, value: Any) -> str | None:
@@ -157,7 +157,7 @@ def quantity(value: Any, unit: str) -> str:
     """A value as a sentence says it: `55 %`, `"x"`, `not a number`."""
     if isinstance(value, bool):
         return "yes" if value else "no"
-    if not isinstance(value, int | float):
+    if not isinstance(value, int | float) or (isinstance(value, int) and abs(value) > 1e15):
         return shown(value)
     if isinstance(value, float) and not math.isfinite(value):
         return "not a number" if math.isnan(value) else "infinite"

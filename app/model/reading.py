@@ -2,6 +2,7 @@
 
 import json
 import math
+import re
 from collections.abc import Mapping
 from functools import cache
 from typing import Any, TypeVar
@@ -65,12 +66,14 @@ def _text(data: bytes) -> str:
         raise FileError(f"is not text in UTF-8: byte {error.start + 1} is foreign to it.") from None
 
 
+_HALF = re.compile(r"(-|t|tr|tru|f|fa|fal|fals|n|nu|nul|\.|[eE][+-]?|\\u.{0,3}|u.{0,3})?\s*")
+
+
 def _where(text: str, error: json.JSONDecodeError) -> str:
     place = f"line {error.lineno}, column {error.colno}"
-    unclosed = error.msg.startswith("Unterminated string")
-    if not text[error.pos :].strip() or unclosed or (error.lineno >= text.rstrip().count("\n") + 1):
-        if not text.rstrip().endswith("}") and text.lstrip().startswith("{"):
-            return f"is cut off: it ends in the middle, after {place}."
+    half = error.msg.startswith("Unterminated string") or _HALF.fullmatch(text, error.pos)
+    if half and error.msg != "Extra data" and text.lstrip().startswith("{"):
+        return f"is cut off: it ends in the middle, after {place}."
     return f"is not JSON: it stops making sense at {place}."
 
 

@@ -64,12 +64,12 @@ def refusal(edit, *args, **fields) -> str:
         (
             "L1",
             {"demand_kva": 5, "demand_kw": 4},
-            "House, L1 (load): Demand in kVA and Demand in kW are both given, allowed is exactly one of them.",
+            "Demand in kVA and Demand in kW are both given, allowed is exactly one of them.",
         ),
         (
             "L1",
             {"demand_kva": None},
-            "House, L1 (load): Demand in kVA and Demand in kW are both blank, allowed is exactly one of them.",
+            "Demand in kVA and Demand in kW are both blank, allowed is exactly one of them.",
         ),
         (
             "L1",
@@ -84,7 +84,7 @@ def refusal(edit, *args, **fields) -> str:
         (
             "T2",
             {"tap": 3},
-            "T2 (transformer): Tap is 3 notches, allowed is a whole number, at least -2 and at most 2 notches.",
+            "(transformer): Tap is 3 notches, allowed is a whole number, at least -2 and at most 2 notches.",
         ),
         (
             "T2",
