@@ -1,0 +1,145 @@
+"""The fields of one element, or of several of one kind at once."""
+
+from functools import reduce
+from typing import Any
+
+from app.canvas.theme import Theme
+from app.canvas.tools_tap import notch_percent
+from app.live.session import Session
+from app.model import assumed, edits, units
+from app.model.drawing import Drawing
+from app.model.fields import Field, fields_of
+from app.model.kinds import KINDS, Element, Node, Transformer
+from app.model.levels import nominal_levels
+from app.panels.attempt import attempt
+from app.panels.element_words import step_text, subject
+from app.panels.field_row import VARIOUS, FieldRow, written
+from app.panels.page import Page
+from app.panels.special_rows import DemandRow, TapRow
+
+NOT_GIVEN = "not given"
+ALREADY_SHOWN = ("name",)
+
+
+class ElementPage(Page):
+    """Made once for a kind and kept; `show_ids` turns it to other elements of that kind."""
+
+    def __init__(self, kind: str, session: Session, theme: Theme) -> None:
+        super().__init__(theme)
+        self.kind = KINDS[kind]
+        self.ids: tuple[str, ...] = ()
+        self._session = session
+        for field in fields_of(self.kind).values():
+            if field.name not in (*ALREADY_SHOWN, "note"):
+                self._add(field)
+        self.add_fields([fields_of(self.kind)["note"]], self._take)
+
+    def _add(self, field: Field) -> None:
+        if field.name == "tap":
+            row: FieldRow = TapRow(field, self._take, self.theme)
+            row.step.connect(self._step)
+        elif field.name == "demand_kva":
+            row = DemandRow(field, fields_of(self.kind)["demand_kw"], self._take, self.theme)
+        elif field.name == "demand_kw":
+            return
+        else:
+            row = FieldRow(field, self._take, self.theme)
+        self.add_row(field.name, row)
+
+    def show_ids(self, ids: tuple[str, ...]) -> None:
+        """Show these elements."""
+        if ids != self.ids:
+            self.forget()
+            self.ids = ids
+        self.refresh()
+
+    def refresh(self) -> None:
+        """Show the values as they stand."""
+        drawing = self._session.drawing
+        elements = [drawing.elements[i] for i in self.ids if i in drawing.elements]
+        if not elements:
+            return
+        stand_ins = {b.field: b for b in assumed.blank(elements[0], nominal(drawing, self.ids[0]))}
+        for name, row in self.rows.items():
+            if isinstance(row, DemandRow):
+                row.show_demand(elements)
+            else:
+                self._show(row, name, elements, stand_ins)
+            if isinstance(row, TapRow):
+                row.show_transformers(elements)
+
+    def _show(self, row: FieldRow, name: str, elements: list[Element], stand_ins: dict[str, Any]) -> None:
+        values = [getattr(element, name) for element in elements]
+        value, field = values[0], row.field
+        if any(other != value for other in values[1:]):
+            row.show_value(value, quiet=VARIOUS)
+            return
+        if value is None:
+            blank = stand_ins.get(name)
+            if blank is None or len(elements) > 1:
+                row.show_value(None, quiet=self._follows(elements[0], name))
+            else:
+                row.show_value(None, quiet=round_off(blank.value), basis=blank.basis)
+            return
+        row.show_value(value, other=other_habit(value, field))
+
+    def _follows(self, element: Element, name: str) -> str:
+        """What stands in a blank box for which nothing is assumed."""
+        if isinstance(element, Node) and name == "nominal_v" and len(self.ids) == 1:
+            level = nominal_levels(self._session.drawing).get(self.ids[0])
+            return written(level.volts) if level else "follows the feed"
+        return NOT_GIVEN
+
+    def _take(self, field: Field, text: str) -> str:
+        ids = self.ids
+
+        def change(drawing: Drawing) -> Drawing:
+            return reduce(lambda d, i: edits.change_text(d, i, field.name, text), ids, drawing)
+
+        def name(after: Drawing) -> str:
+            element = after.elements[ids[0]]
+            about = fields_of(self.kind)["demand_kw"] if _in_kw(field, element) else field
+            return step_text(about, getattr(element, about.name), subject(after, ids))
+
+        return attempt(self._session, name, change)
+
+    def _step(self, notches: int) -> None:
+        """One notch up or down on every transformer shown."""
+        ids = self.ids
+
+        def change(drawing: Drawing) -> Drawing:
+            made = drawing
+            for id in ids:
+                made = edits.set_tap(made, id, drawing.elements[id].tap + notches)
+            return made
+
+        def name(after: Drawing) -> str:
+            one = after.elements[ids[0]]
+            assert isinstance(one, Transformer)
+            return f"Tap of {subject(after, ids)} to {notch_percent(one, one.tap)}"
+
+        self.rows["tap"].refuse(attempt(self._session, name, change))
+
+
+def nominal(drawing: Drawing, id: str) -> float:
+    """Nominal volts where an attachment stands, as far as they are known."""
+    node = getattr(drawing.elements[id], "node", id)
+    level = nominal_levels(drawing).get(node)
+    return level.volts if level else float("nan")
+
+
+def round_off(value: float) -> str:
+    """A stand-in as quiet text: short, but not wrong."""
+    return f"{value:.6g}" if value == value else "nominal"
+
+
+def other_habit(value: object, field: Field) -> str:
+    """The value in the other habit of units, for the tooltip; nothing where there is none."""
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        return ""
+    return units.show(float(value), field.unit, "north american") if field.unit else ""
+
+
+def _in_kw(field: Field, element: Element) -> bool:
+    """The demand was typed with the other unit, and went where it belongs."""
+    return field.name == "demand_kva" and getattr(element, field.name) is None

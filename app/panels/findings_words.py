@@ -1,0 +1,94 @@
+"""What the bottom line says, from an outcome. Words only."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from app.model.drawing import Drawing, label
+from app.model.fields import fields_of
+from app.panels.element_page import round_off
+from app.panels.results import RANK
+from app.study.outcome import Assumption, Finding, Outcome, Verdict
+from solver.status import Status
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """A mark, the headline in its colour, a sentence, and the elements it is about."""
+
+    verdict: Verdict
+    headline: str
+    sentence: str
+    ids: tuple[str, ...] = ()
+
+
+def line(drawing: Drawing, outcome: Outcome | None) -> Line:
+    """The one line for an outcome."""
+    if not drawing.elements:
+        return Line(Verdict.NOTE, "Nothing drawn yet.", "Take a part from the shelf and put it on the paper.")
+    if outcome is None:
+        return Line(Verdict.NOTE, "Not solved yet.", "")
+    if outcome.status is not Status.SOLVED:
+        return _unsolved(drawing, outcome)
+    found = ordered(outcome)
+    failing = [f for f in found if f.verdict in (Verdict.FAILS, Verdict.BLOCKS)]
+    near = [f for f in found if f.verdict is Verdict.NEAR]
+    checks = judged(drawing, outcome)
+    if failing:
+        head = f"{len(failing)} {'check fails' if len(failing) == 1 else 'checks fail'}."
+        return Line(failing[0].verdict, head, failing[0].sentence, failing[0].ids)
+    tightest = min((f for f in found if f.margin is not None), key=lambda f: f.margin or 0.0, default=None)
+    head = (
+        "Nothing to judge." if not checks else f"{checks} {'check holds' if checks == 1 else 'checks hold'}."
+    )
+    if near:
+        head = f"{checks} checks hold, {len(near)} near the limit."
+    told = near[0] if near else tightest
+    sentence = f"Tightest: {told.sentence}" if told else ""
+    return Line(Verdict.NEAR if near else Verdict.HOLDS, head, sentence, told.ids if told else ())
+
+
+def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
+    blocks = [f for f in ordered(outcome) if f.verdict is Verdict.BLOCKS]
+    if outcome.status is Status.INVALID and blocks:
+        more = f" And {len(blocks) - 1} more." if len(blocks) > 1 else ""
+        return Line(Verdict.BLOCKS, "Not solved.", blocks[0].sentence + more, blocks[0].ids)
+    words = outcome.sentence
+    if outcome.to_blame and label(drawing, outcome.to_blame) not in words:
+        words += f" {label(drawing, outcome.to_blame)} sets it."
+    ids = (outcome.to_blame,) if outcome.to_blame else blocks[0].ids if blocks else ()
+    return Line(Verdict.BLOCKS, "Not solved.", words, ids)
+
+
+def ordered(outcome: Outcome) -> list[Finding]:
+    """All findings, failing ones first, the tightest first among equals."""
+    far = float("inf")
+    return sorted(outcome.findings, key=lambda f: (RANK[f.verdict], far if f.margin is None else f.margin))
+
+
+def judged(drawing: Drawing, outcome: Outcome) -> int:
+    """How many checks were made: each live node low and high, its drop where limited, each rated branch."""
+    nodes = _known(outcome.nodes.column("percent"))
+    drops = nodes if drawing.limits.drop_percent is not None else 0
+    return 2 * nodes + drops + _known(outcome.branches.column("loading_percent"))
+
+
+def _known(column) -> int:
+    table = np.asarray(column, dtype=float)
+    if table.size == 0:
+        return 0
+    return int(np.isfinite(table.reshape(len(table), -1)).any(axis=1).sum())
+
+
+def assumption_words(drawing: Drawing, assumption: Assumption) -> str:
+    """`T2: No-load current i0 is taken as 0.8 %: common practice, no source`."""
+    element = drawing.elements.get(assumption.id)
+    about = fields_of(type(element)).get(assumption.field) if element is not None else None
+    name = about.label if about else assumption.field
+    value = f"{round_off(assumption.value)} {assumption.unit}".strip()
+    return f"{label(drawing, assumption.id)}: {name} is taken as {value} ({assumption.basis})"
+
+
+def count_words(count: int) -> str:
+    """`3 assumed values to confirm`."""
+    return f"{count} assumed {'value' if count == 1 else 'values'} to confirm"

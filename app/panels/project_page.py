@@ -1,0 +1,87 @@
+"""The card while nothing is selected: the head of the sheet, the limits, the case shown, what is drawn."""
+
+from collections import Counter
+from collections.abc import Callable
+from typing import Any
+
+from app.canvas.theme import Theme
+from app.live.attention import Attention
+from app.live.session import Session
+from app.model import edits
+from app.model.drawing import Case, Drawing, Limits, Project
+from app.model.fields import Field, fields_of
+from app.model.kinds import KINDS, kind_of
+from app.model.typing_in import value_of
+from app.model.units import UnitError
+from app.panels.attempt import attempt
+from app.panels.element_words import many, step_text
+from app.panels.field_row import FieldRow
+from app.panels.page import Page
+from app.panels.words import Rule, Sentence, Words
+
+NOT_JUDGED = "not judged"
+
+
+class ProjectPage(Page):
+    """Fields of the drawing as a whole."""
+
+    def __init__(self, session: Session, attention: Attention, theme: Theme) -> None:
+        super().__init__(theme)
+        self._session, self._attention = session, attention
+        project = [f for f in fields_of(Project).values() if f.name != "title"]
+        self.add_fields(project, self._taker(edits.set_project), "project.")
+        self._head("Limits")
+        self.add_fields(fields_of(Limits).values(), self._taker(edits.set_limits), "limits.")
+        self._head("Drawing")
+        self.add_fields([fields_of(Drawing)["frequency_hz"]], self._taker(_set_frequency))
+        self.add_fields(fields_of(Case).values(), self._taker(self._set_case), "case.")
+        self.counts = Sentence("quiet")
+        self.down.addWidget(self.counts)
+
+    def _head(self, text: str) -> None:
+        self.down.addSpacing(4)
+        self.down.addWidget(Rule())
+        self.down.addWidget(Words(text, "strong"))
+
+    def refresh(self) -> None:
+        """Show the values as they stand."""
+        drawing = self._session.drawing
+        case = min(self._attention.case, len(drawing.cases) - 1)
+        holders = {"project": drawing.project, "limits": drawing.limits, "case": drawing.cases[case]}
+        for name, row in self.rows.items():
+            holder, _, field = name.rpartition(".")
+            self._show(row, getattr(holders[holder] if holder else drawing, field))
+        self.counts.say(drawn(drawing))
+
+    def _show(self, row: FieldRow, value: Any) -> None:
+        quiet = NOT_JUDGED if value is None else ""
+        row.show_value(value, quiet=quiet)
+
+    def _taker(self, setter: Callable[..., Drawing]) -> Callable[[Field, str], str]:
+        def take(field: Field, text: str) -> str:
+            try:
+                value = value_of(field, text.strip())
+            except UnitError as error:
+                return f"{field.label}: {error}"
+            return attempt(
+                self._session,
+                step_text(field, value, "the drawing"),
+                lambda drawing: setter(drawing, **{field.name: value}),
+            )
+
+        return take
+
+    def _set_case(self, drawing: Drawing, **fields: Any) -> Drawing:
+        return edits.set_case(drawing, min(self._attention.case, len(drawing.cases) - 1), **fields)
+
+
+def _set_frequency(drawing: Drawing, frequency_hz: float) -> Drawing:
+    return edits.set_frequency(drawing, frequency_hz)
+
+
+def drawn(drawing: Drawing) -> str:
+    """What the drawing holds: `2 transformers, 1 cable, 3 loads`."""
+    found = Counter(kind_of(element) for element in drawing.elements.values())
+    if not found:
+        return "Nothing drawn yet. Take a supply from the shelf and put it on the paper."
+    return ", ".join(many(kind, found[kind]) for kind in KINDS if found[kind])

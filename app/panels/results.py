@@ -1,0 +1,207 @@
+"""What an element's results say, as rows of text: one cell a case, and the change while dragging."""
+
+import math
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from functools import partial
+
+from app.model import assumed, taps
+from app.model.drawing import Drawing
+from app.model.figures import amps, length, loss, percent, plain, power, volts
+from app.model.kinds import Attachment, Generator, Line, Load, Node, Supply, Switch, Transformer
+from app.panels.change import change
+from app.study.outcome import BranchState, Finding, NodeState, Outcome, Table, Verdict
+
+Figure = Callable[[int], float]
+Write = Callable[[float], str]
+VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("loading",)
+RANK = {Verdict.BLOCKS: 0, Verdict.FAILS: 1, Verdict.NEAR: 2, Verdict.NOTE: 3, Verdict.HOLDS: 4}
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One result: a cell for each case; `change` belongs to the case shown."""
+
+    label: str
+    cells: tuple[str, ...]
+    change: str = ""
+    verdict: Verdict | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Asked:
+    """What rows are made from: the drawing, its outcome, the one before the drag, the case shown."""
+
+    drawing: Drawing
+    outcome: Outcome
+    before: Outcome | None
+    case: int
+
+
+def rows(asked: Asked, id: str) -> list[Row]:
+    """The results of one element; none where the outcome does not know it."""
+    element = asked.drawing.elements.get(id)
+    if element is None:
+        return []
+    for kind, make in _MAKERS:
+        if isinstance(element, kind):
+            return make(asked, id)
+    return []
+
+
+def findings_about(outcome: Outcome, ids: Iterable[str]) -> list[Finding]:
+    """The findings that name one of these, worst first."""
+    wanted = set(ids)
+    return sorted((f for f in outcome.findings if wanted & set(f.ids)), key=lambda f: RANK[f.verdict])
+
+
+def _row(
+    asked: Asked, table: str, id: str, label: str, figure, write: Write, check: tuple[str, ...] = ()
+) -> Row:
+    """A row from one figure of a table's state; `figure` is a column name or a function of the state."""
+    read = figure if callable(figure) else lambda state: getattr(state, figure)
+    states = _states(getattr(asked.outcome, table), id, len(asked.outcome.cases))
+    cells = tuple(write(read(s)) if s.live else "dead" for s in states)
+    moved = ""
+    if asked.before is not None and asked.case < len(states):
+        then = getattr(asked.before, table)
+        if id in then and asked.case < len(asked.before.cases):
+            moved = change(read(states[asked.case]), read(then.at(id, asked.case)), write)
+    return Row(label, cells, moved, _verdict(asked, id, check))
+
+
+def _states(table: Table, id: str, cases: int) -> list:
+    return [table.at(id, case) for case in range(cases)]
+
+
+def _verdict(asked: Asked, id: str, check: tuple[str, ...]) -> Verdict | None:
+    """The worst verdict of the case shown among the element's findings of that check."""
+    case = asked.outcome.cases[asked.case] if asked.case < len(asked.outcome.cases) else ""
+    found = [f for f in findings_about(asked.outcome, (id,)) if f.check in check and f.case in ("", case)]
+    return found[0].verdict if found else None
+
+
+def _node(asked: Asked, id: str) -> list[Row]:
+    if id not in asked.outcome.nodes:
+        return []
+    row = partial(_row, asked, "nodes", id)
+    return [
+        row("Volts", "voltage_v", volts, VOLTAGE),
+        row("Of nominal", "percent", partial(percent, digits=2)),
+        row("Margin to limit", partial(_margin, asked), partial(percent, digits=2, sign=True)),
+        row("Drop from supply", "drop_percent", partial(percent, digits=2), DROP),
+        row("Angle", "angle_deg", partial(plain, digits=1, unit="°")),
+        _once(row("Route", "route_m", length)),
+    ]
+
+
+def _margin(asked: Asked, state: NodeState) -> float:
+    """Distance to the nearer voltage limit, unrounded; negative is beyond it."""
+    limits = asked.drawing.limits
+    return min(state.percent - limits.low_percent, limits.high_percent - state.percent)
+
+
+def _once(row: Row) -> Row:
+    """The same in every case: said once."""
+    return row if len(set(row.cells)) > 1 else Row(row.label, row.cells[:1], row.change, row.verdict)
+
+
+def _line(asked: Asked, id: str) -> list[Row]:
+    if id not in asked.outcome.branches:
+        return []
+    element, row = asked.drawing.elements[id], partial(_row, asked, "branches", id)
+    assert isinstance(element, Line)
+    kelvin = assumed.value(element, "temperature_degc")
+    ohms = partial(plain, digits=4, unit="Ω")
+    return [
+        row("Current", "current_a", amps),
+        row("Loading", "loading_percent", percent, LOADING),
+        row("Through", _through_kw, power),
+        row("Drop", "drop_percent", partial(percent, digits=2)),
+        row("Loss", "loss_kw", loss),
+        _once(row(f"R at {kelvin:g} °C", "resistance_ohm", ohms)),
+        _once(row("X", "reactance_ohm", ohms)),
+    ]
+
+
+def _through_kw(state: BranchState) -> float:
+    """What enters at the fed side; negative where power goes back towards the supply."""
+    return state.start_kw if state.forward else state.end_kw * -1
+
+
+def _through_kva(state: BranchState) -> float:
+    return (
+        math.hypot(state.start_kw, state.start_kvar)
+        if state.forward
+        else math.hypot(state.end_kw, state.end_kvar)
+    )
+
+
+def _transformer(asked: Asked, id: str) -> list[Row]:
+    if id not in asked.outcome.branches:
+        return []
+    element, row = asked.drawing.elements[id], partial(_row, asked, "branches", id)
+    assert isinstance(element, Transformer)
+    low = element.end if element.v2_v <= element.v1_v else element.start
+    made = [
+        row("Through", _through_kw, power),
+        row("", _through_kva, partial(power, unit="kVA")),
+        row("Loading", "loading_percent", percent, LOADING),
+    ]
+    if low in asked.outcome.nodes:
+        made.append(_row(asked, "nodes", low, "LV volts", _voltage, volts, VOLTAGE))
+    return made + [
+        row("Copper loss", "copper_kw", loss),
+        row("Iron loss", "iron_kw", loss),
+        row("Drop in it", "drop_percent", partial(percent, digits=2)),
+    ]
+
+
+def _voltage(state: NodeState) -> float:
+    return state.voltage_v
+
+
+def _switch(asked: Asked, id: str) -> list[Row]:
+    if id not in asked.outcome.branches:
+        return []
+    row = partial(_row, asked, "branches", id)
+    return [
+        row("Current", "current_a", amps),
+        row("Loading", "loading_percent", percent, LOADING),
+        row("Through", _through_kw, power),
+    ]
+
+
+def _attachment(asked: Asked, id: str) -> list[Row]:
+    if id not in asked.outcome.attachments:
+        return []
+    element, row = asked.drawing.elements[id], partial(_row, asked, "attachments", id)
+    assert isinstance(element, Attachment)
+    feeds = not isinstance(element, Load)
+    made = [
+        row("Feeds in" if feeds else "Draws", "kw", power),
+        row("" if isinstance(element, Load | Supply | Generator) else "Reactive", "kvar", _kvar),
+        row("Current", "current_a", amps),
+        row("Volts", "voltage_v", volts),
+    ]
+    return made
+
+
+_kvar = partial(power, unit="kvar")
+_MAKERS: tuple[tuple[type, Callable[[Asked, str], list[Row]]], ...] = (
+    (Node, _node),
+    (Line, _line),
+    (Transformer, _transformer),
+    (Switch, _switch),
+    (Attachment, _attachment),
+)
+
+
+def tap_words(drawing: Drawing, outcome: Outcome | None, id: str) -> str:
+    """What the tap does: `tap −2.5 %: 10725/400, raises winding 2`."""
+    element = drawing.elements[id]
+    assert isinstance(element, Transformer)
+    fed = 1
+    if outcome is not None and id in outcome.branches and not outcome.branches.at(id).forward:
+        fed = 2
+    return taps.words(element, element.tap, fed)

@@ -1,0 +1,39 @@
+"""What the shelf asks: a name, a kind, a file, where the terminals are. Tests put recorders in its place."""
+
+from PySide6.QtWidgets import QFileDialog, QInputDialog, QWidget
+
+from app.canvas.theme import Theme
+from app.model.drawing import Part, Symbol
+from app.model.kinds import KIND_WORDS
+from app.panels.terminals import Terminals
+
+KINDS_WITH_SYMBOL = ("transformer", "switch", "supply", "load", "generator", "capacitor")
+
+
+class ShelfDialogs:
+    """Small questions, one at a time."""
+
+    def __init__(self, parent: QWidget, theme: Theme) -> None:
+        self._parent, self._theme = parent, theme
+
+    def ask_name(self, title: str, suggestion: str) -> str:
+        """A name for a part; empty where the person changed their mind."""
+        name, agreed = QInputDialog.getText(self._parent, title, "Name of the part", text=suggestion)
+        return name.strip() if agreed else ""
+
+    def ask_kind(self, name: str) -> str | None:
+        """What a dropped picture is the symbol of."""
+        words = [KIND_WORDS[kind] for kind in KINDS_WITH_SYMBOL]
+        title, question = "A part of your own", f"What is {name[:60]} the symbol of?"
+        word, agreed = QInputDialog.getItem(self._parent, title, question, words, 0, False)
+        return KINDS_WITH_SYMBOL[words.index(word)] if agreed else None
+
+    def svg_to_open(self) -> str:
+        """The SVG file to take as symbol; empty for none."""
+        path, _kind = QFileDialog.getOpenFileName(self._parent, "Symbol", "", "Pictures (*.svg)")
+        return path
+
+    def terminals(self, part: Part) -> Symbol | None:
+        """The symbol with its terminals where the person put them, or None."""
+        dialog = Terminals(part, self._theme, self._parent)
+        return dialog.symbol() if dialog.exec() else None

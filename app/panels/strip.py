@@ -1,0 +1,295 @@
+"""The voltage strip: volts along the route, a curve a case; a transformer's step drags its tap."""
+
+import math
+
+from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
+from PySide6.QtGui import QKeyEvent, QMouseEvent, QPainter, QPaintEvent
+from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
+
+from app.canvas.palette import font
+from app.canvas.theme import Theme
+from app.live.attention import Attention
+from app.live.session import Session
+from app.live.solving import Solving
+from app.model.drawing import label
+from app.model.figures import length, percent, volts
+from app.model.kinds import Transformer
+from app.panels.results import tap_words
+from app.panels.strip_axes import Axes, Stretch, axes, node_points, span, stretches
+from app.panels.strip_course import Course, course
+from app.panels.strip_paint import Curve, Shown, paint_strip
+from app.panels.strip_tap import TapDrag
+from app.panels.words import LEFT
+from app.study.outcome import Outcome
+from solver.status import Status
+
+HEAD = 34.0
+FOOT = 42.0
+LEFT_MARGIN, RIGHT_MARGIN = 58.0, 34.0
+REACH = 9.0
+
+
+class VoltageStrip(QWidget):
+    """Painted from the outcome; hover and selection are shared with the board."""
+
+    def __init__(
+        self,
+        session: Session,
+        solving: Solving,
+        attention: Attention,
+        theme: Theme,
+        parent: QWidget | None = None,
+    ) -> None:
+        super().__init__(parent)
+        self._session, self._solving, self._attention, self._theme = session, solving, attention, theme
+        self.course = Course({}, ())
+        self.axes: Axes | None = None
+        self.curves: list[Curve] = []
+        self.tap = TapDrag(session, solving)
+        self.setMouseTracking(True)
+        self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+        self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
+        self.setAccessibleName("Voltage strip")
+        self.setAccessibleDescription("Volts along the route. Up and down move the tap of the chosen step.")
+        session.changed.connect(lambda _change: self._follow())
+        session.replaced.connect(self._follow)
+        solving.solved.connect(lambda _outcome: self._follow())
+        solving.went_stale.connect(self.update)
+        attention.selected.connect(lambda _ids: self._follow())
+        attention.hovered.connect(lambda _id: self.update())
+        attention.case_shown.connect(lambda _case: self._follow())
+        theme.changed.connect(self.update)
+        self._follow()
+
+    def sizeHint(self) -> QSize:
+        return QSize(700, 196)
+
+    def minimumSizeHint(self) -> QSize:
+        return QSize(240, 130)
+
+    # -- what is shown --------------------------------------------------------------------------
+    @property
+    def _outcome(self) -> Outcome | None:
+        outcome = self._solving.outcome
+        return outcome if outcome is not None and outcome.status is Status.SOLVED else None
+
+    @property
+    def case(self) -> int:
+        """The case shown."""
+        return min(self._attention.case, len(self._outcome.cases) - 1) if self._outcome else 0
+
+    def _follow(self) -> None:
+        """Lay the curves out anew."""
+        outcome, drawing = self._outcome, self._session.drawing
+        if outcome is None:
+            self.course, self.axes, self.curves = Course({}, ()), None, []
+            self.update()
+            return
+        chosen = (self.tap.id,) if self.tap.id else self._attention.selection
+        self.course = course(drawing, outcome, self.case, chosen)
+        before = self._solving.reference
+        reach = span(drawing.limits, self.course, [outcome, *([before] if before else [])])
+        if self.tap.reach is not None:
+            reach = min(reach[0], self.tap.reach[0]), max(reach[1], self.tap.reach[1])
+        self.tap.reach = reach if self.tap.id else None
+        room = QRectF(
+            LEFT_MARGIN, HEAD, self.width() - LEFT_MARGIN - RIGHT_MARGIN, max(self.height() - HEAD - FOOT, 20)
+        )
+        self.axes = axes(room, self.course, reach)
+        self.curves = [self._curve(outcome, case) for case in range(len(outcome.cases))]
+        self.update()
+
+    def _curve(self, outcome: Outcome, case: int) -> Curve:
+        assert self.axes is not None
+        drawing = self._session.drawing
+        return Curve(
+            outcome.cases[case],
+            stretches(drawing, outcome, case, self.course, self.axes),
+            node_points(outcome, case, self.course, self.axes),
+        )
+
+    def resizeEvent(self, event) -> None:
+        self._follow()
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        painter = QPainter(self)
+        palette = self._theme.palette
+        painter.fillRect(self.rect(), palette.field)
+        self._paint_head(painter)
+        if self.axes is None or not self.course.stops:
+            painter.setFont(font(9))
+            painter.setPen(palette.soft)
+            painter.drawText(self.rect(), int(Qt.AlignmentFlag.AlignCenter), self._why_empty())
+            return
+        before = self._solving.reference
+        shown = Shown(
+            drawing=self._session.drawing,
+            course=self.course,
+            axes=self.axes,
+            curves=self.curves,
+            case=self.case,
+            before=self._curve(before, self.case) if before and self.case < len(before.cases) else None,
+            selection=self._attention.selection,
+            hover=self._attention.hover,
+            held=self.tap.id or (self._keyed() if self.hasFocus() else ""),
+            stale=self._solving.stale,
+        )
+        paint_strip(painter, shown, palette)
+
+    def _paint_head(self, painter: QPainter) -> None:
+        palette = self._theme.palette
+        painter.setFont(font(9, bold=True))
+        painter.setPen(palette.ink)
+        room = QRectF(18, 8, self.width() - 36, 18)
+        painter.drawText(room, int(LEFT), "Volts along the route")
+        room.setLeft(room.left() + painter.fontMetrics().horizontalAdvance("Volts along the route") + 16)
+        held = self.tap.id or (self._keyed() if self.hasFocus() else "")
+        text = "% of nominal"
+        if held:
+            drawing = self._session.drawing
+            text = f"{label(drawing, held)}  {tap_words(drawing, self._outcome, held)}"
+        painter.setFont(font(8.5, bold=bool(held)))
+        painter.setPen(palette.tap if held else palette.soft)
+        painter.drawText(
+            room,
+            int(LEFT),
+            painter.fontMetrics().elidedText(text, Qt.TextElideMode.ElideRight, int(room.width())),
+        )
+
+    def _why_empty(self) -> str:
+        if self._solving.problem is not None:
+            return "No figures: not solved."
+        return "" if self._session.drawing.elements else "Draw a supply to see volts along the route."
+
+    # -- what lies under the hand ---------------------------------------------------------------
+    def handle_of(self, id: str) -> QPointF | None:
+        """Where the dot is that drags a transformer's tap."""
+        for stretch in self._steps():
+            if stretch.branch == id:
+                return stretch.points[2]
+        return None
+
+    def _steps(self) -> list[Stretch]:
+        if not self.curves:
+            return []
+        elements = self._session.drawing.elements
+        found = self.curves[self.case].stretches
+        return [s for s in found if isinstance(elements.get(s.branch), Transformer)]
+
+    def _handle_at(self, point: QPointF) -> str:
+        best, least = "", REACH
+        for stretch in self._steps():
+            away = min(math.dist(point.toTuple(), stretch.points[k].toTuple()) for k in (2, 1))
+            away = min(away, _gap(point, stretch.points[1], stretch.points[2]) + 3)
+            if away < least:
+                best, least = stretch.branch, away
+        return best
+
+    def _thing_at(self, point: QPointF) -> str:
+        """The node or branch nearest to a point, the main route first."""
+        if not self.curves:
+            return ""
+        curve = self.curves[self.case]
+        nodes = [(math.dist(point.toTuple(), at.toTuple()), id) for id, at in curve.nodes.items()]
+        near = min((n for n in nodes if n[1] in self.course.main), default=(math.inf, ""))
+        if near[0] < REACH:
+            return near[1]
+        best, least = "", REACH
+        for stretch in curve.stretches:
+            pairs = zip(stretch.points, stretch.points[1:], strict=False)
+            away = min(_gap(point, a, b) for a, b in pairs) + (0 if stretch.node in self.course.main else 2)
+            if away < least:
+                best, least = stretch.branch, away
+        return best
+
+    def words(self, id: str) -> str:
+        """A node or branch in words, for the tooltip."""
+        outcome, drawing = self._outcome, self._session.drawing
+        if outcome is None or id not in drawing.elements:
+            return ""
+        name = label(drawing, id)
+        if id in outcome.nodes:
+            state = outcome.nodes.at(id, self.case)
+            level = f"{volts(state.voltage_v)}, {percent(state.percent)} of nominal"
+            return f"{name}: {level} at {length(state.route_m)}"
+        if isinstance(drawing.elements[id], Transformer):
+            return f"{name}: {tap_words(drawing, outcome, id)}. Drag the dot to move the tap."
+        if id in outcome.branches:
+            return f"{name}: {percent(outcome.branches.at(id, self.case).drop_percent, 2)} lost along it"
+        return name
+
+    def event(self, event: QEvent) -> bool:
+        if event.type() == QEvent.Type.ToolTip:
+            point = QPointF(event.pos())
+            QToolTip.showText(
+                event.globalPos(), self.words(self._handle_at(point) or self._thing_at(point)), self
+            )
+            return True
+        return super().event(event)
+
+    # -- hand -----------------------------------------------------------------------------------
+    def mousePressEvent(self, event: QMouseEvent) -> None:
+        if event.button() != Qt.MouseButton.LeftButton:
+            return
+        handle = self._handle_at(event.position())
+        if handle and self.axes is not None:
+            self._attention.select((handle,))
+            self.tap.take(handle, event.position().y(), self.axes.px_per_percent)
+            self._follow()
+            return
+        thing = self._thing_at(event.position())
+        self._attention.select((thing,) if thing else ())
+
+    def mouseMoveEvent(self, event: QMouseEvent) -> None:
+        if self.tap.dragged:
+            self.tap.drag(event.position().y())
+            return
+        handle = self._handle_at(event.position())
+        self._attention.look_at(handle or self._thing_at(event.position()))
+        self.setCursor(Qt.CursorShape.SizeVerCursor if handle else Qt.CursorShape.ArrowCursor)
+
+    def mouseReleaseEvent(self, event: QMouseEvent) -> None:
+        if event.button() == Qt.MouseButton.LeftButton and self.tap.dragged:
+            self.tap.let_go()
+            self._follow()
+
+    def leaveEvent(self, event: QEvent) -> None:
+        if not self.tap.dragged:
+            self._attention.look_at("")
+
+    # -- keys -----------------------------------------------------------------------------------
+    def _keyed(self) -> str:
+        """The step that the keys move: the selected one, else the last on the main route."""
+        steps = [s.branch for s in self._steps()]
+        chosen = [s for s in steps if s in self._attention.selection]
+        on_main = [s.branch for s in self._steps() if s.node in self.course.main]
+        return (chosen or on_main[-1:] or steps[-1:] or [""])[0]
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        key, steps = event.key(), [s.branch for s in self._steps()]
+        if key == Qt.Key.Key_Escape and self.tap.id:
+            self.tap.put_back()
+            self._follow()
+        elif key in (Qt.Key.Key_Left, Qt.Key.Key_Right) and steps:
+            way = 1 if key == Qt.Key.Key_Right else -1
+            self._attention.select((steps[(steps.index(self._keyed()) + way) % len(steps)],))
+        elif key in (Qt.Key.Key_Up, Qt.Key.Key_Down) and steps:
+            self.tap.nudge(self._keyed(), 1 if key == Qt.Key.Key_Up else -1)
+        else:
+            super().keyPressEvent(event)
+
+    def focusInEvent(self, event) -> None:
+        super().focusInEvent(event)
+        self.update()
+
+    def focusOutEvent(self, event) -> None:
+        super().focusOutEvent(event)
+        self.update()
+
+
+def _gap(point: QPointF, a: QPointF, b: QPointF) -> float:
+    """Distance from a point to a straight line between two others."""
+    run = b - a
+    size = QPointF.dotProduct(run, run)
+    share = 0.0 if size == 0 else min(max(QPointF.dotProduct(point - a, run) / size, 0.0), 1.0)
+    return math.dist(point.toTuple(), (a + run * share).toTuple())

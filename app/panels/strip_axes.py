@@ -1,0 +1,114 @@
+"""The axes of the voltage strip, and the polylines on it."""
+
+import math
+from dataclasses import dataclass
+
+from PySide6.QtCore import QPointF, QRectF
+
+from app.model.drawing import Drawing, Limits
+from app.model.kinds import Transformer
+from app.panels.strip_course import Course, Stop
+from app.study.outcome import Outcome
+
+STEP_PX = 22.0  # the breadth given to a transformer, which has no length
+LEAST_SPAN = 6.0  # percent
+
+
+@dataclass(frozen=True, slots=True)
+class Axes:
+    """Percent up, route across; transformers get a little breadth of their own."""
+
+    room: QRectF
+    low: float
+    high: float
+    px_per_m: float
+    step_px: float
+
+    def y(self, percent: float) -> float:
+        """Where a percent of nominal lies."""
+        share = (percent - self.low) / (self.high - self.low)
+        return self.room.bottom() - share * self.room.height()
+
+    def x(self, stop: Stop) -> float:
+        """Where a node lies."""
+        return self.room.left() + stop.route_m * self.px_per_m + stop.steps * self.step_px
+
+    @property
+    def px_per_percent(self) -> float:
+        """How much a percent is worth."""
+        return self.room.height() / (self.high - self.low)
+
+
+def axes(room: QRectF, course: Course, span: tuple[float, float]) -> Axes:
+    """Axes that hold every node of a course."""
+    stops = list(course.stops.values())
+    most = max((s.steps for s in stops), default=0)
+    step = min(STEP_PX, room.width() / (2 * most)) if most else 0.0
+    scales = [(room.width() - s.steps * step) / s.route_m for s in stops if s.route_m > 0]
+    if not scales and most:
+        step = room.width() / most
+    return Axes(room, *span, min(scales, default=0.0), step)
+
+
+def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float, float]:
+    """Percent range: the limits and every voltage, with a little air."""
+    low, high = limits.low_percent, limits.high_percent
+    for outcome in outcomes:
+        for id in course.stops:
+            if id in outcome.nodes:
+                for case in range(len(outcome.cases)):
+                    percent = outcome.nodes.at(id, case).percent
+                    if math.isfinite(percent):
+                        low, high = min(low, percent), max(high, percent)
+    air = max(high - low, LEAST_SPAN) * 0.07
+    return low - air, high + air
+
+
+@dataclass(frozen=True, slots=True)
+class Stretch:
+    """One branch on the strip: from the node before it to the node it feeds."""
+
+    branch: str
+    node: str
+    points: tuple[QPointF, ...]
+
+
+def stretches(drawing: Drawing, outcome: Outcome, case: int, course: Course, axes: Axes) -> list[Stretch]:
+    """Every branch that feeds a node, as a polyline; a transformer is a step."""
+    made = []
+    for stop in course.stops.values():
+        before = course.stops.get(stop.parent)
+        if before is None or stop.id not in outcome.nodes or before.id not in outcome.nodes:
+            continue
+        here, there = outcome.nodes.at(before.id, case).percent, outcome.nodes.at(stop.id, case).percent
+        if not (math.isfinite(here) and math.isfinite(there)):
+            continue
+        a, b = QPointF(axes.x(before), axes.y(here)), QPointF(axes.x(stop), axes.y(there))
+        if isinstance(drawing.elements.get(stop.feeder), Transformer):
+            middle = (a.x() + b.x()) / 2
+            points = (a, QPointF(middle, a.y()), QPointF(middle, b.y()), b)
+        else:
+            points = (a, b)
+        made.append(Stretch(stop.feeder, stop.id, points))
+    return made
+
+
+def node_points(outcome: Outcome, case: int, course: Course, axes: Axes) -> dict[str, QPointF]:
+    """Where each node lies."""
+    made = {}
+    for stop in course.stops.values():
+        if stop.id in outcome.nodes:
+            percent = outcome.nodes.at(stop.id, case).percent
+            if math.isfinite(percent):
+                made[stop.id] = QPointF(axes.x(stop), axes.y(percent))
+    return made
+
+
+def ticks_m(longest_m: float, width: float) -> list[float]:
+    """Round distances, about 110 px apart."""
+    if longest_m <= 0:
+        return []
+    rough = longest_m / max(2.0, width / 110)
+    size = 10.0 ** math.floor(math.log10(rough))
+    step = next(m * size for m in (1, 2, 5, 10) if m * size >= rough)
+    return [k * step for k in range(int(longest_m / step + 1e-9) + 1)]

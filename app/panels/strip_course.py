@@ -1,0 +1,129 @@
+"""The routes the voltage strip shows: which branch feeds which node, how far along, after how many steps."""
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from app.model.drawing import Drawing
+from app.model.kinds import Attachment, Branch, Node, Transformer
+from app.study.outcome import Finding, Outcome, Verdict
+
+_URGENCY = {Verdict.FAILS: 0, Verdict.NEAR: 1, Verdict.HOLDS: 2}
+
+
+@dataclass(frozen=True, slots=True)
+class Stop:
+    """A node on its route."""
+
+    id: str
+    route_m: float
+    steps: int  # transformers between it and its supply
+    feeder: str  # the branch that feeds it, "" at a supply
+    parent: str  # the node at the other end of that branch
+
+
+@dataclass(frozen=True, slots=True)
+class Course:
+    """All live nodes by id, supplies first, and the main route from its supply to its far end."""
+
+    stops: dict[str, Stop]
+    main: tuple[str, ...]
+
+    @property
+    def longest_m(self) -> float:
+        """The farthest node."""
+        return max((s.route_m for s in self.stops.values()), default=0.0)
+
+    def way_to(self, id: str) -> tuple[str, ...]:
+        """The nodes from the supply to this one."""
+        way = []
+        while id in self.stops and id not in way:
+            way.append(id)
+            id = self.stops[id].parent
+        return tuple(reversed(way))
+
+    def fed_by(self, branch: str) -> Stop | None:
+        """The node that a branch feeds."""
+        return next((s for s in self.stops.values() if s.feeder == branch), None)
+
+
+def course(drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[str]) -> Course:
+    """The main route leads to what is selected, else to the node with the least margin."""
+    stops = _stops(drawing, outcome, case)
+    made = Course(stops, ())
+    target = _target(drawing, outcome, made, selection)
+    return Course(stops, made.way_to(_onward(made, target)) if target else ())
+
+
+def _stops(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Stop]:
+    found: dict[str, Stop] = {}
+    live = [i for i in outcome.nodes.ids if i in drawing.elements and outcome.nodes.at(i, case).live]
+    for id in sorted(live, key=lambda i: outcome.nodes.at(i, case).route_m):
+        _place(drawing, outcome, case, id, found, set(live))
+    return found
+
+
+def _place(
+    drawing: Drawing, outcome: Outcome, case: int, id: str, found: dict[str, Stop], live: set[str]
+) -> None:
+    """Put a node in, after the nodes on its way that are not in yet."""
+    waiting = []
+    while id in live and id not in found and id not in waiting:
+        waiting.append(id)
+        id = _parent(drawing, outcome, id)
+    for node in reversed(waiting):
+        feeder = outcome.upstream.get(node, "")
+        parent = _parent(drawing, outcome, node)
+        before = found.get(parent)
+        step = isinstance(drawing.elements.get(feeder), Transformer)
+        steps = (before.steps if before else 0) + step
+        route = outcome.nodes.at(node, case).route_m
+        found[node] = Stop(node, route, steps, feeder if before else "", parent if before else "")
+
+
+def _parent(drawing: Drawing, outcome: Outcome, id: str) -> str:
+    branch = drawing.elements.get(outcome.upstream.get(id, ""))
+    if not isinstance(branch, Branch):
+        return ""
+    return branch.start if branch.end == id else branch.end
+
+
+def _target(drawing: Drawing, outcome: Outcome, course: Course, selection: Iterable[str]) -> str:
+    for id in sorted(selection):
+        element = drawing.elements.get(id)
+        if isinstance(element, Node) and id in course.stops:
+            return id
+        if isinstance(element, Attachment) and element.node in course.stops:
+            return element.node
+        fed = course.fed_by(id)
+        if fed is not None:
+            return fed.id
+    return _worst(outcome.findings, course) or _farthest(course)
+
+
+def _worst(findings: Iterable[Finding], course: Course) -> str:
+    """The node of the most urgent voltage finding."""
+    about = [
+        (_URGENCY[f.verdict], f.margin, f.ids[0])
+        for f in findings
+        if f.verdict in _URGENCY and f.margin is not None and f.ids and f.ids[0] in course.stops
+    ]
+    return min(about)[2] if about else ""
+
+
+def _farthest(course: Course) -> str:
+    return max(course.stops, key=lambda i: (course.stops[i].route_m, course.stops[i].steps), default="")
+
+
+def _onward(course: Course, id: str) -> str:
+    """From the target on to the far end of its longest branch, so that the route does not stop halfway."""
+    children: dict[str, list[str]] = {}
+    for stop in course.stops.values():
+        children.setdefault(stop.parent, []).append(stop.id)
+    best, reach, waiting = id, course.stops[id].route_m, [id]
+    while waiting:
+        node = waiting.pop()
+        stop = course.stops[node]
+        if (stop.route_m, stop.steps) > (reach, course.stops[best].steps):
+            best, reach = node, stop.route_m
+        waiting += children.get(node, [])
+    return best

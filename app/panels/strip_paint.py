@@ -1,0 +1,242 @@
+"""Painting the voltage strip."""
+
+from dataclasses import dataclass
+
+from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPen
+
+from app.canvas.palette import Palette, font
+from app.model.drawing import Drawing, Limits, label
+from app.model.figures import length, plain
+from app.model.kinds import Busbar, Transformer
+from app.panels.strip_axes import Axes, Stretch, ticks_m
+from app.panels.strip_course import Course
+from app.panels.style import mixed
+from app.panels.words import LEFT, RIGHT
+
+CENTRE = Qt.AlignmentFlag.AlignHCenter | Qt.AlignmentFlag.AlignVCenter
+HANDLE = 4.6
+
+
+@dataclass(frozen=True, slots=True)
+class Curve:
+    """One case on the strip."""
+
+    name: str
+    stretches: list[Stretch]
+    nodes: dict[str, QPointF]
+
+
+@dataclass(frozen=True, slots=True)
+class Shown:
+    """Everything one painting needs; `curves` by case, `before` the shown case when the drag began."""
+
+    drawing: Drawing
+    course: Course
+    axes: Axes
+    curves: list[Curve]
+    case: int
+    before: Curve | None
+    selection: frozenset[str]
+    hover: str
+    held: str  # the transformer whose step is dragged or has the keys
+    stale: bool
+
+
+def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
+    """The plot under the head."""
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    _paint_band(painter, shown.axes, shown.drawing.limits, palette)
+    _paint_route_axis(painter, shown, palette)
+    for case, curve in enumerate(shown.curves):
+        if case != shown.case:
+            _paint_other_case(painter, curve, case, shown, palette)
+    if shown.before is not None:
+        _paint_before(painter, shown.before, shown, palette)
+    _paint_curve(painter, shown, palette)
+    _paint_handles(painter, shown, palette)
+    _paint_names(painter, shown, palette)
+
+
+def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette) -> None:
+    room = axes.room
+    top, bottom = axes.y(limits.high_percent), axes.y(limits.low_percent)
+    band = QRectF(room.left() - 10, top, room.width() + 22, bottom - top)
+    painter.fillRect(band, mixed(palette.good, palette.field, 0.13 if palette.dark else 0.07))
+    painter.setFont(font(8))
+    for percent, limit in ((limits.high_percent, True), (100.0, False), (limits.low_percent, True)):
+        y = axes.y(percent)
+        style = Qt.PenStyle.DashLine if limit else Qt.PenStyle.SolidLine
+        painter.setPen(QPen(palette.soft if limit else palette.faint, 1, style))
+        painter.drawLine(QPointF(band.left(), y), QPointF(band.right(), y))
+        painter.setPen(palette.soft)
+        text = plain(percent, 0 if percent == round(percent) else 1)
+        painter.drawText(QRectF(0, y - 8, band.left() - 6, 16), int(RIGHT), text)
+
+
+def _paint_route_axis(painter: QPainter, shown: Shown, palette: Palette) -> None:
+    """Distances from the supply along the main route."""
+    course, axes = shown.course, shown.axes
+    way = [course.stops[i] for i in course.main]
+    if not way:
+        return
+    painter.setFont(font(7.5))
+    metrics, y = QFontMetricsF(painter.font()), axes.room.bottom() + 31
+    free = -1e9
+    for distance in ticks_m(way[-1].route_m, axes.room.width()):
+        passed = [s for s in way if s.route_m <= distance + 1e-9]
+        steps = passed[-1].steps if distance else 0
+        x = axes.room.left() + distance * axes.px_per_m + steps * axes.step_px
+        text = length(distance) if distance else "0"
+        wide = metrics.horizontalAdvance(text)
+        if x - wide / 2 < free:
+            continue
+        free = x + wide / 2 + 8
+        painter.setPen(palette.faint)
+        painter.drawLine(QPointF(x, axes.room.bottom() + 3), QPointF(x, axes.room.bottom() + 6))
+        painter.setPen(palette.soft)
+        painter.drawText(QRectF(x - 40, y - 7, 80, 14), int(CENTRE), text)
+
+
+def _inked(colour: QColor, shown: Shown, palette: Palette) -> QColor:
+    return mixed(palette.soft, palette.field, 0.55) if shown.stale else colour
+
+
+def _polyline(painter: QPainter, stretches: list[Stretch], on: set[str] | None = None) -> None:
+    for stretch in stretches:
+        if on is None or stretch.node in on:
+            painter.drawPolyline(list(stretch.points))
+
+
+def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, palette: Palette) -> None:
+    """Thin, each case with a dash of its own."""
+    dashes = ([], [6.0, 3.0], [2.0, 2.5], [8.0, 3.0, 1.5, 3.0])
+    pen = QPen(_inked(palette.soft, shown, palette), 1.2)
+    dash = dashes[case % len(dashes)]
+    if dash:
+        pen.setDashPattern(dash)
+    painter.setPen(pen)
+    _polyline(painter, curve.stretches, set(shown.course.main))
+    _name_curve(painter, curve, shown, palette.soft, bold=False)
+
+
+def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
+    painter.setPen(QPen(palette.tap, 1.2, Qt.PenStyle.DotLine))
+    _polyline(painter, curve.stretches, set(shown.course.main))
+    end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
+    now = shown.curves[shown.case].nodes.get(shown.course.main[-1]) if shown.course.main else None
+    if end is None or now is None or abs(end.y() - now.y()) < 3:
+        return
+    painter.setFont(font(7.5))
+    painter.setPen(palette.soft)
+    below = end.y() > now.y()
+    room = QRectF(end.x() - 150, end.y() + (1 if below else -15), 150, 14)
+    painter.drawText(room, int(RIGHT), "before the drag")
+
+
+def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:
+    """The case shown: the main route strong, other branches faint, the selection and hover lit."""
+    curve, main = shown.curves[shown.case], set(shown.course.main)
+    faint = QPen(_inked(mixed(palette.flow, palette.field, 0.4), shown, palette), 1.2)
+    painter.setPen(faint)
+    _polyline(painter, [s for s in curve.stretches if s.node not in main])
+    strong = QPen(_inked(palette.flow, shown, palette), 2.2)
+    strong.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
+    strong.setCapStyle(Qt.PenCapStyle.RoundCap)
+    painter.setPen(strong)
+    _polyline(painter, curve.stretches, main)
+    for stretch in curve.stretches:
+        if stretch.branch == shown.hover or stretch.branch in shown.selection:
+            lit = QPen(strong)
+            lit.setWidthF(4.2 if stretch.branch in shown.selection else 3.4)
+            painter.setPen(lit)
+            painter.drawPolyline(list(stretch.points))
+    _paint_nodes(painter, curve, shown, palette)
+    if len(shown.curves) > 1:
+        _name_curve(painter, curve, shown, palette.flow, bold=True)
+
+
+def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
+    for id, at in curve.nodes.items():
+        on_main = id in shown.course.main
+        lit = id == shown.hover or id in shown.selection
+        if not on_main and not lit:
+            continue
+        painter.setPen(QPen(_inked(palette.flow, shown, palette), 1.4))
+        painter.setBrush(palette.field if not lit else _inked(palette.flow, shown, palette))
+        size = 4.2 if lit else 2.6 if isinstance(shown.drawing.elements.get(id), Busbar) else 1.8
+        painter.drawEllipse(at, size, size)
+    painter.setBrush(Qt.BrushStyle.NoBrush)
+
+
+def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, bold: bool) -> None:
+    """The case's name at the far end, above its line unless another line runs just there."""
+    end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
+    if end is None:
+        return
+    others = [c.nodes.get(shown.course.main[-1]) for c in shown.curves if c is not curve]
+    crowded = any(o is not None and -18 < o.y() - end.y() < 0 for o in others)
+    painter.setFont(font(8, bold=bold))
+    painter.setPen(colour)
+    room = QRectF(end.x() - 260, end.y() + (2 if crowded else -17), 260, 15)
+    painter.drawText(room, int(RIGHT), curve.name)
+
+
+def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:
+    """The dot that drags a tap: filled at the fed winding's side of the step, ringed at the other."""
+    for stretch in shown.curves[shown.case].stretches:
+        if not isinstance(shown.drawing.elements.get(stretch.branch), Transformer):
+            continue
+        held = stretch.branch == shown.held
+        near = held or stretch.branch == shown.hover or stretch.branch in shown.selection
+        on_main = stretch.node in shown.course.main
+        colour = _inked(palette.tap, shown, palette)
+        if not on_main and not near:
+            colour = mixed(colour, palette.field, 0.5)
+        before, after = stretch.points[1], stretch.points[2]
+        painter.setPen(QPen(colour, 1.5))
+        painter.drawLine(before, after)
+        painter.setBrush(palette.field)
+        painter.drawEllipse(before, HANDLE * 0.62, HANDLE * 0.62)
+        painter.setBrush(colour)
+        size = HANDLE + (1.4 if near else 0)
+        painter.drawEllipse(after, size, size)
+        if held:
+            painter.setBrush(Qt.BrushStyle.NoBrush)
+            painter.setPen(QPen(colour, 1))
+            painter.drawEllipse(after, size + 3, size + 3)
+    painter.setBrush(Qt.BrushStyle.NoBrush)
+
+
+def _paint_names(painter: QPainter, shown: Shown, palette: Palette) -> None:
+    """Names under the main route, the weightier first; one that would overlap is left out."""
+    taken: list[tuple[float, float]] = []
+    y = shown.axes.room.bottom() + 16
+    for text, x, strong in _names(shown):
+        painter.setFont(font(8, bold=strong))
+        wide = QFontMetricsF(painter.font()).horizontalAdvance(text)
+        left = min(max(x - wide / 2, 2.0), shown.axes.room.right() + 14 - wide)
+        if any(left < b + 6 and left + wide > a - 6 for a, b in taken):
+            continue
+        taken.append((left, left + wide))
+        painter.setPen(palette.ink if strong else palette.soft)
+        painter.drawText(QRectF(left, y - 8, wide + 2, 15), int(LEFT), text)
+
+
+def _names(shown: Shown) -> list[tuple[str, float, bool]]:
+    course, axes, drawing = shown.course, shown.axes, shown.drawing
+    ranked = []
+    for k, id in enumerate(course.main):
+        stop = course.stops[id]
+        chosen = id in shown.selection or id == shown.hover
+        end = k in (0, len(course.main) - 1)
+        plain_joint = not isinstance(drawing.elements[id], Busbar) and not drawing.elements[id].name
+        ranked.append(
+            (0 if chosen else 1 if end else 4 if plain_joint else 3, label(drawing, id), axes.x(stop), chosen)
+        )
+        if stop.steps and isinstance(drawing.elements.get(stop.feeder), Transformer):
+            chosen = stop.feeder in shown.selection or stop.feeder == shown.hover
+            middle = axes.x(stop) - axes.step_px / 2
+            ranked.append((0 if chosen else 2, label(drawing, stop.feeder), middle, chosen))
+    ranked.sort(key=lambda r: r[0])
+    return [(text if len(text) <= 18 else text[:17] + "…", x, strong) for _rank, text, x, strong in ranked]

@@ -1,0 +1,97 @@
+"""Results of several elements together, and of the drawing as a whole."""
+
+from collections.abc import Callable
+from functools import partial
+
+from app.model.figures import length, loss, plain, power, volts
+from app.model.kinds import Branch, Line, Load, Node
+from app.panels.change import change
+from app.panels.results import Asked, Row
+
+Total = Callable[[object, int], float]
+
+
+def summary_rows(asked: Asked, ids: tuple[str, ...]) -> list[Row]:
+    """Counts, total length, loss and demand of a selection; without one, the balance of the whole."""
+    if not ids:
+        return _whole(asked)
+    elements = {i: asked.drawing.elements[i] for i in ids}
+    lines = {i: e for i, e in elements.items() if isinstance(e, Line)}
+    made = []
+    if lines:
+        total = sum(e.length_m for e in lines.values())
+        made.append(Row("Length, all", (length(total),)))
+        if any(e.parallel > 1 for e in lines.values()):
+            laid = sum(e.length_m * e.parallel for e in lines.values())
+            made.append(Row("Laid, all runs", (length(laid),)))
+    branches = [i for i, e in elements.items() if isinstance(e, Branch) and i in asked.outcome.branches]
+    if branches:
+        made.append(_sum(asked, "branches", branches, "loss_kw", "Loss, all", loss))
+    loads = [i for i, e in elements.items() if isinstance(e, Load) and i in asked.outcome.attachments]
+    if loads:
+        made.append(_sum(asked, "attachments", loads, "kw", "Drawn, all", power))
+        made.append(_sum(asked, "attachments", loads, "kvar", "", partial(power, unit="kvar")))
+    return made + _levels(asked, [i for i, e in elements.items() if isinstance(e, Node)])
+
+
+def _sum(asked: Asked, table: str, ids: list[str], name: str, label: str, write) -> Row:
+    def total(outcome, case: int) -> float:
+        known = getattr(outcome, table)
+        states = [known.at(i, case) for i in ids if i in known]
+        return sum(getattr(state, name) for state in states if state.live)
+
+    cases = range(len(asked.outcome.cases))
+    moved = ""
+    if asked.before is not None:
+        moved = change(total(asked.outcome, asked.case), total(asked.before, asked.case), write)
+    return Row(label, tuple(write(total(asked.outcome, case)) for case in cases), moved)
+
+
+def _levels(asked: Asked, nodes: list[str]) -> list[Row]:
+    known = [i for i in nodes if i in asked.outcome.nodes]
+    lowest, highest = [], []
+    for case in range(len(asked.outcome.cases)):
+        states = [s for s in (asked.outcome.nodes.at(i, case) for i in known) if s.live]
+        if not states:
+            return []
+        for kept, pick in ((lowest, min), (highest, max)):
+            state = pick(states, key=lambda s: s.percent)
+            kept.append(f"{volts(state.voltage_v)}")
+    return [Row("Lowest", tuple(lowest)), Row("Highest", tuple(highest))] if len(known) > 1 else []
+
+
+def _whole(asked: Asked) -> list[Row]:
+    rows = [
+        ("Supply", "supply_kw", power),
+        ("", "supply_kvar", partial(power, unit="kvar")),
+        ("Infeed", "generation_kw", power),
+        ("Loads", "load_kw", power),
+        ("Lost", "loss_kw", loss),
+        ("in lines", "line_kw", loss),
+        ("in copper", "copper_kw", loss),
+        ("in iron", "iron_kw", loss),
+    ]
+    if not asked.drawing.elements:
+        return []
+    made = []
+    for label, name, write in rows:
+        values = getattr(asked.outcome.balance, name)
+        if name == "generation_kw" and not values.any():
+            continue
+        moved = ""
+        if asked.before is not None and asked.case < len(asked.before.cases):
+            moved = change(values[asked.case], getattr(asked.before.balance, name)[asked.case], write)
+        made.append(Row(label, tuple(write(float(v)) for v in values), moved))
+    made.append(Row("Closes to", tuple(closure(float(v)) for v in asked.outcome.balance.closure)))
+    return made
+
+
+def closure(value: float) -> str:
+    """2·10⁻⁹, as part of the supply."""
+    if value != value:
+        return "–"
+    if value == 0:
+        return "0"
+    mantissa, _, exponent = f"{value:.0e}".partition("e")
+    raised = str(int(exponent)).translate(str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹"))
+    return f"{mantissa}·10{raised}" if abs(int(exponent)) > 2 else plain(value, 3)

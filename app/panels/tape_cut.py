@@ -1,0 +1,138 @@
+"""The loss tape before it is painted: what the pieces are and where they lie. No painting here."""
+
+from dataclasses import dataclass, field
+
+from app.model.drawing import Drawing, label
+from app.model.kinds import Generator, Line, Load, Transformer
+from app.study.outcome import Outcome
+
+FACTORS = tuple(m * 10**k for k in range(5) for m in (1, 2, 4, 5))
+SMALLEST_PX = 34.0  # a piece narrower than this joins the others
+LOSS_SHARE = 0.27  # of the tape's width, for the losses drawn larger
+GAP = 2.0
+FAN = 26.0  # between the bar and the losses drawn larger
+
+
+@dataclass(frozen=True, slots=True)
+class Piece:
+    """One cut of the tape. `ids` are the elements in it; what: load, export, copper, iron, cable, feed."""
+
+    what: str
+    ids: tuple[str, ...]
+    kw: float
+    name: str
+    left: float = 0.0
+    width: float = 0.0
+
+    def at(self, left: float, width: float) -> "Piece":
+        """The same piece with its place."""
+        return Piece(self.what, self.ids, self.kw, self.name, left, width)
+
+
+@dataclass(frozen=True, slots=True)
+class Cut:
+    """The whole tape. `thread` is where the losses lie in the bar to scale, left and width."""
+
+    bar: tuple[Piece, ...] = ()
+    losses: tuple[Piece, ...] = ()
+    feeds: tuple[Piece, ...] = ()
+    factor: int = 1
+    thread: tuple[float, float] = (0.0, 0.0)
+    total_kw: float = 0.0
+    pieces: tuple[Piece, ...] = field(default=())
+
+
+def cut(drawing: Drawing, outcome: Outcome, case: int, width: float) -> Cut:
+    """Cut the power of all supplies and generators to scale into a width."""
+    feeds = _feeds(drawing, outcome, case)
+    loads, losses = _loads(drawing, outcome, case), _losses(drawing, outcome, case)
+    total = sum(p.kw for p in loads) + sum(p.kw for p in losses)
+    if total <= 0 or width < 120:
+        return Cut()
+    lost = sum(p.kw for p in losses)
+    factor = _factor(lost / total)
+    scale = (width - FAN) / (total - lost + lost * (1 + factor)) if factor > 1 else width / total
+    bar = _lay(loads, 0.0, scale)
+    end = bar[-1].left + bar[-1].width + GAP if bar else 0.0
+    thread = (end, max(lost * scale, 1.0))
+    laid = _lay(losses, thread[0] + thread[1] + FAN if factor > 1 else end, scale * factor)
+    inlets = _lay(feeds, 0.0, (end + thread[1]) / max(sum(p.kw for p in feeds), 1e-12))
+    return Cut(bar, laid, inlets, factor, thread, total, (*bar, *laid))
+
+
+def _factor(share: float) -> int:
+    """The largest round factor at which the losses still leave the loads most of the tape."""
+    if share <= 0:
+        return 1
+    most = LOSS_SHARE / share
+    fitting = [f for f in FACTORS if f * (1 - LOSS_SHARE) <= most]
+    return fitting[-1] if fitting else 1
+
+
+def _lay(pieces: list[Piece], left: float, scale: float) -> tuple[Piece, ...]:
+    """Side by side in order; the small ones of a kind joined into `others n`."""
+    kept: list[Piece] = []
+    kinds = list(dict.fromkeys(p.what for p in pieces))
+    for kind in kinds:
+        alike = [p for p in pieces if p.what == kind]
+        large = [p for p in alike if p.kw * scale >= SMALLEST_PX]
+        small = [p for p in alike if p.kw * scale < SMALLEST_PX]
+        if len(small) == 1 or (small and not large and len(small) <= 3):
+            large, small = large + small, []
+        kept += large
+        if small:
+            ids = tuple(i for p in small for i in p.ids)
+            kept.append(Piece(kind, ids, sum(p.kw for p in small), f"others {len(small)}"))
+    placed = []
+    for piece in kept:
+        wide = piece.kw * scale
+        placed.append(piece.at(left, max(wide - GAP, min(wide, 1.0))))
+        left += wide
+    return tuple(placed)
+
+
+def _attached(drawing: Drawing, outcome: Outcome, case: int):
+    for id, element in drawing.attachments().items():
+        if id in outcome.attachments:
+            state = outcome.attachments.at(id, case)
+            if state.live:
+                yield id, element, state.kw
+
+
+def _loads(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
+    found = [
+        Piece("load", (id,), kw, label(drawing, id))
+        for id, element, kw in _attached(drawing, outcome, case)
+        if isinstance(element, Load) and kw > 0
+    ]
+    found.sort(key=lambda p: -p.kw)
+    export = -float(outcome.balance.supply_kw[case])
+    if export > 0:
+        found.append(Piece("export", (), export, "back to the supply"))
+    return found
+
+
+def _losses(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
+    found: dict[str, list[Piece]] = {"copper": [], "iron": [], "cable": []}
+    for id, element in drawing.branches().items():
+        if id not in outcome.branches:
+            continue
+        state = outcome.branches.at(id, case)
+        if not state.live:
+            continue
+        if isinstance(element, Transformer):
+            for what, kw in (("copper", state.copper_kw), ("iron", state.iron_kw)):
+                if kw > 0:
+                    found[what].append(Piece(what, (id,), kw, label(drawing, id)))
+        elif isinstance(element, Line) and state.loss_kw > 0:
+            found["cable"].append(Piece("cable", (id,), state.loss_kw, label(drawing, id)))
+    return [piece for alike in found.values() for piece in sorted(alike, key=lambda p: -p.kw)]
+
+
+def _feeds(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
+    supply = max(float(outcome.balance.supply_kw[case]), 0.0)
+    made = [Piece("feed", (), supply, "supply")] if supply else []
+    for id, element, kw in _attached(drawing, outcome, case):
+        if isinstance(element, Generator) and kw > 0:
+            made.append(Piece("infeed", (id,), kw, label(drawing, id)))
+    return made
