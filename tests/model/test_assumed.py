@@ -1,0 +1,99 @@
+"""What stands in for blanks, with its basis; nothing is assumed unlisted."""
+
+import csv
+import math
+from pathlib import Path
+
+import pytest
+from msgspec.structs import replace
+
+from app.model import assumed
+from app.model.fields import fields_of
+from app.model.kinds import KINDS, Cable, Capacitor, Load, Node, OverheadLine, Transformer
+
+T = Transformer(start="", end="")
+TABLE = Path(__file__).with_name("eu_548_2014_table_I_1_tier_2.csv")
+
+
+def test_given_values_are_taken_as_they_are():
+    t = replace(T, load_loss_w=0.0, no_load_loss_w=5.0, no_load_current_percent=0.0)
+    assert [assumed.value(t, f) for f in ("load_loss_w", "no_load_loss_w", "no_load_current_percent")] == [
+        0,
+        5,
+        0,
+    ]
+    assert assumed.blank(t) == ()
+
+
+def test_losses_are_those_of_the_regulation_at_every_rating_it_lists():
+    with TABLE.open(encoding="utf-8") as rows:
+        listed = list(csv.DictReader(row for row in rows if not row.startswith("#")))
+    assert len(listed) == len(assumed.EU_LOSSES) == 16
+    for row in listed:
+        t = replace(T, rating_kva=float(row["rated_kVA"]))
+        assert assumed.value(t, "load_loss_w") == float(row["Pk_W"])
+        assert assumed.value(t, "no_load_loss_w") == float(row["P0_W"])
+
+
+def test_between_ratings_by_straight_line_and_outside_in_proportion():
+    assert assumed.value(replace(T, rating_kva=75.0), "load_loss_w") == 1000.0
+    assert assumed.value(replace(T, rating_kva=200.0), "no_load_loss_w") == pytest.approx(189 + 81 * 40 / 90)
+    assert assumed.value(replace(T, rating_kva=12.5), "load_loss_w") == 300.0
+    assert assumed.value(replace(T, rating_kva=6300.0), "load_loss_w") == 46000.0
+    bases = {assumed.eu_loss(kva, 1)[1] for kva in (12.5, 75.0, 100.0)}
+    assert len(bases) == 3
+    assert all("548/2014" in b for b in bases)
+
+
+def test_assumed_figures_never_contradict_each_other():
+    for kva in (1.0, 5.0, 16.0, 25.0, 63.0, 100.0, 333.0, 1000.0, 1e5):
+        for uk in (0.0, 0.5, 4.0, 12.0):
+            t = replace(T, rating_kva=kva, uk_percent=uk)
+            assert assumed.value(t, "load_loss_w") <= uk * kva * 10 * (1 + 1e-12)
+            drawn = assumed.value(t, "no_load_current_percent") * kva * 10
+            assert drawn >= assumed.value(t, "no_load_loss_w") * (1 - 1e-12)
+    lossy = replace(T, no_load_loss_w=2000.0)
+    assert assumed.value(lossy, "no_load_current_percent") == 2.0
+
+
+def test_blanks_are_listed_with_value_unit_and_basis():
+    listed = {b.field: b for b in assumed.blank(Cable(start="", end=""))}
+    assert set(listed) == {"c_uf_per_km", "temperature_degc"}
+    assert listed["c_uf_per_km"].value == 0.0
+    assert listed["c_uf_per_km"].basis == "neglected"
+    assert (listed["temperature_degc"].value, listed["temperature_degc"].unit) == (60.0, "°C")
+    assert "no source" in listed["temperature_degc"].basis
+    assert assumed.value(OverheadLine(start="", end=""), "temperature_degc") == 50.0
+    assert len(assumed.blank(T)) == 3
+    given = Cable(start="", end="", c_uf_per_km=0.1, temperature_degc=20.0)
+    assert assumed.blank(given) == ()
+
+
+def test_nominal_voltage_stands_in_for_stated_voltages():
+    load, capacitor = Load(node=""), Capacitor(node="")
+    assert assumed.value(load, "reference_v", 400.0) == 400.0
+    assert assumed.value(replace(load, reference_v=230.0), "reference_v", 400.0) == 230.0
+    assert assumed.value(capacitor, "rated_v", 11000.0) == 11000.0
+    assert math.isnan(assumed.value(load, "reference_v"))
+    assert assumed.value(load, "constant_current_percent") == 0.0
+    assert {b.field for b in assumed.blank(load, 400.0)} == {
+        "constant_current_percent", "constant_impedance_percent", "reference_v",
+    }  # fmt: skip
+
+
+def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
+    no_stand_in = {"area_mm2", "rating_a", "nominal_v", "demand_kva", "demand_kw"}
+    for kind in KINDS.values():
+        for field in fields_of(kind).values():
+            if field.optional and field.type is float and not (issubclass(kind, Node)):
+                assert (field.name in assumed.assumable(kind)) != (field.name in no_stand_in), field.name
+
+
+def test_fields_without_a_stand_in_raise():
+    for element, field in (
+        (T, "uk_percent"),
+        (Cable(start="", end=""), "rating_a"),
+        (Load(node=""), "demand_kw"),
+    ):
+        with pytest.raises(KeyError):
+            assumed.stand_in(element, field)
