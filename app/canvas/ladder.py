@@ -58,7 +58,7 @@ class TapLadder(QGraphicsObject):
         return self.hold.transformer
 
     @property
-    def scale(self) -> Scale:
+    def notches(self) -> Scale:
         """Where the notches lie."""
         t = self.transformer
         return Scale.of(t) if t is not None else Scale(0, 0)
@@ -71,7 +71,8 @@ class TapLadder(QGraphicsObject):
             return None
         losses = np.atleast_2d(np.asarray(curve.loss_kw).T).T
         case = min(self._board.attention.case, losses.shape[1] - 1)
-        return Prospect(np.asarray(curve.notches), losses[:, case], np.asarray(curve.holds, dtype=bool))
+        known = Prospect(np.asarray(curve.notches), losses[:, case], np.asarray(curve.holds, dtype=bool))
+        return known if known.best is not None else None
 
     @property
     def fed_winding(self) -> int:
@@ -99,7 +100,7 @@ class TapLadder(QGraphicsObject):
     def follow(self) -> None:
         """Read drawing and figures again; repaints only where something shown is new."""
         t = self.transformer
-        self.setVisible(t is not None and self.scale.steps > 0)
+        self.setVisible(t is not None and self.notches.steps > 0)
         if t is None:
             return
         curve = self._solving.curve(self.id)
@@ -128,13 +129,13 @@ class TapLadder(QGraphicsObject):
     # painting -----------------------------------------------------------------------------------
 
     def boundingRect(self) -> QRectF:
-        return QRectF(0, 0, WIDE, self.scale.height + 2 * EDGE)
+        return QRectF(0, 0, WIDE, self.notches.height + 2 * EDGE)
 
     def paint(self, painter: QPainter, option, widget=None) -> None:
         t = self.transformer
         if t is None:
             return
-        palette, scale, prospect, rail = self._theme.palette, self.scale, self.prospect, self._rail
+        palette, scale, prospect, rail = self._theme.palette, self.notches, self.prospect, self._rail
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         if prospect is not None:
             aged = self._solving.stale or not self._solving.curve_is_current(self.id)
@@ -201,7 +202,7 @@ class TapLadder(QGraphicsObject):
     # the hand -----------------------------------------------------------------------------------
 
     def _notch_at(self, y: float) -> int:
-        return self.scale.notch(y - self._rail.y())
+        return self.notches.notch(y - self._rail.y())
 
     def mousePressEvent(self, event) -> None:
         t = self.transformer
@@ -209,7 +210,7 @@ class TapLadder(QGraphicsObject):
             event.ignore()
             return
         self.setFocus(Qt.FocusReason.MouseFocusReason)
-        rung = self._rail.y() + self.scale.y(t.tap)
+        rung = self._rail.y() + self.notches.y(t.tap)
         off = event.pos().y() - rung
         self._grip = off if abs(off) <= RUNG.height() else 0.0
         self.hold.take()

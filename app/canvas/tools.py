@@ -6,7 +6,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QPointF, Qt
+from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter, QPen
 
 from app.canvas.geometry import GRID, bar_ends, node_point, scene
@@ -18,13 +18,13 @@ if TYPE_CHECKING:
     from app.canvas.view import BoardView
 
 SLACK_PX = 4.0  # a press that moves less than this is a click
-ARROWS = {
+ARROWS: dict[int, tuple[int, int]] = {
     Qt.Key.Key_Left: (-1, 0),
     Qt.Key.Key_Right: (1, 0),
     Qt.Key.Key_Up: (0, -1),
     Qt.Key.Key_Down: (0, 1),
 }
-ENTERS = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
+ENTERS: tuple[int, ...] = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
 
 
 @dataclass(frozen=True)
@@ -114,8 +114,7 @@ def paint_ring(painter: QPainter, node: Node, palette: Palette) -> None:
     if isinstance(node, Busbar):
         first, last = bar_ends(node)
         wide = QPointF(8, 8)
-        box = (first - wide, last + wide)
-        painter.drawRoundedRect(box[0].x(), box[0].y(), (box[1] - box[0]).x(), (box[1] - box[0]).y(), 8, 8)
+        painter.drawRoundedRect(QRectF(first - wide, last + wide), 8.0, 8.0)
     else:
         painter.drawEllipse(node_point(node), 10.0, 10.0)
 

@@ -7,12 +7,12 @@ from typing import TYPE_CHECKING
 from PySide6.QtCore import QMimeData
 from PySide6.QtGui import QGuiApplication
 
-from app.canvas.geometry import GRID, scene, snap
+from app.canvas.geometry import scene, snap
 from app.canvas.tools import named
 from app.model import edits
 from app.model.edits import Clip
 from app.model.errors import FileError
-from app.model.kinds import Branch
+from app.model.kinds import Node
 from app.model.parts import decode_clip, encode_clip
 
 if TYPE_CHECKING:
@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 
 CLIP_MIME = "application/x-farend-clip"
 PART_MIME = "application/x-farend-part"
+FARTHEST = 400.0
 ASIDE = 2.0  # steps to the right and down of what was copied
 
 
@@ -80,8 +81,8 @@ def ordered(view: BoardView) -> list[str]:
 def _beside(view: BoardView, clip: Clip) -> tuple[float, float]:
     """Aside of the original, again and again until nothing lies there already."""
     taken = {(n.x, n.y) for n in view.drawing.nodes().values()}
-    spots = [(e.x, e.y) for e in clip.elements.values() if hasattr(e, "x") and not isinstance(e, Branch)]
+    spots = [(e.x, e.y) for e in clip.elements.values() if isinstance(e, Node)]
     aside = ASIDE
-    while spots and any((x + aside, y + aside) in taken for x, y in spots) and aside < 50 * GRID:
+    while spots and any((x + aside, y + aside) in taken for x, y in spots) and aside < FARTHEST:
         aside += ASIDE
     return clip.x + aside, clip.y + aside

@@ -23,6 +23,7 @@ class LengthField(QLineEdit):
 
     def __init__(self, view: BoardView) -> None:
         super().__init__(view.viewport())
+        self._room = view.viewport()
         self.setAccessibleName("Length of the line")
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.setReadOnly(True)
@@ -42,7 +43,7 @@ class LengthField(QLineEdit):
 
     def follow(self, px: QPoint) -> None:
         """Stay beside the hand."""
-        room = self.parentWidget().rect().bottomRight() - self.rect().bottomRight()
+        room = self._room.rect().bottomRight() - self.rect().bottomRight()
         to = px + BESIDE
         self.move(max(0, min(to.x(), room.x())), max(0, min(to.y(), room.y())))
 

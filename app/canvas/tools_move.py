@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from functools import partial
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen
 
-from app.canvas.geometry import attachment_point, node_point, route, scene, snap
+from app.canvas.geometry import attachment_point, distance, node_point, route, scene, snap
 from app.canvas.palette import Palette
 from app.canvas.tools import Tool, Touch, named, node_at, paint_ring
 from app.model import edits
@@ -94,13 +95,13 @@ def guides(drawing: Drawing, moved: frozenset[str]) -> list[tuple[QPointF, QPoin
     """Lines from moved nodes to still ones that stand level with them or on their upright."""
     nodes = drawing.nodes()
     still = [n for i, n in nodes.items() if i not in moved]
-    found = []
+    found: list[tuple[QPointF, QPointF]] = []
     for id in moved & nodes.keys():
         node = nodes[id]
+        at = node_point(node)
         for group in ([n for n in still if n.y == node.y], [n for n in still if n.x == node.x]):
-            if group:
-                near = min(group, key=lambda n, at=node: abs(n.x - at.x) + abs(n.y - at.y))
-                found.append((node_point(node), node_point(near)))
+            points = sorted((node_point(n) for n in group), key=partial(distance, at))
+            found += [(at, point) for point in points[:1]]
     return found
 
 

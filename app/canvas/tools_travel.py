@@ -10,6 +10,7 @@ from app.canvas.geometry import GRID
 
 if TYPE_CHECKING:
     from PySide6.QtGui import QWheelEvent
+    from PySide6.QtWidgets import QGraphicsView
 
     from app.canvas.view import BoardView
 
@@ -21,24 +22,24 @@ A_WHEEL_CLICK = 1.15
 EMPTY = QRectF(-20 * GRID, -12 * GRID, 40 * GRID, 24 * GRID)
 
 
-def zoom(view: BoardView, factor: float, at: QPointF) -> None:
+def zoom(view: QGraphicsView, factor: float, at: QPointF) -> None:
     """Scale the view; the point of the paper under `at`, in viewport pixels, stays there."""
-    factor = min(max(view.scale_now() * factor, SMALLEST), LARGEST) / view.scale_now()
-    back, sure = view.viewportTransform().inverted()
-    held = back.map(at)
+    now = view.transform().m11()
+    factor = min(max(now * factor, SMALLEST), LARGEST) / now
+    held = view.viewportTransform().inverted()[0].map(at)
     view.scale(factor, factor)
     strayed = view.viewportTransform().map(held) - at
     shift(view, strayed)
 
 
-def shift(view: BoardView, by: QPointF) -> None:
+def shift(view: QGraphicsView, by: QPointF) -> None:
     """Move the paper under the window by viewport pixels."""
     level, upright = view.horizontalScrollBar(), view.verticalScrollBar()
     level.setValue(level.value() + round(by.x()))
     upright.setValue(upright.value() + round(by.y()))
 
 
-def wheel(view: BoardView, event: QWheelEvent) -> None:
+def wheel(view: QGraphicsView, event: QWheelEvent) -> None:
     """Ctrl zooms, Shift goes sideways, else the paper scrolls; touch pads by their own pixels."""
     if event.modifiers() & Qt.KeyboardModifier.ControlModifier:
         zoom(view, A_WHEEL_CLICK ** (event.angleDelta().y() / 120), event.position())

@@ -227,6 +227,6 @@ class EventView(QGraphicsView):
         self.part_dropped(self.touch(event.position(), event.modifiers()).at)
         event.acceptProposedAction()
 
-    def drawForeground(self, painter: QPainter, rect: QRectF) -> None:
+    def drawForeground(self, painter: QPainter, rect) -> None:
         view: BoardView = self  # type: ignore[assignment]
         self.tool.paint(painter, view.theme.palette)

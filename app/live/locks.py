@@ -21,7 +21,7 @@ class FileLock:
         self._lock.setStaleLockTime(0)  # a live holder never goes stale, a dead one does at once
         self.sentence: str | None = None
         if not self._lock.tryLock(0) and self._lock.error() == QLockFile.LockError.LockFailedError:
-            _, process, host, _ = self._lock.getLockInfo()
+            process, host, _ = self._lock.getLockInfo()
             where = f"process {process} on {host}" if process else "another process"
             self.sentence = f"{path.name} is already open in another window ({where})."
 
