@@ -38,13 +38,16 @@ def caption_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
 _ATTACHMENT = {"b": "rlb12a", "a": "rla43b", "r": "rab41l", "l": "lab32r"}
 
 
-def tag_spots(item: BranchItem, room: QSizeF) -> Iterator[Spot]:
-    """Tags: under level branches, right of upright ones."""
-    yield from beside(item.points, _half(item), room.width(), room.height(), "b")
+def tag_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
+    """Tags: under level branches, right of upright ones. Volts and gauge: under the foot of a bar with the
+    gauge in line with it, else round the node."""
+    if isinstance(item, BranchItem):
+        yield from beside(item.points, _half(item), room.width(), room.height(), "b")
+    elif isinstance(item, NodeItem):
+        yield from _figure_spots(item, room)
 
 
-def figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
-    """Volts and gauge: under the foot of a bar with the gauge in line with it, else round the node."""
+def _figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
     width, height = room.width(), room.height()
     core = item.core()
     if item.upright:

@@ -8,7 +8,7 @@ from app.canvas.geometry import Hit, HitKind, Outline, handles, longest, nearest
 from app.canvas.handles import Handles
 from app.canvas.ladder import TapLadder
 from app.canvas.node_item import NodeItem
-from app.canvas.paper import Paper
+from app.canvas.paper import Paper, with_neighbours
 from app.canvas.placing import Taken, Wish, around, place
 from app.canvas.tag import Tag
 from app.canvas.theme import Theme
@@ -19,6 +19,7 @@ from app.model.edits import Change
 from app.model.kinds import Branch, Transformer
 
 LADDER_GAP = 6.0
+SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
 
 
 class Board(Paper):
@@ -77,10 +78,11 @@ class Board(Paper):
         drawing = self.session.drawing
         ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
         grown = self.lay(drawing, ids)
-        if self.solving.reference is not None:
-            self.widen()
+        if grown and self.solving.reference is not None:
+            self.widen(ids)
         elif grown or change.rest:
-            self.arrange()
+            small = len(drawing.elements) <= SMALL or change.rest
+            self.arrange(None if small else with_neighbours(drawing, change.ids))
         gone = self.attention.selection - drawing.elements.keys()
         if gone:
             self.attention.select(self.attention.selection - gone)
@@ -95,7 +97,7 @@ class Board(Paper):
         case = min(self.attention.case, len(outcome.cases) - 1)
         grown = self.show_outcome(self.session.drawing, outcome, case, self.solving.reference)
         if self.solving.reference is not None:
-            self.widen()
+            self.widen(grown)
         elif grown:
             self.arrange()
             self._place_ladders()

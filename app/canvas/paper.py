@@ -1,6 +1,9 @@
 """The drawing on paper: an item an element, with its words, from a drawing and an outcome."""
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Container, Iterable, Iterator
+from dataclasses import fields
+from itertools import chain
+from typing import Any
 
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPen
@@ -12,11 +15,12 @@ from app.canvas.branch_item import BranchItem, Flow
 from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import GRID
 from app.canvas.node_item import NodeItem
-from app.canvas.placing import Spot, Taken, Wish, place
+from app.canvas.placing import Taken, Wish, place
+from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Node
-from app.study.outcome import Outcome
+from app.study.outcome import BranchState, NodeState, Outcome, Table
 
 MARGIN = 300.0
 DOTS_FROM = 0.4  # zoom below which the grid is left out
@@ -47,7 +51,7 @@ class Paper(QGraphicsScene):
 
         True where words must find new places."""
         moved = False
-        for id in sorted(_with_neighbours(drawing, frozenset(ids)), key=_rank(drawing)):
+        for id in sorted(with_neighbours(drawing, frozenset(ids)), key=_rank(drawing)):
             element = drawing.elements.get(id)
             if id in self.items_by_id and not _fits(self.items_by_id[id], element):
                 self._take_off(id)
@@ -83,57 +87,66 @@ class Paper(QGraphicsScene):
 
     # the figures --------------------------------------------------------------------------------
 
-    def show_outcome(self, drawing: Drawing, outcome: Outcome, case: int, before: Outcome | None) -> bool:
-        """Write the figures of one case; True where words need more room than they have."""
+    def show_outcome(
+        self, drawing: Drawing, outcome: Outcome, case: int, before: Outcome | None
+    ) -> list[str]:
+        """Write the figures of one case; the ids of those whose words need more room than they have."""
         worst = standing.standings(drawing, outcome, case)
-        grown = [self._show_node(drawing, outcome, case, before, worst, id) for id in outcome.nodes.ids]
-        grown += [self._show_branch(drawing, outcome, case, before, worst, id) for id in outcome.branches.ids]
-        for id in outcome.attachments.ids:
-            item = self.items_by_id.get(id)
-            if item is not None:
-                item.stand(standing.of_row(outcome.attachments.at(id, case).live, id, worst))
-        return any(grown)
+        was: dict[str, Any] = _rows(before.nodes, case) if before is not None else {}
+        readings = _readings(drawing, outcome, case)
+        grown = []
+        for id, state in _rows(outcome.nodes, case).items():
+            stands = standing.of_row(state.live, id, worst)
+            if self._show_node(id, state, was.get(id), readings[id], stands):
+                grown.append(id)
+        was = _rows(before.branches, case) if before is not None else {}
+        for id, state in _rows(outcome.branches, case).items():
+            if self._show_branch(id, state, was.get(id), standing.of_row(state.live, id, worst)):
+                grown.append(id)
+        for id, hung in _rows(outcome.attachments, case).items():
+            if id in self.items_by_id:
+                self.items_by_id[id].stand(standing.of_row(hung.live, id, worst))
+        return grown
 
-    def _show_node(self, drawing, outcome, case, before, worst, id) -> bool:
+    def _show_node(
+        self, id: str, state: NodeState, was: NodeState | None, reading: gauge.Reading, stands: Standing
+    ) -> bool:
         item, figures = self.items_by_id.get(id), self.tags.get(id)
         if item is None or not isinstance(figures, NodeFigures):
             return False
-        state = outcome.nodes.at(id, case)
-        stands = standing.of_row(state.live, id, worst)
         item.stand(stands)
-        figures.read(_reading(drawing, outcome, case, id) if state.live else None)
-        return figures.write(wording.node_figures(state, _row(before, "nodes", id, case)), stands)
+        figures.read(reading if state.live else None)
+        return figures.write(wording.node_figures(state, was), stands)
 
-    def _show_branch(self, drawing, outcome, case, before, worst, id) -> bool:
+    def _show_branch(self, id: str, state: BranchState, was: BranchState | None, stands: Standing) -> bool:
         item, tag = self.items_by_id.get(id), self.tags.get(id)
         if not isinstance(item, BranchItem) or not isinstance(tag, Tag):
             return False
-        state = outcome.branches.at(id, case)
-        stands = standing.of_row(state.live, id, worst)
         item.stand(stands)
         item.show_flow(Flow.of(state.loading_percent, wording.sent_kw(state)[1] if state.live else None))
-        was = _row(before, "branches", id, case)
         return tag.write(wording.branch_figures(state, item.angle, was), stands)
 
     # where words go -----------------------------------------------------------------------------
 
-    def arrange(self) -> None:
-        """Give every block of words its spot."""
-        for block in self._blocks():
-            block.shrink()
+    def arrange(self, only: Container[str] | None = None) -> None:
+        """Give every block of words its spot, or only those of some elements while the others stay."""
         taken = Taken(box for item in self.items_by_id.values() for box in arrange.covered(item))
-        spots = place(self._wishes(), taken)
-        for (id, sort), spot in spots.items():
+        for block in self._blocks():
+            if only is None or block.id in only:
+                block.shrink()
+            elif block.lines:
+                taken.add(block.spot.box)
+        wishes = (w for w in self._wishes() if only is None or w.key[0] in only)
+        for (id, sort), spot in place(wishes, taken).items():
             (self.captions if sort == "caption" else self.tags)[id].settle(spot)
         self._make_room()
 
-    def widen(self) -> None:
-        """Let blocks that have grown grow where they stand: nothing jumps under the hand."""
-        for block in self._blocks():
-            box, room = block.spot.box, block.room
-            if box.size() != room:
-                left = box.left() - (room.width() - box.width()) * block.spot.align
-                block.settle(Spot(QRectF(left, box.top(), room.width(), room.height()), block.spot.align))
+    def widen(self, ids: Iterable[str]) -> None:
+        """Let the words of these grow where they stand: nothing jumps under the hand."""
+        for id in ids:
+            for block in (self.captions.get(id), self.tags.get(id)):
+                if block is not None:
+                    block.widen()
 
     def _blocks(self) -> Iterator[Caption]:
         yield from self.captions.values()
@@ -145,14 +158,12 @@ class Paper(QGraphicsScene):
             for id, item in self.items_by_id.items():
                 if isinstance(item, sort) and self.captions[id].lines:
                     yield Wish((id, "caption"), arrange.caption_spots(item, self.captions[id].room))
-        for id, tag in self.tags.items():
-            item = self.items_by_id[id]
-            if tag.lines and isinstance(item, BranchItem):
-                yield Wish((id, "tag"), arrange.tag_spots(item, tag.room))
-        for id, tag in self.tags.items():
-            item = self.items_by_id[id]
-            if tag.lines and isinstance(item, NodeItem):
-                yield Wish((id, "tag"), arrange.figure_spots(item, tag.room))
+        for sort in (BranchItem, NodeItem):
+            for id, tag in self.tags.items():
+                item = self.items_by_id[id]
+                if isinstance(item, sort) and tag.lines:
+                    rooms = (tag.spread, tag.room)
+                    yield Wish((id, "tag"), chain.from_iterable(arrange.tag_spots(item, r) for r in rooms))
 
     def content(self) -> QRectF:
         """The box of everything drawn."""
@@ -185,7 +196,7 @@ class Paper(QGraphicsScene):
             painter.drawPoints([QPointF(k * step, row * step) for k in range(first, last + 1)])
 
 
-def _with_neighbours(drawing: Drawing, ids: frozenset[str]) -> set[str]:
+def with_neighbours(drawing: Drawing, ids: frozenset[str]) -> set[str]:
     """The elements and all that is drawn from them: branches and attachments of nodes, side by side lines."""
     found = set(ids)
     pairs = set()
@@ -212,20 +223,22 @@ def _fits(item: ElementItem, element: object) -> bool:
     return any(isinstance(item, drawn) and isinstance(element, kind) for drawn, kind in sorts)
 
 
-def _row(outcome: Outcome | None, table: str, id: str, case: int):
-    if outcome is None:
-        return None
-    rows = getattr(outcome, table)
-    return rows.at(id, case) if id in rows and case < len(outcome.cases) else None
+def _rows(table: Table[Any], case: int) -> dict[str, Any]:
+    """Every row of one case by id, read column by column."""
+    names = [f.name for f in fields(table.state)]
+    columns = [table.columns[name] for name in names]
+    case = min(case, *(c.shape[1] - 1 for c in columns if c.ndim > 1))
+    values = [(c if c.ndim == 1 else c[:, case]).tolist() for c in columns]
+    return {id: table.state(*row) for id, row in zip(table.ids, zip(*values, strict=True), strict=True)}
 
 
-def _reading(drawing: Drawing, outcome: Outcome, case: int, id: str) -> gauge.Reading:
-    table = outcome.nodes
-    all_cases = table.column("percent")[table.rows[id]]
-    return gauge.Reading(
-        drawing.limits.low_percent,
-        drawing.limits.high_percent,
-        float(all_cases.min()),
-        float(all_cases.max()),
-        float(all_cases[case]),
+def _readings(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, gauge.Reading]:
+    percent = outcome.nodes.column("percent")
+    spans = zip(
+        percent.min(axis=1).tolist(), percent.max(axis=1).tolist(), percent[:, case].tolist(), strict=True
     )
+    limits = drawing.limits
+    return {
+        id: gauge.Reading(limits.low_percent, limits.high_percent, *span)
+        for id, span in zip(outcome.nodes.ids, spans, strict=True)
+    }

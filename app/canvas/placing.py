@@ -13,6 +13,9 @@ CLEAR = 3.0  # kept free around everything
 AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
 
 
+Edges = tuple[float, float, float, float]  # left, top, right, bottom
+
+
 @dataclass(frozen=True, slots=True)
 class Spot:
     """A place for a block of text and how its lines align there."""
@@ -33,19 +36,26 @@ class Taken:
     """Boxes that are in use, found again by the cells they touch."""
 
     def __init__(self, boxes: Iterable[QRectF] = ()) -> None:
-        self._cells: dict[tuple[int, int], list[QRectF]] = {}
+        self._cells: dict[tuple[int, int], list[Edges]] = {}
         for box in boxes:
             self.add(box)
 
     def add(self, box: QRectF) -> None:
         """Put a box in use."""
-        for cell in _cells(box):
-            self._cells.setdefault(cell, []).append(box)
+        edges = _edges(box, 0.0)
+        for cell in _cells(edges):
+            self._cells.setdefault(cell, []).append(edges)
 
     def overlap(self, box: QRectF) -> float:
-        """How much of a box lies on boxes in use, px²; overlaps count each."""
-        near = {id(b): b for cell in _cells(box) for b in self._cells.get(cell, ())}
-        return sum(_shared_area(box, other) for other in near.values())
+        """How much of a box and its clear rim lies on boxes in use, px²; a box is counted in each cell."""
+        mine = left, top, right, bottom = _edges(box, CLEAR)
+        total = 0.0
+        for cell in _cells(mine):
+            for other_left, other_top, other_right, other_bottom in self._cells.get(cell, ()):
+                if other_left < right and left < other_right and other_top < bottom and top < other_bottom:
+                    width = min(right, other_right) - max(left, other_left)
+                    total += width * (min(bottom, other_bottom) - max(top, other_top))
+        return total
 
 
 def place(wishes: Iterable[Wish], taken: Taken) -> dict[tuple[str, str], Spot]:
@@ -54,7 +64,7 @@ def place(wishes: Iterable[Wish], taken: Taken) -> dict[tuple[str, str], Spot]:
     for wish in wishes:
         best: tuple[float, Spot] | None = None
         for spot in wish.spots:
-            over = taken.overlap(spot.box.adjusted(-CLEAR, -CLEAR, CLEAR, CLEAR))
+            over = taken.overlap(spot.box)
             if best is None or over < best[0]:
                 best = (over, spot)
             if over == 0:
@@ -118,13 +128,13 @@ def _length(a: QPointF, b: QPointF) -> float:
     return math.hypot(b.x() - a.x(), b.y() - a.y())
 
 
-def _cells(box: QRectF) -> Iterator[tuple[int, int]]:
-    for x in range(math.floor(box.left() / CELL), math.floor(box.right() / CELL) + 1):
-        for y in range(math.floor(box.top() / CELL), math.floor(box.bottom() / CELL) + 1):
+def _edges(box: QRectF, rim: float) -> Edges:
+    left, top, width, height = box.getRect()
+    return left - rim, top - rim, left + width + rim, top + height + rim
+
+
+def _cells(edges: Edges) -> Iterator[tuple[int, int]]:
+    left, top, right, bottom = (int(edge // CELL) for edge in edges)
+    for x in range(left, right + 1):
+        for y in range(top, bottom + 1):
             yield x, y
-
-
-def _shared_area(one: QRectF, other: QRectF) -> float:
-    width = min(one.right(), other.right()) - max(one.left(), other.left())
-    height = min(one.bottom(), other.bottom()) - max(one.top(), other.top())
-    return width * height if width > 0 and height > 0 else 0.0

@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QGraphicsItem
 
 from app.canvas import gauge, lettering
 from app.canvas.element_item import Look
-from app.canvas.lettering import LEFT, Line
+from app.canvas.lettering import LEFT, Line, Run, Style
 from app.canvas.placing import Spot
 from app.canvas.standing import Standing, colour, mark
 
@@ -56,6 +56,11 @@ class Caption(QGraphicsItem):
             self._room = room
         return not fits
 
+    @property
+    def spread(self) -> QSizeF:
+        """What it would need with the changes of a drag in it."""
+        return self._room
+
     def shrink(self) -> bool:
         """Give back room that is not needed any more; True where there was some."""
         room = self._needed()
@@ -77,11 +82,23 @@ class Caption(QGraphicsItem):
         return bare
 
     def settle(self, spot: Spot) -> None:
-        """Stand at this spot from now on."""
+        """Stand at this spot from now on, no wider than the words need."""
+        box, room = spot.box, self._room
+        left = box.left() + (box.width() - room.width()) * self._hold(spot)
+        spot = Spot(QRectF(left, box.top(), room.width(), room.height()), spot.align)
         if spot != self.spot:
             self.prepareGeometryChange()
             self.spot = spot
             self.update()
+
+    def widen(self) -> None:
+        """Grow where it stands: nothing jumps under the hand."""
+        if self.spot.box.size() != self._room:
+            self.settle(self.spot)
+
+    def _hold(self, spot: Spot) -> float:
+        """Which edge stays where it is when the width changes: 0 the left, 1 the right, ½ neither."""
+        return spot.align
 
     def boundingRect(self) -> QRectF:
         return self.spot.box.adjusted(-1, -1, 1, 1)
@@ -108,6 +125,16 @@ class Caption(QGraphicsItem):
 
 class Figures(Caption):
     """A caption whose figures go grey when they do not belong to the drawing as it stands."""
+
+    USUAL_CHANGE: Line = (Run("▼ 0.00 kW", Style.CHANGE),)
+
+    @property
+    def spread(self) -> QSizeF:
+        if len(self.lines) < 2 or self.look.printing:
+            return self._room
+        bare = lettering.line_width(self.lines[1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
+        width = bare + self._extra() + 2 * self.PAD.width()
+        return QSizeF(max(self._room.width(), width), self._room.height())
 
     def _paint(self, painter) -> None:
         self._letter(painter, self.spot.box, self.look.palette.soft if self.look.stale else None)
@@ -150,6 +177,8 @@ class Tag(Figures):
 class NodeFigures(Figures):
     """Volts and percent with the gauge at their left."""
 
+    USUAL_CHANGE: Line = (Run("▲ 0.0 V", Style.CHANGE),)
+
     def __init__(self, id: str, look: Look) -> None:
         super().__init__(id, look)
         self.reading: gauge.Reading | None = None
@@ -159,6 +188,9 @@ class NodeFigures(Figures):
         if reading != self.reading:
             self.reading = reading
             self.update()
+
+    def _hold(self, spot: Spot) -> float:
+        return LEFT  # the gauge stays, the words grow away from it
 
     def _extra(self) -> float:
         marked = 16.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
