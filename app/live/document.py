@@ -34,7 +34,7 @@ class Document(QObject):
         self.path: Path | None = None
         self._soon = QTimer(self, singleShot=True, interval=RECOVERY_MS)
         self._soon.timeout.connect(self.keep_copy)
-        session.changed.connect(self._follow)
+        session.history.indexChanged.connect(self._follow)  # by then the history knows if it is clean
 
     @property
     def modified(self) -> bool:
@@ -53,7 +53,8 @@ class Document(QObject):
         """
         path = path.absolute()
         drawing = load(path)
-        lock = self._lock if path == self.path and self._lock else FileLock(path)
+        ours = self._lock if path == self.path else None
+        lock = ours if ours is not None and ours.sentence is None else FileLock(path)
         self._turn_to(path, lock)
         self._session.open(drawing)
         self._seen = _digest(path)
@@ -121,7 +122,7 @@ class Document(QObject):
 
     # inside -------------------------------------------------------------------------------------
 
-    def _follow(self) -> None:
+    def _follow(self, _index: int) -> None:
         if not self.modified:
             self._soon.stop()
             self._recovery.clear()
