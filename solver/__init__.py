@@ -4,7 +4,7 @@ from solver.forest import Forest, Joined, Loop, Trouble, grow
 from solver.network import Network
 from solver.share import Share, largest_share
 from solver.solution import Solution
-from solver.solve import batch, solve
+from solver.solving import batch, solve
 from solver.status import Status
 
 __all__ = [

@@ -49,10 +49,10 @@ class Anderson:
     def keep(self, points: np.ndarray) -> None:
         """Goes on with the marked operating points only."""
         self.weight = self.weight if self.weight.shape[-1] == 1 else self.weight[..., points]
-        self.residual_steps = [s[..., points] for s in self.residual_steps]
-        self.image_steps = [s[..., points] for s in self.image_steps]
+        self.residual_steps = [s.take(points, axis=-1) for s in self.residual_steps]
+        self.image_steps = [s.take(points, axis=-1) for s in self.image_steps]
         if self.before is not None:
-            self.before = (self.before[0][..., points], self.before[1][..., points])
+            self.before = (self.before[0].take(points, axis=-1), self.before[1].take(points, axis=-1))
 
     def _mix(self, residual: Complex) -> Real:
         """(step, batch) least squares by normal equations, in floating point with a little damping."""

@@ -33,8 +33,6 @@ class Forest:
     depth_zone : (depth + 1,) first zone of each depth
     line_way : (line,) +1 fed from `line_from`, -1 from `line_to`, 0 dead
     transformer_way : (transformer,) +1 fed from winding 1, -1 from winding 2, 0 dead
-    by_end : (live,) places in order of `end`
-    ended : (live,) how many places have an `end` at or before this place
     """
 
     order: Index
@@ -50,8 +48,6 @@ class Forest:
     depth_zone: Index
     line_way: Index
     transformer_way: Index
-    by_end: Index
-    ended: Index
 
     @property
     def dead(self) -> Index:
@@ -192,8 +188,6 @@ def _tidy(network: Network, walk: _Walk) -> Forest:
         depth_zone=depth_zone,
         line_way=line_way,
         transformer_way=_transformer_ways(network, roots, cuts, supplied),
-        by_end=_grouped(end),
-        ended=np.cumsum(np.bincount(end, minlength=live + 1))[:live],
     )
 
 

@@ -16,7 +16,7 @@ class Placed:
     z : (live, k, k, batch) complex [ohm] of the line that feeds each place, 0 at the root of a zone
     y : (live, k, k, batch) complex [S] at each place: shunts, half the line charging, magnetising
         branches and constant-impedance loads; None where there is none
-    power : (live, k, batch) complex [VA] conjugate of the constant-power part; None where there is none
+    power : (live, k, batch) complex [VA] conjugate of the constant-power part
     current : (live, k, batch) complex [A] conjugate of the constant-current part; None where there is none
     ratio : (fed zone, 1, batch) complex, feeding side over fed side, of the transformer of each fed zone
     series : (fed zone, 1, batch) complex [ohm] at the fed side
@@ -26,7 +26,7 @@ class Placed:
     root: Complex
     z: Complex
     y: Complex | None
-    power: Complex | None
+    power: Complex
     current: Complex | None
     ratio: Complex
     series: Complex
@@ -35,11 +35,10 @@ class Placed:
     def take(self, points: Index) -> "Placed":
         """The same with some operating points only."""
 
-        def some(a: Complex | None) -> Complex | None:
-            return a if a is None or a.shape[-1] == 1 else np.ascontiguousarray(a[..., points])
-
         names = ("root", "z", "y", "power", "current", "ratio", "series", "level")
-        return replace(self, **{name: some(getattr(self, name)) for name in names})
+        held = {name: getattr(self, name) for name in names}
+        wide = {name: a for name, a in held.items() if a is not None and a.shape[-1] > 1}
+        return replace(self, **{name: a.take(points, axis=-1) for name, a in wide.items()})
 
 
 def put(network: Network, forest: Forest) -> Placed:
@@ -105,20 +104,18 @@ def _levels(forest: Forest, root: Complex, ratio: Complex) -> Real:
     return level
 
 
-def _loads(network: Network, forest: Forest) -> tuple[Complex | None, Complex | None, Complex | None]:
-    where = forest.place[network.load_node]
-    live = where >= 0
-    where, drawn = where[live], np.conj(network.load_power[live])
-    mix, reference = network.load_mix[live], network.load_reference[live]
-    parts: list[Complex | None] = []
-    for kind in range(3):
-        share = mix[:, kind]
-        if not share.any():
-            parts.append(None)
-            continue
-        part = drawn * share[:, None, None]
-        parts.append(gather(where, part if kind == 0 else part / reference**kind, forest.order.size))
-    return parts[0], parts[1], parts[2]
+def _loads(network: Network, forest: Forest) -> tuple[Complex, Complex | None, Complex | None]:
+    where, drawn = forest.place[network.load_node], np.conj(network.load_power)
+    mix, reference = network.load_mix, network.load_reference
+    if (where < 0).any():
+        live = where >= 0
+        where, drawn, mix, reference = where[live], drawn[live], mix[live], reference[live]
+    count = forest.order.size
+    steady, flat, square = (mix[:, kind, None, None] for kind in range(3))
+    power = gather(where, drawn * steady, count)
+    current = gather(where, drawn * flat / reference, count) if flat.any() else None
+    admittance = gather(where, drawn * square / reference**2, count) if square.any() else None
+    return power, current, admittance
 
 
 def gather(where: Index, values: Complex, size: int) -> Complex:

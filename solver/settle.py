@@ -5,11 +5,11 @@ from dataclasses import dataclass
 import numpy as np
 
 from solver.anderson import Anderson
-from solver.forest import Forest
+from solver.forest import Flag, Forest
 from solver.network import Complex, Index, Real
 from solver.placed import Placed
 from solver.status import Status
-from solver.sweep import sweep
+from solver.sweep import Sweep
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
 PLAIN = 12  # sweeps before acceleration
@@ -46,7 +46,7 @@ def settle(placed: Placed, forest: Forest, start: Complex) -> Settled:
     parts = []
     for first in range(0, width, block):
         points = np.arange(first, min(first + block, width))
-        parts.append(_Run(placed.take(points), forest, start[..., points]).settled())
+        parts.append(_Run(placed.take(points), forest, start.take(points, axis=-1)).settled())
     return Settled(
         np.concatenate([p.voltage for p in parts], axis=-1),
         sum((p.status for p in parts), ()),
@@ -59,57 +59,72 @@ class _Run:
 
     def __init__(self, placed: Placed, forest: Forest, start: Complex) -> None:
         width = start.shape[-1]
-        self.placed, self.forest, self.voltage = placed, forest, start
+        self.placed, self.forest = placed, forest
         self.points = np.arange(width)
         self.answer = np.full_like(start, complex(np.nan, np.nan))
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
         self.iterations = np.zeros(width, dtype=np.intp)
         self.anderson: Anderson | None = None
         self.best = np.full(width, np.inf)
+        self._memory(start.copy())
+
+    def _memory(self, voltage: Complex) -> None:
+        """Takes the memory for as many operating points as still move."""
+        self.voltage, self.image, self.step = voltage, np.empty_like(voltage), np.empty_like(voltage)
+        self.sweep = Sweep(self.placed, self.forest, voltage.shape[-1])
 
     def settled(self) -> Settled:
+        """Sweeps until all has settled or the sweeps are used up."""
         with np.errstate(all="ignore"):
             for count in range(1, MOST + 1):
-                image = sweep(self.placed, self.forest, self.voltage)
-                step = image - self.voltage
-                change = self._change(step)
-                self.iterations[self.points] = count
-                done = change < CLOSE
-                lost = ~np.isfinite(change)
+                self.sweep(self.voltage, self.image)
+                change = self._change()
+                done, lost = change < CLOSE, ~np.isfinite(change)
                 if done.any() or lost.any():
-                    self._leave(image, done)
+                    self._leave(done, count)
                     stay = ~(done | lost)
                     if not stay.any():
                         break
-                    image, step, change = image[..., stay], step[..., stay], change[stay]
-                    self._keep(stay)
-                self.voltage = image if count < PLAIN else self._accelerated(image, step, change)
+                    change = change[stay]
+                    self._keep(np.flatnonzero(stay))
+                self.iterations[self.points] = count
+                if count < PLAIN:
+                    self.voltage, self.image = self.image, self.voltage
+                else:
+                    self.voltage = self._accelerated(change)
         self._judge()
         return Settled(self.answer, tuple(self.status), self.iterations)
 
-    def _change(self, step: Complex) -> Real:
-        """(batch,) largest change relative to the level of its zone."""
-        live, k, width = step.shape
-        size = np.abs(step)
-        if self.forest.zone_source.size == 1:
-            return size.max(axis=(0, 1)) / self.placed.level[0]
-        zones = np.maximum.reduceat(size.max(axis=1), self.forest.zone_start[:-1], axis=0)
-        return (zones / self.placed.level).max(axis=0)
+    def _change(self) -> Real:
+        """(batch,) largest change of a real or imaginary part relative to the level of its zone."""
+        np.subtract(self.image, self.voltage, out=self.step)
+        size = np.abs(self.step.view(np.float64), out=self.sweep.drop.view(np.float64))
+        level, zone_start = self.placed.level, self.forest.zone_start
+        width = self.points.size
+        if zone_start.size == 2:
+            top = size.reshape(-1, 2 * width).max(axis=0) if width > 1 else size.max(keepdims=True)
+            return np.asarray(top.reshape(width, -1).max(axis=1) / level[0])
+        by_zone = np.maximum.reduceat(size.max(axis=1), zone_start[:-1], axis=0)
+        return np.asarray((by_zone.reshape(-1, width, 2).max(axis=2) / level).max(axis=0))
 
-    def _leave(self, image: Complex, done: np.ndarray) -> None:
+    def _leave(self, done: Flag, count: int) -> None:
         rows = self.points[done]
-        self.answer[..., rows] = image[..., done]
+        self.answer[..., rows] = self.image[..., done]
         self.status[rows] = Status.SOLVED
+        self.iterations[rows] = count
 
-    def _keep(self, stay: np.ndarray) -> None:
-        rows = np.flatnonzero(stay)
+    def _keep(self, rows: Index) -> None:
         self.placed, self.points, self.best = self.placed.take(rows), self.points[rows], self.best[rows]
+        image, step = self.image.take(rows, axis=-1), self.step.take(rows, axis=-1)
+        self._memory(self.voltage.take(rows, axis=-1))
+        self.image, self.step = image, step
         if self.anderson is not None:
             self.anderson.keep(rows)
 
-    def _accelerated(self, image: Complex, step: Complex, change: Real) -> Complex:
+    def _accelerated(self, change: Real) -> Complex:
         if self.anderson is None:
             self.anderson = Anderson(1 / self.placed.level[self.forest.zone][:, None, :])
+        image, step = self.image.copy(), self.step.copy()
         guess = self.anderson.next(image, step)
         wild = (change > 4 * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
         wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < 0.02
@@ -121,6 +136,6 @@ class _Run:
 
     def _judge(self) -> None:
         """What has not settled by now has no operating point, if its loads hold their power or current."""
-        if self.placed.power is not None or self.placed.current is not None:
+        if self.placed.power.any() or self.placed.current is not None:
             lost = self.status == Status.NOT_SETTLED
             self.status[lost] = Status.NO_OPERATING_POINT

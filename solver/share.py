@@ -8,7 +8,7 @@ from solver.forest import Forest, grow
 from solver.network import Index, Network, Real
 from solver.placed import put
 from solver.solution import Solution
-from solver.solve import solve
+from solver.solving import solve
 from solver.status import Status
 
 TRIES = 16

@@ -1,126 +1,179 @@
 """THE kernel: one backward and one forward sweep over every tree, for many operating points at once."""
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from solver.forest import Forest
-from solver.network import Complex
+from solver.network import Complex, Index
 from solver.placed import Placed
 
+WIDE = 16  # values a place from which prefix sums go row by row
 
-def times(matrix: Complex, vector: Complex) -> Complex:
+
+@dataclass(frozen=True, slots=True)
+class Stage:
+    """The zones of one depth: where they stand and where the work of a sweep is kept.
+
+    zones : numbers of the zones, counted among all, or among those that transformers feed
+    """
+
+    zones: slice
+    fed: slice
+    places: slice
+    roots: Index  # (zone,) first place of each zone
+    hung: Index  # (zone,) place each zone hangs on
+    end: Index  # (place,) one past what is fed through it, counted from the first place of the depth
+    end_flat: Index  # (place · k · batch,) the same for every single value
+    zone: Index | None  # (place,) zone in this depth, None where there is one zone only
+
+
+class Sweep:
+    """Sweeps over one forest at a set of operating points; all memory is taken once.
+
+    Backward, the currents of the places are summed up and J[i] = c[end[i]] - c[i] enters place i.
+    Forward, each drop is put at its place and taken off again at the end of what the place feeds, so that
+    the prefix sum is the drop along the way from the root. Only the depth of transformers is a loop.
+
+    placed : Placed
+    forest : Forest
+    width : number of operating points
+    Source : Shirmohammadi, Hong, Semlyen, Luo, A compensation-based power flow method for weakly meshed
+        distribution and transmission networks, IEEE Trans. Power Systems 3 (1988) 753-762
+    """
+
+    def __init__(self, placed: Placed, forest: Forest, width: int) -> None:
+        live, k = forest.order.size, placed.z.shape[1]
+        shape = (live, k, width)
+        self.placed, self.stages = (
+            placed,
+            [_stage(forest, d, k * width) for d in range(forest.depth_zone.size - 1)],
+        )
+        self.current = np.empty(shape, dtype=np.complex128)
+        self.inflow = np.empty(shape, dtype=np.complex128)
+        self.drop = np.empty(shape, dtype=np.complex128)
+        self.sums = np.empty((live + 1, k, width), dtype=np.complex128)
+        self.inverse = np.zeros(shape, dtype=np.complex128)
+        self.squared, self.spare = np.empty(shape), np.empty(shape)
+
+    def __call__(self, voltage: Complex, out: Complex) -> Complex:
+        """One whole sweep: the currents at these voltages, and the voltages those currents give.
+
+        voltage : (live, k, batch) complex [V]
+        out : (live, k, batch) complex [V], another array, which is filled
+        Returns : out
+        """
+        self.currents(voltage)
+        self.backward()
+        return self.forward(out)
+
+    def currents(self, voltage: Complex) -> Complex:
+        """Current that leaves every place: loads and admittances at the voltage they see.
+
+        I = V · (conj(S) / |V|² + conj(S0) / (Vref · |V|) + Y), for constant power, current, impedance
+
+        voltage : (live, k, batch) complex [V]
+        Returns : (live, k, batch) complex [A]
+        """
+        placed, out = self.placed, self.current
+        np.multiply(voltage.real, voltage.real, out=self.squared)
+        np.multiply(voltage.imag, voltage.imag, out=self.spare)
+        self.squared += self.spare
+        np.reciprocal(self.squared, out=self.inverse.real)
+        np.multiply(placed.power, self.inverse, out=out)
+        if placed.current is not None:
+            np.sqrt(self.inverse.real, out=self.inverse.real)
+            out += np.multiply(placed.current, self.inverse, out=self.inverse)
+            self.inverse.imag = 0
+        if placed.y is not None and placed.y.shape[1] == 1:
+            out += placed.y[:, 0]
+        out *= voltage
+        if placed.y is not None and placed.y.shape[1] > 1:
+            out += times(placed.y, voltage)
+        return out
+
+    def backward(self) -> Complex:
+        """Current into every place from its feeder; primary currents are added where transformers hang.
+
+        Returns : (live, k, batch) complex [A]
+        """
+        for stage in reversed(self.stages):
+            current, inflow = self.current[stage.places], self.inflow[stage.places]
+            sums = self.sums[: current.shape[0] + 1]
+            sums[0] = 0
+            accumulate(current, sums[1:])
+            np.take(sums, stage.end, axis=0, out=inflow, mode="clip")
+            inflow -= sums[:-1]
+            if stage.hung.size:
+                secondary = self.inflow[stage.roots]
+                np.add.at(self.current, stage.hung, secondary / np.conj(self.placed.ratio[stage.fed]))
+        return self.inflow
+
+    def forward(self, out: Complex) -> Complex:
+        """Voltage at every place from the currents into them.
+
+        out : (live, k, batch) complex [V], which is filled
+        Returns : out
+        """
+        drops = times(self.placed.z, self.inflow, self.drop)
+        for stage in self.stages:
+            root = self._roots(stage, out)
+            drop, here = drops[stage.places], out[stage.places]
+            sums = self.sums[: drop.shape[0] + 1]
+            sums[:-1] = drop
+            np.subtract.at(sums.reshape(-1), stage.end_flat, drop.reshape(-1))
+            accumulate(sums[:-1], sums[:-1])
+            np.subtract(root if stage.zone is None else root[stage.zone], sums[:-1], out=here)
+        return out
+
+    def _roots(self, stage: Stage, voltage: Complex) -> Complex:
+        """(zone, k, batch) voltage at the roots of a depth: the supply's, or Vs = Vp / a - Z Is."""
+        if not stage.hung.size:
+            return self.placed.root
+        through = self.placed.series[stage.fed] * self.inflow[stage.roots]
+        return voltage[stage.hung] / self.placed.ratio[stage.fed] - through
+
+
+def _stage(forest: Forest, depth: int, values: int) -> Stage:
+    first, last = int(forest.depth_zone[depth]), int(forest.depth_zone[depth + 1])
+    supplied = int(forest.depth_zone[1])
+    start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
+    end = forest.end[start:stop] - start if start else forest.end[:stop]
+    flat = end if values == 1 else (end[:, None] * values + np.arange(values)).reshape(-1)
+    return Stage(
+        zones=slice(first, last),
+        fed=slice(first - supplied, last - supplied),
+        places=slice(start, stop),
+        roots=forest.zone_start[first:last],
+        hung=forest.zone_fed[first:last] if depth else forest.zone_fed[:0],
+        end=end,
+        end_flat=flat,
+        zone=None if last - first == 1 else forest.zone[start:stop] - first,
+    )
+
+
+def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Complex:
     """Multiplies a small matrix into a vector at every place; k = 1 costs one product.
 
     matrix : (row, k, k, batch) complex
     vector : (row, k, batch) complex
+    out : (row, k, batch) complex, filled where it is given
     Returns : (row, k, batch) complex
     """
     if matrix.shape[1] == 1:
-        return matrix[:, 0] * vector
-    return np.einsum("rijb,rjb->rib", matrix, vector)
-
-
-def currents(placed: Placed, voltage: Complex) -> Complex:
-    """Current that leaves every place: loads and admittances at the voltage they see.
-
-    I = conj(S / V) for constant power, conj(S0) / Vref · V / |V| for constant current, Y V for the rest.
-
-    placed : Placed
-    voltage : (live, k, batch) complex [V]
-    Returns : (live, k, batch) complex [A]
-    """
-    total = None if placed.y is None else times(placed.y, voltage)
-    if placed.power is None and placed.current is None:
-        return np.zeros_like(voltage) if total is None else total
-    squared = voltage.real**2
-    squared += voltage.imag**2
-    steep = None if placed.power is None else placed.power * (1 / squared)
-    if placed.current is not None:
-        flat = placed.current * (1 / np.sqrt(squared))
-        steep = flat if steep is None else steep + flat
-    current = steep * voltage
-    if total is not None:
-        current += total
-    return current
-
-
-def backward(placed: Placed, forest: Forest, current: Complex) -> Complex:
-    """Current into every place from its feeder, by prefix sums: J[i] = c[end[i]] - c[i].
-
-    placed : Placed
-    forest : Forest
-    current : (live, k, batch) complex [A] drawn at each place; primary currents of transformers are added
-    Returns : (live, k, batch) complex [A]
-    """
-    inflow = np.empty_like(current)
-    supplied = int(forest.depth_zone[1])
-    for depth in range(forest.depth_zone.size - 2, -1, -1):
-        first, last = int(forest.depth_zone[depth]), int(forest.depth_zone[depth + 1])
-        start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
-        sums = np.empty((stop - start + 1, *current.shape[1:]), dtype=np.complex128)
-        sums[0] = 0
-        accumulate(current[start:stop], sums[1:])
-        np.subtract(sums.take(forest.end[start:stop] - start, axis=0), sums[:-1], out=inflow[start:stop])
-        if depth:
-            ratio = placed.ratio[first - supplied : last - supplied]
-            secondary = inflow[forest.zone_start[first:last]]
-            np.add.at(current, forest.zone_fed[first:last], secondary / np.conj(ratio))
-    return inflow
-
-
-def forward(placed: Placed, forest: Forest, inflow: Complex) -> Complex:
-    """Voltage at every place: each drop is put at its place and taken off again at the end of what it feeds.
-
-    placed : Placed
-    forest : Forest
-    inflow : (live, k, batch) complex [A] into every place
-    Returns : (live, k, batch) complex [V]
-    """
-    drop = times(placed.z, inflow)
-    voltage = np.empty_like(inflow)
-    supplied = int(forest.depth_zone[1])
-    for depth in range(forest.depth_zone.size - 1):
-        first, last = int(forest.depth_zone[depth]), int(forest.depth_zone[depth + 1])
-        start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
-        if depth:
-            rows = slice(first - supplied, last - supplied)
-            feeding = voltage[forest.zone_fed[first:last]]
-            root = feeding / placed.ratio[rows] - placed.series[rows] * inflow[forest.zone_start[first:last]]
-        else:
-            root = placed.root
-        here = voltage[start:stop]
-        part = drop[start:stop]
-        sums = np.empty((stop - start + 1, *drop.shape[1:]), dtype=np.complex128)
-        sums[0] = 0
-        accumulate(part.take(forest.by_end[start:stop] - start, axis=0), sums[1:])
-        np.take(sums, forest.ended[start:stop] - start, axis=0, out=here, mode="clip")
-        accumulate(part, part)
-        here -= part
-        here += root if last - first == 1 else root[forest.zone[start:stop] - first]
-    return voltage
+        return np.multiply(matrix[:, 0], vector, out=out)
+    return np.einsum("rijb,rjb->rib", matrix, vector, out=out)
 
 
 def accumulate(values: Complex, out: Complex) -> None:
     """Prefix sum over the places; wide batches go row by row, which stays in cache.
 
-    values : (place, ...) complex
-    out : (place, ...) complex, may be the same array
+    values : (place, k, batch) complex
+    out : (place, k, batch) complex, may be the same array
     """
-    if values[0].size < 16:
+    if values.shape[1] * values.shape[2] < WIDE:
         np.add.accumulate(values, axis=0, out=out)
         return
     out[0] = values[0]
     for row in range(1, values.shape[0]):
         np.add(out[row - 1], values[row], out=out[row])
-
-
-def sweep(placed: Placed, forest: Forest, voltage: Complex) -> Complex:
-    """One whole sweep: the currents at these voltages, and the voltages those currents give.
-
-    placed : Placed
-    forest : Forest
-    voltage : (live, k, batch) complex [V]
-    Returns : (live, k, batch) complex [V]
-    Source : Shirmohammadi, Hong, Semlyen, Luo, A compensation-based power flow method for weakly meshed
-        distribution and transmission networks, IEEE Trans. Power Systems 3 (1988) 753-762
-    """
-    return forward(placed, forest, backward(placed, forest, currents(placed, voltage)))

@@ -1,0 +1,56 @@
+"""From a network to its solution: trees, sweeps, then every branch and load from the settled voltages."""
+
+import numpy as np
+
+from solver.answer import answer, unsolved
+from solver.forest import Forest, Trouble, grow
+from solver.network import Complex, Network
+from solver.placed import Placed, put
+from solver.settle import settle
+from solver.solution import Solution
+
+
+def solve(
+    network: Network, *, forest: Forest | Trouble | None = None, warm: Complex | None = None
+) -> Solution:
+    """Solves every operating point of a network of radial trees.
+
+    network : Network
+    forest : Forest or Trouble of a network with the same connections, where it is known already
+    warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
+    Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
+        NOT_SETTLED where the sweeps still moved, INVALID where loops are closed or supplies joined
+    Source : see solver.sweep
+    """
+    forest = grow(network) if forest is None else forest
+    width = batch(network)
+    if isinstance(forest, Trouble):
+        return unsolved(network, forest, width)
+    placed = put(network, forest)
+    start = no_load(placed, forest, network.conductors, width)
+    if warm is not None:
+        guess = np.broadcast_to(warm[forest.order], start.shape)
+        start = np.where(np.isfinite(guess), guess, start)
+    settled = settle(placed, forest, start)
+    return answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
+
+
+def batch(network: Network) -> int:
+    """Number of operating points of a network: the longest last axis.
+
+    network : Network
+    Returns : B
+    """
+    names = ("source_voltage", "line_z", "line_y", "transformer_ratio", "transformer_z", "transformer_y")
+    return max(getattr(network, n).shape[-1] for n in (*names, "load_power", "load_reference", "shunt_y"))
+
+
+def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:
+    """(live, k, batch) voltage of every zone with nothing connected."""
+    supplied = placed.root.shape[0]
+    zone = np.empty((forest.zone_source.size, k, width), dtype=np.complex128)
+    zone[:supplied] = placed.root
+    for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
+        above = zone[forest.zone[forest.zone_fed[start:stop]]]
+        zone[start:stop] = above / placed.ratio[start - supplied : stop - supplied]
+    return zone[forest.zone]
