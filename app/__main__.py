@@ -3,6 +3,7 @@
 import argparse
 import os
 import sys
+from pathlib import Path
 
 from app.commands import BAD_INPUT, COMMANDS, EXIT_CODES, Parser, command, complain, program_version
 from app.screen import why_no_screen
@@ -56,7 +57,7 @@ def _open(path: str | None) -> int:
         return BAD_INPUT
     from app.window import open_window  # Qt is loaded only for the window
 
-    return int(open_window(path))
+    return int(open_window(None if path is None else Path(path)))
 
 
 if __name__ == "__main__":

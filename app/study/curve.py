@@ -1,6 +1,7 @@
 """What every notch of a transformer would do: all notches in all cases are one batch of the solver."""
 
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -8,13 +9,13 @@ from numpy.typing import NDArray
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
-from app.study.layout import NONE, Layout, lay_out
+from app.study.layout import NONE, Layout, arrays_of, lay_out
 from app.study.outcome import Verdict
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
-from app.study.values import transformer_values
+from app.study.values import notch_values
 from app.study.zones import Zones, zones_of
-from solver import Network, Solution, Status, solve
+from solver import Network, Solution, Status, grow, solve
 
 Real = NDArray[np.float64]
 BATCHED = ("source_voltage", "line_z", "line_y", "load_power", "load_reference", "shunt_y")
@@ -63,19 +64,21 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
         return _curve(unit, notches, np.full((len(notches), cases), np.nan), None, None)
     rows = rows_of(drawing, layout, zones)
     branch = layout.branch_ids.index(transformer_id)
-    solution = solve(_spread(rows, branch, unit, notches, cases))
+    layout.forest = layout.forest or grow(rows.network)
+    solution = solve(_spread(rows, branch, unit, notches, cases), forest=layout.forest)
     below = _fed_through(layout, branch)
     loss = _loss_kw(rows, solution).reshape(len(notches), cases)
-    percent = _percent(layout, zones, rows, solution)[below].reshape(-1, len(notches), cases)
-    drop = _drop(layout, zones, rows, solution, below).reshape(-1, len(notches), cases)
+    whole = _percent(layout, zones, rows, solution)
+    drop = (whole[arrays_of(layout).root] - whole)[below].reshape(-1, len(notches), cases)
+    percent = whole[below].reshape(-1, len(notches), cases)
     return _curve(unit, notches, loss, percent, _holds(drawing, percent, drop))
 
 
 def _spread(rows: Rows, branch: int, unit: Transformer, notches: list[int], cases: int) -> Network:
     """The network once for every notch: column = notch · cases + case."""
     network, count = rows.network, len(notches)
-    wide = {name: _tiled(getattr(network, name), count) for name in BATCHED}
-    ratio, z, y = transformer_values([unit] * count, notches)
+    wide: dict[str, Any] = {name: _tiled(getattr(network, name), count) for name in BATCHED}
+    ratio, z, y = notch_values(unit, notches)
     row = int(np.flatnonzero(rows.units == branch)[0])
     for name, values in zip(BATCHED_UNITS, (ratio, z, y), strict=True):
         column = np.repeat(getattr(network, name), count * cases, axis=1)
@@ -109,14 +112,8 @@ def _loss_kw(rows: Rows, solution: Solution) -> Real:
 
 
 def _percent(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Real:
-    nominal = zones.nominal_v[np.array(layout.zone, dtype=np.intp)]
+    nominal = zones.nominal_v[arrays_of(layout).zone]
     return 100 * np.abs(solution.voltage[:, 0]) * rows.wide[:, None] / nominal[:, None]
-
-
-def _drop(layout: Layout, zones: Zones, rows: Rows, solution: Solution, below: NDArray[np.intp]) -> Real:
-    percent = _percent(layout, zones, rows, solution)
-    roots = np.array(layout.roots, dtype=np.intp)[np.array(layout.tree, dtype=np.intp)]
-    return (percent[roots] - percent)[below]
 
 
 def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
@@ -124,7 +121,7 @@ def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
     good = (percent >= limits.low_percent) & (percent <= limits.high_percent)
     if limits.drop_percent is not None:
         good &= drop <= limits.drop_percent
-    return good.all(axis=(0, 2))
+    return np.asarray(good.all(axis=(0, 2)))
 
 
 def _curve(

@@ -1,13 +1,15 @@
 """Solution to tables by id: volts between lines, whole powers in kW and kvar, currents in a wire."""
 
-from dataclasses import dataclass
+import math
+from dataclasses import dataclass, fields
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import Generator, Line, Load, Supply, Switch, Transformer
-from app.study.layout import NONE, Layout
+from app.model.kinds import Attachment, Branch, Generator, Line, Load, Supply, Switch, Transformer
+from app.study.layout import NONE, Layout, arrays_of
+from app.study.memory import Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
 from app.study.rows import Rows
 from app.study.zones import Zones
@@ -49,53 +51,38 @@ def tables_of(
 
 
 def _dead(layout: Layout, zones: Zones, cases: int) -> Tables:
-    def table(state: Any, ids: list[str], known: dict[str, NDArray[Any]]) -> Table[Any]:
-        nothing = np.full((len(ids), cases), np.nan)
-        no = np.zeros(len(ids), dtype=bool)
-        columns = {n: known.get(n, no if n in ("live", "forward") else nothing) for n in _names(state)}
-        return _table(state, ids, columns)
-
     known = {"nominal_v": _nominal(layout, zones), "route_m": _routes(layout)}
     none = np.full(cases, np.nan)
     return Tables(
-        table(NodeState, layout.node_ids, known),
-        table(BranchState, layout.branch_ids, {"forward": _forward(layout)}),
-        table(AttachmentState, layout.attachment_ids, {}),
-        Balance(*[none] * len(_names(Balance))),
+        _dead_table(NodeState, layout.node_row, cases, known),
+        _dead_table(BranchState, layout.branch_row, cases, {"forward": arrays_of(layout).forward}),
+        _dead_table(AttachmentState, layout.attachment_row, cases, {}),
+        Balance(*[none] * len(fields(Balance))),
     )
 
 
-def _names(state: Any) -> list[str]:
-    return list(state.__dataclass_fields__)
-
-
-def _table(state: Any, ids: list[str], columns: dict[str, NDArray[Any]]) -> Table[Any]:
-    return Table(state, tuple(ids), columns, {id: row for row, id in enumerate(ids)})
+def _dead_table(state: Any, row: dict[str, int], cases: int, known: dict[str, NDArray[Any]]) -> Table[Any]:
+    nothing, no = np.full((len(row), cases), np.nan), np.zeros(len(row), dtype=bool)
+    columns = {f.name: known.get(f.name, no if f.name == "live" else nothing) for f in fields(state)}
+    return Table(state, tuple(row), columns, row)
 
 
 def _nominal(layout: Layout, zones: Zones) -> Real:
-    return zones.nominal_v[np.array(layout.zone, dtype=np.intp)]
+    return zones.nominal_v[arrays_of(layout).zone]
+
+
+_lengths: Memory[Branch, float] = Memory(lambda b: b.length_m if isinstance(b, Line) else 0.0)
 
 
 def _routes(layout: Layout) -> Real:
     """Route length from the supply; nan in dead parts."""
     route = [0.0] * len(layout.nodes)
+    lengths, fed_by, fed_from = _lengths.of(layout.branches), layout.fed_by, layout.fed_from
     for node in layout.order:
-        branch = layout.fed_by[node]
-        if branch == NONE:
-            route[node] = 0.0 if layout.live(node) else np.nan
-            continue
-        run = layout.branches[branch]
-        along = run.length_m if isinstance(run, Line) else 0.0
-        route[node] = route[layout.far(branch, node)] + along
-    return np.array(route, dtype=np.float64)
-
-
-def _forward(layout: Layout) -> NDArray[np.bool_]:
-    fed_by = np.array([*layout.fed_by, NONE], dtype=np.intp)
-    start = np.array(layout.start, dtype=np.intp)
-    backward: NDArray[np.bool_] = fed_by[start] == np.arange(len(start))
-    return ~backward
+        branch = fed_by[node]
+        if branch != NONE:
+            route[node] = route[fed_from[node]] + lengths[branch]
+    return np.where(arrays_of(layout).live, route, np.nan)
 
 
 def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Table[NodeState]:
@@ -103,22 +90,22 @@ def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tabl
     nominal = _nominal(layout, zones)
     level = np.abs(voltage) * rows.wide[:, None]
     percent = 100 * level / nominal[:, None]
-    roots = np.array(layout.roots, dtype=np.intp)[np.array(layout.tree, dtype=np.intp)]
     columns = {
-        "live": np.array([layout.supply_of[t] != NONE for t in layout.tree], dtype=bool),
+        "live": arrays_of(layout).live,
         "nominal_v": nominal,
         "voltage_v": level,
         "percent": percent,
         "angle_deg": np.degrees(np.angle(voltage)),
-        "drop_percent": percent[roots] - percent,
+        "drop_percent": percent[arrays_of(layout).root] - percent,
         "route_m": _routes(layout),
     }
-    return _table(NodeState, layout.node_ids, columns)
+    return Table(NodeState, tuple(layout.node_ids), columns, layout.node_row)
 
 
 def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> Table[BranchState]:
     count, cases = len(layout.branches), percent.shape[1]
-    start, end = np.array(layout.start, dtype=np.intp), np.array(layout.end, dtype=np.intp)
+    graph = arrays_of(layout)
+    start, end, forward = graph.start, graph.end, graph.forward
     voltage, phases = solution.voltage[:, 0], rows.phases[start][:, None] / 1e3
 
     def scatter(of_lines: Any, of_units: Any) -> Any:
@@ -132,13 +119,12 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
     shunt = scatter(solution.line_charging, solution.transformer_magnetising_loss)
     start_s, end_s = voltage[start] * into.conj() * phases, voltage[end] * out.conj() * phases
     series, shunt = series * phases, shunt * phases
-    forward, start_a, end_a = _forward(layout), np.abs(into), np.abs(out)
+    start_a, end_a = np.abs(into), np.abs(out)
     fed_a = np.where(forward[:, None], start_a, end_a)
     is_unit = np.zeros((count, 1), dtype=bool)
     is_unit[rows.units] = True
     ohms = np.full(count, complex(np.nan, np.nan))
     ohms[rows.lines], ohms[rows.units] = rows.network.line_z[:, 0, 0, 0], rows.network.transformer_z[:, 0]
-    ratings = _ratings(layout, rows)
     columns = {
         "live": ~np.isnan(start_a).all(axis=1) if cases else np.zeros(count, dtype=bool),
         "forward": forward,
@@ -153,60 +139,69 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "copper_kw": series.real,
         "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
         "loss_kvar": series.imag + shunt.imag,
-        "loading_percent": 100 * np.maximum(start_a / ratings[0][:, None], end_a / ratings[1][:, None]),
+        "loading_percent": _loading(layout, rows, start_a, end_a),
         "drop_percent": np.where(forward[:, None], 1.0, -1.0) * (percent[start] - percent[end]),
         "resistance_ohm": ohms.real,
         "reactance_ohm": ohms.imag,
     }
-    return _table(BranchState, layout.branch_ids, columns)
+    return Table(BranchState, tuple(layout.branch_ids), columns, layout.branch_row)
 
 
-def _ratings(layout: Layout, rows: Rows) -> tuple[Real, Real]:
-    """Rated current at both ends, of all parallel runs or units; nan where no rating is given.
+def _rating(branch: Branch) -> tuple[float, float, bool]:
+    """Rated current at both ends, times √3 where it is a three-phase transformer, and whether it is one."""
+    if isinstance(branch, Transformer):
+        rated = branch.rating_kva * 1e3 * branch.parallel
+        return rated / branch.v1_v, rated / branch.v2_v, True
+    rated = branch.rating_a if isinstance(branch, Line | Switch) and branch.rating_a is not None else math.nan
+    rated *= branch.parallel if isinstance(branch, Line) else 1
+    return rated, rated, False
 
-    A transformer's is S / (√3 · U) at each winding's rated voltage, S / U where two-wire.
+
+_rated: Memory[Branch, tuple[float, float, bool]] = Memory(_rating)
+
+
+def _loading(layout: Layout, rows: Rows, start_a: Real, end_a: Real) -> Real:
+    """Current over rated current, all parallel runs or units together; nan where no rating is given.
+
+    A transformer's rated current is S / (√3 · U) at the nameplate voltage of each winding, S / U where
+    two-wire; the larger of both counts.
     """
-    first, second = np.full(len(layout.branches), np.nan), np.full(len(layout.branches), np.nan)
-    for row, branch in enumerate(layout.branches):
-        if isinstance(branch, Transformer):
-            rated = branch.rating_kva * 1e3 * branch.parallel / rows.wide[layout.start[row]]
-            first[row], second[row] = rated / branch.v1_v, rated / branch.v2_v
-        elif isinstance(branch, Line) and branch.rating_a is not None:
-            first[row] = second[row] = branch.rating_a * branch.parallel
-        elif isinstance(branch, Switch) and branch.rating_a is not None:
-            first[row] = second[row] = branch.rating_a
-    return first, second
+    table = np.array(_rated.of(layout.branches), dtype=np.float64).reshape(-1, 3)
+    wide = np.where(table[:, 2] > 0, rows.wide[arrays_of(layout).start], 1.0)
+    first, second = table[:, 0] / wide, table[:, 1] / wide
+    return 100 * np.maximum(start_a / first[:, None], end_a / second[:, None])
 
 
 def _attachments(layout: Layout, rows: Rows, solution: Solution, level: Real) -> Table[AttachmentState]:
-    at = np.array(layout.at, dtype=np.intp)
-    voltage = level[at] if at.size else np.zeros((0, level.shape[1]))
+    at = arrays_of(layout).at
+    voltage = level[at]
     power = np.where(np.isnan(voltage), np.nan, 0.0) + 0j
-    phases = rows.phases[at][:, None] / 1e3 if at.size else np.zeros((0, 1))
-    makes = np.array([isinstance(layout.attachments[i], Generator) for i in rows.loads], dtype=bool)
+    phases = rows.phases[at][:, None] / 1e3
+    makes = np.array(_roles.of(layout.attachments), dtype="U1")[rows.loads] == "g"
     power[rows.loads] = solution.load_power[:, 0] * np.where(makes, -1.0, 1.0)[:, None]
     power[rows.shunts] = -solution.shunt_power[:, 0]
     power[rows.sources] = solution.source_power[:, 0]
     power = power * phases
-    wide = rows.wide[at][:, None] if at.size else np.ones((0, 1))
+    wide = rows.wide[at][:, None]
     with np.errstate(divide="ignore", invalid="ignore"):
         current = np.where(voltage > 0, np.abs(power) * 1e3 / (voltage * wide), np.abs(power))
-    columns = {
-        "live": np.array([layout.live(node) for node in layout.at], dtype=bool),
+    columns: dict[str, NDArray[Any]] = {
+        "live": arrays_of(layout).live[at],
         "kw": power.real,
         "kvar": power.imag,
         "current_a": current,
         "voltage_v": voltage,
     }
-    return _table(AttachmentState, layout.attachment_ids, columns)
+    return Table(AttachmentState, tuple(layout.attachment_ids), columns, layout.attachment_row)
 
 
 def _balance(
     layout: Layout, branches: Table[BranchState], attachments: Table[AttachmentState], solution: Solution
 ) -> Balance:
-    kind = np.array([_role(a) for a in layout.attachments], dtype="U1")
+    kind = np.array(_roles.of(layout.attachments), dtype="U1")
     kw, kvar = attachments.column("kw"), attachments.column("kvar")
-    is_unit = np.array([isinstance(b, Transformer) for b in layout.branches], dtype=bool)
+    is_unit = np.zeros(len(layout.branches), dtype=bool)
+    is_unit[layout.units] = True
     copper, iron = branches.column("copper_kw"), branches.column("iron_kw")
 
     def total(column: Real, of: NDArray[np.bool_]) -> Real:
@@ -227,7 +222,10 @@ def _balance(
     )
 
 
-def _role(attachment: Any) -> str:
+def _role(attachment: Attachment) -> str:
     if isinstance(attachment, Generator):
         return "g"
     return "l" if isinstance(attachment, Load) else "s" if isinstance(attachment, Supply) else "c"
+
+
+_roles: Memory[Attachment, str] = Memory(_role)

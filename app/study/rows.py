@@ -1,14 +1,16 @@
 """Drawing to solver rows: per-phase SI arrays, one column a loading case."""
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.kinds import Capacitor, Generator, Line, Load, Switch, Transformer
-from app.study.layout import Layout
+from app.model.kinds import Capacitor, Generator, Line, Load, Switch
+from app.study.layout import Layout, arrays_of
 from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
 from app.study.zones import Zones
 from solver.network import Network
@@ -57,21 +59,19 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     Returns : Rows with the Network [V, ohm, S, VA]
     Source : common practice, no source
     """
-    lines, units = _branch_rows(layout)
-    tree = np.array(layout.tree, dtype=np.intp)
-    two_wire = zones.two_wire[tree] if tree.size else np.zeros(0, dtype=bool)
+    graph = arrays_of(layout)
+    start, end, at = graph.start, graph.end, graph.at
+    two_wire, nominal = zones.two_wire[graph.tree], zones.nominal_v[graph.zone]
     phases, wide = np.where(two_wire, 1.0, 3.0), np.where(two_wire, 1.0, ROOT3)
-    start, end = np.array(layout.start, dtype=np.intp), np.array(layout.end, dtype=np.intp)
-    at = np.array(layout.at, dtype=np.intp)
-    nominal = zones.nominal_v[np.array(layout.zone, dtype=np.intp)] if tree.size else np.zeros(0)
-    sources, loads, shunts = _attachment_rows(layout)
+    kinds, sources = _sort(layout), np.array(layout.supplies, dtype=np.intp)
+    lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts
     line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]])
-    ratio, unit_z, unit_y = transformer_values(*_at_taps(layout, units))
-    held = held_values([layout.attachments[i] for i in sources], drawing.cases)
-    power, reference, mix = load_values(
-        [layout.attachments[i] for i in loads], nominal[at[loads]], drawing.cases
-    )
-    shunt_y = shunt_values([layout.attachments[i] for i in shunts], nominal[at[shunts]])
+    ratio, unit_z, unit_y = transformer_values(_of(layout.branches, units))
+    held = held_values(_of(layout.attachments, sources), drawing.cases)
+    hung = _of(layout.attachments, loads)
+    power, reference, mix = load_values(hung, nominal[at[loads]], drawing.cases)
+    capacitors = _of(layout.attachments, shunts)
+    shunt_y = shunt_values(capacitors, nominal[at[shunts]])
     network = Network(
         node_count=len(layout.nodes),
         conductors=1,
@@ -108,27 +108,24 @@ def _lines(
     return z, y
 
 
-def _at_taps(layout: Layout, rows: Index) -> tuple[list[Transformer], list[int]]:
-    units = [b for i in rows if isinstance(b := layout.branches[i], Transformer)]
-    return units, [t.tap for t in units]
+def _of(elements: Sequence[Any], rows: Index) -> list[Any]:
+    return [elements[i] for i in rows]
 
 
-def _branch_rows(layout: Layout) -> tuple[Index, Index]:
-    lines, units = [], []
-    for row, branch in enumerate(layout.branches):
-        if isinstance(branch, Transformer):
-            units.append(row)
-        elif not isinstance(branch, Switch) or branch.closed:
-            lines.append(row)
-    return np.array(lines, dtype=np.intp), np.array(units, dtype=np.intp)
+@dataclass(frozen=True, slots=True)
+class _Kinds:
+    lines: Index
+    units: Index
+    loads: Index
+    shunts: Index
 
 
-def _attachment_rows(layout: Layout) -> tuple[Index, Index, Index]:
-    loads, shunts = [], []
-    for row, attachment in enumerate(layout.attachments):
-        if isinstance(attachment, Load | Generator):
-            loads.append(row)
-        elif isinstance(attachment, Capacitor) and attachment.connected:
-            shunts.append(row)
-    kind = np.intp
-    return np.array(layout.supplies, dtype=kind), np.array(loads, dtype=kind), np.array(shunts, dtype=kind)
+def _sort(layout: Layout) -> _Kinds:
+    """Rows of the branches and attachments by what they are to the solver; open switches are nothing."""
+    lines = [
+        i for i, b in enumerate(layout.branches) if isinstance(b, Line) or isinstance(b, Switch) and b.closed
+    ]
+    hung = layout.attachments
+    loads = [i for i, a in enumerate(hung) if isinstance(a, Load | Generator)]
+    shunts = [i for i, a in enumerate(hung) if isinstance(a, Capacitor) and a.connected]
+    return _Kinds(*(np.array(rows, dtype=np.intp) for rows in (lines, layout.units, loads, shunts)))

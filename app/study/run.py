@@ -7,13 +7,13 @@ from app.study.assumptions import assumptions_of
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
 from app.study.findings import judge
-from app.study.layout import NONE, Layout, lay_out
+from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Outcome, Verdict
 from app.study.results import tables_of
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
-from solver import Solution, Status, solve
+from solver import Solution, Status, grow, solve
 
 RANK = {
     v: i for i, v in enumerate((Verdict.BLOCKS, Verdict.FAILS, Verdict.NEAR, Verdict.HOLDS, Verdict.NOTE))
@@ -44,7 +44,8 @@ def run(drawing: Drawing) -> Outcome:
     if not barred:
         rows = rows_of(drawing, layout, zones)
         seconds["rows"] = lap()
-        solution = solve(rows.network)
+        layout.forest = layout.forest or grow(rows.network)
+        solution = solve(rows.network, forest=layout.forest)
         seconds["solve"] = lap()
     outcome = _outcome(drawing, layout, zones, found, rows, solution, seconds)
     seconds["results"] = lap()
@@ -82,12 +83,12 @@ def _outcome(
         balance=tables.balance,
         findings=tuple(found),
         assumptions=assumptions_of(layout, zones),
-        upstream=_upstream(layout),
-        zones=dict(zip(layout.node_ids, layout.zone, strict=True)),
+        upstream=layout.upstream,
+        zones=layout.zone_of,
         largest_share=collapse.share if collapse else None,
         to_blame=collapse.branch if collapse else None,
         seconds=seconds,
-        fed_from=_fed_from(layout),
+        fed_from=layout.before,
     )
 
 
@@ -110,19 +111,3 @@ def _sentence(status: Status, found: list[Finding]) -> str:
     if status is Status.INVALID and found and found[0].verdict is not Verdict.BLOCKS:
         return found[0].sentence
     return status.value
-
-
-def _upstream(layout: Layout) -> dict[str, str]:
-    return {
-        id: layout.branch_ids[branch]
-        for id, branch, node in zip(layout.node_ids, layout.fed_by, range(len(layout.nodes)), strict=True)
-        if branch != NONE and layout.live(node)
-    }
-
-
-def _fed_from(layout: Layout) -> dict[str, str]:
-    return {
-        id: layout.node_ids[layout.far(branch, node)]
-        for id, branch, node in zip(layout.node_ids, layout.fed_by, range(len(layout.nodes)), strict=True)
-        if branch != NONE and layout.live(node)
-    }

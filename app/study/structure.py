@@ -90,8 +90,8 @@ def _loop_words(drawing: Drawing, layout: Layout, ring: list[int], ids: tuple[st
 
 def _groups(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
     found = []
-    for row, branch in enumerate(layout.branches):
-        tree = layout.tree[layout.start[row]]
+    for row in layout.units:
+        branch, tree = layout.branches[row], layout.tree[layout.start[row]]
         if not isinstance(branch, Transformer) or layout.supply_of[tree] == NONE:
             continue
         id = layout.branch_ids[row]
@@ -125,9 +125,9 @@ def _wrong_system(drawing: Drawing, id: str, group: str, layout: Layout, tree: i
 def _plates(drawing: Drawing, layout: Layout) -> list[Finding]:
     """Transformer figures that contradict each other: more loss than the impedance or current can carry."""
     found = []
-    for row, unit in enumerate(layout.branches):
-        if not isinstance(unit, Transformer):
-            continue
+    for row in layout.units:
+        unit = layout.branches[row]
+        assert isinstance(unit, Transformer)
         id, hundredth = layout.branch_ids[row], unit.rating_kva * 10
         for loss, limit, words in (
             (
@@ -190,7 +190,7 @@ def _loose_ends(drawing: Drawing, layout: Layout) -> list[Finding]:
     hung = set(layout.at)
     found = []
     for row, node in enumerate(layout.nodes):
-        if meeting[row] == 1 and row not in hung and isinstance(node, Joint) and layout.live(row):
+        if meeting[row] == 1 and row not in hung and isinstance(node, Joint) and layout.live[row]:
             branch = layout.branch_ids[layout.fed_by[row]]
             id = layout.node_ids[row]
             words = f"{tell(drawing, branch)} ends at {tell(drawing, id)}, where nothing is connected."

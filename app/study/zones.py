@@ -47,13 +47,8 @@ def zones_of(drawing: Drawing, layout: Layout) -> Zones:
         if math.isnan(nominal[zone]):
             nominal[zone], basis[zone], assumed[zone] = volts, whose, by_winding
 
-    for row in layout.supplies:
-        supply = layout.attachments[row]
-        assert isinstance(supply, Supply)
-        settle(layout.zone[layout.at[row]], supply.nominal_v, tell(drawing, layout.attachment_ids[row]))
-    for row, node in enumerate(layout.nodes):
-        if node.nominal_v is not None:
-            settle(layout.zone[row], node.nominal_v, tell(drawing, layout.node_ids[row]))
+    for id, zone, volts in _statements(layout):
+        settle(zone, volts, tell(drawing, id))
     windings = list(_windings(layout))
     for fed_only in (True, False):  # the winding that feeds the zone speaks before those that leave it
         for branch, at, number, volts in windings:
@@ -74,27 +69,28 @@ def level_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Findi
     Returns : list of findings that block
     """
     found = []
-    for row, node in enumerate(layout.nodes):
-        volts = zones.nominal_v[layout.zone[row]]
-        if node.nominal_v is not None and not math.isclose(node.nominal_v, volts, rel_tol=1e-9):
-            id, whose = layout.node_ids[row], zones.basis[layout.zone[row]]
+    for id, zone, states in _statements(layout):
+        volts, whose = zones.nominal_v[zone], zones.basis[zone]
+        if not math.isclose(states, volts, rel_tol=1e-9):
             sentence = (
-                f"{tell(drawing, id)} states {node.nominal_v:g} V but is joined without a transformer to "
-                f"{whose}, which states {volts:g} V.{slip(node.nominal_v, volts)}"
-            )
-            found.append(Finding("mixed levels", Verdict.BLOCKS, (id,), sentence))
-    for row in layout.supplies:
-        supply = layout.attachments[row]
-        assert isinstance(supply, Supply)
-        volts = zones.nominal_v[layout.zone[layout.at[row]]]
-        if not math.isclose(supply.nominal_v, volts, rel_tol=1e-9):
-            id, whose = layout.attachment_ids[row], zones.basis[layout.zone[layout.at[row]]]
-            sentence = (
-                f"{tell(drawing, id)} states {supply.nominal_v:g} V but is joined without a transformer to "
-                f"{whose}, which states {volts:g} V.{slip(supply.nominal_v, volts)}"
+                f"{tell(drawing, id)} states {states:g} V but is joined without a transformer to "
+                f"{whose}, which states {volts:g} V.{slip(states, volts)}"
             )
             found.append(Finding("mixed levels", Verdict.BLOCKS, (id,), sentence))
     return found + _winding_findings(drawing, layout, zones)
+
+
+def _statements(layout: Layout) -> list[tuple[str, int, float]]:
+    """Id, zone and volts of all that states a level: supplies, and nodes where not blank."""
+    found = []
+    for row in layout.supplies:
+        supply = layout.attachments[row]
+        assert isinstance(supply, Supply)
+        found.append((layout.attachment_ids[row], layout.zone[layout.at[row]], supply.nominal_v))
+    for row, node in enumerate(layout.nodes):
+        if node.nominal_v is not None:
+            found.append((layout.node_ids[row], layout.zone[row], node.nominal_v))
+    return found
 
 
 def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
@@ -138,10 +134,11 @@ def level_assumptions(layout: Layout, zones: Zones) -> list[Assumption]:
 def _windings(layout: Layout) -> list[tuple[int, int, int, float]]:
     """Every winding: branch row, node row, winding number, rated volts."""
     found = []
-    for row, branch in enumerate(layout.branches):
-        if isinstance(branch, Transformer):
-            found.append((row, layout.start[row], 1, branch.v1_v))
-            found.append((row, layout.end[row], 2, branch.v2_v))
+    for row in layout.units:
+        unit = layout.branches[row]
+        assert isinstance(unit, Transformer)
+        found.append((row, layout.start[row], 1, unit.v1_v))
+        found.append((row, layout.end[row], 2, unit.v2_v))
     return found
 
 
