@@ -5,12 +5,13 @@ from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
 
-from PySide6.QtCore import QMarginsF, QPointF, QRectF, QSizeF, Qt
+from PySide6.QtCore import QBuffer, QIODevice, QMarginsF, QPointF, QRectF, QSizeF, Qt
 from PySide6.QtGui import (
     QColor,
     QImage,
     QPageLayout,
     QPageSize,
+    QPaintDevice,
     QPainter,
     QPdfWriter,
     QPen,
@@ -51,7 +52,10 @@ def picture(
         raise ValueError(f"{path.name}: a picture ends in one of {', '.join(SUFFIXES)}.")
     running = QApplication.instance() or QApplication(["farend"])
     page = Page(drawing, outcome, palette, symbols, case)
-    {".svg": _svg, ".png": _png, ".pdf": _pdf}[path.suffix.lower()](page, path)
+    out = QBuffer()
+    out.open(QIODevice.OpenModeFlag.WriteOnly)
+    {".svg": _svg, ".png": _png, ".pdf": _pdf}[path.suffix.lower()](page, out)
+    path.write_bytes(out.data().data())
     del page, running
 
 
@@ -120,51 +124,47 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
 
 
 @contextmanager
-def _painting(device: object, path: Path) -> Iterator[QPainter]:
-    painter = QPainter()
-    if not painter.begin(device):  # type: ignore[arg-type]
-        raise OSError(f"{path} cannot be written.")
+def _painting(device: QPaintDevice) -> Iterator[QPainter]:
+    painter = QPainter(device)
     try:
         yield painter
     finally:
         painter.end()
 
 
-def _svg(page: Page, path: Path) -> None:
+def _svg(page: Page, out: QBuffer) -> None:
     generator = QSvgGenerator()
-    generator.setFileName(str(path))
+    generator.setOutputDevice(out)
     generator.setTitle(page.title)
     generator.setDescription("Drawn with Farend. " + CAUTIONS[0])
     generator.setResolution(DPI)
     generator.setSize(page.size.toSize())
     generator.setViewBox(QRectF(QPointF(), page.size))
-    with _painting(generator, path) as painter:
+    with _painting(generator) as painter:
         page.paint(painter)
 
 
-def _png(page: Page, path: Path) -> None:
+def _png(page: Page, out: QBuffer) -> None:
     scale = min(SHARP, LARGEST_PNG / max(page.size.width(), page.size.height()))
     image = QImage((page.size * scale).toSize(), QImage.Format.Format_RGB32)
     image.fill(page.palette.paper)
-    with _painting(image, path) as painter:
+    with _painting(image) as painter:
         painter.scale(scale, scale)
         page.paint(painter)
-    if not image.save(str(path), b"PNG"):
-        raise OSError(f"{path} cannot be written.")
+    image.save(out, "PNG")  # type: ignore[call-overload]
 
 
-def _pdf(page: Page, path: Path) -> None:
+def _pdf(page: Page, out: QBuffer) -> None:
     """Vectors on one sheet of the drawing's own size; white paper where the palette is light."""
     if not page.palette.dark:
         page.wear(replace(page.palette, paper=QColor(Qt.GlobalColor.white)))
-    writer = QPdfWriter(str(path))
+    writer = QPdfWriter(out)
     writer.setTitle(page.title)
     writer.setCreator("Farend")
     writer.setResolution(600)
     sheet = QPageSize(page.size * (72 / DPI), QPageSize.Unit.Point, "", QPageSize.SizeMatchPolicy.ExactMatch)
-    layout = QPageLayout(sheet, QPageLayout.Orientation.Portrait, QMarginsF(0, 0, 0, 0))
-    writer.setPageLayout(layout)
-    with _painting(writer, path) as painter:
+    writer.setPageLayout(QPageLayout(sheet, QPageLayout.Orientation.Portrait, QMarginsF(0, 0, 0, 0)))
+    with _painting(writer) as painter:
         scale = writer.width() / page.size.width()
         painter.scale(scale, scale)
         page.paint(painter)

@@ -129,8 +129,7 @@ def _length(a: QPointF, b: QPointF) -> float:
 
 
 def _edges(box: QRectF, rim: float) -> Edges:
-    left, top, width, height = box.getRect()
-    return left - rim, top - rim, left + width + rim, top + height + rim
+    return box.left() - rim, box.top() - rim, box.right() + rim, box.bottom() + rim
 
 
 def _cells(edges: Edges) -> Iterator[tuple[int, int]]:
