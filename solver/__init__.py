@@ -4,7 +4,7 @@ from solver.forest import Forest, Joined, Loop, Trouble, grow
 from solver.network import Network
 from solver.share import Share, largest_share
 from solver.solution import Solution
-from solver.solving import batch, solve
+from solver.solving import solve
 from solver.status import Status
 
 __all__ = [
@@ -16,7 +16,6 @@ __all__ = [
     "Solution",
     "Status",
     "Trouble",
-    "batch",
     "grow",
     "largest_share",
     "solve",

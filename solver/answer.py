@@ -19,6 +19,16 @@ def answer(
     status: tuple[Status, ...],
     iterations: Index,
 ) -> Solution:
+    """Every branch, load and supply from the settled voltages.
+
+    network : Network
+    forest : Forest, of that network
+    placed : Placed, of both
+    voltage : (live, k, batch) complex [V]
+    status : (batch,) each a Status
+    iterations : (batch,) int
+    Returns : Solution
+    """
     with np.errstate(all="ignore"):
         sweep = Sweep(placed, forest, voltage.shape[-1])
         sweep.currents(voltage)
@@ -41,25 +51,25 @@ def answer(
     gap = np.abs(given - drawn_power - lost)
     closure = np.divide(gap, size, out=np.where(gap > 0, np.inf, gap), where=size > 0)
     return Solution(
-        network,
-        forest,
-        status,
-        everywhere,
-        lines[0],
-        lines[1],
-        transformers[0],
-        transformers[1],
-        load_power,
-        load_current,
-        shunt_power,
-        source_current,
-        source_power,
-        iterations,
-        closure,
-        lines[2],
-        lines[3],
-        transformers[2],
-        transformers[3],
+        network=network,
+        forest=forest,
+        status=status,
+        voltage=everywhere,
+        line_in=lines[0],
+        line_out=lines[1],
+        transformer_in=transformers[0],
+        transformer_out=transformers[1],
+        load_power=load_power,
+        load_current=load_current,
+        shunt_power=shunt_power,
+        source_current=source_current,
+        source_power=source_power,
+        iterations=iterations,
+        closure=closure,
+        line_series_loss=lines[2],
+        line_charging=lines[3],
+        transformer_series_loss=transformers[2],
+        transformer_magnetising_loss=transformers[3],
     )
 
 
@@ -116,17 +126,37 @@ def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
 
 
 def unsolved(network: Network, trouble: Trouble, width: int) -> Solution:
-    like = np.empty((0, network.conductors, width), dtype=np.complex128)
-    line, transformer = network.line_from.size, network.transformer_from.size
-    load, shunt, source = network.load_node.size, network.shunt_node.size, network.source_node.size
-    sizes = (network.node_count, line, line, transformer, transformer, load, load, shunt, source, source)
-    whole = [_blank(n, like)[:, 0] for n in (line, line, transformer, transformer)]
+    """The solution of a network that is no set of trees: every figure is nan, every status INVALID.
+
+    network : Network
+    trouble : Trouble
+    width : number of operating points
+    Returns : Solution
+    """
+
+    def blank(rows: int) -> Complex:
+        return np.full((rows, network.conductors, width), complex(np.nan, np.nan))
+
+    lines, units = network.line_from.size, network.transformer_from.size
+    loads, sources = network.load_node.size, network.source_node.size
     return Solution(
-        network,
-        trouble,
-        (Status.INVALID,) * width,
-        *(_blank(n, like) for n in sizes),
-        np.zeros(width, dtype=np.intp),
-        np.full(width, np.nan),
-        *whole,
+        network=network,
+        forest=trouble,
+        status=(Status.INVALID,) * width,
+        voltage=blank(network.node_count),
+        line_in=blank(lines),
+        line_out=blank(lines),
+        transformer_in=blank(units),
+        transformer_out=blank(units),
+        load_power=blank(loads),
+        load_current=blank(loads),
+        shunt_power=blank(network.shunt_node.size),
+        source_current=blank(sources),
+        source_power=blank(sources),
+        iterations=np.zeros(width, dtype=np.intp),
+        closure=np.full(width, np.nan),
+        line_series_loss=blank(lines)[:, 0],
+        line_charging=blank(lines)[:, 0],
+        transformer_series_loss=blank(units)[:, 0],
+        transformer_magnetising_loss=blank(units)[:, 0],
     )

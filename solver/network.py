@@ -58,3 +58,63 @@ class Network:
     load_mix: Real
     shunt_node: Index
     shunt_y: Complex
+
+    @property
+    def batch(self) -> int:
+        """Number of operating points: the longest last axis."""
+        return max(getattr(self, name).shape[-1] for name in PHYSICAL)
+
+    def check(self) -> None:
+        """Holds every array against its shape, its bounds and the number of nodes.
+
+        Raises : ValueError that names the array and what is wrong with it: a programmer's mistake
+        """
+        batch = self.batch
+        for name, (rows, axes) in PHYSICAL.items():
+            array = getattr(self, name)
+            inner = (self.conductors,) * axes
+            count = getattr(self, rows).shape[0]
+            if array.shape[:-1] != (count, *inner) or array.shape[-1] not in (1, batch):
+                wanted = ", ".join(str(n) for n in (count, *inner))
+                raise ValueError(f"{name} has shape {array.shape}, not ({wanted}, 1 or {batch})")
+            if not np.isfinite(array.sum()):
+                raise ValueError(f"{name} holds a number that is not finite")
+        for first, second in CONNECTED:
+            _check_rows(self, first, second)
+        if self.load_mix.shape != (self.load_node.size, 3):
+            raise ValueError(f"load_mix has shape {self.load_mix.shape}, not ({self.load_node.size}, 3)")
+        if not np.abs(self.load_mix.sum(axis=1) - 1).max(initial=0) < 1e-9:
+            raise ValueError("load_mix has a row whose shares do not sum to 1")
+        if not (self.load_reference.min(initial=np.inf) > 0 and np.all(self.source_voltage)):
+            raise ValueError("load_reference and source_voltage must not hold zeros")
+        if not np.all(self.transformer_ratio):
+            raise ValueError("transformer_ratio must not hold zeros")
+
+
+PHYSICAL = {  # array: (array with as many rows, axes of conductors)
+    "source_voltage": ("source_node", 1),
+    "line_z": ("line_from", 2),
+    "line_y": ("line_from", 2),
+    "transformer_ratio": ("transformer_from", 0),
+    "transformer_z": ("transformer_from", 0),
+    "transformer_y": ("transformer_from", 0),
+    "load_power": ("load_node", 1),
+    "load_reference": ("load_node", 1),
+    "shunt_y": ("shunt_node", 2),
+}
+CONNECTED = (
+    ("source_node", "source_node"),
+    ("line_from", "line_to"),
+    ("transformer_from", "transformer_to"),
+    ("load_node", "load_node"),
+    ("shunt_node", "shunt_node"),
+)
+
+
+def _check_rows(network: Network, first: str, second: str) -> None:
+    for name in {first: 0, second: 0}:
+        rows = getattr(network, name)
+        if rows.ndim != 1 or rows.dtype.kind != "i" or rows.size != getattr(network, first).size:
+            raise ValueError(f"{name} must be whole numbers in one row, as many as in {first}")
+        if rows.size and not (0 <= rows.min() and rows.max() < network.node_count):
+            raise ValueError(f"{name} names a node outside 0 to {network.node_count - 1}")

@@ -118,7 +118,7 @@ def _loads(network: Network, forest: Forest) -> tuple[Complex, Complex | None, C
     return power, current, admittance
 
 
-def gather(where: Index, values: Complex, size: int) -> Complex:
+def gather(where: Index, values: Complex | Real, size: int) -> Complex:
     """Adds rows up at their places.
 
     where : (row,) place of each row

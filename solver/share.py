@@ -5,7 +5,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from solver.forest import Forest, grow
-from solver.network import Index, Network, Real
+from solver.network import PHYSICAL, Index, Network, Real
 from solver.placed import put
 from solver.solution import Solution
 from solver.solving import solve
@@ -70,9 +70,7 @@ def pick(network: Network, points: Index) -> Network:
     points : (chosen,) int
     Returns : Network
     """
-    names = ("source_voltage", "line_z", "line_y", "transformer_ratio", "transformer_z", "transformer_y")
-    names = (*names, "load_power", "load_reference", "shunt_y")
-    wide = {n: getattr(network, n) for n in names if getattr(network, n).shape[-1] > 1}
+    wide = {n: getattr(network, n) for n in PHYSICAL if getattr(network, n).shape[-1] > 1}
     return replace(network, **{n: a[..., points] for n, a in wide.items()})
 
 

@@ -20,10 +20,12 @@ def solve(
     warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
     Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
         NOT_SETTLED where the sweeps still moved, INVALID where loops are closed or supplies joined
+    Raises : ValueError for arrays that do not fit together, a programmer's mistake
     Source : see solver.sweep
     """
+    network.check()
     forest = grow(network) if forest is None else forest
-    width = batch(network)
+    width = network.batch
     if isinstance(forest, Trouble):
         return unsolved(network, forest, width)
     placed = put(network, forest)
@@ -33,16 +35,6 @@ def solve(
         start = np.where(np.isfinite(guess), guess, start)
     settled = settle(placed, forest, start)
     return answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
-
-
-def batch(network: Network) -> int:
-    """Number of operating points of a network: the longest last axis.
-
-    network : Network
-    Returns : B
-    """
-    names = ("source_voltage", "line_z", "line_y", "transformer_ratio", "transformer_z", "transformer_y")
-    return max(getattr(network, n).shape[-1] for n in (*names, "load_power", "load_reference", "shunt_y"))
 
 
 def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:
