@@ -1,5 +1,6 @@
 """The diagram with its results as a picture: SVG, PNG or PDF, with the board's own items."""
 
+import os
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import replace
@@ -50,13 +51,18 @@ def picture(
     path = Path(path)
     if path.suffix.lower() not in SUFFIXES:
         raise ValueError(f"{path.name}: a picture ends in one of {', '.join(SUFFIXES)}.")
-    running = QApplication.instance() or QApplication(["farend"])
+    running = QApplication.instance() or _application()
     page = Page(drawing, outcome, palette, symbols, case)
     out = QBuffer()
     out.open(QIODevice.OpenModeFlag.WriteOnly)
     {".svg": _svg, ".png": _png, ".pdf": _pdf}[path.suffix.lower()](page, out)
     path.write_bytes(out.data().data())
     del page, running
+
+
+def _application() -> QApplication:
+    os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")  # a picture needs no screen
+    return QApplication(["farend"])
 
 
 class Page:
