@@ -100,7 +100,7 @@ def _split(subject: Subject) -> SheetTable:
         columns.append(Column(f"kw{case}", subject.cases[case], "kW", digits=2))
         columns.append(Column(f"share{case}", "of all", "%", digits=1))
     rows = {i: _lost(subject, i) for i in order}
-    return table("losses", TAB, "Losses, branch by branch", columns, rows, held=1)
+    return table("losses", "Losses", "Losses, branch by branch", columns, rows, held=1)
 
 
 def _lost(subject: Subject, id: str) -> Cells:

@@ -17,6 +17,10 @@ from app.sheet.table import SheetTable, Value
 TRIGGERS = tuple("=+-@\t\r\n\uff1d\uff0b\uff0d\uff20")
 TOGETHER = ("Head", "Basis", "Cautions")  # tabs that stand in OUT.csv itself
 LEAVE_OUT = ("key",)
+BESIDE = (
+    "busbars", "cables", "transformers", "loads", "supplies", "switches", "balance", "losses", "findings",
+    "cable_list", "orders", "settings", "open_points",
+)  # fmt: skip
 
 
 def files(tables: Iterable[SheetTable], path: Path) -> dict[Path, bytes]:
@@ -29,12 +33,22 @@ def files(tables: Iterable[SheetTable], path: Path) -> dict[Path, bytes]:
         if t.tab in TOGETHER:
             together += _flat(t)
         else:
-            beside = path.with_name(f"{path.stem}-{t.key.replace('_', '-')}{path.suffix}")
+            beside = _beside(path, t.key)
             apart[beside] = _encode(
                 [[c.title for c in t.columns], *([c.value for c in r.cells] for r in t.rows)]
             )
-            together.append(["Files", t.title, beside.name])
+            together.append(["Files", t.title, beside.name, "", ""])
     return {**apart, path: _encode(together)}
+
+
+def _beside(path: Path, key: str) -> Path:
+    return path.with_name(f"{path.stem}-{key.replace('_', '-')}{path.suffix}")
+
+
+def outdated(path: Path, written: Iterable[Path]) -> list[Path]:
+    """Files of an earlier sheet of this name that this one no longer has: a table left over would mislead."""
+    ours = [_beside(path, key + part) for key in BESIDE for part in ("", "_results", "_worst")]
+    return [p for p in ours if p not in set(written)]
 
 
 def _flat(t: SheetTable) -> list[list[Value]]:

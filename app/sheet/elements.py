@@ -76,6 +76,8 @@ def _case_row(subject: Subject, id: str, case: int) -> str:
 def by_element(subject: Subject, plan: Plan, entries: Iterable[Entry]) -> list[SheetTable]:
     """The tables of one kind of element, each column in the one that is its place."""
     entries = list(entries)
+    if not entries:
+        return []
     wide, one = plan.key in WIDE, subject.one_case
     worst_columns = () if one else _worst_columns(plan)
     stated: tuple[Column, ...] = plan.data
@@ -100,7 +102,7 @@ def _worst_columns(plan: Plan) -> tuple[Column, ...]:
     columns: list[Column] = []
     for e in plan.extremes:
         columns.append(replace(shown[e.of], key=e.key, head=e.head))
-        columns.append(Column(e.key + "_case", "in case", style=Style.TEXT, width=16))
+        columns.append(Column(e.key + "_case", "in case", style=Style.TEXT, width=18))
     return tuple(columns)
 
 
@@ -117,7 +119,9 @@ def _table(
                 cells |= {"number": Cell(case + 1), "case": text(subject.cases[case])}
             row = _case_row(subject, entry.id, case) if by_case else entry.id
             rows[row] = _reaching(subject, plan, entry.id, key, columns, cells)
-    tab = plan.tab if not by_case else plan.tab + ", cases"
+    tab = plan.tab + ", cases" if by_case else plan.tab
+    if plan.key in WIDE and key == plan.key:
+        tab = plan.tab.removesuffix("s") + " data"
     note = "" if title in (": as stated", ": every case") and plan.key not in WIDE else plan.note
     note = "" if title in (": as stated", ": worst of all cases") else note
     lead = (*IDENTITY, *CASE) if by_case else IDENTITY

@@ -27,8 +27,8 @@ def node_tables(subject: Subject) -> list[SheetTable]:
         Column("route", "Route from supply", "m", digits=0),
     ]
     judged = [
-        Column("low_v", "Lowest allowed", "V", style=Style.VOLTS, width=10),
-        Column("high_v", "Highest allowed", "V", style=Style.VOLTS, width=10),
+        Column("low_v", "Lowest allowed", "V", style=Style.VOLTS, width=10, near="u_min"),
+        Column("high_v", "Highest allowed", "V", style=Style.VOLTS, width=10, near="u_max"),
         Column("margin", "Margin", "% of Un", digits=2, near="0"),
         Column("margin_v", "Margin", "V", digits=1, near="0"),
     ]

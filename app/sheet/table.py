@@ -160,8 +160,11 @@ MOST_DIGITS = 9
 
 
 def apart(value: float, limit: float, digits: int) -> int:
-    """The fewest digits, from `digits` on, with which two different figures print differently."""
-    while digits < MOST_DIGITS and value != limit and round(value, digits) == round(limit, digits):
+    """The fewest digits, from `digits` on, at which what is printed tells how far two figures are apart."""
+    gap = value - limit
+    while digits < MOST_DIGITS and gap:
+        if abs(round(value, digits) - round(limit, digits) - gap) <= abs(gap) / 2:
+            break
         digits += 1
     return digits
 

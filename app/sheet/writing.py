@@ -20,7 +20,8 @@ class SheetError(ValueError):
 
 def write(drawing: Drawing, outcome: Outcome, path: Path | str) -> tuple[Path, ...]:
     """Write the sheet; the files written. `OUT.xlsx` is a workbook. `OUT.csv` holds head, basis and
-    cautions, and each further table stands beside it in a file such as `OUT-busbars.csv`."""
+    cautions, and each further table stands beside it in a file such as `OUT-busbars.csv`; tables of an
+    earlier sheet of that name go."""
     path = Path(path)
     kind = path.suffix.lower()
     if kind not in SUFFIXES:
@@ -33,6 +34,8 @@ def write(drawing: Drawing, outcome: Outcome, path: Path | str) -> tuple[Path, .
         files = {p: _saver(content) for p, content in csv.files(made, path).items()}
     try:
         _replace_all(files)
+        for left in csv.outdated(path, files) if kind == ".csv" else ():
+            left.unlink(missing_ok=True)
     except OSError as error:
         raise SheetError(_sentence(path, error)) from error
     return tuple(files)

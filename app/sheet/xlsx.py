@@ -24,7 +24,7 @@ OPTIONS = {
 }
 A4, LETTER = 9, 1
 LINE = 13.5  # points a line of text takes
-CHARACTER = 0.93  # of a digit, by which widths are told, the usual letter is this wide
+CHARACTER = 0.88  # of a digit, by which widths are told, the usual letter is this wide
 FOOTER_LONGEST = 60
 
 
@@ -157,11 +157,11 @@ def _room(place: Place, column: int, widths: list[float]) -> float:
 
 def _lines(words: str, room: float) -> int:
     """How many lines a wrapped text takes, word by word."""
-    count = 0
+    count, room = 0, room / CHARACTER
     for paragraph in words.split("\n"):
         count, used = count + 1, 0.0
         for word in paragraph.split(" "):
-            length = len(word) * CHARACTER
+            length = float(len(word))
             if used and used + 1 + length > room:
                 count, used = count + 1, 0.0
             count += int(length // max(room, 1)) if length > room else 0

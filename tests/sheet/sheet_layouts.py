@@ -1,0 +1,138 @@
+"""Invented drawings that the sheet must get right: a transformer pair, a near miss, two wires, dead parts."""
+
+import math
+
+from app.model.drawing import Case, Drawing, Limits, Project
+from app.model.kinds import (
+    Busbar,
+    Cable,
+    Capacitor,
+    Generator,
+    Joint,
+    Load,
+    OverheadLine,
+    Supply,
+    Switch,
+    Transformer,
+)
+
+HOSTILE = '=HYPERLINK("http://example.invalid","Barn feeder")'
+NIGHT = Case(name="Quiet night, high intake", supply_percent=109.0, load_percent=10.0, generation_percent=0.0)
+PEAK = Case(name="Full load, low intake")
+SHORT = 216.2 * math.sqrt(3) / 400 * 100  # 216.2 V phase, of 400 V between lines
+
+
+def pair(*cases: Case) -> Drawing:
+    """Step up, 11 kV cable, step down, a feeder with everything on it, and a part that is not fed."""
+    elements = {
+        "B1": Busbar(name="GH"),
+        "S1": Supply(name="Intake", node="B1", nominal_v=400.0, held_percent=97.0),
+        "T1": Transformer(
+            name="Step up", start="B1", end="J1", rating_kva=160.0, v1_v=400.0, v2_v=11000.0,
+            load_loss_w=1750.0, no_load_loss_w=189.0, no_load_current_percent=0.7, tapped="winding 2", tap=1,
+        ),
+        "J1": Joint(),
+        "C1": Cable(
+            start="J1", end="J2", type="3×35 Al 11 kV", length_m=1150.0, r20_ohm_per_km=0.868,
+            x_ohm_per_km=0.126, c_uf_per_km=0.19, temperature_degc=60.0, rating_a=120.0, area_mm2=35.0,
+        ),
+        "J2": Joint(),
+        "T2": Transformer(
+            name="Step down", start="B2", end="J2", rating_kva=100.0, v1_v=400.0, v2_v=11000.0,
+            vector_group="YNd1", tapped="winding 2", load_loss_w=1250.0, no_load_loss_w=130.0, tap=-1,
+        ),
+        "B2": Busbar(name="HS"),
+        "L1": Load(name="House", node="B2", demand_kva=80.0, note="Ask the estate office."),
+        "L2": Load(
+            name="Lodge", node="B1", demand_kva=None, demand_kw=11.0, power_factor=0.9, leading=True,
+            constant_current_percent=30.0, constant_impedance_percent=20.0, reference_v=415.0,
+        ),
+        "C2": Cable(
+            name=HOSTILE, start="B3", end="B2", type="4×95 Al", length_m=320.0, r20_ohm_per_km=0.32,
+            rating_a=195.0, area_mm2=95.0, parallel=2,
+        ),
+        "B3": Busbar(name="Barn"),
+        "O1": OverheadLine(start="B3", end="J3", conductor="Cu", length_m=80.0, r20_ohm_per_km=0.727),
+        "J3": Joint(),
+        "G1": Generator(name="PV roof", node="B3", output_kw=5.0, output_kvar=-1.0),
+        "K1": Capacitor(node="B3", rating_kvar=5.0),
+        "K2": Capacitor(node="B3", rating_kvar=9.0, rated_v=440.0, connected=False),
+        "W1": Switch(start="B3", end="B4", closed=False),
+        "W2": Switch(name="Barn switch", start="B3", end="B5", rating_a=25.0),
+        "B5": Busbar(name="Dryer"),
+        "L4": Load(name="Dryer", node="B5", demand_kva=12.0, constant_impedance_percent=100.0),
+        "B4": Busbar(name="Spare"),
+        "L3": Load(name="Spare load", node="B4", demand_kva=None, demand_kw=5.0),
+    }  # fmt: skip
+    project = Project(
+        title="Fernhollow & Sons", number="FE-01", revision="B", author="A. Planner", note="One.\nTwo."
+    )
+    limits = Limits(name="Estate set 2025", drop_percent=8.0)
+    return Drawing(project=project, limits=limits, cases=cases or (PEAK,), elements=elements)
+
+
+def three_cables() -> Drawing:
+    """Three cables in parallel: the House misses 216.2 V between phase and neutral by hundredths."""
+    run = {"rating_a": 265.0, "parallel": 3, "temperature_degc": 60.0, "area_mm2": 240.0, "type": "4×240 Al"}
+    elements = {
+        "B1": Busbar(name="GH"),
+        "S1": Supply(node="B1", nominal_v=400.0, held_percent=97.0),
+        "C1": Cable(start="B1", end="B2", length_m=250.0, **run),
+        "B2": Busbar(name="LD"),
+        "C2": Cable(start="B2", end="B3", length_m=900.0, **run),
+        "B3": Busbar(name="HS"),
+        "L1": Load(name="Lodge", node="B2", demand_kva=12.0),
+        "L2": Load(name="House", node="B3", demand_kva=80.0),
+    }
+    return Drawing(limits=Limits(low_percent=SHORT), elements=elements)
+
+
+def two_wire() -> Drawing:
+    """A shed on two wires at 60 Hz, with charging current."""
+    elements = {
+        "B1": Busbar(name="Panel"),
+        "S1": Supply(node="B1", nominal_v=240.0, wires="two-wire"),
+        "C1": Cable(
+            start="B1", end="B2", type="2×16 Cu", conductor="Cu", length_m=60.0, r20_ohm_per_km=1.15,
+            c_uf_per_km=2.0, rating_a=60.0,
+        ),
+        "B2": Busbar(name="Shed"),
+        "L1": Load(node="B2", demand_kva=4.0, constant_current_percent=50.0),
+        "T1": Transformer(
+            start="B2", end="B3", v1_v=240.0, v2_v=120.0, rating_kva=2.0, vector_group="Ii0", uk_percent=4.0,
+            load_loss_w=50.0, no_load_loss_w=8.0, no_load_current_percent=2.0, tap=-1,
+        ),
+        "B3": Busbar(name="Bench"),
+        "L2": Load(node="B3", demand_kva=1.0),
+    }  # fmt: skip
+    return Drawing(project=Project(title="Shed"), frequency_hz=60.0, elements=elements)
+
+
+def blocked() -> Drawing:
+    """Two cables side by side: a closed loop, so that nothing is solved."""
+    elements = {
+        "B1": Busbar(),
+        "S1": Supply(node="B1"),
+        "C1": Cable(start="B1", end="B2"),
+        "C2": Cable(start="B1", end="B2"),
+        "B2": Busbar(),
+        "T1": Transformer(start="B2", end="B3", v1_v=400.0, v2_v=230.0),
+        "B3": Busbar(),
+        "L1": Load(node="B3"),
+        "G1": Generator(node="B3"),
+        "W1": Switch(start="B3", end="B4"),
+        "B4": Joint(),
+    }
+    return Drawing(elements=elements)
+
+
+def overloaded() -> Drawing:
+    """A load that no voltage can carry."""
+    elements = {
+        "B1": Busbar(),
+        "S1": Supply(node="B1"),
+        "C1": Cable(start="B1", end="B2", length_m=1150.0),
+        "B2": Busbar(),
+        "L1": Load(node="B2", demand_kva=900.0),
+    }
+    return Drawing(elements=elements)
