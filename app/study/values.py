@@ -144,8 +144,8 @@ def load_values(
     Source : see solver.load
     """
     kva, pf, leading, kw, kvar, makes, current, impedance, reference = columns(_demand_rows.of(drawn), 9)
-    made: Complex = (kw + 1j * kvar).astype(np.complex128)
-    power: Complex = np.where(makes > 0, -made, load.power(kva, pf, leading > 0)) * 1e3
+    demand = load.power(kva, pf, leading > 0)
+    power = np.where(makes > 0, -(kw + 1j * kvar).astype(np.complex128), demand) * 1e3
     loads = np.array([c.load_percent for c in cases], dtype=np.float64) / 100
     makers = np.array([c.generation_percent for c in cases], dtype=np.float64) / 100
     scaled: Complex = power[:, None] * np.where(makes[:, None] > 0, makers, loads)
