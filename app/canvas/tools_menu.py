@@ -22,11 +22,11 @@ if TYPE_CHECKING:
 Entry = tuple[str, Callable[[], object]] | None
 
 
-def menu_at(view: BoardView, at: QPointF) -> QMenu:
-    """The menu for a point of the paper; what is there is selected first."""
+def menu_at(view: BoardView, at: QPointF, keyed: bool = False) -> QMenu:
+    """The menu for a point of the paper; what is there is selected first, unless a key called for it."""
     hit = view.hit(at)
-    if hit.id and hit.id not in view.attention.selection:
-        view.attention.select([hit.id])
+    if not keyed and hit.id not in view.attention.selection:
+        view.attention.select([hit.id] if hit.id else ())
     menu = QMenu(view)
     for entry in [*_of_one(view, at), *_of_all(view)]:
         if entry is None:

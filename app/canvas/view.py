@@ -262,11 +262,13 @@ class BoardView(EventView):
         self.show_selection()
         return True
 
-    def show_menu(self, at: QPointF, where: QPoint) -> None:
+    def show_menu(self, px: QPoint, keyed: bool) -> None:
         """Show the context menu."""
-        menu = menu_at(self, at)
+        chosen = keys.only(self)
+        px = self.px_of(chosen) if keyed and chosen is not None else px
+        menu = menu_at(self, self.mapToScene(px), keyed)
         menu.aboutToHide.connect(menu.deleteLater)
-        menu.popup(where)
+        menu.popup(self.viewport().mapToGlobal(px))
 
     def _selected(self, ids: frozenset[str]) -> None:
         self.fresh = None

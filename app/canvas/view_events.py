@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QEvent, QPointF, QRectF, Qt, Signal
+from PySide6.QtCore import QEvent, QPoint, QPointF, QRectF, Qt, Signal
 from PySide6.QtGui import QKeyEvent, QMouseEvent, QNativeGestureEvent, QPainter, QWheelEvent
 from PySide6.QtWidgets import QGestureEvent, QGraphicsScene, QGraphicsView, QPinchGesture
 
@@ -70,7 +70,7 @@ class EventView(QGraphicsView):
         """Go on to the next element; False past the last."""
         raise NotImplementedError
 
-    def show_menu(self, at: QPointF, where) -> None:
+    def show_menu(self, px: QPoint, keyed: bool) -> None:
         """Show the context menu."""
         raise NotImplementedError
 
@@ -141,12 +141,7 @@ class EventView(QGraphicsView):
             self.tool.cancel()
             return
         keyed = event.reason() == event.Reason.Keyboard
-        at = self.hand() if keyed else self.paper(QPointF(event.pos()))
-        self.show_menu(at, self.viewport().mapToGlobal(self.mapFromScene(at)) if keyed else event.globalPos())
-
-    def hand(self) -> QPointF:
-        """Where the hand is on the paper."""
-        raise NotImplementedError
+        self.show_menu(self.viewport().rect().center() if keyed else event.pos(), keyed)
 
     # keys ---------------------------------------------------------------------------------------
 
