@@ -17,6 +17,7 @@ from app.panels.style import play
 from app.panels.words import LEFT, RIGHT
 
 BOX_HEIGHT = 25
+UNIT_WIDTH = 30
 
 
 class Entry(QLineEdit):
@@ -66,6 +67,18 @@ class Entry(QLineEdit):
         self.setModified(False)
         self.selectAll()
         self.given_up.emit()
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Text that is too long for its box is elided while nobody edits it."""
+        wide = self.fontMetrics().horizontalAdvance(self.text())
+        if self.hasFocus() or wide <= self.contentsRect().width() - 4:
+            super().paintEvent(event)
+            return
+        painter = QPainter(self)
+        painter.setPen(self.palette().color(self.foregroundRole()))
+        room = self.contentsRect().adjusted(2, 0, -2, 0)
+        shown = self.fontMetrics().elidedText(self.text(), Qt.TextElideMode.ElideRight, room.width())
+        painter.drawText(room, int(LEFT), shown)
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         if event.key() == Qt.Key.Key_Escape and self.isModified():
@@ -208,6 +221,8 @@ class Box(QFrame):
         if isinstance(unit, str) and unit:
             shown = QLabel(unit)
             shown.setTextFormat(Qt.TextFormat.PlainText)
+            shown.setAlignment(RIGHT)
+            shown.setMinimumWidth(UNIT_WIDTH)
             play(shown, "quiet")
             across.addWidget(shown)
         elif isinstance(unit, QWidget):

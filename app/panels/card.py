@@ -27,7 +27,7 @@ from app.panels.summary import summary_rows
 from app.panels.verdict_lines import VerdictLines
 from app.panels.words import Rule
 
-WIDTH = 312
+WIDTH = 320
 
 
 class Card(QScrollArea):
@@ -53,6 +53,7 @@ class Card(QScrollArea):
     def _build(self) -> None:
         self.setWidgetResizable(True)
         self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setVerticalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOn)  # nothing jumps sideways
         self.setFrameShape(QFrame.Shape.NoFrame)
         self.setFixedWidth(WIDTH)
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
@@ -61,13 +62,21 @@ class Card(QScrollArea):
         self.project = ProjectPage(self._session, self._attention, self._theme)
         self.now = NowTable(self._theme)
         self.lines = VerdictLines(self._theme)
-        self._rules = (Rule(), Rule())
+        self._rules = (Rule(), Rule(), Rule())
         content = QWidget()
         play(content, "panel")
         self._down = QVBoxLayout(content)
-        self._down.setContentsMargins(18, 14, 14, 14)
+        self._down.setContentsMargins(18, 14, 9, 14)
         self._down.setSpacing(10)
-        for widget in (self.head, self.project, self._rules[0], self.now, self._rules[1], self.lines):
+        for widget in (
+            self.head,
+            self.project,
+            self._rules[0],
+            self.now,
+            self._rules[1],
+            self.lines,
+            self._rules[2],
+        ):
             self._down.addWidget(widget)
         self._down.addStretch(1)
         self.project.hide()
@@ -110,11 +119,19 @@ class Card(QScrollArea):
         if page is not self._page:
             if self._page is not None:
                 self._page.forget()
-                self._page.hide()
+                self._show_page(self._page, False)
             self._page = page
-            page.show()
+            self._show_page(page, True)
         self.verticalScrollBar().setValue(0)
         self.refresh()
+
+    def _show_page(self, page: Page, shown: bool) -> None:
+        page.setVisible(shown)
+        if isinstance(page, ElementPage):
+            page.more.setVisible(shown)
+            self._rules[2].setVisible(shown)
+        elif shown:
+            self._rules[2].hide()
 
     def _page_for(self, ids: tuple[str, ...]) -> Page:
         drawing = self._session.drawing
@@ -126,6 +143,8 @@ class Card(QScrollArea):
             page = ElementPage(kind, self._session, self._theme)
             self._pages[kind] = page
             self._down.insertWidget(1, page)
+            self._down.insertWidget(self._down.count() - 1, page.more)
+            page.more.hide()
         return self._pages[kind]
 
     @property

@@ -18,7 +18,10 @@ from app.panels.page import Page
 from app.panels.special_rows import DemandRow, TapRow
 
 NOT_GIVEN = "not given"
-ALREADY_SHOWN = ("name",)
+LESS_ASKED = {  # shown below the results
+    "angle_deg", "area_mm2", "c_uf_per_km", "conductor", "constant_current_percent",
+    "constant_impedance_percent", "note", "reference_v", "tap_step_percent", "tapped", "taps_down", "taps_up",
+}  # fmt: skip
 
 
 class ElementPage(Page):
@@ -29,12 +32,14 @@ class ElementPage(Page):
         self.kind = KINDS[kind]
         self.ids: tuple[str, ...] = ()
         self._session = session
-        for field in fields_of(self.kind).values():
-            if field.name not in (*ALREADY_SHOWN, "note"):
-                self._add(field)
-        self.add_fields([fields_of(self.kind)["note"]], self._take)
+        self.more = Page(theme)
+        fields = [f for f in fields_of(self.kind).values() if f.name != "name"]
+        fields.sort(key=lambda f: f.name == "note")
+        for field in fields:
+            self._add(field, self.more if field.name in LESS_ASKED else self)
+        self.rows = {**self.rows, **self.more.rows}
 
-    def _add(self, field: Field) -> None:
+    def _add(self, field: Field, page: Page) -> None:
         if field.name == "tap":
             row: FieldRow = TapRow(field, self._take, self.theme)
             row.step.connect(self._step)
@@ -44,7 +49,7 @@ class ElementPage(Page):
             return
         else:
             row = FieldRow(field, self._take, self.theme)
-        self.add_row(field.name, row)
+        page.add_row(field.name, row)
 
     def show_ids(self, ids: tuple[str, ...]) -> None:
         """Show these elements."""
@@ -77,18 +82,23 @@ class ElementPage(Page):
         if value is None:
             blank = stand_ins.get(name)
             if blank is None or len(elements) > 1:
-                row.show_value(None, quiet=self._follows(elements[0], name))
+                quiet, basis = self._follows(elements[0], name)
+                row.show_value(None, quiet=quiet, basis=basis)
             else:
                 row.show_value(None, quiet=round_off(blank.value), basis=blank.basis)
             return
         row.show_value(value, other=other_habit(value, field))
 
-    def _follows(self, element: Element, name: str) -> str:
-        """What stands in a blank box for which nothing is assumed."""
-        if isinstance(element, Node) and name == "nominal_v" and len(self.ids) == 1:
-            level = nominal_levels(self._session.drawing).get(self.ids[0])
-            return written(level.volts) if level else "follows the feed"
-        return NOT_GIVEN
+    def _follows(self, element: Element, name: str) -> tuple[str, str]:
+        """What stands in a blank box, and on what basis where it is assumed."""
+        if not isinstance(element, Node) or name != "nominal_v":
+            return NOT_GIVEN, ""
+        levels = nominal_levels(self._session.drawing)
+        here = {levels.get(i) for i in self.ids}
+        level = here.pop() if len(here) == 1 else None
+        if level is None:
+            return "follows the feed", ""
+        return written(level.volts), level.how if level.assumed else ""
 
     def _take(self, field: Field, text: str) -> str:
         ids = self.ids

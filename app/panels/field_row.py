@@ -16,7 +16,7 @@ from app.panels.words import RIGHT, Sentence, Words, plain_tip
 Take = Callable[[Field, str], str]  # takes what was typed, answers why not, or nothing
 YES_NO = ("no", "yes")
 VARIOUS = "various"
-BOX_WIDTH = 152
+BOX_WIDTH = 142
 
 
 class Dot(QWidget):
@@ -53,6 +53,7 @@ class FieldRow(QWidget):
         self.field = field
         self._take = take
         self._value: Any = None
+        self._text = ""
         self.label = Words(field.label, "quiet")
         self.label.say(field.label, field.help)
         self.dot = Dot(theme)
@@ -116,7 +117,7 @@ class FieldRow(QWidget):
         """The value as it stands. Where it is blank, `quiet` stands in its place; `basis` says why that
         is assumed; `other` is the value in the other habit of units, for the tooltip."""
         various = quiet == VARIOUS
-        self._value = value
+        self._value, self._text = value, "" if various else written(value)
         editor = self.editor
         if isinstance(editor, Tick):
             editor.setTristate(various)
@@ -127,9 +128,9 @@ class FieldRow(QWidget):
         elif isinstance(editor, Choice):
             editor.setCurrentIndex(-1 if various else self.field.choices.index(value))
         elif isinstance(editor, Note):
-            editor.settle("" if various else written(value))
+            editor.settle(self._text)
         else:
-            self._settle(editor, "" if various else written(value), quiet)
+            self._settle(editor, self._text, quiet)
         self.dot.say(f"{self.field.label} is assumed: {basis}" if basis else "")
         tip = "\n".join(part for part in (self.field.help, other, basis and f"Assumed: {basis}") if part)
         editor.setToolTip(plain_tip(tip))
@@ -183,7 +184,9 @@ class FieldRow(QWidget):
         refusal = self._take(self.field, text)
         if refusal and isinstance(self.editor, Entry | Note):
             self.editor.reopen()
-        elif refusal:
+        elif isinstance(self.editor, Entry | Note):
+            self.editor.settle(self._text)  # the value as it is written, not as it was typed
+        else:
             self.show_value(self._value)
         self.refuse(refusal)
 

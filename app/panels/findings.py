@@ -67,7 +67,7 @@ class FindingsBar(QWidget):
     def _build(self) -> None:
         self.mark = Mark(self._theme, 15)
         self.headline = Words("", "strong")
-        self.headline.setSizePolicy(QSizePolicy.Policy.Maximum, QSizePolicy.Policy.Fixed)
+        self.headline.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
         self.sentence = Link("", "quiet")
         self.sentence.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
         self.sentence.setMinimumWidth(60)

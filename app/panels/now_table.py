@@ -37,10 +37,8 @@ class NowTable(QWidget):
         now = (list(rows), tuple(heads), shown, stale)
         if now == (self.rows, self.heads, self.shown, self.stale):
             return
-        tall = len(self.rows)
         self.rows, self.heads, self.shown, self.stale = now
-        if tall != len(self.rows):
-            self.updateGeometry()
+        self.updateGeometry()
         self.setAccessibleName(self.title)
         self.setAccessibleDescription(self.as_text())
         self.update()
@@ -59,7 +57,7 @@ class NowTable(QWidget):
         return list(range(first, first + room))
 
     def sizeHint(self) -> QSize:
-        return QSize(240, int(LINE * (len(self.rows) + 1.35)))
+        return QSize(240, int(LINE * (len(self.rows) + 1) + self._head_height() - LINE + 6))
 
     def minimumSizeHint(self) -> QSize:
         return QSize(120, self.sizeHint().height())
@@ -84,7 +82,11 @@ class NowTable(QWidget):
         painter.drawText(QRectF(0, 0, LABEL_WIDTH, LINE), int(LEFT), self.title)
         self._paint_heads(painter, columns)
         for k, row in enumerate(self.rows):
-            self._paint_row(painter, row, LINE * (k + 1.25), columns)
+            self._paint_row(painter, row, self._head_height() + 4 + LINE * k, columns)
+
+    def _head_height(self) -> float:
+        tall = len(self.heads) > 1 and any(_two_lines(head)[1] for head in self.heads)
+        return LINE + (13 if tall else 0)
 
     def _column(self, place: int, count: int) -> QRectF:
         width = (self.width() - LABEL_WIDTH) / max(count, 1)
@@ -103,7 +105,9 @@ class NowTable(QWidget):
             strong = case == self.shown
             painter.setFont(font(8, bold=strong))
             painter.setPen(self._theme.palette.ink if strong else self._theme.palette.soft)
-            _put(painter, self._column(place, len(columns)), self.heads[case])
+            room = self._column(place, len(columns))
+            for line, words in enumerate(_two_lines(self.heads[case])):
+                _put(painter, room.translated(0, line * 13), words)
 
     def _paint_row(self, painter: QPainter, row: Row, top: float, columns: list[int]) -> None:
         look = self._theme.palette
@@ -138,6 +142,15 @@ class NowTable(QWidget):
         if strong and row.verdict in (Verdict.FAILS, Verdict.NEAR):
             return colour_of(row.verdict, look)
         return look.ink
+
+
+def _two_lines(text: str) -> tuple[str, str]:
+    """A case's name over two lines, parted at the blank nearest its middle."""
+    blanks = [k for k, letter in enumerate(text) if letter == " "]
+    if len(text) < 13 or not blanks:
+        return text, ""
+    middle = min(blanks, key=lambda k: abs(k - len(text) / 2))
+    return text[:middle], text[middle + 1 :]
 
 
 def _put(painter: QPainter, room: QRectF, text: str, at_left: bool = False) -> None:

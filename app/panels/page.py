@@ -35,8 +35,9 @@ class Page(QWidget):
 
     def commit(self) -> None:
         """Hand over what is being typed; what cannot stand is dropped with its refusal."""
+        focused = QApplication.focusWidget()
         for row in self.rows.values():
-            if row.isAncestorOf(_focused() or self):
+            if focused is not None and row.isAncestorOf(focused):
                 row.commit()
 
     def forget(self) -> None:
@@ -50,7 +51,3 @@ class Page(QWidget):
         if row is not None:
             row.editor.setFocus()
         return row
-
-
-def _focused() -> QWidget | None:
-    return QApplication.focusWidget()

@@ -89,7 +89,7 @@ def _node(asked: Asked, id: str) -> list[Row]:
         row("Volts", "voltage_v", volts, VOLTAGE),
         row("Of nominal", "percent", partial(percent, digits=2)),
         row("Margin to limit", partial(_margin, asked), partial(percent, digits=2, sign=True)),
-        row("Drop from supply", "drop_percent", partial(percent, digits=2), DROP),
+        row("Total drop", "drop_percent", partial(percent, digits=2), DROP),
         row("Angle", "angle_deg", partial(plain, digits=1, unit="°")),
         _once(row("Route", "route_m", length)),
     ]

@@ -6,7 +6,7 @@ from pathlib import Path
 
 from PySide6.QtCore import QSize, Qt, QTimer, Signal
 from PySide6.QtGui import QAction, QKeySequence
-from PySide6.QtWidgets import QFrame, QLabel, QMenu, QScrollArea, QToolTip, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QFrame, QLabel, QMenu, QScrollArea, QVBoxLayout, QWidget
 
 from app.canvas.theme import Theme
 from app.canvas.user_symbol import SymbolRefused, read_svg
@@ -244,8 +244,7 @@ class Shelf(QScrollArea):
         self._follow()
 
     def _tell(self, sentence: str) -> None:
-        """Why something could not be done, where the hand is; and for whoever listens."""
-        QToolTip.showText(self.mapToGlobal(self.rect().center()), plain_tip(sentence), self)
+        """Why something could not be done, for whoever shows it."""
         self.refused.emit(sentence)
 
     # -- an SVG dropped beside the parts --------------------------------------------------------

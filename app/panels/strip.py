@@ -157,9 +157,9 @@ class VoltageStrip(QWidget):
         )
 
     def _why_empty(self) -> str:
-        if self._solving.problem is not None:
-            return "No figures: not solved."
-        return "" if self._session.drawing.elements else "Draw a supply to see volts along the route."
+        if not self._session.drawing.elements:
+            return "Draw a supply to see volts along the route."
+        return "No figures: not solved." if self._solving.problem is not None else ""
 
     # -- what lies under the hand ---------------------------------------------------------------
     def handle_of(self, id: str) -> QPointF | None:

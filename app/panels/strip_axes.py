@@ -10,7 +10,7 @@ from app.model.kinds import Transformer
 from app.panels.strip_course import Course, Stop
 from app.study.outcome import Outcome
 
-STEP_PX = 22.0  # the breadth given to a transformer, which has no length
+STEP_PX = 46.0  # the breadth given to a transformer, which has no length
 LEAST_SPAN = 6.0  # percent
 
 
@@ -43,7 +43,7 @@ def axes(room: QRectF, course: Course, span: tuple[float, float]) -> Axes:
     """Axes that hold every node of a course."""
     stops = list(course.stops.values())
     most = max((s.steps for s in stops), default=0)
-    step = min(STEP_PX, room.width() / (2 * most)) if most else 0.0
+    step = min(STEP_PX, room.width() / (3 * most)) if most else 0.0
     scales = [(room.width() - s.steps * step) / s.route_m for s in stops if s.route_m > 0]
     if not scales and most:
         step = room.width() / most

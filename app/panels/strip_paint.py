@@ -170,16 +170,42 @@ def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette
 
 
 def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, bold: bool) -> None:
-    """The case's name at the far end, above its line unless another line runs just there."""
+    """The case's name at the far end, above or below its line, where no other line runs."""
     end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
     if end is None:
         return
-    others = [c.nodes.get(shown.course.main[-1]) for c in shown.curves if c is not curve]
-    crowded = any(o is not None and -18 < o.y() - end.y() < 0 for o in others)
     painter.setFont(font(8, bold=bold))
     painter.setPen(colour)
-    room = QRectF(end.x() - 260, end.y() + (2 if crowded else -17), 260, 15)
-    painter.drawText(room, int(RIGHT), curve.name)
+    wide = min(QFontMetricsF(painter.font()).horizontalAdvance(curve.name), 260.0)
+    ends = [end, *_before_steps(curve, shown)]
+    rooms = [QRectF(at.x() - wide - 2, at.y() + dy, wide + 2, 14) for at in ends for dy in (-18, 5)]
+    room = min(rooms, key=lambda r: _crossings(r, shown))
+    shown_name = QFontMetricsF(painter.font()).elidedText(curve.name, Qt.TextElideMode.ElideRight, wide + 1)
+    painter.drawText(room, int(RIGHT), shown_name)
+
+
+def _before_steps(curve: Curve, shown: Shown) -> list[QPointF]:
+    """Ends of the long stretches of the main route, the last first: where else a name may stand."""
+    main = [s for s in curve.stretches if s.node in shown.course.main and len(s.points) == 2]
+    return [s.points[1] - QPointF(8, 0) for s in reversed(main) if s.points[1].x() - s.points[0].x() > 80]
+
+
+def _crossings(room: QRectF, shown: Shown) -> int:
+    """How much would run through a name here."""
+    limits, main = shown.drawing.limits, set(shown.course.main)
+    levels = [shown.axes.y(p) for p in (limits.low_percent, limits.high_percent)]
+    crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
+    inner = room.adjusted(2, 2, -2, -2)
+    for curve in shown.curves:
+        for stretch in curve.stretches:
+            if stretch.node in main:
+                pairs = zip(stretch.points, stretch.points[1:], strict=False)
+                crossed += sum(inner.intersects(_box(a, b)) for a, b in pairs)
+    return crossed
+
+
+def _box(a: QPointF, b: QPointF) -> QRectF:
+    return QRectF(a, b).normalized().adjusted(-0.5, -0.5, 0.5, 0.5)
 
 
 def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:
@@ -209,18 +235,27 @@ def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:
 
 
 def _paint_names(painter: QPainter, shown: Shown, palette: Palette) -> None:
-    """Names under the main route, the weightier first; one that would overlap is left out."""
+    """Names under the main route, the weightier first; one for which there is no room is left out."""
     taken: list[tuple[float, float]] = []
     y = shown.axes.room.bottom() + 16
     for text, x, strong in _names(shown):
         painter.setFont(font(8, bold=strong))
         wide = QFontMetricsF(painter.font()).horizontalAdvance(text)
-        left = min(max(x - wide / 2, 2.0), shown.axes.room.right() + 14 - wide)
-        if any(left < b + 6 and left + wide > a - 6 for a, b in taken):
+        left = _free(x - wide / 2, wide, taken, shown.axes.room.right() + 20)
+        if left is None:
             continue
         taken.append((left, left + wide))
         painter.setPen(palette.ink if strong else palette.soft)
         painter.drawText(QRectF(left, y - 8, wide + 2, 15), int(LEFT), text)
+
+
+def _free(left: float, wide: float, taken: list[tuple[float, float]], right: float) -> float | None:
+    """The place nearest to where a name belongs that no other has taken, not far from it."""
+    for shift in (0, -8, 8, -14, 14, -20, 20):
+        at = min(max(left + shift, 2.0), right - wide)
+        if all(at >= b + 6 or at + wide <= a - 6 for a, b in taken):
+            return at
+    return None
 
 
 def _names(shown: Shown) -> list[tuple[str, float, bool]]:

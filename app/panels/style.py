@@ -18,9 +18,7 @@ ROLES = (
     "refusal",  # why an edit was refused
     "tapped",  # what a tap does
     "box",  # the white box of a field; `state` says refused, tap or nothing
-    "chip",  # a loading case
     "link",  # a button without a box
-    "tile",  # a part on the shelf
 )
 
 
@@ -128,7 +126,7 @@ QLineEdit, QPlainTextEdit, QSpinBox, QDoubleSpinBox {
 }
 QLineEdit:focus, QPlainTextEdit:focus, QSpinBox:focus, QDoubleSpinBox:focus { border-color: @FLOW; }
 QLineEdit[role="title"] {
-    background: transparent; border: 1px solid transparent; padding: 0 4px; margin-left: -5px;
+    background: transparent; border: 1px solid transparent; padding: 0 3px; placeholder-text-color: @INK;
 }
 QLineEdit[role="title"]:hover { border-color: @EDGE; background: @FIELD; }
 QLineEdit[role="title"]:focus { border-color: @FLOW; background: @FIELD; }
@@ -142,7 +140,7 @@ QComboBox QAbstractItemView, QListView, QListWidget {
     selection-background-color: @WASH; selection-color: @INK;
 }
 QListWidget[role="list"], QListView[role="list"] { background: transparent; border: none; }
-QListWidget::item { padding: 3px 6px; border-radius: 4px; }
+QListWidget::item { padding: 1px 4px; border-radius: 4px; }
 QListWidget::item:hover { background: @HOVER; }
 QListWidget::item:selected { background: @CHOSEN; color: @INK; }
 
@@ -156,14 +154,6 @@ QPushButton:pressed { background: @PRESSED; }
 QPushButton:focus { border-color: @FLOW; }
 QPushButton:default { border-color: @INK; }
 QPushButton:disabled, QCheckBox:disabled, QLineEdit:disabled { color: @MUTED; }
-QPushButton[role="chip"] {
-    background: transparent; border: 1px solid @FAINT; border-radius: 13px; padding: 4px 12px; color: @SOFT;
-}
-QPushButton[role="chip"]:hover { color: @INK; background: @HOVER; }
-QPushButton[role="chip"]:checked {
-    background: @FIELD; border: 1px solid @INK; color: @INK; font-weight: bold;
-}
-QPushButton[role="chip"]:focus { border-color: @FLOW; }
 QPushButton[role="link"], QToolButton[role="link"] {
     background: transparent; border: 1px solid transparent; border-radius: 4px; padding: 2px 4px;
     color: @SOFT; text-align: left;

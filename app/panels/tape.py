@@ -113,9 +113,9 @@ class LossTape(QWidget):
         paint_tape(QPainter(self), self.width(), shown, self._theme.palette)
 
     def _why_empty(self) -> str:
-        if self._solving.problem is not None:
-            return "no figures: not solved"
-        return "draw a supply and a load to see it" if not self._solving.stale else ""
+        if not self._session.drawing.elements:
+            return "draw a supply and a load to see it"
+        return "no figures: not solved" if self._solving.problem is not None else ""
 
     # -- hand and keys --------------------------------------------------------------------------
     def piece_at(self, point: QPointF) -> Piece | None:

@@ -7,8 +7,8 @@ from app.model.kinds import Generator, Line, Load, Transformer
 from app.study.outcome import Outcome
 
 FACTORS = tuple(m * 10**k for k in range(5) for m in (1, 2, 4, 5))
-SMALLEST_PX = 34.0  # a piece narrower than this joins the others
-LOSS_SHARE = 0.27  # of the tape's width, for the losses drawn larger
+SMALLEST_PX = 9.0  # a piece narrower than this joins the others
+LOSS_SHARE = 0.30  # of the tape's width, for the losses drawn larger
 GAP = 2.0
 FAN = 26.0  # between the bar and the losses drawn larger
 
@@ -64,8 +64,8 @@ def _factor(share: float) -> int:
     """The largest round factor at which the losses still leave the loads most of the tape."""
     if share <= 0:
         return 1
-    most = LOSS_SHARE / share
-    fitting = [f for f in FACTORS if f * (1 - LOSS_SHARE) <= most]
+    most = LOSS_SHARE / (1 - LOSS_SHARE) / share
+    fitting = [f for f in FACTORS if f <= most]
     return fitting[-1] if fitting else 1
 
 
@@ -77,7 +77,7 @@ def _lay(pieces: list[Piece], left: float, scale: float) -> tuple[Piece, ...]:
         alike = [p for p in pieces if p.what == kind]
         large = [p for p in alike if p.kw * scale >= SMALLEST_PX]
         small = [p for p in alike if p.kw * scale < SMALLEST_PX]
-        if len(small) == 1 or (small and not large and len(small) <= 3):
+        if len(small) == 1:
             large, small = large + small, []
         kept += large
         if small:

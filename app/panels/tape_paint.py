@@ -38,8 +38,8 @@ def colours(palette: Palette, stale: bool) -> dict[str, QColor]:
     """The ground of each kind of piece."""
     dark = palette.dark
     made = {
-        "load": mixed(palette.good, palette.panel, 0.34 if dark else 0.22),
-        "export": mixed(palette.flow, palette.panel, 0.40 if dark else 0.26),
+        "load": mixed(palette.good, palette.field, 0.34 if dark else 0.22),
+        "export": mixed(palette.flow, palette.field, 0.40 if dark else 0.24),
         "copper": mixed(palette.copper, palette.ink, 0.86) if dark else palette.copper,
         "iron": mixed(palette.iron, palette.ink, 0.62) if dark else palette.iron,
         "cable": mixed(palette.copper, palette.paper, 0.78)
@@ -98,7 +98,10 @@ def _paint_thread(painter: QPainter, shown: Shown, palette: Palette, grounds: di
     if cut.factor == 1 or not cut.losses:
         return
     left, wide = cut.thread
-    painter.fillRect(QRectF(left, BAR_TOP, wide, BAR), grounds["copper"])
+    lost, at = sum(p.kw for p in cut.losses), left
+    for piece in cut.losses:
+        painter.fillRect(QRectF(at, BAR_TOP, wide * piece.kw / lost, BAR), grounds[piece.what])
+        at += wide * piece.kw / lost
     first, last = cut.losses[0], cut.losses[-1]
     fan = QPolygonF(
         [
@@ -165,7 +168,7 @@ def _label(painter: QPainter, piece: Piece, room: QRectF, palette: Palette, stal
     space = room.width() - 2 * inset + 3
     size = power(piece.kw) if light else _bare(piece.kw)
     metrics = QFontMetricsF(font(8.5, bold=True))
-    for text in (f"{piece.name} {size}", size.split(" ")[0], piece.name):
+    for text in (f"{piece.name} {size}", piece.name, size.split(" ")[0]):
         if metrics.horizontalAdvance(text) <= space:
             painter.setFont(font(8.5, bold=True))
             ink = palette.ink if light else (palette.paper if palette.dark else QColor("#FFFFFF"))

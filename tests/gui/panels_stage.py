@@ -2,7 +2,9 @@
 
 from dataclasses import dataclass
 
-from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QKeyEvent
+from PySide6.QtWidgets import QApplication, QHBoxLayout, QVBoxLayout, QWidget
 
 from app.canvas.theme import Theme
 from app.live.attention import Attention
@@ -103,3 +105,10 @@ def stage(qtbot, drawing: Drawing, size: tuple[int, int] = (1200, 760), look: st
     window.show()
     qtbot.waitExposed(window)
     return made
+
+
+def type_text(widget: QWidget, text: str) -> None:
+    """Key presses that carry these letters; QTest knows only those of a plain keyboard."""
+    for letter in text:
+        for kind in (QKeyEvent.Type.KeyPress, QKeyEvent.Type.KeyRelease):
+            QApplication.sendEvent(widget, QKeyEvent(kind, 0, Qt.KeyboardModifier.NoModifier, letter))

@@ -1,0 +1,168 @@
+"""The bottom line and the head: verdicts, folding out, assumed values, unsolved layouts, cases."""
+
+import pytest
+from panels_stage import ONE, TWO, fernhollow, stage
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QListWidget
+
+from app.model import edits
+from app.model.drawing import Limits
+from app.model.kinds import Load
+from app.study.outcome import Verdict
+
+
+@pytest.fixture
+def set_up(qtbot):
+    made = stage(qtbot, fernhollow(ONE))
+    yield made
+    made.solving.stop()
+
+
+def failing(set_up) -> None:
+    set_up.session.edit("Limits", lambda d: edits.set_limits(d, low_percent=99.0))
+    set_up.solving.settle()
+
+
+def click_item(listed: QListWidget, row: int) -> None:
+    listed.scrollToItem(listed.item(row))
+    spot = listed.visualItemRect(listed.item(row)).center()
+    QTest.mouseClick(listed.viewport(), Qt.MouseButton.LeftButton, pos=spot)
+
+
+def test_checks_that_hold_are_counted_and_the_tightest_told(set_up):
+    bar = set_up.findings
+    assert bar.headline.text().startswith("11 checks hold")
+    assert bar.sentence.text().startswith("Tightest: ")
+
+
+def test_failing_checks_come_first(set_up):
+    failing(set_up)
+    bar = set_up.findings
+    count = sum(f.verdict is Verdict.FAILS for f in set_up.solving.outcome.findings)
+    assert count > 1
+    assert bar.headline.text() == f"{count} checks fail."
+    assert bar.mark.verdict is Verdict.FAILS
+    assert "99" in bar.sentence.text()
+
+
+def test_clicking_the_sentence_selects_the_element(set_up):
+    sought = []
+    set_up.findings.sought.connect(sought.append)
+    failing(set_up)
+    QTest.mouseClick(set_up.findings.sentence, Qt.MouseButton.LeftButton)
+    assert set_up.attention.selection == set(sought[0])
+    assert set_up.attention.selection <= set(set_up.drawing.elements)
+
+
+def test_the_list_folds_out_and_a_click_selects(set_up):
+    failing(set_up)
+    bar = set_up.findings
+    QTest.mouseClick(bar.unfold, Qt.MouseButton.LeftButton)
+    assert bar.fold_out.isVisible()
+    assert bar.list.count() == len(set_up.solving.outcome.findings)
+    wanted = next(k for k in range(bar.list.count()) if "HS" in bar.list.item(k).text())
+    click_item(bar.list, wanted)
+    assert set_up.attention.selection == {"B2"}
+    QTest.mouseClick(bar.unfold, Qt.MouseButton.LeftButton)
+    assert not bar.fold_out.isVisible()
+
+
+def test_assumed_values_are_listed_and_can_be_taken_as_given(set_up):
+    bar, before = set_up.findings, len(set_up.solving.outcome.assumptions)
+    assert bar.assumed.text() == f"{before} assumed values to confirm"
+    wanted = []
+    bar.field_sought.connect(lambda id, field: wanted.append((id, field)))
+    QTest.mouseClick(bar.assumed, Qt.MouseButton.LeftButton)
+    assert bar.list.count() == before
+    row = next(k for k in range(before) if "No-load current" in bar.list.item(k).text())
+    assert bar.list.item(row).text().startswith("T2: No-load current i0 is taken as 0.8 %")
+    click_item(bar.list, row)
+    assert wanted == [("T2", "no_load_current_percent")]
+    QTest.mouseClick(bar.confirm, Qt.MouseButton.LeftButton)
+    set_up.solving.settle()
+    assert set_up.drawing.elements["T2"].no_load_current_percent == 0.8
+    assert bar.assumed.text() == f"{before - 1} assumed values to confirm"
+    assert set_up.session.history.undoText() == "No-load current i0 of T2 taken as given"
+
+
+def test_no_operating_point_is_told_calmly(set_up):
+    figures = set_up.head.totals.figures()
+    set_up.session.edit("Load", lambda d: edits.change(d, "L2", demand_kva=5000.0))
+    set_up.solving.settle()
+    bar = set_up.findings
+    assert bar.headline.text() == "Not solved."
+    assert bar.mark.verdict is Verdict.BLOCKS
+    blamed = set_up.solving.problem.to_blame
+    assert blamed is not None
+    QTest.mouseClick(bar.sentence, Qt.MouseButton.LeftButton)
+    assert set_up.attention.selection == {blamed}
+    assert set_up.solving.stale
+    assert set_up.head.totals.figures() == figures  # the last good figures stay, grey
+    set_up.session.history.undo()
+    set_up.solving.settle()
+    assert bar.headline.text().startswith("11 checks hold")
+
+
+def test_an_invalid_layout_names_the_elements(set_up):
+    set_up.session.edit("Supply", lambda d: edits.put(d, {"S2": set_up.drawing.elements["S1"]}))
+    set_up.solving.settle()
+    assert set_up.findings.mark.verdict is Verdict.BLOCKS
+    assert set_up.findings.sentence.text()
+
+
+def test_what_is_told_stays_until_the_next_change(set_up):
+    set_up.findings.tell("Not <b>this</b>.")
+    assert set_up.findings.sentence.text() == "Not <b>this</b>."
+    assert set_up.findings.sentence.textFormat() == Qt.TextFormat.PlainText
+    set_up.session.edit("Load", lambda d: edits.put(d, {"L9": Load(node="B1")}))
+    assert set_up.findings.sentence.text() != "Not <b>this</b>."
+
+
+def test_a_name_that_looks_like_markup_stays_text_in_tooltips(set_up):
+    from app.panels.words import plain_tip
+
+    assert plain_tip("a & b") == "a & b"
+    assert "&lt;b&gt;" in plain_tip("<b>House</b>")
+
+
+def test_chips_show_cases_and_switch_them(qtbot):
+    made = stage(qtbot, fernhollow(TWO), size=(1440, 800))
+    chips = made.head.chips
+    assert [c.text() for c in chips.chips] == [c.name for c in TWO]
+    assert chips.chips[1].isVisible()
+    QTest.mouseClick(chips.chips[1], Qt.MouseButton.LeftButton)
+    assert made.attention.case == 1
+    night = made.head.totals.figures()
+    made.window.resize(700, 500)
+    qtbot.waitUntil(lambda: chips.menu_chip.isVisible())
+    assert not chips.chips[0].isVisible()
+    chips.menu_chip.menu().actions()[0].trigger()
+    assert made.attention.case == 0
+    assert made.head.totals.figures() != night
+    made.solving.stop()
+
+
+def test_one_case_needs_no_chips(set_up):
+    assert not any(c.isVisible() for c in set_up.head.chips.chips)
+
+
+def test_the_head_says_what_is_not_saved(set_up):
+    assert "not saved" not in set_up.head.about.text()
+    set_up.session.edit("Limits", lambda d: edits.set_limits(d, low_percent=95.0))
+    assert "not saved" in set_up.head.about.text()
+    set_up.session.history.setClean()
+    assert "not saved" not in set_up.head.about.text()
+
+
+@pytest.mark.parametrize("look", ["light", "dark"])
+def test_everything_paints_in_both_looks_and_small(qtbot, look):
+    made = stage(qtbot, fernhollow(TWO), size=(760, 500), look=look)
+    for ids in ((), ("T2",), ("C1",), ("B2",), ("L1", "L2"), ("S1", "T1")):
+        made.attention.select(ids)
+        assert not made.window.grab().isNull()
+    made.theme.wear("dark" if look == "light" else "light")
+    ground = made.window.grab().toImage().pixelColor(made.head.mapTo(made.window, made.head.rect().center()))
+    assert (ground.lightness() < 128) == (look == "light")
+    assert isinstance(made.drawing.limits, Limits)
+    made.solving.stop()
