@@ -32,7 +32,7 @@ class Formats:
 
     def of(self, **wanted: Any) -> Format:
         """The format with these properties over the plain one."""
-        properties = FONT | {"valign": "top"} | wanted
+        properties = FONT | {"valign": "vcenter"} | wanted
         key = tuple(sorted(properties.items()))
         if key not in self._made:
             self._made[key] = self._book.add_format(properties)

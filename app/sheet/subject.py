@@ -23,7 +23,7 @@ from solver.status import Status
 
 FAIL = "FAIL"
 HOLDS = "holds"
-CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=22))
+CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=24))
 
 
 class Subject:
