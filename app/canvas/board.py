@@ -1,6 +1,8 @@
 """The drawing board: the paper, tied to session, solution, attention and theme."""
 
-from PySide6.QtCore import QPointF, QRectF, Qt
+from collections.abc import Callable, Set
+
+from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
 
 from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem, Look
@@ -10,7 +12,7 @@ from app.canvas.ladder import TapLadder
 from app.canvas.node_item import NodeItem
 from app.canvas.paper import Paper, with_neighbours
 from app.canvas.placing import Taken, Wish, around, place
-from app.canvas.tag import Tag
+from app.canvas.tag import SMALLEST_ZOOM, Caption, Tag
 from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
@@ -19,6 +21,8 @@ from app.model.edits import Change
 from app.model.kinds import Branch, Transformer
 
 LADDER_GAP = 6.0
+REST_MS = 60  # figures out of sight are written once the hand has paused this long
+AGING_MS = 100  # figures go grey only where a solve takes longer than this; else every edit would flicker
 SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
 
 
@@ -32,11 +36,15 @@ class Board(Paper):
         self.session, self.solving, self.attention, self.theme = session, solving, attention, theme
         self.ladders: dict[str, TapLadder] = {}
         self._handles = Handles(self.look)
+        self._rest = QTimer(self, singleShot=True, interval=REST_MS)
+        self._rest.timeout.connect(self.write_rest)
+        self._aging = QTimer(self, singleShot=True, interval=AGING_MS)
+        self._aging.timeout.connect(self._grey)
         self.addItem(self._handles)
         session.changed.connect(self._follow)
         session.replaced.connect(self._start_over)
         solving.solved.connect(lambda _: self.refresh())
-        solving.went_stale.connect(self._grey)
+        solving.went_stale.connect(self._aging.start)
         attention.selected.connect(lambda _: self._light())
         attention.hovered.connect(lambda _: self._light())
         attention.case_shown.connect(lambda _: self.refresh())
@@ -77,12 +85,8 @@ class Board(Paper):
     def _follow(self, change: Change) -> None:
         drawing = self.session.drawing
         ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
-        grown = self.lay(drawing, ids)
-        if grown and self.solving.reference is not None:
-            self.widen(ids)
-        elif grown or change.rest:
-            small = len(drawing.elements) <= SMALL or change.rest
-            self.arrange(None if small else with_neighbours(drawing, change.ids))
+        if self.lay(drawing, ids):
+            self._fit_words(with_neighbours(drawing, frozenset(ids)))
         gone = self.attention.selection - drawing.elements.keys()
         if gone:
             self.attention.select(self.attention.selection - gone)
@@ -95,16 +99,38 @@ class Board(Paper):
         if outcome is None:
             return
         case = min(self.attention.case, len(outcome.cases) - 1)
-        grown = self.show_outcome(self.session.drawing, outcome, case, self.solving.reference)
-        if self.solving.reference is not None:
-            self.widen(grown)
-        elif grown:
-            self.arrange()
-            self._place_ladders()
+        shown = self.session.drawing, outcome, case, self.solving.reference
+        self._fit_words(self.show_outcome(*shown, self._seen()))
+        self._rest.start()
         for ladder in self.ladders.values():
             ladder.follow()
 
+    def write_rest(self) -> None:
+        """Write the figures that are out of sight."""
+        self._rest.stop()
+        self._fit_words(self.write_owed())
+
+    def _fit_words(self, grown: Set[str]) -> None:
+        """During a drag words grow where they stand; after it they look for better places."""
+        if not grown:
+            return
+        if self.solving.reference is not None:
+            self.widen(grown)
+        else:
+            self.arrange(grown if len(self.items_by_id) > SMALL else None)
+            self._place_ladders()
+
+    def _seen(self) -> Callable[[Caption], bool]:
+        """Whether words are in sight in any view; with no view all of them count as seen."""
+        views = [v for v in self.views() if v.isVisible()]
+        if not views:
+            return lambda _: True
+        near = [v for v in views if v.transform().m11() >= SMALLEST_ZOOM]
+        parts = [v.mapToScene(v.viewport().rect()).boundingRect() for v in near]
+        return lambda words: any(part.intersects(words.spot.box) for part in parts)
+
     def _grey(self) -> None:
+        self._aging.stop()
         if self.look.stale != self.solving.stale:
             self.look.stale = self.solving.stale
             self.update()

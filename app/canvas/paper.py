@@ -1,6 +1,6 @@
 """The drawing on paper: an item an element, with its words, from a drawing and an outcome."""
 
-from collections.abc import Container, Iterable, Iterator
+from collections.abc import Callable, Container, Iterable, Iterator
 from dataclasses import fields
 from itertools import chain
 from typing import Any
@@ -20,7 +20,7 @@ from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Node
-from app.study.outcome import BranchState, NodeState, Outcome, Table
+from app.study.outcome import Outcome, Table
 
 MARGIN = 300.0
 DOTS_FROM = 0.4  # zoom below which the grid is left out
@@ -35,6 +35,7 @@ class Paper(QGraphicsScene):
         self.items_by_id: dict[str, ElementItem] = {}
         self.captions: dict[str, Caption] = {}
         self.tags: dict[str, Tag | NodeFigures] = {}
+        self.owed: dict[str, tuple[Any, Any, gauge.Reading | None]] = {}  # id -> state, state before, reading
         self.setItemIndexMethod(QGraphicsScene.ItemIndexMethod.BspTreeIndex)
 
     # the drawing --------------------------------------------------------------------------------
@@ -81,6 +82,7 @@ class Paper(QGraphicsScene):
             self.addItem(self.tags[id])
 
     def _take_off(self, id: str) -> None:
+        self.owed.pop(id, None)
         for table in (self.items_by_id, self.captions, self.tags):
             if id in table:
                 self.removeItem(table.pop(id))
@@ -88,43 +90,51 @@ class Paper(QGraphicsScene):
     # the figures --------------------------------------------------------------------------------
 
     def show_outcome(
-        self, drawing: Drawing, outcome: Outcome, case: int, before: Outcome | None
-    ) -> list[str]:
-        """Write the figures of one case; the ids of those whose words need more room than they have."""
+        self,
+        drawing: Drawing,
+        outcome: Outcome,
+        case: int,
+        before: Outcome | None,
+        seen: Callable[[Caption], bool] = lambda _: True,
+    ) -> set[str]:
+        """Show one case: lines and symbols at once, words where they are seen, the rest by `write_owed`.
+
+        Returns the ids whose words need more room than they have."""
         worst = standing.standings(drawing, outcome, case)
-        was: dict[str, Any] = _rows(before.nodes, case) if before is not None else {}
         readings = _readings(drawing, outcome, case)
-        grown = []
-        for id, state in _rows(outcome.nodes, case).items():
-            stands = standing.of_row(state.live, id, worst)
-            if self._show_node(id, state, was.get(id), readings[id], stands):
-                grown.append(id)
-        was = _rows(before.branches, case) if before is not None else {}
-        for id, state in _rows(outcome.branches, case).items():
-            if self._show_branch(id, state, was.get(id), standing.of_row(state.live, id, worst)):
-                grown.append(id)
-        for id, hung in _rows(outcome.attachments, case).items():
-            if id in self.items_by_id:
-                self.items_by_id[id].stand(standing.of_row(hung.live, id, worst))
+        self.owed.clear()
+        for name in ("nodes", "branches", "attachments"):
+            was: dict[str, Any] = _rows(getattr(before, name), case) if before is not None else {}
+            for id, state in _rows(getattr(outcome, name), case).items():
+                if id in self.items_by_id:
+                    self._show(id, state, standing.of_row(state.live, id, worst))
+                    self.owed[id] = state, was.get(id), readings.get(id)
+        return self._write({id for id in self.owed if id in self.tags and seen(self.tags[id])})
+
+    def write_owed(self) -> set[str]:
+        """Write the words that were put off; the ids of those that need more room than they have."""
+        return self._write(self.owed.keys() & self.tags.keys())
+
+    def _show(self, id: str, state: Any, stands: Standing) -> None:
+        item = self.items_by_id[id]
+        item.stand(stands)
+        if isinstance(item, BranchItem):
+            item.show_flow(Flow.of(state.loading_percent, wording.sent_kw(state)[1] if state.live else None))
+
+    def _write(self, ids: set[str]) -> set[str]:
+        grown = set()
+        for id in ids:
+            state, was, reading = self.owed.pop(id)
+            item, tag = self.items_by_id[id], self.tags[id]
+            if isinstance(item, BranchItem):
+                lines = wording.branch_figures(state, item.angle, was)
+            else:
+                lines = wording.node_figures(state, was)
+            if isinstance(tag, NodeFigures):
+                tag.read(reading if state.live else None)
+            if tag.write(lines, item.standing):
+                grown.add(id)
         return grown
-
-    def _show_node(
-        self, id: str, state: NodeState, was: NodeState | None, reading: gauge.Reading, stands: Standing
-    ) -> bool:
-        item, figures = self.items_by_id.get(id), self.tags.get(id)
-        if item is None or not isinstance(figures, NodeFigures):
-            return False
-        item.stand(stands)
-        figures.read(reading if state.live else None)
-        return figures.write(wording.node_figures(state, was), stands)
-
-    def _show_branch(self, id: str, state: BranchState, was: BranchState | None, stands: Standing) -> bool:
-        item, tag = self.items_by_id.get(id), self.tags.get(id)
-        if not isinstance(item, BranchItem) or not isinstance(tag, Tag):
-            return False
-        item.stand(stands)
-        item.show_flow(Flow.of(state.loading_percent, wording.sent_kw(state)[1] if state.live else None))
-        return tag.write(wording.branch_figures(state, item.angle, was), stands)
 
     # where words go -----------------------------------------------------------------------------
 
@@ -158,7 +168,7 @@ class Paper(QGraphicsScene):
             for id, item in self.items_by_id.items():
                 if isinstance(item, sort) and self.captions[id].lines:
                     yield Wish((id, "caption"), arrange.caption_spots(item, self.captions[id].room))
-        for sort in (BranchItem, NodeItem):
+        for sort in (NodeItem, BranchItem):
             for id, tag in self.tags.items():
                 item = self.items_by_id[id]
                 if isinstance(item, sort) and tag.lines:

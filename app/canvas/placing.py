@@ -10,6 +10,7 @@ from app.canvas.lettering import CENTRE, LEFT, RIGHT
 
 CELL = 80.0
 CLEAR = 3.0  # kept free around everything
+SHARES = (0.5, 0.44, 0.56, 0.38, 0.62, 0.3, 0.7, 0.22, 0.78)  # along a line, from its middle outwards
 AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
 
 
@@ -106,7 +107,7 @@ def beside(points: list[QPointF], core: float, width: float, height: float, firs
         for nth, (a, b) in enumerate(runs):
             level = abs(b.x() - a.x()) >= abs(b.y() - a.y())
             sides = first + flip if level else "rl" if first == "b" else "lr"
-            for share in (0.5, 0.36, 0.64, 0.22, 0.78):
+            for share in SHARES:
                 at = a + (b - a) * share
                 off = _length(a, b) * abs(share - 0.5)
                 reach = core if nth == 0 and off < core + (width if level else height) / 2 else 4.0

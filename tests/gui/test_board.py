@@ -147,15 +147,33 @@ def test_a_drag_shows_changes_since_it_began_and_nothing_jumps(bench):
     assert "▼" not in one.board.tags["HS"].text
 
 
-def test_stale_figures_look_grey(bench):
+def test_stale_figures_look_grey(bench, qtbot):
     one = bench(FERNHOLLOW)
     fresh = one.image()
-    one.session.edit("edit", lambda d: edits.change(d, "L1", demand_kva=13.0))
-    assert one.board.look.stale
-    grey = one.image()
-    assert grey != fresh
+    one.session.edit("edit", lambda d: edits.change(d, "L1", note="of no consequence"))
+    one.solving.stop()  # as if the solve took its time
+    qtbot.waitUntil(lambda: one.board.look.stale)
+    assert one.image() != fresh
     one.solving.settle_solve()
     assert not one.board.look.stale
+    assert one.image() == fresh
+
+
+def test_figures_out_of_sight_are_written_a_little_later(bench, qapp, qtbot):
+    one = bench(FERNHOLLOW)
+    view = QGraphicsView(one.board)
+    qtbot.addWidget(view)
+    view.resize(300, 200)
+    view.show()
+    qtbot.waitExposed(view)
+    view.centerOn(node_point(FERNHOLLOW.elements["GH"]))
+    old = one.board.tags["GH"].text, one.board.tags["HS"].text
+    one.solve(seed=9)
+    assert one.board.tags["GH"].text != old[0]
+    assert one.board.tags["HS"].text == old[1]
+    qtbot.waitUntil(lambda: one.board.tags["HS"].text != old[1])
+    node = one.solving.outcome.nodes.at("HS", 0)
+    assert one.board.tags["HS"].text.startswith(f"{node.voltage_v:.1f} V")
 
 
 def test_states_differ_by_shape_as_well_as_colour(bench):
