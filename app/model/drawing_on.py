@@ -168,7 +168,7 @@ def split_branch(drawing: Drawing, branch_id: str, x: float, y: float, share: fl
     if not isinstance(one, Line):
         raise EditRefused(f"{called(branch_id, one)}: cannot be parted, allowed is a cable or overhead line.")
     path = [_spot(drawing, one.start), *one.via, _spot(drawing, one.end)]
-    drawn, before = _nearest(path, (x, y))
+    drawn, before = _nearest(path, (x, y)) if one.via else (_squarely(path[0], (x, y), path[1]), 0)
     cut = min(max(drawn if share is None else share, 0.0), 1.0)
     joint = Joint(x=float(x), y=float(y))
     node = fresh_id(drawing.elements, joint)
@@ -177,6 +177,13 @@ def split_branch(drawing: Drawing, branch_id: str, x: float, y: float, share: fl
     far = replace(one, start=node, via=one.via[before:], length_m=one.length_m - first, name="")
     fresh = {node: joint, branch_id: near, fresh_id(drawing.elements, far): far}
     return put(drawing, fresh)
+
+
+def _squarely(start: Point, spot: Point, end: Point) -> float:
+    """How far along a line without bends, which is drawn square, a spot lies."""
+    before = abs(spot[0] - start[0]) + abs(spot[1] - start[1])
+    after = abs(end[0] - spot[0]) + abs(end[1] - spot[1])
+    return before / (before + after) if before + after else 0.5
 
 
 def _spot(drawing: Drawing, node: str) -> Point:

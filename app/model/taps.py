@@ -4,14 +4,12 @@ A notch above nameplate (+) raises the rated voltage of the tapped winding. On w
 the voltage of winding 2, on winding 2 it raises it: the words always say which.
 """
 
-import re
-
 import msgspec
 
 from app.model.figures import MINUS
 from app.model.kinds import Transformer
+from solver.transformer import GROUP, clock
 
-_GROUP = re.compile(r"(D|YN|Y|ZN|Z|I)(d|yn|y|zn|z|i)(1[01]|[0-9])")
 GROUP_ALLOWED = (
     "winding 1 in capitals, winding 2 in small letters and a clock number, such as Dyn11, YNd1 or Ii0"
 )
@@ -66,16 +64,13 @@ def _percent(t: Transformer, notch: int) -> str:
 
 def group(written: str) -> tuple[str, str, int] | None:
     """Connection of winding 1, of winding 2 and clock number (IEC 60076-1 notation), or None."""
-    found = _GROUP.fullmatch(written.strip())
+    found = GROUP.fullmatch(written)
     if found is None:
         return None
-    one, two, clock = found[1], found[2], int(found[3])
-    if (one == "I") != (two == "i"):
+    try:
+        return found[1], found[2], clock(written)
+    except ValueError:
         return None
-    if one == "I":
-        return (one, two, clock) if clock in (0, 6) else None
-    odd = (one[0] == "Y") != (two[0] == "y")
-    return (one, two, clock) if clock % 2 == odd else None
 
 
 def turned_group(written: str) -> str:

@@ -167,6 +167,16 @@ def test_symbols_are_bounded(yard):
         edits.set_symbol(kept, "P7", SYMBOL)
 
 
+def test_parts_are_renamed(yard):
+    kept = edits.keep_part(yard, "T2", "Mine")
+    renamed = edits.rename_part(kept, "P1", " Pole ")
+    assert renamed.parts["P1"].name == "Pole"
+    assert renamed.elements == kept.elements
+    for name, words in ((" ", "is blank"), ("x" * 81, "81 characters")):
+        with pytest.raises(EditRefused, match=words):
+            edits.rename_part(kept, "P1", name)
+
+
 def test_forgetting_a_part_leaves_what_was_made_from_it(yard):
     kept = edits.keep_part(yard, "T2", "Mine")
     assert edits.forget_part(kept, "P1") == yard

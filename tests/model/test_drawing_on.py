@@ -132,6 +132,16 @@ def test_a_joint_on_a_line_shares_out_its_length(yard):
     assert rest.name == ""
 
 
+def test_a_line_without_bends_is_shared_out_along_its_square_run(yard):
+    square = edits.reroute(yard, "C1", ())
+    for spot, length in (
+        ((35.0, 0.0), 120 * 5 / 16),
+        ((40.0, 3.0), 120 * 13 / 16),
+        ((30.0, 6.0), 120 * 6 / 16),
+    ):
+        assert edits.split_branch(square, "C1", *spot).elements["C1"].length_m == pytest.approx(length)
+
+
 def test_the_share_may_be_given_and_only_lines_part(yard):
     made = edits.split_branch(yard, "C1", 0, 0, share=0.25)
     assert made.elements["C1"].length_m == 30.0

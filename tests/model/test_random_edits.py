@@ -18,6 +18,18 @@ shares = st.floats(0, 1)
 odd = st.floats() | st.integers(-100, 100) | st.booleans() | st.text(max_size=5) | st.none()
 
 
+def drawn_on() -> Drawing:
+    """One of every kind, each with a node or two of its own, joined up by cables."""
+    drawing = Drawing()
+    for number, part in enumerate(PARTS):
+        drawing = edits.drop(drawing, part.element, 0, 5 * number)
+    nodes = list(drawing.nodes())
+    for one, other in zip(nodes, nodes[1:], strict=False):
+        if not {(one, other), (other, one)} & {(b.start, b.end) for b in drawing.branches().values()}:
+            drawing = edits.extend(drawing, one, PARTS[3].element, 0, 0, to_node=other)
+    return edits.keep_part(drawing, "T1", "Mine")
+
+
 @st.composite
 def an_edit(draw, drawing: Drawing):
     """One edit with arguments that mostly make sense."""
@@ -61,7 +73,7 @@ def an_edit(draw, drawing: Drawing):
 @settings(max_examples=60, deadline=None)
 @given(st.data())
 def test_any_sequence_of_edits_keeps_the_drawing_whole(data):
-    drawing, history = Drawing(), []
+    drawing, history = data.draw(st.sampled_from([Drawing(), drawn_on()])), []
     for _ in range(data.draw(st.integers(1, 14))):
         edit = data.draw(an_edit(drawing))
         before = encode(drawing)
