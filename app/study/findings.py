@@ -14,6 +14,7 @@ from app.study.words import tell
 
 NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
+LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
 
 
@@ -66,11 +67,10 @@ def judge(
     ]
     if limits.drop_percent is not None:
         checks.append(_drop(drawing, nodes, limits.drop_percent))
-    checks.append(_loading(drawing, branches, limits.loading_percent))
     found: list[Finding] = []
     for check in checks:
         found += findings_of(check, whose, cases)
-    return found
+    return found + findings_of(_loading(drawing, branches, limits.loading_percent), LOADING, cases)
 
 
 def _voltage(drawing: Drawing, nodes: Table[NodeState], limit: float, low: bool) -> Check:
