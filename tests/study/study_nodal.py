@@ -1,0 +1,164 @@
+"""An independent nodal solution of a drawing: line volts and whole powers, solved with SciPy.
+
+It reads the drawing itself, node by node, and shares no formula and no row with app.study or solver.
+"""
+
+import cmath
+import math
+
+import numpy as np
+from scipy.optimize import root
+
+from app.model import assumed
+from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Node, Supply, Switch, Transformer
+
+ALPHA = {"Cu": 0.00393, "Al": 0.00403}
+
+
+class Nodal:
+    """The nodes that a supply reaches, zero-impedance switches merged, one loading case."""
+
+    def __init__(self, drawing, case=0):
+        self.drawing, self.case = drawing, drawing.cases[case]
+        elements = drawing.elements
+        self.nodes = [i for i, e in elements.items() if isinstance(e, Node)]
+        self.branches = {i: e for i, e in elements.items() if isinstance(e, Branch)}
+        self.supplies = {i: e for i, e in elements.items() if isinstance(e, Supply)}
+        self.merged = {i: i for i in self.nodes}
+        for e in self.branches.values():
+            if isinstance(e, Switch) and e.closed:
+                self.merged[self.find(e.start)] = self.find(e.end)
+        self.nominal, self.wires, self.fed_end = {}, {}, {}
+        self._walk()
+        self.places = sorted({self.find(i) for i in self.nominal})
+        self.at = {p: k for k, p in enumerate(self.places)}
+        self.held = {}
+        for s in self.supplies.values():
+            volts = s.nominal_v * s.held_percent * self.case.supply_percent / 1e4
+            self.held[self.at[self.find(s.node)]] = cmath.rect(volts, math.radians(s.angle_deg))
+        self._build()
+
+    def find(self, node):
+        while self.merged[node] != node:
+            node = self.merged[node]
+        return node
+
+    def _walk(self):
+        """Spread nominal volts and wires from the supplies; note from which end transformers are fed."""
+        waiting = []
+        for s in self.supplies.values():
+            self.nominal[s.node], self.wires[s.node] = s.nominal_v, s.wires
+            waiting.append(s.node)
+        while waiting:
+            here = waiting.pop()
+            for i, e in self.branches.items():
+                if here not in (e.start, e.end) or (isinstance(e, Switch) and not e.closed):
+                    continue
+                there = e.end if here == e.start else e.start
+                if there in self.nominal:
+                    continue
+                level = self.nominal[here]
+                if isinstance(e, Transformer):
+                    self.fed_end[i] = "start" if here == e.start else "end"
+                    level = e.v2_v if here == e.start else e.v1_v
+                self.nominal[there], self.wires[there] = level, self.wires[here]
+                waiting.append(there)
+        for i in list(self.nominal):
+            stated = self.drawing.elements[i].nominal_v
+            if stated is not None:
+                self.nominal[i] = stated
+
+    def _build(self):
+        self.y = np.zeros((len(self.places),) * 2, dtype=complex)
+        self.stamps = {}
+        for i, e in self.branches.items():
+            if e.start not in self.nominal or isinstance(e, Switch):
+                continue
+            stamp = self._line(e) if isinstance(e, Line) else self._transformer(i, e)
+            ends = [self.at[self.find(e.start)], self.at[self.find(e.end)]]
+            self.y[np.ix_(ends, ends)] += stamp
+            self.stamps[i] = (ends, stamp)
+
+    def _line(self, e):
+        km, out_and_back = e.length_m / 1000, 2 if self.wires[e.start] == "two-wire" else 1
+        r = e.r20_ohm_per_km * (1 + ALPHA[e.conductor] * (assumed.value(e, "temperature_degc") - 20))
+        y = e.parallel / (complex(r, e.x_ohm_per_km) * km * out_and_back)
+        c = assumed.value(e, "c_uf_per_km") * 1e-6 * km * e.parallel / out_and_back
+        half = 1j * math.pi * self.drawing.frequency_hz * c
+        return np.array([[y + half, -y], [-y, y + half]])
+
+    def _transformer(self, i, e):
+        tap = 1 + e.tap * e.tap_step_percent / 100
+        v1 = e.v1_v * (tap if e.tapped == "winding 1" else 1)
+        v2 = e.v2_v * (tap if e.tapped == "winding 2" else 1)
+        clock = int("".join(c for c in e.vector_group if c.isdigit()))
+        a = v1 / v2 * cmath.exp(1j * math.radians(30 * clock))
+        s, pk = e.rating_kva * 1e3, assumed.value(e, "load_loss_w")
+        size = e.uk_percent / 100 * v2**2 / s
+        r = pk * v2**2 / s**2
+        y = e.parallel / complex(r, math.sqrt(size**2 - r**2))
+        p0, i0 = assumed.value(e, "no_load_loss_w"), assumed.value(e, "no_load_current_percent")
+        quiet = e.parallel * complex(p0, -math.sqrt((i0 / 100 * s) ** 2 - p0**2))
+        stamp = np.array([[y / abs(a) ** 2, -y / a.conjugate()], [-y / a, y]])
+        if self.fed_end[i] == "start":
+            stamp[0, 0] += quiet / v1**2
+        else:
+            stamp[1, 1] += quiet / v2**2
+        return stamp
+
+    def drawn(self, voltage):
+        """Current drawn at each place, as conj(S / U) with whole power and line volts."""
+        current = np.zeros(len(self.places), dtype=complex)
+        for e in self.drawing.elements.values():
+            if getattr(e, "node", None) in self.nominal and isinstance(e, Load | Generator | Capacitor):
+                k = self.at[self.find(e.node)]
+                current[k] += (self.power(e, voltage[k]) / voltage[k]).conjugate()
+        return current
+
+    def power(self, e, volts):
+        """Whole power drawn by one attachment at a voltage, VA."""
+        nominal = self.nominal[e.node]
+        if isinstance(e, Capacitor):
+            rated = nominal if e.rated_v is None else e.rated_v
+            return -1j * e.rating_kvar * 1e3 * (abs(volts) / rated) ** 2 * e.connected
+        if isinstance(e, Generator):
+            return -complex(e.output_kw, e.output_kvar) * 1e3 * self.case.generation_percent / 100
+        kva = e.demand_kva if e.demand_kva is not None else e.demand_kw / e.power_factor
+        phi = math.acos(e.power_factor) * (-1 if e.leading else 1)
+        whole = cmath.rect(kva * 1e3 * self.case.load_percent / 100, phi)
+        i, z = (e.constant_current_percent or 0) / 100, (e.constant_impedance_percent or 0) / 100
+        level = abs(volts) / (e.reference_v or nominal)
+        return whole * (1 - i - z + i * level + z * level**2)
+
+    def solve(self):
+        """Line volts of every live node, complex."""
+        held = list(self.held)
+        free = [k for k in range(len(self.places)) if k not in self.held]
+        voltage = np.zeros(len(self.places), dtype=complex)
+        voltage[held] = [self.held[k] for k in held]
+        inner = self.y[np.ix_(free, free)]
+        pushed = self.y[np.ix_(free, held)] @ voltage[held]
+        start = np.linalg.solve(inner, -pushed)
+        size = np.abs(start)
+
+        def gap(x):
+            voltage[free] = (x[: len(free)] + 1j * x[len(free) :]) * size
+            miss = np.linalg.solve(inner, pushed + self.drawn(voltage)[free]) / size + voltage[free] / size
+            return np.concatenate([miss.real, miss.imag])
+
+        first = start / size
+        found = root(gap, np.concatenate([first.real, first.imag]), method="hybr", tol=1e-14)
+        assert np.abs(gap(found.x)).max() < 1e-12
+        self.voltage = voltage
+        return {i: voltage[self.at[self.find(i)]] for i in self.nominal}
+
+    def branch_power(self, i):
+        """Power that enters a branch at its start and at its end, VA."""
+        ends, stamp = self.stamps[i]
+        volts = self.voltage[ends]
+        return volts * np.conj(stamp @ volts)
+
+    def supplied(self):
+        """Power of all supplies, VA."""
+        total = self.y @ self.voltage + self.drawn(self.voltage)
+        return sum(self.voltage[k] * total[k].conjugate() for k in self.held)
