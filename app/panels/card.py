@@ -84,12 +84,12 @@ class Card(QScrollArea):
         play(self, "panel")
 
     def _listen(self) -> None:
-        self._session.changed.connect(lambda _change: self.refresh())
+        self._session.changed.connect(self.refresh)
         self._session.replaced.connect(self._turn)
-        self._solving.solved.connect(lambda _outcome: self._show_results())
+        self._solving.solved.connect(self._show_results)
         self._solving.went_stale.connect(self._show_results)
-        self._attention.selected.connect(lambda _ids: self._turn())
-        self._attention.case_shown.connect(lambda _case: self.refresh())
+        self._attention.selected.connect(self._turn)
+        self._attention.case_shown.connect(self.refresh)
         self._theme.changed.connect(self._redress)
         self.head.renamed.connect(self._rename)
 
@@ -216,7 +216,7 @@ class Card(QScrollArea):
 
     def _redress(self) -> None:
         self._show_head()
-        for widget in self.widget().findChildren(QWidget):
+        for widget in self.findChildren(QWidget):
             widget.update()
 
     # -- what is asked for ----------------------------------------------------------------------

@@ -1,5 +1,7 @@
 """The loading cases as chips, each with the mark of its worst finding; a menu where there is little room."""
 
+from functools import partial
+
 from PySide6.QtCore import QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QFontMetrics, QPainter, QPaintEvent, QPen
 from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QMenu, QPushButton, QSizePolicy, QWidget
@@ -9,6 +11,7 @@ from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
+from app.model.edits import Change
 from app.panels.boxes import chevron
 from app.panels.results import RANK
 from app.panels.style import mixed
@@ -81,10 +84,10 @@ class CaseChips(QWidget):
         self.chips: list[Chip] = []
         self.menu_chip = self._chip()
         self.menu_chip.setMenu(QMenu(self.menu_chip))
-        session.changed.connect(lambda _change: self.follow())
+        session.changed.connect(self._changed)
         session.replaced.connect(self.follow)
-        solving.solved.connect(lambda _outcome: self.follow())
-        attention.case_shown.connect(lambda _case: self.follow())
+        solving.solved.connect(self.follow)
+        attention.case_shown.connect(self.follow)
         theme.changed.connect(self.follow)
         self.follow()
 
@@ -95,6 +98,10 @@ class CaseChips(QWidget):
         chip = Chip(self._theme)
         self._across.insertWidget(self._across.count() - 1, chip)
         return chip
+
+    def _changed(self, change: Change) -> None:
+        if change.rest:
+            self.follow()
 
     def follow(self) -> None:
         """Show the cases as they stand."""
@@ -110,7 +117,7 @@ class CaseChips(QWidget):
         menu = self.menu_chip.menu()
         menu.clear()
         for k, name in enumerate(names):
-            menu.addAction(name.replace("&", "&&"), lambda c=k: self._attention.show_case(c))
+            menu.addAction(name.replace("&", "&&"), partial(self._attention.show_case, k))
         self._arrange()
 
     def _add(self, case: int) -> None:

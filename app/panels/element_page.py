@@ -1,5 +1,6 @@
 """The fields of one element, or of several of one kind at once."""
 
+from collections.abc import Sequence
 from functools import reduce
 from typing import Any
 
@@ -9,7 +10,7 @@ from app.live.session import Session
 from app.model import assumed, edits, units
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
-from app.model.kinds import KINDS, Element, Node, Transformer
+from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
 from app.model.levels import nominal_levels
 from app.panels.attempt import attempt
 from app.panels.element_words import step_text, subject
@@ -41,8 +42,7 @@ class ElementPage(Page):
 
     def _add(self, field: Field, page: Page) -> None:
         if field.name == "tap":
-            row: FieldRow = TapRow(field, self._take, self.theme)
-            row.step.connect(self._step)
+            row: FieldRow = self._tap_row(field)
         elif field.name == "demand_kva":
             row = DemandRow(field, fields_of(self.kind)["demand_kw"], self._take, self.theme)
         elif field.name == "demand_kw":
@@ -50,6 +50,11 @@ class ElementPage(Page):
         else:
             row = FieldRow(field, self._take, self.theme)
         page.add_row(field.name, row)
+
+    def _tap_row(self, field: Field) -> TapRow:
+        row = TapRow(field, self._take, self.theme)
+        row.step.connect(self._step)
+        return row
 
     def show_ids(self, ids: tuple[str, ...]) -> None:
         """Show these elements."""
@@ -73,7 +78,7 @@ class ElementPage(Page):
             if isinstance(row, TapRow):
                 row.show_transformers(elements)
 
-    def _show(self, row: FieldRow, name: str, elements: list[Element], stand_ins: dict[str, Any]) -> None:
+    def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
         values = [getattr(element, name) for element in elements]
         value, field = values[0], row.field
         if any(other != value for other in values[1:]):
@@ -120,7 +125,9 @@ class ElementPage(Page):
         def change(drawing: Drawing) -> Drawing:
             made = drawing
             for id in ids:
-                made = edits.set_tap(made, id, drawing.elements[id].tap + notches)
+                one = drawing.elements[id]
+                assert isinstance(one, Transformer)
+                made = edits.set_tap(made, id, one.tap + notches)
             return made
 
         def name(after: Drawing) -> str:
@@ -133,8 +140,8 @@ class ElementPage(Page):
 
 def nominal(drawing: Drawing, id: str) -> float:
     """Nominal volts where an attachment stands, as far as they are known."""
-    node = getattr(drawing.elements[id], "node", id)
-    level = nominal_levels(drawing).get(node)
+    element = drawing.elements[id]
+    level = nominal_levels(drawing).get(element.node) if isinstance(element, Attachment) else None
     return level.volts if level else float("nan")
 
 

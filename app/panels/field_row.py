@@ -94,7 +94,7 @@ class FieldRow(QWidget):
         return Box(self.editor, self.field.unit)
 
     def _lay_out(self) -> None:
-        grid = QGridLayout(self)
+        self.grid = grid = QGridLayout(self)
         grid.setContentsMargins(0, 0, 0, 0)
         grid.setHorizontalSpacing(2)
         grid.setVerticalSpacing(2)

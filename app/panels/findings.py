@@ -1,6 +1,7 @@
 """The bottom line: whether the checks hold, the tightest one, and what is assumed; folds out to the lists."""
 
 from PySide6.QtCore import Qt, QTimer, Signal
+from PySide6.QtGui import QColor
 from PySide6.QtWidgets import (
     QHBoxLayout,
     QListWidget,
@@ -49,16 +50,17 @@ class FindingsBar(QWidget):
         self._session, self._solving, self._attention, self._theme = session, solving, attention, theme
         self._line = Line(Verdict.NOTE, "", "")
         self._told = ""
+        self._ink: QColor | None = None
         self.folded_out = ""  # "", "findings" or "assumed"
         play(self, "panel")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
         self._forget_told = QTimer(self, singleShot=True, interval=TOLD_MS)
-        self._forget_told.timeout.connect(lambda: self.tell(""))
+        self._forget_told.timeout.connect(self._changed)
         self._build()
-        session.changed.connect(lambda _change: self._changed())
+        session.changed.connect(self._changed)
         session.replaced.connect(self._changed)
-        solving.solved.connect(lambda _outcome: self._follow())
+        solving.solved.connect(self._follow)
         solving.went_stale.connect(self._follow)
         theme.changed.connect(self._follow)
         self._follow()
@@ -146,7 +148,9 @@ class FindingsBar(QWidget):
         ink = colour_of(self._line.verdict, self._theme.palette)
         if self._solving.stale and self._session.drawing.elements and not self._told:
             ink = self._theme.palette.soft
-        self.headline.setStyleSheet(f"color: {ink.name()};")
+        if ink != self._ink:
+            self._ink = ink
+            self.headline.setStyleSheet(f"color: {ink.name()};")
         self.sentence.say(self._line.sentence)
         outcome = self._newest
         count = len(outcome.assumptions) if outcome is not None else 0

@@ -41,9 +41,9 @@ class Head(QWidget):
         self.chips = CaseChips(session, solving, attention, theme)
         self.totals = Totals(solving, attention, theme)
         self._lay_out()
-        session.changed.connect(lambda _change: self._follow())
+        session.changed.connect(self._follow)
         session.replaced.connect(self._follow)
-        session.history.cleanChanged.connect(lambda _clean: self._follow())
+        session.history.cleanChanged.connect(self._follow)
         self._follow()
 
     def _lay_out(self) -> None:
@@ -85,9 +85,9 @@ class Totals(QWidget):
         self._solving, self._attention, self._theme = solving, attention, theme
         self.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Expanding)
         self.setAccessibleName("Totals")
-        solving.solved.connect(lambda _outcome: self._follow())
+        solving.solved.connect(self._follow)
         solving.went_stale.connect(self._follow)
-        attention.case_shown.connect(lambda _case: self._follow())
+        attention.case_shown.connect(self._follow)
         theme.changed.connect(self.update)
 
     def sizeHint(self) -> QSize:

@@ -14,6 +14,7 @@ from app.live.preferences import Preferences
 from app.live.session import Session
 from app.model import edits
 from app.model.drawing import Drawing, Part, Symbol, label
+from app.model.edits import Change
 from app.model.kinds import KIND_WORDS, LETTERS, kind_of
 from app.model.parts import builtin_parts
 from app.panels.attempt import attempt
@@ -44,7 +45,7 @@ class Shelf(QScrollArea):
         self.own_tiles: list[Tile] = []
         self._offered: list[Part] = []
         self._build()
-        session.changed.connect(lambda change: self._follow() if change.rest else None)
+        session.changed.connect(self._changed)
         session.replaced.connect(self._follow)
         self._follow()
         if self.own.trouble:
@@ -96,6 +97,10 @@ class Shelf(QScrollArea):
         return QSize(WIDTH, 120)
 
     # -- what is offered ------------------------------------------------------------------------
+    def _changed(self, change: Change) -> None:
+        if change.rest:
+            self._follow()
+
     def _follow(self) -> None:
         """Show the user's own parts as they stand."""
         offered = self.own.offered(self._session.drawing)

@@ -1,6 +1,7 @@
 """The rows that are more than a box: the tap with its steps and words, the demand with its unit."""
 
 from collections.abc import Sequence
+from functools import partial
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QHBoxLayout, QMenu, QToolButton, QWidget
@@ -25,7 +26,7 @@ class TapRow(FieldRow):
         self._percent = 0.0
         self.words = Sentence("tapped")
         self.words.setAlignment(Qt.AlignmentFlag.AlignRight)
-        self.layout().addWidget(self.words, 3, 0, 1, 3)
+        self.grid.addWidget(self.words, 3, 0, 1, 3)
         self.stress("tap")
 
     def _make_box(self) -> QWidget:
@@ -85,7 +86,7 @@ class DemandRow(FieldRow):
         self.unit.setFocusPolicy(Qt.FocusPolicy.TabFocus)
         menu = QMenu(self.unit)
         for unit in self._fields:
-            menu.addAction(unit, lambda u=unit: self._turn_to(u))
+            menu.addAction(unit, partial(self._turn_to, unit))
         self.unit.setMenu(menu)
         return Box(self.editor, self.unit)
 

@@ -3,7 +3,7 @@
 import math
 
 from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
-from PySide6.QtGui import QKeyEvent, QMouseEvent, QPainter, QPaintEvent
+from PySide6.QtGui import QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent
 from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
 from app.canvas.palette import font
@@ -12,6 +12,7 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model.drawing import label
+from app.model.edits import Change
 from app.model.figures import length, percent, volts
 from app.model.kinds import Transformer
 from app.panels.results import tap_words
@@ -51,13 +52,13 @@ class VoltageStrip(QWidget):
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
         self.setAccessibleName("Voltage strip")
         self.setAccessibleDescription("Volts along the route. Up and down move the tap of the chosen step.")
-        session.changed.connect(lambda _change: self._follow())
+        session.changed.connect(self._changed)
         session.replaced.connect(self._follow)
-        solving.solved.connect(lambda _outcome: self._follow())
+        solving.solved.connect(self._follow)
         solving.went_stale.connect(self.update)
-        attention.selected.connect(lambda _ids: self._follow())
-        attention.hovered.connect(lambda _id: self.update())
-        attention.case_shown.connect(lambda _case: self._follow())
+        attention.selected.connect(self._follow)
+        attention.hovered.connect(self._look)
+        attention.case_shown.connect(self._follow)
         theme.changed.connect(self.update)
         self._follow()
 
@@ -77,6 +78,16 @@ class VoltageStrip(QWidget):
     def case(self) -> int:
         """The case shown."""
         return min(self._attention.case, len(self._outcome.cases) - 1) if self._outcome else 0
+
+    def _look(self) -> None:
+        self.update()
+
+    def _changed(self, change: Change) -> None:
+        """New figures come with the next outcome; only what is gone must go at once."""
+        if change.topology:
+            self._follow()
+        else:
+            self.update()
 
     def _follow(self) -> None:
         """Lay the curves out anew."""
@@ -219,7 +230,7 @@ class VoltageStrip(QWidget):
         return name
 
     def event(self, event: QEvent) -> bool:
-        if event.type() == QEvent.Type.ToolTip:
+        if isinstance(event, QHelpEvent) and event.type() == QEvent.Type.ToolTip:
             point = QPointF(event.pos())
             QToolTip.showText(
                 event.globalPos(), self.words(self._handle_at(point) or self._thing_at(point)), self

@@ -7,7 +7,7 @@ from PySide6.QtCore import QPointF, QRectF
 
 from app.model.drawing import Drawing, Limits
 from app.model.kinds import Transformer
-from app.panels.strip_course import Course, Stop
+from app.panels.strip_course import Course, Stop, column
 from app.study.outcome import Outcome
 
 STEP_PX = 46.0  # the breadth given to a transformer, which has no length
@@ -54,12 +54,10 @@ def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float
     """Percent range: the limits and every voltage, with a little air."""
     low, high = limits.low_percent, limits.high_percent
     for outcome in outcomes:
-        for id in course.stops:
-            if id in outcome.nodes:
-                for case in range(len(outcome.cases)):
-                    percent = outcome.nodes.at(id, case).percent
-                    if math.isfinite(percent):
-                        low, high = min(low, percent), max(high, percent)
+        for case in range(len(outcome.cases)):
+            percents = column(outcome.nodes, "percent", case)
+            known = [percents[i] for i in course.stops if math.isfinite(percents.get(i, math.nan))]
+            low, high = min([low, *known]), max([high, *known])
     air = max(high - low, LEAST_SPAN) * 0.07
     return low - air, high + air
 
@@ -76,31 +74,27 @@ class Stretch:
 def stretches(drawing: Drawing, outcome: Outcome, case: int, course: Course, axes: Axes) -> list[Stretch]:
     """Every branch that feeds a node, as a polyline; a transformer is a step."""
     made = []
+    spots = node_points(outcome, case, course, axes)
     for stop in course.stops.values():
-        before = course.stops.get(stop.parent)
-        if before is None or stop.id not in outcome.nodes or before.id not in outcome.nodes:
+        if stop.parent not in spots or stop.id not in spots:
             continue
-        here, there = outcome.nodes.at(before.id, case).percent, outcome.nodes.at(stop.id, case).percent
-        if not (math.isfinite(here) and math.isfinite(there)):
-            continue
-        a, b = QPointF(axes.x(before), axes.y(here)), QPointF(axes.x(stop), axes.y(there))
+        a, b = spots[stop.parent], spots[stop.id]
         if isinstance(drawing.elements.get(stop.feeder), Transformer):
             middle = (a.x() + b.x()) / 2
-            points = (a, QPointF(middle, a.y()), QPointF(middle, b.y()), b)
+            made.append(Stretch(stop.feeder, stop.id, (a, QPointF(middle, a.y()), QPointF(middle, b.y()), b)))
         else:
-            points = (a, b)
-        made.append(Stretch(stop.feeder, stop.id, points))
+            made.append(Stretch(stop.feeder, stop.id, (a, b)))
     return made
 
 
 def node_points(outcome: Outcome, case: int, course: Course, axes: Axes) -> dict[str, QPointF]:
     """Where each node lies."""
     made = {}
+    percents = column(outcome.nodes, "percent", case)
     for stop in course.stops.values():
-        if stop.id in outcome.nodes:
-            percent = outcome.nodes.at(stop.id, case).percent
-            if math.isfinite(percent):
-                made[stop.id] = QPointF(axes.x(stop), axes.y(percent))
+        percent = percents.get(stop.id, math.nan)
+        if math.isfinite(percent):
+            made[stop.id] = QPointF(axes.x(stop), axes.y(percent))
     return made
 
 

@@ -2,10 +2,11 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Any
 
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Node, Transformer
-from app.study.outcome import Finding, Outcome, Verdict
+from app.study.outcome import Finding, Outcome, Table, Verdict
 
 _URGENCY = {Verdict.FAILS: 0, Verdict.NEAR: 1, Verdict.HOLDS: 2}
 
@@ -56,14 +57,22 @@ def course(drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[st
 
 def _stops(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Stop]:
     found: dict[str, Stop] = {}
-    live = [i for i in outcome.nodes.ids if i in drawing.elements and outcome.nodes.at(i, case).live]
-    for id in sorted(live, key=lambda i: outcome.nodes.at(i, case).route_m):
-        _place(drawing, outcome, case, id, found, set(live))
+    alive, routes = column(outcome.nodes, "live", case), column(outcome.nodes, "route_m", case)
+    live = {i: routes[i] for i, alive_now in alive.items() if alive_now and i in drawing.elements}
+    for id in sorted(live, key=live.__getitem__):
+        _place(drawing, outcome, id, found, live)
     return found
 
 
+def column(table: Table, name: str, case: int) -> dict[str, Any]:
+    """One column of one case by id, read at once."""
+    values = table.column(name)
+    shown = values if values.ndim == 1 else values[:, min(case, values.shape[1] - 1)]
+    return dict(zip(table.ids, shown.tolist(), strict=True))
+
+
 def _place(
-    drawing: Drawing, outcome: Outcome, case: int, id: str, found: dict[str, Stop], live: set[str]
+    drawing: Drawing, outcome: Outcome, id: str, found: dict[str, Stop], live: dict[str, float]
 ) -> None:
     """Put a node in, after the nodes on its way that are not in yet."""
     waiting = []
@@ -76,8 +85,7 @@ def _place(
         before = found.get(parent)
         step = isinstance(drawing.elements.get(feeder), Transformer)
         steps = (before.steps if before else 0) + step
-        route = outcome.nodes.at(node, case).route_m
-        found[node] = Stop(node, route, steps, feeder if before else "", parent if before else "")
+        found[node] = Stop(node, live[node], steps, feeder if before else "", parent if before else "")
 
 
 def _parent(drawing: Drawing, outcome: Outcome, id: str) -> str:

@@ -110,7 +110,7 @@ def _polyline(painter: QPainter, stretches: list[Stretch], on: set[str] | None =
 
 def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, palette: Palette) -> None:
     """Thin, each case with a dash of its own."""
-    dashes = ([], [6.0, 3.0], [2.0, 2.5], [8.0, 3.0, 1.5, 3.0])
+    dashes: tuple[list[float], ...] = ([], [6.0, 3.0], [2.0, 2.5], [8.0, 3.0, 1.5, 3.0])
     pen = QPen(_inked(palette.soft, shown, palette), 1.2)
     dash = dashes[case % len(dashes)]
     if dash:

@@ -24,8 +24,12 @@ ROLES = (
 
 def mixed(one: QColor, other: QColor, share: float) -> QColor:
     """`share` of the one in the other."""
-    parts = ((a * share + b * (1 - share)) for a, b in zip(one.getRgbF(), other.getRgbF(), strict=True))
-    return QColor.fromRgbF(*parts)
+    rest = 1 - share
+    return QColor.fromRgbF(
+        one.redF() * share + other.redF() * rest,
+        one.greenF() * share + other.greenF() * rest,
+        one.blueF() * share + other.blueF() * rest,
+    )
 
 
 def play(widget: QWidget, role: str, state: str = "") -> None:

@@ -8,8 +8,6 @@ from app.model.kinds import Branch, Line, Load, Node
 from app.panels.change import change
 from app.panels.results import Asked, Row
 
-Total = Callable[[object, int], float]
-
 
 def summary_rows(asked: Asked, ids: tuple[str, ...]) -> list[Row]:
     """Counts, total length, loss and demand of a selection; without one, the balance of the whole."""
@@ -49,7 +47,8 @@ def _sum(asked: Asked, table: str, ids: list[str], name: str, label: str, write)
 
 def _levels(asked: Asked, nodes: list[str]) -> list[Row]:
     known = [i for i in nodes if i in asked.outcome.nodes]
-    lowest, highest = [], []
+    lowest: list[str] = []
+    highest: list[str] = []
     for case in range(len(asked.outcome.cases)):
         states = [s for s in (asked.outcome.nodes.at(i, case) for i in known) if s.live]
         if not states:
@@ -61,7 +60,7 @@ def _levels(asked: Asked, nodes: list[str]) -> list[Row]:
 
 
 def _whole(asked: Asked) -> list[Row]:
-    rows = [
+    rows: list[tuple[str, str, Callable[[float], str]]] = [
         ("Supply", "supply_kw", power),
         ("", "supply_kvar", partial(power, unit="kvar")),
         ("Infeed", "generation_kw", power),

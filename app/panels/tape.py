@@ -1,13 +1,14 @@
 """The loss tape at the foot: where every kilowatt goes, to scale."""
 
 from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
-from PySide6.QtGui import QKeyEvent, QMouseEvent, QPainter, QPaintEvent
+from PySide6.QtGui import QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent
 from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
 from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
+from app.model.edits import Change
 from app.model.figures import loss, percent, plain, power
 from app.panels.change import change
 from app.panels.summary import closure
@@ -37,13 +38,13 @@ class LossTape(QWidget):
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
         self.setAccessibleName("Loss tape")
-        session.changed.connect(lambda _change: self._follow())
+        session.changed.connect(self._changed)
         session.replaced.connect(self._follow)
-        solving.solved.connect(lambda _outcome: self._follow())
+        solving.solved.connect(self._follow)
         solving.went_stale.connect(self.update)
-        attention.case_shown.connect(lambda _case: self._follow())
-        attention.hovered.connect(lambda _id: self.update())
-        attention.selected.connect(lambda _ids: self.update())
+        attention.case_shown.connect(self._follow)
+        attention.hovered.connect(self._look)
+        attention.selected.connect(self._look)
         theme.changed.connect(self.update)
         self._follow()
 
@@ -62,6 +63,14 @@ class LossTape(QWidget):
     @property
     def _case(self) -> int:
         return min(self._attention.case, len(self._outcome.cases) - 1) if self._outcome else 0
+
+    def _look(self) -> None:
+        self.update()
+
+    def _changed(self, change: Change) -> None:
+        """New figures come with the next outcome; names and what is gone follow at once."""
+        if change.topology:
+            self._follow()
 
     def _follow(self) -> None:
         outcome = self._outcome
@@ -171,7 +180,7 @@ class LossTape(QWidget):
         return f"{piece.name}: {what.get(piece.what, '')} {size}, {share} of all".replace(":  ", ": ")
 
     def event(self, event: QEvent) -> bool:
-        if event.type() == QEvent.Type.ToolTip:
+        if isinstance(event, QHelpEvent) and event.type() == QEvent.Type.ToolTip:
             piece = self.piece_at(QPointF(event.pos()))
             QToolTip.showText(event.globalPos(), plain_tip(self.words(piece)) if piece else "", self)
             return True

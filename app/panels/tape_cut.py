@@ -1,9 +1,11 @@
 """The loss tape before it is painted: what the pieces are and where they lie. No painting here."""
 
+import math
 from dataclasses import dataclass, field
 
 from app.model.drawing import Drawing, label
 from app.model.kinds import Generator, Line, Load, Transformer
+from app.panels.strip_course import column
 from app.study.outcome import Outcome
 
 FACTORS = tuple(m * 10**k for k in range(5) for m in (1, 2, 4, 5))
@@ -92,11 +94,10 @@ def _lay(pieces: list[Piece], left: float, scale: float) -> tuple[Piece, ...]:
 
 
 def _attached(drawing: Drawing, outcome: Outcome, case: int):
+    power = column(outcome.attachments, "kw", case)
     for id, element in drawing.attachments().items():
-        if id in outcome.attachments:
-            state = outcome.attachments.at(id, case)
-            if state.live:
-                yield id, element, state.kw
+        if math.isfinite(power.get(id, math.nan)):
+            yield id, element, power[id]
 
 
 def _loads(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
@@ -114,18 +115,14 @@ def _loads(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
 
 def _losses(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
     found: dict[str, list[Piece]] = {"copper": [], "iron": [], "cable": []}
+    names = {"copper": "copper_kw", "iron": "iron_kw", "cable": "loss_kw"}
+    lost = {what: column(outcome.branches, name, case) for what, name in names.items()}
     for id, element in drawing.branches().items():
-        if id not in outcome.branches:
-            continue
-        state = outcome.branches.at(id, case)
-        if not state.live:
-            continue
-        if isinstance(element, Transformer):
-            for what, kw in (("copper", state.copper_kw), ("iron", state.iron_kw)):
-                if kw > 0:
-                    found[what].append(Piece(what, (id,), kw, label(drawing, id)))
-        elif isinstance(element, Line) and state.loss_kw > 0:
-            found["cable"].append(Piece("cable", (id,), state.loss_kw, label(drawing, id)))
+        kinds = ("copper", "iron") if isinstance(element, Transformer) else ("cable",)
+        for what in kinds if isinstance(element, Transformer | Line) else ():
+            kw = lost[what].get(id, 0.0)
+            if kw > 0:
+                found[what].append(Piece(what, (id,), kw, label(drawing, id)))
     return [piece for alike in found.values() for piece in sorted(alike, key=lambda p: -p.kw)]
 
 
