@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from solver.network import Complex, Real
+from solver.network import Complex, Index, Real
 
 DEPTH = 5
 
@@ -20,9 +20,10 @@ class Anderson:
 
     def __init__(self, weight: Real) -> None:
         self.weight = weight
-        self.before: tuple[Complex, Complex] | None = None
-        self.residual_steps: list[Complex] = []
-        self.image_steps: list[Complex] = []
+        self.image: Complex | None = None
+        self.residual: Complex | None = None
+        self.images: list[Complex] = []  # steps of g(x), newest last
+        self.residuals: list[Complex] = []  # steps of the weighted residual
 
     def next(self, image: Complex, residual: Complex) -> Complex:
         """The next guess.
@@ -31,40 +32,40 @@ class Anderson:
         residual : (live, k, batch) complex [V], g(x) - x
         Returns : (live, k, batch) complex [V]
         """
-        if self.before is not None:
-            self.image_steps.append(image - self.before[0])
-            self.residual_steps.append((residual - self.before[1]) * self.weight)
-            del self.image_steps[:-DEPTH], self.residual_steps[:-DEPTH]
-        self.before = (image, residual)
-        if not self.residual_steps:
-            return image
-        mix = self._mix(residual * self.weight)
-        return image - sum(m * s for m, s in zip(mix, self.image_steps, strict=True))
+        weighted = residual * self.weight
+        if self.image is not None and self.residual is not None:
+            self.images = [*self.images[1 - DEPTH :], image - self.image]
+            self.residuals = [*self.residuals[1 - DEPTH :], weighted - self.residual]
+        self.image, self.residual = image, weighted
+        guess = image.copy()
+        if self.images:
+            for share, step in zip(self._mix(weighted), self.images, strict=True):
+                guess -= share * step
+        return guess
 
-    def restart(self, points: np.ndarray) -> None:
-        """Forgets the history of the marked operating points."""
-        for step in (*self.residual_steps, *self.image_steps):
+    def restart(self, points: Index) -> None:
+        """Forgets the history of some operating points."""
+        for step in (*self.residuals, *self.images):
             step[..., points] = 0
 
-    def keep(self, points: np.ndarray) -> None:
-        """Goes on with the marked operating points only."""
-        self.weight = self.weight if self.weight.shape[-1] == 1 else self.weight[..., points]
-        self.residual_steps = [s.take(points, axis=-1) for s in self.residual_steps]
-        self.image_steps = [s.take(points, axis=-1) for s in self.image_steps]
-        if self.before is not None:
-            self.before = (self.before[0].take(points, axis=-1), self.before[1].take(points, axis=-1))
+    def keep(self, points: Index) -> None:
+        """Goes on with some operating points only."""
+        if self.weight.shape[-1] > 1:
+            self.weight = self.weight.take(points, axis=-1)
+        self.residuals = [s.take(points, axis=-1) for s in self.residuals]
+        self.images = [s.take(points, axis=-1) for s in self.images]
+        if self.image is not None and self.residual is not None:
+            self.image, self.residual = self.image.take(points, axis=-1), self.residual.take(points, axis=-1)
 
     def _mix(self, residual: Complex) -> Real:
-        """(step, batch) least squares by normal equations, in floating point with a little damping."""
-        steps = self.residual_steps
-        gram = np.array([[_inner(a, b) for b in steps] for a in steps])  # (step, step, batch)
-        right = np.array([_inner(a, residual) for a in steps])  # (step, batch)
-        scale = np.sqrt(np.maximum(np.einsum("iib->ib", gram), 1e-300))
-        gram = gram / (scale[:, None] * scale[None, :])
-        gram[np.arange(len(steps)), np.arange(len(steps))] = 1 + 1e-13
-        mix = np.linalg.solve(np.moveaxis(gram, -1, 0), (right / scale).T[..., None])[..., 0].T
-        return mix / scale
-
-
-def _inner(a: Complex, b: Complex) -> Real:
-    return np.einsum("nkb,nkb->b", a.real, b.real) + np.einsum("nkb,nkb->b", a.imag, b.imag)
+        """(step, batch) least squares by normal equations, scaled, with a little damping."""
+        width = residual.shape[-1]
+        stacked = np.stack((*self.residuals, residual)).reshape(len(self.residuals) + 1, -1, width)
+        steps = np.moveaxis(stacked, -1, 0).copy().view(np.float64)  # (batch, step, unknown) in real parts
+        gram = steps @ np.swapaxes(steps, 1, 2)
+        scale = np.sqrt(np.maximum(np.einsum("bii->bi", gram)[:, :-1], np.finfo(float).tiny))
+        count = len(self.residuals)
+        square = gram[:, :count, :count] / (scale[:, :, None] * scale[:, None, :])
+        square[:, np.arange(count), np.arange(count)] = 1 + 1e-13
+        mix = np.linalg.solve(square, (gram[:, :count, count] / scale)[..., None])[..., 0]
+        return np.ascontiguousarray((mix / scale).T)

@@ -13,7 +13,9 @@ from solver.sweep import Sweep
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
 PLAIN = 12  # sweeps before acceleration
-MOST = 150  # sweeps in all
+MOST = 120  # sweeps in all
+WILD = 50.0  # growth of the change that makes the acceleration start afresh
+LOW = 0.02  # share of the no-load voltage that no guess may fall below
 BLOCK = 1 << 15  # complex values in one array that stay in cache
 
 
@@ -126,11 +128,11 @@ class _Run:
             self.anderson = Anderson(1 / self.placed.level[self.forest.zone][:, None, :])
         image, step = self.image.copy(), self.step.copy()
         guess = self.anderson.next(image, step)
-        wild = (change > 4 * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
-        wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < 0.02
+        wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
+        wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < LOW
         self.best = np.minimum(self.best, change)
         if wild.any():
-            self.anderson.restart(wild)
+            self.anderson.restart(np.flatnonzero(wild))
             guess[..., wild] = image[..., wild]
         return guess
 
