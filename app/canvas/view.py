@@ -26,7 +26,7 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.model import edits
 from app.model.drawing import Drawing, Part, label
-from app.model.edits import EditRefused
+from app.model.edits import Change, EditRefused
 from app.model.kinds import KIND_WORDS, Attachment, Branch, Node, kind_of
 
 __all__ = ["SHORTCUTS", "BoardView"]
@@ -57,7 +57,7 @@ class BoardView(EventView):
         self.setAccessibleName("Drawing board")
         attention.selected.connect(self._selected)
         session.replaced.connect(self._start_over)
-        session.changed.connect(self.float_again)
+        session.changed.connect(self._follow)
         theme.changed.connect(self.float_again)
 
     # what tools ask for --------------------------------------------------------------------------
@@ -281,6 +281,10 @@ class BoardView(EventView):
             said = f"{KIND_WORDS[kind_of(one)]} {label(self.drawing, id)} selected"
         self.setAccessibleDescription(said)
         self.float_again()
+
+    def _follow(self, change: Change) -> None:
+        if change.geometry or change.topology:  # handles and guides go with their nodes
+            self.float_again()
 
     def _start_over(self) -> None:
         self.brush, self.fresh, self.tap_hold = Brush(self.brush.part), None, None

@@ -6,7 +6,7 @@ from threading import Lock, Thread
 from time import perf_counter
 from typing import Any
 
-FRAME_S = 0.012  # work that lasts longer than this would be felt by the hand
+FRAME_S = 0.016  # work that lasts longer than this would be felt by the hand
 
 
 @dataclass

@@ -18,6 +18,7 @@ from solver.status import Status
 if TYPE_CHECKING:
     from app.study import TapCurve
 
+PATIENCE_MS = 60  # figures that are older than this are shown grey; a shorter wait would only flicker
 PAUSE_MS = 120  # the hand must rest this long before curves of other transformers are drawn anew
 
 
@@ -43,9 +44,10 @@ class Solving(QObject):
     """
 
     solved = Signal(object)  # Outcome, solved or not; also when a drag ends, as the changes shown go away
-    went_stale = Signal()
+    went_stale = Signal()  # told when old figures have stood for longer than the eye should be kept waiting
     curved = Signal(str)  # the tap curve of this transformer is new
     _arrived = Signal(object)  # Job, from the worker
+    _asked = Signal()
 
     outcome: Outcome | None
     problem: Outcome | None
@@ -66,9 +68,15 @@ class Solving(QObject):
         self._pace = pace or Pace()
         self._lane = Lane(self._arrived.emit)
         self._curves = Curves(session.drawing)
+        self._waiting = False
+        self._newest = 0  # counts the drawings that differ electrically
         self._forget()
-        self._turn = self._timer(0, self._begin)
-        self._rest = self._timer(PAUSE_MS, self._begin_curve)
+        self._stopped = False
+        self._rest = QTimer(self, singleShot=True, interval=PAUSE_MS)
+        self._rest.timeout.connect(self._begin_curve)
+        self._late = QTimer(self, singleShot=True, interval=PATIENCE_MS)
+        self._late.timeout.connect(self.went_stale)
+        self._asked.connect(self._begin, Qt.ConnectionType.QueuedConnection)
         self._arrived.connect(self._land, Qt.ConnectionType.QueuedConnection)
         session.changed.connect(self._follow)
         session.replaced.connect(self._start_over)
@@ -113,22 +121,17 @@ class Solving(QObject):
 
     def stop(self) -> None:
         """Stop: nothing is solved or told after this."""
-        self._turn.stop()
+        self._stopped = True
         self._rest.stop()
+        self._late.stop()
         self._lane.close()
 
     # what happens -------------------------------------------------------------------------------
 
-    def _timer(self, pause_ms: int, slot: Callable[[], None]) -> QTimer:
-        timer = QTimer(self, singleShot=True, interval=pause_ms)
-        timer.timeout.connect(slot)
-        return timer
-
     def _forget(self) -> None:
         self.outcome = self.problem = self.reference = None
         self.stale = True
-        self._newest = getattr(self, "_newest", 0)  # number of the newest drawing that differs electrically
-        self._shape = self._newest  # number since which its topology stands
+        self._shape = self._newest  # since which of them the topology stands
         self._owed = True
 
     def _start_over(self) -> None:
@@ -145,19 +148,24 @@ class Solving(QObject):
         self._newest += 1
         if change.topology or change.rest:
             self._shape = self._newest
-        self._owed = True
+        self._owed = self.stale = True
         self._rest.stop()
-        if not self.stale:
-            self.stale = True
-            self.went_stale.emit()
         self._ask()
 
     def _ask(self) -> None:
-        if not self._turn.isActive():
-            self._turn.start()
+        """Solve in this turn of the event loop: a posted call comes after the rest of a burst of input and
+        before the frame is painted, so that a step of a drag is painted once."""
+        if not self._waiting:
+            self._waiting = True
+            self._asked.emit()
 
     def _begin(self) -> None:
-        if not self._owed or self._lane.flight is not None:
+        self._waiting = False
+        if self._stopped or not self._owed:
+            return
+        if not self._late.isActive() and (self._pace.slow or self._lane.flight is not None):
+            self._late.start()
+        if self._lane.flight is not None:
             return
         job = self._solve_job()
         if self._pace.slow:
@@ -217,6 +225,10 @@ class Solving(QObject):
         if solved or self.outcome is None or self.outcome.status is not Status.SOLVED:
             self.outcome = outcome
         self.stale = self.outcome is not outcome or job.number < self._newest
+        if not self.stale or self.problem is not None:
+            self._late.stop()
+        if self.stale:
+            self.went_stale.emit()
         self.solved.emit(outcome)
 
     def _take_curve(self, job: Job) -> None:

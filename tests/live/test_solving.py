@@ -267,3 +267,45 @@ def test_no_curve_for_what_is_no_transformer(solving, bench):
     assert solving.curve("nothing") is None
     solving.settle()
     assert bench.curves == []
+
+
+def test_a_solve_that_fits_in_a_frame_never_goes_grey(session, solving, bench, qtbot):
+    told = []
+    solving.went_stale.connect(lambda: told.append(solving.stale))
+    tap(session, 1)
+    qtbot.waitUntil(lambda: not solving.stale)
+    qtbot.wait(80)
+    assert told == []
+
+
+def test_late_figures_go_grey_once(session, slow, bench, qtbot):
+    told = []
+    slow.went_stale.connect(lambda: told.append(slow.stale))
+    tap(session, 1)
+    tap(session, 2)
+    qtbot.waitUntil(lambda: told == [True])
+    bench.gate.set()
+    qtbot.waitUntil(lambda: not slow.stale)
+    qtbot.wait(80)
+    assert told == [True]
+
+
+def test_the_solve_comes_before_the_frame_that_shows_it(session, solving, qtbot):
+    """A posted paint request is answered after the solve, so a step of a drag is painted once."""
+    from PySide6.QtWidgets import QWidget
+
+    painted = []
+
+    class Paper(QWidget):
+        def paintEvent(self, event):
+            painted.append((session.drawing.elements["T1"].tap, solving.stale))
+
+    paper = Paper()
+    qtbot.addWidget(paper)
+    session.changed.connect(lambda _: paper.update())
+    paper.show()
+    qtbot.waitUntil(lambda: painted != [])
+    del painted[:]
+    tap(session, 1)
+    qtbot.waitUntil(lambda: painted != [])
+    assert painted == [(1, False)]

@@ -1,0 +1,99 @@
+"""How long a tap drag takes from the hand's move to the painted frame, against a bare repaint of the scene.
+
+Goal: at most 1.5 on 500 branches. Printed, never asserted: `FAREND_BENCHMARK=1 pytest -s tests/benchmarks`.
+"""
+
+import os
+from statistics import median
+from time import perf_counter
+
+from PySide6.QtCore import QEvent, QPointF, Qt
+from PySide6.QtGui import QMouseEvent
+from PySide6.QtWidgets import QApplication
+
+from app.canvas.board import Board
+from app.canvas.ladder import EDGE, RAIL_X
+from app.canvas.theme import Theme
+from app.canvas.view import BoardView
+from app.live.attention import Attention
+from app.live.session import Session
+from app.live.solving import Solving
+from app.model.drawing import Drawing
+from app.model.kinds import Busbar, Cable, Joint, Load, Supply, Transformer
+
+FULL = os.environ.get("FAREND_BENCHMARK") == "1"
+BRANCHES, ROUNDS = (500, 40) if FULL else (30, 4)
+ARM = 25  # cables in a row, two arms a busbar
+
+
+def estate(branches: int) -> Drawing:
+    """An invented layout: one transformer, arms of cable with a load at every other joint."""
+    elements = {
+        "B1": Busbar(),
+        "S1": Supply(node="B1", nominal_v=11000.0, dx=-4.0, dy=0.0),
+        "B2": Busbar(x=16.0, length=8.0 * branches / ARM),
+        "T1": Transformer(start="B1", end="B2", rating_kva=1600.0, uk_percent=6.0),
+    }
+    for number in range(branches - 1):
+        arm, place = divmod(number, ARM)
+        start = f"J{number - 1}" if place else "B2"
+        y = 8.0 * arm - 4.0 * branches / ARM
+        elements[f"J{number}"] = Joint(x=28.0 + 12.0 * place, y=y)
+        elements[f"C{number}"] = Cable(
+            start=start, end=f"J{number}", length_m=12.0, parallel=4, rating_a=265.0
+        )
+        if place % 2:
+            elements[f"L{number}"] = Load(node=f"J{number}", demand_kva=4.0)
+    return Drawing(elements=elements)
+
+
+def move(view: BoardView, at: QPointF, kind: QEvent.Type) -> None:
+    """One mouse event on the board."""
+    button = Qt.MouseButton.LeftButton
+    pressed = Qt.MouseButton.NoButton if kind is QEvent.Type.MouseMove else button
+    where = QPointF(view.viewport().mapToGlobal(at.toPoint()))
+    event = QMouseEvent(kind, at, where, pressed, button, Qt.KeyboardModifier.NoModifier)
+    QApplication.sendEvent(view.viewport(), event)
+
+
+def test_drag_against_repaint(qtbot, capsys):
+    session = Session(estate(BRANCHES))
+    solving, attention, theme = Solving(session), Attention(), Theme()
+    board = Board(session, solving, attention, theme)
+    view = BoardView(board, session, attention, theme)
+    qtbot.addWidget(view)
+    view.resize(1400, 900)
+    view.show()
+    view.fit()
+    attention.select(["T1"])
+    solving.settle()
+    QApplication.processEvents()
+    ladder = board.ladder_of("T1")
+    spots = {
+        n: view.viewportTransform().map(ladder.mapToScene(RAIL_X, EDGE + ladder.notches.y(n)))
+        for n in (-1, 0, 1)
+    }
+    move(view, spots[0], QEvent.Type.MouseButtonPress)
+    drags, repaints, solves = [], [], []
+    for number in range(ROUNDS):
+        begun = perf_counter()
+        move(view, spots[1 if number % 2 else -1], QEvent.Type.MouseMove)
+        while solving.stale:
+            QApplication.processEvents()
+        QApplication.processEvents()
+        drags.append(perf_counter() - begun)
+        solves.append(sum(solving.outcome.seconds.values()))
+        begun = perf_counter()
+        view.viewport().repaint()
+        repaints.append(perf_counter() - begun)
+        QApplication.processEvents()
+    move(view, spots[1], QEvent.Type.MouseButtonRelease)
+    assert session.history.count() == 1
+    assert session.drawing.elements["T1"].tap == 1
+    drag, repaint, solve = (1e3 * median(times) for times in (drags, repaints, solves))
+    with capsys.disabled():
+        print(
+            f"\ntap drag, {BRANCHES} branches: {drag:.1f} ms to the painted frame, "
+            f"repaint {repaint:.1f} ms, ratio {drag / repaint:.2f}; the study within it {solve:.1f} ms"
+        )
+    solving.stop()
