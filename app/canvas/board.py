@@ -22,6 +22,7 @@ from app.model.kinds import Branch, Transformer
 
 LADDER_GAP = 6.0
 REST_MS = 60  # figures out of sight are written once the hand has paused this long
+FEW = 100
 AGING_MS = 100  # figures go grey only where a solve takes longer than this; else every edit would flicker
 SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
 
@@ -106,9 +107,10 @@ class Board(Paper):
             ladder.follow()
 
     def write_rest(self) -> None:
-        """Write the figures that are out of sight."""
-        self._rest.stop()
-        self._fit_words(self.write_owed())
+        """Write figures that are out of sight, few at a time so that the hand is never held up."""
+        self._fit_words(self.write_owed(FEW))
+        if self.owed:
+            self._rest.start()
 
     def _fit_words(self, grown: Set[str]) -> None:
         """During a drag words grow where they stand; after it they look for better places."""

@@ -5,7 +5,7 @@ from enum import Enum
 from functools import cache, lru_cache
 
 from PySide6.QtCore import QPointF, QSizeF, Qt
-from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QStaticText, QTransform
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QStaticText
 
 from app.canvas.palette import Palette
 
@@ -50,12 +50,16 @@ def _metrics(style: Style) -> QFontMetricsF:
 
 
 @lru_cache(maxsize=4096)
-def _laid(run: Run) -> tuple[QStaticText, float]:
+def _advance(run: Run) -> float:
+    return _metrics(run.style).horizontalAdvance(run.text)
+
+
+@lru_cache(maxsize=4096)
+def _laid(run: Run) -> QStaticText:
     text = QStaticText(run.text)
     text.setTextFormat(Qt.TextFormat.PlainText)
     text.setPerformanceHint(QStaticText.PerformanceHint.AggressiveCaching)
-    text.prepare(QTransform(), face(run.style))
-    return text, _metrics(run.style).horizontalAdvance(run.text)
+    return text
 
 
 def words(lines: tuple[Line, ...]) -> str:
@@ -70,7 +74,7 @@ def line_height(line: Line) -> float:
 
 def line_width(line: Line) -> float:
     """All runs with the gaps between them."""
-    return sum(_laid(run)[1] for run in line) + GAP * max(len(line) - 1, 0)
+    return sum(_advance(run) for run in line) + GAP * max(len(line) - 1, 0)
 
 
 def size(lines: tuple[Line, ...]) -> QSizeF:
@@ -96,9 +100,8 @@ def paint(
         height = line_height(line)
         x = at.x() + (width - line_width(line)) * align
         for run in line:
-            text, advance = _laid(run)
             painter.setFont(face(run.style))
             painter.setPen(over or getattr(palette, run.style.value[2]))
-            painter.drawStaticText(QPointF(x, y + height - _metrics(run.style).height()), text)
-            x += advance + GAP
+            painter.drawStaticText(QPointF(x, y + height - _metrics(run.style).height()), _laid(run))
+            x += _advance(run) + GAP
         y += height + LEADING

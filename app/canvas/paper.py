@@ -1,10 +1,12 @@
 """The drawing on paper: an item an element, with its words, from a drawing and an outcome."""
 
+import math
 from collections.abc import Callable, Container, Iterable, Iterator
-from dataclasses import fields
-from itertools import chain
+from dataclasses import dataclass
+from itertools import chain, islice
 from typing import Any
 
+import numpy as np
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPen
 from PySide6.QtWidgets import QGraphicsScene
@@ -16,14 +18,43 @@ from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import GRID
 from app.canvas.node_item import NodeItem
 from app.canvas.placing import Taken, Wish, place
-from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
-from app.model.drawing import Drawing
+from app.model.drawing import Drawing, Limits
 from app.model.kinds import Attachment, Branch, Node
-from app.study.outcome import Outcome, Table
+from app.study.outcome import BranchState, Outcome, Table
 
 MARGIN = 300.0
 DOTS_FROM = 0.4  # zoom below which the grid is left out
+
+
+@dataclass(frozen=True)
+class Shown:
+    """The figures on the paper: one case of an outcome, and the outcome that changes are counted from."""
+
+    limits: Limits
+    outcome: Outcome
+    case: int
+    before: Outcome | None
+
+    def rows(self, name: str, id: str) -> tuple[Any, Any]:
+        """The state of an element, and its state before where that is known."""
+        table = getattr(self.outcome, name)
+        now = table.at(id, self.case)
+        if self.before is None or self.case >= len(self.before.cases):
+            return now, None
+        was = getattr(self.before, name)
+        return now, was.at(id, self.case) if id in was else None
+
+    def reading(self, id: str) -> gauge.Reading | None:
+        """What the gauge of a node shows; None where it is dead."""
+        nodes = self.outcome.nodes
+        percent = nodes.column("percent")[nodes.rows[id]]
+        if math.isnan(percent[self.case]):
+            return None
+        low, high = self.limits.low_percent, self.limits.high_percent
+        return gauge.Reading(
+            low, high, float(np.nanmin(percent)), float(np.nanmax(percent)), float(percent[self.case])
+        )
 
 
 class Paper(QGraphicsScene):
@@ -35,7 +66,8 @@ class Paper(QGraphicsScene):
         self.items_by_id: dict[str, ElementItem] = {}
         self.captions: dict[str, Caption] = {}
         self.tags: dict[str, Tag | NodeFigures] = {}
-        self.owed: dict[str, tuple[Any, Any, gauge.Reading | None]] = {}  # id -> state, state before, reading
+        self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
+        self._shown: Shown
         self.setItemIndexMethod(QGraphicsScene.ItemIndexMethod.BspTreeIndex)
 
     # the drawing --------------------------------------------------------------------------------
@@ -101,37 +133,39 @@ class Paper(QGraphicsScene):
 
         Returns the ids whose words need more room than they have."""
         worst = standing.standings(drawing, outcome, case)
-        readings = _readings(drawing, outcome, case)
-        self.owed.clear()
-        for name in ("nodes", "branches", "attachments"):
-            was: dict[str, Any] = _rows(getattr(before, name), case) if before is not None else {}
-            for id, state in _rows(getattr(outcome, name), case).items():
+        self._shown = Shown(drawing.limits, outcome, case, before)
+        for table in (outcome.nodes, outcome.branches, outcome.attachments):
+            for id, live in zip(table.ids, _column(table, "live", case), strict=True):
                 if id in self.items_by_id:
-                    self._show(id, state, standing.of_row(state.live, id, worst))
-                    self.owed[id] = state, was.get(id), readings.get(id)
-        return self._write({id for id in self.owed if id in self.tags and seen(self.tags[id])})
+                    self.items_by_id[id].stand(standing.of_row(live, id, worst))
+        self._show_flows(outcome.branches, case)
+        self.owed = {
+            id: None for table in (outcome.nodes, outcome.branches) for id in table.ids if id in self.tags
+        }
+        return self._write([id for id in self.owed if seen(self.tags[id])])
 
-    def write_owed(self) -> set[str]:
-        """Write the words that were put off; the ids of those that need more room than they have."""
-        return self._write(self.owed.keys() & self.tags.keys())
+    def write_owed(self, most: int | None = None) -> set[str]:
+        """Write words that were put off; the ids of those that need more room than they have."""
+        return self._write(list(islice(self.owed, most)))
 
-    def _show(self, id: str, state: Any, stands: Standing) -> None:
-        item = self.items_by_id[id]
-        item.stand(stands)
-        if isinstance(item, BranchItem):
-            item.show_flow(Flow.of(state.loading_percent, wording.sent_kw(state)[1] if state.live else None))
+    def _show_flows(self, branches: Table[BranchState], case: int) -> None:
+        names = ("live", "loading_percent", "start_kw", "end_kw", "forward")
+        columns = [_column(branches, name, case) for name in names]
+        for id, live, loading, start, end, fed in zip(branches.ids, *columns, strict=True):
+            item = self.items_by_id.get(id)
+            if isinstance(item, BranchItem):
+                item.show_flow(Flow.of(loading, wording.runs_on(start, end, fed) if live else None))
 
-    def _write(self, ids: set[str]) -> set[str]:
+    def _write(self, ids: list[str]) -> set[str]:
         grown = set()
         for id in ids:
-            state, was, reading = self.owed.pop(id)
+            del self.owed[id]
             item, tag = self.items_by_id[id], self.tags[id]
-            if isinstance(item, BranchItem):
-                lines = wording.branch_figures(state, item.angle, was)
-            else:
-                lines = wording.node_figures(state, was)
             if isinstance(tag, NodeFigures):
-                tag.read(reading if state.live else None)
+                tag.read(self._shown.reading(id))
+                lines = wording.node_figures(*self._shown.rows("nodes", id))
+            elif isinstance(item, BranchItem):
+                lines = wording.branch_figures(item.angle, *self._shown.rows("branches", id))
             if tag.write(lines, item.standing):
                 grown.add(id)
         return grown
@@ -233,22 +267,6 @@ def _fits(item: ElementItem, element: object) -> bool:
     return any(isinstance(item, drawn) and isinstance(element, kind) for drawn, kind in sorts)
 
 
-def _rows(table: Table[Any], case: int) -> dict[str, Any]:
-    """Every row of one case by id, read column by column."""
-    names = [f.name for f in fields(table.state)]
-    columns = [table.columns[name] for name in names]
-    case = min(case, *(c.shape[1] - 1 for c in columns if c.ndim > 1))
-    values = [(c if c.ndim == 1 else c[:, case]).tolist() for c in columns]
-    return {id: table.state(*row) for id, row in zip(table.ids, zip(*values, strict=True), strict=True)}
-
-
-def _readings(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, gauge.Reading]:
-    percent = outcome.nodes.column("percent")
-    spans = zip(
-        percent.min(axis=1).tolist(), percent.max(axis=1).tolist(), percent[:, case].tolist(), strict=True
-    )
-    limits = drawing.limits
-    return {
-        id: gauge.Reading(limits.low_percent, limits.high_percent, *span)
-        for id, span in zip(outcome.nodes.ids, spans, strict=True)
-    }
+def _column(table: Table[Any], name: str, case: int) -> list[Any]:
+    column = table.columns[name]
+    return list((column if column.ndim == 1 else column[:, case]).tolist())

@@ -29,6 +29,7 @@ class Caption(QGraphicsItem):
         self.standing = Standing.PLAIN
         self.spot = Spot(QRectF())
         self._room = QSizeF()
+        self._bounds = QRectF()
         self.setZValue(4)
         self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
         self.hide()
@@ -89,6 +90,7 @@ class Caption(QGraphicsItem):
         if spot != self.spot:
             self.prepareGeometryChange()
             self.spot = spot
+            self._bounds = spot.box.adjusted(-1, -1, 1, 1)
             self.update()
 
     def widen(self) -> None:
@@ -101,7 +103,7 @@ class Caption(QGraphicsItem):
         return spot.align
 
     def boundingRect(self) -> QRectF:
-        return self.spot.box.adjusted(-1, -1, 1, 1)
+        return self._bounds
 
     def paint(self, painter, option, widget=None) -> None:
         if self.lines and (self.look.printing or painter.worldTransform().m11() >= SMALLEST_ZOOM):

@@ -92,18 +92,17 @@ def _load(load: Load) -> str:
     return f"{figures.typed(demand or 0.0)} {unit} {load.power_factor:g}{leading}"
 
 
-def sent_kw(state: BranchState) -> tuple[float, bool]:
-    """The power that enters a branch, and whether it runs from start to end."""
-    if state.start_kw >= 0 and (state.end_kw >= 0 or state.forward):
-        return state.start_kw, True
-    return -state.end_kw, False
+def runs_on(start_kw: float, end_kw: float, forward: bool) -> bool:
+    """True where power runs from start to end; a branch fed with no more than its loss goes as it is fed."""
+    return start_kw >= 0 and (end_kw >= 0 or forward)
 
 
-def branch_figures(state: BranchState, angle: float, before: BranchState | None) -> Lines:
+def branch_figures(angle: float, state: BranchState, before: BranchState | None) -> Lines:
     """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
     if not state.live:
         return ()
-    kw, forward = sent_kw(state)
+    forward = runs_on(state.start_kw, state.end_kw, state.forward)
+    kw = state.start_kw if forward else -state.end_kw
     rated = not math.isnan(state.loading_percent)
     load = figures.percent(state.loading_percent) if rated else figures.amps(state.current_a)
     first: Line = (Run(f"{figures.power(kw)} {arrow(angle, forward)} {load}"),)

@@ -149,9 +149,9 @@ def test_a_drag_shows_changes_since_it_began_and_nothing_jumps(bench):
 
 def test_stale_figures_look_grey(bench, qtbot):
     one = bench(FERNHOLLOW)
-    fresh = one.image()
-    one.session.edit("edit", lambda d: edits.change(d, "L1", note="of no consequence"))
     one.solving.stop()  # as if the solve took its time
+    one.session.edit("edit", lambda d: edits.change(d, "L1", demand_kva=13.0))
+    fresh = one.image()
     qtbot.waitUntil(lambda: one.board.look.stale)
     assert one.image() != fresh
     one.solving.settle_solve()
