@@ -98,10 +98,12 @@ def _sheet(chosen: argparse.Namespace) -> int:
     out = _checked_out(chosen, SHEETS)
     drawing = load(Path(chosen.file))
     outcome = run(drawing)
-    from app.sheet import write  # the workbook writer is loaded only for a sheet
+    from app.sheet import SheetError, write  # the workbook writer is loaded only for a sheet
 
-    with _Writing(out):
+    try:
         write(drawing, outcome, out)
+    except SheetError as fault:
+        raise BadInput(str(fault)) from fault
     return exit_code(outcome)
 
 
@@ -117,25 +119,12 @@ def _picture(chosen: argparse.Namespace) -> int:
     from app.canvas.picture import picture
 
     running = QApplication.instance() or QApplication(["farend"])
-    with _Writing(out):
+    try:
         picture(drawing, outcome, out, DARK if chosen.dark else LIGHT, chosen.symbols, case)
+    except OSError as fault:
+        raise BadInput(f"{out} cannot be written: {fault.strerror or fault}.") from fault
     del running
     return exit_code(outcome)
-
-
-class _Writing:
-    """Turns a failure to write into one sentence."""
-
-    def __init__(self, out: Path) -> None:
-        self.out = out
-
-    def __enter__(self) -> None:
-        return None
-
-    def __exit__(self, kind: object, fault: BaseException | None, trace: object) -> None:
-        if isinstance(fault, OSError):
-            why = fault.strerror or str(fault)
-            raise BadInput(f"{self.out} cannot be written: {why}.") from fault
 
 
 def _checked_out(chosen: argparse.Namespace, endings: tuple[str, ...]) -> Path:

@@ -3,11 +3,13 @@
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
-from app.model.drawing import Drawing, label
+from app.model.drawing import Drawing
+from app.model.fields import fields_of
 from app.model.figures import plain, typed
 from app.model.kinds import KIND_WORDS, Branch, Transformer, kind_of
 from app.study.cautions import CAUTIONS
-from app.study.outcome import Outcome, Table
+from app.study.outcome import Assumption, Finding, Outcome, Table
+from app.study.words import tell
 from solver.status import Status
 
 Column = tuple[str, Callable[[Any], str]]
@@ -63,9 +65,9 @@ def printed(drawing: Drawing, outcome: Outcome) -> str:
 
 def _head(drawing: Drawing, outcome: Outcome) -> str:
     project = drawing.project
-    title = project.title or "Untitled"
+    title = project.title or "Untitled drawing"
     about = ", ".join(w for w in (project.place, project.number, _revision(project.revision)) if w)
-    return f"{title}{': ' + about if about else ''}\n{outcome.sentence}"
+    return "\n".join(line for line in (title, about, outcome.sentence) if line)
 
 
 def _revision(revision: str) -> str:
@@ -136,7 +138,7 @@ def _findings(outcome: Outcome) -> str:
     return "Findings\n" + "\n".join(lines)
 
 
-def _margin(finding: Any) -> str:
+def _margin(finding: Finding) -> str:
     if finding.margin is None:
         return ""
     digits = next((d for d in range(1, 7) if abs(finding.margin) >= 10**-d), 6)
@@ -145,12 +147,17 @@ def _margin(finding: Any) -> str:
 
 def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
     told = [
-        f"  {label(drawing, a.id)}: {a.field} {typed(a.value)} {a.unit} ({a.basis})"
+        f"  {tell(drawing, a.id)}: {_field(drawing, a)} {typed(a.value)} {a.unit} ({a.basis})"
         for a in outcome.assumptions[:SHOWN_ASSUMPTIONS]
     ]
     return "Assumed, because left blank\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
 
 
-def _more(assumptions: Sequence[Any]) -> Iterable[str]:
+def _field(drawing: Drawing, assumption: Assumption) -> str:
+    known = fields_of(type(drawing.elements[assumption.id])).get(assumption.field)
+    return known.label.lower() if known else assumption.field
+
+
+def _more(assumptions: Sequence[Assumption]) -> Iterable[str]:
     over = len(assumptions) - SHOWN_ASSUMPTIONS
     return [f"  and {over} more, see --json"] if over > 0 else []

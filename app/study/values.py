@@ -148,7 +148,7 @@ def load_values(
     power = np.where(makes > 0, -(kw + 1j * kvar).astype(np.complex128), demand) * 1e3
     loads = np.array([c.load_percent for c in cases], dtype=np.float64) / 100
     makers = np.array([c.generation_percent for c in cases], dtype=np.float64) / 100
-    scaled: Complex = power[:, None] * np.where(makes[:, None] > 0, makers, loads)
+    scaled = np.asarray(power[:, None] * np.where(makes[:, None] > 0, makers, loads), dtype=np.complex128)
     reference = np.asarray(np.where(np.isnan(reference), nominal_v, reference), dtype=np.float64)
     return scaled, reference, load.mix(current, impedance)
 
