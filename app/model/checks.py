@@ -131,7 +131,7 @@ def fault_of_value(about: Field, value: Any) -> str | None:
 
 
 def _is_number(value: Any, *, whole: bool) -> bool:
-    if isinstance(value, bool) or not isinstance(value, int if whole else int | float):
+    if isinstance(value, bool) or not isinstance(value, int if whole else (int, float)):
         return False
     return isinstance(value, int) or math.isfinite(value)
 
@@ -188,6 +188,8 @@ def _fault_of_place(element: Element) -> str | None:
 
 
 def _on_paper(value: Any) -> bool:
+    if type(value) is float:  # a shortcut: a drawing has a great many of these
+        return abs(value) <= FARTHEST
     return _is_number(value, whole=False) and abs(value) <= FARTHEST
 
 

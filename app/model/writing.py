@@ -1,6 +1,7 @@
 """Drawings, parts and clips as JSON text: stable order, one element a line, every number to the last bit."""
 
 import json
+import math
 from collections.abc import Iterable, Mapping
 from functools import cache
 from typing import Any
@@ -11,6 +12,7 @@ from app.model.drawing import Drawing, Part
 from app.model.kinds import AnyElement, kind_of
 from app.model.versions import CURRENT
 
+_ENCODER = json.JSONEncoder(ensure_ascii=False, allow_nan=False)
 _BLANK = (None, "", ())
 
 
@@ -78,11 +80,12 @@ def _unless_known(kept: Mapping[str, Any], kind: type[Struct], *reserved: str) -
 
 def _plain(value: Any) -> Any:
     """Whole numbers are written as such: 11000, not 11000.0; all else to the last bit."""
-    if isinstance(value, float) and value.is_integer() and abs(value) < 1e15 and str(value) != "-0.0":
-        return int(value)
+    if type(value) is float:
+        whole = value.is_integer() and abs(value) < 1e15 and (value or math.copysign(1, value) > 0)
+        return int(value) if whole else value
     return tuple(_plain(v) for v in value) if isinstance(value, tuple) else value
 
 
 def line(value: Any) -> str:
     """Any plain value as one line of JSON."""
-    return json.dumps(value, ensure_ascii=False, allow_nan=False)
+    return _ENCODER.encode(value)

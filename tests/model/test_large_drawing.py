@@ -1,7 +1,6 @@
 """A hundred thousand elements: opened, changed and told apart without ado."""
 
 import pytest
-from msgspec.structs import replace
 
 from app.model import edits
 from app.model.drawing import Drawing
@@ -20,11 +19,11 @@ def test_a_hundred_thousand_elements():
     elements["L0"] = Load(node="J0")
     drawing = edits.put(Drawing(), elements)
     assert len(drawing.elements) == 100_001
-    assert decode(encode(drawing)) == drawing
+    data = encode(drawing)
+    assert decode(data) == drawing
     after = edits.change(drawing, "C7", length_m=5)
     assert edits.diff(drawing, after).ids == {"C7"}
     assert len(nominal_levels(drawing)) == 40_000
-    last = replace(drawing.elements["C39999"], end="J40000")
-    data = encode(replace(drawing, elements={**drawing.elements, "C39999": last}))
+    data = data.replace(b'"end": "J39999"', b'"end": "J40000"')
     with pytest.raises(FileError, match=r'C39999 \(cable\): End is "J40000", which does not exist'):
         decode(data)

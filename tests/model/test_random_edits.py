@@ -70,7 +70,7 @@ def an_edit(draw, drawing: Drawing):
     )
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.data())
 def test_any_sequence_of_edits_keeps_the_drawing_whole(data):
     drawing, history = data.draw(st.sampled_from([Drawing(), drawn_on()])), []
