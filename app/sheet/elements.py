@@ -78,11 +78,9 @@ def by_element(subject: Subject, plan: Plan, entries: Iterable[Entry]) -> list[S
     entries = list(entries)
     if not entries:
         return []
-    wide, one = plan.key in WIDE, subject.one_case
-    worst_columns = () if one else _worst_columns(plan)
-    stated: tuple[Column, ...] = plan.data
-    found = plan.figures if not one else (*plan.figures, *plan.judged)
-    worst = () if one else (*worst_columns, *plan.judged)
+    wide, one, stated = plan.key in WIDE, subject.one_case, plan.data
+    found = (*plan.figures, *plan.judged) if one else plan.figures
+    worst = () if one else (*_worst_columns(plan), *plan.judged)
     if one and not wide:
         return [_table(subject, plan, plan.key, "", (*stated, *found), entries)]
     results = results_key(subject, plan.key)
@@ -122,8 +120,7 @@ def _table(
     tab = plan.tab + ", cases" if by_case else plan.tab
     if plan.key in WIDE and key == plan.key:
         tab = plan.tab.removesuffix("s") + " data"
-    note = "" if title in (": as stated", ": every case") and plan.key not in WIDE else plan.note
-    note = "" if title in (": as stated", ": worst of all cases") else note
+    note = plan.note if key == (results_key(subject, plan.key) if plan.key in WIDE else plan.key) else ""
     lead = (*IDENTITY, *CASE) if by_case else IDENTITY
     return table(key, tab, plan.title + title, (*lead, *columns), rows, note=note, held=len(lead))
 

@@ -7,7 +7,7 @@ from contextlib import suppress
 from pathlib import Path
 
 from app.model.drawing import Drawing
-from app.sheet import csv, xlsx
+from app.sheet import csv
 from app.sheet.tables import tables
 from app.study.outcome import Outcome
 
@@ -29,6 +29,8 @@ def write(drawing: Drawing, outcome: Outcome, path: Path | str) -> tuple[Path, .
         raise SheetError(f"Sheet not written: {path.name} {named}; allowed is .xlsx or .csv.")
     made = tables(drawing, outcome)
     if kind == ".xlsx":
+        from app.sheet import xlsx  # the workbook writer is loaded only for a workbook
+
         files: dict[Path, Callable[[Path], None]] = {path: lambda p: xlsx.save(made, drawing, p)}
     else:
         files = {p: _saver(content) for p, content in csv.files(made, path).items()}
