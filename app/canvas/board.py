@@ -23,7 +23,6 @@ from app.model.kinds import Branch, Transformer
 LADDER_GAP = 6.0
 REST_MS = 60  # figures out of sight are written once the hand has paused this long
 FEW = 100
-AGING_MS = 100  # figures go grey only where a solve takes longer than this; else every edit would flicker
 SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
 
 
@@ -39,13 +38,11 @@ class Board(Paper):
         self._handles = Handles(self.look)
         self._rest = QTimer(self, singleShot=True, interval=REST_MS)
         self._rest.timeout.connect(self.write_rest)
-        self._aging = QTimer(self, singleShot=True, interval=AGING_MS)
-        self._aging.timeout.connect(self._grey)
         self.addItem(self._handles)
         session.changed.connect(self._follow)
         session.replaced.connect(self._start_over)
         solving.solved.connect(lambda _: self.refresh())
-        solving.went_stale.connect(self._aging.start)
+        solving.went_stale.connect(self._grey)
         attention.selected.connect(lambda _: self._light())
         attention.hovered.connect(lambda _: self._light())
         attention.case_shown.connect(lambda _: self.refresh())
@@ -132,7 +129,6 @@ class Board(Paper):
         return lambda words: any(part.intersects(words.spot.box) for part in parts)
 
     def _grey(self) -> None:
-        self._aging.stop()
         if self.look.stale != self.solving.stale:
             self.look.stale = self.solving.stale
             self.update()

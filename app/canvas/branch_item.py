@@ -12,7 +12,7 @@ from app.canvas.standing import Standing, breadth, colour, pen
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.user_symbol import Worn
 from app.model.drawing import Drawing
-from app.model.kinds import OverheadLine
+from app.model.kinds import OverheadLine, Switch
 
 MARGIN = 14.0
 HALO = 9.0
@@ -44,6 +44,7 @@ class BranchItem(ElementItem):
         self.angle = 0.0
         self.worn: Glyph | Worn | None = None
         self.flow = Flow()
+        self.lossless = False  # a switch
         self._poles: list[QPointF] = []
         self._runs: list[list[QPointF]] = []
         self._halo = QPainterPath()
@@ -53,6 +54,7 @@ class BranchItem(ElementItem):
         element = drawing.elements[self.id]
         self.points = route(drawing, self.id)
         self.at, self.angle = pose(self.points)
+        self.lossless = isinstance(element, Switch)
         self.worn = dress(drawing, element, self.look.symbols)
         self._runs = self._cut()
         whole = sum(distance(a, b) for a, b in zip(self.points, self.points[1:], strict=False))

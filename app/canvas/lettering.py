@@ -18,6 +18,9 @@ class Style(Enum):
     PLAIN = (12, False, "ink")
     QUIET = (11, False, "soft")
     CHANGE = (11, True, "tap")
+    GOOD = (12, True, "good")
+    NEAR = (12, True, "near")
+    FAILED = (12, True, "failed")
     LETTER = (15, True, "ink")
 
 

@@ -165,7 +165,7 @@ class Paper(QGraphicsScene):
                 tag.read(self._shown.reading(id))
                 lines = wording.node_figures(*self._shown.rows("nodes", id))
             elif isinstance(item, BranchItem):
-                lines = wording.branch_figures(item.angle, *self._shown.rows("branches", id))
+                lines = wording.branch_figures(item.angle, *self._shown.rows("branches", id), item.lossless)
             if tag.write(lines, item.standing):
                 grown.add(id)
         return grown

@@ -1,6 +1,7 @@
 """The diagram with its results as a picture: SVG, PNG or PDF, with the board's own items."""
 
 import os
+from collections import Counter
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import replace
@@ -28,7 +29,7 @@ from app.canvas.paper import Paper
 from app.model import figures
 from app.model.drawing import Drawing
 from app.study.cautions import CAUTIONS
-from app.study.outcome import Outcome
+from app.study.outcome import Outcome, Verdict
 from solver.status import Status
 
 MARGIN = 36.0
@@ -123,10 +124,26 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
         sentence = outcome.sentence if outcome is not None else "Not solved."
         return *lines, (Run(sentence, Style.FIGURE),)
     balance = outcome.balance
-    supply, lost = (figures.power(balance.supply_kw[case]), figures.loss(balance.loss_kw[case]))
-    lines.append((Run(f"Supply {supply}", Style.FIGURE), Run(f"lost {lost}", Style.FIGURE)))
-    lines.append((Run(f"Case: {outcome.cases[case]}", Style.QUIET),))
-    return tuple(lines)
+    supply, lost = figures.power(balance.supply_kw[case]), figures.loss(balance.loss_kw[case])
+    lines.append((Run(f"Supply {supply} · lost {lost}", Style.FIGURE),))
+    limits = drawing.limits
+    low, high = (
+        figures.percent(p, 0 if p == round(p) else 1) for p in (limits.low_percent, limits.high_percent)
+    )
+    named = f" ({limits.name})" if limits.name else ""
+    words = f"Case: {outcome.cases[case]} · voltage limits {low} to {high}{named}"
+    return *lines, (Run(words, Style.QUIET),), (_verdict(outcome),)
+
+
+def _verdict(outcome: Outcome) -> Run:
+    """How the checks of all cases came out."""
+    count = Counter(finding.verdict for finding in outcome.findings)
+    failed, near = count[Verdict.FAILS] + count[Verdict.BLOCKS], count[Verdict.NEAR]
+    if failed:
+        return Run(f"◆ {failed} {'check fails' if failed == 1 else 'checks fail'}", Style.FAILED)
+    if near:
+        return Run(f"▲ All checks hold, {near} near the limit", Style.NEAR)
+    return Run("All checks hold", Style.GOOD)
 
 
 @contextmanager

@@ -41,9 +41,11 @@ def describe(element: AnyElement) -> tuple[str, ...]:
         case Switch():
             return ("closed" if element.closed else "open",)
         case Supply():
-            held = f"held at {figures.typed(element.held_percent)} %"
             two = ", two-wire" if element.wires == "two-wire" else ""
-            return (f"{_kilovolts(element.nominal_v)}{two}", held)
+            first = f"{_kilovolts(element.nominal_v)}{two}"
+            if element.held_percent == 100:
+                return (first,)
+            return first, f"held at {figures.typed(element.held_percent)} %"
         case Load():
             return (_load(element),)
         case Generator():
@@ -89,7 +91,9 @@ def _line(line: LineElement) -> str:
 def _load(load: Load) -> str:
     demand, unit = (load.demand_kw, "kW") if load.demand_kva is None else (load.demand_kva, "kVA")
     leading = " leading" if load.leading else ""
-    return f"{figures.typed(demand or 0.0)} {unit} {load.power_factor:g}{leading}"
+    factor = load.power_factor
+    shown = f"{factor:.2f}" if math.isclose(factor, round(factor, 2)) else f"{factor:g}"
+    return f"{figures.typed(demand or 0.0)} {unit} pf {shown}{leading}"
 
 
 def runs_on(start_kw: float, end_kw: float, forward: bool) -> bool:
@@ -97,7 +101,9 @@ def runs_on(start_kw: float, end_kw: float, forward: bool) -> bool:
     return start_kw >= 0 and (end_kw >= 0 or forward)
 
 
-def branch_figures(angle: float, state: BranchState, before: BranchState | None) -> Lines:
+def branch_figures(
+    angle: float, state: BranchState, before: BranchState | None, lossless: bool = False
+) -> Lines:
     """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
     if not state.live:
         return ()
@@ -111,7 +117,7 @@ def branch_figures(angle: float, state: BranchState, before: BranchState | None)
         if rated:
             first += change(state.loading_percent - before.loading_percent, 1, "%")
         second += loss_change(state.loss_kw - before.loss_kw)
-    return first, second
+    return (first,) if lossless else (first, second)
 
 
 def arrow(angle: float, forward: bool) -> str:
