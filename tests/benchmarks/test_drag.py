@@ -7,6 +7,7 @@ import os
 from statistics import median
 from time import perf_counter
 
+import pytest
 from PySide6.QtCore import QEvent, QPointF, Qt
 from PySide6.QtGui import QMouseEvent
 from PySide6.QtWidgets import QApplication
@@ -56,44 +57,64 @@ def move(view: BoardView, at: QPointF, kind: QEvent.Type) -> None:
     QApplication.sendEvent(view.viewport(), event)
 
 
-def test_drag_against_repaint(qtbot, capsys):
-    session = Session(estate(BRANCHES))
-    solving, attention, theme = Solving(session), Attention(), Theme()
-    board = Board(session, solving, attention, theme)
-    view = BoardView(board, session, attention, theme)
-    qtbot.addWidget(view)
-    view.resize(1400, 900)
-    view.show()
-    view.fit()
-    attention.select(["T1"])
-    solving.settle()
-    QApplication.processEvents()
-    ladder = board.ladder_of("T1")
-    spots = {
-        n: view.viewportTransform().map(ladder.mapToScene(RAIL_X, EDGE + ladder.notches.y(n)))
-        for n in (-1, 0, 1)
-    }
-    move(view, spots[0], QEvent.Type.MouseButtonPress)
-    drags, repaints, solves = [], [], []
-    for number in range(ROUNDS):
+class Bench:
+    """A board of so many branches, its one transformer taken by the tap."""
+
+    def __init__(self, qtbot, zoom: str) -> None:
+        self.session = Session(estate(BRANCHES))
+        self.solving, attention, theme = Solving(self.session), Attention(), Theme()
+        board = Board(self.session, self.solving, attention, theme)
+        self.view = BoardView(board, self.session, attention, theme)
+        qtbot.addWidget(self.view)
+        self.view.resize(1400, 900)
+        self.view.show()
+        self.view.fit()
+        attention.select(["T1"])
+        self.solving.settle()
+        if zoom == "1:1":
+            self.view.resetTransform()
+            self.view.centerOn(board.ladder_of("T1"))
+        QApplication.processEvents()
+        self.ladder = board.ladder_of("T1")
+
+    def spot(self, notch: int) -> QPointF:
+        """Where a notch is in the viewport."""
+        y = EDGE + self.ladder.notches.y(notch)
+        return self.view.viewportTransform().map(self.ladder.mapToScene(RAIL_X, y))
+
+    def drag(self, notch: int) -> float:
+        """Seconds from the move of the hand to the painted frame with the new figures."""
         begun = perf_counter()
-        move(view, spots[1 if number % 2 else -1], QEvent.Type.MouseMove)
-        while solving.stale:
+        move(self.view, self.spot(notch), QEvent.Type.MouseMove)
+        while self.solving.stale:
             QApplication.processEvents()
         QApplication.processEvents()
-        drags.append(perf_counter() - begun)
-        solves.append(sum(solving.outcome.seconds.values()))
+        return perf_counter() - begun
+
+    def repaint(self) -> float:
+        """Seconds for the same scene alone."""
         begun = perf_counter()
-        view.viewport().repaint()
-        repaints.append(perf_counter() - begun)
+        self.view.viewport().repaint()
+        return perf_counter() - begun
+
+
+@pytest.mark.parametrize("zoom", ["whole drawing", "1:1"])
+def test_drag_against_repaint(qtbot, capsys, zoom):
+    bench = Bench(qtbot, zoom)
+    move(bench.view, bench.spot(0), QEvent.Type.MouseButtonPress)
+    drags, repaints, solves = [], [], []
+    for number in range(ROUNDS):
+        drags.append(bench.drag(1 if number % 2 else -1))
+        solves.append(sum(bench.solving.outcome.seconds.values()))
+        repaints.append(bench.repaint())
         QApplication.processEvents()
-    move(view, spots[1], QEvent.Type.MouseButtonRelease)
-    assert session.history.count() == 1
-    assert session.drawing.elements["T1"].tap == 1
+    move(bench.view, bench.spot(1), QEvent.Type.MouseButtonRelease)
+    assert bench.session.history.count() == 1
+    assert bench.session.drawing.elements["T1"].tap == 1
     drag, repaint, solve = (1e3 * median(times) for times in (drags, repaints, solves))
     with capsys.disabled():
         print(
-            f"\ntap drag, {BRANCHES} branches: {drag:.1f} ms to the painted frame, "
+            f"\ntap drag, {BRANCHES} branches, {zoom}: {drag:.1f} ms to the painted frame, "
             f"repaint {repaint:.1f} ms, ratio {drag / repaint:.2f}; the study within it {solve:.1f} ms"
         )
-    solving.stop()
+    bench.solving.stop()
