@@ -24,6 +24,12 @@ def test_imports_follow_the_arrows() -> None:
     assert run.returncode == 0, run.stdout
 
 
+def test_live_knows_no_widgets() -> None:
+    for path in ROOT.glob("app/live/*.py"):
+        for node in ast.walk(ast.parse(path.read_text(encoding="utf-8"))):
+            assert not (isinstance(node, ast.ImportFrom) and node.module == "PySide6.QtWidgets"), path.name
+
+
 def test_the_top_level_holds_what_it_should() -> None:
     here = {p.name for p in ROOT.iterdir() if not p.name.startswith(".") and p.suffix != ".egg-info"}
     assert here - LEAVINGS == TOP
