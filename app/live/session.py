@@ -22,7 +22,8 @@ class Session(QObject):
         super().__init__(parent)
         self._drawing = drawing or Drawing()
         self.revision = 0
-        self.history = QUndoStack(self)
+        self.history = history = QUndoStack(self)
+        self.destroyed.connect(lambda: history.blockSignals(True))  # nobody is left to hear its end
         self._gestures = 0
 
     @property
