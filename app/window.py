@@ -93,7 +93,11 @@ class Window(QMainWindow):
 
     def _wire(self) -> None:
         self.shelf.picked.connect(self.view.place)
+        self.shelf.refused.connect(self.findings.tell)
+        self.view.card_wanted.connect(self.card.take_focus)
         self.view.placing_ended.connect(self.shelf.rest)
+        self.findings.sought.connect(self.view.show_selection)
+        self.findings.field_sought.connect(self.card.focus_field)
         self.view.refused.connect(self.tell_refusal)
         self.session.refused.connect(lambda sentence: self.tell_refusal(sentence, None))
         self.session.history.cleanChanged.connect(lambda _clean: self._mark())
@@ -106,6 +110,7 @@ class Window(QMainWindow):
 
     def _mark(self) -> None:
         path = self.document.path
+        self.head.show_file(path.name if path else "")
         self.setWindowTitle(f"{path.name if path else 'New drawing'}[*] – Farend")
         self.setWindowModified(self.document.modified)
 

@@ -233,6 +233,12 @@ class Card(QScrollArea):
         if not refusal:
             self._show_head()
 
+    def take_focus(self) -> None:
+        """Put the focus into the first field, and the card into sight."""
+        self.setVisible(True)
+        first = next(iter(self._page.rows.values()), None) if self._page is not None else None
+        (first.editor if first is not None else self.head.name).setFocus(Qt.FocusReason.TabFocusReason)
+
     def focus_field(self, id: str, field: str) -> None:
         """Select an element and put the focus into one of its fields."""
         self._attention.select((id,))

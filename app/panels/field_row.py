@@ -17,6 +17,7 @@ Take = Callable[[Field, str], str]  # takes what was typed, answers why not, or 
 YES_NO = ("no", "yes")
 VARIOUS = "various"
 BOX_WIDTH = 142
+LONG = 8  # more than this may not fit into a box, so the tooltip says it whole
 
 
 class Dot(QWidget):
@@ -91,7 +92,7 @@ class FieldRow(QWidget):
             across.addWidget(self.editor)
             holder.setFixedHeight(BOX_HEIGHT)
             return holder
-        return Box(self.editor, self.field.unit)
+        return Box(self.editor, self.field.unit.removesuffix(" of nominal"))
 
     def _lay_out(self) -> None:
         self.grid = grid = QGridLayout(self)
@@ -132,7 +133,9 @@ class FieldRow(QWidget):
         else:
             self._settle(editor, self._text, quiet)
         self.dot.say(f"{self.field.label} is assumed: {basis}" if basis else "")
-        tip = "\n".join(part for part in (self.field.help, other, basis and f"Assumed: {basis}") if part)
+        whole = f"{self._text} {self.field.unit}" if len(self._text) > LONG else ""
+        parts = (whole, self.field.help, other, basis and f"Assumed: {basis}")
+        tip = "\n".join(part for part in parts if part)
         editor.setToolTip(plain_tip(tip))
 
     def _settle(self, editor: Entry, text: str, quiet: str) -> None:

@@ -99,10 +99,9 @@ class FindingsBar(QWidget):
         play(self.list, "list")
         self.list.setWordWrap(True)
         self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-        self.list.setFixedHeight(FOLD_HEIGHT)
         self.list.itemClicked.connect(self._chosen)
         self.list.itemActivated.connect(self._chosen)
-        self.list.itemSelectionChanged.connect(self._rename_confirm)
+        self.list.itemSelectionChanged.connect(self._enable_confirm)
         self.fold_title = Words("", "strong")
         self.confirm = QPushButton("Take as given")
         self.confirm.setToolTip("Write the assumed value into the drawing as if it had been stated")
@@ -146,7 +145,8 @@ class FindingsBar(QWidget):
         self.headline.say(self._line.headline)
         self.headline.setVisible(bool(self._line.headline))
         ink = colour_of(self._line.verdict, self._theme.palette)
-        if self._solving.stale and self._session.drawing.elements and not self._told:
+        waiting = self._solving.stale and self._solving.problem is None
+        if waiting and self._session.drawing.elements and not self._told:
             ink = self._theme.palette.soft
         if ink != self._ink:
             self._ink = ink
@@ -187,7 +187,8 @@ class FindingsBar(QWidget):
         self.list.setAccessibleName(self.fold_title.text())
         if row >= 0:
             self.list.setCurrentRow(min(row, self.list.count() - 1))
-        self._rename_confirm()
+        self.list.setFixedHeight(min(FOLD_HEIGHT, self.list.sizeHintForRow(0) * self.list.count() + 6))
+        self._enable_confirm()
 
     def _add(
         self, text: str, verdict: Verdict, ids: tuple[str, ...], assumption: Assumption | None = None
@@ -197,7 +198,7 @@ class FindingsBar(QWidget):
         item.setData(ASSUMED, assumption)
         self.list.addItem(item)
 
-    def _rename_confirm(self) -> None:
+    def _enable_confirm(self) -> None:
         self.confirm.setEnabled(self.list.currentItem() is not None)
 
     # -- what is asked for ----------------------------------------------------------------------

@@ -50,14 +50,13 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
 
 def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
     blocks = [f for f in ordered(outcome) if f.verdict is Verdict.BLOCKS]
-    if outcome.status is Status.INVALID and blocks:
+    if blocks:
         more = f" And {len(blocks) - 1} more." if len(blocks) > 1 else ""
         return Line(Verdict.BLOCKS, "Not solved.", blocks[0].sentence + more, blocks[0].ids)
     words = outcome.sentence
     if outcome.to_blame and label(drawing, outcome.to_blame) not in words:
         words += f" {label(drawing, outcome.to_blame)} sets it."
-    ids = (outcome.to_blame,) if outcome.to_blame else blocks[0].ids if blocks else ()
-    return Line(Verdict.BLOCKS, "Not solved.", words, ids)
+    return Line(Verdict.BLOCKS, "Not solved.", words, (outcome.to_blame,) if outcome.to_blame else ())
 
 
 def ordered(outcome: Outcome) -> list[Finding]:

@@ -17,6 +17,8 @@ from app.panels.words import LEFT, Rule, Words
 from solver.status import Status
 
 HEIGHT = 50
+WORD_GAP, GROUP_GAP = 7, 20
+_FONTS = ((9, False), (11, True), (9, True))  # points and bold of caption, figure and change
 
 
 class Head(QWidget):
@@ -33,6 +35,7 @@ class Head(QWidget):
         super().__init__(parent)
         self._session = session
         self._file = ""
+        self._clean = session.history.isClean()
         play(self, "panel")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self.setFixedHeight(HEIGHT + 1)
@@ -43,7 +46,7 @@ class Head(QWidget):
         self._lay_out()
         session.changed.connect(self._follow)
         session.replaced.connect(self._follow)
-        session.history.cleanChanged.connect(self._follow)
+        session.history.cleanChanged.connect(self._saved)
         self._follow()
 
     def _lay_out(self) -> None:
@@ -69,11 +72,15 @@ class Head(QWidget):
         self._file = name
         self._follow()
 
+    def _saved(self, clean: bool) -> None:
+        self._clean = clean
+        self._follow()
+
     def _follow(self) -> None:
         project = self._session.drawing.project
         self.title.say(project.title or self._file or "New drawing")
         revision = f"rev {project.revision}" if project.revision else ""
-        unsaved = "" if self._session.history.isClean() else "not saved"
+        unsaved = "" if self._clean else "not saved"
         self.about.say(" · ".join(part for part in (project.place, revision, self._file, unsaved) if part))
 
 
@@ -83,7 +90,7 @@ class Totals(QWidget):
     def __init__(self, solving: Solving, attention: Attention, theme: Theme) -> None:
         super().__init__()
         self._solving, self._attention, self._theme = solving, attention, theme
-        self.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Expanding)
+        self.setSizePolicy(QSizePolicy.Policy.Maximum, QSizePolicy.Policy.Expanding)
         self.setAccessibleName("Totals")
         solving.solved.connect(self._follow)
         solving.went_stale.connect(self._follow)
@@ -91,10 +98,12 @@ class Totals(QWidget):
         theme.changed.connect(self.update)
 
     def sizeHint(self) -> QSize:
-        return QSize(296, HEIGHT)
+        """Room for both totals with their changes, so that nothing shifts while dragging."""
+        widest = [("Supply", "1 234 kW", "▲ 0.04 kW"), ("Lost", "1.64 kW", "▲ 0.04 kW")]
+        return QSize(round(sum(_width(group) for group in widest)) + GROUP_GAP, HEIGHT)
 
     def minimumSizeHint(self) -> QSize:
-        return self.sizeHint()
+        return QSize(120, HEIGHT)
 
     def _follow(self) -> None:
         self.setAccessibleDescription(
@@ -118,21 +127,30 @@ class Totals(QWidget):
         return made
 
     def paintEvent(self, event: QPaintEvent) -> None:
+        """From the right; a total for which there is no room is left out whole."""
         painter = QPainter(self)
+        right = float(self.width())
+        for group in reversed(self.figures()):
+            left = right - _width(group)
+            if left < 0:
+                return
+            self._paint_group(painter, group, left)
+            right = left - GROUP_GAP
+
+    def _paint_group(self, painter: QPainter, group: tuple[str, str, str], left: float) -> None:
         palette = self._theme.palette
-        x = float(self.width())
-        for name, figure, moved in reversed(self.figures()):
-            ink = palette.soft if self._solving.stale else palette.ink
-            for text, points, bold, colour, gap in (
-                (moved, 9, True, palette.tap, 7),
-                (figure, 11, True, ink, 7),
-                (name, 9, False, palette.soft, 20),
-            ):
-                if not text:
-                    continue
-                painter.setFont(font(points, bold=bold))
-                wide = QFontMetricsF(painter.font()).horizontalAdvance(text)
-                x -= wide
+        ink = palette.soft if self._solving.stale else palette.ink
+        for text, letters, colour in zip(group, _FONTS, (palette.soft, ink, palette.tap), strict=True):
+            if text:
+                painter.setFont(font(*letters))
                 painter.setPen(colour)
-                painter.drawText(QRectF(x, 1, wide + 2, HEIGHT), int(LEFT), text)
-                x -= gap
+                wide = QFontMetricsF(painter.font()).horizontalAdvance(text)
+                painter.drawText(QRectF(left, 1, wide + 2, HEIGHT), int(LEFT), text)
+                left += wide + WORD_GAP
+
+
+def _width(group: tuple[str, str, str]) -> float:
+    """Caption, figure and change side by side."""
+    shown = [(text, letters) for text, letters in zip(group, _FONTS, strict=True) if text]
+    wide = sum(QFontMetricsF(font(*letters)).horizontalAdvance(text) for text, letters in shown)
+    return wide + WORD_GAP * (len(shown) - 1)

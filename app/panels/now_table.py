@@ -128,8 +128,9 @@ class NowTable(QWidget):
         if strong and row.change:
             painter.setFont(font(8, bold=True))
             painter.setPen(look.tap)
-            width = QFontMetricsF(painter.font()).horizontalAdvance(row.change)
-            painter.drawText(QRectF(right - width - 1, room.top(), width + 1, LINE), int(RIGHT), row.change)
+            moved = row.change if room.width() > 140 else _without_unit(row.change, text)
+            width = QFontMetricsF(painter.font()).horizontalAdvance(moved)
+            painter.drawText(QRectF(right - width - 1, room.top(), width + 1, LINE), int(RIGHT), moved)
             right -= width + 7
         painter.setFont(font(9, bold=strong and len(self.heads) > 0))
         painter.setPen(self._ink(row, strong))
@@ -142,6 +143,12 @@ class NowTable(QWidget):
         if strong and row.verdict in (Verdict.FAILS, Verdict.NEAR):
             return colour_of(row.verdict, look)
         return look.ink
+
+
+def _without_unit(change: str, cell: str) -> str:
+    """The change beside a figure in the same unit."""
+    unit = cell.rpartition(" ")[2]
+    return change.removesuffix(f" {unit}")
 
 
 def _two_lines(text: str) -> tuple[str, str]:

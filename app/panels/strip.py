@@ -66,7 +66,7 @@ class VoltageStrip(QWidget):
         return QSize(700, 196)
 
     def minimumSizeHint(self) -> QSize:
-        return QSize(240, 130)
+        return QSize(240, 150)
 
     # -- what is shown --------------------------------------------------------------------------
     @property

@@ -51,6 +51,13 @@ def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     for case, curve in enumerate(shown.curves):
         if case != shown.case:
             _paint_other_case(painter, curve, case, shown, palette)
+    names: list[QRectF] = []
+    if len(shown.curves) > 1:
+        ink = palette.soft if shown.stale else palette.flow
+        _name_curve(painter, shown.curves[shown.case], shown, ink, names)
+    for case, curve in enumerate(shown.curves):
+        if case != shown.case:
+            _name_curve(painter, curve, shown, palette.soft, names)
     if shown.before is not None:
         _paint_before(painter, shown.before, shown, palette)
     _paint_curve(painter, shown, palette)
@@ -117,7 +124,6 @@ def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, 
         pen.setDashPattern(dash)
     painter.setPen(pen)
     _polyline(painter, curve.stretches, set(shown.course.main))
-    _name_curve(painter, curve, shown, palette.soft, bold=False)
 
 
 def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
@@ -152,8 +158,6 @@ def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:
             painter.setPen(lit)
             painter.drawPolyline(list(stretch.points))
     _paint_nodes(painter, curve, shown, palette)
-    if len(shown.curves) > 1:
-        _name_curve(painter, curve, shown, palette.flow, bold=True)
 
 
 def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
@@ -169,17 +173,18 @@ def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette
     painter.setBrush(Qt.BrushStyle.NoBrush)
 
 
-def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, bold: bool) -> None:
-    """The case's name at the far end, above or below its line, where no other line runs."""
+def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, names: list[QRectF]) -> None:
+    """The case's name at the far end, above or below its line, where no line and no other name is."""
     end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
     if end is None:
         return
-    painter.setFont(font(8, bold=bold))
+    painter.setFont(font(8, bold=not names))
     painter.setPen(colour)
     wide = min(QFontMetricsF(painter.font()).horizontalAdvance(curve.name), 260.0)
     ends = [end, *_before_steps(curve, shown)]
     rooms = [QRectF(at.x() - wide - 2, at.y() + dy, wide + 2, 14) for at in ends for dy in (-18, 5)]
-    room = min(rooms, key=lambda r: _crossings(r, shown))
+    room = min(rooms, key=lambda r: _crossings(r, shown) + 3 * sum(r.intersects(n) for n in names))
+    names.append(room)
     shown_name = QFontMetricsF(painter.font()).elidedText(curve.name, Qt.TextElideMode.ElideRight, wide + 1)
     painter.drawText(room, int(RIGHT), shown_name)
 
@@ -195,6 +200,7 @@ def _crossings(room: QRectF, shown: Shown) -> int:
     limits, main = shown.drawing.limits, set(shown.course.main)
     levels = [shown.axes.y(p) for p in (limits.low_percent, limits.high_percent)]
     crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
+    crossed += 2 * (room.bottom() > shown.axes.room.bottom() + 3)
     inner = room.adjusted(2, 2, -2, -2)
     for curve in shown.curves:
         for stretch in curve.stretches:

@@ -139,7 +139,7 @@ def _paint_piece(
         painter.setBrush(Qt.BrushStyle.NoBrush)
         painter.setPen(QPen(palette.flow if piece is shown.walked else palette.ink, 2 if chosen else 1.4))
         painter.drawRoundedRect(room.adjusted(-0.5, -1.5, 0.5, 1.5), bend, bend)
-    _label(painter, piece, room, palette, shown.stale)
+    _label(painter, piece, room, palette, ground, shown.stale)
 
 
 def pattern(painter: QPainter, what: str, room: QRectF, bend: float, palette: Palette) -> None:
@@ -161,7 +161,9 @@ def pattern(painter: QPainter, what: str, room: QRectF, bend: float, palette: Pa
     painter.restore()
 
 
-def _label(painter: QPainter, piece: Piece, room: QRectF, palette: Palette, stale: bool) -> None:
+def _label(
+    painter: QPainter, piece: Piece, room: QRectF, palette: Palette, ground: QColor, stale: bool
+) -> None:
     """As much of name and size as there is room for."""
     light = piece.what in ("load", "export")
     inset = 12 if light and room.width() > 120 else 6
@@ -174,7 +176,7 @@ def _label(painter: QPainter, piece: Piece, room: QRectF, palette: Palette, stal
             ink = palette.ink if light else (palette.paper if palette.dark else QColor("#FFFFFF"))
             painter.setPen(palette.soft if stale else ink)
             if not light:
-                _quieten(painter, room, piece, metrics.horizontalAdvance(text), inset, palette)
+                _quieten(painter, room, piece, metrics.horizontalAdvance(text), inset, ground)
             painter.drawText(room.adjusted(inset, 0, -2, 0), int(LEFT), text)
             return
     if light and space > 40:
@@ -185,12 +187,11 @@ def _label(painter: QPainter, piece: Piece, room: QRectF, palette: Palette, stal
 
 
 def _quieten(
-    painter: QPainter, room: QRectF, piece: Piece, wide: float, inset: float, palette: Palette
+    painter: QPainter, room: QRectF, piece: Piece, wide: float, inset: float, ground: QColor
 ) -> None:
     """Take the pattern away behind the letters."""
     if piece.what == "copper":
         return
-    ground = QColor(colours(palette, False)[piece.what])
     pen = painter.pen()
     painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(ground)
