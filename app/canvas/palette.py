@@ -23,21 +23,21 @@ class Palette:
     tap: QColor
     copper: QColor
     iron: QColor
-    dark: bool
+
+    @property
+    def dark(self) -> bool:
+        """True for light ink on dark paper."""
+        return self.paper.lightnessF() < 0.5
 
 
-def _colours(*codes: str, dark: bool) -> Palette:
-    return Palette(*(QColor(c) for c in codes), dark=dark)
-
-
-LIGHT = _colours(
+LIGHT = Palette(*map(QColor, (
     "#FAF8F3", "#22303C", "#5F6B76", "#DAD6CB", "#F3F0E7", "#FFFFFF", "#FFFFFF", "#2B5C8A", "#2A7F78",
-    "#B9770E", "#A32A54", "#C65D21", "#C98A4B", "#5B6B79", dark=False,
-)  # fmt: skip
-DARK = _colours(
+    "#B9770E", "#A32A54", "#C65D21", "#C98A4B", "#5B6B79",
+)))  # fmt: skip
+DARK = Palette(*map(QColor, (
     "#171C21", "#E6E3DB", "#9AA3AB", "#313A43", "#1E242A", "#232B33", "#262E36", "#79AEE0", "#5CC2B8",
-    "#E2A93B", "#F0739B", "#F08A4B", "#C98A4B", "#5B6B79", dark=True,
-)  # fmt: skip
+    "#E2A93B", "#F0739B", "#F08A4B", "#C98A4B", "#5B6B79",
+)))  # fmt: skip
 
 
 def font(points: float, bold: bool = False) -> QFont:

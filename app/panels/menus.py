@@ -1,6 +1,7 @@
 """The menus and what they do with files: open, save, export, leave."""
 
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -142,7 +143,7 @@ class Menus(QObject):
     def _list_recent(self) -> None:
         self.recent.clear()
         for path in self.window.preferences.recent:
-            self._add(self.recent, str(path).replace("&", "&&"), lambda p=path: self.open_if_free(Path(p)))
+            self._add(self.recent, str(path).replace("&", "&&"), partial(self.open_if_free, Path(path)))
         self.recent.setEnabled(True)
         if not self.recent.actions():
             self.recent.addAction("Nothing opened yet").setEnabled(False)
