@@ -9,13 +9,15 @@ from numpy.typing import NDArray
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
-from app.study.layout import NONE, Layout, arrays_of, lay_out
+from app.study.findings import NOISE
+from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
+from app.study.results import tables_of
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.values import notch_values
-from app.study.zones import Zones, zones_of
-from solver import Network, Solution, Status, grow, solve
+from app.study.zones import zones_of
+from solver import Network, Status, grow, solve
 
 Real = NDArray[np.float64]
 BATCHED = ("source_voltage", "line_z", "line_y", "load_power", "load_reference", "shunt_y")
@@ -63,14 +65,18 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
     if not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found):
         return _curve(unit, notches, np.full((len(notches), cases), np.nan), None, None)
     rows = rows_of(drawing, layout, zones)
-    branch = layout.branch_ids.index(transformer_id)
+    branch = layout.branch_row[transformer_id]
+    rows = replace(rows, network=_spread(rows, branch, unit, notches, cases))
     layout.forest = layout.forest or grow(rows.network)
-    solution = solve(_spread(rows, branch, unit, notches, cases), forest=layout.forest)
+    solution = solve(rows.network, forest=layout.forest)
+    tables = tables_of(layout, zones, rows, solution, len(notches) * cases)
+    solved = np.array([s is Status.SOLVED for s in solution.status])
+    loss = np.where(solved, tables.balance.loss_kw, np.nan).reshape(len(notches), cases)
     below = _fed_through(layout, branch)
-    loss = _loss_kw(rows, solution).reshape(len(notches), cases)
-    whole = _percent(layout, zones, rows, solution)
-    drop = (whole[arrays_of(layout).root] - whole)[below].reshape(-1, len(notches), cases)
-    percent = whole[below].reshape(-1, len(notches), cases)
+    percent, drop = (
+        tables.nodes.column(name)[below].reshape(-1, len(notches), cases)
+        for name in ("percent", "drop_percent")
+    )
     return _curve(unit, notches, loss, percent, _holds(drawing, percent, drop))
 
 
@@ -98,29 +104,15 @@ def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
     through = [False] * len(layout.nodes)
     for node in layout.order:
         by = layout.fed_by[node]
-        through[node] = by == branch or (by != NONE and through[layout.far(by, node)])
+        through[node] = by == branch or (by != NONE and through[layout.fed_from[node]])
     return np.flatnonzero(through)
-
-
-def _loss_kw(rows: Rows, solution: Solution) -> Real:
-    network, phases = rows.network, rows.phases / 1e3
-    lines = solution.line_loss.real * phases[network.line_from][:, None]
-    units = solution.transformer_loss.real * phases[network.transformer_from][:, None]
-    loss = np.nansum(lines, axis=0) + np.nansum(units, axis=0)
-    solved = np.array([s is Status.SOLVED for s in solution.status])
-    return np.where(solved, loss, np.nan)
-
-
-def _percent(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Real:
-    nominal = zones.nominal_v[arrays_of(layout).zone]
-    return 100 * np.abs(solution.voltage[:, 0]) * rows.wide[:, None] / nominal[:, None]
 
 
 def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
     limits = drawing.limits
-    good = (percent >= limits.low_percent) & (percent <= limits.high_percent)
+    good = (percent >= limits.low_percent - NOISE) & (percent <= limits.high_percent + NOISE)
     if limits.drop_percent is not None:
-        good &= drop <= limits.drop_percent
+        good &= drop <= limits.drop_percent + NOISE
     return np.asarray(good.all(axis=(0, 2)))
 
 

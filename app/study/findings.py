@@ -14,6 +14,7 @@ from app.study.words import tell
 
 NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
+NOISE = 1e-9  # %, what the arithmetic leaves open: a value this close to its limit is on it
 LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
 
@@ -49,7 +50,7 @@ def judge(
 
     Each element that fails or is near gets a finding for its own worst case; where none does, the worst
     element of the check gets one that says it holds. Near is within 1 % of nominal for a voltage, beyond
-    90 % of the limit for a drop or a loading.
+    90 % of the limit for a drop or a loading. A value on its limit holds.
 
     drawing : the drawing, for its limits and names
     nodes : table, percent (node, case) [% of nominal], drop_percent (node, case) [%]
@@ -120,6 +121,7 @@ def findings_of(
     """
     value = check.value
     margin = value - check.limit if check.low else check.limit - value
+    margin = np.where(np.abs(margin) < NOISE, 0.0, margin)
     judged = np.where(np.isnan(margin), np.inf, margin)
     if judged.size == 0:
         return []

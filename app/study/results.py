@@ -12,6 +12,7 @@ from app.study.layout import NONE, Layout, arrays_of
 from app.study.memory import Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
 from app.study.rows import Rows
+from app.study.sums import size, total
 from app.study.zones import Zones
 from solver import Solution
 
@@ -88,7 +89,7 @@ def _routes(layout: Layout) -> Real:
 def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Table[NodeState]:
     voltage = solution.voltage[:, 0]
     nominal = _nominal(layout, zones)
-    level = np.abs(voltage) * rows.wide[:, None]
+    level = size(voltage) * rows.wide[:, None]
     percent = 100 * level / nominal[:, None]
     columns = {
         "live": arrays_of(layout).live,
@@ -119,7 +120,7 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
     shunt = scatter(solution.line_charging, solution.transformer_magnetising_loss)
     start_s, end_s = voltage[start] * into.conj() * phases, voltage[end] * out.conj() * phases
     series, shunt = series * phases, shunt * phases
-    start_a, end_a = np.abs(into), np.abs(out)
+    start_a, end_a = size(into), size(out)
     fed_a = np.where(forward[:, None], start_a, end_a)
     is_unit = np.zeros((count, 1), dtype=bool)
     is_unit[rows.units] = True
@@ -184,7 +185,7 @@ def _attachments(layout: Layout, rows: Rows, solution: Solution, level: Real) ->
     power = power * phases
     wide = rows.wide[at][:, None]
     with np.errstate(divide="ignore", invalid="ignore"):
-        current = np.where(voltage > 0, np.abs(power) * 1e3 / (voltage * wide), np.abs(power))
+        current = np.where(voltage > 0, size(power) * 1e3 / (voltage * wide), size(power))
     columns: dict[str, NDArray[Any]] = {
         "live": arrays_of(layout).live[at],
         "kw": power.real,
@@ -204,10 +205,6 @@ def _balance(
     is_unit[layout.units] = True
     copper, iron = branches.column("copper_kw"), branches.column("iron_kw")
 
-    def total(column: Real, of: NDArray[np.bool_]) -> Real:
-        return np.nansum(column[of], axis=0)
-
-    every = np.ones(len(is_unit), dtype=bool)
     return Balance(
         supply_kw=total(kw, kind == "s"),
         supply_kvar=total(kvar, kind == "s"),
@@ -217,7 +214,7 @@ def _balance(
         line_kw=total(copper, ~is_unit),
         copper_kw=total(copper, is_unit),
         iron_kw=total(iron, is_unit),
-        loss_kw=total(branches.column("loss_kw"), every),
+        loss_kw=total(branches.column("loss_kw")),
         closure=solution.closure,
     )
 

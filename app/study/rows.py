@@ -62,6 +62,7 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     graph = arrays_of(layout)
     start, end, at = graph.start, graph.end, graph.at
     two_wire, nominal = zones.two_wire[graph.tree], zones.nominal_v[graph.zone]
+    nominal = np.where(np.isnan(nominal), 1.0, nominal)  # a dead part of no known level draws nothing
     phases, wide = np.where(two_wire, 1.0, 3.0), np.where(two_wire, 1.0, ROOT3)
     kinds, sources = _sort(layout), np.array(layout.supplies, dtype=np.intp)
     lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts

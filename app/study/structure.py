@@ -92,16 +92,14 @@ def _groups(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
     found = []
     for row in layout.units:
         branch, tree = layout.branches[row], layout.tree[layout.start[row]]
-        if not isinstance(branch, Transformer) or layout.supply_of[tree] == NONE:
-            continue
-        id = layout.branch_ids[row]
-        read = taps.group(branch.vector_group)
+        assert isinstance(branch, Transformer)
+        id, read = layout.branch_ids[row], taps.group(branch.vector_group)
         if read is None:
             words = (
                 f"{tell(drawing, id)}: vector group {branch.vector_group!r} is not known. "
                 f"Allowed is {taps.GROUP_ALLOWED}."
             )
-        elif (read[0] == "I") == bool(zones.two_wire[tree]):
+        elif layout.supply_of[tree] == NONE or (read[0] == "I") == bool(zones.two_wire[tree]):
             continue
         else:
             words = _wrong_system(drawing, id, branch.vector_group, layout, tree, bool(zones.two_wire[tree]))

@@ -148,7 +148,7 @@ class Nodal:
 
         first = start / size
         found = root(gap, np.concatenate([first.real, first.imag]), method="hybr", tol=1e-14)
-        assert np.abs(gap(found.x)).max() < 1e-12
+        assert np.abs(gap(found.x)).max() < 1e-11
         self.voltage = voltage
         return {i: voltage[self.at[self.find(i)]] for i in self.nominal}
 
