@@ -54,7 +54,7 @@ def _figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
         left = core.center().x() - gauge.WIDTH / 2 + 2
         yield Spot(QRectF(left, core.bottom() + UNDER, width, height), LEFT)
         yield Spot(QRectF(core.left() - width, core.bottom() + UNDER, width, height), RIGHT)
-        yield from around(core, width, height, "1234ba")
+        yield from around(core, width, height, "1234ba", gap=UNDER + 2)
     elif item.bar:
         yield from around(core, width, height, "21ba34")
     else:
@@ -66,6 +66,7 @@ def _figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
 def _half(item: BranchItem) -> float:
     if item.worn is None:
         return 6.0
-    core = item.core()
-    level = abs(item.angle) % 180 < 45 or abs(item.angle) % 180 > 135
-    return (core.height() if level else core.width()) / 2
+    core, at = item.core(), item.at
+    if abs(item.angle) % 180 < 45 or abs(item.angle) % 180 > 135:
+        return max(at.y() - core.top(), core.bottom() - at.y())
+    return max(at.x() - core.left(), core.right() - at.x())

@@ -20,7 +20,7 @@ from app.canvas.node_item import NodeItem
 from app.canvas.placing import Taken, Wish, place
 from app.canvas.tag import Caption, NodeFigures, Tag
 from app.model.drawing import Drawing, Limits
-from app.model.kinds import Attachment, Branch, Node
+from app.model.kinds import Attachment, Branch, Busbar, Node
 from app.study.outcome import BranchState, Outcome, Table
 
 MARGIN = 300.0
@@ -96,6 +96,9 @@ class Paper(QGraphicsScene):
             item, covered = self.items_by_id[id], self.items_by_id[id].boundingRect()
             item.lay(drawing)
             moved |= item.boundingRect() != covered
+            self.captions[id].landmark = isinstance(element, Busbar) or (
+                isinstance(element, Node) and bool(element.name)
+            )
             moved |= self.captions[id].write(wording.caption(drawing, id))
         return moved
 
@@ -178,7 +181,7 @@ class Paper(QGraphicsScene):
         for block in self._blocks():
             if only is None or block.id in only:
                 block.shrink()
-            elif block.lines:
+            elif block.wanted:
                 taken.add(block.spot.box)
         wishes = (w for w in self._wishes() if only is None or w.key[0] in only)
         for (id, sort), spot in place(wishes, taken).items():
@@ -205,7 +208,7 @@ class Paper(QGraphicsScene):
         for sort in (NodeItem, BranchItem):
             for id, tag in self.tags.items():
                 item = self.items_by_id[id]
-                if isinstance(item, sort) and tag.lines:
+                if isinstance(item, sort) and tag.wanted:
                     rooms = (tag.spread, tag.room)
                     yield Wish((id, "tag"), chain.from_iterable(arrange.tag_spots(item, r) for r in rooms))
 
@@ -215,8 +218,8 @@ class Paper(QGraphicsScene):
         for item in self.items_by_id.values():
             box = box.united(item.boundingRect())
         for block in self._blocks():
-            if block.lines:
-                box = box.united(block.boundingRect())
+            if block.wanted:
+                box = box.united(block.spot.box)
         return box
 
     def _make_room(self) -> None:

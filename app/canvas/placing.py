@@ -113,7 +113,7 @@ def beside(points: list[QPointF], core: float, width: float, height: float, firs
                 reach = core if nth == 0 and off < core + (width if level else height) / 2 else 4.0
                 box = QRectF(at.x() - 1, at.y() - reach, 2, 2 * reach)
                 box = box if level else QRectF(at.x() - reach, at.y() - 1, 2 * reach, 2)
-                yield from around(box, width, height, sides, gap=7.0 + away)
+                yield from around(box, width, height, sides, gap=5.0 + away)
 
 
 def strips(points: list[QPointF], half: float = 3.0) -> Iterator[QRectF]:

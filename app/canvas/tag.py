@@ -13,13 +13,16 @@ from app.canvas.placing import Spot
 from app.canvas.standing import Standing, colour, mark
 
 ROUNDING = 12.0  # sizes grow in steps, so that a changing figure does not make its neighbours jump
-SMALLEST_ZOOM = 0.45
+SMALLEST_ZOOM = 0.45  # below it words are too small to read
+FAR_ZOOM = 0.7  # what is still written there is written as large as at this zoom
+FARTHEST = 2.5
 
 
 class Caption(QGraphicsItem):
     """Lines of text at a spot. It repaints only when the text is another."""
 
     PAD = QSizeF(2, 1)
+    USUAL: tuple[Line, ...] = ()
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__()
@@ -27,6 +30,8 @@ class Caption(QGraphicsItem):
         self.look = look
         self.lines: tuple[Line, ...] = ()
         self.standing = Standing.PLAIN
+        self.awaited = bool(self.USUAL) and not look.printing  # nothing was written yet
+        self.landmark = False  # its name is written from afar too
         self.spot = Spot(QRectF())
         self._room = QSizeF()
         self._bounds = QRectF()
@@ -41,20 +46,28 @@ class Caption(QGraphicsItem):
 
     @property
     def room(self) -> QSizeF:
-        """What it needs, in steps."""
-        return self._room
+        """What it needs, in steps; before there are figures, what they usually need."""
+        return self._room if self.lines or not self.awaited else self._needed(self.USUAL)
+
+    @property
+    def wanted(self) -> bool:
+        """True where it needs a place."""
+        return bool(self.lines) or self.awaited
 
     def write(self, lines: tuple[Line, ...], standing: Standing = Standing.PLAIN) -> bool:
         """Take new text; True where it needs another spot. The same text changes nothing."""
-        if lines == self.lines and standing is self.standing:
+        if lines == self.lines and standing is self.standing and not self.awaited:
             return False
+        awaited, self.awaited = self.awaited, False
         self.lines, self.standing = lines, standing
         self.setVisible(bool(lines))
         self.update()
-        room = self._needed()
-        fits = room.width() <= self._room.width() and room.height() == self._room.height()
-        if not fits:
+        room, had = self._needed(lines), self.spot.box.size() if awaited else self._room
+        fits = room.width() <= had.width() and room.height() == had.height()
+        if awaited or not fits:
             self._room = room
+        if awaited and fits:
+            self.widen()
         return not fits
 
     @property
@@ -64,38 +77,42 @@ class Caption(QGraphicsItem):
 
     def shrink(self) -> bool:
         """Give back room that is not needed any more; True where there was some."""
-        room = self._needed()
+        room = self._needed(self.lines)
         smaller = room != self._room
         self._room = room
         return smaller
 
-    def _needed(self) -> QSizeF:
-        if not self.lines:
+    def _needed(self, lines: tuple[Line, ...]) -> QSizeF:
+        if not lines:
             return QSizeF(0, 0)
-        bare = lettering.size(self.lines)
-        width = math.ceil((bare.width() + self._extra()) / ROUNDING) * ROUNDING
-        return QSizeF(width + 2 * self.PAD.width(), self._height(bare.height()) + 2 * self.PAD.height())
+        bare = lettering.size(lines)
+        width = math.ceil((bare.width() + self._extra(lines)) / ROUNDING) * ROUNDING
+        return QSizeF(
+            width + 2 * self.PAD.width(), self._height(lines, bare.height()) + 2 * self.PAD.height()
+        )
 
-    def _extra(self) -> float:
+    def _extra(self, lines: tuple[Line, ...]) -> float:
         return 0.0
 
-    def _height(self, bare: float) -> float:
+    def _height(self, lines: tuple[Line, ...], bare: float) -> float:
         return bare
 
     def settle(self, spot: Spot) -> None:
         """Stand at this spot from now on, no wider than the words need."""
-        box, room = spot.box, self._room
+        box, room = spot.box, self.room
         left = box.left() + (box.width() - room.width()) * self._hold(spot)
         spot = Spot(QRectF(left, box.top(), room.width(), room.height()), spot.align)
         if spot != self.spot:
             self.prepareGeometryChange()
             self.spot = spot
             self._bounds = spot.box.adjusted(-1, -1, 1, 1)
+            if self.landmark:
+                self._bounds = self._bounds.united(self._from_afar())
             self.update()
 
     def widen(self) -> None:
         """Grow where it stands: nothing jumps under the hand."""
-        if self.spot.box.size() != self._room:
+        if self.spot.box.size() != self.room:
             self.settle(self.spot)
 
     def _hold(self, spot: Spot) -> float:
@@ -106,11 +123,37 @@ class Caption(QGraphicsItem):
         return self._bounds
 
     def paint(self, painter, option, widget=None) -> None:
-        if self.lines and (self.look.printing or painter.worldTransform().m11() >= SMALLEST_ZOOM):
+        zoom = painter.worldTransform().m11()
+        if not self.lines:
+            return
+        if self.look.printing or zoom >= SMALLEST_ZOOM:
             self._paint(painter)
+        else:
+            self._paint_from_afar(painter, min(FAR_ZOOM / zoom, FARTHEST))
 
     def _paint(self, painter) -> None:
         self._letter(painter, self.spot.box, None)
+
+    def _from_afar(self) -> QRectF:
+        """The box of the name at its largest."""
+        bare = lettering.size(self.lines[:1]) * FARTHEST
+        box, align = self.spot.box, self.spot.align
+        left = box.left() + (box.width() - bare.width()) * align
+        return QRectF(QPointF(left, box.center().y() - bare.height() / 2), bare)
+
+    def _paint_from_afar(self, painter, larger: float) -> None:
+        """The name alone, large enough to be read, where there is something it tells apart."""
+        if not self.landmark:
+            return
+        box = self.spot.box
+        name = self.lines[:1]
+        painter.save()
+        painter.translate(box.left() + box.width() * self.spot.align, box.center().y())
+        painter.scale(larger, larger)
+        bare = lettering.size(name)
+        at = QPointF(-bare.width() * self.spot.align, -bare.height() / 2)
+        lettering.paint(painter, name, at, bare.width(), self.look.palette)
+        painter.restore()
 
     def _letter(self, painter, box, over) -> None:
         w, h = self.PAD.width(), self.PAD.height()
@@ -128,15 +171,15 @@ class Caption(QGraphicsItem):
 class Figures(Caption):
     """A caption whose figures go grey when they do not belong to the drawing as it stands."""
 
-    USUAL_CHANGE: Line = (Run("▼ 0.00 kW", Style.CHANGE),)
+    USUAL_CHANGE: Line = (Run("▼ 00 W", Style.CHANGE),)
 
     @property
     def spread(self) -> QSizeF:
-        if len(self.lines) < 2 or self.look.printing:
-            return self._room
-        bare = lettering.line_width(self.lines[1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
-        width = bare + self._extra() + 2 * self.PAD.width()
-        return QSizeF(max(self._room.width(), width), self._room.height())
+        lines, room = self.lines or self.USUAL, self.room
+        if len(lines) < 2 or self.look.printing:
+            return room
+        bare = lettering.line_width(lines[1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
+        return QSizeF(max(room.width(), bare + self._extra(lines) + 2 * self.PAD.width()), room.height())
 
     def _paint(self, painter) -> None:
         self._letter(painter, self.spot.box, self.look.palette.soft if self.look.stale else None)
@@ -145,7 +188,8 @@ class Figures(Caption):
 class Tag(Figures):
     """A rounded card on the paper; near and failed carry their mark and frame."""
 
-    PAD = QSizeF(8, 4)
+    PAD = QSizeF(8, 3)
+    USUAL = ((Run("100.0 kW → 50.0 %"),), (Run("0.10 kW lost", Style.QUIET),))
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__(id, look)
@@ -158,7 +202,14 @@ class Tag(Figures):
             self.lit = lit
             self.update()
 
-    def _extra(self) -> float:
+    def _paint_from_afar(self, painter, larger: float) -> None:
+        painter.save()
+        painter.translate(self.spot.box.center())
+        painter.scale(larger, larger)
+        mark(painter, self.standing, QPointF(), self.look.palette, self.look.stale)
+        painter.restore()
+
+    def _extra(self, lines: tuple[Line, ...]) -> float:
         return 18.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
 
     def _paint(self, painter) -> None:
@@ -170,7 +221,7 @@ class Tag(Figures):
         painter.setPen(QPen(frame, 1.5 if alarmed or self.lit else 1.0))
         painter.setBrush(palette.raised)
         painter.drawRoundedRect(self.spot.box.adjusted(0.5, 0.5, -0.5, -0.5), 6, 6)
-        box = self.spot.box.adjusted(self._extra(), 0, 0, 0)
+        box = self.spot.box.adjusted(self._extra(self.lines), 0, 0, 0)
         if alarmed:
             mark(painter, self.standing, QPointF(box.left() - 4, box.center().y()), palette, stale)
         self._letter(painter, box, palette.soft if stale else None)
@@ -179,6 +230,7 @@ class Tag(Figures):
 class NodeFigures(Figures):
     """Volts and percent with the gauge at their left."""
 
+    USUAL = ((Run("400.0 V"),), (Run("100.0 %", Style.QUIET),))
     USUAL_CHANGE: Line = (Run("▲ 0.0 V", Style.CHANGE),)
 
     def __init__(self, id: str, look: Look) -> None:
@@ -191,15 +243,18 @@ class NodeFigures(Figures):
             self.reading = reading
             self.update()
 
+    def _paint_from_afar(self, painter, larger: float) -> None:
+        """The node itself is coloured."""
+
     def _hold(self, spot: Spot) -> float:
         return LEFT  # the gauge stays, the words grow away from it
 
-    def _extra(self) -> float:
+    def _extra(self, lines: tuple[Line, ...]) -> float:
         marked = 16.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
-        return gauge.WIDTH + 4 + marked if len(self.lines) > 1 else 0.0
+        return gauge.WIDTH + 4 + marked if len(lines) > 1 else 0.0
 
-    def _height(self, bare: float) -> float:
-        return max(bare, gauge.HEIGHT) if len(self.lines) > 1 else bare
+    def _height(self, lines: tuple[Line, ...], bare: float) -> float:
+        return max(bare, gauge.HEIGHT) if len(lines) > 1 else bare
 
     def _paint(self, painter) -> None:
         palette, stale = self.look.palette, self.look.stale
@@ -209,7 +264,7 @@ class NodeFigures(Figures):
             top = box.center().y() - gauge.HEIGHT / 2
             gauge.paint(painter, QPointF(box.left(), top), self.reading, self.standing, palette, stale)
         down = (box.height() - bare.height()) / 2 - self.PAD.height()
-        text = box.adjusted(self._extra(), down, 0, 0)
+        text = box.adjusted(self._extra(self.lines), down, 0, 0)
         if self.standing in (Standing.NEAR, Standing.FAILED) and len(self.lines) > 1:
             mark(painter, self.standing, QPointF(text.left() - 8, box.center().y()), palette, stale)
         w, h = self.PAD.width(), self.PAD.height()

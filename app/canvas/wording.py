@@ -114,8 +114,6 @@ def branch_figures(
     first: Line = (Run(f"{figures.power(kw)} {arrow(angle, forward)} {load}"),)
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
-        if rated:
-            first += change(state.loading_percent - before.loading_percent, 1, "%")
         second += loss_change(state.loss_kw - before.loss_kw)
     return (first,) if lossless else (first, second)
 
