@@ -24,7 +24,7 @@ from app.panels.style import play
 from app.panels.tile import Tile, svg_path
 from app.panels.words import Rule, plain_tip
 
-WIDTH = 60
+WIDTH = 62
 KEYS = {letter: kind for kind, letter in LETTERS.items()}
 
 
@@ -60,17 +60,18 @@ class Shelf(QScrollArea):
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.setAcceptDrops(True)
         self.setAccessibleName("Shelf")
+        self.verticalScrollBar().setStyleSheet("QScrollBar:vertical { width: 7px; }")
         content = QWidget()
         play(content, "panel")
         play(self, "panel")
         self._down = QVBoxLayout(content)
-        self._down.setContentsMargins(4, 8, 4, 8)
+        self._down.setContentsMargins(3, 8, 2, 8)
         self._down.setSpacing(1)
         for part in builtin_parts():
             tile = self._tile(part, own=False)
             tile.setToolTip(f"{part.name}  ({LETTERS[kind_of(part.element)]})")
             self.tiles.append(tile)
-            self._down.addWidget(tile)
+            self._down.addWidget(tile, 0, Qt.AlignmentFlag.AlignHCenter)
         self._down.addSpacing(4)
         self._down.addWidget(Rule())
         self._down.addSpacing(2)
@@ -113,7 +114,7 @@ class Shelf(QScrollArea):
             tile.deleteLater()
         self.own_tiles = [self._own_tile(part) for part in offered]
         for tile in self.own_tiles:
-            self._own_down.addWidget(tile)
+            self._own_down.addWidget(tile, 0, Qt.AlignmentFlag.AlignHCenter)
 
     def _own_tile(self, part: Part) -> Tile:
         tile = self._tile(part, own=True)

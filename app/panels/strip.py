@@ -97,7 +97,7 @@ class VoltageStrip(QWidget):
             self.update()
             return
         chosen = (self.tap.id,) if self.tap.id else self._attention.selection
-        self.course = course(drawing, outcome, self.case, chosen)
+        self.course = course(drawing, outcome, self.case, chosen, self.course)
         before = self._solving.reference
         reach = span(drawing.limits, self.course, [outcome, *([before] if before else [])])
         if self.tap.reach is not None:
@@ -112,12 +112,8 @@ class VoltageStrip(QWidget):
 
     def _curve(self, outcome: Outcome, case: int) -> Curve:
         assert self.axes is not None
-        drawing = self._session.drawing
-        return Curve(
-            outcome.cases[case],
-            stretches(drawing, outcome, case, self.course, self.axes),
-            node_points(outcome, case, self.course, self.axes),
-        )
+        spots = node_points(outcome, case, self.course, self.axes)
+        return Curve(outcome.cases[case], stretches(self._session.drawing, self.course, spots), spots)
 
     def resizeEvent(self, event) -> None:
         self._follow()

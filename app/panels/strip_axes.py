@@ -71,10 +71,9 @@ class Stretch:
     points: tuple[QPointF, ...]
 
 
-def stretches(drawing: Drawing, outcome: Outcome, case: int, course: Course, axes: Axes) -> list[Stretch]:
-    """Every branch that feeds a node, as a polyline; a transformer is a step."""
+def stretches(drawing: Drawing, course: Course, spots: dict[str, QPointF]) -> list[Stretch]:
+    """Every branch that feeds a node, as a polyline between the spots; a transformer is a step."""
     made = []
-    spots = node_points(outcome, case, course, axes)
     for stop in course.stops.values():
         if stop.parent not in spots or stop.id not in spots:
             continue

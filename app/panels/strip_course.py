@@ -47,21 +47,33 @@ class Course:
         return next((s for s in self.stops.values() if s.feeder == branch), None)
 
 
-def course(drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[str]) -> Course:
-    """The main route leads to what is selected, else to the node with the least margin."""
-    stops = _stops(drawing, outcome, case)
+def course(
+    drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[str], last: Course | None = None
+) -> Course:
+    """The main route leads to what is selected, else to the node with the least margin. `last` is used
+    again where the layout is fed as it was."""
+    stops = _stops(drawing, outcome, case, last.stops if last else {})
     made = Course(stops, ())
     target = _target(drawing, outcome, made, selection)
     return Course(stops, made.way_to(_onward(made, target)) if target else ())
 
 
-def _stops(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Stop]:
+def _stops(drawing: Drawing, outcome: Outcome, case: int, last: dict[str, Stop]) -> dict[str, Stop]:
     found: dict[str, Stop] = {}
     alive, routes = column(outcome.nodes, "live", case), column(outcome.nodes, "route_m", case)
     live = {i: routes[i] for i, alive_now in alive.items() if alive_now and i in drawing.elements}
+    if live.keys() == last.keys() and all(_stands(drawing, outcome, s, live) for s in last.values()):
+        return last
     for id in sorted(live, key=live.__getitem__):
         _place(drawing, outcome, id, found, live)
     return found
+
+
+def _stands(drawing: Drawing, outcome: Outcome, stop: Stop, live: dict[str, float]) -> bool:
+    """True where a node is fed as it was."""
+    if stop.route_m != live[stop.id] or stop.feeder != outcome.upstream.get(stop.id, ""):
+        return False
+    return not stop.feeder or stop.parent == _parent(drawing, outcome, stop.id)
 
 
 def column(table: Table, name: str, case: int) -> dict[str, Any]:

@@ -1,10 +1,9 @@
 """The loss tape before it is painted: what the pieces are and where they lie. No painting here."""
 
-import math
 from dataclasses import dataclass, field
 
-from app.model.drawing import Drawing, label
-from app.model.kinds import Generator, Line, Load, Transformer
+from app.model.drawing import Drawing
+from app.model.kinds import Cable, Generator, Load, OverheadLine, Transformer
 from app.panels.strip_course import column
 from app.study.outcome import Outcome
 
@@ -46,8 +45,10 @@ class Cut:
 
 def cut(drawing: Drawing, outcome: Outcome, case: int, width: float) -> Cut:
     """Cut the power of all supplies and generators to scale into a width."""
-    feeds = _feeds(drawing, outcome, case)
-    loads, losses = _loads(drawing, outcome, case), _losses(drawing, outcome, case)
+    found = _gather(drawing, outcome, case)
+    feeds = found["feed"] + found["infeed"]
+    loads = found["load"] + found["export"]
+    losses = [piece for what in LOSSES for piece in found[what]]
     total = sum(p.kw for p in loads) + sum(p.kw for p in losses)
     if total <= 0 or width < 120:
         return Cut()
@@ -93,43 +94,31 @@ def _lay(pieces: list[Piece], left: float, scale: float) -> tuple[Piece, ...]:
     return tuple(placed)
 
 
-def _attached(drawing: Drawing, outcome: Outcome, case: int):
+def _gather(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, list[Piece]]:
+    """Every piece by what it is, the largest first; what is dead or nought makes no piece."""
+    found: dict[str, list[Piece]] = {w: [] for w in ("feed", "infeed", "load", "export", *LOSSES)}
     power = column(outcome.attachments, "kw", case)
-    for id, element in drawing.attachments().items():
-        if math.isfinite(power.get(id, math.nan)):
-            yield id, element, power[id]
-
-
-def _loads(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
-    found = [
-        Piece("load", (id,), kw, label(drawing, id))
-        for id, element, kw in _attached(drawing, outcome, case)
-        if isinstance(element, Load) and kw > 0
-    ]
-    found.sort(key=lambda p: -p.kw)
-    export = -float(outcome.balance.supply_kw[case])
-    if export > 0:
-        found.append(Piece("export", (), export, "back to the supply"))
+    lost = {what: column(outcome.branches, name, case) for what, name in LOSSES.items()}
+    for id, element in drawing.elements.items():
+        for what in _WHAT.get(type(element), ()):
+            kw = (lost[what] if what in lost else power).get(id, 0.0)
+            if kw > 0:
+                found[what].append(Piece(what, (id,), kw, element.name or id))
+    for pieces in found.values():
+        pieces.sort(key=lambda p: -p.kw)
+    supply = float(outcome.balance.supply_kw[case])
+    if supply > 0:
+        found["feed"].append(Piece("feed", (), supply, "supply"))
+    elif supply < 0:
+        found["export"].append(Piece("export", (), -supply, "back to the supply"))
     return found
 
 
-def _losses(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
-    found: dict[str, list[Piece]] = {"copper": [], "iron": [], "cable": []}
-    names = {"copper": "copper_kw", "iron": "iron_kw", "cable": "loss_kw"}
-    lost = {what: column(outcome.branches, name, case) for what, name in names.items()}
-    for id, element in drawing.branches().items():
-        kinds = ("copper", "iron") if isinstance(element, Transformer) else ("cable",)
-        for what in kinds if isinstance(element, Transformer | Line) else ():
-            kw = lost[what].get(id, 0.0)
-            if kw > 0:
-                found[what].append(Piece(what, (id,), kw, label(drawing, id)))
-    return [piece for alike in found.values() for piece in sorted(alike, key=lambda p: -p.kw)]
-
-
-def _feeds(drawing: Drawing, outcome: Outcome, case: int) -> list[Piece]:
-    supply = max(float(outcome.balance.supply_kw[case]), 0.0)
-    made = [Piece("feed", (), supply, "supply")] if supply else []
-    for id, element, kw in _attached(drawing, outcome, case):
-        if isinstance(element, Generator) and kw > 0:
-            made.append(Piece("infeed", (id,), kw, label(drawing, id)))
-    return made
+LOSSES = {"copper": "copper_kw", "iron": "iron_kw", "cable": "loss_kw"}
+_WHAT: dict[type, tuple[str, ...]] = {
+    Load: ("load",),
+    Generator: ("infeed",),
+    Transformer: ("copper", "iron"),
+    Cable: ("cable",),
+    OverheadLine: ("cable",),
+}

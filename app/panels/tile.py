@@ -39,7 +39,7 @@ class Tile(QAbstractButton):
         theme.changed.connect(self.update)
 
     def sizeHint(self) -> QSize:
-        return QSize(TILE + 8, TILE + (11 if self.own else -2))
+        return QSize(TILE + 4, TILE + (11 if self.own else -2))
 
     def picture(self) -> QIcon:
         """The user's own symbol, or that of the kind."""
