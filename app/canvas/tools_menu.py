@@ -24,7 +24,7 @@ Entry = tuple[str, Callable[[], object]] | None
 
 def menu_at(view: BoardView, at: QPointF, keyed: bool = False) -> QMenu:
     """The menu for a point of the paper; what is there is selected first, unless a key called for it."""
-    hit = view.hit(at)
+    hit = view.hit_words(at)
     if not keyed and hit.id not in view.attention.selection:
         view.attention.select([hit.id] if hit.id else ())
     menu = QMenu(view)

@@ -9,7 +9,7 @@ from msgspec.structs import replace
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter, QPen
 
-from app.canvas.geometry import GRID, HitKind, between, distance, node_point, scene, snap
+from app.canvas.geometry import GRID, HitKind, between, distance, meet, node_point, scene, snap
 from app.canvas.lettering import Run, Style, paint
 from app.canvas.palette import Palette
 from app.canvas.tools import ARROWS, ENTERS, Tool, Touch, paint_ring, paint_spot
@@ -17,7 +17,7 @@ from app.canvas.tools_length import LengthField
 from app.model import edits
 from app.model.drawing import Drawing, Part, label
 from app.model.edits import EditRefused
-from app.model.kinds import KIND_WORDS, Branch, Joint, Line, Node, Transformer, kind_of
+from app.model.kinds import KIND_WORDS, Branch, Busbar, Joint, Line, Node, Point, Transformer, kind_of
 
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
@@ -51,6 +51,7 @@ class Spot:
     y: float
     node: str | None = None
     line: str | None = None
+    upright: bool = False  # a branch that starts here leaves it up or down
 
     def met(self, drawing: Drawing) -> tuple[Drawing, str]:
         """The drawing with a node at the spot, and its id."""
@@ -80,6 +81,13 @@ def spot_at(view: BoardView, at: QPointF) -> Spot:
     return Spot(x, y)
 
 
+def corner(start: Spot, near: Node, far: Node) -> Point | None:
+    """The bend of a branch that leaves its start upright, where its own way would be the other."""
+    if not start.upright or isinstance(near, Busbar) or 0.0 in (far.x - near.x, far.y - near.y):
+        return None
+    return None if isinstance(far, Busbar) and not far.upright else (near.x, far.y)
+
+
 def drawn(drawing: Drawing, start: Spot, end: Spot, brush: Brush, length: str) -> tuple[Drawing, str, str]:
     """The drawing with one more branch, that branch, and the node at its far end."""
     drawing, element = brush.element(drawing)
@@ -87,6 +95,8 @@ def drawn(drawing: Drawing, start: Spot, end: Spot, brush: Brush, length: str) -
     far = end.node
     if end.line is not None:
         drawing, far = end.met(drawing)
+    bend = corner(start, start.as_node(drawing), end.as_node(drawing))
+    element = replace(element, via=(bend,) if bend is not None else ())
     before = drawing
     drawing = edits.extend(drawing, near, element, end.x, end.y, far)
     fresh = edits.added(before, drawing)
@@ -156,7 +166,7 @@ class PullTool(Tool):
         near, far = self.start.as_node(drawing), self._aim.as_node(drawing)
         painter.setPen(QPen(palette.flow, 2.5, Qt.PenStyle.DashLine))
         if not self._nowhere():
-            painter.drawPolyline(between(near, far))
+            painter.drawPolyline(self._way(near, far))
         for spot in (self.start, self._aim):
             if spot.node is not None:
                 paint_ring(painter, spot.as_node(drawing), palette)
@@ -165,6 +175,12 @@ class PullTool(Tool):
         if isinstance(self.brush.part.element, Line) and not self.field.text():
             hint = ((Run("type its length", Style.QUIET),),)
             paint(painter, hint, scene(self._aim.x, self._aim.y) + QPointF(16, 10), 120, palette)
+
+    def _way(self, near: Node, far: Node) -> list[QPointF]:
+        bend = corner(self.start, near, far)
+        if bend is None:
+            return between(near, far)
+        return [node_point(near), scene(*bend), meet(far, scene(*bend))]
 
     def _look(self, touch: Touch) -> None:
         self._aim = spot_at(self.view, touch.at)

@@ -30,7 +30,7 @@ class NameField(QLineEdit):
         self.setMaxLength(LONGEST)
         self.setAlignment(Qt.AlignmentFlag.AlignHCenter)
         self.resize(WIDE, self.sizeHint().height())
-        at = view.px_of(id)
+        at = view.px_of_name(id)
         self.move(at.x() - WIDE // 2, at.y() - self.height() // 2)
         self.selectAll()
         self.show()

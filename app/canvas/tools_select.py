@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter
 
-from app.canvas.geometry import Hit, HitKind, distance, pose, route
+from app.canvas.geometry import Hit, HitKind, distance, node_point, pose, route
 from app.canvas.palette import Palette
 from app.canvas.tools import SLACK_PX, Tool, Touch
 from app.canvas.tools_bend import EndTool, RunTool, with_bend, without_bend
@@ -39,7 +39,7 @@ class SelectTool(Tool):
 
     def press(self, touch: Touch) -> None:
         self._pressed, self._narrow = touch, None
-        self._hit = self.view.hit(touch.at)
+        self._hit = self.view.hit_words(touch.at)
         grips = (HitKind.BEND, HitKind.END)
         self._handle = None if self._hit.kind in grips else self._handle_at(touch.at)
         if self._handle is None and self._hit.kind not in grips:
@@ -98,13 +98,15 @@ class SelectTool(Tool):
     def _handle_tool(self, handle: Handle) -> Tool:
         if handle.end is not None:
             return BarTool(self.view, handle.node, handle.end)
-        return pull_from(self.view, handle.node, held=True)
+        middle = self.view.drawing.elements[handle.node]
+        upright = isinstance(middle, Node) and abs(handle.at.x() - node_point(middle).x()) < 1
+        return pull_from(self.view, handle.node, held=True, upright=upright)
 
     # double click, hover, keys ---------------------------------------------------------------------
 
     def double(self, touch: Touch) -> None:
         """On a bend: one less. On a line: one more. On anything with a symbol: its name."""
-        hit, view = self.view.hit(touch.at), self.view
+        hit, view = self.view.hit_words(touch.at), self.view
         self._pressed = None
         if not hit.id or hit.kind is HitKind.LADDER:
             return
@@ -124,10 +126,10 @@ class SelectTool(Tool):
         return distance(pose(route(self.view.drawing, id))[0], at) < SYMBOL_REACH
 
     def _hover(self, touch: Touch) -> None:
-        hit = self.view.hit(touch.at)
+        hit = self.view.hit_words(touch.at)
         self.view.attention.look_at(hit.id)
         before = (self._near, self._handle)
-        if isinstance(self.view.drawing.elements.get(hit.id), Node):
+        if hit.kind is HitKind.NODE:
             self._near = hit.id
         elif self._near and strays(self.view, self._near, touch.at):
             self._near = ""
@@ -168,8 +170,8 @@ class SelectTool(Tool):
         paint_handles(painter, self._handles(), self._handle, palette)
 
 
-def pull_from(view: BoardView, node: str, *, held: bool) -> PullTool:
+def pull_from(view: BoardView, node: str, *, held: bool, upright: bool = False) -> PullTool:
     """The tool that draws on from a node with the last used branch part."""
     met = view.drawing.elements[node]
     assert isinstance(met, Node)
-    return PullTool(view, Spot(met.x, met.y, node=node), view.brush, held=held)
+    return PullTool(view, Spot(met.x, met.y, node=node, upright=upright), view.brush, held=held)

@@ -97,4 +97,4 @@ def effect(t: Transformer, notch: int, fed_winding: int) -> str:
 
 def nameplate_words(t: Transformer, notch: int) -> str:
     """`10 725 V −2.5 %`."""
-    return f"{nameplate(taps.nameplate_v(t, notch))} {notch_percent(t, notch)}"
+    return f"{nameplate(round(taps.nameplate_v(t, notch), 1))} {notch_percent(t, notch)}"

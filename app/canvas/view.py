@@ -11,6 +11,7 @@ from app.canvas import tools_travel as travel
 from app.canvas.board import Board
 from app.canvas.geometry import Hit, HitKind, attachment_point, node_point, pose, route, snap
 from app.canvas.ladder import release_tap_key
+from app.canvas.tag import Caption
 from app.canvas.theme import Theme
 from app.canvas.tools import Tool, named, node_at
 from app.canvas.tools_keys import SHORTCUTS
@@ -101,6 +102,14 @@ class BoardView(EventView):
         """What lies under a point of the paper, as near as the hand can aim on the screen."""
         return self.board.hit(at, HIT_PX / min(self.scale_now(), 1.0))
 
+    def hit_words(self, at: QPointF) -> Hit:
+        """The same, and on a name or tag the element it belongs to, as paper that has an id."""
+        hit = self.hit(at)
+        if hit.kind is not HitKind.PAPER:
+            return hit
+        words = next((i for i in self.board.items(at) if isinstance(i, Caption)), None)
+        return Hit(HitKind.PAPER, words.id) if words is not None else hit
+
     def hit_node(self, at: QPointF) -> str | None:
         """The node under a point, whatever else lies there."""
         hit = self.hit(at)
@@ -131,6 +140,12 @@ class BoardView(EventView):
         else:
             point = pose(route(self.drawing, id))[0]
         return self.mapFromScene(point)
+
+    def px_of_name(self, id: str) -> QPoint:
+        """Where its name is written, or would be."""
+        caption = self.board.captions.get(id)
+        written = caption is not None and not caption.spot.box.isEmpty()
+        return self.mapFromScene(caption.spot.box.center()) if caption and written else self.px_of(id)
 
     def scale_now(self) -> float:
         """Screen pixels a pixel of the paper."""

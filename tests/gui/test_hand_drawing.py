@@ -255,3 +255,13 @@ def test_ctrl_click_does_not_place_twice(blank):
     blank.click(0, 0, CTRL)
     QTest.mouseClick(blank.view.viewport(), LEFT, NONE, blank.px(6, 6))
     assert list(blank.drawing.elements) == ["J1"]
+
+
+def test_a_branch_leaves_its_node_the_way_it_was_pulled(desk):
+    desk.hover(24, 0)
+    desk.drag((24, 1.3), (28, 6), (30, 8))
+    assert desk.drawing.elements["C2"].via == ((24.0, 8.0),)
+    desk.undo()
+    desk.hover(24, 0)
+    desk.drag((24 - 1.3, 0), (20, 6), (18, 8))
+    assert desk.drawing.elements["C2"].via == ()

@@ -4,6 +4,7 @@ from hand_desk import CTRL, SHIFT, blank, desk, pair
 from msgspec.structs import replace
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QLineEdit
 
 from app.canvas.geometry import route
 from app.canvas.tools_move import guides
@@ -211,3 +212,17 @@ def test_the_drawing_is_replaced_under_the_hand_without_harm(desk):
     desk.hover(24, 0)
     desk.click(24, 0)
     assert desk.attention.selection == frozenset()
+
+
+def test_a_click_on_a_name_selects_and_a_double_click_renames(desk):
+    box = desk.board.captions["C1"].spot.box
+    at = (box.center().x() / 20, box.center().y() / 20)
+    desk.click(*at)
+    assert desk.attention.selection == {"C1"}
+    desk.double_click(*at)
+    fields = [f for f in desk.view.viewport().findChildren(QLineEdit) if f.isVisible()]
+    assert len(fields) == 1
+    assert (fields[0].geometry().center() - desk.px(*at)).manhattanLength() < 4
+    QTest.keyClicks(fields[0], "Long run")
+    QTest.keyClick(fields[0], Qt.Key.Key_Return)
+    assert desk.drawing.elements["C1"].name == "Long run"
