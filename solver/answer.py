@@ -10,6 +10,8 @@ from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
 
+OPEN = 1e-6  # closure from which an answer is none
+
 
 def answer(
     network: Network,
@@ -49,7 +51,9 @@ def answer(
     given = _sum(source_power)
     size = np.maximum(np.abs(given), np.nansum(np.abs(load_power), axis=(0, 1)))
     gap = np.abs(given - drawn_power - lost)
-    closure = np.divide(gap, size, out=np.where(gap > 0, np.inf, gap), where=size > 0)
+    closure = np.divide(gap, size, out=np.where(gap > 0, np.inf, 0.0), where=size > 0)
+    closure[[s is not Status.SOLVED for s in status]] = np.nan
+    status = tuple(Status.NOT_SETTLED if c > OPEN else s for s, c in zip(status, closure, strict=True))
     return Solution(
         network=network,
         forest=forest,
@@ -125,11 +129,11 @@ def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
     return power, np.conj(power / at)
 
 
-def unsolved(network: Network, trouble: Trouble, width: int) -> Solution:
-    """The solution of a network that is no set of trees: every figure is nan, every status INVALID.
+def unsolved(network: Network, forest: Forest | Trouble, width: int) -> Solution:
+    """The solution of a network that is no set of supplied trees: no figures, every status INVALID.
 
     network : Network
-    trouble : Trouble
+    forest : Trouble, or a Forest without a live node
     width : number of operating points
     Returns : Solution
     """
@@ -141,7 +145,7 @@ def unsolved(network: Network, trouble: Trouble, width: int) -> Solution:
     loads, sources = network.load_node.size, network.source_node.size
     return Solution(
         network=network,
-        forest=trouble,
+        forest=forest,
         status=(Status.INVALID,) * width,
         voltage=blank(network.node_count),
         line_in=blank(lines),

@@ -112,8 +112,9 @@ def _walk(network: Network) -> _Walk:
     roots, cuts = np.unique(network.source_node, return_index=True)
     whole = roots.size == network.source_node.size
     fed = np.full(roots.size, ROOT)
-    all_roots, all_cuts = [], []
-    while roots.size:
+    all_roots: list[Index] = []
+    all_cuts: list[Index] = []
+    while roots.size or not all_roots:
         all_roots.append(roots)
         all_cuts.append(cuts)
         for root, feeding in zip(roots.tolist(), fed.tolist(), strict=True):

@@ -129,15 +129,20 @@ class _Run:
         image, step = self.image.copy(), self.step.copy()
         guess = self.anderson.next(image, step)
         wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
-        wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < LOW
+        if self._can_collapse():
+            wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < LOW
         self.best = np.minimum(self.best, change)
         if wild.any():
             self.anderson.restart(np.flatnonzero(wild))
             guess[..., wild] = image[..., wild]
         return guess
 
+    def _can_collapse(self) -> bool:
+        """Loads that hold their power or current can ask too much; impedances always leave an answer."""
+        return self.placed.current is not None or bool(self.placed.power.any())
+
     def _judge(self) -> None:
-        """What has not settled by now has no operating point, if its loads hold their power or current."""
-        if self.placed.power.any() or self.placed.current is not None:
+        """What has not settled by now has no operating point, if its loads can bring it down."""
+        if self._can_collapse():
             lost = self.status == Status.NOT_SETTLED
             self.status[lost] = Status.NO_OPERATING_POINT

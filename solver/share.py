@@ -18,7 +18,8 @@ TRIES = 16
 class Share:
     """The largest load that still solves, and what stands in the way of more.
 
-    share : of the loads as drawn, to 0.1 % or better; infinite where no limit was met up to a thousandfold
+    share : of the loads as drawn, to 0.1 % or better; infinite where impedances alone draw, or where
+        a thousandfold still solves
     line : row of the line to blame, None where it is a transformer or nothing
     transformer : row of the transformer to blame, None where it is a line or nothing
     """
@@ -46,6 +47,8 @@ def largest_share(network: Network, point: int = 0) -> Share:
     if not isinstance(forest, Forest):
         raise ValueError("closed loops or joined supplies have no share")
     one = pick(network, np.array([point]))
+    if not one.load_mix[:, :2].any():
+        return Share(np.inf, None, None)
     low, high = 0.0, 1.0
     while solve(scaled(one, np.array([high])), forest=forest).status[0] is Status.SOLVED:
         low, high = high, high * 4

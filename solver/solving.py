@@ -19,14 +19,15 @@ def solve(
     forest : Forest or Trouble of a network with the same connections, where it is known already
     warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
     Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
-        NOT_SETTLED where the sweeps still moved, INVALID where loops are closed or supplies joined
+        NOT_SETTLED where the sweeps still moved, INVALID where loops are closed, supplies
+        joined or nothing is supplied
     Raises : ValueError for arrays that do not fit together, a programmer's mistake
     Source : see solver.sweep
     """
     network.check()
     forest = grow(network) if forest is None else forest
     width = network.batch
-    if isinstance(forest, Trouble):
+    if isinstance(forest, Trouble) or not forest.order.size:
         return unsolved(network, forest, width)
     placed = put(network, forest)
     start = no_load(placed, forest, network.conductors, width)

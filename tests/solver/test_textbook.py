@@ -77,7 +77,7 @@ def test_generator_line_load_without_and_with_transformers():
     z, load = complex(*case["data"]["Z_line_ohm"]), complex(*case["data"]["Z_load_ohm"])
     plain = solve(build(2, [(0, 480)], [(0, 1, z)], shunts=[(1, 1 / load)]))
     exact = case["exact"]["a_no_transformers"]
-    # the magnitudes 90.758 A and 453.79 V of this case contradict its own loss of 1482.731 W; E03 has them right
+    # 90.758 A and 453.79 V of this case contradict its own loss of 1482.731 W; E03 has them right
     other = EXAMPLES["E03"]["recomputed"]["a"]
     close(plain.line_in[0, 0, 0], (other["I"]["mag"], exact["I_A"][1]))
     close(plain.voltage[1, 0, 0], (other["V_load"]["mag"], exact["V_load"][1]))
