@@ -267,7 +267,7 @@ class Shelf(QScrollArea):
         if not path:
             return
         event.acceptProposedAction()
-        kind = self.dialogs.ask_kind(Path(path).stem)
+        kind = self.dialogs.ask_kind()
         if kind is not None:
             self.make_part(kind, path)
 

@@ -21,10 +21,10 @@ class ShelfDialogs:
         name, agreed = QInputDialog.getText(self._parent, title, "Name of the part", text=suggestion)
         return name.strip() if agreed else ""
 
-    def ask_kind(self, name: str) -> str | None:
+    def ask_kind(self) -> str | None:
         """What a dropped picture is the symbol of."""
         words = [KIND_WORDS[kind] for kind in KINDS_WITH_SYMBOL]
-        title, question = "A part of your own", f"What is {name[:60]} the symbol of?"
+        title, question = "A part of your own", "What is this picture the symbol of?"
         word, agreed = QInputDialog.getItem(self._parent, title, question, words, 0, False)
         return KINDS_WITH_SYMBOL[words.index(word)] if agreed else None
 

@@ -102,6 +102,10 @@ class Tile(QAbstractButton):
         if svg_path(event.mimeData()):
             event.acceptProposedAction()
 
+    def dragMoveEvent(self, event) -> None:
+        if svg_path(event.mimeData()):
+            event.acceptProposedAction()
+
     def dropEvent(self, event) -> None:
         path = svg_path(event.mimeData())
         if path:

@@ -36,7 +36,7 @@ class Answers:
     def ask_name(self, title, suggestion):
         return self.name
 
-    def ask_kind(self, name):
+    def ask_kind(self):
         return self.kind
 
     def svg_to_open(self):
