@@ -83,11 +83,12 @@ class Board(Paper):
     def _follow(self, change: Change) -> None:
         drawing = self.session.drawing
         ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
-        if self.lay(drawing, ids):
-            self._fit_words(with_neighbours(drawing, frozenset(ids)))
+        moved = self.lay(drawing, ids)
         gone = self.attention.selection - drawing.elements.keys()
-        if gone:
+        if gone:  # first, so that no ladder is left at a transformer that is gone
             self.attention.select(self.attention.selection - gone)
+        if moved:
+            self._fit_words(with_neighbours(drawing, frozenset(ids)))
         self._light()
 
     def refresh(self) -> None:
