@@ -97,14 +97,15 @@ def paint(
     align: float = LEFT,
     over: QColor | None = None,
 ) -> None:
-    """Lines from a top left corner, inside a width; `over` takes the place of every colour."""
+    """Lines from a top left corner, inside a width; figures take the colour `over` where one is given."""
     y = at.y()
     for line in lines:
         height = line_height(line)
         x = at.x() + (width - line_width(line)) * align
         for run in line:
             painter.setFont(face(run.style))
-            painter.setPen(over or getattr(palette, run.style.value[2]))
+            fixed = over is None or run.style in (Style.NAME, Style.QUIET)
+            painter.setPen(getattr(palette, run.style.value[2]) if fixed else over)
             painter.drawStaticText(QPointF(x, y + height - _metrics(run.style).height()), _laid(run))
             x += _advance(run) + GAP
         y += height + LEADING

@@ -67,13 +67,14 @@ class Paper(QGraphicsScene):
         self.captions: dict[str, Caption] = {}
         self.tags: dict[str, Tag | NodeFigures] = {}
         self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
-        self._shown: Shown
+        self._shown: Shown | None = None
         self.setItemIndexMethod(QGraphicsScene.ItemIndexMethod.BspTreeIndex)
 
     # the drawing --------------------------------------------------------------------------------
 
     def lay_out(self, drawing: Drawing) -> None:
         """Show another drawing."""
+        self._shown = None
         for id in list(self.items_by_id):
             self._take_off(id)
         self.lay(drawing, drawing.elements)
@@ -99,7 +100,7 @@ class Paper(QGraphicsScene):
             self.captions[id].landmark = isinstance(element, Busbar) or (
                 isinstance(element, Node) and bool(element.name)
             )
-            moved |= self.captions[id].write(wording.caption(drawing, id))
+            moved |= self._name(drawing, id)
         return moved
 
     def _put_on(self, id: str, element: object) -> None:
@@ -122,6 +123,14 @@ class Paper(QGraphicsScene):
             if id in table:
                 self.removeItem(table.pop(id))
 
+    def _name(self, drawing: Drawing, id: str) -> bool:
+        """Write the caption; supplies and scaled loads say their power in it."""
+        lines, element = wording.caption(drawing, id), drawing.elements[id]
+        if self._shown is not None and id in self._shown.outcome.attachments:
+            case = drawing.cases[min(self._shown.case, len(drawing.cases) - 1)]
+            lines += wording.attachment_figures(element, case, *self._shown.rows("attachments", id))
+        return self.captions[id].write(lines)
+
     # the figures --------------------------------------------------------------------------------
 
     def show_outcome(
@@ -142,13 +151,17 @@ class Paper(QGraphicsScene):
                 if id in self.items_by_id:
                     self.items_by_id[id].stand(standing.of_row(live, id, worst))
         self._show_flows(outcome.branches, case)
+        hung = [id for id in outcome.attachments.ids if id in self.items_by_id and id in drawing.elements]
+        grown = {id for id in hung if self._name(drawing, id)}
         self.owed = {
             id: None for table in (outcome.nodes, outcome.branches) for id in table.ids if id in self.tags
         }
-        return self._write([id for id in self.owed if seen(self.tags[id])])
+        return grown | self._write([id for id in self.owed if seen(self.tags[id])])
 
     def write_owed(self, most: int | None = None) -> set[str]:
         """Write words that were put off; the ids of those that need more room than they have."""
+        if self._shown is None:
+            return set()
         return self._write(list(islice(self.owed, most)))
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
@@ -161,14 +174,16 @@ class Paper(QGraphicsScene):
 
     def _write(self, ids: list[str]) -> set[str]:
         grown = set()
+        shown = self._shown
+        assert shown is not None
         for id in ids:
             del self.owed[id]
             item, tag = self.items_by_id[id], self.tags[id]
             if isinstance(tag, NodeFigures):
-                tag.read(self._shown.reading(id))
-                lines = wording.node_figures(*self._shown.rows("nodes", id))
+                tag.read(shown.reading(id))
+                lines = wording.node_figures(*shown.rows("nodes", id))
             elif isinstance(item, BranchItem):
-                lines = wording.branch_figures(item.angle, *self._shown.rows("branches", id), item.lossless)
+                lines = wording.branch_figures(item.angle, *shown.rows("branches", id), item.lossless)
             if tag.write(lines, item.standing):
                 grown.add(id)
         return grown

@@ -105,9 +105,7 @@ class Caption(QGraphicsItem):
         if spot != self.spot:
             self.prepareGeometryChange()
             self.spot = spot
-            self._bounds = spot.box.adjusted(-1, -1, 1, 1)
-            if self.landmark:
-                self._bounds = self._bounds.united(self._from_afar())
+            self._bounds = self._reach().adjusted(-1, -1, 1, 1)
             self.update()
 
     def widen(self) -> None:
@@ -132,7 +130,14 @@ class Caption(QGraphicsItem):
             self._paint_from_afar(painter, min(FAR_ZOOM / zoom, FARTHEST))
 
     def _paint(self, painter) -> None:
-        self._letter(painter, self.spot.box, None)
+        self._letter(painter, self.spot.box, self.look.palette.soft if self.look.stale else None)
+
+    def _reach(self) -> QRectF:
+        """All it may ever cover: its words with the changes of a drag, or its name seen from afar."""
+        box, spread = self.spot.box, self.spread
+        left = box.left() + (box.width() - spread.width()) * self._hold(self.spot)
+        whole = box.united(QRectF(QPointF(left, box.top()), spread))
+        return whole.united(self._from_afar()) if self.landmark else whole
 
     def _from_afar(self) -> QRectF:
         """The box of the name at its largest."""
@@ -169,7 +174,7 @@ class Caption(QGraphicsItem):
 
 
 class Figures(Caption):
-    """A caption whose figures go grey when they do not belong to the drawing as it stands."""
+    """Words that keep room for the changes of a drag."""
 
     USUAL_CHANGE: Line = (Run("▼ 00 W", Style.CHANGE),)
 
@@ -180,9 +185,6 @@ class Figures(Caption):
             return room
         bare = lettering.line_width(lines[1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
         return QSizeF(max(room.width(), bare + self._extra(lines) + 2 * self.PAD.width()), room.height())
-
-    def _paint(self, painter) -> None:
-        self._letter(painter, self.spot.box, self.look.palette.soft if self.look.stale else None)
 
 
 class Tag(Figures):

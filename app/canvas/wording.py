@@ -4,7 +4,7 @@ import math
 
 from app.canvas.lettering import Line, Run, Style
 from app.model import figures
-from app.model.drawing import Drawing
+from app.model.drawing import Case, Drawing
 from app.model.kinds import (
     AnyElement,
     Capacitor,
@@ -18,7 +18,7 @@ from app.model.kinds import (
 from app.model.kinds import (
     Line as LineElement,
 )
-from app.study.outcome import BranchState, NodeState
+from app.study.outcome import AttachmentState, BranchState, NodeState
 
 Lines = tuple[Line, ...]
 
@@ -135,6 +135,20 @@ def node_figures(state: NodeState, before: NodeState | None) -> Lines:
         scale, digits, unit = (1.0, 1, "V") if abs(state.voltage_v) < 999.95 else (1e-3, 3, "kV")
         second += change(delta * scale, digits, unit)
     return first, second
+
+
+def attachment_figures(
+    element: AnyElement, case: Case, state: AttachmentState, before: AttachmentState | None
+) -> Lines:
+    """What a supply gives; what a load or generator takes or gives where the case scales it."""
+    scaled = case.load_percent if isinstance(element, Load) else case.generation_percent
+    told = isinstance(element, Supply) or isinstance(element, Load | Generator) and scaled != 100
+    if not told or not state.live:
+        return ()
+    line: Line = (Run(figures.power(state.kw)),)
+    if before is not None and before.live:
+        line += loss_change(state.kw - before.kw)
+    return (line,)
 
 
 def change(delta: float, digits: int, unit: str) -> Line:

@@ -2,6 +2,7 @@
 
 from dataclasses import replace
 
+import msgspec
 import pytest
 from board_drawings import EVERY_KIND, FERNHOLLOW, figures
 from PySide6.QtCore import QPointF, QRectF
@@ -18,7 +19,7 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model import edits
-from app.model.drawing import Drawing, Part
+from app.model.drawing import Case, Drawing, Part
 from app.model.kinds import Busbar, Cable, Joint, Load, Transformer
 
 SVG = (
@@ -81,7 +82,18 @@ def test_captions_say_what_an_element_is(bench):
     assert board.captions["T2"].text == "T2\n100 kVA 11/0.4 kV Dyn11\ntap −2.5 %"
     assert board.captions["C1"].text == "C1\n3×35 Al 11 kV 1.15 km"
     assert board.captions["L2"].text == "House\n80 kVA pf 0.95"
-    assert board.captions["S1"].text == "Intake\n400 V\nheld at 97 %"
+    assert board.captions["S1"].text.startswith("Intake\n400 V\nheld at 97 %")
+
+
+def test_supplies_say_what_they_give_and_scaled_loads_what_they_take(bench):
+    night = Case(name="Night", load_percent=10.0)
+    one = bench(msgspec.structs.replace(FERNHOLLOW, cases=(*FERNHOLLOW.cases, night)))
+    given = one.solving.outcome.attachments.at("S1", 0).kw
+    assert one.board.captions["S1"].text.endswith(f"\n{given:.2f} kW")
+    assert one.board.captions["L2"].text == "House\n80 kVA pf 0.95"
+    one.attention.show_case(2)
+    taken = one.solving.outcome.attachments.at("L2", 2).kw
+    assert one.board.captions["L2"].text == f"House\n80 kVA pf 0.95\n{taken:.2f} kW"
 
 
 def test_tags_and_nodes_write_the_outcome(bench):
@@ -325,8 +337,6 @@ def test_the_users_own_symbol_is_worn_on_the_board(bench):
     plain = bench(FERNHOLLOW)
     elements = dict(FERNHOLLOW.elements)
     elements["T2"] = Transformer(start="J2", end="HS", part="mine")
-    import msgspec
-
     one = bench(msgspec.structs.replace(FERNHOLLOW, elements=elements, parts={"mine": part}))
     item = one.board.item_of("T2")
     assert isinstance(item.worn, Worn)
