@@ -63,8 +63,10 @@ class Desk:
         self.view.refused.connect(lambda sentence, at: self.refusals.append(sentence))
         self.view.resize(1200, 700)
         self.view.show()
-        self.view.fit()
         self.solving.settle()
+        self.board.write_rest()
+        QApplication.processEvents()
+        self.view.fit()
 
     @property
     def drawing(self) -> Drawing:
