@@ -71,6 +71,7 @@ class Window(QMainWindow):
         self.middle.addWidget(self.strip)
         self.middle.setStretchFactor(0, 3)
         self.middle.setStretchFactor(1, 1)
+        self.middle.setSizes([560, 190])
         across = QHBoxLayout()
         for part, stretch in ((self.shelf, 0), (self.middle, 1), (self.card, 0)):
             across.addWidget(part, stretch)

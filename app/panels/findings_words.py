@@ -2,12 +2,11 @@
 
 from dataclasses import dataclass
 
-import numpy as np
-
 from app.model.drawing import Drawing, label
 from app.model.fields import fields_of
 from app.panels.element_page import round_off
 from app.panels.results import RANK
+from app.study.findings import checks_made
 from app.study.outcome import Assumption, Finding, Outcome, Verdict
 from solver.status import Status
 
@@ -33,7 +32,7 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
     found = ordered(outcome)
     failing = [f for f in found if f.verdict in (Verdict.FAILS, Verdict.BLOCKS)]
     near = [f for f in found if f.verdict is Verdict.NEAR]
-    checks = judged(drawing, outcome)
+    checks = checks_made(drawing, outcome.nodes, outcome.branches)
     if failing:
         head = f"{len(failing)} {'check fails' if len(failing) == 1 else 'checks fail'}."
         return Line(failing[0].verdict, head, failing[0].sentence, failing[0].ids)
@@ -63,31 +62,3 @@ def ordered(outcome: Outcome) -> list[Finding]:
     """All findings, failing ones first, the tightest first among equals."""
     far = float("inf")
     return sorted(outcome.findings, key=lambda f: (RANK[f.verdict], far if f.margin is None else f.margin))
-
-
-def judged(drawing: Drawing, outcome: Outcome) -> int:
-    """How many checks were made: each live node low and high, its drop where limited, each rated branch."""
-    nodes = _known(outcome.nodes.column("percent"))
-    drops = nodes if drawing.limits.drop_percent is not None else 0
-    return 2 * nodes + drops + _known(outcome.branches.column("loading_percent"))
-
-
-def _known(column) -> int:
-    table = np.asarray(column, dtype=float)
-    if table.size == 0:
-        return 0
-    return int(np.isfinite(table.reshape(len(table), -1)).any(axis=1).sum())
-
-
-def assumption_words(drawing: Drawing, assumption: Assumption) -> str:
-    """`T2: No-load current i0 is taken as 0.8 %: common practice, no source`."""
-    element = drawing.elements.get(assumption.id)
-    about = fields_of(type(element)).get(assumption.field) if element is not None else None
-    name = about.label if about else assumption.field
-    value = f"{round_off(assumption.value)} {assumption.unit}".strip()
-    return f"{label(drawing, assumption.id)}: {name} is taken as {value} ({assumption.basis})"
-
-
-def count_words(count: int) -> str:
-    """`3 assumed values to confirm`."""
-    return f"{count} assumed {'value' if count == 1 else 'values'} to confirm"

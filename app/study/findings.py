@@ -164,6 +164,24 @@ def _finding(
     )
 
 
+def checks_made(drawing: Drawing, nodes: Table[NodeState], branches: Table[BranchState]) -> int:
+    """How many checks `judge` makes: each live node low, high and its drop where limited, each rated branch.
+
+    drawing : the drawing, for its limits
+    nodes : table, percent (node, case) [% of nominal]
+    branches : table, loading_percent (branch, case) [% of rating]
+
+    Returns : number of elements and checks, whatever the number of cases
+    """
+    levels = _known(nodes.column("percent"))
+    drops = levels if drawing.limits.drop_percent is not None else 0
+    return 2 * levels + drops + _known(branches.column("loading_percent"))
+
+
+def _known(value: Real) -> int:
+    return int(np.isfinite(value).any(axis=1).sum())
+
+
 def apart(value: float, limit: float) -> tuple[str, str]:
     """Value and limit with enough digits to tell them apart: `93.611 %` against `93.617 %`.
 
