@@ -1,0 +1,56 @@
+"""From the start of the process to a usable window on a sample, against an empty window of the same toolkit.
+
+Goal: at most 2.5. Printed, never asserted: `FAREND_BENCHMARK=1 pytest -s tests/benchmarks/test_start.py`.
+"""
+
+import os
+import subprocess
+import sys
+from pathlib import Path
+from statistics import median
+from time import perf_counter
+
+ROUNDS = 9 if os.environ.get("FAREND_BENCHMARK") == "1" else 1
+SAMPLE = Path(__file__).resolve().parents[2] / "samples" / "fernhollow_pair.farend"
+EMPTY = """
+import sys
+from PySide6.QtWidgets import QApplication, QMainWindow
+app = QApplication(sys.argv[:1])
+window = QMainWindow()
+window.resize(1440, 900)
+window.show()
+app.processEvents()
+"""
+OURS = f"""
+import sys
+from pathlib import Path
+from PySide6.QtCore import QTimer
+from PySide6.QtWidgets import QApplication
+from app.window import Window
+from app.live.preferences import Preferences
+app = QApplication(sys.argv[:1])
+window = Window(Preferences(Path(sys.argv[1])))
+window.show()
+window.menus.open_path(Path({str(SAMPLE)!r}))
+app.processEvents()
+window.solving.settle()
+app.processEvents()
+assert window.solving.outcome.status.name == "SOLVED"
+window.close()
+"""
+
+
+def seconds(script: str, likes: Path) -> float:
+    start = perf_counter()
+    subprocess.run([sys.executable, "-c", script, str(likes)], check=True, capture_output=True)
+    return perf_counter() - start
+
+
+def test_start_against_an_empty_window(tmp_path):
+    pairs = []
+    for _ in range(ROUNDS):
+        pairs.append((seconds(EMPTY, tmp_path / "a.ini"), seconds(OURS, tmp_path / "a.ini")))
+    empty, ours = median(p[0] for p in pairs), median(p[1] for p in pairs)
+    ratio = median(b / a for a, b in pairs)
+    print(f"\nempty window {empty:.2f} s, Farend on a sample {ours:.2f} s, ratio {ratio:.2f} (goal 2.5)")
+    assert ratio > 0
