@@ -23,6 +23,7 @@ class Caption(QGraphicsItem):
 
     PAD = QSizeF(2, 1)
     USUAL: tuple[Line, ...] = ()
+    USUAL_CHANGE: Line = (Run("▼ 00 W", Style.CHANGE),)
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__()
@@ -72,8 +73,13 @@ class Caption(QGraphicsItem):
 
     @property
     def spread(self) -> QSizeF:
-        """What it would need with the changes of a drag in it."""
-        return self._room
+        """What it would need with the change of a drag in its last line."""
+        lines, room = self.lines or self.USUAL, self.room
+        changes = len(lines) > 1 and any(run.style is Style.FIGURE for line in lines for run in line)
+        if not changes or self.look.printing:
+            return room
+        bare = lettering.line_width(lines[-1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
+        return QSizeF(max(room.width(), bare + self._extra(lines) + 2 * self.PAD.width()), room.height())
 
     def shrink(self) -> bool:
         """Give back room that is not needed any more; True where there was some."""
@@ -173,21 +179,7 @@ class Caption(QGraphicsItem):
         )
 
 
-class Figures(Caption):
-    """Words that keep room for the changes of a drag."""
-
-    USUAL_CHANGE: Line = (Run("▼ 00 W", Style.CHANGE),)
-
-    @property
-    def spread(self) -> QSizeF:
-        lines, room = self.lines or self.USUAL, self.room
-        if len(lines) < 2 or self.look.printing:
-            return room
-        bare = lettering.line_width(lines[1]) + lettering.GAP + lettering.line_width(self.USUAL_CHANGE)
-        return QSizeF(max(room.width(), bare + self._extra(lines) + 2 * self.PAD.width()), room.height())
-
-
-class Tag(Figures):
+class Tag(Caption):
     """A rounded card on the paper; near and failed carry their mark and frame."""
 
     PAD = QSizeF(8, 3)
@@ -229,7 +221,7 @@ class Tag(Figures):
         self._letter(painter, box, palette.soft if stale else None)
 
 
-class NodeFigures(Figures):
+class NodeFigures(Caption):
     """Volts and percent with the gauge at their left."""
 
     USUAL = ((Run("400.0 V"),), (Run("100.0 %", Style.QUIET),))
