@@ -9,13 +9,26 @@ MANY = 6
 
 
 def tell(drawing: Drawing, id: str) -> str:
-    """An element by name and id, such as `House (B3)`; by id alone where it has no name."""
+    """An element by name and id, such as `House (B3)`; by id alone where it has no name.
+
+    drawing : the drawing
+    id : of an element in it
+
+    Returns : words
+    """
     element = drawing.elements.get(id)
     return f"{element.name} ({id})" if element is not None and element.name else id
 
 
 def list_of(drawing: Drawing, ids: Sequence[str], last: str = "and") -> str:
-    """`A`, `A and B`, `A, B and C`; beyond six only how many more there are."""
+    """Elements in a row: `A`, `A and B`, `A, B and C`; beyond six only how many more there are.
+
+    drawing : the drawing
+    ids : (element,) at least one
+    last : the word before the last
+
+    Returns : words
+    """
     told = [tell(drawing, id) for id in ids[:MANY]]
     if len(ids) > MANY:
         told.append(f"{len(ids) - MANY} more")
@@ -24,7 +37,13 @@ def list_of(drawing: Drawing, ids: Sequence[str], last: str = "and") -> str:
 
 
 def slip(stated: float, other: float) -> str:
-    """The likely slip behind two voltages that should agree: kV for V, or phase for line volts."""
+    """The likely slip behind two voltages that should agree: kV for V, or phase for line volts.
+
+    stated : float [V]
+    other : float [V]
+
+    Returns : a sentence with a space before it, or nothing
+    """
     ratio = max(stated, other) / min(stated, other)
     low, high = f"{min(stated, other):g} V", f"{max(stated, other):g} V"
     if _near(ratio, 1000):

@@ -7,7 +7,8 @@ import cmath
 import math
 
 import numpy as np
-from scipy.optimize import root
+from scipy.sparse import csc_array
+from scipy.sparse.linalg import splu
 
 from app.model import assumed
 from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Node, Supply, Switch, Transformer
@@ -136,19 +137,16 @@ class Nodal:
         free = [k for k in range(len(self.places)) if k not in self.held]
         voltage = np.zeros(len(self.places), dtype=complex)
         voltage[held] = [self.held[k] for k in held]
-        inner = self.y[np.ix_(free, free)]
+        inner = splu(csc_array(self.y[np.ix_(free, free)]))
         pushed = self.y[np.ix_(free, held)] @ voltage[held]
-        start = np.linalg.solve(inner, -pushed)
-        size = np.abs(start)
-
-        def gap(x):
-            voltage[free] = (x[: len(free)] + 1j * x[len(free) :]) * size
-            miss = np.linalg.solve(inner, pushed + self.drawn(voltage)[free]) / size + voltage[free] / size
-            return np.concatenate([miss.real, miss.imag])
-
-        first = start / size
-        found = root(gap, np.concatenate([first.real, first.imag]), method="hybr", tol=1e-14)
-        assert np.abs(gap(found.x)).max() < 1e-11
+        voltage[free] = inner.solve(-pushed)
+        for _ in range(500):  # the nodal equations, solved for the voltages that the drawn currents leave
+            before = voltage[free].copy()
+            voltage[free] = inner.solve(-pushed - self.drawn(voltage)[free])
+            moved = np.abs(voltage[free] / before - 1).max(initial=0.0)
+            if moved < 1e-14:
+                break
+        assert moved < 1e-13
         self.voltage = voltage
         return {i: voltage[self.at[self.find(i)]] for i in self.nominal}
 
