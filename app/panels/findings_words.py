@@ -62,3 +62,17 @@ def ordered(outcome: Outcome) -> list[Finding]:
     """All findings, failing ones first, the tightest first among equals."""
     far = float("inf")
     return sorted(outcome.findings, key=lambda f: (RANK[f.verdict], far if f.margin is None else f.margin))
+
+
+def assumption_words(drawing: Drawing, assumption: Assumption) -> str:
+    """`T2: No-load current i0 is taken as 0.8 %: common practice, no source`."""
+    element = drawing.elements.get(assumption.id)
+    about = fields_of(type(element)).get(assumption.field) if element is not None else None
+    name = about.label if about else assumption.field
+    value = f"{round_off(assumption.value)} {assumption.unit}".strip()
+    return f"{label(drawing, assumption.id)}: {name} is taken as {value} ({assumption.basis})"
+
+
+def count_words(count: int) -> str:
+    """`3 assumed values to confirm`."""
+    return f"{count} assumed {'value' if count == 1 else 'values'} to confirm"
