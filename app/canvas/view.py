@@ -28,7 +28,8 @@ from app.live.session import Session
 from app.model import edits
 from app.model.drawing import Drawing, Part, label
 from app.model.edits import Change, EditRefused
-from app.model.kinds import KIND_WORDS, Attachment, Branch, Node, kind_of
+from app.model.kinds import KIND_WORDS, Attachment, Branch, Node, Transformer, kind_of
+from app.model.taps import words
 
 __all__ = ["SHORTCUTS", "BoardView"]
 
@@ -285,21 +286,30 @@ class BoardView(EventView):
         menu.aboutToHide.connect(menu.deleteLater)
         menu.popup(self.viewport().mapToGlobal(px))
 
-    def _selected(self, ids: frozenset[str]) -> None:
+    def _selected(self, _ids: frozenset[str]) -> None:
         self.fresh = None
         if self.tap_hold is not None:
             self.tap_hold.let_go()
-        id = keys.only(self)
+        self._describe()
+        self.float_again()
+
+    def _describe(self) -> None:
+        """Say for those who do not see it what is selected, and how a tap stands."""
+        ids, id = self.attention.selection, keys.only(self)
         one = self.drawing.elements.get(id) if id is not None else None
         said = f"{len(ids)} elements selected" if ids else "Nothing selected"
         if id is not None and one is not None:
             said = f"{KIND_WORDS[kind_of(one)]} {label(self.drawing, id)} selected"
+        ladder = self.board.ladder_of(id) if id is not None else None
+        if isinstance(one, Transformer) and ladder is not None:
+            said += f", {words(one, one.tap, ladder.fed_winding)}"
         self.setAccessibleDescription(said)
-        self.float_again()
 
     def _follow(self, change: Change) -> None:
         if change.geometry or change.topology:  # handles and guides go with their nodes
             self.float_again()
+        if change.ids & self.attention.selection:
+            self._describe()
 
     def _start_over(self) -> None:
         self.brush, self.fresh, self.tap_hold = Brush(self.brush.part), None, None

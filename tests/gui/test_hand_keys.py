@@ -176,7 +176,10 @@ def test_tab_goes_through_in_the_order_of_drawing_and_out_at_the_end(desk):
     assert not desk.view.select_next(1)
     desk.key(Key.Key_Backtab, SHIFT)
     assert desk.attention.selection == {order[-2]}
-    assert desk.view.accessibleDescription() == "transformer T2 selected"
+    assert desk.view.accessibleDescription() == "transformer T2 selected, tap 0 %: 11000/400"
+    desk.key(Key.Key_Down)
+    said = "transformer T2 selected, tap −2.5 %: 10725/400, raises winding 2"
+    assert desk.view.accessibleDescription() == said
 
 
 def test_delete_takes_what_hangs_on_a_node(desk):
