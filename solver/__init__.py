@@ -1,11 +1,12 @@
 """The physics of a distribution layout."""
 
-from solver.forest import Forest, Joined, Loop, Trouble, grow
+from solver.forest import Forest, grow
 from solver.network import Network
 from solver.share import Share, largest_share
 from solver.solution import Solution
 from solver.solving import solve
 from solver.status import Status
+from solver.trouble import Joined, Loop, Trouble
 
 __all__ = [
     "Forest",

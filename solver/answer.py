@@ -2,13 +2,14 @@
 
 import numpy as np
 
-from solver.forest import Forest, Trouble
+from solver.forest import Forest
 from solver.load import drawn
 from solver.network import Complex, Index, Network
 from solver.placed import Placed, fed_transformers, magnetising
 from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
+from solver.trouble import Trouble
 
 OPEN = 1e-6  # closure from which an answer is none
 

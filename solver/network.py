@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 Complex = NDArray[np.complex128]
 Real = NDArray[np.float64]
 Index = NDArray[np.intp]
+Flag = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,8 +5,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from solver.anderson import Anderson
-from solver.forest import Flag, Forest
-from solver.network import Complex, Index, Real
+from solver.forest import Forest
+from solver.network import Complex, Flag, Index, Real
 from solver.placed import Placed
 from solver.status import Status
 from solver.sweep import Sweep

@@ -3,9 +3,10 @@
 from dataclasses import dataclass
 from functools import cached_property
 
-from solver.forest import Forest, Trouble
+from solver.forest import Forest
 from solver.network import Complex, Index, Network, Real
 from solver.status import Status
+from solver.trouble import Trouble
 
 
 @dataclass(frozen=True)

@@ -3,11 +3,12 @@
 import numpy as np
 
 from solver.answer import answer, unsolved
-from solver.forest import Forest, Trouble, grow
+from solver.forest import Forest, grow
 from solver.network import Complex, Network
 from solver.placed import Placed, put
 from solver.settle import settle
 from solver.solution import Solution
+from solver.trouble import Trouble
 
 
 def solve(
