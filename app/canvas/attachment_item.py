@@ -57,7 +57,8 @@ class AttachmentItem(ElementItem):
             painter.drawRoundedRect(self.core().adjusted(-HALO, -HALO, HALO, HALO), HALO, HALO)
         ink = palette.ink
         dotted = self.standing is Standing.DEAD
-        if self.standing in (Standing.NEAR, Standing.FAILED, Standing.DEAD) and not self.look.stale:
+        aged = self.look.aged(self.standing)
+        if self.standing in (Standing.NEAR, Standing.FAILED, Standing.DEAD) and not aged:
             ink = colour(self.standing, palette)
         style = Qt.PenStyle.DotLine if dotted else Qt.PenStyle.SolidLine
         painter.setPen(QPen(ink, 2.0, style, Qt.PenCapStyle.FlatCap))

@@ -99,7 +99,8 @@ class Board(Paper):
             return
         case = min(self.attention.case, len(outcome.cases) - 1)
         shown = self.session.drawing, outcome, case, self.solving.reference
-        self._fit_words(self.show_outcome(*shown, self._seen()))
+        problem = self.solving.problem if self.solving.problem is not outcome else None
+        self._fit_words(self.show_outcome(*shown, self._seen(), problem))
         self._rest.start()
         for ladder in self.ladders.values():
             ladder.follow()

@@ -110,7 +110,7 @@ class BranchItem(ElementItem):
         return halo.simplified()
 
     def paint(self, painter, option, widget=None) -> None:
-        palette, stale = self.look.palette, self.look.stale
+        palette, stale = self.look.palette, self.look.aged(self.standing)
         if self.lit:
             painter.fillPath(self._lit_shape(), halo_colour(palette, self.selected))
         painter.setPen(pen(self.standing, self.flow.width, palette, stale))

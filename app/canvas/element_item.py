@@ -10,7 +10,7 @@ from app.canvas.palette import LIGHT, Palette
 from app.canvas.standing import Standing
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.symbols import glyph_of, paint_glyph
-from app.canvas.user_symbol import Worn, wear
+from app.canvas.user_symbol import Worn, sound, wear
 from app.model.drawing import Drawing
 from app.model.kinds import Element
 
@@ -22,13 +22,18 @@ class Look:
     palette: Palette = field(default_factory=lambda: LIGHT)
     symbols: str = "IEC"
     stale: bool = False
+    blaming: bool = False  # there is no answer, and what stands in its way is marked
     printing: bool = False
+
+    def aged(self, standing: Standing) -> bool:
+        """True where something that stands so is painted grey."""
+        return self.stale and not (self.blaming and standing is Standing.FAILED)
 
 
 def dress(drawing: Drawing, element: Element, symbols: str) -> Glyph | Worn | None:
     """The user's own symbol where the element's part has one, else ours."""
     part = drawing.parts.get(element.part)
-    if part is not None and part.symbol is not None:
+    if part is not None and part.symbol is not None and sound(part.symbol):
         return wear(part.symbol, element)
     return glyph_of(element, symbols)
 

@@ -56,7 +56,8 @@ class NodeItem(ElementItem):
             painter.setBrush(halo_colour(palette, self.selected))
             painter.drawRoundedRect(self._bounds.adjusted(1, 1, -1, -1), HALO, HALO)
         ink = palette.ink
-        if self.standing in (Standing.NEAR, Standing.FAILED, Standing.DEAD) and not self.look.stale:
+        aged = self.look.aged(self.standing)
+        if self.standing in (Standing.NEAR, Standing.FAILED, Standing.DEAD) and not aged:
             ink = colour(self.standing, palette)
         if self.worn is not None:
             paint_worn(painter, self.worn, (self.ends[0] + self.ends[1]) / 2, 0.0, ink, palette.paper)

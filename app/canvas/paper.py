@@ -1,60 +1,28 @@
 """The drawing on paper: an item an element, with its words, from a drawing and an outcome."""
 
-import math
 from collections.abc import Callable, Container, Iterable, Iterator
-from dataclasses import dataclass
 from itertools import chain, islice
-from typing import Any
 
-import numpy as np
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPen
 from PySide6.QtWidgets import QGraphicsScene
 
-from app.canvas import arrange, gauge, standing, wording
+from app.canvas import arrange, standing, wording
 from app.canvas.attachment_item import AttachmentItem
 from app.canvas.branch_item import BranchItem, Flow
 from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import GRID
+from app.canvas.lettering import Line
 from app.canvas.node_item import NodeItem
 from app.canvas.placing import Taken, Wish, place
+from app.canvas.shown import Shown, column_of
 from app.canvas.tag import Caption, NodeFigures, Tag
-from app.model.drawing import Drawing, Limits
+from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Busbar, Node
 from app.study.outcome import BranchState, Outcome, Table
 
 MARGIN = 300.0
 DOTS_FROM = 0.4  # zoom below which the grid is left out
-
-
-@dataclass(frozen=True)
-class Shown:
-    """The figures on the paper: one case of an outcome, and the outcome that changes are counted from."""
-
-    limits: Limits
-    outcome: Outcome
-    case: int
-    before: Outcome | None
-
-    def rows(self, name: str, id: str) -> tuple[Any, Any]:
-        """The state of an element, and its state before where that is known."""
-        table = getattr(self.outcome, name)
-        now = table.at(id, self.case)
-        if self.before is None or self.case >= len(self.before.cases):
-            return now, None
-        was = getattr(self.before, name)
-        return now, was.at(id, self.case) if id in was else None
-
-    def reading(self, id: str) -> gauge.Reading | None:
-        """What the gauge of a node shows; None where it is dead."""
-        nodes = self.outcome.nodes
-        percent = nodes.column("percent")[nodes.rows[id]]
-        if math.isnan(percent[self.case]):
-            return None
-        low, high = self.limits.low_percent, self.limits.high_percent
-        return gauge.Reading(
-            low, high, float(np.nanmin(percent)), float(np.nanmax(percent)), float(percent[self.case])
-        )
 
 
 class Paper(QGraphicsScene):
@@ -140,16 +108,21 @@ class Paper(QGraphicsScene):
         case: int,
         before: Outcome | None,
         seen: Callable[[Caption], bool] = lambda _: True,
+        problem: Outcome | None = None,
     ) -> set[str]:
         """Show one case: lines and symbols at once, words where they are seen, the rest by `write_owed`.
+        A problem is a later outcome without an answer; what stands in its way is marked.
 
         Returns the ids whose words need more room than they have."""
-        worst = standing.standings(drawing, outcome, case)
+        worst = standing.standings(drawing, problem or outcome, case)
         self._shown = Shown(drawing.limits, outcome, case, before)
+        self.look.blaming = problem is not None or not self._shown.solved
         for table in (outcome.nodes, outcome.branches, outcome.attachments):
-            for id, live in zip(table.ids, _column(table, "live", case), strict=True):
+            for id, live in zip(table.ids, column_of(table, "live", case), strict=True):
                 if id in self.items_by_id:
-                    self.items_by_id[id].stand(standing.of_row(live, id, worst))
+                    blamed = standing.unsolved(id, worst)
+                    stands = blamed if self.look.blaming else standing.of_row(live, id, worst)
+                    self.items_by_id[id].stand(stands)
         self._show_flows(outcome.branches, case)
         hung = [id for id in outcome.attachments.ids if id in self.items_by_id and id in drawing.elements]
         grown = {id for id in hung if self._name(drawing, id)}
@@ -166,7 +139,7 @@ class Paper(QGraphicsScene):
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
         names = ("live", "loading_percent", "start_kw", "end_kw", "forward")
-        columns = [_column(branches, name, case) for name in names]
+        columns = [column_of(branches, name, case) for name in names]
         for id, live, loading, start, end, fed in zip(branches.ids, *columns, strict=True):
             item = self.items_by_id.get(id)
             if isinstance(item, BranchItem):
@@ -179,7 +152,10 @@ class Paper(QGraphicsScene):
         for id in ids:
             del self.owed[id]
             item, tag = self.items_by_id[id], self.tags[id]
-            if isinstance(tag, NodeFigures):
+            lines: tuple[Line, ...] = ()
+            if not shown.solved:
+                pass
+            elif isinstance(tag, NodeFigures):
                 tag.read(shown.reading(id))
                 lines = wording.node_figures(*shown.rows("nodes", id))
             elif isinstance(item, BranchItem):
@@ -283,8 +259,3 @@ def _rank(drawing: Drawing):
 def _fits(item: ElementItem, element: object) -> bool:
     sorts = ((BranchItem, Branch), (NodeItem, Node), (AttachmentItem, Attachment))
     return any(isinstance(item, drawn) and isinstance(element, kind) for drawn, kind in sorts)
-
-
-def _column(table: Table[Any], name: str, case: int) -> list[Any]:
-    column = table.columns[name]
-    return list((column if column.ndim == 1 else column[:, case]).tolist())

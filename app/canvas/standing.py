@@ -57,7 +57,7 @@ def _findings(drawing: Drawing, outcome: Outcome, case: int) -> list[Finding]:
         return list(outcome.findings)
     shown = (outcome.cases[case],)
     of_case = judge(drawing, _one_case(outcome.nodes, case), _one_case(outcome.branches, case), shown)
-    return [f for f in outcome.findings if not f.case] + of_case
+    return [f for f in outcome.findings if f.case in ("", *shown)] + of_case
 
 
 def _one_case(table: Table[State], case: int) -> Table[State]:
@@ -66,9 +66,13 @@ def _one_case(table: Table[State], case: int) -> Table[State]:
 
 
 def of_row(live: bool, id: str, worst: Mapping[str, Standing]) -> Standing:
-    """A live element stands as its worst check; a dead one is dead unless a check fails on it."""
-    judged = worst.get(id, Standing.GOOD)
-    return judged if live or judged is Standing.FAILED else Standing.DEAD
+    """A live element stands as its worst check."""
+    return worst.get(id, Standing.GOOD) if live else Standing.DEAD
+
+
+def unsolved(id: str, worst: Mapping[str, Standing]) -> Standing:
+    """Where there is no answer, only what stands in its way is marked."""
+    return Standing.FAILED if worst.get(id) is Standing.FAILED else Standing.PLAIN
 
 
 def colour(standing: Standing, palette: Palette, stale: bool = False) -> QColor:

@@ -11,11 +11,11 @@ from PySide6.QtGui import QIcon, QPainter, QPixmap, QTransform
 from PySide6.QtSvg import QSvgRenderer
 
 from app.canvas.geometry import GRID, distance
-from app.canvas.svg_check import LARGEST_BYTES, SymbolRefused, check
+from app.canvas.svg_check import LARGEST_BYTES, LARGEST_SIDE, SymbolRefused, check
 from app.model.drawing import Symbol
 from app.model.kinds import Branch, Element, Node
 
-__all__ = ["SymbolRefused", "Worn", "default_terminals", "read_svg", "symbol_icon", "wear"]
+__all__ = ["SymbolRefused", "Worn", "default_terminals", "read_svg", "sound", "symbol_icon", "wear"]
 SIZE = 48.0  # the longer side of an attachment's symbol, px
 WIDEST = 6 * GRID
 TALLEST = 5 * GRID
@@ -48,6 +48,22 @@ def _bytes(path: Path) -> bytes:
             return file.read(LARGEST_BYTES + 1)
     except OSError as error:
         raise SymbolRefused(f"{path.name} cannot be read: {error.strerror}.") from None
+
+
+def sound(symbol: Symbol) -> bool:
+    """True where a symbol may be drawn: one that came in a drawing from elsewhere is checked as a file is."""
+    numbers = (symbol.width, symbol.height, *(n for point in symbol.terminals for n in point))
+    fits = all(math.isfinite(n) and abs(n) <= LARGEST_SIDE for n in numbers)
+    return fits and min(symbol.width, symbol.height) > 0 and _passes(symbol.svg)
+
+
+@lru_cache(maxsize=64)
+def _passes(svg: str) -> bool:
+    try:
+        check(svg.encode())
+    except (SymbolRefused, UnicodeEncodeError):
+        return False
+    return True
 
 
 @lru_cache(maxsize=64)
@@ -141,6 +157,6 @@ def _pixmap(svg: str, width: float, height: float, size: int, scale: float) -> Q
 def symbol_icon(symbol: Symbol, size: int = 32) -> QIcon:
     """The user's picture as an icon for the shelf."""
     made = QIcon()
-    for scale in ICON_SCALES:
+    for scale in ICON_SCALES if sound(symbol) else ():
         made.addPixmap(_pixmap(symbol.svg, symbol.width, symbol.height, size, scale))
     return made

@@ -1,6 +1,7 @@
 """What the board writes beside each element: names, data in a line, figures, and changes during a drag."""
 
 import math
+import textwrap
 
 from app.canvas.lettering import Line, Run, Style
 from app.model import figures
@@ -21,14 +22,23 @@ from app.model.kinds import (
 from app.study.outcome import AttachmentState, BranchState, NodeState
 
 Lines = tuple[Line, ...]
+NAME_WIDTH = 26  # letters
+LINE_WIDTH = 36
 
 
 def caption(drawing: Drawing, id: str) -> Lines:
     """The name, and what it is in a line or two."""
     element = drawing.elements[id]
     bare = isinstance(element, Joint) and not element.name
-    name = ((Run(element.name or id, Style.QUIET if bare else Style.NAME),),)
-    return name + tuple((Run(text, Style.QUIET),) for text in describe(element))
+    style = Style.QUIET if bare else Style.NAME
+    name = tuple((Run(text, style),) for text in wrapped(element.name, NAME_WIDTH) or [id])
+    said = [text for line in describe(element) for text in wrapped(line, LINE_WIDTH)]
+    return name + tuple((Run(text, Style.QUIET),) for text in said)
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """Long words in two lines at most; the card shows them whole."""
+    return textwrap.wrap(text, width, max_lines=2, placeholder=" …")
 
 
 def describe(element: AnyElement) -> tuple[str, ...]:

@@ -19,8 +19,10 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model import edits
-from app.model.drawing import Case, Drawing, Part
+from app.model.drawing import Case, Drawing, Part, Symbol
 from app.model.kinds import Busbar, Cable, Joint, Load, Transformer
+from app.study.outcome import Finding, Verdict
+from solver.status import Status
 
 SVG = (
     b'<svg viewBox="0 0 60 40" xmlns="http://www.w3.org/2000/svg"><path d="M0 0H60V40H0Z" fill="#c00"/></svg>'
@@ -367,3 +369,57 @@ def test_a_node_that_becomes_a_bar_is_drawn_as_one(bench):
     one.edit(lambda d: edits.remove(d, {"K1"}))
     one.edit(lambda d: edits.put(d, {"K1": Load(node="J1", dx=0, dy=-4)}))
     assert one.board.captions["K1"].text.endswith("kVA pf 0.95")
+
+
+def test_where_there_is_no_answer_only_what_stands_in_its_way_is_marked(bench):
+    one = bench(FERNHOLLOW)
+    good = one.board.tags["C1"].text
+    blocked = replace(
+        figures(FERNHOLLOW, dead="".join(FERNHOLLOW.elements)),
+        status=Status.INVALID,
+        findings=(Finding("closed loop", Verdict.BLOCKS, ("T1",), "T1 closes a loop."),),
+    )
+    one.answer = lambda _: blocked
+    one.solving._owed = True
+    one.solving.settle_solve()
+    assert one.board.look.stale
+    assert one.board.tags["C1"].text == good
+    assert one.board.item_of("T1").standing is Standing.FAILED
+    assert one.board.item_of("T2").standing is Standing.PLAIN
+    fresh = bench(Drawing())
+    fresh.answer = lambda _: blocked
+    fresh.session.open(FERNHOLLOW)
+    fresh.solving.settle_solve()
+    assert fresh.board.tags["C1"].text == fresh.board.tags["HS"].text == ""
+    assert fresh.board.item_of("T1").standing is Standing.FAILED
+    assert fresh.board.item_of("HS").standing is Standing.PLAIN
+    fresh.solve()
+    assert fresh.board.tags["C1"].text == good
+    assert fresh.board.item_of("T1").standing is Standing.GOOD
+
+
+def test_long_names_are_wrapped_and_cut(bench):
+    name = "The substation at the far end of the long lane behind the old brewery"
+    one = bench(edits.rename(FERNHOLLOW, "T1", name))
+    lines = one.board.captions["T1"].text.splitlines()
+    assert lines[:2] == ["The substation at the far", "end of the long lane …"]
+    blank = bench(msgspec.structs.replace(FERNHOLLOW, elements={"J": Joint(name="  ")}))
+    assert blank.board.captions["J"].text == "J"
+
+
+@pytest.mark.parametrize(
+    "symbol",
+    [
+        Symbol(svg="<svg", width=60, height=40),
+        Symbol(svg=SVG.decode().replace("path", "script"), width=60, height=40),
+        Symbol(svg=SVG.decode(), width=0, height=40),
+        Symbol(svg=SVG.decode(), width=60, height=float("nan")),
+        Symbol(svg=SVG.decode(), width=60, height=40, terminals=((float("inf"), 0.0),)),
+    ],
+)
+def test_a_drawing_from_elsewhere_cannot_bring_a_hostile_symbol(bench, symbol):
+    part = Part(name="Mine", element=Transformer(start="", end=""), symbol=symbol)
+    elements = {**FERNHOLLOW.elements, "T2": Transformer(start="J2", end="HS", part="mine")}
+    one = bench(msgspec.structs.replace(FERNHOLLOW, elements=elements, parts={"mine": part}))
+    assert not isinstance(one.board.item_of("T2").worn, Worn)
+    assert one.image()

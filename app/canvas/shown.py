@@ -1,0 +1,53 @@
+"""The figures that stand on the paper just now."""
+
+import math
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from app.canvas import gauge
+from app.model.drawing import Limits
+from app.study.outcome import Outcome, Table
+from solver.status import Status
+
+
+@dataclass(frozen=True)
+class Shown:
+    """The figures on the paper: one case of an outcome, and the outcome that changes are counted from."""
+
+    limits: Limits
+    outcome: Outcome
+    case: int
+    before: Outcome | None
+
+    @property
+    def solved(self) -> bool:
+        """False where the outcome holds no figures."""
+        return self.outcome.status is Status.SOLVED
+
+    def rows(self, name: str, id: str) -> tuple[Any, Any]:
+        """The state of an element, and its state before where that is known."""
+        table = getattr(self.outcome, name)
+        now = table.at(id, self.case)
+        if self.before is None or self.case >= len(self.before.cases):
+            return now, None
+        was = getattr(self.before, name)
+        return now, was.at(id, self.case) if id in was else None
+
+    def reading(self, id: str) -> gauge.Reading | None:
+        """What the gauge of a node shows; None where it is dead."""
+        nodes = self.outcome.nodes
+        percent = nodes.column("percent")[nodes.rows[id]]
+        if math.isnan(percent[self.case]):
+            return None
+        low, high = self.limits.low_percent, self.limits.high_percent
+        return gauge.Reading(
+            low, high, float(np.nanmin(percent)), float(np.nanmax(percent)), float(percent[self.case])
+        )
+
+
+def column_of(table: Table[Any], name: str, case: int) -> list[Any]:
+    """One column of one case, row by row."""
+    column = table.columns[name]
+    return list((column if column.ndim == 1 else column[:, case]).tolist())
