@@ -1,10 +1,15 @@
 """The ledger of assumed values: every field left blank, and every level nobody stated."""
 
+from itertools import chain
+
 from app.model import assumed
 from app.model.kinds import Element
 from app.study.layout import Layout, arrays_of
 from app.study.outcome import Assumption
 from app.study.zones import Zones, level_assumptions
+
+Made = tuple[Assumption, ...]
+_last: tuple[list[str], list[Element], list[float], list[Made]] = ([], [], [], [])
 
 
 def assumptions_of(layout: Layout, zones: Zones) -> tuple[Assumption, ...]:
@@ -15,32 +20,21 @@ def assumptions_of(layout: Layout, zones: Zones) -> tuple[Assumption, ...]:
 
     Returns : tuple of Assumption: levels first, then branches and attachments in drawing order
     """
-    found = level_assumptions(layout, zones)
+    global _last
     nominal = zones.nominal_v[arrays_of(layout).zone].tolist()
-    keys: list[tuple[str, Element, int]] = [
-        *zip(layout.branch_ids, layout.branches, layout.start, strict=True)
-    ]
-    keys += zip(layout.attachment_ids, layout.attachments, layout.at, strict=True)
-    known, fresh = _memory.known, {}
-    for id, element, node in keys:
-        entry = known.get(id)
-        volts = nominal[node]
-        if entry is None or entry[0] is not element or entry[1] != volts:
-            entry = (element, volts, _assumed(id, element, volts))
-        fresh[id] = entry
-        found += entry[2]
-    _memory.known = fresh
-    return tuple(found)
+    ids = layout.branch_ids + layout.attachment_ids
+    elements: list[Element] = [*layout.branches, *layout.attachments]
+    volts = [nominal[node] for node in chain(layout.start, layout.at)]
+    old_ids, were, old_volts, last = _last
+    if ids == old_ids and volts == old_volts:  # a level that is not a number is never equal
+        both = zip(ids, elements, volts, were, last, strict=True)
+        made = [done if was is now else _assumed(id, now, level) for id, now, level, was, done in both]
+    else:
+        made = [_assumed(*entry) for entry in zip(ids, elements, volts, strict=True)]
+    _last = (ids, elements, volts, made)
+    return (*level_assumptions(layout, zones), *chain.from_iterable(made))
 
 
-def _assumed(id: str, element: Element, volts: float) -> tuple[Assumption, ...]:
-    return tuple(Assumption(id, b.field, b.value, b.unit, b.basis) for b in assumed.blank(element, volts))
-
-
-class _Memory:
-    """What the last call found, so that the next one only looks at what changed."""
-
-    known: dict[str, tuple[Element, float, tuple[Assumption, ...]]] = {}
-
-
-_memory = _Memory()
+def _assumed(id: str, element: Element, volts: float) -> Made:
+    blanks = assumed.blank(element, volts)
+    return tuple(Assumption(id, b.field, b.value, b.unit, b.basis) for b in blanks)

@@ -35,7 +35,7 @@ def excitation_findings(
     Returns : list of Finding, none where every transformer is within
     Source : IEC 60076-1, operation at a higher than rated voltage (from memory)
     """
-    rows = [i for i, b in enumerate(layout.branches) if isinstance(b, Transformer)]
+    rows = layout.units
     if not rows:
         return []
     forward = branches.column("forward")

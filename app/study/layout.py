@@ -1,5 +1,6 @@
 """The drawing as a graph: which supply feeds what, through which branch, in which voltage zone."""
 
+from collections import Counter
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any
@@ -45,7 +46,8 @@ class Layout:
     order: list[int] = field(default_factory=list)  # node rows, each after the node that feeds it
     depth: list[int] = field(default_factory=list)
     zone: list[int] = field(default_factory=list)  # voltage zone of each node
-    zone_count: int = 0
+    zone_heads: list[int] = field(default_factory=list)  # node row at which each zone begins
+    loose: list[int] = field(default_factory=list)  # node rows where one branch ends and nothing hangs
     closing: list[int] = field(default_factory=list)  # branch rows that close a loop
     joined: list[tuple[int, int]] = field(default_factory=list)  # (root supply, further supply) in one tree
     live: list[bool] = field(default_factory=list)  # whether a supply feeds each node
@@ -155,9 +157,9 @@ def lay_out(drawing: Drawing) -> Layout:
     """
     global _last
     last, elements = _last, drawing.elements
-    if last is not None and _same_graph(last[0], elements):
-        nodes, branches, attachments = _elements(elements)
-        layout = replace(last[1], nodes=nodes, branches=branches, attachments=attachments)
+    moved = None if last is None else _moved(last[0], elements)
+    if last is not None and moved is not None:
+        layout = _with(last[1], {id: elements[id] for id in moved})
     else:
         layout = _sorted(elements)
         _trace(layout)
@@ -165,14 +167,26 @@ def lay_out(drawing: Drawing) -> Layout:
     return layout
 
 
-def _same_graph(old: Elements, new: Elements) -> bool:
-    """Whether two drawings have the same ids in the same order, joined in the same way."""
-    if len(old) != len(new):
-        return False
-    return all(
-        was_id == id and (was is now or _joins(was) == _joins(now))
-        for (was_id, was), (id, now) in zip(old.items(), new.items(), strict=True)
-    )
+def _moved(old: Elements, new: Elements) -> list[str] | None:
+    """The ids whose elements are not the same; None where their graphs differ."""
+    if list(old) != list(new):
+        return None
+    both = zip(new, old.values(), new.values(), strict=True)
+    moved = [id for id, was, now in both if was is not now]
+    return moved if all(_joins(old[id]) == _joins(new[id]) for id in moved) else None
+
+
+def _with(layout: Layout, moved: Elements) -> Layout:
+    """The same graph with other elements."""
+    nodes, branches, attachments = list(layout.nodes), list(layout.branches), list(layout.attachments)
+    for id, element in moved.items():
+        if isinstance(element, Node):
+            nodes[layout.node_row[id]] = element
+        elif isinstance(element, Branch):
+            branches[layout.branch_row[id]] = element
+        elif isinstance(element, Attachment):
+            attachments[layout.attachment_row[id]] = element
+    return replace(layout, nodes=nodes, branches=branches, attachments=attachments)
 
 
 def _joins(element: Element) -> tuple[object, ...]:
@@ -245,6 +259,9 @@ def _trace(layout: Layout) -> None:
             layout.upstream[ids[node]] = layout.branch_ids[branch]
             layout.before[ids[node]] = ids[above]
     layout.zone_of = dict(zip(ids, layout.zone, strict=True))
+    meetings = Counter([*layout.start, *layout.end])
+    hung = set(layout.at)
+    layout.loose = [n for n in range(count) if meetings[n] == 1 and n not in hung and layout.live[n]]
 
 
 def _meeting(layout: Layout) -> list[list[int]]:
@@ -265,8 +282,8 @@ def _grow(layout: Layout, root: int, supply: int, meeting: list[list[int]], is_u
     number = len(layout.roots)
     layout.roots.append(root)
     layout.supply_of.append(supply)
-    tree[root], zone[root] = number, layout.zone_count
-    layout.zone_count += 1
+    tree[root], zone[root] = number, len(layout.zone_heads)
+    layout.zone_heads.append(root)
     closing: set[int] = set()
     waiting = [root]
     while waiting:
@@ -279,8 +296,8 @@ def _grow(layout: Layout, root: int, supply: int, meeting: list[list[int]], is_u
                 layout.fed_from[there] = here
                 zone[there] = zone[here]
                 if is_unit[branch]:
-                    zone[there] = layout.zone_count
-                    layout.zone_count += 1
+                    zone[there] = len(layout.zone_heads)
+                    layout.zone_heads.append(there)
                 waiting.append(there)
             elif branch not in (fed_by[here], fed_by[there]) and branch not in closing:
                 closing.add(branch)

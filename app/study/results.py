@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from app.model.kinds import Attachment, Branch, Generator, Line, Load, Supply, Switch, Transformer
 from app.study.layout import NONE, Layout, arrays_of
-from app.study.memory import Memory
+from app.study.memory import Columns, Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
 from app.study.rows import Rows
 from app.study.sums import size, total
@@ -158,7 +158,7 @@ def _rating(branch: Branch) -> tuple[float, float, bool]:
     return rated, rated, False
 
 
-_rated: Memory[Branch, tuple[float, float, bool]] = Memory(_rating)
+_rated: Columns[Branch] = Columns(_rating, 3)
 
 
 def _loading(layout: Layout, rows: Rows, start_a: Real, end_a: Real) -> Real:
@@ -167,9 +167,9 @@ def _loading(layout: Layout, rows: Rows, start_a: Real, end_a: Real) -> Real:
     A transformer's rated current is S / (√3 · U) at the nameplate voltage of each winding, S / U where
     two-wire; the larger of both counts.
     """
-    table = np.array(_rated.of(layout.branches), dtype=np.float64).reshape(-1, 3)
-    wide = np.where(table[:, 2] > 0, rows.wide[arrays_of(layout).start], 1.0)
-    first, second = table[:, 0] / wide, table[:, 1] / wide
+    first, second, is_unit = _rated.of(layout.branches)
+    wide = np.where(is_unit > 0, rows.wide[arrays_of(layout).start], 1.0)
+    first, second = first / wide, second / wide
     return 100 * np.maximum(start_a / first[:, None], end_a / second[:, None])
 
 

@@ -182,15 +182,10 @@ def _dead_finding(drawing: Drawing, ids: tuple[str, ...], needy: list[str]) -> F
 
 def _loose_ends(drawing: Drawing, layout: Layout) -> list[Finding]:
     """Live joints where one branch ends and nothing hangs."""
-    meeting = [0] * len(layout.nodes)
-    for row in (*layout.start, *layout.end):
-        meeting[row] += 1
-    hung = set(layout.at)
     found = []
-    for row, node in enumerate(layout.nodes):
-        if meeting[row] == 1 and row not in hung and isinstance(node, Joint) and layout.live[row]:
-            branch = layout.branch_ids[layout.fed_by[row]]
-            id = layout.node_ids[row]
+    for row in layout.loose:
+        if isinstance(layout.nodes[row], Joint):
+            id, branch = layout.node_ids[row], layout.branch_ids[layout.fed_by[row]]
             words = f"{tell(drawing, branch)} ends at {tell(drawing, id)}, where nothing is connected."
             found.append(Finding("loose end", Verdict.NOTE, (id, branch), words))
     return found

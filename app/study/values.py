@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from app.model import assumed, taps
 from app.model.drawing import Case
 from app.model.kinds import Capacitor, Generator, Line, Load, Supply, Transformer
-from app.study.memory import Memory
+from app.study.memory import Columns
 from solver import line, load, transformer
 
 Real = NDArray[np.float64]
@@ -34,7 +34,7 @@ def _line_row(run: Line) -> Row:
     return run.r20_ohm_per_km, run.x_ohm_per_km, run.length_m, temperature, alpha, run.parallel, c
 
 
-_line_rows: Memory[Line, Row] = Memory(_line_row)
+_lines: Columns[Line] = Columns(_line_row, 7)
 
 
 def line_values(
@@ -50,7 +50,7 @@ def line_values(
     Returns : z (line,) complex [ohm], y (line,) complex [S]
     Source : see solver.line
     """
-    r20, x, length, temperature, alpha, runs, c = columns(_line_rows.of(lines), 7)
+    r20, x, length, temperature, alpha, runs, c = _lines.of(lines)
     z = line.series(r20, x, length, temperature, alpha, runs, two_wire)
     return z, line.charging(c, length, frequency_hz, runs, two_wire)
 
@@ -64,7 +64,7 @@ def _plate_row(t: Transformer) -> Row:
     return rating, t.v1_v, t.v2_v, t.uk_percent, pk, p0, i0, group[2], first, t.parallel, factor
 
 
-_plate_rows: Memory[Transformer, Row] = Memory(_plate_row)
+_plates: Columns[Transformer] = Columns(_plate_row, 11)
 
 
 def transformer_values(units: Sequence[Transformer]) -> tuple[Complex, Complex, Complex]:
@@ -76,7 +76,7 @@ def transformer_values(units: Sequence[Transformer]) -> tuple[Complex, Complex, 
         complex [ohm] seen at winding 2; y (transformer,) complex [S] seen at winding 1
     Source : see solver.transformer
     """
-    return _equivalent(columns(_plate_rows.of(units), 11))
+    return _equivalent(_plates.of(units))
 
 
 def notch_values(unit: Transformer, notches: Sequence[int]) -> tuple[Complex, Complex, Complex]:
@@ -127,7 +127,7 @@ def _demand_row(element: Load | Generator) -> Row:
     return kva, pf, element.leading, 0.0, 0.0, False, current, impedance, reference
 
 
-_demand_rows: Memory[Load | Generator, Row] = Memory(_demand_row)
+_demands: Columns[Load | Generator] = Columns(_demand_row, 9)
 
 
 def load_values(
@@ -143,7 +143,7 @@ def load_values(
         constant power, current, impedance
     Source : see solver.load
     """
-    kva, pf, leading, kw, kvar, makes, current, impedance, reference = columns(_demand_rows.of(drawn), 9)
+    kva, pf, leading, kw, kvar, makes, current, impedance, reference = _demands.of(drawn)
     demand = load.power(kva, pf, leading > 0)
     power = np.where(makes > 0, -(kw + 1j * kvar).astype(np.complex128), demand) * 1e3
     loads = np.array([c.load_percent for c in cases], dtype=np.float64) / 100

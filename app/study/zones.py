@@ -40,7 +40,7 @@ def zones_of(drawing: Drawing, layout: Layout) -> Zones:
     Returns : Zones, nominal_v (zone,) float [V]
     Source : common practice, no source
     """
-    count = layout.zone_count
+    count = len(layout.zone_heads)
     nominal, basis, assumed = [math.nan] * count, [""] * count, [False] * count
 
     def settle(zone: int, volts: float, whose: str, by_winding: bool = False) -> None:
@@ -121,12 +121,9 @@ def level_assumptions(layout: Layout, zones: Zones) -> list[Assumption]:
 
     Returns : list of Assumption, one a zone, at the first node of the zone
     """
-    first: dict[int, str] = {}
-    for row, id in enumerate(layout.node_ids):
-        first.setdefault(layout.zone[row], id)
     return [
-        Assumption(id, "nominal_v", float(zones.nominal_v[zone]), "V", zones.basis[zone])
-        for zone, id in first.items()
+        Assumption(layout.node_ids[node], "nominal_v", float(zones.nominal_v[zone]), "V", zones.basis[zone])
+        for zone, node in enumerate(layout.zone_heads)
         if zones.assumed[zone]
     ]
 
