@@ -29,7 +29,7 @@ from app.panels.head import Head
 from app.panels.menus import Menus
 from app.panels.shelf import Shelf
 from app.panels.strip import VoltageStrip
-from app.panels.style import sheet
+from app.panels.style import qt_palette, sheet
 from app.panels.tape import LossTape
 
 REFUSAL_SHOWN_MS = 6000
@@ -38,11 +38,11 @@ REFUSAL_SHOWN_MS = 6000
 class Window(QMainWindow):
     """One open drawing."""
 
-    def __init__(self, preferences: Preferences | None = None) -> None:
+    def __init__(self, preferences: Preferences | None = None, recovery_folder: Path | None = None) -> None:
         super().__init__()
         self.preferences = preferences or Preferences()
         self.session = Session(parent=self)
-        self.document = Document(self.session, parent=self)
+        self.document = Document(self.session, self, recovery_folder=recovery_folder)
         self.solving = Solving(self.session, parent=self)
         self.attention = Attention(self)
         self.theme = Theme(self)
@@ -107,6 +107,7 @@ class Window(QMainWindow):
         self.theme.changed.connect(self._dress)
 
     def _dress(self) -> None:
+        self.setPalette(qt_palette(self.theme.palette))
         self.setStyleSheet(sheet(self.theme.palette))
 
     def _mark(self) -> None:
@@ -145,8 +146,7 @@ def open_window(path: Path | None = None) -> int:
     app.setApplicationName("Farend")
     window = Window()
     window.show()
-    if path is not None:
+    window.view.setFocus()
+    if not window.menus.offer_recovery() and path is not None:
         window.menus.open_path(path)
-    else:
-        window.menus.offer_recovery()
     return app.exec()

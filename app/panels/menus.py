@@ -217,13 +217,17 @@ class Menus(QObject):
         self.window.preferences.add_recent(document.path)
         return True
 
-    def offer_recovery(self) -> None:
-        """After a crash: offer the copy that was kept."""
+    def offer_recovery(self) -> bool:
+        """After a crash: offer the copies that were kept. True where one was opened."""
         for copy in self.window.document.recoverable():
-            if self.dialogs.agree(f"Farend did not close properly. Open the recovery copy of {copy.title}?"):
+            question = (
+                f"Farend did not close properly. Open the recovery copy of {copy.title}? No throws it away."
+            )
+            if self.dialogs.agree(question):
                 self.window.document.recover(copy)
-                return
+                return True
             self.window.document.forget(copy)
+        return False
 
     # -- handing over ---------------------------------------------------------------------------
     def export_sheet(self) -> None:

@@ -125,7 +125,7 @@ class Person:
 
 @pytest.fixture
 def person(qtbot, tmp_path):
-    window = Window(Preferences(tmp_path / "likes.ini"))
+    window = Window(Preferences(tmp_path / "likes.ini"), tmp_path / "recovery")
     window.menus.dialogs = Recorder(tmp_path)
     window.resize(1440, 900)
     qtbot.addWidget(window, before_close_func=lambda w: w.session.history.setClean())
