@@ -65,7 +65,7 @@ class _Run:
         self.points = np.arange(width)
         self.answer = np.full_like(start, complex(np.nan, np.nan))
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
-        self.iterations = np.zeros(width, dtype=np.intp)
+        self.iterations = np.full(width, MOST)
         self.anderson: Anderson | None = None
         self.best = np.full(width, np.inf)
         self._memory(start.copy())
@@ -73,6 +73,7 @@ class _Run:
     def _memory(self, voltage: Complex) -> None:
         """Takes the memory for as many operating points as still move."""
         self.voltage, self.image, self.step = voltage, np.empty_like(voltage), np.empty_like(voltage)
+        self.size = np.empty((*voltage.shape[:-1], 2 * voltage.shape[-1]))
         self.sweep = Sweep(self.placed, self.forest, voltage.shape[-1])
 
     def settled(self) -> Settled:
@@ -81,15 +82,13 @@ class _Run:
             for count in range(1, MOST + 1):
                 self.sweep(self.voltage, self.image)
                 change = self._change()
-                done, lost = change < CLOSE, ~np.isfinite(change)
-                if done.any() or lost.any():
-                    self._leave(done, count)
-                    stay = ~(done | lost)
+                if not (change.min() >= CLOSE and change.max() < np.inf):
+                    stay = (change >= CLOSE) & np.isfinite(change)
+                    self._leave(change < CLOSE, ~stay, count)
                     if not stay.any():
                         break
                     change = change[stay]
                     self._keep(np.flatnonzero(stay))
-                self.iterations[self.points] = count
                 if count < PLAIN:
                     self.voltage, self.image = self.image, self.voltage
                 else:
@@ -99,21 +98,20 @@ class _Run:
 
     def _change(self) -> Real:
         """(batch,) largest change of a real or imaginary part relative to the level of its zone."""
-        np.subtract(self.image, self.voltage, out=self.step)
-        size = np.abs(self.step.view(np.float64), out=self.sweep.drop.view(np.float64))
+        np.subtract(self.image, self.voltage, self.step)
+        size = np.abs(self.step.view(np.float64), self.size)
         level, zone_start = self.placed.level, self.forest.zone_start
         width = self.points.size
-        if zone_start.size == 2:
-            top = size.reshape(-1, 2 * width).max(axis=0) if width > 1 else size.max(keepdims=True)
-            return np.asarray(top.reshape(width, -1).max(axis=1) / level[0])
+        if width == 1 and level.size == 1:
+            return np.maximum.reduce(size, None, keepdims=True)[0, 0] / level[0]
         by_zone = np.maximum.reduceat(size.max(axis=1), zone_start[:-1], axis=0)
         return np.asarray((by_zone.reshape(-1, width, 2).max(axis=2) / level).max(axis=0))
 
-    def _leave(self, done: Flag, count: int) -> None:
+    def _leave(self, done: Flag, gone: Flag, count: int) -> None:
         rows = self.points[done]
         self.answer[..., rows] = self.image[..., done]
         self.status[rows] = Status.SOLVED
-        self.iterations[rows] = count
+        self.iterations[self.points[gone]] = count
 
     def _keep(self, rows: Index) -> None:
         self.placed, self.points, self.best = self.placed.take(rows), self.points[rows], self.best[rows]

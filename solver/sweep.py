@@ -13,19 +13,24 @@ WIDE = 16  # values a place from which prefix sums go row by row
 
 @dataclass(frozen=True, slots=True)
 class Stage:
-    """The zones of one depth: where they stand and where the work of a sweep is kept.
+    """The zones of one depth: where they stand, and the part of a sweep's memory that is theirs."""
 
-    zones : numbers of the zones, counted among all, or among those that transformers feed
-    """
-
-    zones: slice
-    fed: slice
+    fed: slice  # their transformers
     places: slice
     roots: Index  # (zone,) first place of each zone
-    hung: Index  # (zone,) place each zone hangs on
+    hung: Index  # (zone,) place each zone hangs on, none at depth 0
     end: Index  # (place,) one past what is fed through it, counted from the first place of the depth
     end_flat: Index  # (place · k · batch,) the same for every single value
     zone: Index | None  # (place,) zone in this depth, None where there is one zone only
+    current: Complex
+    inflow: Complex
+    before: Complex  # prefix sums of the current up to each place, without it
+    through: Complex  # and with it
+    sums: Complex  # both, one longer
+    drop: Complex
+    fall: Complex  # prefix sums of the drops
+    fall_flat: Complex  # one place longer
+    drop_flat: Complex
 
 
 class Sweep:
@@ -43,18 +48,13 @@ class Sweep:
     """
 
     def __init__(self, placed: Placed, forest: Forest, width: int) -> None:
-        live, k = forest.order.size, placed.z.shape[1]
-        shape = (live, k, width)
-        self.placed, self.stages = (
-            placed,
-            [_stage(forest, d, k * width) for d in range(forest.depth_zone.size - 1)],
+        shape = (forest.order.size, placed.z.shape[1], width)
+        self.placed = placed
+        self.current, self.inflow, self.drop, self.inverse = (
+            np.zeros(shape, np.complex128) for _ in range(4)
         )
-        self.current = np.empty(shape, dtype=np.complex128)
-        self.inflow = np.empty(shape, dtype=np.complex128)
-        self.drop = np.empty(shape, dtype=np.complex128)
-        self.sums = np.empty((live + 1, k, width), dtype=np.complex128)
-        self.inverse = np.zeros(shape, dtype=np.complex128)
         self.squared, self.spare = np.empty(shape), np.empty(shape)
+        self.stages = [self._stage(forest, depth) for depth in range(forest.depth_zone.size - 1)]
 
     def __call__(self, voltage: Complex, out: Complex) -> Complex:
         """One whole sweep: the currents at these voltages, and the voltages those currents give.
@@ -75,19 +75,18 @@ class Sweep:
         voltage : (live, k, batch) complex [V]
         Returns : (live, k, batch) complex [A]
         """
-        placed, out = self.placed, self.current
-        np.multiply(voltage.real, voltage.real, out=self.squared)
-        np.multiply(voltage.imag, voltage.imag, out=self.spare)
-        self.squared += self.spare
-        np.reciprocal(self.squared, out=self.inverse.real)
-        np.multiply(placed.power, self.inverse, out=out)
+        placed, out, squared, inverse = self.placed, self.current, self.squared, self.inverse
+        np.multiply(voltage.real, voltage.real, squared)
+        np.multiply(voltage.imag, voltage.imag, self.spare)
+        np.add(squared, self.spare, squared)
+        np.reciprocal(squared, inverse.real)
+        np.multiply(placed.power, inverse, out)
         if placed.current is not None:
-            np.sqrt(self.inverse.real, out=self.inverse.real)
-            out += np.multiply(placed.current, self.inverse, out=self.inverse)
-            self.inverse.imag = 0
+            np.sqrt(inverse.real, inverse.real)
+            out += placed.current * inverse
         if placed.y is not None and placed.y.shape[1] == 1:
             out += placed.y[:, 0]
-        out *= voltage
+        np.multiply(out, voltage, out)
         if placed.y is not None and placed.y.shape[1] > 1:
             out += times(placed.y, voltage)
         return out
@@ -98,12 +97,9 @@ class Sweep:
         Returns : (live, k, batch) complex [A]
         """
         for stage in reversed(self.stages):
-            current, inflow = self.current[stage.places], self.inflow[stage.places]
-            sums = self.sums[: current.shape[0] + 1]
-            sums[0] = 0
-            accumulate(current, sums[1:])
-            np.take(sums, stage.end, axis=0, out=inflow, mode="clip")
-            inflow -= sums[:-1]
+            accumulate(stage.current, stage.through)
+            stage.sums.take(stage.end, axis=0, out=stage.inflow, mode="clip")
+            np.subtract(stage.inflow, stage.before, stage.inflow)
             if stage.hung.size:
                 secondary = self.inflow[stage.roots]
                 np.add.at(self.current, stage.hung, secondary / np.conj(self.placed.ratio[stage.fed]))
@@ -115,15 +111,13 @@ class Sweep:
         out : (live, k, batch) complex [V], which is filled
         Returns : out
         """
-        drops = times(self.placed.z, self.inflow, self.drop)
+        times(self.placed.z, self.inflow, self.drop)
         for stage in self.stages:
             root = self._roots(stage, out)
-            drop, here = drops[stage.places], out[stage.places]
-            sums = self.sums[: drop.shape[0] + 1]
-            sums[:-1] = drop
-            np.subtract.at(sums.reshape(-1), stage.end_flat, drop.reshape(-1))
-            accumulate(sums[:-1], sums[:-1])
-            np.subtract(root if stage.zone is None else root[stage.zone], sums[:-1], out=here)
+            stage.fall[...] = stage.drop
+            np.subtract.at(stage.fall_flat, stage.end_flat, stage.drop_flat)
+            accumulate(stage.fall, stage.fall)
+            np.subtract(root if stage.zone is None else root[stage.zone], stage.fall, out[stage.places])
         return out
 
     def _roots(self, stage: Stage, voltage: Complex) -> Complex:
@@ -133,23 +127,33 @@ class Sweep:
         through = self.placed.series[stage.fed] * self.inflow[stage.roots]
         return voltage[stage.hung] / self.placed.ratio[stage.fed] - through
 
-
-def _stage(forest: Forest, depth: int, values: int) -> Stage:
-    first, last = int(forest.depth_zone[depth]), int(forest.depth_zone[depth + 1])
-    supplied = int(forest.depth_zone[1])
-    start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
-    end = forest.end[start:stop] - start if start else forest.end[:stop]
-    flat = end if values == 1 else (end[:, None] * values + np.arange(values)).reshape(-1)
-    return Stage(
-        zones=slice(first, last),
-        fed=slice(first - supplied, last - supplied),
-        places=slice(start, stop),
-        roots=forest.zone_start[first:last],
-        hung=forest.zone_fed[first:last] if depth else forest.zone_fed[:0],
-        end=end,
-        end_flat=flat,
-        zone=None if last - first == 1 else forest.zone[start:stop] - first,
-    )
+    def _stage(self, forest: Forest, depth: int) -> Stage:
+        first, last = int(forest.depth_zone[depth]), int(forest.depth_zone[depth + 1])
+        supplied = int(forest.depth_zone[1])
+        start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
+        places = slice(start, stop)
+        longer = (stop - start + 1, *self.current.shape[1:])
+        sums, fall = np.zeros(longer, np.complex128), np.zeros(longer, np.complex128)
+        values = self.current[0].size
+        end = forest.end[places] - start if start else forest.end[places]
+        return Stage(
+            fed=slice(first - supplied, last - supplied),
+            places=places,
+            roots=forest.zone_start[first:last],
+            hung=forest.zone_fed[first:last] if depth else forest.zone_fed[:0],
+            end=end,
+            end_flat=end if values == 1 else (end[:, None] * values + np.arange(values)).reshape(-1),
+            zone=None if last - first == 1 else forest.zone[places] - first,
+            current=self.current[places],
+            inflow=self.inflow[places],
+            before=sums[:-1],
+            through=sums[1:],
+            sums=sums,
+            drop=self.drop[places],
+            fall=fall[:-1],
+            fall_flat=fall.reshape(-1),
+            drop_flat=self.drop[places].reshape(-1),
+        )
 
 
 def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Complex:
@@ -161,7 +165,7 @@ def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Compl
     Returns : (row, k, batch) complex
     """
     if matrix.shape[1] == 1:
-        return np.multiply(matrix[:, 0], vector, out=out)
+        return np.multiply(matrix[:, 0], vector, out)
     return np.einsum("rijb,rjb->rib", matrix, vector, out=out)
 
 
@@ -172,7 +176,7 @@ def accumulate(values: Complex, out: Complex) -> None:
     out : (place, k, batch) complex, may be the same array
     """
     if values.shape[1] * values.shape[2] < WIDE:
-        np.add.accumulate(values, axis=0, out=out)
+        np.add.accumulate(values, 0, None, out)
         return
     out[0] = values[0]
     for row in range(1, values.shape[0]):
