@@ -7,11 +7,11 @@ from enum import Enum
 
 from PySide6.QtCore import QPointF, QRectF
 
+from app.canvas.lanes import lane
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Busbar, Node
 
 GRID = 20.0
-LANE = 4.0  # grid steps between branches that join the same two nodes
 HANDLE_IN = 18.0  # an end handle stands this far in from its node, so that the node can still be held
 NEAR_ENOUGH = 1e-6
 
@@ -101,7 +101,7 @@ def route(drawing: Drawing, branch_id: str) -> list[QPointF]:
     if branch.via:
         bends = [scene(*p) for p in branch.via]
         return _without_repeats([meet(start, bends[0]), *bends, meet(end, bends[-1])])
-    return between(start, end, _lane(drawing, branch_id, branch))
+    return between(start, end, lane(drawing, branch_id, branch))
 
 
 def between(start: Node, end: Node, lane: float = 0.0) -> list[QPointF]:
@@ -174,18 +174,6 @@ def _elbow(start: Node, end: Node, a: QPointF, b: QPointF, aside: float) -> list
 def _met_level(node: Node) -> bool | None:
     """True where lines come in level (an upright bar), False for a lying bar, None where it is all one."""
     return node.upright if isinstance(node, Busbar) else None
-
-
-def _lane(drawing: Drawing, branch_id: str, branch: Branch) -> float:
-    """0 for the first branch between two nodes, then one lane to either side in turn."""
-    ends = {branch.start, branch.end}
-    place = 0
-    for other_id, other in drawing.elements.items():
-        if other_id == branch_id:
-            break
-        if isinstance(other, Branch) and not other.via and {other.start, other.end} == ends:
-            place += 1
-    return LANE * ((place + 1) // 2) * (1 if place % 2 else -1)
 
 
 def _without_repeats(points: Iterable[QPointF]) -> list[QPointF]:

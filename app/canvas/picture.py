@@ -130,7 +130,7 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
     low, high = (
         figures.percent(p, 0 if p == round(p) else 1) for p in (limits.low_percent, limits.high_percent)
     )
-    named = f" ({limits.name})" if limits.name else ""
+    named = f": {limits.name}" if limits.name else ""
     words = f"Case: {outcome.cases[case]} · voltage limits {low} to {high}{named}"
     return *lines, (Run(words, Style.QUIET),), (_verdict(outcome),)
 

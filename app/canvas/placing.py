@@ -10,7 +10,7 @@ from app.canvas.lettering import CENTRE, LEFT, RIGHT
 
 CELL = 80.0
 CLEAR = 3.0  # kept free around everything
-SHARES = (0.5, 0.44, 0.56, 0.38, 0.62, 0.3, 0.7, 0.22, 0.78)  # along a line, from its middle outwards
+SHARES = (0.5, 0.44, 0.56, 0.36, 0.64, 0.25, 0.75)  # along a line, from its middle outwards
 AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
 
 
@@ -47,8 +47,9 @@ class Taken:
         for cell in _cells(edges):
             self._cells.setdefault(cell, []).append(edges)
 
-    def overlap(self, box: QRectF) -> float:
-        """How much of a box and its clear rim lies on boxes in use, px²; a box is counted in each cell."""
+    def overlap(self, box: QRectF, enough: float = math.inf) -> float:
+        """How much of a box and its clear rim lies on boxes in use, px²; a box is counted in each cell.
+        Counting stops where it is enough."""
         mine = left, top, right, bottom = _edges(box, CLEAR)
         total = 0.0
         for cell in _cells(mine):
@@ -56,6 +57,8 @@ class Taken:
                 if other_left < right and left < other_right and other_top < bottom and top < other_bottom:
                     width = min(right, other_right) - max(left, other_left)
                     total += width * (min(bottom, other_bottom) - max(top, other_top))
+                    if total >= enough:
+                        return total
         return total
 
 
@@ -65,7 +68,7 @@ def place(wishes: Iterable[Wish], taken: Taken) -> dict[tuple[str, str], Spot]:
     for wish in wishes:
         best: tuple[float, Spot] | None = None
         for spot in wish.spots:
-            over = taken.overlap(spot.box)
+            over = taken.overlap(spot.box, best[0] if best is not None else math.inf)
             if best is None or over < best[0]:
                 best = (over, spot)
             if over == 0:

@@ -35,6 +35,7 @@ class Caption(QGraphicsItem):
         self.landmark = False  # its name is written from afar too
         self.spot = Spot(QRectF())
         self._room = QSizeF()
+        self._need = self._needed(self.USUAL)
         self._bounds = QRectF()
         self.setZValue(4)
         self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
@@ -48,7 +49,7 @@ class Caption(QGraphicsItem):
     @property
     def room(self) -> QSizeF:
         """What it needs, in steps; before there are figures, what they usually need."""
-        return self._room if self.lines or not self.awaited else self._needed(self.USUAL)
+        return self._room if self.lines or not self.awaited else self._need
 
     @property
     def wanted(self) -> bool:
@@ -64,6 +65,7 @@ class Caption(QGraphicsItem):
         self.setVisible(bool(lines))
         self.update()
         room, had = self._needed(lines), self.spot.box.size() if awaited else self._room
+        self._need = room
         fits = room.width() <= had.width() and room.height() == had.height()
         if awaited or not fits:
             self._room = room
@@ -83,7 +85,7 @@ class Caption(QGraphicsItem):
 
     def shrink(self) -> bool:
         """Give back room that is not needed any more; True where there was some."""
-        room = self._needed(self.lines)
+        room = self._need if self.lines else QSizeF(0, 0)
         smaller = room != self._room
         self._room = room
         return smaller
