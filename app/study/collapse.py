@@ -16,12 +16,12 @@ from solver import Share, Solution, Status, largest_share
 class Collapse:
     """What bars the operating point.
 
-    share : float, largest share of the loads that still solves; nan where the sweep only failed to settle
+    share : float, largest share of the loads that still solves; None where the sweep only failed to settle
     branch : id of the branch to blame, or None
     finding : the sentence
     """
 
-    share: float
+    share: float | None
     branch: str | None
     finding: Finding
 
@@ -45,7 +45,11 @@ def collapse_of(drawing: Drawing, layout: Layout, rows: Rows, solution: Solution
     where = f" in case {name}" if len(drawing.cases) > 1 else ""
     if least.share >= 1 or math.isinf(least.share):
         words = f"The sweep did not settle{where}, though the load seems bearable."
-        return Collapse(math.nan, None, Finding("not settled", Verdict.BLOCKS, (), words, case=name))
+        return Collapse(None, None, Finding("not settled", Verdict.BLOCKS, (), words, case=name))
+    if least.share == 0:
+        words = f"No operating point{where}, not even with all loads off: the infeed or the charging is more "
+        words += "than the layout can carry."
+        return Collapse(0.0, None, Finding("no operating point", Verdict.BLOCKS, (), words, case=name))
     words = f"The layout cannot carry its load{where}: only {percent(100 * least.share)} of it still solves"
     words += f", and {tell(drawing, branch)} stands in the way." if branch else "."
     ids = (branch,) if branch else ()

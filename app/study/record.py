@@ -29,7 +29,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "frequency_hz": drawing.frequency_hz,
         "status": outcome.status.name.lower(),
         "sentence": outcome.sentence,
-        "largest_share_percent": None if share is None else share * 100,
+        "largest_share_percent": None if share is None else _plain(share * 100),
         "to_blame": outcome.to_blame,
         "cases": list(outcome.cases),
         "balance": {f.name: _plain(getattr(outcome.balance, f.name)) for f in fields(outcome.balance)},

@@ -7,7 +7,7 @@ from app.model.kinds import Generator, Joint, Load, Transformer
 from app.study.layout import NONE, Layout, is_bare
 from app.study.outcome import Finding, Verdict
 from app.study.words import list_of, tell
-from app.study.zones import Zones, level_findings
+from app.study.zones import Zones, level_findings, stated_voltages
 
 LATER = "Closed rings are not solved in this version."
 
@@ -34,6 +34,7 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         *_plates(drawing, layout),
         *_dead(drawing, layout),
         *_loose_ends(drawing, layout),
+        *stated_voltages(drawing, layout, zones),
     ]
 
 
@@ -131,17 +132,18 @@ def _plates(drawing: Drawing, layout: Layout) -> list[Finding]:
             (
                 "load_loss_w",
                 "uk_percent",
-                "load loss Pk of {} W is more than its impedance uk of {} % allows",
+                "load loss Pk of {} is more than its impedance uk of {} % allows",
             ),
             (
                 "no_load_loss_w",
                 "no_load_current_percent",
-                "no-load loss P0 of {} W is more than its no-load current i0 of {} % carries",
+                "no-load loss P0 of {} is more than its no-load current i0 of {} % carries",
             ),
         ):
             watts, most = assumed.value(unit, loss), assumed.value(unit, limit)
             if watts > most * hundredth * (1 + 1e-12):
-                told = words.format(typed(watts), typed(most))
+                blank = " W, assumed," if getattr(unit, loss) is None else " W"
+                told = words.format(typed(watts) + blank, typed(most))
                 sentence = f"{tell(drawing, id)}: {told}; at {typed(unit.rating_kva)} kVA it is at most "
                 sentence += f"{typed(most * hundredth)} W."
                 found.append(Finding("transformer data", Verdict.BLOCKS, (id,), sentence))

@@ -7,11 +7,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.kinds import Supply, Transformer
+from app.model.kinds import Capacitor, Load, Supply, Transformer
 from app.study.layout import NONE, Layout
 from app.study.outcome import Assumption, Finding, Verdict
 from app.study.words import slip, tell
 
+USUAL_RESERVE = 1.6  # of a capacitor's rated voltage over the level, as 525 V or 600 V on 400 V
 APART = 1.15  # a winding this far from the level of its node is at the wrong level; 433 V on 400 V is not
 
 
@@ -110,6 +111,33 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
             f"{tell(drawing, at)}, which is at {level:g} V.{cure}"
         )
         found.append(Finding("mixed levels", Verdict.BLOCKS, (id, at), sentence))
+    return found
+
+
+def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+    """Loads stated, and capacitors rated, for a voltage that is not their node's, with the likely slip.
+
+    drawing : the drawing
+    layout : its graph
+    zones : nominal_v (zone,) float [V]
+
+    Returns : list of findings that bar nothing
+    """
+    found = []
+    for row, attachment in enumerate(layout.attachments):
+        if isinstance(attachment, Load):
+            volts, most, words = attachment.reference_v, APART, "states its demand at"
+        elif isinstance(attachment, Capacitor):
+            volts, most, words = attachment.rated_v, USUAL_RESERVE, "is rated"
+        else:
+            continue
+        level = zones.nominal_v[layout.zone[layout.at[row]]]
+        if volts is None or math.isnan(level) or 1 / APART <= volts / level <= most:
+            continue
+        id, at = layout.attachment_ids[row], layout.node_ids[layout.at[row]]
+        sentence = f"{tell(drawing, id)} {words} {volts:g} V but hangs on {tell(drawing, at)}, which is at "
+        sentence += f"{level:g} V.{slip(volts, level)}"
+        found.append(Finding("stated voltage", Verdict.NOTE, (id, at), sentence))
     return found
 
 

@@ -5,7 +5,7 @@ import pytest
 from study_layouts import changed, drawing, line, two_nodes
 
 from app.model.drawing import Case, Limits
-from app.model.kinds import Busbar, Cable, Load, Supply, Switch, Transformer
+from app.model.kinds import Busbar, Cable, Generator, Load, Supply, Switch, Transformer
 from app.study import run
 from app.study.findings import apart
 from app.study.outcome import Verdict
@@ -168,6 +168,13 @@ def test_no_operating_point_says_how_much_could_be_carried_and_what_bars_it():
     too_much = run(changed(weak, L1=Load(node="B2", demand_kva=300.0 * share * 1.002)))
     assert carried.status is Status.SOLVED
     assert too_much.status is Status.NO_OPERATING_POINT
+
+
+def test_infeed_that_no_load_shedding_can_cure_is_said_to_be_the_infeed():
+    outcome = run(changed(two_nodes(), G1=Generator(node="B2", output_kw=1e6)))
+    assert outcome.status is Status.NO_OPERATING_POINT
+    assert (outcome.largest_share, outcome.to_blame) == (0.0, None)
+    assert "not even with all loads off: the infeed or the charging" in outcome.findings[0].sentence
 
 
 def test_the_case_that_can_carry_least_is_named():

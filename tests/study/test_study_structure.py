@@ -5,7 +5,7 @@ import pytest
 from study_layouts import changed, drawing, line, two_nodes
 
 from app.model.drawing import Drawing
-from app.model.kinds import Busbar, Generator, Joint, Load, Supply, Switch, Transformer
+from app.model.kinds import Busbar, Capacitor, Generator, Joint, Load, Supply, Switch, Transformer
 from app.study import run
 from app.study.outcome import Verdict
 from solver.status import Status
@@ -223,6 +223,22 @@ def test_the_level_behind_a_transformer_is_its_winding_or_what_a_node_states():
     assert [(a.field, a.value, a.basis) for a in assumed] == [
         ("nominal_v", 433.0, "rated voltage of winding 2 of T1")
     ]
+
+
+def test_a_load_stated_or_a_capacitor_rated_for_another_voltage_is_noted():
+    finding = told(changed(two_nodes(), L1=Load(node="B2", reference_v=230.0)), "stated voltage")
+    assert finding.verdict is Verdict.NOTE
+    assert finding.sentence.startswith(
+        "L1 states its demand at 230 V but hangs on B2, which is at 400 V. 230 V is 400 V divided by √3"
+    )
+    assert told(changed(two_nodes(), K1=Capacitor(node="B2", rated_v=230.0)), "stated voltage").ids == (
+        "K1",
+        "B2",
+    )
+    quiet = changed(
+        two_nodes(), L1=Load(node="B2", reference_v=415.0), K1=Capacitor(node="B2", rated_v=525.0)
+    )
+    assert not [f for f in run(quiet).findings if f.check == "stated voltage"]
 
 
 def test_single_phase_and_three_phase_do_not_mix():

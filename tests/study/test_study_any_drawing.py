@@ -1,0 +1,135 @@
+"""Whatever is drawn, a run answers: it never raises, and says what it found in whole sentences."""
+
+import json
+import random
+import warnings
+
+import msgspec
+import numpy as np
+import pytest
+
+from app.model import edits
+from app.model.drawing import Case, Drawing
+from app.model.kinds import (
+    Busbar,
+    Cable,
+    Capacitor,
+    Generator,
+    Joint,
+    Load,
+    OverheadLine,
+    Supply,
+    Switch,
+    Transformer,
+)
+from app.printed import printed
+from app.study import path, run, tap_curve
+from app.study.outcome import Verdict
+from app.study.record import record
+from solver.status import Status
+
+
+def anything(seed):
+    """Nodes joined at random: loops, dead parts, several supplies, odd values, wrong levels."""
+    dice = random.Random(seed)
+    count = dice.randint(1, 9)
+    elements = {
+        f"N{i}": dice.choice([Busbar, Joint])(nominal_v=dice.choice([None] * 12 + [400.0, 11000.0, 0.4]))
+        for i in range(count)
+    }
+    for i in range(dice.randint(0, count + 2)):
+        ends = dict(zip(("start", "end"), (f"N{dice.randrange(count)}" for _ in "12"), strict=True))
+        if ends["start"] == ends["end"]:
+            continue
+        elements[f"X{i}"] = dice.choice([_line, _line, _switch, _transformer])(dice, ends)
+    for i in range(dice.randint(0, 9)):
+        elements[f"Y{i}"] = _attachment(dice, f"N{dice.randrange(count)}")
+    for i in range(dice.choice([0, 1, 1, 1, 2])):
+        elements[f"S{i}"] = Supply(
+            node=f"N{dice.randrange(count)}", nominal_v=dice.choice([400.0, 400.0, 11000.0, 230.0]),
+            held_percent=dice.choice([1.0, 100.0]),
+            wires=dice.choice(["three-phase", "three-phase", "two-wire"]),
+        )  # fmt: skip
+    cases = [
+        Case(name=f"case {i}", load_percent=dice.choice([0.0, 100.0])) for i in range(dice.randint(1, 3))
+    ]
+    return msgspec.structs.replace(edits.put(Drawing(), elements), cases=tuple(cases))
+
+
+def _line(dice, ends):
+    return dice.choice([Cable, OverheadLine])(
+        **ends, length_m=dice.choice([0.0, 50.0, 1e6]), r20_ohm_per_km=dice.choice([0.0, 0.3]),
+        c_uf_per_km=dice.choice([None, 0.3, 100.0]), rating_a=dice.choice([None, 1e-3, 200.0]),
+    )  # fmt: skip
+
+
+def _switch(dice, ends):
+    return Switch(**ends, closed=dice.random() < 0.7, rating_a=dice.choice([None, 400.0]))
+
+
+def _transformer(dice, ends):
+    return Transformer(
+        **ends, v1_v=dice.choice([400.0, 11000.0, 230.0]), v2_v=dice.choice([400.0, 11000.0]),
+        uk_percent=dice.choice([0.0, 4.0, 40.0]), load_loss_w=dice.choice([None, 0.0, 1200.0]),
+        no_load_loss_w=dice.choice([None, 0.0, 130.0]), no_load_current_percent=dice.choice([None, 0.0, 2.0]),
+        vector_group=dice.choice(["Dyn11", "Ii0"]), rating_kva=dice.choice([1e-3, 100.0]),
+    )  # fmt: skip
+
+
+def _attachment(dice, node):
+    return dice.choice(
+        [
+            Load(node=node, demand_kva=dice.choice([0.0, 5.0, 1e6]), power_factor=dice.choice([0.0, 0.9])),
+            Load(node=node, demand_kva=None, demand_kw=0.0, power_factor=0.0),
+            Load(node=node, constant_current_percent=60.0, constant_impedance_percent=40.0),
+            Generator(
+                node=node, output_kw=dice.choice([0.0, 40.0, 1e6]), output_kvar=dice.choice([0.0, -5.0])
+            ),
+            Capacitor(node=node, rating_kvar=dice.choice([0.0, 20.0, 1e6]), rated_v=dice.choice([None, 1.0])),
+        ]
+    )
+
+
+@pytest.mark.parametrize("start", range(0, 200, 20))
+def test_a_run_answers_whatever_is_drawn(start):
+    for seed in range(start, start + 20):
+        base = anything(seed)
+        with warnings.catch_warnings():
+            warnings.simplefilter("error")
+            outcome = run(base)
+            json.dumps(record(base, outcome, "0"), allow_nan=False)
+            assert printed(base, outcome).endswith("\n")
+            for id, element in base.elements.items():
+                if isinstance(element, Transformer):
+                    curve = tap_curve(base, id)
+                    assert curve.loss_kw.shape == (len(curve.notches), len(base.cases))
+        assert_sound(base, outcome)
+
+
+def assert_sound(base, outcome):
+    assert outcome.nodes.ids == tuple(base.nodes())
+    assert outcome.branches.ids == tuple(base.branches())
+    assert outcome.attachments.ids == tuple(base.attachments())
+    known = set(base.elements)
+    for finding in outcome.findings:
+        assert set(finding.ids) <= known
+        assert finding.sentence[-1] in ".?"
+    blocked = any(f.verdict is Verdict.BLOCKS for f in outcome.findings)
+    if outcome.status is Status.SOLVED:
+        assert not blocked
+        assert (outcome.balance.closure < 1e-6).all()
+        live = outcome.nodes.column("live")
+        assert not np.isnan(outcome.nodes.column("voltage_v")[live]).any()
+        assert np.isnan(outcome.nodes.column("voltage_v")[~live]).all()
+    else:
+        assert blocked or not base.elements or outcome.status is Status.INVALID
+        assert np.isnan(outcome.nodes.column("voltage_v")).all()
+    for id in outcome.nodes.ids:
+        assert len(path(outcome, id)) <= len(outcome.branches.ids)
+
+
+def test_the_drawings_are_of_every_sort():
+    ended = {run(anything(seed)).status for seed in range(120)}
+    checks = {f.check for seed in range(120) for f in run(anything(seed)).findings}
+    assert {Status.SOLVED, Status.INVALID, Status.NO_OPERATING_POINT} <= ended
+    assert {"closed loop", "dead part", "supplies joined", "mixed levels", "no supply", "loose end"} <= checks
