@@ -2,7 +2,7 @@
 
 from collections.abc import Iterator
 
-from PySide6.QtCore import QRectF, QSizeF
+from PySide6.QtCore import QPointF, QRectF, QSizeF
 
 from app.canvas import gauge
 from app.canvas.attachment_item import AttachmentItem
@@ -61,6 +61,14 @@ def _figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
         yield from around(core, width, height, "b12a43", gap=UNDER)
         for away in (30.0, 60.0, 90.0):
             yield from around(core, width, height, "ba", gap=away)
+
+
+def nearest_of(core: QRectF, words: QRectF) -> QPointF:
+    """The point of a node that is nearest to the middle of its words."""
+    middle = words.center()
+    return QPointF(
+        min(max(middle.x(), core.left()), core.right()), min(max(middle.y(), core.top()), core.bottom())
+    )
 
 
 def _half(item: BranchItem) -> float:

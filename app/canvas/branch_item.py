@@ -59,7 +59,7 @@ class BranchItem(ElementItem):
         self._runs = self._cut()
         whole = sum(distance(a, b) for a, b in zip(self.points, self.points[1:], strict=False))
         poles = isinstance(element, OverheadLine) and self.worn is None
-        self._poles = [along(self.points, whole * share) for share in (0.2, 0.8)] if poles else []
+        self._poles = [along(self.points, whole * share) for share in (0.12, 0.88)] if poles else []
         self._halo = self._around()
         self._bound()
 

@@ -176,7 +176,10 @@ class Paper(QGraphicsScene):
                 taken.add(block.spot.box)
         wishes = (w for w in self._wishes() if only is None or w.key[0] in only)
         for (id, sort), spot in place(wishes, taken).items():
-            (self.captions if sort == "caption" else self.tags)[id].settle(spot)
+            words = (self.captions if sort == "caption" else self.tags)[id]
+            words.settle(spot)
+            if isinstance(words, NodeFigures):
+                words.lead_to(arrange.nearest_of(self.items_by_id[id].core(), words.spot.box))
         self._make_room()
 
     def widen(self, ids: Iterable[str]) -> None:

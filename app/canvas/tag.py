@@ -2,7 +2,7 @@
 
 import math
 
-from PySide6.QtCore import QPointF, QRectF, QSizeF, Qt
+from PySide6.QtCore import QLineF, QPointF, QRectF, QSizeF, Qt
 from PySide6.QtGui import QPen
 from PySide6.QtWidgets import QGraphicsItem
 
@@ -16,6 +16,7 @@ ROUNDING = 12.0  # sizes grow in steps, so that a changing figure does not make 
 SMALLEST_ZOOM = 0.45  # below it words are too small to read
 FAR_ZOOM = 0.7  # what is still written there is written as large as at this zoom
 FARTHEST = 2.5
+LEAD_FROM = 22.0  # px between words and what they belong to
 
 
 class Caption(QGraphicsItem):
@@ -34,6 +35,7 @@ class Caption(QGraphicsItem):
         self.awaited = bool(self.USUAL) and not look.printing  # nothing was written yet
         self.landmark = False  # its name is written from afar too
         self.spot = Spot(QRectF())
+        self.lead: QLineF | None = None
         self._room = QSizeF()
         self._need = self._needed(self.USUAL)
         self._bounds = QRectF()
@@ -116,6 +118,20 @@ class Caption(QGraphicsItem):
             self._bounds = self._reach().adjusted(-1, -1, 1, 1)
             self.update()
 
+    def lead_to(self, point: QPointF) -> None:
+        """A hairline to what the words belong to, where they had to go some way off."""
+        box = self.spot.box
+        near = QPointF(
+            min(max(point.x(), box.left()), box.right()), min(max(point.y(), box.top()), box.bottom())
+        )
+        line = QLineF(near, point)
+        lead = line if line.length() > LEAD_FROM else None
+        if lead != self.lead:
+            self.prepareGeometryChange()
+            self.lead = lead
+            self._bounds = self._reach().adjusted(-1, -1, 1, 1)
+            self.update()
+
     def widen(self) -> None:
         """Grow where it stands: nothing jumps under the hand."""
         if self.spot.box.size() != self.room:
@@ -133,6 +149,9 @@ class Caption(QGraphicsItem):
         if not self.lines:
             return
         if self.look.printing or zoom >= SMALLEST_ZOOM:
+            if self.lead is not None:
+                painter.setPen(QPen(self.look.palette.soft, 0.7))
+                painter.drawLine(self.lead)
             self._paint(painter)
         else:
             self._paint_from_afar(painter, min(FAR_ZOOM / zoom, FARTHEST))
@@ -145,6 +164,8 @@ class Caption(QGraphicsItem):
         box, spread = self.spot.box, self.spread
         left = box.left() + (box.width() - spread.width()) * self._hold(self.spot)
         whole = box.united(QRectF(QPointF(left, box.top()), spread))
+        if self.lead is not None:
+            whole = whole.united(QRectF(self.lead.p1(), self.lead.p2()).normalized())
         return whole.united(self._from_afar()) if self.landmark else whole
 
     def _from_afar(self) -> QRectF:
@@ -155,18 +176,24 @@ class Caption(QGraphicsItem):
         return QRectF(QPointF(left, box.center().y() - bare.height() / 2), bare)
 
     def _paint_from_afar(self, painter, larger: float) -> None:
-        """The name alone, large enough to be read, where there is something it tells apart."""
-        if not self.landmark:
-            return
+        """The name of a landmark alone, or the sign of an alarm, large enough to be read."""
+        painter.save()
+        if self.landmark:
+            self._letter_name(painter, larger)
+        else:
+            painter.translate(self.spot.box.center())
+            painter.scale(larger, larger)
+            mark(painter, self.standing, QPointF(), self.look.palette, self.look.stale)
+        painter.restore()
+
+    def _letter_name(self, painter, larger: float) -> None:
         box = self.spot.box
         name = self.lines[:1]
-        painter.save()
         painter.translate(box.left() + box.width() * self.spot.align, box.center().y())
         painter.scale(larger, larger)
         bare = lettering.size(name)
         at = QPointF(-bare.width() * self.spot.align, -bare.height() / 2)
         lettering.paint(painter, name, at, bare.width(), self.look.palette)
-        painter.restore()
 
     def _letter(self, painter, box, over) -> None:
         w, h = self.PAD.width(), self.PAD.height()
@@ -197,13 +224,6 @@ class Tag(Caption):
         if lit != self.lit:
             self.lit = lit
             self.update()
-
-    def _paint_from_afar(self, painter, larger: float) -> None:
-        painter.save()
-        painter.translate(self.spot.box.center())
-        painter.scale(larger, larger)
-        mark(painter, self.standing, QPointF(), self.look.palette, self.look.stale)
-        painter.restore()
 
     def _extra(self, lines: tuple[Line, ...]) -> float:
         return 18.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
@@ -238,9 +258,6 @@ class NodeFigures(Caption):
         if reading != self.reading:
             self.reading = reading
             self.update()
-
-    def _paint_from_afar(self, painter, larger: float) -> None:
-        """The node itself is coloured."""
 
     def _hold(self, spot: Spot) -> float:
         return LEFT  # the gauge stays, the words grow away from it
