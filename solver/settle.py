@@ -72,9 +72,13 @@ class _Run:
 
     def _memory(self, voltage: Complex) -> None:
         """Takes the memory for as many operating points as still move."""
-        self.voltage, self.image, self.step = voltage, np.empty_like(voltage), np.empty_like(voltage)
-        self.size = np.empty((*voltage.shape[:-1], 2 * voltage.shape[-1]))
+        self.voltage, self.image = voltage, np.empty_like(voltage)
         self.sweep = Sweep(self.placed, self.forest, voltage.shape[-1])
+        _, k, width = voltage.shape
+        rows = self.sweep.parts[0].stop
+        self.step, self.size = np.empty((rows, k, width), np.complex128), np.empty((rows, k, 2 * width))
+        level = self.placed.level
+        self.weight = None if level.shape[0] == 1 else 1 / level[self.forest.zone][:, None, :]
 
     def settled(self) -> Settled:
         """Sweeps until all has settled or the sweeps are used up."""
@@ -98,14 +102,23 @@ class _Run:
 
     def _change(self) -> Real:
         """(batch,) largest change of a real or imaginary part relative to the level of its zone."""
-        np.subtract(self.image, self.voltage, self.step)
-        size = np.abs(self.step.view(np.float64), self.size)
-        level, zone_start = self.placed.level, self.forest.zone_start
-        width = self.points.size
-        if width == 1 and level.size == 1:
-            return np.maximum.reduce(size, None, keepdims=True)[0, 0] / level[0]
-        by_zone = np.maximum.reduceat(size.max(axis=1), zone_start[:-1], axis=0)
-        return np.asarray((by_zone.reshape(-1, width, 2).max(axis=2) / level).max(axis=0))
+        tops = [self._largest(part) for part in self.sweep.parts]
+        top = tops[0] if len(tops) == 1 else np.max(tops, axis=0)
+        return np.asarray(top if self.weight is not None else top / self.placed.level[0])
+
+    def _largest(self, part: slice) -> Real:
+        """(batch,) the same in a run of places, by the level where there is more than one."""
+        image = self.image[part]
+        step, size = self.step[: image.shape[0]], self.size[: image.shape[0]]
+        np.subtract(image, self.voltage[part], step)
+        np.abs(step.view(np.float64), size)
+        if self.weight is not None:
+            np.multiply(
+                size.reshape(*step.shape, 2), self.weight[part, ..., None], size.reshape(*step.shape, 2)
+            )
+        if self.points.size == 1:
+            return np.asarray(np.maximum.reduce(size, None, keepdims=True)[0, 0])
+        return np.asarray(size.max(axis=(0, 1)).reshape(-1, 2).max(axis=1))
 
     def _leave(self, done: Flag, gone: Flag, count: int) -> None:
         rows = self.points[done]
@@ -115,16 +128,16 @@ class _Run:
 
     def _keep(self, rows: Index) -> None:
         self.placed, self.points, self.best = self.placed.take(rows), self.points[rows], self.best[rows]
-        image, step = self.image.take(rows, axis=-1), self.step.take(rows, axis=-1)
+        image = self.image.take(rows, axis=-1)
         self._memory(self.voltage.take(rows, axis=-1))
-        self.image, self.step = image, step
+        self.image = image
         if self.anderson is not None:
             self.anderson.keep(rows)
 
     def _accelerated(self, change: Real) -> Complex:
         if self.anderson is None:
             self.anderson = Anderson(1 / self.placed.level[self.forest.zone][:, None, :])
-        image, step = self.image.copy(), self.step.copy()
+        image, step = self.image.copy(), self.image - self.voltage
         guess = self.anderson.next(image, step)
         wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
         if self._can_collapse():

@@ -9,12 +9,14 @@ from solver.network import Complex, Index
 from solver.placed import Placed
 
 WIDE = 16  # values a place from which prefix sums go row by row
+CHUNK = 4096  # complex values that are worked on while they stay in the nearest cache
 
 
 @dataclass(frozen=True, slots=True)
 class Stage:
     """The zones of one depth: where they stand, and the part of a sweep's memory that is theirs."""
 
+    zones: slice
     fed: slice  # their transformers
     places: slice
     roots: Index  # (zone,) first place of each zone
@@ -23,14 +25,12 @@ class Stage:
     end_flat: Index  # (place · k · batch,) the same for every single value
     zone: Index | None  # (place,) zone in this depth, None where there is one zone only
     current: Complex
-    inflow: Complex
-    before: Complex  # prefix sums of the current up to each place, without it
+    inflow: Complex  # turned into drops on the way forward
+    inflow_flat: Complex
+    sums: Complex  # prefix sums, one longer than the places
+    sums_flat: Complex
+    before: Complex  # sums up to each place without it
     through: Complex  # and with it
-    sums: Complex  # both, one longer
-    drop: Complex
-    fall: Complex  # prefix sums of the drops
-    fall_flat: Complex  # one place longer
-    drop_flat: Complex
 
 
 class Sweep:
@@ -48,13 +48,15 @@ class Sweep:
     """
 
     def __init__(self, placed: Placed, forest: Forest, width: int) -> None:
-        shape = (forest.order.size, placed.z.shape[1], width)
+        live, k = forest.order.size, placed.z.shape[1]
         self.placed = placed
-        self.current, self.inflow, self.drop, self.inverse = (
-            np.zeros(shape, np.complex128) for _ in range(4)
-        )
-        self.squared, self.spare = np.empty(shape), np.empty(shape)
+        self.current, self.inflow = (np.empty((live, k, width), np.complex128) for _ in range(2))
+        self.parts = parts(live, k * width)
+        rows = min(live, self.parts[0].stop)
+        self.squared, self.spare = (np.empty((rows, k, width)) for _ in range(2))
+        self.inverse = np.zeros((rows, k, width), np.complex128)
         self.stages = [self._stage(forest, depth) for depth in range(forest.depth_zone.size - 1)]
+        self.secondary = np.empty((forest.zone_source.size, k, width), np.complex128)
 
     def __call__(self, voltage: Complex, out: Complex) -> Complex:
         """One whole sweep: the currents at these voltages, and the voltages those currents give.
@@ -75,21 +77,26 @@ class Sweep:
         voltage : (live, k, batch) complex [V]
         Returns : (live, k, batch) complex [A]
         """
-        placed, out, squared, inverse = self.placed, self.current, self.squared, self.inverse
+        for part in self.parts:
+            self._currents(part, voltage[part], self.current[part])
+        if self.placed.y is not None and self.placed.y.shape[1] > 1:
+            self.current += times(self.placed.y, voltage)
+        return self.current
+
+    def _currents(self, part: slice, voltage: Complex, out: Complex) -> None:
+        placed, rows = self.placed, out.shape[0]
+        squared, spare, inverse = self.squared[:rows], self.spare[:rows], self.inverse[:rows]
         np.multiply(voltage.real, voltage.real, squared)
-        np.multiply(voltage.imag, voltage.imag, self.spare)
-        np.add(squared, self.spare, squared)
+        np.multiply(voltage.imag, voltage.imag, spare)
+        np.add(squared, spare, squared)
         np.reciprocal(squared, inverse.real)
-        np.multiply(placed.power, inverse, out)
+        np.multiply(placed.power[part], inverse, out)
         if placed.current is not None:
             np.sqrt(inverse.real, inverse.real)
-            out += placed.current * inverse
+            out += placed.current[part] * inverse
         if placed.y is not None and placed.y.shape[1] == 1:
-            out += placed.y[:, 0]
+            out += placed.y[part, 0]
         np.multiply(out, voltage, out)
-        if placed.y is not None and placed.y.shape[1] > 1:
-            out += times(placed.y, voltage)
-        return out
 
     def backward(self) -> Complex:
         """Current into every place from its feeder; primary currents are added where transformers hang.
@@ -97,34 +104,35 @@ class Sweep:
         Returns : (live, k, batch) complex [A]
         """
         for stage in reversed(self.stages):
+            stage.sums[0] = 0
             accumulate(stage.current, stage.through)
             stage.sums.take(stage.end, axis=0, out=stage.inflow, mode="clip")
             np.subtract(stage.inflow, stage.before, stage.inflow)
             if stage.hung.size:
-                secondary = self.inflow[stage.roots]
+                self.secondary[stage.zones] = secondary = self.inflow[stage.roots]
                 np.add.at(self.current, stage.hung, secondary / np.conj(self.placed.ratio[stage.fed]))
         return self.inflow
 
     def forward(self, out: Complex) -> Complex:
-        """Voltage at every place from the currents into them.
+        """Voltage at every place from the currents into them, which turn into drops.
 
         out : (live, k, batch) complex [V], which is filled
         Returns : out
         """
-        times(self.placed.z, self.inflow, self.drop)
+        times(self.placed.z, self.inflow, self.inflow)
         for stage in self.stages:
+            stage.before[...] = stage.inflow
+            np.subtract.at(stage.sums_flat, stage.end_flat, stage.inflow_flat)
+            accumulate(stage.before, stage.before)
             root = self._roots(stage, out)
-            stage.fall[...] = stage.drop
-            np.subtract.at(stage.fall_flat, stage.end_flat, stage.drop_flat)
-            accumulate(stage.fall, stage.fall)
-            np.subtract(root if stage.zone is None else root[stage.zone], stage.fall, out[stage.places])
+            np.subtract(root if stage.zone is None else root[stage.zone], stage.before, out[stage.places])
         return out
 
     def _roots(self, stage: Stage, voltage: Complex) -> Complex:
         """(zone, k, batch) voltage at the roots of a depth: the supply's, or Vs = Vp / a - Z Is."""
         if not stage.hung.size:
             return self.placed.root
-        through = self.placed.series[stage.fed] * self.inflow[stage.roots]
+        through = self.placed.series[stage.fed] * self.secondary[stage.zones]
         return voltage[stage.hung] / self.placed.ratio[stage.fed] - through
 
     def _stage(self, forest: Forest, depth: int) -> Stage:
@@ -133,10 +141,11 @@ class Sweep:
         start, stop = int(forest.zone_start[first]), int(forest.zone_start[last])
         places = slice(start, stop)
         longer = (stop - start + 1, *self.current.shape[1:])
-        sums, fall = np.zeros(longer, np.complex128), np.zeros(longer, np.complex128)
+        sums = np.empty(longer, np.complex128)
         values = self.current[0].size
         end = forest.end[places] - start if start else forest.end[places]
         return Stage(
+            zones=slice(first, last),
             fed=slice(first - supplied, last - supplied),
             places=places,
             roots=forest.zone_start[first:last],
@@ -146,14 +155,23 @@ class Sweep:
             zone=None if last - first == 1 else forest.zone[places] - first,
             current=self.current[places],
             inflow=self.inflow[places],
+            inflow_flat=self.inflow[places].reshape(-1),
+            sums=sums,
+            sums_flat=sums.reshape(-1),
             before=sums[:-1],
             through=sums[1:],
-            sums=sums,
-            drop=self.drop[places],
-            fall=fall[:-1],
-            fall_flat=fall.reshape(-1),
-            drop_flat=self.drop[places].reshape(-1),
         )
+
+
+def parts(live: int, values: int) -> list[slice]:
+    """Runs of places that stay in the nearest cache.
+
+    live : number of places
+    values : complex values a place
+    Returns : slices, one after the other
+    """
+    rows = max(1, CHUNK // values)
+    return [slice(start, min(start + rows, live)) for start in range(0, live, rows)]
 
 
 def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Complex:
@@ -161,12 +179,13 @@ def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Compl
 
     matrix : (row, k, k, batch) complex
     vector : (row, k, batch) complex
-    out : (row, k, batch) complex, filled where it is given
+    out : (row, k, batch) complex, filled where it is given; may be the vector
     Returns : (row, k, batch) complex
     """
     if matrix.shape[1] == 1:
         return np.multiply(matrix[:, 0], vector, out)
-    return np.einsum("rijb,rjb->rib", matrix, vector, out=out)
+    product = np.einsum("rijb,rjb->rib", matrix, vector)
+    return product if out is None else np.positive(product, out)
 
 
 def accumulate(values: Complex, out: Complex) -> None:
