@@ -40,7 +40,14 @@ def solve(
 
 
 def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:
-    """(live, k, batch) voltage of every zone with nothing connected."""
+    """Voltage of every place with nothing connected: the supply's, divided by every ratio on the way.
+
+    placed : Placed
+    forest : Forest
+    k : conductors
+    width : number of operating points
+    Returns : (live, k, batch) complex [V]
+    """
     supplied = placed.root.shape[0]
     zone = np.empty((forest.zone_source.size, k, width), dtype=np.complex128)
     zone[:supplied] = placed.root
