@@ -4,14 +4,12 @@ import numpy as np
 
 from solver.forest import Forest
 from solver.load import drawn
-from solver.network import Complex, Index, Network
+from solver.network import Complex, Index, Network, Real
 from solver.placed import Placed, fed_transformers, magnetising
 from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
 from solver.trouble import Trouble
-
-OPEN = 1e-6  # closure from which an answer is none
 
 
 def answer(
@@ -47,14 +45,8 @@ def answer(
         supplied = int(forest.depth_zone[1])
         source_current[forest.zone_source[:supplied]] = inflow[forest.zone_start[:supplied]]
         source_power = everywhere[network.source_node] * np.conj(source_current)
-    drawn_power = _sum(load_power) + _sum(shunt_power)
-    lost = _sum(lines[2]) + _sum(lines[3]) + _sum(transformers[2]) + _sum(transformers[3])
-    given = _sum(source_power)
-    size = np.maximum(np.abs(given), np.nansum(np.abs(load_power), axis=(0, 1)))
-    gap = np.abs(given - drawn_power - lost)
-    closure = np.divide(gap, size, out=np.where(gap > 0, np.inf, 0.0), where=size > 0)
+        closure = _closure(source_power, load_power, (load_power, shunt_power, *lines[2:], *transformers[2:]))
     closure[[s is not Status.SOLVED for s in status]] = np.nan
-    status = tuple(Status.NOT_SETTLED if c > OPEN else s for s, c in zip(status, closure, strict=True))
     return Solution(
         network=network,
         forest=forest,
@@ -78,9 +70,18 @@ def answer(
     )
 
 
-def _sum(power: Complex) -> Complex:
-    """(batch,) of all live rows; nan where the point has no answer is kept by the sources."""
-    return np.nansum(power.reshape(-1, power.shape[-1]), axis=0)
+def _closure(source_power: Complex, load_power: Complex, taken: tuple[Complex, ...]) -> Real:
+    """(batch,) |supplied - drawn - lost| over the larger of supplied and drawn; dead rows do not count."""
+    given = _total(source_power)
+    size = np.maximum(np.abs(given), _total(np.abs(load_power)))
+    gap = np.abs(given - sum(_total(power) for power in taken))
+    return np.divide(gap, size, out=np.where(gap > 0, np.inf, 0.0), where=size > 0)
+
+
+def _total(power: Complex | Real) -> Complex:
+    """(batch,) sum of the rows that are live."""
+    total = power.sum(axis=tuple(range(power.ndim - 1)))
+    return total if np.isfinite(total).all() else np.nansum(power, axis=tuple(range(power.ndim - 1)))
 
 
 def _blank(rows: int, like: Complex) -> Complex:
@@ -92,16 +93,17 @@ def _lines(
 ) -> tuple[Complex, Complex, Complex, Complex]:
     way = forest.line_way
     child = np.where(way > 0, network.line_to, network.line_from)
-    series = inflow[forest.place[child]] * way[:, None, None]
-    series[way == 0] = complex(np.nan, np.nan)
-    first, last = voltage[network.line_from], voltage[network.line_to]
-    lost = np.conj(series) * times(network.line_z, series)
+    series = inflow.take(forest.place[child], axis=0, mode="clip")
+    np.negative(series, series, where=(way < 0)[:, None, None])
+    if (dead := way == 0).any():
+        series[dead] = complex(np.nan, np.nan)
+    lost = (np.conj(series) * times(network.line_z, series)).sum(axis=1)
     if not network.line_y.any():
-        return series, series, lost.sum(axis=1), np.zeros_like(lost[:, 0]) * lost[:, 0]
-    half = network.line_y / 2
+        return series, series, lost, 0 * lost
+    first, last, half = voltage[network.line_from], voltage[network.line_to], network.line_y / 2
     first_charge, last_charge = times(half, first), times(half, last)
     charging = first * np.conj(first_charge) + last * np.conj(last_charge)
-    return series + first_charge, series - last_charge, lost.sum(axis=1), charging.sum(axis=1)
+    return series + first_charge, series - last_charge, lost, charging.sum(axis=1)
 
 
 def _transformers(
@@ -125,8 +127,11 @@ def _transformers(
 
 
 def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
-    at = voltage[network.load_node]
-    power = drawn(network.load_power, network.load_mix[:, None, None, :], at, network.load_reference)
+    at = voltage.take(network.load_node, axis=0)
+    if network.load_mix[:, 1:].any():
+        power = drawn(network.load_power, network.load_mix[:, None, None, :], at, network.load_reference)
+    else:
+        power = np.where(np.isnan(at), at, network.load_power)
     return power, np.conj(power / at)
 
 

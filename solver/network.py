@@ -84,7 +84,8 @@ class Network:
             _check_rows(self, first, second)
         if self.load_mix.shape != (self.load_node.size, 3):
             raise ValueError(f"load_mix has shape {self.load_mix.shape}, not ({self.load_node.size}, 3)")
-        if not np.abs(self.load_mix.sum(axis=1) - 1).max(initial=0) < 1e-9:
+        power, current, impedance = self.load_mix.T
+        if not np.abs(power + current + impedance - 1).max(initial=0) < 1e-9:
             raise ValueError("load_mix has a row whose shares do not sum to 1")
         if not (self.load_reference.min(initial=np.inf) > 0 and np.all(self.source_voltage)):
             raise ValueError("load_reference and source_voltage must not hold zeros")

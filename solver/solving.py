@@ -8,7 +8,10 @@ from solver.network import Complex, Network
 from solver.placed import Placed, put
 from solver.settle import settle
 from solver.solution import Solution
+from solver.status import Status
 from solver.trouble import Trouble
+
+OPEN = 1e-6  # closure from which an answer is none
 
 
 def solve(
@@ -20,7 +23,8 @@ def solve(
     forest : Forest or Trouble of a network with the same connections, where it is known already
     warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
     Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
-        NOT_SETTLED where the sweeps still moved, INVALID where loops are closed, supplies
+        NOT_SETTLED where the sweeps still moved or the closure
+        is worse than 1e-6, INVALID where loops are closed, supplies
         joined or nothing is supplied
     Raises : ValueError for arrays that do not fit together, a programmer's mistake
     Source : see solver.sweep
@@ -36,7 +40,12 @@ def solve(
         guess = np.broadcast_to(warm[forest.order], start.shape)
         start = np.where(np.isfinite(guess), guess, start)
     settled = settle(placed, forest, start)
-    return answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
+    solution = answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
+    if not (loose := solution.closure > OPEN).any():
+        return solution
+    status = tuple(Status.NOT_SETTLED if x else s for s, x in zip(settled.status, loose, strict=True))
+    voltage = np.where(loose, complex(np.nan, np.nan), settled.voltage)
+    return answer(network, forest, placed, voltage, status, settled.iterations)
 
 
 def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:

@@ -9,7 +9,7 @@ from solver.network import Complex, Index
 from solver.placed import Placed
 
 WIDE = 16  # values a place from which prefix sums go row by row
-CHUNK = 4096  # complex values that are worked on while they stay in the nearest cache
+CHUNK = 1 << 15  # complex values that are worked on while they stay in cache
 
 
 @dataclass(frozen=True, slots=True)
@@ -164,7 +164,7 @@ class Sweep:
 
 
 def parts(live: int, values: int) -> list[slice]:
-    """Runs of places that stay in the nearest cache.
+    """Runs of places that stay in cache.
 
     live : number of places
     values : complex values a place
