@@ -15,6 +15,7 @@ CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-
 PLAIN = 12  # sweeps before acceleration
 MOST = 120  # sweeps in all
 WILD = 50.0  # growth of the change that makes the acceleration start afresh
+FAR = 0.5  # |c|² from which a geometric series is not worth following
 LOW = 0.02  # share of the no-load voltage that no guess may fall below
 BLOCK = 1 << 15  # complex values in one array that stay in cache
 
@@ -67,6 +68,7 @@ class _Run:
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
         self.iterations = np.full(width, MOST)
         self.anderson: Anderson | None = None
+        self.before: Complex | None = None  # the step before, at every other sweep
         self.best = np.full(width, np.inf)
         self._memory(start.copy())
 
@@ -94,6 +96,7 @@ class _Run:
                     change = change[stay]
                     self._keep(np.flatnonzero(stay))
                 if count < PLAIN:
+                    self._extrapolate(count)
                     self.voltage, self.image = self.image, self.voltage
                 else:
                     self.voltage = self._accelerated(change)
@@ -131,8 +134,30 @@ class _Run:
         image = self.image.take(rows, axis=-1)
         self._memory(self.voltage.take(rows, axis=-1))
         self.image = image
+        self.before = None if self.before is None else self.before.take(rows, axis=-1)
         if self.anderson is not None:
             self.anderson.keep(rows)
+
+    def _extrapolate(self, count: int) -> None:
+        """Goes to the end of the geometric series that two sweeps in a row begin.
+
+        Currents follow the conjugate of the voltage, so each step is c times the conjugate of the one
+        before: d2 = c conj(d1), and all steps to come add up to (c conj(d2) + |c|² d2) / (1 - |c|²).
+        """
+        before, self.before = self.before, None
+        step = np.subtract(self.image, self.voltage, self.voltage)
+        if count % 2:
+            self.before = step.copy()
+        elif before is not None:
+            weighted = before if self.weight is None else before * self.weight**2
+            c = np.einsum("nkb,nkb->b", weighted, step)
+            c /= np.einsum("nkb,nkb->b", weighted, np.conj(before)).real
+            size = c.real**2 + c.imag**2
+            far = ~(size < FAR)
+            c[far] = size[far] = 0
+            self.image += (c / (1 - size)) * np.conj(step)
+            step *= size / (1 - size)
+            self.image += step
 
     def _accelerated(self, change: Real) -> Complex:
         if self.anderson is None:
