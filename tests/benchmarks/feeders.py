@@ -1,4 +1,4 @@
-"""Invented feeders of any size for the solver's benchmarks, and SciPy's sparse LU fixed point on the same rows."""
+"""Invented feeders of any size for benchmarks, and SciPy's sparse LU fixed point on the same rows."""
 
 from time import process_time
 
@@ -14,7 +14,7 @@ NONE = np.zeros(0, dtype=np.intp)
 
 
 def feeder(count, drop=0.06, near=20, seed=1):
-    """A radial feeder: each node hangs on one of the last few, loads at all, names and directions shuffled."""
+    """A radial feeder: each node hangs on one of the last few and has a load; names and ends shuffled."""
     rng = np.random.default_rng(seed)
     above = np.maximum(0, np.arange(count) - 1 - rng.integers(0, near, count))
     z = (0.3 + 0.25j) * rng.uniform(0.5, 1.5, count)

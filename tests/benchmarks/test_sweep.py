@@ -61,9 +61,7 @@ def test_one_solve_against_sparse_lu(count):
     assert np.max(np.abs(solution.voltage[:, 0, 0] - voltage)) < 1e-7 * VOLTS
     trees, rows, sweeps, known, whole = 1e3 * np.median(ours, axis=0)
     print(f"\n{count} nodes, {solution.iterations[0]} sweeps, closure {solution.closure[0]:.0e}; ms:")
-    print(
-        f"  ours: trees {trees:.2f}, rows {rows:.2f}, sweeps {sweeps:.2f}; solve {known:.2f}, whole {whole:.2f}"
-    )
+    print(f"  ours: trees {trees:.2f}, rows {rows:.2f}, sweeps {sweeps:.2f}, solve {known:.2f}, {whole:.2f}")
     for name, runs in theirs.items():
         assembly, factors, iteration = 1e3 * np.median(runs, axis=0)
         total = assembly + factors + iteration
@@ -114,6 +112,4 @@ def test_a_year_in_one_batch():
     single = (process_time() - began) / sample * hours
     for point, one in zip(points, alone, strict=True):
         assert np.max(np.abs(together.voltage[..., point] - one.voltage[..., 0])) < 1e-11 * VOLTS
-    print(
-        f"\n{hours} hours: batch {batch:.2f} s, singles {single:.2f} s, ratio {single / batch:.1f}"
-    )
+    print(f"\n{hours} hours: batch {batch:.2f} s, singles {single:.2f} s, ratio {single / batch:.1f}")

@@ -113,3 +113,21 @@ def test_generation_counts_as_no_demand():
     network = build(2, [(0, 230)], [(0, 1, 0.5)], loads=[(1, 10e3), (1, -5e3, 1.0, POWER)])
     share = largest_share(network)
     assert share.share == pytest.approx((230**2 / (4 * 0.5) + 5e3) / 10e3, rel=1e-3)
+
+
+def test_an_open_balance_is_no_answer(monkeypatch):
+    """With the bound on the closure drawn below rounding, nothing counts as solved and no figure stands."""
+    monkeypatch.setattr("solver.solving.OPEN", 1e-30)
+    _, network = feeder("n33")
+    solution = solve(network)
+    assert solution.status == (Status.NOT_SETTLED,)
+    assert np.isnan(solution.voltage).all()
+    assert np.isnan(solution.line_in).all()
+
+
+def test_a_warm_start_lands_on_the_same_answer():
+    _, network = feeder("n33")
+    cold = solve(network)
+    warm = solve(network, forest=cold.forest, warm=cold.voltage)
+    assert np.max(np.abs(warm.voltage / cold.voltage - 1)) < 1e-12
+    assert warm.iterations[0] < cold.iterations[0]
