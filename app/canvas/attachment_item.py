@@ -26,13 +26,14 @@ class AttachmentItem(ElementItem):
         self.angle = 0.0  # of the symbol, which is drawn fed from above
         self.worn: Glyph | Worn | None = None
 
-    def lay(self, drawing: Drawing) -> None:
-        element = drawing.elements[self.id]
+    def place(self, drawing: Drawing) -> None:
         self.points = stub(drawing, self.id)
         self.at = attachment_point(drawing, self.id)
         a, b = self.points[-2:]
         self.angle = math.degrees(math.atan2(b.y() - a.y(), b.x() - a.x())) - 90 if a != b else 0.0
-        self.worn = dress(drawing, element, self.look.symbols)
+
+    def read(self, drawing: Drawing) -> None:
+        self.worn = dress(drawing, drawing.elements[self.id], self.look.symbols)
         box = self.core().adjusted(-HALO, -HALO, HALO, HALO)
         for point in self.points:
             box = box.united(QRectF(point.x() - 2, point.y() - 2, 4, 4))

@@ -1,6 +1,6 @@
 """The drawing board: the paper, tied to session, solution, attention and theme."""
 
-from collections.abc import Callable, Set
+from collections.abc import Iterable, Iterator, Set
 
 from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
 
@@ -11,7 +11,7 @@ from app.canvas.handles import Handles
 from app.canvas.ladder import TapLadder
 from app.canvas.node_item import NodeItem
 from app.canvas.paper import Paper, with_neighbours
-from app.canvas.placing import Taken, Wish, around, place
+from app.canvas.placing import CLEAR, Spot, Taken, Wish, around, place
 from app.canvas.tag import SMALLEST_ZOOM, Caption, Tag
 from app.canvas.theme import Theme
 from app.live.attention import Attention
@@ -35,6 +35,7 @@ class Board(Paper):
         super().__init__(Look(theme.palette, theme.symbols), parent)
         self.session, self.solving, self.attention, self.theme = session, solving, attention, theme
         self.ladders: dict[str, TapLadder] = {}
+        self._lit: frozenset[str] = frozenset()
         self._handles = Handles(self.look)
         self._rest = QTimer(self, singleShot=True, interval=REST_MS)
         self._rest.timeout.connect(self.write_rest)
@@ -82,14 +83,19 @@ class Board(Paper):
 
     def _follow(self, change: Change) -> None:
         drawing = self.session.drawing
-        ids = drawing.elements.keys() | self.items_by_id.keys() if change.rest else change.ids
-        moved = self.lay(drawing, ids)
+        ids: Set[str] = change.ids
+        if change.rest or change.geometry or change.topology:
+            everywhere = drawing.elements.keys() | self.items_by_id.keys()
+            ids = everywhere if change.rest else with_neighbours(drawing, change.ids)
+            moved = self.lay(drawing, ids)
+        else:
+            moved = self.read(drawing, ids)
         gone = self.attention.selection - drawing.elements.keys()
         if gone:  # first, so that no ladder is left at a transformer that is gone
             self.attention.select(self.attention.selection - gone)
         if moved:
             self._fit_words(with_neighbours(drawing, frozenset(ids)))
-        self._light()
+        self._light(ids)
 
     def refresh(self) -> None:
         """Write the figures of the case shown."""
@@ -100,7 +106,7 @@ class Board(Paper):
         case = min(self.attention.case, len(outcome.cases) - 1)
         shown = self.session.drawing, outcome, case, self.solving.reference
         problem = self.solving.problem if self.solving.problem is not outcome else None
-        self._fit_words(self.show_outcome(*shown, self._seen(), problem))
+        self._fit_words(self.show_outcome(*shown, self._sight(), problem))
         self._rest.start()
         for ladder in self.ladders.values():
             ladder.follow()
@@ -121,14 +127,11 @@ class Board(Paper):
             self.arrange(grown if len(self.items_by_id) > SMALL else None)
             self._place_ladders()
 
-    def _seen(self) -> Callable[[Caption], bool]:
-        """Whether words are in sight in any view; with no view all of them count as seen."""
+    def _sight(self) -> list[QRectF] | None:
+        """Where words can be read in the views; None, all over, where there is no view."""
         views = [v for v in self.views() if v.isVisible()]
-        if not views:
-            return lambda _: True
         near = [v for v in views if v.transform().m11() >= SMALLEST_ZOOM]
-        parts = [v.mapToScene(v.viewport().rect()).boundingRect() for v in near]
-        return lambda words: any(part.intersects(words.spot.box) for part in parts)
+        return [v.mapToScene(v.viewport().rect()).boundingRect() for v in near] if views else None
 
     def _grey(self) -> None:
         if self.look.stale != self.solving.stale:
@@ -144,13 +147,16 @@ class Board(Paper):
 
     # selection, hover, ladders ------------------------------------------------------------------
 
-    def _light(self) -> None:
+    def _light(self, fresh: Iterable[str] = ()) -> None:
+        """Light what is looked at, put out what was; `fresh` may have been made anew, without light."""
         chosen, hover = self.attention.selection, self.attention.hover
-        for id, item in self.items_by_id.items():
-            item.light(id in chosen, id == hover)
+        looked_at = chosen | {hover}
+        for id in looked_at.union(self._lit, fresh) & self.items_by_id.keys():
+            self.items_by_id[id].light(id in chosen, id == hover)
             tag = self.tags.get(id)
             if isinstance(tag, Tag):
-                tag.light(id in chosen or id == hover)
+                tag.light(id in looked_at)
+        self._lit = looked_at
         self._take_handles()
         self._raise_ladders()
 
@@ -180,18 +186,28 @@ class Board(Paper):
     def _place_ladders(self) -> None:
         if not self.ladders:
             return
-        taken = Taken(b.spot.box for b in self._blocks() if b.lines)
-        for item in self.items_by_id.values():
-            taken.add(item.core())
-        for id, ladder in self.ladders.items():
-            item = self.items_by_id[id]
-            box = ladder.boundingRect()
-            core = item.core().united(self.captions[id].spot.box)
-            spots = around(core, box.width(), box.height(), "a43rlb12", LADDER_GAP)
-            spot = place([Wish((id, "ladder"), spots)], taken)[id, "ladder"]
-            ladder.setPos(spot.box.topLeft() - box.topLeft())
+        cores = {id: self.items_by_id[id].core().united(self.captions[id].spot.box) for id in self.ladders}
+        wishes = [Wish((id, "ladder"), self._ladder_spots(id, core)) for id, core in cores.items()]
+        taken = Taken(self._covered_near(spot.box for wish in wishes for spot in wish.spots))
+        for (id, _), spot in place(wishes, taken).items():
+            item, ladder = self.items_by_id[id], self.ladders[id]
+            ladder.setPos(spot.box.topLeft() - ladder.boundingRect().topLeft())
             if isinstance(item, BranchItem):
-                item.embrace(spot.box.united(core).united(self.tags[id].spot.box))
+                item.embrace(spot.box.united(cores[id]).united(self.tags[id].spot.box))
+
+    def _ladder_spots(self, id: str, core: QRectF) -> list[Spot]:
+        box = self.ladders[id].boundingRect()
+        return list(around(core, box.width(), box.height(), "a43rlb12", LADDER_GAP))
+
+    def _covered_near(self, boxes: Iterable[QRectF]) -> Iterator[QRectF]:
+        """What symbols and words cover where any of these boxes, with their clear rim, would be."""
+        mode = Qt.ItemSelectionMode.IntersectsItemBoundingRect
+        rims = (box.adjusted(-CLEAR, -CLEAR, CLEAR, CLEAR) for box in boxes)
+        for item in {item for rim in rims for item in self.items(rim, mode)}:
+            if isinstance(item, ElementItem):
+                yield item.core()
+            elif isinstance(item, Caption) and item.lines:
+                yield item.spot.box
 
 
 def _outlines(item: ElementItem) -> list[Outline]:

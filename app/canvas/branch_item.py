@@ -8,7 +8,7 @@ from PySide6.QtGui import QPainterPath, QPainterPathStroker, QPen, QPolygonF, QT
 
 from app.canvas.element_item import ElementItem, dress, halo_colour, paint_worn
 from app.canvas.geometry import along, distance, longest, pose, route
-from app.canvas.standing import Standing, breadth, colour, pen
+from app.canvas.standing import Standing, colour, pen
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.user_symbol import Worn
 from app.model.drawing import Drawing
@@ -17,7 +17,6 @@ from app.model.kinds import OverheadLine, Switch
 MARGIN = 14.0
 HALO = 9.0
 POLE = 3.5
-STEP = 0.25  # a change of breadth below this is not repainted
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,11 +25,6 @@ class Flow:
 
     width: float = 2.0
     forward: bool | None = None
-
-    @staticmethod
-    def of(loading_percent: float, forward: bool | None) -> "Flow":
-        """The breadth in steps that the eye can tell."""
-        return Flow(round(breadth(loading_percent) / STEP) * STEP, forward)
 
 
 class BranchItem(ElementItem):
@@ -50,10 +44,12 @@ class BranchItem(ElementItem):
         self._halo = QPainterPath()
         self._embraced = QRectF()
 
-    def lay(self, drawing: Drawing) -> None:
-        element = drawing.elements[self.id]
+    def place(self, drawing: Drawing) -> None:
         self.points = route(drawing, self.id)
         self.at, self.angle = pose(self.points)
+
+    def read(self, drawing: Drawing) -> None:
+        element = drawing.elements[self.id]
         self.lossless = isinstance(element, Switch)
         self.worn = dress(drawing, element, self.look.symbols)
         self._runs = self._cut()
@@ -73,10 +69,10 @@ class BranchItem(ElementItem):
             self._embraced = box
             self._bound()
 
-    def show_flow(self, flow: Flow) -> None:
+    def show_flow(self, width: float, forward: bool | None) -> None:
         """Breadth and direction; repaints only where they are new."""
-        if flow != self.flow:
-            self.flow = flow
+        if width != self.flow.width or forward is not self.flow.forward:
+            self.flow = Flow(width, forward)
             self.update()
 
     def core(self) -> QRectF:

@@ -69,8 +69,12 @@ class ElementItem(QGraphicsItem):
         self._bounds = QRectF()
         self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
 
-    def lay(self, drawing: Drawing) -> None:
-        """Read place and data from the drawing."""
+    def place(self, drawing: Drawing) -> None:
+        """Read from the drawing where it is; `read` follows."""
+        raise NotImplementedError
+
+    def read(self, drawing: Drawing) -> None:
+        """Read from the drawing what it is, and take up its box where it was placed."""
         raise NotImplementedError
 
     def core(self) -> QRectF:

@@ -35,11 +35,13 @@ class NodeItem(ElementItem):
         """True for a bar that stands."""
         return self.bar and self.ends[0].x() == self.ends[1].x()
 
-    def lay(self, drawing: Drawing) -> None:
+    def place(self, drawing: Drawing) -> None:
         node = drawing.elements[self.id]
         assert isinstance(node, Node)
         self.ends = bar_ends(node) if isinstance(node, Busbar) else (node_point(node), node_point(node))
-        self.worn = dress(drawing, node, self.look.symbols)
+
+    def read(self, drawing: Drawing) -> None:
+        self.worn = dress(drawing, drawing.elements[self.id], self.look.symbols)
         self.bound(self.core().adjusted(-HALO, -HALO, HALO, HALO))
 
     def core(self) -> QRectF:

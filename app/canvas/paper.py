@@ -1,7 +1,8 @@
 """The drawing on paper: an item an element, with its words, from a drawing and an outcome."""
 
-from collections.abc import Callable, Container, Iterable, Iterator
+from collections.abc import Container, Iterable, Iterator, Mapping
 from itertools import chain, islice
+from typing import Any
 
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPen
@@ -9,13 +10,14 @@ from PySide6.QtWidgets import QGraphicsScene
 
 from app.canvas import arrange, standing, wording
 from app.canvas.attachment_item import AttachmentItem
-from app.canvas.branch_item import BranchItem, Flow
+from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import GRID
 from app.canvas.lettering import Line
 from app.canvas.node_item import NodeItem
 from app.canvas.placing import Taken, Wish, place
-from app.canvas.shown import Shown, column_of
+from app.canvas.shown import Shown, array_of, column_of
+from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Busbar, Node
@@ -35,6 +37,7 @@ class Paper(QGraphicsScene):
         self.captions: dict[str, Caption] = {}
         self.tags: dict[str, Tag | NodeFigures] = {}
         self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
+        self._laid = Drawing()
         self._shown: Shown | None = None
         self.setItemIndexMethod(QGraphicsScene.ItemIndexMethod.BspTreeIndex)
 
@@ -49,11 +52,10 @@ class Paper(QGraphicsScene):
         self.arrange()
 
     def lay(self, drawing: Drawing, ids: Iterable[str]) -> bool:
-        """Read these elements again, and whatever hangs on them: made, moved, changed or gone.
-
-        True where words must find new places."""
+        """Read these elements again: made, moved, changed or gone. True where words must find new places."""
+        self._laid = drawing
         moved = False
-        for id in sorted(with_neighbours(drawing, frozenset(ids)), key=_rank(drawing)):
+        for id in sorted(ids, key=_rank(drawing)):
             element = drawing.elements.get(id)
             if id in self.items_by_id and not _fits(self.items_by_id[id], element):
                 self._take_off(id)
@@ -62,14 +64,22 @@ class Paper(QGraphicsScene):
                 continue
             if id not in self.items_by_id:
                 self._put_on(id, element)
-            item, covered = self.items_by_id[id], self.items_by_id[id].boundingRect()
-            item.lay(drawing)
-            moved |= item.boundingRect() != covered
-            self.captions[id].landmark = isinstance(element, Busbar) or (
-                isinstance(element, Node) and bool(element.name)
-            )
-            moved |= self._name(drawing, id)
+            self.items_by_id[id].place(drawing)
+            moved |= self._read(id)
         return moved
+
+    def read(self, drawing: Drawing, ids: Iterable[str]) -> bool:
+        """Read the data of these again, which stand where they stood. True where words need new places."""
+        self._laid = drawing
+        return any([self._read(id) for id in ids])
+
+    def _read(self, id: str) -> bool:
+        item, element = self.items_by_id[id], self._laid.elements[id]
+        covered = item.boundingRect()
+        item.read(self._laid)
+        named = isinstance(element, Node) and bool(element.name)
+        self.captions[id].landmark = isinstance(element, Busbar) or named
+        return self._name(id) or item.boundingRect() != covered
 
     def _put_on(self, id: str, element: object) -> None:
         item: ElementItem
@@ -91,8 +101,9 @@ class Paper(QGraphicsScene):
             if id in table:
                 self.removeItem(table.pop(id))
 
-    def _name(self, drawing: Drawing, id: str) -> bool:
+    def _name(self, id: str) -> bool:
         """Write the caption; supplies and scaled loads say their power in it."""
+        drawing = self._laid
         lines, element = wording.caption(drawing, id), drawing.elements[id]
         if self._shown is not None and id in self._shown.outcome.attachments:
             case = drawing.cases[min(self._shown.case, len(drawing.cases) - 1)]
@@ -107,29 +118,34 @@ class Paper(QGraphicsScene):
         outcome: Outcome,
         case: int,
         before: Outcome | None,
-        seen: Callable[[Caption], bool] = lambda _: True,
+        sight: Iterable[QRectF] | None = None,
         problem: Outcome | None = None,
     ) -> set[str]:
-        """Show one case: lines and symbols at once, words where they are seen, the rest by `write_owed`.
+        """Show one case: lines and symbols at once, words in sight (None: all), the rest by `write_owed`.
         A problem is a later outcome without an answer; what stands in its way is marked.
 
         Returns the ids whose words need more room than they have."""
         worst = standing.standings(drawing, problem or outcome, case)
         self._shown = Shown(drawing.limits, outcome, case, before)
         self.look.blaming = problem is not None or not self._shown.solved
-        for table in (outcome.nodes, outcome.branches, outcome.attachments):
-            for id, live in zip(table.ids, column_of(table, "live", case), strict=True):
-                if id in self.items_by_id:
-                    blamed = standing.unsolved(id, worst)
-                    stands = blamed if self.look.blaming else standing.of_row(live, id, worst)
-                    self.items_by_id[id].stand(stands)
+        tables = outcome.nodes, outcome.branches, outcome.attachments
+        for table in tables:
+            self._show_standings(table, case, worst)
         self._show_flows(outcome.branches, case)
-        hung = [id for id in outcome.attachments.ids if id in self.items_by_id and id in drawing.elements]
-        grown = {id for id in hung if self._name(drawing, id)}
-        self.owed = {
-            id: None for table in (outcome.nodes, outcome.branches) for id in table.ids if id in self.tags
-        }
-        return grown | self._write([id for id in self.owed if seen(self.tags[id])])
+        self.owed = {id: None for table in tables for id in table.ids if id in self.items_by_id}
+        return self._write(list(self.owed) if sight is None else self._owed_in(sight))
+
+    def _show_standings(self, table: Table[Any], case: int, worst: Mapping[str, Standing]) -> None:
+        blaming = self.look.blaming
+        for id, live in zip(table.ids, column_of(table, "live", case), strict=True):
+            item = self.items_by_id.get(id)
+            if item is not None:
+                item.stand(standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst))
+
+    def _owed_in(self, sight: Iterable[QRectF]) -> list[str]:
+        """Those whose words lie in one of these parts of the paper."""
+        words = {**self.captions, **self.tags}
+        return list({id: None for part in sight for id in self.owed if part.intersects(words[id].spot.box)})
 
     def write_owed(self, most: int | None = None) -> set[str]:
         """Write words that were put off; the ids of those that need more room than they have."""
@@ -138,31 +154,35 @@ class Paper(QGraphicsScene):
         return self._write(list(islice(self.owed, most)))
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
-        names = ("live", "loading_percent", "start_kw", "end_kw", "forward")
-        columns = [column_of(branches, name, case) for name in names]
-        for id, live, loading, start, end, fed in zip(branches.ids, *columns, strict=True):
+        names = ("loading_percent", "start_kw", "end_kw", "forward")
+        loading, start, end, fed = (array_of(branches, name, case) for name in names)
+        widths, onward = standing.breadths(loading).tolist(), wording.runs_on(start, end, fed).tolist()
+        live = column_of(branches, "live", case)
+        for id, width, runs, lives in zip(branches.ids, widths, onward, live, strict=True):
             item = self.items_by_id.get(id)
             if isinstance(item, BranchItem):
-                item.show_flow(Flow.of(loading, wording.runs_on(start, end, fed) if live else None))
+                item.show_flow(width, runs if lives else None)
 
     def _write(self, ids: list[str]) -> set[str]:
         grown = set()
-        shown = self._shown
-        assert shown is not None
         for id in ids:
             del self.owed[id]
-            item, tag = self.items_by_id[id], self.tags[id]
-            lines: tuple[Line, ...] = ()
-            if not shown.solved:
-                pass
-            elif isinstance(tag, NodeFigures):
-                tag.read(shown.reading(id))
-                lines = wording.node_figures(*shown.rows("nodes", id))
-            elif isinstance(item, BranchItem):
-                lines = wording.branch_figures(item.angle, *shown.rows("branches", id), item.lossless)
-            if tag.write(lines, item.standing):
+            if self._write_tag(id) if id in self.tags else self._name(id):
                 grown.add(id)
         return grown
+
+    def _write_tag(self, id: str) -> bool:
+        shown, item, tag = self._shown, self.items_by_id[id], self.tags[id]
+        assert shown is not None
+        lines: tuple[Line, ...] = ()
+        if not shown.solved:
+            pass
+        elif isinstance(tag, NodeFigures):
+            tag.read(shown.reading(id))
+            lines = wording.node_figures(*shown.rows("nodes", id))
+        elif isinstance(item, BranchItem):
+            lines = wording.branch_figures(item.angle, *shown.rows("branches", id), item.lossless)
+        return tag.write(lines, item.standing)
 
     # where words go -----------------------------------------------------------------------------
 

@@ -5,11 +5,28 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from app.canvas import gauge
 from app.model.drawing import Limits
 from app.study.outcome import Outcome, Table
 from solver.status import Status
+
+
+class Row:
+    """The state of one element in one case, each figure read where it is asked for."""
+
+    __slots__ = ("_at", "_case", "_columns")
+
+    def __init__(self, table: Table[Any], id: str, case: int) -> None:
+        self._columns, self._at, self._case = table.columns, table.rows[id], case
+
+    def __getattr__(self, name: str) -> Any:
+        try:
+            column = self._columns[name]
+        except KeyError:
+            raise AttributeError(name) from None
+        return (column[self._at] if column.ndim == 1 else column[self._at, self._case]).item()
 
 
 @dataclass(frozen=True)
@@ -29,11 +46,11 @@ class Shown:
     def rows(self, name: str, id: str) -> tuple[Any, Any]:
         """The state of an element, and its state before where that is known."""
         table = getattr(self.outcome, name)
-        now = table.at(id, self.case)
+        now = Row(table, id, self.case)
         if self.before is None or self.case >= len(self.before.cases):
             return now, None
         was = getattr(self.before, name)
-        return now, was.at(id, self.case) if id in was else None
+        return now, Row(was, id, self.case) if id in was else None
 
     def reading(self, id: str) -> gauge.Reading | None:
         """What the gauge of a node shows; None where it is dead."""
@@ -49,5 +66,10 @@ class Shown:
 
 def column_of(table: Table[Any], name: str, case: int) -> list[Any]:
     """One column of one case, row by row."""
+    return list(array_of(table, name, case).tolist())
+
+
+def array_of(table: Table[Any], name: str, case: int) -> NDArray[Any]:
+    """The same as an array."""
     column = table.columns[name]
-    return list((column if column.ndim == 1 else column[:, case]).tolist())
+    return column if column.ndim == 1 else column[:, case]

@@ -1,10 +1,11 @@
 """How an element stands, and how that looks: colour, dash, shape and breadth, readable without colour."""
 
-import math
 from collections.abc import Mapping
 from dataclasses import replace
 from enum import Enum
 
+import numpy as np
+from numpy.typing import NDArray
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen, QPolygonF
 
@@ -37,6 +38,7 @@ _COLOUR = {
     Standing.NEAR: "near",
     Standing.FAILED: "failed",
 }
+STEP = 0.25  # px; a change of breadth below this is not repainted
 _DASH = {Standing.NEAR: (18.0, 5.0), Standing.FAILED: (7.0, 4.0), Standing.DEAD: (1.0, 5.0)}
 
 
@@ -46,7 +48,8 @@ def standings(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Standi
     for finding in _findings(drawing, outcome, case):
         standing = _STANDING.get(finding.verdict, Standing.PLAIN)
         for id in finding.ids:
-            worst[id] = max(worst.get(id, standing), standing, key=lambda s: s.value)
+            if id not in worst or standing.value > worst[id].value:
+                worst[id] = standing
     return worst
 
 
@@ -80,11 +83,11 @@ def colour(standing: Standing, palette: Palette, stale: bool = False) -> QColor:
     return palette.soft if stale else QColor(getattr(palette, _COLOUR[standing]))
 
 
-def breadth(loading_percent: float) -> float:
-    """The breadth of a line, px: grows evenly with loading up to 150 %; thin where no rating is known."""
-    if math.isnan(loading_percent):
-        return 2.0
-    return 2.0 + 0.05 * min(max(loading_percent, 0.0), 150.0)
+def breadths(loading_percent: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The breadth of lines, px: grows evenly with loading up to 150 %; thin where no rating is known. In
+    steps that the eye can tell."""
+    rated = np.where(np.isnan(loading_percent), 0.0, loading_percent)
+    return STEP * np.round((2.0 + 0.05 * np.clip(rated, 0.0, 150.0)) / STEP)
 
 
 def pen(standing: Standing, width: float, palette: Palette, stale: bool = False) -> QPen:

@@ -2,6 +2,7 @@
 
 import math
 import textwrap
+from typing import Any
 
 from app.canvas.lettering import Line, Run, Style
 from app.model import figures
@@ -38,6 +39,8 @@ def caption(drawing: Drawing, id: str) -> Lines:
 
 def wrapped(text: str, width: int) -> list[str]:
     """Long words in two lines at most; the card shows them whole."""
+    if len(text) <= width and text.isprintable() and text == text.strip():
+        return [text] if text else []
     return textwrap.wrap(text, width, max_lines=2, placeholder=" …")
 
 
@@ -106,9 +109,10 @@ def _load(load: Load) -> str:
     return f"{figures.typed(demand or 0.0)} {unit} pf {shown}{leading}"
 
 
-def runs_on(start_kw: float, end_kw: float, forward: bool) -> bool:
-    """True where power runs from start to end; a branch fed with no more than its loss goes as it is fed."""
-    return start_kw >= 0 and (end_kw >= 0 or forward)
+def runs_on(start_kw: Any, end_kw: Any, forward: Any) -> Any:
+    """True where power runs from start to end, of one branch or of an array of them; a branch fed with no
+    more than its loss goes as it is fed."""
+    return (start_kw >= 0) & ((end_kw >= 0) | forward)
 
 
 def branch_figures(

@@ -1,5 +1,6 @@
 """Routes, hits and the places of words: pure functions over plain data."""
 
+import numpy as np
 import pytest
 from board_drawings import EVERY_KIND, FERNHOLLOW, figures
 from PySide6.QtCore import QPointF, QRectF
@@ -24,7 +25,7 @@ from app.canvas.geometry import (
 )
 from app.canvas.paper import Paper
 from app.canvas.placing import Spot, Taken, Wish, around, place, strips
-from app.canvas.standing import breadth
+from app.canvas.standing import breadths
 from app.model.drawing import Drawing
 from app.model.kinds import Busbar, Cable, Joint, Load
 
@@ -161,7 +162,7 @@ def test_the_gauge_is_monotone_and_never_leaves_its_track():
 
 
 def test_breadth_is_monotone_and_bounded():
-    widths = [breadth(p) for p in range(0, 300, 10)]
+    widths = breadths(np.arange(0.0, 300.0, 10.0)).tolist()
     assert widths == sorted(widths)
-    assert breadth(float("nan")) == widths[0]
+    assert breadths(np.array([np.nan]))[0] == widths[0]
     assert widths[-1] < 12
