@@ -21,7 +21,7 @@ from app.model.edits import Change
 from app.model.kinds import Branch, Transformer
 
 LADDER_GAP = 6.0
-REST_MS = 60  # figures out of sight are written once the hand has paused this long
+REST_MS = 120  # figures out of sight are written once the hand has paused this long
 FEW = 100
 SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
 

@@ -84,7 +84,7 @@ class Card(QScrollArea):
         play(self, "panel")
 
     def _listen(self) -> None:
-        self._session.changed.connect(self.refresh)
+        self._session.changed.connect(self._changed)
         self._session.replaced.connect(self._turn)
         self._solving.solved.connect(self._show_results)
         self._solving.went_stale.connect(self._show_results)
@@ -160,12 +160,23 @@ class Card(QScrollArea):
         if self.ids != self._ids:
             self._turn()
             return
+        self._show_fields()
+        self._show_results()
+
+    def _changed(self) -> None:
+        """New results come with the next outcome."""
+        if self.ids != self._ids or not self._solving.stale:
+            self.refresh()
+        else:
+            self._show_fields()
+            self._show_tap()
+
+    def _show_fields(self) -> None:
         self._show_head()
         if isinstance(self._page, ElementPage):
             self._page.show_ids(self._ids)
         elif self._page is self.project:
             self.project.refresh()
-        self._show_results()
 
     def _show_head(self) -> None:
         drawing, ids = self._session.drawing, self._ids

@@ -128,8 +128,10 @@ class FindingsBar(QWidget):
         return self._solving.problem or self._solving.outcome
 
     def _changed(self) -> None:
-        self._told = ""
-        self._follow()
+        """New findings come with the next outcome; what was told passes at once."""
+        told, self._told = self._told, ""
+        if told or not self._solving.stale:
+            self._follow()
 
     def tell(self, sentence: str) -> None:
         """Say something that just happened, for a while or until the next change."""

@@ -45,7 +45,8 @@ class VoltageStrip(QWidget):
         self._session, self._solving, self._attention, self._theme = session, solving, attention, theme
         self.course = Course({}, ())
         self.axes: Axes | None = None
-        self.curves: list[Curve] = []
+        self.curves: list[Curve] = []  # the case shown whole, of the others the main route
+        self.before: Curve | None = None  # the main route when the drag began
         self.tap = TapDrag(session, solving)
         self.setMouseTracking(True)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
@@ -93,7 +94,7 @@ class VoltageStrip(QWidget):
         """Lay the curves out anew."""
         outcome, drawing = self._outcome, self._session.drawing
         if outcome is None:
-            self.course, self.axes, self.curves = Course({}, ()), None, []
+            self.course, self.axes, self.curves, self.before = Course({}, ()), None, [], None
             self.update()
             return
         chosen = (self.tap.id,) if self.tap.id else self._attention.selection
@@ -107,13 +108,19 @@ class VoltageStrip(QWidget):
             LEFT_MARGIN, HEAD, self.width() - LEFT_MARGIN - RIGHT_MARGIN, max(self.height() - HEAD - FOOT, 20)
         )
         self.axes = axes(room, self.course, reach)
-        self.curves = [self._curve(outcome, case) for case in range(len(outcome.cases))]
+        backbone = self.course.backbone
+        self.curves = [
+            self._curve(outcome, case, self.course if case == self.case else backbone)
+            for case in range(len(outcome.cases))
+        ]
+        known = before is not None and self.case < len(before.cases)
+        self.before = self._curve(before, self.case, backbone) if before is not None and known else None
         self.update()
 
-    def _curve(self, outcome: Outcome, case: int) -> Curve:
+    def _curve(self, outcome: Outcome, case: int, course: Course) -> Curve:
         assert self.axes is not None
-        spots = node_points(outcome, case, self.course, self.axes)
-        return Curve(outcome.cases[case], stretches(self._session.drawing, self.course, spots), spots)
+        spots = node_points(outcome, case, course, self.axes)
+        return Curve(outcome.cases[case], stretches(self._session.drawing, course, spots), spots)
 
     def resizeEvent(self, event) -> None:
         self._follow()
@@ -128,14 +135,13 @@ class VoltageStrip(QWidget):
             painter.setPen(palette.soft)
             painter.drawText(self.rect(), int(Qt.AlignmentFlag.AlignCenter), self._why_empty())
             return
-        before = self._solving.reference
         shown = Shown(
             drawing=self._session.drawing,
             course=self.course,
             axes=self.axes,
             curves=self.curves,
             case=self.case,
-            before=self._curve(before, self.case) if before and self.case < len(before.cases) else None,
+            before=self.before,
             selection=self._attention.selection,
             hover=self._attention.hover,
             held=self.tap.id or (self._keyed() if self.hasFocus() else ""),

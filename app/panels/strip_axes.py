@@ -2,12 +2,14 @@
 
 import math
 from dataclasses import dataclass
+from typing import Any
 
+import numpy as np
 from PySide6.QtCore import QPointF, QRectF
 
 from app.model.drawing import Drawing, Limits
 from app.model.kinds import Transformer
-from app.panels.strip_course import Course, Stop, column
+from app.panels.strip_course import Course, Stop
 from app.study.outcome import Outcome
 
 STEP_PX = 46.0  # the breadth given to a transformer, which has no length
@@ -24,8 +26,8 @@ class Axes:
     px_per_m: float
     step_px: float
 
-    def y(self, percent: float) -> float:
-        """Where a percent of nominal lies."""
+    def y(self, percent: Any) -> Any:
+        """Where a percent of nominal lies, or an array of them."""
         share = (percent - self.low) / (self.high - self.low)
         return self.room.bottom() - share * self.room.height()
 
@@ -54,10 +56,10 @@ def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float
     """Percent range: the limits and every voltage, with a little air."""
     low, high = limits.low_percent, limits.high_percent
     for outcome in outcomes:
-        for case in range(len(outcome.cases)):
-            percents = column(outcome.nodes, "percent", case)
-            known = [percents[i] for i in course.stops if math.isfinite(percents.get(i, math.nan))]
-            low, high = min([low, *known]), max([high, *known])
+        rows = outcome.nodes.rows
+        percent = outcome.nodes.column("percent")[[rows[i] for i in course.stops if i in rows]]
+        known = percent[np.isfinite(percent)]
+        low, high = float(known.min(initial=low)), float(known.max(initial=high))
     air = max(high - low, LEAST_SPAN) * 0.07
     return low - air, high + air
 
@@ -88,13 +90,10 @@ def stretches(drawing: Drawing, course: Course, spots: dict[str, QPointF]) -> li
 
 def node_points(outcome: Outcome, case: int, course: Course, axes: Axes) -> dict[str, QPointF]:
     """Where each node lies."""
-    made = {}
-    percents = column(outcome.nodes, "percent", case)
-    for stop in course.stops.values():
-        percent = percents.get(stop.id, math.nan)
-        if math.isfinite(percent):
-            made[stop.id] = QPointF(axes.x(stop), axes.y(percent))
-    return made
+    rows = outcome.nodes.rows
+    stops = [s for s in course.stops.values() if s.id in rows]
+    heights = axes.y(outcome.nodes.column("percent")[[rows[s.id] for s in stops], case]).tolist()
+    return {s.id: QPointF(axes.x(s), y) for s, y in zip(stops, heights, strict=True) if math.isfinite(y)}
 
 
 def ticks_m(longest_m: float, width: float) -> list[float]:

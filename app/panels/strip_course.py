@@ -42,6 +42,11 @@ class Course:
             id = self.stops[id].parent
         return tuple(reversed(way))
 
+    @property
+    def backbone(self) -> "Course":
+        """The main route alone."""
+        return Course({i: self.stops[i] for i in self.main}, self.main)
+
     def fed_by(self, branch: str) -> Stop | None:
         """The node that a branch feeds."""
         return next((s for s in self.stops.values() if s.feeder == branch), None)

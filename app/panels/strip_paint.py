@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPen
 
 from app.canvas.palette import Palette, font
@@ -110,9 +110,11 @@ def _inked(colour: QColor, shown: Shown, palette: Palette) -> QColor:
 
 
 def _polyline(painter: QPainter, stretches: list[Stretch], on: set[str] | None = None) -> None:
-    for stretch in stretches:
-        if on is None or stretch.node in on:
-            painter.drawPolyline(list(stretch.points))
+    shown = [s.points for s in stretches if on is None or s.node in on]
+    painter.drawLines([QLineF(*points) for points in shown if len(points) == 2])
+    for points in shown:
+        if len(points) > 2:
+            painter.drawPolyline(list(points))
 
 
 def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, palette: Palette) -> None:

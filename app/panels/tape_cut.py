@@ -1,6 +1,7 @@
 """The loss tape before it is painted: what the pieces are and where they lie. No painting here."""
 
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
 from app.model.drawing import Drawing
 from app.model.kinds import Cable, Generator, Load, OverheadLine, Transformer
@@ -14,8 +15,7 @@ GAP = 2.0
 FAN = 26.0  # between the bar and the losses drawn larger
 
 
-@dataclass(frozen=True, slots=True)
-class Piece:
+class Piece(NamedTuple):
     """One cut of the tape. `ids` are the elements in it; what: load, export, copper, iron, cable, feed."""
 
     what: str
@@ -27,7 +27,7 @@ class Piece:
 
     def at(self, left: float, width: float) -> "Piece":
         """The same piece with its place."""
-        return Piece(self.what, self.ids, self.kw, self.name, left, width)
+        return self._replace(left=left, width=width)
 
 
 @dataclass(frozen=True, slots=True)
