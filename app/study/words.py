@@ -3,21 +3,21 @@
 import math
 from collections.abc import Sequence
 
-from app.model.drawing import Drawing
+from app.model.drawing import Drawing, label
 
 MANY = 6
 
 
 def tell(drawing: Drawing, id: str) -> str:
-    """An element by name and id, such as `House (B3)`; by id alone where it has no name.
+    """An element by name and id, such as `House (B3)`; by id alone where it has no other name.
 
     drawing : the drawing
     id : of an element in it
 
     Returns : words
     """
-    element = drawing.elements.get(id)
-    return f"{element.name} ({id})" if element is not None and element.name else id
+    name = label(drawing, id)
+    return id if name == id else f"{name} ({id})"
 
 
 def list_of(drawing: Drawing, ids: Sequence[str], last: str = "and") -> str:
