@@ -1,8 +1,8 @@
 """Short text on the board: lines of runs in a few styles, laid out once and painted from the layout."""
 
-from dataclasses import dataclass
 from enum import Enum
 from functools import cache, lru_cache
+from typing import NamedTuple
 
 from PySide6.QtCore import QPointF, QSizeF, Qt
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QStaticText
@@ -23,9 +23,10 @@ class Style(Enum):
     FAILED = (12, True, "failed")
     LETTER = (15, True, "ink")
 
+    __hash__ = object.__hash__  # each is one object; Enum would hash its name anew for every letter painted
 
-@dataclass(frozen=True, slots=True)
-class Run:
+
+class Run(NamedTuple):
     """A piece of text in one style."""
 
     text: str
@@ -52,6 +53,11 @@ def _metrics(style: Style) -> QFontMetricsF:
     return QFontMetricsF(face(style))
 
 
+@cache
+def _height(style: Style) -> float:
+    return _metrics(style).height()
+
+
 @lru_cache(maxsize=4096)
 def _advance(run: Run) -> float:
     return _metrics(run.style).horizontalAdvance(run.text)
@@ -72,12 +78,12 @@ def words(lines: tuple[Line, ...]) -> str:
 
 def line_height(line: Line) -> float:
     """The tallest run sets it."""
-    return max((_metrics(run.style).height() for run in line), default=0.0)
+    return max([_height(run.style) for run in line], default=0.0)
 
 
 def line_width(line: Line) -> float:
     """All runs with the gaps between them."""
-    return sum(_advance(run) for run in line) + GAP * max(len(line) - 1, 0)
+    return sum([_advance(run) for run in line]) + GAP * max(len(line) - 1, 0)
 
 
 def size(lines: tuple[Line, ...]) -> QSizeF:
@@ -106,6 +112,6 @@ def paint(
             painter.setFont(face(run.style))
             fixed = over is None or run.style in (Style.NAME, Style.QUIET)
             painter.setPen(getattr(palette, run.style.value[2]) if fixed else over)
-            painter.drawStaticText(QPointF(x, y + height - _metrics(run.style).height()), _laid(run))
+            painter.drawStaticText(QPointF(x, y + height - _height(run.style)), _laid(run))
             x += _advance(run) + GAP
         y += height + LEADING

@@ -4,7 +4,7 @@ from collections.abc import Container, Iterable, Iterator, Mapping
 from itertools import chain, islice
 from typing import Any
 
-from PySide6.QtCore import QPointF, QRectF
+from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QPainter, QPen
 from PySide6.QtWidgets import QGraphicsScene
 
@@ -144,8 +144,14 @@ class Paper(QGraphicsScene):
 
     def _owed_in(self, sight: Iterable[QRectF]) -> list[str]:
         """Those whose words lie in one of these parts of the paper."""
+        parts = list(sight)
+        mode = Qt.ItemSelectionMode.IntersectsItemBoundingRect
+        near = {item.id for part in parts for item in self.items(part, mode) if isinstance(item, Caption)}
         words = {**self.captions, **self.tags}
-        return list({id: None for part in sight for id in self.owed if part.intersects(words[id].spot.box)})
+        for id in self.owed:  # the scene finds none that is hidden as it has no words yet
+            if not words[id].lines and any(part.intersects(words[id].spot.box) for part in parts):
+                near.add(id)
+        return [id for id in self.owed if id in near]
 
     def write_owed(self, most: int | None = None) -> set[str]:
         """Write words that were put off; the ids of those that need more room than they have."""

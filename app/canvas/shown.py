@@ -4,7 +4,6 @@ import math
 from dataclasses import dataclass
 from typing import Any
 
-import numpy as np
 from numpy.typing import NDArray
 
 from app.canvas import gauge
@@ -55,13 +54,12 @@ class Shown:
     def reading(self, id: str) -> gauge.Reading | None:
         """What the gauge of a node shows; None where it is dead."""
         nodes = self.outcome.nodes
-        percent = nodes.column("percent")[nodes.rows[id]]
+        percent = nodes.column("percent")[nodes.rows[id]].tolist()
         if math.isnan(percent[self.case]):
             return None
+        known = [p for p in percent if not math.isnan(p)]
         low, high = self.limits.low_percent, self.limits.high_percent
-        return gauge.Reading(
-            low, high, float(np.nanmin(percent)), float(np.nanmax(percent)), float(percent[self.case])
-        )
+        return gauge.Reading(low, high, min(known), max(known), percent[self.case])
 
 
 def column_of(table: Table[Any], name: str, case: int) -> list[Any]:
