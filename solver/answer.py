@@ -5,7 +5,7 @@ import numpy as np
 from solver.forest import Forest
 from solver.load import drawn
 from solver.network import Complex, Index, Network, Real
-from solver.placed import Placed, fed_transformers, magnetising
+from solver.placed import Placed, fed_transformers
 from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
@@ -37,7 +37,7 @@ def answer(
         everywhere = _blank(network.node_count, voltage)
         everywhere[forest.order] = voltage
         lines = _lines(network, forest, everywhere, inflow)
-        transformers = _transformers(network, forest, voltage, inflow)
+        transformers = _transformers(network, forest, everywhere, inflow)
         load_power, load_current = _loads(network, everywhere)
         at_shunt = everywhere[network.shunt_node]
         shunt_power = at_shunt * np.conj(times(network.shunt_y, at_shunt))
@@ -110,19 +110,20 @@ def _transformers(
     network: Network, forest: Forest, voltage: Complex, inflow: Complex
 ) -> tuple[Complex, Complex, Complex, Complex]:
     supplied = int(forest.depth_zone[1])
-    rows, fed = forest.zone_transformer[supplied:], forest.zone_fed[supplied:]
+    rows = forest.zone_transformer[supplied:]
     ratio, series = (a[:, None, :] for a in fed_transformers(network, forest))
     secondary = inflow[forest.zone_start[supplied:-1]]
-    feeding = voltage[fed]
-    iron = magnetising(network, forest)[:, None, :] * feeding
-    primary = secondary / np.conj(ratio) + iron
+    primary = secondary / np.conj(ratio)
     forward = (forest.transformer_way[rows] > 0)[:, None, None]
+    first, last = voltage[network.transformer_from[rows]], voltage[network.transformer_to[rows]]
+    iron = network.transformer_y[rows, :, None, :]
+    into, out = iron[:, 0] * first, iron[:, 1] * last
     count = network.transformer_from.size
     tables = [_blank(count, voltage) for _ in range(4)]
-    tables[0][rows] = np.where(forward, primary, -secondary)
-    tables[1][rows] = np.where(forward, secondary, -primary)
+    tables[0][rows] = np.where(forward, primary, -secondary) + into
+    tables[1][rows] = np.where(forward, secondary, -primary) - out
     tables[2][rows] = np.abs(secondary) ** 2 * series
-    tables[3][rows] = feeding * np.conj(iron)
+    tables[3][rows] = first * np.conj(into) + last * np.conj(out)
     return tables[0], tables[1], tables[2].sum(axis=1), tables[3].sum(axis=1)
 
 

@@ -30,8 +30,8 @@ class Network:
     transformer_from, transformer_to : (transformer,) nodes of winding 1 and winding 2
     transformer_ratio : (transformer, B or 1) complex, U1/U2 at the tap, angle = lead of side 1 over side 2
     transformer_z : (transformer, B or 1) complex [ohm], series impedance seen at winding 2
-    transformer_y : (transformer, B or 1) complex [S], magnetising admittance seen at winding 1;
-        it stands on whichever side is fed
+    transformer_y : (transformer, 2, B or 1) complex [S], magnetising admittance at the terminals of each
+        winding, whichever side is fed
     load_node : (load,)
     load_power : (load, k, B or 1) complex [VA] drawn at the reference voltage; a generator is negative
     load_reference : (load, k, B or 1) float [V] at which load_power is drawn
@@ -73,7 +73,7 @@ class Network:
         batch = self.batch
         for name, (rows, axes) in PHYSICAL.items():
             array = getattr(self, name)
-            inner = (self.conductors,) * axes
+            inner = tuple(self.conductors if axis == "k" else int(axis) for axis in axes)
             count = getattr(self, rows).shape[0]
             if array.shape[:-1] != (count, *inner) or array.shape[-1] not in (1, batch):
                 wanted = ", ".join(str(n) for n in (count, *inner))
@@ -93,16 +93,16 @@ class Network:
             raise ValueError("transformer_ratio must not hold zeros")
 
 
-PHYSICAL = {  # array: (array with as many rows, axes of conductors)
-    "source_voltage": ("source_node", 1),
-    "line_z": ("line_from", 2),
-    "line_y": ("line_from", 2),
-    "transformer_ratio": ("transformer_from", 0),
-    "transformer_z": ("transformer_from", 0),
-    "transformer_y": ("transformer_from", 0),
-    "load_power": ("load_node", 1),
-    "load_reference": ("load_node", 1),
-    "shunt_y": ("shunt_node", 2),
+PHYSICAL = {  # array: (array with as many rows, axes between the rows and the batch)
+    "source_voltage": ("source_node", "k"),
+    "line_z": ("line_from", "kk"),
+    "line_y": ("line_from", "kk"),
+    "transformer_ratio": ("transformer_from", ""),
+    "transformer_z": ("transformer_from", ""),
+    "transformer_y": ("transformer_from", "2"),
+    "load_power": ("load_node", "k"),
+    "load_reference": ("load_node", "k"),
+    "shunt_y": ("shunt_node", "kk"),
 }
 CONNECTED = (
     ("source_node", "source_node"),

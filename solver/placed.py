@@ -80,19 +80,6 @@ def fed_transformers(network: Network, forest: Forest) -> tuple[Complex, Complex
     return np.where(back, 1 / a, a), np.where(back, z * np.abs(a) ** 2, z)
 
 
-def magnetising(network: Network, forest: Forest) -> Complex:
-    """Magnetising admittance of every fed zone's transformer at the side that is fed.
-
-    network : Network
-    forest : Forest, of that network
-    Returns : (fed zone, batch) complex [S]
-    """
-    rows = forest.zone_transformer[int(forest.depth_zone[1]) :]
-    back = (forest.transformer_way[rows] < 0)[:, None]
-    y = network.transformer_y[rows]
-    return np.where(back, y * np.abs(network.transformer_ratio[rows]) ** 2, y)
-
-
 def _levels(forest: Forest, root: Complex, ratio: Complex) -> Real:
     width = max(root.shape[-1], ratio.shape[-1])
     supplied = root.shape[0]
@@ -147,10 +134,12 @@ def _admittance(network: Network, forest: Forest, load_y: Complex | None) -> Com
         half = network.line_y[lines] / 2
         parts.append((forest.place[network.line_from[lines]], half))
         parts.append((forest.place[network.line_to[lines]], half))
-    iron = magnetising(network, forest)
-    if iron.any():
-        fed = forest.zone_fed[int(forest.depth_zone[1]) :]
-        parts.append((fed, _diagonal(np.repeat(iron[:, None, :], k, axis=1))))
+    live_units = np.flatnonzero(forest.transformer_way)
+    for side, ends in enumerate((network.transformer_from, network.transformer_to)):
+        iron = network.transformer_y[live_units, side]
+        if iron.any():
+            matrix = _diagonal(np.repeat(iron[:, None, :], k, axis=1))
+            parts.append((forest.place[ends[live_units]], matrix))
     if not parts:
         return None
     total = gather(*parts[0], live)

@@ -16,7 +16,7 @@ class Equivalent(NamedTuple):
 
     ratio : (...) complex, U1/U2 at the tap; its angle is the lead of side 1 over side 2
     z : (...) complex [ohm] seen at winding 2
-    y : (...) complex [S] seen at winding 1
+    y : (2, ...) complex [S] at the terminals of winding 1 and of winding 2, one of them zero
     """
 
     ratio: Complex
@@ -120,10 +120,12 @@ def equivalent(
 ) -> Equivalent:
     """A transformer at its tap as the network holds it; ohms stay constant on the untapped winding's side.
 
-    a = U1·t1 / (U2·t2) ∠ clock·30°,  z = z2 · t2² / n,  y = y1 / t1² · n
+    a = U1·t1 / (U2·t2) ∠ clock·30°,  z = z2 · t2² / n,  y = n · y1 / t1², or n · y1 · (U1/U2)² / t2²
 
     With taps on winding 1 the impedance seen at winding 2 does not move, nor does, with taps on winding 2,
-    the one seen at winding 1; seen at winding 2 that is t2². The magnetising branch follows the same rule.
+    the one seen at winding 1; seen at winding 2 that is t2². The magnetising branch stands at the terminals
+    of the winding of higher rated voltage, winding 1 where they are equal, and takes its no-load loss and
+    current at the voltage of that winding's tap.
 
     v1 : (...) float [V] rated no-load voltage of winding 1
     v2 : (...) float [V] rated no-load voltage of winding 2
@@ -134,11 +136,14 @@ def equivalent(
     tap_2 : (...) float, tap factor of winding 2
     parallel : (...) int, like units side by side
     Returns : Equivalent
-    Source : common practice, no source: the untapped winding sets the flux and carries the reference
+    Source : common practice, no source
     """
     t1, t2, n = np.asarray(tap_1, dtype=float), np.asarray(tap_2, dtype=float), np.asarray(parallel)
     ratio = np.asarray(v1) * t1 / (np.asarray(v2) * t2) * np.exp(1j * np.pi / 6 * np.asarray(clock_number))
-    return Equivalent(ratio, np.asarray(z_at_2) * t2**2 / n, np.asarray(y_at_1) / t1**2 * n)
+    high, y = np.asarray(v1) >= np.asarray(v2), np.asarray(y_at_1) * n
+    at_2 = y * (np.asarray(v1) / np.asarray(v2)) ** 2 / t2**2
+    iron = np.broadcast_arrays(np.where(high, y / t1**2, 0), np.where(high, 0, at_2))
+    return Equivalent(ratio, np.asarray(z_at_2) * t2**2 / n, np.stack(iron))
 
 
 def referred(impedance: ArrayLike, from_voltage: ArrayLike, to_voltage: ArrayLike) -> Complex:

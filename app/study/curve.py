@@ -87,8 +87,8 @@ def _spread(rows: Rows, branch: int, unit: Transformer, notches: list[int], case
     ratio, z, y = notch_values(unit, notches)
     row = int(np.flatnonzero(rows.units == branch)[0])
     for name, values in zip(BATCHED_UNITS, (ratio, z, y), strict=True):
-        column = np.repeat(getattr(network, name), count * cases, axis=1)
-        column[row] = np.repeat(values, cases)
+        column = np.repeat(getattr(network, name), count * cases, axis=-1)
+        column[row] = np.repeat(values, cases, axis=-1)
         wide[name] = column
     return replace(network, **wide)
 

@@ -86,7 +86,7 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
         transformer_to=end[units],
         transformer_ratio=ratio[:, None],
         transformer_z=unit_z[:, None],
-        transformer_y=unit_y[:, None],
+        transformer_y=unit_y.T[..., None],
         load_node=at[loads],
         load_power=(power / phases[at[loads], None])[:, None, :],
         load_reference=(reference / wide[at[loads]])[:, None, None],

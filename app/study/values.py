@@ -73,7 +73,7 @@ def transformer_values(units: Sequence[Transformer]) -> tuple[Complex, Complex, 
     units : (transformer,)
 
     Returns : ratio (transformer,) complex, U1/U2 with the lead of side 1 over side 2; z (transformer,)
-        complex [ohm] seen at winding 2; y (transformer,) complex [S] seen at winding 1
+        complex [ohm] seen at winding 2; y (2, transformer) complex [S] at the terminals of each winding
     Source : see solver.transformer
     """
     return _equivalent(_plates.of(units))
@@ -85,7 +85,7 @@ def notch_values(unit: Transformer, notches: Sequence[int]) -> tuple[Complex, Co
     unit : the transformer
     notches : (notch,) int
 
-    Returns : ratio (notch,) complex, z (notch,) complex [ohm], y (notch,) complex [S]
+    Returns : ratio (notch,) complex, z (notch,) complex [ohm], y (2, notch) complex [S]
     Source : see solver.transformer
     """
     plate = _plate_row(unit)

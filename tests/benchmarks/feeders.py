@@ -39,7 +39,7 @@ def feeder(count, drop=0.06, near=20, seed=1):
         transformer_to=NONE,
         transformer_ratio=EMPTY,
         transformer_z=EMPTY,
-        transformer_y=EMPTY,
+        transformer_y=np.zeros((0, 2, 1), complex),
         load_node=np.arange(count),
         load_power=power[:, None, None],
         load_reference=np.full((count, 1, 1), VOLTS),

@@ -15,11 +15,12 @@ POWER, CURRENT, IMPEDANCE = (1.0, 0.0, 0.0), (0.0, 1.0, 0.0), (0.0, 0.0, 1.0)
 def build(nodes, sources, lines=(), transformers=(), loads=(), shunts=()):
     """A network with one conductor from rows of plain numbers or arrays over the batch.
 
-    sources: (node, V); lines: (from, to, Z[, Y]); transformers: (from, to, ratio[, Z at 2[, Y at 1]]);
+    sources: (node, V); lines: (from, to, Z[, Y])
+    transformers: (from, to, ratio[, Z at 2[, Y at 1[, Y at 2]]]);
     loads: (node, S[, reference V, mix]); shunts: (node, Y)
     """
     lines = [(*row, 0)[:4] for row in lines]
-    transformers = [(*row, 0, 0)[:5] for row in transformers]
+    transformers = [(*row, 0, 0, 0)[:6] for row in transformers]
     loads = [(*row, 1.0, POWER)[:4] if len(row) == 2 else row for row in loads]
     return Network(
         node_count=nodes,
@@ -34,7 +35,7 @@ def build(nodes, sources, lines=(), transformers=(), loads=(), shunts=()):
         transformer_to=rows(transformers, 1),
         transformer_ratio=values(transformers, 2),
         transformer_z=values(transformers, 3),
-        transformer_y=values(transformers, 4),
+        transformer_y=pairs(transformers),
         load_node=rows(loads, 0),
         load_power=values(loads, 1)[:, None],
         load_reference=values(loads, 2)[:, None].real,
@@ -46,6 +47,12 @@ def build(nodes, sources, lines=(), transformers=(), loads=(), shunts=()):
 
 def rows(table, column):
     return np.array([row[column] for row in table], dtype=np.intp)
+
+
+def pairs(transformers):
+    """(row, 2, batch) complex"""
+    both = np.broadcast_arrays(values(transformers, 4), values(transformers, 5))
+    return np.stack(both, axis=1)
 
 
 def values(table, column):

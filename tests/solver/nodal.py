@@ -28,10 +28,7 @@ def nodal(network, point=0, tolerance=1e-13, sweeps=60, start=None):
     units = (net.transformer_ratio, net.transformer_z, net.transformer_y)
     for a, b, n, z, y in zip(net.transformer_from, net.transformer_to, *(at(u) for u in units)):  # noqa: B905
         stamp(a, b, 1 / z / abs(n) ** 2, -1 / z / np.conj(n), -1 / z / n, 1 / z)
-        if depth.get(a, 0) <= depth.get(b, 0):
-            entries.append((a, a, y))
-        else:
-            entries.append((b, b, y * abs(n) ** 2))
+        entries.extend([(a, a, y[0]), (b, b, y[1])])
     entries.extend((n, n, y) for n, y in zip(net.shunt_node, at(net.shunt_y)[:, 0, 0], strict=True))
     power, reference = at(net.load_power)[:, 0], at(net.load_reference)[:, 0]
     drawn = np.zeros((3, count), dtype=complex)

@@ -54,8 +54,10 @@ def _unit(rng, above, node, high, low, z, width, flip):
     """A unit with taps and a clock number; fed from winding 2 where `flip`."""
     tap = 1 + 0.025 * rng.integers(-2, 3, width)
     turn = np.exp(1j * np.pi / 6 * rng.integers(0, 12))
-    y = complex(0.0005, -0.003) * 2e4 / high**2
+    iron = [complex(0.0005, -0.003) * 2e4 / high**2, 0]
+    if rng.random() < 0.3:
+        iron = [0, complex(0.0005, -0.003) * 2e4 / low**2]
     if not flip:
-        return above, node, high * tap / low * turn, z, y
+        return above, node, high * tap / low * turn, z, *iron
     ratio = low / (high * tap) * turn
-    return node, above, ratio, z / np.abs(ratio) ** 2, y / np.abs(ratio) ** 2
+    return node, above, ratio, z / np.abs(ratio) ** 2, *iron[::-1]

@@ -63,7 +63,7 @@ def test_groups_that_cannot_be(group):
 
 def test_low_voltage_of_dyn11_leads_by_thirty_degrees():
     ratio, z, y = transformer.equivalent(11e3, 400, 0.0, 0.0, transformer.clock("Dyn11"))
-    network = build(2, [(0, 11e3 / 3**0.5)], transformers=[(0, 1, ratio, z, y)])
+    network = build(2, [(0, 11e3 / 3**0.5)], transformers=[(0, 1, ratio, z, *y)])
     low = solve(network).voltage[1, 0, 0]
     assert abs(low) == pytest.approx(400 / 3**0.5)
     assert np.degrees(np.angle(low)) == pytest.approx(30)
@@ -74,7 +74,7 @@ def test_raising_the_high_voltage_tap_lowers_the_low_voltage():
     factor = transformer.tap_factor(notches, 2.5)
     assert factor == pytest.approx([0.95, 0.975, 1, 1.025, 1.05])
     ratio, z, y = transformer.equivalent(11e3, 400, 0.01j, 1e-6, tap_1=factor)
-    network = build(2, [(0, 11e3)], transformers=[(0, 1, ratio, z, y)])
+    network = build(2, [(0, 11e3)], transformers=[(0, 1, ratio, z, *y)])
     assert np.abs(solve(network).voltage[1, 0]) == pytest.approx(400 / factor)
 
 
@@ -82,12 +82,21 @@ def test_ohms_stay_constant_on_the_untapped_side():
     z, y = 0.004 + 0.04j, 1e-6 - 1e-5j
     on_1 = transformer.equivalent(11e3, 400, z, y, tap_1=1.05)
     assert on_1.z == pytest.approx(z)
-    assert on_1.y * abs(on_1.ratio) ** 2 == pytest.approx(y * (11e3 / 400) ** 2)
     on_2 = transformer.equivalent(11e3, 400, z, y, tap_2=1.05)
     assert on_2.z * abs(on_2.ratio) ** 2 == pytest.approx(z * (11e3 / 400) ** 2)
-    assert on_2.y == pytest.approx(y)
     pair = transformer.equivalent(11e3, 400, z, y, parallel=2)
-    assert (pair.z, pair.y) == (pytest.approx(z / 2), pytest.approx(2 * y))
+    assert pair.z == pytest.approx(z / 2)
+
+
+def test_iron_stands_at_the_higher_voltage_and_its_tap():
+    y = 1e-6 - 1e-5j
+    at = transformer.equivalent(11e3, 400, 0.04j, y, tap_1=[1, 1.05], parallel=2).y
+    assert at[0] == pytest.approx(2 * y / np.array([1, 1.05]) ** 2)
+    assert at[1] == pytest.approx(0)
+    at = transformer.equivalent(400, 11e3, 0.04j, y, tap_2=[1, 1.05]).y
+    assert at[0] == pytest.approx(0)
+    assert at[1] == pytest.approx(y * (400 / 11e3) ** 2 / np.array([1, 1.05]) ** 2)
+    assert transformer.equivalent(400, 11e3, 0.04j, y, tap_1=1.05).y[1] == pytest.approx(at[1][0])
 
 
 @given(st.floats(0.1, 1.5), st.floats(0.2, 3), st.floats(2, 6), st.floats(-1.2, 1.2))

@@ -29,7 +29,7 @@ class Nodal:
         for e in self.branches.values():
             if isinstance(e, Switch) and e.closed:
                 self.merged[self.find(e.start)] = self.find(e.end)
-        self.nominal, self.wires, self.fed_end = {}, {}, {}
+        self.nominal, self.wires = {}, {}
         self._walk()
         self.places = sorted({self.find(i) for i in self.nominal})
         self.at = {p: k for k, p in enumerate(self.places)}
@@ -45,14 +45,14 @@ class Nodal:
         return node
 
     def _walk(self):
-        """Spread nominal volts and wires from the supplies; note from which end transformers are fed."""
+        """Spread nominal volts and wires from the supplies."""
         waiting = []
         for s in self.supplies.values():
             self.nominal[s.node], self.wires[s.node] = s.nominal_v, s.wires
             waiting.append(s.node)
         while waiting:
             here = waiting.pop()
-            for i, e in self.branches.items():
+            for e in self.branches.values():
                 if here not in (e.start, e.end) or (isinstance(e, Switch) and not e.closed):
                     continue
                 there = e.end if here == e.start else e.start
@@ -60,7 +60,6 @@ class Nodal:
                     continue
                 level = self.nominal[here]
                 if isinstance(e, Transformer):
-                    self.fed_end[i] = "start" if here == e.start else "end"
                     level = e.v2_v if here == e.start else e.v1_v
                 self.nominal[there], self.wires[there] = level, self.wires[here]
                 waiting.append(there)
@@ -101,7 +100,7 @@ class Nodal:
         p0, i0 = assumed.value(e, "no_load_loss_w"), assumed.value(e, "no_load_current_percent")
         quiet = e.parallel * complex(p0, -math.sqrt((i0 / 100 * s) ** 2 - p0**2))
         stamp = np.array([[y / abs(a) ** 2, -y / a.conjugate()], [-y / a, y]])
-        if self.fed_end[i] == "start":
+        if e.v1_v >= e.v2_v:
             stamp[0, 0] += quiet / v1**2
         else:
             stamp[1, 1] += quiet / v2**2
