@@ -5,7 +5,7 @@ import os
 import sys
 from pathlib import Path
 
-from app.commands import BAD_INPUT, COMMANDS, EXIT_CODES, Parser, command, complain, program_version
+from app.commands import BAD_INPUT, COMMANDS, EXIT_CODES, Parser, command, complain, program_version, say
 from app.screen import why_no_screen
 
 HEADLESS = """without a window:
@@ -16,6 +16,14 @@ HEADLESS = """without a window:
 A file that is called like a command opens as ./results.
 
 """
+
+
+class Version(argparse.Action):
+    """Looks the version up only where it is asked for."""
+
+    def __call__(self, parser: argparse.ArgumentParser, *_: object) -> None:
+        say(f"farend {program_version()}\n")
+        parser.exit()
 
 
 def main(arguments: list[str] | None = None) -> int:
@@ -43,7 +51,7 @@ def _dispatch(given: list[str]) -> int:
         formatter_class=argparse.RawDescriptionHelpFormatter,
     )
     parser.add_argument("file", metavar="FILE", nargs="?", help="a drawing (.farend) to open in the window")
-    parser.add_argument("--version", action="version", version=f"farend {program_version()}")
+    parser.add_argument("--version", action=Version, nargs=0, help="show program's version number and exit")
     return _open(parser.parse_args(given).file)
 
 

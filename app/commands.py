@@ -5,19 +5,15 @@ cannot be solved as drawn; 3 no operating point.
 """
 
 import argparse
-import json
 import os
 import sys
-from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 from typing import NoReturn
 
 from app.model.drawing import Drawing
 from app.model.file import FileError, load
-from app.printed import printed
 from app.study import run
 from app.study.outcome import Outcome, Verdict
-from app.study.record import record
 from solver.status import Status
 
 SOLVED, FAILS, BAD_INPUT, NO_OPERATING_POINT = 0, 1, 2, 3
@@ -44,6 +40,8 @@ class Parser(argparse.ArgumentParser):
 
 def program_version() -> str:
     """The version of the installed program."""
+    from importlib.metadata import PackageNotFoundError, version  # slow to load, and seldom asked for
+
     try:
         return version("farend")
     except PackageNotFoundError:
@@ -87,9 +85,15 @@ def _results(chosen: argparse.Namespace) -> int:
     drawing = load(Path(chosen.file))
     outcome = run(drawing)
     if chosen.json:
+        import json
+
+        from app.study.record import record
+
         told = record(drawing, outcome, program_version())
         say(json.dumps(told, indent=1, ensure_ascii=True, allow_nan=False) + "\n")
     else:
+        from app.printed import printed
+
         say(printed(drawing, outcome))
     return exit_code(outcome)
 

@@ -2,7 +2,6 @@
 
 import ctypes
 import os
-import socket
 import sys
 from importlib.util import find_spec
 from pathlib import Path
@@ -93,6 +92,8 @@ def _why_no_wayland() -> str | None:
     name = os.environ.get("WAYLAND_DISPLAY", "")
     if not name:
         return "WAYLAND_DISPLAY is not set"
+    import socket  # needed on this one desktop only
+
     path = Path(os.environ.get("XDG_RUNTIME_DIR", "/nonexistent")) / name
     with socket.socket(socket.AF_UNIX, socket.SOCK_STREAM) as line:
         line.settimeout(2)

@@ -4,7 +4,6 @@ import math
 import re
 from collections import Counter
 from dataclasses import dataclass, field
-from xml.parsers import expat
 
 LARGEST_BYTES = 256_000
 MOST_ELEMENTS = 5_000
@@ -48,12 +47,7 @@ def check(data: bytes) -> Contents:
     except UnicodeDecodeError:
         raise SymbolRefused("The picture is not UTF-8 text; save it as a plain SVG.") from None
     reader = _Reader()
-    try:
-        reader.read(data)
-    except expat.ExpatError as error:
-        raise SymbolRefused(
-            f"The picture is not well-formed SVG: line {error.lineno}, {expat.ErrorString(error.code)}."
-        ) from None
+    reader.read(data)
     found = reader.contents
     missing = sorted(found.links - set(found.ids))
     if missing:
@@ -71,6 +65,8 @@ class _Reader:
         self._count = 0
 
     def read(self, data: bytes) -> None:
+        from xml.parsers import expat  # most drawings hold no picture
+
         parser = expat.ParserCreate("utf-8", " ")
         parser.StartDoctypeDeclHandler = self._doctype
         parser.EntityDeclHandler = self._doctype
@@ -79,7 +75,12 @@ class _Reader:
         parser.EndElementHandler = self._end
         parser.CharacterDataHandler = self._text
         parser.buffer_text = True
-        parser.Parse(data, True)
+        try:
+            parser.Parse(data, True)
+        except expat.ExpatError as error:
+            raise SymbolRefused(
+                f"The picture is not well-formed SVG: line {error.lineno}, {expat.ErrorString(error.code)}."
+            ) from None
 
     def _doctype(self, *_: object) -> None:
         raise SymbolRefused("The picture declares a DOCTYPE or entities; a symbol may not.")

@@ -5,15 +5,18 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QByteArray, QPointF, QRectF, Qt
 from PySide6.QtGui import QIcon, QPainter, QPixmap, QTransform
-from PySide6.QtSvg import QSvgRenderer
 
 from app.canvas.geometry import GRID, distance
 from app.canvas.svg_check import LARGEST_BYTES, LARGEST_SIDE, SymbolRefused, check
 from app.model.drawing import Symbol
 from app.model.kinds import Branch, Element, Node
+
+if TYPE_CHECKING:
+    from PySide6.QtSvg import QSvgRenderer
 
 __all__ = ["SymbolRefused", "Worn", "default_terminals", "read_svg", "sound", "symbol_icon", "wear"]
 SIZE = 48.0  # the longer side of an attachment's symbol, px
@@ -67,7 +70,9 @@ def _passes(svg: str) -> bool:
 
 
 @lru_cache(maxsize=64)
-def _renderer(svg: str) -> QSvgRenderer:
+def _renderer(svg: str) -> "QSvgRenderer":
+    from PySide6.QtSvg import QSvgRenderer  # most drawings wear our own symbols alone
+
     return QSvgRenderer(QByteArray(svg.encode()))
 
 

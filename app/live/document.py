@@ -1,6 +1,5 @@
 """The file behind the session: load, save, recovery copy, and who else has it open."""
 
-from hashlib import sha256
 from pathlib import Path
 
 from PySide6.QtCore import QObject, QTimer, Signal
@@ -30,7 +29,7 @@ class Document(QObject):
         self._session = session
         self._recovery = Recovery(recovery_folder)
         self._lock: FileLock | None = None
-        self._seen: bytes | None = None  # digest of the file as we last read or wrote it
+        self._seen: bytes | None = None  # the file as we last read or wrote it
         self.path: Path | None = None
         self._soon = QTimer(self, singleShot=True, interval=RECOVERY_MS)
         self._soon.timeout.connect(self.keep_copy)
@@ -57,7 +56,7 @@ class Document(QObject):
         lock = ours if ours is not None and ours.sentence is None else FileLock(path)
         self._turn_to(path, lock)
         self._session.open(drawing)
-        self._seen = _digest(path)
+        self._seen = _contents(path)
         return lock.sentence
 
     def save(self) -> None:
@@ -86,7 +85,7 @@ class Document(QObject):
 
     def changed_on_disk(self) -> bool:
         """True where somebody else has changed or removed the file since we read or wrote it."""
-        return self.path is not None and _digest(self.path) != self._seen
+        return self.path is not None and _contents(self.path) != self._seen
 
     def close(self) -> None:
         """Leave in good order: no recovery copy and no lock stay behind."""
@@ -111,7 +110,7 @@ class Document(QObject):
         self._turn_to(copy.path, lock)
         self._session.open(drawing)
         self._session.history.resetClean()
-        self._seen = _digest(copy.path) if copy.path is not None else None
+        self._seen = _contents(copy.path) if copy.path is not None else None
         self.keep_copy()
         self._recovery.forget(copy)
         return lock.sentence if lock is not None else None
@@ -142,7 +141,7 @@ class Document(QObject):
 
     def _write(self, path: Path) -> None:
         save(self._session.drawing, path)
-        self._seen = _digest(path)
+        self._seen = _contents(path)
         self._soon.stop()
         self._recovery.clear()
         self._session.history.setClean()
@@ -154,8 +153,8 @@ def _with_suffix(path: Path) -> Path:
     return path if path.suffix.lower() == SUFFIX else path.with_name(path.name + SUFFIX)
 
 
-def _digest(path: Path) -> bytes | None:
+def _contents(path: Path) -> bytes | None:
     try:
-        return sha256(path.read_bytes()).digest()
+        return path.read_bytes()
     except OSError:
         return None

@@ -1,7 +1,5 @@
 """The about box with its cautions, and the list of keys."""
 
-from importlib.metadata import version
-
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import (
     QDialog,
@@ -29,6 +27,8 @@ class About(QDialog):
     """What this is, which version, and what it does not decide."""
 
     def __init__(self, parent: QWidget) -> None:
+        from importlib.metadata import version
+
         super().__init__(parent)
         self.setWindowTitle("About Farend")
         self.setMinimumWidth(460)

@@ -3,7 +3,7 @@
 from pathlib import Path
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
+from PySide6.QtWidgets import QWidget
 
 DRAWINGS = "Farend drawings (*.farend);;All files (*)"
 SHEETS = "Workbook (*.xlsx);;Comma-separated tables (*.csv)"
@@ -18,11 +18,15 @@ class Dialogs:
 
     def file_to_open(self, folder: Path) -> Path | None:
         """A drawing to open, or None."""
+        from PySide6.QtWidgets import QFileDialog  # each dialog is loaded when it is first asked
+
         name, _ = QFileDialog.getOpenFileName(self._parent, "Open drawing", str(folder), DRAWINGS)
         return Path(name) if name else None
 
     def file_to_write(self, title: str, suggestion: Path, kinds: str) -> Path | None:
         """Where to write, or None. A name without a suffix gets that of the kind chosen."""
+        from PySide6.QtWidgets import QFileDialog
+
         name, kind = QFileDialog.getSaveFileName(self._parent, title, str(suggestion), kinds)
         if not name:
             return None
@@ -33,25 +37,27 @@ class Dialogs:
 
     def keep_changes(self, name: str) -> str:
         """`save`, `discard` or `cancel`, before a changed drawing is left."""
-        buttons = QMessageBox.StandardButton
-        answer = self._box(
-            f"{name} has changes that are not saved.", buttons.Save | buttons.Discard | buttons.Cancel
-        )
-        return {buttons.Save: "save", buttons.Discard: "discard"}.get(answer, "cancel")
+        answer = self._box(f"{name} has changes that are not saved.", "Save", "Discard", "Cancel")
+        return answer.lower()
 
     def agree(self, question: str) -> bool:
         """True where the person says yes."""
-        buttons = QMessageBox.StandardButton
-        return self._box(question, buttons.Yes | buttons.No) == buttons.Yes
+        return self._box(question, "Yes", "No") == "Yes"
 
     def tell(self, sentence: str) -> None:
         """One sentence that cannot be shown in place."""
-        self._box(sentence, QMessageBox.StandardButton.Ok)
+        self._box(sentence, "Ok")
 
-    def _box(self, text: str, buttons: QMessageBox.StandardButton) -> QMessageBox.StandardButton:
+    def _box(self, text: str, *names: str) -> str:
+        """The name of the button chosen; closing the box chooses the last."""
+        from PySide6.QtWidgets import QMessageBox
+
+        buttons = {name: QMessageBox.StandardButton[name] for name in names}
         box = QMessageBox(self._parent)
         box.setWindowTitle("Farend")
         box.setTextFormat(Qt.TextFormat.PlainText)
         box.setText(text)
-        box.setStandardButtons(buttons)
-        return QMessageBox.StandardButton(box.exec())
+        for button in buttons.values():
+            box.addButton(button)
+        chosen = box.exec()
+        return next((name for name, button in buttons.items() if button.value == chosen), names[-1])

@@ -11,6 +11,7 @@ from app.canvas.theme import Theme
 from app.model.fields import Field
 from app.model.figures import MINUS, THIN, typed
 from app.panels.boxes import BOX_HEIGHT, Box, Choice, Entry, Note, Tick
+from app.panels.style import restyle
 from app.panels.words import RIGHT, Sentence, Words, plain_tip
 
 Take = Callable[[Field, str], str]  # takes what was typed, answers why not, or nothing
@@ -149,8 +150,7 @@ class FieldRow(QWidget):
         blank = "true" if not text else "false"
         if editor.property("blank") != blank:
             editor.setProperty("blank", blank)
-            editor.style().unpolish(editor)
-            editor.style().polish(editor)
+            restyle(editor)
 
     def refuse(self, sentence: str) -> None:
         """Show why what was typed cannot stand; empty: all is well again."""

@@ -1,7 +1,6 @@
 """The bottom line: whether the checks hold, the tightest one, and what is assumed; folds out to the lists."""
 
 from PySide6.QtCore import Qt, QTimer, Signal
-from PySide6.QtGui import QColor
 from PySide6.QtWidgets import (
     QHBoxLayout,
     QListWidget,
@@ -50,7 +49,6 @@ class FindingsBar(QWidget):
         self._session, self._solving, self._attention, self._theme = session, solving, attention, theme
         self._line = Line(Verdict.NOTE, "", "")
         self._told = ""
-        self._ink: QColor | None = None
         self.folded_out = ""  # "", "findings" or "assumed"
         play(self, "panel")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
@@ -150,9 +148,7 @@ class FindingsBar(QWidget):
         waiting = self._solving.stale and self._solving.problem is None
         if waiting and self._session.drawing.elements and not self._told:
             ink = self._theme.palette.soft
-        if ink != self._ink:
-            self._ink = ink
-            self.headline.setStyleSheet(f"color: {ink.name()};")
+        self.headline.colour(ink)
         self.sentence.say(self._line.sentence)
         outcome = self._newest
         count = len(outcome.assumptions) if outcome is not None else 0

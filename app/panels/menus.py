@@ -11,9 +11,7 @@ from PySide6.QtWidgets import QMenu
 
 from app.model.drawing import Drawing
 from app.model.file import FileError
-from app.panels.about import About, Keys
 from app.panels.dialogs import DRAWINGS, PICTURES, SHEETS, Dialogs
-from app.sheet import SheetError
 
 Do = Callable[[], Any]
 
@@ -127,8 +125,20 @@ class Menus(QObject):
 
     def _help(self) -> None:
         menu = self.window.menuBar().addMenu("&Help")
-        self._add(menu, "&Keys", lambda: Keys(self.window).exec(), "F1")
-        self._add(menu, "&About Farend", lambda: About(self.window).exec())
+        self._add(menu, "&Keys", self.show_keys, "F1")
+        self._add(menu, "&About Farend", self.show_about)
+
+    def show_keys(self) -> None:
+        """The list of keys."""
+        from app.panels.about import Keys  # what a menu opens is loaded when it is opened
+
+        Keys(self.window).exec()
+
+    def show_about(self) -> None:
+        """The about box."""
+        from app.panels.about import About
+
+        About(self.window).exec()
 
     # -- looks ----------------------------------------------------------------------------------
     def _wear(self, choice: str) -> None:
@@ -274,7 +284,7 @@ class Menus(QObject):
     def _try(self, do: Do, done: str) -> None:
         try:
             do()
-        except (SheetError, OSError, ValueError) as error:
+        except (OSError, ValueError) as error:
             self.dialogs.tell(str(error))
         else:
             self.window.findings.tell(done)

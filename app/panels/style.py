@@ -3,6 +3,7 @@
 Widgets say what they are through the property `role`: see ROLES.
 """
 
+from PySide6.QtCore import Qt
 from PySide6.QtGui import QColor, QPalette
 from PySide6.QtWidgets import QWidget
 
@@ -38,8 +39,14 @@ def play(widget: QWidget, role: str, state: str = "") -> None:
         return
     widget.setProperty("role", role)
     widget.setProperty("state", state)
-    widget.style().unpolish(widget)
-    widget.style().polish(widget)
+    restyle(widget)
+
+
+def restyle(widget: QWidget) -> None:
+    """Read the sheet again for a widget; one that was never shown reads it then."""
+    if widget.testAttribute(Qt.WidgetAttribute.WA_WState_Polished):
+        widget.style().unpolish(widget)
+        widget.style().polish(widget)
 
 
 def sheet(palette: Palette) -> str:

@@ -1,7 +1,7 @@
 """Plain words on a panel: text is never read as markup, and gives way with an ellipsis instead of a cut."""
 
 from PySide6.QtCore import QSize, Qt, Signal
-from PySide6.QtGui import QPainter, QPaintEvent
+from PySide6.QtGui import QColor, QPainter, QPaintEvent
 from PySide6.QtWidgets import QFrame, QLabel, QSizePolicy, QWidget
 
 from app.panels.style import play
@@ -20,6 +20,13 @@ class Words(QLabel):
         if role:
             play(self, role)
         self._tip = ""
+        self._ink: QColor | None = None
+
+    def colour(self, ink: QColor) -> None:
+        """Letters in this colour rather than that of the sheet."""
+        if ink != self._ink:
+            self._ink = ink
+            self.update()
 
     def say(self, text: str, tip: str = "") -> None:
         """Change the text, and what is added in the tooltip."""
@@ -37,7 +44,7 @@ class Words(QLabel):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         painter = QPainter(self)
-        painter.setPen(self.palette().color(self.foregroundRole()))
+        painter.setPen(self._ink or self.palette().color(self.foregroundRole()))
         room = self.contentsRect()
         shown = self.fontMetrics().elidedText(self.text(), Qt.TextElideMode.ElideRight, room.width())
         painter.drawText(room, int(self.alignment() | Qt.TextFlag.TextSingleLine), shown)

@@ -24,17 +24,17 @@ app.processEvents()
 OURS = f"""
 import sys
 from pathlib import Path
-from PySide6.QtCore import QTimer
-from PySide6.QtWidgets import QApplication
+import app.__main__  # the installed program begins here; it brings the window in next
 from app.window import Window
+from PySide6.QtWidgets import QApplication
 from app.live.preferences import Preferences
-app = QApplication(sys.argv[:1])
+application = QApplication(sys.argv[:1])
 window = Window(Preferences(Path(sys.argv[1])), Path(sys.argv[1]).parent)
 window.show()
 window.menus.open_path(Path({str(SAMPLE)!r}))
-app.processEvents()
+application.processEvents()
 window.solving.settle()
-app.processEvents()
+application.processEvents()
 assert window.solving.outcome.status.name == "SOLVED"
 window.close()
 """
