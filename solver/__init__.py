@@ -1,4 +1,4 @@
-"""The physics of a distribution layout: radial trees, solved for many operating points at once.
+"""The physics of a distribution layout, radial or meshed, solved for many operating points at once.
 
 The solver knows rows and SI units, and nothing of drawings, ids or files. A `Network` holds one row an
 element; the last axis of every physical array is the batch, so that loading cases, tap positions, hours
@@ -40,20 +40,22 @@ and candidate remedies are solved side by side in one call:
 >>> bool(solution.closure.max() < 1e-12)
 True
 
-Reading order: `network` (the rows), `tour` and `forest` (trees and their order), `placed` (rows in that
-order), `sweep` (the kernel), `settle` and `anderson` (until nothing moves), `answer` and `solution` (every
-branch), `share` (how much more load there could be), `trouble` (loops and joined supplies); `line`,
+Reading order: `network` (the rows), `tour`, `rounds` and `forest` (trees, their order, what closes rounds
+over them), `placed` (rows in that order), `sweep` (the kernel), `joints` and `ties` (currents that close
+rounds), `settle` and `anderson` (until nothing moves), `answer` and `solution` (every branch), `share` (how
+much more load there could be), `trouble` (rounds by name, and those without a solution); `line`,
 `transformer` and `load` are the element models. What a person should be told stands in `Status`.
 A programmer's mistake raises ValueError; everything that a drawing can be wrong about is a result.
 """
 
 from solver.forest import Forest, grow
 from solver.network import Network
+from solver.rounds import Joined, Loop, Trouble
 from solver.share import Share, largest_share
 from solver.solution import Solution
 from solver.solving import solve
 from solver.status import Status
-from solver.trouble import Joined, Loop, Trouble
+from solver.trouble import find_trouble, rounds
 
 __all__ = [
     "Forest",
@@ -64,7 +66,9 @@ __all__ = [
     "Solution",
     "Status",
     "Trouble",
+    "find_trouble",
     "grow",
     "largest_share",
+    "rounds",
     "solve",
 ]

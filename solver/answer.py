@@ -6,10 +6,11 @@ from solver.forest import Forest
 from solver.load import drawn
 from solver.network import Complex, Index, Network, Real
 from solver.placed import Placed, fed_transformers
+from solver.rounds import Trouble
 from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
-from solver.trouble import Trouble
+from solver.ties import add
 
 
 def answer(
@@ -19,6 +20,7 @@ def answer(
     voltage: Complex,
     status: tuple[Status, ...],
     iterations: Index,
+    tied: Complex | None = None,
 ) -> Solution:
     """Every branch, load and supply from the settled voltages.
 
@@ -28,14 +30,18 @@ def answer(
     voltage : (live, k, batch) complex [V]
     status : (batch,) each a Status
     iterations : (batch,) int
+    tied : (tie current, batch) complex [A], None where nothing is tied
     Returns : Solution
     """
     with np.errstate(all="ignore"):
         sweep = Sweep(placed, forest, voltage.shape[-1])
         sweep.currents(voltage)
+        if placed.joints is not None and tied is not None:
+            add(placed.joints, tied, sweep.current)
         inflow = sweep.backward()
         everywhere = _blank(network.node_count, voltage)
-        everywhere[forest.order] = voltage
+        live = forest.place >= 0
+        everywhere[live] = voltage[forest.place[live]]
         lines = _lines(network, forest, everywhere, inflow)
         transformers = _transformers(network, forest, everywhere, inflow)
         load_power, load_current = _loads(network, everywhere)
@@ -92,8 +98,7 @@ def _lines(
     network: Network, forest: Forest, voltage: Complex, inflow: Complex
 ) -> tuple[Complex, Complex, Complex, Complex]:
     way = forest.line_way
-    child = np.where(way > 0, network.line_to, network.line_from)
-    series = inflow.take(forest.place[child], axis=0, mode="clip")
+    series = inflow.take(forest.line_place, axis=0, mode="clip")
     np.negative(series, series, where=(way < 0)[:, None, None])
     if (dead := way == 0).any():
         series[dead] = complex(np.nan, np.nan)
@@ -137,7 +142,7 @@ def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
 
 
 def unsolved(network: Network, forest: Forest | Trouble, width: int) -> Solution:
-    """The solution of a network that is no set of supplied trees: no figures, every status INVALID.
+    """The solution of a network that is in trouble or not supplied: no figures, every status INVALID.
 
     network : Network
     forest : Trouble, or a Forest without a live node

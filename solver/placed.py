@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from solver.forest import Forest
+from solver.joints import Joints, closing
 from solver.network import Complex, Index, Network, Real
 
 
@@ -21,6 +22,7 @@ class Placed:
     ratio : (fed zone, 1, batch) complex, feeding side over fed side, of the transformer of each fed zone
     series : (fed zone, 1, batch) complex [ohm] at the fed side
     level : (zone, batch) float [V] no-load voltage of each zone
+    joints : Joints of the ties, None where there is none
     """
 
     root: Complex
@@ -31,6 +33,7 @@ class Placed:
     ratio: Complex
     series: Complex
     level: Real
+    joints: Joints | None
 
     def take(self, points: Index) -> "Placed":
         """The same with some operating points only."""
@@ -38,7 +41,8 @@ class Placed:
         names = ("root", "z", "y", "power", "current", "ratio", "series", "level")
         held = {name: getattr(self, name) for name in names}
         wide = {name: a for name, a in held.items() if a is not None and a.shape[-1] > 1}
-        return replace(self, **{name: a.take(points, axis=-1) for name, a in wide.items()})
+        joints = self.joints and self.joints.take(points)
+        return replace(self, joints=joints, **{name: a.take(points, axis=-1) for name, a in wide.items()})
 
 
 def put(network: Network, forest: Forest) -> Placed:
@@ -63,7 +67,8 @@ def put(network: Network, forest: Forest) -> Placed:
         current=current,
         ratio=ratio[:, None, :],
         series=series[:, None, :],
-        level=_levels(forest, root, ratio),
+        level=np.abs(_phasors(forest, np.abs(root).max(axis=1), ratio)),
+        joints=closing(forest, network.conductors),
     )
 
 
@@ -80,14 +85,24 @@ def fed_transformers(network: Network, forest: Forest) -> tuple[Complex, Complex
     return np.where(back, 1 / a, a), np.where(back, z * np.abs(a) ** 2, z)
 
 
-def _levels(forest: Forest, root: Complex, ratio: Complex) -> Real:
+def no_load_phasor(forest: Forest, placed: Placed) -> Complex:
+    """Volts of the first conductor at the root of every zone with nothing connected.
+
+    forest : Forest
+    placed : Placed, of that forest
+    Returns : (zone, batch) complex [V]
+    """
+    return _phasors(forest, placed.root[:, 0], placed.ratio[:, 0])
+
+
+def _phasors(forest: Forest, root: Complex | Real, ratio: Complex) -> Complex:
     width = max(root.shape[-1], ratio.shape[-1])
     supplied = root.shape[0]
-    level = np.empty((forest.zone_source.size, width))
-    level[:supplied] = np.abs(root).max(axis=1)
+    level = np.empty((forest.zone_source.size, width), dtype=np.complex128)
+    level[:supplied] = root
     for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
         above = level[forest.zone[forest.zone_fed[start:stop]]]
-        level[start:stop] = above / np.abs(ratio[start - supplied : stop - supplied])
+        level[start:stop] = above / ratio[start - supplied : stop - supplied]
     return level
 
 

@@ -10,6 +10,7 @@ from solver.network import Complex, Flag, Index, Real
 from solver.placed import Placed
 from solver.status import Status
 from solver.sweep import Sweep
+from solver.ties import Ties
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
 PLAIN = 12  # sweeps before acceleration
@@ -17,6 +18,7 @@ MOST = 120  # sweeps in all
 WILD = 50.0  # growth of the change that makes the acceleration start afresh
 FAR = 0.5  # |c|² from which a geometric series is not worth following
 LOW = 0.02  # share of the no-load voltage that no guess may fall below
+NAN = complex(np.nan, np.nan)
 BLOCK = 1 << 15  # complex values in one array that stay in cache
 
 
@@ -27,11 +29,13 @@ class Settled:
     voltage : (live, k, batch) complex [V], nan where there is no answer
     status : (batch,) each a Status
     iterations : (batch,) int, sweeps
+    tied : (tie current, batch) complex [A]; None where nothing is tied
     """
 
     voltage: Complex
     status: tuple[Status, ...]
     iterations: Index
+    tied: Complex | None
 
 
 def settle(placed: Placed, forest: Forest, start: Complex) -> Settled:
@@ -54,6 +58,7 @@ def settle(placed: Placed, forest: Forest, start: Complex) -> Settled:
         np.concatenate([p.voltage for p in parts], axis=-1),
         sum((p.status for p in parts), ()),
         np.concatenate([p.iterations for p in parts]),
+        None if placed.joints is None else np.concatenate([p.tied for p in parts], axis=-1),
     )
 
 
@@ -64,10 +69,13 @@ class _Run:
         width = start.shape[-1]
         self.placed, self.forest = placed, forest
         self.points = np.arange(width)
-        self.answer = np.full_like(start, complex(np.nan, np.nan))
+        self.answer = np.full_like(start, NAN)
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
         self.iterations = np.full(width, MOST)
         self.anderson: Anderson | None = None
+        self.ties = None if placed.joints is None else Ties(placed, forest, placed.joints)
+        self.tied = None if self.ties is None else np.full((len(self.ties.joints.z), width), NAN)
+        self.current = self.tied
         self.before: Complex | None = None  # the step before, at every other sweep
         self.best = np.full(width, np.inf)
         self._memory(start.copy())
@@ -87,6 +95,8 @@ class _Run:
         with np.errstate(all="ignore"):
             for count in range(1, MOST + 1):
                 self.sweep(self.voltage, self.image)
+                if self.ties is not None:
+                    self.current = self.ties.correct(self.image)
                 change = self._change()
                 if not (change.min() >= CLOSE and change.max() < np.inf):
                     stay = (change >= CLOSE) & np.isfinite(change)
@@ -101,7 +111,7 @@ class _Run:
                 else:
                     self.voltage = self._accelerated(change)
         self._judge()
-        return Settled(self.answer, tuple(self.status), self.iterations)
+        return Settled(self.answer, tuple(self.status), self.iterations, self.tied)
 
     def _change(self) -> Real:
         """(batch,) largest change of a real or imaginary part relative to the level of its zone."""
@@ -127,6 +137,8 @@ class _Run:
         rows = self.points[done]
         self.answer[..., rows] = self.image[..., done]
         self.status[rows] = Status.SOLVED
+        if self.tied is not None and self.current is not None:
+            self.tied[:, rows] = self.current[:, done]
         self.iterations[self.points[gone]] = count
 
     def _keep(self, rows: Index) -> None:
@@ -137,6 +149,8 @@ class _Run:
         self.before = None if self.before is None else self.before.take(rows, axis=-1)
         if self.anderson is not None:
             self.anderson.keep(rows)
+        if self.ties is not None:
+            self.ties.keep(rows)
 
     def _extrapolate(self, count: int) -> None:
         """Goes to the end of the geometric series that two sweeps in a row begin.

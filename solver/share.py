@@ -40,12 +40,12 @@ def largest_share(network: Network, point: int = 0) -> Share:
     network : Network
     point : which operating point of its batch
     Returns : Share
-    Raises : ValueError where the network is not a set of trees
+    Raises : ValueError where the network has no forest
     Source : common practice, no source
     """
     forest = grow(network)
     if not isinstance(forest, Forest):
-        raise ValueError("closed loops or joined supplies have no share")
+        raise ValueError("a layout in trouble has no share")
     one = pick(network, np.array([point]))
     if not one.load_mix[:, :2].any():
         return Share(np.inf, None, None)
@@ -92,18 +92,18 @@ def scaled(network: Network, shares: Real) -> Network:
 def blame(solution: Solution, point: int = 0) -> tuple[int | None, int | None]:
     """Branch with the largest drop on the way from the supply to the lowest node.
 
-    solution : Solution of a set of trees
+    solution : Solution
     point : which operating point
     Returns : line row or None, transformer row or None
-    Raises : ValueError where the network is not a set of trees
+    Raises : ValueError where the network has no forest
     """
     forest, network = solution.forest, solution.network
     if not isinstance(forest, Forest):
-        raise ValueError("closed loops or joined supplies have no share")
+        raise ValueError("a layout in trouble has no share")
     level = put(network, forest).level
     level = level[forest.zone, min(point, level.shape[1] - 1)]
     share = np.abs(solution.voltage[forest.order, :, point]).min(axis=1) / level
-    place = int(np.argmin(share))
+    place = int(forest.place[forest.order[np.argmin(share)]])
     worst, to_blame = -np.inf, (None, None)  # type: float, tuple[int | None, int | None]
     while (above := int(forest.parent[forest.order[place]])) >= 0:
         drop = float(share[forest.place[above]] - share[place])

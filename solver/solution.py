@@ -5,8 +5,8 @@ from functools import cached_property
 
 from solver.forest import Forest
 from solver.network import Complex, Index, Network, Real
+from solver.rounds import Trouble
 from solver.status import Status
-from solver.trouble import Trouble
 
 
 @dataclass(frozen=True)

@@ -6,10 +6,11 @@ from solver.answer import answer, unsolved
 from solver.forest import Forest, grow
 from solver.network import Complex, Network
 from solver.placed import Placed, put
+from solver.rounds import Trouble
 from solver.settle import settle
 from solver.solution import Solution
 from solver.status import Status
-from solver.trouble import Trouble
+from solver.trouble import find_trouble
 
 OPEN = 1e-6  # closure from which an answer is none
 
@@ -17,15 +18,15 @@ OPEN = 1e-6  # closure from which an answer is none
 def solve(
     network: Network, *, forest: Forest | Trouble | None = None, warm: Complex | None = None
 ) -> Solution:
-    """Solves every operating point of a network of radial trees.
+    """Solves every operating point of a network: trees, and any number of rounds over them.
 
     network : Network
     forest : Forest or Trouble of a network with the same connections, where it is known already
     warm : (node, k, batch) complex [V] first guess; no-load voltages where it is None or not finite
     Returns : Solution; status NO_OPERATING_POINT where the loads ask more than the layout can carry,
-        NOT_SETTLED where the sweeps still moved or the closure
-        is worse than 1e-6, INVALID where loops are closed, supplies
-        joined or nothing is supplied
+        NOT_SETTLED where the sweeps still moved or the closure is worse than 1e-6, INVALID where nothing is
+        supplied, or where the forest is Trouble: a loop has no impedance at all, supplies are joined
+        through none, or the transformers of a round turn the phases
     Raises : ValueError for arrays that do not fit together, a programmer's mistake
     Source : see solver.sweep
     """
@@ -35,17 +36,20 @@ def solve(
     if isinstance(forest, Trouble) or not forest.order.size:
         return unsolved(network, forest, width)
     placed = put(network, forest)
+    if trouble := find_trouble(network, forest, placed):
+        return unsolved(network, trouble, width)
     start = no_load(placed, forest, network.conductors, width)
     if warm is not None:
         guess = np.broadcast_to(warm[forest.order], start.shape)
         start = np.where(np.isfinite(guess), guess, start)
     settled = settle(placed, forest, start)
-    solution = answer(network, forest, placed, settled.voltage, settled.status, settled.iterations)
+    found = settled.voltage, settled.status, settled.iterations, settled.tied
+    solution = answer(network, forest, placed, *found)
     if not (loose := solution.closure > OPEN).any():
         return solution
     status = tuple(Status.NOT_SETTLED if x else s for s, x in zip(settled.status, loose, strict=True))
     voltage = np.where(loose, complex(np.nan, np.nan), settled.voltage)
-    return answer(network, forest, placed, voltage, status, settled.iterations)
+    return answer(network, forest, placed, voltage, status, settled.iterations, settled.tied)
 
 
 def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:

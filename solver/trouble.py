@@ -1,114 +1,89 @@
-"""Why a layout is not a set of trees: closed loops and joined supplies, named by their rows."""
+"""The rounds of a meshed network by name, and those among them that have no solution."""
 
-from collections import deque
-from dataclasses import dataclass
+from collections.abc import Iterable, Mapping
 
-from solver.network import Network
+import numpy as np
 
-MOST = 200  # loops, or joined supplies, that are worth listing
+from solver.forest import Forest
+from solver.network import Complex, Flag, Network
+from solver.placed import Placed, no_load_phasor
+from solver.rounds import Joined, Loop, Trouble, branch_ends, neighbours, round_of, spanning
+
+MOST = 200  # rounds that are worth listing
+CLOCK = np.pi / 6  # the angle of one hour of a clock number
 
 
-@dataclass(frozen=True, slots=True)
-class Loop:
-    """A closed loop: the lines and transformers it runs through, in the order of the round.
+def rounds(network: Network, forest: Forest, ties: Iterable[int] | None = None) -> tuple[Loop | Joined, ...]:
+    """What the round of each tie runs through.
 
-    lines : rows
-    transformers : rows
+    network : Network
+    forest : Forest, of that network
+    ties : rows of the ties of the forest, all of them where it is None
+    Returns : a Loop for each tie that closes a loop, a Joined where it joins two supplies
+    Source : see solver.rounds
     """
+    lines, ends = network.line_from.size, dict(enumerate(branch_ends(network)))
+    above = forest.zone_transformer[forest.zone]
+    by = np.where(forest.feeder >= 0, forest.feeder, np.where(above >= 0, above + lines, -1))
+    feeder = {node: int(by[place]) for node, place in enumerate(forest.place.tolist()) if place >= 0}
+    chosen = range(forest.tie_place.size) if ties is None else ties
+    found = (round_of(int(forest.tie_branch[tie]), ends, feeder) for tie in chosen)
+    supply = _supplies(network)
+    return tuple(_named(*r, supply, lines) for r in found)
 
-    lines: tuple[int, ...]
-    transformers: tuple[int, ...]
 
+def find_trouble(network: Network, forest: Forest, placed: Placed) -> Trouble:
+    """What makes the rounds of a meshed network impossible.
 
-@dataclass(frozen=True, slots=True)
-class Joined:
-    """Two supplies that feed into each other, and what lies between them, in order.
-
-    sources : rows of the two supplies
-    lines : rows
-    transformers : rows
+    network : Network
+    forest : Forest, of that network
+    placed : Placed, of both
+    Returns : Trouble, empty where every round can be solved
+    Source : common practice, no source
     """
-
-    sources: tuple[int, int]
-    lines: tuple[int, ...]
-    transformers: tuple[int, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Trouble:
-    """Why the layout is not a set of trees. At most 200 of each are listed.
-
-    loops : each a Loop
-    joined : each a Joined
-    """
-
-    loops: tuple[Loop, ...]
-    joined: tuple[Joined, ...]
+    if not forest.tie_place.size:
+        return Trouble()
+    bare = _bare_rounds(network)
+    return Trouble(
+        tuple(r for r in bare if isinstance(r, Loop)),
+        tuple(r for r in bare if isinstance(r, Joined)),
+        _turned(network, forest, placed),
+    )
 
 
-def find_trouble(network: Network) -> Trouble:
-    """Names what closes the loops and joins the supplies, each with the branches it runs through.
-
-    network : Network, of which only the connections are read
-    Returns : Trouble, empty where the network is a set of trees
-    Source : Welch, A mechanical analysis of the cyclic structure of undirected linear graphs, J. ACM 13
-        (1966) 205-210: one loop for each branch outside a spanning tree
-    """
-    ends = [
-        *zip(network.line_from.tolist(), network.line_to.tolist(), strict=True),
-        *zip(network.transformer_from.tolist(), network.transformer_to.tolist(), strict=True),
-    ]
-    lines = network.line_from.size
-    supply, doubled = _supplies(network.source_node.tolist())
-    feeder = _spanning(network.node_count, ends, list(supply))
-    used = set(feeder.values())
-    loops, joined = [], [Joined(pair, (), ()) for pair in doubled]
-    for branch, (a, b) in enumerate(ends):
-        if branch in used or a not in feeder:
-            continue
-        up, down = _way(a, ends, feeder), _way(b, ends, feeder)
-        roots = supply[up[-1][0]], supply[down[-1][0]]
-        while roots[0] == roots[1] and len(up) > 1 and len(down) > 1 and up[-2] == down[-2]:
-            up.pop()
-            down.pop()
-        round_ = [f for _, f in reversed(up[:-1])] + [branch] + [f for _, f in down[:-1]]
-        rows = tuple(f for f in round_ if f < lines), tuple(f - lines for f in round_ if f >= lines)
-        if roots[0] == roots[1]:
-            loops.append(Loop(*rows))
-        else:
-            joined.append(Joined(roots, *rows))
-        if len(loops) >= MOST or len(joined) >= MOST:
-            break
-    return Trouble(tuple(loops), tuple(joined))
+def _bare_rounds(network: Network) -> list[Loop | Joined]:
+    """Rounds through nothing but branches that have no impedance in some operating point."""
+    bare = np.concatenate((_bare(network.line_z), _bare(network.transformer_z)))
+    ends = {row: pair for row, pair in enumerate(branch_ends(network)) if bare[row]}
+    near, supply = neighbours(ends), _supplies(network)
+    feeder: dict[int, int] = {}
+    spanning(near, supply, feeder)
+    for node in near:
+        spanning(near, [node], feeder)
+    closing = sorted(ends.keys() - feeder.values())[:MOST]
+    found = (round_of(row, ends, feeder) for row in closing)
+    return [_named(*r, supply, network.line_from.size) for r in found]
 
 
-def _supplies(nodes: list[int]) -> tuple[dict[int, int], list[tuple[int, int]]]:
-    """First supply on each supplied node, and the pairs that share a node."""
-    first: dict[int, int] = {}
-    pairs = [(first.setdefault(node, row), row) for row, node in enumerate(nodes)]
-    return first, [pair for pair in pairs if pair[0] != pair[1]]
+def _bare(z: Complex) -> Flag:
+    return np.asarray((z == 0).all(axis=tuple(range(1, z.ndim - 1))).any(axis=-1))
 
 
-def _spanning(count: int, ends: list[tuple[int, int]], roots: list[int]) -> dict[int, int]:
-    """Branch that feeds each live node in breadth-first trees; -1 at a root."""
-    near: list[list[tuple[int, int]]] = [[] for _ in range(count)]
-    for branch, (a, b) in enumerate(ends):
-        near[a].append((b, branch))
-        near[b].append((a, branch))
-    feeder, queue = dict.fromkeys(roots, -1), deque(roots)
-    while queue:
-        for other, branch in near[queue.popleft()]:
-            if other not in feeder:
-                feeder[other] = branch
-                queue.append(other)
-    return feeder
+def _supplies(network: Network) -> dict[int, int]:
+    return dict(zip(network.source_node.tolist(), range(network.source_node.size), strict=True))
 
 
-def _way(node: int, ends: list[tuple[int, int]], feeder: dict[int, int]) -> list[tuple[int, int]]:
-    """Nodes from here to the root, each with the branch that feeds it."""
-    way = [(node, feeder[node])]
-    while (branch := feeder[node]) >= 0:
-        a, b = ends[branch]
-        node = a if node == b else b
-        way.append((node, feeder[node]))
-    return way
+def _named(one: int, other: int, way: list[int], supply: Mapping[int, int], lines: int) -> Loop | Joined:
+    rows = tuple(b for b in way if b < lines), tuple(b - lines for b in way if b >= lines)
+    if one == other:
+        return Loop(*rows)
+    return Joined((supply[one], supply[other]), *rows)
+
+
+def _turned(network: Network, forest: Forest, placed: Placed) -> tuple[Loop | Joined, ...]:
+    """Rounds on which the no-load volts come back turned by an hour or more."""
+    phasor = no_load_phasor(forest, placed)
+    one, other = forest.zone[forest.tie_place], forest.zone[forest.place[forest.tie_node]]
+    angle = np.abs(np.angle(phasor[one] * np.conj(phasor[other]))).max(axis=-1)
+    wrong = np.flatnonzero(np.rint(angle / CLOCK))
+    return rounds(network, forest, wrong[:MOST].tolist())

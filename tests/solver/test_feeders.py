@@ -8,6 +8,8 @@ from solver import Status, solve
 
 AS_PUBLISHED = ["n10", "n12", "n16", "n33", "n33b"]
 CHANGED = {
+    "n16_solution_all_ties_closed": ("n16", {"closed": (14, 15, 16)}),
+    "n33_solution_all_ties_closed": ("n33", {"closed": (33, 34, 35, 36, 37)}),
     "n16_solution_reconf": ("n16", {"opened": (7, 8), "closed": (14, 15)}),
     "n33_solution_open_7_9_14_32_37": ("n33", {"opened": (7, 9, 14, 32), "closed": (33, 34, 35, 36)}),
 }
@@ -63,6 +65,18 @@ def test_published_loss_after_reconfiguration(name, key):
     _, network = feeder(base, **changes)
     published = facts(base)["published"][key]["loss_kW"]
     assert 3 * solve(network).line_loss.sum().real / 1e3 == pytest.approx(published, abs=0.05)
+
+
+@pytest.mark.parametrize("name", ["n33", "n16"])
+def test_loss_with_all_ties_closed(name):
+    """No published figure was seen; the figure is that of the independent nodal solution in the file."""
+    base, changes = CHANGED[f"{name}_solution_all_ties_closed"]
+    _, network = feeder(base, **changes)
+    solution = solve(network)
+    known = facts(base)["reproduced"]["all_ties_closed"]
+    loss = 3 * solution.line_loss.sum() / 1e3
+    assert (loss.real, loss.imag) == pytest.approx((known["loss_kW"], known["loss_kvar"]), abs=5.1e-6)
+    assert solution.closure[0] < 1e-11
 
 
 def test_published_node_voltages_and_branch_losses():
