@@ -1,8 +1,8 @@
 """Cables, overhead lines, transformers and switches: a route as broad as it is loaded."""
 
 import math
-from dataclasses import dataclass
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QPainterPath, QPainterPathStroker, QPen, QPolygonF, QTransform
 
@@ -19,8 +19,7 @@ HALO = 9.0
 POLE = 3.5
 
 
-@dataclass(frozen=True, slots=True)
-class Flow:
+class Flow(Struct, frozen=True):
     """What a branch shows: breadth in px, and the way power runs (True from start to end, None: no arrow)."""
 
     width: float = 2.0

@@ -1,7 +1,6 @@
 """The small gauge at a node: lowest to highest voltage of all cases, inside the limits."""
 
-from dataclasses import dataclass
-
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen, QPolygonF
 
@@ -14,8 +13,7 @@ BAR = 5.0
 LIMIT_SHARE = 0.18  # the limits stand this far in from either end of the track
 
 
-@dataclass(frozen=True, slots=True)
-class Reading:
+class Reading(Struct, frozen=True):
     """All in percent of nominal."""
 
     low: float

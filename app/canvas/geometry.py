@@ -2,9 +2,9 @@
 
 import math
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from enum import Enum
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF
 
 from app.canvas.lanes import lane
@@ -28,8 +28,7 @@ class HitKind(Enum):
     PAPER = "paper"
 
 
-@dataclass(frozen=True, slots=True)
-class Hit:
+class Hit(Struct, frozen=True):
     """What was hit. index: the bend's place in `via`, 0 or 1 for an end, the segment of a branch."""
 
     kind: HitKind
@@ -37,8 +36,7 @@ class Hit:
     index: int = 0
 
 
-@dataclass(frozen=True, slots=True)
-class Outline:
+class Outline(Struct, frozen=True):
     """Something that can be hit: a polyline, or a single point, with its own reach in pixels."""
 
     kind: HitKind

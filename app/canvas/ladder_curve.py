@@ -1,9 +1,9 @@
 """Painting what the taps would do: the loss against notch, the best one, the notches that hold."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen, QPolygonF
@@ -15,8 +15,7 @@ WIDTH = 24.0
 MOST_DOTS = 9
 
 
-@dataclass(frozen=True)
-class Prospect:
+class Prospect(Struct, frozen=True):
     """What each notch would yield in the case shown, by notch."""
 
     notches: NDArray[np.intp]

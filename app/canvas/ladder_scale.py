@@ -1,7 +1,7 @@
 """Where the notches of a tap ladder lie. Up is the higher nameplate voltage of the tapped winding, the order
 in which a rating plate lists its taps; what that does to the far side is always written beside the rung."""
 
-from dataclasses import dataclass
+from msgspec import Struct
 
 from app.model import taps
 from app.model.kinds import Transformer
@@ -11,8 +11,7 @@ ROOMY = 17.0  # px a notch where there are few
 TIGHT = 3.0  # below this not every notch gets its tick
 
 
-@dataclass(frozen=True)
-class Scale:
+class Scale(Struct, frozen=True):
     """Notches of one transformer on a rail of some height, y down from its top."""
 
     lowest: int

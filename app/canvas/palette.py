@@ -1,12 +1,10 @@
 """Our colours, light and dark; every painted thing takes its colour from here."""
 
-from dataclasses import dataclass
-
+from msgspec import Struct
 from PySide6.QtGui import QColor, QFont
 
 
-@dataclass(frozen=True)
-class Palette:
+class Palette(Struct, frozen=True):
     """Named by what they mean, not by what they look like."""
 
     paper: QColor

@@ -2,8 +2,8 @@
 
 import math
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF
 
 from app.canvas.lettering import CENTRE, LEFT, RIGHT
@@ -17,16 +17,14 @@ AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
 Edges = tuple[float, float, float, float]  # left, top, right, bottom
 
 
-@dataclass(frozen=True, slots=True)
-class Spot:
+class Spot(Struct, frozen=True):
     """A place for a block of text and how its lines align there."""
 
     box: QRectF
     align: float = CENTRE
 
 
-@dataclass(frozen=True, slots=True)
-class Wish:
+class Wish(Struct, frozen=True):
     """One block and the spots it would take, best first."""
 
     key: tuple[str, str]

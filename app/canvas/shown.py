@@ -1,9 +1,9 @@
 """The figures that stand on the paper just now."""
 
 import math
-from dataclasses import dataclass
 from typing import Any
 
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.canvas import gauge
@@ -28,8 +28,7 @@ class Row:
         return (column[self._at] if column.ndim == 1 else column[self._at, self._case]).item()
 
 
-@dataclass(frozen=True)
-class Shown:
+class Shown(Struct, frozen=True):
     """The figures on the paper: one case of an outcome, and the outcome that changes are counted from."""
 
     limits: Limits

@@ -4,9 +4,9 @@ A branch's symbol runs along x, its start at the left. An attachment's is fed fr
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
 from functools import lru_cache
 
+from msgspec import Struct, field
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainterPath
 
@@ -15,8 +15,7 @@ RING = 15.0  # a transformer's winding
 ROUND = 18.0  # supply and generator
 
 
-@dataclass(frozen=True)
-class Glyph:
+class Glyph(Struct, frozen=True):
     """One symbol. `half` is how far its terminals lie from its middle."""
 
     half: float

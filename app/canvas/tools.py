@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter, QPen
 
@@ -27,8 +27,7 @@ ARROWS: dict[int, tuple[int, int]] = {
 ENTERS: tuple[int, ...] = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
 
 
-@dataclass(frozen=True)
-class Touch:
+class Touch(Struct, frozen=True):
     """The pointer at one moment: on the paper, on the screen, and the keys held with it."""
 
     at: QPointF

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QPainter, QPen
 
@@ -21,8 +21,7 @@ REACH = 8.0
 LINGER = 2.2 * GRID  # how far the hand may stray before the handles of a node go away
 
 
-@dataclass(frozen=True)
-class Handle:
+class Handle(Struct, frozen=True):
     """One handle. end: 0 or 1 of a busbar to be lengthened, or None to pull a branch."""
 
     node: str

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from msgspec import Struct
 from msgspec.structs import replace
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter, QPen
@@ -23,8 +23,7 @@ if TYPE_CHECKING:
     from app.canvas.view import BoardView
 
 
-@dataclass(frozen=True)
-class Brush:
+class Brush(Struct, frozen=True):
     """What new branches are drawn with: a part, and the branch that was drawn with it last."""
 
     part: Part
@@ -43,8 +42,7 @@ class Brush:
         return drawing, made
 
 
-@dataclass(frozen=True)
-class Spot:
+class Spot(Struct, frozen=True):
     """Where one end of a new branch lands: on a node, on a line (which is parted there), or on paper."""
 
     x: float

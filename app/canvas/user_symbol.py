@@ -2,11 +2,11 @@
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from msgspec import Struct
 from PySide6.QtCore import QByteArray, QPointF, QRectF, Qt
 from PySide6.QtGui import QIcon, QPainter, QPixmap, QTransform
 
@@ -83,8 +83,7 @@ def default_terminals(symbol: Symbol, branch: bool) -> tuple[tuple[float, float]
     return symbol.terminals[: len(usual)] + usual[len(symbol.terminals) :]
 
 
-@dataclass(frozen=True)
-class Worn:
+class Worn(Struct, frozen=True):
     """A symbol made to fit: `place` maps its viewBox units to pixels about its middle, drawn along x for
     a branch and fed from above for an attachment, as our own symbols are."""
 

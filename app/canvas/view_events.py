@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QEvent, QPoint, QPointF, QRectF, Qt, Signal
 from PySide6.QtGui import QKeyEvent, QMouseEvent, QNativeGestureEvent, QPainter, QWheelEvent
-from PySide6.QtWidgets import QGestureEvent, QGraphicsScene, QGraphicsView, QPinchGesture
+from PySide6.QtWidgets import QGestureEvent, QGraphicsScene, QGraphicsView, QPinchGesture, QWidget
 
 from app.canvas import tools_travel as travel
 from app.canvas.geometry import HitKind
@@ -43,6 +43,7 @@ class EventView(QGraphicsView):
         self.setResizeAnchor(QGraphicsView.ViewportAnchor.AnchorViewCenter)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setAcceptDrops(True)
+        self.setViewport(QWidget())  # one of Qt's own making would make Python learn every sort of widget
         self.viewport().setMouseTracking(True)
         self.viewport().grabGesture(Qt.GestureType.PinchGesture)
 

@@ -1,19 +1,18 @@
 """Recovery copies: what was on the board when a program ended without closing."""
 
 import json
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 from uuid import uuid4
 
+from msgspec import Struct
 from PySide6.QtCore import QLockFile, QStandardPaths
 
 from app.model.drawing import Drawing
 from app.model.file import FileError, save
 
 
-@dataclass(frozen=True)
-class Copy:
+class Copy(Struct, frozen=True):
     """A copy left behind. path: the drawing's own file, or None where it had none."""
 
     file: Path

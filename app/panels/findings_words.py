@@ -1,6 +1,6 @@
 """What the bottom line says, from an outcome. Words only."""
 
-from dataclasses import dataclass
+from msgspec import Struct
 
 from app.model.drawing import Drawing, label
 from app.model.fields import fields_of
@@ -11,8 +11,7 @@ from app.study.outcome import Assumption, Finding, Outcome, Verdict
 from solver.status import Status
 
 
-@dataclass(frozen=True, slots=True)
-class Line:
+class Line(Struct, frozen=True):
     """A mark, the headline in its colour, a sentence, and the elements it is about."""
 
     verdict: Verdict

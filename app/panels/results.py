@@ -2,8 +2,9 @@
 
 import math
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
 from functools import partial
+
+from msgspec import Struct
 
 from app.model import assumed, taps
 from app.model.drawing import Drawing
@@ -18,8 +19,7 @@ VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("l
 RANK = {Verdict.BLOCKS: 0, Verdict.FAILS: 1, Verdict.NEAR: 2, Verdict.NOTE: 3, Verdict.HOLDS: 4}
 
 
-@dataclass(frozen=True, slots=True)
-class Row:
+class Row(Struct, frozen=True):
     """One result: a cell for each case; `change` belongs to the case shown."""
 
     label: str
@@ -28,8 +28,7 @@ class Row:
     verdict: Verdict | None = None
 
 
-@dataclass(frozen=True, slots=True)
-class Asked:
+class Asked(Struct, frozen=True):
     """What rows are made from: the drawing, its outcome, the one before the drag, the case shown."""
 
     drawing: Drawing

@@ -1,10 +1,10 @@
 """The axes of the voltage strip, and the polylines on it."""
 
 import math
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF
 
 from app.model.drawing import Drawing, Limits
@@ -16,8 +16,7 @@ STEP_PX = 46.0  # the breadth given to a transformer, which has no length
 LEAST_SPAN = 6.0  # percent
 
 
-@dataclass(frozen=True, slots=True)
-class Axes:
+class Axes(Struct, frozen=True):
     """Percent up, route across; transformers get a little breadth of their own."""
 
     room: QRectF
@@ -64,8 +63,7 @@ def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float
     return low - air, high + air
 
 
-@dataclass(frozen=True, slots=True)
-class Stretch:
+class Stretch(Struct, frozen=True):
     """One branch on the strip: from the node before it to the node it feeds."""
 
     branch: str

@@ -1,8 +1,9 @@
 """The routes the voltage strip shows: which branch feeds which node, how far along, after how many steps."""
 
 from collections.abc import Iterable
-from dataclasses import dataclass
 from typing import Any
+
+from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Node, Transformer
@@ -11,8 +12,7 @@ from app.study.outcome import Finding, Outcome, Table, Verdict
 _URGENCY = {Verdict.FAILS: 0, Verdict.NEAR: 1, Verdict.HOLDS: 2}
 
 
-@dataclass(frozen=True, slots=True)
-class Stop:
+class Stop(Struct, frozen=True):
     """A node on its route."""
 
     id: str
@@ -22,8 +22,7 @@ class Stop:
     parent: str  # the node at the other end of that branch
 
 
-@dataclass(frozen=True, slots=True)
-class Course:
+class Course(Struct, frozen=True):
     """All live nodes by id, supplies first, and the main route from its supply to its far end."""
 
     stops: dict[str, Stop]

@@ -1,7 +1,6 @@
 """Painting the voltage strip."""
 
-from dataclasses import dataclass
-
+from msgspec import Struct
 from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPen
 
@@ -18,8 +17,7 @@ CENTRE = Qt.AlignmentFlag.AlignHCenter | Qt.AlignmentFlag.AlignVCenter
 HANDLE = 4.6
 
 
-@dataclass(frozen=True, slots=True)
-class Curve:
+class Curve(Struct, frozen=True):
     """One case on the strip."""
 
     name: str
@@ -27,8 +25,7 @@ class Curve:
     nodes: dict[str, QPointF]
 
 
-@dataclass(frozen=True, slots=True)
-class Shown:
+class Shown(Struct, frozen=True):
     """Everything one painting needs; `curves` by case, `before` the shown case when the drag began."""
 
     drawing: Drawing

@@ -1,7 +1,8 @@
 """The loss tape before it is painted: what the pieces are and where they lie. No painting here."""
 
-from dataclasses import dataclass, field
 from typing import NamedTuple
+
+from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.model.kinds import Cable, Generator, Load, OverheadLine, Transformer
@@ -30,8 +31,7 @@ class Piece(NamedTuple):
         return self._replace(left=left, width=width)
 
 
-@dataclass(frozen=True, slots=True)
-class Cut:
+class Cut(Struct, frozen=True):
     """The whole tape. `thread` is where the losses lie in the bar to scale, left and width."""
 
     bar: tuple[Piece, ...] = ()
@@ -40,7 +40,7 @@ class Cut:
     factor: int = 1
     thread: tuple[float, float] = (0.0, 0.0)
     total_kw: float = 0.0
-    pieces: tuple[Piece, ...] = field(default=())
+    pieces: tuple[Piece, ...] = ()
 
 
 def cut(drawing: Drawing, outcome: Outcome, case: int, width: float) -> Cut:

@@ -1,8 +1,8 @@
 """Painting the loss tape. Copper, iron and cable differ by pattern and word as well as by colour."""
 
 from collections.abc import Collection
-from dataclasses import dataclass
 
+from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPainterPath, QPen, QPolygonF
 
@@ -20,8 +20,7 @@ ROUND = 4.0
 LOSSES = ("copper", "iron", "cable")
 
 
-@dataclass(frozen=True, slots=True)
-class Shown:
+class Shown(Struct, frozen=True):
     """Everything one painting needs."""
 
     cut: Cut

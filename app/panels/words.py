@@ -24,7 +24,7 @@ class Words(QLabel):
 
     def colour(self, ink: QColor) -> None:
         """Letters in this colour rather than that of the sheet."""
-        if ink != self._ink:
+        if self._ink is None or ink != self._ink:
             self._ink = ink
             self.update()
 
