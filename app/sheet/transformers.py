@@ -45,9 +45,9 @@ EXTREMES = (
     Extreme("excitation_max", "excitation", True, "Excitation, most"),
 )
 NOTE = (
-    "Pk, P0, uk and i0 are of one unit. Loading is that of the worse winding. Copper = Pk·(I/Ir)² of the "
-    "winding that gives out. S = √3·U·I of the fed one; excitation is its voltage over its rated voltage as "
-    "tapped."
+    "Pk, P0, uk and i0 are of one unit. Loading is that of the worse winding. Iron = P0·(U/Ur)² of the "
+    "winding of higher voltage, copper = Pk·(I/Ir)² of the other. S = √3·U·I of the fed one; excitation is "
+    "its voltage over its rated voltage as tapped."
 )
 
 
@@ -107,6 +107,9 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
     fed_cell = {"fed": node_cell(subject, fed, "u", case)}
     tapped = _tapped(t, 1 if state.forward else 2)
     rated = taps.windings(t, t.tap)[0 if state.forward else 1]
+    high = 1 if t.v1_v >= t.v2_v else 2
+    high_cell = {"high": node_cell(subject, t.start if high == 1 else t.end, "u", case)}
+    iron = f"{{units}}*{{p0}}*({{high}}/({_tapped(t, high)}))^2"
     return {
         "i1": Cell(state.start_a),
         "i2": Cell(state.end_a),
@@ -117,8 +120,8 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
             "{out}",
             {"out": node_cell(subject, out, "u", case)},
         ),
-        "iron": Cell(state.iron_kw * 1e3, f"{{units}}*{{p0}}*({{fed}}/({tapped}))^2", fed_cell),
-        "copper": Cell(state.copper_kw * 1e3, _copper(root, t, state.forward)),
+        "iron": Cell(state.iron_kw * 1e3, iron, high_cell),
+        "copper": Cell(state.copper_kw * 1e3, _copper(root, t, 3 - high)),
         "loss": Cell(state.loss_kw * 1e3, "{iron}+{copper}"),
         "excitation": Cell(fed_volts / rated * 100, f"{{fed}}/({tapped})*100", fed_cell),
         "most": Cell(subject.drawing.limits.loading_percent),
@@ -136,7 +139,6 @@ def _loading(root: str) -> str:
     return f"{root}*MAX({{v1}}*{{i1}},{{v2}}*{{i2}})/({{kva}}*1000*{{units}})*100"
 
 
-def _copper(root: str, t: Transformer, forward: bool) -> str:
-    """Load loss at the current of the winding that gives out, which carries no magnetising current."""
-    w = 2 if forward else 1
+def _copper(root: str, t: Transformer, w: int) -> str:
+    """Load loss at the current of the winding that carries no magnetising current."""
     return f"{{units}}*{{pk}}*({root}*{_tapped(t, w)}*{{i{w}}}/({{kva}}*1000*{{units}}))^2"
