@@ -4,13 +4,18 @@ import numpy as np
 
 from solver.forest import Forest
 from solver.load import drawn
+from solver.loose import conductors
 from solver.network import Complex, Index, Network, Real
-from solver.placed import Placed, fed_transformers
+from solver.placed import Placed
+from solver.reached import fed_conductors
 from solver.rounds import Trouble
 from solver.solution import Solution
 from solver.status import Status
 from solver.sweep import Sweep, times
 from solver.ties import add
+from solver.wires import EARTH
+
+NAN = complex(np.nan, np.nan)
 
 
 def answer(
@@ -39,11 +44,10 @@ def answer(
         if placed.joints is not None and tied is not None:
             add(placed.joints, tied, sweep.current)
         inflow = sweep.backward()
-        everywhere = _blank(network.node_count, voltage)
-        live = forest.place >= 0
-        everywhere[live] = voltage[forest.place[live]]
+        everywhere = _everywhere(network, forest, voltage)
         lines = _lines(network, forest, everywhere, inflow)
-        transformers = _transformers(network, forest, everywhere, inflow)
+        own = _own(network, placed, tied)
+        transformers = _transformers(network, forest, placed, everywhere, inflow, own)
         load_power, load_current = _loads(network, everywhere)
         at_shunt = everywhere[network.shunt_node]
         shunt_power = at_shunt * np.conj(times(network.shunt_y, at_shunt))
@@ -51,8 +55,15 @@ def answer(
         supplied = int(forest.depth_zone[1])
         source_current[forest.zone_source[:supplied]] = inflow[forest.zone_start[:supplied]]
         source_power = everywhere[network.source_node] * np.conj(source_current)
-        closure = _closure(source_power, load_power, (load_power, shunt_power, *lines[2:], *transformers[2:]))
+        earth_current, earth_loss = _earths(network, placed, tied, voltage)
+        taken = (load_power, shunt_power, earth_loss, *lines[2:], *transformers[2:])
+        closure = _closure(source_power, load_power, taken)
     closure[[s is not Status.SOLVED for s in status]] = np.nan
+    if network.wires is not None:
+        fed = fed_conductors(network, forest)
+        lost = conductors(network, network.wires, forest)
+        fed[forest.order, -1] |= (lost[0] | lost[1])[:, -1]
+        everywhere[~fed] = NAN
     return Solution(
         network=network,
         forest=forest,
@@ -73,7 +84,40 @@ def answer(
         line_charging=lines[3],
         transformer_series_loss=transformers[2],
         transformer_magnetising_loss=transformers[3],
+        earth_current=earth_current,
     )
+
+
+def _everywhere(network: Network, forest: Forest, voltage: Complex) -> Complex:
+    """(node, k, batch) volts of the nodes out of those of the places."""
+    everywhere = _blank(network.node_count, voltage)
+    if forest.tie_place.size:
+        live = forest.place >= 0
+        everywhere[live] = voltage[forest.place[live]]
+    else:
+        everywhere[forest.order] = voltage
+    return everywhere
+
+
+def _own(network: Network, placed: Placed, tied: Complex | None) -> Complex | None:
+    """(transformer, 2, batch) currents that fed sides draw of their own."""
+    if network.wires is None or placed.joints is None or tied is None:
+        return None
+    column = placed.joints.own
+    return np.where((column >= 0)[..., None], tied[column], 0)
+
+
+def _earths(
+    network: Network, placed: Placed, tied: Complex | None, voltage: Complex
+) -> tuple[Complex, Complex]:
+    """(earth, batch) current into each electrode and its loss."""
+    count = 0 if network.wires is None else network.wires.earth_node.size
+    current = np.full((count, voltage.shape[-1]), NAN)
+    if network.wires is not None and placed.joints is not None and tied is not None:
+        live = placed.joints.earth >= 0
+        current[live] = tied[placed.joints.earth[live]]
+        return current, np.abs(current) ** 2 * network.wires.earth_z
+    return current, current
 
 
 def _closure(source_power: Complex, load_power: Complex, taken: tuple[Complex, ...]) -> Real:
@@ -112,33 +156,47 @@ def _lines(
 
 
 def _transformers(
-    network: Network, forest: Forest, voltage: Complex, inflow: Complex
+    network: Network, forest: Forest, placed: Placed, voltage: Complex, inflow: Complex, own: Complex | None
 ) -> tuple[Complex, Complex, Complex, Complex]:
     supplied = int(forest.depth_zone[1])
     rows = forest.zone_transformer[supplied:]
-    ratio, series = (a[:, None, :] for a in fed_transformers(network, forest))
     secondary = inflow[forest.zone_start[supplied:-1]]
-    primary = secondary / np.conj(ratio)
-    forward = (forest.transformer_way[rows] > 0)[:, None, None]
+    side = (forest.transformer_way[rows] < 0).astype(int)
     first, last = voltage[network.transformer_from[rows]], voltage[network.transformer_to[rows]]
-    iron = network.transformer_y[rows, :, None, :]
-    into, out = iron[:, 0] * first, iron[:, 1] * last
-    count = network.transformer_from.size
-    tables = [_blank(count, voltage) for _ in range(4)]
+    if placed.gain is None or network.wires is None:
+        primary = secondary / np.conj(placed.ratio)
+        lost = np.abs(secondary) ** 2 * placed.series
+        iron = network.transformer_y[rows, :, None, :]
+        into, out = iron[:, 0] * first, iron[:, 1] * last
+    else:
+        units = network.wires.units
+        primary = times(np.swapaxes(placed.gain, 1, 2), secondary)
+        if own is not None:
+            primary = primary + np.einsum("rok,rob->rkb", units.own[rows, side], own[rows])
+        back = (side == 1)[:, None, None]
+        fed, far = np.where(back, last, first), np.where(back, first, last)
+        lost = fed * np.conj(primary) - far * np.conj(secondary)
+        into, out = times(units.iron[rows, 0], first), times(units.iron[rows, 1], last)
+    forward = (side == 0)[:, None, None]
+    tables = [_blank(network.transformer_from.size, voltage) for _ in range(4)]
     tables[0][rows] = np.where(forward, primary, -secondary) + into
     tables[1][rows] = np.where(forward, secondary, -primary) - out
-    tables[2][rows] = np.abs(secondary) ** 2 * series
+    tables[2][rows] = lost
     tables[3][rows] = first * np.conj(into) + last * np.conj(out)
     return tables[0], tables[1], tables[2].sum(axis=1), tables[3].sum(axis=1)
 
 
 def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:
     at = voltage.take(network.load_node, axis=0)
+    if network.wires is not None:
+        to = network.wires.load_to
+        far = np.take_along_axis(at, np.maximum(to, 0)[..., None], axis=1)
+        at = at - np.where((to == EARTH)[..., None], 0, far)
     if network.load_mix[:, 1:].any():
         power = drawn(network.load_power, network.load_mix[:, None, None, :], at, network.load_reference)
     else:
         power = np.where(np.isnan(at), at, network.load_power)
-    return power, np.conj(power / at)
+    return power, np.conj(np.divide(power, at, out=np.zeros_like(power + at), where=at != 0))
 
 
 def unsolved(network: Network, forest: Forest | Trouble, width: int) -> Solution:
@@ -151,7 +209,7 @@ def unsolved(network: Network, forest: Forest | Trouble, width: int) -> Solution
     """
 
     def blank(rows: int) -> Complex:
-        return np.full((rows, network.conductors, width), complex(np.nan, np.nan))
+        return np.full((rows, network.conductors, width), NAN)
 
     lines, units = network.line_from.size, network.transformer_from.size
     loads, sources = network.load_node.size, network.source_node.size
@@ -175,4 +233,5 @@ def unsolved(network: Network, forest: Forest | Trouble, width: int) -> Solution
         line_charging=blank(lines)[:, 0],
         transformer_series_loss=blank(units)[:, 0],
         transformer_magnetising_loss=blank(units)[:, 0],
+        earth_current=blank(0 if network.wires is None else network.wires.earth_node.size)[:, 0],
     )

@@ -1,11 +1,15 @@
 """Which places the ties join, conductor by conductor, and through what impedance."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 
+from solver.arrays import Complex, Index, Real
 from solver.forest import Forest
-from solver.network import Complex, Index, Real
+from solver.loose import conductors
+from solver.network import Network
+from solver.wires import Wires
 
 
 @dataclass(frozen=True, slots=True)
@@ -17,6 +21,8 @@ class Joints:
     column : (entry,) which unknown current
     weight : (entry,) float, +1 where the current leaves the network, -1 where it comes back
     z : (tie current, batch or 1) complex [ohm]
+    earth : (earth,) tie current of each electrode, -1 where it is dead
+    own : (transformer, 2) tie currents that its fed side draws alone, -1 where there is none
     """
 
     place: Index
@@ -24,27 +30,69 @@ class Joints:
     column: Index
     weight: Real
     z: Complex
+    earth: Index
+    own: Index
 
     def take(self, points: Index) -> "Joints":
         """The same with some operating points only."""
         return self if self.z.shape[-1] == 1 else replace(self, z=self.z.take(points, axis=-1))
 
 
-def closing(forest: Forest, conductors: int) -> Joints | None:
-    """The ties that close rounds: each conductor of a cut end joins the node it was cut from.
+Entry = tuple[int, int, float]  # place, conductor, weight
 
-    forest : Forest
-    conductors : k
-    Returns : Joints, None where no round is closed
+
+def joints_of(network: Network, forest: Forest) -> Joints | None:
+    """All ties of a network: cut ends, electrodes, currents that transformers draw of their own.
+
+    network : Network
+    forest : Forest, of that network
+    Returns : Joints, None where there is none
     """
-    count = forest.tie_place.size * conductors
-    if not count:
+    wires = network.wires
+    columns: list[tuple[list[Entry], Complex]] = _closing(network, forest)
+    earth = np.full(0 if wires is None else wires.earth_node.size, -1)
+    own = np.full((network.transformer_from.size, 2), -1)
+    if wires is not None:
+        for row in np.flatnonzero(forest.place[wires.earth_node] >= 0).tolist():
+            earth[row] = len(columns)
+            held = int(forest.place[wires.earth_node[row]]), int(wires.earth_conductor[row])
+            columns.append(([(*held, 1.0)], wires.earth_z[row]))
+        _add_own(wires, forest, own, columns)
+    if not columns:
         return None
-    place = np.concatenate((forest.tie_place, forest.place[forest.tie_node])).repeat(conductors)
-    return Joints(
-        place=place,
-        conductor=np.tile(np.arange(conductors), place.size // conductors),
-        column=np.tile(np.arange(count), 2),
-        weight=np.repeat((1.0, -1.0), count),
-        z=np.zeros((count, 1), dtype=np.complex128),
+    entries = [(*entry, column) for column, (found, _) in enumerate(columns) for entry in found]
+    place, conductor, weight, column = (np.array([e[i] for e in entries]) for i in range(4))
+    width = max(z.shape[-1] for _, z in columns)
+    z = np.array([np.broadcast_to(z, width) for _, z in columns], dtype=np.complex128)
+    return Joints(place, conductor, column, weight.astype(float), z, earth, own)
+
+
+def _closing(network: Network, forest: Forest) -> list[tuple[list[Entry], Complex]]:
+    """Each conductor of a cut end joins the node it was cut from."""
+    if not forest.tie_place.size:
+        return []
+    if network.wires is None:
+        has = np.ones((forest.order.size, network.conductors), dtype=bool)
+    else:
+        has = conductors(network, network.wires, forest)[0]
+    nothing = np.zeros(1, dtype=np.complex128)
+    ends: Sequence[tuple[int, int]] = list(
+        zip(forest.tie_place.tolist(), forest.place[forest.tie_node].tolist(), strict=True)
     )
+    return [
+        ([(cut, i, 1.0), (whole, i, -1.0)], nothing)
+        for cut, whole in ends
+        for i in np.flatnonzero(has[cut]).tolist()
+    ]
+
+
+def _add_own(wires: Wires, forest: Forest, own: Index, columns: list[tuple[list[Entry], Complex]]) -> None:
+    supplied = int(forest.depth_zone[1])
+    for zone in range(supplied, forest.zone_transformer.size):
+        row, place = int(forest.zone_transformer[zone]), int(forest.zone_fed[zone])
+        side = 0 if forest.transformer_way[row] > 0 else 1
+        for which, how in enumerate(wires.units.own[row, side]):
+            if how.any():
+                own[row, which] = len(columns)
+                entries = [(place, int(i), float(how[i])) for i in np.flatnonzero(how)]
+                columns.append((entries, wires.units.own_z[row, side, which]))

@@ -3,12 +3,12 @@
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-Complex = NDArray[np.complex128]
-Real = NDArray[np.float64]
-Index = NDArray[np.intp]
-Flag = NDArray[np.bool_]
+from solver.arrays import Complex as Complex
+from solver.arrays import Flag as Flag
+from solver.arrays import Index as Index
+from solver.arrays import Real as Real
+from solver.wires import Wires
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,6 +38,9 @@ class Network:
     load_mix : (load, 3) float, shares of constant power, constant current, constant impedance
     shunt_node : (shunt,)
     shunt_y : (shunt, k, k, B or 1) complex [S] to earth or neutral
+    wires : Wires where k > 1: three phases and the neutral, each conductor on its own, volts to earth.
+        Its `units` stand in for transformer_z and transformer_y; transformer_ratio is then that between the
+        phases of balanced volts
     """
 
     node_count: int
@@ -59,11 +62,13 @@ class Network:
     load_mix: Real
     shunt_node: Index
     shunt_y: Complex
+    wires: Wires | None = None
 
     @property
     def batch(self) -> int:
         """Number of operating points: the longest last axis."""
-        return max(getattr(self, name).shape[-1] for name in PHYSICAL)
+        own = max(getattr(self, name).shape[-1] for name in PHYSICAL)
+        return own if self.wires is None else max(own, self.wires.batch)
 
     def check(self) -> None:
         """Holds every array against its shape, its bounds and the number of nodes.
@@ -87,10 +92,16 @@ class Network:
         power, current, impedance = self.load_mix.T
         if not np.abs(power + current + impedance - 1).max(initial=0) < 1e-9:
             raise ValueError("load_mix has a row whose shares do not sum to 1")
-        if not (self.load_reference.min(initial=np.inf) > 0 and np.all(self.source_voltage)):
+        held = self.source_voltage if self.wires is None else self.source_voltage.any(axis=1)
+        if not (self.load_reference.min(initial=np.inf) > 0 and np.all(held)):
             raise ValueError("load_reference and source_voltage must not hold zeros")
         if not np.all(self.transformer_ratio):
             raise ValueError("transformer_ratio must not hold zeros")
+        if self.wires is not None:
+            ends = {"line": "line_from", "transformer": "transformer_from"}
+            ends |= {"source": "source_node", "load": "load_node"}
+            counts = {what: getattr(self, name).size for what, name in ends.items()}
+            self.wires.check(self.conductors, counts, batch)
 
 
 PHYSICAL = {  # array: (array with as many rows, axes between the rows and the batch)

@@ -1,12 +1,16 @@
 """The rows of a network put in the order of the sweep: one row a place, loads gathered at their nodes."""
 
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
 from solver.forest import Forest
-from solver.joints import Joints, closing
+from solver.hung import Hung, hang
+from solver.joints import Joints, joints_of
+from solver.loose import Loose, find_loose
 from solver.network import Complex, Index, Network, Real
+from solver.wires import Wires
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,9 +24,12 @@ class Placed:
     power : (live, k, batch) complex [VA] conjugate of the constant-power part
     current : (live, k, batch) complex [A] conjugate of the constant-current part; None where there is none
     ratio : (fed zone, 1, batch) complex, feeding side over fed side, of the transformer of each fed zone
-    series : (fed zone, 1, batch) complex [ohm] at the fed side
+    series : (fed zone, 1, batch) complex [ohm] at the fed side; (fed zone, k, k, batch) beside a gain
+    gain : (fed zone, k, k, batch) complex, fed volts out of feeding volts of two-ports; None where k = 1
     level : (zone, batch) float [V] no-load voltage of each zone
     joints : Joints of the ties, None where there is none
+    loose : Loose, None where everything is held
+    hung : Hung, loads between conductors; None where there are none, or k = 1
     """
 
     root: Complex
@@ -34,15 +41,21 @@ class Placed:
     series: Complex
     level: Real
     joints: Joints | None
+    loose: Loose | None = None
+    hung: Hung | None = None
+    gain: Complex | None = None
 
     def take(self, points: Index) -> "Placed":
         """The same with some operating points only."""
 
-        names = ("root", "z", "y", "power", "current", "ratio", "series", "level")
+        names = ("root", "z", "y", "power", "current", "ratio", "series", "level", "gain")
         held = {name: getattr(self, name) for name in names}
         wide = {name: a for name, a in held.items() if a is not None and a.shape[-1] > 1}
-        joints = self.joints and self.joints.take(points)
-        return replace(self, joints=joints, **{name: a.take(points, axis=-1) for name, a in wide.items()})
+        parts: dict[str, Any] = {
+            "joints": self.joints and self.joints.take(points),
+            "hung": self.hung and self.hung.take(points),
+        }
+        return replace(self, **parts, **{name: a.take(points, axis=-1) for name, a in wide.items()})
 
 
 def put(network: Network, forest: Forest) -> Placed:
@@ -55,20 +68,31 @@ def put(network: Network, forest: Forest) -> Placed:
     supplied = int(forest.depth_zone[1])
     root = network.source_voltage[forest.zone_source[:supplied]]
     ratio, series = fed_transformers(network, forest)
-    power, current, load_y = _loads(network, forest)
+    gain, hung = None, None
+    if network.wires is None:
+        power, current, load_y = _loads(network, forest)
+        series = series[:, None, :]
+        stamps = None if load_y is None else (np.arange(forest.order.size), _diagonal(load_y))
+    else:
+        hung, stamps = hang(network, forest)
+        power, current = np.zeros((0, network.conductors, 1), dtype=np.complex128), None
+        gain, series = fed_ports(network.wires, forest)
     lines = network.line_z if network.line_z.shape[0] else np.zeros((1, *network.line_z.shape[1:]), complex)
     z = lines[forest.feeder]
     z[forest.zone_start[:-1]] = 0
     return Placed(
         root=root,
         z=z,
-        y=_admittance(network, forest, load_y),
+        y=_admittance(network, forest, stamps),
         power=power,
         current=current,
         ratio=ratio[:, None, :],
-        series=series[:, None, :],
+        series=series,
         level=np.abs(_phasors(forest, np.abs(root).max(axis=1), ratio)),
-        joints=closing(forest, network.conductors),
+        joints=joints_of(network, forest),
+        loose=None if network.wires is None else find_loose(network, network.wires, forest),
+        hung=hung,
+        gain=gain,
     )
 
 
@@ -83,6 +107,18 @@ def fed_transformers(network: Network, forest: Forest) -> tuple[Complex, Complex
     back = (forest.transformer_way[rows] < 0)[:, None]
     a, z = network.transformer_ratio[rows], network.transformer_z[rows]
     return np.where(back, 1 / a, a), np.where(back, z * np.abs(a) ** 2, z)
+
+
+def fed_ports(wires: Wires, forest: Forest) -> tuple[Complex, Complex]:
+    """Gain and series impedance of every fed zone's transformer as it is fed.
+
+    wires : Wires
+    forest : Forest
+    Returns : (fed zone, k, k, batch) complex twice, the second in [ohm]
+    """
+    rows = forest.zone_transformer[int(forest.depth_zone[1]) :]
+    side = (forest.transformer_way[rows] < 0).astype(int)
+    return wires.units.gain[rows, side], wires.units.series[rows, side]
 
 
 def no_load_phasor(forest: Forest, placed: Placed) -> Complex:
@@ -136,11 +172,11 @@ def gather(where: Index, values: Complex | Real, size: int) -> Complex:
     return total
 
 
-def _admittance(network: Network, forest: Forest, load_y: Complex | None) -> Complex | None:
+def _admittance(network: Network, forest: Forest, stamps: tuple[Index, Complex] | None) -> Complex | None:
     k, live = network.conductors, forest.order.size
     parts: list[tuple[Index, Complex]] = []
-    if load_y is not None and load_y.any():
-        parts.append((np.arange(live), _diagonal(load_y)))
+    if stamps is not None and stamps[1].any():
+        parts.append(stamps)
     shunts = np.flatnonzero(forest.place[network.shunt_node] >= 0)
     if shunts.size:
         parts.append((forest.place[network.shunt_node[shunts]], network.shunt_y[shunts]))
@@ -151,10 +187,12 @@ def _admittance(network: Network, forest: Forest, load_y: Complex | None) -> Com
         parts.append((forest.place[network.line_to[lines]], half))
     live_units = np.flatnonzero(forest.transformer_way)
     for side, ends in enumerate((network.transformer_from, network.transformer_to)):
-        iron = network.transformer_y[live_units, side]
+        if network.wires is not None:
+            iron = network.wires.units.iron[live_units, side]
+        else:
+            iron = _diagonal(np.repeat(network.transformer_y[live_units, side, None, :], k, axis=1))
         if iron.any():
-            matrix = _diagonal(np.repeat(iron[:, None, :], k, axis=1))
-            parts.append((forest.place[ends[live_units]], matrix))
+            parts.append((forest.place[ends[live_units]], iron))
     if not parts:
         return None
     total = gather(*parts[0], live)

@@ -42,14 +42,16 @@ class Trouble:
     loops : each a Loop without any impedance, whose current is not determined
     joined : each a Joined pair of supplies with no impedance in between
     groups : each a Loop or Joined whose transformers, all in all, turn the phases
+    unfed : rows of loads on a conductor that is not there, or that nothing feeds
     """
 
     loops: tuple[Loop, ...] = ()
     joined: tuple[Joined, ...] = ()
     groups: tuple[Loop | Joined, ...] = ()
+    unfed: tuple[int, ...] = ()
 
     def __bool__(self) -> bool:
-        return bool(self.loops or self.joined or self.groups)
+        return bool(self.loops or self.joined or self.groups or self.unfed)
 
 
 def branch_ends(network: Network) -> Ends:

@@ -73,7 +73,7 @@ class _Run:
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
         self.iterations = np.full(width, MOST)
         self.anderson: Anderson | None = None
-        self.ties = None if placed.joints is None else Ties(placed, forest, placed.joints)
+        self.ties = None if placed.joints is None and placed.loose is None else Ties(placed, forest)
         self.tied = None if self.ties is None else np.full((len(self.ties.joints.z), width), NAN)
         self.current = self.tied
         self.before: Complex | None = None  # the step before, at every other sweep
@@ -96,7 +96,7 @@ class _Run:
             for count in range(1, MOST + 1):
                 self.sweep(self.voltage, self.image)
                 if self.ties is not None:
-                    self.current = self.ties.correct(self.image)
+                    self.current = self.ties.correct(self.image, self.voltage, self.sweep.flow)
                 change = self._change()
                 if not (change.min() >= CLOSE and change.max() < np.inf):
                     stay = (change >= CLOSE) & np.isfinite(change)
@@ -150,7 +150,7 @@ class _Run:
         if self.anderson is not None:
             self.anderson.keep(rows)
         if self.ties is not None:
-            self.ties.keep(rows)
+            self.ties.keep(rows, self.placed)
 
     def _extrapolate(self, count: int) -> None:
         """Goes to the end of the geometric series that two sweeps in a row begin.
@@ -180,15 +180,24 @@ class _Run:
         guess = self.anderson.next(image, step)
         wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
         if self._can_collapse():
-            wild |= (np.abs(guess) * self.anderson.weight).min(axis=(0, 1)) < LOW
+            wild |= self._lowest(guess) < LOW
         self.best = np.minimum(self.best, change)
         if wild.any():
             self.anderson.restart(np.flatnonzero(wild))
             guess[..., wild] = image[..., wild]
         return guess
 
+    def _lowest(self, guess: Complex) -> Real:
+        """(batch,) lowest voltage at any place, or across any load, over the no-load voltage there."""
+        hung, level = self.placed.hung, self.placed.level[self.forest.zone]
+        if hung is None:
+            return np.asarray((np.abs(guess) / level[:, None, :]).min(axis=(0, 1)))
+        return np.asarray((np.abs(hung.across(guess)) / level[hung.place]).min(axis=0))
+
     def _can_collapse(self) -> bool:
         """Loads that hold their power or current can ask too much; impedances always leave an answer."""
+        if self.placed.gain is not None:
+            return self.placed.hung is not None
         return self.placed.current is not None or bool(self.placed.power.any())
 
     def _judge(self) -> None:

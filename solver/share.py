@@ -74,7 +74,8 @@ def pick(network: Network, points: Index) -> Network:
     Returns : Network
     """
     wide = {n: getattr(network, n) for n in PHYSICAL if getattr(network, n).shape[-1] > 1}
-    return replace(network, **{n: a[..., points] for n, a in wide.items()})
+    wires = network.wires and network.wires.take(points)
+    return replace(network, wires=wires, **{n: a[..., points] for n, a in wide.items()})
 
 
 def scaled(network: Network, shares: Real) -> Network:

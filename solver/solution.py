@@ -33,6 +33,7 @@ class Solution:
     line_charging : (line, batch) complex [VA] drawn by the admittance at both ends, V² conj(Y)
     transformer_series_loss : (transformer, batch) complex [VA], I² Z; its real part is the copper loss
     transformer_magnetising_loss : (transformer, batch) complex [VA], V² conj(Y); real part the iron loss
+    earth_current : (earth, batch) complex [A] into each electrode
     """
 
     network: Network
@@ -54,6 +55,7 @@ class Solution:
     line_charging: Complex
     transformer_series_loss: Complex
     transformer_magnetising_loss: Complex
+    earth_current: Complex
 
     @cached_property
     def solved(self) -> bool:

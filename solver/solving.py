@@ -10,6 +10,7 @@ from solver.rounds import Trouble
 from solver.settle import settle
 from solver.solution import Solution
 from solver.status import Status
+from solver.sweep import times
 from solver.trouble import find_trouble
 
 OPEN = 1e-6  # closure from which an answer is none
@@ -65,6 +66,9 @@ def no_load(placed: Placed, forest: Forest, k: int, width: int) -> Complex:
     zone = np.empty((forest.zone_source.size, k, width), dtype=np.complex128)
     zone[:supplied] = placed.root
     for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
-        above = zone[forest.zone[forest.zone_fed[start:stop]]]
-        zone[start:stop] = above / placed.ratio[start - supplied : stop - supplied]
+        above, fed = zone[forest.zone[forest.zone_fed[start:stop]]], slice(start - supplied, stop - supplied)
+        if placed.gain is None:
+            zone[start:stop] = above / placed.ratio[fed]
+        else:
+            zone[start:stop] = times(placed.gain[fed], above)
     return zone[forest.zone]

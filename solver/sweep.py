@@ -56,6 +56,9 @@ class Sweep:
         self.squared, self.spare = (np.empty((rows, k, width)) for _ in range(2))
         self.inverse = np.zeros((rows, k, width), np.complex128)
         self.stages = [self._stage(forest, depth) for depth in range(forest.depth_zone.size - 1)]
+        self.flow: Complex | None = None  # that enters what nothing holds
+        gain = placed.gain
+        self.gain_back = None if gain is None else np.swapaxes(gain, 1, 2)
         self.secondary = np.empty((forest.zone_source.size, k, width), np.complex128)
 
     def __call__(self, voltage: Complex, out: Complex) -> Complex:
@@ -67,6 +70,9 @@ class Sweep:
         """
         self.currents(voltage)
         self.backward()
+        if self.placed.loose is not None:
+            self.flow = self.placed.loose.along(self.inflow)
+        self.drops()
         return self.forward(out)
 
     def currents(self, voltage: Complex) -> Complex:
@@ -77,8 +83,13 @@ class Sweep:
         voltage : (live, k, batch) complex [V]
         Returns : (live, k, batch) complex [A]
         """
-        for part in self.parts:
-            self._currents(part, voltage[part], self.current[part])
+        if self.placed.gain is not None:
+            self.current[...] = 0
+            if self.placed.hung is not None:
+                self.placed.hung.add(voltage, self.current)
+        else:
+            for part in self.parts:
+                self._currents(part, voltage[part], self.current[part])
         if self.placed.y is not None and self.placed.y.shape[1] > 1:
             self.current += times(self.placed.y, voltage)
         return self.current
@@ -110,16 +121,24 @@ class Sweep:
             np.subtract(stage.inflow, stage.before, stage.inflow)
             if stage.hung.size:
                 self.secondary[stage.zones] = secondary = self.inflow[stage.roots]
-                np.add.at(self.current, stage.hung, secondary / np.conj(self.placed.ratio[stage.fed]))
+                np.add.at(self.current, stage.hung, self._primary(stage, secondary))
         return self.inflow
 
+    def _primary(self, stage: Stage, secondary: Complex) -> Complex:
+        if self.gain_back is None:
+            return secondary / np.conj(self.placed.ratio[stage.fed])
+        return times(self.gain_back[stage.fed], secondary)
+
+    def drops(self) -> None:
+        """Turns the currents into every place into the drops along their feeders."""
+        times(self.placed.z, self.inflow, self.inflow)
+
     def forward(self, out: Complex) -> Complex:
-        """Voltage at every place from the currents into them, which turn into drops.
+        """Voltage at every place from the drops.
 
         out : (live, k, batch) complex [V], which is filled
         Returns : out
         """
-        times(self.placed.z, self.inflow, self.inflow)
         for stage in self.stages:
             stage.before[...] = stage.inflow
             np.subtract.at(stage.sums_flat, stage.end_flat, stage.inflow_flat)
@@ -132,6 +151,9 @@ class Sweep:
         """(zone, k, batch) voltage at the roots of a depth: the supply's, or Vs = Vp / a - Z Is."""
         if not stage.hung.size:
             return self.placed.root
+        if self.placed.gain is not None:
+            opened = times(self.placed.gain[stage.fed], voltage[stage.hung])
+            return opened - times(self.placed.series[stage.fed], self.secondary[stage.zones])
         through = self.placed.series[stage.fed] * self.secondary[stage.zones]
         return voltage[stage.hung] / self.placed.ratio[stage.fed] - through
 

@@ -1,16 +1,19 @@
-"""Compensation: the currents of the ties that close rounds over the trees, found with every sweep."""
+"""Compensation: tie currents that close rounds over the trees, and volts of what nothing holds."""
 
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 
+from solver.arrays import Complex, Index, Real
 from solver.forest import Forest
 from solver.joints import Joints
-from solver.network import Complex, Index, Real
+from solver.loose import Loose
 from solver.placed import Placed
 from solver.sweep import Sweep
 
 NOISE = 1e-14  # of the volts at both ends, below which their difference is rounding
+CUT = 1e-12  # of the largest singular value, below which a direction is not determined
 
 
 class Ties:
@@ -18,87 +21,160 @@ class Ties:
 
     The trees turn drawn currents into volts, V = E - T I. With the tie currents drawn as well, V falls by
     T C x, and the ties ask for Cᵀ V = z x, so that (z + Cᵀ T C) x = Cᵀ V_open = u. The columns of T C come
-    from one sweep whose batch is the ties.
+    from one sweep whose batch is the ties. What nothing holds moves by W f, so that no current enters that
+    way: F + Wᵀ C x + J f = 0, with J the slope of all loads and admittances, by Newton.
 
-    placed : Placed, with joints
+    placed : Placed, with joints or something loose
     forest : Forest
     Source : Shirmohammadi, Hong, Semlyen, Luo, A compensation-based power flow method for weakly meshed
         distribution and transmission networks, IEEE Trans. Power Systems 3 (1988) 753-762
     """
 
-    def __init__(self, placed: Placed, forest: Forest, joints: Joints) -> None:
-        self.joints, self.both = joints, replace(joints, weight=np.abs(joints.weight))
-        self.drop = unit_drops(placed, forest, joints)
+    def __init__(self, placed: Placed, forest: Forest) -> None:
+        self.placed = placed
+        self.joints = joints = placed.joints or empty(placed)
+        self.both = replace(joints, weight=np.abs(joints.weight))
+        self.drop, self.lift = responses(placed, forest, joints, placed.loose)
         matrix = np.moveaxis(gathered(joints, self.drop), -1, 0)
         diagonal = np.arange(matrix.shape[1])
-        matrix = np.broadcast_to(matrix, (max(len(matrix), joints.z.shape[-1]), *matrix.shape[1:])).copy()
-        matrix[:, diagonal, diagonal] += joints.z.T
-        self.inverse = np.linalg.inv(matrix)  # (batch or 1, tie, tie)
+        width = max(len(matrix), joints.z.shape[-1])
+        self.matrix = np.broadcast_to(matrix, (width, *matrix.shape[1:])).copy()  # (batch or 1, tie, tie)
+        self.matrix[:, diagonal, diagonal] += joints.z.T
+        self.inverse = self._inverse()
 
-    def correct(self, voltage: Complex) -> Complex:
-        """Finds the tie currents and takes the drops they make off the volts of the open trees.
+    def _inverse(self) -> Complex:
+        if self.drop.shape[1] == 1:
+            return np.asarray(np.linalg.inv(self.matrix))
+        scale = _scale(np.abs(np.einsum("btt->bt", self.matrix)))
+        scaled = self.matrix * scale[:, :, None] * scale[:, None, :]
+        inverse = np.asarray(np.linalg.pinv(scaled, CUT), dtype=np.complex128)
+        return inverse * scale[:, :, None] * scale[:, None, :]
+
+    def correct(self, voltage: Complex, before: Complex, flow: Complex | None) -> Complex:
+        """Finds the tie currents and puts what they change on the volts of the open trees.
 
         voltage : (live, k, batch) complex [V] of the open trees, which is changed
+        before : (live, k, batch) complex [V] whose currents the trees carried
+        flow : (loose, batch) complex [A] that entered what nothing holds; None where everything is held
         Returns : (tie current, batch) complex [A]
         """
+        loose = self.placed.loose
+        if loose is not None:
+            size = (loose.way**2).sum(axis=1)[:, None]
+            _apply(self.lift, (loose.along(before) - loose.along(voltage)) / size, voltage)
         opened = gathered(self.joints, voltage)
         opened[np.abs(opened) < NOISE * gathered(self.both, np.abs(voltage)).real] = 0
-        current = np.einsum("btu,ub->tb", np.broadcast_to(self.inverse, self._wide(opened)), opened)
-        if self.drop.shape[-1] == 1:
-            live, k, width = voltage.shape
-            voltage -= (self.drop[..., 0].reshape(live * k, -1) @ current).reshape(live, k, width)
+        if loose is None or flow is None:
+            inverse = np.broadcast_to(self.inverse, (opened.shape[-1], *self.inverse.shape[1:]))
+            current = np.einsum("btu,ub->tb", inverse, opened)
         else:
-            voltage -= np.einsum("pktb,tb->pkb", self.drop, current)
+            current, moved = self._newton(before, opened, flow)
+            _apply(self.lift, moved, voltage)
+        _apply(-self.drop, current, voltage)
         return current
 
-    def _wide(self, opened: Complex) -> tuple[int, ...]:
-        return opened.shape[-1], *self.inverse.shape[1:]
+    def _newton(self, before: Complex, opened: Complex, flow: Complex) -> tuple[Complex, Complex]:
+        """Tie currents and moves of what is loose together, real and imaginary parts apart."""
+        width, ties, count = before.shape[-1], opened.shape[0], opened.shape[0] + flow.shape[0]
+        joined = np.moveaxis(gathered(self.joints, self.lift), -1, 0)  # Cᵀ W
+        straight, turned = np.zeros((2, width, count, count), dtype=np.complex128)
+        straight[:, :ties, :ties] = self.matrix
+        straight[:, :ties, ties:] = -joined
+        straight[:, ties:, :ties] = np.swapaxes(joined, 1, 2)
+        straight[:, ties:, ties:], turned[:, ties:, ties:] = self._slopes(before)
+        diagonal = np.abs(np.einsum("btt->bt", straight)) + np.abs(np.einsum("btt->bt", turned))
+        scale = _scale(diagonal)
+        straight, turned = (a * scale[:, :, None] * scale[:, None, :] for a in (straight, turned))
+        plus, minus = straight + turned, straight - turned
+        real = np.block([[plus.real, -minus.imag], [plus.imag, minus.real]])
+        asked = (np.concatenate((opened, -flow)).T * scale)[:, :, None]
+        inverse = np.linalg.pinv(real, CUT)
+        found = (inverse @ np.concatenate((asked.real, asked.imag), axis=1))[:, :, 0]
+        solved = ((found[:, :count] + 1j * found[:, count:]) * scale).T
+        return solved[:ties], solved[ties:]
 
-    def keep(self, points: Index) -> None:
+    def _slopes(self, before: Complex) -> tuple[Complex, Complex]:
+        """(batch, loose, loose) how the flow into what is loose follows its moves, and their conjugates."""
+        width, lift = before.shape[-1], self.lift
+        count = lift.shape[2]
+        straight, turned = np.zeros((2, count, count, width), dtype=np.complex128)
+        if self.placed.y is not None:
+            drawn = np.einsum("pijb,pjfb->pifb", self.placed.y, lift)
+            straight += np.einsum("pigb,pifb->gfb", lift, drawn)
+        if self.placed.hung is not None:
+            a, b = self.placed.hung.slopes(before)
+            across = self.placed.hung.across(lift)
+            straight += np.einsum("egb,eb,efb->gfb", across, a, across)
+            turned += np.einsum("egb,eb,efb->gfb", across, b, np.conj(across))
+        return np.moveaxis(straight, -1, 0), np.moveaxis(turned, -1, 0)
+
+    def keep(self, points: Index, placed: Placed) -> None:
         """Goes on with some operating points only."""
+        self.placed = placed
         if self.drop.shape[-1] > 1:
-            self.drop = self.drop.take(points, axis=-1)
+            self.drop, self.lift = (a.take(points, axis=-1) for a in (self.drop, self.lift))
         if len(self.inverse) > 1:
-            self.inverse = self.inverse.take(points, axis=0)
+            self.inverse, self.matrix = self.inverse[points], self.matrix[points]
 
 
-def unit_drops(placed: Placed, forest: Forest, joints: Joints) -> Complex:
-    """How far each tie current of 1 A lowers the volts of every place.
+def _scale(diagonal: Real) -> Real:
+    """1 / √ of what is not nought."""
+    return 1 / np.sqrt(np.where(diagonal > 0, diagonal, 1.0))
+
+
+def _apply(response: Complex, causes: Complex, voltage: Complex) -> None:
+    """Adds (live, k, cause, batch or 1) responses to (cause, batch) causes."""
+    live, k, width = voltage.shape
+    if response.shape[-1] == 1:
+        voltage += (response[..., 0].reshape(live * k, -1) @ causes).reshape(live, k, width)
+    else:
+        voltage += np.einsum("pktb,tb->pkb", response, causes)
+
+
+def empty(placed: Placed) -> Joints:
+    """No tie at all.
+
+    placed : Placed
+    Returns : Joints without a tie current
+    """
+    none = np.zeros(0, dtype=np.intp)
+    z, own = np.zeros((0, 1), dtype=np.complex128), np.zeros((placed.ratio.shape[0], 2), dtype=np.intp) - 1
+    return Joints(none, none, none, np.zeros(0), z, none, own)
+
+
+def responses(placed: Placed, forest: Forest, joints: Joints, loose: Loose | None) -> tuple[Complex, Complex]:
+    """How far 1 A of each tie lowers the volts of every place, and what 1 V of each loose way raises.
 
     placed : Placed
     forest : Forest
     joints : Joints
-    Returns : (live, k, tie current, batch) complex [ohm]; batch is 1 where impedances are alike
+    loose : Loose or None
+    Returns : (live, k, tie current, batch) complex [ohm]; (live, k, loose, batch) complex; batch is 1 where
+        impedances and ratios are alike
     """
-    count = joints.z.shape[0]
+    ties, ways = joints.z.shape[0], 0 if loose is None else loose.place.size
     width = max(placed.z.shape[-1], placed.ratio.shape[-1], placed.series.shape[-1])
-
-    def tiled(array: Complex) -> Complex:
-        return array if array.shape[-1] == 1 else np.tile(array, count)
-
-    bare = replace(
-        placed,
-        root=np.zeros((*placed.root.shape[:2], 1), dtype=np.complex128),
-        z=tiled(placed.z),
-        ratio=tiled(placed.ratio),
-        series=tiled(placed.series),
-    )
-    sweep = Sweep(bare, forest, count * width)
-    draw(joints, np.repeat(np.eye(count), width, axis=1), sweep.current)
+    sweep = Sweep(_bare(placed, ties + ways), forest, (ties + ways) * width)
+    shape = (*sweep.current.shape[:2], ties + ways, width)
+    sweep.current[...] = 0
+    drawn = sweep.current.reshape(shape)
+    np.add.at(drawn, (joints.place, joints.conductor, joints.column), joints.weight[:, None])
     sweep.backward()
-    volts = sweep.forward(np.empty_like(sweep.current))
-    return -volts.reshape(*volts.shape[:2], count, width)
+    sweep.drops()
+    if loose is not None:
+        sweep.inflow.reshape(shape)[loose.place, :, ties + np.arange(ways)] -= loose.way[..., None]
+    volts = sweep.forward(np.empty_like(sweep.current)).reshape(shape)
+    return -volts[:, :, :ties], volts[:, :, ties:]
 
 
-def draw(joints: Joints, current: Complex, out: Complex) -> None:
-    """Puts tie currents at their places as drawn currents.
+def _bare(placed: Placed, count: int) -> Placed:
+    """The same trees without sources, as many times side by side."""
 
-    joints : Joints
-    current : (tie current, batch) complex [A]
-    out : (live, k, batch) complex [A], is overwritten
-    """
-    out[...] = 0
-    add(joints, current, out)
+    def tiled(array: Complex | None) -> Complex | None:
+        return array if array is None or array.shape[-1] == 1 else np.tile(array, count)
+
+    parts: dict[str, Any] = {name: tiled(getattr(placed, name)) for name in ("z", "ratio", "series", "gain")}
+    return replace(placed, root=np.zeros((*placed.root.shape[:2], 1), dtype=np.complex128), **parts)
 
 
 def add(joints: Joints, current: Complex, out: Complex) -> None:

@@ -7,6 +7,7 @@ import numpy as np
 from solver.forest import Forest
 from solver.network import Complex, Flag, Network
 from solver.placed import Placed, no_load_phasor
+from solver.reached import unfed_loads
 from solver.rounds import Joined, Loop, Trouble, branch_ends, neighbours, round_of, spanning
 
 MOST = 200  # rounds that are worth listing
@@ -33,21 +34,23 @@ def rounds(network: Network, forest: Forest, ties: Iterable[int] | None = None) 
 
 
 def find_trouble(network: Network, forest: Forest, placed: Placed) -> Trouble:
-    """What makes the rounds of a meshed network impossible.
+    """What makes a network impossible to solve.
 
     network : Network
     forest : Forest, of that network
     placed : Placed, of both
-    Returns : Trouble, empty where every round can be solved
+    Returns : Trouble, empty where it can be solved
     Source : common practice, no source
     """
+    unfed = tuple(unfed_loads(network, forest).tolist())
     if not forest.tie_place.size:
-        return Trouble()
+        return Trouble(unfed=unfed)
     bare = _bare_rounds(network)
     return Trouble(
         tuple(r for r in bare if isinstance(r, Loop)),
         tuple(r for r in bare if isinstance(r, Joined)),
         _turned(network, forest, placed),
+        unfed,
     )
 
 

@@ -1,0 +1,100 @@
+"""What is not reached: conductors that no supply feeds, and sides that have lost their earth reference."""
+
+from collections.abc import Iterable
+
+import numpy as np
+
+from solver.arrays import Flag, Index
+from solver.forest import Forest
+from solver.joints import joints_of
+from solver.loose import conductors
+from solver.network import Network
+from solver.rounds import neighbours
+from solver.wires import EARTH
+
+
+def fed_conductors(network: Network, forest: Forest) -> Flag:
+    """Which conductors of which node a supply reaches, through lines, windings and their star points.
+
+    network : Network, with wires
+    forest : Forest, of that network
+    Returns : (node, k) bool; without wires all conductors of live nodes
+    """
+    wires, k = network.wires, network.conductors
+    live = forest.place >= 0
+    if wires is None:
+        return np.repeat(live[:, None], k, axis=1)
+    by, here = conductors(network, wires, forest)
+    if not (here & ~by).any():
+        return (by | here)[forest.place] & live[:, None]
+    fed = np.zeros((network.node_count, k), dtype=bool)
+    fed[network.source_node] = wires.source_has
+    units = wires.units.has & (forest.transformer_way != 0)[:, None, None]
+    while True:
+        before = np.count_nonzero(fed)
+        both = wires.line_has & (fed[network.line_from] | fed[network.line_to])
+        np.logical_or.at(fed, network.line_from, both)
+        np.logical_or.at(fed, network.line_to, both)
+        through = (fed[network.transformer_from] & units[:, 0]) | (fed[network.transformer_to] & units[:, 1])
+        any_ = through.any(axis=1)[:, None]
+        np.logical_or.at(fed, network.transformer_from, any_ & units[:, 0])
+        np.logical_or.at(fed, network.transformer_to, any_ & units[:, 1])
+        if np.count_nonzero(fed) == before:
+            return fed
+
+
+def unfed_loads(network: Network, forest: Forest) -> Index:
+    """Loads that hang on a phase which nothing feeds, or on a conductor that is not there.
+
+    network : Network, with wires
+    forest : Forest, of that network
+    Returns : (row,) of the live loads concerned
+    """
+    wires, k = network.wires, network.conductors
+    if wires is None:
+        return np.zeros(0, dtype=np.intp)
+    by, here = conductors(network, wires, forest)
+    good = fed_conductors(network, forest)
+    live = forest.place >= 0
+    good[live, k - 1] |= (by | here)[forest.place[live], k - 1]  # a lost neutral still joins its loads
+    row, near = np.nonzero(network.load_power.any(axis=-1) & live[network.load_node][:, None])
+    node, far = network.load_node[row], wires.load_to[row, near]
+    lacks = ~good[node, near] | ((far != EARTH) & ~good[node, far])
+    return np.unique(row[lacks])
+
+
+def unreferenced(network: Network, forest: Forest) -> Index:
+    """Transformers whose far side nothing earths: there an earth fault cannot be cleared.
+
+    network : Network, with wires
+    forest : Forest, of that network
+    Returns : (row,) of transformers
+    Source : common practice, no source
+    """
+    wires, joints = network.wires, joints_of(network, forest)
+    if wires is None:
+        return np.zeros(0, dtype=np.intp)
+    zones, supplied = forest.zone_transformer.size, int(forest.depth_zone[1])
+    rows = forest.zone_transformer[supplied:]
+    side = (forest.transformer_way[rows] < 0).astype(int)
+    held = np.append(np.ones(supplied, dtype=bool), ~wires.units.loose[rows, side, 0].any(axis=-1))
+    ends = dict(enumerate(_met(forest)))
+    if joints is not None:
+        sums = np.zeros(joints.z.shape[0])
+        np.add.at(sums, joints.column, joints.weight)
+        held[forest.zone[joints.place[np.abs(sums[joints.column]) > 1e-9]]] = True
+    near, reached = neighbours(ends), set(np.flatnonzero(held).tolist())
+    waiting = list(reached)
+    while waiting:
+        for _, other in near.get(waiting.pop(), ()):
+            if other not in reached:
+                reached.add(other)
+                waiting.append(other)
+    loose = [zone for zone in range(zones) if zone not in reached]
+    return np.unique(forest.zone_transformer[loose])
+
+
+def _met(forest: Forest) -> Iterable[tuple[int, int]]:
+    """Zones that closing branches join."""
+    one, other = forest.zone[forest.tie_place], forest.zone[forest.place[forest.tie_node]]
+    return zip(one.tolist(), other.tolist(), strict=True)
