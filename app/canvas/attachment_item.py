@@ -1,4 +1,4 @@
-"""Supplies, loads, generators and capacitors on their stubs."""
+"""Supplies, loads, motors, generators and capacitors on their stubs."""
 
 import math
 

@@ -39,7 +39,8 @@ def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
     ansi = symbols == "ANSI"
     draw: dict[str, Callable[[], Glyph]] = {
         "supply": _supply,
-        "generator": lambda: _generator(ansi),
+        "generator": lambda: _machine("G", ansi),
+        "motor": lambda: _machine("M", ansi),
         "load": lambda: _load(ansi),
         "capacitor": lambda: _capacitor(ansi, variant == "open"),
         "transformer": lambda: _coils() if ansi else _rings(variant),
@@ -86,12 +87,12 @@ def _joined(*paths: QPainterPath) -> QPainterPath:
     return whole
 
 
-def _generator(ansi: bool) -> Glyph:
+def _machine(letter: str, ansi: bool) -> Glyph:
     ring = _ring(0, 0, ROUND)
     if ansi:
-        return Glyph(ROUND, ring, mask=ring, letters="G")
+        return Glyph(ROUND, ring, mask=ring, letters=letter)
     wave = (QPointF(), _wave(5, 3, y=10))
-    return Glyph(ROUND, ring, mask=ring, letters="G", letters_y=-3, upright=(wave,))
+    return Glyph(ROUND, ring, mask=ring, letters=letter, letters_y=-3, upright=(wave,))
 
 
 def _load(ansi: bool) -> Glyph:

@@ -52,7 +52,7 @@ SHORTCUTS: tuple[tuple[str, str], ...] = (
     ("Alt + arrow", "With a node selected: draw the last branch on in that direction; then type its length"),
     ("X or Enter", "With a node selected: draw on from it; arrows aim, Enter ends"),
     ("Enter", "With anything else selected: go to its card; Alt + Enter does so for nodes too"),
-    ("S, L, G, K", "Supply, load, generator, capacitor: hung on the selected node, or placed"),
+    ("S, L, M, G, K", "Supply, load, motor, generator, capacitor: hung on the selected node, or placed"),
     ("C, O, T, W", "Cable, overhead line, transformer, switch: drawn on from the selected node, or placed"),
     ("B, J", "Busbar, joint: placed; a selected joint turns into a busbar and back"),
     ("R", "Turn a busbar or an attachment by a quarter"),

@@ -14,7 +14,7 @@ from app.canvas.tools_keys import only, plain_part, remake
 from app.canvas.tools_select import pull_from
 from app.model import edits
 from app.model.drawing import label
-from app.model.kinds import Branch, Busbar, Capacitor, Joint, Line, Node, Switch, Transformer
+from app.model.kinds import Branch, Busbar, Capacitor, Joint, Line, Motor, Node, Switch, Transformer
 
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
@@ -50,6 +50,10 @@ def _of_one(view: BoardView, at: QPointF) -> list[Entry]:
     if isinstance(one, Capacitor):
         verb = "Disconnect" if one.connected else "Connect"
         entries.append((verb, _change(view, id, verb, connected=not one.connected)))
+    if isinstance(one, Motor):
+        for verb, state in (("Run", "running"), ("Start", "starting"), ("Switch off", "off")):
+            if one.state != state:
+                entries.append((verb, _change(view, id, verb, state=state)))
     return [*entries, None, ("Rename", view.rename_selection), ("Show card", view.card_wanted.emit), None]
 
 

@@ -13,6 +13,7 @@ from app.model.kinds import (
     Generator,
     Joint,
     Load,
+    Motor,
     Supply,
     Switch,
     Transformer,
@@ -61,6 +62,8 @@ def describe(element: AnyElement) -> tuple[str, ...]:
             return first, f"held at {figures.typed(element.held_percent)} %"
         case Load():
             return (_load(element),)
+        case Motor():
+            return _motor(element)
         case Generator():
             kvar = (
                 f" {figures.plain(element.output_kvar, 1, 'kvar', sign=True)}" if element.output_kvar else ""
@@ -109,6 +112,13 @@ def _load(load: Load) -> str:
     return f"{figures.typed(demand or 0.0)} {unit} pf {shown}{leading}"
 
 
+def _motor(motor: Motor) -> tuple[str, ...]:
+    """`200 kW, direct start`, and what it does where it does not simply run."""
+    first = f"{figures.typed(motor.rated_kw)} kW, {motor.starter}"
+    first += " start" if motor.starter == "direct" else ""
+    return (first,) if motor.state == "running" else (first, motor.state)
+
+
 def runs_on(start_kw: Any, end_kw: Any, forward: Any) -> Any:
     """True where power runs from start to end, of one branch or of an array of them; a branch fed with no
     more than its loss goes as it is fed."""
@@ -155,8 +165,8 @@ def attachment_figures(
     element: AnyElement, case: Case, state: AttachmentState, before: AttachmentState | None
 ) -> Lines:
     """What a supply gives; what a load or generator takes or gives where the case scales it."""
-    scaled = case.load_percent if isinstance(element, Load) else case.generation_percent
-    told = isinstance(element, Supply) or isinstance(element, Load | Generator) and scaled != 100
+    scaled = case.generation_percent if isinstance(element, Generator) else case.load_percent
+    told = isinstance(element, Supply | Motor) or isinstance(element, Load | Generator) and scaled != 100
     if not told or not state.live:
         return ()
     line: Line = (Run(figures.power(state.kw)),)

@@ -5,7 +5,7 @@ from bisect import bisect_left
 from dataclasses import dataclass
 
 from app.model.fields import fields_of
-from app.model.kinds import Cable, Capacitor, Element, Line, Load, Transformer
+from app.model.kinds import Cable, Capacitor, Element, Line, Load, Motor, Supply, Transformer
 
 NO_SOURCE = "common practice, no source"
 CABLE_DEGC = 60.0
@@ -33,8 +33,8 @@ class Blank:
 
 
 def value(element: Element, field: str, nominal_v: float = math.nan) -> float:
-    """The given value, or the assumed one. `nominal_v` of the element's node serves the two
-    fields that follow it: reference_v of a load and rated_v of a capacitor."""
+    """The given value, or the assumed one. `nominal_v` of the element's node serves the fields
+    that follow it: reference_v of a load, rated_v of a motor or capacitor."""
     given = getattr(element, field)
     return float(given) if given is not None else stand_in(element, field, nominal_v)[0]
 
@@ -45,7 +45,7 @@ def blank(element: Element, nominal_v: float = math.nan) -> tuple[Blank, ...]:
     return tuple(
         Blank(name, *_with_unit(stand_in(element, name, nominal_v), kind[name].unit))
         for name in assumable(type(element))
-        if getattr(element, name) is None
+        if getattr(element, name) is None and not _idle(element, name)
     )
 
 
@@ -65,8 +65,11 @@ _ASSUMABLE: dict[type[Element], tuple[str, ...]] = {
     Line: ("c_uf_per_km", "temperature_degc"),
     Transformer: ("load_loss_w", "no_load_loss_w", "no_load_current_percent"),
     Load: ("constant_current_percent", "constant_impedance_percent", "reference_v"),
+    Motor: ("rated_v", "limited_current", "limited_power_factor"),
     Capacitor: ("rated_v",),
+    Supply: ("xr",),
 }
+LIMITED = {"soft starter": (3.0, 0.3), "drive": (1.2, 0.95)}  # × rated current, power factor
 
 
 def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple[float, str]:
@@ -75,11 +78,30 @@ def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple
         return _of_line(element, field)
     if isinstance(element, Transformer):
         return _of_transformer(element, field)
+    if field == "xr":
+        return 10.0, "R = 0.1·X where nobody states it, IEC 60909-0 (from memory)"
+    if isinstance(element, Motor) and field != "rated_v":
+        return _of_motor(element, field)
     if field in ("constant_current_percent", "constant_impedance_percent"):
         return 0.0, "constant power, which draws most at low voltage"
     if field in ("reference_v", "rated_v"):
         return nominal_v, "nominal voltage of its node"
     raise KeyError(field)
+
+
+def _idle(element: Element, field: str) -> bool:
+    """Nothing hangs on the field: a motor straight on the line, a supply whose fault level nobody states."""
+    if isinstance(element, Supply):
+        return element.fault_level_min_mva is None
+    return isinstance(element, Motor) and field != "rated_v" and element.starter == "direct"
+
+
+def _of_motor(motor: Motor, field: str) -> tuple[float, str]:
+    """The locked-rotor values where nothing limits them."""
+    if motor.starter == "direct":
+        started = motor.starting_current, motor.starting_power_factor
+        return started[field == "limited_power_factor"], "nothing limits the start"
+    return LIMITED[motor.starter][field == "limited_power_factor"], f"usual of a {motor.starter}; {NO_SOURCE}"
 
 
 def _of_line(line: Line, field: str) -> tuple[float, str]:

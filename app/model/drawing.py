@@ -34,6 +34,29 @@ class Limits(Struct, frozen=True, kw_only=True):
         Annotated[float, field("Drop from the supply", "%", gt=0, le=100, help="Blank: not judged.")] | None
     ) = None
     loading_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
+    start_name: Annotated[str, text("Start limits", help="Whose limits of motor starts these are.")] = ""
+    start_supply_percent: (
+        Annotated[
+            float, field("Step at the supply", "%", gt=0, le=100, help="At a motor start. Blank: not judged.")
+        ]
+        | None
+    ) = None
+    start_step_percent: (
+        Annotated[
+            float,
+            field(
+                "Step at the board", "%", gt=0, le=100, help="Nearest that serves others. Blank: not judged."
+            ),
+        ]
+        | None
+    ) = None
+    start_motor_percent: (
+        Annotated[
+            float,
+            field("Volts to start", "% of rated", gt=0, le=100, help="At the motor. Blank: not judged."),
+        ]
+        | None
+    ) = None
     kept: dict[str, Any] = held(default_factory=dict)
 
 
@@ -44,6 +67,10 @@ class Case(Struct, frozen=True, kw_only=True):
     supply_percent: Annotated[float, field("Supply voltage", "%", gt=0, le=200)] = 100.0
     load_percent: Annotated[float, field("Loads", "%", ge=0, le=1000)] = 100.0
     generation_percent: Annotated[float, field("Generation", "%", ge=0, le=1000)] = 100.0
+    motor_percent: (
+        Annotated[float, field("Motors", "%", ge=0, le=1000, help="Of running motors. Blank: as the loads.")]
+        | None
+    ) = None
     kept: dict[str, Any] = held(default_factory=dict)
 
 

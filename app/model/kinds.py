@@ -141,6 +141,14 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
         Literal["three-phase", "two-wire"],
         plain("System", help="Two-wire: one circuit out and back, single-phase or two phases."),
     ] = "three-phase"
+    fault_level_min_mva: (
+        Annotated[
+            float,
+            field("Least fault level", "MVA", gt=0, le=1e6, help="For dips at a start, and protection."),
+        ]
+        | None
+    ) = None
+    xr: Annotated[float, field("X/R of the supply", "", ge=0, le=1000)] | None = None
 
 
 class Load(Attachment, frozen=True, kw_only=True, tag="load"):
@@ -163,6 +171,34 @@ class Load(Attachment, frozen=True, kw_only=True, tag="load"):
     ) = None
 
 
+class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
+    """A motor by its nameplate: constant power while it runs; its starter says what it draws at first."""
+
+    rated_kw: Annotated[
+        float,
+        field("Rated output", "kW", gt=0, le=1e6, help="At the shaft, as on the nameplate; hp may be typed."),
+    ] = 11.0
+    efficiency: Annotated[float, field("Efficiency", "", gt=0, le=1)] = 0.9
+    power_factor: Annotated[float, field("Power factor", "", gt=0, le=1, help="At rated output.")] = 0.85
+    rated_v: Annotated[float, field("Rated voltage", "V", gt=0, le=500e3)] | None = None
+    starting_current: Annotated[
+        float,
+        field("Starting current", "× rated", gt=0, le=20, help="With the rotor locked, at rated voltage."),
+    ] = 6.5
+    starting_power_factor: Annotated[float, field("Power factor at start", "", gt=0, le=1)] = 0.25
+    starter: Annotated[Literal["direct", "soft starter", "drive"], plain("Starter")] = "direct"
+    limited_current: (
+        Annotated[
+            float, field("Starter limits to", "× rated", gt=0, le=20, help="Of a soft starter or a drive.")
+        ]
+        | None
+    ) = None
+    limited_power_factor: (
+        Annotated[float, field("Power factor so", "", gt=0, le=1, help="While the starter limits.")] | None
+    ) = None
+    state: Annotated[Literal["running", "starting", "off"], plain("State")] = "running"
+
+
 class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     """Fixed infeed: PV, hydro or a set running at fixed power."""
 
@@ -181,7 +217,17 @@ class Capacitor(Attachment, frozen=True, kw_only=True, tag="capacitor"):
 
 
 AnyElement = (
-    Joint | Busbar | Cable | OverheadLine | Transformer | Switch | Supply | Load | Generator | Capacitor
+    Joint
+    | Busbar
+    | Cable
+    | OverheadLine
+    | Transformer
+    | Switch
+    | Supply
+    | Load
+    | Motor
+    | Generator
+    | Capacitor
 )
 KINDS: dict[str, type[Element]] = {
     "supply": Supply,
@@ -192,6 +238,7 @@ KINDS: dict[str, type[Element]] = {
     "transformer": Transformer,
     "switch": Switch,
     "load": Load,
+    "motor": Motor,
     "generator": Generator,
     "capacitor": Capacitor,
 }
@@ -205,6 +252,7 @@ LETTERS = {
     "transformer": "T",
     "switch": "W",
     "load": "L",
+    "motor": "M",
     "generator": "G",
     "capacitor": "K",
 }

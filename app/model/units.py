@@ -37,6 +37,7 @@ TABLES: dict[str, tuple[str, Scale]] = {
     "V": ("a voltage", _scale("V volt volts 1; kV 1000; mV 0.001; MV 1000000")),
     "A": ("a current", _scale("A amp amps 1; kA 1000; mA 0.001; MA 1000000")),
     "kVA": ("an apparent power", _scale("kVA 1; VA 0.001; MVA 1000; GVA 1000000")),
+    "MVA": ("an apparent power", _scale("MVA 1; kVA 0.001; VA 0.000001; GVA 1000")),
     "kW": ("an active power", _scale(f"kW 1; W 0.001; MW 1000; mW 0.000001; hp {POWER_HP}/1000")),
     "W": ("an active power", _scale(f"W watt watts 1; kW 1000; MW 1000000; mW 0.001; hp {POWER_HP}")),
     "kvar": ("a reactive power", _scale("kvar 1; var 0.001; Mvar 1000; mvar 0.000001")),
@@ -50,7 +51,8 @@ TABLES: dict[str, tuple[str, Scale]] = {
     "°C": ("a temperature", _scale("°C degC C 1")),
 }
 TABLES["notches"] = TABLES["notch"]
-TABLES["% of nominal"] = TABLES["%"]
+TABLES["% of nominal"] = TABLES["% of rated"] = TABLES["%"]
+TABLES["× rated"] = ("a multiple of the rated current", _scale("× x times 1; % 0.01"))
 OHM = _scale("Ω ohm ohms 1; mΩ mohm 0.001; kΩ kohm 1000; µΩ uΩ uohm 0.000001; MΩ Mohm 1000000")
 FARAD = _scale("µF uF 1; nF 0.001; pF 0.000001; mF 1000; F 1000000; MF 1000000000000")
 PER_LENGTH = {
@@ -58,7 +60,8 @@ PER_LENGTH = {
     "µF/km": ("a capacitance per length", FARAD),
 }
 PINT_UNITS = {
-    "°C": "degC", "°": "degree", "% of nominal": "percent", "%": "percent", "mm²": "mm**2", "Ω/km": "ohm/km",
+    "°C": "degC", "°": "degree", "% of nominal": "percent", "% of rated": "percent",
+    "× rated": "dimensionless", "%": "percent", "mm²": "mm**2", "Ω/km": "ohm/km",
     "µF/km": "microfarad/km", "": "dimensionless",
 }  # fmt: skip
 

@@ -20,6 +20,7 @@ from app.panels.page import Page
 from app.panels.words import Rule, Sentence, Words
 
 NOT_JUDGED = "not judged"
+BLANK = {"motor_percent": "as the loads"}
 
 
 class ProjectPage(Page):
@@ -54,7 +55,7 @@ class ProjectPage(Page):
         self.counts.say(drawn(drawing))
 
     def _show(self, row: FieldRow, value: Any) -> None:
-        quiet = NOT_JUDGED if value is None else ""
+        quiet = "" if value is not None else BLANK.get(row.field.name, NOT_JUDGED)
         row.show_value(value, quiet=quiet)
 
     def _taker(self, setter: Callable[..., Drawing]) -> Callable[[Field, str], str]:

@@ -5,7 +5,7 @@ from typing import NamedTuple
 from msgspec import Struct
 
 from app.model.drawing import Drawing
-from app.model.kinds import Cable, Generator, Load, OverheadLine, Transformer
+from app.model.kinds import Cable, Generator, Load, Motor, OverheadLine, Transformer
 from app.panels.strip_course import column
 from app.study.outcome import Outcome
 
@@ -117,6 +117,7 @@ def _gather(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, list[Pie
 LOSSES = {"copper": "copper_kw", "iron": "iron_kw", "cable": "loss_kw"}
 _WHAT: dict[type, tuple[str, ...]] = {
     Load: ("load",),
+    Motor: ("load",),
     Generator: ("infeed",),
     Transformer: ("copper", "iron"),
     Cable: ("cable",),

@@ -9,7 +9,7 @@ from msgspec.structs import replace
 
 from app.model import assumed
 from app.model.fields import fields_of
-from app.model.kinds import KINDS, Cable, Capacitor, Load, Node, OverheadLine, Transformer
+from app.model.kinds import KINDS, Cable, Capacitor, Load, Motor, Node, OverheadLine, Supply, Transformer
 
 T = Transformer(start="", end="")
 TABLE = Path(__file__).with_name("eu_548_2014_table_I_1_tier_2.csv")
@@ -81,8 +81,24 @@ def test_nominal_voltage_stands_in_for_stated_voltages():
     }  # fmt: skip
 
 
+def test_a_starter_is_assumed_only_where_there_is_one():
+    direct = Motor(node="", rated_v=400.0)
+    assert assumed.blank(direct) == ()
+    assert assumed.value(direct, "limited_current") == direct.starting_current
+    soft = {b.field: b.value for b in assumed.blank(replace(direct, starter="soft starter"))}
+    assert soft == {"limited_current": 3.0, "limited_power_factor": 0.3}
+    drive = {b.field: b.value for b in assumed.blank(replace(direct, starter="drive"))}
+    assert drive == {"limited_current": 1.2, "limited_power_factor": 0.95}
+    assert assumed.value(replace(direct, rated_v=None), "rated_v", 400.0) == 400.0
+
+
+def test_the_ratio_of_a_supply_is_assumed_only_where_its_fault_level_is_stated():
+    assert assumed.blank(Supply(node="")) == ()
+    assert [b.field for b in assumed.blank(Supply(node="", fault_level_min_mva=35.0))] == ["xr"]
+
+
 def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
-    no_stand_in = {"area_mm2", "rating_a", "nominal_v", "demand_kva", "demand_kw"}
+    no_stand_in = {"fault_level_min_mva", "area_mm2", "rating_a", "nominal_v", "demand_kva", "demand_kw"}
     for kind in KINDS.values():
         for field in fields_of(kind).values():
             if field.optional and field.type is float and not (issubclass(kind, Node)):
