@@ -42,8 +42,9 @@ True
 
 Reading order: `network` (the rows), `tour`, `rounds` and `forest` (trees, their order, what closes rounds
 over them), `placed` (rows in that order), `sweep` (the kernel), `joints` and `ties` (currents that close
-rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until nothing moves), `answer` and `solution` (every branch), `share` (how
-much more load there could be), `trouble` (rounds by name, and those without a solution); `line`,
+rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until nothing moves), `answer` and
+`solution` (every branch), `share` (how much more load there could be), `trouble` (rounds by name, and those
+without a solution); `line`, `carson`,
 `transformer` and `load` are the element models. Several conductors: `wires` (what they add to the rows),
 `windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors), `reached`
 (what no supply feeds, and sides without earth). What a person should be told stands in `Status`.

@@ -76,3 +76,35 @@ def charging(
     """
     farads = np.asarray(c_uf_per_km, dtype=float) * 1e-6 * np.asarray(length_m) / 1e3 * np.asarray(parallel)
     return 2j * math.pi * np.asarray(frequency) * farads / np.where(two_wire, 2.0, 1.0)
+
+
+def symmetric(z1: ArrayLike, z0: ArrayLike) -> Complex:
+    """Matrix of three phases out of positive and zero sequence, impedances or admittances.
+
+    Zs = (2 Z1 + Z0) / 3 on the diagonal, Zm = (Z0 - Z1) / 3 beside it
+
+    z1 : (...) complex, positive sequence
+    z0 : (...) complex, zero sequence with the return that it was stated for
+    Returns : (..., 3, 3) complex, in the unit of both
+    Source : Fortescue, Trans. AIEE 37 (1918) 1027-1140
+    """
+    one, zero = np.asarray(z1)[..., None, None], np.asarray(z0)[..., None, None]
+    return np.asarray(one * np.eye(3) + (zero - one) / 3 * np.ones((3, 3)), dtype=np.complex128)
+
+
+def four_wire(phase: ArrayLike, neutral: ArrayLike, mutual: ArrayLike = 0.0) -> Complex:
+    """Matrix of three phases and a neutral that carries its own current.
+
+    The phase on the diagonal thrice, then the neutral; the mutual impedance beside it, none where it is
+    within the figures, as with reactances of cables stated for three phases or for out and back.
+
+    phase : (...) complex [ohm] of one phase conductor
+    neutral : (...) complex [ohm] of the neutral
+    mutual : (...) complex [ohm] between any two conductors
+    Returns : (..., 4, 4) complex [ohm]; without a mutual its zero sequence, out and back, is that of the
+        phase and three times the neutral
+    Source : common practice, no source
+    """
+    own = np.stack(np.broadcast_arrays(phase, phase, phase, neutral), axis=-1)
+    beside = np.asarray(mutual)[..., None, None] * (1 - np.eye(4))
+    return np.asarray(own[..., None] * np.eye(4) + beside, dtype=np.complex128)
