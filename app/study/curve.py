@@ -100,11 +100,21 @@ def _tiled(array: NDArray[np.generic], count: int) -> NDArray[np.generic]:
 
 
 def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
-    """Nodes that get their power through a branch."""
+    """Nodes that get their power through a transformer: the zone on its far side, and what that feeds.
+
+    The far side lies behind more transformers, seen from the supply; of two zones alike, or one zone, it
+    is that of the node later in the order of the trees.
+    """
+    behind = [0] * len(layout.nodes)  # transformers between a node and its supply
+    for node in layout.order:
+        if (by := layout.fed_by[node]) != NONE:
+            behind[node] = behind[layout.fed_from[node]] + isinstance(layout.branches[by], Transformer)
+    ends = layout.start[branch], layout.end[branch]
+    far = layout.zone[max(ends, key=lambda n: (behind[n], layout.fed_by[n] == branch, n))]
     through = [False] * len(layout.nodes)
     for node in layout.order:
-        by = layout.fed_by[node]
-        through[node] = by == branch or (by != NONE and through[layout.fed_from[node]])
+        above = layout.fed_from[node]
+        through[node] = layout.live[node] and (layout.zone[node] == far or above != NONE and through[above])
     return np.flatnonzero(through)
 
 

@@ -6,7 +6,7 @@ from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
 from app.study.findings import Check, findings_of
-from app.study.layout import Layout
+from app.study.layout import Layout, arrays_of
 from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict
 from app.study.words import tell
 
@@ -39,13 +39,16 @@ def excitation_findings(
     if not rows:
         return []
     forward = branches.column("forward")
-    rated, fed = [], []
+    rated = []
     for row in rows:
         unit = layout.branches[row]
         assert isinstance(unit, Transformer)
-        rated.append(taps.windings(unit, unit.tap)[0 if forward[row] else 1])
-        fed.append(layout.start[row] if forward[row] else layout.end[row])
-    driven = 100 * nodes.column("voltage_v")[fed] / np.array(rated)[:, None]
+        rated.append(taps.windings(unit, unit.tap))
+    graph, level = arrays_of(layout), nodes.column("voltage_v")
+    first, second = (
+        level[at[rows]] / np.array(rated)[:, [n]] for n, at in enumerate((graph.start, graph.end))
+    )
+    driven = 100 * np.where(forward.reshape(len(forward), -1)[rows], first, second)
     idle = branches.column("loading_percent")[rows] < IDLE
     ids = tuple(branches.ids[row] for row in rows)
 

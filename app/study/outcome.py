@@ -28,7 +28,7 @@ class NodeState:
 @dataclass(frozen=True, slots=True)
 class BranchState:
     """One branch in one case. Powers are those that enter at `start` and leave at `end`, so a branch
-    fed from its end carries negative power. `forward`: fed from its start."""
+    fed from its end carries negative power. `forward`: fed from its start; on a ring, as the power flows."""
 
     live: bool
     forward: bool

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import Attachment, Branch, Generator, Line, Load, Supply, Switch, Transformer
+from app.model.kinds import Attachment, Branch, Generator, Line, Load, Motor, Supply, Switch, Transformer
 from app.study.layout import NONE, Layout, arrays_of
 from app.study.memory import Columns, Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
@@ -16,6 +16,7 @@ from app.study.sums import size, total
 from app.study.zones import Zones
 from solver import Solution
 
+FAINT = 1e-9  # of the largest power on any ring, below which a flow has no direction
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
@@ -106,7 +107,7 @@ def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tabl
 def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> Table[BranchState]:
     count, cases = len(layout.branches), percent.shape[1]
     graph = arrays_of(layout)
-    start, end, forward = graph.start, graph.end, graph.forward
+    start, end = graph.start, graph.end
     voltage, phases = solution.voltage[:, 0], rows.phases[start][:, None] / 1e3
 
     def scatter(of_lines: Any, of_units: Any) -> Any:
@@ -121,7 +122,9 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
     start_s, end_s = voltage[start] * into.conj() * phases, voltage[end] * out.conj() * phases
     series, shunt = series * phases, shunt * phases
     start_a, end_a = size(into), size(out)
-    fed_a = np.where(forward[:, None], start_a, end_a)
+    forward = _forward(layout, start_s + end_s)
+    onward = forward if forward.ndim == 2 else forward[:, None]
+    fed_a = np.where(onward, start_a, end_a)
     is_unit = np.zeros((count, 1), dtype=bool)
     is_unit[rows.units] = True
     ohms = np.full(count, complex(np.nan, np.nan))
@@ -141,11 +144,29 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
         "loss_kvar": series.imag + shunt.imag,
         "loading_percent": _loading(layout, rows, start_a, end_a),
-        "drop_percent": np.where(forward[:, None], 1.0, -1.0) * (percent[start] - percent[end]),
+        "drop_percent": np.where(onward, 1.0, -1.0) * (percent[start] - percent[end]),
         "resistance_ohm": ohms.real,
         "reactance_ohm": ohms.imag,
     }
     return Table(BranchState, tuple(layout.branch_ids), columns, layout.branch_row)
+
+
+def _forward(layout: Layout, through: Complex) -> NDArray[np.bool_]:
+    """Whether a branch is fed from its start: (branch,), or (branch, case) where there are rings.
+
+    On a ring and between supplies the power decides, unless next to none flows; elsewhere the tree does.
+
+    through : (branch, case) complex [kVA], of both ends together
+    """
+    forward = arrays_of(layout).forward
+    if not layout.rings:
+        return forward
+    either = sorted({branch for ring in layout.rings for branch in ring.branches})
+    power = through[either]
+    little = FAINT * size(power).max(axis=0, initial=0.0)
+    found = np.repeat(forward[:, None], through.shape[1], axis=1)
+    found[either] = np.where(np.abs(power.real) > little, power.real > 0, found[either])
+    return found
 
 
 def _rating(branch: Branch) -> tuple[float, float, bool]:
@@ -222,7 +243,7 @@ def _balance(
 def _role(attachment: Attachment) -> str:
     if isinstance(attachment, Generator):
         return "g"
-    return "l" if isinstance(attachment, Load) else "s" if isinstance(attachment, Supply) else "c"
+    return "l" if isinstance(attachment, Load | Motor) else "s" if isinstance(attachment, Supply) else "c"
 
 
 _roles: Memory[Attachment, str] = Memory(_role)

@@ -7,13 +7,15 @@ from app.study.assumptions import assumptions_of
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
 from app.study.findings import judge
+from app.study.idle import idle_findings
 from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Outcome, Verdict
 from app.study.results import tables_of
+from app.study.rings import trouble_finding
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
-from solver import Solution, Status, grow, solve
+from solver import Solution, Status, Trouble, grow, solve
 
 RANK = {
     v: i for i, v in enumerate((Verdict.BLOCKS, Verdict.FAILS, Verdict.NEAR, Verdict.HOLDS, Verdict.NOTE))
@@ -69,6 +71,10 @@ def _outcome(
     if status is Status.SOLVED:
         found = found + judge(drawing, tables.nodes, tables.branches, cases)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
+        if layout.rings and rows is not None:
+            found += idle_findings(drawing, layout, zones, rows, tables.attachments)
+    elif rows is not None and solution is not None and isinstance(solution.forest, Trouble):
+        found = [trouble_finding(layout, rows, solution.forest), *found]
     elif rows is not None and solution is not None:
         collapse = collapse_of(drawing, layout, rows, solution)
         found = [collapse.finding, *found]

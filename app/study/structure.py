@@ -1,15 +1,14 @@
-"""What is wrong with the layout as drawn, before anything is solved: loops, dead parts, wrong levels."""
+"""What there is to say of the layout as drawn, before anything is solved: rings, dead parts, wrong levels."""
 
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.figures import typed
-from app.model.kinds import Generator, Joint, Load, Transformer
-from app.study.layout import NONE, Layout, is_bare
+from app.model.kinds import Generator, Joint, Load, Motor, Transformer
+from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
+from app.study.rings import ring_findings
 from app.study.words import list_of, tell
 from app.study.zones import Zones, level_findings, stated_voltages
-
-LATER = "Closed rings are not solved in this version."
 
 
 def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
@@ -27,8 +26,7 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         words = "No supply: nothing feeds this layout. Put a supply on the node where power comes in."
         return [Finding("no supply", Verdict.BLOCKS, (), words)]
     return [
-        *_joined(drawing, layout),
-        *_loops(drawing, layout),
+        *ring_findings(drawing, layout, zones),
         *level_findings(drawing, layout, zones),
         *_groups(drawing, layout, zones),
         *_plates(drawing, layout),
@@ -36,57 +34,6 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         *_loose_ends(drawing, layout),
         *stated_voltages(drawing, layout, zones),
     ]
-
-
-def _joined(drawing: Drawing, layout: Layout) -> list[Finding]:
-    found = []
-    for one, other in layout.joined:
-        path = list(layout.climb(layout.at[other]))
-        ids = [layout.branch_ids[b] for b in path]
-        pair = (layout.attachment_ids[one], layout.attachment_ids[other])
-        if ids:
-            words = (
-                f"Supplies {list_of(drawing, pair)} are joined through {list_of(drawing, ids)}. "
-                f"{LATER} Open a switch or remove one of these branches, so that each feeds its own part."
-            )
-        else:
-            node = tell(drawing, layout.node_ids[layout.at[other]])
-            words = (
-                f"Supplies {list_of(drawing, pair)} both stand on {node}. Leave one of them, so that each "
-                "feeds its own part."
-            )
-        found.append(Finding("supplies joined", Verdict.BLOCKS, (*pair, *ids), words))
-    return found
-
-
-def _loops(drawing: Drawing, layout: Layout) -> list[Finding]:
-    found = []
-    for branch in layout.closing:
-        if layout.supply_of[layout.tree[layout.start[branch]]] == NONE:
-            continue
-        ring = layout.ring(branch)
-        ids = tuple(layout.branch_ids[b] for b in ring)
-        bare = all(is_bare(layout.branches[b]) for b in ring)
-        check = "zero-impedance loop" if bare else "closed loop"
-        found.append(Finding(check, Verdict.BLOCKS, ids, _loop_words(drawing, layout, ring, ids, bare)))
-    return found
-
-
-def _loop_words(drawing: Drawing, layout: Layout, ring: list[int], ids: tuple[str, ...], bare: bool) -> str:
-    if len(ids) == 1:
-        return f"{tell(drawing, ids[0])} begins and ends on the same node. Move one end or remove it."
-    named = list_of(drawing, ids)
-    if bare:
-        return (
-            f"{named} form a loop without any impedance: how it shares the current is not determined. "
-            "Open or remove one of them."
-        )
-    if len(ids) == 2:
-        kinds = {type(layout.branches[b]) for b in ring}
-        alike = " If they are equal, draw one and set how many are in parallel." if len(kinds) == 1 else ""
-        return f"{named} run side by side and close a loop. {LATER} Remove one of them.{alike}"
-    last = list_of(drawing, ids, "or")
-    return f"{named} form a closed loop. {LATER} Open a switch or remove one of: {last}."
 
 
 def _groups(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
@@ -162,7 +109,7 @@ def _dead(drawing: Drawing, layout: Layout) -> list[Finding]:
         tree = layout.tree[layout.at[row]]
         if tree in parts:
             parts[tree].append(id)
-            if isinstance(layout.attachments[row], Load | Generator):
+            if isinstance(layout.attachments[row], Load | Generator | Motor):
                 needy[tree].append(id)
     for row, id in enumerate(layout.branch_ids):
         tree = layout.tree[layout.start[row]]

@@ -1,5 +1,6 @@
 """Small layouts to test on."""
 
+import msgspec
 import numpy as np
 
 from app.model.drawing import Case, Drawing, Limits
@@ -17,8 +18,6 @@ def drawing(cases=None, limits=None, frequency_hz=50.0, **elements):
 
 def changed(base, **elements):
     """The same drawing with elements put in, or taken out where None."""
-    import msgspec
-
     merged = {i: e for i, e in {**base.elements, **elements}.items() if e is not None}
     return msgspec.structs.replace(base, elements=merged)
 
@@ -73,3 +72,25 @@ def town(seed=7, nodes=24, cases=None):
     elements["G1"] = Generator(node=f"N{nodes - 1}", output_kw=3.0, output_kvar=-1.0)
     elements["K1"] = Capacitor(node=f"N{nodes - 2}", rating_kvar=2.0)
     return drawing(cases, **elements)
+
+
+def meshed_town(seed=7, closings=3, **options):
+    """A town with cables between nodes alike in level and angle, a transformer doubled, a second supply."""
+    from app.study import run
+
+    base = town(seed, **options)
+    nodes, rng = run(base).nodes, np.random.default_rng(500 + seed)
+    more = {}
+    while len(more) < closings:
+        pair = rng.choice(nodes.ids, 2, replace=False).tolist()
+        a, b = (nodes.at(i) for i in pair)
+        if a.nominal_v == b.nominal_v and abs(a.angle_deg - b.angle_deg) < 8:
+            charged = 0.3 if a.nominal_v > 1000 else None
+            more[f"R{len(more)}"] = line(*pair, length_m=float(rng.uniform(50, 400)), c_uf_per_km=charged)
+    units = [e for e in base.elements.values() if isinstance(e, Transformer)]
+    if units:
+        more["T99"] = msgspec.structs.replace(units[0], tap=units[0].tap + (-1 if units[0].tap > 0 else 1))
+    high = [i for i in nodes.ids if nodes.at(i).nominal_v == 11000.0 and nodes.at(i).route_m > 0]
+    if seed % 2 and high:
+        more["S2"] = Supply(node=high[-1], nominal_v=11000.0, held_percent=101.5, angle_deg=0.05)
+    return changed(base, **more)

@@ -76,7 +76,7 @@ class Nodal:
                 continue
             stamp = self._line(e) if isinstance(e, Line) else self._transformer(i, e)
             ends = [self.at[self.find(e.start)], self.at[self.find(e.end)]]
-            self.y[np.ix_(ends, ends)] += stamp
+            np.add.at(self.y, np.ix_(ends, ends), stamp)  # both ends may be one place
             self.stamps[i] = (ends, stamp)
 
     def _line(self, e):

@@ -38,7 +38,7 @@ def stored(folder, base, name="x.farend"):
     [
         (two_nodes, 0),
         (lambda: msgspec.structs.replace(two_nodes(), limits=Limits(low_percent=99.99)), 1),
-        (lambda: changed(two_nodes(), S2=Supply(node="B2")), 2),
+        (lambda: changed(two_nodes(), S2=Supply(node="B1")), 2),
         (Drawing, 2),
         (weak, 3),
     ],

@@ -1,0 +1,118 @@
+"""What flows with all loads off: round loops whose transformers do not agree, and between supplies."""
+
+from dataclasses import replace
+
+import numpy as np
+
+from app.model.drawing import Drawing
+from app.model.figures import amps, nameplate, percent, power
+from app.model.kinds import Transformer
+from app.study.around import mismatch, units_of
+from app.study.layout import Layout, Ring
+from app.study.outcome import AttachmentState, Finding, Table, Verdict
+from app.study.results import Tables, tables_of
+from app.study.rows import Rows
+from app.study.words import list_of, tell
+from app.study.zones import Zones
+from solver import Network, Status, solve
+
+AGREE = 1e-7  # %, ratios closer than this are one ratio
+MUCH = 10.0  # % of rating
+WHOSE = "common practice, no source"
+NOTHING_KVA = 1e-3
+
+
+def idle_findings(
+    drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, loaded: Table[AttachmentState]
+) -> list[Finding]:
+    """The currents that circulate in loops of unequal ratios, and what joined supplies give each other.
+
+    The layout is solved once more in every case with loads, generators, capacitors, charging and
+    magnetising currents taken off, so that only what drives them is left. A current beyond 10 % of a
+    rating is near; none fails, for the loading of each case is judged for itself.
+
+    drawing : the drawing
+    layout : its graph, with rings
+    zones : its voltage levels
+    rows : of the solver
+    loaded : table, kw (attachment, case) [kW] as solved
+
+    Returns : list of Finding
+    Source : superposition; with one loop Ic = ΔE / (Z1 + Z2 + ...)
+    """
+    ratio = np.abs(rows.network.transformer_ratio[:, 0])
+    row = {int(branch): n for n, branch in enumerate(rows.units)}
+    loops = [(r, mismatch(layout, r, ratio, row)) for r in layout.rings if not r.supplies]
+    loops = [(ring, apart) for ring, apart in loops if apart > AGREE]
+    pairs = {ring.supplies: None for ring in layout.rings if ring.supplies}
+    if not loops and not pairs:
+        return []
+    solution = solve(_idle(rows.network), forest=layout.forest)
+    if any(s is not Status.SOLVED for s in solution.status):
+        return []
+    idle = tables_of(layout, zones, rows, solution, len(drawing.cases))
+    found = [_circulating(drawing, layout, idle, ring, apart) for ring, apart in loops]
+    return found + [_exchange(drawing, layout, idle, list(pair), loaded) for pair in pairs]
+
+
+def _idle(network: Network) -> Network:
+    """The same network with everything off that hangs on it."""
+    names = ("load_power", "shunt_y", "line_y", "transformer_y")
+    return replace(network, **{name: np.zeros_like(getattr(network, name)) for name in names})
+
+
+def _circulating(drawing: Drawing, layout: Layout, idle: Tables, ring: Ring, apart: float) -> Finding:
+    units = units_of(layout, ring)
+    share = idle.branches.column("loading_percent")[units]
+    at, case = np.unravel_index(share.argmax(), share.shape)
+    unit, value = layout.branches[units[at]], float(share[at, case])
+    assert isinstance(unit, Transformer)
+    low = unit.v2_v <= unit.v1_v
+    current = idle.branches.column("end_a" if low else "start_a")[units[at], case]
+    ids = tuple(layout.branch_ids[u] for u in units)
+    stand = "stand" if len(ids) > 1 else "stands"
+    words = (
+        f"{list_of(drawing, ids)} {stand} in a closed loop whose ratios are {percent(apart)} apart: with all "
+        f"loads off {amps(float(current))} circulates at {nameplate(min(unit.v1_v, unit.v2_v))}, "
+        f"{percent(value)} of the rating of {tell(drawing, ids[at])}{_in_case(drawing, int(case))}."
+    )
+    name = drawing.cases[int(case)].name
+    verdict = Verdict.NEAR if value > MUCH else Verdict.NOTE
+    if verdict is Verdict.NOTE:
+        return Finding("circulating current", verdict, ids, words, value=value, unit="%", case=name)
+    words += f" The most advised is {percent(MUCH, 0)} ({WHOSE})."
+    return Finding(
+        "circulating current", verdict, ids, words, value, MUCH, MUCH - value, "%", f"advice, {WHOSE}", name
+    )
+
+
+def _in_case(drawing: Drawing, case: int) -> str:
+    return f" in case {drawing.cases[case].name}" if len(drawing.cases) > 1 else ""
+
+
+def _exchange(
+    drawing: Drawing, layout: Layout, idle: Tables, rows: list[int], loaded: Table[AttachmentState]
+) -> Finding:
+    """What two joined supplies do under load, and what one gives the other with all loads off."""
+    ids = tuple(layout.attachment_ids[r] for r in rows)
+    kw = loaded.column("kw")[rows]
+    case = int(np.argmin(kw.min(axis=0)))  # where one gives least, or takes most
+    told = " and ".join(f"{tell(drawing, i)} {_gives(float(kw[n, case]))}" for n, i in enumerate(ids))
+    words = f"{told}{_in_case(drawing, case)}. {_passing(drawing, layout, idle, rows, case)}"
+    return Finding("power exchanged", Verdict.NOTE, ids, words, case=drawing.cases[case].name)
+
+
+def _gives(kw: float) -> str:
+    return f"feeds in {power(kw)}" if kw >= 0 else f"takes back {power(-kw)}"
+
+
+def _passing(drawing: Drawing, layout: Layout, idle: Tables, rows: list[int], case: int) -> str:
+    kw, kvar, current = (idle.attachments.column(name)[rows, case] for name in ("kw", "kvar", "current_a"))
+    if np.hypot(kw, kvar).max() < NOTHING_KVA:
+        return "With all loads off nothing passes between them."
+    giver = int(np.argmax(kw if np.ptp(kw) > np.ptp(kvar) else kvar))
+    ids = [layout.attachment_ids[r] for r in (rows[giver], rows[1 - giver])]
+    much = f"{power(float(kw[giver]))}, {power(float(kvar[giver]), 'kvar')} and {amps(float(current[giver]))}"
+    if sum(supply >= 0 for supply in layout.supply_of) == 2:
+        return f"With all loads off {much} pass from {tell(drawing, ids[0])} to {tell(drawing, ids[1])}."
+    return f"With all loads off {tell(drawing, ids[0])} still feeds in {much}."
