@@ -11,7 +11,18 @@ from app.model import taps
 from app.model.drawing import Part, Symbol
 from app.model.fields import Field, fields_of
 from app.model.figures import typed
-from app.model.kinds import KIND_WORDS, Attachment, Branch, Busbar, Element, Load, Node, Transformer, kind_of
+from app.model.kinds import (
+    KIND_WORDS,
+    Attachment,
+    Branch,
+    Busbar,
+    Element,
+    Load,
+    Node,
+    Supply,
+    Transformer,
+    kind_of,
+)
 
 ID = re.compile(r"[A-Za-z0-9_.-]{1,40}")
 ID_ALLOWED = "1 to 40 letters, digits, _ - or ."
@@ -202,6 +213,16 @@ def _fault_across(element: Element) -> str | None:
         return _fault_of_load(element)
     if isinstance(element, Transformer):
         return _fault_of_transformer(element)
+    return _fault_of_supply(element) if isinstance(element, Supply) else None
+
+
+def _fault_of_supply(supply: Supply) -> str | None:
+    least, most = supply.fault_level_min_mva, supply.fault_level_max_mva
+    if least is not None and most is not None and least > most:
+        return (
+            f"Least fault level is {typed(least)} MVA, "
+            f"allowed is at most the Highest fault level, {typed(most)} MVA."
+        )
     return None
 
 

@@ -33,6 +33,13 @@ class Node(Element, frozen=True, kw_only=True):
         ]
         | None
     ) = None
+    withstand_ka: (
+        Annotated[
+            float,
+            field("Fault rating", "kA", gt=0, le=1000, help="Of the board, three-phase. Blank: not judged."),
+        ]
+        | None
+    ) = None
 
 
 class Joint(Node, frozen=True, kw_only=True, tag="joint"):
@@ -78,6 +85,38 @@ class Line(Branch, frozen=True, kw_only=True):
     rating_a: (
         Annotated[float, field("Rating", "A", gt=0, le=1e6, help="As installed, of one run.")] | None
     ) = None
+    trip_a: (
+        Annotated[
+            float,
+            field(
+                "Device trips at",
+                "A",
+                gt=0,
+                le=1e6,
+                help="Current at which the fuse or breaker at its fed end trips in 5 s. Blank: not judged.",
+            ),
+        ]
+        | None
+    ) = None
+    return_r20_ohm_per_km: (
+        Annotated[
+            float,
+            field(
+                "Return at 20 °C", "Ω/km", ge=0, le=1000, help="PE, PEN or neutral of one run, for faults."
+            ),
+        ]
+        | None
+    ) = None
+    r0_ohm_per_km: (
+        Annotated[float, field("R0 at 20 °C", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
+    ) = None
+    x0_ohm_per_km: (
+        Annotated[float, field("X0", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
+    ) = None
+    fault_degc: (
+        Annotated[float, field("Hot conductor at", "°C", ge=-60, le=400, help="For the least fault current.")]
+        | None
+    ) = None
 
 
 class Cable(Line, frozen=True, kw_only=True, tag="cable"):
@@ -112,6 +151,27 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
         int,
         field("Tap", "notch", ge=-40, le=40, help="Notches above (+) or below (−) the nameplate voltage."),
     ] = 0
+    earth_1_ohm: (
+        Annotated[
+            float,
+            field(
+                "Star 1 to earth", "Ω", ge=0, le=1e6, help="Blank: solid where the group has N, else open."
+            ),
+        ]
+        | None
+    ) = None
+    earth_2_ohm: (
+        Annotated[
+            float,
+            field(
+                "Star 2 to earth", "Ω", ge=0, le=1e6, help="Blank: solid where the group has n, else open."
+            ),
+        ]
+        | None
+    ) = None
+    z0_ratio: (
+        Annotated[float, field("Z0/Z1", "", gt=0, le=100, help="Zero over positive sequence.")] | None
+    ) = None
 
 
 class Switch(Branch, frozen=True, kw_only=True, tag="switch"):
@@ -141,6 +201,13 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
         Literal["three-phase", "two-wire"],
         plain("System", help="Two-wire: one circuit out and back, single-phase or two phases."),
     ] = "three-phase"
+    fault_level_max_mva: (
+        Annotated[
+            float,
+            field("Highest fault level", "MVA", gt=0, le=1e6, help="For board ratings; kA may be typed."),
+        ]
+        | None
+    ) = None
     fault_level_min_mva: (
         Annotated[
             float,
@@ -149,6 +216,15 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
         | None
     ) = None
     xr: Annotated[float, field("X/R of the supply", "", ge=0, le=1000)] | None = None
+    z0_ratio: (
+        Annotated[
+            float,
+            field(
+                "Z0/Z1 of the supply", "", ge=0, le=1e9, help="For earth faults. Blank above 1 kV: unearthed."
+            ),
+        ]
+        | None
+    ) = None
 
 
 class Load(Attachment, frozen=True, kw_only=True, tag="load"):

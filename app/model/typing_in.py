@@ -1,12 +1,13 @@
 """What a person typed into a field, turned into an edit; `80 kW` typed as kVA goes where it belongs."""
 
+import math
 from typing import Any
 
 from app.model.changes import change, element
 from app.model.checks import EditRefused, called, quantity, shown
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
-from app.model.kinds import AnyElement, Load, Transformer
+from app.model.kinds import AnyElement, Load, Supply, Transformer
 from app.model.units import UnitError, parse, parse_ratio
 
 YES = ("yes", "true", "on", "1", "y", "closed", "connected", "leading")
@@ -49,6 +50,8 @@ def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:
     try:
         return {about.name: value_of(about, text)}
     except UnitError:
+        if isinstance(one, Supply) and about.unit == "MVA":
+            return {about.name: _from_current(one, text, about)}
         other = {"demand_kva": "demand_kw", "demand_kw": "demand_kva"}.get(about.name)
         if other is None or not isinstance(one, Load):
             raise
@@ -57,6 +60,16 @@ def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:
         except UnitError:
             pass
         raise
+
+
+def _from_current(supply: Supply, text: str, about: Field) -> float:
+    """MVA of a fault level typed as a current: √3·U·I, or U·I between two wires."""
+    try:
+        kiloamps = parse(text, "kA")
+    except UnitError:
+        return float(value_of(about, text))  # raises, in the words of its own unit
+    root = math.sqrt(3) if supply.wires == "three-phase" else 1.0
+    return root * supply.nominal_v / 1e3 * kiloamps
 
 
 def _both_windings(text: str, about: Field) -> dict[str, Any]:

@@ -36,6 +36,7 @@ TABLES: dict[str, tuple[str, Scale]] = {
     "mm²": ("a cross-section", AREA),
     "V": ("a voltage", _scale("V volt volts 1; kV 1000; mV 0.001; MV 1000000")),
     "A": ("a current", _scale("A amp amps 1; kA 1000; mA 0.001; MA 1000000")),
+    "kA": ("a current", _scale("kA 1; A 0.001; MA 1000")),
     "kVA": ("an apparent power", _scale("kVA 1; VA 0.001; MVA 1000; GVA 1000000")),
     "MVA": ("an apparent power", _scale("MVA 1; kVA 0.001; VA 0.000001; GVA 1000")),
     "kW": ("an active power", _scale(f"kW 1; W 0.001; MW 1000; mW 0.000001; hp {POWER_HP}/1000")),
@@ -54,6 +55,7 @@ TABLES["notches"] = TABLES["notch"]
 TABLES["% of nominal"] = TABLES["% of rated"] = TABLES["%"]
 TABLES["× rated"] = ("a multiple of the rated current", _scale("× x times 1; % 0.01"))
 OHM = _scale("Ω ohm ohms 1; mΩ mohm 0.001; kΩ kohm 1000; µΩ uΩ uohm 0.000001; MΩ Mohm 1000000")
+TABLES["Ω"] = ("a resistance", OHM)
 FARAD = _scale("µF uF 1; nF 0.001; pF 0.000001; mF 1000; F 1000000; MF 1000000000000")
 PER_LENGTH = {
     "Ω/km": ("a resistance or reactance per length", OHM),
@@ -187,6 +189,7 @@ def _allowed(unit: str) -> str:
     others = {
         "m": "m, km, ft, in, yd or mi", "mm²": "mm², AWG or kcmil", "V": "V or kV", "kVA": "VA, kVA or MVA",
         "kW": "W, kW, MW or hp", "W": "W or kW", "kvar": "var, kvar or Mvar", "A": "A or kA",
+        "kA": "A or kA", "Ω": "Ω, mΩ or kΩ",
         "Ω/km": "Ω/km, mΩ/m, Ω/kft or Ω/mi", "µF/km": "µF/km, nF/km or µF/mi", "°C": "°C, °F or K",
     }.get(unit, unit)  # fmt: skip
     return f"a number with or without its unit ({others})" if others else "a number"

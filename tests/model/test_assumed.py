@@ -99,6 +99,9 @@ def test_the_ratio_of_a_supply_is_assumed_only_where_its_fault_level_is_stated()
 
 def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
     no_stand_in = {"fault_level_min_mva", "area_mm2", "rating_a", "nominal_v", "demand_kva", "demand_kw"}
+    no_stand_in |= {"trip_a", "earth_1_ohm", "earth_2_ohm"}
+    only_for_faults = {"fault_level_max_mva", "return_r20_ohm_per_km", "r0_ohm_per_km", "x0_ohm_per_km"}
+    no_stand_in |= only_for_faults | {"fault_degc", "z0_ratio"}  # see fault_data
     for kind in KINDS.values():
         for field in fields_of(kind).values():
             if field.optional and field.type is float and not (issubclass(kind, Node)):
