@@ -4,7 +4,6 @@ import numpy as np
 
 from solver.forest import Forest
 from solver.load import drawn
-from solver.loose import conductors
 from solver.network import Complex, Index, Network, Real
 from solver.placed import Placed
 from solver.reached import fed_conductors
@@ -60,10 +59,11 @@ def answer(
         closure = _closure(source_power, load_power, taken)
     closure[[s is not Status.SOLVED for s in status]] = np.nan
     if network.wires is not None:
-        fed = fed_conductors(network, forest)
-        lost = conductors(network, network.wires, forest)
-        fed[forest.order, -1] |= (lost[0] | lost[1])[:, -1]
-        everywhere[~fed] = NAN
+        fed = fed_conductors(network, forest, placed)
+        if placed.by is not None and placed.here is not None:
+            fed[forest.order, -1] |= (placed.by | placed.here)[:, -1]
+        if not fed.all():
+            everywhere[~fed] = NAN
     return Solution(
         network=network,
         forest=forest,

@@ -14,18 +14,28 @@ from solver.wires import EARTH
 class Hung:
     """The parts of loads that hold their power or their current, gathered at their places and pairs.
 
+    Conductors of places are counted through, place · k + conductor.
+
     place : (element,)
-    near : (element,) conductor
-    far : (element,) conductor, -1 earth
+    near : (element,) conductor of its place
+    far : (element,) the other one; any where it is earth
+    between : (element,) float, 1 between conductors, 0 to earth
     power : (element, batch) complex [VA] conjugate
     current : (element, batch) complex [A] conjugate; None where there is none
+    order : (end,) elements at their near, then at their far ends, sorted by conductor
+    start : (target,) where the ends of each conductor begin in that order
+    target : (target,) conductors
     """
 
     place: Index
     near: Index
     far: Index
+    between: Real
     power: Complex
     current: Complex | None
+    order: Index
+    start: Index
+    target: Index
 
     def take(self, points: Index) -> "Hung":
         """The same with some operating points only."""
@@ -34,29 +44,29 @@ class Hung:
 
     def across(self, voltage: Complex) -> Complex:
         """(element, ...) volts from conductor to conductor, of (live, k, ...)."""
-        u = voltage[self.place, self.near]
-        between = self.far != EARTH
-        u[between] -= voltage[self.place[between], self.far[between]]
-        return u
+        flat = voltage.reshape(-1, *voltage.shape[2:])
+        other = flat.take(self.far, axis=0)
+        if not self.between.all():
+            other *= self.between.reshape(-1, *(1,) * (other.ndim - 1))
+        return np.subtract(flat.take(self.near, axis=0), other, other)
 
-    def add(self, voltage: Complex, out: Complex) -> None:
-        """Adds what is drawn at these volts to the currents that leave each place.
+    def draw(self, voltage: Complex, out: Complex) -> None:
+        """What is drawn at these volts, as currents that leave each place.
 
         voltage : (live, k, batch) complex [V]
-        out : (live, k, batch) complex [A], is added to
+        out : (live, k, batch) complex [A], is overwritten
         """
         u = self.across(voltage)
-        size = np.maximum(u.real**2 + u.imag**2, np.finfo(float).tiny)
+        size = u.real**2
+        size += u.imag**2
+        np.maximum(size, np.finfo(float).tiny, out=size)
         drawn = self.power / size
         if self.current is not None:
-            drawn = drawn + self.current / np.sqrt(size)
-        self.put(drawn * u, out)
-
-    def put(self, drawn: Complex, out: Complex) -> None:
-        """Adds currents of elements where they leave and takes them off where they come back."""
-        np.add.at(out, (self.place, self.near), drawn)
-        between = self.far != EARTH
-        np.subtract.at(out, (self.place[between], self.far[between]), drawn[between])
+            drawn += self.current / np.sqrt(size)
+        drawn *= u
+        ends = np.concatenate((drawn, drawn * -self.between[:, None])).take(self.order, axis=0)
+        out[...] = 0
+        out.reshape(-1, out.shape[-1])[self.target] = np.add.reduceat(ends, self.start, axis=0)
 
     def slopes(self, voltage: Complex) -> tuple[Complex, Complex]:
         """(element, batch) a and b of dI = a dU + b conj(dU) at these volts."""
@@ -85,29 +95,35 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
     place, far = forest.place[network.load_node[row]], to[row, near]
     stated, mix = np.conj(slots[row, near]), network.load_mix[row, :, None]
     reference = network.load_reference[row, near]
-    key, first, member = np.unique(
-        (place * k + near) * (k + 1) + far + 1, return_index=True, return_inverse=True
-    )
+    keys = (place * k + near) * (k + 1) + far + 1
+    key, first, member = np.unique(keys, return_index=True, return_inverse=True)
 
     def total(values: Complex | Real) -> Complex:
         found = np.zeros((key.size, values.shape[-1]), dtype=np.complex128)
         np.add.at(found, member, values)
         return found
 
+    place, near, far = place[first], near[first], far[first]
+    pairs = place, near, far
+    admittance = total(stated * mix[:, 2] / reference**2) if mix[:, 2].any() else None
+    stamps = None if admittance is None else (place, _stamps(*pairs, admittance, k))
+    if not mix[:, :2].any():
+        return None, stamps
     current = total(stated * mix[:, 1] / reference) if mix[:, 1].any() else None
-    hung = Hung(place[first], near[first], far[first], total(stated * mix[:, 0]), current)
-    steady = hung if mix[:, :2].any() else None
-    if not mix[:, 2].any():
-        return steady, None
-    admittance = total(stated * mix[:, 2] / reference**2)
-    return steady, (hung.place, _stamps(hung, admittance, k))
+    between = far != EARTH
+    ends = np.concatenate((place * k + near, place * k + np.where(between, far, near)))
+    order = np.argsort(ends, kind="stable")
+    target, start = np.unique(ends[order], return_index=True)
+    half = place.size
+    power = total(stated * mix[:, 0])
+    return Hung(place, ends[:half], ends[half:], 1.0 * between, power, current, order, start, target), stamps
 
 
-def _stamps(hung: Hung, admittance: Complex, k: int) -> Complex:
-    matrix = np.zeros((hung.place.size, k, k, admittance.shape[-1]), dtype=np.complex128)
-    row, between = np.arange(hung.place.size), hung.far != EARTH
-    matrix[row, hung.near, hung.near] = admittance
-    near, far, some, y = hung.near[between], hung.far[between], row[between], admittance[between]
-    matrix[some, far, far] = y
-    matrix[some, near, far] = matrix[some, far, near] = -y
+def _stamps(place: Index, near: Index, far: Index, admittance: Complex, k: int) -> Complex:
+    matrix = np.zeros((place.size, k, k, admittance.shape[-1]), dtype=np.complex128)
+    row, between = np.arange(place.size), far != EARTH
+    matrix[row, near, near] = admittance
+    some, one, other, y = row[between], near[between], far[between], admittance[between]
+    matrix[some, other, other] = y
+    matrix[some, one, other] = matrix[some, other, one] = -y
     return matrix

@@ -5,9 +5,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from solver.arrays import Complex, Index, Real
+from solver.arrays import Complex, Flag, Index, Real
 from solver.forest import Forest
-from solver.loose import conductors
 from solver.network import Network
 from solver.wires import Wires
 
@@ -41,15 +40,16 @@ class Joints:
 Entry = tuple[int, int, float]  # place, conductor, weight
 
 
-def joints_of(network: Network, forest: Forest) -> Joints | None:
+def joints_of(network: Network, forest: Forest, by: Flag | None) -> Joints | None:
     """All ties of a network: cut ends, electrodes, currents that transformers draw of their own.
 
     network : Network
     forest : Forest, of that network
+    by : (live, k) bool, conductors through which each place is fed; None where all are
     Returns : Joints, None where there is none
     """
     wires = network.wires
-    columns: list[tuple[list[Entry], Complex]] = _closing(network, forest)
+    columns: list[tuple[list[Entry], Complex]] = _closing(network.conductors, forest, by)
     earth = np.full(0 if wires is None else wires.earth_node.size, -1)
     own = np.full((network.transformer_from.size, 2), -1)
     if wires is not None:
@@ -67,14 +67,11 @@ def joints_of(network: Network, forest: Forest) -> Joints | None:
     return Joints(place, conductor, column, weight.astype(float), z, earth, own)
 
 
-def _closing(network: Network, forest: Forest) -> list[tuple[list[Entry], Complex]]:
+def _closing(k: int, forest: Forest, by: Flag | None) -> list[tuple[list[Entry], Complex]]:
     """Each conductor of a cut end joins the node it was cut from."""
     if not forest.tie_place.size:
         return []
-    if network.wires is None:
-        has = np.ones((forest.order.size, network.conductors), dtype=bool)
-    else:
-        has = conductors(network, network.wires, forest)[0]
+    has = np.ones((forest.order.size, k), dtype=bool) if by is None else by
     nothing = np.zeros(1, dtype=np.complex128)
     ends: Sequence[tuple[int, int]] = list(
         zip(forest.tie_place.tolist(), forest.place[forest.tie_node].tolist(), strict=True)

@@ -50,26 +50,27 @@ def conductors(network: Network, wires: Wires, forest: Forest) -> tuple[Flag, Fl
         (network.transformer_from, wires.units.has[:, 0]),
         (network.transformer_to, wires.units.has[:, 1]),
     ):
-        np.logical_or.at(meet, ends, has)
+        row, conductor = np.nonzero(has)
+        meet[ends[row], conductor] = True
     here = meet[forest.order]
     here[forest.tie_place] = by[forest.tie_place]
     return by, here
 
 
-def find_loose(network: Network, wires: Wires, forest: Forest) -> Loose | None:
+def find_loose(wires: Wires, forest: Forest, by: Flag, here: Flag) -> Loose | None:
     """Where a side has no reference, where a star has no balance, where a conductor begins out of nothing.
 
-    network : Network
-    wires : Wires, of that network
-    forest : Forest, of that network
+    wires : Wires
+    forest : Forest
+    by : (live, k) bool, conductors through which each place is fed
+    here : (live, k) bool, conductors that meet there
     Returns : Loose, None where everything is held
     """
-    supplied, k = int(forest.depth_zone[1]), network.conductors
+    supplied, k = int(forest.depth_zone[1]), by.shape[1]
     rows = forest.zone_transformer[supplied:]
     fed = (forest.transformer_way[rows] < 0).astype(int)
     sides = wires.units.loose[rows, fed]
     zone, which = np.nonzero(sides.any(axis=-1))
-    by, here = conductors(network, wires, forest)
     lost, conductor = np.nonzero(here & ~by)
     if not zone.size + lost.size:
         return None

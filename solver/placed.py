@@ -8,8 +8,8 @@ import numpy as np
 from solver.forest import Forest
 from solver.hung import Hung, hang
 from solver.joints import Joints, joints_of
-from solver.loose import Loose, find_loose
-from solver.network import Complex, Index, Network, Real
+from solver.loose import Loose, conductors, find_loose
+from solver.network import Complex, Flag, Index, Network, Real
 from solver.wires import Wires
 
 
@@ -30,6 +30,8 @@ class Placed:
     joints : Joints of the ties, None where there is none
     loose : Loose, None where everything is held
     hung : Hung, loads between conductors; None where there are none, or k = 1
+    by : (live, k) bool, conductors through which each place is fed; None where k = 1
+    here : (live, k) bool, conductors that meet there; None where k = 1
     """
 
     root: Complex
@@ -43,6 +45,8 @@ class Placed:
     joints: Joints | None
     loose: Loose | None = None
     hung: Hung | None = None
+    by: Flag | None = None
+    here: Flag | None = None
     gain: Complex | None = None
 
     def take(self, points: Index) -> "Placed":
@@ -68,7 +72,7 @@ def put(network: Network, forest: Forest) -> Placed:
     supplied = int(forest.depth_zone[1])
     root = network.source_voltage[forest.zone_source[:supplied]]
     ratio, series = fed_transformers(network, forest)
-    gain, hung = None, None
+    gain, hung, loose, by, here = None, None, None, None, None
     if network.wires is None:
         power, current, load_y = _loads(network, forest)
         series = series[:, None, :]
@@ -77,6 +81,8 @@ def put(network: Network, forest: Forest) -> Placed:
         hung, stamps = hang(network, forest)
         power, current = np.zeros((0, network.conductors, 1), dtype=np.complex128), None
         gain, series = fed_ports(network.wires, forest)
+        by, here = conductors(network, network.wires, forest)
+        loose = find_loose(network.wires, forest, by, here)
     lines = network.line_z if network.line_z.shape[0] else np.zeros((1, *network.line_z.shape[1:]), complex)
     z = lines[forest.feeder]
     z[forest.zone_start[:-1]] = 0
@@ -89,9 +95,11 @@ def put(network: Network, forest: Forest) -> Placed:
         ratio=ratio[:, None, :],
         series=series,
         level=np.abs(_phasors(forest, np.abs(root).max(axis=1), ratio)),
-        joints=joints_of(network, forest),
-        loose=None if network.wires is None else find_loose(network, network.wires, forest),
+        joints=joints_of(network, forest, by),
+        loose=loose,
         hung=hung,
+        by=by,
+        here=here,
         gain=gain,
     )
 

@@ -7,24 +7,25 @@ import numpy as np
 from solver.arrays import Flag, Index
 from solver.forest import Forest
 from solver.joints import joints_of
-from solver.loose import conductors
 from solver.network import Network
+from solver.placed import Placed
 from solver.rounds import neighbours
 from solver.wires import EARTH
 
 
-def fed_conductors(network: Network, forest: Forest) -> Flag:
+def fed_conductors(network: Network, forest: Forest, placed: Placed) -> Flag:
     """Which conductors of which node a supply reaches, through lines, windings and their star points.
 
     network : Network, with wires
     forest : Forest, of that network
+    placed : Placed, of both
     Returns : (node, k) bool; without wires all conductors of live nodes
     """
     wires, k = network.wires, network.conductors
     live = forest.place >= 0
-    if wires is None:
+    by, here = placed.by, placed.here
+    if wires is None or by is None or here is None:
         return np.repeat(live[:, None], k, axis=1)
-    by, here = conductors(network, wires, forest)
     if not (here & ~by).any():
         return (by | here)[forest.place] & live[:, None]
     fed = np.zeros((network.node_count, k), dtype=bool)
@@ -43,20 +44,24 @@ def fed_conductors(network: Network, forest: Forest) -> Flag:
             return fed
 
 
-def unfed_loads(network: Network, forest: Forest) -> Index:
+def unfed_loads(network: Network, forest: Forest, placed: Placed) -> Index:
     """Loads that hang on a phase which nothing feeds, or on a conductor that is not there.
 
     network : Network, with wires
     forest : Forest, of that network
+    placed : Placed, of both
     Returns : (row,) of the live loads concerned
     """
     wires, k = network.wires, network.conductors
-    if wires is None:
+    if wires is None or placed.by is None or placed.here is None:
         return np.zeros(0, dtype=np.intp)
-    by, here = conductors(network, wires, forest)
-    good = fed_conductors(network, forest)
+    good = fed_conductors(network, forest, placed)
+    if good.all():
+        return np.zeros(0, dtype=np.intp)
     live = forest.place >= 0
-    good[live, k - 1] |= (by | here)[forest.place[live], k - 1]  # a lost neutral still joins its loads
+    good[live, k - 1] |= (placed.by | placed.here)[
+        forest.place[live], k - 1
+    ]  # a lost neutral still joins its loads
     row, near = np.nonzero(network.load_power.any(axis=-1) & live[network.load_node][:, None])
     node, far = network.load_node[row], wires.load_to[row, near]
     lacks = ~good[node, near] | ((far != EARTH) & ~good[node, far])
@@ -71,9 +76,10 @@ def unreferenced(network: Network, forest: Forest) -> Index:
     Returns : (row,) of transformers
     Source : common practice, no source
     """
-    wires, joints = network.wires, joints_of(network, forest)
+    wires = network.wires
     if wires is None:
         return np.zeros(0, dtype=np.intp)
+    joints = joints_of(network, forest, None)
     zones, supplied = forest.zone_transformer.size, int(forest.depth_zone[1])
     rows = forest.zone_transformer[supplied:]
     side = (forest.transformer_way[rows] < 0).astype(int)

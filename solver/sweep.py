@@ -84,9 +84,10 @@ class Sweep:
         Returns : (live, k, batch) complex [A]
         """
         if self.placed.gain is not None:
-            self.current[...] = 0
-            if self.placed.hung is not None:
-                self.placed.hung.add(voltage, self.current)
+            if self.placed.hung is None:
+                self.current[...] = 0
+            else:
+                self.placed.hung.draw(voltage, self.current)
         else:
             for part in self.parts:
                 self._currents(part, voltage[part], self.current[part])

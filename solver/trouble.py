@@ -42,7 +42,7 @@ def find_trouble(network: Network, forest: Forest, placed: Placed) -> Trouble:
     Returns : Trouble, empty where it can be solved
     Source : common practice, no source
     """
-    unfed = tuple(unfed_loads(network, forest).tolist())
+    unfed = tuple(unfed_loads(network, forest, placed).tolist())
     if not forest.tie_place.size:
         return Trouble(unfed=unfed)
     bare = _bare_rounds(network)
