@@ -109,7 +109,11 @@ def _limits(subject: Subject) -> SheetTable:
 
 
 RULES = (
-    ("Network", "Backward/forward sweep of the radial layout, to a closure below 1e-6 of the supply."),
+    (
+        "Network",
+        "Backward/forward sweep of the trees below the supplies, the currents that close rings by "
+        "compensation, to a closure below 1e-6 of the supply.",
+    ),
     (
         "Load model",
         "Each load states its shares of constant power, current and impedance; blank is constant power.",

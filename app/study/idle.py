@@ -8,7 +8,7 @@ from app.model.drawing import Drawing
 from app.model.figures import amps, nameplate, percent, power
 from app.model.kinds import Transformer
 from app.study.around import mismatch, units_of
-from app.study.layout import Layout, Ring
+from app.study.layout import Layout
 from app.study.outcome import AttachmentState, Finding, Table, Verdict
 from app.study.results import Tables, tables_of
 from app.study.rows import Rows
@@ -43,15 +43,15 @@ def idle_findings(
     ratio = np.abs(rows.network.transformer_ratio[:, 0])
     row = {int(branch): n for n, branch in enumerate(rows.units)}
     loops = [(r, mismatch(layout, r, ratio, row)) for r in layout.rings if not r.supplies]
-    loops = [(ring, apart) for ring, apart in loops if apart > AGREE]
+    apart = {tuple(units_of(layout, ring)): gap for ring, gap in reversed(loops) if gap > AGREE}
     pairs = {ring.supplies: None for ring in layout.rings if ring.supplies}
-    if not loops and not pairs:
+    if not apart and not pairs:
         return []
     solution = solve(_idle(rows.network), forest=layout.forest)
     if any(s is not Status.SOLVED for s in solution.status):
         return []
     idle = tables_of(layout, zones, rows, solution, len(drawing.cases))
-    found = [_circulating(drawing, layout, idle, ring, apart) for ring, apart in loops]
+    found = [_circulating(drawing, layout, idle, list(units), gap) for units, gap in reversed(apart.items())]
     return found + [_exchange(drawing, layout, idle, list(pair), loaded) for pair in pairs]
 
 
@@ -61,8 +61,7 @@ def _idle(network: Network) -> Network:
     return replace(network, **{name: np.zeros_like(getattr(network, name)) for name in names})
 
 
-def _circulating(drawing: Drawing, layout: Layout, idle: Tables, ring: Ring, apart: float) -> Finding:
-    units = units_of(layout, ring)
+def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int], apart: float) -> Finding:
     share = idle.branches.column("loading_percent")[units]
     at, case = np.unravel_index(share.argmax(), share.shape)
     unit, value = layout.branches[units[at]], float(share[at, case])
@@ -96,7 +95,7 @@ def _exchange(
     """What two joined supplies do under load, and what one gives the other with all loads off."""
     ids = tuple(layout.attachment_ids[r] for r in rows)
     kw = loaded.column("kw")[rows]
-    case = int(np.argmin(kw.min(axis=0)))  # where one gives least, or takes most
+    case = int(np.argmin(kw.min(axis=0)))  # where one gives least, or takes most back
     told = " and ".join(f"{tell(drawing, i)} {_gives(float(kw[n, case]))}" for n, i in enumerate(ids))
     words = f"{told}{_in_case(drawing, case)}. {_passing(drawing, layout, idle, rows, case)}"
     return Finding("power exchanged", Verdict.NOTE, ids, words, case=drawing.cases[case].name)

@@ -108,6 +108,32 @@ def two_wire() -> Drawing:
     return Drawing(project=Project(title="Shed"), frequency_hz=60.0, elements=elements)
 
 
+def meshed(*cases: Case) -> Drawing:
+    """Two transformers at unequal taps into a closed ring, and a second supply over a charging cable."""
+    plate = {"rating_kva": 315.0, "load_loss_w": 2800.0, "no_load_loss_w": 324.0}
+    elements = {
+        "B1": Busbar(name="HV"),
+        "S1": Supply(node="B1", nominal_v=11000.0, held_percent=99.0),
+        "T1": Transformer(name="West", start="B1", end="B2", v1_v=11000.0, v2_v=400.0, **plate),
+        "T2": Transformer(
+            name="East", start="B3", end="B1", v1_v=400.0, v2_v=11000.0, vector_group="YNd1",
+            tapped="winding 2", tap=-2, **plate,
+        ),
+        "B2": Busbar(name="West board"),
+        "B3": Busbar(name="East board"),
+        "C1": Cable(start="B2", end="B3", length_m=60.0, r20_ohm_per_km=0.125, rating_a=330.0),
+        "C2": Cable(start="B2", end="B4", length_m=110.0, r20_ohm_per_km=0.32, rating_a=195.0),
+        "C3": Cable(start="B3", end="B4", length_m=80.0, r20_ohm_per_km=0.32, rating_a=195.0),
+        "B4": Busbar(name="Far board"),
+        "L1": Load(name="Far", node="B4", demand_kva=90.0),
+        "L2": Load(name="East", node="B3", demand_kva=60.0, constant_current_percent=100.0),
+        "C4": Cable(start="B5", end="B1", length_m=2500.0, r20_ohm_per_km=0.32, c_uf_per_km=0.31),
+        "B5": Busbar(name="Other intake"),
+        "S2": Supply(node="B5", nominal_v=11000.0, held_percent=98.9),
+    }  # fmt: skip
+    return Drawing(elements=elements, cases=cases or (Case(),))
+
+
 def blocked() -> Drawing:
     """Two cables of no length side by side: a loop without impedance, so that nothing is solved."""
     elements = {

@@ -4,7 +4,7 @@ from pathlib import Path
 
 import openpyxl
 import pytest
-from sheet_layouts import NIGHT, PEAK, blocked, pair, three_cables, two_wire
+from sheet_layouts import NIGHT, PEAK, blocked, meshed, pair, three_cables, two_wire
 from spreadsheet import differences, needs_spreadsheet, recalculated
 from xlsxwriter import Workbook
 
@@ -17,6 +17,8 @@ LAYOUTS = {
     "pair by night.xlsx": (pair(PEAK, NIGHT), 280),
     "three cables.xlsx": (three_cables(), 60),
     "two wires.xlsx": (two_wire(), 60),
+    "meshed.xlsx": (meshed(), 80),
+    "meshed by night.xlsx": (meshed(PEAK, NIGHT), 180),
     "blocked.xlsx": (blocked(), 5),
 }
 Books = dict[str, tuple[Path, Path]]

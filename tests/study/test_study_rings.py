@@ -242,6 +242,11 @@ def test_windings_of_another_rating_in_one_loop_circulate_too():
     assert finding.verdict is Verdict.NEAR
 
 
+def test_two_loops_through_the_same_transformers_are_told_once():
+    base = pair(second={"tap": 1, "end": "B3"}, B3=Busbar(), C1=line("B2", "B3"), C2=line("B3", "B2"))
+    assert told(base, "circulating current").ids == ("T1", "T2")
+
+
 def test_a_small_mismatch_is_only_noted():
     finding = told(pair(second={"v2_v": 400.4}), "circulating current")
     assert finding.verdict is Verdict.NOTE
