@@ -3,5 +3,6 @@
 from app.study.curve import TapCurve, tap_curve
 from app.study.path import path
 from app.study.run import run
+from app.study.starts import starts
 
-__all__ = ["TapCurve", "path", "run", "tap_curve"]
+__all__ = ["TapCurve", "path", "run", "starts", "tap_curve"]

@@ -2,12 +2,15 @@
 
 from dataclasses import dataclass, field
 from enum import Enum
-from typing import Any, Generic, TypeVar
+from typing import TYPE_CHECKING, Any, Generic, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from solver.status import Status
+
+if TYPE_CHECKING:
+    from app.study.start_table import StartTable
 
 State = TypeVar("State")
 
@@ -163,3 +166,4 @@ class Outcome:
     fed_from: dict[str, str] = field(
         default_factory=dict
     )  # node id -> the node before it, seen from the supply
+    starts: "StartTable | None" = None  # motor starts, where there are motors and figures

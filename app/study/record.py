@@ -10,6 +10,7 @@ from app.model.drawing import Drawing
 from app.model.kinds import kind_of
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Outcome, Table
+from app.study.start_table import StartTable
 
 
 def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
@@ -36,6 +37,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "nodes": _rows(drawing, outcome.nodes),
         "branches": _rows(drawing, outcome.branches),
         "attachments": _rows(drawing, outcome.attachments),
+        **({} if outcome.starts is None else {"starts": _starts(drawing, outcome.starts)}),
         "findings": [{k: _plain(v) for k, v in _finding(f).items()} for f in outcome.findings],
         "assumptions": [{k: _plain(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
         "fed_by": dict(outcome.upstream),
@@ -53,6 +55,14 @@ def _rows(drawing: Drawing, table: Table[Any]) -> dict[str, dict[str, Any]]:
             told[name] = _plain(column[row])
         found[id] = told
     return found
+
+
+def _starts(drawing: Drawing, table: StartTable) -> dict[str, dict[str, Any]]:
+    """Motor starts, with the board and the supply that are judged."""
+    told = _rows(drawing, table)
+    for id, board, supply in zip(table.ids, table.boards, table.supplies, strict=True):
+        told[id] |= {"board": board, "supply": supply}
+    return told
 
 
 def _finding(finding: Any) -> dict[str, Any]:

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.kinds import Capacitor, Generator, Line, Load, Switch
+from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Switch
 from app.study.layout import Layout, arrays_of
 from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
 from app.study.zones import Zones
@@ -29,7 +29,7 @@ class Rows:
     lines : (line,) branch rows of the layout; closed switches stand among them
     units : (transformer,) branch rows
     sources : (source,) attachment rows
-    loads : (load,) attachment rows of loads and generators
+    loads : (load,) attachment rows of loads, motors and generators
     shunts : (shunt,) attachment rows of capacitors
     phases : (node,) float, 3 in three-phase trees, 1 in two-wire trees
     wide : (node,) float, line volts over the solver's volts: √3 or 1
@@ -127,6 +127,6 @@ def _sort(layout: Layout) -> _Kinds:
         i for i, b in enumerate(layout.branches) if isinstance(b, Line) or isinstance(b, Switch) and b.closed
     ]
     hung = layout.attachments
-    loads = [i for i, a in enumerate(hung) if isinstance(a, Load | Generator)]
+    loads = [i for i, a in enumerate(hung) if isinstance(a, Load | Generator | Motor)]
     shunts = [i for i, a in enumerate(hung) if isinstance(a, Capacitor) and a.connected]
     return _Kinds(*(np.array(rows, dtype=np.intp) for rows in (lines, layout.units, loads, shunts)))

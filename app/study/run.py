@@ -13,6 +13,9 @@ from app.study.outcome import Finding, Outcome, Verdict
 from app.study.results import tables_of
 from app.study.rings import trouble_finding
 from app.study.rows import Rows, rows_of
+from app.study.start_findings import start_findings
+from app.study.start_table import StartTable
+from app.study.starts import start_table, starters
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
 from solver import Solution, Status, Trouble, grow, solve
@@ -68,6 +71,10 @@ def _outcome(
     status = _status(solution)
     collapse: Collapse | None = None
     tables = tables_of(layout, zones, rows, solution if status is Status.SOLVED else None, len(cases))
+    starts: StartTable | None = None
+    if status is Status.SOLVED and rows is not None and starters(layout):
+        starts = start_table(drawing, layout, zones, rows)
+        found = found + start_findings(drawing, starts, cases)
     if status is Status.SOLVED:
         found = found + judge(drawing, tables.nodes, tables.branches, cases)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
@@ -95,6 +102,7 @@ def _outcome(
         to_blame=collapse.branch if collapse else None,
         seconds=seconds,
         fed_from=layout.before,
+        starts=starts,
     )
 
 

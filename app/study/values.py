@@ -8,9 +8,9 @@ from numpy.typing import NDArray
 
 from app.model import assumed, taps
 from app.model.drawing import Case
-from app.model.kinds import Capacitor, Generator, Line, Load, Supply, Transformer
+from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Supply, Transformer
 from app.study.memory import Columns
-from solver import line, load, transformer
+from solver import line, load, motor, transformer
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -114,43 +114,88 @@ def held_values(supplies: Sequence[Supply], cases: Sequence[Case]) -> Complex:
     return size * np.exp(1j * np.deg2rad(angle))[:, None]
 
 
-def _demand_row(element: Load | Generator) -> Row:
-    """kVA, power factor, leading, kW and kvar made, shares of constant current and impedance, reference."""
+Demand = Load | Generator | Motor
+LOAD, MOTOR, STARTING, MAKER = range(4)  # what a case scales it by; a start is not scaled
+
+
+def _demand_row(element: Demand) -> Row:
+    """kVA, power factor, leading; kW and kvar besides; what it is; shares of constant current and impedance;
+    reference."""
     if isinstance(element, Generator):
-        return 0.0, 1.0, False, element.output_kw, element.output_kvar, True, 0.0, 0.0, math.nan
-    pf, kva, kw = element.power_factor, element.demand_kva, element.demand_kw
+        return 0.0, 1.0, False, -element.output_kw, -element.output_kvar, MAKER, 0.0, 0.0, math.nan
+    if isinstance(element, Motor):
+        return motor_row(element, element.state == "starting")
+    kva, pf, kw = element.demand_kva, element.power_factor, element.demand_kw
     if kva is None:
         kva = kw / pf if kw else 0.0
     current = assumed.value(element, "constant_current_percent") / 100
     impedance = assumed.value(element, "constant_impedance_percent") / 100
     reference = math.nan if element.reference_v is None else element.reference_v
-    return kva, pf, element.leading, 0.0, 0.0, False, current, impedance, reference
+    return kva, pf, element.leading, 0.0, 0.0, LOAD, current, impedance, reference
 
 
-_demands: Columns[Load | Generator] = Columns(_demand_row, 9)
+def motor_row(element: Motor, starts: bool) -> Row:
+    """A motor as a load that runs, or that starts: straight on the line an impedance, else a held current.
+
+    element : the motor; off it draws nothing
+    starts : bool
+
+    Returns : a row of demands: kVA, power factor, leading; kW and kvar besides; what a case scales it by;
+        shares of constant current and impedance; rated V (nan where blank)
+    Source : see solver.motor
+    """
+    drawn = motor.running(element.rated_kw * 1e3, element.efficiency, element.power_factor)
+    limits, locked = element.starter != "direct", element.starting_current
+    if starts:
+        times = min(assumed.value(element, "limited_current"), locked)
+        limits = limits and times < locked
+        factor = assumed.value(element, "limited_power_factor") if limits else element.starting_power_factor
+        drawn = motor.starting(drawn, times, factor)
+    drawn = drawn * (element.state != "off")
+    reference = math.nan if element.rated_v is None else element.rated_v
+    shares = (float(limits), float(not limits)) if starts else (0.0, 0.0)
+    kw, kvar = float(drawn.real) / 1e3, float(drawn.imag) / 1e3
+    return 0.0, 1.0, False, kw, kvar, STARTING if starts else MOTOR, *shares, reference
+
+
+_demands: Columns[Demand] = Columns(_demand_row, 9)
 
 
 def load_values(
-    drawn: Sequence[Load | Generator], nominal_v: Real, cases: Sequence[Case]
+    drawn: Sequence[Demand], nominal_v: Real, cases: Sequence[Case]
 ) -> tuple[Complex, Real, Real]:
     """Power drawn at the reference voltage, that voltage, and the load mix.
 
-    drawn : (load,) loads and generators; a generator draws negative power
+    drawn : (load,) loads, generators and motors; a generator draws negative power
     nominal_v : (load,) float [V] of their nodes, the reference where none is stated
-    cases : (case,) scale loads and generation
+    cases : (case,) scale loads, running motors and generation
 
     Returns : power (load, case) complex [VA], whole; reference (load,) float [V]; mix (load, 3) shares of
         constant power, current, impedance
-    Source : see solver.load
+    Source : see solver.load, solver.motor
     """
-    kva, pf, leading, kw, kvar, makes, current, impedance, reference = _demands.of(drawn)
-    demand = load.power(kva, pf, leading > 0)
-    power = np.where(makes > 0, -(kw + 1j * kvar).astype(np.complex128), demand) * 1e3
-    loads = np.array([c.load_percent for c in cases], dtype=np.float64) / 100
-    makers = np.array([c.generation_percent for c in cases], dtype=np.float64) / 100
-    scaled = np.asarray(power[:, None] * np.where(makes[:, None] > 0, makers, loads), dtype=np.complex128)
+    return scaled_values(_demands.of(drawn), nominal_v, cases)
+
+
+def scaled_values(demands: Real, nominal_v: Real, cases: Sequence[Case]) -> tuple[Complex, Real, Real]:
+    """The same of demands that stand in columns already.
+
+    demands : (9, load) float, columns of rows such as motor_row gives
+    nominal_v : (load,) float [V] of their nodes
+    cases : (case,)
+
+    Returns : power (load, case) complex [VA], reference (load,) float [V], mix (load, 3)
+    Source : common practice, no source
+    """
+    kva, pf, leading, kw, kvar, what, current, impedance, reference = demands
+    loads = np.array([c.load_percent for c in cases], dtype=np.float64)
+    motors = [c.load_percent if c.motor_percent is None else c.motor_percent for c in cases]
+    makers = [c.generation_percent for c in cases]
+    scale = np.array([loads, motors, np.full(len(cases), 100.0), makers], dtype=np.float64) / 100
+    whole = (load.power(kva, pf, leading > 0) + kw + 1j * kvar) * 1e3
+    power = np.asarray(whole[:, None] * scale[what.astype(int)], dtype=np.complex128)
     reference = np.asarray(np.where(np.isnan(reference), nominal_v, reference), dtype=np.float64)
-    return scaled, reference, load.mix(current, impedance)
+    return power, reference, load.mix(current, impedance)
 
 
 def shunt_values(capacitors: Sequence[Capacitor], nominal_v: Real) -> Complex:

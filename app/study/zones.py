@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.kinds import Capacitor, Load, Supply, Transformer
+from app.model.kinds import Capacitor, Load, Motor, Supply, Transformer
 from app.study.layout import NONE, Layout
 from app.study.outcome import Assumption, Finding, Verdict
 from app.study.words import slip, tell
@@ -115,7 +115,7 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
 
 
 def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
-    """Loads stated, and capacitors rated, for a voltage that is not their node's, with the likely slip.
+    """Loads stated, motors and capacitors rated for a voltage that is not their node's, with the likely slip.
 
     drawing : the drawing
     layout : its graph
@@ -127,6 +127,8 @@ def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Find
     for row, attachment in enumerate(layout.attachments):
         if isinstance(attachment, Load):
             volts, most, words = attachment.reference_v, APART, "states its demand at"
+        elif isinstance(attachment, Motor):
+            volts, most, words = attachment.rated_v, APART, "is rated"
         elif isinstance(attachment, Capacitor):
             volts, most, words = attachment.rated_v, USUAL_RESERVE, "is rated"
         else:

@@ -1,0 +1,184 @@
+"""Motor starts: each motor in turn while the rest runs, behind the impedance of the supply; one batch."""
+
+from dataclasses import dataclass, fields, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model import assumed
+from app.model.drawing import Drawing
+from app.model.kinds import Generator, Load, Motor, Supply
+from app.study.layout import NONE, Layout, lay_out
+from app.study.outcome import Verdict
+from app.study.rows import Rows, rows_of
+from app.study.start_rows import behind, motors_of, nominal_of, source_impedance, without
+from app.study.start_table import StartState, StartTable
+from app.study.structure import structure_findings
+from app.study.zones import Zones, zones_of
+from solver import Solution, Status, motor, solve
+
+Real = NDArray[np.float64]
+
+
+def starts(drawing: Drawing) -> StartTable:
+    """Start every motor of a drawing in turn while the others run.
+
+    Before the start the supplies hold their volts, as in any case; then they hold the electromotive force
+    that gave these volts behind their impedance U²/Sk. A motor that is off is not started, nor is any in a
+    case in which motors stand still.
+
+    drawing : the drawing
+
+    Returns : StartTable, columns (motor, case); no rows where the layout cannot be solved as drawn
+    Source : dips at the least fault level: IEC 61000-3-11 (from memory)
+    """
+    layout = lay_out(drawing)
+    zones = zones_of(drawing, layout)
+    found = structure_findings(drawing, layout, zones)
+    if not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found):
+        return _table(layout, [], _nothing(0, len(drawing.cases)), [])
+    return start_table(drawing, layout, zones, rows_of(drawing, layout, zones))
+
+
+def starters(layout: Layout) -> list[int]:
+    """The motors to start: live and not off.
+
+    layout : the graph of the drawing
+
+    Returns : list of attachment rows
+    """
+    hung = enumerate(layout.attachments)
+    return [i for i, a in hung if isinstance(a, Motor) and a.state != "off" and layout.live[layout.at[i]]]
+
+
+def start_table(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> StartTable:
+    """The same where the rows of the solver are known already.
+
+    drawing : the drawing
+    layout : its graph
+    zones : nominal_v (zone,) float [V]
+    rows : its rows
+
+    Returns : StartTable, columns (motor, case)
+    Source : see starts
+    """
+    started, cases = starters(layout), len(drawing.cases)
+    if not started:
+        return _table(layout, [], _nothing(0, cases), [])
+    before = without(drawing, layout, zones, rows, started)
+    still = solve(before, forest=layout.forest)
+    after = behind(drawing, layout, zones, rows, started, before, still)
+    moved = solve(after)
+    return _judged(drawing, layout, zones, rows, _Pair(started, still, moved))
+
+
+@dataclass(frozen=True, slots=True)
+class _Pair:
+    """Attachment rows of the motors, and the layout before and while each starts."""
+
+    started: list[int]
+    still: Solution
+    moved: Solution
+
+
+def board_of(layout: Layout, row: int) -> int:
+    """The nearest node towards the supply, within the motor's voltage, that serves something else too.
+
+    layout : the graph of the drawing
+    row : attachment row of a motor
+
+    Returns : node row; the head of the zone where nothing else is served
+    """
+    node, below = layout.at[row], NONE
+    while layout.fed_by[node] != NONE and layout.zone[layout.fed_from[node]] == layout.zone[node]:
+        if _serves_more(layout, node, row, below):
+            return node
+        node, below = layout.fed_from[node], node
+    return node
+
+
+def _serves_more(layout: Layout, node: int, row: int, below: int) -> bool:
+    hung = enumerate(layout.attachments)
+    if any(
+        layout.at[i] == node and i != row and isinstance(a, Load | Motor | Generator) and not _is_off(a)
+        for i, a in hung
+    ):
+        return True
+    return any(n not in (below, node) and layout.fed_from[n] == node for n in layout.order)
+
+
+def _is_off(hung: Any) -> bool:
+    return isinstance(hung, Motor) and hung.state == "off"
+
+
+def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _Pair) -> StartTable:
+    """The figures of every start."""
+    started, cases = pair.started, len(drawing.cases)
+    count = len(started)
+    at = np.array([layout.at[i] for i in started])
+    boards = np.array([board_of(layout, i) for i in started])
+    feeding = [layout.supply_of[layout.tree[n]] for n in at]
+    points = np.array([layout.at[s] for s in feeding])
+    found = _nothing(count, cases)
+    ended = zip(pair.still.status, pair.moved.status, strict=True)
+    solved = np.array([a is Status.SOLVED and b is Status.SOLVED for a, b in ended]).reshape(count, cases)
+    for name, nodes in (("motor", at), ("board", boards), ("supply", points)):
+        was, now = (_volts(s, rows, nodes, solved) for s in (pair.still, pair.moved))
+        found[f"{name}_before_v"], found[f"{name}_v"] = was, now
+        found[f"{name}_step_percent"] = 100 * (was - now) / was
+    motors = motors_of(layout, started)
+    nominal = nominal_of(layout, zones, started)
+    rated = np.array([n if m.rated_v is None else m.rated_v for m, n in zip(motors, nominal, strict=True)])
+    unknown = [source_impedance(s) == 0 for f in feeding if isinstance(s := layout.attachments[f], Supply)]
+    found["supply_step_percent"][unknown] = np.nan
+    found["motor_percent"] = 100 * found["motor_v"] / rated[:, None]
+    found["current_a"] = _current(pair, rows, at, found["motor_v"])
+    running = [abs(motor.running(m.rated_kw * 1e3, m.efficiency, m.power_factor)) for m in motors]
+    found["times_rated"] = found["current_a"] / (np.array(running) / (rows.wide[at] * rated))[:, None]
+    found["torque_percent"] = _torque(motors, found["motor_percent"])
+    idle = [c.motor_percent == 0 for c in drawing.cases]
+    for column in found.values():
+        column[:, idle] = np.nan
+    table = _table(layout, started, found | {"solved": solved | idle}, [layout.node_ids[n] for n in boards])
+    return replace(table, supplies=tuple(layout.attachment_ids[f] for f in feeding))
+
+
+def _volts(solution: Solution, rows: Rows, nodes: NDArray[np.intp], solved: NDArray[np.bool_]) -> Real:
+    """(motor, case) volts at a node of each motor in its own columns."""
+    count, cases = solved.shape
+    volts = np.abs(solution.voltage[nodes, 0]).reshape(count, count, cases)
+    own = volts[np.arange(count), np.arange(count)] * rows.wide[nodes][:, None]
+    return np.where(solved, own, np.nan)
+
+
+def _current(pair: _Pair, rows: Rows, at: NDArray[np.intp], volts: Real) -> Real:
+    count, cases = volts.shape
+    drawn = np.abs(pair.moved.load_power[-count:, 0]).reshape(count, count, cases)
+    own = drawn[np.arange(count), np.arange(count)]
+    return np.asarray(own * (rows.phases[at] / rows.wide[at])[:, None] / volts)
+
+
+def _torque(motors: list[Motor], percent: Real) -> Real:
+    found = 100 * motor.direct_torque(percent, 100.0)
+    for row, m in enumerate(motors):
+        limit = assumed.value(m, "limited_current")
+        if m.starter == "soft starter" and limit < m.starting_current:
+            found[row] = np.where(
+                np.isnan(percent[row]), np.nan, 100 * motor.limited_torque(limit, m.starting_current)
+            )
+        elif m.starter == "drive":
+            found[row] = np.nan
+    return found
+
+
+def _nothing(count: int, cases: int) -> dict[str, NDArray[Any]]:
+    none = {f.name: np.full((count, cases), np.nan) for f in fields(StartState)}
+    return {**none, "solved": np.zeros((count, cases), dtype=bool)}
+
+
+def _table(
+    layout: Layout, started: list[int], found: dict[str, NDArray[Any]], boards: list[str]
+) -> StartTable:
+    ids = tuple(layout.attachment_ids[i] for i in started)
+    return StartTable(StartState, ids, found, {id: n for n, id in enumerate(ids)}, tuple(boards))
