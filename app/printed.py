@@ -52,6 +52,18 @@ ATTACHMENT_COLUMNS: tuple[Column, ...] = (
 )
 
 
+START_COLUMNS: tuple[Column, ...] = (
+    ("A", figure("current_a", 1)),
+    ("× rated", figure("times_rated", 2)),
+    ("V before", figure("motor_before_v", 1)),
+    ("V", figure("motor_v", 1)),
+    ("% rated", figure("motor_percent", 1)),
+    ("board step %", figure("board_step_percent", 2)),
+    ("supply step %", figure("supply_step_percent", 2)),
+    ("torque %", figure("torque_percent", 0)),
+)
+
+
 def printed(drawing: Drawing, outcome: Outcome) -> str:
     """The whole text."""
     parts = [_head(drawing, outcome)]
@@ -80,6 +92,7 @@ def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]
         _table(drawing, "Nodes", outcome.nodes, NODE_COLUMNS, case),
         _table(drawing, "Branches", outcome.branches, BRANCH_COLUMNS, case),
         _table(drawing, "Loads and infeeds", outcome.attachments, ATTACHMENT_COLUMNS, case),
+        _starts(drawing, outcome, case),
         _balance(outcome, case),
     ]
 
@@ -118,6 +131,21 @@ def aligned(lines: Sequence[Sequence[str]], figures: int) -> str:
         for line in lines
     )
     return "\n".join(f"  {row}".rstrip() for row in rows)
+
+
+def _starts(drawing: Drawing, outcome: Outcome, case: int) -> str:
+    """Motor starts, those of the case that there are."""
+    table = outcome.starts
+    states = [] if table is None else [(id, table.at(id, case)) for id in table.ids]
+    lines = [
+        [id, drawing.elements[id].name, *(write(state) for _, write in START_COLUMNS)]
+        for id, state in states
+        if state.motor_v == state.motor_v
+    ]
+    if not lines:
+        return ""
+    heads = ["id", "name", *(head for head, _ in START_COLUMNS)]
+    return f"Motor starts, one at a time\n{aligned([heads, *lines], len(START_COLUMNS))}"
 
 
 def _balance(outcome: Outcome, case: int) -> str:

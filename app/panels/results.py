@@ -9,7 +9,7 @@ from msgspec import Struct
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.figures import amps, length, loss, percent, plain, power, volts
-from app.model.kinds import Attachment, Generator, Line, Load, Node, Supply, Switch, Transformer
+from app.model.kinds import Attachment, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
 from app.panels.change import change
 from app.study.outcome import BranchState, Finding, NodeState, Outcome, Table, Verdict
 
@@ -176,17 +176,46 @@ def _attachment(asked: Asked, id: str) -> list[Row]:
         return []
     element, row = asked.drawing.elements[id], partial(_row, asked, "attachments", id)
     assert isinstance(element, Attachment)
-    feeds = not isinstance(element, Load)
+    feeds = not isinstance(element, Load | Motor)
     made = [
         row("Feeds in" if feeds else "Draws", "kw", power),
-        row("" if isinstance(element, Load | Supply | Generator) else "Reactive", "kvar", _kvar),
+        row("" if isinstance(element, Load | Motor | Supply | Generator) else "Reactive", "kvar", _kvar),
         row("Current", "current_a", amps),
         row("Volts", "voltage_v", volts),
     ]
+    return made + _start(asked, id)
+
+
+def _start(asked: Asked, id: str) -> list[Row]:
+    """What the start of a motor does, to itself, its board and its supply."""
+    table = asked.outcome.starts
+    if table is None or id not in table:
+        return []
+    states = _states(table, id, len(asked.outcome.cases))
+    before = asked.before.starts if asked.before is not None else None
+    then = before.at(id, asked.case) if before is not None and id in before else None
+    made = []
+    for label, name, write, check in _START:
+        cells = tuple("no start" if s.motor_v != s.motor_v else write(getattr(s, name)) for s in states)
+        if all(
+            cell == "no start" or math.isnan(getattr(s, name)) for cell, s in zip(cells, states, strict=True)
+        ):
+            continue
+        moved = change(getattr(states[asked.case], name), getattr(then, name), write) if then else ""
+        made.append(Row(label, cells, moved, _verdict(asked, id, check)))
     return made
 
 
 _kvar = partial(power, unit="kvar")
+_step = partial(percent, digits=2)
+_START: tuple[tuple[str, str, Write, tuple[str, ...]], ...] = (
+    ("At start", "current_a", amps, ()),
+    ("Volts at start", "motor_v", volts, ("start volts",)),
+    ("Of rated", "motor_percent", percent, ("start volts",)),
+    ("Step at board", "board_step_percent", _step, ("start step, board",)),
+    ("Step at supply", "supply_step_percent", _step, ("start step, supply",)),
+    ("Start torque", "torque_percent", partial(percent, digits=0), ()),
+)
 _MAKERS: tuple[tuple[type, Callable[[Asked, str], list[Row]]], ...] = (
     (Node, _node),
     (Line, _line),

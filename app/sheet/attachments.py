@@ -81,14 +81,14 @@ def model_words(load: Load) -> str:
 def _served(subject: Subject, id: str, load: Load, state: AttachmentState, case: int) -> Cells:
     if not state.live:
         return {}
-    found = _flow(subject, load, state, case)
+    found = flow(subject, load, state, case)
     share = "((100-{i_share}-{z_share})+{i_share}*{u}/{reference}+{z_share}*({u}/{reference})^2)/100"
     scaled = {"case_percent": Ref("load_percent", "cases", str(case))}
     found["kw"] = Cell(state.kw, "{demand}*{case_percent}/100*" + share, scaled)
     return found
 
 
-def _flow(subject: Subject, hung: Attachment, state: AttachmentState, case: int) -> Cells:
+def flow(subject: Subject, hung: Attachment, state: AttachmentState, case: int) -> Cells:
     """Volts, kW, kvar, kVA and amps of anything that hangs on a node."""
     root = subject.root(hung.node)
     return {
@@ -151,7 +151,7 @@ def _fed_in(
 ) -> Cells:
     if not state.live or (isinstance(hung, Capacitor) and not hung.connected):
         return {}
-    found = _flow(subject, hung, state, case)
+    found = flow(subject, hung, state, case)
     kva = math.hypot(state.kw, state.kvar)
     if kva and not isinstance(hung, Capacitor):
         found["pf"] = Cell(abs(state.kw) / kva, "ABS({kw})/{kva}")

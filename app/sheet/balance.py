@@ -4,6 +4,7 @@ from app.model.kinds import Generator, Supply, Switch
 from app.sheet.attachments import LOADS, SOURCES
 from app.sheet.elements import figure, sum_of_case
 from app.sheet.lines import KEY as LINES
+from app.sheet.motors import MOTORS
 from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, table, text
 from app.sheet.transformers import KEY as TRANSFORMERS
@@ -47,13 +48,13 @@ def _case(subject: Subject, case: int) -> Cells:
         "case": text(subject.cases[case]),
         "supply": _fed(subject, Supply, float(b.supply_kw[case]), case),
         "generation": _fed(subject, Generator, float(b.generation_kw[case]), case),
-        "load": _sum(subject, LOADS, "kw", float(b.load_kw[case]), case),
+        "load": _drawn(subject, "kw", float(b.load_kw[case]), case),
         "line": _sum(subject, LINES, "loss", float(b.line_kw[case]), case, "/1000"),
         "copper": _sum(subject, TRANSFORMERS, "copper", float(b.copper_kw[case]), case, "/1000"),
         "iron": _sum(subject, TRANSFORMERS, "iron", float(b.iron_kw[case]), case, "/1000"),
         "loss": Cell(lost, "{line}+{copper}+{iron}"),
         "supply_kvar": Cell(float(b.supply_kvar[case])),
-        "load_kvar": _sum(subject, LOADS, "kvar", float(b.load_kvar[case]), case),
+        "load_kvar": _drawn(subject, "kvar", float(b.load_kvar[case]), case),
         "left": Cell(left, "{supply}+{generation}-{load}-{loss}"),
         "closure": Cell(float(b.closure[case])),
     }
@@ -62,9 +63,23 @@ def _case(subject: Subject, case: int) -> Cells:
     return found
 
 
+def _drawn(subject: Subject, column: str, value: float, case: int) -> Cell:
+    """What loads and motors draw together."""
+    found = {kind_name(e) for e in subject.drawing.elements.values()}
+    keys = [key for key, kind in ((LOADS, "load"), (MOTORS, "motor")) if kind in found]
+    sums = [sum_of_case(subject, key, column, case) for key in keys]
+    terms, refs = [], {}
+    for number, (formula, read) in enumerate(sums):
+        for name, ref in read.items():
+            formula = formula.replace(f"{{{name}}}", f"{{{name}{number}}}")
+            refs[f"{name}{number}"] = ref
+        terms.append(formula)
+    return Cell(value, "+".join(terms), refs)
+
+
 def _sum(subject: Subject, key: str, column: str, value: float, case: int, scale: str = "") -> Cell:
     """The sum of a column elsewhere in the workbook, which must be the study's own figure."""
-    kinds = {LOADS: ("load",), LINES: ("cable", "overhead line"), TRANSFORMERS: ("transformer",)}
+    kinds = {LINES: ("cable", "overhead line"), TRANSFORMERS: ("transformer",)}
     if not any(kind_name(e) in kinds[key] for e in subject.drawing.elements.values()):
         return Cell(value)
     formula, refs = sum_of_case(subject, key, column, case)

@@ -4,6 +4,7 @@ from dataclasses import replace
 from importlib.metadata import PackageNotFoundError, version
 
 from app.model.fields import fields_of
+from app.model.kinds import Motor
 from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
 from app.study.cautions import CAUTIONS
@@ -95,15 +96,19 @@ def _limits(subject: Subject) -> SheetTable:
     limits = subject.drawing.limits
     whose = limits.name or "chosen for this drawing; no standard is claimed"
     columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=40))
-    rows = {}
-    for name in ("low", "high", "drop", "loading"):
+    rows: dict[str, Cells] = {}
+    names: tuple[str, ...] = ("low", "high", "drop", "loading")
+    if any(isinstance(e, Motor) for e in subject.drawing.elements.values()):
+        names += ("start_supply", "start_step", "start_motor")
+    for name in names:
         field = fields_of(type(limits))[name + "_percent"]
         value = getattr(limits, field.name)
+        of_start = name.startswith("start") and limits.start_name
         rows[name] = {
             "item": text(field.label),
             "value": given("not judged" if value is None else value),
             "unit": text("" if value is None else field.unit),
-            "whose": given(whose) if value is not None else text(""),
+            "whose": given(of_start or whose) if value is not None else text(""),
         }
     return table("limits", BASIS, "Limits", columns, rows, held=0)
 
@@ -149,6 +154,7 @@ def _cases(subject: Subject) -> SheetTable:
         Column("supply_percent", "Supply voltage", "% of held", digits=1, width=12),
         Column("load_percent", "Loads", "% of stated", digits=1, width=18),
         Column("generation_percent", "Generation", "% of stated", digits=1, width=14),
+        Column("motor_percent", "Motors", "% of rated", digits=1, width=14),
     )
     rows: dict[str, Cells] = {}
     for number, case in enumerate(subject.drawing.cases):
@@ -157,6 +163,9 @@ def _cases(subject: Subject) -> SheetTable:
             "supply_percent": given(case.supply_percent),
             "load_percent": given(case.load_percent),
             "generation_percent": given(case.generation_percent),
+            "motor_percent": Cell(case.load_percent, "{load_percent}")
+            if case.motor_percent is None
+            else given(case.motor_percent),
         }
     return table("cases", BASIS, "Cases", columns, rows, held=0)
 

@@ -10,6 +10,7 @@ from app.model.kinds import (
     Generator,
     Joint,
     Load,
+    Motor,
     OverheadLine,
     Supply,
     Switch,
@@ -61,13 +62,18 @@ def pair(*cases: Case) -> Drawing:
         "W2": Switch(name="Barn switch", start="B3", end="B5", rating_a=25.0),
         "B5": Busbar(name="Dryer"),
         "L4": Load(name="Dryer", node="B5", demand_kva=12.0, constant_impedance_percent=100.0),
+        "M1": Motor(name="Saw", node="B3", rated_kw=5.5),
+        "M2": Motor(name="Fan", node="B5", rated_kw=3.0, rated_v=415.0, starter="soft starter"),
+        "M3": Motor(name="Mill", node="B5", rated_kw=2.0, state="off"),
         "B4": Busbar(name="Spare"),
         "L3": Load(name="Spare load", node="B4", demand_kva=None, demand_kw=5.0),
     }  # fmt: skip
     project = Project(
         title="Fernhollow & Sons", number="FE-01", revision="B", author="A. Planner", note="One.\nTwo."
     )
-    limits = Limits(name="Estate set 2025", drop_percent=8.0)
+    limits = Limits(
+        name="Estate set 2025", drop_percent=8.0, start_step_percent=10.0, start_motor_percent=85.0
+    )
     return Drawing(project=project, limits=limits, cases=cases or (PEAK,), elements=elements)
 
 

@@ -45,7 +45,8 @@ def words(book: Any) -> list[str]:
 def test_sections_stand_in_the_order_of_reading(workbook: Reader) -> None:
     assert workbook(pair()).sheetnames == [
         "Head", "Basis", "Busbars", "Cables", "Cable data", "Transformers", "Transformer data", "Loads",
-        "Supplies", "Switches", "Balance", "Losses", "Findings", "Build list", "Cautions",
+        "Motors", "Motor starts", "Supplies", "Switches", "Balance", "Losses", "Findings", "Build list",
+        "Cautions",
     ]  # fmt: skip
 
 

@@ -11,7 +11,7 @@ from scipy.sparse import csc_array
 from scipy.sparse.linalg import splu
 
 from app.model import assumed
-from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Node, Supply, Switch, Transformer
+from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
 
 ALPHA = {"Cu": 0.00393, "Al": 0.00403}
 
@@ -110,7 +110,9 @@ class Nodal:
         """Current drawn at each place, as conj(S / U) with whole power and line volts."""
         current = np.zeros(len(self.places), dtype=complex)
         for e in self.drawing.elements.values():
-            if getattr(e, "node", None) in self.nominal and isinstance(e, Load | Generator | Capacitor):
+            if getattr(e, "node", None) in self.nominal and isinstance(
+                e, Load | Motor | Generator | Capacitor
+            ):
                 k = self.at[self.find(e.node)]
                 current[k] += (self.power(e, voltage[k]) / voltage[k]).conjugate()
         return current
@@ -123,12 +125,27 @@ class Nodal:
             return -1j * e.rating_kvar * 1e3 * (abs(volts) / rated) ** 2 * e.connected
         if isinstance(e, Generator):
             return -complex(e.output_kw, e.output_kvar) * 1e3 * self.case.generation_percent / 100
+        if isinstance(e, Motor):
+            return self.motor_power(e, abs(volts) / (e.rated_v or nominal))
         kva = e.demand_kva if e.demand_kva is not None else e.demand_kw / e.power_factor
         phi = math.acos(e.power_factor) * (-1 if e.leading else 1)
         whole = cmath.rect(kva * 1e3 * self.case.load_percent / 100, phi)
         i, z = (e.constant_current_percent or 0) / 100, (e.constant_impedance_percent or 0) / 100
         level = abs(volts) / (e.reference_v or nominal)
         return whole * (1 - i - z + i * level + z * level**2)
+
+    def motor_power(self, e, level):
+        """Whole power drawn by a motor as it is drawn, VA."""
+        whole = e.rated_kw * 1e3 / e.efficiency / e.power_factor
+        if e.state == "running":
+            percent = self.case.load_percent if self.case.motor_percent is None else self.case.motor_percent
+            return cmath.rect(whole * percent / 100, math.acos(e.power_factor))
+        if e.state == "off":
+            return 0j
+        if e.starter == "direct":
+            return cmath.rect(whole * e.starting_current * level**2, math.acos(e.starting_power_factor))
+        times, factor = (assumed.value(e, f"limited_{n}") for n in ("current", "power_factor"))
+        return cmath.rect(whole * times * level, math.acos(factor))
 
     def solve(self):
         """Line volts of every live node, complex."""
