@@ -41,6 +41,8 @@ class Network:
     wires : Wires where k > 1: three phases and the neutral, each conductor on its own, volts to earth.
         Its `units` stand in for transformer_z and transformer_y; transformer_ratio is then that between the
         phases of balanced volts
+    source_z : (source, k, k, B or 1) complex [ohm] behind which source_voltage stands, so that the volts of
+        the node move; None where each supply holds its node
     """
 
     node_count: int
@@ -63,11 +65,13 @@ class Network:
     shunt_node: Index
     shunt_y: Complex
     wires: Wires | None = None
+    source_z: Complex | None = None
 
     @property
     def batch(self) -> int:
         """Number of operating points: the longest last axis."""
         own = max(getattr(self, name).shape[-1] for name in PHYSICAL)
+        own = own if self.source_z is None else max(own, self.source_z.shape[-1])
         return own if self.wires is None else max(own, self.wires.batch)
 
     def check(self) -> None:
@@ -97,6 +101,10 @@ class Network:
             raise ValueError("load_reference and source_voltage must not hold zeros")
         if not np.all(self.transformer_ratio):
             raise ValueError("transformer_ratio must not hold zeros")
+        if self.source_z is not None:
+            inner = (self.source_node.size, self.conductors, self.conductors)
+            if self.source_z.shape[:-1] != inner or self.source_z.shape[-1] not in (1, batch):
+                raise ValueError(f"source_z has shape {self.source_z.shape}, not {inner} and 1 or {batch}")
         if self.wires is not None:
             ends = {"line": "line_from", "transformer": "transformer_from"}
             ends |= {"source": "source_node", "load": "load_node"}

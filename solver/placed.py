@@ -18,7 +18,8 @@ class Placed:
     """What one sweep reads. The last axis of every array is the batch, or 1 long.
 
     root : (zone, k, batch) complex [V] of the supplied zones, at depth 0
-    z : (live, k, k, batch) complex [ohm] of the line that feeds each place, 0 at the root of a zone
+    z : (live, k, k, batch) complex [ohm] of the line that feeds each place; at the root of a zone 0, or what
+        its supply stands behind
     y : (live, k, k, batch) complex [S] at each place: shunts, half the line charging, magnetising
         branches and constant-impedance loads; None where there is none
     power : (live, k, batch) complex [VA] conjugate of the constant-power part
@@ -86,6 +87,10 @@ def put(network: Network, forest: Forest) -> Placed:
     lines = network.line_z if network.line_z.shape[0] else np.zeros((1, *network.line_z.shape[1:]), complex)
     z = lines[forest.feeder]
     z[forest.zone_start[:-1]] = 0
+    if network.source_z is not None:  # a supply's own impedance leads into its root
+        width = max(z.shape[-1], network.source_z.shape[-1])
+        z = np.broadcast_to(z, (*z.shape[:-1], width)).copy()
+        z[forest.zone_start[:supplied]] = network.source_z[forest.zone_source[:supplied]]
     return Placed(
         root=root,
         z=z,

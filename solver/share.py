@@ -75,7 +75,10 @@ def pick(network: Network, points: Index) -> Network:
     """
     wide = {n: getattr(network, n) for n in PHYSICAL if getattr(network, n).shape[-1] > 1}
     wires = network.wires and network.wires.take(points)
-    return replace(network, wires=wires, **{n: a[..., points] for n, a in wide.items()})
+    behind = network.source_z
+    if behind is not None and behind.shape[-1] > 1:
+        behind = behind[..., points]
+    return replace(network, wires=wires, source_z=behind, **{n: a[..., points] for n, a in wide.items()})
 
 
 def scaled(network: Network, shares: Real) -> Network:

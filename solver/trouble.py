@@ -59,6 +59,9 @@ def _bare_rounds(network: Network) -> list[Loop | Joined]:
     bare = np.concatenate((_bare(network.line_z), _bare(network.transformer_z)))
     ends = {row: pair for row, pair in enumerate(branch_ends(network)) if bare[row]}
     near, supply = neighbours(ends), _supplies(network)
+    if network.source_z is not None:
+        stiff = _bare(network.source_z)
+        supply = {node: row for node, row in supply.items() if stiff[row]}
     feeder: dict[int, int] = {}
     spanning(near, supply, feeder)
     for node in near:
