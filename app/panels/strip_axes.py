@@ -63,8 +63,11 @@ def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float
     return low - air, high + air
 
 
+BESIDE = (0.78, 0.22)  # where across a step those of transformers side by side stand
+
+
 class Stretch(Struct, frozen=True):
-    """One branch on the strip: from the node before it to the node it feeds."""
+    """One branch on the strip: from the node before it to the node it feeds; a tie feeds none."""
 
     branch: str
     node: str
@@ -72,18 +75,26 @@ class Stretch(Struct, frozen=True):
 
 
 def stretches(drawing: Drawing, course: Course, spots: dict[str, QPointF]) -> list[Stretch]:
-    """Every branch that feeds a node, as a polyline between the spots; a transformer is a step."""
+    """Every branch as a polyline between the spots, those that feed a node first; a transformer is a step."""
     made = []
     for stop in course.stops.values():
         if stop.parent not in spots or stop.id not in spots:
             continue
-        a, b = spots[stop.parent], spots[stop.id]
-        if isinstance(drawing.elements.get(stop.feeder), Transformer):
-            middle = (a.x() + b.x()) / 2
-            made.append(Stretch(stop.feeder, stop.id, (a, QPointF(middle, a.y()), QPointF(middle, b.y()), b)))
-        else:
-            made.append(Stretch(stop.feeder, stop.id, (a, b)))
+        ends = spots[stop.parent], spots[stop.id]
+        made.append(Stretch(stop.feeder, stop.id, _points(drawing, stop.feeder, *ends, 0.5)))
+    for k, tie in enumerate(course.ties):
+        if tie.near in spots and tie.far in spots:
+            ends = spots[tie.near], spots[tie.far]
+            made.append(Stretch(tie.branch, "", _points(drawing, tie.branch, *ends, BESIDE[k % 2])))
     return made
+
+
+def _points(drawing: Drawing, branch: str, a: QPointF, b: QPointF, share: float) -> tuple[QPointF, ...]:
+    """From one spot to the other, or a step that share of the way across."""
+    if not isinstance(drawing.elements.get(branch), Transformer):
+        return a, b
+    across = a.x() + share * (b.x() - a.x())
+    return a, QPointF(across, a.y()), QPointF(across, b.y()), b
 
 
 def node_points(outcome: Outcome, case: int, course: Course, axes: Axes) -> dict[str, QPointF]:

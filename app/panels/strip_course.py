@@ -3,6 +3,7 @@
 from collections.abc import Iterable
 from typing import Any
 
+import numpy as np
 from msgspec import Struct
 
 from app.model.drawing import Drawing
@@ -22,11 +23,20 @@ class Stop(Struct, frozen=True):
     parent: str  # the node at the other end of that branch
 
 
+class Tie(Struct, frozen=True):
+    """A live branch that feeds no node: it closes a ring, or joins two supplies."""
+
+    branch: str
+    near: str  # the end with fewer transformers before it, then the nearer one
+    far: str
+
+
 class Course(Struct, frozen=True):
-    """All live nodes by id, supplies first, and the main route from its supply to its far end."""
+    """All live nodes by id, supplies first, the main route from its supply to its far end, and the ties."""
 
     stops: dict[str, Stop]
     main: tuple[str, ...]
+    ties: tuple[Tie, ...] = ()
 
     @property
     def longest_m(self) -> float:
@@ -57,9 +67,24 @@ def course(
     """The main route leads to what is selected, else to the node with the least margin. `last` is used
     again where the layout is fed as it was."""
     stops = _stops(drawing, outcome, case, last.stops if last else {})
-    made = Course(stops, ())
+    made = Course(stops, (), _ties(drawing, outcome, stops))
     target = _target(drawing, outcome, made, selection)
-    return Course(stops, made.way_to(_onward(made, target)) if target else ())
+    return Course(stops, made.way_to(_onward(made, target)) if target else (), made.ties)
+
+
+def _ties(drawing: Drawing, outcome: Outcome, stops: dict[str, Stop]) -> tuple[Tie, ...]:
+    if np.count_nonzero(outcome.branches.column("live")) <= len(outcome.upstream):
+        return ()
+    feeding, found = {s.feeder for s in stops.values()}, []
+    for id, live in zip(outcome.branches.ids, outcome.branches.column("live").tolist(), strict=True):
+        branch = drawing.elements.get(id)
+        if not live or id in feeding or not isinstance(branch, Branch):
+            continue
+        if branch.start in stops and branch.end in stops:
+            ends = (stops[branch.start], stops[branch.end])
+            near, far = sorted(ends, key=lambda s: (s.steps, s.route_m))
+            found.append(Tie(id, near.id, far.id))
+    return tuple(found)
 
 
 def _stops(drawing: Drawing, outcome: Outcome, case: int, last: dict[str, Stop]) -> dict[str, Stop]:
@@ -121,6 +146,9 @@ def _target(drawing: Drawing, outcome: Outcome, course: Course, selection: Itera
         fed = course.fed_by(id)
         if fed is not None:
             return fed.id
+        tie = next((t for t in course.ties if t.branch == id), None)
+        if tie is not None:
+            return tie.far
     return _worst(outcome.findings, course) or _farthest(course)
 
 

@@ -5,7 +5,8 @@ from panels_stage import ONE, TWO, fernhollow, stage
 from PySide6.QtCore import QPoint, QPointF, Qt
 from PySide6.QtTest import QTest
 
-from app.model.kinds import Busbar, Cable, Load
+from app.model.drawing import Drawing
+from app.model.kinds import Busbar, Cable, Load, Supply, Transformer
 from app.panels.strip_axes import ticks_m
 from app.panels.strip_course import course
 
@@ -155,3 +156,46 @@ def test_an_empty_drawing_says_what_to_do(qtbot):
     assert "supply" in made.strip._why_empty()
     made.strip.grab()
     made.solving.stop()
+
+
+def ring() -> Drawing:
+    """Two transformers side by side into a ring of three boards."""
+    twin = Transformer(start="B1", end="B2", load_loss_w=1250, no_load_loss_w=130, tap=1)
+    return Drawing(
+        elements={
+            "S1": Supply(node="B1", nominal_v=11000.0), "B1": Busbar(name="HV"), "B2": Busbar(name="LV"),
+            "T1": Transformer(start="B1", end="B2", load_loss_w=1250, no_load_loss_w=130), "T2": twin,
+            "B3": Busbar(name="West"), "B4": Busbar(name="East"),
+            "C1": Cable(start="B2", end="B3", length_m=90.0),
+            "C2": Cable(start="B2", end="B4", length_m=150.0),
+            "C3": Cable(start="B4", end="B3", length_m=200.0), "L1": Load(node="B3", demand_kva=90.0),
+        }
+    )  # fmt: skip
+
+
+def test_a_branch_that_closes_a_ring_runs_between_the_spots_of_both_its_nodes(qtbot):
+    strip = (made := stage(qtbot, ring())).strip
+    stretches = {s.branch: s for s in strip.curves[0].stretches}
+    assert stretches.keys() == {"T1", "T2", "C1", "C2", "C3"}
+    spots = strip.curves[0].nodes
+    assert stretches["C3"].points == (spots["B3"], spots["B4"])
+    middle = (spots["B3"] + spots["B4"]) / 2
+    QTest.mouseClick(strip, Qt.MouseButton.LeftButton, pos=at(middle))
+    assert made.attention.selection == {"C3"}
+    assert strip.course.main == ("B1", "B2", "B4")
+    made.solving.stop()
+
+
+def test_transformers_side_by_side_have_a_handle_each(qtbot):
+    strip = (made := stage(qtbot, ring())).strip
+    first, second = strip.handle_of("T1"), strip.handle_of("T2")
+    assert abs(first.x() - second.x()) > 10
+    drag(strip, second, px_of_a_notch(strip))
+    QTest.mouseRelease(strip, Qt.MouseButton.LeftButton, pos=at(second, 20))
+    assert made.drawing.elements["T1"].tap == 0
+    assert made.drawing.elements["T2"].tap == 2
+    made.solving.stop()
+
+
+def test_a_drawing_of_trees_has_no_ties(set_up):
+    assert set_up.strip.course.ties == ()
