@@ -374,3 +374,11 @@ def test_a_capacitor_or_generation_does_not_circulate():
     assert told(base, "circulating current").value == told(bare, "circulating current").value
     quiet = msgspec.structs.replace(bare, cases=(Case(load_percent=0.0),))
     assert told(quiet, "circulating current").value == told(bare, "circulating current").value
+
+
+def test_what_only_the_solver_finds_is_told_too(monkeypatch):
+    monkeypatch.setattr("app.study.structure.ring_findings", lambda *_: [])
+    base = changed(two_nodes(), W1=Switch(start="B1", end="B3"), B3=Busbar(), W2=Switch(start="B3", end="B1"))
+    finding = barred(base, "closed loop")
+    assert set(finding.ids) == {"W1", "W2"}
+    assert "the volts do not close, or nothing limits the current" in finding.sentence
