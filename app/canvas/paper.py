@@ -125,7 +125,7 @@ class Paper(QGraphicsScene):
         A problem is a later outcome without an answer; what stands in its way is marked.
 
         Returns the ids whose words need more room than they have."""
-        worst = standing.standings(drawing, problem or outcome, case)
+        worst = standing.standings(problem or outcome, case)
         self._shown = Shown(drawing.limits, outcome, case, before)
         self.look.blaming = problem is not None or not self._shown.solved
         tables = outcome.nodes, outcome.branches, outcome.attachments

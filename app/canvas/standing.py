@@ -1,7 +1,6 @@
 """How an element stands, and how that looks: colour, dash, shape and breadth, readable without colour."""
 
 from collections.abc import Mapping
-from dataclasses import replace
 from enum import Enum
 
 import numpy as np
@@ -10,9 +9,7 @@ from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen, QPolygonF
 
 from app.canvas.palette import Palette
-from app.model.drawing import Drawing
-from app.study.findings import judge
-from app.study.outcome import Finding, Outcome, State, Table, Verdict
+from app.study.outcome import Outcome, Verdict
 
 
 class Standing(Enum):
@@ -42,30 +39,10 @@ STEP = 0.25  # px; a change of breadth below this is not repainted
 _DASH = {Standing.NEAR: (18.0, 5.0), Standing.FAILED: (7.0, 4.0), Standing.DEAD: (1.0, 5.0)}
 
 
-def standings(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, Standing]:
-    """The worst verdict on each element in one case; elements that no check names are left out."""
-    worst: dict[str, Standing] = {}
-    for finding in _findings(drawing, outcome, case):
-        standing = _STANDING.get(finding.verdict, Standing.PLAIN)
-        for id in finding.ids:
-            if id not in worst or standing.value > worst[id].value:
-                worst[id] = standing
-    return worst
-
-
-def _findings(drawing: Drawing, outcome: Outcome, case: int) -> list[Finding]:
-    """The outcome names the worst case of each check; with several cases the one shown is judged alone."""
-    known = all(id in drawing.elements for id in (*outcome.nodes.ids, *outcome.branches.ids))
-    if len(outcome.cases) < 2 or not known:
-        return list(outcome.findings)
-    shown = (outcome.cases[case],)
-    of_case = judge(drawing, _one_case(outcome.nodes, case), _one_case(outcome.branches, case), shown)
-    return [f for f in outcome.findings if f.case in ("", *shown)] + of_case
-
-
-def _one_case(table: Table[State], case: int) -> Table[State]:
-    columns = {n: c if c.ndim == 1 else c[:, case : case + 1] for n, c in table.columns.items()}
-    return replace(table, columns=columns)
+def standings(outcome: Outcome, case: int) -> dict[str, Standing]:
+    """How each element stands in one case that a check names; a note says nothing of that."""
+    worst = outcome.verdicts(case).items()
+    return {id: _STANDING[verdict] for id, verdict in worst if verdict in _STANDING}
 
 
 def of_row(live: bool, id: str, worst: Mapping[str, Standing]) -> Standing:

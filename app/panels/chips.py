@@ -13,11 +13,10 @@ from app.live.session import Session
 from app.live.solving import Solving
 from app.model.edits import Change
 from app.panels.boxes import chevron
-from app.panels.results import RANK
 from app.panels.style import mixed
 from app.panels.verdicts import paint_mark
 from app.panels.words import LEFT, plain_tip
-from app.study.outcome import Outcome, Verdict
+from app.study.outcome import Verdict
 
 
 class Chip(QPushButton):
@@ -111,14 +110,21 @@ class CaseChips(QWidget):
         shown = min(self._attention.case, len(names) - 1)
         for k, chip in enumerate(self.chips):
             if k < len(names):
-                chip.say(names[k], worst(self._solving.outcome, names[k]))
+                chip.say(names[k], self._verdict(k))
                 chip.setChecked(k == shown)
-        self.menu_chip.say(names[shown], worst(self._solving.outcome, names[shown]))
+        self.menu_chip.say(names[shown], self._verdict(shown))
         menu = self.menu_chip.menu()
         menu.clear()
         for k, name in enumerate(names):
             menu.addAction(name.replace("&", "&&"), partial(self._attention.show_case, k))
         self._arrange()
+
+    def _verdict(self, case: int) -> Verdict:
+        """The worst in a case; a note for one that is not solved yet."""
+        outcome = self._solving.outcome
+        if outcome is None or case >= len(outcome.cases):
+            return Verdict.NOTE
+        return outcome.verdict(case)
 
     def _add(self, case: int) -> None:
         chip = self._chip()
@@ -137,11 +143,3 @@ class CaseChips(QWidget):
 
     def resizeEvent(self, event) -> None:
         self._arrange()
-
-
-def worst(outcome: Outcome | None, case: str) -> Verdict:
-    """The worst verdict in a case."""
-    if outcome is None:
-        return Verdict.NOTE
-    about = [f.verdict for f in outcome.findings if f.case == case]
-    return min(about, key=RANK.__getitem__, default=Verdict.HOLDS)

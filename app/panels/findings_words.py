@@ -5,7 +5,6 @@ from msgspec import Struct
 from app.model.drawing import Drawing, label
 from app.model.fields import fields_of
 from app.panels.element_page import round_off
-from app.panels.results import RANK
 from app.study.findings import checks_made
 from app.study.outcome import Assumption, Finding, Outcome, Verdict
 from solver.status import Status
@@ -60,7 +59,7 @@ def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
 def ordered(outcome: Outcome) -> list[Finding]:
     """All findings, failing ones first, the tightest first among equals."""
     far = float("inf")
-    return sorted(outcome.findings, key=lambda f: (RANK[f.verdict], far if f.margin is None else f.margin))
+    return sorted(outcome.findings, key=lambda f: (f.verdict.rank, far if f.margin is None else f.margin))
 
 
 def assumption_words(drawing: Drawing, assumption: Assumption) -> str:

@@ -16,7 +16,6 @@ from app.study.outcome import BranchState, Finding, NodeState, Outcome, Table, V
 Figure = Callable[[int], float]
 Write = Callable[[float], str]
 VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("loading",)
-RANK = {Verdict.BLOCKS: 0, Verdict.FAILS: 1, Verdict.NEAR: 2, Verdict.NOTE: 3, Verdict.HOLDS: 4}
 
 
 class Row(Struct, frozen=True):
@@ -51,7 +50,7 @@ def rows(asked: Asked, id: str) -> list[Row]:
 def findings_about(outcome: Outcome, ids: Iterable[str]) -> list[Finding]:
     """The findings that name one of these, worst first."""
     wanted = set(ids)
-    return sorted((f for f in outcome.findings if wanted & set(f.ids)), key=lambda f: RANK[f.verdict])
+    return sorted((f for f in outcome.findings if wanted & set(f.ids)), key=lambda f: f.verdict.rank)
 
 
 def _row(
@@ -75,9 +74,9 @@ def _states(table: Table, id: str, cases: int) -> list:
 
 def _verdict(asked: Asked, id: str, check: tuple[str, ...]) -> Verdict | None:
     """The worst verdict of the case shown among the element's findings of that check."""
-    case = asked.outcome.cases[asked.case] if asked.case < len(asked.outcome.cases) else ""
-    found = [f for f in findings_about(asked.outcome, (id,)) if f.check in check and f.case in ("", case)]
-    return found[0].verdict if found else None
+    if asked.case >= len(asked.outcome.cases):
+        return None
+    return asked.outcome.verdict_of(id, asked.case, check)
 
 
 def _node(asked: Asked, id: str) -> list[Row]:

@@ -8,9 +8,7 @@ from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Node, Transformer
-from app.study.outcome import Finding, Outcome, Table, Verdict
-
-_URGENCY = {Verdict.FAILS: 0, Verdict.NEAR: 1, Verdict.HOLDS: 2}
+from app.study.outcome import Finding, Outcome, Table
 
 
 class Stop(Struct, frozen=True):
@@ -155,9 +153,9 @@ def _target(drawing: Drawing, outcome: Outcome, course: Course, selection: Itera
 def _worst(findings: Iterable[Finding], course: Course) -> str:
     """The node of the most urgent voltage finding."""
     about = [
-        (_URGENCY[f.verdict], f.margin, f.ids[0])
+        (f.verdict.rank, f.margin, f.ids[0])
         for f in findings
-        if f.verdict in _URGENCY and f.margin is not None and f.ids and f.ids[0] in course.stops
+        if f.margin is not None and f.ids and f.ids[0] in course.stops
     ]
     return min(about)[2] if about else ""
 

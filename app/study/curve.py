@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
-from app.study.findings import NOISE
+from app.study.findings import margin_of
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.results import tables_of
@@ -120,9 +120,11 @@ def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
 
 def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
     limits = drawing.limits
-    good = (percent >= limits.low_percent - NOISE) & (percent <= limits.high_percent + NOISE)
+    good = (margin_of(percent, limits.low_percent, True) >= 0) & (
+        margin_of(percent, limits.high_percent, False) >= 0
+    )
     if limits.drop_percent is not None:
-        good &= drop <= limits.drop_percent + NOISE
+        good &= margin_of(drop, limits.drop_percent, False) >= 0
     return np.asarray(good.all(axis=(0, 2)))
 
 

@@ -119,9 +119,7 @@ def findings_of(
 
     Returns : list of Finding, smallest margin first
     """
-    value = check.value
-    margin = value - check.limit if check.low else check.limit - value
-    margin = np.where(np.abs(margin) < NOISE, 0.0, margin)
+    margin = margin_of(check.value, check.limit, check.low)
     judged = np.where(np.isnan(margin), np.inf, margin)
     if judged.size == 0:
         return []
@@ -133,26 +131,47 @@ def findings_of(
         rows = np.array([worst.argmin()])
         if np.isinf(worst[rows[0]]):
             return []
+    by_case = _verdicts(margin[rows], check.near, broken)
     return [
-        _finding(check, int(row), int(worst_case[row]), float(worst[row]), whose, cases, broken)
-        for row in rows
+        _finding(check, int(row), int(worst_case[row]), float(worst[row]), whose, cases, tuple(verdicts))
+        for row, verdicts in zip(rows, by_case, strict=True)
     ]
 
 
+def margin_of(value: Real, limit: float, low: bool) -> Real:
+    """Distance to a limit, value − limit where low, limit − value where not; a value on its limit has none.
+
+    value : (...) float [%]
+    limit : float [%]
+    low : the value must not fall below the limit
+
+    Returns : (...) float [%], negative where the limit is passed
+    """
+    margin = value - limit if low else limit - value
+    return np.where(np.abs(margin) < NOISE, 0.0, margin)
+
+
+def _verdicts(margin: Real, near: float, broken: Verdict) -> NDArray[np.object_]:
+    rung = np.where(np.isnan(margin), 3, np.where(margin < 0, 0, np.where(margin < near, 1, 2)))
+    return np.array((broken, Verdict.NEAR, Verdict.HOLDS, Verdict.NOTE), dtype=object)[rung]
+
+
 def _finding(
-    check: Check, row: int, case: int, margin: float, whose: str, cases: tuple[str, ...], broken: Verdict
+    check: Check,
+    row: int,
+    case: int,
+    margin: float,
+    whose: str,
+    cases: tuple[str, ...],
+    by_case: tuple[Verdict, ...],
 ) -> Finding:
     value = float(check.value[row, case])
     shown, allowed = apart(value, check.limit)
     named = f" in case {cases[case]}" if len(cases) > 1 else ""
     words = f"{check.subject(row, case, shown)}{named}; {check.rule} {allowed} ({whose})."
-    if margin < 0:
-        verdict = broken
-    else:
-        verdict = Verdict.NEAR if margin < check.near else Verdict.HOLDS
     return Finding(
         check=check.name,
-        verdict=verdict,
+        verdict=by_case[case],
         ids=(check.ids[row],),
         sentence=words,
         value=value,
@@ -161,6 +180,7 @@ def _finding(
         unit="%",
         whose=whose,
         case=cases[case],
+        by_case=by_case,
     )
 
 

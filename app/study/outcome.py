@@ -1,5 +1,6 @@
 """What a study answers: tables keyed by id, findings, assumptions, balance. Frozen, unrounded."""
 
+from collections.abc import Container
 from dataclasses import dataclass, field
 from enum import Enum
 from typing import TYPE_CHECKING, Any, Generic, TypeVar
@@ -64,6 +65,24 @@ class AttachmentState:
     voltage_v: float
 
 
+@dataclass(frozen=True, slots=True)
+class FaultState:
+    """Fault currents at one node, initial symmetrical, without a loading case. Two-wire: only between the
+    wires. `live`: worked out; else all are nan."""
+
+    live: bool
+    ik3_max_ka: float
+    ip_ka: float  # peak of the three-phase fault, or of that between two wires
+    xr: float  # X/R seen from here, as for the highest current
+    ik2_max_ka: float
+    ik1_max_ka: float  # phase to earth; 0 where the zero sequence has no way back
+    ik2e_max_ka: float  # two phases and earth, the greater of the two phases
+    ik3_min_ka: float
+    ik2_min_ka: float
+    ik1_min_ka: float
+    zs_ohm: float  # earth-fault loop, hot, the supply included; nan where there is none
+
+
 @dataclass(frozen=True)
 class Table(Generic[State]):
     """Rows by id, one array a column: (row,) or (row, case)."""
@@ -108,13 +127,21 @@ class Balance:
 
 
 class Verdict(Enum):
-    """How a finding judges; differs on screen by shape as well as colour."""
+    """How a finding judges, worst first; differs on screen by shape as well as colour."""
 
-    HOLDS = "holds"
-    NEAR = "near the limit"
-    FAILS = "fails"
     BLOCKS = "not solved"
+    FAILS = "fails"
+    NEAR = "near the limit"
+    HOLDS = "holds"
     NOTE = "note"
+
+    @property
+    def rank(self) -> int:
+        """0 is the worst."""
+        return _RANK[self]
+
+
+_RANK = {verdict: rank for rank, verdict in enumerate(Verdict)}
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,7 +157,12 @@ class Finding:
     margin: float | None = None
     unit: str = ""
     whose: str = ""  # whose limit it is
-    case: str = ""
+    case: str = ""  # of value and sentence: the worst one
+    by_case: tuple[Verdict, ...] = ()  # where the cases differ; NOTE where one is not judged
+
+    def in_case(self, case: int) -> Verdict:
+        """How it judges one case."""
+        return self.by_case[case] if self.by_case else self.verdict
 
 
 @dataclass(frozen=True, slots=True)
@@ -167,3 +199,23 @@ class Outcome:
         default_factory=dict
     )  # node id -> the node before it, seen from the supply
     starts: "StartTable | None" = None  # motor starts, where there are motors and figures
+
+    def verdict(self, case: int) -> Verdict:
+        """The worst in one case; a note where nothing is judged."""
+        found = (finding.in_case(case) for finding in self.findings)
+        return min(found, key=_RANK.__getitem__, default=Verdict.NOTE)
+
+    def verdicts(self, case: int) -> dict[str, Verdict]:
+        """The worst on each element in one case; elements that no finding names are left out."""
+        worst: dict[str, Verdict] = {}
+        for finding in self.findings:
+            verdict = finding.in_case(case)
+            for id in finding.ids:
+                if id not in worst or verdict.rank < worst[id].rank:
+                    worst[id] = verdict
+        return worst
+
+    def verdict_of(self, id: str, case: int, checks: Container[str]) -> Verdict | None:
+        """The worst of some checks on one element in one case."""
+        found = (f.in_case(case) for f in self.findings if id in f.ids and f.check in checks)
+        return min(found, key=_RANK.__getitem__, default=None)

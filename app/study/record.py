@@ -68,6 +68,7 @@ def _starts(drawing: Drawing, table: StartTable) -> dict[str, dict[str, Any]]:
 def _finding(finding: Any) -> dict[str, Any]:
     told = {f.name: getattr(finding, f.name) for f in fields(finding)}
     told["verdict"] = finding.verdict.value
+    told["by_case"] = [verdict.value for verdict in finding.by_case]
     return told
 
 

@@ -20,10 +20,6 @@ from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
 from solver import Solution, Status, Trouble, grow, solve
 
-RANK = {
-    v: i for i, v in enumerate((Verdict.BLOCKS, Verdict.FAILS, Verdict.NEAR, Verdict.HOLDS, Verdict.NOTE))
-}
-
 
 def run(drawing: Drawing) -> Outcome:
     """Solve a drawing in all its loading cases at once and judge what comes out.
@@ -85,7 +81,7 @@ def _outcome(
     elif rows is not None and solution is not None:
         collapse = collapse_of(drawing, layout, rows, solution)
         found = [collapse.finding, *found]
-    found.sort(key=lambda f: RANK[f.verdict])
+    found.sort(key=lambda f: f.verdict.rank)
     return Outcome(
         status=status,
         sentence=_sentence(status, found),

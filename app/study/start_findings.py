@@ -87,10 +87,9 @@ def _stuck(drawing: Drawing, table: StartTable, cases: tuple[str, ...]) -> list[
         bad = np.flatnonzero(~table.column("solved")[row])
         if len(bad):
             named = f" in case {cases[bad[0]]}" if len(cases) > 1 else ""
-            words = (
-                f"{tell(drawing, id)} cannot start{named}: at its starting current nothing solves."
-            )
-            found.append(Finding("start", Verdict.FAILS, (id,), words, case=cases[bad[0]]))
+            words = f"{tell(drawing, id)} cannot start{named}: at its starting current nothing solves."
+            by_case = tuple(Verdict.FAILS if k in bad else Verdict.HOLDS for k in range(len(cases)))
+            found.append(Finding("start", Verdict.FAILS, (id,), words, case=cases[bad[0]], by_case=by_case))
     return found
 
 

@@ -209,16 +209,16 @@ def test_states_differ_by_shape_as_well_as_colour(bench):
 def test_several_cases_are_judged_one_by_one(bench):
     one = bench(FERNHOLLOW)
     outcome = figures(FERNHOLLOW)
-    percent = outcome.nodes.columns["percent"].copy()
-    percent[:] = 100.0
-    percent[outcome.nodes.rows["HS"]] = (93.0, 100.0)
-    nodes = replace(outcome.nodes, columns={**outcome.nodes.columns, "percent": percent})
-    one.answer = lambda _: replace(outcome, nodes=nodes)
+    low = Finding("voltage low", Verdict.FAILS, ("HS",), "HS is low.", case=outcome.cases[0])
+    low = replace(low, by_case=(Verdict.FAILS, Verdict.NEAR))
+    noted = Finding("closed ring", Verdict.NOTE, ("GH",), "GH stands in a ring.")
+    one.answer = lambda _: replace(outcome, findings=(low, noted))
     one.solving._owed = True
     one.solving.settle_solve()
     assert one.board.item_of("HS").standing is Standing.FAILED
+    assert one.board.item_of("GH").standing is Standing.GOOD  # a note judges nothing
     one.attention.show_case(1)
-    assert one.board.item_of("HS").standing is Standing.GOOD
+    assert one.board.item_of("HS").standing is Standing.NEAR
 
 
 def test_breadth_grows_with_loading(bench):

@@ -7,7 +7,7 @@ from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QListWidget
 
 from app.model import edits
-from app.model.drawing import Limits
+from app.model.drawing import Case, Limits
 from app.model.kinds import Load
 from app.study.outcome import Verdict
 
@@ -140,6 +140,15 @@ def test_chips_show_cases_and_switch_them(qtbot):
     chips.menu_chip.menu().actions()[0].trigger()
     assert made.attention.case == 0
     assert made.head.totals.figures() != night
+    made.solving.stop()
+
+
+def test_a_chip_shows_how_its_own_case_stands(qtbot):
+    cases = (Case(name="Full"), Case(name="Nearly full", load_percent=98.0))
+    made = stage(qtbot, fernhollow(cases), size=(1440, 800))
+    assert [c.verdict for c in made.head.chips.chips] == [Verdict.HOLDS, Verdict.HOLDS]
+    failing(made)
+    assert [c.verdict for c in made.head.chips.chips] == [Verdict.FAILS, Verdict.FAILS]
     made.solving.stop()
 
 

@@ -33,6 +33,30 @@ def test_every_check_names_its_worst_element_and_case_even_where_all_hold():
     assert low.sentence.endswith("the lowest allowed is 94.0 % (the limit set for this drawing).")
 
 
+def test_every_case_is_judged_though_only_the_worst_is_told():
+    loads = (100.0, 90.0, 1.0)
+    cases = tuple(Case(name=f"{p:g}", load_percent=p) for p in loads)
+    far = changed(two_nodes(), C1=line("B1", "B2", length_m=2000.0))
+    base = msgspec.structs.replace(far, cases=cases)
+    level = run(base).nodes.column("percent")[1]
+    outcome = run(limited(base, low_percent=level[1] + 0.01))
+    (low,) = of(outcome, "voltage low")
+    assert (low.verdict, low.case) == (Verdict.FAILS, "100")
+    assert low.by_case == (Verdict.FAILS, Verdict.FAILS, Verdict.HOLDS)
+    assert [outcome.verdict(case) for case in range(3)] == list(low.by_case)
+    assert outcome.verdict_of("B2", 1, ("voltage low",)) is Verdict.FAILS
+    assert outcome.verdict_of("B2", 1, ("loading",)) is None
+    assert outcome.verdicts(1)["B2"] is Verdict.FAILS
+
+
+def test_what_stands_in_every_case_counts_in_every_case():
+    base = changed(two_nodes(), B3=Busbar(), L3=Load(node="B3"))
+    cases = (Case(name="Peak"), Case(name="Light", load_percent=10.0))
+    outcome = run(msgspec.structs.replace(base, cases=cases))
+    assert [outcome.verdict(case) for case in range(2)] == [Verdict.FAILS, Verdict.FAILS]
+    assert outcome.verdicts(1)["B3"] is Verdict.FAILS
+
+
 def test_one_case_is_not_named_in_the_sentence():
     (low,) = of(run(two_nodes()), "voltage low")
     assert "case" not in low.sentence
