@@ -12,7 +12,7 @@ from app.canvas.standing import Standing, colour, pen
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.user_symbol import Worn
 from app.model.drawing import Drawing
-from app.model.kinds import OverheadLine, Switch
+from app.model.kinds import OverheadLine, Regulator, Switch
 
 MARGIN = 14.0
 HALO = 9.0
@@ -49,7 +49,7 @@ class BranchItem(ElementItem):
 
     def read(self, drawing: Drawing) -> None:
         element = drawing.elements[self.id]
-        self.lossless = isinstance(element, Switch)
+        self.lossless = isinstance(element, Switch | Regulator)
         self.worn = dress(drawing, element, self.look.symbols)
         self._runs = self._cut()
         whole = sum(distance(a, b) for a, b in zip(self.points, self.points[1:], strict=False))

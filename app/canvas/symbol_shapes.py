@@ -7,6 +7,7 @@ from collections.abc import Callable
 from functools import lru_cache
 
 from msgspec import Struct, field
+from msgspec.structs import replace
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainterPath
 
@@ -43,7 +44,8 @@ def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
         "motor": lambda: _machine("M", ansi),
         "load": lambda: _load(ansi),
         "capacitor": lambda: _capacitor(ansi, variant == "open"),
-        "transformer": lambda: _coils() if ansi else _rings(variant),
+        "transformer": lambda: _tapped(_coils() if ansi else _rings(variant), variant),
+        "regulator": lambda: _regulator(ansi),
         "switch": lambda: _switch(ansi, variant == "open"),
         "busbar": _busbar,
         "joint": _joint,
@@ -152,6 +154,37 @@ def _coils() -> Glyph:
         path.arcMoveTo(QRectF(8 - loop / 2, top, loop, loop), 90)
         path.arcTo(QRectF(8 - loop / 2, top, loop, loop), 90, 180)
     return Glyph(half, path)
+
+
+STEPPING = "↕"  # in the variant of a transformer whose tap changer steps by itself
+
+
+def _tapped(whole: Glyph, variant: str) -> Glyph:
+    """The arrow of what can be set, drawn through a transformer that sets itself."""
+    if STEPPING not in variant:
+        return whole
+    return replace(whole, strokes=_joined(whole.strokes, _through(RING + 6)))
+
+
+def _through(reach: float) -> QPainterPath:
+    """An arrow from below left to above right."""
+    tip = reach * 0.42
+    return _path(
+        ((-reach, reach), (reach, -reach)), ((reach - tip, -reach), (reach, -reach), (reach, -reach + tip))
+    )
+
+
+def _regulator(ansi: bool) -> Glyph:
+    """One winding that can be set: a ring, or the loops of a coil, with the arrow through it."""
+    if not ansi:
+        ring = _ring(0, 0, RING)
+        return Glyph(RING, _joined(ring, _through(RING + 3)), mask=ring)
+    coil = _path(((-22, 0), (-16, 0)), ((22, 0), (16, 0)))
+    for k in range(4):
+        room = QRectF(-16 + 8 * k, -4, 8, 8)
+        coil.arcMoveTo(room, 180)
+        coil.arcTo(room, 180, -180)
+    return Glyph(22, _joined(coil, _through(13)), mask=_path(((-16, 0), (16, 0))))
 
 
 def _switch(ansi: bool, apart: bool) -> Glyph:

@@ -53,7 +53,10 @@ SHORTCUTS: tuple[tuple[str, str], ...] = (
     ("X or Enter", "With a node selected: draw on from it; arrows aim, Enter ends"),
     ("Enter", "With anything else selected: go to its card; Alt + Enter does so for nodes too"),
     ("S, L, M, G, K", "Supply, load, motor, generator, capacitor: hung on the selected node, or placed"),
-    ("C, O, T, W", "Cable, overhead line, transformer, switch: drawn on from the selected node, or placed"),
+    (
+        "C, O, T, V, W",
+        "Cable, overhead line, transformer, regulator, switch: drawn on from the selected node, or placed",
+    ),
     ("B, J", "Busbar, joint: placed; a selected joint turns into a busbar and back"),
     ("R", "Turn a busbar or an attachment by a quarter"),
     ("Tab, Shift + Tab", "Next or previous element, in the order of drawing"),

@@ -5,7 +5,7 @@ import textwrap
 from typing import Any
 
 from app.canvas.lettering import Line, Run, Style
-from app.model import figures
+from app.model import assumed, figures
 from app.model.drawing import Case, Drawing
 from app.model.kinds import (
     AnyElement,
@@ -14,6 +14,7 @@ from app.model.kinds import (
     Joint,
     Load,
     Motor,
+    Regulator,
     Supply,
     Switch,
     Transformer,
@@ -52,6 +53,9 @@ def describe(element: AnyElement) -> tuple[str, ...]:
             return _transformer(element)
         case LineElement():
             return (_line(element),)
+        case Regulator():
+            most = element.steps_up * element.step_percent
+            return (f"holds {_held(element)}, +{figures.percent(most, 0)}",)
         case Switch():
             return ("closed" if element.closed else "open",)
         case Supply():
@@ -79,8 +83,15 @@ def _transformer(t: Transformer) -> tuple[str, ...]:
     first = f"{units}{figures.typed(t.rating_kva)} kVA {_ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
     if not t.taps_up + t.taps_down:
         return (first,)
+    if t.regulates != "no":
+        return first, f"holds {_held(t)} at {t.regulates}"
     digits = _digits(t.tap_step_percent) if t.tap else 0
     return first, f"tap {figures.percent(t.tap * t.tap_step_percent, digits, sign=True)}"
+
+
+def _held(changer: Transformer | Regulator) -> str:
+    """The setting of what steps by itself."""
+    return f"{figures.typed(assumed.value(changer, 'hold_percent'))} %"
 
 
 def _digits(step: float) -> int:
@@ -119,10 +130,9 @@ def _motor(motor: Motor) -> tuple[str, ...]:
     return (first,) if motor.state == "running" else (first, motor.state)
 
 
-def runs_on(start_kw: Any, end_kw: Any, forward: Any) -> Any:
-    """True where power runs from start to end, of one branch or of an array of them; a branch fed with no
-    more than its loss goes as it is fed."""
-    return (start_kw >= 0) & ((end_kw >= 0) | forward)
+def runs_on(through_kw: Any, forward: Any) -> Any:
+    """True where power runs from start to end, of one branch or of an array of them."""
+    return (through_kw >= 0) == forward
 
 
 def branch_figures(
@@ -131,11 +141,10 @@ def branch_figures(
     """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
     if not state.live:
         return ()
-    forward = runs_on(state.start_kw, state.end_kw, state.forward)
-    kw = state.start_kw if forward else -state.end_kw
+    forward = runs_on(state.through_kw, state.forward)
     rated = not math.isnan(state.loading_percent)
     load = figures.percent(state.loading_percent) if rated else figures.amps(state.current_a)
-    first: Line = (Run(f"{figures.power(kw)} {arrow(angle, forward)} {load}"),)
+    first: Line = (Run(f"{figures.power(abs(state.through_kw))} {arrow(angle, forward)} {load}"),)
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
         second += loss_change(state.loss_kw - before.loss_kw)

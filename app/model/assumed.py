@@ -5,7 +5,7 @@ from bisect import bisect_left
 from dataclasses import dataclass
 
 from app.model.fields import fields_of
-from app.model.kinds import Cable, Capacitor, Element, Line, Load, Motor, Supply, Transformer
+from app.model.kinds import Cable, Capacitor, Element, Line, Load, Motor, Regulator, Supply, Transformer
 
 NO_SOURCE = "common practice, no source"
 CABLE_DEGC = 60.0
@@ -63,17 +63,22 @@ def assumable(kind: type[Element]) -> tuple[str, ...]:
 
 _ASSUMABLE: dict[type[Element], tuple[str, ...]] = {
     Line: ("c_uf_per_km", "temperature_degc"),
-    Transformer: ("load_loss_w", "no_load_loss_w", "no_load_current_percent"),
+    Transformer: (
+        "load_loss_w", "no_load_loss_w", "no_load_current_percent", "hold_percent", "bandwidth_percent",
+    ),
+    Regulator: ("hold_percent", "bandwidth_percent"),
     Load: ("constant_current_percent", "constant_impedance_percent", "reference_v"),
     Motor: ("rated_v", "limited_current", "limited_power_factor"),
     Capacitor: ("rated_v",),
     Supply: ("xr",),
-}
+}  # fmt: skip
 LIMITED = {"soft starter": (3.0, 0.3), "drive": (1.2, 0.95)}  # × rated current, power factor
 
 
 def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple[float, str]:
     """The assumed value of a blank field and its basis."""
+    if isinstance(element, Transformer | Regulator) and field in ("hold_percent", "bandwidth_percent"):
+        return _of_changer(element, field)
     if isinstance(element, Line):
         return _of_line(element, field)
     if isinstance(element, Transformer):
@@ -90,10 +95,20 @@ def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple
 
 
 def _idle(element: Element, field: str) -> bool:
-    """Nothing hangs on the field: a motor straight on the line, a supply whose fault level nobody states."""
+    """Nothing hangs on the field: no starter, no fault level stated, no tap changer that steps by itself."""
     if isinstance(element, Supply):
         return element.fault_level_min_mva is None
+    if isinstance(element, Transformer):
+        return element.regulates == "no" and field in ("hold_percent", "bandwidth_percent")
     return isinstance(element, Motor) and field != "rated_v" and element.starter == "direct"
+
+
+def _of_changer(element: Transformer | Regulator, field: str) -> tuple[float, str]:
+    if field == "hold_percent":
+        return 100.0, "nominal voltage"
+    if isinstance(element, Regulator):
+        return 2 / 1.2, f"2 V on a base of 120 V; {NO_SOURCE}"
+    return 2 * element.tap_step_percent, f"two steps; {NO_SOURCE}"
 
 
 def _of_motor(motor: Motor, field: str) -> tuple[float, str]:

@@ -127,6 +127,36 @@ class OverheadLine(Line, frozen=True, kw_only=True, tag="overhead_line"):
     """An overhead line between two nodes."""
 
 
+Hold = (
+    Annotated[
+        float,
+        field(
+            "Holds", "% of nominal", gt=0, le=200, help="Volts that a changer steps towards. Blank: nominal."
+        ),
+    ]
+    | None
+)
+Band = (
+    Annotated[
+        float,
+        field("Bandwidth", "% of nominal", gt=0, le=50, help="In all. Wider than a step, or it hunts."),
+    ]
+    | None
+)
+DropR = (
+    Annotated[
+        float, field("Line drop R", "Ω", ge=0, le=1e4, help="Of the line to the place whose volts are held.")
+    ]
+    | None
+)
+DropX = (
+    Annotated[
+        float, field("Line drop X", "Ω", ge=0, le=1e4, help="Of the line to the place whose volts are held.")
+    ]
+    | None
+)
+
+
 class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     """A two-winding transformer; winding 1 is at `start`, winding 2 at `end`."""
 
@@ -151,6 +181,16 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
         int,
         field("Tap", "notch", ge=-40, le=40, help="Notches above (+) or below (−) the nameplate voltage."),
     ] = 0
+    regulates: Annotated[
+        Literal["no", "winding 1", "winding 2"],
+        plain(
+            "Holds volts of", help="An on-load tap changer steps by itself; no: the tap stays where it is."
+        ),
+    ] = "no"
+    hold_percent: Hold = None
+    bandwidth_percent: Band = None
+    drop_r_ohm: DropR = None
+    drop_x_ohm: DropX = None
     earth_1_ohm: (
         Annotated[
             float,
@@ -172,6 +212,23 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     z0_ratio: (
         Annotated[float, field("Z0/Z1", "", gt=0, le=100, help="Zero over positive sequence.")] | None
     ) = None
+
+
+class Regulator(Branch, frozen=True, kw_only=True, tag="regulator"):
+    """A step voltage regulator; without impedance of its own. Forward is from `start` to `end`."""
+
+    hold_percent: Hold = None
+    bandwidth_percent: Band = None
+    mode: Annotated[
+        Literal["forward", "with the power", "idle in reverse"],
+        plain("Holds volts at", help="Forward: always at its end. With the power: where the power goes."),
+    ] = "forward"
+    step_percent: Annotated[float, field("Step", "%", gt=0, le=10)] = 0.625
+    steps_up: Annotated[int, field("Steps up", "notches", ge=0, le=40)] = 16
+    steps_down: Annotated[int, field("Steps down", "notches", ge=0, le=40)] = 16
+    drop_r_ohm: DropR = None
+    drop_x_ohm: DropX = None
+    rating_a: Annotated[float, field("Rating", "A", gt=0, le=1e6)] | None = None
 
 
 class Switch(Branch, frozen=True, kw_only=True, tag="switch"):
@@ -298,6 +355,7 @@ AnyElement = (
     | Cable
     | OverheadLine
     | Transformer
+    | Regulator
     | Switch
     | Supply
     | Load
@@ -312,6 +370,7 @@ KINDS: dict[str, type[Element]] = {
     "cable": Cable,
     "overhead_line": OverheadLine,
     "transformer": Transformer,
+    "regulator": Regulator,
     "switch": Switch,
     "load": Load,
     "motor": Motor,
@@ -326,6 +385,7 @@ LETTERS = {
     "cable": "C",
     "overhead_line": "O",
     "transformer": "T",
+    "regulator": "V",
     "switch": "W",
     "load": "L",
     "motor": "M",

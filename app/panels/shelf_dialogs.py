@@ -6,7 +6,9 @@ from app.canvas.theme import Theme
 from app.model.drawing import Part, Symbol
 from app.model.kinds import KIND_WORDS
 
-KINDS_WITH_SYMBOL = ("transformer", "switch", "supply", "load", "motor", "generator", "capacitor")
+KINDS_WITH_SYMBOL = (
+    "transformer", "regulator", "switch", "supply", "load", "motor", "generator", "capacitor",
+)  # fmt: skip
 
 
 class ShelfDialogs:

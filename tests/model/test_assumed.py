@@ -9,7 +9,18 @@ from msgspec.structs import replace
 
 from app.model import assumed
 from app.model.fields import fields_of
-from app.model.kinds import KINDS, Cable, Capacitor, Load, Motor, Node, OverheadLine, Supply, Transformer
+from app.model.kinds import (
+    KINDS,
+    Cable,
+    Capacitor,
+    Load,
+    Motor,
+    Node,
+    OverheadLine,
+    Regulator,
+    Supply,
+    Transformer,
+)
 
 T = Transformer(start="", end="")
 TABLE = Path(__file__).with_name("eu_548_2014_table_I_1_tier_2.csv")
@@ -92,13 +103,31 @@ def test_a_starter_is_assumed_only_where_there_is_one():
     assert assumed.value(replace(direct, rated_v=None), "rated_v", 400.0) == 400.0
 
 
+def test_what_a_changer_holds_is_assumed_only_where_it_steps():
+    changer = Transformer(start="", end="", load_loss_w=1.0, no_load_loss_w=1.0, no_load_current_percent=1.0)
+    assert assumed.blank(changer) == ()
+    stepping = {b.field: b.value for b in assumed.blank(replace(changer, regulates="winding 2"))}
+    assert stepping == {"hold_percent": 100.0, "bandwidth_percent": 5.0}
+    regulator = {b.field: b.value for b in assumed.blank(Regulator(start="", end=""))}
+    assert regulator == {"hold_percent": 100.0, "bandwidth_percent": pytest.approx(5 / 3)}
+
+
 def test_the_ratio_of_a_supply_is_assumed_only_where_its_fault_level_is_stated():
     assert assumed.blank(Supply(node="")) == ()
     assert [b.field for b in assumed.blank(Supply(node="", fault_level_min_mva=35.0))] == ["xr"]
 
 
 def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
-    no_stand_in = {"fault_level_min_mva", "area_mm2", "rating_a", "nominal_v", "demand_kva", "demand_kw"}
+    no_stand_in = {
+        "drop_r_ohm",
+        "drop_x_ohm",
+        "fault_level_min_mva",
+        "area_mm2",
+        "rating_a",
+        "nominal_v",
+        "demand_kva",
+        "demand_kw",
+    }
     no_stand_in |= {"trip_a", "earth_1_ohm", "earth_2_ohm"}
     only_for_faults = {"fault_level_max_mva", "return_r20_ohm_per_km", "r0_ohm_per_km", "x0_ohm_per_km"}
     no_stand_in |= only_for_faults | {"fault_degc", "z0_ratio"}  # see fault_data

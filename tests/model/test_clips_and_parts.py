@@ -107,8 +107,8 @@ def test_the_shelf_starts_with_one_sound_part_a_kind():
     for hertz in (50.0, 60.0):
         parts = builtin_parts(hertz)
         assert [kind_of(p.element) for p in parts] == [
-            "supply", "busbar", "joint", "cable", "overhead_line", "transformer", "load", "motor",
-            "generator", "capacitor", "switch",
+            "supply", "busbar", "joint", "cable", "overhead_line", "transformer", "regulator", "load",
+            "motor", "generator", "capacitor", "switch",
         ]  # fmt: skip
         assert len(parts) == len(KINDS)
         for part in parts:
