@@ -47,8 +47,9 @@ rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until noth
 without a solution); `line`, `carson`,
 `transformer` and `load` are the element models. Several conductors: `wires` (what they add to the rows),
 `windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors), `reached`
-(what no supply feeds, and sides without earth). Faults: `fault`, `path` (impedance at every node) and
-`earth_paths` (zero sequence). What a person should be told stands in `Status`.
+(what no supply feeds, and sides without earth). Faults: `fault`, `path` (impedance at every node),
+`earth_paths` (zero sequence), `fault_wires`. What moves by itself: `control`, `tapping`, `holding`. A year:
+`series`. What a person should be told stands in `Status`.
 A programmer's mistake raises ValueError; everything that a drawing can be wrong about is a result.
 """
 

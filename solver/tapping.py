@@ -1,0 +1,54 @@
+"""Transformers moved to other taps, point by point."""
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import Any
+
+import numpy as np
+
+from solver.arrays import Complex, Real
+from solver.network import Network
+from solver.wires import Units
+
+
+def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], factor: Real) -> Network:
+    """The same network with some transformers at other taps.
+
+    The tapped winding has `factor` times its rated volts; ohms stay constant on the other side, the
+    magnetising branch of the tapped winding goes by 1 / factor²
+
+    network : Network, these transformers at their nameplate
+    rows : (tapped,) transformers
+    windings : (tapped,) 1 or 2
+    factor : (tapped, batch) float, tap factors
+    Returns : Network
+    Source : see solver.transformer.equivalent
+    """
+    width = max(factor.shape[-1], 1)
+    ratio, z, y = (_wide(getattr(network, f"transformer_{name}"), width) for name in ("ratio", "z", "y"))
+    units = None if network.wires is None else _widened(network.wires.units, width)
+    for row, winding, t in zip(rows, windings, factor, strict=True):
+        ratio[row] *= t if winding == 1 else 1 / t
+        z[row] *= 1 if winding == 1 else t**2
+        y[row, winding - 1] /= t**2
+        if units is not None:
+            own = winding - 1
+            units.gain[row, own] /= t  # fed from the tapped winding
+            units.gain[row, 1 - own] *= t
+            units.series[row, 1 - own] *= t**2  # seen at the tapped winding
+            units.iron[row, own] /= t**2
+            units.own_z[row, own, 0] *= t**2
+    wires = network.wires
+    if wires is not None and units is not None:
+        wires = replace(wires, units=units)
+    return replace(network, transformer_ratio=ratio, transformer_z=z, transformer_y=y, wires=wires)
+
+
+def _wide(array: Complex, width: int) -> Complex:
+    return np.broadcast_to(array, (*array.shape[:-1], max(width, array.shape[-1]))).copy()
+
+
+def _widened(units: Units, width: int) -> Units:
+    names = ("gain", "series", "iron", "own_z")
+    wide: dict[str, Any] = {name: _wide(getattr(units, name), width) for name in names}
+    return replace(units, **wide)
