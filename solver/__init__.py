@@ -43,13 +43,12 @@ True
 Reading order: `network` (the rows), `tour`, `rounds` and `forest` (trees, their order, what closes rounds
 over them), `placed` (rows in that order), `sweep` (the kernel), `joints` and `ties` (currents that close
 rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until nothing moves), `answer` and
-`solution` (every branch), `share` (how much more load there could be), `trouble` (rounds by name, and those
-without a solution); `line`, `carson`,
-`transformer` and `load` are the element models. Several conductors: `wires` (what they add to the rows),
-`windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors), `reached`
-(what no supply feeds, and sides without earth). Faults: `fault`, `path` (impedance at every node),
-`earth_paths` (zero sequence), `fault_wires`. What moves by itself: `control`, `tapping`, `holding`. A year:
-`series`. What a person should be told stands in `Status`.
+`solution` (every branch), `share` (how much more load there could be), `trouble` (what has no solution).
+Elements: `line`, `carson`, `transformer`, `load`, `motor`. Several conductors: `wires` (what they add to the
+rows), `windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors),
+`reached` (what no supply feeds, and sides without earth). Faults: `fault` (formulas), `sequence` and `path`
+(impedance at every node), `earth_paths` (zero sequence), `fault_levels`, `fault_wires`. What moves by
+itself: `control`, `tapping`, `holding`. A year: `series`. What a person should be told stands in `Status`.
 A programmer's mistake raises ValueError; everything that a drawing can be wrong about is a result.
 """
 

@@ -1,158 +1,199 @@
-"""Prospective fault currents by the equivalent voltage source at the place of the fault."""
+"""Prospective fault currents by the equivalent voltage source: from sequence impedances to amps."""
 
-from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from solver.arrays import Complex, Real
-from solver.network import Network
-from solver.path import path_impedance
+from solver.transformer import GROUP
 
-ROOT3 = 3**0.5
+TURN = np.exp(2j * np.pi / 3)
 
 
-@dataclass(frozen=True, slots=True)
-class Faults:
-    """Initial symmetrical short-circuit currents at every node; nan where a node is dead.
+class ZeroPath(NamedTuple):
+    """What a transformer is to the zero sequence.
 
-    z1 : (node, batch) complex [ohm] positive sequence at the fault, which stands for the negative as well
-    z0 : (node, batch) complex [ohm] zero sequence; infinite where nothing earths the node
-    three_phase : (node, batch) float [A]
-    two_phase : (node, batch) float [A]
-    phase_earth : (node, batch) float [A]
-    two_phase_earth : (node, batch) float [A] the larger of the two phase currents
-    two_phase_to_earth : (node, batch) float [A] into earth
-    loop : (node, batch) complex [ohm] earth loop, (2 Z1 + Z0) / 3
-    kappa : (node, batch) float, peak over √2 times the initial current
+    through : it passes from one winding to the other
+    earth_1 : it is a way to earth at winding 1
+    earth_2 : it is a way to earth at winding 2
     """
 
-    z1: Complex
-    z0: Complex
-    three_phase: Real
-    two_phase: Real
-    phase_earth: Real
-    two_phase_earth: Real
-    two_phase_to_earth: Real
-    loop: Complex
-    kappa: Real
-
-    @property
-    def peak(self) -> Real:
-        """(node, batch) float [A], κ √2 times the three-phase current."""
-        return np.asarray(self.kappa * 2**0.5 * self.three_phase)
+    through: bool
+    earth_1: bool
+    earth_2: bool
 
 
-def faults(
-    positive: Network, zero: Network | None, nominal: ArrayLike, factor: ArrayLike, frequency: float
-) -> Faults:
-    """Fault currents at every node of a balanced network, on rings as well.
+def zero_path(vector_group: str, earthed_1: bool, earthed_2: bool) -> ZeroPath:
+    """Which way the zero sequence takes in a transformer, by its connection.
 
-    I3 = c U / (√3 |Z1|), I2 = c U / |2 Z1|, I1 = √3 c U / |2 Z1 + Z0|, to earth √3 c U / |Z1 + 2 Z0|,
-    with all other sources shorted, loads, capacitors and charging left out, and Z2 = Z1
+    An earthed star beside a delta, and an earthed zigzag beside anything, are ways to earth. Two earthed
+    stars pass it through. A star that is not earthed, and a delta seen from outside, block it; so does an
+    earthed star beside a star or zigzag that cannot balance it: what goes through the core is neglected.
 
-    positive : Network of k = 1 with source_z; its impedances as the calculation asks: cold and with K_T for
-        the largest currents, hot for the least
-    zero : Network of the zero sequence, see `earth_paths.zero_sequence`; None where nothing is earthed
-    nominal : (node,) float [V] nominal volts between lines
-    factor : (node,) or one float, voltage factor c
-    frequency : [Hz]
-    Returns : Faults
-    Raises : ValueError where the network cannot be solved at all
-    Source : IEC 60909-0:2016, 4.3 and 7 to 8 (from memory); far from generators
+    vector_group : such as Dyn11 or YNd5
+    earthed_1 : bool, the star point of winding 1 is earthed
+    earthed_2 : bool, the star point of winding 2 is earthed
+    Returns : ZeroPath
+    Raises : ValueError where it is not a vector group
+    Source : IEC 60076-8:1997, 5; IEC TR 60909-4 (from memory)
+
+    >>> zero_path("Dyn11", False, True)
+    ZeroPath(through=False, earth_1=False, earth_2=True)
+    >>> zero_path("Yyn0", False, True)
+    ZeroPath(through=False, earth_1=False, earth_2=False)
     """
-    z1 = path_impedance(positive)
-    z0 = np.full_like(z1, np.inf) if zero is None else path_impedance(zero)
-    z0 = np.where(np.isnan(z0), np.inf, z0) + 0 * z1
-    turn = np.exp(2j * np.pi / 3)
-    with np.errstate(all="ignore"):
-        pushed = np.broadcast_to(np.asarray(factor) * np.asarray(nominal), z1.shape[:1])[:, None]
-        earthed = np.isfinite(z0)
-        z = np.where(earthed, z0, 1.0)
-        both = z1**2 + 2 * z1 * z
-        phases = [np.abs((z - turn**sign * z1) / both) for sign in (1, 2)]
-        two = pushed / np.abs(2 * z1)
-        one = np.where(earthed, ROOT3 * pushed / np.abs(2 * z1 + z), np.where(np.isnan(z1), np.nan, 0.0))
-        into = np.where(earthed, ROOT3 * pushed / np.abs(z1 + 2 * z), 0 * one)
-        return Faults(
-            z1=z1,
-            z0=z0,
-            three_phase=pushed / (ROOT3 * np.abs(z1)),
-            two_phase=two,
-            phase_earth=one,
-            two_phase_earth=np.where(earthed, pushed * np.maximum(*phases), two),
-            two_phase_to_earth=into,
-            loop=np.where(earthed, (2 * z1 + z) / 3, np.inf),
-            kappa=kappa(_ratio_at_low_frequency(positive, frequency)),
-        )
+    found = GROUP.fullmatch(vector_group)
+    if found is None:
+        raise ValueError(f"{vector_group!r} is not a vector group such as Dyn11, YNd1 or Ii0")
+    one, two = (found[n][0].upper() for n in (1, 2))
+    held = (one in "YZ" and earthed_1, two in "YZ" and earthed_2)
+    earth_1 = held[0] and (one == "Z" or two == "D")
+    earth_2 = held[1] and (two == "Z" or one == "D")
+    return ZeroPath(one == "Y" and two == "Y" and all(held), earth_1, earth_2)
 
 
-def _ratio_at_low_frequency(network: Network, frequency: float) -> Real:
-    """(node, batch) R/X of the peak, by the equivalent frequency of 0.4 times that of the system."""
-    share = 0.4
+def correction(rating: ArrayLike, rated_voltage: ArrayLike, z: ArrayLike, c_max: ArrayLike) -> Real:
+    """Factor on the impedance of a transformer where the highest currents are sought; zero sequence too.
 
-    def slowed(z: Complex) -> Complex:
-        return z.real + share * 1j * z.imag
+    KT = 0.95 · cmax / (1 + 0.6 xT),  xT = XT · S / U²
 
-    slow = replace(
-        network,
-        line_z=slowed(network.line_z),
-        transformer_z=slowed(network.transformer_z),
-        source_z=None if network.source_z is None else slowed(network.source_z),
-    )
-    z = path_impedance(slow)
-    return np.asarray(z.real / z.imag * share)
+    rating : (...) float [VA]
+    rated_voltage : (...) float [V] of the winding that z is seen from
+    z : (...) complex [ohm]
+    c_max : (...) float, voltage factor of the system at the lower voltage
+    Returns : (...) float
+    Source : IEC 60909-0:2016, 6.3.3
+    """
+    x = np.imag(np.asarray(z)) * np.asarray(rating) / np.asarray(rated_voltage, dtype=float) ** 2
+    return np.asarray(0.95 * np.asarray(c_max) / (1 + 0.6 * x))
 
 
-def kappa(ratio: ArrayLike) -> Real:
-    """Peak factor.
+def feeder(voltage: ArrayLike, current: ArrayLike, c: ArrayLike, x_over_r: ArrayLike) -> Complex:
+    """Impedance of a supply from its three-phase fault current.
+
+    |Z| = c · U / (√3 · I),  X / R as stated
+
+    voltage : (...) float [V] nominal, between lines
+    current : (...) float [A] initial symmetrical
+    c : (...) float, voltage factor that the current was stated with
+    x_over_r : (...) float
+    Returns : (...) complex [ohm] per phase
+    Source : IEC 60909-0:2016, 6.2
+    """
+    size = np.asarray(c) * np.asarray(voltage) / (np.sqrt(3) * np.asarray(current, dtype=float))
+    ratio = np.asarray(x_over_r, dtype=float)
+    return np.asarray(size * (1 + 1j * ratio) / np.sqrt(1 + ratio**2))
+
+
+def three_phase(source: ArrayLike, z1: ArrayLike) -> Real:
+    """Current of a three-phase fault.
+
+    I = E / |Z1|
+
+    source : (...) float [V], c · U / √3
+    z1 : (...) complex [ohm]
+    Returns : (...) float [A], initial symmetrical; infinite where nothing limits it
+    Source : IEC 60909-0:2016, 7.2
+    """
+    return _over(source, np.abs(z1))
+
+
+def two_phase(source: ArrayLike, z1: ArrayLike) -> Real:
+    """Current of a fault between two phases clear of earth, with Z2 = Z1.
+
+    I = √3 · E / |2 Z1|
+
+    source : (...) float [V], c · U / √3
+    z1 : (...) complex [ohm]
+    Returns : (...) float [A]
+    Source : IEC 60909-0:2016, 7.3
+    """
+    return np.asarray(np.sqrt(3) / 2 * three_phase(source, z1))
+
+
+def phase_earth(source: ArrayLike, z1: ArrayLike, z0: ArrayLike) -> Real:
+    """Current of a fault between one phase and earth, with Z2 = Z1.
+
+    I = 3 · E / |2 Z1 + Z0| = E / Zs
+
+    source : (...) float [V], c · U / √3
+    z1 : (...) complex [ohm]
+    z0 : (...) complex [ohm]; infinite where the zero sequence has no way back
+    Returns : (...) float [A]
+    Source : IEC 60909-0:2016, 7.5
+    """
+    return _over(source, np.abs(earth_loop(z1, z0)))
+
+
+def earth_loop(z1: ArrayLike, z0: ArrayLike) -> Complex:
+    """Impedance of the earth-fault loop, source included.
+
+    Zs = (2 Z1 + Z0) / 3
+
+    z1 : (...) complex [ohm]
+    z0 : (...) complex [ohm]
+    Returns : (...) complex [ohm]; infinite where z0 is
+    Source : IEC 60364-4-41, 411.4.4
+    """
+    whole = np.asarray(z1) + np.asarray(z1) + np.asarray(z0)
+    return np.where(np.isinf(whole), whole, np.where(np.isinf(whole), 0, whole) / 3)
+
+
+class TwoPhaseEarth(NamedTuple):
+    """A fault between phases b, c and earth.
+
+    b, c : (...) float [A] in the two phases
+    earth : (...) float [A] into earth
+    """
+
+    b: Real
+    c: Real
+    earth: Real
+
+
+def two_phase_earth(source: ArrayLike, z1: ArrayLike, z0: ArrayLike) -> TwoPhaseEarth:
+    """Currents of a fault between two phases and earth, with Z2 = Z1.
+
+    Ib, Ic = √3 · E · |Z0 - a Z1|, |Z0 - a² Z1| over |Z1² + 2 Z1 Z0|,  Ie = 3 · E / |Z1 + 2 Z0|
+
+    source : (...) float [V], c · U / √3
+    z1 : (...) complex [ohm]
+    z0 : (...) complex [ohm]; infinite where the zero sequence has no way back
+    Returns : TwoPhaseEarth
+    Source : IEC 60909-0:2016, 7.4
+    """
+    one, zero, e = np.asarray(z1, dtype=complex), np.asarray(z0, dtype=complex), np.asarray(source)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        y0 = np.where(np.isinf(zero), 0, 1 / zero)
+        below = np.abs(one * (one * y0 + 2))
+        b, c = (np.sqrt(3) * e * np.abs(1 - turn * one * y0) / below for turn in (TURN, TURN**2))
+    return TwoPhaseEarth(b, c, np.where(y0 == 0, 0.0, _over(3 * e * np.abs(y0), np.abs(one * y0 + 2))))
+
+
+def peak_factor(r_over_x: ArrayLike) -> Real:
+    """How far the first peak stands above the symmetrical one.
 
     κ = 1.02 + 0.98 · e^(-3 R/X)
 
-    ratio : (...) float, R/X
-    Returns : (...) float, 1.02 to 2
-    Source : IEC 60909-0:2016, 8.1 (from memory)
-
-    >>> round(float(kappa(0.1)), 3)
-    1.746
+    r_over_x : (...) float; infinite where there is no reactance. On rings that of the equivalent frequency
+    Returns : (...) float, 1.02 to 2.00
+    Source : IEC 60909-0:2016, 8.1
     """
-    return np.asarray(1.02 + 0.98 * np.exp(-3 * np.asarray(ratio, dtype=float)))
+    return np.asarray(1.02 + 0.98 * np.exp(-3 * np.asarray(r_over_x, dtype=float)))
 
 
-def supply_impedance(
-    fault_level: ArrayLike, nominal: ArrayLike, factor: ArrayLike, x_over_r: ArrayLike
-) -> Complex:
-    """Impedance of a supply out of its fault level.
+def peak(current: ArrayLike, r_over_x: ArrayLike) -> Real:
+    """Peak of the fault current.
 
-    |ZQ| = c U² / S, shared out as X/R says
+    ip = κ · √2 · I
 
-    fault_level : (...) float [VA], √3 · U · Ik
-    nominal : (...) float [V] between lines at the supply
-    factor : (...) float, voltage factor c there
-    x_over_r : (...) float
-    Returns : (...) complex [ohm] per phase
-    Source : IEC 60909-0:2016, 6.2 (from memory)
-
-    >>> z = supply_impedance(200e6, 20e3, 1.1, 10)
-    >>> round(abs(complex(z)), 3), round(complex(z).imag / complex(z).real, 3)
-    (2.2, 10.0)
+    current : (...) float [A], initial symmetrical
+    r_over_x : (...) float
+    Returns : (...) float [A]
+    Source : IEC 60909-0:2016, 8.1
     """
-    size = np.asarray(factor) * np.asarray(nominal, dtype=float) ** 2 / np.asarray(fault_level)
-    r = 1 / np.sqrt(1 + np.asarray(x_over_r, dtype=float) ** 2)
-    return np.asarray(size * r * (1 + 1j * np.asarray(x_over_r)), dtype=np.complex128)
-
-
-def transformer_correction(ux_percent: ArrayLike, factor: ArrayLike) -> Real:
-    """Correction of a network transformer's impedances for the largest fault currents.
-
-    K_T = 0.95 · cmax / (1 + 0.6 · xT)
-
-    ux_percent : (...) float [%] reactive part of uk
-    factor : (...) float, cmax of the side of lower voltage
-    Returns : (...) float that multiplies positive, negative and zero sequence
-    Source : IEC 60909-0:2016, 6.3.3, equation 12a
-    """
-    return np.asarray(0.95 * np.asarray(factor) / (1 + 0.006 * np.asarray(ux_percent, dtype=float)))
+    return np.asarray(peak_factor(r_over_x) * np.sqrt(2) * np.asarray(current))
 
 
 def voltage_factor(nominal: ArrayLike, largest: ArrayLike, tolerance_percent: ArrayLike = 10.0) -> Real:
@@ -208,3 +249,8 @@ def motor_impedance(
     size = np.asarray(rated_voltage, dtype=float) ** 2 / (np.asarray(rated_power) * np.asarray(start_ratio))
     x = 1 / np.sqrt(1 + np.asarray(r_over_x, dtype=float) ** 2)
     return np.asarray(size * x * (np.asarray(r_over_x) + 1j), dtype=np.complex128)
+
+
+def _over(above: ArrayLike, below: ArrayLike) -> Real:
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return np.asarray(np.asarray(above, dtype=float) / below)

@@ -106,7 +106,8 @@ def blame(solution: Solution, point: int = 0) -> tuple[int | None, int | None]:
         raise ValueError("a layout in trouble has no share")
     level = put(network, forest).level
     level = level[forest.zone, min(point, level.shape[1] - 1)]
-    share = np.abs(solution.voltage[forest.order, :, point]).min(axis=1) / level
+    phases = solution.voltage[forest.order, : 3 if network.conductors > 1 else 1, point]
+    share = np.where(np.isnan(phases), np.inf, np.abs(phases)).min(axis=1) / level
     place = int(forest.place[forest.order[np.argmin(share)]])
     worst, to_blame = -np.inf, (None, None)  # type: float, tuple[int | None, int | None]
     while (above := int(forest.parent[forest.order[place]])) >= 0:

@@ -63,7 +63,7 @@ def test_balanced_faults_are_those_of_sequences():
     assert found.phase_earth[0] == pytest.approx(3 * LOW / abs(2 * (Z + z1) + Z + z0))
     assert found.three_phase[0] == pytest.approx(LOW / abs(Z + z1))
     assert found.phase_phase[0] == pytest.approx(3**0.5 / 2 * LOW / abs(Z + z1))
-    assert fault.kappa(0) == pytest.approx(2)
+    assert fault.peak_factor(0) == pytest.approx(2)
 
 
 def test_a_side_without_earth_has_no_earth_fault_current_but_faults_between_phases():

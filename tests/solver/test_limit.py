@@ -7,6 +7,7 @@ import pytest
 from networks import CURRENT, IMPEDANCE, POWER, build, feeder
 from nodal import nodal
 from random_networks import random_network
+from wired import Layout, balanced
 
 from solver import Status, largest_share, solve
 from solver.share import scaled
@@ -131,3 +132,29 @@ def test_a_warm_start_lands_on_the_same_answer():
     warm = solve(network, forest=cold.forest, warm=cold.voltage)
     assert np.max(np.abs(warm.voltage / cold.voltage - 1)) < 1e-12
     assert warm.iterations[0] < cold.iterations[0]
+
+
+def test_a_ring_carries_as_much_as_its_two_ways_side_by_side():
+    one, two, power = 0.4 + 0.3j, 0.7 + 0.2j, 1e3 * (0.9 + 0.4j)
+    ring = build(3, [(0, 230)], [(0, 1, one), (0, 2, two), (1, 2, 0)], loads=[(2, power)])
+    z = 1 / (1 / one + 1 / two)
+    largest = 230**2 / (2 * (abs(z) + (z * np.conj(power)).real / abs(power)))
+    share = largest_share(ring)
+    assert share.share == pytest.approx(largest / abs(power), rel=1e-3)
+    assert share.share <= largest / abs(power)
+    near = replace(ring, load_power=ring.load_power * 0.9995 * largest / abs(power))
+    assert solve(near).solved
+
+
+def test_one_phase_of_four_wires_carries_what_its_loop_does():
+    phase, neutral, power = 0.4 + 0.3j, 0.5 + 0.2j, 1e3 * (0.9 + 0.4j)
+    lines = [(0, 1, (0, 3), np.diag([phase, neutral])), (0, 2, (0, 1, 2, 3), np.eye(4) * 0.01)]
+    loads = [(1, 0, 3, power, 230, POWER), (2, 1, 3, 100, 230, POWER)]
+    network = Layout(3, [(0, balanced(230))], lines, [], loads).network()
+    z = phase + neutral
+    largest = 230**2 / (2 * (abs(z) + (z * np.conj(power)).real / abs(power)))
+    share = largest_share(network)
+    assert share.share == pytest.approx(largest / abs(power), rel=1e-3)
+    assert (share.line, share.transformer) == (0, None)
+    near = replace(network, load_power=network.load_power * 0.9995 * largest / abs(power))
+    assert solve(near).solved
