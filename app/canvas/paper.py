@@ -160,9 +160,9 @@ class Paper(QGraphicsScene):
         return self._write(list(islice(self.owed, most)))
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
-        names = ("loading_percent", "start_kw", "end_kw", "forward")
-        loading, start, end, fed = (array_of(branches, name, case) for name in names)
-        widths, onward = standing.breadths(loading).tolist(), wording.runs_on(start, end, fed).tolist()
+        names = ("loading_percent", "through_kw", "forward")
+        loading, through, fed = (array_of(branches, name, case) for name in names)
+        widths, onward = standing.breadths(loading).tolist(), wording.runs_on(through, fed).tolist()
         live = column_of(branches, "live", case)
         for id, width, runs, lives in zip(branches.ids, widths, onward, live, strict=True):
             item = self.items_by_id.get(id)

@@ -11,9 +11,8 @@ from app.model.drawing import Drawing
 from app.model.figures import amps, length, loss, percent, plain, power, volts
 from app.model.kinds import Attachment, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
 from app.panels.change import change
-from app.study.outcome import BranchState, Finding, NodeState, Outcome, Table, Verdict
+from app.study.outcome import Finding, NodeState, Outcome, Table, Verdict
 
-Figure = Callable[[int], float]
 Write = Callable[[float], str]
 VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("loading",)
 
@@ -114,25 +113,12 @@ def _line(asked: Asked, id: str) -> list[Row]:
     return [
         row("Current", "current_a", amps),
         row("Loading", "loading_percent", percent, LOADING),
-        row("Through", _through_kw, power),
+        row("Through", "through_kw", power),
         row("Drop", "drop_percent", partial(percent, digits=2)),
         row("Loss", "loss_kw", loss),
         _once(row(f"R at {kelvin:g} °C", "resistance_ohm", ohms)),
         _once(row("X", "reactance_ohm", ohms)),
     ]
-
-
-def _through_kw(state: BranchState) -> float:
-    """What enters at the fed side; negative where power goes back towards the supply."""
-    return state.start_kw if state.forward else state.end_kw * -1
-
-
-def _through_kva(state: BranchState) -> float:
-    return (
-        math.hypot(state.start_kw, state.start_kvar)
-        if state.forward
-        else math.hypot(state.end_kw, state.end_kvar)
-    )
 
 
 def _transformer(asked: Asked, id: str) -> list[Row]:
@@ -142,8 +128,8 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
     assert isinstance(element, Transformer)
     low = element.end if element.v2_v <= element.v1_v else element.start
     made = [
-        row("Through", _through_kw, power),
-        row("", _through_kva, partial(power, unit="kVA")),
+        row("Through", "through_kw", power),
+        row("", "through_kva", partial(power, unit="kVA")),
         row("Loading", "loading_percent", percent, LOADING),
     ]
     if low in asked.outcome.nodes:
@@ -166,7 +152,7 @@ def _switch(asked: Asked, id: str) -> list[Row]:
     return [
         row("Current", "current_a", amps),
         row("Loading", "loading_percent", percent, LOADING),
-        row("Through", _through_kw, power),
+        row("Through", "through_kw", power),
     ]
 
 

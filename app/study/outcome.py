@@ -43,6 +43,8 @@ class BranchState:
     start_kvar: float
     end_kw: float
     end_kvar: float
+    through_kw: float  # that enters it, at the end where it does; negative against the way it is fed
+    through_kva: float  # at that end
     loss_kw: float
     copper_kw: float  # series loss of line or winding
     iron_kw: float  # no-load loss of a transformer

@@ -139,6 +139,8 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "start_kvar": start_s.imag,
         "end_kw": end_s.real,
         "end_kvar": end_s.imag,
+        "through_kw": _through(onward, start_s, end_s).real,
+        "through_kva": np.abs(_through(onward, start_s, end_s)),
         "loss_kw": series.real + shunt.real,
         "copper_kw": series.real,
         "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
@@ -149,6 +151,17 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "reactance_ohm": ohms.imag,
     }
     return Table(BranchState, tuple(layout.branch_ids), columns, layout.branch_row)
+
+
+def _through(onward: NDArray[np.bool_], start_s: Complex, end_s: Complex) -> Complex:
+    """Power that enters a branch, where it enters: at the end it is fed from, at the other end where it
+    comes back. Its sign is that of the way it is fed; what is fed from both ends counts as it is fed.
+
+    onward : (branch, case or 1) bool, fed from its start
+    start_s, end_s : (branch, case) complex [kVA], entering at start and leaving at end
+    """
+    here, there = np.where(onward, start_s, -end_s), np.where(onward, end_s, -start_s)
+    return np.where(here.real >= 0, here, there)
 
 
 def _forward(layout: Layout, through: Complex) -> NDArray[np.bool_]:

@@ -234,7 +234,7 @@ def test_power_that_runs_back_turns_the_arrow(bench):
     one = bench(FERNHOLLOW)
     outcome = figures(FERNHOLLOW)
     columns = dict(outcome.branches.columns)
-    columns["start_kw"], columns["end_kw"] = -columns["end_kw"], -columns["start_kw"]
+    columns["through_kw"] = -columns["through_kw"]
     one.answer = lambda _: replace(outcome, branches=replace(outcome.branches, columns=columns))
     one.solving._owed = True
     one.solving.settle_solve()

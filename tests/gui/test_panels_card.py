@@ -6,9 +6,12 @@ from PySide6.QtCore import QPoint, Qt
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QToolButton
 
+from app.canvas.wording import branch_figures
 from app.model import edits
-from app.model.kinds import Load, Transformer
+from app.model.figures import power
+from app.model.kinds import Generator, Load, Transformer
 from app.panels.element_page import ElementPage
+from app.panels.results import Asked, rows
 
 
 @pytest.fixture
@@ -202,6 +205,18 @@ def test_results_of_a_transformer(set_up):
     assert cells["Copper loss"] == (f"{state.copper_kw:.2f} kW",)
     node = set_up.solving.outcome.nodes.at("B2")
     assert cells["LV volts"] == (f"{node.voltage_v:.1f} V",)
+
+
+def test_card_and_board_tell_the_same_power_where_it_runs_back(qtbot):
+    made = stage(qtbot, fernhollow(ONE, G2=Generator(node="B2", output_kw=140.0)))
+    state = made.solving.outcome.branches.at("T2")
+    assert state.through_kw < 0
+    drawn = Asked(made.session.drawing, made.solving.outcome, None, 0)
+    (through,) = (row for row in rows(drawn, "T2") if row.label == "Through")
+    (first, *_), *_ = branch_figures(0.0, state, None)
+    assert through.cells == (power(state.through_kw),)
+    assert first.text.startswith(f"{power(-state.through_kw)} ←")
+    made.solving.stop()
 
 
 def test_several_of_one_kind_are_set_as_one_step(set_up):

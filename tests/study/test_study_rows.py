@@ -181,6 +181,21 @@ def test_swapping_the_ends_of_a_line_turns_its_figures_and_nothing_else():
     assert there.current_a == back.current_a
 
 
+@pytest.mark.parametrize("ends", [("B1", "B2"), ("B2", "B1")])
+def test_power_through_a_branch_is_told_where_it_enters(ends):
+    base = changed(two_nodes(), C1=line(*ends), G2=Generator(node="B2", output_kw=60.0))
+    for infeed, back in ((0.0, False), (100.0, True)):
+        cases = (Case(name="One", generation_percent=infeed),)
+        outcome = run(msgspec.structs.replace(base, cases=cases))
+        state = outcome.branches.at("C1")
+        enters = -60.0 + outcome.attachments.at("L1").kw if back else outcome.balance.supply_kw[0]
+        assert state.through_kw == pytest.approx(enters, rel=1e-9)
+        assert (state.through_kw < 0) is back
+        sides = (state.start_kw, state.start_kvar), (state.end_kw, state.end_kvar)
+        at_start = (ends[0] == "B1") is not back
+        assert state.through_kva == pytest.approx(math.hypot(*sides[0 if at_start else 1]), rel=1e-12)
+
+
 def test_a_transformer_fed_from_winding_2_is_the_turned_one():
     plate = dict(rating_kva=100.0, load_loss_w=1250.0, no_load_loss_w=130.0, no_load_current_percent=0.8)
     down = drawing(
