@@ -41,7 +41,7 @@ BRANCH_COLUMNS: tuple[Column, ...] = (
     ("kW out", figure("end_kw", 2)),
     ("kvar out", figure("end_kvar", 2)),
     ("loss kW", figure("loss_kw", 3)),
-    ("loading %", figure("loading_percent", 1)),
+    ("loading %", figure("loaded_percent", 1)),
     ("drop %", figure("drop_percent", 2)),
 )
 ATTACHMENT_COLUMNS: tuple[Column, ...] = (

@@ -160,7 +160,7 @@ class Paper(QGraphicsScene):
         return self._write(list(islice(self.owed, most)))
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
-        names = ("loading_percent", "through_kw", "forward")
+        names = ("loaded_percent", "through_kw", "forward")
         loading, through, fed = (array_of(branches, name, case) for name in names)
         widths, onward = standing.breadths(loading).tolist(), wording.runs_on(through, fed).tolist()
         live = column_of(branches, "live", case)

@@ -60,10 +60,10 @@ def colour(standing: Standing, palette: Palette, stale: bool = False) -> QColor:
     return palette.soft if stale else QColor(getattr(palette, _COLOUR[standing]))
 
 
-def breadths(loading_percent: NDArray[np.float64]) -> NDArray[np.float64]:
+def breadths(loaded_percent: NDArray[np.float64]) -> NDArray[np.float64]:
     """The breadth of lines, px: grows evenly with loading up to 150 %; thin where no rating is known. In
     steps that the eye can tell."""
-    rated = np.where(np.isnan(loading_percent), 0.0, loading_percent)
+    rated = np.where(np.isnan(loaded_percent), 0.0, loaded_percent)
     return STEP * np.round((2.0 + 0.05 * np.clip(rated, 0.0, 150.0)) / STEP)
 
 

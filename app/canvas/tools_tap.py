@@ -82,7 +82,7 @@ class TapHold:
 
 def notch_percent(t: Transformer, notch: int) -> str:
     """`−2.5 %`: a notch as percent of the tapped winding's nameplate voltage."""
-    value = notch * t.tap_step_percent
+    value = notch * t.notch_percent
     digits = next((d for d in range(4) if abs(round(value, d) - value) < 1e-9), 3)
     return percent(value, digits, sign=True)
 

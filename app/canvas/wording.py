@@ -79,14 +79,14 @@ def describe(element: AnyElement) -> tuple[str, ...]:
 
 
 def _transformer(t: Transformer) -> tuple[str, ...]:
-    units = f"{t.parallel} × " if t.parallel > 1 else ""
+    units = f"{t.side_by_side} × " if t.side_by_side > 1 else ""
     first = f"{units}{figures.typed(t.rating_kva)} kVA {_ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
     if not t.taps_up + t.taps_down:
         return (first,)
     if t.regulates != "no":
         return first, f"holds {_held(t)} at {t.regulates}"
-    digits = _digits(t.tap_step_percent) if t.tap else 0
-    return first, f"tap {figures.percent(t.tap * t.tap_step_percent, digits, sign=True)}"
+    digits = _digits(t.notch_percent) if t.tap else 0
+    return first, f"tap {figures.percent(t.tap * t.notch_percent, digits, sign=True)}"
 
 
 def _held(changer: Transformer | Regulator) -> str:
@@ -109,7 +109,7 @@ def _kilovolts(volts: float) -> str:
 
 
 def _line(line: LineElement) -> str:
-    runs = f"{line.parallel} × " if line.parallel > 1 else ""
+    runs = f"{line.side_by_side} × " if line.side_by_side > 1 else ""
     area = f"{figures.typed(line.area_mm2)} mm² {line.conductor}" if line.area_mm2 else ""
     what = line.type or area
     return f"{runs}{what} {figures.length(line.length_m)}".strip()
@@ -142,8 +142,8 @@ def branch_figures(
     if not state.live:
         return ()
     forward = runs_on(state.through_kw, state.forward)
-    rated = not math.isnan(state.loading_percent)
-    load = figures.percent(state.loading_percent) if rated else figures.amps(state.current_a)
+    rated = not math.isnan(state.loaded_percent)
+    load = figures.percent(state.loaded_percent) if rated else figures.amps(state.current_a)
     first: Line = (Run(f"{figures.power(abs(state.through_kw))} {arrow(angle, forward)} {load}"),)
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:

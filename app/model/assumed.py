@@ -5,7 +5,18 @@ from bisect import bisect_left
 from dataclasses import dataclass
 
 from app.model.fields import fields_of
-from app.model.kinds import Cable, Capacitor, Element, Line, Load, Motor, Regulator, Supply, Transformer
+from app.model.kinds import (
+    Cable,
+    Capacitor,
+    Element,
+    Generator,
+    Line,
+    Load,
+    Motor,
+    Regulator,
+    Supply,
+    Transformer,
+)
 
 NO_SOURCE = "common practice, no source"
 CABLE_DEGC = 60.0
@@ -62,16 +73,18 @@ def assumable(kind: type[Element]) -> tuple[str, ...]:
 
 
 _ASSUMABLE: dict[type[Element], tuple[str, ...]] = {
-    Line: ("c_uf_per_km", "temperature_degc"),
+    Line: ("capacitance_uf_per_km", "temperature_degc"),
     Transformer: (
         "load_loss_w", "no_load_loss_w", "no_load_current_percent", "hold_percent", "bandwidth_percent",
     ),
     Regulator: ("hold_percent", "bandwidth_percent"),
+    Generator: ("q_min_kvar", "q_max_kvar"),
     Load: ("constant_current_percent", "constant_impedance_percent", "reference_v"),
     Motor: ("rated_v", "limited_current", "limited_power_factor"),
     Capacitor: ("rated_v",),
     Supply: ("xr",),
 }  # fmt: skip
+GENERATOR_TAN = math.tan(math.acos(0.9))
 LIMITED = {"soft starter": (3.0, 0.3), "drive": (1.2, 0.95)}  # × rated current, power factor
 
 
@@ -83,6 +96,9 @@ def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple
         return _of_line(element, field)
     if isinstance(element, Transformer):
         return _of_transformer(element, field)
+    if isinstance(element, Generator) and field in ("q_min_kvar", "q_max_kvar"):
+        most = GENERATOR_TAN * element.output_kw
+        return (most if field == "q_max_kvar" else -most), f"power factor 0.9 at its output; {NO_SOURCE}"
     if field == "xr":
         return 10.0, "R = 0.1·X where nobody states it, IEC 60909-0 (from memory)"
     if isinstance(element, Motor) and field != "rated_v":
@@ -98,6 +114,8 @@ def _idle(element: Element, field: str) -> bool:
     """Nothing hangs on the field: no starter, no fault level stated, no tap changer that steps by itself."""
     if isinstance(element, Supply):
         return element.fault_level_min_mva is None
+    if isinstance(element, Generator):
+        return element.hold_percent is None
     if isinstance(element, Transformer):
         return element.regulates == "no" and field in ("hold_percent", "bandwidth_percent")
     return isinstance(element, Motor) and field != "rated_v" and element.starter == "direct"
@@ -108,7 +126,7 @@ def _of_changer(element: Transformer | Regulator, field: str) -> tuple[float, st
         return 100.0, "nominal voltage"
     if isinstance(element, Regulator):
         return 2 / 1.2, f"2 V on a base of 120 V; {NO_SOURCE}"
-    return 2 * element.tap_step_percent, f"two steps; {NO_SOURCE}"
+    return 2 * element.notch_percent, f"two steps; {NO_SOURCE}"
 
 
 def _of_motor(motor: Motor, field: str) -> tuple[float, str]:
@@ -120,7 +138,7 @@ def _of_motor(motor: Motor, field: str) -> tuple[float, str]:
 
 
 def _of_line(line: Line, field: str) -> tuple[float, str]:
-    if field == "c_uf_per_km":
+    if field == "capacitance_uf_per_km":
         return 0.0, "neglected"
     if field != "temperature_degc":
         raise KeyError(field)

@@ -241,7 +241,7 @@ def _fault_of_load(load: Load) -> str | None:
 def _fault_of_transformer(t: Transformer) -> str | None:
     if taps.group(t.vector_group) is None:
         return f"Vector group is {shown(t.vector_group)}, allowed is {taps.GROUP_ALLOWED}."
-    deepest = t.taps_down * t.tap_step_percent
+    deepest = t.taps_down * t.notch_percent
     if deepest >= 100:
         return f"Taps below reach down {typed(deepest)} %, allowed is less than 100 %."
     if t.tap not in taps.notches(t):

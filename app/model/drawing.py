@@ -33,7 +33,7 @@ class Limits(Struct, frozen=True, kw_only=True):
     drop_percent: (
         Annotated[float, field("Drop from the supply", "%", gt=0, le=100, help="Blank: not judged.")] | None
     ) = None
-    loading_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
+    most_loaded_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
     start_name: Annotated[str, text("Start limits", help="Whose limits of motor starts these are.")] = ""
     start_supply_percent: (
         Annotated[

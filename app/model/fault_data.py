@@ -39,20 +39,24 @@ def _of_line(line: Line, field: str, nominal_v: float, frequency_hz: float) -> P
         if isinstance(line, OverheadLine):
             return Put(OVERHEAD_HOT_DEGC, f"a bare conductor at its usual highest temperature; {NO_SOURCE}")
         return Put(CABLE_HOT_DEGC, f"XLPE at its highest operating temperature; {NO_SOURCE}")
-    if field == "r0_ohm_per_km":
-        if line.return_r20_ohm_per_km is not None:
+    if field == "zero_resistance_ohm_per_km":
+        if line.return_resistance_ohm_per_km is not None:
             return Put(
-                line.r20_ohm_per_km + 3 * line.return_r20_ohm_per_km, "R1 + 3·R of its return conductor"
+                line.resistance_ohm_per_km + 3 * line.return_resistance_ohm_per_km,
+                "R1 + 3·R of its return conductor",
             )
         if bare:
             back = 3 * EARTH_OHM_PER_KM * frequency_hz / 50
             return Put(
-                line.r20_ohm_per_km + back, f"R1 + {back:.4g} Ω/km of earth return (Carson); {NO_SOURCE}"
+                line.resistance_ohm_per_km + back,
+                f"R1 + {back:.4g} Ω/km of earth return (Carson); {NO_SOURCE}",
             )
-        return Put(4 * line.r20_ohm_per_km, f"4·R1, a return conductor as large as a phase; {NO_SOURCE}")
-    if field == "x0_ohm_per_km":
+        return Put(
+            4 * line.resistance_ohm_per_km, f"4·R1, a return conductor as large as a phase; {NO_SOURCE}"
+        )
+    if field == "zero_reactance_ohm_per_km":
         times = OVERHEAD_X0 if isinstance(line, OverheadLine) else 4.0
-        return Put(times * line.x_ohm_per_km, f"{times:g}·X1; {NO_SOURCE}")
+        return Put(times * line.reactance_ohm_per_km, f"{times:g}·X1; {NO_SOURCE}")
     raise KeyError(field)
 
 

@@ -66,16 +66,16 @@ class Line(Branch, frozen=True, kw_only=True):
 
     type: Annotated[str, text("Type", help="Such as 4×240 Al; a label for the schedule.")] = ""
     length_m: Annotated[float, field("Length", "m", ge=0, le=1e6)] = 100.0
-    parallel: Annotated[int, field("In parallel", "runs", ge=1, le=50)] = 1
+    side_by_side: Annotated[int, field("In parallel", "runs", ge=1, le=50)] = 1
     conductor: Annotated[
         Literal["Al", "Cu"], plain("Conductor", help="Sets how resistance grows when hot.")
     ] = "Al"
     area_mm2: Annotated[float, field("Cross-section", "mm²", gt=0, le=5000)] | None = None
-    r20_ohm_per_km: Annotated[
+    resistance_ohm_per_km: Annotated[
         float, field("Resistance at 20 °C", "Ω/km", ge=0, le=1000, help="Of one conductor of one run.")
     ] = 0.125
-    x_ohm_per_km: Annotated[float, field("Reactance", "Ω/km", ge=0, le=1000)] = 0.072
-    c_uf_per_km: Annotated[float, field("Capacitance", "µF/km", ge=0, le=100)] | None = None
+    reactance_ohm_per_km: Annotated[float, field("Reactance", "Ω/km", ge=0, le=1000)] = 0.072
+    capacitance_uf_per_km: Annotated[float, field("Capacitance", "µF/km", ge=0, le=100)] | None = None
     temperature_degc: (
         Annotated[
             float, field("Conductor at", "°C", ge=-60, le=250, help="Operating temperature of the conductor.")
@@ -98,7 +98,7 @@ class Line(Branch, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    return_r20_ohm_per_km: (
+    return_resistance_ohm_per_km: (
         Annotated[
             float,
             field(
@@ -107,10 +107,10 @@ class Line(Branch, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    r0_ohm_per_km: (
+    zero_resistance_ohm_per_km: (
         Annotated[float, field("R0 at 20 °C", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
     ) = None
-    x0_ohm_per_km: (
+    zero_reactance_ohm_per_km: (
         Annotated[float, field("X0", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
     ) = None
     fault_degc: (
@@ -172,9 +172,9 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     load_loss_w: Annotated[float, field("Load loss Pk", "W", ge=0, le=1e7)] | None = None
     no_load_loss_w: Annotated[float, field("No-load loss P0", "W", ge=0, le=1e7)] | None = None
     no_load_current_percent: Annotated[float, field("No-load current i0", "%", ge=0, le=50)] | None = None
-    parallel: Annotated[int, field("In parallel", "units", ge=1, le=20)] = 1
+    side_by_side: Annotated[int, field("In parallel", "units", ge=1, le=20)] = 1
     tapped: Annotated[Literal["winding 1", "winding 2"], plain("Taps on")] = "winding 1"
-    tap_step_percent: Annotated[float, field("Tap step", "%", gt=0, le=20)] = 2.5
+    notch_percent: Annotated[float, field("Tap step", "%", gt=0, le=20)] = 2.5
     taps_up: Annotated[int, field("Taps above", "notches", ge=0, le=40)] = 2
     taps_down: Annotated[int, field("Taps below", "notches", ge=0, le=40)] = 2
     tap: Annotated[
@@ -339,6 +339,14 @@ class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     output_kvar: Annotated[
         float, field("Reactive output", "kvar", ge=-1e6, le=1e6, help="Positive feeds in, negative absorbs.")
     ] = 0.0
+    hold_percent: (
+        Annotated[
+            float, field("Holds", "% of nominal", gt=0, le=200, help="Volts. Blank: fixed reactive output.")
+        ]
+        | None
+    ) = None
+    q_min_kvar: Annotated[float, field("Least reactive", "kvar", ge=-1e6, le=1e6)] | None = None
+    q_max_kvar: Annotated[float, field("Most reactive", "kvar", ge=-1e6, le=1e6)] | None = None
 
 
 class Capacitor(Attachment, frozen=True, kw_only=True, tag="capacitor"):

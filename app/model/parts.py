@@ -68,9 +68,15 @@ def _transformer(american: bool) -> Transformer:
 def _cable(american: bool) -> Cable:
     """240 mm² (IEC 60228: 0.125 Ω/km at 20 °C), or 4/0 AWG: 0.100 Ω/kft at 75 °C brought back to 20 °C."""
     if not american:
-        return Cable(**Unbound, type="4×240 Al", area_mm2=240.0, r20_ohm_per_km=0.125, x_ohm_per_km=0.072)
+        return Cable(
+            **Unbound,
+            type="4×240 Al",
+            area_mm2=240.0,
+            resistance_ohm_per_km=0.125,
+            reactance_ohm_per_km=0.072,
+        )
     return Cable(
-        **Unbound, type="4/0 AWG Al", area_mm2=107.2, r20_ohm_per_km=0.269, x_ohm_per_km=0.135,
+        **Unbound, type="4/0 AWG Al", area_mm2=107.2, resistance_ohm_per_km=0.269, reactance_ohm_per_km=0.135,
         length_m=30.48,
     )  # fmt: skip
 
@@ -83,12 +89,17 @@ def _overhead(american: bool) -> OverheadLine:
             **Unbound,
             type="ACSR 50/8",
             area_mm2=48.3,
-            r20_ohm_per_km=0.5946,
-            x_ohm_per_km=0.37,
+            resistance_ohm_per_km=0.5946,
+            reactance_ohm_per_km=0.37,
             length_m=500.0,
         )
     return OverheadLine(
-        **Unbound, type="1/0 AWG ACSR", area_mm2=53.5, r20_ohm_per_km=0.536, x_ohm_per_km=0.44, length_m=304.8
+        **Unbound,
+        type="1/0 AWG ACSR",
+        area_mm2=53.5,
+        resistance_ohm_per_km=0.536,
+        reactance_ohm_per_km=0.44,
+        length_m=304.8,
     )
 
 

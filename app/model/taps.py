@@ -17,7 +17,7 @@ GROUP_ALLOWED = (
 
 def factor(t: Transformer, notch: int) -> float:
     """Rated voltage of the tapped winding at a notch over its nameplate."""
-    return 1 + notch * t.tap_step_percent / 100
+    return 1 + notch * t.notch_percent / 100
 
 
 def notches(t: Transformer) -> range:
@@ -58,7 +58,7 @@ def _volts(value: float) -> str:
 
 
 def _percent(t: Transformer, notch: int) -> str:
-    percent = notch * t.tap_step_percent
+    percent = notch * t.notch_percent
     return f"{'+' if percent > 0 else MINUS}{abs(percent):g} %"
 
 

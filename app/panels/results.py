@@ -112,7 +112,7 @@ def _line(asked: Asked, id: str) -> list[Row]:
     ohms = partial(plain, digits=4, unit="Ω")
     return [
         row("Current", "current_a", amps),
-        row("Loading", "loading_percent", percent, LOADING),
+        row("Loading", "loaded_percent", percent, LOADING),
         row("Through", "through_kw", power),
         row("Drop", "drop_percent", partial(percent, digits=2)),
         row("Loss", "loss_kw", loss),
@@ -130,7 +130,7 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
     made = [
         row("Through", "through_kw", power),
         row("", "through_kva", partial(power, unit="kVA")),
-        row("Loading", "loading_percent", percent, LOADING),
+        row("Loading", "loaded_percent", percent, LOADING),
     ]
     if low in asked.outcome.nodes:
         made.append(_row(asked, "nodes", low, "LV volts", _voltage, volts, VOLTAGE))
@@ -151,7 +151,7 @@ def _switch(asked: Asked, id: str) -> list[Row]:
     row = partial(_row, asked, "branches", id)
     return [
         row("Current", "current_a", amps),
-        row("Loading", "loading_percent", percent, LOADING),
+        row("Loading", "loaded_percent", percent, LOADING),
         row("Through", "through_kw", power),
     ]
 

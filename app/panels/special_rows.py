@@ -61,7 +61,7 @@ class TapRow(FieldRow):
 
     def show_transformers(self, elements: Sequence[Element]) -> None:
         """What a notch is worth."""
-        steps = {e.tap_step_percent for e in elements if isinstance(e, Transformer)}
+        steps = {e.notch_percent for e in elements if isinstance(e, Transformer)}
         self._percent = steps.pop() if len(steps) == 1 else 0.0
 
     def say(self, words: str) -> None:

@@ -30,7 +30,7 @@ class TapDrag:
         if transformer is None:
             return
         self.dragged, self._y, self._from = id, y, transformer.tap
-        self._px = max(transformer.tap_step_percent * px_per_percent, LEAST_PX)
+        self._px = max(transformer.notch_percent * px_per_percent, LEAST_PX)
         self._hold.take()
 
     def drag(self, y: float) -> None:

@@ -19,8 +19,8 @@ def summary_rows(asked: Asked, ids: tuple[str, ...]) -> list[Row]:
     if lines:
         total = sum(e.length_m for e in lines.values())
         made.append(Row("Length, all", (length(total),)))
-        if any(e.parallel > 1 for e in lines.values()):
-            laid = sum(e.length_m * e.parallel for e in lines.values())
+        if any(e.side_by_side > 1 for e in lines.values()):
+            laid = sum(e.length_m * e.side_by_side for e in lines.values())
             made.append(Row("Laid, all runs", (length(laid),)))
     branches = [i for i, e in elements.items() if isinstance(e, Branch) and i in asked.outcome.branches]
     if branches:

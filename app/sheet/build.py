@@ -50,9 +50,9 @@ def _switch(subject: Subject, id: str, switch: Switch) -> Entry:
         found: Cells = {}
         if switch.closed and state.live:
             found["current"] = Cell(state.current_a)
-            found["most"] = Cell(subject.drawing.limits.loading_percent)
+            found["most"] = Cell(subject.drawing.limits.most_loaded_percent)
             if switch.rating_a is not None:
-                found["loading"] = Cell(state.loading_percent, "{current}/{rating}*100")
+                found["loading"] = Cell(state.loaded_percent, "{current}/{rating}*100")
         figures.append(found)
     if not switch.closed:
         return Entry(id, data, figures, lambda worst: {"verdict": text("open")})
@@ -94,7 +94,9 @@ def _cable_list(subject: Subject) -> SheetTable:
 
 
 def _total(subject: Subject, ids: list[str]) -> Cell:
-    metres = sum(e.length_m * e.parallel for i in ids if isinstance(e := subject.drawing.elements[i], Line))
+    metres = sum(
+        e.length_m * e.side_by_side for i in ids if isinstance(e := subject.drawing.elements[i], Line)
+    )
     if len(ids) > MOST_TERMS:
         return Cell(metres)
     refs = {f"l{n}": Ref("length", LINES, i) for n, i in enumerate(ids)}
@@ -115,7 +117,7 @@ def _orders(subject: Subject) -> SheetTable:
     rows = {
         id: {
             "item": text(subject.tell(id)),
-            "count": given(t.parallel),
+            "count": given(t.side_by_side),
             "text": text(order_words(subject, id, t)),
         }
         for id, t in _transformers(subject).items()
@@ -132,9 +134,9 @@ def order_words(subject: Subject, id: str, t: Transformer) -> str:
             return f"{mark} not stated"
         return f"{mark} {value.value:g} {unit}" + (" (assumed)" if value.origin.value == "assumed" else "")
 
-    ladder = f"+{t.taps_up} −{t.taps_down} × {t.tap_step_percent:g} %"
+    ladder = f"+{t.taps_up} −{t.taps_down} × {t.notch_percent:g} %"
     if t.taps_up == t.taps_down:
-        ladder = f"±{t.taps_up} × {t.tap_step_percent:g} %"
+        ladder = f"±{t.taps_up} × {t.notch_percent:g} %"
     return ", ".join(
         (
             f"{t.rating_kva:g} kVA",

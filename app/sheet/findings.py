@@ -4,8 +4,9 @@ import math
 
 from app.sheet.head import verdict_words
 from app.sheet.nodes import VERDICT
-from app.sheet.subject import Subject
+from app.sheet.subject import PASSED, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, table, text
+from app.study.findings import NOISE
 from app.study.outcome import Finding, Verdict
 
 COLUMNS = (
@@ -50,7 +51,7 @@ def _row(subject: Subject, finding: Finding) -> Cells:
     found["margin"] = Cell(finding.margin, _margin_formula(finding))
     if (finding.margin < 0) is (finding.verdict is Verdict.FAILS):  # advice may be passed without failing
         held = "holds" if finding.margin < 0 else verdict_words(finding.verdict)
-        found["verdict"] = Cell(verdict_words(finding.verdict), f'IF({{margin}}<0,"FAIL","{held}")')
+        found["verdict"] = Cell(verdict_words(finding.verdict), f'IF({{margin}}{PASSED},"FAIL","{held}")')
     return found
 
 
@@ -58,6 +59,6 @@ def _margin_formula(finding: Finding) -> str:
     """Value − limit for a lower limit, limit − value for an upper one, whichever the margin is."""
     value, limit = finding.value or 0.0, finding.limit or 0.0
     for formula, margin in (("{value}-{limit}", value - limit), ("{limit}-{value}", limit - value)):
-        if math.isclose(margin, finding.margin or 0.0, rel_tol=1e-9, abs_tol=1e-12):
+        if math.isclose(margin, finding.margin or 0.0, rel_tol=1e-9, abs_tol=NOISE):
             return formula
     return ""

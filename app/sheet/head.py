@@ -97,7 +97,7 @@ def _limits(subject: Subject) -> SheetTable:
     whose = limits.name or "chosen for this drawing; no standard is claimed"
     columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=40))
     rows: dict[str, Cells] = {}
-    names: tuple[str, ...] = ("low", "high", "drop", "loading")
+    names: tuple[str, ...] = ("low", "high", "drop", "most_loaded")
     if any(isinstance(e, Motor) for e in subject.drawing.elements.values()):
         names += ("start_supply", "start_step", "start_motor")
     for name in names:

@@ -6,8 +6,9 @@ from collections.abc import Callable
 from app.model.kinds import Line
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT, node_cell
-from app.sheet.subject import FAIL, FROM_TO, HOLDS, Subject, kind_name, limit
+from app.sheet.subject import FAIL, FROM_TO, HOLDS, PASSED, Subject, kind_name, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.study.findings import margin_of
 from app.study.outcome import BranchState
 
 KEY = "cables"
@@ -39,7 +40,7 @@ MARGIN = Column("margin", "Margin", "%", digits=1, near="0", width=8)
 def line_tables(subject: Subject) -> list[SheetTable]:
     """Every cable and overhead line."""
     found = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Line)}
-    charging = any(subject.value(i, "c_uf_per_km").value for i in found)
+    charging = any(subject.value(i, "capacitance_uf_per_km").value for i in found)
     data = list(DATA)
     if charging:
         data.insert(-1, Column("c", "C", "µF/km", digits=3, width=7))
@@ -81,12 +82,12 @@ def _data(subject: Subject, id: str, line: Line, state: BranchState) -> Cells:
         "type": given(line.type),
         "conductor": given(line.conductor),
         "area": subject.value(id, "area_mm2"),
-        "runs": given(line.parallel),
+        "runs": given(line.side_by_side),
         "length": subject.value(id, "length_m"),
-        "r20": subject.value(id, "r20_ohm_per_km"),
-        "x": subject.value(id, "x_ohm_per_km"),
+        "r20": subject.value(id, "resistance_ohm_per_km"),
+        "x": subject.value(id, "reactance_ohm_per_km"),
         "theta": subject.value(id, "temperature_degc"),
-        "c": subject.value(id, "c_uf_per_km"),
+        "c": subject.value(id, "capacitance_uf_per_km"),
         "iz": subject.value(id, "rating_a"),
     }
     if not math.isnan(state.resistance_ohm):
@@ -102,18 +103,18 @@ def _figures(subject: Subject, id: str, line: Line, state: BranchState, case: in
         return {}
     fed, far = (line.start, line.end) if state.forward else (line.end, line.start)
     series = _series_current(subject, line, state, case)
-    charged = bool(subject.value(id, "c_uf_per_km").value)
+    charged = bool(subject.value(id, "capacitance_uf_per_km").value)
     three = "" if subject.two_wire(line.start) else "3*"
     through = "series" if charged else "current"
     found = {
         "current": Cell(state.current_a),
         "series": Cell(series),
         "loss": Cell(state.loss_kw * 1e3, f"{three}{{{through}}}^2*{{r}}"),
-        "rating": Cell(line.rating_a * line.parallel if line.rating_a else None),
-        "most": Cell(subject.drawing.limits.loading_percent),
+        "rating": Cell(line.rating_a * line.side_by_side if line.rating_a else None),
+        "most": Cell(subject.drawing.limits.most_loaded_percent),
     }
     if line.rating_a is not None:
-        found["loading"] = Cell(state.loading_percent, "{current}/({iz}*{runs})*100")
+        found["loading"] = Cell(state.loaded_percent, "{current}/({iz}*{runs})*100")
     return found | drop_cells(subject, fed, far, case)
 
 
@@ -133,7 +134,7 @@ def drop_cells(subject: Subject, fed: str, far: str, case: int) -> Cells:
 def _series_current(subject: Subject, line: Line, state: BranchState, case: int) -> float:
     """Current between the two halves of the charging: power at the start less what the half there feeds."""
     volts = subject.outcome.nodes.at(line.start, case).voltage_v
-    c_total = float(line.c_uf_per_km or 0) * 1e-6 * line.length_m / 1e3 * line.parallel
+    c_total = float(line.capacitance_uf_per_km or 0) * 1e-6 * line.length_m / 1e3 * line.side_by_side
     two_wire = subject.two_wire(line.start)
     if two_wire:
         c_total /= 2  # stated from one wire to the neutral plane
@@ -144,17 +145,17 @@ def _series_current(subject: Subject, line: Line, state: BranchState, case: int)
 
 def judge_loading(subject: Subject, live: bool, rated: bool) -> Callable[[dict[str, float]], Cells]:
     """Loading against its limit: margin and verdict; `not judged` where no rating is given."""
-    most = subject.drawing.limits.loading_percent
+    most = subject.drawing.limits.most_loaded_percent
 
     def judge(worst: dict[str, float]) -> Cells:
         if not live:
             return {"verdict": subject.unfed()}
         if not rated or "loading_max" not in worst:
             return {"verdict": text("no rating")}
-        margin = most - worst["loading_max"]
+        margin = float(margin_of(worst["loading_max"], most, False))
         return {
-            "margin": Cell(margin, "{most}-{loading_max}", {"most": limit("loading")}),
-            "verdict": Cell(FAIL if margin < 0 else HOLDS, 'IF({margin}<0,"FAIL","holds")'),
+            "margin": Cell(margin, "{most}-{loading_max}", {"most": limit("most_loaded")}),
+            "verdict": Cell(FAIL if margin < 0 else HOLDS, f'IF({{margin}}{PASSED},"FAIL","holds")'),
         }
 
     return judge

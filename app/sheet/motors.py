@@ -8,8 +8,9 @@ from app.model.kinds import Motor
 from app.sheet.attachments import AMPS, KVA, KVAR, KW, NODE, STATE, VOLTS, flow
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT
-from app.sheet.subject import FAIL, HOLDS, Subject, limit
+from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.study.findings import margin_of
 from app.study.outcome import AttachmentState
 from app.study.start_table import StartState
 
@@ -153,9 +154,9 @@ def _judge(subject: Subject, solved: bool) -> Callable[[dict[str, float]], Cells
             most = getattr(subject.drawing.limits, name)
             if most is None or key not in worst:
                 continue
-            broken |= worst[key] < most if low else worst[key] > most
+            broken |= bool(margin_of(worst[key], most, low) < 0)
             short = name.removesuffix("_percent")
-            tests.append(f"{{{key}}}{'<' if low else '>'}{{{short}}}")
+            tests.append(f"{{{key}}}-{{{short}}}{PASSED}" if low else f"{{{short}}}-{{{key}}}{PASSED}")
             refs[short] = limit(short)
         if not tests:
             return {"verdict": text("not judged" if worst else "no start")}

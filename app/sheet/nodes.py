@@ -4,8 +4,9 @@ import math
 from collections.abc import Callable
 
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
-from app.sheet.subject import FAIL, HOLDS, Subject, limit
+from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style
+from app.study.findings import margin_of
 from app.study.outcome import NodeState
 
 KEY = "busbars"
@@ -102,17 +103,20 @@ def _judge(subject: Subject, un: float, live: bool) -> Callable[[dict[str, float
             found["high_v"] = Cell(un * limits.high_percent / 100, "{un}*{high}/100", high)
         if not live:
             return found
-        margin = min(
-            worst["u_min"] / un * 100 - limits.low_percent, limits.high_percent - worst["u_max"] / un * 100
+        spares = (
+            margin_of(worst["u_min"] / un * 100, limits.low_percent, True),
+            margin_of(worst["u_max"] / un * 100, limits.high_percent, False),
         )
+        margin = float(min(spares))
         redo = "MIN({u_min}/{un}*100-{low},{high}-{u_max}/{un}*100)"
         found["margin"] = Cell(margin, redo, low | high)
         found["margin_v"] = Cell(margin * un / 100, "{margin}*{un}/100")
-        least, verdict = margin, 'IF({margin}<0,"FAIL","holds")'
+        least, verdict = margin, f'IF({{margin}}{PASSED},"FAIL","holds")'
         if limits.drop_percent is not None:
-            spare = limits.drop_percent - worst["drop_max"]
+            spare = float(margin_of(worst["drop_max"], limits.drop_percent, False))
             found["drop_margin"] = Cell(spare, "{most}-{drop_max}", {"most": limit("drop")})
-            least, verdict = min(margin, spare), 'IF(MIN({margin},{drop_margin})<0,"FAIL","holds")'
+            least = min(margin, spare)
+            verdict = f'IF(MIN({{margin}},{{drop_margin}}){PASSED},"FAIL","holds")'
         found["verdict"] = Cell(FAIL if least < 0 else HOLDS, verdict)
         return found
 

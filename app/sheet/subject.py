@@ -16,6 +16,7 @@ from app.sheet.table import (
     given,
     text,
 )
+from app.study.findings import NOISE
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Assumption, BranchState, Outcome
 from app.study.words import tell
@@ -23,6 +24,7 @@ from solver.status import Status
 
 FAIL = "FAIL"
 HOLDS = "holds"
+PASSED = f"<=-{NOISE:.0E}"  # what a formula says of a margin that fails
 CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=24))
 
 

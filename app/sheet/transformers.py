@@ -74,13 +74,13 @@ def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
 
 
 def _data(subject: Subject, id: str, t: Transformer) -> Cells:
-    percent = t.tap * t.tap_step_percent
+    percent = t.tap * t.notch_percent
     return (
         subject.identity(id)
         | subject.ends(id, t)
         | {
             "kva": subject.value(id, "rating_kva"),
-            "units": given(t.parallel),
+            "units": given(t.side_by_side),
             "v1": subject.value(id, "v1_v"),
             "v2": subject.value(id, "v2_v"),
             "group": given(t.vector_group),
@@ -90,7 +90,7 @@ def _data(subject: Subject, id: str, t: Transformer) -> Cells:
             "i0": subject.value(id, "no_load_current_percent"),
             "tapped": given(t.tapped),
             "notch": given(t.tap),
-            "tap_percent": Cell(percent, f"{{notch}}*{t.tap_step_percent!r}"),
+            "tap_percent": Cell(percent, f"{{notch}}*{t.notch_percent!r}"),
             "words": text(taps.words(t, t.tap, fed_winding(subject, id))),
         }
     )
@@ -114,7 +114,7 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         "i1": Cell(state.start_a),
         "i2": Cell(state.end_a),
         "s": Cell(math.hypot(s_kw, s_kvar), f"{root}*{{fed}}*{{{i_fed}}}/1000", fed_cell),
-        "loading": Cell(state.loading_percent, _loading(root)),
+        "loading": Cell(state.loaded_percent, _loading(root)),
         "u_out": Cell(
             subject.outcome.nodes.at(out, case).voltage_v,
             "{out}",
@@ -124,7 +124,7 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         "copper": Cell(state.copper_kw * 1e3, _copper(root, t, 3 - high)),
         "loss": Cell(state.loss_kw * 1e3, "{iron}+{copper}"),
         "excitation": Cell(fed_volts / rated * 100, f"{{fed}}/({tapped})*100", fed_cell),
-        "most": Cell(subject.drawing.limits.loading_percent),
+        "most": Cell(subject.drawing.limits.most_loaded_percent),
     }
 
 

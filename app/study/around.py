@@ -136,7 +136,7 @@ def times_rated(
 def _rating_va(layout: Layout, row: int) -> float:
     unit = layout.branches[row]
     assert isinstance(unit, Transformer)
-    return unit.rating_kva * 1e3 * unit.parallel
+    return unit.rating_kva * 1e3 * unit.side_by_side
 
 
 def _per_unit(drawing: Drawing, layout: Layout, zones: Zones, row: int) -> complex:

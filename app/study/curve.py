@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
+from app.study.changers import settled
 from app.study.findings import margin_of
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
@@ -17,7 +18,7 @@ from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.values import notch_values
 from app.study.zones import zones_of
-from solver import Network, Status, grow, solve
+from solver import Network, Status
 
 Real = NDArray[np.float64]
 BATCHED = ("source_voltage", "line_z", "line_y", "load_power", "load_reference", "shunt_y")
@@ -67,8 +68,7 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
     rows = rows_of(drawing, layout, zones)
     branch = layout.branch_row[transformer_id]
     rows = replace(rows, network=_spread(rows, branch, unit, notches, cases))
-    layout.forest = layout.forest or grow(rows.network)
-    solution = solve(rows.network, forest=layout.forest)
+    rows, solution, _ = settled(drawing, layout, zones, rows, fixed=branch)
     tables = tables_of(layout, zones, rows, solution, len(notches) * cases)
     solved = np.array([s is Status.SOLVED for s in solution.status])
     loss = np.where(solved, tables.balance.loss_kw, np.nan).reshape(len(notches), cases)
@@ -135,7 +135,7 @@ def _curve(
     some = percent is not None and percent.size > 0
     return TapCurve(
         notches=np.array(notches, dtype=np.intp),
-        percent=np.array(notches) * unit.tap_step_percent,
+        percent=np.array(notches) * unit.notch_percent,
         nameplate_v=np.array([taps.nameplate_v(unit, n) for n in notches]),
         loss_kw=loss,
         lowest_percent=percent.min(axis=(0, 2)) if some and percent is not None else nothing,

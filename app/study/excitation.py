@@ -29,7 +29,7 @@ def excitation_findings(
     drawing : the drawing, for names
     layout : its graph
     nodes : table, voltage_v (node, case) [V]
-    branches : table, loading_percent (branch, case) [%]
+    branches : table, loaded_percent (branch, case) [%]
     cases : names of the cases
 
     Returns : list of Finding, none where every transformer is within
@@ -39,17 +39,11 @@ def excitation_findings(
     if not rows:
         return []
     forward = branches.column("forward")
-    rated = []
-    for row in rows:
-        unit = layout.branches[row]
-        assert isinstance(unit, Transformer)
-        rated.append(taps.windings(unit, unit.tap))
+    rated = np.array([_rated(layout, row, branches) for row in rows])
     graph, level = arrays_of(layout), nodes.column("voltage_v")
-    first, second = (
-        level[at[rows]] / np.array(rated)[:, [n]] for n, at in enumerate((graph.start, graph.end))
-    )
+    first, second = (level[at[rows]] / rated[..., n] for n, at in enumerate((graph.start, graph.end)))
     driven = 100 * np.where(forward.reshape(len(forward), -1)[rows], first, second)
-    idle = branches.column("loading_percent")[rows] < IDLE
+    idle = branches.column("loaded_percent")[rows] < IDLE
     ids = tuple(branches.ids[row] for row in rows)
 
     def subject(row: int, case: int, value: str) -> str:
@@ -64,3 +58,10 @@ def excitation_findings(
         )
         found += [f for f in findings_of(check, WHOSE, cases, Verdict.NEAR) if f.verdict is Verdict.NEAR]
     return found
+
+
+def _rated(layout: Layout, row: int, branches: Table[BranchState]) -> list[tuple[float, float]]:
+    """Rated volts of both windings at the tap of each case."""
+    unit = layout.branches[row]
+    assert isinstance(unit, Transformer)
+    return [taps.windings(unit, notch) for notch in branches.column("notch")[row]]

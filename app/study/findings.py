@@ -54,7 +54,7 @@ def judge(
 
     drawing : the drawing, for its limits and names
     nodes : table, percent (node, case) [% of nominal], drop_percent (node, case) [%]
-    branches : table, loading_percent (branch, case) [% of rating]
+    branches : table, loaded_percent (branch, case) [% of rating]
     cases : names of the cases
 
     Returns : list of Finding with value, limit and signed margin [%]
@@ -71,7 +71,7 @@ def judge(
     found: list[Finding] = []
     for check in checks:
         found += findings_of(check, whose, cases)
-    return found + findings_of(_loading(drawing, branches, limits.loading_percent), LOADING, cases)
+    return found + findings_of(_loading(drawing, branches, limits.most_loaded_percent), LOADING, cases)
 
 
 def _voltage(drawing: Drawing, nodes: Table[NodeState], limit: float, low: bool) -> Check:
@@ -103,7 +103,7 @@ def _loading(drawing: Drawing, branches: Table[BranchState], limit: float) -> Ch
         return f"{tell(drawing, ids[row])} is loaded to {value} of its rating"
 
     near = limit * (1 - NEAR_SHARE)
-    value = branches.column("loading_percent")
+    value = branches.column("loaded_percent")
     return Check("loading", ids, value, limit, False, near, subject, "the most allowed is")
 
 
@@ -138,7 +138,7 @@ def findings_of(
     ]
 
 
-def margin_of(value: Real, limit: float, low: bool) -> Real:
+def margin_of(value: Real | float, limit: float, low: bool) -> Real:
     """Distance to a limit, value − limit where low, limit − value where not; a value on its limit has none.
 
     value : (...) float [%]
@@ -189,13 +189,13 @@ def checks_made(drawing: Drawing, nodes: Table[NodeState], branches: Table[Branc
 
     drawing : the drawing, for its limits
     nodes : table, percent (node, case) [% of nominal]
-    branches : table, loading_percent (branch, case) [% of rating]
+    branches : table, loaded_percent (branch, case) [% of rating]
 
     Returns : number of elements and checks, whatever the number of cases
     """
     levels = _known(nodes.column("percent"))
     drops = levels if drawing.limits.drop_percent is not None else 0
-    return 2 * levels + drops + _known(branches.column("loading_percent"))
+    return 2 * levels + drops + _known(branches.column("loaded_percent"))
 
 
 def _known(value: Real) -> int:

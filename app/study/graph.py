@@ -124,5 +124,7 @@ def is_bare(branch: Branch) -> bool:
     Returns : bool
     """
     if isinstance(branch, Line):
-        return branch.length_m == 0 or (branch.r20_ohm_per_km == 0 and branch.x_ohm_per_km == 0)
+        return branch.length_m == 0 or (
+            branch.resistance_ohm_per_km == 0 and branch.reactance_ohm_per_km == 0
+        )
     return isinstance(branch, Switch)

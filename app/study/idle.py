@@ -62,7 +62,7 @@ def _idle(network: Network) -> Network:
 
 
 def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int], apart: float) -> Finding:
-    share = idle.branches.column("loading_percent")[units]
+    share = idle.branches.column("loaded_percent")[units]
     at, case = np.unravel_index(share.argmax(), share.shape)
     unit, value = layout.branches[units[at]], float(share[at, case])
     assert isinstance(unit, Transformer)

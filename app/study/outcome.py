@@ -49,10 +49,11 @@ class BranchState:
     copper_kw: float  # series loss of line or winding
     iron_kw: float  # no-load loss of a transformer
     loss_kvar: float
-    loading_percent: float  # nan where no rating is given
+    loaded_percent: float  # nan where no rating is given
     drop_percent: float  # voltage lost along it, % of nominal of each end; negative is a rise
     resistance_ohm: float  # at operating temperature, parallel runs merged; transformer: seen at winding 2
     reactance_ohm: float
+    notch: float  # where the tap of a transformer or a regulator stands; nan for other branches
 
 
 @dataclass(frozen=True, slots=True)

@@ -7,7 +7,18 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import Attachment, Branch, Generator, Line, Load, Motor, Supply, Switch, Transformer
+from app.model.kinds import (
+    Attachment,
+    Branch,
+    Generator,
+    Line,
+    Load,
+    Motor,
+    Regulator,
+    Supply,
+    Switch,
+    Transformer,
+)
 from app.study.layout import NONE, Layout, arrays_of
 from app.study.memory import Columns, Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
@@ -145,12 +156,22 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "copper_kw": series.real,
         "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
         "loss_kvar": series.imag + shunt.imag,
-        "loading_percent": _loading(layout, rows, start_a, end_a),
+        "loaded_percent": _loading(layout, rows, start_a, end_a),
         "drop_percent": np.where(onward, 1.0, -1.0) * (percent[start] - percent[end]),
         "resistance_ohm": ohms.real,
         "reactance_ohm": ohms.imag,
+        "notch": _notches(layout, rows, cases),
     }
     return Table(BranchState, tuple(layout.branch_ids), columns, layout.branch_row)
+
+
+def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
+    """(branch, case) notch of every tap: as drawn, or where a changer came to rest."""
+    drawn = [b.tap if isinstance(b, Transformer) else math.nan for b in layout.branches]
+    found = np.repeat(np.array(drawn, dtype=np.float64)[:, None], cases, axis=1)
+    for row, notch in rows.notches.items():
+        found[row] = notch
+    return found
 
 
 def _through(onward: NDArray[np.bool_], start_s: Complex, end_s: Complex) -> Complex:
@@ -185,10 +206,11 @@ def _forward(layout: Layout, through: Complex) -> NDArray[np.bool_]:
 def _rating(branch: Branch) -> tuple[float, float, bool]:
     """Rated current at both ends, times √3 where it is a three-phase transformer, and whether it is one."""
     if isinstance(branch, Transformer):
-        rated = branch.rating_kva * 1e3 * branch.parallel
+        rated = branch.rating_kva * 1e3 * branch.side_by_side
         return rated / branch.v1_v, rated / branch.v2_v, True
-    rated = branch.rating_a if isinstance(branch, Line | Switch) and branch.rating_a is not None else math.nan
-    rated *= branch.parallel if isinstance(branch, Line) else 1
+    given = branch.rating_a if isinstance(branch, Line | Regulator | Switch) else None
+    rated = math.nan if given is None else given
+    rated *= branch.side_by_side if isinstance(branch, Line) else 1
     return rated, rated, False
 
 

@@ -2,14 +2,14 @@
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Switch
+from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Regulator, Switch
 from app.study.layout import Layout, arrays_of
 from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
 from app.study.zones import Zones
@@ -27,12 +27,13 @@ class Rows:
 
     network : Network with k = 1; volts and powers per phase in three-phase trees, whole in two-wire trees
     lines : (line,) branch rows of the layout; closed switches stand among them
-    units : (transformer,) branch rows
+    units : (transformer,) branch rows, transformers and then regulators
     sources : (source,) attachment rows
     loads : (load,) attachment rows of loads, motors and generators
     shunts : (shunt,) attachment rows of capacitors
     phases : (node,) float, 3 in three-phase trees, 1 in two-wire trees
     wide : (node,) float, line volts over the solver's volts: √3 or 1
+    notches : branch row of what steps by itself to (case,) int, once it has come to rest
     """
 
     network: Network
@@ -43,6 +44,7 @@ class Rows:
     shunts: Index
     phases: Real
     wide: Real
+    notches: dict[int, NDArray[np.intp]] = field(default_factory=dict)
 
 
 def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
@@ -67,7 +69,9 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     kinds, sources = _sort(layout), np.array(layout.supplies, dtype=np.intp)
     lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts
     line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]])
-    ratio, unit_z, unit_y = transformer_values(_of(layout.branches, units))
+    ratio, unit_z, unit_y = _with_regulators(
+        transformer_values(_of(layout.branches, np.array(layout.units, dtype=np.intp))), units
+    )
     held = held_values(_of(layout.attachments, sources), drawing.cases)
     hung = _of(layout.attachments, loads)
     power, reference, mix = load_values(hung, nominal[at[loads]], drawing.cases)
@@ -109,6 +113,22 @@ def _lines(
     return z, y
 
 
+def _with_regulators(
+    values: tuple[Complex, Complex, Complex], units: Index
+) -> tuple[Complex, Complex, Complex]:
+    """Transformers, and after them regulators: of ratio 1 and without impedance."""
+    ratio, z, y = values
+    more = len(units) - len(ratio)
+    if not more:
+        return values
+    none = np.zeros(more, dtype=np.complex128)
+    return (
+        np.append(ratio, none + 1),
+        np.append(z, none),
+        np.append(y, np.zeros((2, more), np.complex128), axis=1),
+    )
+
+
 def _of(elements: Sequence[Any], rows: Index) -> list[Any]:
     return [elements[i] for i in rows]
 
@@ -126,7 +146,10 @@ def _sort(layout: Layout) -> _Kinds:
     lines = [
         i for i, b in enumerate(layout.branches) if isinstance(b, Line) or isinstance(b, Switch) and b.closed
     ]
+    regulators = [i for i, b in enumerate(layout.branches) if isinstance(b, Regulator)]
     hung = layout.attachments
     loads = [i for i, a in enumerate(hung) if isinstance(a, Load | Generator | Motor)]
     shunts = [i for i, a in enumerate(hung) if isinstance(a, Capacitor) and a.connected]
-    return _Kinds(*(np.array(rows, dtype=np.intp) for rows in (lines, layout.units, loads, shunts)))
+    return _Kinds(
+        *(np.array(rows, dtype=np.intp) for rows in (lines, [*layout.units, *regulators], loads, shunts))
+    )

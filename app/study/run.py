@@ -4,6 +4,8 @@ from time import perf_counter
 
 from app.model.drawing import Drawing
 from app.study.assumptions import assumptions_of
+from app.study.changer_findings import hunting_findings, stop_findings
+from app.study.changers import Moved, settled
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
 from app.study.findings import judge
@@ -18,7 +20,7 @@ from app.study.start_table import StartTable
 from app.study.starts import start_table, starters
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
-from solver import Solution, Status, Trouble, grow, solve
+from solver import Solution, Status, Trouble
 
 
 def run(drawing: Drawing) -> Outcome:
@@ -42,13 +44,13 @@ def run(drawing: Drawing) -> Outcome:
     barred = not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found)
     rows: Rows | None = None
     solution: Solution | None = None
+    moved: Moved | None = None
     if not barred:
         rows = rows_of(drawing, layout, zones)
         seconds["rows"] = lap()
-        layout.forest = layout.forest or grow(rows.network)
-        solution = solve(rows.network, forest=layout.forest)
+        rows, solution, moved = settled(drawing, layout, zones, rows)
         seconds["solve"] = lap()
-    outcome = _outcome(drawing, layout, zones, found, rows, solution, seconds)
+    outcome = _outcome(drawing, layout, zones, found, rows, solution, moved, seconds)
     seconds["results"] = lap()
     seconds["total"] = clock[-1] - clock[0]
     return outcome
@@ -61,6 +63,7 @@ def _outcome(
     found: list[Finding],
     rows: Rows | None,
     solution: Solution | None,
+    moved: Moved | None,
     seconds: dict[str, float],
 ) -> Outcome:
     cases = tuple(case.name for case in drawing.cases)
@@ -74,10 +77,14 @@ def _outcome(
     if status is Status.SOLVED:
         found = found + judge(drawing, tables.nodes, tables.branches, cases)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
+        if moved is not None and rows is not None:
+            found += stop_findings(drawing, layout, rows, tables, moved)
         if layout.rings and rows is not None:
             found += idle_findings(drawing, layout, zones, rows, tables.attachments)
     elif rows is not None and solution is not None and isinstance(solution.forest, Trouble):
         found = [trouble_finding(layout, rows, solution.forest), *found]
+    elif moved is not None and (hunting := hunting_findings(drawing, layout, moved)):
+        found = hunting + found
     elif rows is not None and solution is not None:
         collapse = collapse_of(drawing, layout, rows, solution)
         found = [collapse.finding, *found]

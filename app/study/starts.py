@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Generator, Load, Motor, Supply
+from app.study.changers import settled
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.rows import Rows, rows_of
@@ -26,7 +27,8 @@ def starts(drawing: Drawing) -> StartTable:
 
     Before the start the supplies hold their volts, as in any case; then they hold the electromotive force
     that gave these volts behind their impedance U²/Sk. A motor that is off is not started, nor is any in a
-    case in which motors stand still.
+    case in which motors stand still. Changers stay where they stand with all motors running: a dip is over
+    before they step.
 
     drawing : the drawing
 
@@ -38,7 +40,8 @@ def starts(drawing: Drawing) -> StartTable:
     found = structure_findings(drawing, layout, zones)
     if not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found):
         return _table(layout, [], _nothing(0, len(drawing.cases)), [])
-    return start_table(drawing, layout, zones, rows_of(drawing, layout, zones))
+    rows, _, _ = settled(drawing, layout, zones, rows_of(drawing, layout, zones))
+    return start_table(drawing, layout, zones, rows)
 
 
 def starters(layout: Layout) -> list[int]:

@@ -29,9 +29,17 @@ def columns(rows: Sequence[Row], width: int) -> Real:
 
 
 def _line_row(run: Line) -> Row:
-    temperature, c = assumed.value(run, "temperature_degc"), assumed.value(run, "c_uf_per_km")
+    temperature, c = assumed.value(run, "temperature_degc"), assumed.value(run, "capacitance_uf_per_km")
     alpha = line.ALPHA[run.conductor]
-    return run.r20_ohm_per_km, run.x_ohm_per_km, run.length_m, temperature, alpha, run.parallel, c
+    return (
+        run.resistance_ohm_per_km,
+        run.reactance_ohm_per_km,
+        run.length_m,
+        temperature,
+        alpha,
+        run.side_by_side,
+        c,
+    )
 
 
 _lines: Columns[Line] = Columns(_line_row, 7)
@@ -60,15 +68,15 @@ def _plate_row(t: Transformer) -> Row:
     assert group is not None  # rows are made only of a layout whose groups were checked
     pk, p0 = assumed.value(t, "load_loss_w"), assumed.value(t, "no_load_loss_w")
     i0, first = assumed.value(t, "no_load_current_percent"), t.tapped == "winding 1"
-    rating, factor = t.rating_kva * 1e3, taps.factor(t, t.tap)
-    return rating, t.v1_v, t.v2_v, t.uk_percent, pk, p0, i0, group[2], first, t.parallel, factor
+    rating, factor = t.rating_kva * 1e3, taps.factor(t, t.tap if t.regulates == "no" else 0)
+    return rating, t.v1_v, t.v2_v, t.uk_percent, pk, p0, i0, group[2], first, t.side_by_side, factor
 
 
 _plates: Columns[Transformer] = Columns(_plate_row, 11)
 
 
 def transformer_values(units: Sequence[Transformer]) -> tuple[Complex, Complex, Complex]:
-    """Transformers at their taps, parallel units merged.
+    """Transformers at their taps, parallel units merged; at their nameplate where they step by themselves.
 
     units : (transformer,)
 

@@ -44,7 +44,7 @@ def estate(branches: int) -> Drawing:
         y = 8.0 * arm - 4.0 * branches / ARM
         elements[f"J{number}"] = Joint(x=28.0 + 12.0 * place, y=y)
         elements[f"C{number}"] = Cable(
-            start=start, end=f"J{number}", length_m=12.0, parallel=4, rating_a=265.0
+            start=start, end=f"J{number}", length_m=12.0, side_by_side=4, rating_a=265.0
         )
         if place % 2:
             elements[f"L{number}"] = Load(node=f"J{number}", demand_kva=4.0)

@@ -96,7 +96,7 @@ def figures(
     branch["start_kw"] = made.uniform(50, 90, shape)
     branch["end_kw"] = branch["start_kw"] - branch["loss_kw"]
     branch["through_kw"] = branch["start_kw"]
-    branch["loading_percent"] = made.uniform(5, 95, shape)
+    branch["loaded_percent"] = made.uniform(5, 95, shape)
     shape = (len(attachments), len(cases))
     attachment = {n: made.uniform(1, 9, shape) for n in AttachmentState.__dataclass_fields__}
     attachment["live"] = np.ones(shape, bool)

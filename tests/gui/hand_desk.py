@@ -40,7 +40,7 @@ def pair() -> Drawing:
                 tapped="winding 2",
             ),
             "J2": Joint(x=24.0),
-            "C1": Cable(start="J1", end="J2", length_m=1150.0, r20_ohm_per_km=0.868),
+            "C1": Cable(start="J1", end="J2", length_m=1150.0, resistance_ohm_per_km=0.868),
             "B2": Busbar(name="HS", x=36.0),
             "T2": Transformer(start="J2", end="B2"),
             "L1": Load(name="House", node="B2", demand_kva=80.0, dx=4.0, dy=0.0),

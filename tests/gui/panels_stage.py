@@ -24,7 +24,7 @@ TWO = (
     Case(name="Full load, low intake", supply_percent=97.0),
     Case(name="Quiet night, high intake", supply_percent=106.0, load_percent=6.0),
 )
-HV = {"r20_ohm_per_km": 0.868, "x_ohm_per_km": 0.126, "c_uf_per_km": 0.19}
+HV = {"resistance_ohm_per_km": 0.868, "reactance_ohm_per_km": 0.126, "capacitance_uf_per_km": 0.19}
 
 
 def fernhollow(cases: tuple[Case, ...] = TWO, **changed) -> Drawing:

@@ -102,7 +102,7 @@ def test_tags_and_nodes_write_the_outcome(bench):
     one = bench(FERNHOLLOW)
     state = one.solving.outcome.branches.at("C1", 0)
     first, second = one.board.tags["C1"].text.splitlines()
-    assert first == f"{state.start_kw:.1f} kW → {state.loading_percent:.1f} %"
+    assert first == f"{state.start_kw:.1f} kW → {state.loaded_percent:.1f} %"
     assert second == f"{state.loss_kw:.2f} kW lost"
     node = one.solving.outcome.nodes.at("HS", 0)
     assert one.board.tags["HS"].text == f"{node.voltage_v:.1f} V\n{node.percent:.1f} %"
@@ -224,7 +224,7 @@ def test_several_cases_are_judged_one_by_one(bench):
 def test_breadth_grows_with_loading(bench):
     one = bench(FERNHOLLOW)
     branches = one.solving.outcome.branches
-    by_loading = sorted(branches.ids, key=lambda id: branches.at(id, 0).loading_percent)
+    by_loading = sorted(branches.ids, key=lambda id: branches.at(id, 0).loaded_percent)
     widths = [one.board.item_of(id).flow.width for id in by_loading]
     assert widths == sorted(widths)
     assert widths[0] < widths[-1]

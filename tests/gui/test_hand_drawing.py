@@ -155,11 +155,11 @@ def test_a_pull_let_go_on_a_node_connects_it_and_onto_a_line_parts_it(desk):
 def test_the_next_branch_keeps_the_last_ones_data_but_not_its_length(desk):
     desk.hover(24, 0)
     desk.drag((24, 1.3), (24, 8))
-    desk.session.edit("Type", lambda d: _with(d, "C2", r20_ohm_per_km=0.32, length_m=77.0, name="Run"))
+    desk.session.edit("Type", lambda d: _with(d, "C2", resistance_ohm_per_km=0.32, length_m=77.0, name="Run"))
     desk.hover(24, 8)
     desk.drag((24, 9.3), (24, 16))
     fresh = desk.drawing.elements["C3"]
-    assert (fresh.r20_ohm_per_km, fresh.length_m, fresh.name) == (0.32, 100.0, "")
+    assert (fresh.resistance_ohm_per_km, fresh.length_m, fresh.name) == (0.32, 100.0, "")
 
 
 def _with(drawing, id, **fields):

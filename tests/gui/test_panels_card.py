@@ -201,7 +201,7 @@ def test_results_of_a_transformer(set_up):
     page(set_up, "T2")
     state = set_up.solving.outcome.branches.at("T2")
     cells = {row.label: row.cells for row in set_up.card.now.rows}
-    assert cells["Loading"] == (f"{state.loading_percent:.1f} %",)
+    assert cells["Loading"] == (f"{state.loaded_percent:.1f} %",)
     assert cells["Copper loss"] == (f"{state.copper_kw:.2f} kW",)
     node = set_up.solving.outcome.nodes.at("B2")
     assert cells["LV volts"] == (f"{node.voltage_v:.1f} V",)

@@ -34,7 +34,7 @@ def test_svg_holds_the_figures_as_text(qapp, tmp_path):
     picture(TITLED, outcome, tmp_path / "a.svg")
     found = texts(tmp_path / "a.svg")
     state, node = outcome.branches.at("C1", 0), outcome.nodes.at("HS", 0)
-    assert f"{state.start_kw:.1f} kW → {state.loading_percent:.1f} %" in found
+    assert f"{state.start_kw:.1f} kW → {state.loaded_percent:.1f} %" in found
     assert f"{state.loss_kw:.2f} kW lost" in found
     assert f"{node.voltage_v:.1f} V" in found
     assert "tap −2.5 %" in found

@@ -13,6 +13,7 @@ from app.model.kinds import (
     KINDS,
     Cable,
     Capacitor,
+    Generator,
     Load,
     Motor,
     Node,
@@ -69,14 +70,14 @@ def test_assumed_figures_never_contradict_each_other():
 
 def test_blanks_are_listed_with_value_unit_and_basis():
     listed = {b.field: b for b in assumed.blank(Cable(start="", end=""))}
-    assert set(listed) == {"c_uf_per_km", "temperature_degc"}
-    assert listed["c_uf_per_km"].value == 0.0
-    assert listed["c_uf_per_km"].basis == "neglected"
+    assert set(listed) == {"capacitance_uf_per_km", "temperature_degc"}
+    assert listed["capacitance_uf_per_km"].value == 0.0
+    assert listed["capacitance_uf_per_km"].basis == "neglected"
     assert (listed["temperature_degc"].value, listed["temperature_degc"].unit) == (60.0, "°C")
     assert "no source" in listed["temperature_degc"].basis
     assert assumed.value(OverheadLine(start="", end=""), "temperature_degc") == 50.0
     assert len(assumed.blank(T)) == 3
-    given = Cable(start="", end="", c_uf_per_km=0.1, temperature_degc=20.0)
+    given = Cable(start="", end="", capacitance_uf_per_km=0.1, temperature_degc=20.0)
     assert assumed.blank(given) == ()
 
 
@@ -112,6 +113,15 @@ def test_what_a_changer_holds_is_assumed_only_where_it_steps():
     assert regulator == {"hold_percent": 100.0, "bandwidth_percent": pytest.approx(5 / 3)}
 
 
+def test_reactive_limits_are_assumed_only_where_a_generator_holds_volts():
+    assert assumed.blank(Generator(node="")) == ()
+    limits = {b.field: b.value for b in assumed.blank(Generator(node="", output_kw=90.0, hold_percent=101.0))}
+    assert limits == {
+        "q_min_kvar": pytest.approx(-43.589, abs=1e-3),
+        "q_max_kvar": pytest.approx(43.589, abs=1e-3),
+    }
+
+
 def test_the_ratio_of_a_supply_is_assumed_only_where_its_fault_level_is_stated():
     assert assumed.blank(Supply(node="")) == ()
     assert [b.field for b in assumed.blank(Supply(node="", fault_level_min_mva=35.0))] == ["xr"]
@@ -129,11 +139,18 @@ def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
         "demand_kw",
     }
     no_stand_in |= {"trip_a", "earth_1_ohm", "earth_2_ohm"}
-    only_for_faults = {"fault_level_max_mva", "return_r20_ohm_per_km", "r0_ohm_per_km", "x0_ohm_per_km"}
+    only_for_faults = {
+        "fault_level_max_mva",
+        "return_resistance_ohm_per_km",
+        "zero_resistance_ohm_per_km",
+        "zero_reactance_ohm_per_km",
+    }
     no_stand_in |= only_for_faults | {"fault_degc", "z0_ratio"}  # see fault_data
     for kind in KINDS.values():
         for field in fields_of(kind).values():
             if field.optional and field.type is float and not (issubclass(kind, Node)):
+                if (kind, field.name) == (Generator, "hold_percent"):
+                    continue
                 assert (field.name in assumed.assumable(kind)) != (field.name in no_stand_in), field.name
 
 

@@ -46,7 +46,7 @@ def refusal(edit, *args, **fields) -> str:
         ),
         (
             "C1",
-            {"parallel": 1.5},
+            {"side_by_side": 1.5},
             "Lane, C1 (cable): In parallel is 1.5 runs, "
             "allowed is a whole number, at least 1 and at most 50 runs.",
         ),
@@ -94,7 +94,7 @@ def refusal(edit, *args, **fields) -> str:
         ),
         (
             "T2",
-            {"taps_down": 40, "tap_step_percent": 2.5},
+            {"taps_down": 40, "notch_percent": 2.5},
             "T2 (transformer): Taps below reach down 100 %, allowed is less than 100 %.",
         ),
         ("C1", {"start": "J4"}, 'Lane, C1 (cable): Start and End are both "J4", allowed is two nodes.'),

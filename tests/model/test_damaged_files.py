@@ -112,10 +112,10 @@ SVG = {"svg": "<svg/>", "width": 10, "height": 10}
         (with_elements(J1, J2, {**C1, "length_m": "3"}), 'C1 (cable): Length is "3", allowed is a number'),
         (with_elements(J1, J2, {**C1, "length_m": None}), "C1 (cable): Length is blank, allowed is"),
         (
-            with_elements(J1, J2, {**C1, "parallel": 1.5}),
+            with_elements(J1, J2, {**C1, "side_by_side": 1.5}),
             "In parallel is 1.5 runs, allowed is a whole number",
         ),
-        (with_elements(J1, J2, {**C1, "parallel": True}), "In parallel is yes"),
+        (with_elements(J1, J2, {**C1, "side_by_side": True}), "In parallel is yes"),
         (with_elements(J1, J2, {**C1, "conductor": "Ag"}), 'Conductor is "Ag", allowed is one of Al, Cu'),
         (with_elements(J1, J2, {**C1, "via": [[1, 2], [3]]}), "C1 (cable): via is [[1, 2], [3]], allowed"),
         (with_elements(J1, J2, {**C1, "via": [[1, 1e9]]}), "C1 (cable): via is "),

@@ -39,14 +39,14 @@ def test_numbers_survive_to_the_last_bit(x, y, length, r, via):
         elements={
             "J1": Joint(x=x, y=y),
             "J2": Joint(),
-            "C1": Cable(start="J1", end="J2", length_m=length, r20_ohm_per_km=r, via=tuple(via)),
+            "C1": Cable(start="J1", end="J2", length_m=length, resistance_ohm_per_km=r, via=tuple(via)),
         }
     )
     back = decode(encode(drawing)).elements
     assert bits(back["J1"].x) == bits(x)
     assert bits(back["J1"].y) == bits(y)
     assert bits(back["C1"].length_m) == bits(length)
-    assert bits(back["C1"].r20_ohm_per_km) == bits(r)
+    assert bits(back["C1"].resistance_ohm_per_km) == bits(r)
     assert [bits(c) for p in back["C1"].via for c in p] == [bits(c) for p in via for c in p]
     assert all(isinstance(c, float) for p in back["C1"].via for c in p)
 
@@ -250,7 +250,7 @@ def test_everything_a_drawing_holds_is_in_the_file():
     drawing = Drawing(
         project=Project(title="Yard", number="7", revision="B", status="as built", note="n"),
         frequency_hz=60.0,
-        limits=Limits(name="EN 50160", low_percent=90.0, drop_percent=8.0, loading_percent=95.5),
+        limits=Limits(name="EN 50160", low_percent=90.0, drop_percent=8.0, most_loaded_percent=95.5),
         cases=(Case(name="Peak"), Case(name="Night", supply_percent=105.25, load_percent=10.0)),
         elements={
             "J1": Joint(nominal_v=400.0),

@@ -39,24 +39,31 @@ def test_the_least_is_not_above_the_highest():
 
 
 def test_the_return_conductor_sets_the_zero_sequence():
-    cable = Cable(start="", end="", r20_ohm_per_km=0.32, return_r20_ohm_per_km=0.64)
-    assert fault_data.fault_value(cable, "r0_ohm_per_km", 400.0) == Put(
+    cable = Cable(start="", end="", resistance_ohm_per_km=0.32, return_resistance_ohm_per_km=0.64)
+    assert fault_data.fault_value(cable, "zero_resistance_ohm_per_km", 400.0) == Put(
         pytest.approx(0.32 + 3 * 0.64), "R1 + 3·R of its return conductor"
     )
-    alike = Cable(start="", end="", r20_ohm_per_km=0.32, x_ohm_per_km=0.07)
-    for field, one in (("r0_ohm_per_km", 0.32), ("x0_ohm_per_km", 0.07)):
+    alike = Cable(start="", end="", resistance_ohm_per_km=0.32, reactance_ohm_per_km=0.07)
+    for field, one in (("zero_resistance_ohm_per_km", 0.32), ("zero_reactance_ohm_per_km", 0.07)):
         put = fault_data.fault_value(alike, field, 400.0)
         assert put.value == pytest.approx(4 * one)
         assert "no source" in put.basis
-    assert fault_data.fault_value(Cable(start="", end="", r0_ohm_per_km=1.5), "r0_ohm_per_km", 400.0) == 1.5
+    assert (
+        fault_data.fault_value(
+            Cable(start="", end="", zero_resistance_ohm_per_km=1.5), "zero_resistance_ohm_per_km", 400.0
+        )
+        == 1.5
+    )
 
 
 def test_a_bare_line_at_medium_voltage_comes_back_through_earth():
-    line = OverheadLine(start="", end="", r20_ohm_per_km=0.6)
-    at_50, at_60 = (fault_data.fault_value(line, "r0_ohm_per_km", 11000.0, f).value for f in (50.0, 60.0))
+    line = OverheadLine(start="", end="", resistance_ohm_per_km=0.6)
+    at_50, at_60 = (
+        fault_data.fault_value(line, "zero_resistance_ohm_per_km", 11000.0, f).value for f in (50.0, 60.0)
+    )
     assert at_50 == pytest.approx(0.6 + 0.1479, abs=1e-4)
     assert at_60 - 0.6 == pytest.approx(1.2 * (at_50 - 0.6))
-    assert fault_data.fault_value(line, "r0_ohm_per_km", 400.0).value == pytest.approx(2.4)
+    assert fault_data.fault_value(line, "zero_resistance_ohm_per_km", 400.0).value == pytest.approx(2.4)
 
 
 def test_star_points_follow_the_vector_group_unless_an_earthing_is_stated():

@@ -34,8 +34,8 @@ def pair(*cases: Case) -> Drawing:
         ),
         "J1": Joint(),
         "C1": Cable(
-            start="J1", end="J2", type="3×35 Al 11 kV", length_m=1150.0, r20_ohm_per_km=0.868,
-            x_ohm_per_km=0.126, c_uf_per_km=0.19, temperature_degc=60.0, rating_a=120.0, area_mm2=35.0,
+            start="J1", end="J2", type="3×35 Al 11 kV", length_m=1150.0, resistance_ohm_per_km=0.868,
+            reactance_ohm_per_km=0.126, capacitance_uf_per_km=0.19, temperature_degc=60.0, rating_a=120.0, area_mm2=35.0,
         ),
         "J2": Joint(),
         "T2": Transformer(
@@ -49,11 +49,11 @@ def pair(*cases: Case) -> Drawing:
             constant_current_percent=30.0, constant_impedance_percent=20.0, reference_v=415.0,
         ),
         "C2": Cable(
-            name=HOSTILE, start="B3", end="B2", type="4×95 Al", length_m=320.0, r20_ohm_per_km=0.32,
-            rating_a=195.0, area_mm2=95.0, parallel=2,
+            name=HOSTILE, start="B3", end="B2", type="4×95 Al", length_m=320.0, resistance_ohm_per_km=0.32,
+            rating_a=195.0, area_mm2=95.0, side_by_side=2,
         ),
         "B3": Busbar(name="Barn"),
-        "O1": OverheadLine(start="B3", end="J3", conductor="Cu", length_m=80.0, r20_ohm_per_km=0.727),
+        "O1": OverheadLine(start="B3", end="J3", conductor="Cu", length_m=80.0, resistance_ohm_per_km=0.727),
         "J3": Joint(),
         "G1": Generator(name="PV roof", node="B3", output_kw=5.0, output_kvar=-1.0),
         "K1": Capacitor(node="B3", rating_kvar=5.0),
@@ -79,7 +79,13 @@ def pair(*cases: Case) -> Drawing:
 
 def three_cables() -> Drawing:
     """Three cables in parallel: the House misses 216.2 V between phase and neutral by hundredths."""
-    run = {"rating_a": 265.0, "parallel": 3, "temperature_degc": 60.0, "area_mm2": 240.0, "type": "4×240 Al"}
+    run = {
+        "rating_a": 265.0,
+        "side_by_side": 3,
+        "temperature_degc": 60.0,
+        "area_mm2": 240.0,
+        "type": "4×240 Al",
+    }
     elements = {
         "B1": Busbar(name="GH"),
         "S1": Supply(node="B1", nominal_v=400.0, held_percent=97.0),
@@ -99,8 +105,8 @@ def two_wire() -> Drawing:
         "B1": Busbar(name="Panel"),
         "S1": Supply(node="B1", nominal_v=240.0, wires="two-wire"),
         "C1": Cable(
-            start="B1", end="B2", type="2×16 Cu", conductor="Cu", length_m=60.0, r20_ohm_per_km=1.15,
-            c_uf_per_km=2.0, rating_a=60.0,
+            start="B1", end="B2", type="2×16 Cu", conductor="Cu", length_m=60.0, resistance_ohm_per_km=1.15,
+            capacitance_uf_per_km=2.0, rating_a=60.0,
         ),
         "B2": Busbar(name="Shed"),
         "L1": Load(node="B2", demand_kva=4.0, constant_current_percent=50.0),
@@ -127,13 +133,13 @@ def meshed(*cases: Case) -> Drawing:
         ),
         "B2": Busbar(name="West board"),
         "B3": Busbar(name="East board"),
-        "C1": Cable(start="B2", end="B3", length_m=60.0, r20_ohm_per_km=0.125, rating_a=330.0),
-        "C2": Cable(start="B2", end="B4", length_m=110.0, r20_ohm_per_km=0.32, rating_a=195.0),
-        "C3": Cable(start="B3", end="B4", length_m=80.0, r20_ohm_per_km=0.32, rating_a=195.0),
+        "C1": Cable(start="B2", end="B3", length_m=60.0, resistance_ohm_per_km=0.125, rating_a=330.0),
+        "C2": Cable(start="B2", end="B4", length_m=110.0, resistance_ohm_per_km=0.32, rating_a=195.0),
+        "C3": Cable(start="B3", end="B4", length_m=80.0, resistance_ohm_per_km=0.32, rating_a=195.0),
         "B4": Busbar(name="Far board"),
         "L1": Load(name="Far", node="B4", demand_kva=90.0),
         "L2": Load(name="East", node="B3", demand_kva=60.0, constant_current_percent=100.0),
-        "C4": Cable(start="B5", end="B1", length_m=2500.0, r20_ohm_per_km=0.32, c_uf_per_km=0.31),
+        "C4": Cable(start="B5", end="B1", length_m=2500.0, resistance_ohm_per_km=0.32, capacitance_uf_per_km=0.31),
         "B5": Busbar(name="Other intake"),
         "S2": Supply(node="B5", nominal_v=11000.0, held_percent=98.9),
     }  # fmt: skip

@@ -9,7 +9,7 @@ import openpyxl
 import pytest
 from sheet_layouts import HOSTILE, NIGHT, PEAK, blocked, overloaded, pair, three_cables, two_wire
 
-from app.model.drawing import Drawing, Project
+from app.model.drawing import Drawing, Limits, Project
 from app.model.kinds import Busbar, Load, Supply
 from app.sheet import write
 from app.study import run
@@ -57,7 +57,7 @@ def test_figures_are_the_outcome_unrounded(workbook: Reader) -> None:
     assert cell(book["Busbars"], "B2", "U V").value == node.voltage_v
     assert cell(book["Busbars"], "B2", "U % of Un").value == node.percent
     assert cell(book["Cables"], "C2", "Loss W").value == line.loss_kw * 1e3
-    assert cell(book["Cables"], "C2", "Loading %").value == line.loading_percent
+    assert cell(book["Cables"], "C2", "Loading %").value == line.loaded_percent
     assert cell(book["Cables"], "C2", "ΔU %").value == pytest.approx(line.drop_percent, rel=1e-9)
     assert cell(book["Transformers"], "T2", "Copper W").value == unit.copper_kw * 1e3
     assert cell(book["Balance"], "Full load, low intake", "Supplies kW").value == outcome.balance.supply_kw[0]
@@ -87,6 +87,15 @@ def test_a_fail_never_prints_as_a_pass(workbook: Reader) -> None:
     assert -0.01 < margin.value < 0
     assert round(margin.value, margin.number_format.count("0") - 2) != 0
     assert cell(book["Busbars"], "B3", "Verdict").value == "FAIL"
+
+
+@pytest.mark.parametrize(("beyond", "verdict"), [(1e-12, "holds"), (1e-6, "FAIL")])
+def test_a_trace_of_the_arithmetic_is_no_fail(workbook: Reader, beyond: float, verdict: str) -> None:
+    base = three_cables()
+    lowest = run(base).nodes.at("B3").percent
+    drawing = msgspec.structs.replace(base, limits=Limits(low_percent=lowest + beyond))
+    assert cell(workbook(drawing)["Busbars"], "B3", "Verdict").value == verdict
+    assert "<=-1E-09" in cell(workbook(drawing, figures=False)["Busbars"], "B3", "Verdict").value
 
 
 def test_rounding_is_by_number_format(workbook: Reader) -> None:

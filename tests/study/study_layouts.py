@@ -49,7 +49,7 @@ def town(seed=7, nodes=24, cases=None):
                 start=ends[0], end=ends[1], v1_v=v1, v2_v=v2, rating_kva=float(rng.choice([50, 160, 315])),
                 vector_group=str(rng.choice(["Dyn11", "Dyn1", "YNyn0", "Yzn5"])),
                 tapped=str(rng.choice(["winding 1", "winding 2"])), tap=int(rng.integers(-2, 3)),
-                parallel=int(rng.integers(1, 3)),
+                side_by_side=int(rng.integers(1, 3)),
             )  # fmt: skip
         elif kind == 1:
             level[here] = level[up]
@@ -59,8 +59,8 @@ def town(seed=7, nodes=24, cases=None):
             ends = (up, here) if rng.integers(0, 2) else (here, up)
             elements[f"C{i}"] = Cable(
                 start=ends[0], end=ends[1],
-                length_m=float(rng.uniform(20, 150)), parallel=int(rng.integers(1, 3)),
-                c_uf_per_km=0.3 if level[here] > 1000 else None, rating_a=300.0,
+                length_m=float(rng.uniform(20, 150)), side_by_side=int(rng.integers(1, 3)),
+                capacitance_uf_per_km=0.3 if level[here] > 1000 else None, rating_a=300.0,
                 conductor=str(rng.choice(["Al", "Cu"])),
             )  # fmt: skip
         mix = rng.dirichlet([1, 1, 1]) * 100
@@ -86,7 +86,9 @@ def meshed_town(seed=7, closings=3, **options):
         a, b = (nodes.at(i) for i in pair)
         if a.nominal_v == b.nominal_v and abs(a.angle_deg - b.angle_deg) < 8:
             charged = 0.3 if a.nominal_v > 1000 else None
-            more[f"R{len(more)}"] = line(*pair, length_m=float(rng.uniform(50, 400)), c_uf_per_km=charged)
+            more[f"R{len(more)}"] = line(
+                *pair, length_m=float(rng.uniform(50, 400)), capacitance_uf_per_km=charged
+            )
     units = [e for e in base.elements.values() if isinstance(e, Transformer)]
     if units:
         more["T99"] = msgspec.structs.replace(units[0], tap=units[0].tap + (-1 if units[0].tap > 0 else 1))

@@ -81,14 +81,14 @@ class Nodal:
 
     def _line(self, e):
         km, out_and_back = e.length_m / 1000, 2 if self.wires[e.start] == "two-wire" else 1
-        r = e.r20_ohm_per_km * (1 + ALPHA[e.conductor] * (assumed.value(e, "temperature_degc") - 20))
-        y = e.parallel / (complex(r, e.x_ohm_per_km) * km * out_and_back)
-        c = assumed.value(e, "c_uf_per_km") * 1e-6 * km * e.parallel / out_and_back
+        r = e.resistance_ohm_per_km * (1 + ALPHA[e.conductor] * (assumed.value(e, "temperature_degc") - 20))
+        y = e.side_by_side / (complex(r, e.reactance_ohm_per_km) * km * out_and_back)
+        c = assumed.value(e, "capacitance_uf_per_km") * 1e-6 * km * e.side_by_side / out_and_back
         half = 1j * math.pi * self.drawing.frequency_hz * c
         return np.array([[y + half, -y], [-y, y + half]])
 
     def _transformer(self, i, e):
-        tap = 1 + e.tap * e.tap_step_percent / 100
+        tap = 1 + e.tap * e.notch_percent / 100
         v1 = e.v1_v * (tap if e.tapped == "winding 1" else 1)
         v2 = e.v2_v * (tap if e.tapped == "winding 2" else 1)
         clock = int("".join(c for c in e.vector_group if c.isdigit()))
@@ -96,9 +96,9 @@ class Nodal:
         s, pk = e.rating_kva * 1e3, assumed.value(e, "load_loss_w")
         size = e.uk_percent / 100 * v2**2 / s
         r = pk * v2**2 / s**2
-        y = e.parallel / complex(r, math.sqrt(size**2 - r**2))
+        y = e.side_by_side / complex(r, math.sqrt(size**2 - r**2))
         p0, i0 = assumed.value(e, "no_load_loss_w"), assumed.value(e, "no_load_current_percent")
-        quiet = e.parallel * complex(p0, -math.sqrt((i0 / 100 * s) ** 2 - p0**2))
+        quiet = e.side_by_side * complex(p0, -math.sqrt((i0 / 100 * s) ** 2 - p0**2))
         stamp = np.array([[y / abs(a) ** 2, -y / a.conjugate()], [-y / a, y]])
         if e.v1_v >= e.v2_v:
             stamp[0, 0] += quiet / v1**2

@@ -58,8 +58,8 @@ def anything(seed):
 
 def _line(dice, ends):
     return dice.choice([Cable, OverheadLine])(
-        **ends, length_m=dice.choice([0.0, 50.0, 1e6]), r20_ohm_per_km=dice.choice([0.0, 0.3]),
-        c_uf_per_km=dice.choice([None, 0.3, 100.0]), rating_a=dice.choice([None, 1e-3, 200.0]),
+        **ends, length_m=dice.choice([0.0, 50.0, 1e6]), resistance_ohm_per_km=dice.choice([0.0, 0.3]),
+        capacitance_uf_per_km=dice.choice([None, 0.3, 100.0]), rating_a=dice.choice([None, 1e-3, 200.0]),
     )  # fmt: skip
 
 

@@ -148,7 +148,7 @@ def test_notches_beyond_collapse_are_blank_and_the_others_stand():
     base = changed(
         two_nodes(), B3=Busbar(nominal_v=400.0), L1=None, L2=Load(node="B3", demand_kva=300.0),
         T1=Transformer(
-            start="B2", end="B3", v1_v=400.0, v2_v=400.0, rating_kva=400.0, tap_step_percent=10.0, taps_up=4
+            start="B2", end="B3", v1_v=400.0, v2_v=400.0, rating_kva=400.0, notch_percent=10.0, taps_up=4
         ),
     )  # fmt: skip
     curve = tap_curve(base, "T1")

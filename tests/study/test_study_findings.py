@@ -110,8 +110,8 @@ def test_drop_is_judged_only_where_a_limit_is_set():
 
 @pytest.mark.parametrize(("share", "verdict"), [(1.01, "FAILS"), (0.95, "NEAR"), (0.89, "HOLDS")])
 def test_line_loading_counts_all_parallel_runs(share, verdict):
-    amps = run(changed(two_nodes(), C1=line("B1", "B2", parallel=2))).branches.at("C1").current_a
-    rated = changed(two_nodes(), C1=line("B1", "B2", parallel=2, rating_a=amps / 2 / share))
+    amps = run(changed(two_nodes(), C1=line("B1", "B2", side_by_side=2))).branches.at("C1").current_a
+    rated = changed(two_nodes(), C1=line("B1", "B2", side_by_side=2, rating_a=amps / 2 / share))
     (finding,) = of(run(rated), "loading")
     assert finding.verdict is Verdict[verdict]
     assert finding.value == pytest.approx(100 * share)
@@ -139,9 +139,9 @@ def test_transformer_loading_is_the_larger_of_both_windings_over_their_rated_cur
     state = run(transformer()).branches.at("T1")
     first = state.start_a / (100e3 / 3**0.5 / 11000)
     second = state.end_a / (100e3 / 3**0.5 / 400)
-    assert state.loading_percent == pytest.approx(100 * max(first, second), rel=1e-12)
-    assert run(transformer(parallel=2)).branches.at("T1").loading_percent == pytest.approx(
-        state.loading_percent / 2, rel=0.05
+    assert state.loaded_percent == pytest.approx(100 * max(first, second), rel=1e-12)
+    assert run(transformer(side_by_side=2)).branches.at("T1").loaded_percent == pytest.approx(
+        state.loaded_percent / 2, rel=0.05
     )
 
 

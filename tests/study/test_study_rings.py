@@ -220,7 +220,7 @@ def test_what_circulates_flows_in_a_layout_that_has_nothing_else_to_carry():
         base, T2=msgspec.structs.replace(base.elements["T2"], no_load_loss_w=0.0, no_load_current_percent=0.0)
     )
     outcome, finding = run(base), told(base, "circulating current")
-    assert outcome.branches.at("T1").loading_percent == pytest.approx(finding.value, rel=1e-9)
+    assert outcome.branches.at("T1").loaded_percent == pytest.approx(finding.value, rel=1e-9)
     assert (outcome.branches.at("T1").end_a, outcome.branches.at("T1").forward) == (
         pytest.approx(outcome.branches.at("T2").end_a),
         True,
@@ -279,7 +279,7 @@ def test_a_meshed_town_equals_an_independent_nodal_solution(seed):
 
 def test_two_branches_side_by_side_equal_one_of_two_in_parallel():
     two = run(changed(two_nodes(), C1=line("B1", "B2", rating_a=100.0), C2=line("B2", "B1", rating_a=100.0)))
-    one = run(changed(two_nodes(), C1=line("B1", "B2", rating_a=100.0, parallel=2)))
+    one = run(changed(two_nodes(), C1=line("B1", "B2", rating_a=100.0, side_by_side=2)))
     assert two.nodes.at("B2").voltage_v == pytest.approx(one.nodes.at("B2").voltage_v, rel=1e-12)
     assert two.balance.loss_kw[0] == pytest.approx(one.balance.loss_kw[0], rel=1e-9)
     single = one.branches.at("C1")
@@ -288,13 +288,13 @@ def test_two_branches_side_by_side_equal_one_of_two_in_parallel():
         assert state.start_kw * way > 0
         assert state.forward is (way > 0)
         assert state.current_a == pytest.approx(single.current_a / 2, rel=1e-9)
-        assert state.loading_percent == pytest.approx(single.loading_percent, rel=1e-9)
+        assert state.loaded_percent == pytest.approx(single.loaded_percent, rel=1e-9)
         assert state.drop_percent == pytest.approx(single.drop_percent, rel=1e-9)
     units = run(pair(L1=Load(node="B2", demand_kva=300.0)))
-    merged = run(changed(pair({"parallel": 2}, L1=Load(node="B2", demand_kva=300.0)), T2=None))
+    merged = run(changed(pair({"side_by_side": 2}, L1=Load(node="B2", demand_kva=300.0)), T2=None))
     assert units.nodes.at("B2").voltage_v == pytest.approx(merged.nodes.at("B2").voltage_v, rel=1e-12)
-    assert units.branches.at("T2").loading_percent == pytest.approx(
-        merged.branches.at("T1").loading_percent, rel=1e-9
+    assert units.branches.at("T2").loaded_percent == pytest.approx(
+        merged.branches.at("T1").loaded_percent, rel=1e-9
     )
 
 

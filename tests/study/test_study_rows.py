@@ -35,7 +35,7 @@ def test_a_two_wire_tree_counts_out_and_back_and_whole_powers():
     base = changed(
         two_nodes(),
         S1=Supply(node="B1", nominal_v=230.0, wires="two-wire", angle_deg=30.0),
-        C1=line("B1", "B2", c_uf_per_km=0.3),
+        C1=line("B1", "B2", capacitance_uf_per_km=0.3),
     )
     net = network(base)
     assert net.source_voltage.ravel() == pytest.approx(230 * np.exp(1j * math.pi / 6))
@@ -49,7 +49,7 @@ def test_a_two_wire_drop_by_hand():
     """U⁴ + (2(PR + QX) − Us²)U² + (P² + Q²)(R² + X²) = 0, R and X of the way out and back."""
     base = drawing(
         B1=Busbar(), S1=Supply(node="B1", nominal_v=230.0, wires="two-wire"),
-        B2=Busbar(), C1=line("B1", "B2", length_m=80.0, r20_ohm_per_km=1.15, x_ohm_per_km=0.08),
+        B2=Busbar(), C1=line("B1", "B2", length_m=80.0, resistance_ohm_per_km=1.15, reactance_ohm_per_km=0.08),
         L1=Load(node="B2", demand_kva=None, demand_kw=5.0, power_factor=0.9),
     )  # fmt: skip
     r, x, p = 2 * 0.08 * 1.15, 2 * 0.08 * 0.08, 5000.0
@@ -65,7 +65,7 @@ def test_a_two_wire_drop_by_hand():
 def test_parallel_runs_heat_and_switches():
     base = changed(
         two_nodes(),
-        C1=line("B1", "B2", parallel=3, temperature_degc=90.0, conductor="Cu", c_uf_per_km=0.2),
+        C1=line("B1", "B2", side_by_side=3, temperature_degc=90.0, conductor="Cu", capacitance_uf_per_km=0.2),
         B3=Busbar(), W1=Switch(start="B2", end="B3"), W2=Switch(start="B1", end="B3", closed=False),
     )  # fmt: skip
     net = network(base)
@@ -76,7 +76,7 @@ def test_parallel_runs_heat_and_switches():
 
 
 def test_frequency_counts_in_the_charging():
-    base = changed(two_nodes(), C1=line("B1", "B2", c_uf_per_km=0.2))
+    base = changed(two_nodes(), C1=line("B1", "B2", capacitance_uf_per_km=0.2))
     at_60 = network(msgspec.structs.replace(base, frequency_hz=60.0))
     assert at_60.line_y.ravel() == pytest.approx(network(base).line_y.ravel() * 1.2)
 
@@ -134,7 +134,7 @@ def test_cases_scale_supply_loads_and_generation_each_by_its_own():
 def test_transformer_rows_at_the_tap_of_either_winding():
     plate = dict(
         start="B2", end="B3", v1_v=400.0, v2_v=11000.0, rating_kva=160.0, uk_percent=4.0, load_loss_w=1750.0,
-        no_load_loss_w=189.0, no_load_current_percent=0.7, vector_group="Dyn11", tap=2, parallel=2,
+        no_load_loss_w=189.0, no_load_current_percent=0.7, vector_group="Dyn11", tap=2, side_by_side=2,
     )  # fmt: skip
     base = changed(two_nodes(), B3=Busbar())
     first = network(changed(base, T1=Transformer(**plate, tapped="winding 1")))
@@ -165,14 +165,14 @@ def test_a_single_phase_transformer_in_a_two_wire_tree(group):
     state = outcome.branches.at("T1")
     assert outcome.status is Status.SOLVED
     assert outcome.nodes.at("B3").percent == pytest.approx(97, abs=3)
-    assert state.loading_percent == pytest.approx(100 * state.start_a / (3000 / 230), rel=0.05)
+    assert state.loaded_percent == pytest.approx(100 * state.start_a / (3000 / 230), rel=0.05)
     turned = abs(outcome.nodes.at("B3").angle_deg) > 90
     assert turned == (group == "Ii6")
 
 
 def test_swapping_the_ends_of_a_line_turns_its_figures_and_nothing_else():
-    base = changed(two_nodes(), C1=line("B1", "B2", c_uf_per_km=0.4))
-    one, other = run(base), run(changed(base, C1=line("B2", "B1", c_uf_per_km=0.4)))
+    base = changed(two_nodes(), C1=line("B1", "B2", capacitance_uf_per_km=0.4))
+    one, other = run(base), run(changed(base, C1=line("B2", "B1", capacitance_uf_per_km=0.4)))
     there, back = one.branches.at("C1"), other.branches.at("C1")
     assert (there.forward, back.forward) == (True, False)
     assert there.start_kw == pytest.approx(-back.end_kw, rel=1e-12)
@@ -235,7 +235,7 @@ def test_the_card_and_the_solver_agree_on_every_level(seed):
 def test_an_assumed_value_is_listed_once_and_a_given_one_is_not():
     listed = {(a.id, a.field): a for a in run(two_nodes()).assumptions}
     assert ("C1", "temperature_degc") not in listed
-    assert listed["C1", "c_uf_per_km"].basis == "neglected"
+    assert listed["C1", "capacitance_uf_per_km"].basis == "neglected"
     assert listed["L1", "reference_v"].value == 400.0
     assert len(listed) == len(run(two_nodes()).assumptions)
     renamed = run(changed(two_nodes(), S1=Supply(node="B1", nominal_v=415.0)))

@@ -83,12 +83,12 @@ def failing(drawing):
 def test_fernhollow_fails_as_drawn_and_two_cables_do_not_cure_the_volts():
     peak = "Peak, low intake"
     assert failing(edited("fernhollow")) == {("voltage low", "B3", peak), ("voltage drop", "B3", peak)}
-    two = edited("fernhollow", C1={"parallel": 2}, C2={"parallel": 2})
+    two = edited("fernhollow", C1={"side_by_side": 2}, C2={"side_by_side": 2})
     assert failing(two) == {("voltage low", "B3", peak)}
 
 
 def test_fernhollow_with_three_cables_misses_by_less_than_a_tenth_of_a_volt_and_says_so():
-    outcome = run(edited("fernhollow", C1={"parallel": 3}, C2={"parallel": 3}))
+    outcome = run(edited("fernhollow", C1={"side_by_side": 3}, C2={"side_by_side": 3}))
     (finding,) = (f for f in outcome.findings if f.verdict is Verdict.FAILS)
     assert outcome.nodes.at("B3").voltage_v / 3**0.5 == pytest.approx(216.185, abs=5e-4)
     assert -0.01 < finding.margin < 0
@@ -141,7 +141,7 @@ def test_the_ring_closed_as_drawn_overloads_e_f():
     assert {f.ids[0] for f in outcome.findings if f.check == "loading" and f.verdict is Verdict.FAILS} == {
         "C6"
     }
-    assert outcome.branches.at("C6").loading_percent == pytest.approx(101.6, abs=0.05)
+    assert outcome.branches.at("C6").loaded_percent == pytest.approx(101.6, abs=0.05)
     noted = [f for f in outcome.findings if f.check == "closed loop"]
     assert {"T1", "T2", "W1", "W2", "C1", "C2", "C3", "C4", "C5", "C6"} == set(noted[0].ids)
 
@@ -169,8 +169,8 @@ def test_t1_cannot_carry_the_closed_ring_without_t2():
     outcome = run(without(edited("kettlewick_ring"), "T2"))
     over = {f.ids[0] for f in outcome.findings if f.check == "loading" and f.verdict is Verdict.FAILS}
     assert {"T1", "C2", "C3", "C4"} <= over
-    assert outcome.branches.at("T1").loading_percent > 110
-    assert outcome.branches.at("C2").loading_percent > 200
+    assert outcome.branches.at("T1").loaded_percent > 110
+    assert outcome.branches.at("C2").loaded_percent > 200
     assert not [f for f in outcome.findings if f.check in ("closed loop", "circulating current")]
 
 
@@ -179,4 +179,4 @@ def test_the_boatyard_misses_its_drop_by_a_hair_and_a_thicker_cable_cures_it():
     (finding,) = (f for f in outcome.findings if f.verdict is Verdict.FAILS)
     assert (finding.check, finding.ids) == ("voltage drop", ("B3",))
     assert -0.05 < finding.margin < 0
-    assert failing(edited("saltmere_two_wire", C3={"r20_ohm_per_km": 1.83})) == set()
+    assert failing(edited("saltmere_two_wire", C3={"resistance_ohm_per_km": 1.83})) == set()

@@ -58,8 +58,8 @@ def at_start(base, motor, case):
     force = held + z * (before.supplied() / held).conjugate()
     back = 1 if supply.wires == "three-phase" else 2  # a line of two wires counts out and back
     behind = Cable(
-        start="far", end=supply.node, length_m=1000.0, r20_ohm_per_km=z.real / back,
-        x_ohm_per_km=z.imag / back, temperature_degc=20.0,
+        start="far", end=supply.node, length_m=1000.0, resistance_ohm_per_km=z.real / back,
+        reactance_ohm_per_km=z.imag / back, temperature_degc=20.0,
     )  # fmt: skip
     percent = base.cases[case].supply_percent
     moved = edited(
@@ -116,7 +116,7 @@ def works():
     return drawing(
         cases, LIMITS,
         B1=Busbar(), S1=Supply(node="B1", nominal_v=11000.0, fault_level_min_mva=40.0, xr=2.0),
-        C1=line("B1", "B2", c_uf_per_km=0.3, length_m=900.0), B2=Busbar(),
+        C1=line("B1", "B2", capacitance_uf_per_km=0.3, length_m=900.0), B2=Busbar(),
         T1=Transformer(start="B2", end="B3", rating_kva=400.0, tap=-1), B3=Busbar(),
         L1=Load(node="B3", demand_kva=60.0, constant_impedance_percent=40.0),
         C2=line("B3", "J1", length_m=60.0), J1=Joint(), M1=Motor(node="J1", rated_kw=55.0),
