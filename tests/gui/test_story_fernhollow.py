@@ -152,7 +152,8 @@ def draw_fernhollow(person: Person) -> None:
     person.fill(supply, held_percent="97")
     person.fill(t1, rating_kva="160", load_loss_w="1750", no_load_loss_w="189", no_load_current_percent="0.7")
     person.fill(
-        c1, length_m="1.15 km", resistance_ohm_per_km="0.868", reactance_ohm_per_km="0.126", capacitance_uf_per_km="0.19",
+        c1, length_m="1.15 km", resistance_ohm_per_km="0.868", reactance_ohm_per_km="0.126",
+        capacitance_uf_per_km="0.19",
         temperature_degc="60", rating_a="120",
     )  # fmt: skip
     person.fill(t2, rating_kva="100", load_loss_w="1250", no_load_loss_w="130", no_load_current_percent="0.8")

@@ -35,7 +35,8 @@ def pair(*cases: Case) -> Drawing:
         "J1": Joint(),
         "C1": Cable(
             start="J1", end="J2", type="3×35 Al 11 kV", length_m=1150.0, resistance_ohm_per_km=0.868,
-            reactance_ohm_per_km=0.126, capacitance_uf_per_km=0.19, temperature_degc=60.0, rating_a=120.0, area_mm2=35.0,
+            reactance_ohm_per_km=0.126, capacitance_uf_per_km=0.19, temperature_degc=60.0, rating_a=120.0,
+            area_mm2=35.0,
         ),
         "J2": Joint(),
         "T2": Transformer(
@@ -139,7 +140,8 @@ def meshed(*cases: Case) -> Drawing:
         "B4": Busbar(name="Far board"),
         "L1": Load(name="Far", node="B4", demand_kva=90.0),
         "L2": Load(name="East", node="B3", demand_kva=60.0, constant_current_percent=100.0),
-        "C4": Cable(start="B5", end="B1", length_m=2500.0, resistance_ohm_per_km=0.32, capacitance_uf_per_km=0.31),
+        "C4": Cable(start="B5", end="B1", length_m=2500.0, resistance_ohm_per_km=0.32,
+        capacitance_uf_per_km=0.31),
         "B5": Busbar(name="Other intake"),
         "S2": Supply(node="B5", nominal_v=11000.0, held_percent=98.9),
     }  # fmt: skip

@@ -14,7 +14,8 @@ from solver.status import Status
 def long_run(supply_percent=100.0, house_kva=80.0, **fields):
     mix = {k: fields.pop(k) for k in list(fields) if k.startswith("constant")}
     cable = {
-        "resistance_ohm_per_km": 0.125, "reactance_ohm_per_km": 0.072, "rating_a": 265.0, "temperature_degc": 60.0, **fields
+        "resistance_ohm_per_km": 0.125, "reactance_ohm_per_km": 0.072, "rating_a": 265.0,
+        "temperature_degc": 60.0, **fields
     }  # fmt: skip
     return drawing(
         (Case(supply_percent=supply_percent),),
@@ -59,7 +60,8 @@ def pair(tap_1=0, tap_2=0, supply_percent=100.0):
             no_load_loss_w=189.0, no_load_current_percent=0.7, tapped="winding 2", tap=tap_1,
         ),
         "C1": Cable(
-            start="A", end="B", length_m=1150.0, resistance_ohm_per_km=0.868, reactance_ohm_per_km=0.126, capacitance_uf_per_km=0.19,
+            start="A", end="B", length_m=1150.0, resistance_ohm_per_km=0.868, reactance_ohm_per_km=0.126,
+            capacitance_uf_per_km=0.19,
             temperature_degc=60.0,
         ),
         "T2": Transformer(

@@ -49,7 +49,8 @@ def test_a_two_wire_drop_by_hand():
     """U⁴ + (2(PR + QX) − Us²)U² + (P² + Q²)(R² + X²) = 0, R and X of the way out and back."""
     base = drawing(
         B1=Busbar(), S1=Supply(node="B1", nominal_v=230.0, wires="two-wire"),
-        B2=Busbar(), C1=line("B1", "B2", length_m=80.0, resistance_ohm_per_km=1.15, reactance_ohm_per_km=0.08),
+        B2=Busbar(), C1=line("B1", "B2", length_m=80.0, resistance_ohm_per_km=1.15,
+        reactance_ohm_per_km=0.08),
         L1=Load(node="B2", demand_kva=None, demand_kw=5.0, power_factor=0.9),
     )  # fmt: skip
     r, x, p = 2 * 0.08 * 1.15, 2 * 0.08 * 0.08, 5000.0
