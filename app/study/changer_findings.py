@@ -1,0 +1,131 @@
+"""What there is to say of changers and generators that hold volts: hunting, end stops, wrong ways round."""
+
+from app.model import assumed
+from app.model.drawing import Drawing
+from app.model.figures import percent, plain
+from app.model.kinds import Generator, Regulator, Transformer
+from app.study.changers import Moved
+from app.study.layout import NONE, Layout
+from app.study.outcome import Finding, Verdict
+from app.study.results import Tables
+from app.study.rows import Rows
+from app.study.words import tell
+from solver.control import Rest
+
+
+def hunting_findings(drawing: Drawing, layout: Layout, moved: Moved) -> list[Finding]:
+    """The changers that never come to rest, each in the first case in which it does not.
+
+    drawing : the drawing, for names
+    layout : its graph
+    moved : where what moves came to rest
+
+    Returns : list of Finding that bar a solution
+    """
+    found = []
+    for row, rest in zip(moved.changers, moved.rest, strict=True):
+        cases = [c for c, one in enumerate(rest) if one is Rest.HUNTING]
+        if not cases:
+            continue
+        id, element = layout.branch_ids[row], layout.branches[row]
+        assert isinstance(element, Transformer | Regulator)
+        band = percent(assumed.value(element, "bandwidth_percent"), 2)
+        words = (
+            f"{tell(drawing, id)} hunts{_case(drawing, cases[0])}: it steps to and fro and never comes to "
+            f"rest in its band of {band}, a step being {percent(_step(element), 3)}."
+        )
+        found.append(Finding("hunting", Verdict.BLOCKS, (id,), words, case=drawing.cases[cases[0]].name))
+    return found
+
+
+def _case(drawing: Drawing, case: int) -> str:
+    return f" in case {drawing.cases[case].name}" if len(drawing.cases) > 1 else ""
+
+
+def _step(element: Transformer | Regulator) -> float:
+    return element.notch_percent if isinstance(element, Transformer) else element.step_percent
+
+
+def stop_findings(
+    drawing: Drawing, layout: Layout, rows: Rows, tables: Tables, moved: Moved
+) -> list[Finding]:
+    """Changers at an end stop out of their band, and generators at a limit of their reactive power.
+
+    A changer that holds the volts of the side its supply feeds moves the other side instead and runs away to
+    its end stop: that fails.
+
+    drawing : the drawing, for names
+    layout : its graph
+    rows : of the solver, with the notches
+    tables : of the outcome
+    moved : where what moves came to rest
+
+    Returns : list of Finding, each in the first case in which it stands
+    """
+    found = []
+    for number, row in enumerate(moved.changers):
+        cases = [c for c, one in enumerate(moved.rest[number]) if one is Rest.AT_STOP]
+        away = [c for c in cases if _source_side(layout, tables, row, c)]
+        if cases:
+            found.append(_stop(drawing, layout, rows, tables, row, (away or cases)[0], bool(away)))
+    for number, row in enumerate(moved.generators):
+        cases = [c for c, holds in enumerate(moved.holds[number]) if not holds]
+        if cases:
+            found.append(_limited(drawing, layout, tables, row, cases[0]))
+    return found
+
+
+def _held_end(layout: Layout, tables: Tables, row: int, case: int) -> int:
+    """Node row of the side whose volts a changer holds in a case."""
+    element, ends = layout.branches[row], (layout.start[row], layout.end[row])
+    if isinstance(element, Transformer):
+        return ends[0] if element.regulates == "winding 1" else ends[1]
+    backward = tables.branches.column("end_kw")[row, case] < 0
+    return (
+        ends[0]
+        if isinstance(element, Regulator) and element.mode == "with the power" and backward
+        else ends[1]
+    )
+
+
+def _source_side(layout: Layout, tables: Tables, row: int, case: int) -> bool:
+    """True where the side that is held is the one that the supply feeds the changer from."""
+    held = _held_end(layout, tables, row, case)
+    other = layout.start[row] if held == layout.end[row] else layout.end[row]
+    return layout.fed_by[other] == row and layout.fed_by[other] != NONE
+
+
+def _stop(
+    drawing: Drawing, layout: Layout, rows: Rows, tables: Tables, row: int, case: int, away: bool
+) -> Finding:
+    element, id = layout.branches[row], layout.branch_ids[row]
+    assert isinstance(element, Transformer | Regulator)
+    notch = int(rows.notches[row][case])
+    node = _held_end(layout, tables, row, case)
+    level = float(tables.nodes.column("percent")[node, case])
+    where = f"{plain(notch, 0, sign=True)} ({percent(notch * _step(element), 1, sign=True)})"
+    if away:
+        words = (
+            f"{tell(drawing, id)} has run away to its end stop {where}{_case(drawing, case)}: it holds "
+            f"{tell(drawing, layout.node_ids[node])}, which lies toward its supply, and each step moves "
+            "the other side instead. Let it hold the side away from the supply."
+        )
+        return Finding("runs away", Verdict.FAILS, (id,), words, case=drawing.cases[case].name)
+    words = (
+        f"{tell(drawing, id)} stands at its end stop {where}{_case(drawing, case)}: "
+        f"{tell(drawing, layout.node_ids[node])} is at {percent(level, 1)} of nominal, it should hold "
+        f"{percent(assumed.value(element, 'hold_percent'), 1)}."
+    )
+    return Finding("end stop", Verdict.NEAR, (id,), words, case=drawing.cases[case].name)
+
+
+def _limited(drawing: Drawing, layout: Layout, tables: Tables, row: int, case: int) -> Finding:
+    element, id = layout.attachments[row], layout.attachment_ids[row]
+    assert isinstance(element, Generator)
+    kvar = float(tables.attachments.column("kvar")[row, case])
+    level = float(tables.nodes.column("percent")[layout.at[row], case])
+    words = (
+        f"{tell(drawing, id)} is at its limit of {plain(kvar, 1, 'kvar', sign=True)}{_case(drawing, case)} "
+        f"and leaves its node at {percent(level, 2)} of nominal, not {percent(element.hold_percent or 0, 2)}."
+    )
+    return Finding("reactive limit", Verdict.NEAR, (id,), words, case=drawing.cases[case].name)

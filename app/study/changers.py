@@ -1,0 +1,141 @@
+"""What moves by itself in a drawing: tap changers, regulators, generators that hold a voltage."""
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model import assumed
+from app.model.drawing import Drawing
+from app.model.kinds import Branch, Generator, Regulator, Transformer
+from app.study.layout import Layout, arrays_of
+from app.study.rows import Rows
+from app.study.zones import Zones
+from solver import Solution, Trouble, grow, solve
+from solver import control as controls
+from solver.holding import Holding
+
+REVERSE = {
+    "forward": controls.Reverse.FORWARD,
+    "with the power": controls.Reverse.OTHER_SIDE,
+    "idle in reverse": controls.Reverse.IDLE,
+}
+Real = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True)
+class Moved:
+    """Where what moves by itself came to rest.
+
+    changers : (changer,) branch rows
+    rest : (changer, case) each a controls.Rest
+    generators : (generator,) attachment rows
+    holds : (generator, case) bool, holds its volts; else it is at a limit of its reactive power
+    """
+
+    changers: tuple[int, ...]
+    rest: NDArray[np.object_]
+    generators: tuple[int, ...]
+    holds: NDArray[np.bool_]
+
+
+def is_changer(branch: Branch) -> bool:
+    """True for a regulator, and for a transformer whose tap changer steps by itself.
+
+    branch : any branch
+
+    Returns : bool
+    """
+    return isinstance(branch, Regulator) or isinstance(branch, Transformer) and branch.regulates != "no"
+
+
+def settled(
+    drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, fixed: int | None = None
+) -> tuple[Rows, Solution, Moved | None]:
+    """Solve with everything that moves by itself come to rest.
+
+    drawing : the drawing
+    layout : its graph
+    zones : nominal_v (zone,) float [V]
+    rows : its rows, changers at their nameplate
+    fixed : branch row of a changer that is to stay where the rows have it
+
+    Returns : Rows at the notches that were found, Solution of them, and Moved; None where nothing moves
+    Source : see solver.control
+    """
+    layout.forest = layout.forest or grow(rows.network)
+    live, network = arrays_of(layout).live, rows.network
+    changers = tuple(
+        int(b) for b in rows.units if b != fixed and is_changer(layout.branches[b]) and live[layout.start[b]]
+    )
+    held = tuple(int(a) for a in rows.loads if _holds(layout, int(a)) and live[layout.at[a]])
+    if isinstance(layout.forest, Trouble) or not changers and not held:
+        return rows, solve(network, forest=layout.forest), None
+    found = controls.control(
+        network,
+        [_changer(layout, zones, rows, b) for b in changers],
+        [_holding(layout, zones, rows, a) for a in held],
+    )
+    notches = dict(zip(changers, found.notch, strict=True))
+    rows = replace(rows, network=found.solution.network, notches=notches)
+    return rows, found.solution, Moved(changers, found.rest, held, found.held)
+
+
+def _holds(layout: Layout, row: int) -> bool:
+    hung = layout.attachments[row]
+    return isinstance(hung, Generator) and hung.hold_percent is not None
+
+
+def _volts(layout: Layout, zones: Zones, rows: Rows, node: int) -> float:
+    """The solver's volts at 1 % of nominal."""
+    return float(zones.nominal_v[layout.zone[node]] / rows.wide[node] / 100)
+
+
+def _changer(layout: Layout, zones: Zones, rows: Rows, branch: int) -> controls.Regulator:
+    """One changer as the solver takes it; ohms of two wires count out and back."""
+    element = layout.branches[branch]
+    assert isinstance(element, Transformer | Regulator)
+    side = 1 if isinstance(element, Transformer) and element.regulates == "winding 1" else 2
+    ends = layout.start[branch], layout.end[branch]
+    unit = [_volts(layout, zones, rows, node) for node in (ends[side - 1], ends[2 - side])]
+    back = 2 if rows.phases[ends[0]] == 1 else 1
+    hold = assumed.value(element, "hold_percent")
+    about = (
+        (
+            element.tapped == "winding 1",
+            element.notch_percent,
+            element.taps_down,
+            element.taps_up,
+            element.tap,
+        )
+        if isinstance(element, Transformer)
+        else (False, element.step_percent, element.steps_down, element.steps_up, 0)
+    )
+    first, step, down, up, start = about
+    return controls.Regulator(
+        transformer=int(np.flatnonzero(rows.units == branch)[0]),
+        tapped=1 if first else 2,
+        step=step / 100,
+        lowest=-down,
+        highest=up,
+        setting=hold * unit[0],
+        bandwidth=assumed.value(element, "bandwidth_percent") * unit[0],
+        regulated=side,
+        compensation=complex(element.drop_r_ohm or 0.0, element.drop_x_ohm or 0.0) * back,
+        reverse=REVERSE[element.mode] if isinstance(element, Regulator) else controls.Reverse.FORWARD,
+        reverse_setting=hold * unit[1],
+        start=start,
+    )
+
+
+def _holding(layout: Layout, zones: Zones, rows: Rows, row: int) -> Holding:
+    element = layout.attachments[row]
+    assert isinstance(element, Generator)
+    node = layout.at[row]
+    least, most = (assumed.value(element, name) for name in ("q_min_kvar", "q_max_kvar"))
+    return Holding(
+        load=int(np.flatnonzero(rows.loads == row)[0]),
+        setting=(element.hold_percent or 0.0) * _volts(layout, zones, rows, node),
+        lowest=min(least, most) * 1e3 / rows.phases[node],
+        highest=max(least, most) * 1e3 / rows.phases[node],
+    )
