@@ -50,23 +50,42 @@ class Hung:
             other *= self.between.reshape(-1, *(1,) * (other.ndim - 1))
         return np.subtract(flat.take(self.near, axis=0), other, other)
 
-    def draw(self, voltage: Complex, out: Complex) -> None:
+    def scratch(self, width: int) -> "Scratch":
+        """Memory for `draw` at so many operating points."""
+        count = self.place.size
+        both, ends = (np.empty((2 * count, width), np.complex128) for _ in range(2))
+        return Scratch(both, ends, np.empty((count, width)))
+
+    def draw(self, voltage: Complex, out: Complex, scratch: "Scratch") -> None:
         """What is drawn at these volts, as currents that leave each place.
 
         voltage : (live, k, batch) complex [V]
         out : (live, k, batch) complex [A], is overwritten
+        scratch : Scratch, of this batch
         """
-        u = self.across(voltage)
-        size = u.real**2
+        flat, count = voltage.reshape(-1, voltage.shape[-1]), self.place.size
+        u, drawn, size = scratch.both[:count], scratch.both[count:], scratch.size
+        flat.take(self.near, axis=0, out=u, mode="clip")
+        flat.take(self.far, axis=0, out=drawn, mode="clip")
+        if not self.between.all():
+            drawn *= self.between[:, None]
+        np.subtract(u, drawn, u)
+        np.multiply(u.real, u.real, size)
         size += u.imag**2
         np.maximum(size, np.finfo(float).tiny, out=size)
-        drawn = self.power / size
+        np.reciprocal(size, size)
+        np.multiply(self.power, size, drawn)
         if self.current is not None:
-            drawn += self.current / np.sqrt(size)
-        drawn *= u
-        ends = np.concatenate((drawn, drawn * -self.between[:, None])).take(self.order, axis=0)
+            np.sqrt(size, size)
+            drawn += self.current * size
+        np.multiply(drawn, u, u)
+        np.multiply(u, -self.between[:, None], drawn)
+        scratch.both.take(self.order, axis=0, out=scratch.flat, mode="clip")
         out[...] = 0
-        out.reshape(-1, out.shape[-1])[self.target] = np.add.reduceat(ends, self.start, axis=0)
+        if out.shape[-1] == 1:  # one row of values is summed up far quicker than a column
+            out.reshape(-1)[self.target] = np.add.reduceat(scratch.flat.reshape(-1), self.start)
+        else:
+            out.reshape(-1, out.shape[-1])[self.target] = np.add.reduceat(scratch.flat, self.start, axis=0)
 
     def slopes(self, voltage: Complex) -> tuple[Complex, Complex]:
         """(element, batch) a and b of dI = a dU + b conj(dU) at these volts."""
@@ -77,6 +96,20 @@ class Hung:
             a = a + self.current / (2 * size)
             b = b - self.current * u**2 / (2 * size**3)
         return a, b
+
+
+@dataclass(frozen=True, slots=True)
+class Scratch:
+    """Memory that is taken once.
+
+    both : (2 · element, batch) complex
+    flat : (2 · element, batch) complex
+    size : (element, batch) float
+    """
+
+    both: Complex
+    flat: Complex
+    size: Real
 
 
 def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Complex] | None]:

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from solver.forest import Forest
+from solver.hung import Scratch
 from solver.network import Complex, Index
 from solver.placed import Placed
 
@@ -56,6 +57,7 @@ class Sweep:
         self.squared, self.spare = (np.empty((rows, k, width)) for _ in range(2))
         self.inverse = np.zeros((rows, k, width), np.complex128)
         self.stages = [self._stage(forest, depth) for depth in range(forest.depth_zone.size - 1)]
+        self.scratch: Scratch | None = None
         self.flow: Complex | None = None  # that enters what nothing holds
         gain = placed.gain
         self.gain_back = None if gain is None else np.swapaxes(gain, 1, 2)
@@ -87,7 +89,8 @@ class Sweep:
             if self.placed.hung is None:
                 self.current[...] = 0
             else:
-                self.placed.hung.draw(voltage, self.current)
+                self.scratch = self.scratch or self.placed.hung.scratch(self.current.shape[-1])
+                self.placed.hung.draw(voltage, self.current, self.scratch)
         else:
             for part in self.parts:
                 self._currents(part, voltage[part], self.current[part])
