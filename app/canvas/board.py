@@ -61,7 +61,7 @@ class Board(Paper):
     def hit(self, at: QPointF, radius_px: float = 8.0) -> Hit:
         """What lies under a point of the scene."""
         for id, ladder in self.ladders.items():
-            if ladder.isVisible() and ladder.sceneBoundingRect().contains(at):
+            if ladder.isVisible() and ladder.contains(ladder.mapFromScene(at)):
                 return Hit(HitKind.LADDER, id)
         return nearest(self._outlines(at, radius_px), at, radius_px)
 
@@ -174,7 +174,7 @@ class Board(Paper):
         elements = self.session.drawing.elements
         wanted = {i for i in self.attention.selection if isinstance(elements.get(i), Transformer)}
         for id in self.ladders.keys() - wanted:
-            self.removeItem(self.ladders.pop(id))
+            self.take_away(self.ladders.pop(id))
         for id in wanted - self.ladders.keys():
             ladder = TapLadder(self, id, self.session, self.solving, self.theme)
             ladder.setZValue(8)

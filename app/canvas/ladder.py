@@ -6,14 +6,14 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QPainter, QPen
+from PySide6.QtGui import QPainter, QPainterPath, QPen
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsObject
 
 from app.canvas.ladder_curve import WIDTH, Prospect, paint_losses, paint_safe
 from app.canvas.ladder_scale import Scale
 from app.canvas.lettering import Run, Style, line_height, paint
 from app.canvas.theme import Theme
-from app.canvas.tools_tap import TapHold, effect, nameplate_words
+from app.canvas.tools_tap import TapHold, nameplate_words
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model import taps
@@ -29,6 +29,7 @@ RAIL_X = 8.0 + WIDTH + 16.0
 WORDS_X = RAIL_X + 18.0
 WIDE = WORDS_X + 108.0
 RUNG = QRectF(-10, -5, 20, 10)
+TOUCH = 14.0  # on either side of the rail
 CLICK = 120  # the wheel's own eighths of a degree for one notch
 KEYS = {Qt.Key.Key_Up: 1, Qt.Key.Key_Down: -1}
 
@@ -45,6 +46,8 @@ class TapLadder(QGraphicsObject):
         self._turned = 0  # of the wheel, short of a notch
         self._pointed: int | None = None
         self._shown: tuple | None = None
+        self._curve: object = None
+        self._bounds = QRectF()
         self.setAcceptHoverEvents(True)
         self.setFlag(QGraphicsItem.GraphicsItemFlag.ItemIsFocusable)
         solving.curved.connect(self._curved)
@@ -78,10 +81,7 @@ class TapLadder(QGraphicsObject):
     def fed_winding(self) -> int:
         """1, or 2 where the power comes in at winding 2."""
         outcome = self._solving.outcome
-        if outcome is None or self.id not in outcome.branches:
-            return 1
-        state = outcome.branches.at(self.id, min(self._board.attention.case, len(outcome.cases) - 1))
-        return 2 if state.live and not state.forward else 1
+        return outcome.fed_winding(self.id, self._board.attention.case) if outcome is not None else 1
 
     def words(self, notch: int) -> str:
         """`10 725 V −2.5 %`."""
@@ -93,7 +93,7 @@ class TapLadder(QGraphicsObject):
         t = self.transformer
         if t is None:
             return ""
-        verb = effect(t, notch, self.fed_winding)
+        verb = taps.effect(t, notch, self.fed_winding)
         far = t.end if self.fed_winding == 1 else t.start
         return f"{verb} {label(self._session.drawing, far)}" if verb else "nameplate"
 
@@ -103,12 +103,14 @@ class TapLadder(QGraphicsObject):
         self.setVisible(t is not None and self.notches.steps > 0)
         if t is None:
             return
+        bounds = QRectF(0, 0, WIDE, self.notches.height + 2 * EDGE)
+        if bounds != self._bounds:
+            self.prepareGeometryChange()
+            self._bounds = bounds
         curve = self._solving.curve(self.id)
-        now = (t, self.effect(t.tap), curve, self._solving.stale, self._board.attention.case)
-        if now != self._shown:
-            if self._shown is None or self._shown[0] != t:
-                self.prepareGeometryChange()
-            self._shown = now
+        now = (t, self.effect(t.tap), self._solving.stale, self._board.attention.case)
+        if now != self._shown or curve is not self._curve:  # curves hold arrays, which have no one equality
+            self._shown, self._curve = now, curve
             self.setToolTip(self._tip(t))
             self.update()
 
@@ -129,7 +131,13 @@ class TapLadder(QGraphicsObject):
     # painting -----------------------------------------------------------------------------------
 
     def boundingRect(self) -> QRectF:
-        return QRectF(0, 0, WIDE, self.notches.height + 2 * EDGE)
+        return self._bounds  # kept: the scene finds an item again by the box it was told of last
+
+    def shape(self) -> QPainterPath:
+        """Only the rail and its rung can be touched; the rest lets the hand through to what lies below."""
+        path = QPainterPath()
+        path.addRect(QRectF(RAIL_X - TOUCH, 0, 2 * TOUCH, self._bounds.height()))
+        return path
 
     def paint(self, painter: QPainter, option, widget=None) -> None:
         t = self.transformer

@@ -4,9 +4,9 @@ from collections.abc import Container, Iterable, Iterator, Mapping
 from itertools import chain, islice
 from typing import Any
 
-from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
 from PySide6.QtGui import QPainter, QPen
-from PySide6.QtWidgets import QGraphicsScene
+from PySide6.QtWidgets import QGraphicsItem, QGraphicsScene
 
 from app.canvas import arrange, standing, wording
 from app.canvas.attachment_item import AttachmentItem
@@ -39,6 +39,9 @@ class Paper(QGraphicsScene):
         self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
         self._laid = Drawing()
         self._shown: Shown | None = None
+        self._leaving: list[QGraphicsItem] = []
+        self._swept = QTimer(self, singleShot=True, interval=0)
+        self._swept.timeout.connect(self._leaving.clear)
         self.setItemIndexMethod(QGraphicsScene.ItemIndexMethod.BspTreeIndex)
 
     # the drawing --------------------------------------------------------------------------------
@@ -99,7 +102,13 @@ class Paper(QGraphicsScene):
         self.owed.pop(id, None)
         for table in (self.items_by_id, self.captions, self.tags):
             if id in table:
-                self.removeItem(table.pop(id))
+                self.take_away(table.pop(id))
+
+    def take_away(self, item: QGraphicsItem) -> None:
+        """Take an item off the paper; it lives on until the event at hand is over, which may be its own."""
+        self.removeItem(item)
+        self._leaving.append(item)
+        self._swept.start()
 
     def _name(self, id: str) -> bool:
         """Write the caption; supplies and scaled loads say their power in it."""
@@ -187,7 +196,8 @@ class Paper(QGraphicsScene):
             tag.read(shown.reading(id))
             lines = wording.node_figures(*shown.rows("nodes", id))
         elif isinstance(item, BranchItem):
-            lines = wording.branch_figures(item.angle, *shown.rows("branches", id), item.lossless)
+            figures = shown.rows("branches", id)
+            lines = wording.branch_figures(item.angle, *figures, item.lossless, item.step)
         return tag.write(lines, item.standing)
 
     # where words go -----------------------------------------------------------------------------

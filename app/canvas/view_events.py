@@ -130,6 +130,7 @@ class EventView(QGraphicsView):
             if self._to_scene:
                 self._to_scene = False
                 super().mouseReleaseEvent(event)
+                event.accept()  # the ladder may be gone meanwhile
             else:
                 self.tool.release(touch)
 

@@ -10,7 +10,8 @@ from PySide6.QtGui import QImage, QPainter
 from PySide6.QtWidgets import QGraphicsView
 
 from app.canvas.board import Board
-from app.canvas.geometry import HitKind, attachment_point, node_point, pose, route, scene
+from app.canvas.geometry import Hit, HitKind, attachment_point, node_point, pose, route, scene
+from app.canvas.ladder import RAIL_X
 from app.canvas.standing import Standing
 from app.canvas.tag import Caption
 from app.canvas.theme import Theme
@@ -287,8 +288,9 @@ def test_a_selected_transformer_shows_its_ladder_above_it(bench):
     ladder = one.board.ladder_of("T2")
     box = ladder.sceneBoundingRect()
     assert box.bottom() <= one.board.item_of("T2").core().top()
-    assert one.board.hit(box.center()).kind is HitKind.LADDER
-    assert one.board.hit(box.center()).id == "T2"
+    rail = ladder.mapToScene(RAIL_X, box.height() / 2)
+    assert one.board.hit(rail) == Hit(HitKind.LADDER, "T2")
+    assert one.board.hit(box.topRight() - QPointF(4, -4)).kind is not HitKind.LADDER
     one.attention.select([])
     assert one.board.ladder_of("T2") is None
 
