@@ -8,7 +8,7 @@ from app.live.session import Session
 from app.live.solving import Solving
 from app.model import edits, taps
 from app.model.drawing import label
-from app.model.figures import nameplate, percent
+from app.model.figures import nameplate
 from app.model.kinds import Transformer
 
 LINGER_MS = 700  # clicks of the wheel nearer together than this are one hold
@@ -50,7 +50,7 @@ class TapHold:
         notch = min(max(notch, -t.taps_down), t.taps_up)
         if notch != t.tap:
             self._session.edit(
-                f"Tap of {label(self._session.drawing, self.id)} to {notch_percent(t, notch)}",
+                f"Tap of {label(self._session.drawing, self.id)} to {taps.percent_words(t, notch)}",
                 lambda d: edits.set_tap(d, self.id, notch),
                 self._gesture,
             )
@@ -80,21 +80,6 @@ class TapHold:
         self._pause.start()
 
 
-def notch_percent(t: Transformer, notch: int) -> str:
-    """`−2.5 %`: a notch as percent of the tapped winding's nameplate voltage."""
-    value = notch * t.notch_percent
-    digits = next((d for d in range(4) if abs(round(value, d) - value) < 1e-9), 3)
-    return percent(value, digits, sign=True)
-
-
-def effect(t: Transformer, notch: int, fed_winding: int) -> str:
-    """What a notch does to the winding that is not fed, against the middle: raises, lowers or neither."""
-    if notch == 0:
-        return ""
-    moved = 2 if fed_winding == 1 else 1
-    return "raises" if (notch > 0) == (t.tapped == f"winding {moved}") else "lowers"
-
-
 def nameplate_words(t: Transformer, notch: int) -> str:
     """`10 725 V −2.5 %`."""
-    return f"{nameplate(round(taps.nameplate_v(t, notch), 1))} {notch_percent(t, notch)}"
+    return f"{nameplate(round(taps.nameplate_v(t, notch), 1))} {taps.percent_words(t, notch)}"

@@ -5,7 +5,7 @@ import textwrap
 from typing import Any
 
 from app.canvas.lettering import Line, Run, Style
-from app.model import assumed, figures
+from app.model import assumed, figures, taps
 from app.model.drawing import Case, Drawing
 from app.model.kinds import (
     AnyElement,
@@ -85,17 +85,12 @@ def _transformer(t: Transformer) -> tuple[str, ...]:
         return (first,)
     if t.regulates != "no":
         return first, f"holds {_held(t)} at {t.regulates}"
-    digits = _digits(t.notch_percent) if t.tap else 0
-    return first, f"tap {figures.percent(t.tap * t.notch_percent, digits, sign=True)}"
+    return first, f"tap {taps.percent_words(t, t.tap)}"
 
 
 def _held(changer: Transformer | Regulator) -> str:
     """The setting of what steps by itself."""
     return f"{figures.typed(assumed.value(changer, 'hold_percent'))} %"
-
-
-def _digits(step: float) -> int:
-    return next((d for d in (0, 1, 2) if math.isclose(step, round(step, d))), 3)
 
 
 def _ratio(v1: float, v2: float) -> str:

@@ -61,6 +61,12 @@ def length(value_m: float) -> str:
     return f"{round(value_m, 1):g} m"
 
 
+def stated(value: float, unit: str = "", *, sign: bool = False) -> str:
+    """A figure that is given, not worked out, with the digits it needs, six at most: −2.5 %, 0.625 %."""
+    digits = next((d for d in range(6) if float(f"{value:.{d}f}") == float(f"{value:.6g}")), 6)
+    return plain(value, digits, unit, sign=sign)
+
+
 def typed(value: float) -> str:
     """A number as a person would type it, exact to the last bit: 0.125, 11000."""
     return str(int(value)) if float(value).is_integer() and abs(value) < 1e15 else repr(float(value))

@@ -6,7 +6,7 @@ the voltage of winding 2, on winding 2 it raises it: the words always say which.
 
 import msgspec
 
-from app.model.figures import MINUS
+from app.model.figures import stated
 from app.model.kinds import Transformer
 from solver.transformer import GROUP, clock
 
@@ -49,17 +49,24 @@ def words(t: Transformer, notch: int, fed_winding: int = 1) -> str:
     if notch == 0:
         return f"tap 0 %: {plate}"
     moved = 2 if fed_winding == 1 else 1
-    raises = (notch > 0) == (t.tapped == f"winding {moved}")
-    return f"tap {_percent(t, notch)}: {plate}, {'raises' if raises else 'lowers'} winding {moved}"
+    return f"tap {percent_words(t, notch)}: {plate}, {effect(t, notch, fed_winding)} winding {moved}"
+
+
+def effect(t: Transformer, notch: int, fed_winding: int) -> str:
+    """What a notch does to the winding that is not fed, against nameplate: raises, lowers or nothing."""
+    if notch == 0:
+        return ""
+    moved = 2 if fed_winding == 1 else 1
+    return "raises" if (notch > 0) == (t.tapped == f"winding {moved}") else "lowers"
+
+
+def percent_words(t: Transformer, notch: int) -> str:
+    """`−2.5 %`: a notch as percent of the tapped winding's nameplate voltage."""
+    return stated(notch * t.notch_percent, "%", sign=True)
 
 
 def _volts(value: float) -> str:
     return f"{round(value, 1):.1f}".removesuffix(".0")
-
-
-def _percent(t: Transformer, notch: int) -> str:
-    percent = notch * t.notch_percent
-    return f"{'+' if percent > 0 else MINUS}{abs(percent):g} %"
 
 
 def group(written: str) -> tuple[str, str, int] | None:

@@ -223,7 +223,8 @@ class Card(QScrollArea):
         alone = len(self._ids) == 1 and isinstance(
             self._session.drawing.elements.get(self._ids[0]), Transformer
         )
-        row.say(tap_words(self._session.drawing, self._solving.outcome, self._ids[0]) if alone else "")
+        shown = self._session.drawing, self._solving.outcome
+        row.say(tap_words(*shown, self._ids[0], self._attention.case) if alone else "")
 
     def _redress(self) -> None:
         self._show_head()

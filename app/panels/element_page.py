@@ -5,9 +5,8 @@ from functools import reduce
 from typing import Any
 
 from app.canvas.theme import Theme
-from app.canvas.tools_tap import notch_percent
 from app.live.session import Session
-from app.model import assumed, edits, units
+from app.model import assumed, edits, taps, units
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
@@ -135,7 +134,7 @@ class ElementPage(Page):
         def name(after: Drawing) -> str:
             one = after.elements[ids[0]]
             assert isinstance(one, Transformer)
-            return f"Tap of {subject(after, ids)} to {notch_percent(one, one.tap)}"
+            return f"Tap of {subject(after, ids)} to {taps.percent_words(one, one.tap)}"
 
         self.rows["tap"].refuse(attempt(self._session, name, change))
 

@@ -210,11 +210,9 @@ _MAKERS: tuple[tuple[type, Callable[[Asked, str], list[Row]]], ...] = (
 )
 
 
-def tap_words(drawing: Drawing, outcome: Outcome | None, id: str) -> str:
+def tap_words(drawing: Drawing, outcome: Outcome | None, id: str, case: int) -> str:
     """What the tap does: `tap −2.5 %: 10725/400, raises winding 2`."""
     element = drawing.elements[id]
     assert isinstance(element, Transformer)
-    fed = 1
-    if outcome is not None and id in outcome.branches and not outcome.branches.at(id).forward:
-        fed = 2
+    fed = outcome.fed_winding(id, case) if outcome is not None else 1
     return taps.words(element, element.tap, fed)

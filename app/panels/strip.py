@@ -47,7 +47,7 @@ class VoltageStrip(QWidget):
         self.axes: Axes | None = None
         self.curves: list[Curve] = []  # the case shown whole, of the others the main route
         self.before: Curve | None = None  # the main route when the drag began
-        self.tap = TapDrag(session, solving)
+        self.tap = TapDrag(session, solving, attention)
         self.setMouseTracking(True)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
@@ -160,7 +160,7 @@ class VoltageStrip(QWidget):
         text = "% of nominal"
         if held:
             drawing = self._session.drawing
-            text = f"{label(drawing, held)}  {tap_words(drawing, self._outcome, held)}"
+            text = f"{label(drawing, held)}  {tap_words(drawing, self._outcome, held, self.case)}"
         painter.setFont(font(8.5, bold=bool(held)))
         painter.setPen(palette.tap if held else palette.soft)
         painter.drawText(
@@ -226,7 +226,7 @@ class VoltageStrip(QWidget):
             level = f"{volts(state.voltage_v)}, {percent(state.percent)} of nominal"
             return f"{name}: {level} at {length(state.route_m)}"
         if isinstance(drawing.elements[id], Transformer):
-            return f"{name}: {tap_words(drawing, outcome, id)}. Drag the dot to move the tap."
+            return f"{name}: {tap_words(drawing, outcome, id, self.case)}. Drag the dot to move the tap."
         if id in outcome.branches:
             return f"{name}: {percent(outcome.branches.at(id, self.case).drop_percent, 2)} lost along it"
         return name

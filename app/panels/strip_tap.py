@@ -1,8 +1,10 @@
 """Dragging a tap by its step in the voltage strip: the voltage goes where the hand goes."""
 
 from app.canvas.tools_tap import TapHold
+from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
+from app.model import taps
 from app.model.kinds import Transformer
 
 LEAST_PX = 7.0  # the hand moves at least this far for a notch
@@ -11,8 +13,8 @@ LEAST_PX = 7.0  # the hand moves at least this far for a notch
 class TapDrag:
     """From pressing the dot to letting go is one undo step, as on the ladder."""
 
-    def __init__(self, session: Session, solving: Solving) -> None:
-        self._session, self._solving = session, solving
+    def __init__(self, session: Session, solving: Solving, attention: Attention) -> None:
+        self._session, self._solving, self._attention = session, solving, attention
         self._hold = TapHold(session, solving, "")
         self.dragged = ""  # the transformer in the hand
         self.reach: tuple[float, float] | None = None  # the range of the strip must not jump under the hand
@@ -61,6 +63,5 @@ class TapDrag:
     def _way(self, id: str) -> int:
         """+1 where a higher notch raises the voltage of the side that is fed through the transformer."""
         transformer, outcome = self._hold.transformer, self._solving.outcome
-        forward = outcome is None or id not in outcome.branches or outcome.branches.at(id).forward
-        raises = transformer is not None and (transformer.tapped == "winding 2") == forward
-        return 1 if raises else -1
+        fed = outcome.fed_winding(id, self._attention.case) if outcome is not None else 1
+        return 1 if transformer is not None and taps.effect(transformer, 1, fed) == "raises" else -1

@@ -62,8 +62,7 @@ def transformer_tables(subject: Subject) -> list[SheetTable]:
 
 def fed_winding(subject: Subject, id: str) -> int:
     """The winding that power enters; 1 where nothing feeds it."""
-    states = [subject.state(id, c) for c in range(len(subject.cases))]
-    return 2 if any(s.live and not s.forward for s in states) else 1
+    return max(subject.outcome.fed_winding(id, case) for case in range(len(subject.cases)))
 
 
 def _entry(subject: Subject, id: str, t: Transformer) -> Entry:

@@ -203,6 +203,12 @@ class Outcome:
     )  # node id -> the node before it, seen from the supply
     starts: "StartTable | None" = None  # motor starts, where there are motors and figures
 
+    def fed_winding(self, id: str, case: int) -> int:
+        """The winding of a transformer that power enters, 1 or 2; 1 where nothing feeds it."""
+        if id not in self.branches:
+            return 1
+        return 1 if self.branches.at(id, min(case, len(self.cases) - 1)).forward else 2
+
     def verdict(self, case: int) -> Verdict:
         """The worst in one case; a note where nothing is judged."""
         found = (finding.in_case(case) for finding in self.findings)

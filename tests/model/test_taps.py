@@ -35,6 +35,14 @@ def test_words_say_which_winding_moves_and_which_way(tapped, notch, fed, words):
     assert taps.words(replace(T, tapped=tapped), notch, fed) == words
 
 
+@pytest.mark.parametrize(
+    ("step", "notch", "words"),
+    [(2.5, -1, "−2.5 %"), (0.625, -4, "−2.5 %"), (0.625, 3, "+1.875 %"), (1.1, 3, "+3.3 %"), (5, 0, "0 %")],
+)
+def test_a_notch_in_percent_has_the_digits_it_needs(step, notch, words):
+    assert taps.percent_words(replace(T, notch_percent=step), notch) == words
+
+
 @pytest.mark.parametrize("tapped", ["winding 1", "winding 2"])
 @pytest.mark.parametrize("notch", [-2, -1, 1, 2])
 def test_words_agree_with_the_ratio(tapped, notch):
