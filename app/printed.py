@@ -6,7 +6,7 @@ from typing import Any
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
 from app.model.figures import plain, typed
-from app.model.kinds import KIND_WORDS, Branch, Transformer, kind_of
+from app.model.kinds import KIND_WORDS, Branch, Regulator, Transformer, kind_of
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Assumption, Finding, Outcome, Table
 from app.study.words import tell
@@ -105,8 +105,8 @@ def _table(drawing: Drawing, title: str, table: Table[Any], columns: Sequence[Co
         element, state = drawing.elements[id], table.at(id, case)
         ends = (element.start, element.end) if isinstance(element, Branch) else ("", "")
         kind = KIND_WORDS[kind_of(element)]
-        if isinstance(element, Transformer):
-            kind += f" tap {plain(element.tap, 0, sign=True)}"
+        if isinstance(element, Transformer | Regulator) and state.live:
+            kind += f" tap {plain(state.notch, 0, sign=True)}"
         figures = (
             [write(state) for _, write in columns] if state.live else ["dead"] + [""] * (len(columns) - 1)
         )
@@ -178,7 +178,7 @@ def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
         f"  {tell(drawing, a.id)}: {_field(drawing, a)} {typed(a.value)} {a.unit} ({a.basis})"
         for a in outcome.assumptions[:SHOWN_ASSUMPTIONS]
     ]
-    return "Assumed, because left blank\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
+    return "Assumed, to be confirmed\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
 
 
 def _field(drawing: Drawing, assumption: Assumption) -> str:

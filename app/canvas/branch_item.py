@@ -11,6 +11,7 @@ from app.canvas.geometry import along, distance, longest, pose, route
 from app.canvas.standing import Standing, colour, pen
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.user_symbol import Worn
+from app.canvas.wording import step_of
 from app.model.drawing import Drawing
 from app.model.kinds import OverheadLine, Regulator, Switch
 
@@ -38,6 +39,7 @@ class BranchItem(ElementItem):
         self.worn: Glyph | Worn | None = None
         self.flow = Flow()
         self.lossless = False  # a switch
+        self.step: float | None = None  # percent of a notch of what steps by itself
         self._poles: list[QPointF] = []
         self._runs: list[list[QPointF]] = []
         self._halo = QPainterPath()
@@ -50,6 +52,7 @@ class BranchItem(ElementItem):
     def read(self, drawing: Drawing) -> None:
         element = drawing.elements[self.id]
         self.lossless = isinstance(element, Switch | Regulator)
+        self.step = step_of(element)
         self.worn = dress(drawing, element, self.look.symbols)
         self._runs = self._cut()
         whole = sum(distance(a, b) for a, b in zip(self.points, self.points[1:], strict=False))

@@ -54,8 +54,9 @@ def describe(element: AnyElement) -> tuple[str, ...]:
         case LineElement():
             return (_line(element),)
         case Regulator():
-            most = element.steps_up * element.step_percent
-            return (f"holds {_held(element)}, +{figures.percent(most, 0)}",)
+            up, down = (n * element.step_percent for n in (element.steps_up, element.steps_down))
+            reach = f"±{figures.percent(up, 0)}" if up == down else f"{figures.percent(up + down, 0)} in all"
+            return (f"holds {_held(element)}, {reach}",)
         case Switch():
             return ("closed" if element.closed else "open",)
         case Supply():
@@ -72,6 +73,8 @@ def describe(element: AnyElement) -> tuple[str, ...]:
             kvar = (
                 f" {figures.plain(element.output_kvar, 1, 'kvar', sign=True)}" if element.output_kvar else ""
             )
+            if element.hold_percent is not None:
+                kvar = f", holds {figures.typed(element.hold_percent)} %"
             return (f"{figures.typed(element.output_kw)} kW{kvar}",)
         case Capacitor():
             return (f"{figures.typed(element.rating_kvar)} kvar" + ("" if element.connected else ", off"),)
@@ -131,7 +134,11 @@ def runs_on(through_kw: Any, forward: Any) -> Any:
 
 
 def branch_figures(
-    angle: float, state: BranchState, before: BranchState | None, lossless: bool = False
+    angle: float,
+    state: BranchState,
+    before: BranchState | None,
+    lossless: bool = False,
+    step: float | None = None,
 ) -> Lines:
     """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
     if not state.live:
@@ -143,7 +150,20 @@ def branch_figures(
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
         second += loss_change(state.loss_kw - before.loss_kw)
-    return (first,) if lossless else (first, second)
+    lines = (first,) if lossless else (first, second)
+    if step is None:
+        return lines
+    stands = f"stands at {figures.plain(state.notch, 0, sign=True)}"
+    return *lines, (Run(f"{stands}, {figures.percent(state.notch * step, 1, sign=True)}", Style.QUIET),)
+
+
+def step_of(element: AnyElement) -> float | None:
+    """Percent of a notch of what steps by itself; None where nothing does."""
+    if isinstance(element, Regulator):
+        return element.step_percent
+    if isinstance(element, Transformer) and element.regulates != "no":
+        return element.notch_percent
+    return None
 
 
 def arrow(angle: float, forward: bool) -> str:

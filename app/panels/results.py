@@ -9,7 +9,18 @@ from msgspec import Struct
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.figures import amps, length, loss, percent, plain, power, volts
-from app.model.kinds import Attachment, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
+from app.model.kinds import (
+    Attachment,
+    Generator,
+    Line,
+    Load,
+    Motor,
+    Node,
+    Regulator,
+    Supply,
+    Switch,
+    Transformer,
+)
 from app.panels.change import change
 from app.study.outcome import Finding, NodeState, Outcome, Table, Verdict
 
@@ -134,11 +145,33 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
     ]
     if low in asked.outcome.nodes:
         made.append(_row(asked, "nodes", low, "LV volts", _voltage, volts, VOLTAGE))
+    if element.regulates != "no":
+        made.append(_stands(asked, id, element.notch_percent))
     return made + [
         row("Copper loss", "copper_kw", loss),
         row("Iron loss", "iron_kw", loss),
         row("Drop in it", "drop_percent", partial(percent, digits=2)),
     ]
+
+
+def _stands(asked: Asked, id: str, step: float) -> Row:
+    """Where what steps by itself stands."""
+
+    def write(notch: float) -> str:
+        return f"{plain(notch, 0, sign=True)} ({percent(notch * step, 1, sign=True)})"
+
+    return _row(asked, "branches", id, "Stands at", "notch", write, ("end stop", "runs away"))
+
+
+def _regulator(asked: Asked, id: str) -> list[Row]:
+    element = asked.drawing.elements[id]
+    assert isinstance(element, Regulator)
+    made = _switch(asked, id)
+    if not made:
+        return []
+    sides = (("Volts, start", element.start), ("Volts, end", element.end))
+    seen = [_row(asked, "nodes", n, label, _voltage, volts) for label, n in sides if n in asked.outcome.nodes]
+    return [_stands(asked, id, element.step_percent), *seen, *made]
 
 
 def _voltage(state: NodeState) -> float:
@@ -205,6 +238,7 @@ _MAKERS: tuple[tuple[type, Callable[[Asked, str], list[Row]]], ...] = (
     (Node, _node),
     (Line, _line),
     (Transformer, _transformer),
+    (Regulator, _regulator),
     (Switch, _switch),
     (Attachment, _attachment),
 )

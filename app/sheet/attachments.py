@@ -141,6 +141,8 @@ def _stated(hung: Supply | Generator | Capacitor) -> Cells:
     if isinstance(hung, Generator):
         way = "feeds in" if hung.output_kvar >= 0 else "absorbs"
         words = f"fixed output, {way} {abs(hung.output_kvar):g} kvar"
+        if hung.hold_percent is not None:
+            words = f"holds {hung.hold_percent:g} % of nominal"
         return {"rating": given(hung.output_kw), "unit": text("kW"), "rest": given(words)}
     words = f"at {hung.rated_v:g} V" if hung.rated_v is not None else "at nominal voltage, assumed"
     return {"rating": given(hung.rating_kvar), "unit": text("kvar"), "rest": given(words)}

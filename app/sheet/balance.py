@@ -1,6 +1,6 @@
 """Where the power goes: supply = loads + losses for every case, and what each branch loses."""
 
-from app.model.kinds import Generator, Supply, Switch
+from app.model.kinds import Generator, Regulator, Supply, Switch
 from app.sheet.attachments import LOADS, SOURCES
 from app.sheet.elements import figure, sum_of_case
 from app.sheet.lines import KEY as LINES
@@ -107,7 +107,7 @@ def _split(subject: Subject) -> SheetTable:
     table_ = subject.outcome.branches
     loss = table_.column("loss_kw")
     order = sorted(
-        (i for i in table_.ids if not isinstance(subject.drawing.elements[i], Switch)),
+        (i for i in table_.ids if not isinstance(subject.drawing.elements[i], Switch | Regulator)),
         key=lambda i: -max(loss[table_.rows[i]].ravel(), default=0.0),
     )
     cases = range(len(subject.cases))

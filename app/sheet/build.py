@@ -8,9 +8,11 @@ from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import KEY as LINES
 from app.sheet.lines import LOADING, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
+from app.sheet.regulators import setting_words
 from app.sheet.subject import FROM_TO, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
 from app.sheet.transformers import fed_winding
+from app.study.changers import is_changer
 
 TAB = "Build list"
 FIRST = Column("item", "What", style=Style.LONG, width=34)
@@ -147,7 +149,7 @@ def order_words(subject: Subject, id: str, t: Transformer) -> str:
             loss("load_loss_w", "Pk", "W"),
             loss("no_load_loss_w", "P0", "W"),
             loss("no_load_current_percent", "i0", "%"),
-            f"taps {ladder} on {t.tapped}",
+            f"taps {ladder} on {t.tapped}" + (", on load" if is_changer(t) else ""),
         )
     )
 
@@ -168,7 +170,11 @@ def _settings(subject: Subject) -> SheetTable:
             "position": Cell(t.taps_up - t.tap + 1),
             "of": Cell(t.taps_up + t.taps_down + 1),
             "plate": given(round(taps.nameplate_v(t, t.tap), 3)),
-            "words": text(taps.words(t, t.tap, fed_winding(subject, id))),
+            "words": text(
+                setting_words(subject, id, t)
+                if is_changer(t)
+                else taps.words(t, t.tap, fed_winding(subject, id))
+            ),
         }
         for id, t in _transformers(subject).items()
     }

@@ -9,6 +9,7 @@ from app.sheet.lines import LOADING, LOSS, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT, node_cell
 from app.sheet.subject import FROM_TO, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
+from app.study.changers import is_changer
 from app.study.outcome import BranchState
 
 KEY = "transformers"
@@ -32,6 +33,7 @@ FIGURES = (
     Column("i1", "I, winding 1", "A", style=Style.AMPS),
     Column("i2", "I, winding 2", "A", style=Style.AMPS),
     Column("s", "S fed in", "kVA", digits=2),
+    Column("stands", "Tap stands at", "notch", digits=0, width=8),
     LOADING,
     Column("u_out", "U given out", "V", style=Style.VOLTS, width=10),
     Column("iron", "Iron", "W", digits=0, width=7),
@@ -105,13 +107,14 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
     s_kw, s_kvar = (state.start_kw, state.start_kvar) if state.forward else (state.end_kw, state.end_kvar)
     fed_cell = {"fed": node_cell(subject, fed, "u", case)}
     tapped = _tapped(t, 1 if state.forward else 2)
-    rated = taps.windings(t, t.tap)[0 if state.forward else 1]
+    rated = taps.windings(t, int(state.notch))[0 if state.forward else 1]
     high = 1 if t.v1_v >= t.v2_v else 2
     high_cell = {"high": node_cell(subject, t.start if high == 1 else t.end, "u", case)}
     iron = f"{{units}}*{{p0}}*({{high}}/({_tapped(t, high)}))^2"
     return {
         "i1": Cell(state.start_a),
         "i2": Cell(state.end_a),
+        "stands": Cell(state.notch) if is_changer(t) else Cell(state.notch, "{notch}"),
         "s": Cell(math.hypot(s_kw, s_kvar), f"{root}*{{fed}}*{{{i_fed}}}/1000", fed_cell),
         "loading": Cell(state.loaded_percent, _loading(root)),
         "u_out": Cell(
@@ -130,7 +133,13 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
 def _tapped(t: Transformer, winding: int) -> str:
     """Rated voltage of a winding at its tap, as a formula."""
     plain = f"{{v{winding}}}"
-    return f"{plain}*(1+{{tap_percent}}/100)" if t.tapped == f"winding {winding}" else plain
+    if t.tapped != f"winding {winding}":
+        return plain
+    return (
+        f"{plain}*(1+{{stands}}*{t.notch_percent!r}/100)"
+        if is_changer(t)
+        else f"{plain}*(1+{{tap_percent}}/100)"
+    )
 
 
 def _loading(root: str) -> str:

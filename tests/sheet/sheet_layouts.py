@@ -12,6 +12,7 @@ from app.model.kinds import (
     Load,
     Motor,
     OverheadLine,
+    Regulator,
     Supply,
     Switch,
     Transformer,
@@ -144,6 +145,26 @@ def meshed(*cases: Case) -> Drawing:
         capacitance_uf_per_km=0.31),
         "B5": Busbar(name="Other intake"),
         "S2": Supply(node="B5", nominal_v=11000.0, held_percent=98.9),
+    }  # fmt: skip
+    return Drawing(elements=elements, cases=cases or (Case(),))
+
+
+def stepping(*cases: Case) -> Drawing:
+    """A transformer whose tap changer steps by itself, a regulator down the lane, a generator that holds."""
+    elements = {
+        "B1": Busbar(name="HV"),
+        "S1": Supply(node="B1", nominal_v=11000.0, held_percent=96.0),
+        "T1": Transformer(
+            name="Main", start="B1", end="B2", rating_kva=250.0, notch_percent=1.25, taps_up=8, taps_down=8,
+            regulates="winding 2", bandwidth_percent=2.0, drop_r_ohm=0.01,
+        ),
+        "B2": Busbar(name="Board"),
+        "C1": Cable(start="B2", end="B3", length_m=350.0),
+        "B3": Busbar(name="Lane"),
+        "V1": Regulator(name="Lane regulator", start="B3", end="B4", rating_a=200.0),
+        "B4": Busbar(name="Far"),
+        "L1": Load(node="B4", demand_kva=70.0),
+        "G1": Generator(node="B2", output_kw=20.0, hold_percent=101.0),
     }  # fmt: skip
     return Drawing(elements=elements, cases=cases or (Case(),))
 

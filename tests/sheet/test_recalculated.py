@@ -4,7 +4,7 @@ from pathlib import Path
 
 import openpyxl
 import pytest
-from sheet_layouts import NIGHT, PEAK, blocked, meshed, pair, three_cables, two_wire
+from sheet_layouts import NIGHT, PEAK, blocked, meshed, pair, stepping, three_cables, two_wire
 from spreadsheet import differences, needs_spreadsheet, recalculated
 from xlsxwriter import Workbook
 
@@ -19,6 +19,8 @@ LAYOUTS = {
     "two wires.xlsx": (two_wire(), 60),
     "meshed.xlsx": (meshed(), 80),
     "meshed by night.xlsx": (meshed(PEAK, NIGHT), 180),
+    "stepping.xlsx": (stepping(), 60),
+    "stepping by night.xlsx": (stepping(PEAK, NIGHT), 120),
     "blocked.xlsx": (blocked(), 5),
 }
 Books = dict[str, tuple[Path, Path]]

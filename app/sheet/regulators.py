@@ -1,0 +1,102 @@
+"""Regulators, and the transformers whose tap changer steps by itself: what is set and where each stands."""
+
+from app.model.kinds import Regulator, Transformer
+from app.sheet.elements import Entry, Extreme, Plan, by_element
+from app.sheet.nodes import node_cell
+from app.sheet.subject import FROM_TO, Subject
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given
+from app.study.changers import is_changer
+from app.study.outcome import BranchState
+
+KEY = "regulators"
+MODES = {
+    "forward": "always its end",
+    "with the power": "where the power goes",
+    "idle in reverse": "its end; stays in reverse",
+}
+NOTE = (
+    "Notches count from the middle; one up raises the winding or the end whose taps it has. R and X are of "
+    "the line to the place whose volts are held. Each steps notch by notch until its volts are in its band."
+)
+
+
+def regulator_tables(subject: Subject) -> list[SheetTable]:
+    """Everything that steps by itself."""
+    found = {i: e for i, e in subject.drawing.branches().items() if is_changer(e)}
+    data = (
+        *FROM_TO,
+        Column("holds", "Holds", style=Style.TEXT, width=22),
+        Column("hold", "Setting", "% of nominal", digits=1, width=10),
+        Column("band", "Bandwidth", "% of nominal", digits=2, width=10),
+        Column("r", "R", "Ω", digits=3),
+        Column("x", "X", "Ω", digits=3),
+        Column("step", "Step", "%", digits=3),
+        Column("down", "Down", "notches", digits=0),
+        Column("up", "Up", "notches", digits=0),
+    )
+    figures = (
+        Column("notch", "Stands at", "notch", digits=0),
+        Column("percent", "Stands at", "%", digits=2),
+        Column("u1", "U, from", "V", style=Style.VOLTS, width=10),
+        Column("u2", "U, to", "V", style=Style.VOLTS, width=10),
+        Column("current", "I", "A", style=Style.AMPS),
+        Column("stop", "End stop", style=Style.TEXT, width=10),
+    )
+    extremes = (
+        Extreme("low", "notch", False, "Lowest notch"),
+        Extreme("high", "notch", True, "Highest notch"),
+    )
+    plan = Plan(KEY, "Regulators", "Regulators and tap changers", data, figures, extremes, (), NOTE)
+    return by_element(subject, plan, [_entry(subject, i, e) for i, e in found.items()])  # type: ignore[arg-type]
+
+
+def _entry(subject: Subject, id: str, changer: Transformer | Regulator) -> Entry:
+    step, down, up = _ladder(changer)
+    data = (
+        subject.identity(id)
+        | subject.ends(id, changer)
+        | {
+            "holds": given(changer.regulates)
+            if isinstance(changer, Transformer)
+            else given(MODES[changer.mode]),
+            "hold": subject.value(id, "hold_percent"),
+            "band": subject.value(id, "bandwidth_percent"),
+            "r": given(changer.drop_r_ohm or 0.0),
+            "x": given(changer.drop_x_ohm or 0.0),
+            "step": given(step),
+            "down": given(down),
+            "up": given(up),
+        }
+    )
+    states = [subject.state(id, c) for c in range(len(subject.cases))]
+    figures = [_figures(subject, changer, s, c) for c, s in enumerate(states)]
+    return Entry(id, data, figures, lambda worst: {})
+
+
+def _ladder(changer: Transformer | Regulator) -> tuple[float, int, int]:
+    """Step in %, notches down and up."""
+    if isinstance(changer, Transformer):
+        return changer.notch_percent, changer.taps_down, changer.taps_up
+    return changer.step_percent, changer.steps_down, changer.steps_up
+
+
+def _figures(subject: Subject, changer: Transformer | Regulator, state: BranchState, case: int) -> Cells:
+    if not state.live:
+        return {}
+    step, down, up = _ladder(changer)
+    first, second = (subject.outcome.nodes.at(n, case).voltage_v for n in (changer.start, changer.end))
+    at_end = state.notch in (-down, up)
+    return {
+        "notch": Cell(state.notch),
+        "percent": Cell(state.notch * step, "{notch}*{step}"),
+        "u1": Cell(first, "{at}", {"at": node_cell(subject, changer.start, "u", case)}),
+        "u2": Cell(second, "{at}", {"at": node_cell(subject, changer.end, "u", case)}),
+        "current": Cell(state.current_a),
+        "stop": Cell("END STOP" if at_end else "no", 'IF(OR({notch}=-{down},{notch}={up}),"END STOP","no")'),
+    }
+
+
+def setting_words(subject: Subject, id: str, changer: Transformer) -> str:
+    """`steps by itself: holds winding 2 at 100 % in a band of 2.5 %`."""
+    hold, band = (subject.value(id, f"{name}_percent").value for name in ("hold", "bandwidth"))
+    return f"steps by itself: holds {changer.regulates} at {hold:g} % of nominal in a band of {band:g} %"
