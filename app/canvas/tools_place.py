@@ -113,7 +113,7 @@ class PlaceTool(Tool):
     def _paint_hanging(self, painter: QPainter, palette: Palette, element: Attachment, ghost: QColor) -> None:
         on = self._pressed or self._aim
         node = on.as_node(self.view.drawing)
-        x, y = place_beside(element, on, self._aim)
+        x, y = place_beside(self.view.drawing, element, on, self._aim)
         painter.setPen(QPen(ghost, 1.5))
         painter.drawPolyline(to_point(node, scene(x, y)))
         if on.node is None:
@@ -123,11 +123,15 @@ class PlaceTool(Tool):
         )
 
 
-def place_beside(element: Attachment, on: Spot, at: Spot) -> tuple[float, float]:
+def place_beside(drawing: Drawing, element: Attachment, on: Spot, at: Spot) -> tuple[float, float]:
     """Where an attachment stands: where it was dragged to, or at its usual place beside its node."""
     if math.dist((on.x, on.y), (at.x, at.y)) >= BESIDE and at.node is None:
         return at.x, at.y
-    return on.x + element.dx, on.y + element.dy
+    if on.node is None:
+        return on.x + element.dx, on.y + element.dy
+    met = on.as_node(drawing)
+    dx, dy = edits.free_place(drawing, on.node, element, at.x, at.y)
+    return met.x + dx, met.y + dy
 
 
 def put_down(view: BoardView, part: Part, on: Spot, at: Spot) -> str | None:

@@ -9,6 +9,7 @@ from app.model import taps
 from app.model.changes import change, element, ends, put, with_elements
 from app.model.checks import EditRefused, called
 from app.model.drawing import Drawing, fresh_id
+from app.model.hanging import free_place
 from app.model.kinds import (
     AnyElement,
     Attachment,
@@ -105,7 +106,7 @@ def drop(drawing: Drawing, template: AnyElement, x: float, y: float, node: str |
         raise EditRefused(f"{called(node, met)}: nothing can hang on it, allowed is a busbar or joint.")
     dx, dy = x - met.x, y - met.y
     if math.hypot(dx, dy) < 1.5 or (isinstance(met, Busbar) and abs(dx if met.upright else dy) < 1.5):
-        dx, dy = _free_place(drawing, node, template)
+        dx, dy = free_place(drawing, node, template, x, y)
     return _hang(drawing, template, node, dx, dy)
 
 
@@ -121,15 +122,6 @@ def _hang(drawing: Drawing, template: Attachment, node: str, dx: float, dy: floa
     if isinstance(made, Supply) and level is not None:
         made = replace(made, nominal_v=level.volts, wires=level.wires)
     return put(drawing, {fresh_id(drawing.elements, made): made})
-
-
-def _free_place(drawing: Drawing, node: str, template: Attachment) -> Point:
-    """The template's own place beside the node, or the next free one beside that."""
-    taken = {(e.dx, e.dy) for e in drawing.attachments().values() if e.node == node}
-    tries = [template.dx + side * step for step in range(0, 40, 3) for side in (1, -1)]
-    return next(
-        ((dx, template.dy) for dx in tries if (dx, template.dy) not in taken), (template.dx, template.dy)
-    )
 
 
 def join(drawing: Drawing, kept_node: str, gone_node: str) -> Drawing:

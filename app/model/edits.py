@@ -20,6 +20,7 @@ from app.model.checks import EditRefused
 from app.model.clipboard import Clip, copy, paste
 from app.model.diffing import Change, added, diff
 from app.model.drawing_on import drop, extend, join, move, reroute, split_branch
+from app.model.hanging import free_place
 from app.model.keeping import carried, forget_part, keep_part, rename_part, set_symbol
 from app.model.parts import made_from
 from app.model.typing_in import change_text
@@ -37,6 +38,7 @@ __all__ = [
     "drop",
     "extend",
     "forget_part",
+    "free_place",
     "join",
     "keep_part",
     "made_from",
