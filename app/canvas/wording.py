@@ -2,6 +2,7 @@
 
 import math
 import textwrap
+from collections.abc import Callable
 from typing import Any
 
 from app.canvas.lettering import Line, Run, Style
@@ -61,7 +62,7 @@ def describe(element: AnyElement) -> tuple[str, ...]:
             return ("closed" if element.closed else "open",)
         case Supply():
             two = ", two-wire" if element.wires == "two-wire" else ""
-            first = f"{_kilovolts(element.nominal_v)}{two}"
+            first = f"{figures.level(element.nominal_v)}{two}"
             if element.held_percent == 100:
                 return (first,)
             return first, f"held at {figures.typed(element.held_percent)} %"
@@ -83,7 +84,8 @@ def describe(element: AnyElement) -> tuple[str, ...]:
 
 def _transformer(t: Transformer) -> tuple[str, ...]:
     units = f"{t.side_by_side} × " if t.side_by_side > 1 else ""
-    first = f"{units}{figures.typed(t.rating_kva)} kVA {_ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
+    rating = f"{units}{figures.typed(t.rating_kva)} kVA"
+    first = f"{rating} {figures.ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
     if not t.taps_up + t.taps_down:
         return (first,)
     if t.regulates != "no":
@@ -94,16 +96,6 @@ def _transformer(t: Transformer) -> tuple[str, ...]:
 def _held(changer: Transformer | Regulator) -> str:
     """The setting of what steps by itself."""
     return f"{figures.typed(assumed.value(changer, 'hold_percent'))} %"
-
-
-def _ratio(v1: float, v2: float) -> str:
-    if max(v1, v2) < 1000:
-        return f"{figures.typed(v1)}/{figures.typed(v2)} V"
-    return f"{figures.typed(v1 / 1000)}/{figures.typed(v2 / 1000)} kV"
-
-
-def _kilovolts(volts: float) -> str:
-    return f"{figures.typed(volts / 1000)} kV" if volts >= 1000 else f"{figures.typed(volts)} V"
 
 
 def _line(line: LineElement) -> str:
@@ -149,7 +141,7 @@ def branch_figures(
     first: Line = (Run(f"{figures.power(abs(state.through_kw))} {arrow(angle, forward)} {load}"),)
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
-        second += loss_change(state.loss_kw - before.loss_kw)
+        second += changed(state.loss_kw, before.loss_kw, figures.loss)
     lines = (first,) if lossless else (first, second)
     if step is None:
         return lines
@@ -179,9 +171,7 @@ def node_figures(state: NodeState, before: NodeState | None) -> Lines:
     first: Line = (Run(figures.volts(state.voltage_v)),)
     second: Line = (Run(figures.percent(state.percent), Style.QUIET),)
     if before is not None and before.live:
-        delta = state.voltage_v - before.voltage_v
-        scale, digits, unit = (1.0, 1, "V") if abs(state.voltage_v) < 999.95 else (1e-3, 3, "kV")
-        second += change(delta * scale, digits, unit)
+        second += changed(state.voltage_v, before.voltage_v, figures.volts)
     return first, second
 
 
@@ -195,19 +185,11 @@ def attachment_figures(
         return ()
     line: Line = (Run(figures.power(state.kw)),)
     if before is not None and before.live:
-        line += loss_change(state.kw - before.kw)
+        line += changed(state.kw, before.kw, figures.loss)
     return (line,)
 
 
-def change(delta: float, digits: int, unit: str) -> Line:
+def changed(now: float, then: float, write: Callable[[float], str]) -> Line:
     """▲ 5.8 V; nothing where it would read as nought."""
-    if math.isnan(delta) or float(f"{abs(delta):.{digits}f}") == 0.0:
-        return ()
-    return (Run(f"{'▲' if delta > 0 else '▼'} {figures.plain(abs(delta), digits, unit)}", Style.CHANGE),)
-
-
-def loss_change(delta_kw: float) -> Line:
-    """▼ 40 W."""
-    if math.isnan(delta_kw) or abs(delta_kw) < 0.0005:
-        return ()
-    return (Run(f"{'▲' if delta_kw > 0 else '▼'} {figures.loss(abs(delta_kw))}", Style.CHANGE),)
+    moved = figures.change(now, then, write)
+    return (Run(moved, Style.CHANGE),) if moved else ()

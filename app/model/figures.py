@@ -4,9 +4,12 @@ Judging is done on unrounded figures; these functions only write them down.
 """
 
 import math
+from collections.abc import Callable
 
 MINUS = "\N{MINUS SIGN}"
 THIN = "\N{NARROW NO-BREAK SPACE}"
+UP, DOWN = "\N{BLACK UP-POINTING TRIANGLE}", "\N{BLACK DOWN-POINTING TRIANGLE}"
+RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
 def plain(value: float, digits: int, unit: str = "", *, sign: bool = False) -> str:
@@ -29,6 +32,18 @@ def volts(value: float) -> str:
 def nameplate(value: float) -> str:
     """A rated or nameplate voltage: 400 V, 10 725 V."""
     return plain(value, 0 if float(value).is_integer() else 1, "V")
+
+
+def level(value: float) -> str:
+    """A nominal voltage as people call it: 11 kV, 400 V."""
+    return f"{typed(value / 1000)} kV" if value >= 1000 else f"{typed(value)} V"
+
+
+def ratio(first: float, second: float) -> str:
+    """Two nominal voltages of a transformer: 11/0.4 kV, 400/230 V."""
+    if max(first, second) < 1000:
+        return f"{typed(first)}/{typed(second)} V"
+    return f"{typed(first / 1000)}/{typed(second / 1000)} kV"
 
 
 def amps(value: float) -> str:
@@ -59,6 +74,27 @@ def length(value_m: float) -> str:
     if abs(value_m) >= 1000:
         return f"{round(value_m / 1e3, 3):g}".replace("-", MINUS) + " km"
     return f"{round(value_m, 1):g} m"
+
+
+def closure(value: float) -> str:
+    """What a balance leaves open, as part of the supply: 2·10⁻⁹."""
+    if value == 0 or math.isnan(value):
+        return plain(value, 0)
+    mantissa, _, exponent = f"{value:.0e}".partition("e")
+    small = abs(int(exponent)) > 2
+    return f"{mantissa}·10{str(int(exponent)).translate(RAISED)}" if small else plain(value, 3)
+
+
+def change(now: float, then: float, write: Callable[[float], str]) -> str:
+    """A change since a drag began, ▲ 5.8 V, with its size as `write` writes a figure; nothing where that
+    rounds to nought."""
+    delta = now - then
+    if not math.isfinite(delta):
+        return ""
+    size = write(abs(delta))
+    if not any(digit in "123456789" for digit in size):
+        return ""
+    return f"{UP if delta > 0 else DOWN} {size}"
 
 
 def stated(value: float, unit: str = "", *, sign: bool = False) -> str:

@@ -6,7 +6,7 @@ from typing import Any
 
 from app.canvas.theme import Theme
 from app.live.session import Session
-from app.model import assumed, edits, taps, units
+from app.model import assumed, edits, figures, taps, units
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
@@ -148,7 +148,7 @@ def nominal(drawing: Drawing, id: str) -> float:
 
 def round_off(value: float) -> str:
     """A stand-in as quiet text: short, but not wrong."""
-    return f"{value:.6g}" if value == value else "nominal"
+    return figures.stated(value) if value == value else "nominal"
 
 
 def other_habit(value: object, field: Field) -> str:

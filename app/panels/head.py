@@ -9,8 +9,7 @@ from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
-from app.model.figures import loss, power
-from app.panels.change import change
+from app.model.figures import change, loss, power
 from app.panels.chips import CaseChips
 from app.panels.style import play
 from app.panels.words import LEFT, Rule, Words

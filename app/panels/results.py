@@ -8,7 +8,7 @@ from msgspec import Struct
 
 from app.model import assumed, taps
 from app.model.drawing import Drawing
-from app.model.figures import amps, length, loss, percent, plain, power, volts
+from app.model.figures import amps, change, length, loss, percent, plain, power, volts
 from app.model.kinds import (
     Attachment,
     Generator,
@@ -21,7 +21,6 @@ from app.model.kinds import (
     Switch,
     Transformer,
 )
-from app.panels.change import change
 from app.study.outcome import Finding, NodeState, Outcome, Table, Verdict
 
 Write = Callable[[float], str]

@@ -3,9 +3,8 @@
 from collections.abc import Callable
 from functools import partial
 
-from app.model.figures import length, loss, plain, power, volts
+from app.model.figures import change, closure, length, loss, power, volts
 from app.model.kinds import Branch, Line, Load, Node
-from app.panels.change import change
 from app.panels.results import Asked, Row
 
 
@@ -83,14 +82,3 @@ def _whole(asked: Asked) -> list[Row]:
         made.append(Row(label, tuple(write(float(v)) for v in values), moved))
     made.append(Row("Closes to", tuple(closure(float(v)) for v in asked.outcome.balance.closure)))
     return made
-
-
-def closure(value: float) -> str:
-    """2·10⁻⁹, as part of the supply."""
-    if value != value:
-        return "–"
-    if value == 0:
-        return "0"
-    mantissa, _, exponent = f"{value:.0e}".partition("e")
-    raised = str(int(exponent)).translate(str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹"))
-    return f"{mantissa}·10{raised}" if abs(int(exponent)) > 2 else plain(value, 3)

@@ -9,9 +9,7 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model.edits import Change
-from app.model.figures import loss, percent, plain, power
-from app.panels.change import change
-from app.panels.summary import closure
+from app.model.figures import change, closure, loss, percent, plain, power
 from app.panels.tape_cut import Cut, Piece, cut
 from app.panels.tape_paint import BAR_TOP, HEIGHT, MARGIN, Shown, paint_tape
 from app.panels.words import plain_tip
