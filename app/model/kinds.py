@@ -6,6 +6,7 @@ from msgspec import Struct
 from msgspec import field as held
 
 from app.model.fields import field, plain, text
+from app.model.stepping import Band, DropR, DropX, Hold
 
 Point = tuple[float, float]
 
@@ -125,36 +126,6 @@ class Cable(Line, frozen=True, kw_only=True, tag="cable"):
 
 class OverheadLine(Line, frozen=True, kw_only=True, tag="overhead_line"):
     """An overhead line between two nodes."""
-
-
-Hold = (
-    Annotated[
-        float,
-        field(
-            "Holds", "% of nominal", gt=0, le=200, help="Volts that a changer steps towards. Blank: nominal."
-        ),
-    ]
-    | None
-)
-Band = (
-    Annotated[
-        float,
-        field("Bandwidth", "% of nominal", gt=0, le=50, help="In all. Wider than a step, or it hunts."),
-    ]
-    | None
-)
-DropR = (
-    Annotated[
-        float, field("Line drop R", "Ω", ge=0, le=1e4, help="Of the line to the place whose volts are held.")
-    ]
-    | None
-)
-DropX = (
-    Annotated[
-        float, field("Line drop X", "Ω", ge=0, le=1e4, help="Of the line to the place whose volts are held.")
-    ]
-    | None
-)
 
 
 class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
