@@ -5,7 +5,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import Attachment, Branch, Line, Node, Switch
+from app.model.kinds import Attachment, Branch, Line, Node, Regulator, Switch
 from solver import Forest, Trouble
 
 NONE = -1
@@ -117,7 +117,7 @@ def arrays_of(layout: Layout) -> Arrays:
 
 
 def is_bare(branch: Branch) -> bool:
-    """True where a branch has no impedance at all: a closed switch or a line of no length.
+    """True where a branch has no impedance at all: a closed switch, a regulator, a line of no length.
 
     branch : any branch
 
@@ -127,4 +127,4 @@ def is_bare(branch: Branch) -> bool:
         return branch.length_m == 0 or (
             branch.resistance_ohm_per_km == 0 and branch.reactance_ohm_per_km == 0
         )
-    return isinstance(branch, Switch)
+    return isinstance(branch, Regulator | Switch)

@@ -44,6 +44,7 @@ def idle_findings(
     row = {int(branch): n for n, branch in enumerate(rows.units)}
     loops = [(r, mismatch(layout, r, ratio, row)) for r in layout.rings if not r.supplies]
     apart = {tuple(units_of(layout, ring)): gap for ring, gap in reversed(loops) if gap > AGREE}
+    apart.pop((), None)  # a loop of regulators alone: their loading is judged for itself
     pairs = {ring.supplies: None for ring in layout.rings if ring.supplies}
     if not apart and not pairs:
         return []

@@ -188,3 +188,13 @@ def test_balance_closes_through_a_regulator():
     b = outcome.balance
     np.testing.assert_allclose(b.supply_kw, b.load_kw + b.loss_kw, rtol=1e-9)
     assert outcome.branches.at("V1").loss_kw == pytest.approx(0.0, abs=1e-9)
+
+
+def test_a_regulator_in_a_ring_is_solved_and_two_side_by_side_are_refused():
+    ring = changed(lane(cases=(Case(),)), C3=line("B3", "B1", length_m=300.0))
+    outcome = run(ring)
+    assert outcome.status is Status.SOLVED
+    assert outcome.balance.closure[0] < 1e-6
+    twice = run(changed(ring, V2=Regulator(start="B2", end="B3")))
+    assert twice.status is Status.INVALID
+    assert any("V1 and V2 form a loop without any impedance" in f.sentence for f in twice.findings)
