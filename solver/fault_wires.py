@@ -89,7 +89,7 @@ def _answered(sweep: Sweep, placed: Placed, ties: Ties | None) -> tuple[Complex,
     if flow is None:
         return volts, np.zeros(width, dtype=bool)
     joined = gathered(ties.joints, ties.lift)[..., 0]
-    return volts, np.asarray((np.abs(flow + joined.T @ current) > OPEN).any(axis=0))
+    return volts, np.asarray((np.abs(ties.apart[0].T @ flow + joined.T @ current) > OPEN).any(axis=0))
 
 
 @dataclass(frozen=True, slots=True)

@@ -22,7 +22,8 @@ class Ties:
     The trees turn drawn currents into volts, V = E - T I. With the tie currents drawn as well, V falls by
     T C x, and the ties ask for Cᵀ V = z x, so that (z + Cᵀ T C) x = Cᵀ V_open = u. The columns of T C come
     from one sweep whose batch is the ties. What nothing holds moves by W f, so that no current enters that
-    way: F + Wᵀ C x + J f = 0, with J the slope of all loads and admittances, by Newton.
+    way: F + Wᵀ C x + J f = 0, with J the slope of all loads and admittances, by Newton. It stands where it
+    stood and moves by f alone: no current lowers it.
 
     placed : Placed, with joints or something loose
     forest : Forest
@@ -40,6 +41,10 @@ class Ties:
         width = max(len(matrix), joints.z.shape[-1])
         self.matrix = np.broadcast_to(matrix, (width, *matrix.shape[1:])).copy()  # (batch or 1, tie, tie)
         self.matrix[:, diagonal, diagonal] += joints.z.T
+        if placed.loose is not None:
+            self.lift, self.drop, self.apart = held(placed.loose, self.lift, self.drop)
+            self.matrix = self.matrix * 0 + np.moveaxis(gathered(joints, self.drop), -1, 0)
+            self.matrix[:, diagonal, diagonal] += joints.z.T
         self.inverse = self._inverse()
 
     def _inverse(self) -> Complex:
@@ -60,15 +65,15 @@ class Ties:
         """
         loose = self.placed.loose
         if loose is not None:
-            size = (loose.way**2).sum(axis=1)[:, None]
-            _apply(self.lift, (loose.along(before) - loose.along(voltage)) / size, voltage)
+            _apply(self.lift, loose.along(before) - loose.along(voltage), voltage)
         opened = gathered(self.joints, voltage)
         opened[np.abs(opened) < NOISE * gathered(self.both, np.abs(voltage)).real] = 0
         if loose is None or flow is None:
             inverse = np.broadcast_to(self.inverse, (opened.shape[-1], *self.inverse.shape[1:]))
             current = np.einsum("btu,ub->tb", inverse, opened)
         else:
-            current, moved = self._newton(before, opened, flow)
+            apart = np.broadcast_to(self.apart, (flow.shape[-1], *self.apart.shape[1:]))
+            current, moved = self._newton(before, opened, np.einsum("bgf,gb->fb", apart, flow))
             _apply(self.lift, moved, voltage)
         _apply(-self.drop, current, voltage)
         return current
@@ -115,6 +120,8 @@ class Ties:
             self.drop, self.lift = (a.take(points, axis=-1) for a in (self.drop, self.lift))
         if len(self.inverse) > 1:
             self.inverse, self.matrix = self.inverse[points], self.matrix[points]
+        if self.placed.loose is not None and len(self.apart) > 1:
+            self.apart = self.apart[points]
 
 
 def _scale(diagonal: Real) -> Real:
@@ -165,6 +172,21 @@ def responses(placed: Placed, forest: Forest, joints: Joints, loose: Loose | Non
         sweep.inflow.reshape(shape)[loose.place, :, ties + np.arange(ways)] -= loose.way[..., None]
     volts = sweep.forward(np.empty_like(sweep.current)).reshape(shape)
     return -volts[:, :, :ties], volts[:, :, ties:]
+
+
+def held(loose: Loose, lift: Complex, drop: Complex) -> tuple[Complex, Complex, Complex]:
+    """Responses such that each loose way moves by its own lift alone, and no tie current lowers it.
+
+    loose : Loose
+    lift : (live, k, loose, batch) complex, W
+    drop : (live, k, tie current, batch) complex [ohm], T C
+    Returns : lift, drop and Q⁻¹ (batch, loose, loose) with Q = wᵀ W: W Q⁻¹ and T C - W Q⁻¹ wᵀ T C
+    """
+    own = np.einsum("fk,fkgb->bfg", loose.way, lift[loose.place])
+    apart = np.asarray(np.linalg.inv(own), dtype=np.complex128)
+    lift = np.einsum("pkfb,bfg->pkgb", lift, apart)
+    along = np.einsum("fk,fktb->ftb", loose.way, drop[loose.place])
+    return lift, drop - np.einsum("pkfb,ftb->pktb", lift, along), apart
 
 
 def _bare(placed: Placed, count: int) -> Placed:

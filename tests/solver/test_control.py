@@ -3,7 +3,8 @@
 import numpy as np
 import pytest
 from networks import POWER, build
-from wired import ABCN, A, B, C, Layout, N, Unit, balanced
+from wired import ABCN, A, B, Bank, C, Layout, N, Unit, balanced
+from wired_nodal import solution as nodal
 
 from solver import Status, solve
 from solver.control import Regulator, Rest, Reverse, control, dialled
@@ -198,3 +199,24 @@ def test_a_generator_at_its_limit_gives_what_it_has():
 def test_controls_need_trees():
     with pytest.raises(ValueError, match="trouble"):
         control(build(2, [(0, 1), (0, 1)], [(0, 1, 1)]))
+
+
+def test_three_single_phase_regulators_each_hold_their_phase():
+    """One auto-transformer a phase between the same two nodes, each with its own taps."""
+    z = 0.1 + 0.5j
+    units = [Bank(1, 2, [((i, N), (i, N), 11e3 / 3**0.5, 11e3 / 3**0.5, z)]) for i in (A, B, C)]
+    lines = [(0, 1, ABCN, 2 + 3j), (1, 2, (N,), 1e-6), (2, 3, ABCN, 3 + 4j)]
+    loads = [(3, i, N, LOAD * share, VOLTS, POWER) for i, share in ((A, 0.2), (B, 0.7), (C, 0.45))]
+    layout = Layout(4, [(0, balanced(VOLTS))], lines, units, loads)
+    network = layout.network()
+    still = solve(network)
+    known = nodal(layout)
+    for node in (2, 3):
+        for i in range(4):
+            assert still.voltage[node, i, 0] == pytest.approx(known[("v", node, i)], abs=1e-7 * VOLTS)
+    found = control(network, [regulator(transformer=i, conductor=i) for i in range(3)])
+    assert (found.rest == Rest.IN_BAND).all()
+    volts = np.abs(found.solution.voltage[2, :3, 0] - found.solution.voltage[2, N, 0])
+    assert (np.abs(volts / VOLTS - 1) <= 0.00625 * (1 + 1e-9)).all()
+    assert len(set(found.notch[:, 0].tolist())) == 3
+    assert found.solution.closure[0] < 1e-10
