@@ -33,13 +33,21 @@ class Brush(Struct, frozen=True):
         """The element to draw: as the last one stands now where it is still there, else as on the shelf."""
         one = drawing.elements.get(self.last or "")
         if isinstance(one, Branch) and type(one) is type(self.part.element):
-            fresh = {"length_m": self.part.element.length_m} if isinstance(self.part.element, Line) else {}
-            fresh |= {"tap": 0} if isinstance(one, Transformer) else {}
-            return drawing, replace(one, name="", note="", via=(), **fresh)
+            fresh = {"tap": 0} if isinstance(one, Transformer) else {}
+            again: Branch = replace(one, name="", note="", via=(), **fresh)
+            line = self.part.element
+            return drawing, with_length_of(again, line) if isinstance(line, Line) else again
         drawing, made = edits.made_from(drawing, self.part)
         if not isinstance(made, Branch):
             raise EditRefused(f"{self.part.name}: cannot be drawn from node to node, allowed is a branch.")
         return drawing, made
+
+
+def with_length_of(one: Branch, line: Line) -> Branch:
+    """A branch with the length of a shelf line, as unsure as it is there."""
+    name = "length_m"
+    unsure = (*(n for n in one.assumed if n != name), *(n for n in line.assumed if n == name))
+    return replace(one, length_m=line.length_m, assumed=unsure)
 
 
 class Spot(Struct, frozen=True):

@@ -1,4 +1,5 @@
-"""What stands in for a field left blank, and on what basis. Nothing is assumed that is not listed here."""
+"""What stands in for a field left blank, what came with the shelf, and on what basis: nothing else is
+assumed."""
 
 import math
 from bisect import bisect_left
@@ -19,6 +20,7 @@ from app.model.kinds import (
 )
 
 NO_SOURCE = "common practice, no source"
+FROM_SHELF = "as the shelf gives it"
 CABLE_DEGC = 60.0
 OVERHEAD_DEGC = 50.0
 EU = "Regulation (EU) 548/2014 as amended by (EU) 2019/1783, Annex I Table I.1, tier 2"
@@ -60,6 +62,21 @@ def blank(element: Element, nominal_v: float = math.nan) -> tuple[Blank, ...]:
     )
 
 
+def unconfirmed(element: Element) -> tuple[Blank, ...]:
+    """Every figure that came with a built-in part and that nobody has confirmed since."""
+    kind = fields_of(type(element))
+    return tuple(
+        Blank(name, float(given), kind[name].unit, FROM_SHELF)
+        for name in element.assumed
+        if name in kind and isinstance(given := getattr(element, name), int | float)
+    )
+
+
+def figures_of(kind: type[Element]) -> tuple[str, ...]:
+    """The figures that a built-in part brings with it and that the person has to confirm."""
+    return next((names for known, names in _FIGURES.items() if issubclass(kind, known)), ())
+
+
 def _with_unit(put: tuple[float, str], unit: str) -> tuple[float, str, str]:
     return put[0], unit, put[1]
 
@@ -83,6 +100,15 @@ _ASSUMABLE: dict[type[Element], tuple[str, ...]] = {
     Motor: ("rated_v", "limited_current", "limited_power_factor"),
     Capacitor: ("rated_v",),
     Supply: ("xr",),
+}  # fmt: skip
+_FIGURES: dict[type[Element], tuple[str, ...]] = {
+    Supply: ("nominal_v", "held_percent"),
+    Line: ("length_m", "resistance_ohm_per_km", "reactance_ohm_per_km"),
+    Transformer: ("rating_kva", "v1_v", "v2_v", "uk_percent"),
+    Load: ("demand_kva", "power_factor"),
+    Motor: ("rated_kw", "efficiency", "power_factor", "starting_current", "starting_power_factor"),
+    Generator: ("output_kw", "output_kvar"),
+    Capacitor: ("rating_kvar",),
 }  # fmt: skip
 GENERATOR_TAN = math.tan(math.acos(0.9))
 LIMITED = {"soft starter": (3.0, 0.3), "drive": (1.2, 0.95)}  # × rated current, power factor

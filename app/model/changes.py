@@ -67,14 +67,16 @@ def ends(one: Element) -> tuple[str, ...]:
 
 
 def change(drawing: Drawing, id: str, **fields: Any) -> Drawing:
-    """Set fields of one element. Of a load's two demands, setting one clears the other."""
+    """Set fields of one element; what is set is no longer assumed. Of a load's two demands, setting one
+    clears the other."""
     one = element(drawing, id)
     if isinstance(one, Load):
         fields = _one_demand(fields)
     for name in fields:
         if name not in one.__struct_fields__ or name == "kept":
             raise EditRefused(f"{called(id, one)}: there is no field {shown(name)}.")
-    return put(drawing, {id: replace(one, **_as_typed(one, fields))})
+    unsure = fields.pop("assumed", tuple(name for name in one.assumed if name not in fields))
+    return put(drawing, {id: replace(one, **_as_typed(one, fields), assumed=unsure)})
 
 
 def _one_demand(fields: dict[str, Any]) -> dict[str, Any]:

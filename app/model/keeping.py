@@ -10,7 +10,7 @@ from app.model.kinds import AnyElement, Attachment, Branch, Node
 
 def loosened(one: AnyElement) -> AnyElement:
     """An element as a part holds it: its values, without a place, a name or ends."""
-    bare = replace(one, name="", note="", part="", kept={})
+    bare = replace(one, name="", note="", part="", assumed=(), kept={})
     if isinstance(bare, Node):
         return replace(bare, x=0.0, y=0.0, nominal_v=None)
     if isinstance(bare, Branch):

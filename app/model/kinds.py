@@ -12,11 +12,13 @@ Point = tuple[float, float]
 
 
 class Element(Struct, frozen=True, kw_only=True, tag_field="kind"):
-    """What all kinds share. `part` names the part it was made from; `kept` holds file keys we do not know."""
+    """What all kinds share. `part` names the part it was made from; `assumed` the fields whose values came
+    with a built-in part and nobody confirmed; `kept` holds file keys we do not know."""
 
     name: Annotated[str, text("Name", longest=80)] = ""
     note: Annotated[str, text("Note", longest=400)] = ""
     part: str = ""
+    assumed: tuple[str, ...] = ()
     kept: dict[str, Any] = held(default_factory=dict)
 
 

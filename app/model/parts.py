@@ -7,6 +7,7 @@ from typing import Any
 
 from msgspec.structs import replace
 
+from app.model.assumed import figures_of
 from app.model.checks import fault_of_symbol
 from app.model.clipboard import Clip
 from app.model.drawing import Drawing, Part
@@ -54,7 +55,9 @@ def builtin_parts(frequency_hz: float = 50.0) -> tuple[Part, ...]:
         ("Capacitor", Capacitor(node="")),
         ("Switch", Switch(**Unbound)),
     )
-    return tuple(Part(name=name, element=element) for name, element in made)
+    return tuple(
+        Part(name=name, element=replace(element, assumed=figures_of(type(element)))) for name, element in made
+    )
 
 
 def _transformer(american: bool) -> Transformer:

@@ -159,6 +159,9 @@ def element_from(raw: dict[str, Any], id: str, *, loose: bool = False) -> AnyEle
         raw = {**_unbound(made_of), **raw}
     where = f"{id} ({KIND_WORDS[str(kind)]})"
     made: Any = struct_from(made_of, raw, where, frozenset({"id", "kind"}))
+    if made.assumed:
+        known = fields_of(made_of)
+        made = structs.replace(made, assumed=tuple(name for name in made.assumed if name in known))
     words = _fault_of_texts(made) or fault_of_the_rest(made)
     _refuse_if(f"{called(id, made)}: {words}" if words else None)
     if loose and any(ends(made)):

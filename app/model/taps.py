@@ -97,4 +97,5 @@ def turned(t: Transformer) -> Transformer:
         v2_v=t.v1_v,
         vector_group=turned_group(t.vector_group),
         tapped="winding 2" if t.tapped == "winding 1" else "winding 1",
+        assumed=tuple({"v1_v": "v2_v", "v2_v": "v1_v"}.get(name, name) for name in t.assumed),
     )

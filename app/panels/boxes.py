@@ -50,8 +50,9 @@ class Entry(QLineEdit):
         self.setModified(False)
 
     def commit(self) -> None:
-        """Hand over what was typed. It counts as taken, unless `reopen` says otherwise."""
-        if self.busy:
+        """Hand over what was typed, be it the same again. It counts as taken, unless `reopen` says
+        otherwise."""
+        if self.isModified():
             self._before, self._settled = self._settled, self.text()
             self.setModified(False)
             self.committed.emit(self.text())

@@ -93,7 +93,7 @@ class ElementPage(Page):
             else:
                 row.show_value(None, quiet=round_off(blank.value), basis=blank.basis)
             return
-        row.show_value(value, other=other_habit(value, field))
+        row.show_value(value, other=other_habit(value, field), basis=shelf_basis(elements, name))
 
     def _follows(self, element: Element, name: str) -> tuple[str, str]:
         """What stands in a blank box, and on what basis where it is assumed."""
@@ -144,6 +144,11 @@ def nominal(drawing: Drawing, id: str) -> float:
     element = drawing.elements[id]
     level = nominal_levels(drawing).get(element.node) if isinstance(element, Attachment) else None
     return level.volts if level else float("nan")
+
+
+def shelf_basis(elements: Sequence[Element], name: str) -> str:
+    """On what basis a value stands that came with the shelf and was not confirmed; else nothing."""
+    return assumed.FROM_SHELF if any(name in element.assumed for element in elements) else ""
 
 
 def round_off(value: float) -> str:

@@ -102,7 +102,7 @@ class FindingsBar(QWidget):
         self.list.itemSelectionChanged.connect(self._enable_confirm)
         self.fold_title = Words("", "strong")
         self.confirm = QPushButton("Take as given")
-        self.confirm.setToolTip("Write the assumed value into the drawing as if it had been stated")
+        self.confirm.setToolTip("Let the assumed value stand in the drawing as one that was stated")
         self.confirm.clicked.connect(self._confirm)
         self.close_fold = QToolButton()
         self.close_fold.setText("close")

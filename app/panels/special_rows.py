@@ -7,6 +7,7 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QHBoxLayout, QMenu, QToolButton, QWidget
 
 from app.canvas.theme import Theme
+from app.model.assumed import FROM_SHELF
 from app.model.fields import Field
 from app.model.figures import MINUS
 from app.model.kinds import Element, Load, Transformer
@@ -106,4 +107,5 @@ class DemandRow(FieldRow):
         if any(pair != given[0] for pair in given[1:]):
             self.show_value(None, quiet=VARIOUS)
         else:
-            self.show_value(given[0][unit == "kW"])
+            unsure = any({"demand_kva", "demand_kw"} & set(load.assumed) for load in loads)
+            self.show_value(given[0][unit == "kW"], basis=FROM_SHELF if unsure else "")

@@ -48,7 +48,7 @@ def _load(subject: Subject, id: str, load: Load) -> Entry:
     states = [subject.outcome.attachments.at(id, c) for c in range(len(subject.cases))]
     data = subject.identity(id) | {
         "node": text(label(subject.drawing, load.node)),
-        "pf": given(load.power_factor),
+        "pf": subject.value(id, "power_factor"),
         "side": given("leading" if load.leading else "lagging" if load.power_factor < 1 else ""),
         "i_share": subject.value(id, "constant_current_percent"),
         "z_share": subject.value(id, "constant_impedance_percent"),
@@ -56,11 +56,11 @@ def _load(subject: Subject, id: str, load: Load) -> Entry:
         "model": text(model_words(load)),
     }
     if load.demand_kw is not None:
-        data["demand"] = given(load.demand_kw)
+        data["demand"] = subject.value(id, "demand_kw")
         if load.power_factor > 0:
             data["demand_kva"] = Cell(load.demand_kw / load.power_factor, "{demand}/{pf}")
     elif load.demand_kva is not None:
-        data["demand_kva"] = given(load.demand_kva)
+        data["demand_kva"] = subject.value(id, "demand_kva")
         data["demand"] = Cell(load.demand_kva * load.power_factor, "{demand_kva}*{pf}")
     figures = [_served(subject, id, load, s, c) for c, s in enumerate(states)]
     return Entry(id, data, figures, lambda worst: {"state": text("fed") if worst else subject.unfed()})
@@ -128,24 +128,23 @@ def _source(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> 
     }
     figures = [_fed_in(subject, id, hung, s, c) for c, s in enumerate(states)]
     off = text("off") if isinstance(hung, Capacitor) and not hung.connected else subject.unfed()
-    return Entry(
-        id, data | _stated(hung), figures, lambda worst: {"state": text("connected") if worst else off}
-    )
+    data |= _stated(subject, id, hung)
+    return Entry(id, data, figures, lambda worst: {"state": text("connected") if worst else off})
 
 
-def _stated(hung: Supply | Generator | Capacitor) -> Cells:
+def _stated(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> Cells:
     if isinstance(hung, Supply):
         angle = f", {hung.angle_deg:g}°" if hung.angle_deg else ""
         words = f"{hung.wires}, held at {hung.held_percent:g} %{angle}"
-        return {"rating": given(hung.nominal_v), "unit": text("V"), "rest": given(words)}
+        return {"rating": subject.value(id, "nominal_v"), "unit": text("V"), "rest": given(words)}
     if isinstance(hung, Generator):
         way = "feeds in" if hung.output_kvar >= 0 else "absorbs"
         words = f"fixed output, {way} {abs(hung.output_kvar):g} kvar"
         if hung.hold_percent is not None:
             words = f"holds {hung.hold_percent:g} % of nominal"
-        return {"rating": given(hung.output_kw), "unit": text("kW"), "rest": given(words)}
+        return {"rating": subject.value(id, "output_kw"), "unit": text("kW"), "rest": given(words)}
     words = f"at {hung.rated_v:g} V" if hung.rated_v is not None else "at nominal voltage, assumed"
-    return {"rating": given(hung.rating_kvar), "unit": text("kvar"), "rest": given(words)}
+    return {"rating": subject.value(id, "rating_kvar"), "unit": text("kvar"), "rest": given(words)}
 
 
 def _fed_in(

@@ -19,7 +19,7 @@ UNITS = (
 )
 KINDS_OF_CELL = (
     ("Stated on the drawing", Origin.GIVEN, "an input"),
-    ("Assumed", Origin.ASSUMED, "an input that was left blank; confirm it"),
+    ("Assumed", Origin.ASSUMED, "an input left blank, or as the shelf gave it; confirm it"),
     ("Solved", Origin.SOLVED, "a result, or a formula over other cells that gives the same result"),
 )
 

@@ -47,9 +47,9 @@ def _motor(subject: Subject, id: str, motor: Motor) -> Entry:
     states = [subject.outcome.attachments.at(id, c) for c in range(len(subject.cases))]
     data = subject.identity(id) | {
         "node": text(label(subject.drawing, motor.node)),
-        "out": given(motor.rated_kw),
-        "efficiency": given(motor.efficiency),
-        "pf": given(motor.power_factor),
+        "out": subject.value(id, "rated_kw"),
+        "efficiency": subject.value(id, "efficiency"),
+        "pf": subject.value(id, "power_factor"),
         "drawn": given(motor.state),
     }
     figures = [_drawn(subject, motor, s, c) for c, s in enumerate(states)]
@@ -115,10 +115,8 @@ def _start(subject: Subject, id: str, row: int) -> Entry:
     straight = motor.starter == "direct"
     data = subject.identity(id) | {
         "starter": given(motor.starter),
-        "times": given(motor.starting_current) if straight else subject.value(id, "limited_current"),
-        "factor": given(motor.starting_power_factor)
-        if straight
-        else subject.value(id, "limited_power_factor"),
+        "times": subject.value(id, "starting_current" if straight else "limited_current"),
+        "factor": subject.value(id, "starting_power_factor" if straight else "limited_power_factor"),
         "rated_v": subject.value(id, "rated_v"),
         "board": text(label(subject.drawing, table.boards[row])),
         "supply": text(label(subject.drawing, table.supplies[row])),

@@ -60,7 +60,9 @@ class Subject:
         """What the drawing states of a field, else what was assumed for it, else blank."""
         stated = getattr(self.drawing.elements[id], field)
         if stated is not None:
-            return given(float(stated) if not isinstance(stated, str | bool) else stated)
+            origin = Origin.ASSUMED if field in self.drawing.elements[id].assumed else Origin.GIVEN
+            as_is = isinstance(stated, str | bool)
+            return replace(given(stated if as_is else float(stated)), origin=origin)
         put = self._assumed.get((id, field))
         return BLANK if put is None else replace(given(float(put.value)), origin=Origin.ASSUMED)
 

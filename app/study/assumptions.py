@@ -1,4 +1,4 @@
-"""The ledger of assumed values: every field left blank, and every level nobody stated."""
+"""The ledger of assumed values: fields left blank, figures of the shelf, and levels nobody stated."""
 
 from itertools import chain
 
@@ -36,5 +36,5 @@ def assumptions_of(layout: Layout, zones: Zones) -> tuple[Assumption, ...]:
 
 
 def _assumed(id: str, element: Element, volts: float) -> Made:
-    blanks = assumed.blank(element, volts)
-    return tuple(Assumption(id, b.field, b.value, b.unit, b.basis) for b in blanks)
+    unsure = (*assumed.unconfirmed(element), *assumed.blank(element, volts))
+    return tuple(Assumption(id, b.field, b.value, b.unit, b.basis) for b in unsure)

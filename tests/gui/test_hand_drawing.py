@@ -265,3 +265,17 @@ def test_a_branch_leaves_its_node_the_way_it_was_pulled(desk):
     desk.hover(24, 0)
     desk.drag((24 - 1.3, 0), (20, 6), (18, 8))
     assert desk.drawing.elements["C2"].via == ()
+
+
+def test_a_typed_length_is_confirmed_and_the_next_one_is_not(desk):
+    desk.hover(24, 0)
+    desk.take(24, 1.3)
+    desk.pull(24, 8)
+    desk.type("60")
+    desk.let_go(24, 8)
+    desk.hover(24, 8)
+    desk.drag((24, 9.3), (24, 16))
+    first, second = (desk.drawing.elements[i] for i in ("C2", "C3"))
+    assert (first.length_m, "length_m" in first.assumed) == (60.0, False)
+    assert (second.length_m, "length_m" in second.assumed) == (100.0, True)
+    assert "resistance_ohm_per_km" in first.assumed

@@ -282,3 +282,17 @@ def test_focus_field_points_at_one_field(set_up):
     set_up.card.focus_field("T2", "no_load_current_percent")
     row = set_up.card._page.rows["no_load_current_percent"]
     assert row.editor.hasFocus()
+
+
+def test_typing_the_same_value_confirms_a_figure_of_the_shelf(qtbot):
+    base = fernhollow(ONE)
+    set_up = stage(qtbot, edits.change(base, "C1", assumed=("length_m",)))
+    row = page(set_up, "C1").rows["length_m"]
+    assert "as the shelf gives it" in row.dot.accessibleName()
+    QTest.mouseClick(row.editor, Qt.MouseButton.LeftButton)
+    QTest.keyClick(row.editor, Qt.Key.Key_Return)
+    assert set_up.drawing.elements["C1"].assumed == ("length_m",)  # nothing was typed
+    type_into(row, "1150")
+    assert set_up.drawing.elements["C1"].assumed == ()
+    assert row.dot.isHidden()
+    set_up.solving.stop()

@@ -175,3 +175,22 @@ def test_everything_paints_in_both_looks_and_small(qtbot, look):
     assert (ground.lightness() < 128) == (look == "light")
     assert isinstance(made.drawing.limits, Limits)
     made.solving.stop()
+
+
+def test_a_figure_of_the_shelf_is_confirmed_by_taking_it_as_given(qtbot):
+    unsure = Load(node="B2", name="House", dx=4, dy=-1, assumed=("demand_kva",))
+    set_up = stage(qtbot, fernhollow(ONE, L2=unsure))
+    bar = set_up.findings
+    QTest.mouseClick(bar.assumed, Qt.MouseButton.LeftButton)
+    texts = [bar.list.item(row).text() for row in range(bar.list.count())]
+    row = next(n for n, text in enumerate(texts) if text.startswith("House: Demand is taken as 10 kVA"))
+    assert "as the shelf gives it" in texts[row]
+    click_item(bar.list, row)
+    assert not set_up.card._page.rows["demand_kva"].dot.isHidden()
+    QTest.mouseClick(bar.confirm, Qt.MouseButton.LeftButton)
+    set_up.solving.settle()
+    assert set_up.drawing.elements["L2"].assumed == ()
+    assert set_up.drawing.elements["L2"].demand_kva == 10.0
+    assert bar.list.count() == len(texts) - 1
+    assert set_up.card._page.rows["demand_kva"].dot.isHidden()
+    set_up.solving.stop()

@@ -9,6 +9,7 @@ import openpyxl
 import pytest
 from sheet_layouts import HOSTILE, NIGHT, PEAK, blocked, overloaded, pair, three_cables, two_wire
 
+from app.model import edits
 from app.model.drawing import Drawing, Limits, Project
 from app.model.kinds import Busbar, Load, Supply
 from app.sheet import write
@@ -247,3 +248,10 @@ def test_an_empty_drawing_still_has_a_sheet(workbook: Reader) -> None:
 def test_no_cell_is_an_error(workbook: Reader) -> None:
     for drawing in (pair(), pair(PEAK, NIGHT), two_wire(), blocked()):
         assert not [w for w in words(workbook(drawing)) if w.startswith("#") or w == "nan"]
+
+
+def test_a_figure_of_the_shelf_is_marked_where_it_stands(workbook: Reader) -> None:
+    book = workbook(edits.change(pair(), "C1", assumed=("length_m",)))
+    assert cell(book["Cable data"], "C1", "Length m").font.i
+    assert not cell(book["Cable data"], "C2", "Length m").font.i
+    assert "as the shelf gives it" in words(book)

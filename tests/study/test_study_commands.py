@@ -108,7 +108,7 @@ def test_the_text_is_aligned_and_says_its_units(tmp_path, capsys):
     assert lines[head + 1][end - 1].isdigit()
     assert "closure" in text
     assert all(caution in text for caution in CAUTIONS)
-    assert text.index("Cautions") > text.index("Assumed, because left blank") > text.index("Findings")
+    assert text.index("Cautions") > text.index("Assumed, to be confirmed") > text.index("Findings")
     assert "C1: capacitance 0 µF/km (neglected)" in text
 
 
