@@ -4,7 +4,7 @@ from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.figures import percent, plain
 from app.model.kinds import Generator, Regulator, Transformer
-from app.study.changers import Moved
+from app.study.changers import Moved, holders
 from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.results import Tables
@@ -72,6 +72,25 @@ def stop_findings(
         cases = [c for c, holds in enumerate(moved.holds[number]) if not holds]
         if cases:
             found.append(_limited(drawing, layout, tables, row, cases[0]))
+    return found
+
+
+def barred_findings(drawing: Drawing, layout: Layout) -> list[Finding]:
+    """Generators that cannot hold the volts of their node, as something else does.
+
+    drawing : the drawing, for names
+    layout : its graph
+
+    Returns : list of Finding
+    """
+    found = []
+    for row, first in holders(layout)[1]:
+        id, other = layout.attachment_ids[row], layout.attachment_ids[first]
+        words = (
+            f"{tell(drawing, id)} cannot hold the volts of its node, as {tell(drawing, other)} holds them "
+            "already with no impedance between: it runs at its fixed reactive output."
+        )
+        found.append(Finding("held twice", Verdict.NEAR, (id, other), words))
     return found
 
 

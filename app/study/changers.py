@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Branch, Generator, Regulator, Transformer
-from app.study.layout import Layout, arrays_of
+from app.study.layout import Layout, arrays_of, is_bare
 from app.study.rows import Rows
 from app.study.zones import Zones
 from solver import Solution, Trouble, grow, solve
@@ -68,7 +68,7 @@ def settled(
     changers = tuple(
         int(b) for b in rows.units if b != fixed and is_changer(layout.branches[b]) and live[layout.start[b]]
     )
-    held = tuple(int(a) for a in rows.loads if _holds(layout, int(a)) and live[layout.at[a]])
+    held = tuple(holders(layout)[0])
     if isinstance(layout.forest, Trouble) or not changers and not held:
         return rows, solve(network, forest=layout.forest), None
     found = controls.control(
@@ -79,6 +79,44 @@ def settled(
     notches = dict(zip(changers, found.notch, strict=True))
     rows = replace(rows, network=found.solution.network, notches=notches)
     return rows, found.solution, Moved(changers, found.rest, held, found.held)
+
+
+def holders(layout: Layout) -> tuple[list[int], list[tuple[int, int]]]:
+    """The generators that hold volts, and those that cannot, as another holds them through no impedance.
+
+    layout : the graph
+
+    Returns : attachment rows that hold; and pairs of one that cannot and the supply or generator that does
+    """
+    hung = [i for i in range(len(layout.attachments)) if _holds(layout, i) and layout.live[layout.at[i]]]
+    if not hung:
+        return [], []
+    group = _joined(layout)
+    taken = {group[layout.at[s]]: s for s in reversed(layout.supplies)}
+    held, barred = [], []
+    for row in hung:
+        first = taken.setdefault(group[layout.at[row]], row)
+        if first == row:
+            held.append(row)
+        else:
+            barred.append((row, first))
+    return held, barred
+
+
+def _joined(layout: Layout) -> list[int]:
+    """A number for each node, the same where no impedance is between."""
+    group = list(range(len(layout.nodes)))
+
+    def root(node: int) -> int:
+        while group[node] != node:
+            node = group[node]
+        return node
+
+    for row, branch in enumerate(layout.branches):
+        stiff = is_bare(branch) or isinstance(branch, Transformer) and branch.uk_percent == 0
+        if stiff and getattr(branch, "closed", True):
+            group[root(layout.start[row])] = root(layout.end[row])
+    return [root(node) for node in range(len(group))]
 
 
 def _holds(layout: Layout, row: int) -> bool:

@@ -4,7 +4,7 @@ from time import perf_counter
 
 from app.model.drawing import Drawing
 from app.study.assumptions import assumptions_of
-from app.study.changer_findings import hunting_findings, stop_findings
+from app.study.changer_findings import barred_findings, hunting_findings, stop_findings
 from app.study.changers import Moved, settled
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
@@ -77,6 +77,7 @@ def _outcome(
     if status is Status.SOLVED:
         found = found + judge(drawing, tables.nodes, tables.branches, cases)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
+        found += barred_findings(drawing, layout)
         if moved is not None and rows is not None:
             found += stop_findings(drawing, layout, rows, tables, moved)
         if layout.rings and rows is not None:

@@ -17,7 +17,9 @@ from app.model.kinds import (
     Generator,
     Joint,
     Load,
+    Motor,
     OverheadLine,
+    Regulator,
     Supply,
     Switch,
     Transformer,
@@ -41,7 +43,7 @@ def anything(seed):
         ends = dict(zip(("start", "end"), (f"N{dice.randrange(count)}" for _ in "12"), strict=True))
         if ends["start"] == ends["end"]:
             continue
-        elements[f"X{i}"] = dice.choice([_line, _line, _switch, _transformer])(dice, ends)
+        elements[f"X{i}"] = dice.choice([_line, _line, _switch, _transformer, _moving])(dice, ends)
     for i in range(dice.randint(0, 9)):
         elements[f"Y{i}"] = _attachment(dice, f"N{dice.randrange(count)}")
     for i in range(dice.choice([0, 1, 1, 1, 2])):
@@ -51,7 +53,8 @@ def anything(seed):
             wires=dice.choice(["three-phase", "three-phase", "two-wire"]),
         )  # fmt: skip
     cases = [
-        Case(name=f"case {i}", load_percent=dice.choice([0.0, 100.0])) for i in range(dice.randint(1, 3))
+        Case(name=f"case {i}", load_percent=dice.choice([0.0, 100.0]), motor_percent=dice.choice([None, 0.0]))
+        for i in range(dice.randint(1, 3))
     ]
     return msgspec.structs.replace(edits.put(Drawing(), elements), cases=tuple(cases))
 
@@ -76,9 +79,30 @@ def _transformer(dice, ends):
     )  # fmt: skip
 
 
+def _moving(dice, ends):
+    """A regulator, or a transformer whose tap changer steps by itself."""
+    band = dice.choice([None, None, 0.1, 3.0])
+    if dice.random() < 0.6:
+        mode = dice.choice(["forward", "with the power", "idle in reverse"])
+        return Regulator(**ends, mode=mode, bandwidth_percent=band, rating_a=dice.choice([None, 100.0]))
+    side, drop = dice.choice(["winding 1", "winding 2"]), dice.choice([None, 0.1])
+    unit = _transformer(dice, ends)
+    return msgspec.structs.replace(unit, regulates=side, bandwidth_percent=band, drop_r_ohm=drop)
+
+
 def _attachment(dice, node):
     return dice.choice(
         [
+            Motor(
+                node=node,
+                rated_kw=dice.choice([4.0, 1e6]),
+                rated_v=dice.choice([None, 400.0, 1.0]),
+                state=dice.choice(["running", "starting", "off"]),
+                starter=dice.choice(["direct", "soft starter", "drive"]),
+            ),  # fmt: skip
+            Generator(
+                node=node, output_kw=dice.choice([0.0, 30.0]), hold_percent=dice.choice([100.0, 150.0])
+            ),
             Load(node=node, demand_kva=dice.choice([0.0, 5.0, 1e6]), power_factor=dice.choice([0.0, 0.9])),
             Load(node=node, demand_kva=None, demand_kw=0.0, power_factor=0.0),
             Load(node=node, constant_current_percent=60.0, constant_impedance_percent=40.0),

@@ -198,3 +198,17 @@ def test_a_regulator_in_a_ring_is_solved_and_two_side_by_side_are_refused():
     twice = run(changed(ring, V2=Regulator(start="B2", end="B3")))
     assert twice.status is Status.INVALID
     assert any("V1 and V2 form a loop without any impedance" in f.sentence for f in twice.findings)
+
+
+def test_a_generator_cannot_hold_what_a_supply_or_another_holds():
+    from app.model.kinds import Switch
+
+    holding = Generator(node="B3", output_kw=5.0, hold_percent=100.0)
+    base = changed(lane(cases=(Case(),)), V1=Switch(start="B2", end="B3"), G1=holding)
+    assert not told(run(base), "held twice")
+    twice = run(changed(base, G2=replace(holding, node="B2", output_kvar=2.0)))
+    (found,) = told(twice, "held twice")
+    assert found.ids == ("G2", "G1")
+    assert twice.attachments.at("G2").kvar == pytest.approx(2.0)
+    (found,) = told(run(changed(base, G1=replace(holding, node="B1"))), "held twice")
+    assert found.ids == ("G1", "S1")
