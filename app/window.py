@@ -100,7 +100,6 @@ class Window(QMainWindow):
         self.findings.sought.connect(self.view.show_selection)
         self.findings.field_sought.connect(self.card.focus_field)
         self.view.refused.connect(self.tell_refusal)
-        self.session.refused.connect(lambda sentence: self.tell_refusal(sentence, None))
         self.session.history.cleanChanged.connect(lambda _clean: self._mark())
         self.session.replaced.connect(self._opened)
         self.document.saved.connect(self._mark)
@@ -121,11 +120,9 @@ class Window(QMainWindow):
         self._mark()
         QTimer.singleShot(0, self.view.fit)
 
-    def tell_refusal(self, sentence: str, at: QPointF | None) -> None:
+    def tell_refusal(self, sentence: str, at: QPointF) -> None:
         """Show why an edit was refused, where the hand is."""
-        where = (
-            self.view.mapToGlobal(self.view.mapFromScene(at)) if at is not None else self.view.cursor().pos()
-        )
+        where = self.view.mapToGlobal(self.view.mapFromScene(at))
         QToolTip.showText(where, sentence, self.view, self.view.rect(), REFUSAL_SHOWN_MS)
         self.findings.tell(sentence)
 

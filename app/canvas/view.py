@@ -27,7 +27,7 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.model import edits
 from app.model.drawing import Drawing, Part, label
-from app.model.edits import Change, EditRefused
+from app.model.edits import Change
 from app.model.kinds import KIND_WORDS, Attachment, Branch, Node, Transformer, kind_of
 from app.model.taps import words
 
@@ -77,12 +77,10 @@ class BoardView(EventView):
         at: QPointF | None = None,
     ) -> bool:
         """Make an edit; a refusal is told at a place on the paper. The text may depend on what came of it."""
-        try:
-            after = change(self.drawing)
-        except EditRefused as refusal:
-            self.refused.emit(str(refusal), at if at is not None else self.hand())
-            return False
-        return self.session.edit(text if isinstance(text, str) else text(after), lambda _: after, gesture)
+        refusal = self.session.edit(text, change, gesture)
+        if refusal:
+            self.refused.emit(refusal, at if at is not None else self.hand())
+        return not refusal
 
     def use(self, tool: Tool) -> None:
         """Take another tool into the hand."""

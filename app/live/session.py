@@ -15,7 +15,6 @@ class Session(QObject):
     """Owns the drawing. `edit` is the only door through which it changes."""
 
     changed = Signal(object)  # Change
-    refused = Signal(str)
     replaced = Signal()  # another drawing was opened
 
     def __init__(self, drawing: Drawing | None = None, parent: QObject | None = None) -> None:
@@ -43,8 +42,11 @@ class Session(QObject):
         self._gestures += 1
         return self._gestures
 
-    def edit(self, text: str, change: Callable[[Drawing], Drawing], gesture: int = 0) -> bool:
-        """Apply a pure edit. A refusal is told through `refused` and leaves all as it was.
+    def edit(
+        self, text: str | Callable[[Drawing], str], change: Callable[[Drawing], Drawing], gesture: int = 0
+    ) -> str:
+        """Apply a pure edit; answers the sentence of a refusal, which leaves all as it was, or nothing.
+        `text` names the step, or makes its name from the changed drawing.
 
         The edit runs before anything is pushed: an error inside `redo` would stay on the stack.
         """
@@ -52,12 +54,11 @@ class Session(QObject):
         try:
             after = change(before)
         except EditRefused as refusal:
-            self.refused.emit(str(refusal))
-            return False
-        if after == before:
-            return True
-        self.history.push(_Edit(self, before, after, text, gesture))
-        return True
+            return str(refusal)
+        if after != before:
+            said = text if isinstance(text, str) else text(after)
+            self.history.push(_Edit(self, before, after, said, gesture))
+        return ""
 
     def _put(self, drawing: Drawing) -> None:
         change: Change = diff(self._drawing, drawing)

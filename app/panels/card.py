@@ -13,7 +13,6 @@ from app.model import edits
 from app.model.drawing import Project
 from app.model.fields import fields_of
 from app.model.kinds import Transformer, kind_of
-from app.panels.attempt import attempt
 from app.panels.card_head import SYMBOL_SIZE, CardHead
 from app.panels.element_page import ElementPage
 from app.panels.element_words import step_text, subject, where
@@ -237,10 +236,10 @@ class Card(QScrollArea):
         if not ids:
             field = fields_of(Project)["title"]
             text = step_text(field, name.strip(), "the drawing")
-            refusal = attempt(self._session, text, lambda d: edits.set_project(d, title=name.strip()))
+            refusal = self._session.edit(text, lambda d: edits.set_project(d, title=name.strip()))
         else:
             text = f"Name of {ids[0]} to {name.strip()}" if name.strip() else f"Name of {ids[0]} cleared"
-            refusal = attempt(self._session, text, lambda d: edits.rename(d, ids[0], name))
+            refusal = self._session.edit(text, lambda d: edits.rename(d, ids[0], name))
         self.head.refuse(refusal)
         if not refusal:
             self._show_head()

@@ -11,7 +11,6 @@ from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
 from app.model.levels import nominal_levels
-from app.panels.attempt import attempt
 from app.panels.element_words import step_text, subject
 from app.panels.field_row import VARIOUS, FieldRow, written
 from app.panels.page import Page
@@ -117,7 +116,7 @@ class ElementPage(Page):
             about = fields_of(self.kind)["demand_kw"] if _in_kw(field, element) else field
             return step_text(about, getattr(element, about.name), subject(after, ids))
 
-        return attempt(self._session, name, change)
+        return self._session.edit(name, change)
 
     def _step(self, notches: int) -> None:
         """One notch up or down on every transformer shown."""
@@ -136,7 +135,7 @@ class ElementPage(Page):
             assert isinstance(one, Transformer)
             return f"Tap of {subject(after, ids)} to {taps.percent_words(one, one.tap)}"
 
-        self.rows["tap"].refuse(attempt(self._session, name, change))
+        self.rows["tap"].refuse(self._session.edit(name, change))
 
 
 def nominal(drawing: Drawing, id: str) -> float:

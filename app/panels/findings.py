@@ -19,7 +19,6 @@ from app.live.solving import Solving
 from app.model import edits
 from app.model.drawing import label
 from app.model.fields import fields_of
-from app.panels.attempt import attempt
 from app.panels.findings_words import Line, assumption_words, count_words, line, ordered
 from app.panels.style import play
 from app.panels.verdicts import Mark, colour_of, icon
@@ -221,6 +220,6 @@ class FindingsBar(QWidget):
             return
         name = fields_of(type(element))[one.field].label
         text = f"{name} of {label(self._session.drawing, one.id)} taken as given"
-        refusal = attempt(self._session, text, lambda d: edits.change(d, one.id, **{one.field: one.value}))
+        refusal = self._session.edit(text, lambda d: edits.change(d, one.id, **{one.field: one.value}))
         if refusal:
             self.tell(refusal)

@@ -13,7 +13,6 @@ from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, kind_of
 from app.model.typing_in import value_of
 from app.model.units import UnitError
-from app.panels.attempt import attempt
 from app.panels.element_words import many, step_text
 from app.panels.field_row import FieldRow
 from app.panels.page import Page
@@ -64,8 +63,7 @@ class ProjectPage(Page):
                 value = value_of(field, text.strip())
             except UnitError as error:
                 return f"{field.label}: {error}"
-            return attempt(
-                self._session,
+            return self._session.edit(
                 step_text(field, value, "the drawing"),
                 lambda drawing: setter(drawing, **{field.name: value}),
             )

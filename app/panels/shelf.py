@@ -17,7 +17,6 @@ from app.model.drawing import Drawing, Part, Symbol, label
 from app.model.edits import Change
 from app.model.kinds import KIND_WORDS, LETTERS, kind_of
 from app.model.parts import builtin_parts
-from app.panels.attempt import attempt
 from app.panels.own_parts import OwnParts
 from app.panels.shelf_dialogs import ShelfDialogs
 from app.panels.style import play
@@ -167,7 +166,7 @@ class Shelf(QScrollArea):
         if not name:
             return
         text = f"{label(self._session.drawing, id)} kept as {name}"
-        refusal = attempt(self._session, text, lambda drawing: edits.keep_part(drawing, id, name))
+        refusal = self._session.edit(text, lambda drawing: edits.keep_part(drawing, id, name))
         if refusal:
             self._tell(refusal)
             return
@@ -240,7 +239,7 @@ class Shelf(QScrollArea):
         """The drawing carries its parts: what changes on the shelf changes in it too, and can be undone."""
         ids = [i for i, other in self._session.drawing.parts.items() if other.name == part.name]
         if ids:
-            refusal = attempt(self._session, text, lambda drawing: reduce(change, ids, drawing))
+            refusal = self._session.edit(text, lambda drawing: reduce(change, ids, drawing))
             if refusal:
                 self._tell(refusal)
 

@@ -43,7 +43,7 @@ class Bench:
         self.board = Board(self.session, self.solving, self.attention, self.theme)
 
     def edit(self, change) -> None:
-        assert self.session.edit("edit", change)
+        assert self.session.edit("edit", change) == ""
         self.solving.settle_solve()
 
     def solve(self, **given) -> None:

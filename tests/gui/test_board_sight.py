@@ -49,7 +49,7 @@ class Sight:
         self.solving.settle()
 
     def edit(self, change) -> None:
-        assert self.session.edit("edit", change)
+        assert self.session.edit("edit", change) == ""
         self.solving.settle_solve()
 
     def texts(self) -> dict[str, tuple[str, ...]]:

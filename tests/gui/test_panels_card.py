@@ -263,13 +263,6 @@ def test_nothing_selected_shows_the_project(set_up):
     )
 
 
-def test_a_refused_edit_is_told_in_place_only(set_up, qtbot):
-    told = []
-    set_up.session.refused.connect(told.append)
-    type_into(page(set_up, "C1").rows["length_m"], "-5")
-    assert told == []
-
-
 def test_removing_what_the_card_shows_turns_it_to_the_project(set_up):
     page(set_up, "C1")
     set_up.session.edit("Delete", lambda d: edits.remove(d, ["C1"]))

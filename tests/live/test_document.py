@@ -24,7 +24,7 @@ class Desk:
         self.document = Document(self.session, recovery_folder=folder)
 
     def draw(self, x: float = 0.0) -> None:
-        assert self.session.edit("Place joint", lambda d: edits.drop(d, Joint(), x, 0.0))
+        assert self.session.edit("Place joint", lambda d: edits.drop(d, Joint(), x, 0.0)) == ""
 
     @property
     def count(self) -> int:

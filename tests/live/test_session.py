@@ -74,19 +74,22 @@ def test_a_gesture_back_at_the_saved_place_is_clean_only_where_it_is(session):
     assert not session.history.isClean()
 
 
-def test_a_refusal_pushes_nothing_and_is_told(session, qtbot):
+def test_a_refusal_pushes_nothing_and_is_answered(session):
     def refuse(drawing):
         raise EditRefused("T1: Tap is 9, allowed is −2 to +2.")
 
-    with qtbot.waitSignal(session.refused) as told:
-        assert session.edit("Tap", refuse) is False
-    assert told.args == ["T1: Tap is 9, allowed is −2 to +2."]
+    assert session.edit("Tap", refuse) == "T1: Tap is 9, allowed is −2 to +2."
     assert session.history.count() == 0
 
 
 def test_an_edit_that_changes_nothing_pushes_nothing(session):
-    assert tap(session, 0) is True
+    assert tap(session, 0) == ""
     assert session.history.count() == 0
+
+
+def test_a_step_may_be_named_by_what_came_of_it(session):
+    session.edit(lambda after: f"{len(after.elements)} left", lambda d: edits.remove(d, {"T1"}))
+    assert session.history.undoText() == "2 left"
 
 
 def test_a_new_drawing_has_no_history(session, qtbot):
