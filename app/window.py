@@ -44,7 +44,7 @@ class Window(QMainWindow):
         self.session = Session(parent=self)
         self.document = Document(self.session, self, recovery_folder=recovery_folder)
         self.solving = Solving(self.session, parent=self)
-        self.attention = Attention(self)
+        self.attention = Attention(self.session, self)
         self.theme = Theme(self)
         self.theme.wear(self.preferences.theme, self.preferences.symbols)
         self._make_parts()

@@ -4,16 +4,21 @@ from collections.abc import Iterable
 
 from PySide6.QtCore import QObject, Signal
 
+from app.live.session import Session
+
 
 class Attention(QObject):
-    """Selection, hover and the case shown."""
+    """Selection, hover and the case shown, which is one that the drawing of the session has."""
 
     selected = Signal(object)  # frozenset of ids
     hovered = Signal(str)  # id, or "" for none
     case_shown = Signal(int)
 
-    def __init__(self, parent: QObject | None = None) -> None:
+    def __init__(self, session: Session | None = None, parent: QObject | None = None) -> None:
         super().__init__(parent)
+        if session is not None:
+            session.changed.connect(lambda _change: self._keep_to(len(session.drawing.cases)))
+            session.replaced.connect(lambda: self.show_case(0))
         self.selection: frozenset[str] = frozenset()
         self.hover = ""
         self.case = 0
@@ -36,3 +41,6 @@ class Attention(QObject):
         if case != self.case:
             self.case = case
             self.case_shown.emit(case)
+
+    def _keep_to(self, cases: int) -> None:
+        self.show_case(min(self.case, cases - 1))

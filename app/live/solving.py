@@ -83,6 +83,12 @@ class Solving(QObject):
         self.destroyed.connect(self._lane.close)
         self._ask()
 
+    @property
+    def figures(self) -> Outcome | None:
+        """The outcome, where it is solved and so has figures."""
+        solved = self.outcome is not None and self.outcome.status is Status.SOLVED
+        return self.outcome if solved else None
+
     def begin_drag(self) -> None:
         """Remember the figures as they stand, for the change shown while dragging."""
         self.settle_solve()

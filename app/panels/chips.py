@@ -107,7 +107,7 @@ class CaseChips(QWidget):
         names = [case.name for case in self._session.drawing.cases]
         while len(self.chips) < len(names):
             self._add(len(self.chips))
-        shown = min(self._attention.case, len(names) - 1)
+        shown = self._attention.case
         for k, chip in enumerate(self.chips):
             if k < len(names):
                 chip.say(names[k], self._verdict(k))

@@ -13,7 +13,6 @@ from app.model.figures import change, loss, power
 from app.panels.chips import CaseChips
 from app.panels.style import play
 from app.panels.words import LEFT, Rule, Words
-from solver.status import Status
 
 HEIGHT = 50
 WORD_GAP, GROUP_GAP = 7, 20
@@ -112,8 +111,8 @@ class Totals(QWidget):
 
     def figures(self) -> list[tuple[str, str, str]]:
         """Caption, figure and change of each total."""
-        outcome, before = self._solving.outcome, self._solving.reference
-        if outcome is None or outcome.status is not Status.SOLVED:
+        outcome, before = self._solving.figures, self._solving.reference
+        if outcome is None:
             return []
         case = min(self._attention.case, len(outcome.cases) - 1)
         made = []

@@ -46,7 +46,7 @@ class ProjectPage(Page):
     def refresh(self) -> None:
         """Show the values as they stand."""
         drawing = self._session.drawing
-        case = min(self._attention.case, len(drawing.cases) - 1)
+        case = self._attention.case
         holders = {"project": drawing.project, "limits": drawing.limits, "case": drawing.cases[case]}
         for name, row in self.rows.items():
             holder, _, field = name.rpartition(".")
@@ -71,7 +71,7 @@ class ProjectPage(Page):
         return take
 
     def _set_case(self, drawing: Drawing, **fields: Any) -> Drawing:
-        return edits.set_case(drawing, min(self._attention.case, len(drawing.cases) - 1), **fields)
+        return edits.set_case(drawing, self._attention.case, **fields)
 
 
 def _set_frequency(drawing: Drawing, frequency_hz: float) -> Drawing:

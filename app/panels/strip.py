@@ -22,7 +22,6 @@ from app.panels.strip_paint import Curve, Shown, paint_strip
 from app.panels.strip_tap import TapDrag
 from app.panels.words import LEFT
 from app.study.outcome import Outcome
-from solver.status import Status
 
 HEAD = 34.0
 FOOT = 42.0
@@ -72,8 +71,7 @@ class VoltageStrip(QWidget):
     # -- what is shown --------------------------------------------------------------------------
     @property
     def _outcome(self) -> Outcome | None:
-        outcome = self._solving.outcome
-        return outcome if outcome is not None and outcome.status is Status.SOLVED else None
+        return self._solving.figures
 
     @property
     def case(self) -> int:

@@ -14,7 +14,6 @@ from app.panels.tape_cut import Cut, Piece, cut
 from app.panels.tape_paint import BAR_TOP, HEIGHT, MARGIN, Shown, paint_tape
 from app.panels.words import plain_tip
 from app.study.outcome import Outcome
-from solver.status import Status
 
 
 class LossTape(QWidget):
@@ -55,8 +54,7 @@ class LossTape(QWidget):
     # -- what is shown --------------------------------------------------------------------------
     @property
     def _outcome(self) -> Outcome | None:
-        outcome = self._solving.outcome
-        return outcome if outcome is not None and outcome.status is Status.SOLVED else None
+        return self._solving.figures
 
     @property
     def _case(self) -> int:

@@ -54,7 +54,7 @@ class Desk:
     def __init__(self, drawing: Drawing) -> None:
         self.session = Session(drawing)
         self.solving = Solving(self.session)
-        self.attention = Attention()
+        self.attention = Attention(self.session)
         self.theme = Theme()
         self.theme.wear("light")
         self.board = Board(self.session, self.solving, self.attention, self.theme)

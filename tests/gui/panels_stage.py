@@ -77,7 +77,7 @@ def stage(qtbot, drawing: Drawing, size: tuple[int, int] = (1200, 760), look: st
     """The panels around an empty middle, solved and shown."""
     session, theme = Session(drawing), Theme()
     theme.wear(look)
-    solving, attention = Solving(session), Attention()
+    solving, attention = Solving(session), Attention(session)
     window = QWidget()
     shared = (session, solving, attention, theme)
     made = Stage(
