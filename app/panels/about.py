@@ -12,14 +12,16 @@ from PySide6.QtWidgets import (
 )
 
 from app.canvas.view import SHORTCUTS
+from app.panels.dialogs import centre
+from app.panels.style import play
 from app.study.cautions import CAUTIONS
 
 
-def _plain(text: str, name: str = "") -> QLabel:
+def _plain(text: str, role: str = "") -> QLabel:
     label = QLabel(text)
     label.setTextFormat(Qt.TextFormat.PlainText)
     label.setWordWrap(True)
-    label.setObjectName(name)
+    play(label, role)
     return label
 
 
@@ -36,7 +38,7 @@ class About(QDialog):
         down.setContentsMargins(28, 24, 28, 20)
         down.setSpacing(10)
         down.addWidget(_plain("Farend", "title"))
-        down.addWidget(_plain(f"Version {version('farend')} · MIT licence", "soft"))
+        down.addWidget(_plain(f"Version {version('farend')} · MIT licence", "quiet"))
         down.addWidget(
             _plain("A drawing board for small electricity distribution layouts, solved as you touch it.")
         )
@@ -45,6 +47,7 @@ class About(QDialog):
         buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
         buttons.rejected.connect(self.reject)
         down.addWidget(buttons)
+        centre(self, parent)
 
 
 class Keys(QDialog):
@@ -53,7 +56,7 @@ class Keys(QDialog):
     def __init__(self, parent: QWidget) -> None:
         super().__init__(parent)
         self.setWindowTitle("Keys")
-        self.resize(560, 560)
+        self.setMinimumSize(560, 440)
         grid = QGridLayout()
         grid.setColumnStretch(1, 1)
         grid.setHorizontalSpacing(24)
@@ -63,6 +66,7 @@ class Keys(QDialog):
             grid.addWidget(name, row, 0, Qt.AlignmentFlag.AlignTop)
             grid.addWidget(_plain(what), row, 1)
         inside = QWidget()
+        play(inside, "panel")
         inside.setLayout(grid)
         scroll = QScrollArea()
         scroll.setWidgetResizable(True)
@@ -72,3 +76,4 @@ class Keys(QDialog):
         down = QVBoxLayout(self)
         down.addWidget(scroll)
         down.addWidget(buttons)
+        centre(self, parent)

@@ -3,7 +3,7 @@
 from pathlib import Path
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QWidget
+from PySide6.QtWidgets import QDialog, QWidget
 
 DRAWINGS = "Farend drawings (*.farend);;All files (*)"
 SHEETS = "Workbook (*.xlsx);;Comma-separated tables (*.csv)"
@@ -44,20 +44,38 @@ class Dialogs:
         """True where the person says yes."""
         return self._box(question, "Yes", "No") == "Yes"
 
+    def recovery(self, title: str) -> str:
+        """`open`, `keep` or `throw`, of a copy kept through a crash; closing the question keeps it."""
+        open_it, throw, keep = "Open it", "Throw it away", "Keep it for later"
+        question = f"Farend did not close properly. What shall be done with the recovery copy of {title}?"
+        answer = self._box(question, open_it, throw, keep)
+        return {open_it: "open", throw: "throw"}.get(answer, "keep")
+
     def tell(self, sentence: str) -> None:
         """One sentence that cannot be shown in place."""
-        self._box(sentence, "Ok")
+        self._box(sentence, "Close")
 
     def _box(self, text: str, *names: str) -> str:
-        """The name of the button chosen; closing the box chooses the last."""
+        """The name of the button chosen. Enter and closing the box choose the last: it changes nothing."""
         from PySide6.QtWidgets import QMessageBox
 
-        buttons = {name: QMessageBox.StandardButton[name] for name in names}
         box = QMessageBox(self._parent)
         box.setWindowTitle("Farend")
         box.setTextFormat(Qt.TextFormat.PlainText)
         box.setText(text)
-        for button in buttons.values():
-            box.addButton(button)
-        chosen = box.exec()
-        return next((name for name, button in buttons.items() if button.value == chosen), names[-1])
+        buttons = [box.addButton(name, QMessageBox.ButtonRole.ActionRole) for name in names]
+        box.setDefaultButton(buttons[-1])
+        box.setEscapeButton(buttons[-1])
+        centre(box, self._parent)
+        box.exec()
+        chosen = box.clickedButton()
+        return next(
+            (name for name, button in zip(names, buttons, strict=True) if button is chosen), names[-1]
+        )
+
+
+def centre(dialog: QDialog, on: QWidget) -> None:
+    """Put a dialog over the middle of its window."""
+    dialog.ensurePolished()
+    dialog.adjustSize()
+    dialog.move(on.window().frameGeometry().center() - dialog.rect().center())

@@ -230,13 +230,12 @@ class Menus(QObject):
     def offer_recovery(self) -> bool:
         """After a crash: offer the copies that were kept. True where one was opened."""
         for copy in self.window.document.recoverable():
-            question = (
-                f"Farend did not close properly. Open the recovery copy of {copy.title}? No throws it away."
-            )
-            if self.dialogs.agree(question):
+            answer = self.dialogs.recovery(copy.title)
+            if answer == "open":
                 self.window.document.recover(copy)
                 return True
-            self.window.document.forget(copy)
+            if answer == "throw":
+                self.window.document.forget(copy)
         return False
 
     # -- handing over ---------------------------------------------------------------------------

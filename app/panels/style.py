@@ -106,6 +106,7 @@ QMainWindow, QDialog, QWidget#whole, *[role="panel"] { background: @PANEL; }
 *[role="sheet"] { background: @FIELD; }
 QWidget { color: @INK; }
 QLabel { background: transparent; }
+QMessageBox, QDialogButtonBox { dialogbuttonbox-buttons-have-icons: 0; }
 *[role="rule"] { background: @FAINT; border: none; max-height: 1px; min-height: 1px; }
 *[role="title"] { font-size: 12pt; font-weight: bold; }
 *[role="strong"] { font-weight: bold; }

@@ -42,6 +42,9 @@ class Recorder:
     def agree(self, question):
         return False
 
+    def recovery(self, title):
+        return "keep"
+
     def tell(self, sentence):
         self.said.append(sentence)
 
