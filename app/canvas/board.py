@@ -18,7 +18,8 @@ from app.live.attention import Attention
 from app.live.session import Session
 from app.live.solving import Solving
 from app.model.edits import Change
-from app.model.kinds import Branch, Transformer
+from app.model.kinds import Branch
+from app.model.taps import by_hand
 
 LADDER_GAP = 6.0
 REST_MS = 120  # figures out of sight are written once the hand has paused this long
@@ -170,9 +171,9 @@ class Board(Paper):
             self._handles.hold([])
 
     def _raise_ladders(self) -> None:
-        """A ladder stands at each selected transformer."""
+        """A ladder stands at each selected transformer whose tap is set by hand."""
         elements = self.session.drawing.elements
-        wanted = {i for i in self.attention.selection if isinstance(elements.get(i), Transformer)}
+        wanted = {i for i in self.attention.selection if by_hand(elements.get(i))}
         for id in self.ladders.keys() - wanted:
             self.take_away(self.ladders.pop(id))
         for id in wanted - self.ladders.keys():

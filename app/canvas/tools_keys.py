@@ -27,10 +27,10 @@ from app.model.kinds import (
     Joint,
     Line,
     Node,
-    Transformer,
     kind_of,
 )
 from app.model.parts import builtin_parts
+from app.model.taps import by_hand
 
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
@@ -152,7 +152,7 @@ def _joined(view: BoardView, one: str, other: str) -> bool:
 def _on_selection(view: BoardView, event: QKeyEvent) -> bool:
     id, key, elements = only(view), event.key(), view.drawing.elements
     one = elements.get(id) if id is not None else None
-    if isinstance(one, Transformer) and id is not None and press_tap_key(_hold(view, id), event):
+    if by_hand(one) and id is not None and press_tap_key(_hold(view, id), event):
         return True
     line = view.fresh if isinstance(one, Node) else id
     if line is not None and isinstance(elements.get(line), Line) and begins_length(event):

@@ -25,6 +25,11 @@ def notches(t: Transformer) -> range:
     return range(-t.taps_down, t.taps_up + 1)
 
 
+def by_hand(element: object) -> bool:
+    """True for a transformer with a tap that somebody sets; not where its tap changer steps by itself."""
+    return isinstance(element, Transformer) and element.regulates == "no"
+
+
 def windings(t: Transformer, notch: int) -> tuple[float, float]:
     """Rated volts of windings 1 and 2 at a notch."""
     f = factor(t, notch)

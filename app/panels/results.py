@@ -247,5 +247,7 @@ def tap_words(drawing: Drawing, outcome: Outcome | None, id: str, case: int) -> 
     """What the tap does: `tap −2.5 %: 10725/400, raises winding 2`."""
     element = drawing.elements[id]
     assert isinstance(element, Transformer)
+    if element.regulates != "no":
+        return "begins here and steps by itself"
     fed = outcome.fed_winding(id, case) if outcome is not None else 1
     return taps.words(element, element.tap, fed)

@@ -14,7 +14,7 @@ from app.live.solving import Solving
 from app.model.drawing import label
 from app.model.edits import Change
 from app.model.figures import length, percent, volts
-from app.model.kinds import Transformer
+from app.model.taps import by_hand
 from app.panels.results import tap_words
 from app.panels.strip_axes import Axes, Stretch, axes, node_points, span, stretches
 from app.panels.strip_course import Course, course
@@ -185,7 +185,7 @@ class VoltageStrip(QWidget):
             return []
         elements = self._session.drawing.elements
         found = self.curves[self.case].stretches
-        return [s for s in found if isinstance(elements.get(s.branch), Transformer)]
+        return [s for s in found if by_hand(elements.get(s.branch))]
 
     def _handle_at(self, point: QPointF) -> str:
         best, least = "", REACH
@@ -223,7 +223,7 @@ class VoltageStrip(QWidget):
             state = outcome.nodes.at(id, self.case)
             level = f"{volts(state.voltage_v)}, {percent(state.percent)} of nominal"
             return f"{name}: {level} at {length(state.route_m)}"
-        if isinstance(drawing.elements[id], Transformer):
+        if by_hand(drawing.elements[id]):
             return f"{name}: {tap_words(drawing, outcome, id, self.case)}. Drag the dot to move the tap."
         if id in outcome.branches:
             return f"{name}: {percent(outcome.branches.at(id, self.case).drop_percent, 2)} lost along it"

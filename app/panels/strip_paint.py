@@ -8,6 +8,7 @@ from app.canvas.palette import Palette, font
 from app.model.drawing import Drawing, Limits, label
 from app.model.figures import length, plain
 from app.model.kinds import Busbar, Transformer
+from app.model.taps import by_hand
 from app.panels.strip_axes import Axes, Stretch, ticks_m
 from app.panels.strip_course import Course
 from app.panels.style import mixed
@@ -216,7 +217,7 @@ def _box(a: QPointF, b: QPointF) -> QRectF:
 def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The dot that drags a tap: filled at the fed winding's side of the step, ringed at the other."""
     for stretch in shown.curves[shown.case].stretches:
-        if not isinstance(shown.drawing.elements.get(stretch.branch), Transformer):
+        if not by_hand(shown.drawing.elements.get(stretch.branch)):
             continue
         held = stretch.branch == shown.held
         near = held or stretch.branch == shown.hover or stretch.branch in shown.selection

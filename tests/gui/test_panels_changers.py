@@ -1,6 +1,7 @@
 """Regulators and tap changers on card and board: fields by real keys, where each stands, their words."""
 
 import pytest
+from hand_desk import desk, pair
 from msgspec.structs import replace
 from panels_stage import ONE, fernhollow, stage, type_text
 from PySide6.QtCore import Qt
@@ -11,6 +12,8 @@ from app.canvas.wording import branch_figures, describe, step_of
 from app.model import edits
 from app.model.kinds import Generator, Joint, Load, Regulator, Transformer
 from app.study import run
+
+__all__ = ["desk"]
 
 
 @pytest.fixture
@@ -70,3 +73,14 @@ def test_words_and_symbols():
     for symbols in ("IEC", "ANSI"):
         assert glyph_of(still, symbols).strokes != glyph_of(moving, symbols).strokes
     assert step_of(still) is None
+
+
+def test_a_tap_that_steps_by_itself_has_no_ladder_to_drag(desk):
+    assert "T2" in pair().elements
+    desk.select("T2")
+    assert desk.board.ladder_of("T2") is not None
+    moving = replace(desk.drawing.elements["T2"], regulates="winding 2")
+    desk.session.edit("Step", lambda d: edits.put(d, {"T2": moving}))
+    assert desk.board.ladder_of("T2") is None
+    desk.undo()
+    assert desk.board.ladder_of("T2") is not None
