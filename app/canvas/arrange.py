@@ -10,16 +10,18 @@ from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem
 from app.canvas.lettering import LEFT, RIGHT
 from app.canvas.node_item import NodeItem
-from app.canvas.placing import Spot, around, beside, strips
+from app.canvas.placing import SYMBOL, Homes, Spot, Taken, around, beside, strips
 
 UNDER = 8.0
+FARTHER = (20.0, 36.0, 60.0, 90.0)
 
 
-def covered(item: ElementItem) -> Iterator[QRectF]:
-    """The boxes an element itself takes up."""
+def take(taken: Taken, item: ElementItem) -> None:
+    """Put in use what an element itself covers."""
     if isinstance(item, BranchItem | AttachmentItem):
-        yield from strips(item.points)
-    yield item.core()
+        for strip in strips(item.points):
+            taken.add(strip)
+    taken.add(item.core(), SYMBOL)
 
 
 def caption_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
@@ -38,29 +40,52 @@ def caption_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
 _ATTACHMENT = {"b": "rlb12a", "a": "rla43b", "r": "rab41l", "l": "lab32r"}
 
 
-def tag_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:
-    """Tags: under level branches, right of upright ones. Volts and gauge: under the foot of a bar with the
-    gauge in line with it, else round the node."""
-    if isinstance(item, BranchItem):
-        yield from beside(item.points, _half(item), room.width(), room.height(), "b")
-    elif isinstance(item, NodeItem):
-        yield from _figure_spots(item, room)
+def tag_spots(item: BranchItem, room: QSizeF) -> Iterator[Spot]:
+    """Tags: under level branches, right of upright ones."""
+    yield from beside(item.points, _half(item), room.width(), room.height(), "b")
 
 
-def _figure_spots(item: NodeItem, room: QSizeF) -> Iterator[Spot]:
-    width, height = room.width(), room.height()
+def figure_spots(item: NodeItem, rooms: tuple[QSizeF, ...], homes: Homes) -> Iterator[Spot]:
+    """Volts and gauge: under the foot of a bar with the gauge in line with it, else beside the node; first
+    where no other node is nearer, for there they would seem to be that one's."""
+    strange = []
+    for spots in (_close_spots, _far_spots):
+        for room in rooms:
+            for spot in spots(item, room.width(), room.height()):
+                if homes.nearest_is(item.id, spot.box):
+                    yield spot
+                else:
+                    strange.append(spot)
+    yield from strange
+
+
+def _close_spots(item: NodeItem, width: float, height: float) -> Iterator[Spot]:
     core = item.core()
     if item.upright:
         left = core.center().x() - gauge.WIDTH / 2 + 2
         yield Spot(QRectF(left, core.bottom() + UNDER, width, height), LEFT)
         yield Spot(QRectF(core.left() - width, core.bottom() + UNDER, width, height), RIGHT)
+        yield from _along_bar(core, width, height)
         yield from around(core, width, height, "1234ba", gap=UNDER + 2)
     elif item.bar:
         yield from around(core, width, height, "21ba34")
     else:
         yield from around(core, width, height, "b12a43", gap=UNDER)
-        for away in (30.0, 60.0, 90.0):
-            yield from around(core, width, height, "ba", gap=away)
+        yield from around(core.adjusted(0, -12, 0, 12), width, height, "1234", gap=UNDER)
+
+
+def _far_spots(item: NodeItem, width: float, height: float) -> Iterator[Spot]:
+    for away in FARTHER:
+        yield from around(item.core(), width, height, "ba1234", gap=away)
+
+
+def _along_bar(core: QRectF, width: float, height: float) -> Iterator[Spot]:
+    """Beside an upright bar: at its foot, at its head, then between."""
+    room = max(core.height() - height, 0.0)
+    for share in (1.0, 0.0, 0.75, 0.25, 0.5):
+        top = core.top() + room * share
+        yield Spot(QRectF(core.right() + UNDER, top, width, height), LEFT)
+        yield Spot(QRectF(core.left() - UNDER - width, top, width, height), RIGHT)
 
 
 def nearest_of(core: QRectF, words: QRectF) -> QPointF:

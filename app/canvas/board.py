@@ -1,9 +1,10 @@
 """The drawing board: the paper, tied to session, solution, attention and theme."""
 
-from collections.abc import Iterable, Iterator, Set
+from collections.abc import Iterable, Set
 
 from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
 
+from app.canvas import arrange
 from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import Hit, HitKind, Outline, handles, longest, nearest
@@ -118,6 +119,12 @@ class Board(Paper):
         if self.owed:
             self._rest.start()
 
+    def _write(self, ids: list[str]) -> set[str]:
+        """On a small drawing the first figures of an element make all look for their places again."""
+        first = len(self.items_by_id) <= SMALL and any(i in self.tags and self.tags[i].awaited for i in ids)
+        grown = super()._write(ids)
+        return grown | set(ids) if first else grown
+
     def _fit_words(self, grown: Set[str]) -> None:
         """During a drag words grow where they stand; after it they look for better places."""
         if not grown:
@@ -185,30 +192,31 @@ class Board(Paper):
         self._place_ladders()
 
     def _place_ladders(self) -> None:
+        """Where a ladder covers no symbol and no bar, if there is such a place, and few words."""
         if not self.ladders:
             return
         cores = {id: self.items_by_id[id].core().united(self.captions[id].spot.box) for id in self.ladders}
         wishes = [Wish((id, "ladder"), self._ladder_spots(id, core)) for id, core in cores.items()]
-        taken = Taken(self._covered_near(spot.box for wish in wishes for spot in wish.spots))
+        taken = self._taken_near(spot.box for wish in wishes for spot in wish.spots)
         for (id, _), spot in place(wishes, taken).items():
-            item, ladder = self.items_by_id[id], self.ladders[id]
+            ladder = self.ladders[id]
             ladder.setPos(spot.box.topLeft() - ladder.boundingRect().topLeft())
-            if isinstance(item, BranchItem):
-                item.embrace(spot.box.united(cores[id]).united(self.tags[id].spot.box))
 
     def _ladder_spots(self, id: str, core: QRectF) -> list[Spot]:
         box = self.ladders[id].boundingRect()
-        return list(around(core, box.width(), box.height(), "a43rlb12", LADDER_GAP))
+        gaps = (LADDER_GAP, 30.0, 60.0, 100.0, 150.0)
+        return [s for gap in gaps for s in around(core, box.width(), box.height(), "a43rlb12", gap)]
 
-    def _covered_near(self, boxes: Iterable[QRectF]) -> Iterator[QRectF]:
-        """What symbols and words cover where any of these boxes, with their clear rim, would be."""
-        mode = Qt.ItemSelectionMode.IntersectsItemBoundingRect
+    def _taken_near(self, boxes: Iterable[QRectF]) -> Taken:
+        """What symbols, lines and words cover where any of these boxes, with their clear rim, would be."""
+        taken, mode = Taken(), Qt.ItemSelectionMode.IntersectsItemBoundingRect
         rims = (box.adjusted(-CLEAR, -CLEAR, CLEAR, CLEAR) for box in boxes)
         for item in {item for rim in rims for item in self.items(rim, mode)}:
             if isinstance(item, ElementItem):
-                yield item.core()
+                arrange.take(taken, item)
             elif isinstance(item, Caption) and item.lines:
-                yield item.spot.box
+                taken.add(item.spot.box)
+        return taken
 
 
 def _outlines(item: ElementItem) -> list[Outline]:

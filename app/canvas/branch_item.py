@@ -43,7 +43,6 @@ class BranchItem(ElementItem):
         self._poles: list[QPointF] = []
         self._runs: list[list[QPointF]] = []
         self._halo = QPainterPath()
-        self._embraced = QRectF()
 
     def place(self, drawing: Drawing) -> None:
         self.points = route(drawing, self.id)
@@ -62,14 +61,8 @@ class BranchItem(ElementItem):
         self._bound()
 
     def _bound(self) -> None:
-        box = QPolygonF(self.points).boundingRect().united(self.core()).united(self._embraced)
+        box = QPolygonF(self.points).boundingRect().united(self.core())
         self.bound(box.adjusted(-MARGIN, -MARGIN, MARGIN, MARGIN))
-
-    def embrace(self, box: QRectF) -> None:
-        """Spread the light of selection over the words and the tap ladder too; an empty box draws it in."""
-        if box != self._embraced:
-            self._embraced = box
-            self._bound()
 
     def show_flow(self, width: float, forward: bool | None) -> None:
         """Breadth and direction; repaints only where they are new."""
@@ -110,7 +103,7 @@ class BranchItem(ElementItem):
     def paint(self, painter, option, widget=None) -> None:
         palette, stale = self.look.palette, self.look.aged(self.standing)
         if self.lit:
-            painter.fillPath(self._lit_shape(), halo_colour(palette, self.selected))
+            painter.fillPath(self._halo, halo_colour(palette, self.selected))
         painter.setPen(pen(self.standing, self.flow.width, palette, stale))
         painter.setBrush(Qt.BrushStyle.NoBrush)
         for run in self._runs:
@@ -128,13 +121,6 @@ class BranchItem(ElementItem):
             )
         elif self.flow.forward is not None:
             self._paint_arrow(painter, hue)
-
-    def _lit_shape(self) -> QPainterPath:
-        if not self.selected or self._embraced.isEmpty():
-            return self._halo
-        whole = QPainterPath()
-        whole.addRoundedRect(self._embraced.adjusted(-HALO, -HALO, HALO, HALO), 10, 10)
-        return whole.united(self._halo)
 
     def _paint_arrow(self, painter, hue) -> None:
         turn = self.angle if self.flow.forward else self.angle + 180

@@ -6,9 +6,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QPainter, QPainterPath, QPen
+from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsObject
 
+from app.canvas.element_item import halo_colour
 from app.canvas.ladder_curve import WIDTH, Prospect, paint_losses, paint_safe
 from app.canvas.ladder_scale import Scale
 from app.canvas.lettering import Run, Style, line_height, paint
@@ -145,6 +146,7 @@ class TapLadder(QGraphicsObject):
             return
         palette, scale, prospect, rail = self._theme.palette, self.notches, self.prospect, self._rail
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        self._paint_plate(painter)
         if prospect is not None:
             aged = self._solving.stale or not self._solving.curve_is_current(self.id)
             painter.setOpacity(0.45 if aged else 1.0)
@@ -156,6 +158,15 @@ class TapLadder(QGraphicsObject):
         self._paint_ticks(painter, scale, prospect)
         self._paint_rung(painter, rail.y() + scale.y(t.tap), prospect is None or prospect.holding(t.tap))
         self._paint_words(painter, t, scale)
+
+    def _paint_plate(self, painter: QPainter) -> None:
+        """The light of the selection, on which the ladder reads well whatever lies below."""
+        ground = QColor(self._theme.palette.paper)
+        ground.setAlphaF(0.85)
+        painter.setPen(Qt.PenStyle.NoPen)
+        for fill in (ground, halo_colour(self._theme.palette, selected=True)):
+            painter.setBrush(fill)
+            painter.drawRoundedRect(self._bounds, 9, 9)
 
     @property
     def _rail(self) -> QPointF:

@@ -15,7 +15,7 @@ from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import GRID
 from app.canvas.lettering import Line
 from app.canvas.node_item import NodeItem
-from app.canvas.placing import Taken, Wish, place
+from app.canvas.placing import Homes, Taken, Wish, place
 from app.canvas.shown import Shown, array_of, column_of
 from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
@@ -204,18 +204,22 @@ class Paper(QGraphicsScene):
 
     def arrange(self, only: Container[str] | None = None) -> None:
         """Give every block of words its spot, or only those of some elements while the others stay."""
-        taken = Taken(box for item in self.items_by_id.values() for box in arrange.covered(item))
+        taken = Taken()
+        for item in self.items_by_id.values():
+            arrange.take(taken, item)
         for block in self._blocks():
             if only is None or block.id in only:
                 block.shrink()
             elif block.wanted:
                 taken.add(block.spot.box)
-        wishes = (w for w in self._wishes() if only is None or w.key[0] in only)
+        homes = Homes({i: item.core() for i, item in self.items_by_id.items() if isinstance(item, NodeItem)})
+        wishes = (w for w in self._wishes(homes) if only is None or w.key[0] in only)
         for (id, sort), spot in place(wishes, taken).items():
             words = (self.captions if sort == "caption" else self.tags)[id]
             words.settle(spot)
             if isinstance(words, NodeFigures):
-                words.lead_to(arrange.nearest_of(self.items_by_id[id].core(), words.spot.box))
+                home = arrange.nearest_of(self.items_by_id[id].core(), words.spot.box)
+                words.lead_to(home, always=not homes.nearest_is(id, words.spot.box))
         self._make_room()
 
     def widen(self, ids: Iterable[str]) -> None:
@@ -229,18 +233,25 @@ class Paper(QGraphicsScene):
         yield from self.captions.values()
         yield from self.tags.values()
 
-    def _wishes(self) -> Iterator[Wish]:
+    def _wishes(self, homes: Homes) -> Iterator[Wish]:
         """What can move least asks first."""
-        for sort in (NodeItem, AttachmentItem, BranchItem):
-            for id, item in self.items_by_id.items():
-                if isinstance(item, sort) and self.captions[id].lines:
-                    yield Wish((id, "caption"), arrange.caption_spots(item, self.captions[id].room))
-        for sort in (NodeItem, BranchItem):
-            for id, tag in self.tags.items():
-                item = self.items_by_id[id]
-                if isinstance(item, sort) and tag.wanted:
-                    rooms = (tag.spread, tag.room)
-                    yield Wish((id, "tag"), chain.from_iterable(arrange.tag_spots(item, r) for r in rooms))
+        for sort in (NodeItem, AttachmentItem):
+            yield from self._caption_wishes(sort)
+        for id, tag in self.tags.items():
+            item = self.items_by_id[id]
+            if isinstance(item, NodeItem) and tag.wanted:
+                yield Wish((id, "tag"), arrange.figure_spots(item, (tag.spread, tag.room), homes))
+        yield from self._caption_wishes(BranchItem)
+        for id, tag in self.tags.items():
+            item = self.items_by_id[id]
+            if isinstance(item, BranchItem) and tag.wanted:
+                rooms = (tag.spread, tag.room)
+                yield Wish((id, "tag"), chain.from_iterable(arrange.tag_spots(item, r) for r in rooms))
+
+    def _caption_wishes(self, sort: type[ElementItem]) -> Iterator[Wish]:
+        for id, item in self.items_by_id.items():
+            if isinstance(item, sort) and self.captions[id].lines:
+                yield Wish((id, "caption"), arrange.caption_spots(item, self.captions[id].room))
 
     def content(self) -> QRectF:
         """The box of everything drawn."""

@@ -1,7 +1,7 @@
 """Where captions and tags go: each tries its spots in order and takes the first that is free."""
 
 import math
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 
 from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF
@@ -9,9 +9,10 @@ from PySide6.QtCore import QPointF, QRectF
 from app.canvas.lettering import CENTRE, LEFT, RIGHT
 
 CELL = 80.0
+SYMBOL = 8.0  # how much worse it is to cover a symbol or a bar than words or a line
 CLEAR = 3.0  # kept free around everything
 SHARES = (0.5, 0.44, 0.56, 0.36, 0.64, 0.25, 0.75)  # along a line, from its middle outwards
-AWAY = (0.0, 26.0, 52.0)  # how far off a line its words may go
+AWAY = (0.0, 26.0, 52.0, 78.0)  # how far off a line its words may go
 
 
 Edges = tuple[float, float, float, float]  # left, top, right, bottom
@@ -35,15 +36,15 @@ class Taken:
     """Boxes that are in use, found again by the cells they touch."""
 
     def __init__(self, boxes: Iterable[QRectF] = ()) -> None:
-        self._cells: dict[tuple[int, int], list[Edges]] = {}
+        self._cells: dict[tuple[int, int], list[tuple[float, ...]]] = {}
         for box in boxes:
             self.add(box)
 
-    def add(self, box: QRectF) -> None:
-        """Put a box in use."""
+    def add(self, box: QRectF, weight: float = 1.0) -> None:
+        """Put a box in use; to cover it counts as much as its weight says."""
         edges = _edges(box, 0.0)
         for cell in _cells(edges):
-            self._cells.setdefault(cell, []).append(edges)
+            self._cells.setdefault(cell, []).append((*edges, weight))
 
     def overlap(self, box: QRectF, enough: float = math.inf) -> float:
         """How much of a box and its clear rim lies on boxes in use, px²; a box is counted in each cell.
@@ -51,13 +52,37 @@ class Taken:
         mine = left, top, right, bottom = _edges(box, CLEAR)
         total = 0.0
         for cell in _cells(mine):
-            for other_left, other_top, other_right, other_bottom in self._cells.get(cell, ()):
+            for other_left, other_top, other_right, other_bottom, weight in self._cells.get(cell, ()):
                 if other_left < right and left < other_right and other_top < bottom and top < other_bottom:
                     width = min(right, other_right) - max(left, other_left)
-                    total += width * (min(bottom, other_bottom) - max(top, other_top))
+                    total += weight * width * (min(bottom, other_bottom) - max(top, other_top))
                     if total >= enough:
                         return total
         return total
+
+
+class Homes:
+    """The boxes of nodes by the cells they touch, to tell whose a block of words would seem to be."""
+
+    def __init__(self, boxes: Mapping[str, QRectF]) -> None:
+        self._boxes = boxes
+        self._cells: dict[tuple[int, int], list[str]] = {}
+        for id, box in boxes.items():
+            for cell in _cells(_edges(box, 0.0)):
+                self._cells.setdefault(cell, []).append(id)
+
+    def nearest_is(self, id: str, words: QRectF) -> bool:
+        """True where no other node is as near to the words as this one."""
+        reach = gap(words, self._boxes[id])
+        near = {other for cell in _cells(_edges(words, reach)) for other in self._cells.get(cell, ())}
+        return all(other == id or gap(words, self._boxes[other]) > reach for other in near)
+
+
+def gap(one: QRectF, other: QRectF) -> float:
+    """Between two boxes; nought where they touch."""
+    across = max(one.left() - other.right(), other.left() - one.right(), 0.0)
+    down = max(one.top() - other.bottom(), other.top() - one.bottom(), 0.0)
+    return math.hypot(across, down)
 
 
 def place(wishes: Iterable[Wish], taken: Taken) -> dict[tuple[str, str], Spot]:

@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QGraphicsItem
 
 from app.canvas import gauge, lettering
 from app.canvas.element_item import Look
-from app.canvas.lettering import LEFT, Line, Run, Style
+from app.canvas.lettering import LEFT, RIGHT, Line, Run, Style
 from app.canvas.placing import Spot
 from app.canvas.standing import Standing, colour, mark
 
@@ -118,14 +118,14 @@ class Caption(QGraphicsItem):
             self._bounds = self._reach().adjusted(-1, -1, 1, 1)
             self.update()
 
-    def lead_to(self, point: QPointF) -> None:
-        """A hairline to what the words belong to, where they had to go some way off."""
+    def lead_to(self, point: QPointF, always: bool = False) -> None:
+        """A hairline to what the words belong to, where they had to go some way off or seem another's."""
         box = self.spot.box
         near = QPointF(
             min(max(point.x(), box.left()), box.right()), min(max(point.y(), box.top()), box.bottom())
         )
         line = QLineF(near, point)
-        lead = line if line.length() > LEAD_FROM else None
+        lead = line if always or line.length() > LEAD_FROM else None
         if lead != self.lead:
             self.prepareGeometryChange()
             self.lead = lead
@@ -260,7 +260,12 @@ class NodeFigures(Caption):
             self.update()
 
     def _hold(self, spot: Spot) -> float:
-        return LEFT  # the gauge stays, the words grow away from it
+        return RIGHT if spot.align == RIGHT else LEFT  # the gauge stays, the words grow away from it
+
+    @property
+    def _mirrored(self) -> bool:
+        """True where the words stand left of their node: the gauge is at their right, next to it."""
+        return self.spot.align == RIGHT
 
     def _extra(self, lines: tuple[Line, ...]) -> float:
         marked = 16.0 if self.standing in (Standing.NEAR, Standing.FAILED) else 0.0
@@ -273,15 +278,24 @@ class NodeFigures(Caption):
         palette, stale = self.look.palette, self.look.stale
         box = self.spot.box
         bare = lettering.size(self.lines)
-        if self.reading is not None and len(self.lines) > 1:
-            top = box.center().y() - gauge.HEIGHT / 2
-            gauge.paint(painter, QPointF(box.left(), top), self.reading, self.standing, palette, stale)
+        extra, figures = self._extra(self.lines), len(self.lines) > 1
+        if self.reading is not None and figures:
+            self._paint_gauge(painter, self.reading)
         down = (box.height() - bare.height()) / 2 - self.PAD.height()
-        text = box.adjusted(self._extra(self.lines), down, 0, 0)
-        if self.standing in (Standing.NEAR, Standing.FAILED) and len(self.lines) > 1:
-            mark(painter, self.standing, QPointF(text.left() - 8, box.center().y()), palette, stale)
+        text = box.adjusted(0, down, -extra, 0) if self._mirrored else box.adjusted(extra, down, 0, 0)
+        if self.standing in (Standing.NEAR, Standing.FAILED) and figures:
+            beside = text.right() + 8 if self._mirrored else text.left() - 8
+            mark(painter, self.standing, QPointF(beside, box.center().y()), palette, stale)
         w, h = self.PAD.width(), self.PAD.height()
         over = palette.soft if stale else None
-        lettering.paint(
-            painter, self.lines, text.topLeft() + QPointF(w, h), bare.width(), palette, LEFT, over
-        )
+        align = RIGHT if self._mirrored else LEFT
+        room = text.width() - 2 * w if self._mirrored else bare.width()
+        lettering.paint(painter, self.lines, text.topLeft() + QPointF(w, h), room, palette, align, over)
+
+    def _paint_gauge(self, painter, reading: gauge.Reading) -> None:
+        box = self.spot.box
+        painter.save()
+        painter.translate(box.right() if self._mirrored else box.left(), box.center().y() - gauge.HEIGHT / 2)
+        painter.scale(-1 if self._mirrored else 1, 1)
+        gauge.paint(painter, QPointF(), reading, self.standing, self.look.palette, self.look.stale)
+        painter.restore()

@@ -64,6 +64,30 @@ EVERY_KIND = Drawing(
 )
 
 
+def by_hand(load_dy: float = 2.0) -> Drawing:
+    """What a person gets who places and drops everything as it comes; close together."""
+    made = {
+        "B1": Busbar(x=0, y=0),
+        "S1": Supply(node="B1", dx=0, dy=-3),  # on the bar's very end, as one may drag it
+        "L1": Load(node="B1", dx=0, dy=load_dy + 3),
+        "L2": Load(node="B1", dx=3, dy=load_dy + 3),
+        "J1": Joint(x=8, y=0),
+        "C1": Cable(start="B1", end="J1"),
+        "J2": Joint(x=14, y=0),
+        "T1": Transformer(start="J1", end="J2", tap=1),
+        "J3": Joint(x=14, y=7),
+        "C2": Cable(start="J2", end="J3"),
+        "B2": Busbar(x=24, y=0),
+        "T2": Transformer(start="J2", end="B2"),
+        "L3": Load(node="B2", dx=0, dy=load_dy + 3),
+        "L4": Load(node="B2", dx=3, dy=load_dy + 3),
+        "G1": Generator(node="J3", dx=3, dy=3),
+        "J4": Joint(x=17, y=7),
+        "C3": Cable(start="J3", end="J4"),
+    }
+    return Drawing(elements=made)
+
+
 def figures(
     drawing: Drawing,
     *,

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from board_drawings import EVERY_KIND, FERNHOLLOW, figures
+from board_drawings import EVERY_KIND, FERNHOLLOW, by_hand, figures
 from PySide6.QtCore import QPointF, QRectF
 
 from app.canvas import gauge
@@ -24,7 +24,7 @@ from app.canvas.geometry import (
     to_point,
 )
 from app.canvas.paper import Paper
-from app.canvas.placing import Spot, Taken, Wish, around, place, strips
+from app.canvas.placing import Homes, Spot, Taken, Wish, around, gap, place, strips
 from app.canvas.standing import breadths
 from app.model.drawing import Drawing
 from app.model.kinds import Busbar, Cable, Joint, Load
@@ -149,6 +149,40 @@ def test_no_words_lie_on_each_other_or_on_a_symbol(qapp, drawing):
         assert not any(box.intersects(item.core()) for item in paper.items_by_id.values()), blocks[k].text
     lines = [strip for item in paper.items_by_id.values() for strip in strips(getattr(item, "points", []), 0)]
     assert not [b.text for b in blocks if any(b.spot.box.intersects(line) for line in lines)]
+
+
+@pytest.mark.parametrize("drawing", [FERNHOLLOW, EVERY_KIND, *(by_hand(dy) for dy in (0.0, 1.0, 2.0, 3.0))])
+def test_volts_are_nearer_to_their_own_node_than_to_any_other_or_led_to_it(qapp, drawing):
+    paper = Paper(Look())
+    paper.lay_out(drawing)
+    paper.show_outcome(drawing, figures(drawing), 0, None)
+    paper.arrange()
+    cores = {id: paper.items_by_id[id].core() for id in drawing.nodes()}
+    for id, core in cores.items():
+        tag = paper.tags[id]
+        if tag.lead is not None:
+            assert core.adjusted(-1, -1, 1, 1).contains(tag.lead.p2())
+            continue
+        away = gap(tag.spot.box, core)
+        assert away <= 22
+        assert all(gap(tag.spot.box, other) > away for i, other in cores.items() if i != id), id
+    assert sum(paper.tags[id].lead is not None for id in cores) <= len(cores) / 2
+
+
+def test_whose_home_is_nearest():
+    homes = Homes({"A": QRectF(0, 0, 10, 100), "B": QRectF(100, 40, 10, 10), "far": QRectF(900, 0, 5, 5)})
+    assert homes.nearest_is("A", QRectF(20, 40, 20, 10))
+    assert not homes.nearest_is("A", QRectF(60, 40, 20, 10))
+    assert homes.nearest_is("B", QRectF(60, 40, 20, 10))
+    assert not homes.nearest_is("A", QRectF(50, 40, 10, 10)), "as near to the one as to the other"
+    assert not homes.nearest_is("far", QRectF(450, 0, 10, 10))
+
+
+def test_to_cover_a_symbol_is_worse_than_to_cover_words():
+    spots = [Spot(QRectF(0, 0, 10, 10)), Spot(QRectF(50, 0, 10, 10))]
+    taken = Taken([QRectF(50, 0, 10, 10)])
+    taken.add(QRectF(0, 0, 10, 4), weight=8.0)
+    assert place([Wish(("a", "tag"), spots)], taken)["a", "tag"] is spots[1]
 
 
 def test_the_gauge_is_monotone_and_never_leaves_its_track():

@@ -1,16 +1,17 @@
 """The tap is dragged, turned and keyed; the figures are those of a study of what comes of it."""
 
 import pytest
+from board_drawings import by_hand
 from hand_desk import CTRL, Desk, desk, pair
 from msgspec.structs import replace
-from PySide6.QtCore import QPoint, Qt
+from PySide6.QtCore import QPoint, QPointF, Qt
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication
 
 from app import study
 from app.canvas.ladder import EDGE, RAIL_X
 from app.model.drawing import Drawing
-from app.model.kinds import Transformer
+from app.model.kinds import Busbar, Joint, Load, Transformer
 
 __all__ = ["desk"]
 LEFT, NONE = Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier
@@ -214,3 +215,43 @@ def test_the_curve_marks_the_notch_of_least_loss_that_holds(at_t2):
         assert prospect.loss(notch) == pytest.approx(losses[-1], rel=1e-9)
     held = [n for n in range(-2, 3) if prospect.holding(n)]
     assert prospect.best == min(held, key=lambda n: losses[n + 2])
+
+
+def spots(desk):
+    return {(sort, i): b.spot for sort in ("captions", "tags") for i, b in getattr(desk.board, sort).items()}
+
+
+def test_selecting_moves_no_words(qtbot):
+    desk = Desk(by_hand())
+    qtbot.addWidget(desk.view)
+    before = spots(desk)
+    for id in desk.drawing.elements:
+        desk.select(id)
+        desk.solving.settle()
+        desk.board.write_rest()
+        assert spots(desk) == before, id
+    desk.solving.stop()
+
+
+@pytest.mark.parametrize("far", [6.0, 8.0, 10.0])
+def test_a_ladder_covers_no_symbol_and_no_bar_and_lets_clicks_through(qtbot, far):
+    crowd = {f"B{k}": Busbar(x=far + 4.0 * k, y=-1.0, length=10.0, name=f"Bar {k}") for k in (1, 2, 3)}
+    crowd |= {"J9": Joint(x=0.0), "T9": Transformer(start="J9", end="B1")}
+    crowd |= {f"L{k}": Load(node="J9", dx=1.0 + 3 * k, dy=-7.0) for k in range(3)}
+    desk = Desk(Drawing(elements=crowd))
+    qtbot.addWidget(desk.view)
+    desk.select("T9")
+    desk.solving.settle()
+    ladder = desk.board.ladder_of("T9")
+    box = ladder.sceneBoundingRect()
+    for id, item in desk.board.items_by_id.items():
+        assert not box.intersects(item.core()), id
+    ladder.setPos(desk.board.item_of("B2").core().center() - QPointF(RAIL_X + 60, 40))
+    where = desk.board.item_of("B2").core().center()
+    port = desk.view.viewport()
+    QTest.mouseMove(port, desk.view.mapFromScene(where))
+    QTest.mouseClick(port, LEFT, NONE, desk.view.mapFromScene(where))
+    assert tap(desk, "T9") == 0
+    assert desk.steps == 0
+    assert desk.attention.selection == {"B2"}
+    desk.solving.stop()
