@@ -1,7 +1,6 @@
 """The diagram with its results as a picture: SVG, PNG or PDF, with the board's own items."""
 
 import os
-from collections import Counter
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
@@ -30,6 +29,7 @@ from app.model import figures
 from app.model.drawing import Drawing
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Outcome, Verdict
+from app.study.words import tally_words
 from solver.status import Status
 
 MARGIN = 36.0
@@ -137,13 +137,18 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
 
 def _verdict(outcome: Outcome) -> Run:
     """How the checks of all cases came out."""
-    count = Counter(finding.verdict for finding in outcome.findings)
-    failed, near = count[Verdict.FAILS] + count[Verdict.BLOCKS], count[Verdict.NEAR]
-    if failed:
-        return Run(f"◆ {failed} {'check fails' if failed == 1 else 'checks fail'}", Style.FAILED)
-    if near:
-        return Run(f"▲ All checks hold, {near} near the limit", Style.NEAR)
-    return Run("All checks hold", Style.GOOD)
+    words = tally_words(outcome.findings)
+    worst = min((f.verdict for f in outcome.findings), key=lambda v: v.rank, default=Verdict.NOTE)
+    sign, style = _TALLY.get(worst, ("", Style.QUIET))
+    return Run(sign + words, style)
+
+
+_TALLY = {
+    Verdict.BLOCKS: ("◆ ", Style.FAILED),
+    Verdict.FAILS: ("◆ ", Style.FAILED),
+    Verdict.NEAR: ("▲ ", Style.NEAR),
+    Verdict.HOLDS: ("", Style.GOOD),
+}
 
 
 @contextmanager

@@ -7,6 +7,7 @@ from app.model.fields import fields_of
 from app.panels.element_page import round_off
 from app.study.findings import checks_made
 from app.study.outcome import Assumption, Finding, Outcome, Verdict
+from app.study.words import tally_words
 from solver.status import Status
 
 
@@ -28,18 +29,11 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
     if outcome.status is not Status.SOLVED:
         return _unsolved(drawing, outcome)
     found = ordered(outcome)
-    failing = [f for f in found if f.verdict in (Verdict.FAILS, Verdict.BLOCKS)]
     near = [f for f in found if f.verdict is Verdict.NEAR]
-    checks = checks_made(drawing, outcome.nodes, outcome.branches)
-    if failing:
-        head = f"{len(failing)} {'check fails' if len(failing) == 1 else 'checks fail'}."
-        return Line(failing[0].verdict, head, failing[0].sentence, failing[0].ids)
+    head = f"{tally_words(found, checks_made(drawing, outcome.nodes, outcome.branches))}."
+    if found and found[0].verdict in (Verdict.FAILS, Verdict.BLOCKS):
+        return Line(found[0].verdict, head, found[0].sentence, found[0].ids)
     tightest = min((f for f in found if f.margin is not None), key=lambda f: f.margin or 0.0, default=None)
-    head = (
-        "Nothing to judge." if not checks else f"{checks} {'check holds' if checks == 1 else 'checks hold'}."
-    )
-    if near:
-        head = f"{checks} checks hold, {len(near)} near the limit."
     told = near[0] if near else tightest
     sentence = f"Tightest: {told.sentence}" if told else ""
     return Line(Verdict.NEAR if near else Verdict.HOLDS, head, sentence, told.ids if told else ())

@@ -18,6 +18,7 @@ VERDICTS = (
     ("dead", {"italic": True, "font_color": "#5B6B79", "bg_color": HEAD}),
     ("NOT SOLVED", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
     ("Solved. Every check holds", {"bold": True, "font_color": GOOD, "bg_color": "#DDF0EE"}),
+    ("Solved. Nothing is judged", {"italic": True, "font_color": "#5B6B79", "bg_color": HEAD}),
     ("Solved.", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
     ("holds", {"font_color": GOOD, "bg_color": "#DDF0EE"}),
 )

@@ -75,11 +75,8 @@ def result_words(subject: Subject) -> str:
             )
             words += f", set by {subject.tell(outcome.to_blame)}." if outcome.to_blame else "."
         return words
-    failing = [f for f in outcome.findings if f.verdict is Verdict.FAILS]
-    if not failing:
-        return "Solved. Every check holds."
-    worst = f" {failing[0].sentence}"
-    return f"Solved. {len(failing)} check{'s fail:' if len(failing) > 1 else ' fails:'}{worst}"
+    worst = next((f for f in outcome.findings if f.verdict is Verdict.FAILS), None)
+    return f"{outcome.sentence.removesuffix('.')}: {worst.sentence}" if worst else outcome.sentence
 
 
 def basis_tables(subject: Subject) -> list[SheetTable]:

@@ -19,6 +19,7 @@ from app.study.start_findings import start_findings
 from app.study.start_table import StartTable
 from app.study.starts import start_table, starters
 from app.study.structure import structure_findings
+from app.study.words import tally_words
 from app.study.zones import Zones, zones_of
 from solver import Solution, Status, Trouble
 
@@ -122,10 +123,7 @@ def _status(solution: Solution | None) -> Status:
 
 def _sentence(status: Status, found: list[Finding]) -> str:
     if status is Status.SOLVED:
-        failing = sum(f.verdict is Verdict.FAILS for f in found)
-        if not failing:
-            return "Solved. Every limit holds."
-        return f"Solved. {failing} check{'' if failing == 1 else 's'} fail{'s' if failing == 1 else ''}."
+        return f"Solved. {tally_words(found)}."
     if status is Status.INVALID and found and found[0].verdict is not Verdict.BLOCKS:
         return found[0].sentence
     return status.value

@@ -1,11 +1,31 @@
 """How findings name elements and string them together."""
 
 import math
-from collections.abc import Sequence
+from collections import Counter
+from collections.abc import Iterable, Sequence
 
 from app.model.drawing import Drawing, label
+from app.study.outcome import Finding, Verdict
 
 MANY = 6
+
+
+def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
+    """How the checks came out, such as `2 checks fail` or `11 checks hold, 1 near the limit`.
+
+    findings : of an outcome
+    made : number of checks, where it is known
+
+    Returns : words; that nothing is judged where no finding judges
+    """
+    count = Counter(finding.verdict for finding in findings)
+    failing, near = count[Verdict.FAILS] + count[Verdict.BLOCKS], count[Verdict.NEAR]
+    if failing:
+        return "1 check fails" if failing == 1 else f"{failing} checks fail"
+    if not near + count[Verdict.HOLDS]:
+        return "Nothing is judged"
+    held = f"{made} checks hold" if made > 1 else "1 check holds" if made else "Every check holds"
+    return f"{held}, {near} near the limit" if near else held
 
 
 def tell(drawing: Drawing, id: str) -> str:

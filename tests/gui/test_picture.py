@@ -42,14 +42,14 @@ def test_svg_holds_the_figures_as_text(qapp, tmp_path):
     assert any("rev B" in t for t in found)
     assert any("licensed practitioner" in t for t in found)
     assert "Case: Full load, low intake · voltage limits 94 % to 110 %" in found
-    assert "All checks hold" in found
+    assert "Nothing is judged" in found
 
 
 def test_the_foot_says_how_the_checks_came_out(qapp, tmp_path):
     for given, words in (
         ({"failing": ("C1", "T1"), "near": ("T2",)}, "◆ 2 checks fail"),
         ({"failing": ("C1",)}, "◆ 1 check fails"),
-        ({"near": ("C1",)}, "▲ All checks hold, 1 near the limit"),
+        ({"near": ("C1",)}, "▲ Every check holds, 1 near the limit"),
     ):
         picture(TITLED, figures(TITLED, **given), tmp_path / "f.svg")
         assert words in texts(tmp_path / "f.svg")

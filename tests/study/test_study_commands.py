@@ -102,7 +102,7 @@ def test_the_text_is_aligned_and_says_its_units(tmp_path, capsys):
     main(["results", stored(tmp_path, base)])
     text = capsys.readouterr().out
     lines = text.splitlines()
-    assert lines[:3] == ["Yard", "Hill, revision B", "Solved. Every limit holds."]
+    assert lines[:3] == ["Yard", "Hill, revision B", "Solved. Every check holds."]
     head = next(i for i, line in enumerate(lines) if line.startswith("  id") and "loss kW" in line)
     end = lines[head].index("loss kW") + len("loss kW")
     assert lines[head + 1][end - 1].isdigit()

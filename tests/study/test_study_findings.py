@@ -8,7 +8,8 @@ from app.model.drawing import Case, Limits
 from app.model.kinds import Busbar, Cable, Generator, Load, Supply, Switch, Transformer
 from app.study import run
 from app.study.findings import apart
-from app.study.outcome import Verdict
+from app.study.outcome import Finding, Verdict
+from app.study.words import tally_words
 from solver.status import Status
 
 
@@ -162,6 +163,25 @@ def test_over_excitation_counts_from_the_tap_of_the_fed_winding():
     assert not of(run(transformer(held=106.0, tap=1)), "over-excitation")
     (lower,) = of(run(transformer(held=103.0, tap=-1)), "over-excitation")
     assert lower.value == pytest.approx(103.0 / 0.975)
+
+
+@pytest.mark.parametrize(
+    ("verdicts", "made", "words"),
+    [
+        ("", 0, "Nothing is judged"),
+        ("NOTE", 5, "Nothing is judged"),
+        ("HOLDS", 0, "Every check holds"),
+        ("HOLDS NOTE", 1, "1 check holds"),
+        ("HOLDS", 11, "11 checks hold"),
+        ("NEAR", 1, "1 check holds, 1 near the limit"),
+        ("NEAR NEAR HOLDS", 0, "Every check holds, 2 near the limit"),
+        ("FAILS NEAR", 11, "1 check fails"),
+        ("FAILS FAILS HOLDS", 11, "2 checks fail"),
+    ],
+)
+def test_one_sentence_says_how_the_checks_came_out(verdicts, made, words):
+    found = [Finding("check", Verdict[name], (), "") for name in verdicts.split()]
+    assert tally_words(found, made) == words
 
 
 def test_findings_stand_worst_first():
