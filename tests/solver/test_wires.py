@@ -389,3 +389,24 @@ def test_arrays_that_do_not_fit_are_named():
         solve(replace(network, wires=replace(network.wires, load_to=network.wires.load_to + 5)))
     with pytest.raises(ValueError, match="clock number"):
         Unit(0, 1, DELTA, EARTHED, 0, 11e3, 400.0, Z).port()
+
+
+SETTLED = (5, 6, 7, 8, 9, 13, 14, 23, 27)
+
+
+@pytest.mark.parametrize("seed", SETTLED)
+def test_random_layouts_with_neutrals_lost_and_sides_loose(seed):
+    rng = np.random.default_rng(seed)
+    layout = random_layout(seed, nodes=10, rings=seed % 3)
+    for place, (a, b, has, z, *y) in enumerate(layout.lines):
+        if len(has) == 4 and rng.random() < 0.25 and y:
+            layout.lines[place] = (a, b, ABC, z[:3, :3], y[0][:3, :3])
+    layout.loads = [(n, i, j, s / 2, v, (0.2, 0.3, 0.5)) for n, i, j, s, v, _ in layout.loads]
+    kind = seed % 5
+    if kind == 1:
+        layout.units = [Unit(0, 1, DELTA, Winding("Y", True), 11, 11e3, 400.0, Z)]
+    elif kind == 2:
+        layout.units = [Unit(0, 1, EARTHED, EARTHED, 0, 11e3 * t, 400.0, Z) for t in (1.0, 1.025)]
+    elif kind == 3:
+        layout.units = [Unit(0, 1, STAR, EARTHED, 0, 11e3, 400.0, Z, zero=10 * Z)]
+    differs(layout)
