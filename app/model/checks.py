@@ -17,6 +17,7 @@ from app.model.kinds import (
     Branch,
     Busbar,
     Element,
+    Generator,
     Load,
     Node,
     Supply,
@@ -213,7 +214,16 @@ def _fault_across(element: Element) -> str | None:
         return _fault_of_load(element)
     if isinstance(element, Transformer):
         return _fault_of_transformer(element)
+    if isinstance(element, Generator):
+        return _fault_of_generator(element)
     return _fault_of_supply(element) if isinstance(element, Supply) else None
+
+
+def _fault_of_generator(generator: Generator) -> str | None:
+    least, most = generator.q_min_kvar, generator.q_max_kvar
+    if least is not None and most is not None and least > most:
+        return f"Least reactive is {typed(least)} kvar, allowed is at most the most, {typed(most)} kvar."
+    return None
 
 
 def _fault_of_supply(supply: Supply) -> str | None:

@@ -121,6 +121,17 @@ RULES = (
         "Each load states its shares of constant power, current and impedance; blank is constant power.",
     ),
     (
+        "Motor",
+        "Running: constant power, rated output over efficiency. Starting straight on the line: the locked "
+        "rotor as an impedance; behind a soft starter or a drive: a held current. Each is started in turn "
+        "while the others run, with every supply behind U²/Sk at its least fault level.",
+    ),
+    (
+        "Tap changer, regulator",
+        "Steps notch by notch, those nearest the supply first, until the volts it holds, less the line drop, "
+        "are within half its bandwidth of its setting, or until its end stop.",
+    ),
+    (
         "Conductor temperature",
         "R = R20·[1 + α·(θ − 20 °C)] at the stated operating temperature, the same in every case "
         "(IEC 60287-1-1:2006, from memory). R20 is the maker's or the table's value as typed in.",
