@@ -10,7 +10,7 @@ from PySide6.QtTest import QTest
 from app.canvas.symbols import glyph_of
 from app.canvas.wording import branch_figures, describe, step_of
 from app.model import edits
-from app.model.kinds import Generator, Joint, Load, Regulator, Transformer
+from app.model.kinds import Generator, Joint, Load, Motor, Regulator, Transformer
 from app.study import run
 
 __all__ = ["desk"]
@@ -84,3 +84,23 @@ def test_a_tap_that_steps_by_itself_has_no_ladder_to_drag(desk):
     assert desk.board.ladder_of("T2") is None
     desk.undo()
     assert desk.board.ladder_of("T2") is not None
+
+
+def test_motor_and_regulator_are_drawn_by_their_keys(desk):
+    desk.select("J2")
+    desk.key(Qt.Key.Key_M)
+    motor = next(e for e in desk.drawing.elements.values() if isinstance(e, Motor))
+    assert motor.node == "J2"
+    desk.key(Qt.Key.Key_Escape)
+    desk.select("J2")
+    desk.key(Qt.Key.Key_V)
+    for _ in range(6):
+        desk.key(Qt.Key.Key_Up)
+    desk.key(Qt.Key.Key_Return)
+    made = [e for e in desk.drawing.elements.values() if isinstance(e, Regulator)]
+    assert [e.start for e in made] == ["J2"]
+    assert run(desk.drawing).branches.at(next(iter(_ids(desk, Regulator)))).live
+
+
+def _ids(desk, kind):
+    return [i for i, e in desk.drawing.elements.items() if isinstance(e, kind)]
