@@ -7,6 +7,7 @@ from app.model.changes import change, element
 from app.model.checks import EditRefused, called, quantity, shown
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
+from app.model.figures import stated
 from app.model.kinds import AnyElement, Load, Supply, Transformer
 from app.model.units import UnitError, parse, parse_ratio
 
@@ -47,6 +48,8 @@ def value_of(about: Field, text: str) -> Any:
 def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:
     if isinstance(one, Transformer) and about.name in ("v1_v", "v2_v") and "/" in text:
         return _both_windings(text, about)
+    if isinstance(one, Transformer) and about.name == "tap" and text.endswith("%"):
+        return {about.name: _notch(one, text)}
     try:
         return {about.name: value_of(about, text)}
     except UnitError:
@@ -78,6 +81,14 @@ def _both_windings(text: str, about: Field) -> dict[str, Any]:
     except UnitError:
         return {about.name: value_of(about, text)}
     return {"v1_v": first, "v2_v": second}
+
+
+def _notch(transformer: Transformer, text: str) -> int:
+    """The notch that a percentage stands for: −2.5 % is −1 where a notch is 2.5 %."""
+    percent, step = parse(text, "%"), transformer.notch_percent
+    if abs(percent / step - round(percent / step)) > 1e-9:
+        raise UnitError(f"{quantity(percent, '%')} is not allowed, allowed are steps of {stated(step, '%')}.")
+    return round(percent / step)
 
 
 def _choice(about: Field, text: str) -> str:

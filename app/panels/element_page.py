@@ -75,8 +75,6 @@ class ElementPage(Page):
                 row.show_demand(elements)
             else:
                 self._show(row, name, elements, stand_ins)
-            if isinstance(row, TapRow):
-                row.show_transformers(elements)
 
     def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
         values = [getattr(element, name) for element in elements]

@@ -10,7 +10,7 @@ from app.canvas.theme import Theme
 from app.model.assumed import FROM_SHELF
 from app.model.fields import Field
 from app.model.figures import MINUS
-from app.model.kinds import Element, Load, Transformer
+from app.model.kinds import Element, Load
 from app.panels.boxes import Box, Entry
 from app.panels.field_row import VARIOUS, FieldRow, Take
 from app.panels.words import Sentence
@@ -22,9 +22,7 @@ class TapRow(FieldRow):
     step = Signal(int)
 
     def __init__(self, field: Field, take: Take, theme: Theme) -> None:
-        super().__init__(field, self._take_notch, theme)
-        self._ask = take
-        self._percent = 0.0
+        super().__init__(field, take, theme)
         self.words = Sentence("tapped")
         self.words.setAlignment(Qt.AlignmentFlag.AlignRight)
         self.grid.addWidget(self.words, 3, 0, 1, 3)
@@ -46,24 +44,6 @@ class TapRow(FieldRow):
             button.clicked.connect(lambda _checked=False, n=notches: self.step.emit(n))
             across.addWidget(button)
         return Box(self.editor, steps)
-
-    def _take_notch(self, field: Field, text: str) -> str:
-        """A notch, or the percent it stands for: -1 and -2.5 % are the same where a notch is 2.5 %."""
-        number = text.strip().removesuffix("%").strip().replace(MINUS, "-").replace(",", ".")
-        if text.strip().endswith("%") and self._percent:
-            try:
-                notch = float(number) / self._percent
-            except ValueError:
-                return self._ask(field, text)
-            if abs(notch - round(notch)) < 1e-9:
-                return self._ask(field, str(round(notch)))
-            return f"Tap is {number} %, allowed are steps of {self._percent:g} %."
-        return self._ask(field, text.strip().removeprefix("+").replace(MINUS, "-"))
-
-    def show_transformers(self, elements: Sequence[Element]) -> None:
-        """What a notch is worth."""
-        steps = {e.notch_percent for e in elements if isinstance(e, Transformer)}
-        self._percent = steps.pop() if len(steps) == 1 else 0.0
 
     def say(self, words: str) -> None:
         """What the tap does."""
