@@ -118,7 +118,7 @@ def _line(asked: Asked, id: str) -> list[Row]:
         return []
     element, row = asked.drawing.elements[id], partial(_row, asked, "branches", id)
     assert isinstance(element, Line)
-    kelvin = assumed.value(element, "temperature_degc")
+    degrees = assumed.value(element, "temperature_degc")
     ohms = partial(plain, digits=4, unit="Ω")
     return [
         row("Current", "current_a", amps),
@@ -126,7 +126,7 @@ def _line(asked: Asked, id: str) -> list[Row]:
         row("Through", "through_kw", power),
         row("Drop", "drop_percent", partial(percent, digits=2)),
         row("Loss", "loss_kw", loss),
-        _once(row(f"R at {kelvin:g} °C", "resistance_ohm", ohms)),
+        _once(row(f"R at {degrees:g} °C", "resistance_ohm", ohms)),
         _once(row("X", "reactance_ohm", ohms)),
     ]
 
@@ -143,7 +143,7 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
         row("Loading", "loaded_percent", percent, LOADING),
     ]
     if low in asked.outcome.nodes:
-        made.append(_row(asked, "nodes", low, "LV volts", _voltage, volts, VOLTAGE))
+        made.append(_row(asked, "nodes", low, "Volts, lower side", _voltage, volts, VOLTAGE))
     if element.regulates != "no":
         made.append(_stands(asked, id, element.notch_percent))
     return made + [

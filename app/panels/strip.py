@@ -17,8 +17,8 @@ from app.model.figures import length, percent, volts
 from app.model.taps import by_hand
 from app.panels.results import tap_words
 from app.panels.strip_axes import Axes, Stretch, axes, node_points, span, stretches
-from app.panels.strip_course import Course, course
 from app.panels.strip_paint import Curve, Shown, paint_strip
+from app.panels.strip_routes import Routes, routes
 from app.panels.strip_tap import TapDrag
 from app.panels.words import LEFT
 from app.study.outcome import Outcome
@@ -42,7 +42,7 @@ class VoltageStrip(QWidget):
     ) -> None:
         super().__init__(parent)
         self._session, self._solving, self._attention, self._theme = session, solving, attention, theme
-        self.course = Course({}, ())
+        self.routes = Routes({}, ())
         self.axes: Axes | None = None
         self.curves: list[Curve] = []  # the case shown whole, of the others the main route
         self.before: Curve | None = None  # the main route when the drag began
@@ -92,33 +92,33 @@ class VoltageStrip(QWidget):
         """Lay the curves out anew."""
         outcome, drawing = self._outcome, self._session.drawing
         if outcome is None:
-            self.course, self.axes, self.curves, self.before = Course({}, ()), None, [], None
+            self.routes, self.axes, self.curves, self.before = Routes({}, ()), None, [], None
             self.update()
             return
         chosen = (self.tap.id,) if self.tap.id else self._attention.selection
-        self.course = course(drawing, outcome, self.case, chosen, self.course)
+        self.routes = routes(drawing, outcome, self.case, chosen, self.routes)
         before = self._solving.reference
-        reach = span(drawing.limits, self.course, [outcome, *([before] if before else [])])
+        reach = span(drawing.limits, self.routes, [outcome, *([before] if before else [])])
         if self.tap.reach is not None:
             reach = min(reach[0], self.tap.reach[0]), max(reach[1], self.tap.reach[1])
         self.tap.reach = reach if self.tap.id else None
         room = QRectF(
             LEFT_MARGIN, HEAD, self.width() - LEFT_MARGIN - RIGHT_MARGIN, max(self.height() - HEAD - FOOT, 20)
         )
-        self.axes = axes(room, self.course, reach)
-        backbone = self.course.backbone
+        self.axes = axes(room, self.routes, reach)
+        backbone = self.routes.backbone
         self.curves = [
-            self._curve(outcome, case, self.course if case == self.case else backbone)
+            self._curve(outcome, case, self.routes if case == self.case else backbone)
             for case in range(len(outcome.cases))
         ]
         known = before is not None and self.case < len(before.cases)
         self.before = self._curve(before, self.case, backbone) if before is not None and known else None
         self.update()
 
-    def _curve(self, outcome: Outcome, case: int, course: Course) -> Curve:
+    def _curve(self, outcome: Outcome, case: int, routes: Routes) -> Curve:
         assert self.axes is not None
-        spots = node_points(outcome, case, course, self.axes)
-        return Curve(outcome.cases[case], stretches(self._session.drawing, course, spots), spots)
+        spots = node_points(outcome, case, routes, self.axes)
+        return Curve(outcome.cases[case], stretches(self._session.drawing, routes, spots), spots)
 
     def resizeEvent(self, event) -> None:
         self._follow()
@@ -128,14 +128,14 @@ class VoltageStrip(QWidget):
         palette = self._theme.palette
         painter.fillRect(self.rect(), palette.field)
         self._paint_head(painter)
-        if self.axes is None or not self.course.stops:
+        if self.axes is None or not self.routes.stops:
             painter.setFont(font(9))
             painter.setPen(palette.soft)
             painter.drawText(self.rect(), int(Qt.AlignmentFlag.AlignCenter), self._why_empty())
             return
         shown = Shown(
             drawing=self._session.drawing,
-            course=self.course,
+            routes=self.routes,
             axes=self.axes,
             curves=self.curves,
             case=self.case,
@@ -202,13 +202,13 @@ class VoltageStrip(QWidget):
             return ""
         curve = self.curves[self.case]
         nodes = [(math.dist(point.toTuple(), at.toTuple()), id) for id, at in curve.nodes.items()]
-        near = min((n for n in nodes if n[1] in self.course.main), default=(math.inf, ""))
+        near = min((n for n in nodes if n[1] in self.routes.main), default=(math.inf, ""))
         if near[0] < REACH:
             return near[1]
         best, least = "", REACH
         for stretch in curve.stretches:
             pairs = zip(stretch.points, stretch.points[1:], strict=False)
-            away = min(_gap(point, a, b) for a, b in pairs) + (0 if stretch.node in self.course.main else 2)
+            away = min(_gap(point, a, b) for a, b in pairs) + (0 if stretch.node in self.routes.main else 2)
             if away < least:
                 best, least = stretch.branch, away
         return best
@@ -273,7 +273,7 @@ class VoltageStrip(QWidget):
         """The step that the keys move: the selected one, else the last on the main route."""
         steps = [s.branch for s in self._steps()]
         chosen = [s for s in steps if s in self._attention.selection]
-        on_main = [s.branch for s in self._steps() if s.node in self.course.main]
+        on_main = [s.branch for s in self._steps() if s.node in self.routes.main]
         return (chosen or on_main[-1:] or steps[-1:] or [""])[0]
 
     def keyPressEvent(self, event: QKeyEvent) -> None:

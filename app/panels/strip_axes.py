@@ -9,7 +9,7 @@ from PySide6.QtCore import QPointF, QRectF
 
 from app.model.drawing import Drawing, Limits
 from app.model.kinds import Transformer
-from app.panels.strip_course import Course, Stop
+from app.panels.strip_routes import Routes, Stop
 from app.study.outcome import Outcome
 
 STEP_PX = 46.0  # the breadth given to a transformer, which has no length
@@ -40,9 +40,9 @@ class Axes(Struct, frozen=True):
         return self.room.height() / (self.high - self.low)
 
 
-def axes(room: QRectF, course: Course, span: tuple[float, float]) -> Axes:
-    """Axes that hold every node of a course."""
-    stops = list(course.stops.values())
+def axes(room: QRectF, routes: Routes, span: tuple[float, float]) -> Axes:
+    """Axes that hold every node of a routes."""
+    stops = list(routes.stops.values())
     most = max((s.steps for s in stops), default=0)
     step = min(STEP_PX, room.width() / (3 * most)) if most else 0.0
     scales = [(room.width() - s.steps * step) / s.route_m for s in stops if s.route_m > 0]
@@ -51,12 +51,12 @@ def axes(room: QRectF, course: Course, span: tuple[float, float]) -> Axes:
     return Axes(room, *span, min(scales, default=0.0), step)
 
 
-def span(limits: Limits, course: Course, outcomes: list[Outcome]) -> tuple[float, float]:
+def span(limits: Limits, routes: Routes, outcomes: list[Outcome]) -> tuple[float, float]:
     """Percent range: the limits and every voltage, with a little air."""
     low, high = limits.low_percent, limits.high_percent
     for outcome in outcomes:
         rows = outcome.nodes.rows
-        percent = outcome.nodes.column("percent")[[rows[i] for i in course.stops if i in rows]]
+        percent = outcome.nodes.column("percent")[[rows[i] for i in routes.stops if i in rows]]
         known = percent[np.isfinite(percent)]
         low, high = float(known.min(initial=low)), float(known.max(initial=high))
     air = max(high - low, LEAST_SPAN) * 0.07
@@ -74,15 +74,15 @@ class Stretch(Struct, frozen=True):
     points: tuple[QPointF, ...]
 
 
-def stretches(drawing: Drawing, course: Course, spots: dict[str, QPointF]) -> list[Stretch]:
+def stretches(drawing: Drawing, routes: Routes, spots: dict[str, QPointF]) -> list[Stretch]:
     """Every branch as a polyline between the spots, those that feed a node first; a transformer is a step."""
     made = []
-    for stop in course.stops.values():
+    for stop in routes.stops.values():
         if stop.parent not in spots or stop.id not in spots:
             continue
         ends = spots[stop.parent], spots[stop.id]
         made.append(Stretch(stop.feeder, stop.id, _points(drawing, stop.feeder, *ends, 0.5)))
-    for k, tie in enumerate(course.ties):
+    for k, tie in enumerate(routes.ties):
         if tie.near in spots and tie.far in spots:
             ends = spots[tie.near], spots[tie.far]
             made.append(Stretch(tie.branch, "", _points(drawing, tie.branch, *ends, BESIDE[k % 2])))
@@ -97,10 +97,10 @@ def _points(drawing: Drawing, branch: str, a: QPointF, b: QPointF, share: float)
     return a, QPointF(across, a.y()), QPointF(across, b.y()), b
 
 
-def node_points(outcome: Outcome, case: int, course: Course, axes: Axes) -> dict[str, QPointF]:
+def node_points(outcome: Outcome, case: int, routes: Routes, axes: Axes) -> dict[str, QPointF]:
     """Where each node lies."""
     rows = outcome.nodes.rows
-    stops = [s for s in course.stops.values() if s.id in rows]
+    stops = [s for s in routes.stops.values() if s.id in rows]
     heights = axes.y(outcome.nodes.column("percent")[[rows[s.id] for s in stops], case]).tolist()
     return {s.id: QPointF(axes.x(s), y) for s, y in zip(stops, heights, strict=True) if math.isfinite(y)}
 

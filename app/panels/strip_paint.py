@@ -10,7 +10,7 @@ from app.model.figures import length, plain
 from app.model.kinds import Busbar, Transformer
 from app.model.taps import by_hand
 from app.panels.strip_axes import Axes, Stretch, ticks_m
-from app.panels.strip_course import Course
+from app.panels.strip_routes import Routes
 from app.panels.style import mixed
 from app.panels.words import LEFT, RIGHT
 
@@ -30,7 +30,7 @@ class Shown(Struct, frozen=True):
     """Everything one painting needs; `curves` by case, `before` the shown case when the drag began."""
 
     drawing: Drawing
-    course: Course
+    routes: Routes
     axes: Axes
     curves: list[Curve]
     case: int
@@ -81,8 +81,8 @@ def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette)
 
 def _paint_route_axis(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """Distances from the supply along the main route."""
-    course, axes = shown.course, shown.axes
-    way = [course.stops[i] for i in course.main]
+    routes, axes = shown.routes, shown.axes
+    way = [routes.stops[i] for i in routes.main]
     if not way:
         return
     painter.setFont(font(7.5))
@@ -123,14 +123,14 @@ def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, 
     if dash:
         pen.setDashPattern(dash)
     painter.setPen(pen)
-    _polyline(painter, curve.stretches, set(shown.course.main))
+    _polyline(painter, curve.stretches, set(shown.routes.main))
 
 
 def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
     painter.setPen(QPen(palette.tap, 1.2, Qt.PenStyle.DotLine))
-    _polyline(painter, curve.stretches, set(shown.course.main))
-    end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
-    now = shown.curves[shown.case].nodes.get(shown.course.main[-1]) if shown.course.main else None
+    _polyline(painter, curve.stretches, set(shown.routes.main))
+    end = curve.nodes.get(shown.routes.main[-1]) if shown.routes.main else None
+    now = shown.curves[shown.case].nodes.get(shown.routes.main[-1]) if shown.routes.main else None
     if end is None or now is None or abs(end.y() - now.y()) < 3:
         return
     painter.setFont(font(7.5))
@@ -142,7 +142,7 @@ def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palett
 
 def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The case shown: the main route strong, other branches faint, the selection and hover lit."""
-    curve, main = shown.curves[shown.case], set(shown.course.main)
+    curve, main = shown.curves[shown.case], set(shown.routes.main)
     faint = QPen(_inked(mixed(palette.flow, palette.field, 0.4), shown, palette), 1.2)
     painter.setPen(faint)
     _polyline(painter, [s for s in curve.stretches if s.node not in main])
@@ -162,7 +162,7 @@ def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:
 
 def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
     for id, at in curve.nodes.items():
-        on_main = id in shown.course.main
+        on_main = id in shown.routes.main
         lit = id == shown.hover or id in shown.selection
         if not on_main and not lit:
             continue
@@ -175,7 +175,7 @@ def _paint_nodes(painter: QPainter, curve: Curve, shown: Shown, palette: Palette
 
 def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, names: list[QRectF]) -> None:
     """The case's name at the far end, above or below its line, where no line and no other name is."""
-    end = curve.nodes.get(shown.course.main[-1]) if shown.course.main else None
+    end = curve.nodes.get(shown.routes.main[-1]) if shown.routes.main else None
     if end is None:
         return
     painter.setFont(font(8, bold=not names))
@@ -191,13 +191,13 @@ def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, n
 
 def _before_steps(curve: Curve, shown: Shown) -> list[QPointF]:
     """Ends of the long stretches of the main route, the last first: where else a name may stand."""
-    main = [s for s in curve.stretches if s.node in shown.course.main and len(s.points) == 2]
+    main = [s for s in curve.stretches if s.node in shown.routes.main and len(s.points) == 2]
     return [s.points[1] - QPointF(8, 0) for s in reversed(main) if s.points[1].x() - s.points[0].x() > 80]
 
 
 def _crossings(room: QRectF, shown: Shown) -> int:
     """How much would run through a name here."""
-    limits, main = shown.drawing.limits, set(shown.course.main)
+    limits, main = shown.drawing.limits, set(shown.routes.main)
     levels = [shown.axes.y(p) for p in (limits.low_percent, limits.high_percent)]
     crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
     crossed += 2 * (room.bottom() > shown.axes.room.bottom() + 3)
@@ -221,7 +221,7 @@ def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:
             continue
         held = stretch.branch == shown.held
         near = held or stretch.branch == shown.hover or stretch.branch in shown.selection
-        on_main = stretch.node in shown.course.main
+        on_main = stretch.node in shown.routes.main
         colour = _inked(palette.tap, shown, palette)
         if not on_main and not near:
             colour = mixed(colour, palette.field, 0.5)
@@ -265,12 +265,12 @@ def _free(left: float, wide: float, taken: list[tuple[float, float]], right: flo
 
 
 def _names(shown: Shown) -> list[tuple[str, float, bool]]:
-    course, axes, drawing = shown.course, shown.axes, shown.drawing
+    routes, axes, drawing = shown.routes, shown.axes, shown.drawing
     ranked = []
-    for k, id in enumerate(course.main):
-        stop = course.stops[id]
+    for k, id in enumerate(routes.main):
+        stop = routes.stops[id]
         chosen = id in shown.selection or id == shown.hover
-        end = k in (0, len(course.main) - 1)
+        end = k in (0, len(routes.main) - 1)
         plain_joint = not isinstance(drawing.elements[id], Busbar) and not drawing.elements[id].name
         ranked.append(
             (0 if chosen else 1 if end else 4 if plain_joint else 3, label(drawing, id), axes.x(stop), chosen)

@@ -170,7 +170,7 @@ class LossTape(QWidget):
 
     def words(self, piece: Piece) -> str:
         """A piece in words."""
-        what = {"copper": "copper loss", "iron": "iron loss", "cable": "line loss", "load": "load"}
+        what = {"copper": "copper loss", "iron": "iron loss", "lines": "line loss", "load": "load"}
         share = percent(100 * piece.kw / self.cut.total_kw, 2)
         size = power(piece.kw) if piece.what in ("load", "export") else loss(piece.kw)
         return f"{piece.name}: {what.get(piece.what, '')} {size}, {share} of all".replace(":  ", ": ")

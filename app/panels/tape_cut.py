@@ -6,7 +6,7 @@ from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.model.kinds import Cable, Generator, Load, Motor, OverheadLine, Transformer
-from app.panels.strip_course import column
+from app.panels.strip_routes import column
 from app.study.outcome import Outcome
 
 FACTORS = tuple(m * 10**k for k in range(5) for m in (1, 2, 4, 5))
@@ -17,7 +17,7 @@ FAN = 26.0  # between the bar and the losses drawn larger
 
 
 class Piece(NamedTuple):
-    """One cut of the tape. `ids` are the elements in it; what: load, export, copper, iron, cable, feed."""
+    """One cut of the tape. `ids` are the elements in it; what: load, export, copper, iron, lines, feed."""
 
     what: str
     ids: tuple[str, ...]
@@ -114,12 +114,12 @@ def _gather(drawing: Drawing, outcome: Outcome, case: int) -> dict[str, list[Pie
     return found
 
 
-LOSSES = {"copper": "copper_kw", "iron": "iron_kw", "cable": "loss_kw"}
+LOSSES = {"copper": "copper_kw", "iron": "iron_kw", "lines": "loss_kw"}
 _WHAT: dict[type, tuple[str, ...]] = {
     Load: ("load",),
     Motor: ("load",),
     Generator: ("infeed",),
     Transformer: ("copper", "iron"),
-    Cable: ("cable",),
-    OverheadLine: ("cable",),
+    Cable: ("lines",),
+    OverheadLine: ("lines",),
 }

@@ -1,4 +1,4 @@
-"""Painting the loss tape. Copper, iron and cable differ by pattern and word as well as by colour."""
+"""Painting the loss tape. Copper, iron and lines differ by pattern and word as well as by colour."""
 
 from collections.abc import Collection
 
@@ -17,7 +17,7 @@ MARGIN = 18.0
 BAR_TOP = 32.0
 BAR = 28.0
 ROUND = 4.0
-LOSSES = ("copper", "iron", "cable")
+LOSSES = ("copper", "iron", "lines")
 
 
 class Shown(Struct, frozen=True):
@@ -41,7 +41,7 @@ def colours(palette: Palette, stale: bool) -> dict[str, QColor]:
         "export": mixed(palette.flow, palette.field, 0.40 if dark else 0.24),
         "copper": mixed(palette.copper, palette.ink, 0.86) if dark else palette.copper,
         "iron": mixed(palette.iron, palette.ink, 0.62) if dark else palette.iron,
-        "cable": mixed(palette.copper, palette.paper, 0.78)
+        "lines": mixed(palette.copper, palette.paper, 0.78)
         if dark
         else mixed(palette.copper, palette.ink, 0.72),
         "feed": palette.flow,
@@ -142,8 +142,8 @@ def _paint_piece(
 
 
 def pattern(painter: QPainter, what: str, room: QRectF, bend: float, palette: Palette) -> None:
-    """Iron is laminated (upright lines), cable is stranded (slanting lines), copper is plain."""
-    if what not in ("iron", "cable"):
+    """Iron is laminated (upright lines), lines are stranded (slanting), copper is plain."""
+    if what not in ("iron", "lines"):
         return
     painter.save()
     clip = QPainterPath()

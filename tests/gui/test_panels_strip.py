@@ -8,7 +8,7 @@ from PySide6.QtTest import QTest
 from app.model.drawing import Drawing
 from app.model.kinds import Busbar, Cable, Load, Supply, Transformer
 from app.panels.strip_axes import ticks_m
-from app.panels.strip_course import course
+from app.panels.strip_routes import routes
 
 
 @pytest.fixture
@@ -120,7 +120,7 @@ def test_nodes_lie_at_their_percent_and_route(set_up):
     for id, spot in spots.items():
         assert spot.y() == pytest.approx(strip.axes.y(nodes.at(id).percent))
     assert spots["B1"].x() < spots["J1"].x() < spots["J2"].x() < spots["B2"].x()
-    assert strip.course.main == ("B1", "J1", "J2", "B2")
+    assert strip.routes.main == ("B1", "J1", "J2", "B2")
 
 
 def test_every_case_has_a_curve(qtbot):
@@ -136,9 +136,9 @@ def test_the_main_route_leads_through_what_is_selected(qtbot):
     drawing = fernhollow(ONE, C2=side, B3=Busbar(x=0, y=20, name="Side"), L3=Load(node="B3"))
     made = stage(qtbot, drawing)
     outcome = made.solving.outcome
-    assert course(drawing, outcome, 0, ()).main[-1] == "B2"
-    assert course(drawing, outcome, 0, ("C2",)).main == ("B1", "B3")
-    assert course(drawing, outcome, 0, ("L3",)).main == ("B1", "B3")
+    assert routes(drawing, outcome, 0, ()).main[-1] == "B2"
+    assert routes(drawing, outcome, 0, ("C2",)).main == ("B1", "B3")
+    assert routes(drawing, outcome, 0, ("L3",)).main == ("B1", "B3")
     made.solving.stop()
 
 
@@ -152,7 +152,7 @@ def test_an_empty_drawing_says_what_to_do(qtbot):
     from app.model.drawing import Drawing
 
     made = stage(qtbot, Drawing())
-    assert made.strip.axes is None or not made.strip.course.stops
+    assert made.strip.axes is None or not made.strip.routes.stops
     assert "supply" in made.strip._why_empty()
     made.strip.grab()
     made.solving.stop()
@@ -182,7 +182,7 @@ def test_a_branch_that_closes_a_ring_runs_between_the_spots_of_both_its_nodes(qt
     middle = (spots["B3"] + spots["B4"]) / 2
     QTest.mouseClick(strip, Qt.MouseButton.LeftButton, pos=at(middle))
     assert made.attention.selection == {"C3"}
-    assert strip.course.main == ("B1", "B2", "B4")
+    assert strip.routes.main == ("B1", "B2", "B4")
     made.solving.stop()
 
 
@@ -198,4 +198,4 @@ def test_transformers_side_by_side_have_a_handle_each(qtbot):
 
 
 def test_a_drawing_of_trees_has_no_ties(set_up):
-    assert set_up.strip.course.ties == ()
+    assert set_up.strip.routes.ties == ()

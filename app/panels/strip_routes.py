@@ -29,7 +29,7 @@ class Tie(Struct, frozen=True):
     far: str
 
 
-class Course(Struct, frozen=True):
+class Routes(Struct, frozen=True):
     """All live nodes by id, supplies first, the main route from its supply to its far end, and the ties."""
 
     stops: dict[str, Stop]
@@ -50,24 +50,24 @@ class Course(Struct, frozen=True):
         return tuple(reversed(way))
 
     @property
-    def backbone(self) -> "Course":
+    def backbone(self) -> "Routes":
         """The main route alone."""
-        return Course({i: self.stops[i] for i in self.main}, self.main)
+        return Routes({i: self.stops[i] for i in self.main}, self.main)
 
     def fed_by(self, branch: str) -> Stop | None:
         """The node that a branch feeds."""
         return next((s for s in self.stops.values() if s.feeder == branch), None)
 
 
-def course(
-    drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[str], last: Course | None = None
-) -> Course:
+def routes(
+    drawing: Drawing, outcome: Outcome, case: int, selection: Iterable[str], last: Routes | None = None
+) -> Routes:
     """The main route leads to what is selected, else to the node with the least margin. `last` is used
     again where the layout is fed as it was."""
     stops = _stops(drawing, outcome, case, last.stops if last else {})
-    made = Course(stops, (), _ties(drawing, outcome, stops))
+    made = Routes(stops, (), _ties(drawing, outcome, stops))
     target = _target(drawing, outcome, made, selection)
-    return Course(stops, made.way_to(_onward(made, target)) if target else (), made.ties)
+    return Routes(stops, made.way_to(_onward(made, target)) if target else (), made.ties)
 
 
 def _ties(drawing: Drawing, outcome: Outcome, stops: dict[str, Stop]) -> tuple[Tie, ...]:
@@ -134,46 +134,46 @@ def _parent(drawing: Drawing, outcome: Outcome, id: str) -> str:
     return branch.start if branch.end == id else branch.end
 
 
-def _target(drawing: Drawing, outcome: Outcome, course: Course, selection: Iterable[str]) -> str:
+def _target(drawing: Drawing, outcome: Outcome, routes: Routes, selection: Iterable[str]) -> str:
     for id in sorted(selection):
         element = drawing.elements.get(id)
-        if isinstance(element, Node) and id in course.stops:
+        if isinstance(element, Node) and id in routes.stops:
             return id
-        if isinstance(element, Attachment) and element.node in course.stops:
+        if isinstance(element, Attachment) and element.node in routes.stops:
             return element.node
-        fed = course.fed_by(id)
+        fed = routes.fed_by(id)
         if fed is not None:
             return fed.id
-        tie = next((t for t in course.ties if t.branch == id), None)
+        tie = next((t for t in routes.ties if t.branch == id), None)
         if tie is not None:
             return tie.far
-    return _worst(outcome.findings, course) or _farthest(course)
+    return _worst(outcome.findings, routes) or _farthest(routes)
 
 
-def _worst(findings: Iterable[Finding], course: Course) -> str:
+def _worst(findings: Iterable[Finding], routes: Routes) -> str:
     """The node of the most urgent voltage finding."""
     about = [
         (f.verdict.rank, f.margin, f.ids[0])
         for f in findings
-        if f.margin is not None and f.ids and f.ids[0] in course.stops
+        if f.margin is not None and f.ids and f.ids[0] in routes.stops
     ]
     return min(about)[2] if about else ""
 
 
-def _farthest(course: Course) -> str:
-    return max(course.stops, key=lambda i: (course.stops[i].route_m, course.stops[i].steps), default="")
+def _farthest(routes: Routes) -> str:
+    return max(routes.stops, key=lambda i: (routes.stops[i].route_m, routes.stops[i].steps), default="")
 
 
-def _onward(course: Course, id: str) -> str:
+def _onward(routes: Routes, id: str) -> str:
     """From the target on to the far end of its longest branch, so that the route does not stop halfway."""
     children: dict[str, list[str]] = {}
-    for stop in course.stops.values():
+    for stop in routes.stops.values():
         children.setdefault(stop.parent, []).append(stop.id)
-    best, reach, waiting = id, course.stops[id].route_m, [id]
+    best, reach, waiting = id, routes.stops[id].route_m, [id]
     while waiting:
         node = waiting.pop()
-        stop = course.stops[node]
-        if (stop.route_m, stop.steps) > (reach, course.stops[best].steps):
+        stop = routes.stops[node]
+        if (stop.route_m, stop.steps) > (reach, routes.stops[best].steps):
             best, reach = node, stop.route_m
         waiting += children.get(node, [])
     return best
