@@ -88,7 +88,7 @@ class Window(QMainWindow):
         whole.setLayout(down)
         self.setCentralWidget(whole)
         self.setMinimumSize(QSize(760, 520))
-        self.resize(1440, 900)
+        self.resize(QSize(1440, 900).boundedTo(self.screen().availableSize()))
         if self.preferences.geometry:
             self.restoreGeometry(QByteArray(self.preferences.geometry))
 

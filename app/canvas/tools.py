@@ -67,6 +67,9 @@ class Tool:
     def double(self, touch: Touch) -> None:
         """The second press of a double click."""
 
+    def leave(self) -> None:
+        """The pointer left the board."""
+
     def key(self, event: QKeyEvent) -> bool:
         """A key went down; True where the tool has used it."""
         if event.key() == Qt.Key.Key_Escape:

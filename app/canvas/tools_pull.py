@@ -12,7 +12,7 @@ from PySide6.QtGui import QKeyEvent, QPainter, QPen
 from app.canvas.geometry import GRID, HitKind, between, distance, meet, node_point, scene, snap
 from app.canvas.lettering import Run, Style, paint
 from app.canvas.palette import Palette
-from app.canvas.tools import ARROWS, ENTERS, Tool, Touch, paint_ring, paint_spot
+from app.canvas.tools import ARROWS, ENTERS, Tool, Touch, node_at, paint_ring, paint_spot
 from app.canvas.tools_length import LengthField
 from app.model import edits
 from app.model.drawing import Drawing, Part, label
@@ -21,6 +21,9 @@ from app.model.kinds import KIND_WORDS, Branch, Busbar, Joint, Line, Node, Point
 
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
+
+
+REACH = 8.0  # steps to the far end of a branch that nobody has aimed
 
 
 class Brush(Struct, frozen=True):
@@ -127,6 +130,7 @@ class PullTool(Tool):
         self._from_px: QPointF | None = None
         self._aim = self._first_aim()
         self.field = LengthField(view)
+        self.field.follow(view.mapFromScene(scene(start.x, start.y)))
 
     def _first_aim(self) -> Spot:
         return Spot(self.start.x, self.start.y, node=self.start.node)
@@ -154,12 +158,23 @@ class PullTool(Tool):
         if key == Qt.Key.Key_Escape:
             self.cancel()
         elif key in ENTERS:
-            self._finish(None)
+            if not event.isAutoRepeat():
+                self._aim_ahead()
+                self._finish(None)
         elif key in ARROWS and not self.field.text():
             self._step(*ARROWS[key], 5 if event.modifiers() & Qt.KeyboardModifier.ShiftModifier else 1)
         elif isinstance(self.brush.part.element, Line):
             self.field.feed(event)
+            if self.field.text():
+                self._aim_ahead()
         return True
+
+    def _aim_ahead(self) -> None:
+        """Where nothing was aimed at yet: the first free direction."""
+        if self._nowhere():
+            x, y = ahead(self.view.drawing, self.start)
+            self._aim = Spot(x, y, node=node_at(self.view.drawing, x, y))
+            self.view.float_again()
 
     def end(self) -> None:
         self.field.hide()
@@ -217,6 +232,27 @@ class PullTool(Tool):
             self.view.place(self.brush.part)
         else:
             self.view.rest()
+
+
+def ahead(drawing: Drawing, start: Spot) -> Point:
+    """The far end of a branch that nobody has aimed: a usual length off, to the right if that is free, and
+    square to a bar."""
+    node = start.as_node(drawing)
+    ways: list[Point] = [(1, 0), (0, 1), (0, -1), (-1, 0)]
+    if isinstance(node, Busbar):
+        ways.sort(key=lambda way: (way[0] == 0) is node.upright)
+    runs = []
+    for branch in drawing.branches().values():
+        if start.node in (branch.start, branch.end):
+            far = drawing.elements[branch.end if branch.start == start.node else branch.start]
+            assert isinstance(far, Node)
+            runs.append((far.x - node.x, far.y - node.y))
+    for dx, dy in ways:
+        x, y = start.x + dx * REACH, start.y + dy * REACH
+        taken = any(dx * a + dy * b > abs(dy * a) + abs(dx * b) for a, b in runs)
+        if not taken and node_at(drawing, x, y) is None:
+            return x, y
+    return start.x + REACH, start.y
 
 
 def draw(view: BoardView, start: Spot, end: Spot, brush: Brush, length: str = "") -> str | None:

@@ -140,6 +140,11 @@ class SelectTool(Tool):
         if before != (self._near, self._handle) or on_bar:
             self.view.float_again()
 
+    def leave(self) -> None:
+        self._near, self._handle = "", None
+        self.view.attention.look_at("")
+        self.view.float_again()
+
     def _cursor_over(self, hit: Hit) -> Qt.CursorShape:
         if self._handle is not None:
             return Qt.CursorShape.CrossCursor

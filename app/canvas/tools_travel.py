@@ -10,9 +10,9 @@ from app.canvas.geometry import GRID
 
 if TYPE_CHECKING:
     from PySide6.QtGui import QWheelEvent
-    from PySide6.QtWidgets import QGraphicsView
 
     from app.canvas.view import BoardView
+    from app.canvas.view_events import EventView
 
 SMALLEST, LARGEST = 0.08, 8.0
 ENOUGH = 1.4  # a small drawing is not blown up beyond this
@@ -22,24 +22,26 @@ A_WHEEL_CLICK = 1.15
 EMPTY = QRectF(-20 * GRID, -12 * GRID, 40 * GRID, 24 * GRID)
 
 
-def zoom(view: QGraphicsView, factor: float, at: QPointF) -> None:
+def zoom(view: EventView, factor: float, at: QPointF) -> None:
     """Scale the view; the point of the paper under `at`, in viewport pixels, stays there."""
     now = view.transform().m11()
     factor = min(max(now * factor, SMALLEST), LARGEST) / now
     held = view.viewportTransform().inverted()[0].map(at)
+    view.fitted = False
     view.scale(factor, factor)
     strayed = view.viewportTransform().map(held) - at
     shift(view, strayed)
 
 
-def shift(view: QGraphicsView, by: QPointF) -> None:
+def shift(view: EventView, by: QPointF) -> None:
     """Move the paper under the window by viewport pixels."""
+    view.fitted = False
     level, upright = view.horizontalScrollBar(), view.verticalScrollBar()
     level.setValue(level.value() + round(by.x()))
     upright.setValue(upright.value() + round(by.y()))
 
 
-def wheel(view: QGraphicsView, event: QWheelEvent) -> None:
+def wheel(view: EventView, event: QWheelEvent) -> None:
     """Ctrl zooms, Shift goes sideways, else the paper scrolls; touch pads by their own pixels."""
     if event.modifiers() & Qt.KeyboardModifier.ControlModifier:
         zoom(view, A_WHEEL_CLICK ** (event.angleDelta().y() / 120), event.position())
@@ -52,7 +54,7 @@ def wheel(view: QGraphicsView, event: QWheelEvent) -> None:
 
 
 def fit(view: BoardView) -> None:
-    """Show the whole drawing, small ones not larger than life."""
+    """Show the whole drawing, small ones not larger than life; until zoomed or scrolled it stays fitted."""
     box = view.board.itemsBoundingRect() if view.drawing.elements else EMPTY
     box = box.adjusted(-MARGIN, -MARGIN, MARGIN, MARGIN)
     room = view.viewport().rect()
@@ -61,3 +63,4 @@ def fit(view: BoardView) -> None:
     view.resetTransform()
     view.scale(scale, scale)
     view.centerOn(box.center())
+    view.fitted = True

@@ -154,6 +154,7 @@ class BoardView(EventView):
         """Scroll until a point of the paper is in view."""
         room = self.viewport().rect().adjusted(EDGE_PX, EDGE_PX, -EDGE_PX, -EDGE_PX)
         if not room.contains(self.mapFromScene(at)):
+            self.fitted = False
             self.centerOn(at)
 
     def show_selection(self) -> None:
@@ -169,7 +170,7 @@ class BoardView(EventView):
         if isinstance(part.element, Branch):
             self.brush = Brush(part)
         self.use(PlaceTool(self, part))
-        self.setFocus(Qt.FocusReason.OtherFocusReason)
+        self.take_focus()
 
     def copy_selection(self) -> None:
         """Copy the selection to the clipboard."""
@@ -245,6 +246,10 @@ class BoardView(EventView):
         """Show the whole drawing."""
         travel.fit(self)
 
+    def take_focus(self) -> None:
+        """Take the keyboard back, such as when a field of the card lets it go."""
+        self.setFocus(Qt.FocusReason.OtherFocusReason)
+
     # what events ask for -------------------------------------------------------------------------
 
     def part_dragged(self, part: Part) -> None:
@@ -256,7 +261,7 @@ class BoardView(EventView):
         if isinstance(self.tool, PlaceTool):
             self.tool.drop(at)
             self.rest()
-            self.setFocus(Qt.FocusReason.OtherFocusReason)
+            self.take_focus()
 
     def key_pressed(self, event: QKeyEvent) -> bool:
         """A key that no tool wanted."""

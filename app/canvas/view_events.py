@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QEvent, QPoint, QPointF, QRectF, Qt, Signal
-from PySide6.QtGui import QKeyEvent, QMouseEvent, QNativeGestureEvent, QPainter, QWheelEvent
+from PySide6.QtGui import QKeyEvent, QMouseEvent, QNativeGestureEvent, QPainter, QResizeEvent, QWheelEvent
 from PySide6.QtWidgets import QGestureEvent, QGraphicsScene, QGraphicsView, QPinchGesture, QWidget
 
 from app.canvas import tools_travel as travel
@@ -31,6 +31,7 @@ class EventView(QGraphicsView):
     def __init__(self, scene: QGraphicsScene) -> None:
         super().__init__(scene)
         self.pointer: QPointF | None = None  # in viewport pixels, while it is over the board
+        self.fitted = False  # shown whole, and the person has neither zoomed nor scrolled since
         self._panning: QPointF | None = None
         self._space = False
         self._to_scene = False  # the press went to a ladder, so the rest of the drag does too
@@ -84,6 +85,11 @@ class EventView(QGraphicsView):
         self.pointer = px
         return Touch(self.paper(px), px, modifiers)
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        super().resizeEvent(event)
+        if self.fitted:
+            travel.fit(self)  # type: ignore[arg-type]
+
     # pointer ------------------------------------------------------------------------------------
 
     def mousePressEvent(self, event: QMouseEvent) -> None:
@@ -134,10 +140,6 @@ class EventView(QGraphicsView):
             else:
                 self.tool.release(touch)
 
-    def leaveEvent(self, event: QEvent) -> None:
-        self.pointer = None
-        super().leaveEvent(event)
-
     def contextMenuEvent(self, event) -> None:
         if self.tool is not self.idle:
             self.tool.cancel()
@@ -187,7 +189,10 @@ class EventView(QGraphicsView):
         event.accept()
 
     def viewportEvent(self, event: QEvent) -> bool:
-        if isinstance(event, QNativeGestureEvent):
+        if event.type() == QEvent.Type.Leave:
+            self.pointer = None
+            self.tool.leave()
+        elif isinstance(event, QNativeGestureEvent):
             if event.gestureType() == Qt.NativeGestureType.ZoomNativeGesture:
                 travel.zoom(self, 1.0 + event.value(), event.position())
                 return True

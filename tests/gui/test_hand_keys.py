@@ -336,3 +336,43 @@ def test_the_help_lists_every_letter_that_places_a_part():
     for letter in "SLGKCOTWBJRXF":
         assert letter in said
     assert all(what and keys for keys, what in SHORTCUTS)
+
+
+def length_field(desk):
+    return next(f for f in desk.view.viewport().findChildren(QLineEdit) if f.isVisible())
+
+
+@pytest.mark.parametrize("begin", [Qt.Key.Key_Return, Qt.Key.Key_X, Qt.Key.Key_C])
+def test_a_length_typed_before_aiming_stands_at_the_node_and_enter_draws_on(desk, begin):
+    desk.select("B2")
+    desk.key(begin)
+    desk.type("230")
+    field, node = length_field(desk), desk.px(36, 0)
+    assert (field.pos() - node).manhattanLength() < 60
+    desk.key(Qt.Key.Key_Left)  # the text is not empty: the aim stays
+    desk.key(Qt.Key.Key_Return)
+    made = desk.drawing.elements["C2"]
+    assert (made.start, made.length_m) == ("B2", 230.0)
+    far = desk.drawing.elements[made.end]
+    assert (far.x, far.y) == (44.0, 0.0)
+
+
+def test_arrows_aim_as_long_as_nothing_is_typed(desk):
+    desk.select("B2")
+    desk.key(Qt.Key.Key_X)
+    for _ in range(4):
+        desk.key(Qt.Key.Key_Down)
+    desk.type("75")
+    desk.key(Qt.Key.Key_Return)
+    made = desk.drawing.elements["C2"]
+    far = desk.drawing.elements[made.end]
+    assert (made.length_m, far.x, far.y) == (75.0, 36.0, 4.0)
+
+
+def test_what_nobody_aims_goes_where_there_is_room(desk):
+    for expected in ((10.0, 8.0), (10.0, -8.0)):  # J1 has T1 at its left and C1 at its right
+        desk.select("J1")
+        desk.key(Qt.Key.Key_C)
+        desk.key(Qt.Key.Key_Return)
+        (far,) = desk.attention.selection
+        assert (desk.drawing.elements[far].x, desk.drawing.elements[far].y) == expected

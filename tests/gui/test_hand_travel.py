@@ -2,8 +2,9 @@
 
 import pytest
 from hand_desk import CTRL, LEFT, NONE, SHIFT, blank, desk
-from PySide6.QtCore import QPoint, QPointF, Qt
+from PySide6.QtCore import QEvent, QPoint, QPointF, Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QApplication, QLineEdit
 
 __all__ = ["blank", "desk"]
 
@@ -76,3 +77,56 @@ def test_space_or_the_middle_button_moves_the_paper(desk):
 def test_an_empty_board_fits_too(blank):
     blank.view.fit()
     assert 0.1 < blank.view.scale_now() < 2
+
+
+def whole_in_view(desk):
+    box = desk.view.mapFromScene(desk.board.content()).boundingRect()
+    return desk.view.viewport().rect().contains(box)
+
+
+def test_a_fitted_drawing_stays_fitted_while_the_view_changes_size(desk):
+    for width, height in ((500, 300), (1600, 900), (700, 800)):
+        desk.view.resize(width, height)
+        QApplication.processEvents()
+        assert whole_in_view(desk)
+        held = desk.view.transform().m11()
+        desk.view.fit()
+        assert desk.view.transform().m11() == held
+
+
+def test_a_zoom_or_a_scroll_ends_that_until_the_next_fit(desk):
+    middle = desk.view.viewport().rect().center()
+    for mods in (NONE, CTRL):
+        desk.view.fit()
+        desk.wheel(middle, 1, mods)
+        held = desk.view.transform().m11()
+        desk.view.resize(desk.view.width() - 300, 400)
+        QApplication.processEvents()
+        assert desk.view.transform().m11() == held
+        desk.view.resize(1200, 700)
+        QApplication.processEvents()
+    desk.key(Qt.Key.Key_F)
+    desk.view.resize(600, 400)
+    QApplication.processEvents()
+    assert whole_in_view(desk)
+
+
+def test_nothing_stays_lit_when_the_pointer_leaves(desk):
+    desk.hover(0, 0)
+    assert desk.attention.hover == "B1"
+    lit = desk.view.viewport().grab().toImage()
+    QApplication.sendEvent(desk.view.viewport(), QEvent(QEvent.Type.Leave))
+    assert desk.attention.hover == ""
+    assert not desk.view.hand_is_here()
+    assert desk.view.viewport().grab().toImage() != lit
+    assert not desk.board.item_of("B1").hovered
+
+
+def test_the_board_takes_the_keyboard_back(desk, qtbot):
+    field = QLineEdit(desk.view)
+    field.show()
+    desk.view.activateWindow()
+    field.setFocus()
+    qtbot.waitUntil(field.hasFocus)
+    desk.view.take_focus()
+    assert desk.view.hasFocus()

@@ -1,0 +1,42 @@
+"""The board inside its window: first start fits the screen, and the drawing fits the board."""
+
+from pathlib import Path
+
+import pytest
+from PySide6.QtWidgets import QApplication
+
+from app.live.preferences import Preferences
+from app.window import Window
+
+SAMPLE = Path(__file__).parents[2] / "samples" / "fernhollow_pair.farend"
+
+
+@pytest.fixture
+def window(qtbot, tmp_path):
+    made = Window(Preferences(tmp_path / "likes.ini"), tmp_path / "recovery")
+    qtbot.addWidget(made)
+    yield made
+    made.session.history.setClean()
+    made.close()
+
+
+def test_a_first_start_is_no_larger_than_the_screen(window):
+    room = window.screen().availableSize()
+    window.show()
+    assert window.width() <= max(room.width(), window.minimumWidth())
+    assert window.height() <= max(room.height(), window.minimumHeight())
+
+
+def test_the_drawing_fits_whatever_size_the_board_comes_to(window, qtbot):
+    window.show()
+    window.menus.open_path(SAMPLE)
+    qtbot.waitUntil(lambda: window.view.fitted)
+    for size in ((1440, 900), (1024, 640)):
+        window.resize(*size)
+        QApplication.processEvents()
+        box = window.view.mapFromScene(window.board.content()).boundingRect()
+        assert window.view.viewport().rect().contains(box)
+    window.middle.setSizes([150, 500])
+    QApplication.processEvents()
+    box = window.view.mapFromScene(window.board.content()).boundingRect()
+    assert window.view.viewport().rect().contains(box)
