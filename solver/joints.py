@@ -1,6 +1,5 @@
 """Which places the ties join, conductor by conductor, and through what impedance."""
 
-from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -49,7 +48,7 @@ def joints_of(network: Network, forest: Forest, by: Flag | None) -> Joints | Non
     Returns : Joints, None where there is none
     """
     wires = network.wires
-    columns: list[tuple[list[Entry], Complex]] = _closing(network.conductors, forest, by)
+    columns: list[tuple[list[Entry], Complex]] = _closing(network, forest, by)
     earth = np.full(0 if wires is None else wires.earth_node.size, -1)
     own = np.full((network.transformer_from.size, 2), -1)
     if wires is not None:
@@ -67,29 +66,48 @@ def joints_of(network: Network, forest: Forest, by: Flag | None) -> Joints | Non
     return Joints(place, conductor, column, weight.astype(float), z, earth, own)
 
 
-def _closing(k: int, forest: Forest, by: Flag | None) -> list[tuple[list[Entry], Complex]]:
-    """Each conductor of a cut end joins the node it was cut from."""
+def _closing(network: Network, forest: Forest, by: Flag | None) -> list[tuple[list[Entry], Complex]]:
+    """Each conductor of a cut end joins the node it was cut from.
+
+    Where both neutrals are held at earth without impedance, how they share is not determined by volts: there
+    the neutral of each transformer brings back what its phases take out, as star points on one bar do.
+    """
     if not forest.tie_place.size:
         return []
+    k, nothing = network.conductors, np.zeros(1, dtype=np.complex128)
     has = np.ones((forest.order.size, k), dtype=bool) if by is None else by
-    nothing = np.zeros(1, dtype=np.complex128)
-    ends: Sequence[tuple[int, int]] = list(
-        zip(forest.tie_place.tolist(), forest.place[forest.tie_node].tolist(), strict=True)
-    )
-    return [
-        ([(cut, i, 1.0), (whole, i, -1.0)], nothing)
-        for cut, whole in ends
-        for i in np.flatnonzero(has[cut]).tolist()
-    ]
+    stiff = _stiff(network.wires, forest)
+    columns: list[tuple[list[Entry], Complex]] = []
+    for cut, whole in zip(forest.tie_place.tolist(), forest.place[forest.tie_node].tolist(), strict=True):
+        conductors = np.flatnonzero(has[cut]).tolist()
+        back: list[Entry] = []
+        if cut in stiff and whole in stiff and k - 1 in conductors:
+            conductors.remove(k - 1)
+            back = [(cut, k - 1, -1.0), (whole, k - 1, 1.0)]
+        columns += [([(cut, i, 1.0), (whole, i, -1.0), *back], nothing) for i in conductors]
+    return columns
+
+
+def _stiff(wires: Wires | None, forest: Forest) -> set[int]:
+    """Roots of zones whose neutral is the star point of their transformer, earthed without impedance."""
+    if wires is None:
+        return set()
+    supplied = int(forest.depth_zone[1])
+    rows = forest.zone_transformer[supplied:]
+    side = (forest.transformer_way[rows] < 0).astype(int)
+    units = wires.units
+    held = ~units.loose[rows, side, 0].any(axis=-1) & (units.series[rows, side, -1, -1] == 0).all(axis=-1)
+    held &= units.has[rows, 1 - side, -1]
+    return set(forest.zone_start[supplied:-1][held].tolist())
 
 
 def _add_own(wires: Wires, forest: Forest, own: Index, columns: list[tuple[list[Entry], Complex]]) -> None:
     supplied = int(forest.depth_zone[1])
-    for zone in range(supplied, forest.zone_transformer.size):
-        row, place = int(forest.zone_transformer[zone]), int(forest.zone_fed[zone])
-        side = 0 if forest.transformer_way[row] > 0 else 1
-        for which, how in enumerate(wires.units.own[row, side]):
-            if how.any():
-                own[row, which] = len(columns)
-                entries = [(place, int(i), float(how[i])) for i in np.flatnonzero(how)]
-                columns.append((entries, wires.units.own_z[row, side, which]))
+    rows, fed = forest.zone_transformer[supplied:], forest.zone_fed[supplied:]
+    side = (forest.transformer_way[rows] < 0).astype(int)
+    how = wires.units.own[rows, side]
+    for zone, which in zip(*(part.tolist() for part in np.nonzero(how.any(axis=-1))), strict=True):
+        weights, place = how[zone, which], int(fed[zone])
+        own[rows[zone], which] = len(columns)
+        entries = [(place, int(i), float(weights[i])) for i in np.flatnonzero(weights)]
+        columns.append((entries, wires.units.own_z[rows[zone], side[zone], which]))

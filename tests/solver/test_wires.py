@@ -410,3 +410,12 @@ def test_random_layouts_with_neutrals_lost_and_sides_loose(seed):
     elif kind == 3:
         layout.units = [Unit(0, 1, STAR, EARTHED, 0, 11e3, 400.0, Z, zero=10 * Z)]
     differs(layout)
+
+
+def test_neutrals_of_transformers_side_by_side_share_as_their_phases_do():
+    units = [Unit(0, 1, DELTA, EARTHED, 11, 11e3, 400.0, Z * share) for share in (1, 2)]
+    layout = Layout(3, [(0, balanced(HIGH))], [(1, 2, ABCN, FOUR)], units, TO_NEUTRAL)
+    solution, _ = differs(layout)
+    out = solution.transformer_out[:, :, 0]
+    assert np.abs(out.sum(axis=1)).max() < 1e-9 * np.abs(out).max()
+    assert out[0] == pytest.approx(2 * out[1], rel=1e-8)
