@@ -146,6 +146,7 @@ def _verdict(outcome: Outcome) -> Run:
 _TALLY = {
     Verdict.BLOCKS: ("◆ ", Style.FAILED),
     Verdict.FAILS: ("◆ ", Style.FAILED),
+    Verdict.ADVICE: ("▲ ", Style.NEAR),
     Verdict.NEAR: ("▲ ", Style.NEAR),
     Verdict.HOLDS: ("", Style.GOOD),
 }

@@ -24,6 +24,7 @@ class Standing(Enum):
 
 _STANDING = {
     Verdict.HOLDS: Standing.GOOD,
+    Verdict.ADVICE: Standing.NEAR,
     Verdict.NEAR: Standing.NEAR,
     Verdict.FAILS: Standing.FAILED,
     Verdict.BLOCKS: Standing.FAILED,

@@ -29,14 +29,16 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
     if outcome.status is not Status.SOLVED:
         return _unsolved(drawing, outcome)
     found = ordered(outcome)
-    near = [f for f in found if f.verdict is Verdict.NEAR]
+    near = [f for f in found if f.verdict in (Verdict.ADVICE, Verdict.NEAR)]
     head = f"{tally_words(found, checks_made(drawing, outcome.nodes, outcome.branches))}."
     if found and found[0].verdict in (Verdict.FAILS, Verdict.BLOCKS):
         return Line(found[0].verdict, head, found[0].sentence, found[0].ids)
     tightest = min((f for f in found if f.margin is not None), key=lambda f: f.margin or 0.0, default=None)
     told = near[0] if near else tightest
-    sentence = f"Tightest: {told.sentence}" if told else ""
-    return Line(Verdict.NEAR if near else Verdict.HOLDS, head, sentence, told.ids if told else ())
+    if told is None:
+        return Line(Verdict.HOLDS, head, "")
+    lead = "" if told.verdict is Verdict.ADVICE else "Tightest: "
+    return Line(told.verdict if near else Verdict.HOLDS, head, lead + told.sentence, told.ids)
 
 
 def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:

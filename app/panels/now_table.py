@@ -140,7 +140,7 @@ class NowTable(QWidget):
         look = self._theme.palette
         if self.stale:
             return mixed(look.soft, look.panel, 0.7)
-        if strong and row.verdict in (Verdict.FAILS, Verdict.NEAR):
+        if strong and row.verdict in (Verdict.FAILS, Verdict.ADVICE, Verdict.NEAR):
             return colour_of(row.verdict, look)
         return look.ink
 

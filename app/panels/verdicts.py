@@ -10,13 +10,14 @@ from app.canvas.standing import Standing
 from app.canvas.theme import Theme
 from app.study.outcome import Verdict
 
-_STANDING = {Verdict.NEAR: Standing.NEAR, Verdict.FAILS: Standing.FAILED}
+_STANDING = {Verdict.ADVICE: Standing.NEAR, Verdict.NEAR: Standing.NEAR, Verdict.FAILS: Standing.FAILED}
 
 
 def colour_of(verdict: Verdict, palette: Palette) -> QColor:
     """The colour of a verdict."""
     return {
         Verdict.HOLDS: palette.good,
+        Verdict.ADVICE: palette.near,
         Verdict.NEAR: palette.near,
         Verdict.FAILS: palette.failed,
         Verdict.BLOCKS: palette.failed,
@@ -35,7 +36,7 @@ def paint_mark(painter: QPainter, verdict: Verdict, centre: QPointF, size: float
     at = lambda x, y: centre + QPointF(x * r, y * r)  # noqa: E731
     if verdict is Verdict.HOLDS:
         painter.drawPolyline([at(-0.9, 0.05), at(-0.3, 0.65), at(0.9, -0.7)])
-    elif verdict in (Verdict.NEAR, Verdict.FAILS):
+    elif verdict in _STANDING:
         painter.translate(centre)
         painter.scale(size / 14, size / 14)
         standing.mark(painter, _STANDING[verdict], QPointF(), palette)

@@ -28,7 +28,7 @@ def finding_tables(subject: Subject) -> list[SheetTable]:
     rows = {str(n): _row(subject, f) for n, f in enumerate(subject.outcome.findings)}
     note = (
         "One row for each element that fails or is near its limit, at its worst case; where none is, "
-        "the element nearest to it. A negative margin fails."
+        "the element nearest to it. A negative margin fails, or exceeds what is advised."
         if subject.solved
         else f"NOT SOLVED. {subject.outcome.sentence}"
     )

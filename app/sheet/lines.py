@@ -143,8 +143,11 @@ def _series_current(subject: Subject, line: Line, state: BranchState, case: int)
     return math.hypot(state.start_kw, state.start_kvar + half_kvar) * 1e3 / (root * volts)
 
 
-def judge_loading(subject: Subject, live: bool, rated: bool) -> Callable[[dict[str, float]], Cells]:
-    """Loading against its limit: margin and verdict; `not judged` where no rating is given."""
+def judge_loading(
+    subject: Subject, live: bool, rated: bool, held: str = HOLDS
+) -> Callable[[dict[str, float]], Cells]:
+    """Loading against its limit: margin and verdict, `held` where it holds; `no rating` where none is
+    given."""
     most = subject.drawing.limits.most_loaded_percent
 
     def judge(worst: dict[str, float]) -> Cells:
@@ -155,7 +158,7 @@ def judge_loading(subject: Subject, live: bool, rated: bool) -> Callable[[dict[s
         margin = float(margin_of(worst["loading_max"], most, False))
         return {
             "margin": Cell(margin, "{most}-{loading_max}", {"most": limit("most_loaded")}),
-            "verdict": Cell(FAIL if margin < 0 else HOLDS, f'IF({{margin}}{PASSED},"FAIL","holds")'),
+            "verdict": Cell(FAIL if margin < 0 else held, f'IF({{margin}}{PASSED},"FAIL","{held}")'),
         }
 
     return judge

@@ -1,4 +1,4 @@
-"""Transformers whose core is driven beyond what they bear for good."""
+"""Transformers whose core is driven beyond what is advised for continuous running."""
 
 import numpy as np
 
@@ -12,6 +12,7 @@ from app.study.words import tell
 
 AT_LOAD, AT_NO_LOAD = 105.0, 110.0  # % of the rated voltage at the tap
 IDLE = 5.0  # % loading, below which a transformer counts as unloaded
+RULE = "advised for continuous running: at most"
 WHOSE = "advice after IEC 60076-1, from memory"
 
 
@@ -24,7 +25,7 @@ def excitation_findings(
 ) -> list[Finding]:
     """Voltage of the fed winding over its rated voltage at the tap: 105 % at load, 110 % at no load.
 
-    Advice, so that it never fails: beyond it a finding says near.
+    Advice, so that it never fails: beyond it a finding says so.
 
     drawing : the drawing, for names
     layout : its graph
@@ -53,10 +54,8 @@ def excitation_findings(
     found: list[Finding] = []
     for limit, off in ((AT_LOAD, idle), (AT_NO_LOAD, ~idle)):
         value = np.where(off, np.nan, driven)
-        check = Check(
-            "over-excitation", ids, value, limit, False, 0.0, subject, "the most advised for good is"
-        )
-        found += [f for f in findings_of(check, WHOSE, cases, Verdict.NEAR) if f.verdict is Verdict.NEAR]
+        check = Check("over-excitation", ids, value, limit, False, 0.0, subject, RULE)
+        found += [f for f in findings_of(check, WHOSE, cases, Verdict.ADVICE) if f.verdict is Verdict.ADVICE]
     return found
 
 

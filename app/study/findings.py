@@ -14,6 +14,7 @@ from app.study.words import tell
 
 NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
+FROM_MEMORY = ", from memory"  # of a source: stands beside the finding, not in its sentence
 NOISE = 1e-9  # %, what the arithmetic leaves open: a value this close to its limit is on it
 LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
@@ -168,7 +169,8 @@ def _finding(
     value = float(check.value[row, case])
     shown, allowed = apart(value, check.limit)
     named = f" in case {cases[case]}" if len(cases) > 1 else ""
-    words = f"{check.subject(row, case, shown)}{named}; {check.rule} {allowed} ({whose})."
+    cited = whose.removesuffix(FROM_MEMORY)
+    words = f"{check.subject(row, case, shown)}{named}; {check.rule} {allowed} ({cited})."
     return Finding(
         check=check.name,
         verdict=by_case[case],

@@ -77,10 +77,10 @@ def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int
         f"{percent(value)} of the rating of {tell(drawing, ids[at])}{_in_case(drawing, int(case))}."
     )
     name = drawing.cases[int(case)].name
-    verdict = Verdict.NEAR if value > MUCH else Verdict.NOTE
+    verdict = Verdict.ADVICE if value > MUCH else Verdict.NOTE
     if verdict is Verdict.NOTE:
         return Finding("circulating current", verdict, ids, words, value=value, unit="%", case=name)
-    words += f" The most advised is {percent(MUCH, 0)} ({WHOSE})."
+    words += f" Advised: at most {percent(MUCH, 0)}."
     return Finding(
         "circulating current", verdict, ids, words, value, MUCH, MUCH - value, "%", f"advice, {WHOSE}", name
     )

@@ -134,6 +134,7 @@ class Verdict(Enum):
 
     BLOCKS = "not solved"
     FAILS = "fails"
+    ADVICE = "advice exceeded"  # beyond what is advised; no limit of the drawing, so that it fails nothing
     NEAR = "near the limit"
     HOLDS = "holds"
     NOTE = "note"

@@ -19,13 +19,14 @@ def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
     Returns : words; that nothing is judged where no finding judges
     """
     count = Counter(finding.verdict for finding in findings)
-    failing, near = count[Verdict.FAILS] + count[Verdict.BLOCKS], count[Verdict.NEAR]
+    failing = count[Verdict.FAILS] + count[Verdict.BLOCKS]
+    soft = {verdict.value: count[verdict] for verdict in (Verdict.ADVICE, Verdict.NEAR) if count[verdict]}
     if failing:
         return "1 check fails" if failing == 1 else f"{failing} checks fail"
-    if not near + count[Verdict.HOLDS]:
+    if not soft and not count[Verdict.HOLDS]:
         return "Nothing is judged"
     held = f"{made} checks hold" if made > 1 else "1 check holds" if made else "Every check holds"
-    return f"{held}, {near} near the limit" if near else held
+    return ", ".join([held, *(f"{many} {words}" for words, many in soft.items())])
 
 
 def tell(drawing: Drawing, id: str) -> str:

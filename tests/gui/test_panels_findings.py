@@ -194,3 +194,17 @@ def test_a_figure_of_the_shelf_is_confirmed_by_taking_it_as_given(qtbot):
     assert bar.list.count() == len(texts) - 1
     assert set_up.card._page.rows["demand_kva"].dot.isHidden()
     set_up.solving.stop()
+
+
+def test_an_exceeded_advice_neither_fails_nor_passes_as_holding(qtbot):
+    driven = (Case(name="High intake", supply_percent=108.0),)
+    set_up = stage(qtbot, fernhollow(driven))
+    bar = set_up.findings
+    (told,) = {f.verdict for f in set_up.solving.outcome.findings if f.check == "over-excitation"}
+    assert told is Verdict.ADVICE
+    assert "checks hold, " in bar.headline.text()
+    assert "advice exceeded" in bar.headline.text()
+    assert bar.mark.verdict is Verdict.ADVICE
+    assert not bar.sentence.text().startswith("Tightest")
+    assert "advised for continuous running: at most" in bar.sentence.text()
+    set_up.solving.stop()

@@ -11,9 +11,10 @@ from sheet_layouts import HOSTILE, NIGHT, PEAK, blocked, overloaded, pair, three
 
 from app.model import edits
 from app.model.drawing import Drawing, Limits, Project
-from app.model.kinds import Busbar, Load, Supply
+from app.model.kinds import Busbar, Load, Supply, Transformer
 from app.sheet import write
 from app.study import run
+from app.study.outcome import Verdict
 
 Reader = Callable[..., Any]
 
@@ -255,3 +256,25 @@ def test_a_figure_of_the_shelf_is_marked_where_it_stands(workbook: Reader) -> No
     assert cell(book["Cable data"], "C1", "Length m").font.i
     assert not cell(book["Cable data"], "C2", "Length m").font.i
     assert "as the shelf gives it" in words(book)
+
+
+def test_an_exceeded_advice_stands_in_head_table_and_findings(workbook: Reader) -> None:
+    base = edits.change(two_units(), "S1", held_percent=108.0)
+    outcome, book = run(base), workbook(base)
+    assert {f.check for f in outcome.findings if f.verdict is Verdict.ADVICE} == {"over-excitation"}
+    assert all(f.verdict is not Verdict.FAILS for f in outcome.findings)
+    assert any(w.startswith("Solved. Every check holds, 1 advice exceeded") for w in words(book))
+    assert "advice exceeded" in cell(book["Transformers"], "T1", "Verdict").value
+    finding = next(r for r in book["Findings"].iter_rows() if r[0].value == "advice exceeded")
+    source, sentence = finding[-2].value, finding[-1].value
+    assert source.endswith("from memory")
+    assert "from memory" not in sentence
+
+
+def two_units() -> Drawing:
+    """One transformer that is driven hard, within every limit."""
+    elements = {
+        "B1": Busbar(), "S1": Supply(node="B1", nominal_v=11000.0), "B2": Busbar(x=8),
+        "T1": Transformer(start="B1", end="B2"), "L1": Load(node="B2", demand_kva=40.0),
+    }  # fmt: skip
+    return Drawing(elements=elements, limits=Limits(high_percent=115.0))

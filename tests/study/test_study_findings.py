@@ -148,7 +148,9 @@ def test_transformer_loading_is_the_larger_of_both_windings_over_their_rated_cur
 
 def test_over_excitation_is_advice_at_load_and_at_no_load():
     (advice,) = of(run(transformer(held=106.0)), "over-excitation")
-    assert advice.verdict is Verdict.NEAR
+    assert advice.verdict is Verdict.ADVICE
+    assert "advised for continuous running: at most 105.0 % (advice after IEC 60076-1)." in advice.sentence
+    assert advice.whose.endswith("from memory")
     assert advice.value == pytest.approx(106.0)
     assert advice.margin == pytest.approx(-1.0)
     assert "IEC 60076-1" in advice.sentence
@@ -173,6 +175,8 @@ def test_over_excitation_counts_from_the_tap_of_the_fed_winding():
         ("HOLDS", 0, "Every check holds"),
         ("HOLDS NOTE", 1, "1 check holds"),
         ("HOLDS", 11, "11 checks hold"),
+        ("ADVICE", 15, "15 checks hold, 1 advice exceeded"),
+        ("ADVICE NEAR HOLDS", 0, "Every check holds, 1 advice exceeded, 1 near the limit"),
         ("NEAR", 1, "1 check holds, 1 near the limit"),
         ("NEAR NEAR HOLDS", 0, "Every check holds, 2 near the limit"),
         ("FAILS NEAR", 11, "1 check fails"),
