@@ -39,6 +39,7 @@ class BranchItem(ElementItem):
         self.worn: Glyph | Worn | None = None
         self.flow = Flow()
         self.lossless = False  # a switch
+        self.parted = False  # an open switch, dead itself and yet perhaps between live ends
         self.step: float | None = None  # percent of a notch of what steps by itself
         self._poles: list[QPointF] = []
         self._runs: list[list[QPointF]] = []
@@ -51,6 +52,7 @@ class BranchItem(ElementItem):
     def read(self, drawing: Drawing) -> None:
         element = drawing.elements[self.id]
         self.lossless = isinstance(element, Switch | Regulator)
+        self.parted = isinstance(element, Switch) and not element.closed
         self.step = step_of(element)
         self.worn = dress(drawing, element, self.look.symbols)
         self._runs = self._cut()

@@ -148,8 +148,11 @@ class Paper(QGraphicsScene):
         blaming = self.look.blaming
         for id, live in zip(table.ids, column_of(table, "live", case), strict=True):
             item = self.items_by_id.get(id)
-            if item is not None:
-                item.stand(standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst))
+            if item is None:
+                continue
+            if isinstance(item, BranchItem) and item.parted:
+                live = self._shown is not None and self._shown.between_live(self._laid.elements[id])
+            item.stand(standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst))
 
     def _owed_in(self, sight: Iterable[QRectF]) -> list[str]:
         """Those whose words lie in one of these parts of the paper."""
@@ -169,14 +172,14 @@ class Paper(QGraphicsScene):
         return self._write(list(islice(self.owed, most)))
 
     def _show_flows(self, branches: Table[BranchState], case: int) -> None:
-        names = ("loaded_percent", "through_kw", "forward")
-        loading, through, fed = (array_of(branches, name, case) for name in names)
+        names = ("loaded_percent", "through_kw", "forward", "live")
+        loading, through, fed, live = (array_of(branches, name, case) for name in names)
         widths, onward = standing.breadths(loading).tolist(), wording.runs_on(through, fed).tolist()
-        live = column_of(branches, "live", case)
-        for id, width, runs, lives in zip(branches.ids, widths, onward, live, strict=True):
+        flows = (live.astype(bool) & wording.flows(through)).tolist()
+        for id, width, runs, power in zip(branches.ids, widths, onward, flows, strict=True):
             item = self.items_by_id.get(id)
             if isinstance(item, BranchItem):
-                item.show_flow(width, runs if lives else None)
+                item.show_flow(width, runs if power else None)
 
     def _write(self, ids: list[str]) -> set[str]:
         grown = set()

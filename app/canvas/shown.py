@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 
 from app.canvas import gauge
 from app.model.drawing import Limits
+from app.model.kinds import Branch
 from app.study.outcome import Outcome, Table
 from solver.status import Status
 
@@ -49,6 +50,11 @@ class Shown(Struct, frozen=True):
             return now, None
         was = getattr(self.before, name)
         return now, Row(was, id, self.case) if id in was else None
+
+    def between_live(self, branch: Branch) -> bool:
+        """True where both ends of a branch are live; a switch between them may still be open."""
+        nodes = self.outcome.nodes
+        return all(i in nodes and Row(nodes, i, self.case).live for i in (branch.start, branch.end))
 
     def reading(self, id: str) -> gauge.Reading | None:
         """What the gauge of a node shows; None where it is dead."""

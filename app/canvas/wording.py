@@ -84,8 +84,9 @@ def describe(element: AnyElement) -> tuple[str, ...]:
 
 def _transformer(t: Transformer) -> tuple[str, ...]:
     units = f"{t.side_by_side} × " if t.side_by_side > 1 else ""
-    rating = f"{units}{figures.typed(t.rating_kva)} kVA"
-    first = f"{rating} {figures.ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
+    first = (
+        f"{units}{figures.typed(t.rating_kva)} kVA {figures.ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
+    )
     if not t.taps_up + t.taps_down:
         return (first,)
     if t.regulates != "no":
@@ -125,6 +126,11 @@ def runs_on(through_kw: Any, forward: Any) -> Any:
     return (through_kw >= 0) == forward
 
 
+def flows(through_kw: Any) -> Any:
+    """False where the power would read as nought, of one branch or of an array of them."""
+    return abs(through_kw) >= 0.005
+
+
 def branch_figures(
     angle: float,
     state: BranchState,
@@ -138,7 +144,8 @@ def branch_figures(
     forward = runs_on(state.through_kw, state.forward)
     rated = not math.isnan(state.loaded_percent)
     load = figures.percent(state.loaded_percent) if rated else figures.amps(state.current_a)
-    first: Line = (Run(f"{figures.power(abs(state.through_kw))} {arrow(angle, forward)} {load}"),)
+    way = f" {arrow(angle, forward)}" if flows(state.through_kw) else ""
+    first: Line = (Run(f"{figures.power(abs(state.through_kw))}{way} {load}"),)
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
         second += changed(state.loss_kw, before.loss_kw, figures.loss)
@@ -146,7 +153,7 @@ def branch_figures(
     if step is None:
         return lines
     stands = f"stands at {figures.plain(state.notch, 0, sign=True)}"
-    return *lines, (Run(f"{stands}, {figures.percent(state.notch * step, 1, sign=True)}", Style.QUIET),)
+    return *lines, (Run(f"{stands}, {figures.stated(state.notch * step, '%', sign=True)}", Style.QUIET),)
 
 
 def step_of(element: AnyElement) -> float | None:
@@ -185,7 +192,7 @@ def attachment_figures(
         return ()
     line: Line = (Run(figures.power(state.kw)),)
     if before is not None and before.live:
-        line += changed(state.kw, before.kw, figures.loss)
+        line += changed(state.kw, before.kw, figures.power)
     return (line,)
 
 

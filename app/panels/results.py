@@ -180,6 +180,9 @@ def _voltage(state: NodeState) -> float:
 def _switch(asked: Asked, id: str) -> list[Row]:
     if id not in asked.outcome.branches:
         return []
+    element = asked.drawing.elements[id]
+    if isinstance(element, Switch) and not element.closed:  # its ends may be live all the same
+        return [Row("Contacts", ("open",) * len(asked.outcome.cases), "", None)]
     row = partial(_row, asked, "branches", id)
     return [
         row("Current", "current_a", amps),
