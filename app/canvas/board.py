@@ -187,8 +187,7 @@ class Board(Paper):
             ladder = TapLadder(self, id, self.session, self.solving, self.theme)
             ladder.setZValue(8)
             self.ladders[id] = ladder
-            if ladder.scene() is not self:
-                self.addItem(ladder)
+            self.addItem(ladder)
         self._place_ladders()
 
     def _place_ladders(self) -> None:

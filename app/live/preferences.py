@@ -7,7 +7,6 @@ from PySide6.QtCore import QByteArray, QSettings, QStandardPaths
 RECENT_FILES = 10
 THEMES = ("desktop", "light", "dark")
 SYMBOL_SETS = ("IEC", "ANSI")
-UNIT_HABITS = ("metric", "north american")
 
 
 class Preferences:
@@ -33,15 +32,6 @@ class Preferences:
     @symbols.setter
     def symbols(self, choice: str) -> None:
         self._keep("symbols", choice)
-
-    @property
-    def unit_habit(self) -> str:
-        """metric or north american."""
-        return self._choice("unit_habit", UNIT_HABITS)
-
-    @unit_habit.setter
-    def unit_habit(self, choice: str) -> None:
-        self._keep("unit_habit", choice)
 
     @property
     def geometry(self) -> bytes:

@@ -124,11 +124,6 @@ def remove(drawing: Drawing, ids: Iterable[str]) -> Drawing:
     return with_elements(drawing, left)
 
 
-def standing_on(drawing: Drawing, nodes: Collection[str]) -> dict[str, AnyElement]:
-    """Branches and attachments that stand on any of these nodes."""
-    return {i: e for i, e in drawing.elements.items() if any(n in nodes for n in ends(e))}
-
-
 def set_project(drawing: Drawing, **fields: Any) -> Drawing:
     """Set fields of the sheet's head."""
     return replace(drawing, project=_changed("Project", drawing.project, fields))

@@ -214,7 +214,6 @@ class Box(QFrame):
         play(self, "box")
         self.editor = editor
         self._base = ""
-        self._state = ""
         across = QHBoxLayout(self)
         across.setContentsMargins(8, 1, 8, 1)
         across.setSpacing(6)

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from app.model.drawing import Drawing, label
 from app.model.fields import Field
 from app.model.figures import MINUS, typed
-from app.model.kinds import KIND_WORDS, Attachment, Branch, Element, kind_of
+from app.model.kinds import KIND_WORDS, Attachment, Branch, kind_of
 
 PLURALS = {"busbar": "busbars", "switch": "switches", "supply": "supplies", "capacitor": "capacitors"}
 
@@ -56,8 +56,3 @@ def worded(field: Field, value: object) -> str:
         unit = field.unit[:-1] if field.unit.endswith("s") and value == 1 else field.unit
         return f"{number} {unit}" if unit else number
     return str(value)
-
-
-def held(element: Element, name: str) -> object:
-    """The value of a field as it stands."""
-    return getattr(element, name)

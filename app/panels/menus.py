@@ -188,6 +188,8 @@ class Menus(QObject):
         try:
             warning = self.window.document.load(path)
         except FileError as error:
+            if not path.exists():
+                self.window.preferences.forget(path)
             self.dialogs.tell(str(error))
             return False
         self.window.preferences.add_recent(path)

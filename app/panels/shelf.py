@@ -5,7 +5,7 @@ from functools import reduce
 from pathlib import Path
 
 from PySide6.QtCore import QSize, Qt, QTimer, Signal
-from PySide6.QtGui import QAction, QKeySequence
+from PySide6.QtGui import QAction
 from PySide6.QtWidgets import QFrame, QLabel, QMenu, QScrollArea, QVBoxLayout, QWidget
 
 from app.canvas.theme import Theme
@@ -189,7 +189,7 @@ class Shelf(QScrollArea):
         add("Edit terminals…", lambda: self._edit_terminals(part), part.symbol is not None)
         add("Default symbol", lambda: self._wear(part, None), part.symbol is not None)
         menu.addSeparator()
-        add("Remove from shelf", lambda: self._remove(part)).setShortcut(QKeySequence())
+        add("Remove from shelf", lambda: self._remove(part))
         return menu
 
     def _rename(self, part: Part) -> None:

@@ -132,11 +132,11 @@ QFrame[role="box"] QToolButton { border: none; background: transparent; color: @
 QFrame[role="box"] QToolButton:hover { color: @INK; background: @HOVER; border-radius: 4px; }
 QFrame[role="box"] QToolButton:focus { color: @FLOW; }
 
-QLineEdit, QPlainTextEdit, QSpinBox, QDoubleSpinBox {
+QLineEdit, QPlainTextEdit {
     background: @FIELD; border: 1px solid @EDGE; border-radius: 6px; padding: 3px 7px;
     placeholder-text-color: @SOFT; selection-background-color: @FLOW; selection-color: @PAPER;
 }
-QLineEdit:focus, QPlainTextEdit:focus, QSpinBox:focus, QDoubleSpinBox:focus { border-color: @FLOW; }
+QLineEdit:focus, QPlainTextEdit:focus { border-color: @FLOW; }
 QLineEdit[role="title"] {
     background: transparent; border: 1px solid transparent; padding: 0 3px; placeholder-text-color: @INK;
 }

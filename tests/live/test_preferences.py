@@ -7,7 +7,7 @@ from app.live.preferences import Preferences
 
 def test_first_start(qapp, tmp_path):
     kept = Preferences(tmp_path / "p.ini")
-    assert (kept.theme, kept.symbols, kept.unit_habit) == ("desktop", "IEC", "metric")
+    assert (kept.theme, kept.symbols) == ("desktop", "IEC")
     assert kept.geometry == b""
     assert kept.recent == []
     assert kept.shelf_path.name == "shelf.json"
@@ -15,10 +15,10 @@ def test_first_start(qapp, tmp_path):
 
 def test_all_is_kept(qapp, tmp_path):
     kept = Preferences(tmp_path / "p.ini")
-    kept.theme, kept.symbols, kept.unit_habit = "dark", "ANSI", "north american"
+    kept.theme, kept.symbols = "dark", "ANSI"
     kept.geometry, kept.shelf_path = b"\x00\x01\xff", tmp_path / "mine.json"
     again = Preferences(tmp_path / "p.ini")
-    assert (again.theme, again.symbols, again.unit_habit) == ("dark", "ANSI", "north american")
+    assert (again.theme, again.symbols) == ("dark", "ANSI")
     assert again.geometry == b"\x00\x01\xff"
     assert again.shelf_path == tmp_path / "mine.json"
 

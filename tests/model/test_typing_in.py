@@ -55,7 +55,7 @@ def test_kilowatts_typed_as_the_apparent_demand_go_where_they_belong(yard):
         ("W1", "closed", "perhaps", 'W1 (switch), Closed: "perhaps" is not allowed, allowed is yes or no.'),
         ("T2", "uk_percent", "55 %", "T2 (transformer): Impedance uk is 55 %, allowed is"),
         ("T2", "v1_v", "33/x kV", "Winding 1: "),
-        ("T2", "tap", "−3 %", "Tap: −3 % is not allowed, allowed are steps of 2.5 %."),
+        ("T2", "tap", "−3 %", "Tap: -3 % is not allowed, allowed are steps of 2.5 %."),
         ("L1", "demand_kva", "64 kg", '"64 kg" is not an apparent power'),
         ("L1", "demand_kva", "", "both blank"),
         ("L1", "colour", "red", 'there is no field "colour"'),
