@@ -14,6 +14,9 @@ from app.canvas.user_symbol import Worn, sound, wear
 from app.model.drawing import Drawing
 from app.model.kinds import Element
 
+MIDDLE_GREY = 128
+PLATE = 2.0  # of light ground around a picture
+
 
 @dataclass
 class Look:
@@ -43,9 +46,22 @@ def paint_worn(
 ) -> None:
     """Either sort of symbol at a point."""
     if isinstance(worn, Worn):
+        if paper.lightness() < MIDDLE_GREY:
+            _paint_plate(painter, worn, at, angle)
         worn.paint(painter, at, angle)
     else:
         paint_glyph(painter, worn, at, angle, ink, paper)
+
+
+def _paint_plate(painter: QPainter, worn: Worn, at: QPointF, angle: float) -> None:
+    """Light ground under a picture of the user's own on dark paper: it keeps its colours, black lines too."""
+    painter.save()
+    painter.translate(at)
+    painter.rotate(angle)
+    painter.setPen(Qt.PenStyle.NoPen)
+    painter.setBrush(LIGHT.paper)
+    painter.drawRoundedRect(worn.box.adjusted(-PLATE, -PLATE, PLATE, PLATE), 5, 5)
+    painter.restore()
 
 
 def halo_colour(palette: Palette, selected: bool) -> QColor:

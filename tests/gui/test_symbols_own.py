@@ -4,9 +4,11 @@ import pytest
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QImage, QPainter
 
+from app.canvas.element_item import paint_worn
 from app.canvas.geometry import GRID
+from app.canvas.palette import DARK, LIGHT
 from app.canvas.svg_check import LARGEST_BYTES
-from app.canvas.user_symbol import SymbolRefused, default_terminals, read_svg, symbol_icon, wear
+from app.canvas.user_symbol import SymbolRefused, Worn, default_terminals, read_svg, symbol_icon, wear
 from app.model.kinds import Busbar, Load, Transformer
 
 HEAD = (
@@ -176,3 +178,20 @@ def test_it_paints(qapp):
     assert image.pixelColor(50, 50).alpha() > 0
     assert QRectF(20, 20, 60, 60).contains(worn.box.translated(50, 50))
     assert not symbol_icon(symbol, 24).isNull()
+
+
+def black_lines() -> Worn:
+    line = wrapped('<path d="M0 20H60" stroke="#000" stroke-width="6"/>')
+    return wear(read_svg(line), Load(node=""))
+
+
+@pytest.mark.parametrize("palette", [LIGHT, DARK])
+def test_black_lines_stand_out_on_any_paper(qapp, palette):
+    picture = QImage(100, 100, QImage.Format.Format_RGB32)
+    picture.fill(palette.paper)
+    painter = QPainter(picture)
+    paint_worn(painter, black_lines(), QPointF(50, 50), 0.0, palette.ink, palette.paper)
+    painter.end()
+    shades = [picture.pixelColor(50, y).lightness() for y in range(40, 61)]
+    assert max(shades) - min(shades) > 150
+    assert picture.pixelColor(5, 5) == palette.paper
