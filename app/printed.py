@@ -22,7 +22,7 @@ def figure(name: str, digits: int) -> Callable[[Any], str]:
 
 
 def level(state: Any) -> str:
-    """Volts to 0.1 V under 1 kV, else whole volts to two digits of a kilovolt."""
+    """Volts to 0.1 V where nominal is under 1 kV, else whole volts."""
     return plain(state.voltage_v, 1 if state.nominal_v < 1000 else 0)
 
 

@@ -94,6 +94,7 @@ class Window(QMainWindow):
 
     def _wire(self) -> None:
         self.shelf.picked.connect(self.view.place)
+        self.shelf.put_back.connect(self.view.rest)
         self.shelf.refused.connect(self.findings.tell)
         self.view.card_wanted.connect(self.card.take_focus)
         self.view.placing_ended.connect(self.shelf.rest)

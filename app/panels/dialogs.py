@@ -1,4 +1,4 @@
-"""Every question the window can ask, in one place, so that tests can answer for the person."""
+"""The questions of the window and its menus, in one place, so that tests can answer for the person."""
 
 from pathlib import Path
 

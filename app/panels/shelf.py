@@ -31,6 +31,7 @@ class Shelf(QScrollArea):
     """A click picks a part, a drag takes it out. `refused` carries why something could not be done."""
 
     picked = Signal(object)
+    put_back = Signal()
     refused = Signal(str)
 
     def __init__(
@@ -42,6 +43,7 @@ class Shelf(QScrollArea):
         self.dialogs = ShelfDialogs(self, theme)
         self.tiles: list[Tile] = []
         self.own_tiles: list[Tile] = []
+        self._in_hand: Tile | None = None
         self._offered: list[Part] = []
         self._build()
         session.changed.connect(self._changed)
@@ -127,6 +129,11 @@ class Shelf(QScrollArea):
     # -- picking --------------------------------------------------------------------------------
     def _pick(self, tile: Tile) -> None:
         """The same again puts it back."""
+        if self._in_hand is tile:
+            self.rest()
+            self.put_back.emit()
+            return
+        self._in_hand = tile
         for other in self._all():
             other.setChecked(other is tile)
         self.picked.emit(tile.part)
@@ -139,6 +146,7 @@ class Shelf(QScrollArea):
 
     def rest(self) -> None:
         """Placing has ended: nothing is in the hand."""
+        self._in_hand = None
         for tile in self._all():
             tile.setChecked(False)
 

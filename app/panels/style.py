@@ -20,6 +20,7 @@ ROLES = (
     "tapped",  # what a tap does
     "box",  # the white box of a field; `state` says refused, tap or nothing
     "link",  # a button without a box
+    "list",  # rows of findings
 )
 
 

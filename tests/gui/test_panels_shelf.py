@@ -100,6 +100,16 @@ def test_a_click_picks_a_part_until_placing_ends(shelf):
     assert not any(t.isChecked() for t in shelf.tiles)
 
 
+def test_a_click_on_the_picked_part_puts_it_back(shelf, qtbot):
+    QTest.mouseClick(shelf.tiles[3], Qt.MouseButton.LeftButton)
+    with qtbot.waitSignal(shelf.put_back):
+        QTest.mouseClick(shelf.tiles[3], Qt.MouseButton.LeftButton)
+    assert not any(t.isChecked() for t in shelf.tiles)
+    with qtbot.waitSignal(shelf.picked):
+        QTest.mouseClick(shelf.tiles[3], Qt.MouseButton.LeftButton)
+    assert shelf.tiles[3].isChecked()
+
+
 def test_keys_pick_and_tooltips_name_them(shelf):
     picked = []
     shelf.picked.connect(picked.append)
