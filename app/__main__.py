@@ -5,7 +5,7 @@ import os
 import sys
 from pathlib import Path
 
-from app.commands import BAD_INPUT, COMMANDS, EXIT_CODES, Parser, command, complain, program_version, say
+from app.commands import BAD_INPUT, COMMANDS, EXIT_CODES, Parser, command, complain, say, version
 from app.screen import why_no_screen
 
 HEADLESS = """without a window:
@@ -22,7 +22,7 @@ class Version(argparse.Action):
     """Looks the version up only where it is asked for."""
 
     def __call__(self, parser: argparse.ArgumentParser, *_: object) -> None:
-        say(f"farend {program_version()}\n")
+        say(f"farend {version()}\n")
         parser.exit()
 
 

@@ -14,6 +14,7 @@ from app.model.drawing import Drawing
 from app.model.file import FileError, load
 from app.study import run
 from app.study.outcome import Outcome, Verdict
+from app.version import version
 from solver.status import Status
 
 SOLVED, FAILS, BAD_INPUT, NO_OPERATING_POINT = 0, 1, 2, 3
@@ -36,16 +37,6 @@ class Parser(argparse.ArgumentParser):
 
     def error(self, message: str) -> NoReturn:
         self.exit(BAD_INPUT, f"{self.prog}: {message}. See {self.prog} --help.\n")
-
-
-def program_version() -> str:
-    """The version of the installed program."""
-    from importlib.metadata import PackageNotFoundError, version  # slow to load, and seldom asked for
-
-    try:
-        return version("farend")
-    except PackageNotFoundError:
-        return "0 (not installed)"
 
 
 def parser_of(command: str) -> Parser:
@@ -89,7 +80,7 @@ def _results(chosen: argparse.Namespace) -> int:
 
         from app.study.record import record
 
-        told = record(drawing, outcome, program_version())
+        told = record(drawing, outcome, version())
         say(json.dumps(told, indent=1, ensure_ascii=True, allow_nan=False) + "\n")
     else:
         from app.printed import printed

@@ -271,12 +271,13 @@ def _gap(points: Sequence[QPointF], point: QPointF) -> tuple[float, int]:
     """Distance from a polyline and the segment that comes nearest."""
     if len(points) == 1:
         return distance(points[0], point), 0
-    gaps = [_segment_gap(a, b, point) for a, b in zip(points, points[1:], strict=False)]
+    gaps = [segment_gap(a, b, point) for a, b in zip(points, points[1:], strict=False)]
     least = min(gaps)
     return least, gaps.index(least)
 
 
-def _segment_gap(a: QPointF, b: QPointF, point: QPointF) -> float:
+def segment_gap(a: QPointF, b: QPointF, point: QPointF) -> float:
+    """Distance of a point from the straight line between two."""
     run = b - a
     size = run.x() ** 2 + run.y() ** 2
     if size == 0:

@@ -36,11 +36,16 @@ from app.model.writing import element_body, line, listed, part_body
 Unbound: dict[str, Any] = {"start": "", "end": ""}
 
 
+def is_american(frequency_hz: float) -> bool:
+    """60 Hz: North American habits."""
+    return frequency_hz > 55
+
+
 @cache
 def builtin_parts(frequency_hz: float = 50.0) -> tuple[Part, ...]:
     """One plain part a kind, in shelf order, with values usual at the frequency. Values of the cable and
     the overhead line: IEC 60228 class 2 aluminium and common practice, no source; all may be changed."""
-    american = frequency_hz > 55
+    american = is_american(frequency_hz)
     made: tuple[tuple[str, AnyElement], ...] = (
         ("Supply", Supply(node="", nominal_v=208.0 if american else 400.0, dy=-3.0)),
         ("Busbar", Busbar()),

@@ -15,6 +15,7 @@ from app.canvas.view import SHORTCUTS
 from app.panels.dialogs import centre
 from app.panels.style import play
 from app.study.cautions import CAUTIONS
+from app.version import version
 
 
 def _plain(text: str, role: str = "") -> QLabel:
@@ -29,8 +30,6 @@ class About(QDialog):
     """What this is, which version, and what it does not decide."""
 
     def __init__(self, parent: QWidget) -> None:
-        from importlib.metadata import version
-
         super().__init__(parent)
         self.setWindowTitle("About Farend")
         self.setMinimumWidth(460)
@@ -38,7 +37,7 @@ class About(QDialog):
         down.setContentsMargins(28, 24, 28, 20)
         down.setSpacing(10)
         down.addWidget(_plain("Farend", "title"))
-        down.addWidget(_plain(f"Version {version('farend')} · MIT licence", "quiet"))
+        down.addWidget(_plain(f"Version {version()} · MIT licence", "quiet"))
         down.addWidget(
             _plain("A drawing board for small electricity distribution layouts, solved as you touch it.")
         )

@@ -6,6 +6,7 @@ from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent
 from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
+from app.canvas.geometry import segment_gap
 from app.canvas.palette import font
 from app.canvas.theme import Theme
 from app.live.attention import Attention
@@ -191,7 +192,7 @@ class VoltageStrip(QWidget):
         best, least = "", REACH
         for stretch in self._steps():
             away = min(math.dist(point.toTuple(), stretch.points[k].toTuple()) for k in (2, 1))
-            away = min(away, _gap(point, stretch.points[1], stretch.points[2]) + 3)
+            away = min(away, segment_gap(stretch.points[1], stretch.points[2], point) + 3)
             if away < least:
                 best, least = stretch.branch, away
         return best
@@ -208,7 +209,8 @@ class VoltageStrip(QWidget):
         best, least = "", REACH
         for stretch in curve.stretches:
             pairs = zip(stretch.points, stretch.points[1:], strict=False)
-            away = min(_gap(point, a, b) for a, b in pairs) + (0 if stretch.node in self.routes.main else 2)
+            aside = 0 if stretch.node in self.routes.main else 2
+            away = min(segment_gap(a, b, point) for a, b in pairs) + aside
             if away < least:
                 best, least = stretch.branch, away
         return best
@@ -296,11 +298,3 @@ class VoltageStrip(QWidget):
     def focusOutEvent(self, event) -> None:
         super().focusOutEvent(event)
         self.update()
-
-
-def _gap(point: QPointF, a: QPointF, b: QPointF) -> float:
-    """Distance from a point to a straight line between two others."""
-    run = b - a
-    size = QPointF.dotProduct(run, run)
-    share = 0.0 if size == 0 else min(max(QPointF.dotProduct(point - a, run) / size, 0.0), 1.0)
-    return math.dist(point.toTuple(), (a + run * share).toTuple())

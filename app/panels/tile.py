@@ -7,13 +7,13 @@ from PySide6.QtWidgets import QAbstractButton, QApplication, QSizePolicy
 from app.canvas.palette import font
 from app.canvas.symbols import icon
 from app.canvas.theme import Theme
+from app.canvas.tools_clip import PART_MIME
 from app.canvas.user_symbol import symbol_icon
 from app.model.drawing import Part
 from app.model.kinds import kind_of
 from app.model.parts import encode_part
 from app.panels.style import mixed
 
-PART_MIME = "application/x-farend-part"
 TILE = 44
 PICTURE = 30
 

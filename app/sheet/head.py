@@ -1,7 +1,6 @@
 """The head of the sheet, the basis it stands on, what was assumed, and the cautions."""
 
 from dataclasses import replace
-from importlib.metadata import PackageNotFoundError, version
 
 from app.model.fields import fields_of
 from app.model.kinds import Motor
@@ -9,6 +8,7 @@ from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Verdict
+from app.version import version
 from solver.line import ALPHA
 
 ITEM = Column("item", "Item", style=Style.TEXT, width=24)
@@ -26,10 +26,7 @@ KINDS_OF_CELL = (
 
 def program() -> str:
     """Program and version as the head states them."""
-    try:
-        return f"Farend {version('farend')}"
-    except PackageNotFoundError:
-        return "Farend, version not known"
+    return f"Farend {version()}"
 
 
 def verdict_words(verdict: Verdict) -> str:

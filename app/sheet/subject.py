@@ -5,6 +5,7 @@ from functools import cached_property
 
 from app.model.drawing import Drawing, label
 from app.model.kinds import KIND_WORDS, Branch, Element, Supply, kind_of
+from app.model.parts import is_american
 from app.sheet.table import (
     BLANK,
     Cell,
@@ -45,7 +46,7 @@ class Subject:
     @property
     def american(self) -> bool:
         """60 Hz: the 120 V base and Letter paper."""
-        return self.drawing.frequency_hz >= 55
+        return is_american(self.drawing.frequency_hz)
 
     @cached_property
     def layout(self) -> Layout:

@@ -9,6 +9,7 @@ from xlsxwriter import Workbook
 from xlsxwriter.worksheet import Worksheet
 
 from app.model.drawing import Drawing
+from app.model.parts import is_american
 from app.sheet.formats import FAILED, HEAD, INK, VERDICTS, Formats
 from app.sheet.head import program
 from app.sheet.places import Place, Places, formula, lay
@@ -181,7 +182,7 @@ def _print_setup(sheet: Worksheet, stacked: list[Place], drawing: Drawing) -> No
     first = stacked[0]
     sheet.hide_gridlines(2)
     sheet.set_landscape()
-    sheet.set_paper(LETTER if drawing.frequency_hz >= 55 else A4)
+    sheet.set_paper(LETTER if is_american(drawing.frequency_hz) else A4)
     sheet.set_margins(left=0.45, right=0.45, top=0.55, bottom=0.75)
     sheet.fit_to_pages(1, 0)
     sheet.set_footer(_footer(drawing), {"scale_with_doc": False})
