@@ -90,7 +90,7 @@ def barred_findings(drawing: Drawing, layout: Layout) -> list[Finding]:
             f"{tell(drawing, id)} cannot hold the volts of its node, as {tell(drawing, other)} holds them "
             "already with no impedance between: it runs at its fixed reactive output."
         )
-        found.append(Finding("held twice", Verdict.NEAR, (id, other), words))
+        found.append(Finding("held twice", Verdict.ADVICE, (id, other), words))
     return found
 
 
@@ -135,7 +135,7 @@ def _stop(
         f"{tell(drawing, layout.node_ids[node])} is at {percent(level, 1)} of nominal, it should hold "
         f"{percent(assumed.value(element, 'hold_percent'), 1)}."
     )
-    return Finding("end stop", Verdict.NEAR, (id,), words, case=drawing.cases[case].name)
+    return Finding("end stop", Verdict.ADVICE, (id,), words, case=drawing.cases[case].name)
 
 
 def _limited(drawing: Drawing, layout: Layout, tables: Tables, row: int, case: int) -> Finding:
@@ -147,4 +147,4 @@ def _limited(drawing: Drawing, layout: Layout, tables: Tables, row: int, case: i
         f"{tell(drawing, id)} is at its limit of {plain(kvar, 1, 'kvar', sign=True)}{_case(drawing, case)} "
         f"and leaves its node at {percent(level, 2)} of nominal, not {percent(element.hold_percent or 0, 2)}."
     )
-    return Finding("reactive limit", Verdict.NEAR, (id,), words, case=drawing.cases[case].name)
+    return Finding("reactive limit", Verdict.ADVICE, (id,), words, case=drawing.cases[case].name)

@@ -107,7 +107,7 @@ def test_an_end_stop_is_told_and_fails_nothing_by_itself():
     outcome = run(lane(cases=(Case(supply_percent=85.0),)))
     assert outcome.branches.at("V1").notch == 16
     (found,) = told(outcome, "end stop")
-    assert found.verdict is Verdict.NEAR
+    assert found.verdict is Verdict.ADVICE
     assert "+16 (+10.0 %)" in found.sentence
 
 
@@ -160,7 +160,7 @@ def test_a_generator_holds_its_volts_within_its_limits():
     assert abs(voltage["B4"]) == pytest.approx(outcome.nodes.at("B4").voltage_v, rel=1e-7)
     assert outcome.attachments.at("G1", 1).kvar == pytest.approx(90.0)
     (found,) = told(outcome, "reactive limit")
-    assert (found.verdict, found.case) == (Verdict.NEAR, "Low")
+    assert (found.verdict, found.case) == (Verdict.ADVICE, "Low")
 
 
 def test_the_tap_curve_lets_other_changers_step_and_fixes_its_own():
