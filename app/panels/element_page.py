@@ -18,7 +18,8 @@ from app.panels.special_rows import DemandRow, TapRow
 
 NOT_GIVEN = "not given"
 LESS_ASKED = {  # shown below the results
-    "earth_1_ohm", "earth_2_ohm", "fault_degc", "zero_resistance_ohm_per_km", "return_resistance_ohm_per_km", "zero_reactance_ohm_per_km",
+    "earth_1_ohm", "earth_2_ohm", "fault_degc", "zero_resistance_ohm_per_km",
+    "return_resistance_ohm_per_km", "zero_reactance_ohm_per_km",
     "z0_ratio", "angle_deg", "area_mm2", "capacitance_uf_per_km", "conductor", "constant_current_percent",
     "constant_impedance_percent", "drop_r_ohm", "drop_x_ohm", "note", "reference_v",
     "step_percent", "steps_down", "steps_up", "notch_percent", "tapped", "taps_down", "taps_up",
