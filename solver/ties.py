@@ -75,7 +75,7 @@ class Ties:
             apart = np.broadcast_to(self.apart, (flow.shape[-1], *self.apart.shape[1:]))
             current, moved = self._newton(before, opened, np.einsum("bgf,gb->fb", apart, flow))
             _apply(self.lift, moved, voltage)
-        _apply(-self.drop, current, voltage)
+        _apply(self.drop, -current, voltage)
         return current
 
     def _newton(self, before: Complex, opened: Complex, flow: Complex) -> tuple[Complex, Complex]:
@@ -132,7 +132,7 @@ def _scale(diagonal: Real) -> Real:
 def _apply(response: Complex, causes: Complex, voltage: Complex) -> None:
     """Adds (live, k, cause, batch or 1) responses to (cause, batch) causes."""
     live, k, width = voltage.shape
-    if response.shape[-1] == 1:
+    if response.shape[-1] == 1 and width > 1:  # one column is too little for threads to share
         voltage += (response[..., 0].reshape(live * k, -1) @ causes).reshape(live, k, width)
     else:
         voltage += np.einsum("pktb,tb->pkb", response, causes)

@@ -56,8 +56,10 @@ def find_trouble(network: Network, forest: Forest, placed: Placed) -> Trouble:
 
 def _bare_rounds(network: Network) -> list[Loop | Joined]:
     """Rounds through nothing but branches that have no impedance in some operating point."""
-    bare = np.concatenate((_bare(network.line_z), _bare(network.transformer_z)))
-    ends = {row: pair for row, pair in enumerate(branch_ends(network)) if bare[row]}
+    bare = np.flatnonzero(np.concatenate((_bare(network.line_z), _bare(network.transformer_z))))
+    first = np.concatenate((network.line_from, network.transformer_from))[bare].tolist()
+    second = np.concatenate((network.line_to, network.transformer_to))[bare].tolist()
+    ends = dict(zip(bare.tolist(), zip(first, second, strict=True), strict=True))
     near, supply = neighbours(ends), _supplies(network)
     if network.source_z is not None:
         stiff = _bare(network.source_z)
@@ -92,4 +94,4 @@ def _turned(network: Network, forest: Forest, placed: Placed) -> tuple[Loop | Jo
     one, other = forest.zone[forest.tie_place], forest.zone[forest.place[forest.tie_node]]
     angle = np.abs(np.angle(phasor[one] * np.conj(phasor[other]))).max(axis=-1)
     wrong = np.flatnonzero(np.rint(angle / CLOCK))
-    return rounds(network, forest, wrong[:MOST].tolist())
+    return rounds(network, forest, wrong[:MOST].tolist()) if wrong.size else ()
