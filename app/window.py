@@ -101,6 +101,8 @@ class Window(QMainWindow):
         self.findings.sought.connect(self.view.show_selection)
         self.findings.field_sought.connect(self.card.focus_field)
         self.view.refused.connect(self.tell_refusal)
+        self.view.told.connect(self.findings.tell)
+        self.findings.left.connect(self.view.setFocus)
         self.session.history.cleanChanged.connect(lambda _clean: self._mark())
         self.session.replaced.connect(self._opened)
         self.document.saved.connect(self._mark)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterable
 from typing import TYPE_CHECKING
 
@@ -11,8 +12,9 @@ from PySide6.QtGui import QKeyEvent, QPainter, QPen
 
 from app.canvas.geometry import GRID, bar_ends, node_point, scene
 from app.canvas.palette import Palette
+from app.model import edits
 from app.model.drawing import Drawing, label
-from app.model.kinds import Busbar, Node
+from app.model.kinds import KIND_WORDS, Branch, Busbar, Node, kind_of
 
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
@@ -87,10 +89,24 @@ class Tool:
         """What floats over the drawing while the tool is in the hand."""
 
 
+PLURALS = {"branch": "branches", "supply": "supplies"}
+
+
 def named(drawing: Drawing, ids: Iterable[str]) -> str:
     """`T2`, or `3 elements`."""
     listed = list(ids)
     return label(drawing, listed[0]) if len(listed) == 1 else f"{len(listed)} elements"
+
+
+def removed(drawing: Drawing, ids: Iterable[str]) -> str:
+    """What goes with a deletion: `Lodge with 2 branches and 1 load`, or `T2` alone."""
+    chosen = set(ids)
+    left = edits.remove(drawing, chosen).elements
+    gone = [e for i, e in drawing.elements.items() if i not in left and i not in chosen]
+    words = Counter("branch" if isinstance(e, Branch) else KIND_WORDS[kind_of(e)] for e in gone)
+    told = [f"{many} {word if many == 1 else PLURALS.get(word, word + 's')}" for word, many in words.items()]
+    listed = " and ".join(filter(None, (", ".join(told[:-1]), told[-1]))) if told else ""
+    return f"{named(drawing, chosen)} with {listed}" if listed else named(drawing, chosen)
 
 
 def node_at(drawing: Drawing, x: float, y: float, but: Iterable[str] = ()) -> str | None:

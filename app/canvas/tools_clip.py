@@ -8,7 +8,6 @@ from PySide6.QtCore import QMimeData
 from PySide6.QtGui import QGuiApplication
 
 from app.canvas.geometry import scene, snap
-from app.canvas.tools import named
 from app.model import edits
 from app.model.edits import Clip
 from app.model.errors import FileError
@@ -38,8 +37,7 @@ def copy(view: BoardView) -> bool:
 def cut(view: BoardView) -> None:
     """Copy, then delete."""
     if copy(view):
-        text = f"Cut {named(view.drawing, view.attention.selection)}"
-        view.edit(text, lambda d: edits.remove(d, view.attention.selection))
+        view.take_away("Cut", "Cut", view.attention.selection)
 
 
 def paste(view: BoardView) -> None:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from msgspec.structs import replace
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QKeyEvent, QKeySequence
 
@@ -226,9 +225,10 @@ def remake(view: BoardView, id: str, part: Part) -> None:
     """Turn a joint into a busbar, or back; all that stands on it stays."""
     one, made = view.drawing.elements[id], part.element
     if isinstance(one, Node) and isinstance(made, Joint | Busbar):
-        kept = {"name": one.name, "note": one.note, "x": one.x, "y": one.y, "nominal_v": one.nominal_v}
-        text = f"Make {label(view.drawing, id)} a {KIND_WORDS[kind_of(made)]}"
-        view.edit(text, lambda d: edits.put(d, {id: replace(made, **kept)}))
+        before = view.drawing
+        text = f"Make {label(before, id)} a {KIND_WORDS[kind_of(made)]}"
+        if view.edit(text, lambda d: edits.remake(d, id, made)):
+            view.attention.select(edits.added(before, view.drawing) or (id,))
 
 
 def _anywhere(view: BoardView, event: QKeyEvent) -> bool:

@@ -24,8 +24,7 @@ class NameField(QLineEdit):
         super().__init__(view.viewport())
         self._view, self.id, self._open = view, id, True
         element = view.drawing.elements[id]
-        self.setText(element.name)
-        self.setPlaceholderText(id)
+        self.setText(element.name or id)
         self.setAccessibleName(f"Name of {id}")
         self.setMaxLength(LONGEST)
         self.setAlignment(Qt.AlignmentFlag.AlignHCenter)
@@ -60,7 +59,8 @@ class NameField(QLineEdit):
     def _take(self) -> None:
         if not self._open:
             return
-        name, id = self.text().strip(), self.id
+        id = self.id
+        name = "" if self.text().strip() == id else self.text().strip()
         if id in self._view.drawing.elements:
             text = f"Rename {id} to {name}" if name else f"Take the name off {id}"
             self._view.edit(text, lambda d: edits.rename(d, id, name))

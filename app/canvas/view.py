@@ -13,7 +13,7 @@ from app.canvas.geometry import Hit, HitKind, attachment_point, node_point, pose
 from app.canvas.ladder import release_tap_key
 from app.canvas.tag import Caption
 from app.canvas.theme import Theme
-from app.canvas.tools import Tool, named, node_at
+from app.canvas.tools import Tool, named, node_at, removed
 from app.canvas.tools_keys import SHORTCUTS
 from app.canvas.tools_menu import menu_at
 from app.canvas.tools_move import carried
@@ -46,6 +46,7 @@ class BoardView(EventView):
 
     placing_ended = Signal()
     card_wanted = Signal()
+    told = Signal(str)  # something that just happened and is worth a word
 
     def __init__(self, board: Board, session: Session, attention: Attention, theme: Theme) -> None:
         super().__init__(board)
@@ -191,8 +192,15 @@ class BoardView(EventView):
     def delete_selection(self) -> None:
         """Delete the selection, and with a node what stands on it."""
         ids = self.attention.selection
-        if ids:
-            self.edit(f"Delete {named(self.drawing, ids)}", lambda d: edits.remove(d, ids))
+        self.take_away("Delete", "Deleted", ids)
+
+    def take_away(self, verb: str, done: str, ids: frozenset[str]) -> None:
+        """Remove elements; what goes with them is in the undo text, and told."""
+        if not ids:
+            return
+        alone, words = named(self.drawing, ids), removed(self.drawing, ids)
+        if self.edit(f"{verb} {words}", lambda d: edits.remove(d, ids)) and words != alone:
+            self.told.emit(f"{done} {words}.")
 
     def select_all(self) -> None:
         """Select every element."""

@@ -50,7 +50,7 @@ def fault_of_id(id: str) -> str | None:
 
 def fault(id: str, element: Element) -> str | None:
     """The sentence against the values of one element, or None where all is well."""
-    words = fault_of_fields(element) or fault_of_the_rest(element)
+    words = _fault_of_tap(element) or fault_of_fields(element) or fault_of_the_rest(element)
     return f"{called(id, element)}: {words}" if words else None
 
 
@@ -254,9 +254,18 @@ def _fault_of_transformer(t: Transformer) -> str | None:
     deepest = t.taps_down * t.notch_percent
     if deepest >= 100:
         return f"Taps below reach down {typed(deepest)} %, allowed is less than 100 %."
-    if t.tap not in taps.notches(t):
-        return (
-            f"Tap is {quantity(t.tap, 'notches')}, allowed is a whole number, "
-            f"at least {-t.taps_down} and at most {t.taps_up} notches."
-        )
-    return None
+    return _fault_of_tap(t)
+
+
+def _fault_of_tap(element: Element) -> str | None:
+    """The sentence against a notch that the ladder does not have, however far off; else None."""
+    if not isinstance(element, Transformer):
+        return None
+    t = element
+    whole = all(_is_number(notches, whole=True) for notches in (t.tap, t.taps_down, t.taps_up))
+    if not whole or t.tap in taps.notches(t):
+        return None
+    return (
+        f"Tap is {quantity(t.tap, 'notches')}, allowed is a whole number, "
+        f"at least {-t.taps_down} and at most {t.taps_up} notches."
+    )

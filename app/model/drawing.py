@@ -27,12 +27,14 @@ class Project(Struct, frozen=True, kw_only=True):
 class Limits(Struct, frozen=True, kw_only=True):
     """What results are judged against; the set is chosen per project."""
 
-    name: Annotated[str, text("Limit set", help="Whose limits these are, with the edition.")] = ""
+    name: Annotated[str, text("Limit set", help="Whose limits of voltage these are, with the edition.")] = ""
     low_percent: Annotated[float, field("Lowest voltage", "% of nominal", gt=0, le=100)] = 94.0
     high_percent: Annotated[float, field("Highest voltage", "% of nominal", ge=100, le=200)] = 110.0
     drop_percent: (
-        Annotated[float, field("Drop from the supply", "%", gt=0, le=100, help="Blank: not judged.")] | None
+        Annotated[float, field("Drop in all", "%", gt=0, le=100, help="Below the supply. Blank: not judged.")]
+        | None
     ) = None
+    drop_name: Annotated[str, text("Drop limit", help="Whose limit of the drop it is.")] = ""
     most_loaded_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
     start_name: Annotated[str, text("Start limits", help="Whose limits of motor starts these are.")] = ""
     start_supply_percent: (

@@ -11,6 +11,7 @@ from app.model.checks import EditRefused, called
 from app.model.drawing import Drawing, fresh_id
 from app.model.hanging import free_place
 from app.model.kinds import (
+    LETTERS,
     AnyElement,
     Attachment,
     Branch,
@@ -22,6 +23,7 @@ from app.model.kinds import (
     Point,
     Supply,
     Transformer,
+    kind_of,
 )
 from app.model.levels import TWO_WIRE, nominal_levels
 
@@ -144,6 +146,24 @@ def join(drawing: Drawing, kept_node: str, gone_node: str) -> Drawing:
     fresh[kept_node] = replace(kept, name=kept.name or gone.name, nominal_v=kept.nominal_v or gone.nominal_v)
     left = {i: e for i, e in put(drawing, fresh).elements.items() if i != gone_node}
     return with_elements(drawing, left)
+
+
+def remake(drawing: Drawing, id: str, template: Joint | Busbar) -> Drawing:
+    """Turn a joint into a busbar, or back; all that stands on it stays. An id that was given by letter
+    and number is given anew, so that no busbar is called J3."""
+    was = element(drawing, id)
+    if not isinstance(was, Node):
+        raise EditRefused(f"{called(id, was)}: cannot be made another node, allowed is a busbar or joint.")
+    kept = {"name": was.name, "note": was.note, "x": was.x, "y": was.y, "nominal_v": was.nominal_v}
+    made: AnyElement = replace(template, **kept)
+    letter = LETTERS[kind_of(was)]
+    counted = id.startswith(letter) and id[len(letter) :].isdigit()
+    new = fresh_id(drawing.elements, made) if counted else id
+    elements: dict[str, AnyElement] = {}
+    for i, one in drawing.elements.items():
+        at = {end: new for end in ("start", "end", "node") if getattr(one, end, None) == id}
+        elements[new if i == id else i] = made if i == id else replace(one, **at) if at else one
+    return with_elements(drawing, elements)
 
 
 def _moved_over(one: Element, kept: Node, kept_node: str, gone: Node, gone_node: str) -> Element:

@@ -19,7 +19,7 @@ from app.model.changes import (
 from app.model.checks import EditRefused
 from app.model.clipboard import Clip, copy, paste
 from app.model.diffing import Change, added, diff
-from app.model.drawing_on import drop, extend, join, move, reroute, split_branch
+from app.model.drawing_on import drop, extend, join, move, remake, reroute, split_branch
 from app.model.hanging import free_place
 from app.model.keeping import carried, forget_part, keep_part, rename_part, set_symbol
 from app.model.parts import made_from
@@ -47,6 +47,7 @@ __all__ = [
     "put",
     "reattach",
     "reconnect",
+    "remake",
     "remove",
     "remove_case",
     "rename",

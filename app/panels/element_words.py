@@ -36,15 +36,33 @@ def subject(drawing: Drawing, ids: Sequence[str]) -> str:
     return many(kinds.pop(), len(ids)) if len(kinds) == 1 else f"{len(ids)} elements"
 
 
+NOUNS = {  # where the label reads on into its box
+    "fault_degc": "Temperature of the hot conductor",
+    "held_percent": "Volts held",
+    "hold_percent": "Volts held",
+    "limited_current": "Current that the starter lets through",
+    "limited_power_factor": "Power factor behind the starter",
+    "reference_v": "Voltage of the demand",
+    "return_resistance_ohm_per_km": "Resistance of the return",
+    "temperature_degc": "Temperature of the conductor",
+    "trip_a": "Tripping current",
+}
+
+
+def noun(field: Field) -> str:
+    """What a sentence calls a field."""
+    return NOUNS.get(field.name, field.label)
+
+
 def step_text(field: Field, value: object, who: str) -> str:
     """The undo text: `Length of C2 to 900 m`."""
     if field.name in ("note", "name") and not value:
-        return f"{field.label} of {who} cleared"
+        return f"{noun(field)} of {who} cleared"
     if value is None:
-        return f"{field.label} of {who} left blank"
+        return f"{noun(field)} of {who} left blank"
     if field.name == "note":
         return f"Note of {who}"
-    return f"{field.label} of {who} to {worded(field, value)}"
+    return f"{noun(field)} of {who} to {worded(field, value)}"
 
 
 def worded(field: Field, value: object) -> str:

@@ -1,6 +1,7 @@
 """The bottom line: whether the checks hold, the tightest one, and what is assumed; folds out to the lists."""
 
 from PySide6.QtCore import Qt, QTimer, Signal
+from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import (
     QHBoxLayout,
     QListWidget,
@@ -19,6 +20,7 @@ from app.live.solving import Solving
 from app.model import edits
 from app.model.drawing import label
 from app.model.fields import fields_of
+from app.panels.element_words import noun
 from app.panels.findings_words import Line, assumption_words, count_words, line, ordered
 from app.panels.style import play
 from app.panels.verdicts import Mark, colour_of, icon
@@ -35,6 +37,7 @@ class FindingsBar(QWidget):
 
     sought = Signal(object)
     field_sought = Signal(str, str)
+    left = Signal()  # the list was closed by Esc: the board takes the keyboard back
 
     def __init__(
         self,
@@ -163,6 +166,14 @@ class FindingsBar(QWidget):
         if self.folded_out:
             self.list.setFocus()
 
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        if event.key() != Qt.Key.Key_Escape:
+            super().keyPressEvent(event)
+            return
+        if self.folded_out:
+            self.fold(self.folded_out)
+        self.left.emit()
+
     def _fill(self) -> None:
         outcome = self._newest
         if outcome is None or (self.folded_out == "assumed" and not outcome.assumptions):
@@ -218,7 +229,7 @@ class FindingsBar(QWidget):
         element = self._session.drawing.elements.get(one.id) if isinstance(one, Assumption) else None
         if element is None:
             return
-        name = fields_of(type(element))[one.field].label
+        name = noun(fields_of(type(element))[one.field])
         text = f"{name} of {label(self._session.drawing, one.id)} taken as given"
         refusal = self._session.edit(text, lambda d: edits.change(d, one.id, **{one.field: one.value}))
         if refusal:

@@ -5,6 +5,7 @@ from msgspec import Struct
 from app.model.drawing import Drawing, label
 from app.model.fields import fields_of
 from app.panels.element_page import round_off
+from app.panels.element_words import noun
 from app.study.findings import checks_made
 from app.study.outcome import Assumption, Finding, Outcome, Verdict
 from app.study.words import tally_words
@@ -62,7 +63,7 @@ def assumption_words(drawing: Drawing, assumption: Assumption) -> str:
     """`T2: No-load current i0 is taken as 0.8 %: common practice, no source`."""
     element = drawing.elements.get(assumption.id)
     about = fields_of(type(element)).get(assumption.field) if element is not None else None
-    name = about.label if about else assumption.field
+    name = noun(about) if about else assumption.field
     value = f"{round_off(assumption.value)} {assumption.unit}".strip()
     return f"{label(drawing, assumption.id)}: {name} is taken as {value} ({assumption.basis})"
 

@@ -86,9 +86,12 @@ VALUE = Column("value", "Value", digits=1, width=12)
 UNIT = Column("unit", "Unit", style=Style.TEXT, width=18)
 
 
+NO_CLAIM = "chosen for this drawing; no standard is claimed"
+
+
 def _limits(subject: Subject) -> SheetTable:
     limits = subject.drawing.limits
-    whose = limits.name or "chosen for this drawing; no standard is claimed"
+    names_of = {"low": limits.name, "high": limits.name, "drop": limits.drop_name}
     columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=40))
     rows: dict[str, Cells] = {}
     names: tuple[str, ...] = ("low", "high", "drop", "most_loaded")
@@ -97,12 +100,12 @@ def _limits(subject: Subject) -> SheetTable:
     for name in names:
         field = fields_of(type(limits))[name + "_percent"]
         value = getattr(limits, field.name)
-        of_start = name.startswith("start") and limits.start_name
+        named = limits.start_name if name.startswith("start") else names_of.get(name)
         rows[name] = {
             "item": text(field.label),
             "value": given("not judged" if value is None else value),
             "unit": text("" if value is None else field.unit),
-            "whose": given(of_start or whose) if value is not None else text(""),
+            "whose": given(named or NO_CLAIM) if value is not None else text(""),
         }
     return table("limits", BASIS, "Limits", columns, rows, held=0)
 

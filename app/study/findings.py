@@ -16,6 +16,7 @@ NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
 FROM_MEMORY = ", from memory"  # of a source: stands beside the finding, not in its sentence
 NOISE = 1e-9  # %, what the arithmetic leaves open: a value this close to its limit is on it
+SET_HERE = "the limit set for this drawing"
 LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
 
@@ -62,17 +63,14 @@ def judge(
     Source : the limits are the drawing's; what counts as near is ours
     """
     limits = drawing.limits
-    whose = limits.name or "the limit set for this drawing"
     checks = [
-        _voltage(drawing, nodes, limits.low_percent, True),
-        _voltage(drawing, nodes, limits.high_percent, False),
+        (_voltage(drawing, nodes, limits.low_percent, True), limits.name or SET_HERE),
+        (_voltage(drawing, nodes, limits.high_percent, False), limits.name or SET_HERE),
     ]
     if limits.drop_percent is not None:
-        checks.append(_drop(drawing, nodes, limits.drop_percent))
-    found: list[Finding] = []
-    for check in checks:
-        found += findings_of(check, whose, cases)
-    return found + findings_of(_loading(drawing, branches, limits.most_loaded_percent), LOADING, cases)
+        checks.append((_drop(drawing, nodes, limits.drop_percent), limits.drop_name or SET_HERE))
+    checks.append((_loading(drawing, branches, limits.most_loaded_percent), LOADING))
+    return [found for check, whose in checks for found in findings_of(check, whose, cases)]
 
 
 def _voltage(drawing: Drawing, nodes: Table[NodeState], limit: float, low: bool) -> Check:

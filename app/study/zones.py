@@ -105,7 +105,7 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
         id, at = layout.branch_ids[branch], layout.node_ids[node]
         other = unit.v2_v if number == 1 else unit.v1_v
         turned = 1 / APART <= other / level <= APART
-        cure = " Its other winding fits: swap its ends." if turned else slip(volts, level)
+        cure = " Its other winding fits: turn its ends round." if turned else slip(volts, level)
         sentence = (
             f"Winding {number} of {tell(drawing, id)} is rated {volts:g} V but stands at "
             f"{tell(drawing, at)}, which is at {level:g} V.{cure}"

@@ -137,10 +137,10 @@ def test_attachments_by_letter_hang_on_the_selected_node_side_by_side(desk):
 def test_b_makes_a_joint_a_busbar_and_j_makes_it_one_again(desk):
     desk.select("J2")
     desk.key(Key.Key_B)
-    assert isinstance(desk.drawing.elements["J2"], Busbar)
-    assert desk.drawing.elements["T2"].start == "J2"
+    assert isinstance(desk.drawing.elements["B3"], Busbar)
+    assert desk.drawing.elements["T2"].start == "B3"
     desk.key(Key.Key_R)
-    assert desk.drawing.elements["J2"].upright is False
+    assert desk.drawing.elements["B3"].upright is False
     desk.key(Key.Key_J)
     assert isinstance(desk.drawing.elements["J2"], Joint)
 
@@ -186,7 +186,7 @@ def test_delete_takes_what_hangs_on_a_node(desk):
     desk.select("J2")
     desk.key(Key.Key_Delete)
     assert sorted(desk.drawing.elements) == ["B1", "B2", "J1", "L1", "S1", "T1"]
-    assert desk.last == "Delete J2"
+    assert desk.last == "Delete J2 with 2 branches"
     assert desk.attention.selection == frozenset()
     desk.undo()
     assert desk.drawing == pair()
@@ -376,3 +376,29 @@ def test_what_nobody_aims_goes_where_there_is_room(desk):
         desk.key(Qt.Key.Key_Return)
         (far,) = desk.attention.selection
         assert (desk.drawing.elements[far].x, desk.drawing.elements[far].y) == expected
+
+
+def test_deleting_a_bar_says_what_goes_with_it(desk, qtbot):
+    desk.select("B2")
+    with qtbot.waitSignal(desk.view.told) as told:
+        desk.key(Key.Key_Delete)
+    assert desk.last == "Delete HS with 1 branch and 1 load"
+    assert told.args == ["Deleted HS with 1 branch and 1 load."]
+    desk.undo()
+    assert desk.drawing == pair()
+
+
+def test_renaming_what_has_no_name_begins_with_its_id(desk):
+    desk.select("J2")
+    desk.key(Key.Key_F2)
+    assert (field(desk).text(), field(desk).selectedText()) == ("J2", "J2")
+    QTest.keyClick(field(desk), Key.Key_Return)
+    assert (desk.drawing.elements["J2"].name, desk.steps) == ("", 0)
+
+
+def test_a_joint_made_a_busbar_stays_selected_under_its_new_letter(desk):
+    desk.select("J2")
+    desk.type("b")
+    assert "J2" not in desk.drawing.elements
+    assert desk.attention.selection == {"B3"}
+    assert desk.drawing.elements["C1"].end == "B3"

@@ -289,3 +289,22 @@ def test_typing_the_same_value_confirms_a_figure_of_the_shelf(qtbot):
     assert set_up.drawing.elements["C1"].assumed == ()
     assert row.dot.isHidden()
     set_up.solving.stop()
+
+
+@pytest.mark.parametrize(("id", "field", "wrong"), [("L2", "power_factor", "7"), ("T2", "tap", "7")])
+def test_the_old_value_typed_again_takes_the_refusal_away(set_up, id, field, wrong):
+    row = page(set_up, id).rows[field]
+    old = row.editor.text()
+    type_into(row, wrong)
+    assert not row.refusal.isHidden()
+    type_into(row, old)
+    assert row.refusal.isHidden()
+    assert row.editor.text() == old
+    assert set_up.session.history.count() == 0
+
+
+@pytest.mark.parametrize("typed", ["7", "50"])
+def test_a_refused_tap_quotes_the_ladder(set_up, typed):
+    row = page(set_up, "T2").rows["tap"]
+    type_into(row, typed)
+    assert row.refusal.text().endswith("at least -2 and at most 2 notches.")

@@ -208,3 +208,22 @@ def test_an_exceeded_advice_neither_fails_nor_passes_as_holding(qtbot):
     assert not bar.sentence.text().startswith("Tightest")
     assert "advised for continuous running: at most" in bar.sentence.text()
     set_up.solving.stop()
+
+
+@pytest.mark.parametrize("which", ["findings", "assumed"])
+def test_escape_folds_the_list_in_and_gives_the_keyboard_back(set_up, qtbot, which):
+    bar = set_up.findings
+    bar.fold(which)
+    assert bar.list.hasFocus()
+    with qtbot.waitSignal(bar.left):
+        QTest.keyClick(bar.list, Qt.Key.Key_Escape)
+    assert bar.folded_out == ""
+    assert bar.fold_out.isHidden()
+
+
+def test_assumed_values_are_told_in_sentences_that_read(set_up):
+    bar = set_up.findings
+    bar.fold("assumed")
+    texts = [bar.list.item(row).text() for row in range(bar.list.count())]
+    assert any("Voltage of the demand is taken as 400 V" in text for text in texts)
+    assert any("Temperature of the conductor is taken as 60 °C" in text for text in texts)

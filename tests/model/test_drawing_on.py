@@ -149,3 +149,20 @@ def test_the_share_may_be_given_and_only_lines_part(yard):
         edits.split_branch(yard, "T2", 0, 0)
     straight = edits.put(yard, {"C1": Cable(start="B2", end="J3", length_m=0.0)})
     assert edits.split_branch(straight, "C1", 25, 0).elements["C1"].length_m == 0.0
+
+
+def test_a_joint_made_a_busbar_is_counted_as_one_and_keeps_all_that_stands_on_it():
+    base = Drawing(
+        elements={
+            "B1": Busbar(), "J3": Joint(x=8, nominal_v=400.0), "C1": Cable(start="B1", end="J3"),
+            "L1": Load(node="J3"),
+        }
+    )  # fmt: skip
+    made = edits.remake(base, "J3", Busbar())
+    assert list(made.elements) == ["B1", "B2", "C1", "L1"]
+    assert (made.elements["C1"].end, made.elements["L1"].node) == ("B2", "B2")
+    assert (made.elements["B2"].x, made.elements["B2"].nominal_v) == (8, 400.0)
+    named = edits.remake(edits.rename(base, "J3", "J3"), "J3", Busbar())
+    assert named.elements["B2"].name == "J3"
+    own = edits.put(Drawing(), {"yard": Joint()})
+    assert list(edits.remake(own, "yard", Busbar()).elements) == ["yard"]

@@ -232,3 +232,14 @@ def test_the_case_that_can_carry_least_is_named():
     )
     assert outcome.status is Status.NO_OPERATING_POINT
     assert "in case Gala" in outcome.findings[0].sentence
+
+
+def test_each_limit_names_whose_it_is():
+    base = limited(two_nodes(), name="Volts of the grid", low_percent=99.9, drop_percent=0.1)
+    whose = {f.check: f.whose for f in run(base).findings}
+    assert whose["voltage low"] == "Volts of the grid"
+    assert whose["voltage drop"] == "the limit set for this drawing"
+    named = limited(two_nodes(), name="Volts of the grid", drop_percent=0.1, drop_name="Drop of the code")
+    (drop,) = of(run(named), "voltage drop")
+    assert drop.whose == "Drop of the code"
+    assert drop.sentence.endswith("(Drop of the code).")

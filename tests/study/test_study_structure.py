@@ -163,7 +163,7 @@ def test_a_winding_given_in_kilovolts_or_phase_volts():
 
 def test_a_transformer_turned_round_is_told_to_swap_its_ends():
     finding = barred(unit(v1_v=11000.0, v2_v=400.0), "mixed levels")
-    assert finding.sentence.endswith("Its other winding fits: swap its ends.")
+    assert finding.sentence.endswith("Its other winding fits: turn its ends round.")
 
 
 def test_a_winding_somewhat_above_the_level_is_in_order():
