@@ -36,6 +36,7 @@ class Rest(Enum):
     AT_STOP = "at its end stop"
     IDLE = "idle: power flows back"
     HUNTING = "hunting"
+    UNKNOWN = "unknown: there are no volts to measure"
 
 
 @dataclass(frozen=True, slots=True)
@@ -202,7 +203,7 @@ class _Rounds:
         wanted = np.clip(now + np.where(out, steps * sign, 0), regulator.lowest, regulator.highest) - now
         stopped = out & (wanted == 0)
         rest = np.full(points.size, Rest.IN_BAND, dtype=object)
-        rest[stopped], rest[idle] = Rest.AT_STOP, Rest.IDLE
+        rest[stopped], rest[idle], rest[~np.isfinite(size)] = Rest.AT_STOP, Rest.IDLE, Rest.UNKNOWN
         self.rest[row, points] = rest
         return np.asarray(wanted.astype(np.intp))
 

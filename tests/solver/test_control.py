@@ -220,3 +220,9 @@ def test_three_single_phase_regulators_each_hold_their_phase():
     assert (np.abs(volts / VOLTS - 1) <= 0.00625 * (1 + 1e-9)).all()
     assert len(set(found.notch[:, 0].tolist())) == 3
     assert found.solution.closure[0] < 1e-10
+
+
+def test_without_volts_to_measure_it_does_not_say_in_band():
+    found = control(line_with_regulator([np.array([1.0, 50.0]) * LOAD]), [regulator()])
+    assert found.rest[0].tolist() == [Rest.IN_BAND, Rest.UNKNOWN]
+    assert found.solution.status == (Status.SOLVED, Status.NO_OPERATING_POINT)
