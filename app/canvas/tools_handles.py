@@ -5,11 +5,12 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from msgspec import Struct
-from PySide6.QtCore import QPointF, Qt
+from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QPainter, QPen
 
 from app.canvas.geometry import GRID, distance, meet, node_point
 from app.canvas.palette import Palette
+from app.canvas.tag import Caption
 from app.canvas.tools_move import bar_handles
 from app.model.kinds import Busbar, Node
 
@@ -18,6 +19,7 @@ if TYPE_CHECKING:
 
 AWAY = 1.3 * GRID  # from the node's middle, or from the bar
 REACH = 8.0
+RING = 6.0
 LINGER = 2.2 * GRID  # how far the hand may stray before the handles of a node go away
 
 
@@ -45,6 +47,13 @@ def handles_of(view: BoardView, id: str, hand: QPointF) -> list[Handle]:
     return []
 
 
+def covers_words(view: BoardView, handle: Handle) -> bool:
+    """True where a handle would hide words; such a one shows only under the hand."""
+    ring = QRectF(handle.at.x() - RING, handle.at.y() - RING, 2 * RING, 2 * RING)
+    found = (i for i in view.board.items(ring) if isinstance(i, Caption) and i.lines)
+    return any(words.spot.box.intersects(ring) for words in found)
+
+
 def handle_at(handles: list[Handle], point: QPointF, scale: float) -> Handle | None:
     """The handle under a point; scale is screen pixels a scene pixel."""
     near = [h for h in handles if distance(h.at, point) <= REACH / min(scale, 1.0)]
@@ -68,7 +77,7 @@ def paint_handles(painter: QPainter, handles: list[Handle], held: Handle | None,
             painter.drawRect(int(at.x()) - 4, int(at.y()) - 4, 8, 8)
             continue
         painter.setOpacity(1.0 if full else 0.6)
-        painter.drawEllipse(at, 6.0, 6.0)
+        painter.drawEllipse(at, RING, RING)
         painter.setPen(QPen(palette.paper if full else palette.flow, 1.5, Qt.PenStyle.SolidLine))
         painter.drawLine(at - QPointF(3, 0), at + QPointF(3, 0))
         painter.drawLine(at - QPointF(0, 3), at + QPointF(0, 3))

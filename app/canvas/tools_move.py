@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPen
 
-from app.canvas.geometry import attachment_point, distance, node_point, route, scene, snap
+from app.canvas.geometry import attachment_point, bar_ends, distance, node_point, route, snap
 from app.canvas.palette import Palette
 from app.canvas.tools import Tool, Touch, named, node_at, paint_ring
 from app.model import edits
@@ -247,7 +247,5 @@ class BarTool(Tool):
 
 
 def bar_handles(bar: Busbar) -> tuple[QPointF, QPointF]:
-    """Where the two ends of a bar are taken hold of: half a step beyond it."""
-    half = bar.length / 2 + 0.5
-    dx, dy = (0.0, half) if bar.upright else (half, 0.0)
-    return scene(bar.x - dx, bar.y - dy), scene(bar.x + dx, bar.y + dy)
+    """Where the two ends of a bar are taken hold of: on them, as its name stands beyond."""
+    return bar_ends(bar)

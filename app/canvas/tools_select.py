@@ -11,7 +11,7 @@ from app.canvas.geometry import Hit, HitKind, distance, node_point, pose, route
 from app.canvas.palette import Palette
 from app.canvas.tools import SLACK_PX, Tool, Touch
 from app.canvas.tools_bend import EndTool, RunTool, with_bend, without_bend
-from app.canvas.tools_handles import Handle, handle_at, handles_of, paint_handles, strays
+from app.canvas.tools_handles import Handle, covers_words, handle_at, handles_of, paint_handles, strays
 from app.canvas.tools_move import BandTool, BarTool, HangTool, MoveTool
 from app.canvas.tools_pull import PullTool, Spot
 from app.model.drawing import label
@@ -172,7 +172,8 @@ class SelectTool(Tool):
         return handle_at(self._handles(), point, self.view.scale_now())
 
     def paint(self, painter: QPainter, palette: Palette) -> None:
-        paint_handles(painter, self._handles(), self._handle, palette)
+        seen = [h for h in self._handles() if h == self._handle or not covers_words(self.view, h)]
+        paint_handles(painter, seen, self._handle, palette)
 
 
 def pull_from(view: BoardView, node: str, *, held: bool, upright: bool = False) -> PullTool:

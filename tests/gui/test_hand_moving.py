@@ -2,11 +2,12 @@
 
 from hand_desk import CTRL, SHIFT, blank, desk, pair
 from msgspec.structs import replace
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QPointF, Qt
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QLineEdit
 
-from app.canvas.geometry import route
+from app.canvas import tools_select
+from app.canvas.geometry import grid, route
 from app.canvas.tools_move import guides
 from app.model import edits
 from app.model.kinds import Joint
@@ -171,7 +172,7 @@ def test_an_attachment_moves_round_its_node_and_onto_another(desk):
 
 def test_a_busbar_is_lengthened_by_its_end(desk):
     desk.click(36, 2)
-    desk.drag((36, 3), (36, 5), (36, 6))
+    desk.drag((36, 2.5), (36, 5), (36, 6))
     bar = desk.drawing.elements["B2"]
     assert (bar.length, bar.y) == (8.5, 1.75)
     assert bar.y - bar.length / 2 == -2.5
@@ -226,3 +227,22 @@ def test_a_click_on_a_name_selects_and_a_double_click_renames(desk):
     QTest.keyClicks(fields[0], "Long run")
     QTest.keyClick(fields[0], Qt.Key.Key_Return)
     assert desk.drawing.elements["C1"].name == "Long run"
+
+
+def test_rings_to_draw_on_cover_no_words_but_are_found_under_the_hand(desk, monkeypatch):
+    painted = []
+    monkeypatch.setattr(
+        tools_select, "paint_handles", lambda painter, handles, *rest: painted.extend(handles)
+    )
+
+    def seen(hand):
+        desk.hover(*hand)
+        painted.clear()
+        desk.view.viewport().grab()
+        return [h for h in painted if h.end is None]
+
+    all_of_them = tools_select.handles_of(desk.view, "J2", desk.view.paper(QPointF()))
+    covered = [h for h in all_of_them if tools_select.covers_words(desk.view, h)]
+    assert 0 < len(covered) < len(all_of_them)
+    assert seen((24, 0)) == [h for h in all_of_them if h not in covered]
+    assert covered[0] in seen(grid(covered[0].at))
