@@ -1,5 +1,7 @@
 """Routes, hits and the places of words: pure functions over plain data."""
 
+from pathlib import Path
+
 import numpy as np
 import pytest
 from board_drawings import EVERY_KIND, FERNHOLLOW, by_hand, figures
@@ -27,7 +29,11 @@ from app.canvas.paper import Paper
 from app.canvas.placing import Homes, Spot, Taken, Wish, around, gap, place, strips
 from app.canvas.standing import breadths
 from app.model.drawing import Drawing
+from app.model.file import load
 from app.model.kinds import Busbar, Cable, Joint, Load
+from app.study import run
+
+SAMPLES = Path(__file__).parents[2] / "samples"
 
 
 def points(drawing, id):
@@ -167,6 +173,19 @@ def test_volts_are_nearer_to_their_own_node_than_to_any_other_or_led_to_it(qapp,
         assert away <= 22
         assert all(gap(tag.spot.box, other) > away for i, other in cores.items() if i != id), id
     assert sum(paper.tags[id].lead is not None for id in cores) <= len(cores) / 2
+
+
+@pytest.mark.parametrize("symbols", ["IEC", "ANSI"])
+def test_tags_stay_under_their_lines_with_either_set_of_symbols(qapp, symbols):
+    drawing = load(SAMPLES / "fernhollow_pair.farend")
+    paper = Paper(Look(symbols=symbols))
+    paper.lay_out(drawing)
+    paper.show_outcome(drawing, run(drawing), 0, None)
+    paper.arrange()
+    for id in drawing.branches():
+        item, words = paper.items_by_id[id], paper.tags[id].spot.box
+        assert words.top() > item.at.y(), id
+        assert gap(words, item.core()) <= 10, id
 
 
 def test_whose_home_is_nearest():
