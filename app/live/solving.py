@@ -12,6 +12,7 @@ from app.live.lane import Job, Lane, Pace
 from app.live.session import Session
 from app.model.drawing import Drawing
 from app.model.edits import Change
+from app.model.kinds import Supply
 from app.study.outcome import Outcome
 from solver.status import Status
 
@@ -37,7 +38,8 @@ def _tap_curve(drawing: Drawing, id: str) -> TapCurve:
 class Solving(QObject):
     """Listens to the session, solves, tells. Latest wins.
 
-    outcome: the newest outcome whose status is solved, or the first unsolved one; shown grey when `stale`
+    outcome: the newest outcome whose status is solved, or the first unsolved one, or the one of a drawing
+        that nothing feeds; shown grey when `stale`
     problem: the newest outcome when it is not solved, else None
     stale: the figures shown do not belong to the drawing as it stands
     reference: the outcome when the drag began, while one goes on, else None
@@ -228,7 +230,7 @@ class Solving(QObject):
             return
         solved = outcome.status is Status.SOLVED
         self.problem = None if solved else outcome
-        if solved or self.outcome is None or self.outcome.status is not Status.SOLVED:
+        if solved or self.figures is None or not self._is_fed():
             self.outcome = outcome
         self.stale = self.outcome is not outcome or job.number < self._newest
         if not self.stale or self.problem is not None:
@@ -236,6 +238,10 @@ class Solving(QObject):
         if self.stale:
             self.went_stale.emit()
         self.solved.emit(outcome)
+
+    def _is_fed(self) -> bool:
+        """False where the drawing has no supply: old figures would stand on dead conductors."""
+        return any(isinstance(one, Supply) for one in self._session.drawing.elements.values())
 
     def _take_curve(self, job: Job) -> None:
         if self._curves.put(job.key, job.number, job.answer()):

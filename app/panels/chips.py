@@ -36,7 +36,7 @@ class Chip(QPushButton):
         if name != self.text():
             self.setText(name)
             self.updateGeometry()
-        self.setToolTip(plain_tip(f"{name}: {verdict.value}"))
+        self.setToolTip(plain_tip(f"{name}: {'no verdict' if verdict is Verdict.NOTE else verdict.value}"))
         self.update()
 
     def sizeHint(self) -> QSize:
@@ -120,9 +120,9 @@ class CaseChips(QWidget):
         self._arrange()
 
     def _verdict(self, case: int) -> Verdict:
-        """The worst in a case; a note for one that is not solved yet."""
-        outcome = self._solving.outcome
-        if outcome is None or case >= len(outcome.cases):
+        """The worst in a case; a note for one that is not solved."""
+        outcome = self._solving.figures
+        if outcome is None or self._solving.problem is not None or case >= len(outcome.cases):
             return Verdict.NOTE
         return outcome.verdict(case)
 

@@ -8,7 +8,7 @@ from app.panels.element_page import round_off
 from app.panels.element_words import noun
 from app.study.findings import checks_made
 from app.study.outcome import Assumption, Finding, Outcome, Verdict
-from app.study.words import tally_words
+from app.study.words import DEAD, tally_words
 from solver.status import Status
 
 
@@ -36,8 +36,11 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
         return Line(found[0].verdict, head, found[0].sentence, found[0].ids)
     tightest = min((f for f in found if f.margin is not None), key=lambda f: f.margin or 0.0, default=None)
     told = near[0] if near else tightest
+    dead = next((f for f in found if f.check == DEAD), None)
+    if dead is not None and not near:  # what is dead was not judged
+        return Line(Verdict.NOTE, head, dead.sentence, dead.ids)
     if told is None:
-        return Line(Verdict.HOLDS, head, "")
+        return Line(Verdict.NOTE, head, "")
     lead = "" if told.verdict is Verdict.ADVICE else "Tightest: "
     return Line(told.verdict if near else Verdict.HOLDS, head, lead + told.sentence, told.ids)
 

@@ -97,7 +97,7 @@ class Totals(QWidget):
 
     def sizeHint(self) -> QSize:
         """Room for both totals with their changes, so that nothing shifts while dragging."""
-        widest = [("Supply", "1 234 kW", "▲ 0.04 kW"), ("Lost", "1.64 kW", "▲ 0.04 kW")]
+        widest = [("Supply was", "1 234 kW", "▲ 0.04 kW"), ("Lost was", "1.64 kW", "▲ 0.04 kW")]
         return QSize(round(sum(_width(group) for group in widest)) + GROUP_GAP, HEIGHT)
 
     def minimumSizeHint(self) -> QSize:
@@ -110,8 +110,11 @@ class Totals(QWidget):
         self.update()
 
     def figures(self) -> list[tuple[str, str, str]]:
-        """Caption, figure and change of each total."""
+        """Caption, figure and change of each total; of the past while the drawing is not solved."""
         outcome, before = self._solving.figures, self._solving.reference
+        past = " was" if self._solving.problem is not None else ""
+        if past and outcome is None:
+            return [("Supply", "–", ""), ("Lost", "–", "")]
         if outcome is None:
             return []
         case = min(self._attention.case, len(outcome.cases) - 1)
@@ -121,7 +124,7 @@ class Totals(QWidget):
             moved = ""
             if before is not None and case < len(before.cases):
                 moved = change(now, float(getattr(before.balance, column)[case]), write)
-            made.append((name, write(now), moved))
+            made.append((name + past, write(now), moved))
         return made
 
     def paintEvent(self, event: QPaintEvent) -> None:

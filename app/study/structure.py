@@ -7,7 +7,7 @@ from app.model.kinds import Generator, Joint, Load, Motor, Transformer
 from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rings import ring_findings
-from app.study.words import list_of, tell
+from app.study.words import DEAD, list_of, tell
 from app.study.zones import Zones, level_findings, stated_voltages
 
 
@@ -123,9 +123,9 @@ def _dead_finding(drawing: Drawing, ids: tuple[str, ...], needy: list[str]) -> F
     verb = "is" if len(ids) == 1 else "are"
     if needy:
         words = f"No supply reaches {list_of(drawing, needy)}: {named} {verb} dead."
-        return Finding("dead part", Verdict.FAILS, ids, words)
+        return Finding(DEAD, Verdict.FAILS, ids, words)
     return Finding(
-        "dead part", Verdict.NOTE, ids, f"No supply reaches {named}: dead, and nothing draws there."
+        DEAD, Verdict.NOTE, ids, f"No supply reaches {named}: dead, and nothing draws there."
     )
 
 

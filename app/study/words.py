@@ -8,6 +8,7 @@ from app.model.drawing import Drawing, label
 from app.study.outcome import Finding, Verdict
 
 MANY = 6
+DEAD = "dead part"  # the check that tells what no supply reaches
 
 
 def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
@@ -18,7 +19,8 @@ def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
 
     Returns : words; that nothing is judged where no finding judges
     """
-    count = Counter(finding.verdict for finding in findings)
+    found = list(findings)
+    count = Counter(finding.verdict for finding in found)
     failing = count[Verdict.FAILS] + count[Verdict.BLOCKS]
     soft = {verdict.value: count[verdict] for verdict in (Verdict.ADVICE, Verdict.NEAR) if count[verdict]}
     if failing:
@@ -26,7 +28,9 @@ def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
     if not soft and not count[Verdict.HOLDS]:
         return "Nothing is judged"
     held = f"{made} checks hold" if made > 1 else "1 check holds" if made else "Every check holds"
-    return ", ".join([held, *(f"{many} {words}" for words, many in soft.items())])
+    dead = sum(finding.check == DEAD for finding in found)
+    unfed = [f"{dead} {'part is' if dead == 1 else 'parts are'} dead"] if dead else []
+    return ", ".join([held, *(f"{many} {words}" for words, many in soft.items()), *unfed])
 
 
 def tell(drawing: Drawing, id: str) -> str:

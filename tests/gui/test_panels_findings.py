@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QListWidget
 
 from app.model import edits
 from app.model.drawing import Case, Limits
-from app.model.kinds import Load
+from app.model.kinds import Busbar, Load
 from app.study.outcome import Verdict
 
 
@@ -98,7 +98,8 @@ def test_no_operating_point_is_told_calmly(set_up):
     QTest.mouseClick(bar.sentence, Qt.MouseButton.LeftButton)
     assert set_up.attention.selection == {blamed}
     assert set_up.solving.stale
-    assert set_up.head.totals.figures() == figures  # the last good figures stay, grey
+    kept = [(f"{name} was", figure, moved) for name, figure, moved in figures]
+    assert set_up.head.totals.figures() == kept  # the last good figures stay, grey
     set_up.session.history.undo()
     set_up.solving.settle()
     assert bar.headline.text().startswith("11 checks hold")
@@ -227,3 +228,41 @@ def test_assumed_values_are_told_in_sentences_that_read(set_up):
     texts = [bar.list.item(row).text() for row in range(bar.list.count())]
     assert any("Voltage of the demand is taken as 400 V" in text for text in texts)
     assert any("Temperature of the conductor is taken as 60 °C" in text for text in texts)
+
+
+def test_without_a_supply_nothing_old_is_shown(qtbot):
+    set_up = stage(qtbot, fernhollow(TWO))
+    assert {chip.verdict for chip in set_up.head.chips.chips} != {Verdict.NOTE}
+    set_up.session.edit("Delete", lambda d: edits.remove(d, ["S1"]))
+    set_up.solving.settle()
+    assert {chip.verdict for chip in set_up.head.chips.chips} == {Verdict.NOTE}
+    assert [figure for _name, figure, _moved in set_up.head.totals.figures()] == ["–", "–"]
+    set_up.attention.select(("L2",))
+    cells = {cell for row in set_up.card.now.rows for cell in row.cells}
+    assert cells <= {"dead", "–"}
+    set_up.session.history.undo()
+    set_up.solving.settle()
+    assert "–" not in [figure for _name, figure, _moved in set_up.head.totals.figures()]
+    set_up.solving.stop()
+
+
+def test_a_blocked_layout_has_neutral_chips_and_totals(qtbot):
+    set_up = stage(qtbot, fernhollow(TWO))
+    set_up.session.edit("Plate", lambda d: edits.change(d, "T2", load_loss_w=1e6))
+    set_up.solving.settle()
+    assert set_up.solving.problem is not None
+    assert {chip.verdict for chip in set_up.head.chips.chips} == {Verdict.NOTE}
+    assert [name for name, _figure, _moved in set_up.head.totals.figures()] == ["Supply was", "Lost was"]
+    set_up.solving.stop()
+
+
+def test_what_is_dead_is_said_and_not_counted_as_holding(qtbot):
+    set_up = stage(qtbot, fernhollow(ONE))
+    was = set_up.findings.headline.text()
+    set_up.session.edit("Bar", lambda d: edits.put(d, {"B9": Busbar(x=60, y=20, name="Barn")}))
+    set_up.solving.settle()
+    bar = set_up.findings
+    assert bar.headline.text() == f"{was.removesuffix('.')}, 1 part is dead."
+    assert bar.mark.verdict is Verdict.NOTE
+    assert "Barn" in bar.sentence.text()
+    set_up.solving.stop()

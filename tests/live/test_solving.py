@@ -11,7 +11,7 @@ from app.live.session import Session
 from app.live.solving import Solving
 from app.model import edits
 from app.model.drawing import Drawing
-from app.model.kinds import Joint, Transformer
+from app.model.kinds import Joint, Supply, Transformer
 from solver.status import Status
 
 
@@ -63,6 +63,7 @@ def session(qapp):
         "J1": Joint(),
         "J2": Joint(x=8.0),
         "J3": Joint(x=16.0),
+        "S1": Supply(node="J1"),
         "T1": transformer("J1", "J2"),
         "T2": transformer("J2", "J3"),
     }
@@ -194,6 +195,14 @@ def test_fast_again_means_the_same_turn_again(session, bench, qtbot):
     qtbot.waitUntil(lambda: made.outcome is not None)
     assert not pace.slow
     made.stop()
+
+
+def test_without_a_supply_no_old_figures_are_kept(session, solving, bench):
+    bench.status = Status.INVALID
+    session.edit("Delete", lambda d: edits.remove(d, ["S1"]))
+    solving.settle()
+    assert solving.outcome is solving.problem
+    assert solving.figures is None
 
 
 def test_not_solved_keeps_the_last_good_figures_as_stale(session, solving, bench):
