@@ -150,8 +150,9 @@ class Paper(QGraphicsScene):
             item = self.items_by_id.get(id)
             if item is None:
                 continue
-            if isinstance(item, BranchItem) and item.parted:
-                live = self._shown is not None and self._shown.between_live(self._laid.elements[id])
+            element = self._laid.elements.get(id)
+            if isinstance(element, Branch) and isinstance(item, BranchItem) and item.parted:
+                live = self._shown is not None and self._shown.between_live(element)
             item.stand(standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst))
 
     def _owed_in(self, sight: Iterable[QRectF]) -> list[str]:
