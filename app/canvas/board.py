@@ -3,6 +3,7 @@
 from collections.abc import Iterable, Set
 
 from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
+from PySide6.QtGui import QPen
 
 from app.canvas import arrange
 from app.canvas.branch_item import BranchItem
@@ -12,7 +13,7 @@ from app.canvas.handles import Handles
 from app.canvas.ladder import TapLadder
 from app.canvas.node_item import NodeItem
 from app.canvas.paper import Paper, with_neighbours
-from app.canvas.placing import CLEAR, Spot, Taken, Wish, around, place
+from app.canvas.placing import CLEAR, Spot, Taken, around, gap
 from app.canvas.tag import SMALLEST_ZOOM, Caption, Tag
 from app.canvas.theme import Theme
 from app.live.attention import Attention
@@ -23,6 +24,8 @@ from app.model.kinds import Branch
 from app.model.taps import by_hand
 
 LADDER_GAP = 6.0
+LED_FROM = 60.0  # px between a ladder and its transformer; farther off a line leads there
+FAR_OFF = 40.0  # px² of words that a ladder may cover to stand a px nearer its transformer
 REST_MS = 120  # figures out of sight are written once the hand has paused this long
 FEW = 100
 SMALL = 150  # elements; on a larger drawing only the words of what was touched are placed anew
@@ -194,28 +197,54 @@ class Board(Paper):
         """Where a ladder covers no symbol and no bar, if there is such a place, and few words."""
         if not self.ladders:
             return
-        cores = {id: self.items_by_id[id].core().united(self.captions[id].spot.box) for id in self.ladders}
-        wishes = [Wish((id, "ladder"), self._ladder_spots(id, core)) for id, core in cores.items()]
-        taken = self._taken_near(spot.box for wish in wishes for spot in wish.spots)
-        for (id, _), spot in place(wishes, taken).items():
-            ladder = self.ladders[id]
-            ladder.setPos(spot.box.topLeft() - ladder.boundingRect().topLeft())
+        spots = {id: self._ladder_spots(id) for id in self.ladders}
+        taken, symbols = self._taken_near(spot.box for each in spots.values() for spot in each)
+        sight = self._sight() or []
+        for id, each in spots.items():
+            clear = [s for s in each if not symbols.overlap(s.box)]
+            seen = [s for s in clear if any(part.contains(s.box) for part in sight)]
+            core = self.items_by_id[id].core()
+            boxes = [s.box for s in seen or clear or each]
+            box = min(boxes, key=lambda b: taken.overlap(b) + FAR_OFF * gap(b, core))
+            self.ladders[id].setPos(box.topLeft() - self.ladders[id].boundingRect().topLeft())
+            for table in (taken, symbols):
+                table.add(box)
+        self.update()  # the lines to the ladders
 
-    def _ladder_spots(self, id: str, core: QRectF) -> list[Spot]:
-        box = self.ladders[id].boundingRect()
-        gaps = (LADDER_GAP, 30.0, 60.0, 100.0, 150.0)
-        return [s for gap in gaps for s in around(core, box.width(), box.height(), "a43rlb12", gap)]
+    def drawBackground(self, painter, rect) -> None:
+        super().drawBackground(painter, rect)
+        painter.setPen(QPen(self.look.palette.good, 1.0))
+        for id, ladder in self.ladders.items():
+            plate, core = ladder.sceneBoundingRect(), self.items_by_id[id].core()
+            if ladder.isVisible() and gap(plate, core) > LED_FROM:
+                painter.drawLine(arrange.nearest_of(plate, core), core.center())
 
-    def _taken_near(self, boxes: Iterable[QRectF]) -> Taken:
-        """What symbols, lines and words cover where any of these boxes, with their clear rim, would be."""
-        taken, mode = Taken(), Qt.ItemSelectionMode.IntersectsItemBoundingRect
+    def _ladder_spots(self, id: str) -> list[Spot]:
+        """Round the symbol with its name, then round the bare symbol, where it hides words at least."""
+        box, symbol = self.ladders[id].boundingRect(), self.items_by_id[id].core()
+        named = symbol.united(self.captions[id].spot.box)
+        tries = (
+            (named, LADDER_GAP),
+            (named, 30.0),
+            (named, 60.0),
+            (symbol, 10.0),
+            (symbol, 40.0),
+            (named, 110.0),
+        )
+        return [s for core, away in tries for s in around(core, box.width(), box.height(), "a43rlb12", away)]
+
+    def _taken_near(self, boxes: Iterable[QRectF]) -> tuple[Taken, Taken]:
+        """What symbols, lines and words cover where any of these boxes, with their clear rim, would be; and
+        what symbols and bars alone do."""
+        taken, symbols, mode = Taken(), Taken(), Qt.ItemSelectionMode.IntersectsItemBoundingRect
         rims = (box.adjusted(-CLEAR, -CLEAR, CLEAR, CLEAR) for box in boxes)
         for item in {item for rim in rims for item in self.items(rim, mode)}:
             if isinstance(item, ElementItem):
                 arrange.take(taken, item)
+                symbols.add(item.core())
             elif isinstance(item, Caption) and item.lines:
                 taken.add(item.spot.box)
-        return taken
+        return taken, symbols
 
 
 def _outlines(item: ElementItem) -> list[Outline]:
