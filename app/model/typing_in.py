@@ -7,8 +7,9 @@ from app.model.changes import change, element
 from app.model.checks import EditRefused, called, quantity, shown
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
-from app.model.figures import stated
+from app.model.figures import stated, typed
 from app.model.kinds import AnyElement, Load, Supply, Transformer
+from app.model.levels import TWO_WIRE, nominal_levels
 from app.model.units import UnitError, parse, parse_ratio
 
 YES = ("yes", "true", "on", "1", "y", "closed", "connected", "leading")
@@ -43,6 +44,21 @@ def value_of(about: Field, text: str) -> Any:
             raise UnitError(f"{quantity(number, about.unit)} is not allowed, allowed is {about.allowed}.")
         return int(number)
     return number
+
+
+def limit_percent(drawing: Drawing, about: Field, text: str) -> float | None:
+    """A voltage limit typed in volts as percent of nominal: of line volts, or of phase volts where those
+    lie nearer. None where no volts were typed; raises UnitError where not one low voltage is nominal."""
+    if about.unit != "% of nominal" or not text.strip().lower().endswith("v"):
+        return None
+    volts = parse(text, "V")
+    levels = {(level.volts, level.wires) for level in nominal_levels(drawing).values() if level.volts < 1000}
+    if len(levels) != 1:
+        known = ", ".join(f"{typed(v)} V" for v, _wires in sorted(levels)) or "none"
+        raise UnitError(f"volts need one nominal voltage below 1 kV in the drawing, known is {known}.")
+    nominal, wires = levels.pop()
+    bases = (nominal,) if wires == TWO_WIRE else (nominal, nominal / math.sqrt(3))
+    return 100 * volts / min(bases, key=lambda base: abs(math.log(max(volts, 1e-9) / base)))
 
 
 def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:

@@ -30,6 +30,7 @@ class Entry(QLineEdit):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._settled = self._before = ""
+        self.brief = ""  # what stands for a long number while nobody edits it
         self.returnPressed.connect(self.commit)
 
     @property
@@ -71,15 +72,21 @@ class Entry(QLineEdit):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Text that is too long for its box is elided while nobody edits it."""
-        wide = self.fontMetrics().horizontalAdvance(self.text())
-        if self.hasFocus() or wide <= self.contentsRect().width() - 4:
+        text = self.at_rest
+        wide = self.fontMetrics().horizontalAdvance(text)
+        if self.hasFocus() or (text == self.text() and wide <= self.contentsRect().width() - 4):
             super().paintEvent(event)
             return
         painter = QPainter(self)
         painter.setPen(self.palette().color(self.foregroundRole()))
         room = self.contentsRect().adjusted(2, 0, -2, 0)
-        shown = self.fontMetrics().elidedText(self.text(), Qt.TextElideMode.ElideRight, room.width())
-        painter.drawText(room, int(LEFT), shown)
+        shown = self.fontMetrics().elidedText(text, Qt.TextElideMode.ElideRight, room.width())
+        painter.drawText(room, int(RIGHT if text == self.brief else LEFT), shown)
+
+    @property
+    def at_rest(self) -> str:
+        """What is painted while nobody edits it: the value, rounded where it is long."""
+        return self.text() if self.busy or not self.brief else self.brief
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         if event.key() == Qt.Key.Key_Escape and self.isModified():

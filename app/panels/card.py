@@ -27,6 +27,7 @@ from app.panels.verdict_lines import VerdictLines
 from app.panels.words import Rule
 
 WIDTH = 320
+LOADING_TIP = "Loading is by current against rated current, of the winding nearer to it."
 
 
 class Card(QScrollArea):
@@ -209,6 +210,8 @@ class Card(QScrollArea):
             asked = Asked(drawing, outcome, self._solving.reference, case)
             made = rows(asked, self._ids[0]) if len(self._ids) == 1 else summary_rows(asked, self._ids)
             self.now.show_rows(made, outcome.cases, case, self._solving.stale)
+            one = drawing.elements.get(self._ids[0]) if len(self._ids) == 1 else None
+            self.now.setToolTip(LOADING_TIP if isinstance(one, Transformer) else "")
             told = self._solving.problem or outcome
             self.lines.show_findings(findings_about(told, self._ids) if self._ids else [])
         self.now.setVisible(bool(self.now.rows))

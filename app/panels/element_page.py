@@ -101,7 +101,7 @@ class ElementPage(Page):
         here = {levels.get(i) for i in self.ids}
         level = here.pop() if len(here) == 1 else None
         if level is None:
-            return "follows the feed", ""
+            return "as fed", ""
         return written(level.volts), level.how if level.assumed else ""
 
     def _take(self, field: Field, text: str) -> str:

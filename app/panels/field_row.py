@@ -1,5 +1,6 @@
 """One field of a card: label, amber dot where a value is assumed, box with its unit, refusal in place."""
 
+import math
 from collections.abc import Callable
 from typing import Any
 
@@ -121,6 +122,8 @@ class FieldRow(QWidget):
         various = quiet == VARIOUS
         self._value, self._text = value, "" if various else written(value)
         editor = self.editor
+        if isinstance(editor, Entry):
+            editor.brief = "" if various else brief(value)
         if isinstance(editor, Tick):
             editor.setTristate(various)
             partly = Qt.CheckState.PartiallyChecked
@@ -192,6 +195,13 @@ class FieldRow(QWidget):
         else:
             self.show_value(self._value)
         self.refuse(refusal)
+
+
+def brief(value: Any) -> str:
+    """A long number to four figures or a tenth, as it stands while nobody edits it; else nothing."""
+    if not isinstance(value, float) or len(typed(value)) <= LONG or not math.isfinite(value) or not value:
+        return ""
+    return written(round(value, max(1, 3 - math.floor(math.log10(abs(value))))))
 
 
 def written(value: Any) -> str:

@@ -11,7 +11,7 @@ from app.model import edits
 from app.model.drawing import Case, Drawing, Limits, Project
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, kind_of
-from app.model.typing_in import value_of
+from app.model.typing_in import limit_percent, value_of
 from app.model.units import UnitError
 from app.panels.element_words import many, step_text
 from app.panels.field_row import FieldRow
@@ -60,7 +60,8 @@ class ProjectPage(Page):
     def _taker(self, setter: Callable[..., Drawing]) -> Callable[[Field, str], str]:
         def take(field: Field, text: str) -> str:
             try:
-                value = value_of(field, text.strip())
+                value = limit_percent(self._session.drawing, field, text)
+                value = value_of(field, text.strip()) if value is None else value
             except UnitError as error:
                 return f"{field.label}: {error}"
             return self._session.edit(

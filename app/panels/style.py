@@ -130,6 +130,7 @@ QFrame[role="box"] QComboBox {
     background: transparent; border: none; padding: 0 2px 0 0; font-weight: bold; min-height: 18px;
 }
 QFrame[role="box"] QToolButton { border: none; background: transparent; color: @SOFT; padding: 0; }
+QFrame[role="box"] QToolButton::menu-indicator { image: none; }
 QFrame[role="box"] QToolButton:hover { color: @INK; background: @HOVER; border-radius: 4px; }
 QFrame[role="box"] QToolButton:focus { color: @FLOW; }
 

@@ -10,7 +10,7 @@ from app.model.drawing import Drawing
 from app.model.figures import percent as percent_text
 from app.model.figures import volts
 from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict
-from app.study.words import tell
+from app.study.words import list_of, tell
 
 NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
@@ -70,7 +70,21 @@ def judge(
     if limits.drop_percent is not None:
         checks.append((_drop(drawing, nodes, limits.drop_percent), limits.drop_name or SET_HERE))
     checks.append((_loading(drawing, branches, limits.most_loaded_percent), LOADING))
-    return [found for check, whose in checks for found in findings_of(check, whose, cases)]
+    found = [one for check, whose in checks for one in findings_of(check, whose, cases)]
+    return found + _unrated(drawing, branches)
+
+
+def _unrated(drawing: Drawing, branches: Table[BranchState]) -> list[Finding]:
+    """One note on all live branches whose loading nobody can judge."""
+    if not branches.ids:
+        return []
+    live = branches.column("live").reshape(len(branches.ids), -1).any(axis=1)
+    unknown = live & np.isnan(branches.column("loaded_percent")).all(axis=1)
+    ids = tuple(branches.ids[row] for row in np.flatnonzero(unknown))
+    if not ids:
+        return []
+    words = f"The loading of {list_of(drawing, ids)} is not judged: no rating is given."
+    return [Finding("not judged", Verdict.NOTE, ids, words)]
 
 
 def _voltage(drawing: Drawing, nodes: Table[NodeState], limit: float, low: bool) -> Check:

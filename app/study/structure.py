@@ -124,9 +124,7 @@ def _dead_finding(drawing: Drawing, ids: tuple[str, ...], needy: list[str]) -> F
     if needy:
         words = f"No supply reaches {list_of(drawing, needy)}: {named} {verb} dead."
         return Finding(DEAD, Verdict.FAILS, ids, words)
-    return Finding(
-        DEAD, Verdict.NOTE, ids, f"No supply reaches {named}: dead, and nothing draws there."
-    )
+    return Finding(DEAD, Verdict.NOTE, ids, f"No supply reaches {named}: dead, and nothing draws there.")
 
 
 def _loose_ends(drawing: Drawing, layout: Layout) -> list[Finding]:

@@ -308,3 +308,41 @@ def test_a_refused_tap_quotes_the_ladder(set_up, typed):
     row = page(set_up, "T2").rows["tap"]
     type_into(row, typed)
     assert row.refusal.text().endswith("at least -2 and at most 2 notches.")
+
+
+@pytest.mark.parametrize(
+    ("typed", "percent"), [("216.2 V", 216.2 / (400 / 3**0.5) * 100), ("376 V", 94.0), ("93.5", 93.5)]
+)
+def test_a_voltage_limit_may_be_typed_in_volts(set_up, typed, percent):
+    set_up.attention.select(())
+    row = set_up.card._page.rows["limits.low_percent"]
+    type_into(row, typed)
+    assert set_up.drawing.limits.low_percent == pytest.approx(percent, rel=1e-14)
+    assert row.refusal.isHidden()
+
+
+def test_volts_of_a_limit_need_one_low_voltage(qtbot):
+    set_up = stage(qtbot, fernhollow(ONE, T2=Transformer(start="J2", end="B2", v2_v=433.0)))
+    row = set_up.card._page.rows["limits.low_percent"]
+    type_into(row, "216.2 V")
+    assert "known is 400 V, 433 V" in row.refusal.text()
+    assert set_up.drawing.limits.low_percent == 94.0
+    set_up.solving.stop()
+
+
+def test_a_long_number_is_rounded_until_it_is_edited(set_up):
+    set_up.session.edit("Limits", lambda d: edits.set_limits(d, low_percent=216.2 / (400 / 3**0.5) * 100))
+    set_up.attention.select(())
+    row = set_up.card._page.rows["limits.low_percent"]
+    assert row.editor.at_rest == "93.62"
+    assert row.editor.text().startswith("93.617")
+    QTest.mouseClick(row.editor, Qt.MouseButton.LeftButton)
+    QTest.keyClick(row.editor, Qt.Key.Key_Return)
+    assert set_up.session.history.count() == 1
+
+
+def test_the_card_says_how_a_transformer_is_loaded(set_up):
+    page(set_up, "T2")
+    assert "rated current" in set_up.card.now.toolTip()
+    page(set_up, "L2")
+    assert set_up.card.now.toolTip() == ""

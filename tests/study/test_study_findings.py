@@ -243,3 +243,12 @@ def test_each_limit_names_whose_it_is():
     (drop,) = of(run(named), "voltage drop")
     assert drop.whose == "Drop of the code"
     assert drop.sentence.endswith("(Drop of the code).")
+
+
+def test_branches_without_a_rating_are_noted_in_one_line():
+    rated = line("B3", "B4", rating_a=90.0)
+    base = changed(two_nodes(), B3=Busbar(), B4=Busbar(), C2=line("B2", "B3"), C3=rated)
+    (note,) = of(run(base), "not judged")
+    assert (note.verdict, note.ids) == (Verdict.NOTE, ("C1", "C2"))
+    assert note.sentence == "The loading of C1 and C2 is not judged: no rating is given."
+    assert tally_words([note]) == "Nothing is judged"
