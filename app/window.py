@@ -97,6 +97,7 @@ class Window(QMainWindow):
         self.shelf.put_back.connect(self.view.rest)
         self.shelf.refused.connect(self.findings.tell)
         self.view.card_wanted.connect(self.card.take_focus)
+        self.card.left.connect(self.view.take_focus)
         self.view.placing_ended.connect(self.shelf.rest)
         self.findings.sought.connect(self.view.show_selection)
         self.findings.field_sought.connect(self.card.focus_field)

@@ -1,7 +1,7 @@
 """The card at the right: one element's data and results, several at once, or the drawing as a whole."""
 
-from PySide6.QtCore import QSize, Qt
-from PySide6.QtGui import QPixmap
+from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtGui import QKeyEvent, QPixmap
 from PySide6.QtWidgets import QFrame, QScrollArea, QVBoxLayout, QWidget
 
 from app.canvas.symbols import symbol_pixmap
@@ -32,6 +32,8 @@ LOADING_TIP = "Loading is by current against rated current, of the winding neare
 
 class Card(QScrollArea):
     """Follows selection, drawing and outcome; pages are made once a kind and refreshed in place."""
+
+    left = Signal()  # Esc in a field that has nothing to give up: the board takes the keyboard back
 
     def __init__(
         self,
@@ -246,6 +248,12 @@ class Card(QScrollArea):
         self.head.refuse(refusal)
         if not refusal:
             self._show_head()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        if event.key() == Qt.Key.Key_Escape:
+            self.left.emit()
+        else:
+            super().keyPressEvent(event)
 
     def take_focus(self) -> None:
         """Put the focus into the first field, and the card into sight."""

@@ -3,6 +3,8 @@
 from pathlib import Path
 
 import pytest
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication
 
 from app.live.preferences import Preferences
@@ -40,3 +42,24 @@ def test_the_drawing_fits_whatever_size_the_board_comes_to(window, qtbot):
     QApplication.processEvents()
     box = window.view.mapFromScene(window.board.content()).boundingRect()
     assert window.view.viewport().rect().contains(box)
+
+
+def test_escape_in_a_field_of_the_card_gives_the_keyboard_back_to_the_board(window, qtbot):
+    window.show()
+    window.activateWindow()
+    qtbot.waitUntil(window.isActiveWindow)
+    window.menus.open_path(SAMPLE)
+    window.attention.select(["T2"])
+    for typed in ("", "12"):
+        window.view.setFocus()
+        QTest.keyClick(window.view, Qt.Key.Key_Return)
+        field = QApplication.focusWidget()
+        assert window.card.isAncestorOf(field)
+        QTest.keyClicks(field, typed)
+        if typed:
+            QTest.keyClick(field, Qt.Key.Key_Escape)  # the first puts the value back
+            assert QApplication.focusWidget() is field
+        QTest.keyClick(field, Qt.Key.Key_Escape)
+        assert window.view.hasFocus()
+        assert window.attention.selection == {"T2"}
+    assert not window.session.history.canUndo()
