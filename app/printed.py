@@ -70,6 +70,7 @@ def printed(drawing: Drawing, outcome: Outcome) -> str:
     if outcome.status is Status.SOLVED:
         for case, name in enumerate(outcome.cases):
             parts += _case(drawing, outcome, case, name)
+        parts.append(_faults(drawing, outcome))
     parts += [_findings(outcome), _assumptions(drawing, outcome)]
     parts.append("Cautions\n" + "\n".join(f"  {c}" for c in CAUTIONS))
     return "\n\n".join(part for part in parts if part) + "\n"
@@ -131,6 +132,24 @@ def aligned(lines: Sequence[Sequence[str]], figures: int) -> str:
         for line in lines
     )
     return "\n".join(f"  {row}".rstrip() for row in rows)
+
+
+FAULT_COLUMNS: tuple[Column, ...] = (
+    ("Ik3 max kA", figure("ik3_max_ka", 2)),
+    ("peak kA", figure("ip_ka", 2)),
+    ("X/R", figure("xr", 2)),
+    ("Ik2 max kA", figure("ik2_max_ka", 2)),
+    ("Ik1 max kA", figure("ik1_max_ka", 2)),
+    ("Ik1 min kA", figure("ik1_min_ka", 2)),
+    ("Zs ohm", figure("zs_ohm", 3)),
+)
+
+
+def _faults(drawing: Drawing, outcome: Outcome) -> str:
+    """Prospective fault currents, which know no case."""
+    if outcome.faults is None:
+        return ""
+    return _table(drawing, "Fault currents", outcome.faults, FAULT_COLUMNS, 0)
 
 
 def _starts(drawing: Drawing, outcome: Outcome, case: int) -> str:

@@ -99,7 +99,30 @@ def _node(asked: Asked, id: str) -> list[Row]:
         row("Total drop", "drop_percent", partial(percent, digits=2), DROP),
         row("Angle", "angle_deg", partial(plain, digits=1, unit="°")),
         _once(row("Route", "route_m", length)),
+        *_faults(asked, id),
     ]
+
+
+def _faults(asked: Asked, id: str) -> list[Row]:
+    """Fault currents at a node, which know no case; none where no supply states a fault level."""
+    table = asked.outcome.faults
+    if table is None or not table.at(id).live:
+        return []
+    state, kiloamps, ohms = (
+        table.at(id),
+        partial(plain, digits=2, unit="kA"),
+        partial(plain, digits=3, unit="Ω"),
+    )
+    rows = (
+        (
+            "Fault, most",
+            kiloamps(state.ik3_max_ka if state.ik3_max_ka == state.ik3_max_ka else state.ik2_max_ka),
+        ),
+        ("Its peak", kiloamps(state.ip_ka)),
+        ("Earth fault, least", kiloamps(state.ik1_min_ka)),
+        ("Earth loop", ohms(state.zs_ohm)),
+    )
+    return [Row(label, (text,), "", None) for label, text in rows]
 
 
 def _margin(asked: Asked, state: NodeState) -> float:

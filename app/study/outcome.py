@@ -203,6 +203,7 @@ class Outcome:
         default_factory=dict
     )  # node id -> the node before it, seen from the supply
     starts: "StartTable | None" = None  # motor starts, where there are motors and figures
+    faults: "Table[FaultState] | None" = None  # by node id; None where no supply states a fault level
 
     def fed_winding(self, id: str, case: int) -> int:
         """The winding of a transformer that power enters, 1 or 2; 1 where nothing feeds it."""

@@ -38,6 +38,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "branches": _rows(drawing, outcome.branches),
         "attachments": _rows(drawing, outcome.attachments),
         **({} if outcome.starts is None else {"starts": _starts(drawing, outcome.starts)}),
+        **({} if outcome.faults is None else {"faults": _rows(drawing, outcome.faults)}),
         "findings": [{k: _plain(v) for k, v in _finding(f).items()} for f in outcome.findings],
         "assumptions": [{k: _plain(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
         "fed_by": dict(outcome.upstream),

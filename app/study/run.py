@@ -8,6 +8,7 @@ from app.study.changer_findings import barred_findings, hunting_findings, stop_f
 from app.study.changers import Moved, settled
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
+from app.study.faults import Faults, asked_for, faults_of
 from app.study.findings import judge
 from app.study.idle import idle_findings
 from app.study.layout import Layout, lay_out
@@ -72,6 +73,7 @@ def _outcome(
     collapse: Collapse | None = None
     tables = tables_of(layout, zones, rows, solution if status is Status.SOLVED else None, len(cases))
     starts: StartTable | None = None
+    faulted: Faults | None = None
     if status is Status.SOLVED and rows is not None and starters(layout):
         starts = start_table(drawing, layout, zones, rows)
         found = found + start_findings(drawing, starts, cases)
@@ -81,6 +83,9 @@ def _outcome(
         found += barred_findings(drawing, layout)
         if moved is not None and rows is not None:
             found += stop_findings(drawing, layout, rows, tables, moved)
+        faulted = faults_of(drawing, layout, zones, False)
+        if faulted.worked_out or asked_for(drawing):
+            found += faulted.findings
         if layout.rings and rows is not None:
             found += idle_findings(drawing, layout, zones, rows, tables.attachments)
     elif rows is not None and solution is not None and isinstance(solution.forest, Trouble):
@@ -100,7 +105,7 @@ def _outcome(
         attachments=tables.attachments,
         balance=tables.balance,
         findings=tuple(found),
-        assumptions=assumptions_of(layout, zones),
+        assumptions=assumptions_of(layout, zones) + (faulted.assumptions if faulted is not None else ()),
         upstream=layout.upstream,
         zones=layout.zone_of,
         largest_share=collapse.share if collapse else None,
@@ -108,6 +113,7 @@ def _outcome(
         seconds=seconds,
         fed_from=layout.before,
         starts=starts,
+        faults=faulted.nodes if faulted is not None and faulted.worked_out else None,
     )
 
 
