@@ -214,7 +214,7 @@ class _Made:
         z = complex(transformer.short_circuit(t.uk_percent, pk, rating, t.v2_v))
         c = self._c_max[min(ends, key=lambda n: self._nominal[n])]
         kt = float(fault.correction(rating, t.v2_v, z, c))
-        both: Complex = np.array([z * kt, z, z * kt], dtype=complex) / t.side_by_side
+        both = np.array([z * kt, z, z * kt]).astype(np.complex128) / float(t.side_by_side)
         group = taps.group(t.vector_group)
         assert group is not None  # barred before
         ratio = t.v1_v / t.v2_v
