@@ -33,6 +33,7 @@ from app.panels.style import qt_palette, sheet
 from app.panels.tape import LossTape
 
 REFUSAL_SHOWN_MS = 6000
+TITLE_BAR = 40  # the desktop's own, which a size without it forgets
 
 
 class Window(QMainWindow):
@@ -88,7 +89,8 @@ class Window(QMainWindow):
         whole.setLayout(down)
         self.setCentralWidget(whole)
         self.setMinimumSize(QSize(760, 520))
-        self.resize(QSize(1440, 900).boundedTo(self.screen().availableSize()))
+        room = self.screen().availableSize() - QSize(0, TITLE_BAR)
+        self.resize(QSize(1440, 900).boundedTo(room))
         if self.preferences.geometry:
             self.restoreGeometry(QByteArray(self.preferences.geometry))
 
