@@ -30,7 +30,11 @@ def tally_words(findings: Iterable[Finding], made: int = 0) -> str:
     held = f"{made} checks hold" if made > 1 else "1 check holds" if made else "Every check holds"
     dead = sum(finding.check == DEAD for finding in found)
     unfed = [f"{dead} {'part is' if dead == 1 else 'parts are'} dead"] if dead else []
-    return ", ".join([held, *(f"{many} {words}" for words, many in soft.items()), *unfed])
+    told = [
+        f"{many} {words.replace('advice', 'pieces of advice') if many > 1 else words}"
+        for words, many in soft.items()
+    ]
+    return ", ".join([held, *told, *unfed])
 
 
 def tell(drawing: Drawing, id: str) -> str:

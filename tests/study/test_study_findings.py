@@ -176,6 +176,7 @@ def test_over_excitation_counts_from_the_tap_of_the_fed_winding():
         ("HOLDS NOTE", 1, "1 check holds"),
         ("HOLDS", 11, "11 checks hold"),
         ("ADVICE", 15, "15 checks hold, 1 advice exceeded"),
+        ("ADVICE ADVICE", 15, "15 checks hold, 2 pieces of advice exceeded"),
         ("ADVICE NEAR HOLDS", 0, "Every check holds, 1 advice exceeded, 1 near the limit"),
         ("NEAR", 1, "1 check holds, 1 near the limit"),
         ("NEAR NEAR HOLDS", 0, "Every check holds, 2 near the limit"),
