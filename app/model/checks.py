@@ -245,6 +245,19 @@ def _fault_of_load(load: Load) -> str | None:
     total = (load.constant_current_percent or 0) + (load.constant_impedance_percent or 0)
     if total > 100:
         return f"Constant current and impedance are {typed(total)} % together, allowed is at most 100 %."
+    return _fault_of_shares(load)
+
+
+def _fault_of_shares(load: Load) -> str | None:
+    a, b = load.share_a_percent, load.share_b_percent
+    if a is None and b is None:
+        return None
+    if a is None or b is None:
+        return "Of the shares on A and B one is given and one blank, allowed is both or neither."
+    if load.phases != "all":
+        return f"Shares on A and B stand beside Phases {load.phases}, allowed is Phases all."
+    if a + b > 100:
+        return f"On A and On B are {typed(a + b)} % together, allowed is at most 100 %."
     return None
 
 

@@ -36,6 +36,22 @@ class Limits(Struct, frozen=True, kw_only=True):
     ) = None
     drop_name: Annotated[str, text("Drop limit", help="Whose limit of the drop it is.")] = ""
     most_loaded_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
+    unbalance_percent: (
+        Annotated[
+            float,
+            field("Unbalance", "%", gt=0, le=100, help="Negative over positive sequence. Blank: not judged."),
+        ]
+        | None
+    ) = None
+    unbalance_name: Annotated[str, text("Unbalance limit", help="Whose limit of unbalance it is.")] = ""
+    neutral_v: (
+        Annotated[
+            float,
+            field("Neutral to earth", "V", gt=0, le=1000, help="At every node. Blank: not judged."),
+        ]
+        | None
+    ) = None
+    neutral_name: Annotated[str, text("Neutral limit", help="Whose limit of the neutral it is.")] = ""
     start_name: Annotated[str, text("Start limits", help="Whose limits of motor starts these are.")] = ""
     start_supply_percent: (
         Annotated[

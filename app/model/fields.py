@@ -31,9 +31,9 @@ def text(label: str, *, longest: int = 120, help: str = "") -> msgspec.Meta:
     return msgspec.Meta(max_length=longest, extra={"label": label, "unit": "", "help": help})
 
 
-def plain(label: str, unit: str = "", *, help: str = "") -> msgspec.Meta:
-    """Metadata of a choice or a yes/no field."""
-    return msgspec.Meta(extra={"label": label, "unit": unit, "help": help})
+def plain(label: str, unit: str = "", *, help: str = "", spare: bool = False) -> msgspec.Meta:
+    """Metadata of a choice or a yes/no field; a `spare` one is left out of the file at its usual value."""
+    return msgspec.Meta(extra={"label": label, "unit": unit, "help": help, "spare": spare})
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,6 +52,7 @@ class Field:
     le: float | None
     lt: float | None
     help: str
+    spare: bool = False
     longest: int = 120
 
     @property

@@ -6,6 +6,19 @@ from msgspec import Struct
 from msgspec import field as held
 
 from app.model.fields import field, plain, text
+from app.model.phasing import (
+    Build,
+    Connection,
+    Electrode,
+    LinePhases,
+    Neutral,
+    NeutralR,
+    NeutralX,
+    Phases,
+    ShareA,
+    ShareB,
+    UnitPhases,
+)
 from app.model.stepping import Band, DropR, DropX, Hold
 
 Point = tuple[float, float]
@@ -43,6 +56,7 @@ class Node(Element, frozen=True, kw_only=True):
         ]
         | None
     ) = None
+    earth_ohm: Electrode = None
 
 
 class Joint(Node, frozen=True, kw_only=True, tag="joint"):
@@ -69,6 +83,8 @@ class Line(Branch, frozen=True, kw_only=True):
 
     type: Annotated[str, text("Type", help="Such as 4×240 Al; a label for the schedule.")] = ""
     length_m: Annotated[float, field("Length", "m", ge=0, le=1e6)] = 100.0
+    phases: LinePhases = "all"
+    neutral: Neutral = "usual"
     side_by_side: Annotated[int, field("In parallel", "runs", ge=1, le=50)] = 1
     conductor: Annotated[
         Literal["Al", "Cu"], plain("Conductor", help="Sets how resistance grows when hot.")
@@ -101,6 +117,8 @@ class Line(Branch, frozen=True, kw_only=True):
         ]
         | None
     ) = None
+    neutral_resistance_ohm_per_km: NeutralR = None
+    neutral_reactance_ohm_per_km: NeutralX = None
     return_resistance_ohm_per_km: (
         Annotated[
             float,
@@ -139,6 +157,8 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     vector_group: Annotated[
         str, text("Vector group", longest=8, help="Such as Dyn11; Ii0 for single-phase.")
     ] = "Dyn11"
+    build: Build = "as its group"
+    phases: UnitPhases = "all"
     uk_percent: Annotated[
         float, field("Impedance uk", "%", ge=0, le=40, help="Short-circuit voltage at rated current.")
     ] = 4.0
@@ -228,8 +248,12 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
     ] = 100.0
     angle_deg: Annotated[float, field("Angle", "°", ge=-360, le=360)] = 0.0
     wires: Annotated[
-        Literal["three-phase", "two-wire"],
-        plain("System", help="Two-wire: one circuit out and back, single-phase or two phases."),
+        Literal["three-phase", "two-wire", "split-phase"],
+        plain(
+            "System",
+            help="Two-wire: one circuit out and back, single-phase or two phases. Split-phase: two hot "
+            "wires, the nominal voltage between them, and the neutral midway.",
+        ),
     ] = "three-phase"
     fault_level_max_mva: (
         Annotated[
@@ -275,6 +299,10 @@ class Load(Attachment, frozen=True, kw_only=True, tag="load"):
         Annotated[float, field("Stated at", "V", gt=0, le=500e3, help="Voltage the demand is stated at.")]
         | None
     ) = None
+    phases: Phases = "all"
+    connection: Connection = "star"
+    share_a_percent: ShareA = None
+    share_b_percent: ShareB = None
 
 
 class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
@@ -303,6 +331,7 @@ class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
         Annotated[float, field("Power factor so", "", gt=0, le=1, help="While the starter limits.")] | None
     ) = None
     state: Annotated[Literal["running", "starting", "off"], plain("State")] = "running"
+    phases: Phases = "all"
 
 
 class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
@@ -320,6 +349,7 @@ class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     ) = None
     q_min_kvar: Annotated[float, field("Least reactive", "kvar", ge=-1e6, le=1e6)] | None = None
     q_max_kvar: Annotated[float, field("Most reactive", "kvar", ge=-1e6, le=1e6)] | None = None
+    phases: Phases = "all"
 
 
 class Capacitor(Attachment, frozen=True, kw_only=True, tag="capacitor"):
@@ -328,6 +358,8 @@ class Capacitor(Attachment, frozen=True, kw_only=True, tag="capacitor"):
     rating_kvar: Annotated[float, field("Rating", "kvar", ge=0, le=1e6)] = 10.0
     rated_v: Annotated[float, field("Rated voltage", "V", gt=0, le=500e3)] | None = None
     connected: Annotated[bool, plain("Connected")] = True
+    phases: Phases = "all"
+    connection: Connection = "star"
 
 
 AnyElement = (

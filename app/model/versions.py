@@ -5,9 +5,10 @@ from typing import Any
 
 from app.model.errors import FileError
 
-CURRENT = 1
+CURRENT = 2
 Step = Callable[[dict[str, Any]], dict[str, Any]]
-STEPS: Mapping[int, Step] = {}  # from version n to n + 1
+# from version n to n + 1. Version 2 says which phases an element has; a file without is all of them.
+STEPS: Mapping[int, Step] = {1: lambda raw: raw}
 
 
 def migrate(

@@ -9,6 +9,7 @@ from typing import Any
 from msgspec import NODEFAULT, UNSET, Struct, structs
 
 from app.model.drawing import Drawing, Part
+from app.model.fields import fields_of
 from app.model.kinds import AnyElement, kind_of
 from app.model.versions import CURRENT
 
@@ -54,20 +55,28 @@ def part_body(id: str, part: Part) -> dict[str, Any]:
 def body(struct: Struct, reserved: tuple[str, ...] = ()) -> dict[str, Any]:
     """The fields of a struct and the foreign keys it keeps."""
     made = {}
-    for name, may_be_left_out in _fields(type(struct)):
+    for name, left_out in _fields(type(struct)):
         value = getattr(struct, name)
-        if not (may_be_left_out and value in _BLANK):
+        if value not in left_out:
             made[name] = _plain(value)
     kept = struct.kept  # type: ignore[attr-defined]
     return made | _unless_known(kept, type(struct), *reserved) if kept else made
 
 
 @cache
-def _fields(kind: type[Struct]) -> tuple[tuple[str, bool], ...]:
-    """Fields in their order, and whether blank is what they are where the file says nothing."""
+def _fields(kind: type[Struct]) -> tuple[tuple[str, tuple[Any, ...]], ...]:
+    """Fields in their order, and the values that they have where the file says nothing."""
     blank = {"start", "end", "node"}
+    spare = {name: about.default for name, about in fields_of(kind).items() if about.spare}
     return tuple(
-        (f.name, f.default in _BLANK or (f.default in (NODEFAULT, UNSET) and f.name in blank))
+        (
+            f.name,
+            (spare[f.name],)
+            if f.name in spare
+            else _BLANK
+            if f.default in _BLANK or (f.default in (NODEFAULT, UNSET) and f.name in blank)
+            else (),
+        )
         for f in structs.fields(kind)
         if f.name != "kept"
     )

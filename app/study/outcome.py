@@ -18,12 +18,14 @@ State = TypeVar("State")
 
 @dataclass(frozen=True, slots=True)
 class NodeState:
-    """One node in one case. Volts are between lines (three-phase) or between the two wires."""
+    """One node in one case. Volts are between lines (three-phase) or between the two wires; where phases
+    are solved one by one, those of the lowest phase as if the others were like it."""
 
     live: bool
     nominal_v: float
     voltage_v: float
-    percent: float
+    percent: float  # of nominal, of the lowest phase
+    high_percent: float  # of the highest phase; the same where phases are alike
     angle_deg: float
     drop_percent: float  # of nominal, below the supply of its tree (percent of supply minus percent here)
     route_m: float  # route length from the supply
@@ -84,6 +86,45 @@ class FaultState:
     ik2_min_ka: float
     ik1_min_ka: float
     zs_ohm: float  # earth-fault loop, hot, the supply included; nan where there is none
+
+
+@dataclass(frozen=True, slots=True)
+class NodeWires:
+    """One node in one case, conductor by conductor: nan where there is no such conductor."""
+
+    system: str  # three-phase, two-wire or split-phase
+    phases: str  # that reach it, such as ABC or B; of a split-phase system A and B are the hot wires
+    against: str  # what its phase volts are taken against: neutral, earth or next phase
+    base_v: float  # nominal volts between these
+    a_v: float
+    b_v: float
+    c_v: float
+    neutral_v: float  # neutral to earth; nan where none is carried
+    unbalance_percent: float  # negative over positive sequence of the volts; nan unless three phases
+    spread_percent: float  # largest deviation of a line voltage from the mean of the three, over the mean
+
+
+@dataclass(frozen=True, slots=True)
+class BranchWires:
+    """One branch in one case, conductor by conductor: amperes at the worst of both ends, of all parallel runs
+    together; of a transformer those of the winding that is fed."""
+
+    phases: str  # conductors it has, such as ABCN or BN
+    a_a: float
+    b_a: float
+    c_a: float
+    n_a: float
+
+
+@dataclass(frozen=True, slots=True)
+class AttachmentWires:
+    """One attachment in one case, conductor by conductor: amperes in its leads."""
+
+    phases: str  # conductors it hangs on, such as ABCN, BN or CA
+    a_a: float
+    b_a: float
+    c_a: float
+    n_a: float
 
 
 @dataclass(frozen=True)
@@ -181,6 +222,15 @@ class Assumption:
 
 
 @dataclass(frozen=True)
+class Wired:
+    """What phases and neutral do each for themselves, where a layout is solved so."""
+
+    nodes: Table[NodeWires]
+    branches: Table[BranchWires]
+    attachments: Table[AttachmentWires]
+
+
+@dataclass(frozen=True)
 class Outcome:
     """Everything one solve of a drawing yields. Where status is not SOLVED the tables still list every
     element, but no figures: dead rows, with nan."""
@@ -204,6 +254,7 @@ class Outcome:
     )  # node id -> the node before it, seen from the supply
     starts: "StartTable | None" = None  # motor starts, where there are motors and figures
     faults: "Table[FaultState] | None" = None  # by node id; None where no supply states a fault level
+    wires: Wired | None = None  # phases and neutral; None where all phases are alike
 
     def fed_winding(self, id: str, case: int) -> int:
         """The winding of a transformer that power enters, 1 or 2; 1 where nothing feeds it."""

@@ -108,6 +108,7 @@ def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tabl
         "nominal_v": nominal,
         "voltage_v": level,
         "percent": percent,
+        "high_percent": percent,
         "angle_deg": np.degrees(np.angle(voltage)),
         "drop_percent": percent[arrays_of(layout).root] - percent,
         "route_m": _routes(layout),

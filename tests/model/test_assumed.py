@@ -145,6 +145,8 @@ def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
         "zero_resistance_ohm_per_km",
         "zero_reactance_ohm_per_km",
     }
+    only_for_wires = {"neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km"}  # see wire_data
+    no_stand_in |= only_for_wires | {"share_a_percent", "share_b_percent"}
     no_stand_in |= only_for_faults | {"fault_degc", "z0_ratio"}  # see fault_data
     for kind in KINDS.values():
         for field in fields_of(kind).values():

@@ -23,6 +23,7 @@ from app.model.parts import (
     made_from,
     save_shelf,
 )
+from app.model.versions import CURRENT
 
 SYMBOL = Symbol(svg="<svg/>", width=40.0, height=20.0, terminals=((0.0, 10.0), (40.0, 10.0)))
 
@@ -205,14 +206,14 @@ def test_the_users_shelf_is_kept_in_a_file(tmp_path):
     )
     save_shelf(path, mine)
     assert load_shelf(path) == mine
-    assert json.loads(path.read_text())["farend_shelf"] == 1
+    assert json.loads(path.read_text())["farend_shelf"] == CURRENT
     save_shelf(path, ())
     assert load_shelf(path) == ()
 
 
 def test_a_damaged_shelf_is_told_and_not_written_over(tmp_path):
     path = tmp_path / "shelf.json"
-    for data in (b'{"farend_shelf": 1, "parts": [', b"hello", b'{"farend": 1}', b'{"farend_shelf": 2}'):
+    for data in (b'{"farend_shelf": 1, "parts": [', b"hello", b'{"farend": 1}', b'{"farend_shelf": 9}'):
         path.write_bytes(data)
         with pytest.raises(FileError, match=r"shelf\.json"):
             load_shelf(path)

@@ -53,7 +53,7 @@ def test_numbers_survive_to_the_last_bit(x, y, length, r, via):
 
 def test_the_text_reads_well_one_element_a_line(yard):
     lines = encode(yard).decode().splitlines()
-    assert lines[1] == '"farend": 1,'
+    assert lines[1] == f'"farend": {CURRENT},'
     assert sum(line.startswith('{"id": ') for line in lines) == len(yard.elements)
     assert (
         '{"id": "S1", "kind": "supply", "node": "B1", "dx": 0, "dy": 3, "nominal_v": 11000,'
@@ -216,17 +216,17 @@ def test_places_that_cannot_be_read_or_written_are_named(tmp_path, yard):
 
 def test_a_newer_file_is_not_opened_and_both_versions_are_named(tmp_path, yard):
     path = tmp_path / "new.farend"
-    path.write_bytes(encode(yard).replace(b'"farend": 1', b'"farend": 7'))
+    path.write_bytes(encode(yard).replace(b'"farend": %d' % CURRENT, b'"farend": 7'))
     with pytest.raises(FileError) as caught:
         load(path)
     assert str(caught.value) == (
-        "new.farend was written by a newer Farend: its version is 7, this Farend reads up to 1."
+        "new.farend was written by a newer Farend: its version is 7, this Farend reads up to 2."
     )
 
 
 @pytest.mark.parametrize("version", [0, -1, "1", 1.0, True, None, [1]])
 def test_odd_versions_are_refused(version):
-    with pytest.raises(FileError, match='the key "farend" is .*, allowed is a version from 1 to 1'):
+    with pytest.raises(FileError, match='the key "farend" is .*, allowed is a version from 1 to 2'):
         decode(json.dumps({"farend": version}).encode())
 
 

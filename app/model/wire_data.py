@@ -1,0 +1,23 @@
+"""What stands in for data that only phases and neutral need, and on what basis; listed only with these."""
+
+from app.model.fault_data import LOW_V, Put
+from app.model.kinds import Line
+
+
+def neutral_of(line: Line, nominal_v: float, single_phase: bool) -> str:
+    """Its neutral: `carried`, `earthed along` or `none`, where the drawing says `usual` by its level."""
+    if line.neutral != "usual":
+        return line.neutral
+    return "carried" if single_phase or nominal_v <= LOW_V else "none"
+
+
+def neutral_value(line: Line, field: str) -> float | Put:
+    """The given resistance or reactance of the neutral, or what is put in its place."""
+    given = getattr(line, field)
+    if given is not None:
+        return float(given)
+    if field == "neutral_reactance_ohm_per_km":
+        return Put(line.reactance_ohm_per_km, "as a phase conductor")
+    if line.return_resistance_ohm_per_km is not None:
+        return Put(line.return_resistance_ohm_per_km, "as its return conductor")
+    return Put(line.resistance_ohm_per_km, "a neutral as large as a phase")
