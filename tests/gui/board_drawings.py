@@ -108,6 +108,7 @@ def figures(
         "nominal_v": np.full(len(nodes), 400.0),
         "voltage_v": percent * 4.0,
         "percent": percent,
+        "high_percent": percent,
         "angle_deg": np.zeros(shape),
         "drop_percent": 100 - percent,
         "route_m": np.zeros(len(nodes)),

@@ -70,7 +70,8 @@ def test_json_holds_every_figure_of_the_outcome_unrounded(tmp_path, capsys):
                 assert (got if isinstance(got, list) else [got]) == want
     assert told["nodes"]["B9"] == {
         "name": "Dead end", "kind": "busbar", "live": False, "nominal_v": None, "voltage_v": [None],
-        "percent": [None], "high_percent": [None], "angle_deg": [None], "drop_percent": [None], "route_m": None,
+        "percent": [None], "high_percent": [None], "angle_deg": [None], "drop_percent": [None],
+        "route_m": None,
     }  # fmt: skip
     assert told["balance"]["loss_kw"] == outcome.balance.loss_kw.tolist()
     assert [f["sentence"] for f in told["findings"]] == [f.sentence for f in outcome.findings]
