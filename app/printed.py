@@ -5,9 +5,12 @@ from typing import Any
 
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
-from app.model.figures import plain, typed
+from app.model.figures import amps, plain, typed
 from app.model.kinds import KIND_WORDS, Branch, Regulator, Transformer, kind_of
 from app.study.cautions import CAUTIONS
+from app.study.fault_basis import BASIS
+from app.study.fault_devices import devices
+from app.study.layout import lay_out
 from app.study.outcome import Assumption, Finding, Outcome, Table
 from app.study.words import tell
 from solver.status import Status
@@ -70,7 +73,7 @@ def printed(drawing: Drawing, outcome: Outcome) -> str:
     if outcome.status is Status.SOLVED:
         for case, name in enumerate(outcome.cases):
             parts += _case(drawing, outcome, case, name)
-        parts.append(_faults(drawing, outcome))
+        parts += _faults(drawing, outcome)
     parts += [_findings(outcome), _assumptions(drawing, outcome)]
     parts.append("Cautions\n" + "\n".join(f"  {c}" for c in CAUTIONS))
     return "\n\n".join(part for part in parts if part) + "\n"
@@ -140,16 +143,28 @@ FAULT_COLUMNS: tuple[Column, ...] = (
     ("X/R", figure("xr", 2)),
     ("Ik2 max kA", figure("ik2_max_ka", 2)),
     ("Ik1 max kA", figure("ik1_max_ka", 2)),
+    ("Ik2 min kA", figure("ik2_min_ka", 2)),
     ("Ik1 min kA", figure("ik1_min_ka", 2)),
     ("Zs ohm", figure("zs_ohm", 3)),
 )
 
 
-def _faults(drawing: Drawing, outcome: Outcome) -> str:
-    """Prospective fault currents, which know no case."""
-    if outcome.faults is None:
-        return ""
-    return _table(drawing, "Fault currents", outcome.faults, FAULT_COLUMNS, 0)
+def _faults(drawing: Drawing, outcome: Outcome) -> list[str]:
+    """Prospective fault currents, which know no case, the devices that clear them, and the basis."""
+    states = outcome.faults
+    if states is None:
+        return []
+    told = [
+        f"  {tell(drawing, d.line)} trips at {amps(d.trip_a)}: "
+        + (d.why or f"{amps(d.current_a)} at {tell(drawing, d.node)}, margin {amps(d.current_a - d.trip_a)}")
+        for d in devices(lay_out(drawing), states)
+    ]
+    head = "Devices, least earth-fault current against what trips them in 5 s"
+    return [
+        _table(drawing, "Fault currents", states, FAULT_COLUMNS, 0),
+        "\n".join([head, *told]) if told else "",
+        "\n".join(f"  {item}: {words}" for item, words in BASIS),
+    ]
 
 
 def _starts(drawing: Drawing, outcome: Outcome, case: int) -> str:
@@ -202,7 +217,9 @@ def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
 
 def _field(drawing: Drawing, assumption: Assumption) -> str:
     known = fields_of(type(drawing.elements[assumption.id])).get(assumption.field)
-    return known.label.lower() if known else assumption.field
+    if known is None:
+        return assumption.field
+    return known.label if not known.label[1:2].islower() else known.label[0].lower() + known.label[1:]
 
 
 def _more(assumptions: Sequence[Assumption]) -> Iterable[str]:

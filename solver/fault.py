@@ -168,7 +168,8 @@ def two_phase_earth(source: ArrayLike, z1: ArrayLike, z0: ArrayLike) -> TwoPhase
         y0 = np.where(np.isinf(zero), 0, 1 / zero)
         below = np.abs(one * (one * y0 + 2))
         b, c = (np.sqrt(3) * e * np.abs(1 - turn * one * y0) / below for turn in (TURN, TURN**2))
-    return TwoPhaseEarth(b, c, np.where(y0 == 0, 0.0, _over(3 * e * np.abs(y0), np.abs(one * y0 + 2))))
+        earth = np.where(y0 == 0, 0.0, 3 * e * np.abs(y0) / np.abs(one * y0 + 2))
+    return TwoPhaseEarth(b, c, earth)
 
 
 def peak_factor(r_over_x: ArrayLike) -> Real:

@@ -18,7 +18,8 @@ TRIGGERS = tuple("=+-@\t\r\n\uff1d\uff0b\uff0d\uff20")
 TOGETHER = ("Head", "Basis", "Cautions")  # tabs that stand in OUT.csv itself
 LEAVE_OUT = ("key",)
 BESIDE = (
-    "busbars", "cables", "transformers", "loads", "supplies", "switches", "balance", "losses", "findings",
+    "busbars", "cables", "transformers", "loads", "supplies", "switches", "faults", "circuit_ends",
+    "devices", "balance", "losses", "findings",
     "cable_list", "orders", "settings", "open_points",
 )  # fmt: skip
 

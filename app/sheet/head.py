@@ -7,6 +7,7 @@ from app.model.kinds import Motor
 from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
 from app.study.cautions import CAUTIONS
+from app.study.fault_basis import BASIS as BASIS_OF_FAULTS
 from app.study.outcome import Verdict
 from app.version import version
 from solver.line import ALPHA
@@ -152,7 +153,8 @@ RULES = (
 
 
 def _rules(subject: Subject) -> SheetTable:
-    rows = {item: {"item": text(item), "value": text(words)} for item, words in RULES}
+    told = RULES if subject.outcome.faults is None else RULES + BASIS_OF_FAULTS
+    rows = {item: {"item": text(item), "value": text(words)} for item, words in told}
     return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
 
 

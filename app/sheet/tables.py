@@ -4,6 +4,7 @@ from app.model.drawing import Drawing
 from app.sheet.attachments import load_tables, source_tables
 from app.sheet.balance import balance_tables
 from app.sheet.build import build_tables, switch_tables
+from app.sheet.faults import fault_tables
 from app.sheet.findings import finding_tables
 from app.sheet.head import basis_tables, head_tables, note_tables
 from app.sheet.lines import line_tables
@@ -18,7 +19,7 @@ from app.study.outcome import Outcome
 PARTS = (
     head_tables, basis_tables, node_tables, line_tables, transformer_tables, regulator_tables, load_tables,
     motor_tables,
-    source_tables, switch_tables, balance_tables, finding_tables, build_tables, note_tables,
+    source_tables, switch_tables, fault_tables, balance_tables, finding_tables, build_tables, note_tables,
 )  # fmt: skip
 
 

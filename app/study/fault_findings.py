@@ -2,8 +2,8 @@
 
 from app.model.drawing import Drawing
 from app.model.figures import amps, plain
-from app.model.kinds import Line, Transformer
-from app.study.graph import NONE, Layout
+from app.study.fault_devices import NOT_FED, Device, devices
+from app.study.graph import Layout
 from app.study.outcome import FaultState, Finding, Table, Verdict
 from app.study.words import list_of, tell
 
@@ -107,62 +107,32 @@ def _apart(value: float, limit: float) -> tuple[str, str]:
 
 
 def _devices(drawing: Drawing, layout: Layout, table: Table[FaultState]) -> list[Finding]:
-    on_ring = {branch for ring in layout.rings for branch in ring.branches}
-    judged, noted = [], []
-    for row, nodes in _sections(layout).items():
-        line, id = layout.branches[row], layout.branch_ids[row]
-        assert isinstance(line, Line)
-        assert line.trip_a is not None
-        states = {n: table.at(layout.node_ids[n]) for n in nodes}
-        live = {n: s.ik1_min_ka * 1e3 for n, s in states.items() if s.live}
-        if row in on_ring or any(v != v for v in live.values()):
-            noted.append(_not_judged(drawing, id, row in on_ring))
-        elif live:
-            far = min(live, key=live.__getitem__)
-            judged.append(_device(drawing, id, layout.node_ids[far], live[far], line.trip_a))
-    return _worst(judged) + noted
+    known = [d for d in devices(layout, table) if d.why != NOT_FED]
+    judged = [_device(drawing, d) for d in known if not d.why]
+    return _worst(judged) + [_not_judged(drawing, d) for d in known if d.why]
 
 
-def _sections(layout: Layout) -> dict[int, list[int]]:
-    """For each line with a device the nodes behind it, up to the next device or transformer."""
-    by: list[int] = [NONE] * len(layout.nodes)
-    found: dict[int, list[int]] = {}
-    for node in layout.order:
-        branch = layout.fed_by[node]
-        if branch == NONE or not layout.live[node]:
-            continue
-        fed = layout.branches[branch]
-        if isinstance(fed, Transformer):
-            continue
-        own = isinstance(fed, Line) and fed.trip_a is not None
-        by[node] = branch if own else by[layout.fed_from[node]]
-        if by[node] != NONE:
-            found.setdefault(by[node], []).append(node)
-    for row, branch_ in enumerate(layout.branches):
-        closes = row not in found and layout.live[layout.start[row]]
-        if closes and isinstance(branch_, Line) and branch_.trip_a is not None:
-            found[row] = []  # it closes a ring
-    return found
-
-
-def _device(drawing: Drawing, id: str, node: str, current: float, trip: float) -> Finding:
-    margin = current - trip
-    words = f"An earth fault at {tell(drawing, node)} draws as little as {amps(current)}; the device of "
-    words += f"{tell(drawing, id)} needs {amps(trip)} to trip in 5 s ({DEVICE_RULE})."
-    if current == 0:
-        words = (
-            f"An earth fault at {tell(drawing, node)} finds no way back and is not cleared: nothing earths "
-        )
-        words += f"this part of the layout. The device of {tell(drawing, id)} needs {amps(trip)} to trip."
-    verdict = _verdict(margin, trip)
-    return Finding(DEVICE, verdict, (node, id), words, current, trip, margin, "A", DEVICE_RULE)
-
-
-def _not_judged(drawing: Drawing, id: str, on_ring: bool) -> Finding:
-    why = (
-        "it stands in a closed ring and sees only a share of the current, so it is not judged; open the ring "
-        "to judge it"
-        if on_ring
-        else "the earth-fault loop of a two-wire layout is not worked out, so it is not judged"
+def _device(drawing: Drawing, device: Device) -> Finding:
+    at, of, trip = tell(drawing, device.node), tell(drawing, device.line), amps(device.trip_a)
+    margin = device.current_a - device.trip_a
+    words = f"An earth fault at {at} draws as little as {amps(device.current_a)}; the device of {of} needs "
+    words += f"{trip} to trip in 5 s ({DEVICE_RULE})."
+    if device.current_a == 0:
+        words = f"An earth fault at {at} finds no way back and is not cleared: nothing earths this part of "
+        words += f"the layout. The device of {of} needs {trip} to trip."
+    return Finding(
+        DEVICE,
+        _verdict(margin, device.trip_a),
+        (device.node, device.line),
+        words,
+        device.current_a,
+        device.trip_a,
+        margin,
+        "A",
+        DEVICE_RULE,
     )
-    return Finding(DEVICE, Verdict.NOTE, (id,), f"Device of {tell(drawing, id)}: {why}.")
+
+
+def _not_judged(drawing: Drawing, device: Device) -> Finding:
+    words = f"Device of {tell(drawing, device.line)}: {device.why}."
+    return Finding(DEVICE, Verdict.NOTE, (device.line,), words)

@@ -24,16 +24,6 @@ from solver import fault
 from solver.sequence import seen
 
 Real = NDArray[np.float64]
-BASIS = (
-    "Equivalent voltage source at the fault (IEC 60909-0:2016, from memory); loads, motors, generators, "
-    "capacitors and line charging are not counted, which for motors and generators is too little.",
-    "Highest currents: cmax, conductors at 20 °C, transformers times KT. Least currents: cmin, hot "
-    "conductors, least fault level of the supply. Transformers at their rated ratio, whatever the tap.",
-    "Peak: κ = 1.02 + 0.98·e^(−3R/X), R/X at the equivalent frequency (20 Hz of 50), which holds on rings.",
-    "Negative sequence as positive. The zero sequence passes as the windings let it; a core without a way "
-    "for it blocks it. A supply above 1 kV counts as unearthed where its Z0/Z1 is blank.",
-    "Fault currents here do not replace a protection study.",
-)
 
 
 @dataclass(frozen=True)
@@ -43,14 +33,12 @@ class Faults:
     nodes : Table of FaultState by node id; nan where nothing is worked out
     findings : boards and devices judged; a NOTE where it could not be
     assumptions : what only fault currents need and was not given
-    basis : sentences that say how it was worked out
     worked_out : whether any node has figures
     """
 
     nodes: Table[FaultState]
     findings: tuple[Finding, ...]
     assumptions: tuple[Assumption, ...]
-    basis: tuple[str, ...]
     worked_out: bool
 
 
@@ -86,7 +74,7 @@ def faults_of(drawing: Drawing, layout: Layout, zones: Zones, barred: bool) -> F
     global _last
     if barred or not any(isinstance(s, Supply) and is_stated(s) for s in layout.attachments):
         told = unstated(drawing, layout, barred)
-        return Faults(_table(layout, None, np.zeros(0)), told, (), BASIS, False)
+        return Faults(_table(layout, None, np.zeros(0)), told, (), False)
     bearing = _bearing(drawing)
     last = _last
     if last is not None and last[1:3] == (drawing.limits, drawing.frequency_hz) and _same(last[0], bearing):
@@ -94,7 +82,7 @@ def faults_of(drawing: Drawing, layout: Layout, zones: Zones, barred: bool) -> F
     rows = fault_rows(drawing, layout, zones)
     table = _table(layout, rows, _source(rows))
     findings = fault_findings(drawing, layout, table)
-    made = Faults(table, findings, rows.assumptions, BASIS, bool(rows.known.any()))
+    made = Faults(table, findings, rows.assumptions, bool(rows.known.any()))
     _last = (bearing, drawing.limits, drawing.frequency_hz, made)
     return made
 
@@ -147,7 +135,7 @@ def _table(layout: Layout, rows: FaultRows | None, source: Real) -> Table[FaultS
 
 FIGURES = (
     "ik3_max_ka", "ip_ka", "xr", "ik2_max_ka", "ik1_max_ka", "ik2e_max_ka", "ik3_min_ka", "ik2_min_ka",
-    "ik1_min_ka", "zs_ohm",
+    "ik1_min_ka", "zs_ohm", "c_max", "c_min", "r_ohm", "x_ohm", "rx_peak",
 )  # fmt: skip
 
 
@@ -160,9 +148,10 @@ def _columns(rows: FaultRows, source: Real) -> dict[str, NDArray[np.generic]]:
     both = fault.two_phase_earth(e_most, most, z0[:, 0])
     zs = np.abs(fault.earth_loop(least, z0[:, 1]))
     peaked = np.where(rows.two_wire, two[0], three[0])
+    ratio = _over(z1[:, 2].real, z1[:, 2].imag) * EQUIVALENT
     found = {
         "ik3_max_ka": three[0] / 1e3,
-        "ip_ka": fault.peak(peaked, _over(z1[:, 2].real, z1[:, 2].imag) * EQUIVALENT) / 1e3,
+        "ip_ka": fault.peak(peaked, ratio) / 1e3,
         "xr": _over(most.imag, most.real),
         "ik2_max_ka": two[0] / 1e3,
         "ik1_max_ka": fault.phase_earth(e_most, most, z0[:, 0]) / 1e3,
@@ -171,6 +160,11 @@ def _columns(rows: FaultRows, source: Real) -> dict[str, NDArray[np.generic]]:
         "ik2_min_ka": two[1] / 1e3,
         "ik1_min_ka": fault.phase_earth(e_least, least, z0[:, 1]) / 1e3,
         "zs_ohm": np.where(np.isinf(zs), np.nan, zs),
+        "c_max": rows.c_max,
+        "c_min": rows.c_min,
+        "r_ohm": most.real,
+        "x_ohm": most.imag,
+        "rx_peak": ratio,
     }
     for name in ("ik3_max_ka", "ik3_min_ka", "ik1_max_ka", "ik1_min_ka", "ik2e_max_ka", "zs_ohm"):
         found[name] = np.where(rows.two_wire, np.nan, found[name])

@@ -86,6 +86,11 @@ class FaultState:
     ik2_min_ka: float
     ik1_min_ka: float
     zs_ohm: float  # earth-fault loop, hot, the supply included; nan where there is none
+    c_max: float  # voltage factors
+    c_min: float
+    r_ohm: float  # seen from here by the highest three-phase current, or by that between two wires
+    x_ohm: float
+    rx_peak: float  # R/X of the peak, by the equivalent frequency
 
 
 @dataclass(frozen=True, slots=True)

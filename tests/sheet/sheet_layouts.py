@@ -169,6 +169,37 @@ def stepping(*cases: Case) -> Drawing:
     return Drawing(elements=elements, cases=cases or (Case(),))
 
 
+def faulty() -> Drawing:
+    """Boards with fault ratings, devices that trip and do not, a ring, two wires, a part that is not fed."""
+    cable = {"rating_a": 265.0, "reactance_ohm_per_km": 0.072}
+    elements = {
+        "B1": Busbar(name="HV"),
+        "S1": Supply(
+            node="B1", nominal_v=11000.0, fault_level_max_mva=150.0, fault_level_min_mva=90.0, xr=3.0
+        ),
+        "T1": Transformer(start="B1", end="B2", rating_kva=500.0, load_loss_w=3900.0),
+        "B2": Busbar(name="Board", withstand_ka=18.0),
+        "C1": Cable(start="B2", end="B3", length_m=900.0, trip_a=1250.0, **cable),
+        "B3": Busbar(name="House", withstand_ka=6.0),
+        "C2": Cable(start="B2", end="B4", length_m=50.0, trip_a=800.0, **cable),
+        "B4": Busbar(name="Yard", withstand_ka=9.0),
+        "C3": Cable(start="B2", end="B5", length_m=40.0, trip_a=800.0, **cable),
+        "C4": Cable(start="B5", end="B2", length_m=70.0, **cable),
+        "B5": Busbar(name="Ring"),
+        "W1": Switch(start="B5", end="B6", closed=False),
+        "B6": Busbar(name="Spare", withstand_ka=10.0),
+        "C6": Cable(start="B6", end="B9", trip_a=100.0, **cable),
+        "B9": Joint(),
+        "B7": Busbar(name="Hut", withstand_ka=6.0),
+        "S2": Supply(node="B7", nominal_v=230.0, wires="two-wire", fault_level_max_mva=1.0, xr=0.0),
+        "C5": Cable(start="B7", end="B8", length_m=60.0, trip_a=160.0, resistance_ohm_per_km=1.15,
+        reactance_ohm_per_km=0.0),
+        "B8": Busbar(name="Hut, far"),
+        "L1": Load(node="B3", demand_kva=20.0),
+    }  # fmt: skip
+    return Drawing(elements=elements)
+
+
 def blocked() -> Drawing:
     """Two cables of no length side by side: a loop without impedance, so that nothing is solved."""
     elements = {

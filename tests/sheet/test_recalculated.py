@@ -4,7 +4,7 @@ from pathlib import Path
 
 import openpyxl
 import pytest
-from sheet_layouts import NIGHT, PEAK, blocked, meshed, pair, stepping, three_cables, two_wire
+from sheet_layouts import NIGHT, PEAK, blocked, faulty, meshed, pair, stepping, three_cables, two_wire
 from spreadsheet import differences, needs_spreadsheet, recalculated
 from xlsxwriter import Workbook
 
@@ -21,6 +21,7 @@ LAYOUTS = {
     "meshed by night.xlsx": (meshed(PEAK, NIGHT), 180),
     "stepping.xlsx": (stepping(), 60),
     "stepping by night.xlsx": (stepping(PEAK, NIGHT), 120),
+    "faulty.xlsx": (faulty(), 160),
     "blocked.xlsx": (blocked(), 5),
 }
 Books = dict[str, tuple[Path, Path]]
