@@ -1,6 +1,6 @@
 """A year, or any long series of operating points: solved block by block, kept as energies and extremes."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -8,7 +8,9 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from solver.arrays import Complex, Flag, Index, Real
+from solver.control import Controlled, Regulator, control
 from solver.forest import grow
+from solver.holding import Holding
 from solver.network import Network
 from solver.share import pick
 from solver.solution import Solution
@@ -16,6 +18,7 @@ from solver.solving import solve
 from solver.status import Status
 
 VALUES = 1 << 19  # complex values of node volts in one block
+Watch = Callable[[Index, Solution, Controlled | None], None]
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,16 +76,28 @@ def solve_series(
     hours: ArrayLike = 1.0,
     progress: Callable[[int, int], bool] | None = None,
     block: int | None = None,
+    *,
+    regulators: Sequence[Regulator] = (),
+    generators: Sequence[Holding] = (),
+    watch: Watch | None = None,
 ) -> Series:
     """Solves every operating point of a long batch and keeps energies and extremes alone.
 
     W = Σ P · h
 
+    Where something moves by itself it comes to rest in each point anew, from where it stands before: no
+    point hangs on the one before it.
+
     network : Network, whose batch is the series
     hours : (batch,) or one float [h] that each point lasts
     progress : called after each block with points done and points in all; stops where it says False
     block : points in a block; as many as stay quick where it is None
+    regulators : each a Regulator with one setting for all points
+    generators : each a Holding with one setting for all points, k = 1
+    watch : called after each block with its points, its Solution, and where its controls came to rest, or
+        None where there are none
     Returns : Series
+    Raises : ValueError where there are controls and the network has no forest
     Source : common practice, no source
     """
     width = network.batch
@@ -92,7 +107,11 @@ def solve_series(
     for start in range(0, width, size):
         points = np.arange(start, min(start + size, width))
         part = network if points.size == width else pick(network, points)
-        tally.add(solve(part, forest=forest), points, lasts[points])
+        rested = control(part, regulators, generators) if regulators or generators else None
+        solution = solve(part, forest=forest) if rested is None else rested.solution
+        tally.add(solution, points, lasts[points])
+        if watch is not None:
+            watch(points, solution, rested)
         done = start + points.size
         if progress is not None and not progress(done, width):
             break

@@ -64,21 +64,55 @@ def settled(
     Source : see solver.control
     """
     layout.forest = layout.forest or grow(rows.network)
-    live, network = arrays_of(layout).live, rows.network
+    network, moving = rows.network, moving_of(layout, zones, rows, fixed)
+    if isinstance(layout.forest, Trouble) or not moving:
+        return rows, solve(network, forest=layout.forest), None
+    found = controls.control(network, moving.regulators, moving.holdings)
+    notches = dict(zip(moving.changers, found.notch, strict=True))
+    rows = replace(rows, network=found.solution.network, notches=notches)
+    return rows, found.solution, Moved(moving.changers, found.rest, moving.generators, found.held)
+
+
+@dataclass(frozen=True, slots=True)
+class Moving:
+    """What moves by itself, as the solver takes it; false where nothing does.
+
+    changers : (changer,) branch rows
+    regulators : (changer,) each a controls.Regulator
+    generators : (generator,) attachment rows
+    holdings : (generator,) each a Holding
+    """
+
+    changers: tuple[int, ...]
+    regulators: tuple[controls.Regulator, ...]
+    generators: tuple[int, ...]
+    holdings: tuple[Holding, ...]
+
+    def __bool__(self) -> bool:
+        return bool(self.changers or self.generators)
+
+
+def moving_of(layout: Layout, zones: Zones, rows: Rows, fixed: int | None = None) -> Moving:
+    """What moves by itself where power reaches it.
+
+    layout : the graph
+    zones : nominal_v (zone,) float [V]
+    rows : its rows, changers at their nameplate
+    fixed : branch row of a changer that is to stay where the rows have it
+
+    Returns : Moving
+    """
+    live = arrays_of(layout).live
     changers = tuple(
         int(b) for b in rows.units if b != fixed and is_changer(layout.branches[b]) and live[layout.start[b]]
     )
     held = tuple(holders(layout)[0])
-    if isinstance(layout.forest, Trouble) or not changers and not held:
-        return rows, solve(network, forest=layout.forest), None
-    found = controls.control(
-        network,
-        [_changer(layout, zones, rows, b) for b in changers],
-        [_holding(layout, zones, rows, a) for a in held],
+    return Moving(
+        changers,
+        tuple(_changer(layout, zones, rows, b) for b in changers),
+        held,
+        tuple(_holding(layout, zones, rows, a) for a in held),
     )
-    notches = dict(zip(changers, found.notch, strict=True))
-    rows = replace(rows, network=found.solution.network, notches=notches)
-    return rows, found.solution, Moved(changers, found.rest, held, found.held)
 
 
 def holders(layout: Layout) -> tuple[list[int], list[tuple[int, int]]]:
