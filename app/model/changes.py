@@ -6,6 +6,7 @@ from typing import Any, TypeVar, cast
 from msgspec import Struct
 from msgspec.structs import replace
 
+from app.model.by_case import fault_of_own, tidied
 from app.model.checks import (
     EditRefused,
     called,
@@ -56,7 +57,7 @@ def put(drawing: Drawing, fresh: Mapping[str, Element]) -> Drawing:
     if ousted:
         for id, one in elements.items():
             refuse_if(misfit(elements, id, one) if ousted & set(ends(one)) else None)
-    return with_elements(drawing, elements)
+    return tidied(with_elements(drawing, elements))
 
 
 def ends(one: Element) -> tuple[str, ...]:
@@ -121,7 +122,7 @@ def remove(drawing: Drawing, ids: Iterable[str]) -> Drawing:
     for id in gone:
         element(drawing, id)
     left = {i: e for i, e in drawing.elements.items() if i not in gone and not (gone and gone & set(ends(e)))}
-    return with_elements(drawing, left)
+    return tidied(with_elements(drawing, left))
 
 
 def set_project(drawing: Drawing, **fields: Any) -> Drawing:
@@ -153,7 +154,7 @@ def set_case(drawing: Drawing, number: int, case: Case | None = None, **fields: 
         raise EditRefused(f"Case {number + 1} does not exist, allowed is 1 to {len(cases) + 1}.")
     was = case or (cases[number] if number < len(cases) else Case(name=f"Case {number + 1}"))
     cases[number : number + 1] = [_changed(f"Case {number + 1}", was, fields)]
-    refuse_if(fault_of_cases(cases))
+    refuse_if(fault_of_cases(cases, drawing.elements))
     return replace(drawing, cases=tuple(cases))
 
 
@@ -167,7 +168,7 @@ def remove_case(drawing: Drawing, number: int) -> Drawing:
     return replace(drawing, cases=cases[:number] + cases[number + 1 :])
 
 
-def fault_of_cases(cases: Collection[Case]) -> str | None:
+def fault_of_cases(cases: Collection[Case], elements: Mapping[str, Element]) -> str | None:
     """The sentence against the cases of a drawing, or None."""
     if not 1 <= len(cases) <= 100:
         return f"There are {len(cases)} cases, allowed are 1 to 100."
@@ -178,6 +179,7 @@ def fault_of_cases(cases: Collection[Case]) -> str | None:
             words = "Case is blank, allowed is a name."
         if not words and case.name in names:
             words = f"Case is {shown(case.name)}, which another case is called, allowed is a name of its own."
+        words = words or fault_of_own(elements, case.own)
         if words:
             return f"Case {number}: {words}"
         names.add(case.name)

@@ -6,20 +6,23 @@ from msgspec import Struct
 from msgspec import field as held
 from msgspec.structs import replace
 
+from app.model.by_case import said_of, taken_over
 from app.model.changes import element, ends, put
 from app.model.checks import EditRefused
-from app.model.drawing import Drawing, Part
+from app.model.drawing import Drawing, Own, Part
 from app.model.keeping import carried
 from app.model.kinds import LETTERS, AnyElement, Attachment, Branch, Element, Joint, Node, kind_of
 
 
 class Clip(Struct, frozen=True, kw_only=True):
-    """Elements that fit together, and the point, in grid steps, that lands where they are pasted."""
+    """Elements that fit together, and the point, in grid steps, that lands where they are pasted. `own` is
+    what the cases, by name, state of them."""
 
     x: float = 0.0
     y: float = 0.0
     elements: dict[str, AnyElement] = held(default_factory=dict)
     parts: dict[str, Part] = held(default_factory=dict)
+    own: dict[str, dict[str, Own]] = held(default_factory=dict)
 
 
 def copy(drawing: Drawing, ids: Iterable[str]) -> Clip:
@@ -37,7 +40,8 @@ def copy(drawing: Drawing, ids: Iterable[str]) -> Clip:
             kept[id] = one
     nodes = [e for e in kept.values() if isinstance(e, Node)]
     parts = {i: drawing.parts[i] for i in sorted({e.part for e in kept.values() if e.part})}
-    return Clip(x=_middle(n.x for n in nodes), y=_middle(n.y for n in nodes), elements=kept, parts=parts)
+    x, y = _middle(n.x for n in nodes), _middle(n.y for n in nodes)
+    return Clip(x=x, y=y, elements=kept, parts=parts, own=said_of(drawing.cases, kept))
 
 
 def _middle(along: Iterable[float]) -> float:
@@ -58,7 +62,7 @@ def paste(drawing: Drawing, clip: Clip, x: float, y: float, node: str | None = N
     for id, one in clip.elements.items():
         if id not in bound:
             placed[fresh[id]] = _placed(one, {**fresh, **bound}, names, x - clip.x, y - clip.y)
-    return put(drawing, placed)
+    return taken_over(put(drawing, placed), clip.own, fresh)
 
 
 def _hangs_on_one_joint(clip: Clip) -> bool:

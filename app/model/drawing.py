@@ -35,6 +35,16 @@ class Limits(Struct, frozen=True, kw_only=True):
         | None
     ) = None
     drop_name: Annotated[str, text("Drop limit", help="Whose limit of the drop it is.")] = ""
+    rise_percent: (
+        Annotated[
+            float,
+            field(
+                "Rise by generation", "%", gt=0, le=100, help="Over the same case without. Blank: not judged."
+            ),
+        ]
+        | None
+    ) = None
+    rise_name: Annotated[str, text("Rise limit", help="Whose limit of the rise it is.")] = ""
     most_loaded_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
     unbalance_percent: (
         Annotated[
@@ -78,8 +88,20 @@ class Limits(Struct, frozen=True, kw_only=True):
     kept: dict[str, Any] = held(default_factory=dict)
 
 
+class Own(Struct, frozen=True, kw_only=True):
+    """What a case states of one element: a share of what the drawing states of it, and a load's power
+    factor. Blank: as the case has it for all."""
+
+    percent: (
+        Annotated[float, field("Share", "%", ge=0, le=1000, help="Of what the drawing states of it.")] | None
+    ) = None
+    power_factor: Annotated[float, field("Power factor", "", ge=0, le=1)] | None = None
+    kept: dict[str, Any] = held(default_factory=dict)
+
+
 class Case(Struct, frozen=True, kw_only=True):
-    """One loading case: a column of the batch. Percentages scale what the drawing states."""
+    """One loading case: a column of the batch. Percentages scale what the drawing states; `own` says by id
+    what stands otherwise in this case alone."""
 
     name: Annotated[str, text("Case", longest=60)] = "As drawn"
     supply_percent: Annotated[float, field("Supply voltage", "%", gt=0, le=200)] = 100.0
@@ -89,6 +111,7 @@ class Case(Struct, frozen=True, kw_only=True):
         Annotated[float, field("Motors", "%", ge=0, le=1000, help="Of running motors. Blank: as the loads.")]
         | None
     ) = None
+    own: dict[str, Own] = held(default_factory=dict)
     kept: dict[str, Any] = held(default_factory=dict)
 
 

@@ -1,5 +1,6 @@
 """Edits: pure functions from drawing to drawing. They may refuse, with a reason for people."""
 
+from app.model.by_case import set_own
 from app.model.changes import (
     change,
     put,
@@ -56,6 +57,7 @@ __all__ = [
     "set_case",
     "set_frequency",
     "set_limits",
+    "set_own",
     "set_project",
     "set_symbol",
     "set_tap",

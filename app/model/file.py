@@ -8,7 +8,8 @@ from pathlib import Path
 
 from app.model.drawing import Drawing
 from app.model.errors import FileError
-from app.model.reading import LARGEST, drawing_from, raw_object
+from app.model.raw import LARGEST, raw_object
+from app.model.reading import drawing_from
 from app.model.writing import drawing_text
 
 __all__ = ["FileError", "decode", "encode", "load", "read_bytes", "save", "sentence", "write_bytes"]

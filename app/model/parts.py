@@ -29,9 +29,10 @@ from app.model.kinds import (
     Switch,
     Transformer,
 )
-from app.model.reading import MOST_PARTS, elements_from, part_from, parts_from, raw_object
+from app.model.raw import raw_object
+from app.model.reading import MOST_PARTS, elements_from, own_from, part_from, parts_from
 from app.model.versions import CURRENT
-from app.model.writing import element_body, line, listed, part_body
+from app.model.writing import body, element_body, line, listed, part_body
 
 Unbound: dict[str, Any] = {"start": "", "end": ""}
 
@@ -169,6 +170,9 @@ def encode_clip(clip: Clip) -> bytes:
     elements = listed(element_body(i, e) for i, e in clip.elements.items())
     parts = listed(part_body(i, p) for i, p in clip.parts.items())
     head = f'"farend_clip": {CURRENT},\n"x": {line(clip.x)},\n"y": {line(clip.y)}'
+    if clip.own:
+        said = {case: {i: body(one) for i, one in own.items()} for case, own in clip.own.items()}
+        head += f',\n"own": {line(said)}'
     return f'{{\n{head},\n"elements": {elements},\n"parts": {parts}\n}}\n'.encode()
 
 
@@ -178,7 +182,9 @@ def decode_clip(data: bytes) -> Clip:
         raw = raw_object(data, "farend_clip", "clip")
         parts = parts_from(raw.get("parts", []))
         elements = elements_from(raw.get("elements", []), parts)
-        return Clip(x=_spot(raw, "x"), y=_spot(raw, "y"), elements=elements, parts=parts)
+        said = raw.get("own", {})
+        own = {case: own_from(one, case) for case, one in said.items()} if isinstance(said, dict) else {}
+        return Clip(x=_spot(raw, "x"), y=_spot(raw, "y"), elements=elements, parts=parts, own=own)
     except FileError as error:
         raise FileError(sentence("The clip", str(error))) from None
 

@@ -1,8 +1,6 @@
 """JSON text to drawings, parts and clips; whatever is wrong gives one sentence, and nothing comes half."""
 
 import json
-import math
-import re
 from collections.abc import Mapping
 from functools import cache
 from typing import Any, TypeVar
@@ -23,82 +21,14 @@ from app.model.checks import (
     misfit,
     shown,
 )
-from app.model.drawing import Case, Drawing, Limits, Part, Project, Symbol
+from app.model.drawing import Case, Drawing, Limits, Own, Part, Project, Symbol
 from app.model.errors import FileError
 from app.model.fields import fields_of
 from app.model.kinds import KIND_WORDS, KINDS, AnyElement, Attachment, Branch, Element
-from app.model.versions import migrate
 
-LARGEST = 200 * 1024 * 1024
 DEEPEST = 40
 MOST_PARTS = 1000
 Kind = TypeVar("Kind", bound=Struct)
-
-
-def raw_object(data: bytes, key: str, what: str) -> dict[str, Any]:
-    """The JSON object in a file of ours, brought up to the current version; `key` marks what it is."""
-    if len(data) > LARGEST:
-        raise FileError(f"has {len(data) >> 20} MiB, allowed are at most {LARGEST >> 20} MiB.")
-    text = _text(data)
-    try:
-        raw = json.loads(text, object_pairs_hook=_once, parse_float=_finite, parse_constant=_no_constant)
-    except json.JSONDecodeError as error:
-        raise FileError(_where(text, error)) from None
-    except RecursionError:
-        raise FileError("is nested too deeply to be a file of ours.") from None
-    except FileError:
-        raise
-    except ValueError:
-        raise FileError("holds a number with too many digits.") from None
-    if not isinstance(raw, dict) or key not in raw:
-        raise FileError(f'is JSON, but no {what}: it has no key "{key}".')
-    return migrate(raw, key)
-
-
-def _text(data: bytes) -> str:
-    if not data.strip():
-        raise FileError("is empty.")
-    if b"\x00" in data[:4096]:
-        raise FileError("is not text in UTF-8, so it is no file of ours.")
-    try:
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        raise FileError(f"is not text in UTF-8: byte {error.start + 1} is foreign to it.") from None
-
-
-_HALF = re.compile(r"(-|t|tr|tru|f|fa|fal|fals|n|nu|nul|\.|[eE][+-]?|\\u.{0,3}|u.{0,3})?\s*")
-
-
-def _where(text: str, error: json.JSONDecodeError) -> str:
-    place = f"line {error.lineno}, column {error.colno}"
-    half = error.msg.startswith("Unterminated string") or _HALF.fullmatch(text, error.pos)
-    if half and error.msg != "Extra data" and text.lstrip().startswith("{"):
-        return f"is cut off: it ends in the middle, after {place}."
-    return f"is not JSON: it stops making sense at {place}."
-
-
-def _once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-    made = dict(pairs)
-    if len(made) != len(pairs):
-        seen: set[str] = set()
-        twice = next(k for k, _ in pairs if k in seen or seen.add(k))  # type: ignore[func-returns-value]
-        raise FileError(f"says {shown(twice)} twice in one place{_beside(made)}, allowed is once.")
-    return made
-
-
-def _beside(made: Mapping[str, Any]) -> str:
-    return f" ({shown(made['id'])})" if isinstance(made.get("id"), str) else ""
-
-
-def _finite(written: str) -> float:
-    value = float(written)
-    if not math.isfinite(value):
-        raise FileError(f"holds the number {shown(written)}, allowed are finite numbers.")
-    return value
-
-
-def _no_constant(written: str) -> float:
-    raise FileError(f"holds {written}, allowed are finite numbers.")
 
 
 def drawing_from(raw: dict[str, Any]) -> Drawing:
@@ -106,11 +36,9 @@ def drawing_from(raw: dict[str, Any]) -> Drawing:
     parts = parts_from(raw.get("parts", []))
     elements = elements_from(raw.get("elements", []), parts)
     frequency = raw.get("frequency_hz", Drawing().frequency_hz)
-    cases = tuple(
-        struct_from(Case, one, f"Case {number}") for number, one in enumerate(_list(raw, "cases", [{}]), 1)
-    )
+    cases = tuple(_case_from(one, f"Case {n}") for n, one in enumerate(_list(raw, "cases", [{}]), 1))
     limits = struct_from(Limits, raw.get("limits", {}), "Limits")
-    _refuse_if(fault_of_frequency(frequency) or fault_of_cases(cases) or fault_of_limits(limits))
+    _refuse_if(fault_of_frequency(frequency) or fault_of_cases(cases, elements) or fault_of_limits(limits))
     return Drawing(
         project=struct_from(Project, raw.get("project", {}), "Project"),
         frequency_hz=float(frequency),
@@ -120,6 +48,20 @@ def drawing_from(raw: dict[str, Any]) -> Drawing:
         parts=parts,
         kept=_kept(raw, _known(Drawing) | {"farend"}, "The file"),
     )
+
+
+def _case_from(raw: Any, where: str) -> Case:
+    """A loading case; what it states of single elements is checked against them later."""
+    own = own_from(raw.get("own", {}), where) if isinstance(raw, dict) else {}
+    case = struct_from(Case, {**raw, "own": {}} if own else raw, where)
+    return structs.replace(case, own=own)
+
+
+def own_from(said: Any, where: str) -> dict[str, Own]:
+    """What a case states of single elements, by id."""
+    if not isinstance(said, dict):
+        raise FileError(f"{where}: own is {shown(said)}, allowed is an object with ids as keys.")
+    return {id: struct_from(Own, one, f"{where}, {id}") for id, one in said.items()}
 
 
 def _list(raw: Mapping[str, Any], key: str, default: list[Any]) -> list[Any]:

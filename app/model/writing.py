@@ -73,6 +73,8 @@ def _fields(kind: type[Struct]) -> tuple[tuple[str, tuple[Any, ...]], ...]:
             f.name,
             (spare[f.name],)
             if f.name in spare
+            else ({},)
+            if f.default_factory is dict
             else _BLANK
             if f.default in _BLANK or (f.default in (NODEFAULT, UNSET) and f.name in blank)
             else (),
@@ -92,6 +94,8 @@ def _plain(value: Any) -> Any:
     if type(value) is float:
         whole = value.is_integer() and abs(value) < 1e15 and (value or math.copysign(1, value) > 0)
         return int(value) if whole else value
+    if isinstance(value, dict):
+        return {key: body(one) for key, one in value.items()}
     return tuple(_plain(v) for v in value) if isinstance(value, tuple) else value
 
 

@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from app.model.by_case import owned
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Regulator, Switch
 from app.study.layout import Layout, arrays_of
@@ -66,17 +67,18 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     two_wire, nominal = zones.two_wire[graph.tree], zones.nominal_v[graph.zone]
     nominal = np.where(np.isnan(nominal), 1.0, nominal)  # a dead part of no known level draws nothing
     phases, wide = np.where(two_wire, 1.0, 3.0), np.where(two_wire, 1.0, ROOT3)
-    kinds, sources = _sort(layout), np.array(layout.supplies, dtype=np.intp)
+    kinds, sources = _sort(layout, drawing), np.array(layout.supplies, dtype=np.intp)
     lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts
     line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]])
     ratio, unit_z, unit_y = _with_regulators(
         transformer_values(_of(layout.branches, np.array(layout.units, dtype=np.intp))), units
     )
-    held = held_values(_of(layout.attachments, sources), drawing.cases)
+    ids, cases = layout.attachment_ids, drawing.cases
+    held = held_values(_of(layout.attachments, sources), _of(ids, sources), cases)
     hung = _of(layout.attachments, loads)
-    power, reference, mix = load_values(hung, nominal[at[loads]], drawing.cases)
+    power, reference, mix = load_values(hung, _of(ids, loads), nominal[at[loads]], cases)
     capacitors = _of(layout.attachments, shunts)
-    shunt_y = shunt_values(capacitors, nominal[at[shunts]])
+    shunt_y = shunt_values(capacitors, _of(ids, shunts), nominal[at[shunts]], cases)
     network = Network(
         node_count=len(layout.nodes),
         conductors=1,
@@ -96,7 +98,7 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
         load_reference=(reference / wide[at[loads]])[:, None, None],
         load_mix=mix,
         shunt_node=at[shunts],
-        shunt_y=shunt_y[:, None, None, None],
+        shunt_y=shunt_y[:, None, None, :],
     )
     return Rows(network, lines, units, sources, loads, shunts, phases, wide)
 
@@ -141,15 +143,17 @@ class _Kinds:
     shunts: Index
 
 
-def _sort(layout: Layout) -> _Kinds:
+def _sort(layout: Layout, drawing: Drawing) -> _Kinds:
     """Rows of the branches and attachments by what they are to the solver; open switches are nothing."""
+    owning = {id for _, id, _ in owned(drawing.cases)}
     lines = [
         i for i, b in enumerate(layout.branches) if isinstance(b, Line) or isinstance(b, Switch) and b.closed
     ]
     regulators = [i for i, b in enumerate(layout.branches) if isinstance(b, Regulator)]
     hung = layout.attachments
     loads = [i for i, a in enumerate(hung) if isinstance(a, Load | Generator | Motor)]
-    shunts = [i for i, a in enumerate(hung) if isinstance(a, Capacitor) and a.connected]
+    ids = layout.attachment_ids
+    shunts = [i for i, a in enumerate(hung) if isinstance(a, Capacitor) and (a.connected or ids[i] in owning)]
     return _Kinds(
         *(np.array(rows, dtype=np.intp) for rows in (lines, [*layout.units, *regulators], loads, shunts))
     )

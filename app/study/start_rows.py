@@ -58,7 +58,8 @@ def _running(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> tupl
     if not any(isinstance(a, Motor) and a.state == "starting" for a in hung):
         return network.load_power, network.load_reference, network.load_mix
     run: list[Any] = [msgspec.structs.replace(a, state="running") if _starts(a) else a for a in hung]
-    power, reference, mix = load_values(run, nominal_of(layout, zones, rows.loads), drawing.cases)
+    ids, nominal = [layout.attachment_ids[i] for i in rows.loads], nominal_of(layout, zones, rows.loads)
+    power, reference, mix = load_values(run, ids, nominal, drawing.cases)
     return *_per_phase(layout, rows, rows.loads, power, reference), mix
 
 

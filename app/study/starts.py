@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import assumed
-from app.model.drawing import Drawing
+from app.model.drawing import Case, Drawing
 from app.model.kinds import Generator, Load, Motor, Supply
 from app.study.changers import settled
 from app.study.layout import NONE, Layout, lay_out
@@ -140,11 +140,17 @@ def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _P
     running = [abs(motor.running(m.rated_kw * 1e3, m.efficiency, m.power_factor)) for m in motors]
     found["times_rated"] = found["current_a"] / (np.array(running) / (rows.wide[at] * rated))[:, None]
     found["torque_percent"] = _torque(motors, found["motor_percent"])
-    idle = [c.motor_percent == 0 for c in drawing.cases]
+    idle = np.array([[_stands_still(c, layout.attachment_ids[i]) for c in drawing.cases] for i in started])
     for column in found.values():
-        column[:, idle] = np.nan
+        column[idle] = np.nan
     table = _table(layout, started, found | {"solved": solved | idle}, [layout.node_ids[n] for n in boards])
     return replace(table, supplies=tuple(layout.attachment_ids[f] for f in feeding))
+
+
+def _stands_still(case: Case, id: str) -> bool:
+    """True where a case has this motor, or without a word on it all motors, at nought."""
+    own = case.own.get(id)
+    return (case.motor_percent if own is None or own.percent is None else own.percent) == 0
 
 
 def _volts(solution: Solution, rows: Rows, nodes: NDArray[np.intp], solved: NDArray[np.bool_]) -> Real:

@@ -7,6 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import assumed, taps
+from app.model.by_case import as_in, owned, percent_of
 from app.model.drawing import Case
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Supply, Transformer
 from app.study.memory import Columns
@@ -108,17 +109,18 @@ def _equivalent(plates: Real) -> tuple[Complex, Complex, Complex]:
     return transformer.equivalent(v1, v2, z, y, clock, tap_1, tap_2, parallel)
 
 
-def held_values(supplies: Sequence[Supply], cases: Sequence[Case]) -> Complex:
-    """Volts that each supply holds in each case: nominal · held % · case %.
+def held_values(supplies: Sequence[Supply], ids: Sequence[str], cases: Sequence[Case]) -> Complex:
+    """Volts that each supply holds in each case: nominal · held % · case %, or its own % in that case.
 
     supplies : (source,)
+    ids : (source,) of the supplies
     cases : (case,)
 
     Returns : (source, case) complex [V], between lines or between the two wires
     """
     nominal, held, angle = columns([(s.nominal_v, s.held_percent, s.angle_deg) for s in supplies], 3)
-    level = np.array([c.supply_percent for c in cases], dtype=np.float64)
-    size: Real = nominal[:, None] * (held[:, None] * level / 1e4)
+    level = np.array([[percent_of(c, i, s) for c in cases] for i, s in zip(ids, supplies, strict=True)])
+    size: Real = nominal[:, None] * (held[:, None] * level.reshape(len(ids), len(cases)) / 1e4)
     return size * np.exp(1j * np.deg2rad(angle))[:, None]
 
 
@@ -170,11 +172,12 @@ _demands: Columns[Demand] = Columns(_demand_row, 9)
 
 
 def load_values(
-    drawn: Sequence[Demand], nominal_v: Real, cases: Sequence[Case]
+    drawn: Sequence[Demand], ids: Sequence[str], nominal_v: Real, cases: Sequence[Case]
 ) -> tuple[Complex, Real, Real]:
     """Power drawn at the reference voltage, that voltage, and the load mix.
 
     drawn : (load,) loads, generators and motors; a generator draws negative power
+    ids : (load,) of these elements, by which a case states shares and power factors of their own
     nominal_v : (load,) float [V] of their nodes, the reference where none is stated
     cases : (case,) scale loads, running motors and generation
 
@@ -182,7 +185,19 @@ def load_values(
         constant power, current, impedance
     Source : see solver.load, solver.motor
     """
-    return scaled_values(_demands.of(drawn), nominal_v, cases)
+    power, reference, mix = scaled_values(_demands.of(drawn), nominal_v, cases)
+    row = {id: n for n, id in enumerate(ids)} if any(c.own for c in cases) else {}
+    for case, id, _ in owned(cases):
+        if id in row:
+            power[row[id], case] = _own_power(drawn[row[id]], id, cases[case])
+    return power, reference, mix
+
+
+def _own_power(element: Demand, id: str, case: Case) -> complex:
+    """Power of an element of which a case states something itself."""
+    as_it_is = as_in(case, id, element) if isinstance(element, Load) else element
+    whole = complex(_whole(columns([_demand_row(as_it_is)], 9))[0])
+    return whole * (percent_of(case, id, element) / 100)
 
 
 def scaled_values(demands: Real, nominal_v: Real, cases: Sequence[Case]) -> tuple[Complex, Real, Real]:
@@ -195,27 +210,42 @@ def scaled_values(demands: Real, nominal_v: Real, cases: Sequence[Case]) -> tupl
     Returns : power (load, case) complex [VA], reference (load,) float [V], mix (load, 3)
     Source : common practice, no source
     """
-    kva, pf, leading, kw, kvar, what, current, impedance, reference = demands
+    what, current, impedance, reference = demands[5:]
     loads = np.array([c.load_percent for c in cases], dtype=np.float64)
     motors = [c.load_percent if c.motor_percent is None else c.motor_percent for c in cases]
     makers = [c.generation_percent for c in cases]
     scale = np.array([loads, motors, np.full(len(cases), 100.0), makers], dtype=np.float64) / 100
-    whole = (load.power(kva, pf, leading > 0) + kw + 1j * kvar) * 1e3
-    power = np.asarray(whole[:, None] * scale[what.astype(int)], dtype=np.complex128)
+    power = np.asarray(_whole(demands)[:, None] * scale[what.astype(int)], dtype=np.complex128)
     reference = np.asarray(np.where(np.isnan(reference), nominal_v, reference), dtype=np.float64)
     return power, reference, load.mix(current, impedance)
 
 
-def shunt_values(capacitors: Sequence[Capacitor], nominal_v: Real) -> Complex:
+def _whole(demands: Real) -> Complex:
+    """(load,) power as stated, VA."""
+    kva, pf, leading, kw, kvar = demands[:5]
+    return np.asarray((load.power(kva, pf, leading > 0) + kw + 1j * kvar) * 1e3, dtype=np.complex128)
+
+
+def shunt_values(
+    capacitors: Sequence[Capacitor], ids: Sequence[str], nominal_v: Real, cases: Sequence[Case]
+) -> Complex:
     """Admittance of capacitors: Y = jQ/U² at the rated voltage, or the node's nominal where that is blank.
 
     capacitors : (shunt,)
+    ids : (shunt,) of the capacitors, by which a case states what share of one is connected
     nominal_v : (shunt,) float [V] of their nodes
+    cases : (case,)
 
-    Returns : (shunt,) complex [S], per phase or between the wires, which is the same number
+    Returns : (shunt, case) complex [S], (shunt, 1) where all cases are alike; per phase or between the
+        wires, which is the same number
     Source : common practice, no source
     """
     kvar, rated = columns(
         [(c.rating_kvar, math.nan if c.rated_v is None else c.rated_v) for c in capacitors], 2
     )
-    return 1j * kvar * 1e3 / np.where(np.isnan(rated), nominal_v, rated) ** 2
+    whole: Complex = 1j * kvar * 1e3 / np.where(np.isnan(rated), nominal_v, rated) ** 2
+    hung = list(zip(ids, capacitors, strict=True))
+    if not {id for _, id, _ in owned(cases)}.intersection(ids):
+        return whole[:, None] * np.array([[float(k.connected)] for k in capacitors]).reshape(-1, 1)
+    share = np.array([[percent_of(case, id, k) for case in cases] for id, k in hung], dtype=np.float64)
+    return whole[:, None] * share / 100

@@ -11,6 +11,7 @@ from scipy.sparse import csc_array
 from scipy.sparse.linalg import splu
 
 from app.model import assumed
+from app.model.drawing import Own
 from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
 
 ALPHA = {"Cu": 0.00393, "Al": 0.00403}
@@ -35,7 +36,9 @@ class Nodal:
         self.at = {p: k for k, p in enumerate(self.places)}
         self.held = {}
         for s in self.supplies.values():
-            volts = s.nominal_v * s.held_percent * self.case.supply_percent / 1e4
+            own = self.own(s).percent
+            level = self.case.supply_percent if own is None else own
+            volts = s.nominal_v * s.held_percent * level / 1e4
             self.held[self.at[self.find(s.node)]] = cmath.rect(volts, math.radians(s.angle_deg))
         self._build()
 
@@ -117,19 +120,33 @@ class Nodal:
                 current[k] += (self.power(e, voltage[k]) / voltage[k]).conjugate()
         return current
 
+    def own(self, e):
+        """What the case states of this element alone."""
+        id = next(i for i, other in self.drawing.elements.items() if other is e)
+        return self.case.own.get(id, Own())
+
     def power(self, e, volts):
         """Whole power drawn by one attachment at a voltage, VA."""
-        nominal = self.nominal[e.node]
+        nominal, own = self.nominal[e.node], self.own(e)
         if isinstance(e, Capacitor):
             rated = nominal if e.rated_v is None else e.rated_v
-            return -1j * e.rating_kvar * 1e3 * (abs(volts) / rated) ** 2 * e.connected
+            return (
+                -1j
+                * e.rating_kvar
+                * 1e3
+                * (abs(volts) / rated) ** 2
+                * (e.connected if own.percent is None else own.percent / 100)
+            )
         if isinstance(e, Generator):
-            return -complex(e.output_kw, e.output_kvar) * 1e3 * self.case.generation_percent / 100
+            made = self.case.generation_percent if own.percent is None else own.percent
+            return -complex(e.output_kw, e.output_kvar) * 1e3 * made / 100
         if isinstance(e, Motor):
             return self.motor_power(e, abs(volts) / (e.rated_v or nominal))
-        kva = e.demand_kva if e.demand_kva is not None else e.demand_kw / e.power_factor
-        phi = math.acos(e.power_factor) * (-1 if e.leading else 1)
-        whole = cmath.rect(kva * 1e3 * self.case.load_percent / 100, phi)
+        factor = e.power_factor if own.power_factor is None else own.power_factor
+        kva = e.demand_kva if e.demand_kva is not None else e.demand_kw / factor
+        phi = math.acos(factor) * (-1 if e.leading else 1)
+        share = self.case.load_percent if own.percent is None else own.percent
+        whole = cmath.rect(kva * 1e3 * share / 100, phi)
         i, z = (e.constant_current_percent or 0) / 100, (e.constant_impedance_percent or 0) / 100
         level = abs(volts) / (e.reference_v or nominal)
         return whole * (1 - i - z + i * level + z * level**2)
@@ -139,6 +156,7 @@ class Nodal:
         whole = e.rated_kw * 1e3 / e.efficiency / e.power_factor
         if e.state == "running":
             percent = self.case.load_percent if self.case.motor_percent is None else self.case.motor_percent
+            percent = percent if self.own(e).percent is None else self.own(e).percent
             return cmath.rect(whole * percent / 100, math.acos(e.power_factor))
         if e.state == "off":
             return 0j
