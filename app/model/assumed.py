@@ -5,6 +5,7 @@ import math
 from bisect import bisect_left
 from dataclasses import dataclass
 
+from app.model import conductors
 from app.model.fields import fields_of
 from app.model.kinds import (
     Cable,
@@ -14,6 +15,7 @@ from app.model.kinds import (
     Line,
     Load,
     Motor,
+    OverheadLine,
     Regulator,
     Supply,
     Transformer,
@@ -65,11 +67,21 @@ def blank(element: Element, nominal_v: float = math.nan) -> tuple[Blank, ...]:
 def unconfirmed(element: Element) -> tuple[Blank, ...]:
     """Every figure that came with a built-in part and that nobody has confirmed since."""
     kind = fields_of(type(element))
-    return tuple(
+    found = tuple(
         Blank(name, float(given), kind[name].unit, FROM_SHELF)
         for name in element.assumed
         if name in kind and isinstance(given := getattr(element, name), int | float)
     )
+    return _of_spacing(element, found) if isinstance(element, OverheadLine) and element.hung_at_m else found
+
+
+def _of_spacing(line: OverheadLine, found: tuple[Blank, ...]) -> tuple[Blank, ...]:
+    """Without what follows from the spacing, and with the spacing itself, by its mean distance."""
+    used = tuple(b for b in found if b.field not in conductors.FOLLOWING)
+    mean = conductors.mean_distance_m(line)
+    if "hung_at_m" not in line.assumed or math.isnan(mean):
+        return used
+    return (*used, Blank("hung_at_m", mean, "m", f"mean distance between phases, {FROM_SHELF}"))
 
 
 def figures_of(kind: type[Element]) -> tuple[str, ...]:
@@ -90,6 +102,7 @@ def assumable(kind: type[Element]) -> tuple[str, ...]:
 
 
 _ASSUMABLE: dict[type[Element], tuple[str, ...]] = {
+    OverheadLine: ("capacitance_uf_per_km", "temperature_degc", *conductors.STAND_INS),
     Line: ("capacitance_uf_per_km", "temperature_degc"),
     Transformer: (
         "load_loss_w", "no_load_loss_w", "no_load_current_percent", "hold_percent", "bandwidth_percent",
@@ -118,6 +131,8 @@ def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple
     """The assumed value of a blank field and its basis."""
     if isinstance(element, Transformer | Regulator) and field in ("hold_percent", "bandwidth_percent"):
         return _of_changer(element, field)
+    if isinstance(element, OverheadLine) and field in conductors.STAND_INS:
+        return conductors.stand_in(element, field)
     if isinstance(element, Line):
         return _of_line(element, field)
     if isinstance(element, Transformer):
@@ -140,6 +155,8 @@ def _idle(element: Element, field: str) -> bool:
     """Nothing hangs on the field: no starter, no fault level stated, no tap changer that steps by itself."""
     if isinstance(element, Supply):
         return element.fault_level_min_mva is None
+    if isinstance(element, OverheadLine) and field in conductors.STAND_INS:
+        return conductors.is_idle(element, field)
     if isinstance(element, Generator):
         return element.hold_percent is None
     if isinstance(element, Transformer):
@@ -164,6 +181,8 @@ def _of_motor(motor: Motor, field: str) -> tuple[float, str]:
 
 
 def _of_line(line: Line, field: str) -> tuple[float, str]:
+    if field == "capacitance_uf_per_km" and isinstance(line, OverheadLine) and line.hung_at_m:
+        return conductors.capacitance_uf_per_km(line), "from the spacing, by images in the earth"
     if field == "capacitance_uf_per_km":
         return 0.0, "neglected"
     if field != "temperature_degc":

@@ -8,6 +8,7 @@ from typing import Any
 from msgspec import Struct
 
 from app.model import taps
+from app.model.conductors import fault_of_spacing
 from app.model.drawing import Part, Symbol
 from app.model.fields import Field, fields_of
 from app.model.figures import typed
@@ -20,6 +21,7 @@ from app.model.kinds import (
     Generator,
     Load,
     Node,
+    OverheadLine,
     Supply,
     Transformer,
     kind_of,
@@ -216,6 +218,8 @@ def _fault_across(element: Element) -> str | None:
         return _fault_of_transformer(element)
     if isinstance(element, Generator):
         return _fault_of_generator(element)
+    if isinstance(element, OverheadLine):
+        return fault_of_spacing(element)
     return _fault_of_supply(element) if isinstance(element, Supply) else None
 
 

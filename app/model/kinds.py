@@ -19,6 +19,7 @@ from app.model.phasing import (
     ShareB,
     UnitPhases,
 )
+from app.model.spacing import Diameter, Gmr, HungAt, NeutralDiameter, NeutralGmr, Soil
 from app.model.stepping import Band, DropR, DropX, Hold
 
 Point = tuple[float, float]
@@ -145,7 +146,15 @@ class Cable(Line, frozen=True, kw_only=True, tag="cable"):
 
 
 class OverheadLine(Line, frozen=True, kw_only=True, tag="overhead_line"):
-    """An overhead line between two nodes."""
+    """An overhead line between two nodes; where it states what hangs on its poles, its reactance and its zero
+    sequence follow from that."""
+
+    hung_at_m: HungAt = ""
+    gmr_mm: Gmr = None
+    diameter_mm: Diameter = None
+    neutral_gmr_mm: NeutralGmr = None
+    neutral_diameter_mm: NeutralDiameter = None
+    soil_ohm_m: Soil = None
 
 
 class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):

@@ -10,6 +10,7 @@ from app.model.fields import Field, fields_of
 from app.model.figures import stated, typed
 from app.model.kinds import AnyElement, Load, Supply, Transformer
 from app.model.levels import TWO_WIRE, nominal_levels
+from app.model.spacing import in_metres
 from app.model.units import UnitError, parse, parse_ratio
 
 YES = ("yes", "true", "on", "1", "y", "closed", "connected", "leading")
@@ -66,6 +67,8 @@ def _read(one: AnyElement, about: Field, text: str) -> dict[str, Any]:
         return _both_windings(text, about)
     if isinstance(one, Transformer) and about.name == "tap" and text.endswith("%"):
         return {about.name: _notch(one, text)}
+    if about.name == "hung_at_m":
+        return {about.name: in_metres(text)}
     try:
         return {about.name: value_of(about, text)}
     except UnitError:

@@ -51,11 +51,16 @@ TABLES: dict[str, tuple[str, Scale]] = {
     "notch": ("a notch", _scale("notch notches 1")),
     "°C": ("a temperature", _scale("°C degC C 1")),
 }
+TABLES["mm"] = ("a length", {word: factor * 1000 for word, factor in LENGTH.items()})
 TABLES["notches"] = TABLES["notch"]
 TABLES["% of nominal"] = TABLES["% of rated"] = TABLES["%"]
 TABLES["× rated"] = ("a multiple of the rated current", _scale("× x times 1; % 0.01"))
 OHM = _scale("Ω ohm ohms 1; mΩ mohm 0.001; kΩ kohm 1000; µΩ uΩ uohm 0.000001; MΩ Mohm 1000000")
 TABLES["Ω"] = ("a resistance", OHM)
+TABLES["Ω·m"] = (
+    "a resistivity",
+    _scale("Ω·m Ωm ohm·m ohm-m ohmm Ω-m 1; kΩ·m kΩm 1000; Ω·cm Ωcm ohm·cm 0.01"),
+)
 FARAD = _scale("µF uF 1; nF 0.001; pF 0.000001; mF 1000; F 1000000; MF 1000000000000")
 PER_LENGTH = {
     "Ω/km": ("a resistance or reactance per length", OHM),
@@ -189,7 +194,7 @@ def _allowed(unit: str) -> str:
     others = {
         "m": "m, km, ft, in, yd or mi", "mm²": "mm², AWG or kcmil", "V": "V or kV", "kVA": "VA, kVA or MVA",
         "kW": "W, kW, MW or hp", "W": "W or kW", "kvar": "var, kvar or Mvar", "A": "A or kA",
-        "kA": "A or kA", "Ω": "Ω, mΩ or kΩ",
+        "kA": "A or kA", "Ω": "Ω, mΩ or kΩ", "mm": "mm, cm, in or ft", "Ω·m": "Ω·m or kΩ·m",
         "Ω/km": "Ω/km, mΩ/m, Ω/kft or Ω/mi", "µF/km": "µF/km, nF/km or µF/mi", "°C": "°C, °F or K",
     }.get(unit, unit)  # fmt: skip
     return f"a number with or without its unit ({others})" if others else "a number"
@@ -230,6 +235,7 @@ def show(value: float, unit: str, habit: str) -> str:
 
 _AMERICAN = {
     "m": (1 / 0.3048, "ft"),
+    "mm": (1 / 25.4, "in"),
     "Ω/km": (0.3048, "Ω/kft"),
     "µF/km": (1.609344, "µF/mi"),
     "°C": (1.8, "°F"),

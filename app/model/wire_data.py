@@ -1,14 +1,18 @@
 """What stands in for data that only phases and neutral need, and on what basis; listed only with these."""
 
+from app.model.conductors import has_neutral
 from app.model.fault_data import LOW_V, Put
 from app.model.kinds import Line
 
 
 def neutral_of(line: Line, nominal_v: float, single_phase: bool) -> str:
-    """Its neutral: `carried`, `earthed along` or `none`, where the drawing says `usual` by its level."""
+    """Its neutral: `carried`, `earthed along` or `none`, where the drawing says `usual` by its level; above
+    1 kV it is earthed along where the spacing has one."""
     if line.neutral != "usual":
         return line.neutral
-    return "carried" if single_phase or nominal_v <= LOW_V else "none"
+    if single_phase or nominal_v <= LOW_V:
+        return "carried"
+    return "earthed along" if has_neutral(line) else "none"
 
 
 def neutral_value(line: Line, field: str) -> float | Put:
