@@ -7,6 +7,7 @@ from app.model.drawing import Drawing
 from app.model.fields import fields_of
 from app.model.figures import amps, plain, typed
 from app.model.kinds import KIND_WORDS, Branch, Regulator, Transformer, kind_of
+from app.printed_wires import wire_tables
 from app.study.cautions import CAUTIONS
 from app.study.fault_basis import BASIS
 from app.study.fault_devices import devices
@@ -34,6 +35,13 @@ NODE_COLUMNS: tuple[Column, ...] = (
     ("V", level),
     ("% nom.", figure("percent", 2)),
     ("angle °", figure("angle_deg", 2)),
+    ("drop %", figure("drop_percent", 2)),
+    ("route m", figure("route_m", 0)),
+)
+WIRED_NODE_COLUMNS: tuple[Column, ...] = (  # where phases are solved one by one
+    ("nominal V", figure("nominal_v", 0)),
+    ("% lowest", figure("percent", 2)),
+    ("% highest", figure("high_percent", 2)),
     ("drop %", figure("drop_percent", 2)),
     ("route m", figure("route_m", 0)),
 )
@@ -91,11 +99,14 @@ def _revision(revision: str) -> str:
 
 
 def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]:
+    nodes = NODE_COLUMNS if outcome.wires is None else WIRED_NODE_COLUMNS
+    wires = wire_tables(drawing, outcome, case)
     return [
         f"Case: {name}",
-        _table(drawing, "Nodes", outcome.nodes, NODE_COLUMNS, case),
+        _table(drawing, "Nodes", outcome.nodes, nodes, case),
         _table(drawing, "Branches", outcome.branches, BRANCH_COLUMNS, case),
         _table(drawing, "Loads and infeeds", outcome.attachments, ATTACHMENT_COLUMNS, case),
+        *(f"{title}\n{aligned(lines, figures)}" for title, lines, figures in wires),
         _starts(drawing, outcome, case),
         _balance(outcome, case),
     ]

@@ -9,7 +9,7 @@ import numpy as np
 from app.model.drawing import Drawing
 from app.model.kinds import kind_of
 from app.study.cautions import CAUTIONS
-from app.study.outcome import Outcome, Table
+from app.study.outcome import Outcome, Table, Wired
 from app.study.start_table import StartTable
 
 
@@ -38,6 +38,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "branches": _rows(drawing, outcome.branches),
         "attachments": _rows(drawing, outcome.attachments),
         **({} if outcome.starts is None else {"starts": _starts(drawing, outcome.starts)}),
+        **({} if outcome.wires is None else _wires(drawing, outcome.wires)),
         **({} if outcome.faults is None else {"faults": _rows(drawing, outcome.faults)}),
         "findings": [{k: _plain(v) for k, v in _finding(f).items()} for f in outcome.findings],
         "assumptions": [{k: _plain(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
@@ -56,6 +57,15 @@ def _rows(drawing: Drawing, table: Table[Any]) -> dict[str, dict[str, Any]]:
             told[name] = _plain(column[row])
         found[id] = told
     return found
+
+
+def _wires(drawing: Drawing, wired: Wired) -> dict[str, dict[str, dict[str, Any]]]:
+    """Volts and amperes conductor by conductor, under keys of their own."""
+    return {
+        "node_wires": _rows(drawing, wired.nodes),
+        "branch_wires": _rows(drawing, wired.branches),
+        "attachment_wires": _rows(drawing, wired.attachments),
+    }
 
 
 def _starts(drawing: Drawing, table: StartTable) -> dict[str, dict[str, Any]]:
