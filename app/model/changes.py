@@ -21,6 +21,7 @@ from app.model.checks import (
 from app.model.drawing import Case, Drawing, Limits
 from app.model.fields import fields_of
 from app.model.figures import typed
+from app.model.following import fault_of_followed
 from app.model.kinds import AnyElement, Attachment, Branch, Busbar, Element, Load, Node, Transformer
 
 Kind = TypeVar("Kind", bound=Struct)
@@ -50,7 +51,7 @@ def put(drawing: Drawing, fresh: Mapping[str, Element]) -> Drawing:
     elements: dict[str, AnyElement] = {**drawing.elements, **cast(dict[str, AnyElement], fresh)}
     for id, one in fresh.items():
         refuse_if(fault_of_id(id) or fault(id, one) or misfit(elements, id, one))
-        refuse_if(fault_of_part(drawing.parts, id, one))
+        refuse_if(fault_of_part(drawing.parts, id, one) or fault_of_followed(drawing.profiles, id, one))
     ousted = {
         i for i in fresh if isinstance(drawing.elements.get(i), Node) and not isinstance(fresh[i], Node)
     }

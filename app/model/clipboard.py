@@ -10,8 +10,11 @@ from app.model.by_case import said_of, taken_over
 from app.model.changes import element, ends, put
 from app.model.checks import EditRefused
 from app.model.drawing import Drawing, Own, Part
+from app.model.following import Follower
 from app.model.keeping import carried
 from app.model.kinds import LETTERS, AnyElement, Attachment, Branch, Element, Joint, Node, kind_of
+from app.model.profile_edits import carry_profiles
+from app.model.profiles import Profile
 
 
 class Clip(Struct, frozen=True, kw_only=True):
@@ -22,6 +25,7 @@ class Clip(Struct, frozen=True, kw_only=True):
     y: float = 0.0
     elements: dict[str, AnyElement] = held(default_factory=dict)
     parts: dict[str, Part] = held(default_factory=dict)
+    profiles: dict[str, Profile] = held(default_factory=dict)
     own: dict[str, dict[str, Own]] = held(default_factory=dict)
 
 
@@ -41,7 +45,10 @@ def copy(drawing: Drawing, ids: Iterable[str]) -> Clip:
     nodes = [e for e in kept.values() if isinstance(e, Node)]
     parts = {i: drawing.parts[i] for i in sorted({e.part for e in kept.values() if e.part})}
     x, y = _middle(n.x for n in nodes), _middle(n.y for n in nodes)
-    return Clip(x=x, y=y, elements=kept, parts=parts, own=said_of(drawing.cases, kept))
+    named = {getattr(e, "profile", "") for e in kept.values()}
+    profiles = {name: one for name, one in drawing.profiles.items() if name in named}
+    said = said_of(drawing.cases, kept)
+    return Clip(x=x, y=y, elements=kept, parts=parts, own=said, profiles=profiles)
 
 
 def _middle(along: Iterable[float]) -> float:
@@ -55,13 +62,17 @@ def paste(drawing: Drawing, clip: Clip, x: float, y: float, node: str | None = N
     names = {}
     for id, part in clip.parts.items():
         drawing, names[id] = carried(drawing, part)
+    drawing, profiles = carry_profiles(drawing, clip.profiles)
     fresh, bound = _fresh_ids(drawing, clip), {}
     if node is not None and _hangs_on_one_joint(clip):
         bound = {end: node for one in clip.elements.values() for end in ends(one)}
     placed: dict[str, Element] = {}
     for id, one in clip.elements.items():
         if id not in bound:
-            placed[fresh[id]] = _placed(one, {**fresh, **bound}, names, x - clip.x, y - clip.y)
+            made = _placed(one, {**fresh, **bound}, names, x - clip.x, y - clip.y)
+            if isinstance(made, Follower):
+                made = replace(made, profile=profiles.get(made.profile, made.profile))
+            placed[fresh[id]] = made
     return taken_over(put(drawing, placed), clip.own, fresh)
 
 

@@ -7,6 +7,7 @@ from msgspec import field as held
 
 from app.model.fields import field, plain, text
 from app.model.kinds import LETTERS, AnyElement, Attachment, Branch, Element, Node, Point
+from app.model.profiles import Profile, Year
 
 
 class Project(Struct, frozen=True, kw_only=True):
@@ -143,6 +144,8 @@ class Drawing(Struct, frozen=True, kw_only=True):
     cases: tuple[Case, ...] = (Case(),)
     elements: dict[str, AnyElement] = held(default_factory=dict)
     parts: dict[str, Part] = held(default_factory=dict)
+    year: Year = Year()
+    profiles: dict[str, Profile] = held(default_factory=dict)
     kept: dict[str, Any] = held(default_factory=dict)
 
     def nodes(self) -> dict[str, Node]:

@@ -25,6 +25,7 @@ from app.model.hanging import free_place
 from app.model.keeping import carried, forget_part, keep_part, rename_part, set_symbol
 from app.model.parts import made_from
 from app.model.typing_in import change_text
+from app.model.profile_edits import follow, put_profile, remove_profile, rename_profile, set_year
 
 __all__ = [
     "Change",
@@ -39,6 +40,7 @@ __all__ = [
     "drop",
     "extend",
     "forget_part",
+    "follow",
     "free_place",
     "join",
     "keep_part",
@@ -47,13 +49,16 @@ __all__ = [
     "paste",
     "put",
     "reattach",
+    "put_profile",
     "reconnect",
     "remake",
     "remove",
     "remove_case",
     "rename",
+    "remove_profile",
     "rename_part",
     "reroute",
+    "rename_profile",
     "set_case",
     "set_frequency",
     "set_limits",
@@ -63,5 +68,6 @@ __all__ = [
     "set_tap",
     "split_branch",
     "swap_ends",
+    "set_year",
     "turn_bar",
 ]

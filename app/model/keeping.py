@@ -5,6 +5,7 @@ from msgspec.structs import replace
 from app.model.changes import element, refuse_if, with_elements
 from app.model.checks import EditRefused, fault, fault_of_fields, fault_of_symbol, shown
 from app.model.drawing import Drawing, Part, Symbol
+from app.model.following import Follower
 from app.model.kinds import AnyElement, Attachment, Branch, Node
 
 
@@ -15,6 +16,8 @@ def loosened(one: AnyElement) -> AnyElement:
         return replace(bare, x=0.0, y=0.0, nominal_v=None)
     if isinstance(bare, Branch):
         return replace(bare, start="", end="", via=())
+    if isinstance(bare, Follower):
+        bare = replace(bare, profile="")
     return replace(bare, node="") if isinstance(bare, Attachment) else bare
 
 

@@ -19,6 +19,7 @@ from app.model.phasing import (
     ShareB,
     UnitPhases,
 )
+from app.model.profiles import Followed
 from app.model.spacing import Diameter, Gmr, HungAt, NeutralDiameter, NeutralGmr, Soil
 from app.model.stepping import Band, DropR, DropX, Hold
 
@@ -256,6 +257,7 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
         float, field("Held at", "% of nominal", gt=0, le=200, help="Voltage at the supply point.")
     ] = 100.0
     angle_deg: Annotated[float, field("Angle", "°", ge=-360, le=360)] = 0.0
+    profile: Followed = ""
     wires: Annotated[
         Literal["three-phase", "two-wire", "split-phase"],
         plain(
@@ -295,6 +297,7 @@ class Load(Attachment, frozen=True, kw_only=True, tag="load"):
 
     demand_kva: Annotated[float, field("Demand", "kVA", ge=0, le=1e6)] | None = 10.0
     demand_kw: Annotated[float, field("Demand", "kW", ge=0, le=1e6)] | None = None
+    profile: Followed = ""
     power_factor: Annotated[float, field("Power factor", "", ge=0, le=1)] = 0.95
     leading: Annotated[bool, plain("Leading", help="Current ahead of voltage.")] = False
     constant_current_percent: Annotated[float, field("Constant current", "%", ge=0, le=100)] | None = None
@@ -340,6 +343,7 @@ class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
         Annotated[float, field("Power factor so", "", gt=0, le=1, help="While the starter limits.")] | None
     ) = None
     state: Annotated[Literal["running", "starting", "off"], plain("State")] = "running"
+    profile: Followed = ""
     phases: Phases = "all"
 
 
@@ -350,6 +354,7 @@ class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     output_kvar: Annotated[
         float, field("Reactive output", "kvar", ge=-1e6, le=1e6, help="Positive feeds in, negative absorbs.")
     ] = 0.0
+    profile: Followed = ""
     hold_percent: (
         Annotated[
             float, field("Holds", "% of nominal", gt=0, le=200, help="Volts. Blank: fixed reactive output.")

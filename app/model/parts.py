@@ -30,9 +30,9 @@ from app.model.kinds import (
     Transformer,
 )
 from app.model.raw import raw_object
-from app.model.reading import MOST_PARTS, elements_from, own_from, part_from, parts_from
+from app.model.reading import MOST_PARTS, elements_from, own_from, part_from, parts_from, profiles_from
 from app.model.versions import CURRENT
-from app.model.writing import body, element_body, line, listed, part_body
+from app.model.writing import body, element_body, line, listed, part_body, profiles_text
 
 Unbound: dict[str, Any] = {"start": "", "end": ""}
 
@@ -173,7 +173,8 @@ def encode_clip(clip: Clip) -> bytes:
     if clip.own:
         said = {case: {i: body(one) for i, one in own.items()} for case, own in clip.own.items()}
         head += f',\n"own": {line(said)}'
-    return f'{{\n{head},\n"elements": {elements},\n"parts": {parts}\n}}\n'.encode()
+    carried = f',\n"profiles": {profiles_text(clip.profiles)}' if clip.profiles else ""
+    return f'{{\n{head},\n"elements": {elements},\n"parts": {parts}{carried}\n}}\n'.encode()
 
 
 def decode_clip(data: bytes) -> Clip:
@@ -181,10 +182,12 @@ def decode_clip(data: bytes) -> Clip:
     try:
         raw = raw_object(data, "farend_clip", "clip")
         parts = parts_from(raw.get("parts", []))
-        elements = elements_from(raw.get("elements", []), parts)
+        profiles = profiles_from(raw)
+        elements = elements_from(raw.get("elements", []), parts, profiles)
         said = raw.get("own", {})
         own = {case: own_from(one, case) for case, one in said.items()} if isinstance(said, dict) else {}
-        return Clip(x=_spot(raw, "x"), y=_spot(raw, "y"), elements=elements, parts=parts, own=own)
+        x, y = _spot(raw, "x"), _spot(raw, "y")
+        return Clip(x=x, y=y, elements=elements, parts=parts, own=own, profiles=profiles)
     except FileError as error:
         raise FileError(sentence("The clip", str(error))) from None
 

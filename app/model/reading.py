@@ -24,7 +24,9 @@ from app.model.checks import (
 from app.model.drawing import Case, Drawing, Limits, Own, Part, Project, Symbol
 from app.model.errors import FileError
 from app.model.fields import fields_of
+from app.model.following import fault_of_followed, fault_of_profiles, fault_of_year
 from app.model.kinds import KIND_WORDS, KINDS, AnyElement, Attachment, Branch, Element
+from app.model.profiles import Profile, Year
 
 DEEPEST = 40
 MOST_PARTS = 1000
@@ -34,11 +36,14 @@ Kind = TypeVar("Kind", bound=Struct)
 def drawing_from(raw: dict[str, Any]) -> Drawing:
     """The drawing in a file's object."""
     parts = parts_from(raw.get("parts", []))
-    elements = elements_from(raw.get("elements", []), parts)
+    profiles = profiles_from(raw)
+    elements = elements_from(raw.get("elements", []), parts, profiles)
     frequency = raw.get("frequency_hz", Drawing().frequency_hz)
     cases = tuple(_case_from(one, f"Case {n}") for n, one in enumerate(_list(raw, "cases", [{}]), 1))
     limits = struct_from(Limits, raw.get("limits", {}), "Limits")
+    year = struct_from(Year, raw.get("year", {}), "Year")
     _refuse_if(fault_of_frequency(frequency) or fault_of_cases(cases, elements) or fault_of_limits(limits))
+    _refuse_if(fault_of_year(profiles, year))
     return Drawing(
         project=struct_from(Project, raw.get("project", {}), "Project"),
         frequency_hz=float(frequency),
@@ -46,6 +51,8 @@ def drawing_from(raw: dict[str, Any]) -> Drawing:
         cases=cases,
         elements=elements,
         parts=parts,
+        year=year,
+        profiles=profiles,
         kept=_kept(raw, _known(Drawing) | {"farend"}, "The file"),
     )
 
@@ -71,7 +78,9 @@ def _list(raw: Mapping[str, Any], key: str, default: list[Any]) -> list[Any]:
     return found
 
 
-def elements_from(found: Any, parts: Mapping[str, Part]) -> dict[str, AnyElement]:
+def elements_from(
+    found: Any, parts: Mapping[str, Part], profiles: Mapping[str, Profile]
+) -> dict[str, AnyElement]:
     """The elements of a file, each checked by itself and then against the others."""
     elements: dict[str, AnyElement] = {}
     for number, one in enumerate(_list({"elements": found}, "elements", []), 1):
@@ -87,6 +96,7 @@ def elements_from(found: Any, parts: Mapping[str, Part]) -> dict[str, AnyElement
         elements[id] = element_from(one, id)
     for id, element in elements.items():
         _refuse_if(misfit(elements, id, element) or fault_of_part(parts, id, element))
+        _refuse_if(fault_of_followed(profiles, id, element))
     return elements
 
 
@@ -143,6 +153,27 @@ def parts_from(found: Any) -> dict[str, Part]:
             raise FileError(f"The id {shown(id)} is given to two parts, allowed is one.")
         parts[id] = part_from(one, id)
     return parts
+
+
+def profiles_from(raw: Mapping[str, Any]) -> dict[str, Profile]:
+    """The profiles that a file or clip carries, by name."""
+    profiles: dict[str, Profile] = {}
+    for number, one in enumerate(_list(raw, "profiles", []), 1):
+        name = one.get("name") if isinstance(one, dict) else None
+        if not isinstance(name, str):
+            raise FileError(f"Profile {number}: name is missing, allowed is text such as household.")
+        if name in profiles:
+            raise FileError(f"The name {shown(name)} is given to two profiles, allowed is one.")
+        if not isinstance(one.get("percent"), list):
+            raise FileError(
+                f"Profile {shown(name)}: percent is {shown(one.get('percent'))}, "
+                "allowed is a list of numbers."
+            )
+        values = {k: v for k, v in one.items() if k != "name"}
+        made = struct_from(Profile, values, f"Profile {shown(name)}")
+        profiles[name] = structs.replace(made, percent=tuple(map(float, made.percent)))
+    _refuse_if(fault_of_profiles(profiles))
+    return profiles
 
 
 def part_from(raw: Any, where: str) -> Part:

@@ -90,7 +90,7 @@ def shape(name: str, load_factor: float | None = None) -> Profile:
     factor = made.load_factor if load_factor is None else load_factor
     scaled = drawn if name == "flat" and load_factor is None else to_load_factor(drawn, factor)
     values = tuple(round(value, 2) for value in scaled.percent)
-    source = f"{INVENTED}: {made.words}; load factor {factor:.2f}"
+    source = f"{INVENTED}: {made.words}"
     return replace(scaled, percent=values, source=source)
 
 

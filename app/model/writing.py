@@ -11,10 +11,12 @@ from msgspec import NODEFAULT, UNSET, Struct, structs
 from app.model.drawing import Drawing, Part
 from app.model.fields import fields_of
 from app.model.kinds import AnyElement, kind_of
+from app.model.profiles import Profile, Year
 from app.model.versions import CURRENT
 
 _ENCODER = json.JSONEncoder(ensure_ascii=False, allow_nan=False)
 _BLANK = (None, "", ())
+VALUES = 24  # of a profile, on one line
 
 
 def drawing_text(drawing: Drawing) -> str:
@@ -29,6 +31,10 @@ def drawing_text(drawing: Drawing) -> str:
         f'"elements": {listed(element_body(i, e) for i, e in drawing.elements.items())}',
         f'"parts": {listed(part_body(i, p) for i, p in drawing.parts.items())}',
     ]
+    if drawing.year != Year():
+        lines.append(f'"year": {line(body(drawing.year))}')
+    if drawing.profiles:
+        lines.append(f'"profiles": {profiles_text(drawing.profiles)}')
     return "{\n" + ",\n".join(lines) + "\n}\n"
 
 
@@ -52,12 +58,24 @@ def part_body(id: str, part: Part) -> dict[str, Any]:
     return made | _unless_known(part.kept, Part, "id")
 
 
+def profiles_text(profiles: Mapping[str, Profile]) -> str:
+    """A list of profiles, each with its values a day of hours a line."""
+    return "[\n" + ",\n".join(_profile_text(name, one) for name, one in profiles.items()) + "\n]"
+
+
+def _profile_text(name: str, profile: Profile) -> str:
+    head = line({"name": name, **body(profile, ("name", "percent"))}).removesuffix("}")
+    values = profile.percent
+    rows = (line(_plain(values[i : i + VALUES])) for i in range(0, len(values), VALUES))
+    return f'{head}, "percent": [\n' + ",\n".join(row[1:-1] for row in rows) + "\n]}"
+
+
 def body(struct: Struct, reserved: tuple[str, ...] = ()) -> dict[str, Any]:
     """The fields of a struct and the foreign keys it keeps."""
     made = {}
     for name, left_out in _fields(type(struct)):
         value = getattr(struct, name)
-        if value not in left_out:
+        if name not in reserved and value not in left_out:
             made[name] = _plain(value)
     kept = struct.kept  # type: ignore[attr-defined]
     return made | _unless_known(kept, type(struct), *reserved) if kept else made
