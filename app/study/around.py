@@ -147,6 +147,7 @@ def _per_unit(drawing: Drawing, layout: Layout, zones: Zones, row: int) -> compl
         return complex(r, math.sqrt(max(uk**2 - r**2, 0.0))) / _rating_va(layout, row)
     if isinstance(branch, Line):
         two_wire = zones.two_wire[[layout.tree[layout.start[row]]]]
-        z = complex(line_values([branch], two_wire, drawing.frequency_hz)[0][0])
-        return z / float(zones.nominal_v[layout.zone[layout.start[row]]]) ** 2
+        nominal = zones.nominal_v[[layout.zone[layout.start[row]]]]
+        z = complex(line_values([branch], two_wire, drawing.frequency_hz, nominal)[0][0])
+        return z / float(nominal[0]) ** 2
     return 0j

@@ -6,18 +6,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import assumed, taps
+from app.model.conductors import has_neutral
 from app.model.drawing import Drawing, Limits
 from app.model.fault_data import LOW_V, Put, fault_value, star_earth_ohm
 from app.model.fields import fields_of
-from app.model.kinds import Element, Line, Supply, Switch, Transformer
+from app.model.kinds import Element, Line, OverheadLine, Supply, Switch, Transformer
+from app.model.wire_data import neutral_value
 from app.study.graph import NONE, Layout, arrays_of
 from app.study.outcome import Assumption
+from app.study.overhead import sequence_of, series_of
 from app.study.zones import Zones
 from solver import fault, line, transformer
 from solver.sequence import Sequence
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
+NEUTRAL_R = "neutral_resistance_ohm_per_km"
 EQUIVALENT = 0.4  # frequency at which R/X of a ring is taken, over the system's: 20 of 50 Hz, IEC 60909-0 8.1
 
 
@@ -192,6 +196,9 @@ class _Made:
         nominal, two_wire = float(self._nominal[ends[0]]), bool(self._two_wire[ends[0]])
         hot, alpha = self._value(id, run, "fault_degc", nominal), line.ALPHA[run.conductor]
         degrees = np.array([20.0, hot, 20.0])
+        if isinstance(run, OverheadLine) and run.hung_at_m:
+            self._hung_line(id, run, ends, degrees)
+            return
         z = line.series(
             run.resistance_ohm_per_km,
             run.reactance_ohm_per_km,
@@ -208,6 +215,18 @@ class _Made:
                 for name in ("zero_resistance_ohm_per_km", "zero_reactance_ohm_per_km")
             )
             self.zero.branch(ends, line.series(r0, x0, run.length_m, degrees[:2], alpha, run.side_by_side))
+
+    def _hung_line(self, id: str, run: OverheadLine, ends: tuple[int, int], degrees: Real) -> None:
+        """Both sequences from the spacing; a neutral that hangs there without its resistance is assumed."""
+        nominal, two_wire = float(self._nominal[ends[0]]), bool(self._two_wire[ends[0]])
+        if has_neutral(run) and isinstance(put := neutral_value(run, NEUTRAL_R), Put):
+            self.assumptions.append(Assumption(id, NEUTRAL_R, put.value, "Ω/km", put.basis))
+        how = self._frequency, nominal
+        one = np.array([series_of(run, two_wire, *how, float(at)) for at in degrees], np.complex128)
+        self.one.branch(ends, _with_equivalent(one))
+        if not two_wire:
+            zero = np.array([sequence_of(run, *how, float(at))[1] for at in degrees[:2]], np.complex128)
+            self.zero.branch(ends, zero * run.length_m / 1e3 / run.side_by_side)
 
     def transformer(self, id: str, t: Transformer, ends: tuple[int, int]) -> None:
         rating, pk = t.rating_kva * 1e3, assumed.value(t, "load_loss_w")

@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from app.model.conductors import is_hung
 from app.model.kinds import Attachment, Branch, Line, Node, Regulator, Switch
 from solver import Forest, Trouble
 
@@ -124,7 +125,6 @@ def is_bare(branch: Branch) -> bool:
     Returns : bool
     """
     if isinstance(branch, Line):
-        return branch.length_m == 0 or (
-            branch.resistance_ohm_per_km == 0 and branch.reactance_ohm_per_km == 0
-        )
+        nothing = branch.resistance_ohm_per_km == 0 and branch.reactance_ohm_per_km == 0
+        return branch.length_m == 0 or (nothing and not is_hung(branch))
     return isinstance(branch, Regulator | Switch)

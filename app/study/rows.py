@@ -69,7 +69,7 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     phases, wide = np.where(two_wire, 1.0, 3.0), np.where(two_wire, 1.0, ROOT3)
     kinds, sources = _sort(layout, drawing), np.array(layout.supplies, dtype=np.intp)
     lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts
-    line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]])
+    line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]], nominal[start[lines]])
     ratio, unit_z, unit_y = _with_regulators(
         transformer_values(_of(layout.branches, np.array(layout.units, dtype=np.intp))), units
     )
@@ -104,14 +104,14 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
 
 
 def _lines(
-    drawing: Drawing, layout: Layout, rows: Index, two_wire: NDArray[np.bool_]
+    drawing: Drawing, layout: Layout, rows: Index, two_wire: NDArray[np.bool_], nominal_v: Real
 ) -> tuple[Complex, Complex]:
     """Impedance and admittance; zero where the row is a closed switch."""
     branches = [layout.branches[i] for i in rows]
     real = np.array([isinstance(b, Line) for b in branches], dtype=bool)
     z, y = np.zeros(len(rows), dtype=np.complex128), np.zeros(len(rows), dtype=np.complex128)
     lines = [b for b in branches if isinstance(b, Line)]
-    z[real], y[real] = line_values(lines, two_wire[real], drawing.frequency_hz)
+    z[real], y[real] = line_values(lines, two_wire[real], drawing.frequency_hz, nominal_v[real])
     return z, y
 
 

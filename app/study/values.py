@@ -8,9 +8,11 @@ from numpy.typing import NDArray
 
 from app.model import assumed, taps
 from app.model.by_case import as_in, owned, percent_of
+from app.model.conductors import is_hung
 from app.model.drawing import Case
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Supply, Transformer
 from app.study.memory import Columns
+from app.study.overhead import put_in
 from solver import line, load, motor, transformer
 
 Real = NDArray[np.float64]
@@ -40,27 +42,31 @@ def _line_row(run: Line) -> Row:
         alpha,
         run.side_by_side,
         c,
+        is_hung(run),
     )
 
 
-_lines: Columns[Line] = Columns(_line_row, 7)
+_lines: Columns[Line] = Columns(_line_row, 8)
 
 
 def line_values(
-    lines: Sequence[Line], two_wire: NDArray[np.bool_], frequency_hz: float
+    lines: Sequence[Line], two_wire: NDArray[np.bool_], frequency_hz: float, nominal_v: Real
 ) -> tuple[Complex, Complex]:
-    """Series impedance and shunt admittance of whole lines, parallel runs merged.
+    """Series impedance and shunt admittance of whole lines, parallel runs merged; where a line states its
+    spacing, out of that.
 
     lines : (line,) cables and overhead lines
     two_wire : (line,) bool; there the impedance counts out and back, and the capacitance, stated from one
         wire to the neutral plane, counts half
     frequency_hz : float [Hz]
+    nominal_v : (line,) float [V]
 
     Returns : z (line,) complex [ohm], y (line,) complex [S]
-    Source : see solver.line
+    Source : see solver.line, overhead
     """
-    r20, x, length, temperature, alpha, runs, c = _lines.of(lines)
+    r20, x, length, temperature, alpha, runs, c, spaced = _lines.of(lines)
     z = line.series(r20, x, length, temperature, alpha, runs, two_wire)
+    put_in(z, np.flatnonzero(spaced), lines, two_wire, frequency_hz, nominal_v)
     return z, line.charging(c, length, frequency_hz, runs, two_wire)
 
 
