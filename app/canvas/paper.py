@@ -116,7 +116,7 @@ class Paper(QGraphicsScene):
         lines, element = wording.caption(drawing, id), drawing.elements[id]
         if self._shown is not None and id in self._shown.outcome.attachments:
             case = drawing.cases[min(self._shown.case, len(drawing.cases) - 1)]
-            lines += wording.attachment_figures(element, case, *self._shown.rows("attachments", id))
+            lines += wording.attachment_figures(id, element, case, *self._shown.rows("attachments", id))
         return self.captions[id].write(lines)
 
     # the figures --------------------------------------------------------------------------------

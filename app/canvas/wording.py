@@ -7,6 +7,7 @@ from typing import Any
 
 from app.canvas.lettering import Line, Run, Style
 from app.model import assumed, figures, taps
+from app.model.by_case import percent_of
 from app.model.drawing import Case, Drawing
 from app.model.kinds import (
     AnyElement,
@@ -183,13 +184,15 @@ def node_figures(state: NodeState, before: NodeState | None) -> Lines:
 
 
 def attachment_figures(
-    element: AnyElement, case: Case, state: AttachmentState, before: AttachmentState | None
+    id: str, element: AnyElement, case: Case, state: AttachmentState, before: AttachmentState | None
 ) -> Lines:
     """What a supply gives; what a load or generator takes or gives where the case scales it."""
-    scaled = case.generation_percent if isinstance(element, Generator) else case.load_percent
-    told = isinstance(element, Supply | Motor) or isinstance(element, Load | Generator) and scaled != 100
+    scaled = isinstance(element, Load | Generator) and percent_of(case, id, element) != 100
+    told = isinstance(element, Supply | Motor) or scaled or id in case.own
     if not told or not state.live:
         return ()
+    if isinstance(element, Capacitor):
+        return ((Run(figures.power(state.kvar, "kvar") if state.kvar else "off"),),)
     line: Line = (Run(figures.power(state.kw)),)
     if before is not None and before.live:
         line += changed(state.kw, before.kw, figures.power)

@@ -1,6 +1,7 @@
 """Edits: pure functions from drawing to drawing. They may refuse, with a reason for people."""
 
 from app.model.by_case import set_own
+from app.model.case_words import set_own_text
 from app.model.changes import (
     change,
     put,
@@ -63,6 +64,7 @@ __all__ = [
     "set_frequency",
     "set_limits",
     "set_own",
+    "set_own_text",
     "set_project",
     "set_symbol",
     "set_tap",

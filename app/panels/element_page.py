@@ -7,10 +7,12 @@ from typing import Any
 from app.canvas.theme import Theme
 from app.live.session import Session
 from app.model import assumed, edits, figures, taps, units
+from app.model.by_case import Scaled
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
 from app.model.levels import nominal_levels
+from app.panels.case_rows import CaseRows
 from app.panels.element_words import step_text, subject
 from app.panels.field_row import VARIOUS, FieldRow, written
 from app.panels.page import Page
@@ -40,6 +42,10 @@ class ElementPage(Page):
         for field in fields:
             self._add(field, self.more if field.name in LESS_ASKED else self)
         self.rows = {**self.rows, **self.more.rows}
+        self.cases: CaseRows | None = None
+        if issubclass(self.kind, Scaled):
+            self.cases = CaseRows(self.kind, self._take_case, theme)
+            self.down.addWidget(self.cases)
 
     def _add(self, field: Field, page: Page) -> None:
         if field.name == "tap":
@@ -76,6 +82,9 @@ class ElementPage(Page):
                 row.show_demand(elements)
             else:
                 self._show(row, name, elements, stand_ins)
+        if self.cases is not None:
+            hung = [(i, e) for i, e in zip(self.ids, elements, strict=True) if isinstance(e, Scaled)]
+            self.cases.show_cases(drawing.cases, hung)
 
     def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
         values = [getattr(element, name) for element in elements]
@@ -116,6 +125,25 @@ class ElementPage(Page):
             return step_text(about, getattr(element, about.name), subject(after, ids))
 
         return self._session.edit(name, change)
+
+    def commit(self) -> None:
+        super().commit()
+        if self.cases is not None:
+            self.cases.commit()
+
+    def forget(self) -> None:
+        super().forget()
+        if self.cases is not None:
+            self.cases.forget()
+
+    def _take_case(self, number: int, text: str) -> str:
+        """What was typed for one case, for every element shown."""
+        ids, case = self.ids, self._session.drawing.cases[number].name
+        made = f"{subject(self._session.drawing, ids)} in case {case}"
+        return self._session.edit(
+            f"{made}: {text.strip() or 'as for all'}",
+            lambda drawing: reduce(lambda d, i: edits.set_own_text(d, number, i, text), ids, drawing),
+        )
 
     def _step(self, notches: int) -> None:
         """One notch up or down on every transformer shown."""

@@ -4,11 +4,16 @@ from collections import Counter
 from collections.abc import Callable
 from typing import Any
 
+from msgspec.structs import replace
+from PySide6.QtWidgets import QHBoxLayout, QPushButton
+
 from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.model import edits
-from app.model.drawing import Case, Drawing, Limits, Project
+from app.model.by_case import Scaled
+from app.model.case_words import told
+from app.model.drawing import Case, Drawing, Limits, Project, label
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, kind_of
 from app.model.typing_in import limit_percent, value_of
@@ -16,6 +21,7 @@ from app.model.units import UnitError
 from app.panels.element_words import many, step_text
 from app.panels.field_row import FieldRow
 from app.panels.page import Page
+from app.panels.style import play
 from app.panels.words import Rule, Sentence, Words
 
 NOT_JUDGED = "not judged"
@@ -34,7 +40,11 @@ class ProjectPage(Page):
         self.add_fields(fields_of(Limits).values(), self._taker(edits.set_limits), "limits.")
         self._head("Drawing")
         self.add_fields([fields_of(Drawing)["frequency_hz"]], self._taker(_set_frequency))
+        self._head("Case")
         self.add_fields(fields_of(Case).values(), self._taker(self._set_case), "case.")
+        self.own = Sentence("quiet")
+        self.down.addWidget(self.own)
+        self._add_links()
         self.counts = Sentence("quiet")
         self.down.addWidget(self.counts)
 
@@ -51,7 +61,37 @@ class ProjectPage(Page):
         for name, row in self.rows.items():
             holder, _, field = name.rpartition(".")
             self._show(row, getattr(holders[holder] if holder else drawing, field))
+        self.own.say(own_words(drawing, case))
+        self.away.setVisible(len(drawing.cases) > 1)
         self.counts.say(drawn(drawing))
+
+    def _add_links(self) -> None:
+        across = QHBoxLayout()
+        self.another, self.away = QPushButton("Another case like this"), QPushButton("Remove this case")
+        self.another.clicked.connect(self._another_case)
+        self.away.clicked.connect(self._remove_case)
+        for button in (self.another, self.away):
+            play(button, "link")
+            across.addWidget(button)
+        across.addStretch(1)
+        self.down.addLayout(across)
+
+    def _another_case(self) -> None:
+        """A copy of the case shown, at the end, and shown."""
+        cases = self._session.drawing.cases
+        names, number = {case.name for case in cases}, len(cases) + 1
+        while f"Case {number}" in names:
+            number += 1
+        made = replace(cases[self._attention.case], name=f"Case {number}")
+        refusal = self._session.edit(made.name, lambda d: edits.set_case(d, len(d.cases), made))
+        if not refusal:
+            self._attention.show_case(len(cases))
+        self.rows["case.name"].refuse(refusal)
+
+    def _remove_case(self) -> None:
+        number = self._attention.case
+        name = self._session.drawing.cases[number].name
+        self._session.edit(f"Remove case {name}", lambda d: edits.remove_case(d, number))
 
     def _show(self, row: FieldRow, value: Any) -> None:
         quiet = "" if value is not None else BLANK.get(row.field.name, NOT_JUDGED)
@@ -73,6 +113,14 @@ class ProjectPage(Page):
 
     def _set_case(self, drawing: Drawing, **fields: Any) -> Drawing:
         return edits.set_case(drawing, self._attention.case, **fields)
+
+
+def own_words(drawing: Drawing, case: int) -> str:
+    """What a case states of single elements: `Otherwise here: House load 5 kVA (6.25 %).`"""
+    shown = drawing.cases[case]
+    hung = [(i, e) for i, e in drawing.elements.items() if i in shown.own and isinstance(e, Scaled)]
+    said = [f"{label(drawing, i)} {told(shown, i, e)}" for i, e in hung]
+    return f"In this case alone: {'; '.join(said)}." if said else ""
 
 
 def _set_frequency(drawing: Drawing, frequency_hz: float) -> Drawing:

@@ -59,7 +59,7 @@ def test_no_arrow_where_nothing_flows(qapp):
 @pytest.mark.parametrize("then", [89.61, 89.1, 90.4, 4.0])
 def test_a_supply_tells_its_change_as_the_head_does(then):
     now, before = (SimpleNamespace(live=True, kw=kw) for kw in (89.57, then))
-    (line,) = wording.attachment_figures(Supply(node="B1"), Case(), now, before)
+    (line,) = wording.attachment_figures("S1", Supply(node="B1"), Case(), now, before)
     said = change(89.57, then, power)
     assert said
     assert words((line,)) == f"{power(89.57)} {said}"

@@ -7,6 +7,7 @@ from msgspec.structs import replace
 
 from app.model import edits
 from app.model.by_case import share_of
+from app.model.case_words import typed_words
 from app.model.drawing import Case, Drawing, Own
 from app.model.edits import EditRefused
 from app.model.file import FileError, decode, encode
@@ -108,3 +109,46 @@ def test_the_elements_that_a_case_states_anew_count_as_touched():
 @pytest.mark.parametrize(("part", "whole"), [(1, 12), (5, 80), (4, 140), (3, 14), (0.1, 0.3), (7, 9.9)])
 def test_kva_typed_in_a_case_come_out_as_they_were_typed(part, whole):
     assert whole * share_of(part, whole) / 100 == pytest.approx(part, rel=2e-16)
+
+
+@pytest.mark.parametrize(
+    ("id", "text", "own", "reads"),
+    [
+        ("L1", "5 kVA", Own(percent=6.25), "5 kVA"),
+        ("L1", " 5 ", Own(percent=6.25), "5 kVA"),
+        ("L1", "5 kVA at 0.98", Own(percent=6.25, power_factor=0.98), "5 kVA at 0.98"),
+        ("L1", "at 0.9", Own(power_factor=0.9), "at 0.9"),
+        ("L1", "7.6 kW", Own(percent=10.0), "8 kVA"),
+        ("L1", "4 kW at 0.5", Own(percent=10.0, power_factor=0.5), "8 kVA at 0.5"),
+        ("L1", "12.5 %", Own(percent=12.5), "10 kVA"),
+        ("L1", "off", Own(percent=0.0), "off"),
+        ("M1", "off", Own(percent=0.0), "off"),
+        ("M1", "on", Own(percent=100.0), "11 kW"),
+        ("K1", "off", Own(percent=0.0), "off"),
+        ("K1", "5 kvar", Own(percent=50.0), "5 kvar"),
+        ("S1", "410 V", Own(percent=102.5), "410 V"),
+        ("S1", "97 %", Own(percent=97.0), "388 V"),
+    ],
+)
+def test_what_is_typed_for_one_case_reads_back(id, text, own, reads):
+    told = edits.set_own_text(YARD, 1, id, text)
+    assert night(told) == {id: own}
+    assert typed_words(told.cases[1], id, told.elements[id]) == reads
+    assert edits.set_own_text(told, 1, id, reads) == told
+    assert edits.set_own_text(told, 1, id, "") == YARD
+
+
+@pytest.mark.parametrize(
+    ("id", "text", "words"),
+    [
+        ("L1", "lots", r'House, L1 \(load\), in case Night: "lots" does not begin with a number'),
+        ("L1", "5 V", "in case Night: .* is not a"),
+        ("L1", "5 at 2", "Power factor is 2, allowed is a number, at least 0 and at most 1, in case Night"),
+        ("L1", "-5", "Share is -6.25 %, allowed is a number, at least 0"),
+        ("S1", "off", 'in case Night: "off" does not begin with a number'),
+        ("C1", "5", "has no share of its own"),
+    ],
+)
+def test_what_cannot_be_read_for_one_case_is_refused(id, text, words):
+    with pytest.raises(EditRefused, match=words):
+        edits.set_own_text(YARD, 1, id, text)

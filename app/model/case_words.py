@@ -1,0 +1,90 @@
+"""What a case states of one element, as people type it and read it: `5 kVA at 0.98`, `off`."""
+
+import re
+
+from msgspec.structs import replace
+
+from app.model import figures
+from app.model.by_case import Scaled, percent_of, set_own, share_of, stated
+from app.model.checks import EditRefused, called
+from app.model.drawing import Case, Drawing
+from app.model.kinds import Capacitor, Load, Motor, Supply
+from app.model.units import UnitError, parse
+
+FACTOR = re.compile(r"(.*?)\s*\b(?:at|pf)\b\s*(.*)", re.IGNORECASE)
+SWITCHED = {"off": 0.0, "on": 100.0}
+
+
+def set_own_text(drawing: Drawing, number: int, id: str, text: str) -> Drawing:
+    """Say what one element is in case `number`, from what was typed: an amount, a share, off or on; of a
+    load its power factor besides, after `at`. Empty: as the case has it for all."""
+    element = drawing.elements.get(id)
+    if not isinstance(element, Scaled):
+        return set_own(drawing, number, id, percent=100.0)  # refuses, in its own words
+    words, factor = text.strip(), None
+    try:
+        if isinstance(element, Load) and (found := FACTOR.fullmatch(words)):
+            words, factor = found[1], parse(found[2], "")
+            element = replace(element, power_factor=factor)
+        percent = _percent(element, words) if words else None
+    except UnitError as error:
+        raise EditRefused(f"{called(id, element)}, in case {drawing.cases[number].name}: {error}") from None
+    return set_own(drawing, number, id, percent=percent, power_factor=factor)
+
+
+def _percent(element: Scaled, words: str) -> float:
+    """The share that was typed, or that an amount makes."""
+    if words.casefold() in SWITCHED and not isinstance(element, Supply):
+        return SWITCHED[words.casefold()]
+    if words.endswith("%"):
+        return parse(words, "%")
+    whole, unit = stated(element)
+    try:
+        part = parse(words, unit)
+    except UnitError:
+        part = _in_the_other(element, words)
+    if not whole:
+        raise UnitError(f"nothing is a share of 0 {unit}, allowed is a percentage.")
+    return share_of(part, whole)
+
+
+def _in_the_other(element: Scaled, words: str) -> float:
+    """kVA of a demand typed in kW, and the other way."""
+    unit = stated(element)[1]
+    if not isinstance(element, Load):
+        return parse(words, unit)
+    try:
+        other = parse(words, "kW" if unit == "kVA" else "kVA")
+    except UnitError:
+        return parse(words, unit)  # raises, in the words of its own unit
+    return other / element.power_factor if unit == "kVA" else other * element.power_factor
+
+
+def typed_words(case: Case, id: str, element: Scaled) -> str:
+    """What a case states of an element, as it would be typed; nothing where it is as for all."""
+    own = case.own.get(id)
+    if own is None:
+        return ""
+    words = "" if own.percent is None else amount(case, id, element)
+    factor = "" if own.power_factor is None else f"at {figures.stated(own.power_factor)}"
+    return f"{words} {factor}".strip()
+
+
+def amount(case: Case, id: str, element: Scaled) -> str:
+    """What an element stands at in a case: `5 kVA`, `off`."""
+    percent, (whole, unit) = percent_of(case, id, element), stated(element)
+    if percent == 0 and isinstance(element, Capacitor | Motor | Load):
+        return "off"
+    return figures.stated(whole * percent / 100, unit)
+
+
+def told(case: Case, id: str, element: Scaled) -> str:
+    """The same in a sentence: `5 kVA (6.25 %), power factor 0.98`."""
+    own = case.own[id]
+    parts = []
+    if own.percent is not None:
+        words = amount(case, id, element)
+        parts.append(words if words == "off" else f"{words} ({figures.stated(own.percent, '%')})")
+    if own.power_factor is not None:
+        parts.append(f"power factor {figures.stated(own.power_factor)}")
+    return ", ".join(parts)
