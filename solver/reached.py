@@ -9,8 +9,8 @@ from solver.forest import Forest
 from solver.joints import joints_of
 from solver.network import Network
 from solver.placed import Placed
-from solver.rounds import neighbours
-from solver.wires import EARTH
+from solver.rounds import Ends, neighbours
+from solver.wires import EARTH, Wires
 
 
 def fed_conductors(network: Network, forest: Forest, placed: Placed) -> Flag:
@@ -73,31 +73,56 @@ def unreferenced(network: Network, forest: Forest) -> Index:
 
     network : Network, with wires
     forest : Forest, of that network
-    Returns : (row,) of transformers
+    Returns : (row,) of transformers; of sides that hang on one another through two earthed stars the first
     Source : common practice, no source
     """
     wires = network.wires
     if wires is None:
         return np.zeros(0, dtype=np.intp)
-    joints = joints_of(network, forest, None)
     zones, supplied = forest.zone_transformer.size, int(forest.depth_zone[1])
     rows = forest.zone_transformer[supplied:]
     side = (forest.transformer_way[rows] < 0).astype(int)
-    held = np.append(np.ones(supplied, dtype=bool), ~wires.units.loose[rows, side, 0].any(axis=-1))
-    ends = dict(enumerate(_met(forest)))
+    earthed = ~wires.units.loose[rows, side, 0].any(axis=-1)
+    blocked = wires.units.loose[rows, side, 1].any(axis=-1)
+    passing = earthed & ~blocked & _passing(wires, rows, side)
+    closing = np.isin(forest.zone_start[supplied:-1], forest.tie_place)
+    held = np.append(np.ones(supplied, dtype=bool), earthed & ~passing & ~(closing & blocked))
+    joints = joints_of(network, forest, None)
     if joints is not None:
         sums = np.zeros(joints.z.shape[0])
         np.add.at(sums, joints.column, joints.weight)
         held[forest.zone[joints.place[np.abs(sums[joints.column]) > 1e-9]]] = True
-    near, reached = neighbours(ends), set(np.flatnonzero(held).tolist())
-    waiting = list(reached)
+    fed = forest.zone[forest.zone_fed[supplied:]]
+    beyond = (supplied + np.flatnonzero(passing)).tolist()
+    pairs = [*_met(forest), *zip(fed[passing].tolist(), beyond, strict=True)]
+    near = neighbours(dict(enumerate(pairs)))
+    reached = _joined(near, np.flatnonzero(held).tolist())
+    lost: list[int] = []
+    for zone in range(supplied, zones):
+        if zone not in reached:
+            lost.append(zone)
+            reached |= _joined(near, [zone])
+    return np.unique(forest.zone_transformer[lost])
+
+
+def _joined(near: dict[int, Ends], first: list[int]) -> set[int]:
+    """All that can be reached from some zones."""
+    reached, waiting = set(first), list(first)
     while waiting:
         for _, other in near.get(waiting.pop(), ()):
             if other not in reached:
                 reached.add(other)
                 waiting.append(other)
-    loose = [zone for zone in range(zones) if zone not in reached]
-    return np.unique(forest.zone_transformer[loose])
+    return reached
+
+
+def _passing(wires: Wires, rows: Index, side: Index) -> Flag:
+    """Whether a zero sequence passes through each transformer, from one earthed star to the other."""
+    units, phases = wires.units, slice(0, 3)
+    sums = units.gain[rows, side, phases, phases].sum(axis=(1, 2))
+    three = units.has[rows][:, :, phases].all(axis=(1, 2))
+    least = 1e-9 * np.abs(units.gain[rows, side]).max(axis=(1, 2))
+    return np.asarray(three & (np.abs(sums) > least).any(axis=-1))
 
 
 def _met(forest: Forest) -> Iterable[tuple[int, int]]:

@@ -4,6 +4,7 @@ from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.figures import typed
 from app.model.kinds import Generator, Joint, Load, Motor, Transformer
+from app.study.earthing import earthing_findings
 from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rings import ring_findings
@@ -32,6 +33,7 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         *_plates(drawing, layout),
         *_dead(drawing, layout),
         *_loose_ends(drawing, layout),
+        *earthing_findings(drawing, layout, zones),
         *stated_voltages(drawing, layout, zones),
     ]
 
