@@ -1,4 +1,4 @@
-"""`farend [FILE]` opens the window; `farend results|sheet|picture FILE` works without a screen."""
+"""`farend [FILE]` opens the window; `farend results|year|sheet|picture FILE` works without a screen."""
 
 import argparse
 import os
@@ -10,6 +10,7 @@ from app.screen import why_no_screen
 
 HEADLESS = """without a window:
   farend results FILE [--json]                   print the results
+  farend year FILE [--json] [-o OUT.csv]         a year of its profiles: energies, extremes, hours
   farend sheet FILE -o OUT.xlsx|.csv             write the results sheet
   farend picture FILE -o OUT.svg|.png|.pdf       draw the diagram with its results
 

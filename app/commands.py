@@ -11,9 +11,10 @@ from pathlib import Path
 from typing import NoReturn
 
 from app.model.drawing import Drawing
-from app.model.file import FileError, load
+from app.model.file import FileError, load, write_bytes
 from app.study import run
 from app.study.outcome import Outcome, Verdict
+from app.study.year_outcome import YearOutcome
 from app.version import version
 from solver.status import Status
 
@@ -51,6 +52,11 @@ def parser_of(command: str) -> Parser:
     if command == "results":
         made.add_argument(
             "--json", action="store_true", help="as JSON: ids, units in the keys, null for none"
+        )
+    elif command == "year":
+        made.add_argument("--json", action="store_true", help="as JSON, without the single points")
+        made.add_argument(
+            "-o", "--out", metavar="OUT.csv", help="write the year point by point besides, for any program"
         )
     else:
         endings = " or ".join(SHEETS if command == "sheet" else PICTURES)
@@ -122,6 +128,27 @@ def _picture(chosen: argparse.Namespace) -> int:
     return exit_code(outcome)
 
 
+def _year(chosen: argparse.Namespace) -> int:
+    out = None if chosen.out is None else _checked_out(chosen, (".csv",))
+    drawing = load(Path(chosen.file))
+    from app.study.year import run_year
+    from app.study.year_record import course_text, year_record
+
+    year = run_year(drawing)
+    if out is not None and year.solved_h:
+        write_bytes(out, course_text(year).encode())
+    if chosen.json:
+        import json
+
+        told = year_record(drawing, year, version())
+        say(json.dumps(told, indent=1, ensure_ascii=True, allow_nan=False) + "\n")
+    else:
+        from app.printed_year import printed_year
+
+        say(printed_year(drawing, year))
+    return exit_code(year)
+
+
 def _checked_out(chosen: argparse.Namespace, endings: tuple[str, ...]) -> Path:
     out = Path(chosen.out)
     if out.suffix.lower() not in endings:
@@ -140,8 +167,8 @@ def _case_of(drawing: Drawing, name: str | None) -> int:
     return names.index(name)
 
 
-def exit_code(outcome: Outcome) -> int:
-    """What the outcome comes to, as an exit code."""
+def exit_code(outcome: Outcome | YearOutcome) -> int:
+    """What the outcome comes to, as an exit code; a year solves where every hour of it does."""
     if outcome.status is Status.INVALID:
         return BAD_INPUT
     if outcome.status is not Status.SOLVED:
@@ -176,5 +203,6 @@ def _showable(text: str, encoding: str | None) -> str:
 COMMANDS = {
     "results": ("Print node, branch and whole-layout results of a drawing.", _results),
     "sheet": ("Write the results sheet of a drawing.", _sheet),
+    "year": ("Solve a drawing through a year of its profiles: energies, losses, extremes, hours.", _year),
     "picture": ("Draw the diagram of a drawing with its results.", _picture),
 }

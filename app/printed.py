@@ -82,7 +82,7 @@ def printed(drawing: Drawing, outcome: Outcome) -> str:
         for case, name in enumerate(outcome.cases):
             parts += _case(drawing, outcome, case, name)
         parts += _faults(drawing, outcome)
-    parts += [_findings(outcome), _assumptions(drawing, outcome)]
+    parts += [listed_findings(outcome.findings), _assumptions(drawing, outcome)]
     parts.append("Cautions\n" + "\n".join(f"  {c}" for c in CAUTIONS))
     return "\n\n".join(part for part in parts if part) + "\n"
 
@@ -204,8 +204,9 @@ def _balance(outcome: Outcome, case: int) -> str:
     return f"Balance\n{aligned(lines, 1)}\n{closure}"
 
 
-def _findings(outcome: Outcome) -> str:
-    if not outcome.findings:
+def listed_findings(findings: Sequence[Finding]) -> str:
+    """Findings under their head, one a line."""
+    if not findings:
         return ""
     lines = (f"  {f.verdict.value.upper()}: {f.sentence}{_margin(f)}" for f in outcome.findings)
     return "Findings\n" + "\n".join(lines)

@@ -156,8 +156,9 @@ def _without_head(lines: list[Line]) -> list[Line]:
     """Without the first line, where it holds no number but the next one does."""
     if len(lines) < 2 or any(map(_reads, lines[0].fields)) or not any(map(_reads, lines[1].fields)):
         return lines
-    blank = all(field.casefold() in _NOTHING for field in lines[0].fields)
-    return lines if blank else lines[1:]
+    words = [field.casefold() for field in lines[0].fields]
+    strange = all(w in _NOTHING for w in words) or any(w[:1].isdigit() or w[:1] in "+-" for w in words if w)
+    return lines if strange else lines[1:]
 
 
 def _one_column(lines: list[Line]) -> list[Line]:
@@ -166,6 +167,7 @@ def _one_column(lines: list[Line]) -> list[Line]:
     if width == 1 or any(len(line.fields) != width for line in lines):
         return lines
     words = {i for i in range(width) if not any(_reads(line.fields[i]) for line in lines)}
+    words -= {i for i in words if len(lines) == 1 and not lines[0].fields[i]}
     left = [i for i in range(width) if i not in words]
     if words and len(left) > 1:
         raise EditRefused(

@@ -9,7 +9,7 @@ import numpy as np
 from app.model.drawing import Drawing
 from app.model.kinds import kind_of
 from app.study.cautions import CAUTIONS
-from app.study.outcome import Outcome, Table, Wired
+from app.study.outcome import Finding, Outcome, Table, Wired
 from app.study.start_table import StartTable
 
 
@@ -30,31 +30,39 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "frequency_hz": drawing.frequency_hz,
         "status": outcome.status.name.lower(),
         "sentence": outcome.sentence,
-        "largest_share_percent": None if share is None else _plain(share * 100),
+        "largest_share_percent": None if share is None else plain_value(share * 100),
         "to_blame": outcome.to_blame,
         "cases": list(outcome.cases),
-        "balance": {f.name: _plain(getattr(outcome.balance, f.name)) for f in fields(outcome.balance)},
-        "nodes": _rows(drawing, outcome.nodes),
-        "branches": _rows(drawing, outcome.branches),
-        "attachments": _rows(drawing, outcome.attachments),
+        "loading_cases": [body(case) for case in drawing.cases],
+        "balance": {f.name: plain_value(getattr(outcome.balance, f.name)) for f in fields(outcome.balance)},
+        "nodes": table_record(drawing, outcome.nodes),
+        "branches": table_record(drawing, outcome.branches),
+        "attachments": table_record(drawing, outcome.attachments),
         **({} if outcome.starts is None else {"starts": _starts(drawing, outcome.starts)}),
         **({} if outcome.wires is None else _wires(drawing, outcome.wires)),
-        **({} if outcome.faults is None else {"faults": _rows(drawing, outcome.faults)}),
-        "findings": [{k: _plain(v) for k, v in _finding(f).items()} for f in outcome.findings],
-        "assumptions": [{k: _plain(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
+        **({} if outcome.faults is None else {"faults": table_record(drawing, outcome.faults)}),
+        "findings": [finding_record(f) for f in outcome.findings],
+        "assumptions": [{k: plain_value(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
         "fed_by": dict(outcome.upstream),
         "cautions": list(CAUTIONS),
     }
 
 
-def _rows(drawing: Drawing, table: Table[Any]) -> dict[str, dict[str, Any]]:
+def table_record(drawing: Drawing, table: Table[Any]) -> dict[str, dict[str, Any]]:
+    """A table by id, every row with its name and kind.
+
+    drawing : the drawing
+    table : columns (row,) or (row, case)
+
+    Returns : id to column to figure, None where there is none
+    """
     columns = {name: column.tolist() for name, column in table.columns.items()}
     found = {}
     for row, id in enumerate(table.ids):
         element = drawing.elements[id]
         told: dict[str, Any] = {"name": element.name, "kind": kind_of(element)}
         for name, column in columns.items():
-            told[name] = _plain(column[row])
+            told[name] = plain_value(column[row])
         found[id] = told
     return found
 
@@ -62,32 +70,44 @@ def _rows(drawing: Drawing, table: Table[Any]) -> dict[str, dict[str, Any]]:
 def _wires(drawing: Drawing, wired: Wired) -> dict[str, dict[str, dict[str, Any]]]:
     """Volts and amperes conductor by conductor, under keys of their own."""
     return {
-        "node_wires": _rows(drawing, wired.nodes),
-        "branch_wires": _rows(drawing, wired.branches),
-        "attachment_wires": _rows(drawing, wired.attachments),
+        "node_wires": table_record(drawing, wired.nodes),
+        "branch_wires": table_record(drawing, wired.branches),
+        "attachment_wires": table_record(drawing, wired.attachments),
     }
 
 
 def _starts(drawing: Drawing, table: StartTable) -> dict[str, dict[str, Any]]:
     """Motor starts, with the board and the supply that are judged."""
-    told = _rows(drawing, table)
+    told = table_record(drawing, table)
     for id, board, supply in zip(table.ids, table.boards, table.supplies, strict=True):
         told[id] |= {"board": board, "supply": supply}
     return told
 
 
-def _finding(finding: Any) -> dict[str, Any]:
+def finding_record(finding: Finding) -> dict[str, Any]:
+    """A finding as plain data.
+
+    finding : any
+
+    Returns : field to value
+    """
     told = {f.name: getattr(finding, f.name) for f in fields(finding)}
     told["verdict"] = finding.verdict.value
     told["by_case"] = [verdict.value for verdict in finding.by_case]
-    return told
+    return {name: plain_value(value) for name, value in told.items()}
 
 
-def _plain(value: Any) -> Any:
+
+def plain_value(value: Any) -> Any:
+    """What json can hold: lists for arrays, None for what is not finite.
+    value : a figure, text or any nesting of lists of them
+
+    Returns : the same as plain data
+    """
     if isinstance(value, float):
         return value if math.isfinite(value) else None
     if isinstance(value, np.ndarray):
-        return _plain(value.tolist())
+        return plain_value(value.tolist())
     if isinstance(value, list | tuple):
-        return [_plain(v) for v in value]
+        return [plain_value(v) for v in value]
     return value
