@@ -22,6 +22,8 @@ def take(taken: Taken, item: ElementItem) -> None:
         for strip in strips(item.points):
             taken.add(strip)
     taken.add(item.core(), SYMBOL)
+    if item.mark is not None:
+        taken.add(item.mark.box, SYMBOL)
 
 
 def caption_spots(item: ElementItem, room: QSizeF) -> Iterator[Spot]:

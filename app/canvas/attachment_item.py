@@ -5,6 +5,7 @@ import math
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QPen, QTransform
 
+from app.canvas import phase_mark
 from app.canvas.element_item import ElementItem, dress, halo_colour, paint_worn
 from app.canvas.geometry import attachment_point, distance, stub
 from app.canvas.standing import Standing, colour
@@ -13,6 +14,7 @@ from app.canvas.user_symbol import Worn
 from app.model.drawing import Drawing
 
 HALO = 8.0
+NODE_ROOM = 7.0
 
 
 class AttachmentItem(ElementItem):
@@ -34,7 +36,19 @@ class AttachmentItem(ElementItem):
 
     def read(self, drawing: Drawing) -> None:
         self.worn = dress(drawing, drawing.elements[self.id], self.look.symbols)
+        self.lay_mark()
+
+    def lay_mark(self) -> None:
+        """On the last run of the stub, between node and symbol."""
+        self.mark = None
+        if self.phases is not None:
+            a, b = self._stub_to_edge()[-2:]
+            size = distance(a, b)
+            near = (b - a) * (min(NODE_ROOM, size / 4) / size) if size else b - a
+            self.mark = phase_mark.lay(self.phases, a + near, b)
         box = self.core().adjusted(-HALO, -HALO, HALO, HALO)
+        if self.mark is not None:
+            box = box.united(self.mark.box.adjusted(-2, -2, 2, 2))
         for point in self.points:
             box = box.united(QRectF(point.x() - 2, point.y() - 2, 4, 4))
         self.bound(box)
@@ -67,6 +81,8 @@ class AttachmentItem(ElementItem):
         painter.drawPolyline(self._stub_to_edge())
         if self.worn is not None:
             paint_worn(painter, self.worn, self.at, self.angle, ink, palette.paper)
+        if self.mark is not None:
+            phase_mark.paint(painter, self.mark, palette, self.look.printing)
 
     def _stub_to_edge(self) -> list[QPointF]:
         if self.worn is None:

@@ -11,8 +11,9 @@ from app.canvas.element_item import ElementItem, Look
 from app.canvas.geometry import Hit, HitKind, Outline, handles, longest, nearest
 from app.canvas.handles import Handles
 from app.canvas.ladder import TapLadder
+from app.canvas.neighbours import with_neighbours
 from app.canvas.node_item import NodeItem
-from app.canvas.paper import Paper, with_neighbours
+from app.canvas.paper import Paper
 from app.canvas.placing import CLEAR, Spot, Taken, around, gap
 from app.canvas.tag import SMALLEST_ZOOM, Caption, Tag
 from app.canvas.theme import Theme

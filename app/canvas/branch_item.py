@@ -6,6 +6,7 @@ from msgspec import Struct
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QPainterPath, QPainterPathStroker, QPen, QPolygonF, QTransform
 
+from app.canvas import phase_mark
 from app.canvas.element_item import ElementItem, dress, halo_colour, paint_worn
 from app.canvas.geometry import along, distance, longest, pose, route
 from app.canvas.standing import Standing, colour, pen
@@ -18,6 +19,8 @@ from app.model.kinds import OverheadLine, Regulator, Switch
 MARGIN = 14.0
 HALO = 9.0
 POLE = 3.5
+ARROW = 13.0  # the arrow at the middle, half of it
+NODE_ROOM = 9.0
 
 
 class Flow(Struct, frozen=True):
@@ -60,10 +63,30 @@ class BranchItem(ElementItem):
         poles = isinstance(element, OverheadLine) and self.worn is None
         self._poles = [along(self.points, whole * share) for share in (0.12, 0.88)] if poles else []
         self._halo = self._around()
+        self.lay_mark()
+
+    def lay_mark(self) -> None:
+        """Before the symbol or the arrow, on the longest run."""
+        self.mark = phase_mark.lay(self.phases, *self._free_run()) if self.phases is not None else None
         self._bound()
+
+    def _free_run(self) -> tuple[QPointF, QPointF]:
+        """From clear of the node or pole to clear of the symbol or arrow."""
+        at = longest(self.points)
+        a, b = self.points[at : at + 2]
+        size = distance(a, b) or 1.0
+        way = (b - a) / size
+        half = self.worn.half + 2 if self.worn is not None else ARROW
+        near = NODE_ROOM if at == 0 else 2.0
+        if self._poles and at == 0:
+            near = max(near, distance(self.points[0], self._poles[0]) + POLE + 6)
+        near = min(near, size / 4)
+        return a + way * near, self.at - way * min(half, size / 4)
 
     def _bound(self) -> None:
         box = QPolygonF(self.points).boundingRect().united(self.core())
+        if self.mark is not None:
+            box = box.united(self.mark.box)
         self.bound(box.adjusted(-MARGIN, -MARGIN, MARGIN, MARGIN))
 
     def show_flow(self, width: float, forward: bool | None) -> None:
@@ -123,6 +146,8 @@ class BranchItem(ElementItem):
             )
         elif self.flow.forward is not None:
             self._paint_arrow(painter, hue)
+        if self.mark is not None:
+            phase_mark.paint(painter, self.mark, palette, self.look.printing)
 
     def _paint_arrow(self, painter, hue) -> None:
         turn = self.angle if self.flow.forward else self.angle + 180

@@ -7,6 +7,7 @@ from PySide6.QtGui import QColor, QPainter
 from PySide6.QtWidgets import QGraphicsItem, QStyleOptionGraphicsItem, QWidget
 
 from app.canvas.palette import LIGHT, Palette
+from app.canvas.phase_mark import Laid, Phases
 from app.canvas.standing import Standing
 from app.canvas.symbol_shapes import Glyph
 from app.canvas.symbols import glyph_of, paint_glyph
@@ -82,6 +83,8 @@ class ElementItem(QGraphicsItem):
         self.standing = Standing.PLAIN
         self.selected = False
         self.hovered = False
+        self.phases: Phases | None = None  # what is said of them beside it
+        self.mark: Laid | None = None
         self._bounds = QRectF()
         self.setAcceptedMouseButtons(Qt.MouseButton.NoButton)
 
@@ -102,6 +105,17 @@ class ElementItem(QGraphicsItem):
         if standing is not self.standing:
             self.standing = standing
             self.update()
+
+    def say_phases(self, said: Phases | None) -> bool:
+        """Wear another mark of phases; True where that is another than before."""
+        if said == self.phases:
+            return False
+        self.phases = said
+        self.lay_mark()
+        return True
+
+    def lay_mark(self) -> None:
+        """Find a place for the mark of phases."""
 
     def light(self, selected: bool, hovered: bool) -> None:
         """Selection and hover."""

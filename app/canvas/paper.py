@@ -4,17 +4,18 @@ from collections.abc import Container, Iterable, Iterator, Mapping
 from itertools import chain, islice
 from typing import Any
 
-from PySide6.QtCore import QPointF, QRectF, Qt, QTimer
-from PySide6.QtGui import QPainter, QPen
+from PySide6.QtCore import QRectF, Qt, QTimer
+from PySide6.QtGui import QPainter
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsScene
 
-from app.canvas import arrange, standing, wording
+from app.canvas import arrange, phase_words, standing, wording
 from app.canvas.attachment_item import AttachmentItem
 from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem, Look
-from app.canvas.geometry import GRID
+from app.canvas.ground import paint_ground
 from app.canvas.lettering import Line
 from app.canvas.node_item import NodeItem
+from app.canvas.phase_mark import Phases
 from app.canvas.placing import Homes, Taken, Wish, place
 from app.canvas.shown import Shown, array_of, column_of
 from app.canvas.standing import Standing
@@ -24,7 +25,6 @@ from app.model.kinds import Attachment, Branch, Busbar, Node
 from app.study.outcome import BranchState, Outcome, Table
 
 MARGIN = 300.0
-DOTS_FROM = 0.4  # zoom below which the grid is left out
 
 
 class Paper(QGraphicsScene):
@@ -39,6 +39,7 @@ class Paper(QGraphicsScene):
         self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
         self._laid = Drawing()
         self._shown: Shown | None = None
+        self._wired = False
         self._leaving: list[QGraphicsItem] = []
         self._swept = QTimer(self, singleShot=True, interval=0)
         self._swept.timeout.connect(self._leaving.clear)
@@ -80,9 +81,18 @@ class Paper(QGraphicsScene):
         item, element = self.items_by_id[id], self._laid.elements[id]
         covered = item.boundingRect()
         item.read(self._laid)
+        remarked = item.say_phases(self._phases(id))
         named = isinstance(element, Node) and bool(element.name)
         self.captions[id].landmark = isinstance(element, Busbar) or named
-        return self._name(id) or item.boundingRect() != covered
+        return self._name(id) or remarked or item.boundingRect() != covered
+
+    def _phases(self, id: str) -> Phases | None:
+        """What is said of the phases of a branch or attachment: what it states, else what reaches it."""
+        element = self._laid.elements[id]
+        if not isinstance(element, Branch | Attachment):
+            return None
+        said = phase_words.stated(element)
+        return self._shown.phases(id, element) if said is None and self._shown is not None else said
 
     def _put_on(self, id: str, element: object) -> None:
         item: ElementItem
@@ -141,8 +151,22 @@ class Paper(QGraphicsScene):
         for table in tables:
             self._show_standings(table, case, worst)
         self._show_flows(outcome.branches, case)
+        marked = self._show_phases(outcome.wires is not None)
         self.owed = {id: None for table in tables for id in table.ids if id in self.items_by_id}
-        return self._write(list(self.owed) if sight is None else self._owed_in(sight))
+        return marked | self._write(list(self.owed) if sight is None else self._owed_in(sight))
+
+    def _show_phases(self, wired: bool) -> set[str]:
+        """Mark the phases that reach each element, where they differ; the ids of marks that changed."""
+        assert self._shown is not None
+        before, self._wired = self._wired, wired
+        if not (wired or before):
+            return set()
+        changed = set()
+        for id, item in self.items_by_id.items():
+            element = self._laid.elements.get(id)
+            if isinstance(element, Branch | Attachment) and item.say_phases(self._shown.phases(id, element)):
+                changed.add(id)
+        return changed
 
     def _show_standings(self, table: Table[Any], case: int, worst: Mapping[str, Standing]) -> None:
         blaming = self.look.blaming
@@ -198,10 +222,11 @@ class Paper(QGraphicsScene):
             pass
         elif isinstance(tag, NodeFigures):
             tag.read(shown.reading(id))
-            lines = wording.node_figures(*shown.rows("nodes", id))
+            lines = wording.node_figures(*shown.rows("nodes", id), shown.wires("nodes", id), shown.feels(id))
         elif isinstance(item, BranchItem):
             figures = shown.rows("branches", id)
-            lines = wording.branch_figures(item.angle, *figures, item.lossless, item.step)
+            wires = shown.branch_wires(id, self._laid.elements[id])
+            lines = wording.branch_figures(item.angle, *figures, item.lossless, item.step, wires)
         return tag.write(lines, item.standing)
 
     # where words go -----------------------------------------------------------------------------
@@ -275,34 +300,7 @@ class Paper(QGraphicsScene):
     # the paper itself ---------------------------------------------------------------------------
 
     def drawBackground(self, painter: QPainter, rect) -> None:
-        painter.fillRect(rect, self.look.palette.paper)
-        zoom = painter.worldTransform().m11()
-        if self.look.printing or zoom < DOTS_FROM:
-            return
-        step = GRID * (2 if zoom < 1.6 else 1)
-        pen = QPen(self.look.palette.faint, 1.6)
-        pen.setCosmetic(True)
-        painter.setPen(pen)
-        first, last = int(rect.left() // step), int(rect.right() // step) + 1
-        for row in range(int(rect.top() // step), int(rect.bottom() // step) + 2):
-            painter.drawPoints([QPointF(k * step, row * step) for k in range(first, last + 1)])
-
-
-def with_neighbours(drawing: Drawing, ids: frozenset[str]) -> set[str]:
-    """The elements and all that is drawn from them: branches and attachments of nodes, side by side lines."""
-    found = set(ids)
-    pairs = set()
-    for id, element in drawing.elements.items():
-        if isinstance(element, Branch):
-            if element.start in ids or element.end in ids:
-                found.add(id)
-            if id in ids:
-                pairs.add(frozenset((element.start, element.end)))
-        elif isinstance(element, Attachment) and element.node in ids:
-            found.add(id)
-    return found | {
-        i for i, e in drawing.branches().items() if pairs and frozenset((e.start, e.end)) in pairs
-    }
+        paint_ground(painter, rect, self.look)
 
 
 def _rank(drawing: Drawing):

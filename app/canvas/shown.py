@@ -6,10 +6,11 @@ from typing import Any
 from msgspec import Struct
 from numpy.typing import NDArray
 
-from app.canvas import gauge
+from app.canvas import gauge, phase_words
+from app.canvas.phase_mark import Phases
 from app.model.drawing import Limits
-from app.model.kinds import Branch
-from app.study.outcome import Outcome, Table
+from app.model.kinds import Attachment, Branch, Transformer
+from app.study.outcome import Outcome, Table, Verdict
 from solver.status import Status
 
 
@@ -51,6 +52,49 @@ class Shown(Struct, frozen=True):
         was = getattr(self.before, name)
         return now, Row(was, id, self.case) if id in was else None
 
+    def wires(self, name: str, id: str) -> tuple[Any, Any] | None:
+        """The conductors of an element, and the same before where that is known; None where phases are
+        alike."""
+        table = getattr(self.outcome.wires, name, None)
+        if table is None or id not in table:
+            return None
+        now, was = Row(table, id, self.case), None
+        if self.before is not None and self.case < len(self.before.cases):
+            was = getattr(self.before.wires, name, None)
+        return now, Row(was, id, self.case) if was is not None and id in was else None
+
+    def feels(self, id: str) -> bool:
+        """True where the volts of a neutral to earth are near their limit or beyond."""
+        if self.outcome.wires is None:
+            return False
+        found = self.outcome.verdict_of(id, self.case, ("neutral volts",))
+        return found in (Verdict.FAILS, Verdict.ADVICE, Verdict.NEAR)
+
+    def system(self, node: str) -> str:
+        """The wires of a node's zone: three-phase where all are alike."""
+        found = self.wires("nodes", node)
+        return found[0].system if found is not None else "three-phase"
+
+    def branch_wires(self, id: str, branch: Any) -> tuple[Any, str, str] | None:
+        """A branch's conductors, which of them it has, and the system they belong to."""
+        found = self.wires("branches", id)
+        if found is None:
+            return None
+        at = branch.start
+        if isinstance(branch, Transformer) and self.outcome.fed_winding(id, self.case) == 2:
+            at = branch.end
+        return found[0], phase_words.conductors(found[0], branch), self.system(at)
+
+    def phases(self, id: str, element: Branch | Attachment) -> Phases | None:
+        """What the mark of an element says: what reaches it where that is known, else what it states."""
+        if isinstance(element, Branch):
+            wires = self.branch_wires(id, element)
+            return phase_words.reaching(element, *wires[1:]) if wires else phase_words.stated(element)
+        found = self.wires("attachments", id)
+        if found is None:
+            return phase_words.stated(element)
+        return phase_words.reaching(element, found[0].phases, self.system(element.node))
+
     def between_live(self, branch: Branch) -> bool:
         """True where both ends of a branch are live; a switch between them may still be open."""
         nodes = self.outcome.nodes
@@ -63,6 +107,8 @@ class Shown(Struct, frozen=True):
         if math.isnan(percent[self.case]):
             return None
         known = [p for p in percent if not math.isnan(p)]
+        high_now = nodes.column("high_percent")[nodes.rows[id]].tolist()
+        known += [p for p in high_now if not math.isnan(p)]
         low, high = self.limits.low_percent, self.limits.high_percent
         return gauge.Reading(low, high, min(known), max(known), percent[self.case])
 

@@ -11,6 +11,9 @@ from msgspec.structs import replace
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainterPath
 
+from app.canvas.symbol_units import OPEN_DELTA, OPEN_STAR, STEPPING, TAPPED, earths, signs
+from app.canvas.symbol_units import path as _path
+
 STROKE = 2.0
 RING = 15.0  # a transformer's winding
 ROUND = 18.0  # supply and generator
@@ -31,12 +34,14 @@ class Glyph(Struct, frozen=True):
     def box(self) -> QRectF:
         """All of it, with the breadth of its strokes."""
         whole = self.strokes.boundingRect().united(self.solid.boundingRect())
+        for at, sign in self.upright:
+            whole = whole.united(sign.boundingRect().translated(at))
         return whole.adjusted(-STROKE, -STROKE, STROKE, STROKE)
 
 
 @lru_cache(maxsize=256)
 def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
-    """The symbol of a kind; `variant` is open or closed, or a transformer's vector group."""
+    """The symbol of a kind; `variant` is open or closed, or what `symbol_units.variant` says of a unit."""
     ansi = symbols == "ANSI"
     draw: dict[str, Callable[[], Glyph]] = {
         "supply": _supply,
@@ -44,7 +49,7 @@ def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
         "motor": lambda: _machine("M", ansi),
         "load": lambda: _load(ansi),
         "capacitor": lambda: _capacitor(ansi, variant == "open"),
-        "transformer": lambda: _tapped(_coils() if ansi else _rings(variant), variant),
+        "transformer": lambda: _tapped(_coils(variant) if ansi else _rings(variant), variant),
         "regulator": lambda: _regulator(ansi),
         "switch": lambda: _switch(ansi, variant == "open"),
         "busbar": _busbar,
@@ -53,15 +58,6 @@ def glyph(kind: str, symbols: str = "IEC", variant: str = "") -> Glyph:
         "overhead_line": lambda: _overhead(ansi),
     }
     return draw[kind]()
-
-
-def _path(*strokes: tuple[tuple[float, float], ...]) -> QPainterPath:
-    path = QPainterPath()
-    for first, *rest in strokes:
-        path.moveTo(*first)
-        for point in rest:
-            path.lineTo(*point)
-    return path
 
 
 def _ring(x: float, y: float, radius: float) -> QPainterPath:
@@ -114,37 +110,11 @@ def _capacitor(ansi: bool, apart: bool) -> Glyph:
 def _rings(group: str) -> Glyph:
     reach = RING * 0.62
     one, two = _ring(-reach, 0, RING), _ring(reach, 0, RING)
-    marks = tuple(
-        (QPointF(side * (reach + 3.5), 0), mark)
-        for side, mark in zip((-1, 1), _connections(group), strict=False)
-        if mark is not None
-    )
-    return Glyph(reach + RING, _joined(one, two), mask=one.united(two), upright=marks)
+    strokes = _joined(one, two, earths(group, reach + 1, RING))
+    return Glyph(reach + RING, strokes, mask=one.united(two), upright=signs(group, reach + 3.5, 0))
 
 
-def _connections(group: str) -> tuple[QPainterPath | None, QPainterPath | None]:
-    """The small delta, star or zigzag of either winding, read from the vector group."""
-    letters = [c for c in group if c in "DYZdyz"]
-    made = [_CONNECTION[c.lower()]() for c in letters[:2]]
-    return (made[0], made[1]) if len(made) == 2 else (None, None)
-
-
-def _delta() -> QPainterPath:
-    return _path(((0, -4.6), (4.4, 3), (-4.4, 3), (0, -4.6)))
-
-
-def _star() -> QPainterPath:
-    return _path(((0, 0), (0, 4.8)), ((0, 0), (-4.2, -3.4)), ((0, 0), (4.2, -3.4)))
-
-
-def _zigzag() -> QPainterPath:
-    return _path(((-3.5, -4), (3.5, -4), (-3.5, 4), (3.5, 4)))
-
-
-_CONNECTION: dict[str, Callable[[], QPainterPath]] = {"d": _delta, "y": _star, "z": _zigzag}
-
-
-def _coils() -> Glyph:
+def _coils(group: str) -> Glyph:
     half, loop = 18.0, 10.0
     path = _path(((-half, 0), (-8, 0)), ((half, 0), (8, 0)))
     for k in range(4):
@@ -153,10 +123,9 @@ def _coils() -> Glyph:
         path.arcTo(QRectF(-8 - loop / 2, top, loop, loop), 90, -180)
         path.arcMoveTo(QRectF(8 - loop / 2, top, loop, loop), 90)
         path.arcTo(QRectF(8 - loop / 2, top, loop, loop), 90, 180)
-    return Glyph(half, path)
-
-
-STEPPING = "↕"  # in the variant of a transformer whose tap changer steps by itself
+    odd = any(sign in group for sign in (TAPPED, OPEN_DELTA, OPEN_STAR))  # the set leaves others to words
+    upright = signs(group, 11, -27) if odd else ()
+    return Glyph(half, _joined(path, earths(group, 8 + loop / 2, 20)), upright=upright)
 
 
 def _tapped(whole: Glyph, variant: str) -> Glyph:

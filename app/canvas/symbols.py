@@ -7,7 +7,8 @@ from PySide6.QtGui import QColor, QIcon, QPainter, QPen, QPixmap
 
 from app.canvas.lettering import Style, face
 from app.canvas.palette import Palette
-from app.canvas.symbol_shapes import ROUND, STEPPING, STROKE, Glyph, glyph
+from app.canvas.symbol_shapes import ROUND, STROKE, Glyph, glyph
+from app.canvas.symbol_units import variant
 from app.model.kinds import Capacitor, Element, Switch, Transformer, kind_of
 
 ICON_SCALES = (1.0, 2.0, 3.0)
@@ -27,7 +28,7 @@ def _variant(element: Element) -> str:
     if isinstance(element, Capacitor):
         return "connected" if element.connected else "open"
     if isinstance(element, Transformer):
-        return element.vector_group + (STEPPING if element.regulates != "no" else "")
+        return variant(element)
     return ""
 
 

@@ -5,6 +5,7 @@ import textwrap
 from collections.abc import Callable
 from typing import Any
 
+from app.canvas import phase_words
 from app.canvas.lettering import Line, Run, Style
 from app.model import assumed, figures, taps
 from app.model.by_case import percent_of
@@ -62,13 +63,13 @@ def describe(element: AnyElement) -> tuple[str, ...]:
         case Switch():
             return ("closed" if element.closed else "open",)
         case Supply():
-            two = ", two-wire" if element.wires == "two-wire" else ""
-            first = f"{figures.level(element.nominal_v)}{two}"
+            few = "" if element.wires == "three-phase" else f", {element.wires}"
+            first = f"{figures.level(element.nominal_v)}{few}"
             if element.held_percent == 100:
                 return (first,)
             return first, f"held at {figures.typed(element.held_percent)} %"
         case Load():
-            return (_load(element),)
+            return (_load(element), *_shares(element))
         case Motor():
             return _motor(element)
         case Generator():
@@ -85,9 +86,8 @@ def describe(element: AnyElement) -> tuple[str, ...]:
 
 def _transformer(t: Transformer) -> tuple[str, ...]:
     units = f"{t.side_by_side} × " if t.side_by_side > 1 else ""
-    first = (
-        f"{units}{figures.typed(t.rating_kva)} kVA {figures.ratio(t.v1_v, t.v2_v)} {t.vector_group}".rstrip()
-    )
+    kind = t.vector_group if t.build == "as its group" else t.build
+    first = f"{units}{figures.typed(t.rating_kva)} kVA {figures.ratio(t.v1_v, t.v2_v)} {kind}".rstrip()
     if not t.taps_up + t.taps_down:
         return (first,)
     if t.regulates != "no":
@@ -104,7 +104,8 @@ def _line(line: LineElement) -> str:
     runs = f"{line.side_by_side} × " if line.side_by_side > 1 else ""
     area = f"{figures.typed(line.area_mm2)} mm² {line.conductor}" if line.area_mm2 else ""
     what = line.type or area
-    return f"{runs}{what} {figures.length(line.length_m)}".strip()
+    neutral = phase_words.NEUTRALS.get(line.neutral, "")
+    return f"{runs}{what} {figures.length(line.length_m)}".strip() + (f", {neutral}" if neutral else "")
 
 
 def _load(load: Load) -> str:
@@ -113,6 +114,16 @@ def _load(load: Load) -> str:
     factor = load.power_factor
     shown = f"{factor:.2f}" if math.isclose(factor, round(factor, 2)) else f"{factor:g}"
     return f"{figures.typed(demand or 0.0)} {unit} pf {shown}{leading}"
+
+
+def _shares(load: Load) -> tuple[str, ...]:
+    """`A 50 · B 30 · C 20 %` where its phases are not alike."""
+    a, b = load.share_a_percent, load.share_b_percent
+    if a is None or b is None or load.phases != "all":
+        return ()
+    names = ("AB", "BC", "CA") if load.connection == "delta" else ("A", "B", "C")
+    parts = zip(names, (a, b, 100 - a - b), strict=True)
+    return (" · ".join(f"{name} {figures.stated(share)}" for name, share in parts) + " %",)
 
 
 def _motor(motor: Motor) -> tuple[str, ...]:
@@ -138,19 +149,25 @@ def branch_figures(
     before: BranchState | None,
     lossless: bool = False,
     step: float | None = None,
+    wires: tuple[Any, str, str] | None = None,
 ) -> Lines:
-    """Flow with its direction on the paper, then loading; under it the loss; changes since the drag began."""
+    """Flow with its direction on the paper, then loading, of the worst conductor where they differ, and the
+    amperes in each; under it the loss; changes since the drag began."""
     if not state.live:
         return ()
     forward = runs_on(state.through_kw, state.forward)
     rated = not math.isnan(state.loaded_percent)
     load = figures.percent(state.loaded_percent) if rated else figures.amps(state.current_a)
-    way = f" {arrow(angle, forward)}" if flows(state.through_kw) else ""
-    first: Line = (Run(f"{figures.power(abs(state.through_kw))}{way} {load}"),)
+    way = arrow(angle, forward) if flows(state.through_kw) else ""
+    worst = phase_words.worst_of(*wires) if wires is not None else ""
+    told = (figures.power(abs(state.through_kw)), way, worst, load)
+    first: Line = (Run(" ".join(filter(None, told))),)
+    split = phase_words.amps_words(*wires) if wires is not None else ""
+    amperes: Lines = ((Run(split, Style.PLAIN),),) if split else ()
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
         second += changed(state.loss_kw, before.loss_kw, figures.loss)
-    lines = (first,) if lossless else (first, second)
+    lines = (first, *amperes) if lossless else (first, *amperes, second)
     if step is None:
         return lines
     stands = f"stands at {figures.plain(state.notch, 0, sign=True)}"
@@ -172,15 +189,36 @@ def arrow(angle: float, forward: bool) -> str:
     return "→↓←↑"[round(turn / 90) % 4]
 
 
-def node_figures(state: NodeState, before: NodeState | None) -> Lines:
-    """Volts, and percent of nominal under them."""
+def node_figures(
+    state: NodeState, before: NodeState | None, wires: tuple[Any, Any] | None = None, judged: bool = False
+) -> Lines:
+    """Volts, and percent of nominal under them; of the lowest phase where they differ."""
     if not state.live:
         return ((Run("dead", Style.QUIET),),)
+    if wires is not None and phase_words.lowest_of(wires[0]):
+        return phase_figures(state, *wires, judged)
     first: Line = (Run(figures.volts(state.voltage_v)),)
     second: Line = (Run(figures.percent(state.percent), Style.QUIET),)
     if before is not None and before.live:
         second += changed(state.voltage_v, before.voltage_v, figures.volts)
     return first, second
+
+
+def phase_figures(state: NodeState, now: Any, before: Any, judged: bool) -> Lines:
+    """The lowest phase with its letter, its part of its own base, and the neutral where it can be felt."""
+    letter = phase_words.lowest_of(now)
+    volts = phase_words.volts_of(now, letter)
+    first: Line = (Run(f"{phase_words.phase_name(letter, now)} {figures.volts(volts)}"),)
+    second: Line = (Run(f"{figures.percent(state.percent)} of {base_words(now.base_v)}", Style.QUIET),)
+    if before is not None:
+        second += changed(volts, phase_words.volts_of(before, letter), figures.volts)
+    neutral = phase_words.neutral_words(now, judged)
+    return (first, neutral, second) if neutral is not None else (first, second)
+
+
+def base_words(volts: float) -> str:
+    """What volts are counted from: 120 V, 7.2 kV."""
+    return figures.level(float(f"{volts:.3g}"))
 
 
 def attachment_figures(

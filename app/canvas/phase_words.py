@@ -1,0 +1,97 @@
+"""Which phases and neutral an element has, as people read them: by the drawing, then by what is solved."""
+
+import math
+from typing import Any
+
+from app.canvas.lettering import Line as Words
+from app.canvas.lettering import Run, Style
+from app.canvas.phase_mark import Phases
+from app.model import figures
+from app.model.kinds import Attachment, Branch, Line, Transformer
+from app.model.rephasing import has_phases
+
+HOTS = {"A": "L1", "B": "L2"}
+SPLIT = "split-phase"
+SLOTS = "ABC"
+FELT_V = 1.0  # neutral to earth; farm animals are reported to react from 0.7 to 1 V
+
+
+def named(letter: str, system: str) -> str:
+    """What people call a conductor: hot wires of a split phase are L1 and L2."""
+    return HOTS.get(letter, letter) if system == SPLIT else letter
+
+
+def stated(element: Branch | Attachment) -> Phases | None:
+    """What the element itself says of its phases; None where they are as many as reach it."""
+    phases = getattr(element, "phases", "all") if has_phases(element) else "all"
+    if phases == "all":
+        return None
+    carried = isinstance(element, Line) and element.neutral == "carried"
+    return Phases(phases + ("N" if carried else ""), len(phases), carried, True)
+
+
+NEUTRALS = {"carried": "own neutral", "earthed along": "neutral earthed along", "none": "no neutral"}
+
+
+def reaching(element: Branch | Attachment, has: str, system: str) -> Phases | None:
+    """The conductors it turns out to have; None for three phases with nothing unusual said."""
+    said = stated(element)
+    phases = [letter for letter in SLOTS if letter in has]
+    if not phases or (len(phases) == 3 and said is None):
+        return said
+    letters = [named(letter, system) for letter in phases] + (["N"] if "N" in has else [])
+    text = (" " if system == SPLIT else "").join(letters)
+    return Phases(text, len(phases), "N" in has, said is not None)
+
+
+def conductors(row: Any, element: object) -> str:
+    """The conductors of a row of wires; of a transformer those of the winding whose amperes it tells."""
+    if not isinstance(element, Transformer):
+        return str(row.phases)
+    return "".join(letter for letter in "ABCN" if not math.isnan(amps_of(row, letter)))
+
+
+def amps_of(row: Any, letter: str) -> float:
+    """The amperes in one conductor."""
+    return float(getattr(row, f"{letter.lower()}_a"))
+
+
+def volts_of(row: Any, letter: str) -> float:
+    """The volts of one phase."""
+    return float(getattr(row, f"{letter.lower()}_v"))
+
+
+def amps_words(row: Any, has: str, system: str) -> str:
+    """`A 41.2 · B 3.0 · N 33.0 A`."""
+    told = [(named(c, system), amps_of(row, c)) for c in has if not math.isnan(amps_of(row, c))]
+    return " · ".join(f"{name} {figures.amps(a).removesuffix(' A')}" for name, a in told) + (
+        " A" if told else ""
+    )
+
+
+def worst_of(row: Any, has: str, system: str) -> str:
+    """The conductor that carries most; nothing where there is but one, or they are alike."""
+    known = {c: amps_of(row, c) for c in has if not math.isnan(amps_of(row, c))}
+    if len(known) < 2 or figures.amps(max(known.values())) == figures.amps(min(known.values())):
+        return ""
+    return named(max(known, key=known.__getitem__), system)
+
+
+def lowest_of(row: Any) -> str:
+    """The letter of the phase with the lowest volts; nothing where none is live."""
+    known = {c: volts_of(row, c) for c in SLOTS if not math.isnan(volts_of(row, c))}
+    return min(known, key=known.__getitem__) if known else ""
+
+
+def phase_name(letter: str, row: Any) -> str:
+    """`A`, `L1`; `A–B` where volts are against the next phase."""
+    if row.against == "next phase":
+        return f"{letter}–{SLOTS[(SLOTS.index(letter) + 1) % 3]}"
+    return named(letter, row.system)
+
+
+def neutral_words(row: Any, judged: bool) -> Words | None:
+    """`N 2.1 V to earth` where it can be felt, or a limit of it is near."""
+    if math.isnan(row.neutral_v) or not (judged or row.neutral_v >= FELT_V):
+        return None
+    return (Run(f"N {figures.volts(row.neutral_v)} to earth", Style.QUIET),)
