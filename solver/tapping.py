@@ -38,10 +38,20 @@ def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], fac
             units.series[row, 1 - own] *= t**2  # seen at the tapped winding
             units.iron[row, own] /= t**2
             units.own_z[row, own, 0] *= t**2
+            _lead_neutral(units.gain[row])
     wires = network.wires
     if wires is not None and units is not None:
         wires = replace(wires, units=units)
     return replace(network, transformer_ratio=ratio, transformer_z=z, transformer_y=y, wires=wires)
+
+
+def _lead_neutral(gain: Complex) -> None:
+    """Where the neutral is led through, phases are moved against it: V' - VN = g (V - VN)."""
+    if gain[:, -1, -1].any():
+        phases = np.arange(gain.shape[1] - 1)
+        moved = gain[:, phases, phases]
+        gain[:, phases, -1] = np.where(moved != 0, 1 - moved, 0)
+        gain[:, -1, -1] = 1
 
 
 def _wide(array: Complex, width: int) -> Complex:

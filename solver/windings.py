@@ -141,6 +141,19 @@ def stacked(units: Sequence[Unit]) -> Units:
     return Units(**found)
 
 
+def passing(has: Sequence[bool]) -> Unit:
+    """A step regulator at ratio 1: auto-transformers between phases and neutral, the neutral led through.
+
+    has : (k,) its conductors
+    Returns : Unit without impedance; `tapping.retapped` moves its phases against the neutral
+    """
+    square, flat = np.diag(np.asarray(has, dtype=complex)), np.zeros((2, 2, K))
+    nothing = np.zeros((2, K, K, 1), dtype=complex)
+    gain = np.stack((square, square))[..., None]
+    both = np.array([has, has], dtype=bool)
+    return Unit(gain, nothing, nothing, both, flat, flat, np.zeros((2, 2, 1), dtype=complex))
+
+
 def none() -> Units:
     """No transformers at all.
 

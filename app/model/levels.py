@@ -9,6 +9,7 @@ from app.model.kinds import Branch, Node, Supply, Switch, Transformer
 
 THREE_PHASE = "three-phase"
 TWO_WIRE = "two-wire"
+SPLIT = "split-phase"
 
 
 class Level(NamedTuple):
@@ -22,6 +23,15 @@ class Level(NamedTuple):
     def assumed(self) -> bool:
         """True where nobody stated it."""
         return self.how.endswith("assumed")
+
+
+def system_behind(t: Transformer, winding: int, wires: str) -> str:
+    """The system at a winding of a transformer, where its other winding stands in `wires`."""
+    if t.build == "centre-tapped":
+        return SPLIT if winding == 2 else TWO_WIRE
+    if t.build == "as its group" and t.vector_group.startswith("I"):
+        return TWO_WIRE
+    return wires if t.build == "as its group" else THREE_PHASE
 
 
 def nominal_levels(drawing: Drawing) -> dict[str, Level]:
@@ -86,7 +96,7 @@ class _Walk:
 
     def behind(self, id: str, t: Transformer, winding: int, far: str, wires: str) -> Level:
         """The level of the part behind a winding: the nearest statement in it, else the winding's."""
-        kept = TWO_WIRE if t.vector_group.startswith("I") else wires
+        kept = system_behind(t, winding, wires)
         stated = self.first_stated(far)
         if stated is not None:
             return Level(self.nodes[stated].nominal_v or 0.0, f"stated on {stated}", kept)
@@ -108,7 +118,7 @@ class _Walk:
     def from_unfed_transformers(self) -> None:
         """Where no supply leads, the windings say what they are made for."""
         for id, t in self.transformers:
-            wires = TWO_WIRE if t.vector_group.startswith("I") else THREE_PHASE
+            wires = system_behind(t, 2, THREE_PHASE)
             for winding, root in ((1, t.start), (2, t.end)):
                 if root in self.nodes and root not in self.levels:
                     self.spread(root, self.behind(id, t, winding, root, wires))

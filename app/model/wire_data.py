@@ -25,3 +25,8 @@ def neutral_value(line: Line, field: str) -> float | Put:
     if line.return_resistance_ohm_per_km is not None:
         return Put(line.return_resistance_ohm_per_km, "as its return conductor")
     return Put(line.resistance_ohm_per_km, "a neutral as large as a phase")
+
+
+def is_low(nominal_v: float) -> bool:
+    """True up to 1 kV, where a neutral is usually carried."""
+    return nominal_v <= LOW_V

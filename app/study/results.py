@@ -7,27 +7,26 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import (
-    Attachment,
-    Branch,
-    Generator,
-    Line,
-    Load,
-    Motor,
-    Regulator,
-    Supply,
-    Switch,
-    Transformer,
+from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
+from app.study.flows import (
+    balance_of,
+    forward_of,
+    nominal_of,
+    notches_of,
+    roles,
+    routes_of,
+    through_of,
 )
-from app.study.layout import NONE, Layout, arrays_of
-from app.study.memory import Columns, Memory
-from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table
+from app.study.layout import Layout, arrays_of
+from app.study.memory import Columns
+from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table, Wired
 from app.study.rows import Rows
-from app.study.sums import size, total
+from app.study.sums import size
+from app.study.wire_branches import wire_branches
+from app.study.wire_nodes import wire_attachments, wire_nodes
 from app.study.zones import Zones
 from solver import Solution
 
-FAINT = 1e-9  # of the largest power on any ring, below which a flow has no direction
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
@@ -40,6 +39,7 @@ class Tables:
     branches: Table[BranchState]
     attachments: Table[AttachmentState]
     balance: Balance
+    wires: Wired | None = None
 
 
 def tables_of(
@@ -57,14 +57,25 @@ def tables_of(
     """
     if rows is None or solution is None:
         return _dead(layout, zones, cases)
+    if rows.conductors is not None:
+        return _wired(layout, zones, rows, solution)
     nodes = _nodes(layout, zones, rows, solution)
     branches = _branches(layout, rows, solution, nodes.column("percent"))
     attachments = _attachments(layout, rows, solution, nodes.column("voltage_v"))
-    return Tables(nodes, branches, attachments, _balance(layout, branches, attachments, solution))
+    return Tables(nodes, branches, attachments, balance_of(layout, branches, attachments, solution))
+
+
+def _wired(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tables:
+    """Phases one by one, and of each element what counts in all: its worst phase, its whole power."""
+    nodes, node_wires = wire_nodes(layout, zones, rows, solution)
+    branches, branch_wires = wire_branches(layout, rows, solution, nodes, node_wires)
+    attachments, attachment_wires = wire_attachments(layout, rows, solution, node_wires)
+    balance = balance_of(layout, branches, attachments, solution)
+    return Tables(nodes, branches, attachments, balance, Wired(node_wires, branch_wires, attachment_wires))
 
 
 def _dead(layout: Layout, zones: Zones, cases: int) -> Tables:
-    known = {"nominal_v": _nominal(layout, zones), "route_m": _routes(layout)}
+    known = {"nominal_v": nominal_of(layout, zones), "route_m": routes_of(layout)}
     none = np.full(cases, np.nan)
     return Tables(
         _dead_table(NodeState, layout.node_row, cases, known),
@@ -80,27 +91,9 @@ def _dead_table(state: Any, row: dict[str, int], cases: int, known: dict[str, ND
     return Table(state, tuple(row), columns, row)
 
 
-def _nominal(layout: Layout, zones: Zones) -> Real:
-    return zones.nominal_v[arrays_of(layout).zone]
-
-
-_lengths: Memory[Branch, float] = Memory(lambda b: b.length_m if isinstance(b, Line) else 0.0)
-
-
-def _routes(layout: Layout) -> Real:
-    """Route length from the supply; nan in dead parts."""
-    route = [0.0] * len(layout.nodes)
-    lengths, fed_by, fed_from = _lengths.of(layout.branches), layout.fed_by, layout.fed_from
-    for node in layout.order:
-        branch = fed_by[node]
-        if branch != NONE:
-            route[node] = route[fed_from[node]] + lengths[branch]
-    return np.where(arrays_of(layout).live, route, np.nan)
-
-
 def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Table[NodeState]:
     voltage = solution.voltage[:, 0]
-    nominal = _nominal(layout, zones)
+    nominal = nominal_of(layout, zones)
     level = size(voltage) * rows.wide[:, None]
     percent = 100 * level / nominal[:, None]
     columns = {
@@ -111,7 +104,7 @@ def _nodes(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tabl
         "high_percent": percent,
         "angle_deg": np.degrees(np.angle(voltage)),
         "drop_percent": percent[arrays_of(layout).root] - percent,
-        "route_m": _routes(layout),
+        "route_m": routes_of(layout),
     }
     return Table(NodeState, tuple(layout.node_ids), columns, layout.node_row)
 
@@ -134,7 +127,7 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
     start_s, end_s = voltage[start] * into.conj() * phases, voltage[end] * out.conj() * phases
     series, shunt = series * phases, shunt * phases
     start_a, end_a = size(into), size(out)
-    forward = _forward(layout, start_s + end_s)
+    forward = forward_of(layout, start_s + end_s)
     onward = forward if forward.ndim == 2 else forward[:, None]
     fed_a = np.where(onward, start_a, end_a)
     is_unit = np.zeros((count, 1), dtype=bool)
@@ -151,8 +144,8 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "start_kvar": start_s.imag,
         "end_kw": end_s.real,
         "end_kvar": end_s.imag,
-        "through_kw": _through(onward, start_s, end_s).real,
-        "through_kva": np.abs(_through(onward, start_s, end_s)),
+        "through_kw": through_of(onward, start_s, end_s).real,
+        "through_kva": np.abs(through_of(onward, start_s, end_s)),
         "loss_kw": series.real + shunt.real,
         "copper_kw": series.real,
         "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
@@ -161,47 +154,9 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
         "drop_percent": np.where(onward, 1.0, -1.0) * (percent[start] - percent[end]),
         "resistance_ohm": ohms.real,
         "reactance_ohm": ohms.imag,
-        "notch": _notches(layout, rows, cases),
+        "notch": notches_of(layout, rows, cases),
     }
     return Table(BranchState, tuple(layout.branch_ids), columns, layout.branch_row)
-
-
-def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
-    """(branch, case) notch of every tap: as drawn, or where a changer came to rest."""
-    drawn = [b.tap if isinstance(b, Transformer) else math.nan for b in layout.branches]
-    found = np.repeat(np.array(drawn, dtype=np.float64)[:, None], cases, axis=1)
-    for row, notch in rows.notches.items():
-        found[row] = notch
-    return found
-
-
-def _through(onward: NDArray[np.bool_], start_s: Complex, end_s: Complex) -> Complex:
-    """Power that enters a branch, where it enters: at the end it is fed from, at the other end where it
-    comes back. Its sign is that of the way it is fed; what is fed from both ends counts as it is fed.
-
-    onward : (branch, case or 1) bool, fed from its start
-    start_s, end_s : (branch, case) complex [kVA], entering at start and leaving at end
-    """
-    here, there = np.where(onward, start_s, -end_s), np.where(onward, end_s, -start_s)
-    return np.where(here.real >= 0, here, there)
-
-
-def _forward(layout: Layout, through: Complex) -> NDArray[np.bool_]:
-    """Whether a branch is fed from its start: (branch,), or (branch, case) where there are rings.
-
-    On a ring and between supplies the power decides, unless next to none flows; elsewhere the tree does.
-
-    through : (branch, case) complex [kVA], of both ends together
-    """
-    forward = arrays_of(layout).forward
-    if not layout.rings:
-        return forward
-    either = sorted({branch for ring in layout.rings for branch in ring.branches})
-    power = through[either]
-    little = FAINT * size(power).max(axis=0, initial=0.0)
-    found = np.repeat(forward[:, None], through.shape[1], axis=1)
-    found[either] = np.where(np.abs(power.real) > little, power.real > 0, found[either])
-    return found
 
 
 def _rating(branch: Branch) -> tuple[float, float, bool]:
@@ -235,7 +190,7 @@ def _attachments(layout: Layout, rows: Rows, solution: Solution, level: Real) ->
     voltage = level[at]
     power = np.where(np.isnan(voltage), np.nan, 0.0) + 0j
     phases = rows.phases[at][:, None] / 1e3
-    makes = np.array(_roles.of(layout.attachments), dtype="U1")[rows.loads] == "g"
+    makes = np.array(roles.of(layout.attachments), dtype="U1")[rows.loads] == "g"
     power[rows.loads] = solution.load_power[:, 0] * np.where(makes, -1.0, 1.0)[:, None]
     power[rows.shunts] = -solution.shunt_power[:, 0]
     power[rows.sources] = solution.source_power[:, 0]
@@ -251,35 +206,3 @@ def _attachments(layout: Layout, rows: Rows, solution: Solution, level: Real) ->
         "voltage_v": voltage,
     }
     return Table(AttachmentState, tuple(layout.attachment_ids), columns, layout.attachment_row)
-
-
-def _balance(
-    layout: Layout, branches: Table[BranchState], attachments: Table[AttachmentState], solution: Solution
-) -> Balance:
-    kind = np.array(_roles.of(layout.attachments), dtype="U1")
-    kw, kvar = attachments.column("kw"), attachments.column("kvar")
-    is_unit = np.zeros(len(layout.branches), dtype=bool)
-    is_unit[layout.units] = True
-    copper, iron = branches.column("copper_kw"), branches.column("iron_kw")
-
-    return Balance(
-        supply_kw=total(kw, kind == "s"),
-        supply_kvar=total(kvar, kind == "s"),
-        generation_kw=total(kw, kind == "g"),
-        load_kw=total(kw, kind == "l"),
-        load_kvar=total(kvar, kind == "l"),
-        line_kw=total(copper, ~is_unit),
-        copper_kw=total(copper, is_unit),
-        iron_kw=total(iron, is_unit),
-        loss_kw=total(branches.column("loss_kw")),
-        closure=solution.closure,
-    )
-
-
-def _role(attachment: Attachment) -> str:
-    if isinstance(attachment, Generator):
-        return "g"
-    return "l" if isinstance(attachment, Load | Motor) else "s" if isinstance(attachment, Supply) else "c"
-
-
-_roles: Memory[Attachment, str] = Memory(_role)

@@ -11,8 +11,11 @@ from numpy.typing import NDArray
 from app.model.by_case import owned
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Regulator, Switch
+from app.study.conductors import Conductors, conductors_of, is_wired
 from app.study.layout import Layout, arrays_of
 from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
+from app.study.wire_rows import wire_network
+from app.study.wires import PER_PHASE
 from app.study.zones import Zones
 from solver.network import Network
 
@@ -35,6 +38,7 @@ class Rows:
     phases : (node,) float, 3 in three-phase trees, 1 in two-wire trees
     wide : (node,) float, line volts over the solver's volts: √3 or 1
     notches : branch row of what steps by itself to (case,) int, once it has come to rest
+    conductors : where phases are solved one by one, with k = 4 and volts to earth; powers are then whole
     """
 
     network: Network
@@ -46,6 +50,7 @@ class Rows:
     phases: Real
     wide: Real
     notches: dict[int, NDArray[np.intp]] = field(default_factory=dict)
+    conductors: Conductors | None = None
 
 
 def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
@@ -53,7 +58,7 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
 
     Three-phase trees are solved per phase: line volts / √3, a third of the power. Two-wire trees are solved
     between the wires: whole power, the impedance of a line counts out and back, and its capacitance, stated
-    from one wire to the neutral plane, counts half.
+    from one wire to the neutral plane, counts half. Where phases are not alike they are solved one by one.
 
     drawing : the drawing
     layout : its graph
@@ -62,6 +67,8 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     Returns : Rows with the Network [V, ohm, S, VA]
     Source : common practice, no source
     """
+    if is_wired(drawing, layout, zones):
+        return _wired(drawing, layout, zones)
     graph = arrays_of(layout)
     start, end, at = graph.start, graph.end, graph.at
     two_wire, nominal = zones.two_wire[graph.tree], zones.nominal_v[graph.zone]
@@ -101,6 +108,15 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
         shunt_y=shunt_y[:, None, None, :],
     )
     return Rows(network, lines, units, sources, loads, shunts, phases, wide)
+
+
+def _wired(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
+    kinds, sources = _sort(layout, drawing), np.array(layout.supplies, dtype=np.intp)
+    rows = kinds.lines, kinds.units, sources, kinds.loads, kinds.shunts
+    conductors = conductors_of(layout, zones)
+    network = wire_network(drawing, layout, zones, conductors, rows)
+    wide = np.array([PER_PHASE[zones.system[zone]] for zone in layout.zone])
+    return Rows(network, *rows, np.ones(len(wide)), wide, conductors=conductors)
 
 
 def _lines(

@@ -114,6 +114,7 @@ def _outcome(
         fed_from=layout.before,
         starts=starts,
         faults=faulted.nodes if faulted is not None and faulted.worked_out else None,
+        wires=tables.wires,
     )
 
 

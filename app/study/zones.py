@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Load, Motor, Supply, Transformer
+from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
 from app.study.layout import NONE, Layout
 from app.study.outcome import Assumption, Finding, Verdict
 from app.study.words import slip, tell
@@ -22,12 +23,14 @@ class Zones:
 
     nominal_v : (zone,) float [V], between lines or between the two wires; nan where nothing says
     two_wire : (tree,) bool, the supply of the tree has two wires
+    system : (zone,) three-phase, two-wire or split-phase
     basis : per zone, whose voltage it is, as words
     assumed : per zone, true where no supply and no node states the voltage
     """
 
     nominal_v: NDArray[np.float64]
     two_wire: NDArray[np.bool_]
+    system: tuple[str, ...]
     basis: tuple[str, ...]
     assumed: tuple[bool, ...]
 
@@ -56,8 +59,9 @@ def zones_of(drawing: Drawing, layout: Layout) -> Zones:
             if not fed_only or layout.fed_by[at] == branch:
                 words = f"rated voltage of winding {number} of {tell(drawing, layout.branch_ids[branch])}"
                 settle(layout.zone[at], volts, words, True)
-    two_wire = [_is_two_wire(layout, supply) for supply in layout.supply_of]
-    return Zones(np.array(nominal), np.array(two_wire, dtype=bool), tuple(basis), tuple(assumed))
+    two_wire = [_wires(layout, supply) == TWO_WIRE for supply in layout.supply_of]
+    system = _systems(layout)
+    return Zones(np.array(nominal), np.array(two_wire, dtype=bool), system, tuple(basis), tuple(assumed))
 
 
 def level_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
@@ -169,8 +173,19 @@ def _windings(layout: Layout) -> list[tuple[int, int, int, float]]:
     return found
 
 
-def _is_two_wire(layout: Layout, supply: int) -> bool:
-    if supply == NONE:
-        return False
-    held = layout.attachments[supply]
-    return isinstance(held, Supply) and held.wires == "two-wire"
+def _wires(layout: Layout, supply: int) -> str:
+    held = None if supply == NONE else layout.attachments[supply]
+    return held.wires if isinstance(held, Supply) else THREE_PHASE
+
+
+def _systems(layout: Layout) -> tuple[str, ...]:
+    """The system of every zone: its supply's, or what the transformer that feeds it makes of it."""
+    found = [THREE_PHASE] * len(layout.zone_heads)
+    for node in layout.order:
+        zone, by = layout.zone[node], layout.fed_by[node]
+        if by == NONE:
+            found[zone] = _wires(layout, layout.supply_of[layout.tree[node]])
+        elif isinstance(unit := layout.branches[by], Transformer) and layout.zone_heads[zone] == node:
+            winding = 2 if layout.end[by] == node else 1
+            found[zone] = system_behind(unit, winding, found[layout.zone[layout.fed_from[node]]])
+    return tuple(found)

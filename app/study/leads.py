@@ -1,0 +1,87 @@
+"""Between which conductors an attachment hangs, and how its power is shared among them."""
+
+from dataclasses import dataclass
+
+from app.model.kinds import Attachment, Load, Motor
+from app.model.levels import TWO_WIRE
+from app.study.wires import ABC, PER_PHASE, N, bits, slots
+
+THIRDS = (1 / 3, 1 / 3, 1 / 3)
+ROUND = ((0, 1), (1, 2), (2, 0))
+
+
+@dataclass(frozen=True, slots=True)
+class Leads:
+    """The ways from conductor to conductor through an attachment.
+
+    pairs : (lead,) of conductors, 0 to 3, the second -1 for earth
+    shares : (lead,) float, share of the power in each
+    over : (lead,) float, nominal voltage of the zone over the nominal volts of each
+    missing : phases it is drawn on that do not reach its node, as bits
+    no_back : it hangs between phase and neutral where there is no way back
+    """
+
+    pairs: tuple[tuple[int, int], ...]
+    shares: tuple[float, ...]
+    over: tuple[float, ...]
+    missing: int = 0
+    no_back: bool = False
+
+
+def leads_of(hung: Attachment, system: str, reach: int, back: int | None) -> Leads:
+    """Where an attachment hangs at a node.
+
+    All phases: star to the neutral, or round the phases in delta, for a motor, and where there is no
+    neutral. One phase: to the neutral or earth. Two: between them.
+
+    hung : load, motor, generator or capacitor
+    system : of its zone
+    reach : bits, conductors that reach its node
+    back : conductor that takes what a phase brings, -1 earth, None where there is none
+
+    Returns : Leads
+    """
+    chosen = str(getattr(hung, "phases", "all"))
+    here = reach & ABC
+    if system == TWO_WIRE:
+        wanted = here if chosen == "all" else bits(chosen)
+        return Leads(tuple((p, N) for p in slots(wanted)[:1]), (1.0,), (1.0,), wanted & ~here)
+    wanted = here if chosen == "all" else bits(chosen)
+    missing = wanted & ~here
+    phases = slots(wanted)
+    if chosen != "all" and len(phases) == 2:
+        pair = (2, 0) if phases == [0, 2] else (phases[0], phases[1])
+        return Leads((pair,), (1.0,), (1.0,), missing)
+    closed = isinstance(hung, Motor) or getattr(hung, "connection", "star") == "delta"
+    if len(phases) == 3 and (closed or back is None):
+        return Leads(ROUND, _shares(hung), (1.0, 1.0, 1.0))
+    if len(phases) == 2 and (closed or back is None):
+        return Leads(((2, 0) if phases == [0, 2] else (phases[0], phases[1]),), (1.0,), (1.0,))
+    if back is None:
+        return Leads((), (), (), missing, no_back=True)
+    shares = _shares(hung) if len(phases) == 3 else (1 / max(len(phases), 1),) * len(phases)
+    over = PER_PHASE[system]
+    return Leads(tuple((p, back) for p in phases), shares, (over,) * len(phases), missing)
+
+
+def _shares(hung: Attachment) -> tuple[float, ...]:
+    if not isinstance(hung, Load) or hung.share_a_percent is None or hung.share_b_percent is None:
+        return THIRDS
+    a, b = hung.share_a_percent / 100, hung.share_b_percent / 100
+    return a, b, 1 - a - b
+
+
+def across(stated_v: float, nominal_v: float, over: float) -> float:
+    """Volts across one lead out of a stated voltage: of the lead itself, or between lines, as is nearer.
+
+    stated_v : float [V], nan where nothing is stated
+    nominal_v : float [V] of the zone
+    over : float, nominal voltage of the zone over that of the lead
+
+    Returns : float [V]
+    Source : common practice, no source
+    """
+    base = nominal_v / over
+    if stated_v != stated_v:
+        return base
+    return stated_v if abs(stated_v / base - 1) <= abs(stated_v / nominal_v - 1) else stated_v / over

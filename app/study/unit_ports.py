@@ -1,0 +1,118 @@
+"""Transformers and regulators as two-ports between phases and neutral."""
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model import taps
+from app.model.fault_data import Put, fault_value, star_earth_ohm
+from app.model.kinds import Transformer
+from app.model.levels import SPLIT, THREE_PHASE
+from app.study.unit_wires import OPEN, UnitWires
+from app.study.wires import ROOT3, N
+from solver.banks import Coil, bank, centre_tapped
+from solver.windings import Unit, Winding, passing, three_phase
+
+Complex = NDArray[np.complex128]
+APART = Winding("D")
+
+
+def port_of(unit: Transformer, wires: UnitWires | None, z_at_2: complex, y: Complex) -> Unit:
+    """The two-port of a transformer at its tap.
+
+    unit : the transformer
+    wires : its conductors; None where it is dead
+    z_at_2 : [ohm] of the whole unit, all parallel ones merged, seen at winding 2
+    y : (2,) complex [S] magnetising admittance at the terminals of each winding
+
+    Returns : Unit
+    Source : see solver.windings, solver.banks
+    """
+    v1, v2 = taps.windings(unit, unit.tap if unit.regulates == "no" else 0)
+    iron: Any = np.asarray(y)[:, None]
+    if wires is None:
+        return three_phase(APART, APART, 0, v1, v2, z_at_2, iron)
+    if unit.build in OPEN:
+        star = unit.build != "open delta"
+        turns = v1 / ROOT3 if star else v1
+        half = (y[0] * (1.5 if star else 0.5), y[1] / 2)
+        coils = [Coil(one, two, turns, v2, 2 * z_at_2, half) for one, two in wires.ends]
+        return bank(coils, earth_2=_corner(unit))
+    if unit.build == "centre-tapped":
+        y1 = y[0] + y[1] * (v2 / v1) ** 2
+        return centre_tapped(wires.ends[0][0], v1, v2, z_at_2, _earth(unit, 2), y1)
+    if wires.ends:
+        from_1, from_2 = wires.ends[0]
+        earths = _held(from_1, unit, 1, wires.fed), _held(from_2, unit, 2, wires.fed)
+        return bank([Coil(from_1, from_2, v1, v2, z_at_2, (y[0], y[1]))], *earths)
+    group = taps.group(unit.vector_group)
+    assert group is not None  # rows are made only of a layout whose groups were checked
+    one = _winding(unit, group[0], 1, wires.neutral[0])
+    two = _winding(unit, group[1], 2, wires.neutral[1])
+    core = z_at_2 * _value(fault_value(unit, "z0_ratio", v2)) if _limbs(group) else None
+    return three_phase(one, two, group[2], v1, v2, z_at_2, iron, core)
+
+
+def ratio_of(unit: Transformer, wires: UnitWires | None, systems: list[str], turned: complex) -> complex:
+    """Phase volts of winding 1 over those of winding 2 with nothing connected.
+
+    unit : the transformer
+    wires : its conductors
+    systems : of the zones at winding 1 and 2
+    turned : complex, ratio of rated volts with the clock
+
+    Returns : complex
+    Source : common practice, no source
+    """
+    if wires is None or not wires.ends or unit.build in OPEN:
+        return turned
+    over = []
+    for ends, system in zip(wires.ends[0], systems, strict=True):
+        between = ends[1] not in (N, -1)
+        over.append((ROOT3 if system == THREE_PHASE else 2.0 if system == SPLIT else 1.0) if between else 1)
+    return turned * over[1] / over[0]
+
+
+def through(has: int) -> Unit:
+    """A regulator of ratio 1, the neutral passing by.
+
+    has : bits, its conductors
+
+    Returns : Unit
+    """
+    return passing([bool(has >> slot & 1) for slot in range(4)])
+
+
+def _winding(unit: Transformer, letters: str, number: int, neutral: bool) -> Winding:
+    letter = letters[0].upper()
+    star = letters.upper().endswith("N")
+    earth = star_earth_ohm(unit, number) if letter != "D" else None
+    return Winding(letter, star and neutral, None if earth is None else complex(earth))
+
+
+def _limbs(group: tuple[str, str, int]) -> bool:
+    """Both windings in star: a zero sequence has the core to go through where one side lets it not pass."""
+    return all(letters[0].upper() == "Y" for letters in group[:2])
+
+
+def _earth(unit: Transformer, winding: int) -> complex:
+    """Of a single-phase winding that feeds: solid where nothing is said."""
+    given = unit.earth_1_ohm if winding == 1 else unit.earth_2_ohm
+    return complex(given or 0.0)
+
+
+def _held(ends: tuple[int, int], unit: Transformer, winding: int, fed: int) -> tuple[int, complex] | None:
+    """The neutral of the side that feeds, or that is stated, is earthed."""
+    given = unit.earth_1_ohm if winding == 1 else unit.earth_2_ohm
+    held = ends[1] == N and (given is not None or winding - 1 != fed)
+    return (N, _earth(unit, winding)) if held else None
+
+
+def _corner(unit: Transformer) -> tuple[int, complex] | None:
+    """An open delta is earthed at its corner b where an impedance is given, else not at all."""
+    return None if unit.earth_2_ohm is None else (1, complex(unit.earth_2_ohm))
+
+
+def _value(given: float | Put) -> float:
+    return given.value if isinstance(given, Put) else given

@@ -1,0 +1,164 @@
+"""Branches whose phases are solved one by one: amperes of each conductor, whole powers, worst loading."""
+
+import math
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model.kinds import Line, Regulator, Switch, Transformer
+from app.study.flows import forward_of, notches_of, through_of
+from app.study.layout import Layout, arrays_of
+from app.study.outcome import BranchState, BranchWires, NodeState, NodeWires, Table
+from app.study.rows import Rows
+from app.study.unit_wires import rated_current
+from app.study.wires import ABC, letters, slots
+from solver import Solution
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+
+def wire_branches(
+    layout: Layout, rows: Rows, solution: Solution, nodes: Table[NodeState], phases: Table[NodeWires]
+) -> tuple[Table[BranchState], Table[BranchWires]]:
+    """Amperes in every conductor, the powers of all together, and the loading of the worst.
+
+    layout : the graph
+    rows : of the solver, with conductors
+    solution : of these rows
+    nodes : percent (node, case) of the lowest phase
+    phases : a_v, b_v, c_v (node, case) [V] and base_v (node,) [V]
+
+    Returns : Table of BranchState and Table of BranchWires, by branch id
+    """
+    conductors = rows.conductors
+    assert conductors is not None
+    count, cases = len(layout.branches), solution.voltage.shape[-1]
+    graph = arrays_of(layout)
+    into, out = np.full((2, count, 4, cases), complex(np.nan, np.nan))
+    into[rows.lines], into[rows.units] = solution.line_in, solution.transformer_in
+    out[rows.lines], out[rows.units] = solution.line_out, solution.transformer_out
+    series, shunt = np.full((2, count, cases), complex(np.nan, np.nan))
+    series[rows.lines], series[rows.units] = solution.line_series_loss, solution.transformer_series_loss
+    shunt[rows.lines], shunt[rows.units] = solution.line_charging, solution.transformer_magnetising_loss
+    ends = [np.where(np.isnan(solution.voltage), 0, solution.voltage)[e] for e in (graph.start, graph.end)]
+    start_s, end_s = ((v * i.conj()).sum(axis=1) / 1e3 for v, i in zip(ends, (into, out), strict=True))
+    series, shunt = series / 1e3, shunt / 1e3
+    at_start, at_end = np.abs(into), np.abs(out)
+    forward = forward_of(layout, start_s + end_s)
+    onward = forward if forward.ndim == 2 else forward[:, None]
+    is_unit = np.zeros((count, 1), dtype=bool)
+    is_unit[rows.units] = True
+    fed = np.where(onward[:, None], at_start, at_end)
+    amps = np.where(is_unit[:, None], fed, np.maximum(at_start, at_end))
+    has = _has(layout, rows, onward)
+    shown = np.where(has, amps, np.nan)
+    start_a, end_a = (
+        np.where(s.any(axis=1), np.where(s, a, 0).max(axis=1), np.nan)
+        for s, a in ((has, at_start), (has, at_end))
+    )
+    ohms = _ohms(layout, rows)
+    entering = through_of(onward, start_s, end_s)
+    known = ~np.isnan(start_s)
+    columns = {
+        "live": known.all(axis=1),
+        "forward": forward,
+        "current_a": np.where(known, np.nanmax(np.where(has, amps, 0), axis=1), np.nan),
+        "start_a": np.where(known, start_a, np.nan),
+        "end_a": np.where(known, end_a, np.nan),
+        "start_kw": start_s.real,
+        "start_kvar": start_s.imag,
+        "end_kw": end_s.real,
+        "end_kvar": end_s.imag,
+        "through_kw": entering.real,
+        "through_kva": np.abs(entering),
+        "loss_kw": series.real + shunt.real,
+        "copper_kw": series.real,
+        "iron_kw": np.where(is_unit, shunt.real, np.where(known, 0.0, np.nan)),
+        "loss_kvar": series.imag + shunt.imag,
+        "loaded_percent": np.where(known, _loading(layout, rows, at_start, at_end), np.nan),
+        "drop_percent": _drop(layout, rows, onward, nodes, phases),
+        "resistance_ohm": ohms.real,
+        "reactance_ohm": ohms.imag,
+        "notch": notches_of(layout, rows, cases),
+    }
+    wires = {
+        "phases": np.array([letters(bits) for bits in _side_bits(layout, rows, onward)], dtype="U4"),
+        **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
+    }
+    ids, row = tuple(layout.branch_ids), layout.branch_row
+    return Table(BranchState, ids, columns, row), Table(BranchWires, ids, wires, row)
+
+
+def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[int]:
+    """Conductors of each branch; of a transformer those of the winding that is fed in the first case."""
+    conductors = rows.conductors
+    assert conductors is not None
+    found = list(conductors.branch)
+    for row, unit in conductors.units.items():
+        found[row] = unit.one if onward[row, 0] else unit.two
+    return found
+
+
+def _has(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """(branch, k, 1)"""
+    bits = np.array(_side_bits(layout, rows, onward), dtype=np.intp).reshape(-1)
+    return (bits[:, None] >> np.arange(4) & 1).astype(bool)[..., None]
+
+
+def _ohms(layout: Layout, rows: Rows) -> Complex:
+    """(branch,) impedance of the first phase of a line, of a transformer seen at winding 2."""
+    conductors, network = rows.conductors, rows.network
+    assert conductors is not None
+    found = np.full(len(layout.branches), complex(np.nan, np.nan))
+    found[rows.units] = network.transformer_z[:, 0]
+    for n, row in enumerate(rows.lines):
+        phases = slots(conductors.branch[row] & ABC)
+        if phases:
+            found[row] = network.line_z[n, phases[0], phases[0], 0]
+    return found
+
+
+def _loading(layout: Layout, rows: Rows, at_start: Real, at_end: Real) -> Real:
+    """(branch, case) current over rated current of the worst conductor, the neutral among them; of a
+    transformer of the worst coil of both windings. nan where no rating is given."""
+    conductors = rows.conductors
+    assert conductors is not None
+    found = np.full((len(layout.branches), at_start.shape[-1]), np.nan)
+    for row, branch in enumerate(layout.branches):
+        if isinstance(branch, Transformer):
+            unit = conductors.units.get(row)
+            if unit is not None:
+                sides = [
+                    amps[row][slots(bits)].max(axis=0) / rated_current(branch, winding, unit)
+                    for winding, amps, bits in zip((1, 2), (at_start, at_end), unit.judged, strict=True)
+                ]
+                found[row] = 100 * np.maximum(*sides)
+            continue
+        given = branch.rating_a if isinstance(branch, Line | Regulator | Switch) else None
+        has = slots(conductors.branch[row])
+        if given is not None and has:
+            rated = given * (branch.side_by_side if isinstance(branch, Line) else 1)
+            found[row] = 100 * np.maximum(at_start[row][has], at_end[row][has]).max(axis=0) / rated
+    return found
+
+
+def _drop(
+    layout: Layout,
+    rows: Rows,
+    onward: NDArray[np.bool_],
+    nodes: Table[NodeState],
+    phases: Table[NodeWires],
+) -> Real:
+    """(branch, case) % lost along it, of the phase that loses most where both ends have it."""
+    graph, percent = arrays_of(layout), nodes.column("percent")
+    sign = np.where(onward, 1.0, -1.0)
+    whole = sign * (percent[graph.start] - percent[graph.end])
+    base = phases.column("base_v")[:, None, None]
+    each = 100 * np.stack([phases.column(f"{letter}_v") for letter in "abc"], axis=1) / base
+    lost = sign[:, None] * (each[graph.start] - each[graph.end])
+    worst = np.where(np.isnan(lost), -math.inf, lost).max(axis=1)
+    kind = phases.column("against")
+    alike = kind[graph.start] == kind[graph.end]
+    alike &= np.array([not isinstance(b, Transformer) for b in layout.branches], dtype=bool)
+    return np.where(alike[:, None] & np.isfinite(worst), worst, whole)

@@ -1,0 +1,235 @@
+"""Nodes and attachments whose phases are solved one by one: volts of each, neutral, unbalance, leads."""
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model.levels import THREE_PHASE
+from app.study.flows import nominal_of, roles, routes_of
+from app.study.layout import Layout, arrays_of
+from app.study.outcome import AttachmentState, AttachmentWires, NodeState, NodeWires, Table
+from app.study.rows import Rows
+from app.study.wires import ABC, NEUTRAL, PER_PHASE, N, letters
+from app.study.zones import Zones
+from solver import Solution
+from solver.wires import EARTH
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+THIRD = np.exp(2j * np.pi / 3)
+TO_SEQUENCE = (
+    np.array([[1, 1, 1], [1, THIRD, THIRD**2], [1, THIRD**2, THIRD]]) / 3
+)  # zero, positive, negative
+KINDS = ("neutral", "earth", "next phase")
+
+
+def wire_nodes(
+    layout: Layout, zones: Zones, rows: Rows, solution: Solution
+) -> tuple[Table[NodeState], Table[NodeWires]]:
+    """Volts of every phase against what loads hang on there, and of the lowest and highest of them.
+
+    Unbalance is negative over positive sequence, V2/V1; spread the largest deviation of a line voltage from
+    the mean of the three, over that mean.
+
+    layout : the graph
+    zones : nominal_v (zone,) float [V], system (zone,)
+    rows : of the solver, with conductors
+    solution : of these rows
+
+    Returns : Table of NodeState and Table of NodeWires, by node id
+    Source : IEC 61000-2-2 for V2/V1 (from memory); NEMA MG 1 for the spread (from memory)
+    """
+    conductors = rows.conductors
+    assert conductors is not None
+    graph = arrays_of(layout)
+    volts, nominal = solution.voltage, nominal_of(layout, zones)
+    systems = [zones.system[zone] for zone in layout.zone]
+    reach, drawn = np.array(conductors.node), np.array(conductors.drawn)
+    three = np.array([system == THREE_PHASE for system in systems], dtype=bool)
+    kind = _against(layout, reach, drawn, three)
+    over = np.array([PER_PHASE[system] for system in systems])
+    base = nominal / np.where(kind == 2, 1.0, over)
+    pairs = _pairs(volts, reach, kind)
+    percent = 100 * np.abs(pairs) / base[:, None, None]
+    low, high = _least(percent), -_least(-percent)
+    sequence = np.abs(np.einsum("sp,npb->nsb", TO_SEQUENCE, volts[:, :3]))
+    has_neutral = (drawn & NEUTRAL > 0)[:, None]
+    first = np.where(kind == 2, volts[:, 0], _least_of_first(pairs))[:, :] if len(reach) else volts[:, 0]
+    nodes = {
+        "live": graph.live,
+        "nominal_v": nominal,
+        "voltage_v": low * nominal[:, None] / 100,
+        "percent": low,
+        "high_percent": high,
+        "angle_deg": np.degrees(np.angle(first)),
+        "drop_percent": low[graph.root] - low,
+        "route_m": routes_of(layout),
+    }
+    with np.errstate(divide="ignore", invalid="ignore"):
+        unbalance = 100 * sequence[:, 2] / sequence[:, 1]
+    sizes = np.abs(pairs)
+    wires = {
+        "system": np.array(systems, dtype="U11"),
+        "phases": np.array([letters(has & ABC) for has in reach.tolist()], dtype="U3"),
+        "against": np.array(KINDS, dtype="U10")[kind],
+        "base_v": np.where(graph.live, base, np.nan),
+        "a_v": sizes[:, 0],
+        "b_v": sizes[:, 1],
+        "c_v": sizes[:, 2],
+        "neutral_v": np.where(has_neutral, np.abs(volts[:, N]), np.nan),
+        "unbalance_percent": np.where(three[:, None], unbalance, np.nan),
+        "spread_percent": np.where(three[:, None], _spread(volts), np.nan),
+    }
+    ids = tuple(layout.node_ids)
+    return Table(NodeState, ids, nodes, layout.node_row), Table(NodeWires, ids, wires, layout.node_row)
+
+
+def _against(
+    layout: Layout, reach: NDArray[np.intp], drawn: NDArray[np.intp], three: NDArray[np.bool_]
+) -> NDArray[np.intp]:
+    """(node,) what phase volts are taken against: 0 neutral, 1 earth, 2 the next phase."""
+    lone = np.array([(has & ABC).bit_count() == 1 for has in reach.tolist()], dtype=bool)
+    earthed = np.zeros(len(reach), dtype=bool)
+    for row, branch in enumerate(layout.branches):
+        if getattr(branch, "neutral", "") == "earthed along":
+            earthed[[layout.start[row], layout.end[row]]] = True
+    found = np.where(drawn & NEUTRAL > 0, 0, np.where(earthed | lone | ~three, 1, 2))
+    return np.asarray(found, dtype=np.intp)
+
+
+def _pairs(volts: Complex, reach: NDArray[np.intp], kind: NDArray[np.intp]) -> Complex:
+    """(node, 3, case) volts of each phase that reaches, nan where none does."""
+    there = (reach[:, None] >> np.arange(3) & 1).astype(bool)
+    neutral = np.where(np.isnan(volts[:, N]), 0, volts[:, N])
+    to_neutral = volts[:, :3] - np.where((kind == 0)[:, None], neutral, 0)[:, None]
+    between = volts[:, :3] - np.roll(volts[:, :3], -1, axis=1)
+    both = there & np.roll(there, -1, axis=1)
+    by_phase = (kind == 2)[:, None]
+    shown = np.where(by_phase, both, there)[..., None]
+    chosen = np.where(by_phase[..., None], between, to_neutral)
+    return np.where(shown, chosen, complex(np.nan, np.nan))
+
+
+def _least(values: Real) -> Real:
+    """(node, case) least of the phases, nan where there are none."""
+    known = np.where(np.isnan(values), np.inf, values).min(axis=1)
+    return np.where(np.isinf(known), np.nan, known)
+
+
+def _least_of_first(pairs: Complex) -> Complex:
+    """(node, case) volts of the first phase that is there."""
+    found = pairs[:, 0]
+    for phase in (1, 2):
+        found = np.where(np.isnan(found), pairs[:, phase], found)
+    return found
+
+
+def _spread(volts: Complex) -> Real:
+    lines = np.abs(volts[:, :3] - np.roll(volts[:, :3], -1, axis=1))
+    mean = lines.mean(axis=1)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return np.asarray(100 * np.abs(lines - mean[:, None]).max(axis=1) / mean)
+
+
+def wire_attachments(
+    layout: Layout, rows: Rows, solution: Solution, nodes: Table[NodeWires]
+) -> tuple[Table[AttachmentState], Table[AttachmentWires]]:
+    """Whole power of every attachment, the amperes in each of its leads, the lowest volts across it.
+
+    layout : the graph
+    rows : of the solver, with conductors
+    solution : of these rows
+    nodes : base_v (node,) [V] of the phases at each node
+
+    Returns : Table of AttachmentState and Table of AttachmentWires, by attachment id
+    """
+    conductors = rows.conductors
+    assert conductors is not None
+    at, network = arrays_of(layout).at, rows.network
+    cases = solution.voltage.shape[-1]
+    power = np.full((len(at), cases), np.nan, dtype=complex)
+    amps = np.full((len(at), 4, cases), np.nan, dtype=complex)
+    live = arrays_of(layout).live[at]
+    power[live], amps[live] = 0, 0
+    makes = np.array(roles.of(layout.attachments), dtype="U1")[rows.loads] == "g"
+    sign = np.where(makes, -1.0, 1.0)[:, None]
+    power[rows.loads] = solution.load_power.sum(axis=1) * sign
+    power[rows.shunts] = -solution.shunt_power.sum(axis=1)
+    power[rows.sources] = solution.source_power.sum(axis=1)
+    amps[rows.loads] = _in_leads(solution, network.wires.load_to if network.wires is not None else None)
+    y = network.shunt_y
+    amps[rows.shunts] = np.einsum(
+        "rijb,rjb->rib", y + np.zeros(cases), _known(solution.voltage[at[rows.shunts]])
+    )
+    amps[rows.sources] = solution.source_current
+    size = np.abs(amps)
+    has = _hung_on(layout, rows)
+    shown = np.where(has[..., None], size, np.nan)
+    columns: dict[str, NDArray[Any]] = {
+        "live": live,
+        "kw": power.real / 1e3,
+        "kvar": power.imag / 1e3,
+        "current_a": np.where(live[:, None], np.nanmax(np.where(has[..., None], size, 0), axis=1), np.nan),
+        "voltage_v": _across(layout, rows, solution, nodes),
+    }
+    wires: dict[str, NDArray[Any]] = {
+        "phases": np.array([letters(int(bits)) for bits in has @ (1 << np.arange(4))], dtype="U4"),
+        **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
+    }
+    ids, row = tuple(layout.attachment_ids), layout.attachment_row
+    return Table(AttachmentState, ids, columns, row), Table(AttachmentWires, ids, wires, row)
+
+
+def _known(values: Complex) -> Complex:
+    return np.where(np.isnan(values), 0, values)
+
+
+def _in_leads(solution: Solution, to: NDArray[np.intp] | None) -> Complex:
+    """(load, k, case) current into each conductor's lead: what one brings the other takes back."""
+    drawn = _known(solution.load_current)
+    total = drawn.copy()
+    if to is not None:
+        for row, slot in zip(*np.nonzero(to != EARTH), strict=True):
+            total[row, to[row, slot]] -= drawn[row, slot]
+    return total
+
+
+def _hung_on(layout: Layout, rows: Rows) -> NDArray[np.bool_]:
+    """(attachment, k) conductors between which each hangs; a supply on all that lead away."""
+    conductors = rows.conductors
+    assert conductors is not None
+    has = np.zeros((len(layout.attachments), 4), dtype=bool)
+    for row, leads in conductors.leads.items():
+        for pair in leads.pairs:
+            has[row, [slot for slot in pair if slot != EARTH]] = True
+    for row in rows.sources:
+        node = layout.at[row]
+        has[row] = [bool((conductors.node[node] & conductors.drawn[node]) >> slot & 1) for slot in range(4)]
+    return has
+
+
+def _across(layout: Layout, rows: Rows, solution: Solution, nodes: Table[NodeWires]) -> Real:
+    """(attachment, case) lowest volts across the leads; of three phases as line volts."""
+    conductors, volts = rows.conductors, solution.voltage
+    assert conductors is not None
+    found = np.full((len(layout.attachments), volts.shape[-1]), np.nan)
+    for row, leads in conductors.leads.items():
+        at = _known(volts[layout.at[row]])
+        sizes = [
+            np.abs(at[one] - (0 if other == EARTH else at[other])) * (over if len(leads.pairs) > 1 else 1)
+            for (one, other), over in zip(leads.pairs, leads.over, strict=True)
+        ]
+        if sizes:
+            found[row] = np.min(sizes, axis=0)
+    for row in rows.sources:
+        at, id = layout.at[row], layout.node_ids[layout.at[row]]
+        base = nodes.column("base_v")[nodes.rows[id]]
+        lowest = np.nanmin([nodes.column(f"{letter}_v")[at] for letter in "abc"], axis=0)
+        found[row] = lowest / base * _nominal(layout, rows, int(row))
+    return found
+
+
+def _nominal(layout: Layout, rows: Rows, row: int) -> float:
+    supply = layout.attachments[row]
+    return float(getattr(supply, "nominal_v", np.nan))

@@ -1,0 +1,41 @@
+"""Conductors as bits and letters: A 1, B 2, C 4, N 8; the systems they belong to."""
+
+from collections.abc import Iterable
+
+from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
+
+LETTERS = "ABCN"
+N, NEUTRAL, ABC = 3, 0b1000, 0b0111
+OF_SYSTEM = {THREE_PHASE: ABC, TWO_WIRE: 0b0001, SPLIT: 0b0011}
+ROOT3 = 3**0.5
+PER_PHASE = {THREE_PHASE: ROOT3, TWO_WIRE: 1.0, SPLIT: 2.0}  # nominal volts over those of a phase to neutral
+
+
+def bits(letters: Iterable[str]) -> int:
+    """Conductors of some letters.
+
+    letters : such as `AB` or `BN`
+
+    Returns : int, bits
+    """
+    return sum(1 << LETTERS.index(letter) for letter in letters)
+
+
+def letters(has: int) -> str:
+    """Letters of some conductors, such as `ABN`.
+
+    has : bits
+
+    Returns : str
+    """
+    return "".join(letter for slot, letter in enumerate(LETTERS) if has >> slot & 1)
+
+
+def slots(has: int) -> list[int]:
+    """Slots of some conductors, 0 to 3.
+
+    has : bits
+
+    Returns : list of int, lowest first
+    """
+    return [slot for slot in range(4) if has >> slot & 1]
