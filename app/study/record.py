@@ -8,6 +8,7 @@ import numpy as np
 
 from app.model.drawing import Drawing
 from app.model.kinds import kind_of
+from app.model.writing import body
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Finding, Outcome, Table, Wired
 from app.study.start_table import StartTable
@@ -97,9 +98,9 @@ def finding_record(finding: Finding) -> dict[str, Any]:
     return {name: plain_value(value) for name, value in told.items()}
 
 
-
 def plain_value(value: Any) -> Any:
     """What json can hold: lists for arrays, None for what is not finite.
+
     value : a figure, text or any nesting of lists of them
 
     Returns : the same as plain data
