@@ -208,7 +208,7 @@ def listed_findings(findings: Sequence[Finding]) -> str:
     """Findings under their head, one a line."""
     if not findings:
         return ""
-    lines = (f"  {f.verdict.value.upper()}: {f.sentence}{_margin(f)}" for f in outcome.findings)
+    lines = (f"  {f.verdict.value.upper()}: {f.sentence}{_margin(f)}" for f in findings)
     return "Findings\n" + "\n".join(lines)
 
 
