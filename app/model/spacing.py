@@ -15,6 +15,7 @@ from app.model.units import parse
 Place = tuple[float, float]
 FARTHEST_M = 200.0
 MOST = 4
+FOOT = 0.3048
 EXAMPLE = "-1.1 9; 0 9; 1.1 9; 0 7.5"
 
 HungAt = Annotated[
@@ -63,6 +64,12 @@ def in_metres(written: str) -> str:
 def written_of(where: tuple[Place, ...]) -> str:
     """Places as text, exact to the last bit."""
     return "; ".join(f"{typed(x)} {typed(y)}" for x, y in where)
+
+
+def in_feet(written: str) -> str:
+    """The same in feet to a hundredth, to be read beside it."""
+    pairs = (f"{x / FOOT:.2f} {y / FOOT:.2f}" for x, y in places(written))
+    return "; ".join(pair.replace(".00", "") for pair in pairs) + " ft"
 
 
 _UNIT = re.compile(r"[^\d.,+-].*")

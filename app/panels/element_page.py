@@ -8,6 +8,7 @@ from app.canvas.theme import Theme
 from app.live.session import Session
 from app.model import assumed, edits, figures, taps, units
 from app.model.by_case import Scaled
+from app.model.conductors import FOLLOWING, STAND_INS, is_hung
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
@@ -16,6 +17,7 @@ from app.panels.case_rows import CaseRows
 from app.panels.element_words import step_text, subject
 from app.panels.field_row import VARIOUS, FieldRow, written
 from app.panels.page import Page
+from app.panels.spacing_row import SpacingRow
 from app.panels.special_rows import DemandRow, TapRow
 
 NOT_GIVEN = "not given"
@@ -25,6 +27,7 @@ LESS_ASKED = {  # shown below the results
     "z0_ratio", "angle_deg", "area_mm2", "capacitance_uf_per_km", "conductor", "constant_current_percent",
     "constant_impedance_percent", "drop_r_ohm", "drop_x_ohm", "note", "reference_v",
     "step_percent", "steps_down", "steps_up", "notch_percent", "tapped", "taps_down", "taps_up",
+    "hung_at_m", *STAND_INS,
 }  # fmt: skip
 
 
@@ -52,6 +55,8 @@ class ElementPage(Page):
             row: FieldRow = self._tap_row(field)
         elif field.name == "demand_kva":
             row = DemandRow(field, fields_of(self.kind)["demand_kw"], self._take, self.theme)
+        elif field.name == "hung_at_m":
+            row = SpacingRow(field, self._take, self.theme)
         elif field.name == "demand_kw":
             return
         else:
@@ -82,6 +87,8 @@ class ElementPage(Page):
                 row.show_demand(elements)
             else:
                 self._show(row, name, elements, stand_ins)
+            if isinstance(row, SpacingRow):
+                row.show_spacing(drawing, self.ids)
         if self.cases is not None:
             hung = [(i, e) for i, e in zip(self.ids, elements, strict=True) if isinstance(e, Scaled)]
             self.cases.show_cases(drawing.cases, hung)
@@ -89,6 +96,11 @@ class ElementPage(Page):
     def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
         values = [getattr(element, name) for element in elements]
         value, field = values[0], row.field
+        if name in FOLLOWING:
+            spaced = all(is_hung(element) for element in elements)
+            row.follow("by spacing" if spaced else "")
+            if spaced:
+                return
         if any(other != value for other in values[1:]):
             row.show_value(value, quiet=VARIOUS)
             return

@@ -39,6 +39,7 @@ def subject(drawing: Drawing, ids: Sequence[str]) -> str:
 NOUNS = {  # where the label reads on into its box
     "fault_degc": "Temperature of the hot conductor",
     "held_percent": "Volts held",
+    "hung_at_m": "Spacing",
     "hold_percent": "Volts held",
     "limited_current": "Current that the starter lets through",
     "limited_power_factor": "Power factor behind the starter",
@@ -56,7 +57,7 @@ def noun(field: Field) -> str:
 
 def step_text(field: Field, value: object, who: str) -> str:
     """The undo text: `Length of C2 to 900 m`."""
-    if field.name in ("note", "name") and not value:
+    if field.name in ("note", "name", "hung_at_m") and not value:
         return f"{noun(field)} of {who} cleared"
     if value is None:
         return f"{noun(field)} of {who} left blank"

@@ -142,6 +142,12 @@ class FieldRow(QWidget):
         tip = "\n".join(part for part in parts if part)
         editor.setToolTip(plain_tip(tip))
 
+    def follow(self, whence: str) -> None:
+        """Greyed and without a value of its own while another field tells it; empty: as usual again."""
+        self.editor.setEnabled(not whence)
+        if whence:
+            self.show_value(None, quiet=whence, other="What was typed here is kept, but not used.")
+
     def _settle(self, editor: Entry, text: str, quiet: str) -> None:
         was_busy = editor.busy
         editor.settle(text)

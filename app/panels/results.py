@@ -16,12 +16,15 @@ from app.model.kinds import (
     Load,
     Motor,
     Node,
+    OverheadLine,
     Regulator,
     Supply,
     Switch,
     Transformer,
 )
 from app.study.outcome import Finding, NodeState, Outcome, Table, Verdict
+from app.study.overhead_working import ohms as per_km
+from app.study.overhead_working import working_in
 
 Write = Callable[[float], str]
 VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("loading",)
@@ -151,7 +154,18 @@ def _line(asked: Asked, id: str) -> list[Row]:
         row("Loss", "loss_kw", loss),
         _once(row(f"R at {degrees:g} °C", "resistance_ohm", ohms)),
         _once(row("X", "reactance_ohm", ohms)),
+        *_spacing(asked, element),
     ]
+
+
+def _spacing(asked: Asked, line: Line) -> list[Row]:
+    """What a kilometre of one run has by its spacing, which knows no case."""
+    if not isinstance(line, OverheadLine) or not line.hung_at_m:
+        return []
+    made = working_in(asked.drawing, line)
+    if made.zero is None:
+        return [Row("Loop a km", (per_km(made.z),))]
+    return [Row("Z1 a km", (per_km(made.z),)), Row("Z0 a km", (per_km(made.zero),))]
 
 
 def _transformer(asked: Asked, id: str) -> list[Row]:
