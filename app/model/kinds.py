@@ -5,6 +5,17 @@ from typing import Annotated, Any, Literal
 from msgspec import Struct
 from msgspec import field as held
 
+from app.model.fault_fields import (
+    HotDegc,
+    LeastMva,
+    MostMva,
+    ReturnR,
+    SupplyXr,
+    Trip,
+    Withstand,
+    ZeroR,
+    ZeroX,
+)
 from app.model.fields import field, plain, text
 from app.model.phasing import (
     Build,
@@ -51,13 +62,7 @@ class Node(Element, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    withstand_ka: (
-        Annotated[
-            float,
-            field("Fault rating", "kA", gt=0, le=1000, help="Of the board, three-phase. Blank: not judged."),
-        ]
-        | None
-    ) = None
+    withstand_ka: Withstand = None
     earth_ohm: Electrode = None
 
 
@@ -106,40 +111,13 @@ class Line(Branch, frozen=True, kw_only=True):
     rating_a: (
         Annotated[float, field("Rating", "A", gt=0, le=1e6, help="As installed, of one run.")] | None
     ) = None
-    trip_a: (
-        Annotated[
-            float,
-            field(
-                "Device trips at",
-                "A",
-                gt=0,
-                le=1e6,
-                help="Current at which the fuse or breaker at its fed end trips in 5 s. Blank: not judged.",
-            ),
-        ]
-        | None
-    ) = None
+    trip_a: Trip = None
     neutral_resistance_ohm_per_km: NeutralR = None
     neutral_reactance_ohm_per_km: NeutralX = None
-    return_resistance_ohm_per_km: (
-        Annotated[
-            float,
-            field(
-                "Return at 20 °C", "Ω/km", ge=0, le=1000, help="PE, PEN or neutral of one run, for faults."
-            ),
-        ]
-        | None
-    ) = None
-    zero_resistance_ohm_per_km: (
-        Annotated[float, field("R0 at 20 °C", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
-    ) = None
-    zero_reactance_ohm_per_km: (
-        Annotated[float, field("X0", "Ω/km", ge=0, le=1e4, help="Zero sequence, of one run.")] | None
-    ) = None
-    fault_degc: (
-        Annotated[float, field("Hot conductor at", "°C", ge=-60, le=400, help="For the least fault current.")]
-        | None
-    ) = None
+    return_resistance_ohm_per_km: ReturnR = None
+    zero_resistance_ohm_per_km: ZeroR = None
+    zero_reactance_ohm_per_km: ZeroX = None
+    fault_degc: HotDegc = None
 
 
 class Cable(Line, frozen=True, kw_only=True, tag="cable"):
@@ -266,21 +244,9 @@ class Supply(Attachment, frozen=True, kw_only=True, tag="supply"):
             "wires, the nominal voltage between them, and the neutral midway.",
         ),
     ] = "three-phase"
-    fault_level_max_mva: (
-        Annotated[
-            float,
-            field("Highest fault level", "MVA", gt=0, le=1e6, help="For board ratings; kA may be typed."),
-        ]
-        | None
-    ) = None
-    fault_level_min_mva: (
-        Annotated[
-            float,
-            field("Least fault level", "MVA", gt=0, le=1e6, help="For dips at a start, and protection."),
-        ]
-        | None
-    ) = None
-    xr: Annotated[float, field("X/R of the supply", "", ge=0, le=1000)] | None = None
+    fault_level_max_mva: MostMva = None
+    fault_level_min_mva: LeastMva = None
+    xr: SupplyXr = None
     z0_ratio: (
         Annotated[
             float,
