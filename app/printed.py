@@ -3,6 +3,7 @@
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
+from app.model.case_words import settings
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
 from app.model.figures import amps, plain, typed
@@ -102,7 +103,7 @@ def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]
     nodes = NODE_COLUMNS if outcome.wires is None else WIRED_NODE_COLUMNS
     wires = wire_tables(drawing, outcome, case)
     return [
-        f"Case: {name}",
+        f"Case: {name}\n  {settings(drawing.cases[case], drawing)}",
         _table(drawing, "Nodes", outcome.nodes, nodes, case),
         _table(drawing, "Branches", outcome.branches, BRANCH_COLUMNS, case),
         _table(drawing, "Loads and infeeds", outcome.attachments, ATTACHMENT_COLUMNS, case),

@@ -7,7 +7,7 @@ from msgspec.structs import replace
 from app.model import figures
 from app.model.by_case import Scaled, percent_of, set_own, share_of, stated
 from app.model.checks import EditRefused, called
-from app.model.drawing import Case, Drawing
+from app.model.drawing import Case, Drawing, label
 from app.model.kinds import Capacitor, Load, Motor, Supply
 from app.model.units import UnitError, parse
 
@@ -76,6 +76,22 @@ def amount(case: Case, id: str, element: Scaled) -> str:
     if percent == 0 and isinstance(element, Capacitor | Motor | Load):
         return "off"
     return figures.stated(whole * percent / 100, unit)
+
+
+def settings(case: Case, drawing: Drawing) -> str:
+    """All that a case states: `supply 97 %, loads 10 %; House load 5 kVA (6.25 %)`."""
+    shares = [("supply", case.supply_percent), ("loads", case.load_percent)]
+    shares += [("generation", case.generation_percent)]
+    if case.motor_percent is not None:
+        shares.append(("motors", case.motor_percent))
+    general = ", ".join(f"{word} {figures.stated(percent, '%')}" for word, percent in shares)
+    return "; ".join([general, *own_told(case, drawing)])
+
+
+def own_told(case: Case, drawing: Drawing) -> list[str]:
+    """What a case states of single elements, each by its name."""
+    hung = [(i, e) for i, e in drawing.elements.items() if i in case.own and isinstance(e, Scaled)]
+    return [f"{label(drawing, i)} {told(case, i, e)}" for i, e in hung]
 
 
 def told(case: Case, id: str, element: Scaled) -> str:

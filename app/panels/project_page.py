@@ -11,9 +11,8 @@ from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.model import edits
-from app.model.by_case import Scaled
-from app.model.case_words import told
-from app.model.drawing import Case, Drawing, Limits, Project, label
+from app.model.case_words import own_told
+from app.model.drawing import Case, Drawing, Limits, Project
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, kind_of
 from app.model.typing_in import limit_percent, value_of
@@ -116,10 +115,8 @@ class ProjectPage(Page):
 
 
 def own_words(drawing: Drawing, case: int) -> str:
-    """What a case states of single elements: `Otherwise here: House load 5 kVA (6.25 %).`"""
-    shown = drawing.cases[case]
-    hung = [(i, e) for i, e in drawing.elements.items() if i in shown.own and isinstance(e, Scaled)]
-    said = [f"{label(drawing, i)} {told(shown, i, e)}" for i, e in hung]
+    """What a case states of single elements: `In this case alone: House load 5 kVA (6.25 %).`"""
+    said = own_told(drawing.cases[case], drawing)
     return f"In this case alone: {'; '.join(said)}." if said else ""
 
 

@@ -2,12 +2,14 @@
 
 import math
 
+from app.model.by_case import percent_of
 from app.model.drawing import label
 from app.model.kinds import Attachment, Capacitor, Generator, Load, Supply
+from app.sheet.cases import factor_ref, share_ref
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import node_cell
 from app.sheet.subject import Subject, kind_name
-from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.outcome import AttachmentState
 
 LOADS = "loads"
@@ -83,8 +85,11 @@ def _served(subject: Subject, id: str, load: Load, state: AttachmentState, case:
         return {}
     found = flow(subject, load, state, case)
     share = "((100-{i_share}-{z_share})+{i_share}*{u}/{reference}+{z_share}*({u}/{reference})^2)/100"
-    scaled = {"case_percent": Ref("load_percent", "cases", str(case))}
-    found["kw"] = Cell(state.kw, "{demand}*{case_percent}/100*" + share, scaled)
+    refs = {"case_percent": share_ref(subject, id, case, "load_percent")}
+    demand, factor = "{demand}", factor_ref(subject, id, case)
+    if factor is not None and load.demand_kva is not None:
+        demand, refs = "{demand_kva}*{case_pf}", {**refs, "case_pf": factor}
+    found["kw"] = Cell(state.kw, demand + "*{case_percent}/100*" + share, refs)
     return found
 
 
@@ -127,7 +132,8 @@ def _source(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> 
         "node": text(label(subject.drawing, hung.node)),
     }
     figures = [_fed_in(subject, id, hung, s, c) for c, s in enumerate(states)]
-    off = text("off") if isinstance(hung, Capacitor) and not hung.connected else subject.unfed()
+    shares = [percent_of(case, id, hung) for case in subject.drawing.cases]
+    off = text("off") if isinstance(hung, Capacitor) and not any(shares) else subject.unfed()
     data |= _stated(subject, id, hung)
     return Entry(id, data, figures, lambda worst: {"state": text("connected") if worst else off})
 
@@ -150,7 +156,10 @@ def _stated(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> 
 def _fed_in(
     subject: Subject, id: str, hung: Supply | Generator | Capacitor, state: AttachmentState, case: int
 ) -> Cells:
-    if not state.live or (isinstance(hung, Capacitor) and not hung.connected):
+    share = 100.0
+    if isinstance(hung, Capacitor):
+        share = percent_of(subject.drawing.cases[case], id, hung)
+    if not state.live or not share:
         return {}
     found = flow(subject, hung, state, case)
     kva = math.hypot(state.kw, state.kvar)
@@ -158,5 +167,8 @@ def _fed_in(
         found["pf"] = Cell(abs(state.kw) / kva, "ABS({kw})/{kva}")
     rated = subject.value(id, "rated_v").value if isinstance(hung, Capacitor) else None
     if isinstance(rated, float):
-        found["kvar"] = Cell(state.kvar, f"{{rating}}*({{u}}/{rated!r})^2")
+        part, refs = (
+            ("", {}) if share == 100 else ("*{share}/100", {"share": share_ref(subject, id, case, "")})
+        )
+        found["kvar"] = Cell(state.kvar, f"{{rating}}{part}*({{u}}/{rated!r})^2", refs)
     return found

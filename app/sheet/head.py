@@ -4,6 +4,7 @@ from dataclasses import replace
 
 from app.model.fields import fields_of
 from app.model.kinds import Motor
+from app.sheet.cases import case_tables
 from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
 from app.study.cautions import CAUTIONS
@@ -79,7 +80,7 @@ def result_words(subject: Subject) -> str:
 
 def basis_tables(subject: Subject) -> list[SheetTable]:
     """Limits, constants, rules, cases and every assumed value."""
-    return [_limits(subject), _rules(subject), _cases(subject), _constants(), _assumed(subject)]
+    return [_limits(subject), _rules(subject), *case_tables(subject, BASIS), _constants(), _assumed(subject)]
 
 
 BASIS = "Basis"
@@ -92,10 +93,10 @@ NO_CLAIM = "chosen for this drawing; no standard is claimed"
 
 def _limits(subject: Subject) -> SheetTable:
     limits = subject.drawing.limits
-    names_of = {"low": limits.name, "high": limits.name, "drop": limits.drop_name}
+    names_of = {"low": limits.name, "high": limits.name, "drop": limits.drop_name, "rise": limits.rise_name}
     columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=40))
     rows: dict[str, Cells] = {}
-    names: tuple[str, ...] = ("low", "high", "drop", "most_loaded")
+    names: tuple[str, ...] = ("low", "high", "drop", "rise", "most_loaded")
     if any(isinstance(e, Motor) for e in subject.drawing.elements.values()):
         names += ("start_supply", "start_step", "start_motor")
     for name in names:
@@ -156,28 +157,6 @@ def _rules(subject: Subject) -> SheetTable:
     told = RULES if subject.outcome.faults is None else RULES + BASIS_OF_FAULTS
     rows = {item: {"item": text(item), "value": text(words)} for item, words in told}
     return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
-
-
-def _cases(subject: Subject) -> SheetTable:
-    columns = (
-        ITEM,
-        Column("supply_percent", "Supply voltage", "% of held", digits=1, width=12),
-        Column("load_percent", "Loads", "% of stated", digits=1, width=18),
-        Column("generation_percent", "Generation", "% of stated", digits=1, width=14),
-        Column("motor_percent", "Motors", "% of rated", digits=1, width=14),
-    )
-    rows: dict[str, Cells] = {}
-    for number, case in enumerate(subject.drawing.cases):
-        rows[str(number)] = {
-            "item": given(case.name),
-            "supply_percent": given(case.supply_percent),
-            "load_percent": given(case.load_percent),
-            "generation_percent": given(case.generation_percent),
-            "motor_percent": Cell(case.load_percent, "{load_percent}")
-            if case.motor_percent is None
-            else given(case.motor_percent),
-        }
-    return table("cases", BASIS, "Cases", columns, rows, held=0)
 
 
 def _constants() -> SheetTable:

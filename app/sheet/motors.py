@@ -6,10 +6,11 @@ from dataclasses import replace
 from app.model.drawing import label
 from app.model.kinds import Motor
 from app.sheet.attachments import AMPS, KVA, KVAR, KW, NODE, STATE, VOLTS, flow
+from app.sheet.cases import share_ref
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT
 from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
-from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.findings import margin_of
 from app.study.outcome import AttachmentState
 from app.study.start_table import StartState
@@ -52,17 +53,17 @@ def _motor(subject: Subject, id: str, motor: Motor) -> Entry:
         "pf": subject.value(id, "power_factor"),
         "drawn": given(motor.state),
     }
-    figures = [_drawn(subject, motor, s, c) for c, s in enumerate(states)]
+    figures = [_drawn(subject, id, motor, s, c) for c, s in enumerate(states)]
     fed = text("off" if motor.state == "off" else "fed")
     return Entry(id, data, figures, lambda worst: {"state": fed if worst else subject.unfed()})
 
 
-def _drawn(subject: Subject, motor: Motor, state: AttachmentState, case: int) -> Cells:
+def _drawn(subject: Subject, id: str, motor: Motor, state: AttachmentState, case: int) -> Cells:
     if not state.live:
         return {}
     found = flow(subject, motor, state, case)
     if motor.state == "running":
-        scaled = {"case_percent": Ref("motor_percent", "cases", str(case))}
+        scaled = {"case_percent": share_ref(subject, id, case, "motor_percent")}
         found["kw"] = Cell(state.kw, "{out}/{efficiency}*{case_percent}/100", scaled)
     if not state.voltage_v:
         del found["current"]

@@ -2,6 +2,7 @@
 
 import math
 
+from app.model import edits
 from app.model.drawing import Case, Drawing, Limits, Project
 from app.model.kinds import (
     Busbar,
@@ -228,3 +229,22 @@ def overloaded() -> Drawing:
         "L1": Load(node="B2", demand_kva=900.0),
     }
     return Drawing(elements=elements)
+
+
+def each_for_itself() -> Drawing:
+    """A case that states every kind of attachment for itself: shares, a power factor, a bank off and on."""
+    drawing = pair(PEAK, NIGHT)
+    banks = {
+        "K8": Capacitor(name="Bank", node="B4", rating_kvar=8.0),
+        "K9": Capacitor(name="Spare bank", node="B4", rating_kvar=4.0, connected=False),
+    }
+    drawing = edits.put(drawing, banks)
+    for number, (id, one) in enumerate(drawing.attachments().items()):
+        if id not in banks:
+            drawing = edits.set_own(
+                drawing, 1, id, percent=100.0 if isinstance(one, Supply) else 7.0 * number
+            )
+        if isinstance(one, Load) and not number % 2:
+            drawing = edits.set_own(drawing, 1, id, power_factor=0.98)
+    drawing = edits.set_own(drawing, 1, "K8", percent=0.0)
+    return edits.set_own(drawing, 1, "K9", percent=50.0)

@@ -4,7 +4,18 @@ from pathlib import Path
 
 import openpyxl
 import pytest
-from sheet_layouts import NIGHT, PEAK, blocked, faulty, meshed, pair, stepping, three_cables, two_wire
+from sheet_layouts import (
+    NIGHT,
+    PEAK,
+    blocked,
+    each_for_itself,
+    faulty,
+    meshed,
+    pair,
+    stepping,
+    three_cables,
+    two_wire,
+)
 from spreadsheet import differences, needs_spreadsheet, recalculated
 from xlsxwriter import Workbook
 
@@ -22,6 +33,7 @@ LAYOUTS = {
     "stepping.xlsx": (stepping(), 60),
     "stepping by night.xlsx": (stepping(PEAK, NIGHT), 120),
     "faulty.xlsx": (faulty(), 160),
+    "each for itself.xlsx": (each_for_itself(), 280),
     "blocked.xlsx": (blocked(), 5),
 }
 Books = dict[str, tuple[Path, Path]]
