@@ -55,7 +55,7 @@ def wire_nodes(
     low, high = _least(percent), -_least(-percent)
     sequence = np.abs(np.einsum("sp,npb->nsb", TO_SEQUENCE, volts[:, :3]))
     has_neutral = (drawn & NEUTRAL > 0)[:, None]
-    first = np.where(kind == 2, volts[:, 0], _least_of_first(pairs))[:, :] if len(reach) else volts[:, 0]
+    first = np.where((kind == 2)[:, None], volts[:, 0], _least_of_first(pairs))
     nodes = {
         "live": graph.live,
         "nominal_v": nominal,
