@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QKeyEvent, QKeySequence
 
+from app.canvas import tools_phases as phases
 from app.canvas.ladder import press_tap_key
 from app.canvas.tools import ARROWS, ENTERS, node_at
 from app.canvas.tools_length import LengthTool, begins_length
@@ -56,6 +57,11 @@ SHORTCUTS: tuple[tuple[str, str], ...] = (
         "C, O, T, V, W",
         "Cable, overhead line, transformer, regulator, switch: drawn on from the selected node, or placed",
     ),
+    (
+        "Shift + A, B, C",
+        "Put the selection, or the line just drawn, on that phase: a lateral with all beyond",
+    ),
+    ("P, Shift + P", "Next or previous phases: as many as reach it, A, B, C, AB, BC, CA"),
     ("B, J", "Busbar, joint: placed; a selected joint turns into a busbar and back"),
     ("R", "Turn a busbar or an attachment by a quarter"),
     ("Tab, Shift + Tab", "Next or previous element, in the order of drawing"),
@@ -168,7 +174,7 @@ def _on_selection(view: BoardView, event: QKeyEvent) -> bool:
     elif key == Qt.Key.Key_R and id is not None:
         return _turn(view, id)
     else:
-        return False
+        return phases.press(view, event)
     return True
 
 

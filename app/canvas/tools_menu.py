@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QMenu
 from app.canvas.geometry import HitKind
 from app.canvas.tools_bend import with_bend, without_bend
 from app.canvas.tools_keys import only, plain_part, remake
+from app.canvas.tools_phases import movable, phases_menu
 from app.canvas.tools_select import pull_from
 from app.model import edits
 from app.model.drawing import label
@@ -19,7 +20,8 @@ from app.model.kinds import Branch, Busbar, Capacitor, Joint, Line, Motor, Node,
 if TYPE_CHECKING:
     from app.canvas.view import BoardView
 
-Entry = tuple[str, Callable[[], object]] | None
+PHASES = "phases"  # where the line stands that unfolds into them
+Entry = tuple[str, Callable[[], object]] | str | None
 
 
 def menu_at(view: BoardView, at: QPointF, keyed: bool = False) -> QMenu:
@@ -31,6 +33,9 @@ def menu_at(view: BoardView, at: QPointF, keyed: bool = False) -> QMenu:
     for entry in [*_of_one(view, at), *_of_all(view)]:
         if entry is None:
             menu.addSeparator()
+            continue
+        if isinstance(entry, str):
+            phases_menu(view, menu)
             continue
         text, do = entry
         menu.addAction(text).triggered.connect(lambda _checked=False, do=do: do())
@@ -54,7 +59,14 @@ def _of_one(view: BoardView, at: QPointF) -> list[Entry]:
         for verb, state in (("Run", "running"), ("Start", "starting"), ("Switch off", "off")):
             if one.state != state:
                 entries.append((verb, _change(view, id, verb, state=state)))
-    return [*entries, None, ("Rename", view.rename_selection), ("Show card", view.card_wanted.emit), None]
+    return [
+        *entries,
+        PHASES,
+        None,
+        ("Rename", view.rename_selection),
+        ("Show card", view.card_wanted.emit),
+        None,
+    ]
 
 
 def _of_node(view: BoardView, id: str, node: Node) -> list[Entry]:
@@ -103,7 +115,9 @@ def _change(view: BoardView, id: str, verb: str, **fields: object) -> Callable[[
 def _of_all(view: BoardView) -> list[Entry]:
     if not view.attention.selection:
         return [("Paste", view.paste), ("Select all", view.select_all), None, ("Whole drawing", view.fit)]
+    several: list[Entry] = [PHASES, None] if len(view.attention.selection) > 1 and movable(view) else []
     return [
+        *several,
         ("Cut", view.cut_selection),
         ("Copy", view.copy_selection),
         ("Paste", view.paste),
