@@ -34,7 +34,7 @@ def fernhollow(cases: tuple[Case, ...] = TWO, **changed) -> Drawing:
         "B1": Busbar(x=0, y=0, length=6, name="GH"),
         "L1": Load(node="B1", name="Lodge", dx=4, dy=2, demand_kva=12.0),
         "T1": Transformer(
-            start="B1", end="J1", rating_kva=160, v1_v=400, v2_v=11000, vector_group="YNd11",
+            start="B1", end="J1", rating_kva=160, v1_v=400, v2_v=11000, vector_group="Dyn11",
             load_loss_w=1750, no_load_loss_w=189, no_load_current_percent=0.7, tapped="winding 2",
         ),
         "J1": Joint(x=12, y=0),

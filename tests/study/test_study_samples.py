@@ -41,6 +41,11 @@ def test_equals_its_expected_results(name):
                 np.testing.assert_allclose(got, want, rtol=1e-9, atol=1e-9, err_msg=f"{id} {column}")
     for column, values in expected["balance"].items():
         np.testing.assert_allclose(getattr(outcome.balance, column), values, rtol=1e-9, atol=1e-9)
+    faults = {} if outcome.faults is None else {i: outcome.faults.at(i) for i in outcome.faults.ids}
+    assert list(faults) == list(expected.get("faults", {}))
+    for id, columns in expected.get("faults", {}).items():
+        for column, value in columns.items():
+            assert getattr(faults[id], column) == pytest.approx(value, rel=1e-9, abs=1e-9), (id, column)
     judged = [[f.check, f.verdict.value, list(f.ids), f.case] for f in outcome.findings]
     assert judged == expected["findings"]
 
@@ -82,9 +87,11 @@ def failing(drawing):
 
 def test_fernhollow_fails_as_drawn_and_two_cables_do_not_cure_the_volts():
     peak = "Peak, low intake"
-    assert failing(edited("fernhollow")) == {("voltage low", "B3", peak), ("voltage drop", "B3", peak)}
+    fuse = ("earth fault", "B3", "")
+    low = ("voltage low", "B3", peak)
+    assert failing(edited("fernhollow")) == {low, ("voltage drop", "B3", peak), fuse}
     two = edited("fernhollow", C1={"side_by_side": 2}, C2={"side_by_side": 2})
-    assert failing(two) == {("voltage low", "B3", peak)}
+    assert failing(two) == {low, fuse}
 
 
 def test_fernhollow_with_three_cables_misses_by_less_than_a_tenth_of_a_volt_and_says_so():
@@ -104,6 +111,7 @@ def test_fernhollow_pair_holds_one_notch_down_and_fails_at_night_two_notches_dow
 
 
 PEAK = "Peak, low intake"
+BOARD_A = ("fault rating", "B3", "")  # rated for the ring open
 CLOSED = {"W1": {"closed": True}, "W2": {"closed": True}}
 
 
@@ -133,7 +141,7 @@ def test_between_c_and_d_is_the_best_of_all_places_to_open_the_ring():
     cured = run(edited("kettlewick_cured")).balance.loss_kw[0]
     assert lost["C4"] == pytest.approx(cured, rel=1e-9)
     assert run(ring).balance.loss_kw[0] < cured  # closed it would lose less still
-    assert failing(ring) == set()
+    assert failing(ring) == {BOARD_A}  # were it not for the board
 
 
 def test_the_ring_closed_as_drawn_overloads_e_f():
@@ -166,7 +174,7 @@ def test_two_notches_apart_circulate_round_the_ring_with_all_loads_off():
         without(drawing, "K1"), cases=(Case(load_percent=0.0, supply_percent=105.0),)
     )
     assert run(quiet).branches.at("C2").current_a == pytest.approx(amps, rel=1e-3)  # iron currents aside
-    assert failing(edited("kettlewick_ring", T2={"tap": -1})) == set()
+    assert failing(edited("kettlewick_ring", T2={"tap": -1})) == {BOARD_A}
 
 
 def test_t1_cannot_carry_the_closed_ring_without_t2():
