@@ -3,13 +3,17 @@
 import math
 from collections.abc import Callable
 
-from app.model.kinds import Line
+from app.model import assumed
+from app.model.conductors import is_hung
+from app.model.kinds import Line, OverheadLine
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT, node_cell
+from app.sheet.spacing import KEY as SPACING
 from app.sheet.subject import FAIL, FROM_TO, HOLDS, PASSED, Subject, kind_name, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
 from app.study.findings import margin_of
 from app.study.outcome import BranchState
+from app.study.overhead_working import BASIS, working_in
 
 KEY = "cables"
 DATA = (
@@ -44,6 +48,8 @@ def line_tables(subject: Subject) -> list[SheetTable]:
     data = list(DATA)
     if charging:
         data.insert(-1, Column("c", "C", "µF/km", digits=3, width=7))
+    if any(is_hung(e) for e in found.values()):
+        data.append(Column("basis", "R and X", style=Style.LONG, width=18))
     current = [Column("current", "I", "A", style=Style.AMPS, near="rating", width=8)]
     if charging:
         current.append(Column("series", "I in R", "A", style=Style.AMPS, width=8))
@@ -90,11 +96,29 @@ def _data(subject: Subject, id: str, line: Line, state: BranchState) -> Cells:
         "c": subject.value(id, "capacitance_uf_per_km"),
         "iz": subject.value(id, "rating_a"),
     }
+    if is_hung(line):
+        return found | _by_spacing(subject, id, state)
+    found["basis"] = text("as stated")
     if not math.isnan(state.resistance_ohm):
         hot = "{r20}*(1+{alpha}*({theta}-20))"
         alpha = {"alpha": Ref("value", "constants", line.conductor)}
         found["r"] = Cell(state.resistance_ohm, f"{twice}{hot}*{{length}}/1000/{{runs}}", alpha)
         found["xt"] = Cell(state.reactance_ohm, twice + "{x}*{length}/1000/{runs}")
+    return found
+
+
+def _by_spacing(subject: Subject, id: str, state: BranchState) -> Cells:
+    """Impedances out of the table of spacings: of one phase, or of a whole loop in a two-wire system."""
+    line = subject.drawing.elements[id]
+    assert isinstance(line, OverheadLine)
+    found = {
+        "x": Cell(working_in(subject.drawing, line).z.imag, "{x1}", {"x1": Ref("x1", SPACING, id)}),
+        "basis": text(BASIS),
+    }
+    if not math.isnan(state.resistance_ohm):
+        r1 = {"r1": Ref("r1", SPACING, id)}
+        found["r"] = Cell(state.resistance_ohm, "{r1}*{length}/1000/{runs}", r1)
+        found["xt"] = Cell(state.reactance_ohm, "{x}*{length}/1000/{runs}")
     return found
 
 
@@ -134,7 +158,7 @@ def drop_cells(subject: Subject, fed: str, far: str, case: int) -> Cells:
 def _series_current(subject: Subject, line: Line, state: BranchState, case: int) -> float:
     """Current between the two halves of the charging: power at the start less what the half there feeds."""
     volts = subject.outcome.nodes.at(line.start, case).voltage_v
-    c_total = float(line.capacitance_uf_per_km or 0) * 1e-6 * line.length_m / 1e3 * line.side_by_side
+    c_total = assumed.value(line, "capacitance_uf_per_km") * 1e-6 * line.length_m / 1e3 * line.side_by_side
     two_wire = subject.two_wire(line.start)
     if two_wire:
         c_total /= 2  # stated from one wire to the neutral plane

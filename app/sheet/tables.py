@@ -11,14 +11,15 @@ from app.sheet.lines import line_tables
 from app.sheet.motors import motor_tables
 from app.sheet.nodes import node_tables
 from app.sheet.regulators import regulator_tables
+from app.sheet.spacing import spacing_tables
 from app.sheet.subject import Subject
 from app.sheet.table import SheetTable
 from app.sheet.transformers import transformer_tables
 from app.study.outcome import Outcome
 
 PARTS = (
-    head_tables, basis_tables, node_tables, line_tables, transformer_tables, regulator_tables, load_tables,
-    motor_tables,
+    head_tables, basis_tables, node_tables, line_tables, spacing_tables, transformer_tables,
+    regulator_tables, load_tables, motor_tables,
     source_tables, switch_tables, fault_tables, balance_tables, finding_tables, build_tables, note_tables,
 )  # fmt: skip
 
