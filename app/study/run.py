@@ -15,6 +15,7 @@ from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Outcome, Verdict
 from app.study.results import tables_of
 from app.study.rings import trouble_finding
+from app.study.rise_findings import rise_findings
 from app.study.rows import Rows, rows_of
 from app.study.start_findings import start_findings
 from app.study.start_table import StartTable
@@ -81,6 +82,8 @@ def _outcome(
         found = found + judge(drawing, tables.nodes, tables.branches, cases)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
         found += barred_findings(drawing, layout)
+        if rows is not None:
+            found += rise_findings(drawing, layout, zones, rows, tables, cases)
         if moved is not None and rows is not None:
             found += stop_findings(drawing, layout, rows, tables, moved)
         faulted = faults_of(drawing, layout, zones, False)
