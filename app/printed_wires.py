@@ -39,7 +39,7 @@ def heads_of(systems: Iterable[str]) -> dict[str, str]:
 def _nodes(drawing: Drawing, wired: Wired, case: int) -> Written:
     states = {id: wired.nodes.at(id, case) for id in wired.nodes.ids}
     named = heads_of(s.system for s in states.values())
-    heads = ["id", "name", "phases", "volts", "base V"]
+    heads = ["id", "name", "conductors", "volts", "base V"]
     for letter in PHASES:
         heads += [f"{named[letter]} V", "% of base"]
     heads += ["N to earth V", "V2/V1 %", "spread %"]
@@ -49,7 +49,8 @@ def _nodes(drawing: Drawing, wired: Wired, case: int) -> Written:
 
 def _node(id: str, element: Element, s: NodeWires) -> Line:
     low = s.base_v < 1000
-    found = [id, element.name, conductors(s.phases, s.system), AGAINST[s.against]]
+    has = s.phases + ("N" if s.neutral_v == s.neutral_v else "")
+    found = [id, element.name, conductors(has, s.system), AGAINST[s.against]]
     found.append(_figure(s.base_v, 1 if low else 0))
     for volts in (s.a_v, s.b_v, s.c_v):
         found += [_figure(volts, 1 if low else 0), _figure(volts / s.base_v * 100, 2)]

@@ -6,8 +6,9 @@ from app.model.by_case import percent_of
 from app.model.drawing import label
 from app.model.kinds import Attachment, Capacitor, Generator, Load, Supply
 from app.sheet.cases import factor_ref, share_ref
-from app.sheet.elements import Entry, Extreme, Plan, by_element
+from app.sheet.elements import Entry, Extreme, Plan
 from app.sheet.nodes import node_cell
+from app.sheet.phase_attachments import hung_tables
 from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.outcome import AttachmentState
@@ -43,7 +44,7 @@ def load_tables(subject: Subject) -> list[SheetTable]:
         note="P = demand · case % · (shares of constant power + current · U/Us + impedance · (U/Us)²); Us "
         "is the voltage the demand is stated at.",
     )  # fmt: skip
-    return by_element(subject, plan, [_load(subject, i, e) for i, e in loads.items()])
+    return hung_tables(subject, plan, [_load(subject, i, e) for i, e in loads.items()])
 
 
 def _load(subject: Subject, id: str, load: Load) -> Entry:
@@ -122,7 +123,7 @@ def source_tables(subject: Subject) -> list[SheetTable]:
         (Extreme("kva_max", "kva", True, "S, most"),), (STATE,),
         note="Power is counted as fed into the layout.",
     )  # fmt: skip
-    return by_element(subject, plan, [_source(subject, i, e) for i, e in hung.items()])
+    return hung_tables(subject, plan, [_source(subject, i, e) for i, e in hung.items()])
 
 
 def _source(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> Entry:

@@ -8,14 +8,21 @@ from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import KEY as LINES
 from app.sheet.lines import LOADING, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
+from app.sheet.phase_build import allocation_tables, line_words, unit_words
+from app.sheet.phase_lines import branch_wires
 from app.sheet.regulators import setting_words
 from app.sheet.subject import FROM_TO, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
 from app.sheet.transformers import fed_winding
+from app.sheet.wires import amps, each, spread
 from app.study.changers import is_changer
 
 TAB = "Build list"
 FIRST = Column("item", "What", style=Style.LONG, width=34)
+WIRES = (
+    Column("wires", "Conductors", "of one run", digits=0, width=11),
+    Column("neutral", "Neutral", style=Style.TEXT, width=14),
+)
 MOST_TERMS = 150  # cells a total adds up before it is written as a plain figure
 
 
@@ -24,6 +31,8 @@ def switch_tables(subject: Subject) -> list[SheetTable]:
     switches = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, Switch)}
     if not switches:
         return []
+    by_phase = subject.outcome.wires is not None
+    phases = each(subject, Column("i", "I", "A", style=Style.AMPS, width=8)) if by_phase else []
     plan = Plan(
         "switches",
         "Switches",
@@ -33,7 +42,7 @@ def switch_tables(subject: Subject) -> list[SheetTable]:
             Column("state", "State", style=Style.TEXT, width=12),
             Column("rating", "Rating", "A", digits=0),
         ),
-        (Column("current", "I", "A", style=Style.AMPS), LOADING),
+        (*phases, Column("current", "I", "A", style=Style.AMPS), LOADING),
         (Extreme("loading_max", "loading", True, "Loading, most"),),
         (MARGIN, VERDICT),
     )
@@ -48,10 +57,12 @@ def _switch(subject: Subject, id: str, switch: Switch) -> Entry:
         "rating": subject.value(id, "rating_a"),
     }
     figures: list[Cells] = []
-    for state in states:
+    for case, state in enumerate(states):
         found: Cells = {}
         if switch.closed and state.live:
             found["current"] = Cell(state.current_a)
+            if subject.outcome.wires is not None:
+                found |= spread("i", amps(branch_wires(subject, id, case)))
             found["most"] = Cell(subject.drawing.limits.most_loaded_percent)
             if switch.rating_a is not None:
                 found["loading"] = Cell(state.loaded_percent, "{current}/{rating}*100")
@@ -65,28 +76,33 @@ def _switch(subject: Subject, id: str, switch: Switch) -> Entry:
 def build_tables(subject: Subject) -> list[SheetTable]:
     """What to buy, lay and set."""
     found = [_cable_list(subject), _orders(subject), _settings(subject), _open_points(subject)]
-    return [t for t in found if t.rows]
+    return [t for t in (*found, *allocation_tables(subject)) if t.rows]
 
 
 def _cable_list(subject: Subject) -> SheetTable:
-    groups: dict[tuple[str, str, str, float], list[str]] = defaultdict(list)
+    by_phase = subject.outcome.wires is not None
+    groups: dict[tuple[str, str, str, float, tuple[int, str]], list[str]] = defaultdict(list)
     for id, e in subject.drawing.elements.items():
         if isinstance(e, Line):
-            groups[(kind_name(e), e.type, e.conductor, e.area_mm2 or 0.0)].append(id)
+            wires = line_words(subject, id) if by_phase else (0, "")
+            groups[(kind_name(e), e.type, e.conductor, e.area_mm2 or 0.0, wires)].append(id)
     columns = (
         FIRST,
         Column("conductor", "Metal", style=Style.TEXT, width=12),
         Column("area", "Section", "mm²", digits=0, width=10),
+        *(WIRES if by_phase else ()),
         Column("routes", "Routes", digits=0, width=9),
         Column("length", "Length to lay, all runs", "m", digits=0, width=14),
         Column("ids", "Where", style=Style.LONG, width=40),
     )
     rows: dict[str, Cells] = {}
-    for number, ((kind, type, metal, area), ids) in enumerate(sorted(groups.items())):
+    for number, ((kind, type, metal, area, (wires_, neutral)), ids) in enumerate(sorted(groups.items())):
         rows[str(number)] = {
             "item": text(f"{type or 'type not stated'}, {kind}"),
             "conductor": text(metal),
             "area": given(area) if area else text(""),
+            "wires": Cell(wires_),
+            "neutral": text(neutral),
             "routes": Cell(len(ids)),
             "length": _total(subject, ids),
             "ids": text(", ".join(ids)),
@@ -119,7 +135,7 @@ def _orders(subject: Subject) -> SheetTable:
     rows = {
         id: {
             "item": text(subject.tell(id)),
-            "count": given(t.side_by_side),
+            "count": given(t.side_by_side * (2 if t.build.startswith("open") else 1)),
             "text": text(order_words(subject, id, t)),
         }
         for id, t in _transformers(subject).items()
@@ -142,6 +158,7 @@ def order_words(subject: Subject, id: str, t: Transformer) -> str:
     return ", ".join(
         (
             f"{t.rating_kva:g} kVA",
+            *([unit_words(t)] if unit_words(t) else []),
             f"{t.v1_v:g}/{t.v2_v:g} V no-load",
             t.vector_group,
             f"{subject.drawing.frequency_hz:g} Hz",

@@ -99,8 +99,11 @@ def _limits(subject: Subject) -> SheetTable:
     names: tuple[str, ...] = ("low", "high", "drop", "rise", "most_loaded")
     if any(isinstance(e, Motor) for e in subject.drawing.elements.values()):
         names += ("start_supply", "start_step", "start_motor")
+    if subject.outcome.wires is not None:
+        names += ("unbalance", "neutral")
+        names_of |= {"unbalance": limits.unbalance_name, "neutral": limits.neutral_name}
     for name in names:
-        field = fields_of(type(limits))[name + "_percent"]
+        field = fields_of(type(limits))[name + ("_v" if name == "neutral" else "_percent")]
         value = getattr(limits, field.name)
         named = limits.start_name if name.startswith("start") else names_of.get(name)
         rows[name] = {

@@ -9,9 +9,10 @@ from app.sheet.attachments import AMPS, KVA, KVAR, KW, NODE, STATE, VOLTS, flow
 from app.sheet.cases import share_ref
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT
+from app.sheet.phase_attachments import hung_tables
 from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
-from app.study.findings import margin_of
+from app.study.checking import margin_of
 from app.study.outcome import AttachmentState
 from app.study.start_table import StartState
 
@@ -41,7 +42,7 @@ def motor_tables(subject: Subject) -> list[SheetTable]:
         (Extreme("kw_max", "kw", True, "P, most"),), (STATE,),
         note="Running: P = rated output / efficiency · case %, whatever the voltage.",
     )  # fmt: skip
-    return by_element(subject, plan, [_motor(subject, i, e) for i, e in motors.items()]) + _starts(subject)
+    return hung_tables(subject, plan, [_motor(subject, i, e) for i, e in motors.items()]) + _starts(subject)
 
 
 def _motor(subject: Subject, id: str, motor: Motor) -> Entry:

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
 from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style
-from app.study.findings import margin_of
+from app.study.checking import margin_of
 from app.study.outcome import NodeState
 
 KEY = "busbars"
@@ -52,6 +52,14 @@ def node_tables(subject: Subject) -> list[SheetTable]:
 def node_cell(subject: Subject, node: str, column: str, case: int) -> Ref:
     """Where a figure of a node in a case stands."""
     return figure(subject, KEY, node, column, case)
+
+
+def volts_cell(subject: Subject, node: str, case: int) -> Cell:
+    """The volts of a node in a case, read from its row where it has one figure for all phases."""
+    volts = subject.outcome.nodes.at(node, case).voltage_v
+    if subject.outcome.wires is not None:
+        return Cell(volts)
+    return Cell(volts, "{at}", {"at": node_cell(subject, node, "u", case)})
 
 
 def _entry(subject: Subject, id: str) -> Entry:

@@ -2,7 +2,7 @@
 
 from app.model.kinds import Regulator, Transformer
 from app.sheet.elements import Entry, Extreme, Plan, by_element
-from app.sheet.nodes import node_cell
+from app.sheet.nodes import volts_cell
 from app.sheet.subject import FROM_TO, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given
 from app.study.changers import is_changer
@@ -46,7 +46,8 @@ def regulator_tables(subject: Subject) -> list[SheetTable]:
         Extreme("low", "notch", False, "Lowest notch"),
         Extreme("high", "notch", True, "Highest notch"),
     )
-    plan = Plan(KEY, "Regulators", "Regulators and tap changers", data, figures, extremes, (), NOTE)
+    note = NOTE if subject.outcome.wires is None else NOTE + " U is of the lowest phase, as between lines."
+    plan = Plan(KEY, "Regulators", "Regulators and tap changers", data, figures, extremes, (), note)
     return by_element(subject, plan, [_entry(subject, i, e) for i, e in found.items()])  # type: ignore[arg-type]
 
 
@@ -84,13 +85,12 @@ def _figures(subject: Subject, changer: Transformer | Regulator, state: BranchSt
     if not state.live:
         return {}
     step, down, up = _ladder(changer)
-    first, second = (subject.outcome.nodes.at(n, case).voltage_v for n in (changer.start, changer.end))
     at_end = state.notch in (-down, up)
     return {
         "notch": Cell(state.notch),
         "percent": Cell(state.notch * step, "{notch}*{step}"),
-        "u1": Cell(first, "{at}", {"at": node_cell(subject, changer.start, "u", case)}),
-        "u2": Cell(second, "{at}", {"at": node_cell(subject, changer.end, "u", case)}),
+        "u1": volts_cell(subject, changer.start, case),
+        "u2": volts_cell(subject, changer.end, case),
         "current": Cell(state.current_a),
         "stop": Cell("END STOP" if at_end else "no", 'IF(OR({notch}=-{down},{notch}={up}),"END STOP","no")'),
     }

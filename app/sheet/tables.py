@@ -10,6 +10,9 @@ from app.sheet.head import basis_tables, head_tables, note_tables
 from app.sheet.lines import line_tables
 from app.sheet.motors import motor_tables
 from app.sheet.nodes import node_tables
+from app.sheet.phase_lines import phase_line_tables
+from app.sheet.phase_nodes import phase_node_tables
+from app.sheet.phase_units import phase_unit_tables
 from app.sheet.regulators import regulator_tables
 from app.sheet.spacing import spacing_tables
 from app.sheet.subject import Subject
@@ -22,9 +25,13 @@ PARTS = (
     regulator_tables, load_tables, motor_tables,
     source_tables, switch_tables, fault_tables, balance_tables, finding_tables, build_tables, note_tables,
 )  # fmt: skip
+BY_PHASE = {  # in their place where phases are solved one by one
+    node_tables: phase_node_tables, line_tables: phase_line_tables, transformer_tables: phase_unit_tables,
+}  # fmt: skip
 
 
 def tables(drawing: Drawing, outcome: Outcome) -> tuple[SheetTable, ...]:
     """The sheet as tables, the same for a workbook, text files or a page."""
     subject = Subject(drawing, outcome)
-    return tuple(t for part in PARTS for t in part(subject))
+    parts = PARTS if outcome.wires is None else [BY_PHASE.get(part, part) for part in PARTS]
+    return tuple(t for part in parts for t in part(subject))

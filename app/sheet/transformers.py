@@ -73,10 +73,11 @@ def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
     beyond = any(f.verdict is Verdict.ADVICE and id in f.ids for f in subject.outcome.findings)
     held = Verdict.ADVICE.value if beyond else HOLDS
     judge = judge_loading(subject, any(s.live for s in states), True, held)
-    return Entry(id, _data(subject, id, t), figures, judge)
+    return Entry(id, data_cells(subject, id, t), figures, judge)
 
 
-def _data(subject: Subject, id: str, t: Transformer) -> Cells:
+def data_cells(subject: Subject, id: str, t: Transformer) -> Cells:
+    """What the nameplate says, and the tap in words."""
     percent = t.tap * t.notch_percent
     return (
         subject.identity(id)

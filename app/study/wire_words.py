@@ -28,11 +28,14 @@ def conductors(letters: str, system: str) -> str:
 
 
 def worst_of(amps: dict[str, float]) -> str:
-    """The letter of the conductor that carries most; blank where none carries anything.
+    """The letter of the conductor that carries most; blank where none carries anything. A neutral that only
+    takes back what its phase brings is not the worst.
 
     amps : letter to amperes, nan where there is no such conductor
 
     Returns : str
     """
     known = {letter: ampere for letter, ampere in amps.items() if ampere > 0}
+    if "N" in known:
+        known["N"] *= 1 - 1e-9
     return max(known, key=known.__getitem__, default="")

@@ -1,0 +1,86 @@
+"""Loads, motors and infeeds where phases are solved one by one: on which conductors, amperes in each lead."""
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+from app.model.kinds import Attachment, Capacitor, Load
+from app.sheet.elements import Entry, Plan, by_element, figure
+from app.sheet.subject import Subject
+from app.sheet.table import Cell, Cells, Column, SheetTable, Style, text
+from app.sheet.wires import amps, each, most, node_wires, redone, spread, volts
+from app.study.outcome import AttachmentWires
+from app.study.wire_words import conductors
+
+ON = Column("on", "On", style=Style.TEXT, width=8)
+CONNECTION = Column("connection", "Joined", style=Style.TEXT, width=9)
+NOTE = " U is the lowest of its leads; I most the worst lead."
+
+
+def hung_tables(subject: Subject, plan: Plan, entries: Sequence[Entry]) -> list[SheetTable]:
+    """A plan of attachments as it is, or with phases and leads where they are solved one by one."""
+    if subject.outcome.wires is None:
+        return by_element(subject, plan, entries)
+    leads = tuple(each(subject, Column("i", "I", "A", style=Style.AMPS, width=8)))
+    figures: list[Column] = []
+    for column in plan.figures:
+        if column.key == "current":
+            figures += [*leads, replace(column, head="I, most")]
+        else:
+            figures.append(replace(column, head="U, lowest") if column.key == "u" else column)
+    data = (*plan.data[:1], ON, CONNECTION, *plan.data[1:])
+    if plan.data[0].key != "node":
+        data = (*plan.data[:2], ON, CONNECTION, *plan.data[2:])
+    plan = replace(plan, data=data, figures=tuple(figures), note=(plan.note + NOTE).strip())
+    return by_element(subject, plan, [_entry(subject, entry) for entry in entries])
+
+
+def hung_wires(subject: Subject, id: str, case: int) -> AttachmentWires:
+    """One attachment, conductor by conductor."""
+    assert subject.outcome.wires is not None
+    return subject.outcome.wires.attachments.at(id, case)
+
+
+def _entry(subject: Subject, entry: Entry) -> Entry:
+    hung = subject.drawing.elements[entry.id]
+    assert isinstance(hung, Attachment)
+    first = hung_wires(subject, entry.id, 0)
+    system = node_wires(subject, hung.node).system
+    data = entry.data | {"on": text(conductors(first.phases, system))}
+    if isinstance(hung, Load | Capacitor) and len(first.phases.replace("N", "")) == 3:
+        data["connection"] = text(hung.connection)
+    figures = [_figures(subject, entry, hung, dict(cells), c) for c, cells in enumerate(entry.figures)]
+    return replace(entry, data=data, figures=figures)
+
+
+def _figures(subject: Subject, entry: Entry, hung: Attachment, cells: Cells, case: int) -> Cells:
+    if not cells:
+        return cells
+    leads = amps(hung_wires(subject, entry.id, case))
+    cells |= spread("i", leads)
+    if "current" in cells:
+        cells["current"] = most("i", leads, _number(cells["current"]))
+    cells["u"] = _volts(subject, hung, _number(cells["u"]), case)
+    for key in ("kw", "kvar"):
+        if "{u}" in cells[key].formula and not _follows(entry):
+            cells[key] = Cell(cells[key].value)
+    return cells
+
+
+def _volts(subject: Subject, hung: Attachment, value: float, case: int) -> Cell:
+    """The volts of the phase it hangs on, where they stand among those of its node."""
+    for letter, there in volts(node_wires(subject, hung.node, case)).items():
+        refs = {"at": figure(subject, "busbars", hung.node, f"u_{letter.lower()}", case)}
+        found = redone(value, "{at}", there, refs)
+        if found.formula:
+            return found
+    return Cell(value)
+
+
+def _follows(entry: Entry) -> bool:
+    """True where no part of a demand goes with the volts, so that a formula of its share holds."""
+    shares = [entry.data.get(key, Cell(1.0)).value for key in ("i_share", "z_share")]
+    return all(share in (0.0, None) for share in shares) and "i_share" in entry.data
+
+
+def _number(cell: Cell) -> float:
+    return float(cell.value) if isinstance(cell.value, int | float) else float("nan")
