@@ -6,9 +6,9 @@ from app.model.kinds import Line
 from app.sheet.nodes import VERDICT
 from app.sheet.subject import FAIL, FROM_TO, HOLDS, IDENTITY, PASSED, Subject
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style, given, table, text
+from app.study.checking import NOISE
 from app.study.fault_basis import CAUTION
 from app.study.fault_devices import Device, devices
-from app.study.findings import NOISE
 from app.study.outcome import FaultState
 
 MOST, LEAST, DEVICES = "faults", "circuit_ends", "devices"

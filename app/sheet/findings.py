@@ -6,7 +6,7 @@ from app.sheet.head import verdict_words
 from app.sheet.nodes import VERDICT
 from app.sheet.subject import PASSED, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, table, text
-from app.study.findings import NOISE
+from app.study.checking import NOISE
 from app.study.outcome import Finding, Verdict
 
 COLUMNS = (

@@ -11,7 +11,7 @@ from app.sheet.nodes import VERDICT, node_cell
 from app.sheet.spacing import KEY as SPACING
 from app.sheet.subject import FAIL, FROM_TO, HOLDS, PASSED, Subject, kind_name, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
-from app.study.findings import margin_of
+from app.study.checking import margin_of
 from app.study.outcome import BranchState
 from app.study.overhead_working import BASIS, working_in
 

@@ -17,7 +17,7 @@ from app.sheet.table import (
     given,
     text,
 )
-from app.study.findings import NOISE
+from app.study.checking import NOISE
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Assumption, BranchState, Outcome
 from app.study.words import tell

@@ -10,7 +10,7 @@ from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
 from app.study.changers import settled
-from app.study.findings import margin_of
+from app.study.checking import margin_of
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.results import tables_of

@@ -5,7 +5,7 @@ import numpy as np
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
-from app.study.findings import Check, findings_of
+from app.study.checking import Check, findings_of
 from app.study.layout import Layout, arrays_of
 from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict
 from app.study.words import tell

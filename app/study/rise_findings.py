@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.kinds import Generator
-from app.study.findings import NEAR_SHARE, SET_HERE, Check, findings_of
+from app.study.checking import NEAR_SHARE, SET_HERE, Check, findings_of
 from app.study.layout import Layout
 from app.study.outcome import Finding
 from app.study.results import Tables, tables_of

@@ -79,7 +79,7 @@ def _outcome(
         starts = start_table(drawing, layout, zones, rows)
         found = found + start_findings(drawing, starts, cases)
     if status is Status.SOLVED:
-        found = found + judge(drawing, tables.nodes, tables.branches, cases)
+        found = found + judge(drawing, tables.nodes, tables.branches, cases, tables.wires)
         found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
         found += barred_findings(drawing, layout)
         if rows is not None:

@@ -8,7 +8,7 @@ import numpy as np
 from app.model.drawing import Drawing
 from app.model.figures import percent, volts
 from app.model.kinds import Motor, Supply
-from app.study.findings import NEAR_SHARE, NEAR_VOLTAGE, Check, findings_of
+from app.study.checking import NEAR_SHARE, NEAR_VOLTAGE, Check, findings_of
 from app.study.outcome import Finding, Verdict
 from app.study.start_table import StartTable
 from app.study.words import list_of, tell

@@ -8,6 +8,7 @@ from app.study.earthing import earthing_findings
 from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rings import ring_findings
+from app.study.wire_findings import phase_findings
 from app.study.words import DEAD, list_of, tell
 from app.study.zones import Zones, level_findings, stated_voltages
 
@@ -30,6 +31,7 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         *ring_findings(drawing, layout, zones),
         *level_findings(drawing, layout, zones),
         *_groups(drawing, layout, zones),
+        *phase_findings(drawing, layout, zones),
         *_plates(drawing, layout),
         *_dead(drawing, layout),
         *_loose_ends(drawing, layout),
@@ -49,25 +51,20 @@ def _groups(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
                 f"{tell(drawing, id)}: vector group {branch.vector_group!r} is not known. "
                 f"Allowed is {taps.GROUP_ALLOWED}."
             )
-        elif layout.supply_of[tree] == NONE or (read[0] == "I") == bool(zones.two_wire[tree]):
+        elif layout.supply_of[tree] == NONE or not zones.two_wire[tree] or _is_single(branch, read[0]):
             continue
         else:
-            words = _wrong_system(drawing, id, branch.vector_group, layout, tree, bool(zones.two_wire[tree]))
+            supply = tell(drawing, layout.attachment_ids[layout.supply_of[tree]])
+            words = (
+                f"{tell(drawing, id)} has the three-phase vector group {branch.vector_group}, but {supply} "
+                "is two-wire. Allowed there is Ii0 or Ii6."
+            )
         found.append(Finding("vector group", Verdict.BLOCKS, (id,), words))
     return found
 
 
-def _wrong_system(drawing: Drawing, id: str, group: str, layout: Layout, tree: int, two_wire: bool) -> str:
-    supply = tell(drawing, layout.attachment_ids[layout.supply_of[tree]])
-    if two_wire:
-        return (
-            f"{tell(drawing, id)} has the three-phase vector group {group}, but {supply} is two-wire. "
-            "Allowed there is Ii0 or Ii6."
-        )
-    return (
-        f"{tell(drawing, id)} has the single-phase vector group {group}, but {supply} is three-phase. "
-        "Allowed there is a three-phase group such as Dyn11."
-    )
+def _is_single(unit: Transformer, winding_1: str) -> bool:
+    return winding_1 == "I" or unit.build == "centre-tapped"
 
 
 def _plates(drawing: Drawing, layout: Layout) -> list[Finding]:

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.figures import plain, volts
-from app.study.findings import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of
+from app.study.checking import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of
 from app.study.outcome import Finding, Table, Verdict
 from app.study.words import list_of, tell
 from app.study.year_outcome import BranchYear, Gap, NodeYear

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from app.model.drawing import Limits
 from app.model.kinds import Generator, Load, Motor, Supply, Transformer
 from app.study.changers import Moving
-from app.study.findings import margin_of
+from app.study.checking import margin_of
 from app.study.layout import Layout
 from app.study.results import Tables, tables_of
 from app.study.rows import Rows

@@ -11,6 +11,7 @@ from app.model.kinds import Capacitor, Load, Motor, Supply, Transformer
 from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
 from app.study.layout import NONE, Layout
 from app.study.outcome import Assumption, Finding, Verdict
+from app.study.wires import PER_PHASE
 from app.study.words import slip, tell
 
 USUAL_RESERVE = 1.6  # of a capacitor's rated voltage over the level, as 525 V or 600 V on 400 V
@@ -102,10 +103,12 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
     found = []
     for branch, node, number, volts in _windings(layout):
         level = zones.nominal_v[layout.zone[node]]
-        if 1 / APART <= volts / level <= APART:
-            continue
         unit = layout.branches[branch]
         assert isinstance(unit, Transformer)
+        if any(
+            1 / APART <= volts / at <= APART for at in _fits(unit, level, zones.system[layout.zone[node]])
+        ):
+            continue
         id, at = layout.branch_ids[branch], layout.node_ids[node]
         other = unit.v2_v if number == 1 else unit.v1_v
         turned = 1 / APART <= other / level <= APART
@@ -116,6 +119,15 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
         )
         found.append(Finding("mixed levels", Verdict.BLOCKS, (id, at), sentence))
     return found
+
+
+def _fits(unit: Transformer, level: float, system: str) -> list[float]:
+    """Volts that a winding may be rated for at a level: those of a phase too, where it is single-phase."""
+    single = unit.build == "centre-tapped" or unit.build == "as its group" and unit.vector_group[:1] == "I"
+    if not single or system == TWO_WIRE:
+        return [level]
+    phase = level / PER_PHASE[system]
+    return [level, phase] if unit.phases == "all" else [level if len(unit.phases) == 2 else phase]
 
 
 def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
@@ -137,8 +149,14 @@ def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Find
             volts, most, words = attachment.rated_v, USUAL_RESERVE, "is rated"
         else:
             continue
-        level = zones.nominal_v[layout.zone[layout.at[row]]]
-        if volts is None or math.isnan(level) or 1 / APART <= volts / level <= most:
+        zone = layout.zone[layout.at[row]]
+        level = zones.nominal_v[zone]
+        phase = level / PER_PHASE[zones.system[zone]] if len(attachment.phases) == 1 else level
+        if (
+            volts is None
+            or math.isnan(level)
+            or any(1 / APART <= volts / at <= most for at in (level, phase))
+        ):
             continue
         id, at = layout.attachment_ids[row], layout.node_ids[layout.at[row]]
         sentence = f"{tell(drawing, id)} {words} {volts:g} V but hangs on {tell(drawing, at)}, which is at "

@@ -7,7 +7,7 @@ from study_layouts import changed, drawing, line, two_nodes
 from app.model.drawing import Case, Limits
 from app.model.kinds import Busbar, Cable, Generator, Load, Supply, Switch, Transformer
 from app.study import run
-from app.study.findings import apart
+from app.study.checking import apart
 from app.study.outcome import Finding, Verdict
 from app.study.words import tally_words
 from solver.status import Status
