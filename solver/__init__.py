@@ -46,9 +46,9 @@ rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until noth
 `solution` (every branch), `share` (how much more load there could be), `trouble` (what has no solution).
 Elements: `line`, `carson`, `transformer`, `load`, `motor`. Several conductors: `wires` (what they add to the
 rows), `windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors),
-`reached` (what no supply feeds, and sides without earth). Faults: `fault` (formulas), `sequence` and `path`
-(impedance at every node), `earth_paths` (zero sequence), `fault_levels`, `fault_wires`. What moves by
-itself: `control`, `tapping`, `holding`. A year: `series`. What a person should be told stands in `Status`.
+`reached` (what no supply feeds, and sides without earth). Faults: `fault` (formulas), `sequence` (impedance
+at every node), `earth_paths` (zero sequence), `fault_levels`, `fault_wires`. What moves by itself: `control`,
+`tapping`, `holding`, `path`. A year: `series`. What a person should be told stands in `Status`.
 A programmer's mistake raises ValueError; everything that a drawing can be wrong about is a result.
 """
 

@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike
 from solver import fault
 from solver.arrays import Complex, Real
 from solver.network import Network
-from solver.path import path_impedance
+from solver.sequence import seen, sequence_of
 
 SLOW = 0.4  # equivalent frequency of the peak over that of the system, 20 Hz of 50
 
@@ -54,14 +54,13 @@ def faults(positive: Network, zero: Network | None, nominal: ArrayLike, factor: 
     nominal : (node,) or one float [V] nominal volts between lines
     factor : (node,) or one float, voltage factor c
     Returns : Faults
-    Raises : ValueError where the network cannot be solved at all
     Source : IEC 60909-0:2016, 4.3 and 7 to 8 (from memory); far from generators
     """
-    z1 = path_impedance(positive)
-    dead = np.isnan(z1)
-    open_ = np.full_like(z1, complex(np.inf, 0.0))
-    z0 = open_ if zero is None else path_impedance(zero) + 0 * z1
-    z0 = np.where(np.isnan(z0), complex(np.inf, 0.0), z0)
+    z1 = seen(sequence_of(positive))
+    dead = np.isinf(z1)
+    z1 = np.where(dead, complex(np.nan, np.nan), z1)
+    z0 = np.full_like(z1, complex(np.inf, 0.0)) if zero is None else seen(sequence_of(zero))
+    z0 = np.broadcast_to(z0, np.broadcast_shapes(z0.shape, z1.shape))
     pushed = np.asarray(factor) * np.asarray(nominal, dtype=float) / np.sqrt(3)
     source = np.where(dead, np.nan, np.broadcast_to(pushed, z1.shape[:1])[:, None])
     return Faults(
@@ -88,6 +87,6 @@ def _slow_ratio(network: Network) -> Real:
         transformer_z=slowed(network.transformer_z),
         source_z=None if network.source_z is None else slowed(network.source_z),
     )
-    z = path_impedance(slow)
+    z = seen(sequence_of(slow))
     with np.errstate(divide="ignore", invalid="ignore"):
         return np.asarray(z.real / z.imag * SLOW)

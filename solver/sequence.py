@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from solver.arrays import Complex, Index
+from solver.network import Network
 from solver.rounds import neighbours, spanning
 
 SAME = 1e-12  # a loop whose impedance is this small beside the others of its kind carries nothing new
@@ -47,6 +48,28 @@ class _Trees:
     gain: Complex
     z: Complex
     ties: list[int]
+
+
+def sequence_of(network: Network) -> Sequence:
+    """The rows of a balanced network as a sequence network; charging, iron and loads are left out.
+
+    network : Network of k = 1; a supply without source_z is one without impedance
+    Returns : Sequence
+    """
+    z = network.source_z
+    held = np.zeros((network.source_node.size, 1), dtype=complex) if z is None else z[:, 0, 0]
+    width = max(network.line_z.shape[-1], network.transformer_z.shape[-1], held.shape[-1])
+    rows = [np.broadcast_to(z, (len(z), width)) for z in (network.line_z[:, 0, 0], network.transformer_z)]
+    ratio = np.append(np.ones(network.line_from.size), network.transformer_ratio[:, 0])
+    return Sequence(
+        node_count=network.node_count,
+        branch_from=np.append(network.line_from, network.transformer_from),
+        branch_to=np.append(network.line_to, network.transformer_to),
+        branch_z=np.concatenate(rows),
+        branch_ratio=np.abs(ratio) + 0j,
+        earth_node=network.source_node,
+        earth_z=np.broadcast_to(held, (len(held), width)),
+    )
 
 
 def seen(network: Sequence) -> Complex:

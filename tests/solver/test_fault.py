@@ -13,7 +13,7 @@ from wired import ABC, A, B, Layout, Unit, balanced
 from solver import fault, line, sequence, solve, transformer
 from solver.earth_paths import zero_sequence
 from solver.fault_levels import faults
-from solver.path import path_impedance
+from solver.path import transfer_impedance
 from solver.windings import Winding
 
 HELD, DELTA, STAR = Winding("Y", True, 0.0), Winding("D"), Winding("Y")
@@ -22,6 +22,11 @@ HELD, DELTA, STAR = Winding("Y", True, 0.0), Winding("D"), Winding("Y")
 def behind(network, z):
     z = np.atleast_1d(np.asarray(z, dtype=complex))
     return replace(network, source_z=z.reshape(len(network.source_node), 1, 1, -1))
+
+
+def impedances(network):
+    """(node, batch) as a fault sees them."""
+    return sequence.seen(sequence.sequence_of(network))
 
 
 def seen(network):
@@ -44,28 +49,22 @@ def test_impedance_at_every_node_of_a_random_mesh(seed):
     network = make(seed, nodes=30, sources=1 + seed % 3, units=5)
     z = 0.01 * np.abs(network.source_voltage[:, 0, 0]) ** 2 / 2e4 * (0.1 + 1j)
     network = behind(network, z)
-    assert path_impedance(network)[:, 0] == pytest.approx(seen(network), rel=1e-9)
-    rows = sequence.Sequence(
-        node_count=network.node_count,
-        branch_from=np.append(network.line_from, network.transformer_from),
-        branch_to=np.append(network.line_to, network.transformer_to),
-        branch_z=np.append(network.line_z[:, 0, 0], network.transformer_z, axis=0),
-        branch_ratio=np.append(np.ones(network.line_from.size), network.transformer_ratio[:, 0]),
-        earth_node=network.source_node,
-        earth_z=network.source_z[:, 0, 0],
-    )
-    assert sequence.seen(rows)[:, 0] == pytest.approx(seen(network), rel=1e-9)
+    assert impedances(network)[:, 0] == pytest.approx(seen(network), rel=1e-9)
+    nodes = np.arange(0, network.node_count, 4)
+    transfer = transfer_impedance(network, nodes)
+    assert np.diag(transfer) == pytest.approx(seen(network)[nodes], rel=1e-9)
+    assert transfer == pytest.approx(transfer.T, rel=1e-9)
 
 
 def test_impedances_in_a_batch():
     lines = [(0, 1, np.array([0.1, 0.2]) + 0.1j), (1, 2, 0.2), (0, 2, 0.3)]
     network = behind(build(3, [(0, 230)], lines), [0.05j])
-    whole = path_impedance(network)
+    whole = impedances(network)
     for point in range(2):
         one = behind(
             build(3, [(0, 230)], [(a, b, np.atleast_1d(z)[point % np.size(z)]) for a, b, z in lines]), [0.05j]
         )
-        assert whole[:, point] == pytest.approx(path_impedance(one)[:, 0])
+        assert whole[:, point] == pytest.approx(impedances(one)[:, 0])
 
 
 def low_voltage_example():
@@ -190,7 +189,7 @@ def test_supplies_motors_and_factors():
     lines = [(0, 1, 0.05j), (2, 1, fault.motor_impedance(400, 100e3, 5.0, 0.42))]
     bare = behind(build(2, [(0, 400)], lines[:1]), [0.01j])
     fed = behind(build(3, [(0, 400), (2, 400)], lines), [0.01j, 1e-9j])
-    one, two = (path_impedance(n)[1, 0] for n in (bare, fed))
+    one, two = (impedances(n)[1, 0] for n in (bare, fed))
     assert 1 / two == pytest.approx(1 / one + 1 / lines[1][2], rel=1e-6)
 
 
@@ -210,10 +209,18 @@ def test_two_supplies_behind_impedances_may_meet_without_any_between():
     assert solution.voltage[0, 0, 0] == pytest.approx(solution.voltage[1, 0, 0])
 
 
-def test_what_cannot_be_asked():
+def test_bare_rounds_doubled_supplies_and_dead_nodes():
+    rounded = behind(build(3, [(0, 230)], [(0, 1, 0.1), (1, 2, 0), (1, 2, 0)]), [0.05j])
+    assert impedances(rounded)[1:, 0] == pytest.approx([0.1 + 0.05j] * 2)
+    doubled = behind(build(2, [(0, 230), (0, 230)], [(0, 1, 0.1)]), [0.1j, 0.1j])
+    assert impedances(doubled)[:, 0] == pytest.approx([0.05j, 0.1 + 0.05j])
+    assert np.isinf(impedances(build(2, [(0, 230)]))[1]).all()
+    assert np.isnan(faults(build(2, [(0, 230)]), None, 400.0, 1.0).three_phase[1]).all()
+
+
+def test_transfer_impedance_cannot_be_asked_of_a_bare_round():
     bare = build(3, [(0, 230)], [(0, 1, 0.1), (1, 2, 0), (1, 2, 0)])
     with pytest.raises(ValueError, match="no impedance"):
-        path_impedance(bare)
+        transfer_impedance(bare, [1])
     with pytest.raises(ValueError, match="one node"):
-        path_impedance(build(2, [(0, 230), (0, 230)], [(0, 1, 0.1)]))
-    assert np.isnan(path_impedance(build(2, [(0, 230)]))[1]).all()
+        transfer_impedance(build(2, [(0, 230), (0, 230)], [(0, 1, 0.1)]), [1])
