@@ -21,7 +21,7 @@ from app.canvas.shown import Shown, array_of, column_of
 from app.canvas.standing import Standing
 from app.canvas.tag import Caption, NodeFigures, Tag
 from app.model.drawing import Drawing
-from app.model.kinds import Attachment, Branch, Busbar, Node
+from app.model.kinds import Attachment, Branch, Busbar, Node, Transformer
 from app.study.outcome import BranchState, Outcome, Table
 
 MARGIN = 300.0
@@ -225,8 +225,9 @@ class Paper(QGraphicsScene):
             lines = wording.node_figures(*shown.rows("nodes", id), shown.wires("nodes", id), shown.feels(id))
         elif isinstance(item, BranchItem):
             figures = shown.rows("branches", id)
-            wires = shown.branch_wires(id, self._laid.elements[id])
-            lines = wording.branch_figures(item.angle, *figures, item.lossless, item.step, wires)
+            element = self._laid.elements[id]
+            wires, alike = shown.branch_wires(id, element), not isinstance(element, Transformer)
+            lines = wording.branch_figures(item.angle, *figures, item.lossless, item.step, wires, alike)
         return tag.write(lines, item.standing)
 
     # where words go -----------------------------------------------------------------------------

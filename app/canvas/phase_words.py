@@ -70,7 +70,7 @@ def amps_words(row: Any, has: str, system: str) -> str:
 
 
 def worst_of(row: Any, has: str, system: str) -> str:
-    """The conductor that carries most; nothing where there is but one, or they are alike."""
+    """The conductor of a line that carries most; nothing where there is but one, or they are alike."""
     known = {c: amps_of(row, c) for c in has if not math.isnan(amps_of(row, c))}
     if len(known) < 2 or figures.amps(max(known.values())) == figures.amps(min(known.values())):
         return ""
@@ -81,6 +81,12 @@ def lowest_of(row: Any) -> str:
     """The letter of the phase with the lowest volts; nothing where none is live."""
     known = {c: volts_of(row, c) for c in SLOTS if not math.isnan(volts_of(row, c))}
     return min(known, key=known.__getitem__) if known else ""
+
+
+def are_alike(row: Any) -> bool:
+    """True where all phases of three read the same: no letter says more."""
+    told = {figures.volts(volts_of(row, letter)) for letter in SLOTS}
+    return len(told) == 1
 
 
 def phase_name(letter: str, row: Any) -> str:

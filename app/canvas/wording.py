@@ -150,16 +150,18 @@ def branch_figures(
     lossless: bool = False,
     step: float | None = None,
     wires: tuple[Any, str, str] | None = None,
+    one_rating: bool = True,
 ) -> Lines:
     """Flow with its direction on the paper, then loading, of the worst conductor where they differ, and the
-    amperes in each; under it the loss; changes since the drag began."""
+    amperes in each; under it the loss; changes since the drag began. `one_rating`: for every conductor, so
+    that the one with most amperes is the worst; not between two windings."""
     if not state.live:
         return ()
     forward = runs_on(state.through_kw, state.forward)
     rated = not math.isnan(state.loaded_percent)
     load = figures.percent(state.loaded_percent) if rated else figures.amps(state.current_a)
     way = arrow(angle, forward) if flows(state.through_kw) else ""
-    worst = phase_words.worst_of(*wires) if wires is not None else ""
+    worst = phase_words.worst_of(*wires) if wires is not None and rated and one_rating else ""
     told = (figures.power(abs(state.through_kw)), way, worst, load)
     first: Line = (Run(" ".join(filter(None, told))),)
     split = phase_words.amps_words(*wires) if wires is not None else ""
@@ -208,7 +210,8 @@ def phase_figures(state: NodeState, now: Any, before: Any, judged: bool) -> Line
     """The lowest phase with its letter, its part of its own base, and the neutral where it can be felt."""
     letter = phase_words.lowest_of(now)
     volts = phase_words.volts_of(now, letter)
-    first: Line = (Run(f"{phase_words.phase_name(letter, now)} {figures.volts(volts)}"),)
+    name = "" if phase_words.are_alike(now) else f"{phase_words.phase_name(letter, now)} "
+    first: Line = (Run(f"{name}{figures.volts(volts)}"),)
     second: Line = (Run(f"{figures.percent(state.percent)} of {base_words(now.base_v)}", Style.QUIET),)
     if before is not None:
         second += changed(volts, phase_words.volts_of(before, letter), figures.volts)
@@ -218,7 +221,7 @@ def phase_figures(state: NodeState, now: Any, before: Any, judged: bool) -> Line
 
 def base_words(volts: float) -> str:
     """What volts are counted from: 120 V, 7.2 kV."""
-    return figures.level(float(f"{volts:.3g}"))
+    return figures.level(float(f"{volts:.4g}" if volts >= 1000 else f"{volts:.3g}"))
 
 
 def attachment_figures(

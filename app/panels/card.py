@@ -13,17 +13,19 @@ from app.model import edits
 from app.model.drawing import Project
 from app.model.fields import fields_of
 from app.model.kinds import Transformer, kind_of
+from app.panels.asked import Asked
 from app.panels.card_head import SYMBOL_SIZE, CardHead
 from app.panels.element_page import ElementPage
 from app.panels.element_words import step_text, subject, where
 from app.panels.now_table import NowTable
 from app.panels.page import Page
 from app.panels.project_page import ProjectPage
-from app.panels.results import Asked, findings_about, rows, tap_words
+from app.panels.results import findings_about, rows, tap_words
 from app.panels.special_rows import TapRow
 from app.panels.style import play
 from app.panels.summary import summary_rows
 from app.panels.verdict_lines import VerdictLines
+from app.panels.wire_rows import reach
 from app.panels.words import Rule
 
 WIDTH = 320
@@ -216,6 +218,8 @@ class Card(QScrollArea):
             self.now.setToolTip(LOADING_TIP if isinstance(one, Transformer) else "")
             told = self._solving.problem or outcome
             self.lines.show_findings(findings_about(told, self._ids) if self._ids else [])
+        if isinstance(self._page, ElementPage) and self._ids:
+            self._page.show_reach(*reach(drawing, outcome, self._ids[0]))
         self.now.setVisible(bool(self.now.rows))
         self._rules[0].setVisible(bool(self.now.rows))
         self._rules[1].setVisible(not self.lines.isHidden())

@@ -13,16 +13,19 @@ from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
 from app.model.levels import nominal_levels
+from app.model.rephasing import matters, set_phases
 from app.panels.case_rows import CaseRows
 from app.panels.element_words import step_text, subject
 from app.panels.field_row import VARIOUS, FieldRow, written
+from app.panels.fold import Fold, is_folded
 from app.panels.page import Page
+from app.panels.phase_row import PhaseRow
 from app.panels.spacing_row import SpacingRow
 from app.panels.special_rows import DemandRow, TapRow
 
 NOT_GIVEN = "not given"
 LESS_ASKED = {  # shown below the results
-    "earth_1_ohm", "earth_2_ohm", "fault_degc", "zero_resistance_ohm_per_km",
+    "earth_1_ohm", "earth_2_ohm", "earth_ohm", "fault_degc", "zero_resistance_ohm_per_km",
     "return_resistance_ohm_per_km", "zero_reactance_ohm_per_km",
     "z0_ratio", "angle_deg", "area_mm2", "capacitance_uf_per_km", "conductor", "constant_current_percent",
     "constant_impedance_percent", "drop_r_ohm", "drop_x_ohm", "note", "reference_v",
@@ -42,13 +45,18 @@ class ElementPage(Page):
         self.more = Page(theme)
         fields = [f for f in fields_of(self.kind).values() if f.name != "name"]
         fields.sort(key=lambda f: f.name == "note")
+        self.fold = Fold(theme)
         for field in fields:
-            self._add(field, self.more if field.name in LESS_ASKED else self)
-        self.rows = {**self.rows, **self.more.rows}
+            folded = self.fold.page if is_folded(self.kind, field.name) else None
+            self._add(field, folded or (self.more if field.name in LESS_ASKED else self))
+        self.rows = {**self.rows, **self.fold.page.rows, **self.more.rows}
         self.cases: CaseRows | None = None
         if issubclass(self.kind, Scaled):
             self.cases = CaseRows(self.kind, self._take_case, theme)
             self.down.addWidget(self.cases)
+        self.down.addWidget(self.fold)
+        if not self.fold.page.rows:
+            self.fold.hide()
 
     def _add(self, field: Field, page: Page) -> None:
         if field.name == "tap":
@@ -57,6 +65,8 @@ class ElementPage(Page):
             row = DemandRow(field, fields_of(self.kind)["demand_kw"], self._take, self.theme)
         elif field.name == "hung_at_m":
             row = SpacingRow(field, self._take, self.theme)
+        elif field.name == "phases":
+            row = PhaseRow(field, self._take_phases, self.theme)
         elif field.name == "demand_kw":
             return
         else:
@@ -82,7 +92,10 @@ class ElementPage(Page):
         if not elements:
             return
         stand_ins = {b.field: b for b in assumed.blank(elements[0], nominal(drawing, self.ids[0]))}
+        if self.fold.page.rows:
+            self.fold.follow(drawing, elements)
         for name, row in self.rows.items():
+            row.setVisible(any(matters(element, name) for element in elements))
             if isinstance(row, DemandRow):
                 row.show_demand(elements)
             else:
@@ -124,6 +137,23 @@ class ElementPage(Page):
         if level is None:
             return "as fed", ""
         return written(level.volts), level.how if level.assumed else ""
+
+    def show_reach(self, letters: str, system: str) -> None:
+        """Which phases reach the elements shown."""
+        row = self.rows.get("phases")
+        if isinstance(row, PhaseRow):
+            row.show_reach(letters, system)
+
+    def point_at(self, name: str) -> FieldRow | None:
+        if name in self.fold.page.rows:
+            self.fold.open()
+        return super().point_at(name)
+
+    def _take_phases(self, field: Field, phases: str) -> str:
+        """A choice of phases for every element shown."""
+        ids = self.ids
+        text = step_text(field, phases, subject(self._session.drawing, ids))
+        return self._session.edit(text, lambda drawing: set_phases(drawing, ids, phases))
 
     def _take(self, field: Field, text: str) -> str:
         ids = self.ids

@@ -8,7 +8,7 @@ from PySide6.QtWidgets import QMenu, QSizePolicy, QWidget
 
 from app.canvas.palette import font
 from app.canvas.theme import Theme
-from app.panels.results import Row
+from app.panels.asked import Row
 from app.panels.style import mixed
 from app.panels.verdicts import colour_of
 from app.panels.words import LEFT, RIGHT

@@ -4,8 +4,6 @@ import math
 from collections.abc import Callable, Iterable
 from functools import partial
 
-from msgspec import Struct
-
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.figures import amps, change, length, loss, percent, plain, power, volts
@@ -22,30 +20,13 @@ from app.model.kinds import (
     Switch,
     Transformer,
 )
-from app.study.outcome import Finding, NodeState, Outcome, Table, Verdict
+from app.panels import wire_rows
+from app.panels.asked import Asked, Row, Write
+from app.study.outcome import Finding, NodeState, Outcome, Table
 from app.study.overhead_working import ohms as per_km
 from app.study.overhead_working import working_in
 
-Write = Callable[[float], str]
 VOLTAGE, DROP, LOADING = ("voltage low", "voltage high"), ("voltage drop",), ("loading",)
-
-
-class Row(Struct, frozen=True):
-    """One result: a cell for each case; `change` belongs to the case shown."""
-
-    label: str
-    cells: tuple[str, ...]
-    change: str = ""
-    verdict: Verdict | None = None
-
-
-class Asked(Struct, frozen=True):
-    """What rows are made from: the drawing, its outcome, the one before the drag, the case shown."""
-
-    drawing: Drawing
-    outcome: Outcome
-    before: Outcome | None
-    case: int
 
 
 def rows(asked: Asked, id: str) -> list[Row]:
@@ -77,18 +58,11 @@ def _row(
         then = getattr(asked.before, table)
         if id in then and asked.case < len(asked.before.cases):
             moved = change(read(states[asked.case]), read(then.at(id, asked.case)), write)
-    return Row(label, cells, moved, _verdict(asked, id, check))
+    return Row(label, cells, moved, asked.verdict(id, check))
 
 
 def _states(table: Table, id: str, cases: int) -> list:
     return [table.at(id, case) for case in range(cases)]
-
-
-def _verdict(asked: Asked, id: str, check: tuple[str, ...]) -> Verdict | None:
-    """The worst verdict of the case shown among the element's findings of that check."""
-    if asked.case >= len(asked.outcome.cases):
-        return None
-    return asked.outcome.verdict_of(id, asked.case, check)
 
 
 def _node(asked: Asked, id: str) -> list[Row]:
@@ -96,10 +70,12 @@ def _node(asked: Asked, id: str) -> list[Row]:
         return []
     row = partial(_row, asked, "nodes", id)
     return [
-        row("Volts", "voltage_v", volts, VOLTAGE),
-        row("Of nominal", "percent", partial(percent, digits=2)),
+        *(wire_rows.of_node(asked, id) or [row("Volts", "voltage_v", volts, VOLTAGE)]),
+        row(wire_rows.lowest_label(asked, id), "percent", partial(percent, digits=2)),
+        *wire_rows.highest(asked, id),
         row("Margin to limit", partial(_margin, asked), partial(percent, digits=2, sign=True)),
         row("Total drop", "drop_percent", partial(percent, digits=2), DROP),
+        *wire_rows.evenness(asked, id),
         row("Angle", "angle_deg", partial(plain, digits=1, unit="°")),
         _once(row("Route", "route_m", length)),
         *_faults(asked, id),
@@ -131,7 +107,7 @@ def _faults(asked: Asked, id: str) -> list[Row]:
 def _margin(asked: Asked, state: NodeState) -> float:
     """Distance to the nearer voltage limit, unrounded; negative is beyond it."""
     limits = asked.drawing.limits
-    return min(state.percent - limits.low_percent, limits.high_percent - state.percent)
+    return min(state.percent - limits.low_percent, limits.high_percent - state.high_percent)
 
 
 def _once(row: Row) -> Row:
@@ -147,7 +123,7 @@ def _line(asked: Asked, id: str) -> list[Row]:
     degrees = assumed.value(element, "temperature_degc")
     ohms = partial(plain, digits=4, unit="Ω")
     return [
-        row("Current", "current_a", amps),
+        *(wire_rows.of_leads(asked, id) or [row("Current", "current_a", amps)]),
         row("Loading", "loaded_percent", percent, LOADING),
         row("Through", "through_kw", power),
         row("Drop", "drop_percent", partial(percent, digits=2)),
@@ -178,6 +154,7 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
         row("Through", "through_kw", power),
         row("", "through_kva", partial(power, unit="kVA")),
         row("Loading", "loaded_percent", percent, LOADING),
+        *wire_rows.of_leads(asked, id),
     ]
     if low in asked.outcome.nodes:
         made.append(_row(asked, "nodes", low, "Volts, lower side", _voltage, volts, VOLTAGE))
@@ -222,7 +199,7 @@ def _switch(asked: Asked, id: str) -> list[Row]:
         return [Row("Contacts", ("open",) * len(asked.outcome.cases), "", None)]
     row = partial(_row, asked, "branches", id)
     return [
-        row("Current", "current_a", amps),
+        *(wire_rows.of_leads(asked, id) or [row("Current", "current_a", amps)]),
         row("Loading", "loaded_percent", percent, LOADING),
         row("Through", "through_kw", power),
     ]
@@ -237,7 +214,7 @@ def _attachment(asked: Asked, id: str) -> list[Row]:
     made = [
         row("Feeds in" if feeds else "Draws", "kw", power),
         row("" if isinstance(element, Load | Motor | Supply | Generator) else "Reactive", "kvar", _kvar),
-        row("Current", "current_a", amps),
+        *(wire_rows.of_leads(asked, id) or [row("Current", "current_a", amps)]),
         row("Volts", "voltage_v", volts),
     ]
     return made + _start(asked, id)
@@ -259,7 +236,7 @@ def _start(asked: Asked, id: str) -> list[Row]:
         ):
             continue
         moved = change(getattr(states[asked.case], name), getattr(then, name), write) if then else ""
-        made.append(Row(label, cells, moved, _verdict(asked, id, check)))
+        made.append(Row(label, cells, moved, asked.verdict(id, check)))
     return made
 
 

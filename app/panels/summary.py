@@ -5,7 +5,7 @@ from functools import partial
 
 from app.model.figures import change, closure, length, loss, power, volts
 from app.model.kinds import Branch, Line, Load, Node
-from app.panels.results import Asked, Row
+from app.panels.asked import Asked, Row
 
 
 def summary_rows(asked: Asked, ids: tuple[str, ...]) -> list[Row]:

@@ -50,7 +50,8 @@ def test_horsepower_may_be_typed_and_a_starter_chosen(set_up):
 
 
 def test_a_start_that_comes_while_dragging_shows_its_change(set_up):
-    from app.panels.results import Asked, rows
+    from app.panels.asked import Asked
+    from app.panels.results import rows
     from app.study import run
 
     before = set_up.drawing
