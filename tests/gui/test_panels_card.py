@@ -10,8 +10,8 @@ from app.canvas.wording import branch_figures
 from app.model import edits
 from app.model.figures import power
 from app.model.kinds import Generator, Load, Transformer
-from app.panels.element_page import ElementPage
 from app.panels.asked import Asked
+from app.panels.element_page import ElementPage
 from app.panels.results import rows
 
 
