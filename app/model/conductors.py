@@ -8,6 +8,7 @@ import numpy as np
 from app.model.figures import typed
 from app.model.kinds import Element, Line, OverheadLine
 from app.model.numerals import UnitError, quoted
+from app.model.phasing import CHOICES
 from app.model.spacing import places
 from solver import carson
 
@@ -52,6 +53,7 @@ def hung(line: OverheadLine) -> Hung:
     """What hangs on the poles of a line that states its spacing."""
     where = places(line.hung_at_m)
     letters = letters_of(line, len(where))
+    where = where[: len(letters) - 1] + where[-1:]  # a neutral is the last, whatever hangs before it
     found = {}
     for name in STAND_INS:
         given = getattr(line, name)
@@ -75,9 +77,9 @@ def hung(line: OverheadLine) -> Hung:
 
 def letters_of(line: Line, count: int) -> str:
     """Which conductors so many places are: ABCN, ABC, BN, AB …; a lateral on `all` is taken as A."""
-    if line.phases == "all":
+    if line.phases not in CHOICES[1:]:
         return {1: "A", 2: "AN", 3: "ABC"}.get(count, "ABCN")
-    return line.phases + "N" if count > len(line.phases) else line.phases
+    return line.phases + "N" if count > len(line.phases) else line.phases[:count]
 
 
 def has_neutral(element: Element) -> bool:
@@ -85,6 +87,11 @@ def has_neutral(element: Element) -> bool:
     if not isinstance(element, OverheadLine) or not element.hung_at_m:
         return False
     return letters_of(element, len(places(element.hung_at_m))).endswith("N")
+
+
+def wires_of(element: Element) -> int:
+    """How many conductors hang; none where no spacing is stated."""
+    return len(places(element.hung_at_m)) if isinstance(element, OverheadLine) else 0
 
 
 def is_idle(line: OverheadLine, field: str) -> bool:
@@ -191,7 +198,7 @@ def _fault_of_count(line: OverheadLine, count: int) -> str | None:
     neutral = letters_of(line, count).endswith("N")
     if neutral and line.neutral == "none":
         return "Hangs at has a place for a neutral, but Neutral is none; allowed is one or the other."
-    if not neutral and line.neutral in ("carried", "earthed along"):
+    if not neutral and count > 1 and line.neutral in ("carried", "earthed along"):
         return f"Hangs at has no place for the neutral, but Neutral is {line.neutral}; allowed is to add one."
     return None
 

@@ -1,18 +1,21 @@
 """What stands in for data that only phases and neutral need, and on what basis; listed only with these."""
 
-from app.model.conductors import has_neutral
+from app.model.conductors import has_neutral, is_hung, wires_of
 from app.model.fault_data import LOW_V, Put
 from app.model.kinds import Line
 
 
 def neutral_of(line: Line, nominal_v: float, single_phase: bool) -> str:
     """Its neutral: `carried`, `earthed along` or `none`, where the drawing says `usual` by its level; above
-    1 kV it is earthed along where the spacing has one."""
+    1 kV it is earthed along where the spacing has one, and a wire that hangs alone returns through earth."""
     if line.neutral != "usual":
         return line.neutral
-    if single_phase or nominal_v <= LOW_V:
-        return "carried"
-    return "earthed along" if has_neutral(line) else "none"
+    low = single_phase or nominal_v <= LOW_V
+    if not is_hung(line):
+        return "carried" if low else "none"
+    if wires_of(line) > 1 and not (single_phase or has_neutral(line)):
+        return "none"
+    return "carried" if low and wires_of(line) > 1 else "earthed along"
 
 
 def neutral_value(line: Line, field: str) -> float | Put:

@@ -110,7 +110,7 @@ def sentences(made: Working) -> tuple[str, ...]:
     name, zero = ("Z", None) if made.zero is None else ("Z1", f"Z0 = {ohms(made.zero)}, {made.back}")
     share = "" if abs(made.share) < 1e-4 else f" + {_bracketed(made.share)}"
     total = f"{ohms(made.z)}, {made.back}" if zero is None else ohms(made.z)
-    first = f"{name} = {plain(made.r, 3)} + j{plain(made.k, 4)}·{logs}{share} = {total}"
+    first = f"{name} = {plain(made.r, 3)} + j{plain(made.k, 5)}·{logs}{share} = {total}"
     return (first, SOURCE) if zero is None else (first, zero, SOURCE)
 
 

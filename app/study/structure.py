@@ -9,6 +9,7 @@ from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rings import ring_findings
 from app.study.wire_findings import phase_findings
+from app.study.spacing_findings import spacing_findings
 from app.study.words import DEAD, list_of, tell
 from app.study.zones import Zones, level_findings, stated_voltages
 
@@ -32,6 +33,7 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
         *level_findings(drawing, layout, zones),
         *_groups(drawing, layout, zones),
         *phase_findings(drawing, layout, zones),
+        *spacing_findings(drawing, layout, zones),
         *_plates(drawing, layout),
         *_dead(drawing, layout),
         *_loose_ends(drawing, layout),
