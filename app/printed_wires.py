@@ -28,7 +28,7 @@ def wire_tables(drawing: Drawing, outcome: Outcome, case: int) -> list[Written]:
 
 def heads_of(systems: Iterable[str]) -> dict[str, str]:
     """Heads of the phases: A, B, C; L1 and L2 where nothing else is drawn, `A, L1` where both are."""
-    found = sorted(set(systems) - {""})
+    found = sorted(set(systems) - {""}, reverse=True)
     made = {}
     for letter in PHASES:
         names = {conductor(letter, system): None for system in found} or {letter: None}

@@ -20,7 +20,8 @@ LEAVE_OUT = ("key",)
 BESIDE = (
     "busbars", "cables", "transformers", "loads", "supplies", "switches", "faults", "circuit_ends",
     "devices", "balance", "losses", "findings",
-    "cable_list", "orders", "settings", "open_points",
+    "regulators", "motors", "starts", "spacing",
+    "cable_list", "orders", "settings", "open_points", "laterals", "allocation",
 )  # fmt: skip
 
 

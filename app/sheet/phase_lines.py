@@ -1,15 +1,18 @@
 """Cables and overhead lines whose conductors are solved one by one: amperes, loading and loss of each."""
 
 from app.model import assumed
-from app.model.kinds import Line
+from app.model.conductors import is_hung
+from app.model.kinds import Line, OverheadLine
 from app.model.wire_data import neutral_of, neutral_value
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
 from app.sheet.lines import DATA, DROP, KEY, LOADING, LOSS, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
+from app.sheet.spacing import KEY as SPACING
 from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
 from app.sheet.wires import amps, each, most, node_wires, redone, spread, volts
 from app.study.outcome import BranchState, BranchWires
+from app.study.overhead_working import BASIS, working_in
 from app.study.wire_words import conductors
 from solver.line import ALPHA
 
@@ -34,6 +37,8 @@ def phase_line_tables(subject: Subject) -> list[SheetTable]:
     data = [*DATA[:3], *WIRES, *DATA[3:-1], *OWN, DATA[-1]]
     if any(subject.value(i, "capacitance_uf_per_km").value for i in found):
         data.insert(-1, Column("c", "C", "µF/km", digits=3, width=7))
+    if any(is_hung(e) for e in found.values()):
+        data.append(Column("basis", "R and X", style=Style.LONG, width=18))
     figures = (
         *each(subject, Column("i", "I", "A", style=Style.AMPS, width=8)),
         *each(subject, Column("load", "Loading", "%", near="most", width=8)),
@@ -104,9 +109,13 @@ def _data(subject: Subject, id: str, line: Line, ohms: tuple[float, float]) -> C
         "c": subject.value(id, "capacitance_uf_per_km"),
         "iz": subject.value(id, "rating_a"),
         "r": Cell(ohms[0], "{r20}" + hot, size),
-        "xt": Cell(line.reactance_ohm_per_km * line.length_m / 1e3 / line.side_by_side,
-                   "{x}*{length}/1000/{runs}"),
     }  # fmt: skip
+    found["basis"] = text("as stated")
+    if isinstance(line, OverheadLine) and is_hung(line):
+        found["x"] = Cell(working_in(subject.drawing, line).z.imag, "{x1}", {"x1": Ref("x1", SPACING, id)})
+        found["basis"] = text(BASIS)
+    x = float(found["x"].value or 0.0)
+    found["xt"] = Cell(x * line.length_m / 1e3 / line.side_by_side, "{x}*{length}/1000/{runs}")
     if "N" in has:
         own = subject.value(id, "neutral_resistance_ohm_per_km")
         found["rn20"] = own if own.value is not None else Cell(_neutral_r20(line))

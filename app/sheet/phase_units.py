@@ -12,7 +12,7 @@ from app.sheet.phase_lines import branch_wires
 from app.sheet.subject import HOLDS, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.sheet.transformers import DATA, EXTREMES, FIGURES, KEY, data_cells
-from app.sheet.wires import amps, each, redone, spread
+from app.sheet.wires import amps, each, node_wires, redone, spread, volts
 from app.study.changers import is_changer
 from app.study.outcome import BranchState, Verdict
 
@@ -25,7 +25,7 @@ WIRES = (
 NOTE = (
     "Pk, P0, uk and i0 are of one unit. Loading is that of the worst phase of the worse winding. I of the "
     "phases is of the winding that is fed; i of a winding is its worst phase. Iron and copper are the "
-    "solver's, summed over the phases. Excitation is of the lowest phase."
+    "solver's, summed over the phases. Excitation is of the lowest phase, or of the one it hangs on."
 )
 
 
@@ -85,8 +85,9 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         *((state.start_kw, state.start_kvar) if state.forward else (state.end_kw, state.end_kvar))
     )
     rated = taps.windings(t, int(state.notch))[0 if state.forward else 1]
+    leads = amps(branch_wires(subject, id, case))
     iron, copper = state.iron_kw * 1e3, state.copper_kw * 1e3
-    return spread("i", amps(branch_wires(subject, id, case))) | {
+    return spread("i", leads) | {
         "i1": Cell(state.start_a),
         "i2": Cell(state.end_a),
         "s": Cell(kva),
@@ -98,9 +99,22 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         "iron": Cell(iron),
         "copper": Cell(copper),
         "loss": redone(state.loss_kw * 1e3, "{iron}+{copper}", iron + copper),
-        "excitation": Cell(nodes.at(fed, case).voltage_v / rated * 100),
+        "excitation": Cell(_across(subject, fed, [p for p in leads if p != "N"], case) / rated * 100),
         "most": Cell(subject.drawing.limits.most_loaded_percent),
     }
+
+
+def _across(subject: Subject, node: str, phases: list[str], case: int) -> float:
+    """Volts across the winding that is fed: the lowest as between lines, of its own phase, or between its two;
+    nan where those two are not told."""
+    wires = node_wires(subject, node, case)
+    if len(phases) == 3 or wires.system != "three-phase":
+        return subject.outcome.nodes.at(node, case).voltage_v
+    there, between = volts(wires), wires.against == "next phase"
+    if len(phases) == 1:
+        return math.nan if between else there.get(phases[0], math.nan)
+    first = {"AB": "A", "BC": "B", "AC": "C"}.get("".join(phases), "")
+    return there.get(first, math.nan) if between else math.nan
 
 
 def _loading(t: Transformer, state: BranchState) -> Cell:

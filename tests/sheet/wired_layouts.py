@@ -1,7 +1,19 @@
 """Invented drawings whose phases are not alike: a camp with single-phase laterals, units of few phases."""
 
 from app.model.drawing import Case, Drawing, Limits
-from app.model.kinds import Busbar, Cable, Joint, Load, Supply, Transformer
+from app.model.kinds import (
+    Busbar,
+    Cable,
+    Capacitor,
+    Generator,
+    Joint,
+    Load,
+    Motor,
+    OverheadLine,
+    Supply,
+    Switch,
+    Transformer,
+)
 
 FOOT = 0.3048
 BACKBONE = {"resistance_ohm_per_km": 0.100 / FOOT, "reactance_ohm_per_km": 0.041 / FOOT, "rating_a": 205.0}
@@ -55,6 +67,52 @@ def camp(*cases: Case, **changed) -> Drawing:
         "L6": Load(name="Lodge", node="B3", demand_kw=9.0, demand_kva=None),
     }  # fmt: skip
     limits = Limits(low_percent=91.6, high_percent=110.0, name="110 V at a pedestal", unbalance_percent=2.0)
-    return Drawing(
-        elements=elements | changed, cases=cases or (EVENING,), limits=limits, frequency_hz=60.0
-    )
+    return Drawing(elements=elements | changed, cases=cases or (EVENING,), limits=limits, frequency_hz=60.0)
+
+
+def units(*cases: Case) -> Drawing:
+    """Single-phase, centre-tapped and open-delta units, a line by its spacing, all that can hang between."""
+    plate = {"uk_percent": 3.0, "load_loss_w": 400.0, "no_load_loss_w": 100.0, "no_load_current_percent": 0.8}
+    elements = {
+        "B1": Busbar(name="Line"),
+        "S1": Supply(node="B1", nominal_v=12470.0, fault_level_max_mva=60.0, xr=4.0, z0_ratio=1.5),
+        "O1": OverheadLine(
+            start="B1", end="J1", phases="A", neutral="earthed along", length_m=2200.0, rating_a=140.0,
+            resistance_ohm_per_km=0.9, hung_at_m="0 9.5; 0.6 8.0", diameter_mm=9.0, gmr_mm=3.3,
+        ),
+        "J1": Joint(),
+        "T1": Transformer(
+            name="Pole", start="J1", end="B2", rating_kva=25.0, v1_v=7200.0, v2_v=240.0, vector_group="Ii0",
+            build="centre-tapped", **plate,
+        ),
+        "B2": Busbar(name="House"),
+        "C1": Cable(start="B2", end="B3", length_m=40.0, rating_a=150.0, temperature_degc=50.0),
+        "B3": Busbar(name="Barn"),
+        "L1": Load(name="Lamps", node="B3", demand_kva=3.0, phases="A"),
+        "L2": Load(name="Oven", node="B3", demand_kva=6.0, phases="AB", power_factor=1.0),
+        "L3": Load(name="Rest", node="B2", demand_kva=4.0),
+        "T2": Transformer(
+            name="Bank", start="B1", end="B4", rating_kva=100.0, v1_v=12470.0, v2_v=240.0, vector_group="Ii0",
+            build="open delta", **plate,
+        ),
+        "B4": Busbar(name="Mill"),
+        "M1": Motor(name="Saw", node="B4", rated_kw=15.0),
+        "L4": Load(
+            name="Kiln", node="B4", demand_kva=20.0, connection="delta", share_a_percent=50.0,
+            share_b_percent=30.0, constant_impedance_percent=100.0,
+        ),
+        "K1": Capacitor(node="B4", rating_kvar=5.0, connection="delta"),
+        "L5": Load(name="Pump", node="B4", demand_kva=4.0, phases="BC"),
+        "T3": Transformer(
+            name="Hut unit", start="B1", end="B7", rating_kva=15.0, v1_v=12470.0, v2_v=230.0,
+            vector_group="Ii0", phases="BC", **plate,
+        ),
+        "B7": Busbar(name="Hut"),
+        "L6": Load(
+            name="Heater", node="B7", demand_kw=5.0, demand_kva=None, constant_impedance_percent=100.0
+        ),
+        "W1": Switch(start="B7", end="B8", rating_a=200.0),
+        "B8": Busbar(name="Roof"),
+        "G1": Generator(name="Panels", node="B8", output_kw=2.0),
+    }  # fmt: skip
+    return Drawing(elements=elements, cases=cases or (EVENING,), frequency_hz=60.0)
