@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 from app.model import wire_data
 from app.model.drawing import Drawing
-from app.model.kinds import Attachment, Branch, Line, Supply, Switch, Transformer
+from app.model.kinds import Attachment, Branch, Line, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
 from app.study.graph import NONE, Layout
 from app.study.leads import Leads, leads_of
@@ -24,6 +24,7 @@ class Conductors:
     branch : per branch row, those it has; of a transformer those at both windings together
     units : branch row of each live transformer to the conductors at its windings
     leads : attachment row of each live attachment to the conductors between which it hangs
+    earthed : node rows at lines whose neutral is earthed along them
     """
 
     node: list[int]
@@ -31,6 +32,7 @@ class Conductors:
     branch: list[int]
     units: dict[int, UnitWires]
     leads: dict[int, Leads]
+    earthed: list[int]
 
 
 def is_wired(drawing: Drawing, layout: Layout, zones: Zones) -> bool:
@@ -96,7 +98,11 @@ class _Walk:
         self.layout, self.zones = layout, zones
         count = len(layout.nodes)
         self.node, self.drawn = [0] * count, [0] * count
+        self.neutral = [
+            self._neutral(row, b) if isinstance(b, Line) else "" for row, b in enumerate(layout.branches)
+        ]
         self.may = [self._allowed(row, branch) for row, branch in enumerate(layout.branches)]
+        self.earthed = self._earthed()
         self.units: dict[int, UnitWires] = {}
         self.feeders = set(layout.fed_by)
 
@@ -111,7 +117,18 @@ class _Walk:
         branch = [self._has(row, b) if self._is_live(row, b) else 0 for row, b in enumerate(layout.branches)]
         leads = {row: self._leads(row, hung) for row, hung in enumerate(layout.attachments)}
         live = {row: found for row, found in leads.items() if found is not None}
-        return Conductors(self.node, self.drawn, branch, self.units, live)
+        self._forget(live)
+        return Conductors(self.node, self.drawn, branch, self.units, live, sorted(self.earthed))
+
+    def _forget(self, leads: dict[int, Leads]) -> None:
+        """A neutral that nothing reaches and nothing hangs on has no volts that anybody could tell."""
+        lost = [n for n, has in enumerate(self.drawn) if has & NEUTRAL and not self.node[n] & NEUTRAL]
+        if lost and not any(self._on_neutral(row, found, lost) for row, found in leads.items()):
+            for node in lost:
+                self.drawn[node] &= ABC
+
+    def _on_neutral(self, row: int, leads: Leads, nodes: list[int]) -> bool:
+        return self.layout.at[row] in nodes and any(N in pair for pair in leads.pairs)
 
     def system(self, node: int) -> str:
         return self.zones.system[self.layout.zone[node]]
@@ -121,12 +138,24 @@ class _Walk:
         if not isinstance(branch, Line):
             return 0 if isinstance(branch, Transformer) else ABC | NEUTRAL
         phases = ABC if branch.phases == "all" else bits(branch.phases)
-        return phases | (NEUTRAL if self._neutral(row, branch) == "carried" else 0)
+        return phases | (NEUTRAL if self.neutral[row] == "carried" else 0)
 
     def _neutral(self, row: int, line: Line) -> str:
         node = self.layout.start[row]
         nominal = float(self.zones.nominal_v[self.layout.zone[node]])
         return wire_data.neutral_of(line, nominal, self.system(node) != THREE_PHASE)
+
+    def _earthed(self) -> set[int]:
+        """Nodes at lines whose neutral is earthed along them, switches and regulators let through."""
+        layout, found = self.layout, set[int]()
+        for row, kind in enumerate(self.neutral):
+            if kind == "earthed along":
+                found |= {layout.start[row], layout.end[row]}
+        bare = [row for row, b in enumerate(layout.branches) if isinstance(b, Switch | Regulator)]
+        ends = [{layout.start[r], layout.end[r]} for r in bare if getattr(layout.branches[r], "closed", True)]
+        while more := [pair for pair in ends if len(pair & found) == 1]:
+            found = found.union(*more)
+        return found
 
     def _is_live(self, row: int, branch: Branch) -> bool:
         closed = not isinstance(branch, Switch) or branch.closed
@@ -207,9 +236,5 @@ class _Walk:
         """Where a load between phase and neutral goes back: the neutral, earth, or nowhere."""
         if self.drawn[node] & NEUTRAL:
             return N
-        layout = self.layout
-        met = [row for row in (layout.fed_by[node],) if row != NONE]
-        lines = [layout.branches[row] for row in met]
-        if any(isinstance(b, Line) and b.neutral == "earthed along" for b in lines):
-            return EARTH
-        return EARTH if any(layout.at[s] == node for s in layout.supplies) else None
+        held = node in self.earthed or any(self.layout.at[s] == node for s in self.layout.supplies)
+        return EARTH if held else None

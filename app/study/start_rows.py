@@ -12,18 +12,20 @@ from numpy.typing import NDArray
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Motor, Supply
+from app.model.levels import SPLIT, TWO_WIRE
 from app.study.layout import Layout, arrays_of
 from app.study.rows import Rows
 from app.study.values import columns, load_values, motor_row, scaled_values
+from app.study.wire_rows import loads_between
 from app.study.zones import Zones
 from solver import Network, Solution
+from solver.line import symmetric
+from solver.share import pick
+from solver.sweep import times
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
-BATCHED = (
-    "source_voltage", "line_z", "line_y", "load_power", "load_reference", "shunt_y", "transformer_ratio",
-    "transformer_z", "transformer_y",
-)  # fmt: skip
+Index = NDArray[np.intp]
 
 
 def without(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Network:
@@ -40,15 +42,12 @@ def without(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, started:
     power, reference, mix = _running(drawing, layout, zones, rows)
     cases = len(drawing.cases)
     network = replace(rows.network, load_power=power, load_reference=reference, load_mix=mix)
-    wide: dict[str, Any] = {name: _tiled(getattr(network, name), len(started)) for name in BATCHED}
-    power = np.array(np.broadcast_to(wide["load_power"], (len(power), 1, len(started) * cases)))
+    network = pick(network, np.tile(np.arange(cases), len(started)))
+    power = network.load_power
+    power = np.array(np.broadcast_to(power, (*power.shape[:-1], len(started) * cases)))
     for number, row in enumerate(started):
         power[rows.loads == row, :, number * cases : (number + 1) * cases] = 0
-    return replace(network, **{**wide, "load_power": power})
-
-
-def _tiled(array: NDArray[Any], count: int) -> NDArray[Any]:
-    return array if array.shape[-1] == 1 else np.tile(array, (1,) * (array.ndim - 1) + (count,))
+    return replace(network, load_power=power)
 
 
 def _running(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> tuple[Complex, Real, Real]:
@@ -60,7 +59,7 @@ def _running(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> tupl
     run: list[Any] = [msgspec.structs.replace(a, state="running") if _starts(a) else a for a in hung]
     ids, nominal = [layout.attachment_ids[i] for i in rows.loads], nominal_of(layout, zones, rows.loads)
     power, reference, mix = load_values(run, ids, nominal, drawing.cases)
-    return *_per_phase(layout, rows, rows.loads, power, reference), mix
+    return *_as_solved(layout, zones, rows, rows.loads, power, reference)[:2], mix
 
 
 def _starts(hung: Any) -> bool:
@@ -80,12 +79,15 @@ def nominal_of(layout: Layout, zones: Zones, hung: Any) -> Real:
     return np.nan_to_num(zones.nominal_v[graph.zone[graph.at[hung]]], nan=1.0)
 
 
-def _per_phase(
-    layout: Layout, rows: Rows, hung: Any, power: Complex, reference: Real
-) -> tuple[Complex, Real]:
+def _as_solved(
+    layout: Layout, zones: Zones, rows: Rows, hung: Any, power: Complex, reference: Real
+) -> tuple[Complex, Real, Index | None]:
+    """Power and reference volts conductor by conductor, and where each lead goes where there are four."""
+    if rows.conductors is not None:
+        return loads_between(rows.conductors, hung, power, reference, nominal_of(layout, zones, hung))
     at = arrays_of(layout).at[hung]
     one = (power / rows.phases[at, None])[:, None, :]
-    return one, (reference / rows.wide[at])[:, None, None]
+    return one, (reference / rows.wide[at])[:, None, None], None
 
 
 def behind(
@@ -97,8 +99,8 @@ def behind(
     before: Network,
     still: Solution,
 ) -> Network:
-    """The network with a starting row for every motor, and every supply whose fault level is stated behind
-    its impedance: a node more and a line more, and the electromotive force that gave its volts before.
+    """The network with a starting row for every motor, and every supply behind the impedance of its least
+    fault level, with the electromotive force that gave its volts before; none where it states no level.
 
     drawing : the drawing
     layout : its graph
@@ -111,38 +113,48 @@ def behind(
     Returns : Network, column = motor · cases + case; the starting rows are the last loads
     Source : E = U + Z·I of each supply before the start
     """
-    z = np.array([source_impedance(s) for s in _supplies(layout, rows)])
-    weak = np.flatnonzero(z)
-    with np.errstate(all="ignore"):
-        current = np.conj(still.source_power / before.source_voltage)
-    held = before.source_voltage + np.nan_to_num(current) * z[:, None, None]
-    source = before.source_node.copy()
-    fresh = before.node_count + np.arange(len(weak))
-    source[weak] = fresh
-    batch = before.batch
-    power, reference, mix = _starting(drawing, layout, zones, rows, started)
-    line_z = np.broadcast_to(before.line_z, (*before.line_z.shape[:3], before.line_z.shape[3]))
-    extra = np.repeat(z[weak][:, None, None, None], line_z.shape[-1], axis=-1)
-    none = np.zeros((len(weak), 1, 1, before.line_y.shape[-1]), dtype=np.complex128)
-    loads = np.broadcast_to(before.load_reference, (*before.load_reference.shape[:2], 1))
+    supplies = [s for i in rows.sources if isinstance(s := layout.attachments[i], Supply)]
+    z = np.array([source_matrix(s, before.conductors) for s in supplies])[..., None]
+    held = before.source_voltage + times(z, np.nan_to_num(still.source_current))
+    power, reference, mix, to = _starting(drawing, layout, zones, rows, started)
+    loads = before.load_reference
+    loads = np.broadcast_to(loads, (*loads.shape[:-1], 1))
+    wires = before.wires
+    if wires is not None and to is not None:
+        wires = replace(wires, load_to=np.concatenate([wires.load_to, to]))
     return replace(
         before,
-        node_count=before.node_count + len(weak),
-        source_node=source,
         source_voltage=held,
-        line_from=np.concatenate([before.line_from, fresh]),
-        line_to=np.concatenate([before.line_to, before.source_node[weak]]),
-        line_z=np.concatenate([line_z, extra]),
-        line_y=np.concatenate([before.line_y, none]),
+        source_z=z,
         load_node=np.concatenate([before.load_node, arrays_of(layout).at[started]]),
-        load_power=np.concatenate([np.broadcast_to(before.load_power, (len(loads), 1, batch)), power]),
+        load_power=np.concatenate([before.load_power, power]),
         load_reference=np.concatenate([loads, reference]),
         load_mix=np.concatenate([before.load_mix, mix]),
+        wires=wires,
     )
 
 
-def _supplies(layout: Layout, rows: Rows) -> list[Supply]:
-    return [s for i in rows.sources if isinstance(s := layout.attachments[i], Supply)]
+def source_matrix(supply: Supply, k: int) -> Complex:
+    """Impedance of a supply between its conductors.
+
+    Zs = (2 Z1 + Z0) / 3 on the diagonal, Zm = (Z0 - Z1) / 3 beside it, Z0 as its ratio says, else Z1; of a
+    split-phase supply half in either hot wire. Its neutral is taken as firm.
+
+    supply : the supply
+    k : 1 or 4 conductors
+
+    Returns : (k, k) complex [ohm]
+    Source : see source_impedance, solver.line.symmetric
+    """
+    z = source_impedance(supply)
+    matrix = np.zeros((k, k), dtype=np.complex128)
+    if k == 1 or supply.wires == TWO_WIRE:
+        matrix[0, 0] = z
+    elif supply.wires == SPLIT:
+        matrix[0, 0] = matrix[1, 1] = z / 2
+    else:
+        matrix[:3, :3] = symmetric(z, z * (1.0 if supply.z0_ratio is None else supply.z0_ratio))
+    return matrix
 
 
 def source_impedance(supply: Supply) -> complex:
@@ -162,16 +174,16 @@ def source_impedance(supply: Supply) -> complex:
 
 def _starting(
     drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, started: list[int]
-) -> tuple[Complex, Real, Real]:
+) -> tuple[Complex, Real, Real, Index | None]:
     """A row a motor: what it draws at its start in its own columns, else nothing."""
     cases = len(drawing.cases)
     demands = columns([motor_row(m, True) for m in motors_of(layout, started)], 9)
     power, reference, mix = scaled_values(demands, nominal_of(layout, zones, started), drawing.cases)
-    one, reference = _per_phase(layout, rows, started, power, reference)
-    whole = np.zeros((len(started), 1, len(started) * cases), dtype=np.complex128)
+    one, reference, to = _as_solved(layout, zones, rows, started, power, reference)
+    whole = np.zeros((*one.shape[:-1], len(started) * cases), dtype=np.complex128)
     for number in range(len(started)):
         whole[number, :, number * cases : (number + 1) * cases] = one[number]
-    return whole, reference, mix
+    return whole, reference, mix, to
 
 
 def motors_of(layout: Layout, started: Sequence[int]) -> list[Motor]:

@@ -13,7 +13,8 @@ from app.study.changers import settled
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.rows import Rows, rows_of
-from app.study.start_rows import behind, motors_of, nominal_of, source_impedance, without
+from app.study.start_rows import behind, motors_of, source_impedance, without
+from app.study.start_seen import start_seen
 from app.study.start_table import StartState, StartTable
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
@@ -72,7 +73,7 @@ def start_table(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> S
     before = without(drawing, layout, zones, rows, started)
     still = solve(before, forest=layout.forest)
     after = behind(drawing, layout, zones, rows, started, before, still)
-    moved = solve(after)
+    moved = solve(after, forest=layout.forest)
     return _judged(drawing, layout, zones, rows, _Pair(started, still, moved))
 
 
@@ -83,6 +84,10 @@ class _Pair:
     started: list[int]
     still: Solution
     moved: Solution
+
+    @property
+    def both(self) -> tuple[Solution, Solution]:
+        return self.still, self.moved
 
 
 def board_of(layout: Layout, row: int) -> int:
@@ -126,19 +131,22 @@ def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _P
     found = _nothing(count, cases)
     ended = zip(pair.still.status, pair.moved.status, strict=True)
     solved = np.array([a is Status.SOLVED and b is Status.SOLVED for a, b in ended]).reshape(count, cases)
-    for name, nodes in (("motor", at), ("board", boards), ("supply", points)):
-        was, now = (_volts(s, rows, nodes, solved) for s in (pair.still, pair.moved))
-        found[f"{name}_before_v"], found[f"{name}_v"] = was, now
-        found[f"{name}_step_percent"] = 100 * (was - now) / was
+    seen = start_seen(layout, zones, rows, started)
+    for name, volts in (
+        ("motor", seen.motors),
+        ("board", seen.nodes(boards)),
+        ("supply", seen.nodes(points)),
+    ):
+        was, now = (np.where(solved[:, None], _own(volts(s.voltage), cases), np.nan) for s in pair.both)
+        found[f"{name}_before_v"], found[f"{name}_v"] = _deepest(was, now)
+        found[f"{name}_step_percent"] = 100 * (1 - found[f"{name}_v"] / found[f"{name}_before_v"])
     motors = motors_of(layout, started)
-    nominal = nominal_of(layout, zones, started)
-    rated = np.array([n if m.rated_v is None else m.rated_v for m, n in zip(motors, nominal, strict=True)])
     unknown = [source_impedance(s) == 0 for f in feeding if isinstance(s := layout.attachments[f], Supply)]
     found["supply_step_percent"][unknown] = np.nan
-    found["motor_percent"] = 100 * found["motor_v"] / rated[:, None]
-    found["current_a"] = _current(pair, rows, at, found["motor_v"])
+    found["motor_percent"] = 100 * found["motor_v"] / seen.rated_v[:, None]
+    found["current_a"] = np.where(solved, _own(seen.amps(pair.moved), cases)[:, 0], np.nan)
     running = [abs(motor.running(m.rated_kw * 1e3, m.efficiency, m.power_factor)) for m in motors]
-    found["times_rated"] = found["current_a"] / (np.array(running) / (rows.wide[at] * rated))[:, None]
+    found["times_rated"] = found["current_a"] / (np.array(running) / (seen.wide * seen.rated_v))[:, None]
     found["torque_percent"] = _torque(motors, found["motor_percent"])
     idle = np.array([[_stands_still(c, layout.attachment_ids[i]) for c in drawing.cases] for i in started])
     for column in found.values():
@@ -153,19 +161,18 @@ def _stands_still(case: Case, id: str) -> bool:
     return (case.motor_percent if own is None or own.percent is None else own.percent) == 0
 
 
-def _volts(solution: Solution, rows: Rows, nodes: NDArray[np.intp], solved: NDArray[np.bool_]) -> Real:
-    """(motor, case) volts at a node of each motor in its own columns."""
-    count, cases = solved.shape
-    volts = np.abs(solution.voltage[nodes, 0]).reshape(count, count, cases)
-    own = volts[np.arange(count), np.arange(count)] * rows.wide[nodes][:, None]
-    return np.where(solved, own, np.nan)
+def _own(values: Real, cases: int) -> Real:
+    """(motor, way, case) of each motor in its own columns."""
+    count = len(values)
+    own = values.reshape(count, values.shape[1], count, cases)
+    return np.asarray(own[np.arange(count), :, np.arange(count)])
 
 
-def _current(pair: _Pair, rows: Rows, at: NDArray[np.intp], volts: Real) -> Real:
-    count, cases = volts.shape
-    drawn = np.abs(pair.moved.load_power[-count:, 0]).reshape(count, count, cases)
-    own = drawn[np.arange(count), np.arange(count)]
-    return np.asarray(own * (rows.phases[at] / rows.wide[at])[:, None] / volts)
+def _deepest(was: Real, now: Real) -> tuple[Real, Real]:
+    """(motor, case) volts before and during the start, of the phase that falls most."""
+    step = np.where(np.isnan(was), -np.inf, (was - now) / was)
+    row = step.argmax(axis=1)[:, None]
+    return np.take_along_axis(was, row, 1)[:, 0], np.take_along_axis(now, row, 1)[:, 0]
 
 
 def _torque(motors: list[Motor], percent: Real) -> Real:

@@ -10,7 +10,8 @@ from app.study.flows import nominal_of, roles, routes_of
 from app.study.layout import Layout, arrays_of
 from app.study.outcome import AttachmentState, AttachmentWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
-from app.study.wires import ABC, NEUTRAL, PER_PHASE, N, letters
+from app.study.wire_volts import against, base_volts, phase_volts
+from app.study.wires import ABC, NEUTRAL, N, letters
 from app.study.zones import Zones
 from solver import Solution
 from solver.wires import EARTH
@@ -47,10 +48,9 @@ def wire_nodes(
     systems = [zones.system[zone] for zone in layout.zone]
     reach, drawn = np.array(conductors.node), np.array(conductors.drawn)
     three = np.array([system == THREE_PHASE for system in systems], dtype=bool)
-    kind = _against(layout, reach, drawn, three)
-    over = np.array([PER_PHASE[system] for system in systems])
-    base = nominal / np.where(kind == 2, 1.0, over)
-    pairs = _pairs(volts, reach, kind)
+    kind = against(layout, zones, conductors)
+    base = base_volts(layout, zones, kind)
+    pairs = phase_volts(volts, reach, kind)
     percent = 100 * np.abs(pairs) / base[:, None, None]
     low, high = _least(percent), -_least(-percent)
     sequence = np.abs(np.einsum("sp,npb->nsb", TO_SEQUENCE, volts[:, :3]))
@@ -83,32 +83,6 @@ def wire_nodes(
     }
     ids = tuple(layout.node_ids)
     return Table(NodeState, ids, nodes, layout.node_row), Table(NodeWires, ids, wires, layout.node_row)
-
-
-def _against(
-    layout: Layout, reach: NDArray[np.intp], drawn: NDArray[np.intp], three: NDArray[np.bool_]
-) -> NDArray[np.intp]:
-    """(node,) what phase volts are taken against: 0 neutral, 1 earth, 2 the next phase."""
-    lone = np.array([(has & ABC).bit_count() == 1 for has in reach.tolist()], dtype=bool)
-    earthed = np.zeros(len(reach), dtype=bool)
-    for row, branch in enumerate(layout.branches):
-        if getattr(branch, "neutral", "") == "earthed along":
-            earthed[[layout.start[row], layout.end[row]]] = True
-    found = np.where(drawn & NEUTRAL > 0, 0, np.where(earthed | lone | ~three, 1, 2))
-    return np.asarray(found, dtype=np.intp)
-
-
-def _pairs(volts: Complex, reach: NDArray[np.intp], kind: NDArray[np.intp]) -> Complex:
-    """(node, 3, case) volts of each phase that reaches, nan where none does."""
-    there = (reach[:, None] >> np.arange(3) & 1).astype(bool)
-    neutral = np.where(np.isnan(volts[:, N]), 0, volts[:, N])
-    to_neutral = volts[:, :3] - np.where((kind == 0)[:, None], neutral, 0)[:, None]
-    between = volts[:, :3] - np.roll(volts[:, :3], -1, axis=1)
-    both = there & np.roll(there, -1, axis=1)
-    by_phase = (kind == 2)[:, None]
-    shown = np.where(by_phase, both, there)[..., None]
-    chosen = np.where(by_phase[..., None], between, to_neutral)
-    return np.where(shown, chosen, complex(np.nan, np.nan))
 
 
 def _least(values: Real) -> Real:

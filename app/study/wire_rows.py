@@ -1,6 +1,6 @@
 """Drawing to solver rows where phases are solved one by one: four conductors, one column a loading case."""
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from typing import Any
 
 import numpy as np
@@ -55,7 +55,9 @@ def wire_network(
     nominal = np.where(np.isnan(zones.nominal_v), 1.0, zones.nominal_v)[graph.zone]
     line_z, line_y, line_has = line_matrices(drawing, layout, zones, conductors, lines)
     ratio, unit_z, unit_y, ports = _units(layout, zones, conductors, units)
-    power, reference, to, mix = _loads(drawing, layout, conductors, loads, nominal)
+    hung, ids = _of(layout.attachments, loads), _of(layout.attachment_ids, loads)
+    whole, stated, mix = load_values(hung, ids, nominal[at[loads]], drawing.cases)
+    power, reference, to = loads_between(conductors, loads, whole, stated, nominal[at[loads]])
     electrodes = [
         row
         for row, node in enumerate(layout.nodes)
@@ -131,15 +133,22 @@ def _units(
     )
 
 
-def _loads(
-    drawing: Drawing, layout: Layout, conductors: Conductors, rows: Index, nominal: Real
-) -> tuple[Complex, Real, Index, Real]:
-    """(load, k, case) power in each lead, its reference volts, where it goes, and the mix."""
-    at = arrays_of(layout).at
-    hung, ids = _of(layout.attachments, rows), _of(layout.attachment_ids, rows)
-    whole, reference, mix = load_values(hung, ids, nominal[at[rows]], drawing.cases)
-    power = np.zeros((len(rows), K, whole.shape[-1]), dtype=np.complex128)
-    volts, to = np.ones((len(rows), K, 1)), np.full((len(rows), K), EARTH)
+def loads_between(
+    conductors: Conductors, rows: Iterable[int], whole: Complex, reference_v: Real, nominal_v: Real
+) -> tuple[Complex, Real, Index]:
+    """Whole powers shared among the leads between which they hang.
+
+    conductors : leads of every attachment
+    rows : (load,) attachment rows
+    whole : (load, case) complex [VA]
+    reference_v : (load,) float [V] at which they are stated
+    nominal_v : (load,) float [V] of their nodes
+
+    Returns : power (load, k, case) complex [VA], reference (load, k, 1) float [V], conductor (load, k) to
+        which each lead goes
+    """
+    power = np.zeros((len(whole), K, whole.shape[-1]), dtype=np.complex128)
+    volts, to = np.ones((len(whole), K, 1)), np.full((len(whole), K), EARTH)
     to[:, :N] = N
     for n, row in enumerate(rows):
         found = conductors.leads.get(int(row))
@@ -148,8 +157,8 @@ def _loads(
         for (one, other), share, over in zip(found.pairs, found.shares, found.over, strict=True):
             power[n, one] = share * whole[n]
             to[n, one] = other
-            volts[n, one] = across(float(reference[n]), float(nominal[at[row]]), over)
-    return power, volts, to, mix
+            volts[n, one] = across(float(reference_v[n]), float(nominal_v[n]), over)
+    return power, volts, to
 
 
 def _shunts(drawing: Drawing, layout: Layout, conductors: Conductors, rows: Index, nominal: Real) -> Complex:
