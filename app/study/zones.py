@@ -127,7 +127,9 @@ def _fits(unit: Transformer, level: float, system: str) -> list[float]:
     if not single or system == TWO_WIRE:
         return [level]
     phase = level / PER_PHASE[system]
-    return [level, phase] if unit.phases == "all" else [level if len(unit.phases) == 2 else phase]
+    if unit.phases == "all" or system != THREE_PHASE:  # its phases are those of the three-phase side
+        return [level, phase]
+    return [level if len(unit.phases) == 2 else phase]
 
 
 def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
