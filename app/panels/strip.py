@@ -14,19 +14,21 @@ from app.live.session import Session
 from app.live.solving import Solving
 from app.model.drawing import label
 from app.model.edits import Change
-from app.model.figures import length, percent, volts
 from app.model.taps import by_hand
 from app.panels.results import tap_words
 from app.panels.strip_axes import Axes, Stretch, axes, node_points, span, stretches
 from app.panels.strip_paint import Curve, Shown, paint_strip
+from app.panels.strip_phases import PhaseCurve, base_of, phase_curves, system_of
 from app.panels.strip_routes import Routes, routes
 from app.panels.strip_tap import TapDrag
+from app.panels.strip_words import spoken
 from app.panels.words import LEFT
 from app.study.outcome import Outcome
 
 HEAD = 34.0
 FOOT = 42.0
 LEFT_MARGIN, RIGHT_MARGIN = 58.0, 34.0
+WIRED_MARGIN = 76.0  # where limits are told in volts as well
 REACH = 9.0
 
 
@@ -46,6 +48,7 @@ class VoltageStrip(QWidget):
         self.routes = Routes({}, ())
         self.axes: Axes | None = None
         self.curves: list[Curve] = []  # the case shown whole, of the others the main route
+        self.phases: list[PhaseCurve] = []  # of the case shown, where they are not alike
         self.before: Curve | None = None  # the main route when the drag began
         self.tap = TapDrag(session, solving, attention)
         self.setMouseTracking(True)
@@ -94,6 +97,7 @@ class VoltageStrip(QWidget):
         outcome, drawing = self._outcome, self._session.drawing
         if outcome is None:
             self.routes, self.axes, self.curves, self.before = Routes({}, ()), None, [], None
+            self.phases = []
             self.update()
             return
         chosen = (self.tap.id,) if self.tap.id else self._attention.selection
@@ -103,8 +107,9 @@ class VoltageStrip(QWidget):
         if self.tap.reach is not None:
             reach = min(reach[0], self.tap.reach[0]), max(reach[1], self.tap.reach[1])
         self.tap.reach = reach if self.tap.id else None
+        right = RIGHT_MARGIN if outcome.wires is None else WIRED_MARGIN
         room = QRectF(
-            LEFT_MARGIN, HEAD, self.width() - LEFT_MARGIN - RIGHT_MARGIN, max(self.height() - HEAD - FOOT, 20)
+            LEFT_MARGIN, HEAD, self.width() - LEFT_MARGIN - right, max(self.height() - HEAD - FOOT, 20)
         )
         self.axes = axes(room, self.routes, reach)
         backbone = self.routes.backbone
@@ -112,6 +117,8 @@ class VoltageStrip(QWidget):
             self._curve(outcome, case, self.routes if case == self.case else backbone)
             for case in range(len(outcome.cases))
         ]
+        shown = self.curves[self.case].nodes
+        self.phases = phase_curves(drawing, outcome, self.case, self.routes, self.axes, shown)
         known = before is not None and self.case < len(before.cases)
         self.before = self._curve(before, self.case, backbone) if before is not None and known else None
         self.update()
@@ -145,6 +152,9 @@ class VoltageStrip(QWidget):
             hover=self._attention.hover,
             held=self.tap.id or (self._keyed() if self.hasFocus() else ""),
             stale=self._solving.stale,
+            phases=self.phases,
+            system=system_of(self._outcome, self.routes) if self.phases and self._outcome else "",
+            base_v=base_of(self._outcome, self.routes) if self._outcome else math.nan,
         )
         paint_strip(painter, shown, palette)
 
@@ -156,7 +166,7 @@ class VoltageStrip(QWidget):
         painter.drawText(room, int(LEFT), "Volts along the route")
         room.setLeft(room.left() + painter.fontMetrics().horizontalAdvance("Volts along the route") + 16)
         held = self.tap.id or (self._keyed() if self.hasFocus() else "")
-        text = "% of nominal"
+        text = "% of nominal; volts at the right" if self.phases else "% of nominal"
         if held:
             drawing = self._session.drawing
             text = f"{label(drawing, held)}  {tap_words(drawing, self._outcome, held, self.case)}"
@@ -202,12 +212,14 @@ class VoltageStrip(QWidget):
         if not self.curves:
             return ""
         curve = self.curves[self.case]
-        nodes = [(math.dist(point.toTuple(), at.toTuple()), id) for id, at in curve.nodes.items()]
+        drawn: list[Curve | PhaseCurve] = [curve, *self.phases]
+        spots = [spot for each in drawn for spot in each.nodes.items()]
+        nodes = [(math.dist(point.toTuple(), at.toTuple()), id) for id, at in spots]
         near = min((n for n in nodes if n[1] in self.routes.main), default=(math.inf, ""))
         if near[0] < REACH:
             return near[1]
         best, least = "", REACH
-        for stretch in curve.stretches:
+        for stretch in (s for each in drawn for s in each.stretches):
             pairs = zip(stretch.points, stretch.points[1:], strict=False)
             aside = 0 if stretch.node in self.routes.main else 2
             away = min(segment_gap(a, b, point) for a, b in pairs) + aside
@@ -217,19 +229,7 @@ class VoltageStrip(QWidget):
 
     def words(self, id: str) -> str:
         """A node or branch in words, for the tooltip."""
-        outcome, drawing = self._outcome, self._session.drawing
-        if outcome is None or id not in drawing.elements:
-            return ""
-        name = label(drawing, id)
-        if id in outcome.nodes:
-            state = outcome.nodes.at(id, self.case)
-            level = f"{volts(state.voltage_v)}, {percent(state.percent)} of nominal"
-            return f"{name}: {level} at {length(state.route_m)}"
-        if by_hand(drawing.elements[id]):
-            return f"{name}: {tap_words(drawing, outcome, id, self.case)}. Drag the dot to move the tap."
-        if id in outcome.branches:
-            return f"{name}: {percent(outcome.branches.at(id, self.case).drop_percent, 2)} lost along it"
-        return name
+        return spoken(self._session.drawing, self._outcome, self.case, id)
 
     def event(self, event: QEvent) -> bool:
         if isinstance(event, QHelpEvent) and event.type() == QEvent.Type.ToolTip:

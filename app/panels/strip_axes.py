@@ -56,9 +56,11 @@ def span(limits: Limits, routes: Routes, outcomes: list[Outcome]) -> tuple[float
     low, high = limits.low_percent, limits.high_percent
     for outcome in outcomes:
         rows = outcome.nodes.rows
-        percent = outcome.nodes.column("percent")[[rows[i] for i in routes.stops if i in rows]]
-        known = percent[np.isfinite(percent)]
-        low, high = float(known.min(initial=low)), float(known.max(initial=high))
+        stops = [rows[i] for i in routes.stops if i in rows]
+        for name in ("percent", "high_percent"):
+            percent = outcome.nodes.column(name)[stops]
+            known = percent[np.isfinite(percent)]
+            low, high = float(known.min(initial=low)), float(known.max(initial=high))
     air = max(high - low, LEAST_SPAN) * 0.07
     return low - air, high + air
 

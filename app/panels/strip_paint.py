@@ -10,6 +10,7 @@ from app.model.figures import length, plain
 from app.model.kinds import Busbar, Transformer
 from app.model.taps import by_hand
 from app.panels.strip_axes import Axes, Stretch, ticks_m
+from app.panels.strip_phases import PhaseCurve, base_words, name_phases, paint_phases
 from app.panels.strip_routes import Routes
 from app.panels.style import mixed
 from app.panels.words import LEFT, RIGHT
@@ -39,17 +40,20 @@ class Shown(Struct, frozen=True):
     hover: str
     held: str  # the transformer whose step is dragged or has the keys
     stale: bool
+    phases: list[PhaseCurve]  # of the case shown, where phases are not alike
+    system: str
+    base_v: float  # that the limits are told in, at the far end; nan where percent say enough
 
 
 def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The plot under the head."""
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    _paint_band(painter, shown.axes, shown.drawing.limits, palette)
+    _paint_band(painter, shown.axes, shown.drawing.limits, palette, shown.base_v)
     _paint_route_axis(painter, shown, palette)
     for case, curve in enumerate(shown.curves):
         if case != shown.case:
             _paint_other_case(painter, curve, case, shown, palette)
-    names: list[QRectF] = []
+    names = name_phases(painter, shown.phases, shown.routes.main, shown.system, palette)
     if len(shown.curves) > 1:
         ink = palette.soft if shown.stale else palette.flow
         _name_curve(painter, shown.curves[shown.case], shown, ink, names)
@@ -63,7 +67,7 @@ def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     _paint_names(painter, shown, palette)
 
 
-def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette) -> None:
+def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette, base_v: float) -> None:
     room = axes.room
     top, bottom = axes.y(limits.high_percent), axes.y(limits.low_percent)
     band = QRectF(room.left() - 10, top, room.width() + 22, bottom - top)
@@ -77,6 +81,9 @@ def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette)
         painter.setPen(palette.soft)
         text = plain(percent, 0 if percent == round(percent) else 1)
         painter.drawText(QRectF(0, y - 8, band.left() - 6, 16), int(RIGHT), text)
+        if base_v == base_v:
+            told = base_words(percent * base_v / 100)
+            painter.drawText(QRectF(band.right() + 4, y - 8, 60, 16), int(LEFT), told)
 
 
 def _paint_route_axis(painter: QPainter, shown: Shown, palette: Palette) -> None:
@@ -143,6 +150,10 @@ def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palett
 def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The case shown: the main route strong, other branches faint, the selection and hover lit."""
     curve, main = shown.curves[shown.case], set(shown.routes.main)
+    if shown.phases:
+        lit_ids = {shown.hover, *shown.selection}
+        paint_phases(painter, shown.phases, main, lit_ids, palette, shown.stale)
+        return
     faint = QPen(_inked(mixed(palette.flow, palette.field, 0.4), shown, palette), 1.2)
     painter.setPen(faint)
     _polyline(painter, [s for s in curve.stretches if s.node not in main])
@@ -178,7 +189,7 @@ def _name_curve(painter: QPainter, curve: Curve, shown: Shown, colour: QColor, n
     end = curve.nodes.get(shown.routes.main[-1]) if shown.routes.main else None
     if end is None:
         return
-    painter.setFont(font(8, bold=not names))
+    painter.setFont(font(8, bold=curve is shown.curves[shown.case]))
     painter.setPen(colour)
     wide = min(QFontMetricsF(painter.font()).horizontalAdvance(curve.name), 260.0)
     ends = [end, *_before_steps(curve, shown)]
