@@ -42,8 +42,9 @@ True
 
 Reading order: `network` (the rows), `tour`, `rounds` and `forest` (trees, their order, what closes rounds
 over them), `placed` (rows in that order), `sweep` (the kernel), `joints` and `ties` (currents that close
-rounds), `loose` (volts that nothing holds), `settle` and `anderson` (until nothing moves), `answer` and
-`solution` (every branch), `share` (how much more load there could be), `trouble` (what has no solution).
+rounds), `loose` (volts that nothing holds), `settle`, `anderson`, `newton` and `krylov` (until nothing
+moves), `answer` and `solution` (every branch), `share` (how much more load there could be), `trouble` (what
+has no solution).
 Elements: `line`, `carson`, `transformer`, `load`, `motor`. Several conductors: `wires` (what they add to the
 rows), `windings` and `banks` (transformers between phases and neutral), `hung` (loads between conductors),
 `reached` (what no supply feeds, and sides without earth). Faults: `fault` (formulas), `sequence` (impedance

@@ -50,6 +50,13 @@ class Placed:
     here: Flag | None = None
     gain: Complex | None = None
 
+    @property
+    def asks(self) -> bool:
+        """Loads that hold their power or current can ask too much; impedances always leave an answer."""
+        if self.gain is not None:
+            return self.hung is not None
+        return self.current is not None or bool(self.power.any())
+
     def take(self, points: Index) -> "Placed":
         """The same with some operating points only."""
 

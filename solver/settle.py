@@ -7,6 +7,7 @@ import numpy as np
 from solver.anderson import Anderson
 from solver.forest import Forest
 from solver.network import Complex, Flag, Index, Real
+from solver.newton import follow
 from solver.placed import Placed
 from solver.status import Status
 from solver.sweep import Sweep
@@ -14,7 +15,7 @@ from solver.ties import Ties
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
 PLAIN = 12  # sweeps before acceleration
-MOST = 120  # sweeps in all
+MOST = 30  # sweeps in all
 WILD = 50.0  # growth of the change that makes the acceleration start afresh
 FAR = 0.5  # |c|² from which a geometric series is not worth following
 LOW = 0.02  # share of the no-load voltage that no guess may fall below
@@ -40,6 +41,8 @@ class Settled:
 
 def settle(placed: Placed, forest: Forest, start: Complex) -> Settled:
     """Repeats the sweep until nothing moves, block by block of operating points.
+
+    Plain sweeps first, then Anderson acceleration, and what has not settled after 30 by Newton's method.
 
     placed : Placed
     forest : Forest
@@ -67,7 +70,7 @@ class _Run:
 
     def __init__(self, placed: Placed, forest: Forest, start: Complex) -> None:
         width = start.shape[-1]
-        self.placed, self.forest = placed, forest
+        self.placed, self.forest, self.whole, self.start = placed, forest, placed, start
         self.points = np.arange(width)
         self.answer = np.full_like(start, NAN)
         self.status = np.full(width, Status.NOT_SETTLED, dtype=object)
@@ -110,7 +113,8 @@ class _Run:
                     self.voltage, self.image = self.image, self.voltage
                 else:
                     self.voltage = self._accelerated(change)
-        self._judge()
+        if self.points.size and (self.status == Status.NOT_SETTLED).any():
+            self._follow()
         return Settled(self.answer, tuple(self.status), self.iterations, self.tied)
 
     def _change(self) -> Real:
@@ -179,7 +183,7 @@ class _Run:
         image, step = self.image.copy(), self.image - self.voltage
         guess = self.anderson.next(image, step)
         wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
-        if self._can_collapse():
+        if self.placed.asks:
             wild |= self._lowest(guess) < LOW
         self.best = np.minimum(self.best, change)
         if wild.any():
@@ -194,14 +198,12 @@ class _Run:
             return np.asarray((np.abs(guess) / level[:, None, :]).min(axis=(0, 1)))
         return np.asarray((np.abs(hung.across(guess)) / level[hung.place]).min(axis=0))
 
-    def _can_collapse(self) -> bool:
-        """Loads that hold their power or current can ask too much; impedances always leave an answer."""
-        if self.placed.gain is not None:
-            return self.placed.hung is not None
-        return self.placed.current is not None or bool(self.placed.power.any())
-
-    def _judge(self) -> None:
-        """What has not settled by now has no operating point, if its loads can bring it down."""
-        if self._can_collapse():
-            lost = self.status == Status.NOT_SETTLED
-            self.status[lost] = Status.NO_OPERATING_POINT
+    def _follow(self) -> None:
+        """Where sweeps stall, Newton's method finds the answer, or how much of the load has one."""
+        left = np.flatnonzero(self.status == Status.NOT_SETTLED)
+        found = follow(self.whole.take(left), self.forest, self.start.take(left, axis=-1))
+        solved, part = found.share == 1, found.share < 1
+        self.answer[..., left[solved]] = found.voltage[..., solved]
+        self.status[left[solved]], self.status[left[part]] = Status.SOLVED, Status.NO_OPERATING_POINT
+        if self.tied is not None and found.tied is not None:
+            self.tied[:, left[solved]] = found.tied[:, solved]

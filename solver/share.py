@@ -11,7 +11,7 @@ from solver.solution import Solution
 from solver.solving import solve
 from solver.status import Status
 
-TRIES = 16
+TRIES = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,9 +32,9 @@ class Share:
 def largest_share(network: Network, point: int = 0) -> Share:
     """Largest share of all demands at one operating point that still has an operating point.
 
-    Every demand (a positive load_power) is scaled alike; generators stay as they are. Sixteen shares are
-    solved as one batch, the gap between the last that solves and the first that does not is cut into
-    sixteen again, until it is below 0.05 %. To blame is the branch with the largest drop on the way from
+    Every demand (a positive load_power) is scaled alike; generators stay as they are. The gap between the
+    last share that solves and the first that does not is cut into four, solved as one batch, until it is
+    below 0.05 %. To blame is the branch with the largest drop on the way from
     the supply to the lowest node, percent of no-load voltage, at the largest share.
 
     network : Network

@@ -173,7 +173,7 @@ def _unit(eq, row, unit, at):
             eq.kirchhoff[("turns", row, limb)] += [(("flux", row, other), -share) for other in range(3)]
 
 
-def solution(layout, point=0, tolerance=1e-12, start=None):
+def solution(layout, point=0, tolerance=1e-12, start=None, sweeps=60):
     """{name: value} of all volts and currents at one operating point; None where Newton does not settle."""
     eq = assemble(layout, point)
     for node, *pair, _, _, _ in ((row[0], row[1], row[2], 0, 0, 0) for row in layout.loads):
@@ -198,14 +198,17 @@ def solution(layout, point=0, tolerance=1e-12, start=None):
     b[: len(order)] = 0
     size = np.abs(a).max(axis=1)
     x = lstsq(a / size[:, None], b / size)[0] if start is None else start(eq.names)
-    for _ in range(60):
+    for _ in range(sweeps):
         drawn, straight, turned = _drawn(layout, point, eq, where, x, a.shape)
         miss = (a @ x + drawn - b) / size
         plus = (a + straight + turned) / size[:, None]
         minus = (a + straight - turned) / size[:, None]
         real = np.block([[plus.real, -minus.imag], [plus.imag, minus.real]])
         column = np.maximum(np.abs(real).max(axis=0), 1e-300)
-        step = lstsq(real / column, np.concatenate((miss.real, miss.imag)), cond=1e-13)[0] / column
+        step = (
+            lstsq(real / column, np.concatenate((miss.real, miss.imag)), cond=1e-13, lapack_driver="gelsy")[0]
+            / column
+        )
         step = step[: x.size] + 1j * step[x.size :]
         x = x - step
         volts = [i for name, i in eq.names.items() if name[0] == "v"]
