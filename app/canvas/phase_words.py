@@ -13,7 +13,7 @@ from app.model.rephasing import has_phases
 HOTS = {"A": "L1", "B": "L2"}
 SPLIT = "split-phase"
 SLOTS = "ABC"
-FELT_V = 1.0  # neutral to earth; farm animals are reported to react from 0.7 to 1 V
+TOLD_V = 5.0  # neutral to earth that is worth a line where no limit is set; common practice, no source
 
 
 def named(letter: str, system: str) -> str:
@@ -61,6 +61,12 @@ def volts_of(row: Any, letter: str) -> float:
     return float(getattr(row, f"{letter.lower()}_v"))
 
 
+def is_out_and_back(row: Any, has: str) -> bool:
+    """One current out and back, as figures read it: the amperes of the branch say it all."""
+    told = {figures.amps(amps_of(row, letter)) for letter in has}
+    return len(has) == 2 and len(told) == 1
+
+
 def amps_words(row: Any, has: str, system: str) -> str:
     """`A 41.2 · B 3.0 · N 33.0 A`."""
     told = [(named(c, system), amps_of(row, c)) for c in has if not math.isnan(amps_of(row, c))]
@@ -96,8 +102,9 @@ def phase_name(letter: str, row: Any) -> str:
     return named(letter, row.system)
 
 
-def neutral_words(row: Any, judged: bool) -> Words | None:
-    """`N 2.1 V to earth` where it can be felt, or a limit of it is near."""
-    if math.isnan(row.neutral_v) or not (judged or row.neutral_v >= FELT_V):
+def neutral_words(row: Any, limit_v: float | None) -> Words | None:
+    """`N 2.1 V to earth` from half of its limit on, or where none is set and it is high."""
+    told_v = TOLD_V if limit_v is None else limit_v / 2
+    if math.isnan(row.neutral_v) or row.neutral_v < told_v:
         return None
     return (Run(f"N {figures.volts(row.neutral_v)} to earth", Style.QUIET),)

@@ -10,7 +10,7 @@ from app.canvas import gauge, phase_words
 from app.canvas.phase_mark import Phases
 from app.model.drawing import Limits
 from app.model.kinds import Attachment, Branch, Transformer
-from app.study.outcome import Outcome, Table, Verdict
+from app.study.outcome import Outcome, Table
 from solver.status import Status
 
 
@@ -62,13 +62,6 @@ class Shown(Struct, frozen=True):
         if self.before is not None and self.case < len(self.before.cases):
             was = getattr(self.before.wires, name, None)
         return now, Row(was, id, self.case) if was is not None and id in was else None
-
-    def feels(self, id: str) -> bool:
-        """True where the volts of a neutral to earth are near their limit or beyond."""
-        if self.outcome.wires is None:
-            return False
-        found = self.outcome.verdict_of(id, self.case, ("neutral volts",))
-        return found in (Verdict.FAILS, Verdict.ADVICE, Verdict.NEAR)
 
     def system(self, node: str) -> str:
         """The wires of a node's zone: three-phase where all are alike."""

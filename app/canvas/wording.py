@@ -164,7 +164,8 @@ def branch_figures(
     worst = phase_words.worst_of(*wires) if wires is not None and rated and one_rating else ""
     told = (figures.power(abs(state.through_kw)), way, worst, load)
     first: Line = (Run(" ".join(filter(None, told))),)
-    split = phase_words.amps_words(*wires) if wires is not None else ""
+    said = wires is None or not rated and phase_words.is_out_and_back(*wires[:2])
+    split = phase_words.amps_words(*wires) if wires is not None and not said else ""
     amperes: Lines = ((Run(split, Style.PLAIN),),) if split else ()
     second: Line = (Run(f"{figures.loss(state.loss_kw)} lost", Style.QUIET),)
     if before is not None and before.live:
@@ -192,13 +193,16 @@ def arrow(angle: float, forward: bool) -> str:
 
 
 def node_figures(
-    state: NodeState, before: NodeState | None, wires: tuple[Any, Any] | None = None, judged: bool = False
+    state: NodeState,
+    before: NodeState | None,
+    wires: tuple[Any, Any] | None = None,
+    limit_v: float | None = None,
 ) -> Lines:
     """Volts, and percent of nominal under them; of the lowest phase where they differ."""
     if not state.live:
         return ((Run("dead", Style.QUIET),),)
     if wires is not None and phase_words.lowest_of(wires[0]):
-        return phase_figures(state, *wires, judged)
+        return phase_figures(state, *wires, limit_v)
     first: Line = (Run(figures.volts(state.voltage_v)),)
     second: Line = (Run(figures.percent(state.percent), Style.QUIET),)
     if before is not None and before.live:
@@ -206,8 +210,8 @@ def node_figures(
     return first, second
 
 
-def phase_figures(state: NodeState, now: Any, before: Any, judged: bool) -> Lines:
-    """The lowest phase with its letter, its part of its own base, and the neutral where it can be felt."""
+def phase_figures(state: NodeState, now: Any, before: Any, limit_v: float | None) -> Lines:
+    """The lowest phase with its letter, its part of its own base, and the neutral where it is high."""
     letter = phase_words.lowest_of(now)
     volts = phase_words.volts_of(now, letter)
     name = "" if phase_words.are_alike(now) else f"{phase_words.phase_name(letter, now)} "
@@ -215,7 +219,7 @@ def phase_figures(state: NodeState, now: Any, before: Any, judged: bool) -> Line
     second: Line = (Run(f"{figures.percent(state.percent)} of {base_words(now.base_v)}", Style.QUIET),)
     if before is not None:
         second += changed(volts, phase_words.volts_of(before, letter), figures.volts)
-    neutral = phase_words.neutral_words(now, judged)
+    neutral = phase_words.neutral_words(now, limit_v)
     return (first, neutral, second) if neutral is not None else (first, second)
 
 

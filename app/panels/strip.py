@@ -28,7 +28,7 @@ from app.study.outcome import Outcome
 HEAD = 34.0
 FOOT = 42.0
 LEFT_MARGIN, RIGHT_MARGIN = 58.0, 34.0
-WIRED_MARGIN = 76.0  # where limits are told in volts as well
+WIRED_MARGIN = 84.0  # where limits are told in volts as well
 REACH = 9.0
 
 

@@ -83,7 +83,7 @@ def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette,
         painter.drawText(QRectF(0, y - 8, band.left() - 6, 16), int(RIGHT), text)
         if base_v == base_v:
             told = base_words(percent * base_v / 100)
-            painter.drawText(QRectF(band.right() + 4, y - 8, 60, 16), int(LEFT), told)
+            painter.drawText(QRectF(band.right() + 12, y - 8, 60, 16), int(LEFT), told)
 
 
 def _paint_route_axis(painter: QPainter, shown: Shown, palette: Palette) -> None:

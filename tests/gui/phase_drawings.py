@@ -80,7 +80,7 @@ def _nodes(outcome: Outcome, reaches: dict[str, str], made) -> Table:
         "phases": np.array([reaches[i].removesuffix("N") for i in ids]),
         "against": np.array(["earth" if i == "HV" else "neutral" for i in ids]),
         "base_v": base,
-        "neutral_v": np.array([np.full(many, 2.1 if i != "HV" else np.nan) for i in ids]),
+        "neutral_v": np.array([np.full(many, 5.1 if i != "HV" else np.nan) for i in ids]),
         "unbalance_percent": made.uniform(0, 3, shape),
         "spread_percent": made.uniform(0, 3, shape),
     }

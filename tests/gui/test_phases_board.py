@@ -82,7 +82,7 @@ def test_a_node_says_its_lowest_phase_on_its_own_base(bench):
     state = bench.solving.outcome.wires.nodes.at("LODGE")
     lines = bench.board.tags["LODGE"].text.split("\n")
     assert lines[0] == f"C {state.c_v:.1f} V"
-    assert lines[1] == "N 2.1 V to earth"
+    assert lines[1] == "N 5.1 V to earth"
     assert lines[2].endswith("of 120 V")
     assert "to earth" not in bench.board.tags["HV"].text
     assert "of 7.2 kV" in bench.board.tags["HV"].text
