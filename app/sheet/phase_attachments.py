@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import replace
 
+from app.model.by_case import as_in, percent_of
 from app.model.kinds import Attachment, Capacitor, Load
 from app.sheet.elements import Entry, Plan, by_element, figure
 from app.sheet.subject import Subject
@@ -61,9 +62,29 @@ def _figures(subject: Subject, entry: Entry, hung: Attachment, cells: Cells, cas
         cells["current"] = most("i", leads, _number(cells["current"]))
     cells["u"] = _volts(subject, hung, _number(cells["u"]), case)
     for key in ("kw", "kvar"):
-        if "{u}" in cells[key].formula and not _follows(entry):
-            cells[key] = Cell(cells[key].value)
+        if "{u}" in cells[key].formula:
+            cells[key] = _followed(subject, entry, hung, cells, key, case)
     return cells
+
+
+def _followed(subject: Subject, entry: Entry, hung: Attachment, cells: Cells, key: str, case: int) -> Cell:
+    """Power that goes with the volts: by its formula where all of it hangs on the volts told, taken as
+    between lines or as across one lead; else the figure alone."""
+    cell = cells[key]
+    stated = _number(entry.data.get("reference", Cell()))
+    if key == "kvar" or not isinstance(hung, Load) or stated != stated:
+        return Cell(cell.value)
+    now = as_in(subject.drawing.cases[case], entry.id, hung)
+    whole = now.demand_kw if now.demand_kw is not None else (now.demand_kva or 0.0) * now.power_factor
+    whole *= percent_of(subject.drawing.cases[case], entry.id, hung) / 100
+    i, z = (_number(entry.data[name]) / 100 for name in ("i_share", "z_share"))
+    for words, factor in (("", 1.0), ("SQRT(3)*", 3**0.5), ("2*", 2.0)):
+        ratio = factor * _number(cells["u"]) / stated
+        redo = cell.formula.replace("{u}/", words + "{u}/")
+        found = redone(_number(cell), redo, whole * (1 - i - z + i * ratio + z * ratio**2), cell.refs)
+        if found.formula:
+            return found
+    return Cell(cell.value)
 
 
 def _volts(subject: Subject, hung: Attachment, value: float, case: int) -> Cell:
@@ -74,12 +95,6 @@ def _volts(subject: Subject, hung: Attachment, value: float, case: int) -> Cell:
         if found.formula:
             return found
     return Cell(value)
-
-
-def _follows(entry: Entry) -> bool:
-    """True where no part of a demand goes with the volts, so that a formula of its share holds."""
-    shares = [entry.data.get(key, Cell(1.0)).value for key in ("i_share", "z_share")]
-    return all(share in (0.0, None) for share in shares) and "i_share" in entry.data
 
 
 def _number(cell: Cell) -> float:

@@ -10,7 +10,7 @@ from app.sheet.nodes import VERDICT
 from app.sheet.spacing import KEY as SPACING
 from app.sheet.subject import Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
-from app.sheet.wires import amps, each, most, node_wires, redone, spread, volts
+from app.sheet.wires import amps, each, greatest, most, node_wires, redone, spread, volts
 from app.study.outcome import BranchState, BranchWires
 from app.study.overhead_working import BASIS, working_in
 from app.study.wire_words import conductors
@@ -175,7 +175,7 @@ def _dropped(subject: Subject, line: Line, state: BranchState, case: int, carrie
         refs[f"fed_{key}"] = figure(subject, "busbars", fed, f"u_{key}", case)
         refs[f"far_{key}"] = figure(subject, "busbars", far, f"u_{key}", case)
         terms.append(f"{{fed_{key}}}-{{far_{key}}}")
-    found["du"] = Cell(max(lost.values()), f"MAX({','.join(terms)})", refs)
+    found["du"] = Cell(max(lost.values()), greatest(",".join(terms)), refs)
     base = {"base": Ref("base", "busbars", far)}
     meant = max(lost.values()) / far_end.base_v * 100
     found["du_percent"] = redone(float(found["du_percent"].value or 0.0), "{du}/{base}*100", meant, base)

@@ -7,7 +7,7 @@ from app.model.drawing import Limits
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
 from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, text
-from app.sheet.wires import each, listed, node_wires, redone, spread, volts
+from app.sheet.wires import each, greatest, listed, node_wires, redone, spread, volts
 from app.study.checking import margin_of
 from app.study.outcome import NodeState, NodeWires
 from app.study.wire_words import AGAINST, conductors
@@ -105,9 +105,10 @@ def _figures(subject: Subject, id: str, state: NodeState, wires: NodeWires, case
     limits, there = subject.drawing.limits, volts(wires)
     lowest, highest = (f(there.values(), default=math.nan) / wires.base_v * 100 for f in (min, max))
     span = listed("u", there)
+    least = greatest(span).replace("MAX", "MIN")
     found = spread("u", there) | {
-        "percent": redone(state.percent, f"MIN({span})/{{base}}*100", lowest),
-        "high_percent": redone(state.high_percent, f"MAX({span})/{{base}}*100", highest),
+        "percent": redone(state.percent, f"{least}/{{base}}*100", lowest),
+        "high_percent": redone(state.high_percent, f"{greatest(span)}/{{base}}*100", highest),
         "u_120": Cell(1.2 * state.percent, "1.2*{percent}"),
         "neutral": Cell(wires.neutral_v),
         "unbalance": Cell(wires.unbalance_percent),

@@ -105,8 +105,8 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
 
 
 def _across(subject: Subject, node: str, phases: list[str], case: int) -> float:
-    """Volts across the winding that is fed: the lowest as between lines, of its own phase, or between its two;
-    nan where those two are not told."""
+    """Volts across the winding that is fed: the lowest as between lines, of its own phase, or between its
+    two; nan where those two are not told."""
     wires = node_wires(subject, node, case)
     if len(phases) == 3 or wires.system != "three-phase":
         return subject.outcome.nodes.at(node, case).voltage_v

@@ -72,4 +72,9 @@ def listed(key: str, letters: Iterable[str]) -> str:
 
 def most(key: str, figures: Mapping[str, float], value: float) -> Cell:
     """The worst of all conductors."""
-    return redone(value, f"MAX({listed(key, figures)})", max(figures.values(), default=math.nan))
+    return redone(value, greatest(listed(key, figures)), max(figures.values(), default=math.nan))
+
+
+def greatest(terms: str) -> str:
+    """The largest of some terms, of one the term itself."""
+    return f"MAX({terms})" if "," in terms else terms

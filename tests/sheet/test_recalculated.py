@@ -17,6 +17,7 @@ from sheet_layouts import (
     two_wire,
 )
 from spreadsheet import differences, needs_spreadsheet, recalculated
+from wired_layouts import EVENING, MORNING, camp, units
 from xlsxwriter import Workbook
 
 from app.sheet import write
@@ -34,6 +35,10 @@ LAYOUTS = {
     "stepping by night.xlsx": (stepping(PEAK, NIGHT), 120),
     "faulty.xlsx": (faulty(), 160),
     "each for itself.xlsx": (each_for_itself(), 280),
+    "camp.xlsx": (camp(), 270),
+    "camp by morning.xlsx": (camp(EVENING, MORNING), 500),
+    "few phases.xlsx": (units(), 220),
+    "few phases by morning.xlsx": (units(EVENING, MORNING), 420),
     "blocked.xlsx": (blocked(), 5),
 }
 Books = dict[str, tuple[Path, Path]]
