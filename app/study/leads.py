@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 from app.model.kinds import Attachment, Load, Motor
 from app.model.levels import TWO_WIRE
-from app.study.wires import ABC, PER_PHASE, N, bits, slots
+from app.study.wires import ABC, PER_PHASE, bits, slots
 
 THIRDS = (1 / 3, 1 / 3, 1 / 3)
 ROUND = ((0, 1), (1, 2), (2, 0))
@@ -45,7 +45,9 @@ def leads_of(hung: Attachment, system: str, reach: int, back: int | None) -> Lea
     here = reach & ABC
     if system == TWO_WIRE:
         wanted = here if chosen == "all" else bits(chosen)
-        return Leads(tuple((p, N) for p in slots(wanted)[:1]), (1.0,), (1.0,), wanted & ~here)
+        if back is None:
+            return Leads((), (), (), wanted & ~here, no_back=True)
+        return Leads(tuple((p, back) for p in slots(wanted)[:1]), (1.0,), (1.0,), wanted & ~here)
     wanted = here if chosen == "all" else bits(chosen)
     missing = wanted & ~here
     phases = slots(wanted)

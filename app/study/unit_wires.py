@@ -98,7 +98,7 @@ def _ends(unit: Transformer, system: str, drawn: int, nominal_v: float, rated_v:
     if not here:
         return None
     if system == TWO_WIRE:
-        return here[0], N
+        return here[0], back
     over = ROOT3 if system == THREE_PHASE else 2.0
     if chosen == "all":
         between = len(here) > 1 and abs(rated_v / nominal_v - 1) < abs(rated_v * over / nominal_v - 1)

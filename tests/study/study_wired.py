@@ -202,7 +202,7 @@ class Wired:
         chosen = phases if hung.phases == "all" else hung.phases
         delta = isinstance(hung, Motor) or getattr(hung, "connection", "star") == "delta"
         if system == "two-wire":
-            leads = [("ABC".index(phases[0]), N, 1.0, nominal)]
+            leads = [("ABC".index(phases[0]), back, 1.0, nominal)]
         elif len(chosen) == 2 and (hung.phases != "all" or delta or back is None):
             pair = ROUND["".join(chosen)] if "".join(chosen) in ROUND else (2, 0)
             leads = [(*pair, 1.0, nominal)]

@@ -116,7 +116,26 @@ def lost():
     )
 
 
+def one_wire():
+    """An isolating unit between two phases, fifteen kilometres of one wire, the earth as the way back."""
+    single = {"vector_group": "Ii0", "tap": 0, "no_load_loss_w": 0.0, "no_load_current_percent": 0.0}
+    return drawn(
+        S=Supply(node="H", nominal_v=22000.0),
+        T1=unit("H", "I", v1_v=22000.0, v2_v=12700.0, phases="BC", **single),
+        O1=OverheadLine(
+            start="I", end="E", length_m=15000.0, resistance_ohm_per_km=0.868, reactance_ohm_per_km=0.4,
+            zero_resistance_ohm_per_km=1.0, zero_reactance_ohm_per_km=1.4, capacitance_uf_per_km=0.006,
+            neutral="earthed along",
+        ),
+        T2=unit("E", "F", v1_v=12700.0, v2_v=240.0, rating_kva=25.0, **{**single, "load_loss_w": 300.0}),
+        C1=lv("F", "G", 50.0),
+        L1=Load(node="G", demand_kva=15.0),
+        L2=Load(node="E", demand_kva=5.0),
+    )  # fmt: skip
+
+
 LAYOUTS = {
+    "one wire and the earth": one_wire,
     "street": street,
     "camp": camp,
     "a neutral lost": lost,
