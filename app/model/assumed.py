@@ -81,7 +81,7 @@ def _of_spacing(line: OverheadLine, found: tuple[Blank, ...]) -> tuple[Blank, ..
     mean = conductors.mean_distance_m(line)
     if "hung_at_m" not in line.assumed or math.isnan(mean):
         return used
-    return (*used, Blank("hung_at_m", mean, "m", f"mean distance between phases, {FROM_SHELF}"))
+    return (*used, Blank("hung_at_m", mean, "m", f"mean distance, {FROM_SHELF}"))
 
 
 def figures_of(kind: type[Element]) -> tuple[str, ...]:

@@ -29,6 +29,7 @@ from app.model.kinds import (
     Switch,
     Transformer,
 )
+from app.model.overhead_parts import spaced_parts
 from app.model.raw import raw_object
 from app.model.reading import MOST_PARTS, elements_from, own_from, part_from, parts_from, profiles_from
 from app.model.versions import CURRENT
@@ -115,7 +116,7 @@ def _overhead(american: bool) -> OverheadLine:
 def made_from(drawing: Drawing, part: Part) -> tuple[Drawing, AnyElement]:
     """What to draw with a shelf part: the drawing that carries it where it is the user's own, and an
     element to start from. Give the element to `extend` or `drop`."""
-    if part in builtin_parts(50.0) or part in builtin_parts(60.0):
+    if any(part in (*builtin_parts(hertz), *spaced_parts(is_american(hertz))) for hertz in (50.0, 60.0)):
         return drawing, part.element
     drawing, id = carried(drawing, part)
     return drawing, replace(part.element, part=id)

@@ -72,14 +72,14 @@ def in_feet(written: str) -> str:
     return "; ".join(pair.replace(".00", "") for pair in pairs) + " ft"
 
 
-_UNIT = re.compile(r"[^\d.,+-].*")
+_NUMBER = re.compile(r"[\d.,+-]")
 
 
 def _pair(entry: str) -> tuple[str, str]:
     """The two quantities of an entry, each with its unit; a unit behind the height alone counts for both."""
     words: list[str] = []
     for word in entry.split():
-        if _UNIT.fullmatch(word) and words and not _unit_of(words[-1]):
+        if words and not _NUMBER.match(word) and not _unit_of(words[-1]):
             words[-1] += f" {word}"
         else:
             words.append(word)
@@ -97,8 +97,7 @@ def _pair(entry: str) -> tuple[str, str]:
 
 
 def _unit_of(word: str) -> str:
-    found = re.search(r"[^\d.,+\s-].*", word)
-    return found[0] if found else ""
+    return leading_number(word)[1]
 
 
 def _same_habit(written: str, words: list[str]) -> None:

@@ -1,7 +1,7 @@
 """The shelf at the left: built-in parts, and below a rule the user's own."""
 
 from collections.abc import Callable, Iterable
-from functools import reduce
+from functools import partial, reduce
 from pathlib import Path
 
 from PySide6.QtCore import QSize, Qt, QTimer, Signal
@@ -16,7 +16,9 @@ from app.model import edits
 from app.model.drawing import Drawing, Part, Symbol, label
 from app.model.edits import Change
 from app.model.kinds import KIND_WORDS, LETTERS, kind_of
-from app.model.parts import builtin_parts
+from app.model.overhead_parts import spaced_parts
+from app.model.parts import builtin_parts, is_american
+from app.panels.more_parts import offer_more
 from app.panels.own_parts import OwnParts
 from app.panels.shelf_dialogs import ShelfDialogs
 from app.panels.style import play
@@ -71,6 +73,8 @@ class Shelf(QScrollArea):
         for part in builtin_parts():
             tile = self._tile(part, own=False)
             tile.setToolTip(f"{part.name}  ({LETTERS[kind_of(part.element)]})")
+            if kind_of(part.element) == "overhead_line":
+                offer_more(tile, self._spaced, partial(self._take_up, tile))
             self.tiles.append(tile)
             self._down.addWidget(tile, 0, Qt.AlignmentFlag.AlignHCenter)
         self._down.addSpacing(4)
@@ -86,6 +90,10 @@ class Shelf(QScrollArea):
         self._down.addWidget(self.caption)
         self._down.addStretch(1)
         self.setWidget(content)
+
+    def _spaced(self) -> tuple[Part, ...]:
+        """Overhead lines with a spacing, by the habit of the drawing."""
+        return spaced_parts(is_american(self._session.drawing.frequency_hz))
 
     def _tile(self, part: Part, own: bool) -> Tile:
         tile = Tile(part, self._theme, own)
@@ -133,10 +141,13 @@ class Shelf(QScrollArea):
             self.rest()
             self.put_back.emit()
             return
+        self._take_up(tile, tile.part)
+
+    def _take_up(self, tile: Tile, part: Part) -> None:
         self._in_hand = tile
         for other in self._all():
             other.setChecked(other is tile)
-        self.picked.emit(tile.part)
+        self.picked.emit(part)
 
     def pick(self, kind: str) -> None:
         """Pick the built-in part of a kind, as its key does."""

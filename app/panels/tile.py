@@ -12,6 +12,7 @@ from app.canvas.user_symbol import symbol_icon
 from app.model.drawing import Part
 from app.model.kinds import kind_of
 from app.model.parts import encode_part
+from app.panels.boxes import chevron
 from app.panels.style import mixed
 
 TILE = 44
@@ -22,10 +23,12 @@ class Tile(QAbstractButton):
     """Checked while its part is in the hand."""
 
     dropped_svg = Signal(str)
+    more_asked = Signal()  # what else there is of its kind
 
     def __init__(self, part: Part, theme: Theme, own: bool, parent=None) -> None:
         super().__init__(parent)
         self.part, self.own = part, own
+        self.has_more = False  # a mark in its corner says that there is more of its kind
         self._theme = theme
         self._pressed_at: QPoint | None = None
         self.setCheckable(True)
@@ -62,6 +65,8 @@ class Tile(QAbstractButton):
             painter.drawRoundedRect(room, 7, 7)
         left, top = (self.width() - PICTURE) // 2, 5
         self.picture().paint(painter, left, top, PICTURE, PICTURE)
+        if self.has_more:
+            chevron(painter, self.corner().center(), look.soft)
         if self.own:
             painter.setFont(font(7))
             painter.setPen(look.soft)
@@ -70,8 +75,21 @@ class Tile(QAbstractButton):
             below = self.rect().adjusted(0, PICTURE + 5, 0, -3)
             painter.drawText(below, int(Qt.AlignmentFlag.AlignCenter), name)
 
+    def corner(self) -> QRectF:
+        """Where the mark stands that more can be had of its kind."""
+        return QRectF(self.width() - 15, self.height() - 15, 13, 13)
+
+    def contextMenuEvent(self, event) -> None:
+        if self.has_more:
+            self.more_asked.emit()
+        else:
+            super().contextMenuEvent(event)
+
     # -- dragging out ---------------------------------------------------------------------------
     def mousePressEvent(self, event: QMouseEvent) -> None:
+        if self.has_more and self.corner().contains(event.position()):
+            self.more_asked.emit()
+            return
         self._pressed_at = event.position().toPoint()
         super().mousePressEvent(event)
 
@@ -87,6 +105,7 @@ class Tile(QAbstractButton):
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:
         self._pressed_at = None
         super().mouseReleaseEvent(event)
+        event.accept()  # of a press on the corner too, which the button knows nothing of
 
     def drag(self) -> QDrag:
         """The part on its way to the paper."""

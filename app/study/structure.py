@@ -8,8 +8,8 @@ from app.study.earthing import earthing_findings
 from app.study.layout import NONE, Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rings import ring_findings
-from app.study.wire_findings import phase_findings
 from app.study.spacing_findings import spacing_findings
+from app.study.wire_findings import phase_findings
 from app.study.words import DEAD, list_of, tell
 from app.study.zones import Zones, level_findings, stated_voltages
 
