@@ -28,6 +28,7 @@ from app.model.kinds import (
 from app.model.levels import TWO_WIRE, nominal_levels
 
 HALF_SPAN = 4.0  # a branch dropped on empty paper runs this many steps to either side
+ALIKE = ("as its group", "open delta")  # builds whose windings can be named the other way round
 
 
 def move(drawing: Drawing, ids: Iterable[str], dx: float, dy: float) -> Drawing:
@@ -73,21 +74,24 @@ def extend(
         joint = Joint(x=float(x), y=float(y))
         to_node = fresh_id(drawing.elements, joint)
         fresh[to_node] = joint
-    made = suited(drawing, template, from_node) if isinstance(template, Transformer) else template
-    made = replace(made, start=from_node, end=to_node)
+    made = replace(template, start=from_node, end=to_node)
+    if isinstance(made, Transformer):
+        made = suited(drawing, made, from_node)
     return put(drawing, {**fresh, fresh_id(drawing.elements, made): made})
 
 
 def suited(drawing: Drawing, t: Transformer, near: str) -> Transformer:
     """The transformer, turned where its winding 2 suits the near node's voltage better; single-phase
-    where the layout there has two wires."""
+    where the layout there has two wires. A unit whose windings are not alike in build is turned whole."""
     level = nominal_levels(drawing).get(near)
     if level is None:
         return t
     if level.wires == TWO_WIRE and not t.vector_group.startswith("I"):
         t = replace(t, vector_group="Ii0")
     one, two = (abs(math.log(v / level.volts)) for v in (t.v1_v, t.v2_v))
-    return taps.turned(t) if two < one else t
+    if two >= one:
+        return t
+    return taps.turned(t) if t.build in ALIKE else replace(t, start=t.end, end=t.start)
 
 
 def drop(drawing: Drawing, template: AnyElement, x: float, y: float, node: str | None = None) -> Drawing:
