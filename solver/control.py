@@ -55,7 +55,8 @@ class Regulator:
     reverse : what it does when power flows back
     reverse_setting : (batch or 1,) float [V] at the other side, for OTHER_SIDE; the same where None
     start : notch at which it stands before
-    conductor : whose volts it measures, to the neutral where that is there
+    conductor : whose volts it measures; None for the mean of its three phases
+    to : conductor against which it measures; the neutral where None, earth where there is none
     """
 
     transformer: int
@@ -70,7 +71,8 @@ class Regulator:
     reverse: Reverse = Reverse.FORWARD
     reverse_setting: ArrayLike | None = None
     start: int = 0
-    conductor: int = 0
+    conductor: int | None = 0
+    to: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,11 +99,13 @@ def control(
     """Solves a network whose regulators and generators have come to rest.
 
     Regulators nearest a supply move first, notch by notch, as their delays make them. A position that comes
-    back means hunting. Generators are corrected by the reactance that their nodes see of the network.
+    back means hunting. A ganged one moves all phases alike; single-phase units are a transformer and a
+    Regulator each, and step on their own. Generators are corrected by the reactance that their nodes see of
+    the network.
 
     network : Network
     regulators : each a Regulator
-    generators : each a Holding, k = 1
+    generators : each a Holding
     Returns : Controlled
     Raises : ValueError where the network has no forest
     Source : common practice, no source
@@ -215,15 +219,16 @@ class _Side:
 
 
 def _at_side(regulator: Regulator, own: bool, solution: Solution) -> _Side:
-    network, row, i = solution.network, regulator.transformer, regulator.conductor
+    network, row = solution.network, regulator.transformer
     winding = regulator.regulated if own else 3 - regulator.regulated
     node = (network.transformer_from if winding == 1 else network.transformer_to)[row]
     current = -solution.transformer_in[row] if winding == 1 else solution.transformer_out[row]
     volts = solution.voltage[node]
-    neutral = volts[-1] if network.wires is not None else 0 * volts[0]
-    seen = volts[i] - np.where(np.isnan(neutral), 0, neutral)
-    power = np.nansum((volts * np.conj(current)).real, axis=0)
-    return _Side(np.abs(seen - regulator.compensation * current[i]), power)
+    far = volts[-1 if regulator.to is None else regulator.to] if network.wires is not None else 0 * volts[0]
+    measured = slice(0, 3) if regulator.conductor is None else [regulator.conductor]
+    across = volts[measured] - np.where(np.isnan(far), 0, far)
+    size = np.abs(across - regulator.compensation * current[measured]).mean(axis=0)
+    return _Side(size, np.nansum((volts * np.conj(current)).real, axis=0))
 
 
 def _at(values: ArrayLike, points: Index) -> Real:
