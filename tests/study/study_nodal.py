@@ -12,16 +12,29 @@ from scipy.sparse.linalg import splu
 
 from app.model import assumed
 from app.model.drawing import Own
-from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
+from app.model.kinds import (
+    Branch,
+    Capacitor,
+    Generator,
+    Line,
+    Load,
+    Motor,
+    Node,
+    Regulator,
+    Supply,
+    Switch,
+    Transformer,
+)
 
 ALPHA = {"Cu": 0.00393, "Al": 0.00403}
 
 
 class Nodal:
-    """The nodes that a supply reaches, zero-impedance switches merged, one loading case."""
+    """The nodes that a supply reaches, zero-impedance switches merged, one loading case. `notches` says by
+    id where regulators stand."""
 
-    def __init__(self, drawing, case=0):
-        self.drawing, self.case = drawing, drawing.cases[case]
+    def __init__(self, drawing, case=0, notches=None):
+        self.drawing, self.case, self.notches = drawing, drawing.cases[case], notches or {}
         elements = drawing.elements
         self.nodes = [i for i, e in elements.items() if isinstance(e, Node)]
         self.branches = {i: e for i, e in elements.items() if isinstance(e, Branch)}
@@ -64,6 +77,7 @@ class Nodal:
                 level = self.nominal[here]
                 if isinstance(e, Transformer):
                     level = e.v2_v if here == e.start else e.v1_v
+                level = self.drawing.elements[there].nominal_v or level
                 self.nominal[there], self.wires[there] = level, self.wires[here]
                 waiting.append(there)
         for i in list(self.nominal):
@@ -75,12 +89,31 @@ class Nodal:
         self.y = np.zeros((len(self.places),) * 2, dtype=complex)
         self.stamps = {}
         for i, e in self.branches.items():
-            if e.start not in self.nominal or isinstance(e, Switch):
+            if e.start not in self.nominal or isinstance(e, Switch | Regulator):
                 continue
             stamp = self._line(e) if isinstance(e, Line) else self._transformer(i, e)
             ends = [self.at[self.find(e.start)], self.at[self.find(e.end)]]
             np.add.at(self.y, np.ix_(ends, ends), stamp)  # both ends may be one place
             self.stamps[i] = (ends, stamp)
+        self._bind()
+
+    def _bind(self):
+        """Which place each follows, and how: beyond an ideal regulator volts are those before it, stepped."""
+        self.bound = {
+            self.at[self.find(e.end)]: (
+                self.at[self.find(e.start)],
+                1 + self.notches[i] * e.step_percent / 100,
+            )
+            for i, e in self.branches.items()
+            if isinstance(e, Regulator) and e.start in self.nominal
+        }
+        self.follows = np.zeros(self.y.shape)
+        for place in range(len(self.places)):
+            led, factor = place, 1.0
+            while led in self.bound:
+                led, step = self.bound[led]
+                factor *= step
+            self.follows[place, led] = factor
 
     def _line(self, e):
         km, out_and_back = e.length_m / 1000, 2 if self.wires[e.start] == "two-wire" else 1
@@ -168,21 +201,21 @@ class Nodal:
     def solve(self):
         """Line volts of every live node, complex."""
         held = list(self.held)
-        free = [k for k in range(len(self.places)) if k not in self.held]
-        voltage = np.zeros(len(self.places), dtype=complex)
-        voltage[held] = [self.held[k] for k in held]
-        inner = splu(csc_array(self.y[np.ix_(free, free)]))
-        pushed = self.y[np.ix_(free, held)] @ voltage[held]
-        voltage[free] = inner.solve(-pushed)
+        free = [k for k in range(len(self.places)) if k not in self.held and k not in self.bound]
+        to_free, to_held = self.follows[:, free], self.follows[:, held]
+        fixed = to_held @ np.array([self.held[k] for k in held])
+        inner = splu(csc_array(to_free.T @ self.y @ to_free))
+        pushed = to_free.T @ (self.y @ fixed)
+        now = inner.solve(-pushed)
         for _ in range(500):  # the nodal equations, solved for the voltages that the drawn currents leave
-            before = voltage[free].copy()
-            voltage[free] = inner.solve(-pushed - self.drawn(voltage)[free])
-            moved = np.abs(voltage[free] / before - 1).max(initial=0.0)
+            before = now
+            now = inner.solve(-pushed - to_free.T @ self.drawn(fixed + to_free @ before))
+            moved = np.abs(now / before - 1).max(initial=0.0)
             if moved < 1e-14:
                 break
         assert moved < 1e-13
-        self.voltage = voltage
-        return {i: voltage[self.at[self.find(i)]] for i in self.nominal}
+        self.voltage = fixed + to_free @ now
+        return {i: self.voltage[self.at[self.find(i)]] for i in self.nominal}
 
     def branch_power(self, i):
         """Power that enters a branch at its start and at its end, VA."""
@@ -192,5 +225,5 @@ class Nodal:
 
     def supplied(self):
         """Power of all supplies, VA."""
-        total = self.y @ self.voltage + self.drawn(self.voltage)
+        total = self.follows.T @ (self.y @ self.voltage + self.drawn(self.voltage))
         return sum(self.voltage[k] * total[k].conjugate() for k in self.held)

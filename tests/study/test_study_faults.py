@@ -87,7 +87,7 @@ def agree(drawing: Drawing, floating: float = 1e-6):
 
 SAMPLED = (
     "fernhollow", "fernhollow_pair", "hobscar_quarry", "hobscar_cured", "kettlewick_open", "kettlewick_ring",
-    "kettlewick_cured",
+    "kettlewick_cured", "hobscar_bank", "brindlewick_farm", "brindlewick_cured",
 )  # fmt: skip
 
 

@@ -258,7 +258,7 @@ def test_json_and_text_tell_the_start():
 
 
 def test_starts_equal_the_expected_results_of_the_samples():
-    for name in ("hobscar_quarry", "hobscar_cured"):
+    for name in ("hobscar_quarry", "hobscar_cured", "hobscar_bank"):
         expected = json.loads((SAMPLES / f"{name}.expected.json").read_text(encoding="utf-8"))["starts"]
         table = starts(load(SAMPLES / f"{name}.farend"))
         assert list(expected) == list(table.ids)
