@@ -30,6 +30,7 @@ from app.model.kinds import (
     Transformer,
 )
 from app.model.overhead_parts import spaced_parts
+from app.model.phase_parts import phase_parts
 from app.model.raw import raw_object
 from app.model.reading import MOST_PARTS, elements_from, own_from, part_from, parts_from, profiles_from
 from app.model.versions import CURRENT
@@ -116,10 +117,16 @@ def _overhead(american: bool) -> OverheadLine:
 def made_from(drawing: Drawing, part: Part) -> tuple[Drawing, AnyElement]:
     """What to draw with a shelf part: the drawing that carries it where it is the user's own, and an
     element to start from. Give the element to `extend` or `drop`."""
-    if any(part in (*builtin_parts(hertz), *spaced_parts(is_american(hertz))) for hertz in (50.0, 60.0)):
+    if any(part in _offered(hertz) for hertz in (50.0, 60.0)):
         return drawing, part.element
     drawing, id = carried(drawing, part)
     return drawing, replace(part.element, part=id)
+
+
+def _offered(frequency_hz: float) -> tuple[Part, ...]:
+    """All that the shelf offers by itself at a frequency."""
+    american = is_american(frequency_hz)
+    return (*builtin_parts(frequency_hz), *spaced_parts(american), *phase_parts(american))
 
 
 def load_shelf(path: str | Path) -> tuple[Part, ...]:

@@ -10,24 +10,41 @@ from app.model.assumed import figures_of
 from app.model.drawing import Part
 from app.model.kinds import AnyElement, Cable, Load, Supply, Transformer, kind_of
 
-ENDS: dict[str, Any] = {"start": "", "end": ""}
+Fields = dict[str, Any]
+ENDS: Fields = {"start": "", "end": ""}
 # 20 °C figures. AWG: ohm per kft at 75 °C (4/0 0.100, 2/0 0.16) brought back to 20 °C. Metric: IEC 60228.
-AWG_4_0 = {
+AWG_4_0: Fields = {
     "type": "4/0 AWG Al",
     "area_mm2": 107.2,
     "resistance_ohm_per_km": 0.269,
     "reactance_ohm_per_km": 0.135,
 }
-AWG_2_0 = {
+AWG_2_0: Fields = {
     "type": "2/0 AWG Al",
     "area_mm2": 67.4,
     "resistance_ohm_per_km": 0.43,
     "reactance_ohm_per_km": 0.141,
 }
-AL_95 = {"type": "4×95 Al", "area_mm2": 95.0, "resistance_ohm_per_km": 0.32, "reactance_ohm_per_km": 0.075}
-AL_35 = {"type": "2×35 Al", "area_mm2": 35.0, "resistance_ohm_per_km": 0.868, "reactance_ohm_per_km": 0.08}
-POLE = {"v1_v": 7200.0, "v2_v": 240.0, "vector_group": "Ii0", "build": "centre-tapped", "uk_percent": 2.0}
-PAD = {"v1_v": 12470.0, "v2_v": 208.0, "vector_group": "Dyn1"}
+AL_95: Fields = {
+    "type": "4×95 Al",
+    "area_mm2": 95.0,
+    "resistance_ohm_per_km": 0.32,
+    "reactance_ohm_per_km": 0.075,
+}
+AL_35: Fields = {
+    "type": "2×35 Al",
+    "area_mm2": 35.0,
+    "resistance_ohm_per_km": 0.868,
+    "reactance_ohm_per_km": 0.08,
+}
+POLE: Fields = {
+    "v1_v": 7200.0,
+    "v2_v": 240.0,
+    "vector_group": "Ii0",
+    "build": "centre-tapped",
+    "uk_percent": 2.0,
+}
+PAD: Fields = {"v1_v": 12470.0, "v2_v": 208.0, "vector_group": "Dyn1"}
 
 
 @cache

@@ -16,9 +16,8 @@ from app.model import edits
 from app.model.drawing import Drawing, Part, Symbol, label
 from app.model.edits import Change
 from app.model.kinds import KIND_WORDS, LETTERS, kind_of
-from app.model.overhead_parts import spaced_parts
-from app.model.parts import builtin_parts, is_american
-from app.panels.more_parts import offer_more
+from app.model.parts import builtin_parts
+from app.panels.more_parts import behind, offer_more, tip_of
 from app.panels.own_parts import OwnParts
 from app.panels.shelf_dialogs import ShelfDialogs
 from app.panels.style import play
@@ -72,9 +71,9 @@ class Shelf(QScrollArea):
         self._down.setSpacing(1)
         for part in builtin_parts():
             tile = self._tile(part, own=False)
-            tile.setToolTip(f"{part.name}  ({LETTERS[kind_of(part.element)]})")
-            if kind_of(part.element) == "overhead_line":
-                offer_more(tile, self._spaced, partial(self._take_up, tile))
+            more = partial(self._behind, kind_of(part.element))
+            if more():
+                offer_more(tile, more, partial(self._take_up, tile))
             self.tiles.append(tile)
             self._down.addWidget(tile, 0, Qt.AlignmentFlag.AlignHCenter)
         self._down.addSpacing(4)
@@ -91,9 +90,14 @@ class Shelf(QScrollArea):
         self._down.addStretch(1)
         self.setWidget(content)
 
-    def _spaced(self) -> tuple[Part, ...]:
-        """Overhead lines with a spacing, by the habit of the drawing."""
-        return spaced_parts(is_american(self._session.drawing.frequency_hz))
+    def _behind(self, kind: str) -> tuple[Part, ...]:
+        return behind(kind, self._session.drawing.frequency_hz)
+
+    def _follow_habit(self) -> None:
+        """Plain parts as they are usual at the frequency of the drawing."""
+        for tile, part in zip(self.tiles, builtin_parts(self._session.drawing.frequency_hz), strict=True):
+            tile.part = part
+            tile.setToolTip(tip_of(part, self._behind(kind_of(part.element))))
 
     def _tile(self, part: Part, own: bool) -> Tile:
         tile = Tile(part, self._theme, own)
@@ -113,6 +117,7 @@ class Shelf(QScrollArea):
 
     def _follow(self) -> None:
         """Show the user's own parts as they stand."""
+        self._follow_habit()
         offered = self.own.offered(self._session.drawing)
         if offered == self._offered:
             return

@@ -1,5 +1,6 @@
 """The shelf: picking, dragging out, the user's own parts, symbols dropped on them, terminals."""
 
+from functools import partial
 from pathlib import Path
 
 import pytest
@@ -12,9 +13,11 @@ from app.canvas.theme import Theme
 from app.canvas.user_symbol import read_svg
 from app.live.preferences import Preferences
 from app.live.session import Session
+from app.model import edits
 from app.model.drawing import Part
 from app.model.kinds import LETTERS, Transformer, kind_of
 from app.model.parts import builtin_parts, decode_part, load_shelf, save_shelf
+from app.panels.more_parts import menu_of
 from app.panels.shelf import Shelf
 from app.panels.terminals import Terminals
 from app.panels.tile import PART_MIME
@@ -224,3 +227,20 @@ def test_terminals_are_saved_on_the_shelf(shelf, tmp_path, preferences):
     shelf.dialogs = Answers(symbol=replace(part.symbol, terminals=((4.0, 10.0), (36.0, 10.0))))
     {a.text(): a for a in shelf.menu_of(part).actions()}["Edit terminals…"].trigger()
     assert load_shelf(preferences.shelf_path)[0].symbol.terminals == ((4.0, 10.0), (36.0, 10.0))
+
+
+def test_plain_parts_follow_the_habit_of_the_drawing_and_more_stand_behind_their_corners(shelf):
+    session = shelf._session
+    tile = next(t for t in shelf.tiles if kind_of(t.part.element) == "transformer")
+    assert tile.part.element.v1_v == 11000
+    assert "11/0.24 kV" in tile.toolTip()
+    assert session.edit("60 Hz", lambda d: edits.set_frequency(d, 60.0)) == ""
+    assert tile.part.element.v1_v == 12470
+    assert "centre-tapped" in tile.toolTip()
+    picked = []
+    shelf.picked.connect(picked.append)
+    menu = menu_of(tile, partial(shelf._behind, "transformer"), lambda part: shelf._take_up(tile, part))
+    action = next(a for a in menu.actions() if a.text().startswith("25 kVA"))
+    action.trigger()
+    assert picked[-1].element.build == "centre-tapped"
+    menu.deleteLater()

@@ -1,5 +1,7 @@
 """The spacing of an overhead line on the card by real mouse and keys, the pole drawn from it, the shelf."""
 
+from functools import partial
+
 import pytest
 from panels_stage import ONE, fernhollow, stage, type_text
 from PySide6.QtCore import QPoint, Qt
@@ -130,7 +132,7 @@ def test_the_shelf_offers_lines_with_a_spacing_from_the_corner(qtbot, tmp_path):
     assert (asked, picked) == ([True], [])
     QTest.mouseClick(tile, Qt.MouseButton.LeftButton, pos=QPoint(20, 12))
     assert picked == [tile.part]
-    menu = menu_of(tile, shelf._spaced, lambda part: shelf._take_up(tile, part))
+    menu = menu_of(tile, partial(shelf._behind, "overhead_line"), lambda part: shelf._take_up(tile, part))
     assert [a.text() for a in menu.actions()] == [p.name for p in spaced_parts(False)]
     menu.actions()[1].trigger()
     assert picked[-1] == spaced_parts(False)[1]
