@@ -3,11 +3,12 @@
 from dataclasses import dataclass
 
 from app.model import wire_data
+from app.model.conductors import has_neutral
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Line, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
 from app.study.graph import NONE, Layout
-from app.study.leads import Leads, leads_of
+from app.study.leads import Leads, Ways, leads_of, ways_of
 from app.study.memory import Memory
 from app.study.unit_wires import UnitWires, unit_wires
 from app.study.wires import ABC, NEUTRAL, OF_SYSTEM, N, bits
@@ -25,6 +26,7 @@ class Conductors:
     units : branch row of each live transformer to the conductors at its windings
     leads : attachment row of each live attachment to the conductors between which it hangs
     earthed : node rows at lines whose neutral is earthed along them
+    ways : all leads one below the other
     """
 
     node: list[int]
@@ -33,6 +35,7 @@ class Conductors:
     units: dict[int, UnitWires]
     leads: dict[int, Leads]
     earthed: list[int]
+    ways: Ways
 
 
 def is_wired(drawing: Drawing, layout: Layout, zones: Zones) -> bool:
@@ -81,14 +84,42 @@ _plain_hung: Memory[Attachment, bool] = Memory(_balanced)
 def conductors_of(layout: Layout, zones: Zones) -> Conductors:
     """Every conductor as far as it is drawn: from supplies and windings along the lines that have it.
 
-    A line has the phases it states, or as many as reach it; a switch or regulator lets all through.
+    A line has the phases it states, or as many as reach it; a switch or regulator lets all through. Where
+    nothing has changed that bears on them, those of the last call are taken over.
 
     layout : the graph, live parts
     zones : nominal_v (zone,) float [V], system (zone,)
 
     Returns : Conductors
     """
-    return _Walk(layout, zones).conductors()
+    global _last
+    levels = zones.system, zones.nominal_v.tobytes()
+    bearing = *levels, _told_branch.of(layout.branches), _told_hung.of(layout.attachments)
+    last = _last
+    if last is not None and last[0] is layout.order and last[1] == bearing:
+        return last[2]
+    found = _Walk(layout, zones).conductors()
+    _last = (layout.order, bearing, found)
+    return found
+
+
+def _of_branch(branch: Branch) -> tuple[object, ...]:
+    """All of a branch that bears on conductors."""
+    if isinstance(branch, Line):
+        return branch.phases, branch.neutral, has_neutral(branch)
+    if isinstance(branch, Transformer):
+        return branch.build, branch.phases, branch.vector_group, branch.v1_v, branch.v2_v
+    return (type(branch),)
+
+
+def _of_hung(hung: Attachment) -> tuple[object, ...]:
+    names = ("wires", "phases", "connection", "share_a_percent", "share_b_percent")
+    return type(hung), *(getattr(hung, name, None) for name in names)
+
+
+_told_branch: Memory[Branch, tuple[object, ...]] = Memory(_of_branch)
+_told_hung: Memory[Attachment, tuple[object, ...]] = Memory(_of_hung)
+_last: tuple[list[int], tuple[object, ...], Conductors] | None = None
 
 
 class _Walk:
@@ -118,7 +149,8 @@ class _Walk:
         leads = {row: self._leads(row, hung) for row, hung in enumerate(layout.attachments)}
         live = {row: found for row, found in leads.items() if found is not None}
         self._forget(live)
-        return Conductors(self.node, self.drawn, branch, self.units, live, sorted(self.earthed))
+        earthed = sorted(self.earthed)
+        return Conductors(self.node, self.drawn, branch, self.units, live, earthed, ways_of(live))
 
     def _forget(self, leads: dict[int, Leads]) -> None:
         """A neutral that nothing reaches and nothing hangs on has no volts that anybody could tell."""

@@ -4,6 +4,7 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
+from msgspec.structs import replace as replaced
 from numpy.typing import NDArray
 
 from app.model import taps
@@ -16,13 +17,14 @@ from app.study.outcome import Verdict
 from app.study.results import tables_of
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
+from app.study.unit_ports import port_of, ratio_of
 from app.study.values import notch_values
-from app.study.zones import zones_of
+from app.study.zones import Zones, zones_of
 from solver import Network, Status
+from solver.share import pick
 
 Real = NDArray[np.float64]
-BATCHED = ("source_voltage", "line_z", "line_y", "load_power", "load_reference", "shunt_y")
-BATCHED_UNITS = ("transformer_ratio", "transformer_z", "transformer_y")
+BATCHED = ("gain", "series", "iron", "own_z")  # of a two-port
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,7 +35,8 @@ class TapCurve:
     percent : (notch,) float [%] of the nameplate voltage, signed
     nameplate_v : (notch,) float [V] rated voltage of the tapped winding
     loss_kw : (notch, case) float [kW] total loss of the layout
-    lowest_percent, highest_percent : (notch,) float [% of nominal] over all nodes fed through it, all cases
+    lowest_percent, highest_percent : (notch,) float [% of nominal] over all nodes fed through it, all cases,
+        all phases
     holds : (notch,) bool, every voltage limit holds at every node fed through it, in every case
     """
 
@@ -67,36 +70,52 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
         return _curve(unit, notches, np.full((len(notches), cases), np.nan), None, None)
     rows = rows_of(drawing, layout, zones)
     branch = layout.branch_row[transformer_id]
-    rows = replace(rows, network=_spread(rows, branch, unit, notches, cases))
+    rows = replace(rows, network=_spread(layout, zones, rows, branch, notches, cases))
     rows, solution, _ = settled(drawing, layout, zones, rows, fixed=branch)
     tables = tables_of(layout, zones, rows, solution, len(notches) * cases)
     solved = np.array([s is Status.SOLVED for s in solution.status])
     loss = np.where(solved, tables.balance.loss_kw, np.nan).reshape(len(notches), cases)
     below = _fed_through(layout, branch)
-    percent, drop = (
+    low, high, drop = (
         tables.nodes.column(name)[below].reshape(-1, len(notches), cases)
-        for name in ("percent", "drop_percent")
+        for name in ("percent", "high_percent", "drop_percent")
     )
-    return _curve(unit, notches, loss, percent, _holds(drawing, percent, drop))
+    return _curve(unit, notches, loss, (low, high), _holds(drawing, low, high, drop))
 
 
-def _spread(rows: Rows, branch: int, unit: Transformer, notches: list[int], cases: int) -> Network:
+def _spread(layout: Layout, zones: Zones, rows: Rows, branch: int, notches: list[int], cases: int) -> Network:
     """The network once for every notch: column = notch · cases + case."""
-    network, count = rows.network, len(notches)
-    wide: dict[str, Any] = {name: _tiled(getattr(network, name), count) for name in BATCHED}
-    ratio, z, y = notch_values(unit, notches)
+    network, unit = rows.network, layout.branches[branch]
+    assert isinstance(unit, Transformer)
     row = int(np.flatnonzero(rows.units == branch)[0])
-    for name, values in zip(BATCHED_UNITS, (ratio, z, y), strict=True):
-        column = np.repeat(getattr(network, name), count * cases, axis=-1)
+    wide = pick(network, np.tile(np.arange(cases), len(notches)))
+
+    def put(array: Any, values: Any) -> Any:
+        column = np.broadcast_to(array, (*array.shape[:-1], len(notches) * cases)).copy()
         column[row] = np.repeat(values, cases, axis=-1)
-        wide[name] = column
-    return replace(network, **wide)
+        return column
 
-
-def _tiled(array: NDArray[np.generic], count: int) -> NDArray[np.generic]:
-    if array.shape[-1] == 1:
-        return array
-    return np.tile(array, (1,) * (array.ndim - 1) + (count,))
+    ratio, z, y = notch_values(unit, notches)
+    wires = wide.wires
+    if wires is not None and rows.conductors is not None:
+        ends = layout.start[branch], layout.end[branch]
+        systems = [zones.system[layout.zone[node]] for node in ends]
+        joined = rows.conductors.units.get(branch)
+        ratio = np.array([ratio_of(unit, joined, systems, at) for at in ratio])
+        taps_of = [replaced(unit, tap=n, regulates="no") for n in notches]
+        ports = [port_of(u, joined, z[n], y[:, n]) for n, u in enumerate(taps_of)]
+        units = {
+            name: put(getattr(wires.units, name), np.concatenate([getattr(p, name) for p in ports], axis=-1))
+            for name in BATCHED
+        }
+        wires = replace(wires, units=replace(wires.units, **units))
+    return replace(
+        wide,
+        transformer_ratio=put(wide.transformer_ratio, ratio),
+        transformer_z=put(wide.transformer_z, z),
+        transformer_y=put(wide.transformer_y, y),
+        wires=wires,
+    )
 
 
 def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
@@ -118,10 +137,10 @@ def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
     return np.flatnonzero(through)
 
 
-def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
+def _holds(drawing: Drawing, low: Real, high: Real, drop: Real) -> NDArray[np.bool_]:
     limits = drawing.limits
-    good = (margin_of(percent, limits.low_percent, True) >= 0) & (
-        margin_of(percent, limits.high_percent, False) >= 0
+    good = (margin_of(low, limits.low_percent, True) >= 0) & (
+        margin_of(high, limits.high_percent, False) >= 0
     )
     if limits.drop_percent is not None:
         good &= margin_of(drop, limits.drop_percent, False) >= 0
@@ -129,16 +148,20 @@ def _holds(drawing: Drawing, percent: Real, drop: Real) -> NDArray[np.bool_]:
 
 
 def _curve(
-    unit: Transformer, notches: list[int], loss: Real, percent: Real | None, holds: NDArray[np.bool_] | None
+    unit: Transformer,
+    notches: list[int],
+    loss: Real,
+    percent: tuple[Real, Real] | None,
+    holds: NDArray[np.bool_] | None,
 ) -> TapCurve:
     nothing = np.full(len(notches), np.nan)
-    some = percent is not None and percent.size > 0
+    some = percent is not None and percent[0].size > 0
     return TapCurve(
         notches=np.array(notches, dtype=np.intp),
         percent=np.array(notches) * unit.notch_percent,
         nameplate_v=np.array([taps.nameplate_v(unit, n) for n in notches]),
         loss_kw=loss,
-        lowest_percent=percent.min(axis=(0, 2)) if some and percent is not None else nothing,
-        highest_percent=percent.max(axis=(0, 2)) if some and percent is not None else nothing,
+        lowest_percent=percent[0].min(axis=(0, 2)) if some and percent is not None else nothing,
+        highest_percent=percent[1].max(axis=(0, 2)) if some and percent is not None else nothing,
         holds=np.zeros(len(notches), dtype=bool) if holds is None else holds,
     )

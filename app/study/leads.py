@@ -1,6 +1,10 @@
 """Between which conductors an attachment hangs, and how its power is shared among them."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
 
 from app.model.kinds import Attachment, Load, Motor
 from app.model.levels import TWO_WIRE
@@ -26,6 +30,43 @@ class Leads:
     over: tuple[float, ...]
     missing: int = 0
     no_back: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Ways:
+    """All leads of all attachments one below the other.
+
+    row : (way,) attachment row
+    one : (way,) conductor at which it begins
+    other : (way,) conductor at which it ends, -1 for earth
+    share : (way,) float of the power
+    over : (way,) float, nominal voltage of the zone over the nominal volts of it
+    alone : (way,) bool, the attachment has no other
+    """
+
+    row: NDArray[np.intp]
+    one: NDArray[np.intp]
+    other: NDArray[np.intp]
+    share: NDArray[np.float64]
+    over: NDArray[np.float64]
+    alone: NDArray[np.bool_]
+
+
+def ways_of(leads: Mapping[int, Leads]) -> Ways:
+    """The leads of attachments as arrays.
+
+    leads : by attachment row
+
+    Returns : Ways
+    """
+    found = [
+        (row, *pair, share, over, len(one.pairs) == 1)
+        for row, one in leads.items()
+        for pair, share, over in zip(one.pairs, one.shares, one.over, strict=True)
+    ]
+    table = np.array(found, dtype=np.float64).reshape(-1, 6).T
+    row, begin, end = (column.astype(np.intp) for column in table[:3])
+    return Ways(row, begin, end, table[3], table[4], table[5] > 0)
 
 
 def leads_of(hung: Attachment, system: str, reach: int, back: int | None) -> Leads:
@@ -73,17 +114,18 @@ def _shares(hung: Attachment) -> tuple[float, ...]:
     return a, b, 1 - a - b
 
 
-def across(stated_v: float, nominal_v: float, over: float) -> float:
+def across(stated_v: ArrayLike, nominal_v: ArrayLike, over: ArrayLike) -> NDArray[np.float64]:
     """Volts across one lead out of a stated voltage: of the lead itself, or between lines, as is nearer.
 
-    stated_v : float [V], nan where nothing is stated
-    nominal_v : float [V] of the zone
-    over : float, nominal voltage of the zone over that of the lead
+    stated_v : (...) float [V], nan where nothing is stated
+    nominal_v : (...) float [V] of the zone
+    over : (...) float, nominal voltage of the zone over that of the lead
 
-    Returns : float [V]
+    Returns : (...) float [V]
     Source : common practice, no source
     """
-    base = nominal_v / over
-    if stated_v != stated_v:
-        return base
-    return stated_v if abs(stated_v / base - 1) <= abs(stated_v / nominal_v - 1) else stated_v / over
+    stated, nominal = np.asarray(stated_v, dtype=np.float64), np.asarray(nominal_v, dtype=np.float64)
+    times = np.asarray(over, dtype=np.float64)
+    base = nominal / times
+    own = np.abs(stated / base - 1) <= np.abs(stated / nominal - 1)
+    return np.where(np.isnan(stated), base, np.where(own, stated, stated / times))

@@ -1,5 +1,7 @@
 """Lines between their conductors: impedance and admittance matrices, and which conductors each has."""
 
+from collections.abc import Sequence
+
 import numpy as np
 from msgspec.structs import replace
 from numpy.typing import NDArray
@@ -7,11 +9,11 @@ from numpy.typing import NDArray
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.fault_data import Put, fault_value
-from app.model.kinds import Line, OverheadLine
+from app.model.kinds import Branch, Line, OverheadLine
 from app.model.levels import THREE_PHASE
 from app.model.wire_data import neutral_of, neutral_value
 from app.study.conductors import Conductors
-from app.study.graph import Layout
+from app.study.graph import Layout, arrays_of
 from app.study.overhead import matrix_of
 from app.study.wires import ABC, letters
 from app.study.zones import Zones
@@ -20,6 +22,7 @@ from solver import line
 K = 4
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
+NOTHING = np.zeros((K, K), dtype=np.complex128)
 NEUTRAL_FIELDS = ("neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km")
 ZERO_FIELDS = ("zero_resistance_ohm_per_km", "zero_reactance_ohm_per_km")
 
@@ -41,22 +44,43 @@ def line_matrices(
     Returns : z (line, k, k, 1) complex [ohm], y (line, k, k, 1) complex [S], has (line, k) bool
     Source : see solver.line
     """
-    z = np.zeros((len(rows), K, K, 1), dtype=np.complex128)
-    y = np.zeros_like(z)
-    has = np.array([[conductors.branch[row] >> i & 1 for i in range(K)] for row in rows], dtype=bool)
-    has = has.reshape(len(rows), K)
-    for n, row in enumerate(rows):
-        run = layout.branches[row]
-        if isinstance(run, Line):
-            zone = layout.zone[layout.start[row]]
-            single, nominal = zones.system[zone] != THREE_PHASE, float(zones.nominal_v[zone])
-            if isinstance(run, OverheadLine) and run.hung_at_m:
-                phases = letters(conductors.branch[row] & ABC)
-                z[n, ..., 0], y[n, ..., 0] = _hung(run, phases, nominal, single, drawing.frequency_hz)
-            else:
-                z[n, ..., 0], y[n, ..., 0] = matrices(run, nominal, single, drawing.frequency_hz)
-    both = has[:, :, None] & has[:, None, :]
-    return z * both[..., None], y * both[..., None], has
+    global _last
+    zone = arrays_of(layout).zone[arrays_of(layout).start[rows]]
+    bits = np.array(conductors.branch, dtype=np.intp)[rows]
+    nominal, single = zones.nominal_v[zone], np.array([s != THREE_PHASE for s in zones.system])[zone]
+    runs = [layout.branches[row] for row in rows]
+    told = [*zip(bits.tolist(), nominal.tolist(), single.tolist(), strict=True)]
+    were, told_then, z, y, frequency = _last
+    if len(were) != len(runs) or frequency != drawing.frequency_hz:
+        were, told_then = [None] * len(runs), told
+        z = np.zeros((len(rows), K, K, 1), dtype=np.complex128)
+        y = np.zeros_like(z)
+    moved = [n for n, run in enumerate(runs) if run is not were[n] or told[n] != told_then[n]]
+    has = (bits[:, None] >> np.arange(K) & 1).astype(bool)
+    if moved:
+        z, y = z.copy(), y.copy()
+        for n in moved:
+            both = np.outer(has[n], has[n])
+            for whole, part in zip((z, y), _matrices(runs[n], *told[n], drawing.frequency_hz), strict=True):
+                whole[n, ..., 0] = part * both
+    _last = (runs, told, z, y, drawing.frequency_hz)
+    return z, y, has
+
+
+Told = tuple[int, float, bool]  # what a matrix hangs on besides its line: bits, nominal volts, single-phase
+_last: tuple[Sequence[Branch | None], list[Told], Complex, Complex, float]
+_last = ([], [], np.zeros((0, K, K, 1), np.complex128), np.zeros((0, K, K, 1), np.complex128), 0.0)
+
+
+def _matrices(
+    run: Branch, bits: int, nominal_v: float, single: bool, frequency_hz: float
+) -> tuple[Complex, Complex]:
+    """Of one line; noughts for a switch, and where no phase reaches it."""
+    if not isinstance(run, Line) or not bits & ABC:
+        return NOTHING, NOTHING
+    if isinstance(run, OverheadLine) and run.hung_at_m:
+        return _hung(run, letters(bits & ABC), nominal_v, single, frequency_hz)
+    return matrices(run, nominal_v, single, frequency_hz)
 
 
 def _hung(

@@ -5,9 +5,10 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-from app.model.kinds import Line, Regulator, Switch, Transformer
+from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
 from app.study.flows import forward_of, notches_of, through_of
 from app.study.layout import Layout, arrays_of
+from app.study.memory import Columns
 from app.study.outcome import BranchState, BranchWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
 from app.study.unit_wires import rated_current
@@ -16,6 +17,7 @@ from solver import Solution
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
+FIRST = np.array([0, 0, 1, 0, 2, 0, 1, 0])  # slot of the first phase of each set of bits
 
 
 def wire_branches(
@@ -54,7 +56,7 @@ def wire_branches(
     has = _has(layout, rows, onward)
     shown = np.where(has, amps, np.nan)
     start_a, end_a = (
-        np.where(s.any(axis=1), np.where(s, a, 0).max(axis=1), np.nan)
+        np.where(s.any(axis=1), np.where(s, a, 0.0).max(axis=1), np.nan)
         for s, a in ((has, at_start), (has, at_end))
     )
     ohms = _ohms(layout, rows)
@@ -63,7 +65,7 @@ def wire_branches(
     columns = {
         "live": known.all(axis=1),
         "forward": forward,
-        "current_a": np.where(known, np.nanmax(np.where(has, amps, 0), axis=1), np.nan),
+        "current_a": np.where(known, np.where(has, amps, 0.0).max(axis=1), np.nan),
         "start_a": np.where(known, start_a, np.nan),
         "end_a": np.where(known, end_a, np.nan),
         "start_kw": start_s.real,
@@ -102,8 +104,13 @@ def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[in
 
 def _has(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> NDArray[np.bool_]:
     """(branch, k, 1)"""
-    bits = np.array(_side_bits(layout, rows, onward), dtype=np.intp).reshape(-1)
-    return (bits[:, None] >> np.arange(4) & 1).astype(bool)[..., None]
+    return _slots(_side_bits(layout, rows, onward))
+
+
+def _slots(bits: list[int]) -> NDArray[np.bool_]:
+    """(branch, k, 1) conductors out of bits."""
+    found = np.array(bits, dtype=np.intp).reshape(-1)
+    return (found[:, None] >> np.arange(4) & 1).astype(bool)[..., None]
 
 
 def _ohms(layout: Layout, rows: Rows) -> Complex:
@@ -112,11 +119,21 @@ def _ohms(layout: Layout, rows: Rows) -> Complex:
     assert conductors is not None
     found = np.full(len(layout.branches), complex(np.nan, np.nan))
     found[rows.units] = network.transformer_z[:, 0]
-    for n, row in enumerate(rows.lines):
-        phases = slots(conductors.branch[row] & ABC)
-        if phases:
-            found[row] = network.line_z[n, phases[0], phases[0], 0]
+    bits = np.array(conductors.branch, dtype=np.intp)[rows.lines] & ABC
+    first = FIRST[bits]
+    own = network.line_z[np.arange(len(first)), first, first, 0]
+    found[rows.lines] = np.where(bits > 0, own, complex(np.nan, np.nan))
     return found
+
+
+def _rating(branch: Branch) -> tuple[float]:
+    """Rated amperes of all parallel runs together; nan where none are given."""
+    given = branch.rating_a if isinstance(branch, Line | Regulator | Switch) else None
+    runs = branch.side_by_side if isinstance(branch, Line) else 1
+    return (math.nan if given is None else given * runs,)
+
+
+_rated: Columns[Branch] = Columns(_rating, 1)
 
 
 def _loading(layout: Layout, rows: Rows, at_start: Real, at_end: Real) -> Real:
@@ -124,22 +141,18 @@ def _loading(layout: Layout, rows: Rows, at_start: Real, at_end: Real) -> Real:
     transformer of the worst coil of both windings. nan where no rating is given."""
     conductors = rows.conductors
     assert conductors is not None
-    found = np.full((len(layout.branches), at_start.shape[-1]), np.nan)
-    for row, branch in enumerate(layout.branches):
-        if isinstance(branch, Transformer):
-            unit = conductors.units.get(row)
-            if unit is not None:
-                sides = [
-                    amps[row][slots(bits)].max(axis=0) / rated_current(branch, winding, unit)
-                    for winding, amps, bits in zip((1, 2), (at_start, at_end), unit.judged, strict=True)
-                ]
-                found[row] = 100 * np.maximum(*sides)
-            continue
-        given = branch.rating_a if isinstance(branch, Line | Regulator | Switch) else None
-        has = slots(conductors.branch[row])
-        if given is not None and has:
-            rated = given * (branch.side_by_side if isinstance(branch, Line) else 1)
-            found[row] = 100 * np.maximum(at_start[row][has], at_end[row][has]).max(axis=0) / rated
+    has = _slots(conductors.branch)
+    most = np.where(has, np.maximum(at_start, at_end), -math.inf).max(axis=1)
+    rated = np.where(np.array(conductors.branch) > 0, _rated.of(layout.branches)[0], np.nan)
+    found: Real = np.asarray(100 * most / rated[:, None])
+    for row, wires in conductors.units.items():
+        unit = layout.branches[row]
+        assert isinstance(unit, Transformer)
+        sides = [
+            amps[row][slots(bits)].max(axis=0) / rated_current(unit, winding, wires)
+            for winding, amps, bits in zip((1, 2), (at_start, at_end), wires.judged, strict=True)
+        ]
+        found[row] = 100 * np.maximum(*sides)
     return found
 
 
@@ -160,5 +173,5 @@ def _drop(
     worst = np.where(np.isnan(lost), -math.inf, lost).max(axis=1)
     kind = phases.column("against")
     alike = kind[graph.start] == kind[graph.end]
-    alike &= np.array([not isinstance(b, Transformer) for b in layout.branches], dtype=bool)
+    alike[layout.units] = False
     return np.where(alike[:, None] & np.isfinite(worst), worst, whole)

@@ -144,7 +144,7 @@ def wire_attachments(
         "live": live,
         "kw": power.real / 1e3,
         "kvar": power.imag / 1e3,
-        "current_a": np.where(live[:, None], np.nanmax(np.where(has[..., None], size, 0), axis=1), np.nan),
+        "current_a": np.where(live[:, None], np.where(has[..., None], size, 0).max(axis=1), np.nan),
         "voltage_v": _across(layout, rows, solution, nodes),
     }
     wires: dict[str, NDArray[Any]] = {
@@ -164,8 +164,8 @@ def _in_leads(solution: Solution, to: NDArray[np.intp] | None) -> Complex:
     drawn = _known(solution.load_current)
     total = drawn.copy()
     if to is not None:
-        for row, slot in zip(*np.nonzero(to != EARTH), strict=True):
-            total[row, to[row, slot]] -= drawn[row, slot]
+        row, slot = np.nonzero(to != EARTH)
+        np.subtract.at(total, (row, to[row, slot]), drawn[row, slot])
     return total
 
 
@@ -173,10 +173,10 @@ def _hung_on(layout: Layout, rows: Rows) -> NDArray[np.bool_]:
     """(attachment, k) conductors between which each hangs; a supply on all that lead away."""
     conductors = rows.conductors
     assert conductors is not None
-    has = np.zeros((len(layout.attachments), 4), dtype=bool)
-    for row, leads in conductors.leads.items():
-        for pair in leads.pairs:
-            has[row, [slot for slot in pair if slot != EARTH]] = True
+    has, ways = np.zeros((len(layout.attachments), 4), dtype=bool), conductors.ways
+    has[ways.row, ways.one] = True
+    between = ways.other != EARTH
+    has[ways.row[between], ways.other[between]] = True
     for row in rows.sources:
         node = layout.at[row]
         has[row] = [bool((conductors.node[node] & conductors.drawn[node]) >> slot & 1) for slot in range(4)]
@@ -187,20 +187,18 @@ def _across(layout: Layout, rows: Rows, solution: Solution, nodes: Table[NodeWir
     """(attachment, case) lowest volts across the leads; of three phases as line volts."""
     conductors, volts = rows.conductors, solution.voltage
     assert conductors is not None
-    found = np.full((len(layout.attachments), volts.shape[-1]), np.nan)
-    for row, leads in conductors.leads.items():
-        at = _known(volts[layout.at[row]])
-        sizes = [
-            np.abs(at[one] - (0 if other == EARTH else at[other])) * (over if len(leads.pairs) > 1 else 1)
-            for (one, other), over in zip(leads.pairs, leads.over, strict=True)
-        ]
-        if sizes:
-            found[row] = np.min(sizes, axis=0)
+    ways, at = conductors.ways, _known(volts)[arrays_of(layout).at[conductors.ways.row]]
+    lead = np.arange(len(at))
+    other = np.where((ways.other == EARTH)[:, None], 0, at[lead, ways.other])
+    size = np.abs(at[lead, ways.one] - other) * np.where(ways.alone, 1.0, ways.over)[:, None]
+    lowest = np.full((len(layout.attachments), volts.shape[-1]), np.inf)
+    np.minimum.at(lowest, ways.row, size)
+    found = np.where(np.isinf(lowest), np.nan, lowest)
     for row in rows.sources:
-        at, id = layout.at[row], layout.node_ids[layout.at[row]]
-        base = nodes.column("base_v")[nodes.rows[id]]
-        lowest = np.nanmin([nodes.column(f"{letter}_v")[at] for letter in "abc"], axis=0)
-        found[row] = lowest / base * _nominal(layout, rows, int(row))
+        node = layout.at[row]
+        base = nodes.column("base_v")[node]
+        each = np.array([nodes.column(f"{letter}_v")[node] for letter in "abc"])
+        found[row] = _least(each[None])[0] / base * _nominal(layout, rows, int(row))
     return found
 
 

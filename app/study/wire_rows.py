@@ -1,6 +1,6 @@
 """Drawing to solver rows where phases are solved one by one: four conductors, one column a loading case."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
@@ -134,7 +134,7 @@ def _units(
 
 
 def loads_between(
-    conductors: Conductors, rows: Iterable[int], whole: Complex, reference_v: Real, nominal_v: Real
+    conductors: Conductors, rows: Index | list[int], whole: Complex, reference_v: Real, nominal_v: Real
 ) -> tuple[Complex, Real, Index]:
     """Whole powers shared among the leads between which they hang.
 
@@ -150,14 +150,13 @@ def loads_between(
     power = np.zeros((len(whole), K, whole.shape[-1]), dtype=np.complex128)
     volts, to = np.ones((len(whole), K, 1)), np.full((len(whole), K), EARTH)
     to[:, :N] = N
-    for n, row in enumerate(rows):
-        found = conductors.leads.get(int(row))
-        if found is None:
-            continue
-        for (one, other), share, over in zip(found.pairs, found.shares, found.over, strict=True):
-            power[n, one] = share * whole[n]
-            to[n, one] = other
-            volts[n, one] = across(float(reference_v[n]), float(nominal_v[n]), over)
+    ways, place = conductors.ways, np.full(max(conductors.ways.row.max(initial=-1), *rows, 0) + 1, -1)
+    place[np.asarray(rows, dtype=np.intp)] = np.arange(len(rows))
+    chosen = place[ways.row] >= 0
+    n, one = place[ways.row][chosen], ways.one[chosen]
+    power[n, one] = ways.share[chosen, None] * whole[n]
+    to[n, one] = ways.other[chosen]
+    volts[n, one, 0] = across(reference_v[n], nominal_v[n], ways.over[chosen])
     return power, volts, to
 
 
@@ -179,7 +178,7 @@ def _stamped(leads: Leads, rated_v: float, nominal_v: float) -> Real:
     """(k, k) which part of jQ/U² stands between which conductors."""
     matrix = np.zeros((K, K))
     for (one, other), share, over in zip(leads.pairs, leads.shares, leads.over, strict=True):
-        part = share * (rated_v / across(rated_v, nominal_v, over)) ** 2
+        part = share * (rated_v / float(across(rated_v, nominal_v, over))) ** 2
         matrix[one, one] += part
         if other != EARTH:
             matrix[other, other] += part

@@ -5,6 +5,7 @@ from collections.abc import Iterable
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
 
 LETTERS = "ABCN"
+ALL_LETTERS = tuple("".join(x for slot, x in enumerate(LETTERS) if has >> slot & 1) for has in range(16))
 N, NEUTRAL, ABC = 3, 0b1000, 0b0111
 OF_SYSTEM = {THREE_PHASE: ABC, TWO_WIRE: 0b0001, SPLIT: 0b0011}
 ROOT3 = 3**0.5
@@ -28,7 +29,7 @@ def letters(has: int) -> str:
 
     Returns : str
     """
-    return "".join(letter for slot, letter in enumerate(LETTERS) if has >> slot & 1)
+    return ALL_LETTERS[has]
 
 
 def slots(has: int) -> list[int]:
