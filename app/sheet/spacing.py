@@ -5,6 +5,7 @@ import math
 from app.model import assumed
 from app.model.conductors import hung
 from app.model.kinds import OverheadLine
+from app.sheet.spacing_pairs import pair_tables
 from app.sheet.subject import IDENTITY, Subject
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style, given, table, text
 from app.study.overhead_working import BASIS, SOURCE, Working, working_in
@@ -47,7 +48,8 @@ def spacing_tables(subject: Subject) -> list[SheetTable]:
     if not found:
         return []
     rows = {id: _row(subject, id, line) for id, line in found.items()}
-    return [table(KEY, TAB, f"Overhead lines {BASIS}", (*IDENTITY, *COLUMNS), rows, note=NOTE)]
+    shown = table(KEY, TAB, f"Overhead lines {BASIS}", (*IDENTITY, *COLUMNS), rows, note=NOTE)
+    return [shown, *pair_tables(subject)]
 
 
 def _row(subject: Subject, id: str, line: OverheadLine) -> Cells:

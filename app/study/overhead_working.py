@@ -45,23 +45,15 @@ def working_of(run: OverheadLine, frequency: float, nominal_v: float, two_wire: 
     Returns : Working
     Source : see solver.carson
     """
-    it, kind = hung(run), kind_of_neutral(run, nominal_v)
-    r = float(
-        line.resistance(
-            run.resistance_ohm_per_km, line.ALPHA[run.conductor], assumed.value(run, "temperature_degc")
-        )
-    )
+    it, kind = hung(run), kind_of_neutral(run, 0.0 if two_wire else nominal_v)
+    theta = assumed.value(run, "temperature_degc")
+    r = float(line.resistance(run.resistance_ohm_per_km, line.ALPHA[run.conductor], theta))
     k = 2e3 * math.pi * frequency * carson.MU / (2 * math.pi)
     single = two_wire or it.phases == 1
-    through_earth = single and (
-        len(it.letters) == 1 or kind == ALONG and (not two_wire or run.neutral == ALONG)
-    )
-    if single:
-        z, zero = loop_of(run, frequency, nominal_v), None
-        if not two_wire:
-            z = sequence_of(run, frequency, nominal_v)[0]
-    else:
-        z, zero = sequence_of(run, frequency, nominal_v)
+    through_earth = single and (len(it.letters) == 1 or kind == ALONG)
+    z, zero = sequence_of(run, frequency, nominal_v)
+    if two_wire:
+        z = loop_of(run, frequency, nominal_v)
     if through_earth:
         over, under = carson.earth_depth(frequency, it.soil_ohm_m), it.gmr_m[:1]
     elif single:
@@ -71,7 +63,8 @@ def working_of(run: OverheadLine, frequency: float, nominal_v: float, two_wire: 
         over, under = mean_distance_m(run), it.gmr_m[:1]
     share = z - complex(r, k * sum(math.log(over / gmr) for gmr in under))
     back = BACK[kind] if not single or kind != "none" or through_earth else "out and back"
-    return Working(r, k, over, tuple(gmr * 1e3 for gmr in under), share, z, zero, back)
+    under_mm = tuple(gmr * 1e3 for gmr in under)
+    return Working(r, k, over, under_mm, share, z, None if single else zero, back)
 
 
 def working_in(drawing: Drawing, run: OverheadLine) -> Working:
