@@ -9,6 +9,7 @@ from msgspec.structs import replace
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QKeyEvent, QPainter, QPen
 
+from app.canvas.following import following
 from app.canvas.geometry import bar_ends, scene, to_point
 from app.canvas.palette import Palette
 from app.canvas.symbols import paint_symbol
@@ -141,7 +142,9 @@ def put_down(view: BoardView, part: Part, on: Spot, at: Spot) -> str | None:
     def change(drawing: Drawing) -> Drawing:
         fresh, id = placed(drawing, part, on, at)
         made[:] = [id]
-        return fresh
+        one = fresh.elements[id]
+        node = one.node if isinstance(one, Attachment) else on.node
+        return following(fresh, view.board.solving.outcome, id, node)
 
     word = KIND_WORDS[kind_of(part.element)]
     if not view.edit(lambda after: f"Place {word} {label(after, made[0])}", change, at=scene(at.x, at.y)):

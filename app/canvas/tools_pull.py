@@ -9,6 +9,7 @@ from msgspec.structs import replace
 from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QKeyEvent, QPainter, QPen
 
+from app.canvas.following import following
 from app.canvas.geometry import GRID, HitKind, between, distance, meet, node_point, scene, snap
 from app.canvas.lettering import Run, Style, paint
 from app.canvas.palette import Palette
@@ -261,7 +262,7 @@ def draw(view: BoardView, start: Spot, end: Spot, brush: Brush, length: str = ""
 
     def change(drawing: Drawing) -> Drawing:
         fresh, *made[:] = drawn(drawing, start, end, brush, length)
-        return fresh
+        return following(fresh, view.board.solving.outcome, made[0], start.node)
 
     word = KIND_WORDS[kind_of(brush.part.element)]
     if not view.edit(lambda after: f"Draw {word} {label(after, made[0])}", change, at=scene(end.x, end.y)):
