@@ -16,6 +16,7 @@ from app.sheet.table import (
     Style,
     given,
     text,
+    typed_digits,
 )
 from app.study.checking import NOISE
 from app.study.layout import NONE, Layout, lay_out
@@ -65,7 +66,10 @@ class Subject:
             as_is = isinstance(stated, str | bool)
             return replace(given(stated if as_is else float(stated)), origin=origin)
         put = self._assumed.get((id, field))
-        return BLANK if put is None else replace(given(float(put.value)), origin=Origin.ASSUMED)
+        if put is None:
+            return BLANK
+        short = typed_digits(float(f"{put.value:.4g}"))  # worked out, so its last digits say nothing
+        return replace(given(float(put.value), short), origin=Origin.ASSUMED)
 
     def two_wire(self, node: str) -> bool:
         """True where the supply that feeds a node has two wires."""

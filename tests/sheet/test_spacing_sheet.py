@@ -102,10 +102,10 @@ def test_the_formula_of_x_reads_cells_alone(tmp_path: Path, made):
         formula = sheet.cell(row, at["X1, or loop"]).value
         assert formula.startswith("=2*PI()*")
         value = {k: shown.cell(row, column).value for k, column in at.items()}
-        logs = math.log(value["Mean distance, or depth"] * 1000 / value["GMR"])
-        if value["GMR of the wire back"]:
-            logs += math.log(value["Mean distance, or depth"] * 1000 / value["GMR of the wire back"])
-        x = 2 * math.pi * value["f"] * 2e-4 * logs + value["X of the way back"]
+        logs = math.log(value["Mean distance or depth"] * 1000 / value["GMR"])
+        if value["GMR, wire back"]:
+            logs += math.log(value["Mean distance or depth"] * 1000 / value["GMR, wire back"])
+        x = 2 * math.pi * value["f"] * 2e-4 * logs + value["X, way back"]
         assert value["X1, or loop"] == pytest.approx(x, rel=1e-9)
-        r = value["R hot"] + value["R of the way back"]
+        r = value["R hot"] + value["R, way back"]
         assert value["R1, or loop"] == pytest.approx(r, rel=1e-9)
