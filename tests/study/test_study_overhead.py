@@ -278,3 +278,34 @@ def test_a_transformer_behind_a_spaced_line_solves_and_its_notches_move():
     ]
     assert volts[1].voltage_v > volts[0].voltage_v
     assert fault("O1", FLAT) is None
+
+
+@pytest.mark.parametrize(("volts", "kva"), [(400.0, (4.0, 1.0, 0.5)), (12470.0, (300.0, 90.0, 20.0))])
+def test_unlike_loads_on_a_spaced_line_by_hand(volts, kva):
+    """At 400 V the neutral is carried, at 12.47 kV earthed along; volts of the matrix worked out here."""
+    four = replace(
+        FLAT, hung_at_m=FLAT.hung_at_m + "; 0.4 7.5", capacitance_uf_per_km=0.0, neutral_gmr_mm=1.4
+    )
+    four = replace(four, length_m=300.0 if volts == 400.0 else 9000.0)
+    made = drawn(four, volts)
+    loads = {
+        f"L{k}": Load(node="J1", demand_kva=s, phases=p)
+        for k, (p, s) in enumerate(zip("ABC", kva, strict=True))
+    }
+    elements = {i: e for i, e in made.elements.items() if i != "L1"} | loads
+    outcome = run(replace(made, elements=elements))
+    assert outcome.status is Status.SOLVED
+    z = matrix_of(four, 50.0, volts)[0] * four.length_m / 1e3
+    source = np.array([*(volts / math.sqrt(3) * np.exp(-2j * math.pi / 3 * np.arange(3))), 0])
+    power = 1e3 * np.array(kva) * complex(0.95, math.sqrt(1 - 0.95**2))
+    there = source.copy()
+    for _ in range(300):
+        current = np.conj(power / (there[:3] - there[3]))
+        there = source - z @ np.array([*current, -current.sum()])
+    node = outcome.wires.nodes.at("J1", 0)
+    assert [node.a_v, node.b_v, node.c_v] == pytest.approx(abs(there[:3] - there[3]), rel=1e-8)
+    if volts == 400.0:
+        assert node.neutral_v == pytest.approx(abs(there[3]), rel=1e-6)
+    else:
+        assert math.isnan(node.neutral_v)
+        assert there[3] == 0
