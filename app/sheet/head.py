@@ -142,6 +142,12 @@ RULES = (
         "(IEC 60287-1-1:2006, from memory). R20 is the maker's or the table's value as typed in.",
     ),
     (
+        "Overhead line with a spacing",
+        "Series impedance by modified Carson's equations (Carson 1926), its phases changing places along the "
+        "way where all phases are alike; a neutral earthed along by Kron's reduction; charging by images in "
+        "the earth. Resistance, GMR and soil as stated or assumed; the reactance typed beside them is not used.",
+    ),
+    (
         "Transformer",
         "Short-circuit impedance from uk and Pk, magnetising branch from i0 and P0 "
         "(IEC 60076-1:2011 and IEC 60076-8:1997, editions from memory); uk and Pk are the nameplate's, the "
