@@ -145,7 +145,7 @@ RULES = (
         "Overhead line with a spacing",
         "Series impedance by modified Carson's equations (Carson 1926), its phases changing places along the "
         "way where all phases are alike; a neutral earthed along by Kron's reduction; charging by images in "
-        "the earth. Resistance, GMR and soil as stated or assumed; the reactance typed beside them is not used.",
+        "the earth. Resistance, GMR and soil as stated or assumed; a reactance typed besides is not used.",
     ),
     (
         "Transformer",
