@@ -1,5 +1,6 @@
 """The results as text: aligned tables with units in their heads, findings, assumptions, cautions."""
 
+import math
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
@@ -149,11 +150,13 @@ def aligned(lines: Sequence[Sequence[str]], figures: int) -> str:
     return "\n".join(f"  {row}".rstrip() for row in rows)
 
 
+TO_NEUTRAL = "phase-N max kA"
 FAULT_COLUMNS: tuple[Column, ...] = (
     ("Ik3 max kA", figure("ik3_max_ka", 2)),
     ("peak kA", figure("ip_ka", 2)),
     ("X/R", figure("xr", 2)),
     ("Ik2 max kA", figure("ik2_max_ka", 2)),
+    (TO_NEUTRAL, figure("ikn_max_ka", 2)),
     ("Ik1 max kA", figure("ik1_max_ka", 2)),
     ("Ik2 min kA", figure("ik2_min_ka", 2)),
     ("Ik1 min kA", figure("ik1_min_ka", 2)),
@@ -171,9 +174,11 @@ def _faults(drawing: Drawing, outcome: Outcome) -> list[str]:
         + (d.why or f"{amps(d.current_a)} at {tell(drawing, d.node)}, margin {amps(d.current_a - d.trip_a)}")
         for d in devices(lay_out(drawing), states)
     ]
+    lateral = not all(math.isnan(value) for value in states.column("ikn_max_ka"))
+    columns = [c for c in FAULT_COLUMNS if lateral or c[0] != TO_NEUTRAL]
     head = "Devices, least earth-fault current against what trips them in 5 s"
     return [
-        _table(drawing, "Fault currents", states, FAULT_COLUMNS, 0),
+        _table(drawing, "Fault currents", states, columns, 0),
         "\n".join([head, *told]) if told else "",
         "\n".join(f"  {item}: {words}" for item, words in BASIS),
     ]

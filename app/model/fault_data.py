@@ -77,6 +77,8 @@ def _of_supply(supply: Supply, field: str) -> Put:
         )
     if field == "xr":
         return Put(10.0, "R = 0.1·X where nobody states it, IEC 60909-0 (from memory)")
+    if field == "z0_ratio" and supply.wires != "three-phase":
+        return Put(1.0, f"its neutral is one of its wires, earthed at the supply; {NO_SOURCE}")
     if field == "z0_ratio":
         return Put(1.0, f"a transformer close by, its star point earthed; {NO_SOURCE}")
     raise KeyError(field)

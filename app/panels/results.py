@@ -22,6 +22,7 @@ from app.model.kinds import (
 )
 from app.panels import wire_rows
 from app.panels.asked import Asked, Row, Write
+from app.study.fault_findings import greatest
 from app.study.outcome import Finding, NodeState, Outcome, Table
 from app.study.overhead_working import ohms as per_km
 from app.study.overhead_working import working_in
@@ -93,10 +94,7 @@ def _faults(asked: Asked, id: str) -> list[Row]:
         partial(plain, digits=3, unit="Ω"),
     )
     rows = (
-        (
-            "Fault, most",
-            kiloamps(state.ik3_max_ka if state.ik3_max_ka == state.ik3_max_ka else state.ik2_max_ka),
-        ),
+        ("Fault, most", kiloamps(greatest(state)[1])),
         ("Its peak", kiloamps(state.ip_ka)),
         ("Earth fault, least", kiloamps(state.ik1_min_ka)),
         ("Earth loop", ohms(state.zs_ohm)),

@@ -78,23 +78,46 @@ def _boards(drawing: Drawing, table: Table[FaultState]) -> list[Finding]:
         limit, state = node.withstand_ka, table.at(id)
         if limit is None or not state.live:
             continue
-        kinds = {"a three-phase fault": state.ik3_max_ka, "a fault between the wires": state.ik2_max_ka}
-        words, value = next((w, v) for w, v in kinds.items() if v == v)
+        words, value = greatest(state)
+        if value != value:
+            continue
         margin = limit - value
         verdict = _verdict(margin, limit)
         shown, allowed = _apart(value, limit)
         told = f"{tell(drawing, id)} sees up to {shown} of {words}, peak {plain(state.ip_ka, 1, 'kA')}; "
         told += f"the most allowed is {allowed} ({BOARD_RULE})."
-        if margin >= 0 and max(state.ik1_max_ka, state.ik2e_max_ka) > limit:
+        if margin >= 0 and to_earth(state) > limit:
             verdict = Verdict.NEAR
-            most = plain(_to_earth(state), 2, "kA")
+            most = plain(to_earth(state), 2, "kA")
             told += f" A fault to earth drives more, up to {most}: check the board for it."
         found.append(Finding(RATING, verdict, (id,), told, value, limit, margin, "kA", BOARD_RULE))
     return found
 
 
-def _to_earth(state: FaultState) -> float:
-    return max(state.ik1_max_ka, state.ik2e_max_ka)
+def greatest(state: FaultState) -> tuple[str, float]:
+    """The current that a board is held against, in words: three-phase, or else the greatest of a loop.
+
+    state : of a node
+
+    Returns : words and float [kA]
+    """
+    if state.ik3_max_ka == state.ik3_max_ka:
+        return "a three-phase fault", state.ik3_max_ka
+    if state.ik2_max_ka != state.ik2_max_ka and state.ikn_max_ka != state.ikn_max_ka:
+        return "a fault to earth", state.ik1_max_ka
+    if state.ik2_max_ka != state.ik2_max_ka or state.ikn_max_ka > state.ik2_max_ka:
+        return "a fault from phase to neutral", state.ikn_max_ka
+    return "a fault between the wires", state.ik2_max_ka
+
+
+def to_earth(state: FaultState) -> float:
+    """The greatest current of a fault to earth.
+
+    state : of a node
+
+    Returns : float [kA]; 0 where none is known
+    """
+    return max((i for i in (state.ik1_max_ka, state.ik2e_max_ka) if i == i), default=0.0)
 
 
 def _apart(value: float, limit: float) -> tuple[str, str]:

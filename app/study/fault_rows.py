@@ -10,9 +10,13 @@ from app.model.conductors import has_neutral
 from app.model.drawing import Drawing, Limits
 from app.model.fault_data import LOW_V, Put, fault_value, star_earth_ohm
 from app.model.fields import fields_of
-from app.model.kinds import Element, Line, OverheadLine, Supply, Switch, Transformer
+from app.model.kinds import Branch, Element, Line, OverheadLine, Supply, Switch, Transformer
+from app.model.levels import SPLIT
 from app.model.wire_data import neutral_value
+from app.study.fault_conductors import PLAIN_V
+from app.study.fault_plain import plain_branches
 from app.study.graph import NONE, Layout, arrays_of
+from app.study.line_wires import ZERO_FIELDS
 from app.study.outcome import Assumption
 from app.study.overhead import sequence_of, series_of
 from app.study.zones import Zones
@@ -83,11 +87,14 @@ def fault_rows(drawing: Drawing, layout: Layout, zones: Zones) -> FaultRows:
     nominal, two_wire = zones.nominal_v[graph.zone], zones.two_wire[graph.tree]
     c_max, c_min = voltage_factors(nominal, drawing.limits)
     made = _Made(drawing, layout, nominal, two_wire, c_max, c_min)
+    plain = plain_branches(layout, zones)
     for row, branch in enumerate(layout.branches):
         if not graph.live[graph.start[row]] or isinstance(branch, Switch) and not branch.closed:
             continue
         ends = int(graph.start[row]), int(graph.end[row])
-        if isinstance(branch, Line):
+        if not plain[row]:
+            made.note(layout.branch_ids[row], branch, ends)
+        elif isinstance(branch, Line):
             made.line(layout.branch_ids[row], branch, ends)
         elif isinstance(branch, Transformer):
             made.transformer(layout.branch_ids[row], branch, ends)
@@ -192,6 +199,13 @@ class _Made:
         self.assumptions.append(Assumption(id, name, value.value, unit, value.basis))
         return value.value
 
+    def note(self, id: str, branch: Branch, ends: tuple[int, int]) -> None:
+        """What is assumed for a branch whose conductors are looked at one by one."""
+        hung = isinstance(branch, OverheadLine) and branch.hung_at_m
+        for name in ("fault_degc",) if hung else ("fault_degc", *ZERO_FIELDS):
+            if isinstance(branch, Line):
+                self._value(id, branch, name, float(self._nominal[ends[0]]))
+
     def line(self, id: str, run: Line, ends: tuple[int, int]) -> None:
         nominal, two_wire = float(self._nominal[ends[0]]), bool(self._two_wire[ends[0]])
         hot, alpha = self._value(id, run, "fault_degc", nominal), line.ALPHA[run.conductor]
@@ -209,11 +223,8 @@ class _Made:
             two_wire,
         )
         self.one.branch(ends, _with_equivalent(z))
+        r0, x0 = (self._value(id, run, name, nominal) for name in ZERO_FIELDS)
         if not two_wire:
-            r0, x0 = (
-                self._value(id, run, name, nominal)
-                for name in ("zero_resistance_ohm_per_km", "zero_reactance_ohm_per_km")
-            )
             self.zero.branch(ends, line.series(r0, x0, run.length_m, degrees[:2], alpha, run.side_by_side))
 
     def _hung_line(self, id: str, run: OverheadLine, ends: tuple[int, int], degrees: Real) -> None:
@@ -265,6 +276,10 @@ class _Made:
         current = np.array([most, least, most]) / (3**0.5 * volts)
         c = np.array([self._c_max[node], self._c_min[node], self._c_max[node]])
         z = fault.feeder(volts, current, c, ratio)
+        if supply.wires == SPLIT or (bool(self._two_wire[node]) and volts <= PLAIN_V):
+            self._value(id, supply, "z0_ratio", volts)
+        if supply.wires == SPLIT:
+            return
         self.one.earth(node, _with_equivalent(z))
         if bool(self._two_wire[node]) or (supply.z0_ratio is None and volts > LOW_V):
             return

@@ -1,5 +1,6 @@
 """What a study answers: tables keyed by id, findings, assumptions, balance. Frozen, unrounded."""
 
+import math
 from collections.abc import Container
 from dataclasses import dataclass, field
 from enum import Enum
@@ -72,12 +73,12 @@ class AttachmentState:
 
 @dataclass(frozen=True, slots=True)
 class FaultState:
-    """Fault currents at one node, initial symmetrical, without a loading case. Two-wire: only between the
-    wires. `live`: worked out; else all are nan."""
+    """Fault currents at one node, initial symmetrical, without a loading case; nan for what a node has not.
+    Two-wire: between the wires, and to earth. `live`: worked out; else all are nan."""
 
     live: bool
     ik3_max_ka: float
-    ip_ka: float  # peak of the three-phase fault, or of that between two wires
+    ip_ka: float  # peak of the three-phase fault, or of the greatest between two conductors
     xr: float  # X/R seen from here, as for the highest current
     ik2_max_ka: float
     ik1_max_ka: float  # phase to earth; 0 where the zero sequence has no way back
@@ -88,9 +89,11 @@ class FaultState:
     zs_ohm: float  # earth-fault loop, hot, the supply included; nan where there is none
     c_max: float  # voltage factors
     c_min: float
-    r_ohm: float  # seen from here by the highest three-phase current, or by that between two wires
+    r_ohm: float  # seen from here by the highest three-phase current, or round the loop of two conductors
     x_ohm: float
     rx_peak: float  # R/X of the peak, by the equivalent frequency
+    ikn_max_ka: float  # phase to neutral, where the node lacks phases
+    ikn_min_ka: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,6 +122,9 @@ class BranchWires:
     b_a: float
     c_a: float
     n_a: float
+    a_notch: float = math.nan  # where regulators stand that step each phase by itself; nan for others
+    b_notch: float = math.nan
+    c_notch: float = math.nan
 
 
 @dataclass(frozen=True, slots=True)
