@@ -15,11 +15,11 @@ from app.study.outcome import AttachmentState
 
 LOADS = "loads"
 SOURCES = "supplies"
-NODE = Column("node", "At", style=Style.TEXT, width=14)
-VOLTS = Column("u", "U", "V", style=Style.VOLTS, width=10)
-KW = Column("kw", "P", "kW", digits=2)
-KVAR = Column("kvar", "Q", "kvar", digits=2)
-KVA = Column("kva", "S", "kVA", digits=2)
+NODE = Column("node", "At", style=Style.TEXT, width=12)
+VOLTS = Column("u", "U", "V", style=Style.VOLTS, width=9)
+KW = Column("kw", "P", "kW", digits=2, width=8)
+KVAR = Column("kvar", "Q", "kvar", digits=2, width=8)
+KVA = Column("kva", "S", "kVA", digits=2, width=8)
 AMPS = Column("current", "I", "A", style=Style.AMPS, width=8)
 STATE = Column("state", "State", style=Style.VERDICT, width=10)
 
@@ -32,11 +32,11 @@ def load_tables(subject: Subject) -> list[SheetTable]:
         Column("demand", "Demand", "kW", digits=2),
         Column("demand_kva", "Demand", "kVA", digits=2),
         Column("pf", "Power factor", digits=2, width=8),
-        Column("side", "Current", style=Style.TEXT, width=10),
-        Column("model", "Load model", style=Style.TEXT, width=18),
-        Column("i_share", "Constant current", "%", digits=0),
-        Column("z_share", "Constant impedance", "%", digits=0, width=10),
-        Column("reference", "Stated at", "V", digits=0),
+        Column("side", "Current", style=Style.TEXT, width=8),
+        Column("model", "Load model", style=Style.TEXT, width=15),
+        Column("i_share", "Constant current", "%", digits=0, width=8),
+        Column("z_share", "Constant impedance", "%", digits=0, width=9),
+        Column("reference", "Stated at", "V", digits=0, width=8),
     )
     plan = Plan(
         LOADS, "Loads", "Loads", data, (VOLTS, KW, KVAR, KVA, AMPS),

@@ -100,7 +100,7 @@ def _worst_columns(plan: Plan) -> tuple[Column, ...]:
     columns: list[Column] = []
     for e in plan.extremes:
         columns.append(replace(shown[e.of], key=e.key, head=e.head))
-        columns.append(Column(e.key + "_case", "in case", style=Style.TEXT, width=18))
+        columns.append(Column(e.key + "_case", "in case", style=Style.TEXT, width=14))
     return tuple(columns)
 
 

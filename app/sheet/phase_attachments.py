@@ -28,11 +28,12 @@ def hung_tables(subject: Subject, plan: Plan, entries: Sequence[Entry]) -> list[
             figures += [*leads, replace(column, head="I, most")]
         else:
             figures.append(replace(column, head="U, lowest") if column.key == "u" else column)
-    data = (*plan.data[:1], ON, CONNECTION, *plan.data[1:])
-    if plan.data[0].key != "node":
-        data = (*plan.data[:2], ON, CONNECTION, *plan.data[2:])
+    told = [_entry(subject, entry) for entry in entries]
+    joined = (CONNECTION,) if any("connection" in entry.data for entry in told) else ()
+    at = next(i for i, column in enumerate(plan.data) if column.key == "node") + 1
+    data = (*plan.data[:at], ON, *joined, *plan.data[at:])
     plan = replace(plan, data=data, figures=tuple(figures), note=(plan.note + NOTE).strip())
-    return by_element(subject, plan, [_entry(subject, entry) for entry in entries])
+    return by_element(subject, plan, told)
 
 
 def hung_wires(subject: Subject, id: str, case: int) -> AttachmentWires:

@@ -9,7 +9,7 @@ from app.sheet.lines import DATA, DROP, KEY, LOADING, LOSS, MARGIN, judge_loadin
 from app.sheet.nodes import VERDICT
 from app.sheet.spacing import KEY as SPACING
 from app.sheet.subject import Subject, kind_name
-from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
+from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style, given, text
 from app.sheet.wires import amps, each, greatest, most, node_wires, redone, spread, volts
 from app.study.outcome import BranchState, BranchWires
 from app.study.overhead_working import BASIS, working_in
@@ -17,7 +17,7 @@ from app.study.wire_words import conductors
 from solver.line import ALPHA
 
 WIRES = (
-    Column("has", "Conductors", style=Style.TEXT, width=10),
+    Column("has", "Conductors", style=Style.TEXT, width=11),
     Column("neutral", "Neutral", style=Style.TEXT, width=13),
 )
 OWN = (
@@ -118,7 +118,7 @@ def _data(subject: Subject, id: str, line: Line, ohms: tuple[float, float]) -> C
     found["xt"] = Cell(x * line.length_m / 1e3 / line.side_by_side, "{x}*{length}/1000/{runs}")
     if "N" in has:
         own = subject.value(id, "neutral_resistance_ohm_per_km")
-        found["rn20"] = own if own.value is not None else Cell(_neutral_r20(line))
+        found["rn20"] = own if own.value is not None else Cell(_neutral_r20(line), origin=Origin.ASSUMED)
         found["rn"] = Cell(ohms[1], "{rn20}" + hot, size)
     return found
 

@@ -15,7 +15,7 @@ from app.study.wire_words import AGAINST, conductors
 KEY = "busbars"
 DATA = (
     Column("has", "Conductors", style=Style.TEXT, width=11),
-    Column("against", "Volts", style=Style.TEXT, width=13),
+    Column("against", "Volts", style=Style.TEXT, width=15),
     Column("un", "Un", "V", digits=0, width=8),
     Column("base", "Base", "V", digits=1, width=8),
 )
@@ -41,7 +41,7 @@ def phase_node_tables(subject: Subject) -> list[SheetTable]:
         Column("percent", "U lowest", "% of base", digits=2, near="low"),
         Column("high_percent", "U highest", "% of base", digits=2, near="high"),
     ]
-    bases = [Column("u_120", "U lowest, 120 V base", "V", digits=1, near="low_120")]
+    bases = [Column("u_120", "U lowest, 120 V base", "V", digits=1, near="low_120", width=10)]
     figures = [
         *each(subject, Column("u", "U", "V", style=Style.VOLTS, width=9), neutral=False),
         *low_high,

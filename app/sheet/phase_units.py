@@ -24,8 +24,8 @@ WIRES = (
 )
 NOTE = (
     "Pk, P0, uk and i0 are of one unit. Loading is that of the worst phase of the worse winding. I of the "
-    "phases is of the winding that is fed; i of a winding is its worst phase. Iron and copper are the "
-    "solver's, summed over the phases. Excitation is of the lowest phase, or of the one it hangs on."
+    "phases is of the winding that is fed; that of winding 1 and 2 is its worst phase. Iron and copper are "
+    "the solver's, summed over the phases. Excitation is of the lowest phase, or of the one it hangs on."
 )
 
 

@@ -7,7 +7,7 @@ from xlsxwriter.utility import quote_sheetname, xl_rowcol_to_cell
 
 from app.sheet.table import Cell, Ref, Row, SheetTable
 
-BETWEEN = 2  # blank rows between tables of one tab
+BETWEEN = 1  # blank rows between tables of one tab
 
 
 @dataclass(frozen=True, slots=True)

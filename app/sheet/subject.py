@@ -27,7 +27,7 @@ from solver.status import Status
 FAIL = "FAIL"
 HOLDS = "holds"
 PASSED = f"<=-{NOISE:.0E}"  # what a formula says of a margin that fails
-CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=24))
+CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=20))
 
 
 class Subject:
@@ -107,8 +107,8 @@ class Subject:
         return text("dead" if self.solved else "not solved")
 
 
-IDENTITY = (Column("id", "Id", style=Style.TEXT, width=7), Column("name", "Name", style=Style.TEXT, width=18))
-FROM_TO = (Column("from", "From", style=Style.TEXT, width=14), Column("to", "To", style=Style.TEXT, width=14))
+IDENTITY = (Column("id", "Id", style=Style.TEXT, width=7), Column("name", "Name", style=Style.TEXT, width=16))
+FROM_TO = (Column("from", "From", style=Style.TEXT, width=12), Column("to", "To", style=Style.TEXT, width=12))
 
 
 def limit(name: str) -> Ref:

@@ -126,10 +126,12 @@ def table(
 def _rounded(column: Column, cells: Cells) -> Cell:
     """The cell with the digits it needs so as not to look like what it is judged against."""
     cell = cells.get(column.key, BLANK)
-    if not isinstance(cell.value, float) or cell.digits is not None:
+    if not isinstance(cell.value, float):
         return cell
     if not math.isfinite(cell.value):
         return replace(cell, value=None, formula="")
+    if cell.digits is not None:
+        return replace(cell, digits=min(cell.digits, _most_digits(column, cell.value)))
     digits = base_digits(column, cell.value)
     for key in column.near.split():
         limit = 0.0 if key == "0" else cells.get(key, BLANK).value
@@ -139,6 +141,11 @@ def _rounded(column: Column, cells: Cells) -> Cell:
                 apart(cell.value / scale(column, cell.value), limit / scale(column, cell.value), digits),
             )
     return replace(cell, digits=digits)
+
+
+def _most_digits(column: Column, value: float) -> int:
+    """The decimals that there is room for beside the whole digits, at least those of the column."""
+    return max(column.digits, int(column.width) - 2 - len(f"{abs(value):,.0f}"))
 
 
 def base_digits(column: Column, value: float) -> int:
@@ -186,7 +193,8 @@ def given(value: Value, digits: int | None = None) -> Cell:
 
 def typed_digits(value: float) -> int:
     """How many decimals it takes to write a stated number in full, at most nine."""
-    return next(d for d in range(MOST_DIGITS + 1) if d == MOST_DIGITS or round(value, d) == value)
+    close = (d for d in range(MOST_DIGITS) if math.isclose(round(value, d), value, rel_tol=1e-14))
+    return next(close, MOST_DIGITS)
 
 
 def names(formula: str) -> tuple[str, ...]:

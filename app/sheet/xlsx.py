@@ -11,7 +11,10 @@ from xlsxwriter.worksheet import Worksheet
 from app.model.drawing import Drawing
 from app.model.parts import is_american
 from app.sheet.formats import FAILED, HEAD, INK, VERDICTS, Formats
+from app.sheet.gather import gathered
 from app.sheet.head import program
+from app.sheet.measure import LINE, MARGINS, fits, lines_of, room
+from app.sheet.measure import widths as widths_of
 from app.sheet.places import Place, Places, formula, lay
 from app.sheet.safe import shown
 from app.sheet.table import Row, SheetTable, Style
@@ -24,14 +27,12 @@ OPTIONS = {
     "in_memory": True,
 }
 A4, LETTER = 9, 1
-LINE = 13.5  # points a line of text takes
-CHARACTER = 0.88  # of a digit, by which widths are told, the usual letter is this wide
 FOOTER_LONGEST = 60
 
 
 def save(tables: Iterable[SheetTable], drawing: Drawing, path: Path) -> None:
     """Write the workbook. `tables` in reading order; those of one tab share a worksheet."""
-    tables = tuple(tables)
+    tables = gathered(tables)
     places = lay(tables)
     book = Workbook(str(path), OPTIONS)
     formats = Formats(book)
@@ -62,23 +63,12 @@ def _tab(
     book: Workbook, formats: Formats, places: Places, tab: str, stacked: list[Place], drawing: Drawing
 ) -> None:
     sheet = book.add_worksheet(tab)
-    widths = _widths(stacked)
+    widths = widths_of([place.table for place in stacked])
     for column, width in enumerate(widths):
         sheet.set_column(column, column, width)
     for place in stacked:
         _table(sheet, formats, places, place, widths)
-    _print_setup(sheet, stacked, drawing)
-
-
-def _widths(stacked: list[Place]) -> list[float]:
-    """Columns as wide as the widest table of the tab needs them."""
-    widths = [0.0] * max(len(p.table.columns) for p in stacked)
-    for place in stacked:
-        last = len(place.table.columns) - 1
-        for i, column in enumerate(place.table.columns):
-            spreads = column.style is Style.LONG and i == last and last < len(widths) - 1
-            widths[i] = max(widths[i], 0.0 if spreads else column.width)
-    return widths
+    _print_setup(sheet, stacked, len(widths), drawing)
 
 
 def _table(sheet: Worksheet, formats: Formats, places: Places, place: Place, widths: list[float]) -> None:
@@ -89,7 +79,9 @@ def _table(sheet: Worksheet, formats: Formats, places: Places, place: Place, wid
     if t.note:
         urgent = t.note.startswith("NOT SOLVED")
         ink = {"font_color": FAILED, "bold": True} if urgent else {"font_color": "#5B6B79", "italic": True}
-        sheet.write_string(place.top + 1, 0, shown(t.note), formats.of(**ink))
+        look = formats.of(**ink, text_wrap=True, valign="top")
+        sheet.merge_range(place.top + 1, 0, place.top + 1, len(widths) - 1, shown(t.note), look)
+        sheet.set_row(place.top + 1, LINE * lines_of(t.note, sum(widths)) + 2)
     if not t.rows:
         return
     if not t.plain:
@@ -112,7 +104,7 @@ def _heads(sheet: Worksheet, formats: Formats, place: Place, widths: list[float]
             indent=1 if left else 0,
         )  # fmt: skip
         _write(sheet, place, place.head, i, words, look, widths)
-        lines = max(lines, _lines(words, _room(place, i, widths) + 1))
+        lines = max(lines, lines_of(words, room(place.table, i, widths) + 1))
     sheet.set_row(place.head, LINE * lines + 3)
 
 
@@ -129,7 +121,7 @@ def _row(
         else:
             _write(sheet, place, at, i, value, look, widths)
         if isinstance(value, str):
-            lines = max(lines, _lines(value, _room(place, i, widths)))
+            lines = max(lines, lines_of(value, room(place.table, i, widths)))
     sheet.set_row(at, LINE * min(lines, 30) + 2)
 
 
@@ -149,27 +141,6 @@ def _write(
         sheet.write_blank(row, column, None, look)
 
 
-def _room(place: Place, column: int, widths: list[float]) -> float:
-    """Characters a line of a cell holds."""
-    spec = place.table.columns[column]
-    runs_on = spec.style is Style.LONG and column == len(place.table.columns) - 1
-    return (sum(widths[column:]) if runs_on else widths[column]) - 1
-
-
-def _lines(words: str, room: float) -> int:
-    """How many lines a wrapped text takes, word by word."""
-    count, room = 0, room / CHARACTER
-    for paragraph in words.split("\n"):
-        count, used = count + 1, 0.0
-        for word in paragraph.split(" "):
-            length = float(len(word))
-            if used and used + 1 + length > room:
-                count, used = count + 1, 0.0
-            count += int(length // max(room, 1)) if length > room else 0
-            used += length % max(room, 1) + 1 if length > room else length + 1
-    return count
-
-
 def _verdicts(sheet: Worksheet, formats: Formats, place: Place, column: int) -> None:
     for word, look in VERDICTS:
         sheet.conditional_format(
@@ -178,13 +149,14 @@ def _verdicts(sheet: Worksheet, formats: Formats, place: Place, column: int) -> 
         )  # fmt: skip
 
 
-def _print_setup(sheet: Worksheet, stacked: list[Place], drawing: Drawing) -> None:
+def _print_setup(sheet: Worksheet, stacked: list[Place], across: int, drawing: Drawing) -> None:
     first = stacked[0]
     sheet.hide_gridlines(2)
     sheet.set_landscape()
     sheet.set_paper(LETTER if is_american(drawing.frequency_hz) else A4)
-    sheet.set_margins(left=0.45, right=0.45, top=0.55, bottom=0.75)
-    sheet.fit_to_pages(1, 0)
+    sheet.set_margins(**MARGINS)
+    sheet.fit_to_pages(1, 1 if len(stacked) > 1 and fits([place.table for place in stacked]) else 0)
+    sheet.print_area(0, 0, max(stacked[-1].below - 1, 0), across - 1)
     sheet.set_footer(_footer(drawing), {"scale_with_doc": False})
     if len(stacked) == 1 and first.table.rows:
         sheet.freeze_panes(first.head + 1, first.table.held)
