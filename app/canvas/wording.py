@@ -232,12 +232,15 @@ def attachment_figures(
     id: str, element: AnyElement, case: Case, state: AttachmentState, before: AttachmentState | None
 ) -> Lines:
     """What a supply gives; what a load or generator takes or gives where the case scales it."""
-    scaled = isinstance(element, Load | Generator) and percent_of(case, id, element) != 100
+    percent = percent_of(case, id, element)
+    scaled = isinstance(element, Load | Generator) and percent != 100
     told = isinstance(element, Supply | Motor) or scaled or id in case.own
     if not told or not state.live:
         return ()
+    if not percent and not isinstance(element, Generator):
+        return () if getattr(element, "state", "") == "off" else ((Run("off"),),)  # once is enough
     if isinstance(element, Capacitor):
-        return ((Run(figures.power(state.kvar, "kvar") if state.kvar else "off"),),)
+        return ((Run(figures.power(state.kvar, "kvar")),),)
     line: Line = (Run(figures.power(state.kw)),)
     if before is not None and before.live:
         line += changed(state.kw, before.kw, figures.power)

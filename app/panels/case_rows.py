@@ -17,6 +17,7 @@ CaseTake = Callable[[int, str], str]  # takes what was typed for a case, answers
 HELP = "Blank: as the case has it for all of this kind."
 TYPE = "Type an amount, a percentage, off or on."
 TYPE_LOAD = "Type an amount, a percentage or off, and a power factor after at: 5 kVA at 0.98."
+BOX_WIDTH = 112  # names of cases want room
 TYPE_SUPPLY = "Type volts or a percentage."
 
 
@@ -28,6 +29,7 @@ class CaseRow(FieldRow):
             f"case {number}", f"Case {number + 1}", "", str, True, (), "", None, None, None, None, help
         )
         super().__init__(about, lambda _field, text: take(number, text), theme)
+        self.box.setFixedWidth(BOX_WIDTH)
         self.share = Sentence("quiet")
         self.share.setAlignment(self.editor.alignment())  # type: ignore[union-attr]
         self.grid.addWidget(self.share, 3, 0, 1, 3)

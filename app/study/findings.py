@@ -5,6 +5,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.figures import volts
+from app.model.kinds import Generator
 from app.study.checking import (
     LOADING,
     NEAR_SHARE,
@@ -108,7 +109,8 @@ def _loading(drawing: Drawing, branches: Table[BranchState], limit: float, wires
 
 
 def checks_made(drawing: Drawing, nodes: Table[NodeState], branches: Table[BranchState]) -> int:
-    """How many checks `judge` makes: each live node low, high and its drop where limited, each rated branch.
+    """How many checks `judge` makes: each live node low, high, its drop and its rise by
+    generation where limited, each rated branch.
 
     drawing : the drawing, for its limits
     nodes : table, percent (node, case) [% of nominal]
@@ -118,7 +120,9 @@ def checks_made(drawing: Drawing, nodes: Table[NodeState], branches: Table[Branc
     """
     levels = _known(nodes.column("percent"))
     drops = levels if drawing.limits.drop_percent is not None else 0
-    return 2 * levels + drops + _known(branches.column("loaded_percent"))
+    makes = any(isinstance(e, Generator) for e in drawing.elements.values())
+    rises = levels if makes and drawing.limits.rise_percent is not None else 0
+    return 2 * levels + drops + rises + _known(branches.column("loaded_percent"))
 
 
 def _known(value: Real) -> int:

@@ -11,6 +11,7 @@ from wired import EARTH, Bank, CentreTapped, Layout, N, Unit
 from wired_nodal import solution
 
 from app.model import assumed
+from app.model.drawing import Own
 from app.model.kinds import Branch, Capacitor, Generator, Line, Load, Motor, Node, Supply, Switch, Transformer
 from solver.windings import Winding
 
@@ -40,7 +41,9 @@ class Wired:
                 self.layout.earths.append((self.row[id], N, complex(node.earth_ohm)))
 
     def supply(self, s):
-        volts = s.nominal_v * s.held_percent * self.case.supply_percent / 1e4
+        id = next(i for i, e in self.drawing.elements.items() if e is s)
+        own = self.case.own.get(id, Own()).percent
+        volts = s.nominal_v * s.held_percent * (self.case.supply_percent if own is None else own) / 1e4
         volts = volts * np.exp(1j * math.radians(s.angle_deg))
         shape = {
             "three-phase": np.array([1, TURN, TURN**2, 0]) / 3**0.5,
@@ -220,11 +223,15 @@ class Wired:
         return [1 / 3] * 3 if a is None else [a / 100, b / 100, 1 - (a + b) / 100]
 
     def draw(self, hung, leads, nominal):
-        node, scale = self.row[hung.node], self.case.load_percent / 100
+        id = next(i for i, e in self.drawing.elements.items() if e is hung)
+        own = self.case.own.get(id, Own())
+        node = self.row[hung.node]
+        scale = (self.case.load_percent if own.percent is None else own.percent) / 100
         if isinstance(hung, Capacitor):
             matrix = np.zeros((4, 4), dtype=complex)
             for one, other, share, volts in leads:
-                y = 1j * share * hung.rating_kvar * 1e3 / volts**2
+                on = float(hung.connected) if own.percent is None else own.percent / 100
+                y = 1j * on * share * hung.rating_kvar * 1e3 / volts**2
                 matrix[one, one] += y
                 if other != EARTH:
                     matrix[other, other] += y
@@ -233,13 +240,15 @@ class Wired:
             self.layout.shunts.append((node, matrix))
             return
         if isinstance(hung, Generator):
-            power = -complex(hung.output_kw, hung.output_kvar) * 1e3 * self.case.generation_percent / 100
+            made = self.case.generation_percent if own.percent is None else own.percent
+            power = -complex(hung.output_kw, hung.output_kvar) * 1e3 * made / 100
         elif isinstance(hung, Motor):
             kw = hung.rated_kw / hung.efficiency
             power = complex(kw, kw * math.tan(math.acos(hung.power_factor))) * 1e3 * scale
         else:
-            kva = hung.demand_kva if hung.demand_kva is not None else hung.demand_kw / hung.power_factor
-            power = kva * 1e3 * scale * complex(hung.power_factor, math.sqrt(1 - hung.power_factor**2))
+            factor = hung.power_factor if own.power_factor is None else own.power_factor
+            kva = hung.demand_kva if hung.demand_kva is not None else hung.demand_kw / factor
+            power = kva * 1e3 * scale * complex(factor, math.sqrt(1 - factor**2))
         i, z = (
             (getattr(hung, f"constant_{what}_percent", None) or 0) / 100 for what in ("current", "impedance")
         )

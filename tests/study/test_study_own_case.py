@@ -6,11 +6,12 @@ import numpy as np
 import pytest
 from msgspec.structs import replace
 from study_nodal import Nodal
+from test_study_wired import compare
 
 from app.model import edits
 from app.model.drawing import Case
 from app.model.file import load
-from app.model.kinds import Supply
+from app.model.kinds import Capacitor, Generator, Supply
 from app.study import run
 from app.study.curve import tap_curve
 
@@ -71,3 +72,15 @@ def test_the_curve_of_a_tap_knows_what_a_case_states_of_one_element():
     curve = tap_curve(drawing, "T2")
     here = int(np.flatnonzero(curve.notches == drawing.elements["T2"].tap)[0])
     np.testing.assert_allclose(curve.loss_kw[here], run(drawing).balance.loss_kw, rtol=1e-9)
+
+
+def test_where_phases_are_not_alike_each_element_has_its_share_too():
+    camp = load(SAMPLES / "loonmarrow_camp.farend")
+    camp = edits.put(camp, {"K1": Capacitor(node="B5", rating_kvar=3.0, connected=False)})
+    camp = edits.put(camp, {"G1": Generator(node="B6", output_kw=2.0)})
+    hung = camp.attachments()
+    for share, (id, one) in zip(np.linspace(40, 120, len(hung)), hung.items(), strict=True):
+        camp = edits.set_own(camp, 0, id, percent=101.5 if isinstance(one, Supply) else float(share))
+    camp = edits.set_own(camp, 0, "L4", power_factor=0.7)
+    outcome = compare(replace(camp, cases=camp.cases[:1]))
+    assert outcome.attachments.at("K1", 0).kvar > 0
