@@ -124,14 +124,15 @@ def _closure(source_power: Complex, load_power: Complex, taken: tuple[Complex, .
     """(batch,) |supplied - drawn - lost| over the larger of supplied and drawn; dead rows do not count."""
     given = _total(source_power)
     size = np.maximum(np.abs(given), _total(np.abs(load_power)))
-    gap = np.abs(given - sum(_total(power) for power in taken))
+    gap = np.abs(given - sum(_total(power) for power in taken if power.size))
     return np.divide(gap, size, out=np.where(gap > 0, np.inf, 0.0), where=size > 0)
 
 
 def _total(power: Complex | Real) -> Complex:
     """(batch,) sum of the rows that are live."""
-    total = power.sum(axis=tuple(range(power.ndim - 1)))
-    return total if np.isfinite(total).all() else np.nansum(power, axis=tuple(range(power.ndim - 1)))
+    rows = power.reshape(-1, power.shape[-1])
+    total = rows.sum(axis=0)
+    return total if np.isfinite(total).all() else np.nansum(rows, axis=0)
 
 
 def _blank(rows: int, like: Complex) -> Complex:
@@ -160,6 +161,9 @@ def _transformers(
 ) -> tuple[Complex, Complex, Complex, Complex]:
     supplied = int(forest.depth_zone[1])
     rows = forest.zone_transformer[supplied:]
+    if not rows.size:
+        nothing = _blank(network.transformer_from.size, voltage)
+        return nothing, nothing, nothing[:, 0], nothing[:, 0]
     secondary = inflow[forest.zone_start[supplied:-1]]
     side = (forest.transformer_way[rows] < 0).astype(int)
     first, last = voltage[network.transformer_from[rows]], voltage[network.transformer_to[rows]]

@@ -22,8 +22,10 @@ class Hung:
     between : (element,) float, 1 between conductors, 0 to earth
     power : (element, batch) complex [VA] conjugate
     current : (element, batch) complex [A] conjugate; None where there is none
-    order : (end,) elements at their near, then at their far ends, sorted by conductor
-    start : (target,) where the ends of each conductor begin in that order
+    order : (end,) elements at their near, then at their far ends, sorted by conductor; empty where no
+        conductor is near to two elements, so that each near end stands alone
+    start : (target,) where the ends of each conductor begin in that order; runs of like far ends where it
+        is empty
     target : (target,) conductors
     """
 
@@ -79,13 +81,17 @@ class Hung:
             np.sqrt(size, size)
             drawn += self.current * size
         np.multiply(drawn, u, u)
+        out[...] = 0
+        flat = out.reshape(-1, out.shape[-1])
+        if not self.order.size:
+            flat[self.near] = u
+            if not self.between.all():
+                u *= self.between[:, None]
+            flat[self.target] -= _summed(u, self.start)
+            return
         np.multiply(u, -self.between[:, None], drawn)
         scratch.both.take(self.order, axis=0, out=scratch.flat, mode="clip")
-        out[...] = 0
-        if out.shape[-1] == 1:  # one row of values is summed up far quicker than a column
-            out.reshape(-1)[self.target] = np.add.reduceat(scratch.flat.reshape(-1), self.start)
-        else:
-            out.reshape(-1, out.shape[-1])[self.target] = np.add.reduceat(scratch.flat, self.start, axis=0)
+        flat[self.target] = _summed(scratch.flat, self.start)
 
     def slopes(self, voltage: Complex) -> tuple[Complex, Complex]:
         """(element, batch) a and b of dI = a dU + b conj(dU) at these volts."""
@@ -129,13 +135,13 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
     stated, mix = np.conj(slots[row, near]), network.load_mix[row, :, None]
     reference = network.load_reference[row, near]
     keys = (place * k + near) * (k + 1) + far + 1
-    key, first, member = np.unique(keys, return_index=True, return_inverse=True)
+    order = np.argsort(keys, kind="stable")
+    begun = _runs(keys[order])
 
     def total(values: Complex | Real) -> Complex:
-        found = np.zeros((key.size, values.shape[-1]), dtype=np.complex128)
-        np.add.at(found, member, values)
-        return found
+        return np.asarray(np.add.reduceat(values[order], begun, axis=0), dtype=np.complex128)
 
+    first = order[begun]
     place, near, far = place[first], near[first], far[first]
     pairs = place, near, far
     admittance = total(stated * mix[:, 2] / reference**2) if mix[:, 2].any() else None
@@ -144,12 +150,34 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
         return None, stamps
     current = total(stated * mix[:, 1] / reference) if mix[:, 1].any() else None
     between = far != EARTH
-    ends = np.concatenate((place * k + near, place * k + np.where(between, far, near)))
-    order = np.argsort(ends, kind="stable")
-    target, start = np.unique(ends[order], return_index=True)
-    half = place.size
     power = total(stated * mix[:, 0])
-    return Hung(place, ends[:half], ends[half:], 1.0 * between, power, current, order, start, target), stamps
+    near, far = place * k + near, place * k + np.where(between, far, near)
+    start = _runs(far)
+    order = np.zeros(0, dtype=np.intp)
+    if _repeats(near) or _repeats(far[start]):
+        ends = np.concatenate((near, far))
+        order = np.argsort(ends, kind="stable")
+        start = _runs(ends[order])
+        target = ends[order][start]
+    else:
+        target = far[start]
+    return Hung(place, near, far, 1.0 * between, power, current, order, start, target), stamps
+
+
+def _runs(values: Index) -> Index:
+    """Where runs of like values begin."""
+    return np.flatnonzero(np.append(True, values[1:] != values[:-1]))
+
+
+def _repeats(values: Index) -> bool:
+    return bool(np.bincount(values).max() > 1)
+
+
+def _summed(values: Complex, start: Index) -> Complex:
+    """(target, batch) sums of runs; one row of values is summed up far quicker than a column."""
+    if values.shape[-1] == 1:
+        return np.asarray(np.add.reduceat(values.reshape(-1), start)[:, None])
+    return np.asarray(np.add.reduceat(values, start, axis=0))
 
 
 def _stamps(place: Index, near: Index, far: Index, admittance: Complex, k: int) -> Complex:

@@ -14,7 +14,7 @@ from solver.sweep import Sweep
 from solver.ties import Ties
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
-PLAIN = 12  # sweeps before acceleration
+PLAIN = 8  # sweeps before acceleration
 MOST = 30  # sweeps in all
 WILD = 50.0  # growth of the change that makes the acceleration start afresh
 FAR = 0.5  # |c|² from which a geometric series is not worth following
@@ -157,7 +157,7 @@ class _Run:
             self.ties.keep(rows, self.placed)
 
     def _extrapolate(self, count: int) -> None:
-        """Goes to the end of the geometric series that two sweeps in a row begin.
+        """Goes to the end of the geometric series that two sweeps in a row begin, each conductor to its own.
 
         Currents follow the conjugate of the voltage, so each step is c times the conjugate of the one
         before: d2 = c conj(d1), and all steps to come add up to (c conj(d2) + |c|² d2) / (1 - |c|²).
@@ -167,13 +167,13 @@ class _Run:
         if count % 2:
             self.before = step.copy()
         elif before is not None:
-            weighted = before if self.weight is None else before * self.weight**2
-            c = np.einsum("nkb,nkb->b", weighted, step)
-            c /= np.einsum("nkb,nkb->b", weighted, np.conj(before)).real
+            c = _ratio(before if self.weight is None else before * self.weight**2, step, before)
             size = c.real**2 + c.imag**2
             far = ~(size < FAR)
             c[far] = size[far] = 0
-            self.image += (c / (1 - size)) * np.conj(step)
+            spare = np.conj(step, out=before)
+            spare *= c / (1 - size)
+            self.image += spare
             step *= size / (1 - size)
             self.image += step
 
@@ -207,3 +207,13 @@ class _Run:
         self.status[left[solved]], self.status[left[part]] = Status.SOLVED, Status.NO_OPERATING_POINT
         if self.tied is not None and found.tied is not None:
             self.tied[:, left[solved]] = found.tied[:, solved]
+
+
+def _ratio(weighted: Complex, step: Complex, before: Complex) -> Complex:
+    """(k, batch) c that fits step = c conj(before) best; weighted is before, by the square of its weight."""
+    if before[0].size == 1:
+        row = weighted.reshape(-1)
+        return np.array([[row.dot(step.reshape(-1)) / np.vdot(before.reshape(-1), row).real]])
+    c = np.einsum("nkb,nkb->kb", weighted, step)
+    c /= np.einsum("nkb,nkb->kb", weighted, np.conj(before)).real
+    return c

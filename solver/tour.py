@@ -84,10 +84,10 @@ def _distances(following: Index) -> tuple[Index, Index]:
 
 def _whole(count: int, first: Index, second: Index, roots: Index, root: Index) -> bool:
     """True where each live edge is walked both ways from one root, and the edges make trees."""
-    if np.unique(roots).size < roots.size:
-        return False
     live = np.zeros(count, dtype=bool)
     live[roots] = True
+    if np.count_nonzero(live) < roots.size:
+        return False
     there, back = root[: first.size], root[first.size :]
     walked = there >= 0
     live[first[walked]] = live[second[walked]] = True
