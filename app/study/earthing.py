@@ -8,12 +8,15 @@ from app.model.drawing import Drawing
 from app.model.fault_data import star_earth_ohm
 from app.model.figures import level
 from app.model.kinds import Transformer
+from app.model.levels import THREE_PHASE
 from app.study.graph import Layout
 from app.study.outcome import Finding, Verdict
+from app.study.unit_wires import OPEN
 from app.study.words import list_of, tell
 from app.study.zones import Zones
 from solver.fault import ZeroPath, zero_path
 
+AS_GROUP = "as its group"
 CHECK = "no earth reference"
 UNEARTHED = (
     "An earth fault there cannot clear: it draws next to no current, no fuse or breaker sees it, and the "
@@ -27,7 +30,7 @@ def earthing_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
 
     drawing : the drawing
     layout : its graph
-    zones : two_wire (tree,) bool
+    zones : system (zone,)
 
     Returns : list of ADVICE, one for each such part that is three-phase
     Source : common practice, no source
@@ -37,9 +40,8 @@ def earthing_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
         return []
     found = []
     for zone in lost:
-        head = layout.zone_heads[zone]
-        row = layout.fed_by[head]
-        if not zones.two_wire[layout.tree[head]] and _is_three_phase(layout, row):
+        if zones.system[zone] == THREE_PHASE:
+            row = layout.fed_by[layout.zone_heads[zone]]
             found.append(_finding(drawing, layout, zones, zone, row))
     return found
 
@@ -88,27 +90,31 @@ def _joined(linked: Mapping[int, list[int]], first: set[int]) -> set[int]:
     return reached
 
 
-def _winding(layout: Layout, row: int, side: int) -> tuple[str, bool]:
-    """The letter of a winding, and whether its star or zigzag is earthed."""
+def _unit(layout: Layout, row: int) -> Transformer:
     unit = layout.branches[row]
     assert isinstance(unit, Transformer)
+    return unit
+
+
+def _winding(layout: Layout, row: int, side: int) -> tuple[str, bool]:
+    """The letter of a winding, and whether its star, zigzag or corner is earthed."""
+    unit = _unit(layout, row)
+    if unit.build in OPEN:
+        return "V", side == 1 and unit.earth_2_ohm is not None
     group = taps.group(unit.vector_group)
-    letter = "?" if group is None else str(group[side])[0].upper()
+    letter = "?" if group is None or unit.build != AS_GROUP else str(group[side])[0].upper()
     return letter, letter in "YZ" and star_earth_ohm(unit, side + 1) is not None
 
 
 def _path(layout: Layout, row: int) -> ZeroPath:
-    """What the zero sequence finds in a transformer; nothing where its group is not known."""
-    unit = layout.branches[row]
-    assert isinstance(unit, Transformer)
-    if taps.group(unit.vector_group) is None:
+    """What the zero sequence finds in a transformer; nothing where it has no known group."""
+    unit = _unit(layout, row)
+    if taps.group(unit.vector_group) is None or unit.build != AS_GROUP:
         return ZeroPath(False, False, False)
     return zero_path(unit.vector_group, *(star_earth_ohm(unit, w) is not None for w in (1, 2)))
 
 
-def _is_three_phase(layout: Layout, row: int) -> bool:
-    """Whether a transformer gives out three phases."""
-    return _winding(layout, row, 0)[0] in "YZD"
+SHAPES = {"D": "a delta", "Z": "a zigzag whose star point is not earthed", "V": "an open delta"}
 
 
 def _finding(drawing: Drawing, layout: Layout, zones: Zones, zone: int, row: int) -> Finding:
@@ -117,15 +123,15 @@ def _finding(drawing: Drawing, layout: Layout, zones: Zones, zone: int, row: int
     side = 1 if layout.end[row] == layout.zone_heads[zone] else 0
     letter, other = _winding(layout, row, side)[0], _winding(layout, row, 1 - side)
     of, volts = tell(drawing, unit), level(float(zones.nominal_v[zone]))
-    shape = {"D": "a delta", "Z": "a zigzag whose star point is not earthed"}.get(
-        letter, "a star whose star point is not earthed"
-    )
+    shape = SHAPES.get(letter, "a star whose star point is not earthed")
     words = f"Nothing holds {list_of(drawing, nodes)} ({volts}) to earth: winding {side + 1} of {of}, which "
     words += f"feeds it, is {shape}. {UNEARTHED} Likely cure: {_cure(letter, other, of)}."
     return Finding(CHECK, Verdict.ADVICE, (*nodes, unit), words)
 
 
 def _cure(letter: str, other: tuple[str, bool], of: str) -> str:
+    if letter == "V":
+        return f"earth a corner of {of}, or {ZIGZAG}"
     if letter != "D" and (letter == "Z" or other[0] == "D"):
         return f"earth the star point of {of}"
     if letter == "D" and other[0] == "Y":

@@ -16,6 +16,8 @@ from app.study.earthing import unreferenced
 from app.study.graph import arrays_of
 from app.study.layout import lay_out
 from app.study.outcome import Verdict
+from app.study.rows import rows_of
+from app.study.zones import zones_of
 from solver.forest import grow
 from solver.network import Network
 from solver.reached import unreferenced as unreferenced_wires
@@ -186,3 +188,37 @@ def test_the_random_layouts_have_both_kinds():
     layouts = [lay_out(random_layout(np.random.default_rng(seed))) for seed in range(60)]
     zones = sum(len(layout.zone_heads) - 1 for layout in layouts)
     assert 0.2 < sum(len(unreferenced(layout)) for layout in layouts) / zones < 0.8
+
+
+def camp(**more):
+    """Laterals and single-phase units below a delta-star that stands either way, and an open bank."""
+    base = step_up(
+        "YNd1",
+        C2=line("B2", "B5", phases="A"), B5=Busbar(),
+        T5=unit("B5", "B6", "Ii0", 6350.0, 240.0, build="centre-tapped"), B6=Busbar(), L6=Load(node="B6"),
+        T7=unit("B4", "B7", "Ii0", 400.0, 230.0, build="open delta"), B7=Busbar(), L7=Load(node="B7"),
+    )  # fmt: skip
+    return changed(base, **more)
+
+
+@pytest.mark.parametrize(
+    ("made", "zones"),
+    [
+        (camp(), {"B2", "B7"}),
+        (camp(T1=unit("B1", "B2", "Dyn11", 400.0, 11e3)), {"B7"}),
+        (camp(T7=unit("B4", "B7", "Ii0", 400.0, 230.0, build="open delta", earth_2_ohm=0.0)), {"B2"}),
+        (camp(T2=unit("B3", "B4", "Dd0", 11e3, 400.0)), {"B2", "B4", "B7"}),
+    ],
+)
+def test_agrees_where_the_drawing_is_solved_wire_by_wire(made, zones):
+    layout = lay_out(made)
+    levels = zones_of(made, layout)
+    rows = rows_of(made, layout, levels)
+    assert rows.conductors is not None
+    forest = grow(rows.network)
+    far = np.where(forest.transformer_way > 0, rows.network.transformer_to, rows.network.transformer_from)
+    theirs = {layout.zone[node] for node in far[unreferenced_wires(rows.network, forest)]}
+    three = {zone for zone in theirs if levels.system[zone] == "three-phase"}
+    assert {layout.node_ids[layout.zone_heads[zone]] for zone in three} == zones
+    assert {f.ids[0] for f in lost(made)} == zones
+    assert all("open delta" in f.sentence for f in lost(made) if f.ids[0] == "B7")
