@@ -10,6 +10,7 @@ from app.model.fields import fields_of
 from app.model.figures import amps, plain, typed
 from app.model.kinds import KIND_WORDS, Branch, Regulator, Transformer, kind_of
 from app.printed_wires import wire_tables
+from app.sheet.table import short_digits
 from app.study.cautions import CAUTIONS
 from app.study.fault_basis import BASIS
 from app.study.fault_devices import devices
@@ -171,7 +172,7 @@ def _faults(drawing: Drawing, outcome: Outcome) -> list[str]:
         return []
     told = [
         f"  {tell(drawing, d.line)} trips at {amps(d.trip_a)}: "
-        + (d.why or f"{amps(d.current_a)} at {tell(drawing, d.node)}, margin {amps(d.current_a - d.trip_a)}")
+        + (f"not judged, because {d.why}" if d.why else f"{amps(d.current_a)} at {tell(drawing, d.node)}, margin {amps(d.current_a - d.trip_a)}")
         for d in devices(lay_out(drawing), states)
     ]
     lateral = not all(math.isnan(value) for value in states.column("ikn_max_ka"))
@@ -227,10 +228,15 @@ def _margin(finding: Finding) -> str:
 
 def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
     told = [
-        f"  {tell(drawing, a.id)}: {_field(drawing, a)} {typed(a.value)} {a.unit} ({a.basis})"
+        f"  {tell(drawing, a.id)}: {_field(drawing, a)} {_short(a.value)} {a.unit} ({a.basis})"
         for a in outcome.assumptions[:SHOWN_ASSUMPTIONS]
     ]
     return "Assumed, to be confirmed\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
+
+
+def _short(value: float) -> str:
+    """A value that was put in, to four figures where it was worked out."""
+    return typed(round(value, short_digits(value)))
 
 
 def _field(drawing: Drawing, assumption: Assumption) -> str:

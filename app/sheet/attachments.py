@@ -111,11 +111,11 @@ def source_tables(subject: Subject) -> list[SheetTable]:
     kinds = (Supply, Generator, Capacitor)
     hung = {i: e for i, e in subject.drawing.elements.items() if isinstance(e, kinds)}
     data = (
-        Column("kind", "Kind", style=Style.TEXT, width=11),
         NODE,
+        Column("kind", "Kind", style=Style.TEXT, width=9),
         Column("rating", "Stated", digits=0),
         Column("unit", "", style=Style.TEXT, width=6),
-        Column("rest", "As", style=Style.TEXT, width=30),
+        Column("rest", "As", style=Style.TEXT, width=22),
     )
     pf = Column("pf", "Power factor", digits=3, width=8)
     plan = Plan(

@@ -19,9 +19,9 @@ TOGETHER = (  # tabs that may share one, and its name, the broadest first; where
     ("Faults", ("Faults", "Circuit ends", "Devices")),
     ("Balance", ("Balance", "Losses")),
 )
-APART = {  # what leaves a tab that is longer than a page, one after the other until it is not
-    "Basis": (("Assumed values", ("assumed",)), ("Cases", ("cases", "case_own"))),
-    "Build list": (("Phases", ("laterals", "allocation")),),
+APART = {  # what leaves a tab that is longer than a page, and where to
+    "Basis": ("Cases and assumed values", ("cases", "case_own", "assumed")),
+    "Build list": ("Phases", ("laterals", "allocation")),
 }
 
 
@@ -34,14 +34,13 @@ def gathered(tables: Iterable[SheetTable]) -> tuple[SheetTable, ...]:
     home: dict[str, str] = {}
     for name, bases in (*TOGETHER, *((base, (base,)) for base in dict.fromkeys(map(_base, tabs)))):
         members = [tab for tab in tabs if _base(tab) in bases and tab not in home]
-        if len(members) > 1 and fits([t for tab in members for t in tabs[tab]]):
+        led = any(_base(tab) == bases[0] for tab in members)
+        if led and len(members) > 1 and fits([t for tab in members for t in tabs[tab]]):
             home |= dict.fromkeys(members, name)
     moved: dict[str, str] = {}
-    for tab, groups in APART.items():
-        for to, keys in groups:
-            rest = [t for t in tabs.get(tab, ()) if t.key not in moved]
-            if len(rest) > 1 and not fits(rest):
-                moved |= dict.fromkeys(keys, to)
+    for tab, (to, keys) in APART.items():
+        if tab in tabs and not fits(tabs[tab]):
+            moved |= dict.fromkeys(keys, to)
     return tuple(replace(t, tab=moved.get(t.key, home.get(t.tab, t.tab))) for t in tables)
 
 

@@ -1,12 +1,10 @@
 """The head of the sheet, the basis it stands on, what was assumed, and the cautions."""
 
-from dataclasses import replace
-
 from app.model.fields import fields_of
 from app.model.kinds import Motor
 from app.sheet.cases import case_tables
 from app.sheet.subject import FAIL, Subject, kind_name
-from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, table, text
+from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, put_in, table, text
 from app.study.cautions import CAUTIONS
 from app.study.fault_basis import BASIS as BASIS_OF_FAULTS
 from app.study.outcome import Verdict
@@ -48,7 +46,9 @@ def head_tables(subject: Subject) -> list[SheetTable]:
     rows["program"] = {"item": text("Worked out with"), "value": text(program())}
     rows["result"] = {"item": text("Result"), "value": text(result_words(subject))}
     count = len(subject.outcome.assumptions)
-    assumed = f"{count}, listed under Basis; confirm them before relying on this sheet." if count else "none"
+    assumed = (
+        f"{count}, listed as assumed values; confirm them before relying on this sheet." if count else "none"
+    )
     rows["assumed"] = {"item": text("Assumed values"), "value": text(assumed)}
     if project.note:
         rows["note"] = {"item": text("Note"), "value": given(project.note)}
@@ -201,7 +201,7 @@ def _assumed(subject: Subject) -> SheetTable:
     for number, ((field_name, value, unit, basis), ids) in enumerate(alike.items()):
         rows[str(number)] = {
             "item": text(field_name),
-            "value": replace(given(float(value)), origin=Origin.ASSUMED),
+            "value": put_in(float(value)),
             "unit": text(unit),
             "of": text(", ".join(subject.tell(i) for i in ids)),
             "basis": text(basis),

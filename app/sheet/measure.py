@@ -10,6 +10,7 @@ MARGINS = {"left": 0.4, "right": 0.4, "top": 0.4, "bottom": 0.6}  # inches
 PAGE_PIXELS = (11.0 - 0.8) * 96  # across a landscape page; Letter is the narrower
 PAGE_LINES = (8.27 - 1.0) * 72 / (LINE + 2)  # down a landscape page; A4 is the shorter
 SMALLEST = 0.6  # of full size; what would print smaller stays apart
+ALONE = 0.8  # down to which one table is pressed onto one page
 TITLE, BETWEEN = 1.7, 1.0  # lines that a title takes, and the gap before it
 
 

@@ -15,8 +15,8 @@ from app.sheet.table import (
     Ref,
     Style,
     given,
+    put_in,
     text,
-    typed_digits,
 )
 from app.study.checking import NOISE
 from app.study.layout import NONE, Layout, lay_out
@@ -27,7 +27,7 @@ from solver.status import Status
 FAIL = "FAIL"
 HOLDS = "holds"
 PASSED = f"<=-{NOISE:.0E}"  # what a formula says of a margin that fails
-CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=20))
+CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=23))
 
 
 class Subject:
@@ -66,10 +66,7 @@ class Subject:
             as_is = isinstance(stated, str | bool)
             return replace(given(stated if as_is else float(stated)), origin=origin)
         put = self._assumed.get((id, field))
-        if put is None:
-            return BLANK
-        short = typed_digits(float(f"{put.value:.4g}"))  # worked out, so its last digits say nothing
-        return replace(given(float(put.value), short), origin=Origin.ASSUMED)
+        return BLANK if put is None else put_in(float(put.value))
 
     def two_wire(self, node: str) -> bool:
         """True where the supply that feeds a node has two wires."""

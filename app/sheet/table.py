@@ -197,6 +197,16 @@ def typed_digits(value: float) -> int:
     return next(close, MOST_DIGITS)
 
 
+def put_in(value: float) -> Cell:
+    """What was assumed for a blank; of one that was worked out the last digits say nothing."""
+    return Cell(value, digits=short_digits(value), origin=Origin.ASSUMED)
+
+
+def short_digits(value: float) -> int:
+    """How many decimals a number takes to four figures."""
+    return typed_digits(float(f"{value:.4g}"))
+
+
 def names(formula: str) -> tuple[str, ...]:
     """The names in braces of a formula."""
     return tuple(name for _, name, _, _ in Formatter().parse(formula) if name)
