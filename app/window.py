@@ -31,6 +31,7 @@ from app.panels.shelf import Shelf
 from app.panels.strip import VoltageStrip
 from app.panels.style import qt_palette, sheet
 from app.panels.tape import LossTape
+from app.panels.year_desk import YearDesk
 
 REFUSAL_SHOWN_MS = 6000
 TITLE_BAR = 40  # the desktop's own, which a size without it forgets
@@ -64,6 +65,7 @@ class Window(QMainWindow):
         self.tape = LossTape(*shared)
         self.findings = FindingsBar(*shared)
         self.head = Head(*shared)
+        self.year = YearDesk(self.session, self.attention, self.theme, self)
         self.menus = Menus(self)
 
     def _lay_out(self) -> None:
@@ -100,6 +102,9 @@ class Window(QMainWindow):
         self.shelf.refused.connect(self.findings.tell)
         self.view.card_wanted.connect(self.card.take_focus)
         self.card.left.connect(self.view.take_focus)
+        self.card.profiles_wanted.connect(self.year.show_profiles)
+        self.card.project.year.year_wanted.connect(self.year.show_year)
+        self.year.sought.connect(self.view.show_selection)
         self.view.placing_ended.connect(self.shelf.rest)
         self.findings.sought.connect(self.view.show_selection)
         self.findings.field_sought.connect(self.card.focus_field)
@@ -138,6 +143,7 @@ class Window(QMainWindow):
             return
         self.preferences.geometry = bytes(self.saveGeometry().data())
         self.solving.stop()
+        self.year.stop()
         self.document.close()
         event.accept()
 

@@ -23,10 +23,14 @@ MOST_VOLTS = 200.0  # % of what a supply is held at
 
 def followed(drawing: Drawing, element: Element) -> str:
     """The profile that an element follows, its own or the drawing's choice; blank: constant at 100 %."""
-    if not isinstance(element, Follower):
-        return ""
-    if element.profile:
-        return "" if element.profile == CONSTANT else element.profile
+    own = getattr(element, "profile", "")
+    if own:
+        return "" if own == CONSTANT else str(own)
+    return usual_profile(drawing, element)
+
+
+def usual_profile(drawing: Drawing, element: Element) -> str:
+    """The drawing's choice for an element that names no profile; blank: constant at 100 %."""
     if isinstance(element, Load | Motor):
         return drawing.year.load_profile
     return drawing.year.generation_profile if isinstance(element, Generator) else ""

@@ -35,6 +35,7 @@ LOADING_TIP = "Loading is by current against rated current, of the winding neare
 class Card(QScrollArea):
     """Follows selection, drawing and outcome; pages are made once a kind and refreshed in place."""
 
+    profiles_wanted = Signal(str)  # the page of profiles, on this one
     left = Signal()  # Esc in a field that has nothing to give up: the board takes the keyboard back
 
     def __init__(
@@ -96,6 +97,7 @@ class Card(QScrollArea):
         self._attention.case_shown.connect(self.refresh)
         self._theme.changed.connect(self._redress)
         self.head.renamed.connect(self._rename)
+        self.project.year.profiles_wanted.connect(self.profiles_wanted)
 
     def sizeHint(self) -> QSize:
         return QSize(WIDTH, 600)
@@ -145,6 +147,7 @@ class Card(QScrollArea):
         kind = kinds.pop()
         if kind not in self._pages:
             page = ElementPage(kind, self._session, self._theme)
+            page.profiles_wanted.connect(self.profiles_wanted)
             self._pages[kind] = page
             self._down.insertWidget(1, page)
             self._down.insertWidget(self._down.count() - 1, page.more)

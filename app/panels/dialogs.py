@@ -79,3 +79,11 @@ def centre(dialog: QDialog, on: QWidget) -> None:
     dialog.ensurePolished()
     dialog.adjustSize()
     dialog.move(on.window().frameGeometry().center() - dialog.rect().center())
+
+
+def value_file(parent: QWidget) -> Path | None:
+    """A file of values to open, or None."""
+    from PySide6.QtWidgets import QFileDialog
+
+    name, _ = QFileDialog.getOpenFileName(parent, "Open values", "", "Values (*.csv *.txt);;All files (*)")
+    return Path(name) if name else None

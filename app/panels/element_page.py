@@ -4,6 +4,8 @@ from collections.abc import Sequence
 from functools import reduce
 from typing import Any
 
+from PySide6.QtCore import Signal
+
 from app.canvas.theme import Theme
 from app.live.session import Session
 from app.model import assumed, edits, figures, taps, units
@@ -11,8 +13,10 @@ from app.model.by_case import Scaled
 from app.model.conductors import FOLLOWING, STAND_INS, is_hung
 from app.model.drawing import Drawing
 from app.model.fields import Field, fields_of
+from app.model.following import usual_profile
 from app.model.kinds import KINDS, Attachment, Element, Node, Transformer
 from app.model.levels import nominal_levels
+from app.model.profiles import CONSTANT
 from app.model.rephasing import matters, set_phases
 from app.panels.case_rows import CaseRows
 from app.panels.element_words import step_text, subject
@@ -20,6 +24,7 @@ from app.panels.field_row import VARIOUS, FieldRow, written
 from app.panels.fold import Fold, is_folded
 from app.panels.page import Page
 from app.panels.phase_row import PhaseRow
+from app.panels.profile_row import ProfileRow
 from app.panels.spacing_row import SpacingRow
 from app.panels.special_rows import DemandRow, TapRow
 
@@ -36,6 +41,8 @@ LESS_ASKED = {  # shown below the results
 
 class ElementPage(Page):
     """Made once for a kind and kept; `show_ids` turns it to other elements of that kind."""
+
+    profiles_wanted = Signal(str)
 
     def __init__(self, kind: str, session: Session, theme: Theme) -> None:
         super().__init__(theme)
@@ -67,6 +74,8 @@ class ElementPage(Page):
             row = SpacingRow(field, self._take, self.theme)
         elif field.name == "phases":
             row = PhaseRow(field, self._take_phases, self.theme)
+        elif field.name == "profile":
+            row = self._profile_row(field)
         elif field.name == "demand_kw":
             return
         else:
@@ -76,6 +85,11 @@ class ElementPage(Page):
     def _tap_row(self, field: Field) -> TapRow:
         row = TapRow(field, self._take, self.theme)
         row.step.connect(self._step)
+        return row
+
+    def _profile_row(self, field: Field) -> ProfileRow:
+        row = ProfileRow(field, self._take, self.theme)
+        row.wanted.connect(self.profiles_wanted)
         return row
 
     def show_ids(self, ids: tuple[str, ...]) -> None:
@@ -95,6 +109,8 @@ class ElementPage(Page):
         if self.fold.page.rows:
             self.fold.follow(drawing, elements)
         for name, row in self.rows.items():
+            if isinstance(row, ProfileRow):
+                self._offer(row, drawing, elements)
             row.setVisible(any(matters(element, name) for element in elements))
             if isinstance(row, DemandRow):
                 row.show_demand(elements)
@@ -105,6 +121,13 @@ class ElementPage(Page):
         if self.cases is not None:
             hung = [(i, e) for i, e in zip(self.ids, elements, strict=True) if isinstance(e, Scaled)]
             self.cases.show_cases(drawing.cases, hung)
+
+    @staticmethod
+    def _offer(row: ProfileRow, drawing: Drawing, elements: Sequence[Element]) -> None:
+        """The profiles there are; constant is on offer where blank stands for another."""
+        usual = usual_profile(drawing, elements[0])
+        constant = bool(usual) or any(getattr(element, "profile", "") == CONSTANT for element in elements)
+        row.offer(list(drawing.profiles), f"as usual: {usual}" if usual else "constant 100 %", constant)
 
     def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
         values = [getattr(element, name) for element in elements]

@@ -41,6 +41,8 @@ NOUNS = {  # where the label reads on into its box
     "held_percent": "Volts held",
     "hung_at_m": "Spacing",
     "hold_percent": "Volts held",
+    "load_profile": "Profile of the loads",
+    "generation_profile": "Profile of the generators",
     "limited_current": "Current that the starter lets through",
     "limited_power_factor": "Power factor behind the starter",
     "reference_v": "Voltage of the demand",
@@ -57,7 +59,7 @@ def noun(field: Field) -> str:
 
 def step_text(field: Field, value: object, who: str) -> str:
     """The undo text: `Length of C2 to 900 m`."""
-    if field.name in ("note", "name", "hung_at_m") and not value:
+    if field.type is str and not field.choices and not value:
         return f"{noun(field)} of {who} cleared"
     if value is None:
         return f"{noun(field)} of {who} left blank"

@@ -26,6 +26,7 @@ class Menus(QObject):
         self._file()
         self._edit()
         self._look()
+        self._year()
         self._help()
 
     # -- building -------------------------------------------------------------------------------
@@ -122,6 +123,12 @@ class Menus(QObject):
             action.setChecked(value == now)
             action.triggered.connect(lambda _checked=False, v=value: take(v))
             group.addAction(action)
+
+    def _year(self) -> None:
+        menu, year = self.window.menuBar().addMenu("&Year"), self.window.year
+        self._add(menu, "&Run the year", year.run_now, "F9", "Every hour of the profiles")
+        self._add(menu, "&Show the year…", year.show_year, "Shift+F9")
+        self._add(menu, "&Profiles…", year.show_profiles, "Ctrl+Shift+P", "Paste, open or invent them")
 
     def _help(self) -> None:
         menu = self.window.menuBar().addMenu("&Help")

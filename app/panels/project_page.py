@@ -22,6 +22,7 @@ from app.panels.field_row import FieldRow
 from app.panels.page import Page
 from app.panels.style import play
 from app.panels.words import Rule, Sentence, Words
+from app.panels.year_section import YearSection
 
 NOT_JUDGED = "not judged"
 BLANK = {"motor_percent": "as the loads"}
@@ -37,6 +38,9 @@ class ProjectPage(Page):
         self.add_fields(project, self._taker(edits.set_project), "project.")
         self._head("Limits")
         self.add_fields(fields_of(Limits).values(), self._taker(edits.set_limits), "limits.")
+        self._head("Year")
+        self.year = YearSection(session, theme)
+        self.down.addWidget(self.year)
         self._head("Drawing")
         self.add_fields([fields_of(Drawing)["frequency_hz"]], self._taker(_set_frequency))
         self._head("Case")
@@ -60,9 +64,18 @@ class ProjectPage(Page):
         for name, row in self.rows.items():
             holder, _, field = name.rpartition(".")
             self._show(row, getattr(holders[holder] if holder else drawing, field))
+        self.year.refresh()
         self.own.say(own_words(drawing, case))
         self.away.setVisible(len(drawing.cases) > 1)
         self.counts.say(drawn(drawing))
+
+    def commit(self) -> None:
+        super().commit()
+        self.year.commit()
+
+    def forget(self) -> None:
+        super().forget()
+        self.year.forget()
 
     def _add_links(self) -> None:
         across = QHBoxLayout()

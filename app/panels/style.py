@@ -20,6 +20,7 @@ ROLES = (
     "tapped",  # what a tap does
     "box",  # the white box of a field; `state` says refused, tap or nothing
     "link",  # a button without a box
+    "tab",  # one of several pages to turn to
     "list",  # rows of findings
 )
 
@@ -175,6 +176,24 @@ QPushButton[role="link"], QToolButton[role="link"] {
 QPushButton[role="link"]:hover, QToolButton[role="link"]:hover { color: @INK; background: @HOVER; }
 QPushButton[role="link"]:focus, QToolButton[role="link"]:focus { border-color: @FLOW; }
 QPushButton[role="link"][state="near"] { color: @NEAR; font-weight: bold; }
+
+QPushButton[role="tab"] {
+    background: transparent; border: none; border-bottom: 2px solid transparent; border-radius: 0;
+    padding: 4px 8px; color: @SOFT;
+}
+QPushButton[role="tab"]:hover { color: @INK; }
+QPushButton[role="tab"]:checked { color: @INK; border-bottom-color: @INK; }
+QPushButton[role="tab"]:focus { color: @FLOW; }
+
+QTableView { background: @FIELD; border: 1px solid @EDGE; outline: none; }
+QTableView::item { padding: 0 6px; border: none; }
+QTableView::item:hover { background: @HOVER; }
+QTableView::item:selected { background: @CHOSEN; }
+QHeaderView { background: @PANEL; border: none; }
+QHeaderView::section {
+    background: @PANEL; color: @SOFT; border: none; border-bottom: 1px solid @EDGE; padding: 3px 6px;
+}
+QHeaderView::section:hover { color: @INK; }
 
 QMenuBar { background: @PANEL; color: @INK; spacing: 2px; }
 QMenuBar::item { background: transparent; padding: 4px 9px; border-radius: 4px; }

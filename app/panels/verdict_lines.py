@@ -16,9 +16,9 @@ MOST = 8
 class VerdictLines(QWidget):
     """Rows are kept and filled anew; hidden where nothing was found."""
 
-    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+    def __init__(self, theme: Theme, most: int = MOST, parent: QWidget | None = None) -> None:
         super().__init__(parent)
-        self._theme = theme
+        self._theme, self._most = theme, most
         self._grid = QGridLayout(self)
         self._grid.setContentsMargins(0, 0, 0, 0)
         self._grid.setHorizontalSpacing(8)
@@ -30,7 +30,7 @@ class VerdictLines(QWidget):
 
     def show_findings(self, findings: Sequence[Finding]) -> None:
         """Show these, worst first."""
-        shown = findings[:MOST]
+        shown = findings[: self._most]
         while len(self._rows) < len(shown):
             self._add()
         for k, (mark, sentence) in enumerate(self._rows):
