@@ -17,6 +17,7 @@ from solver.share import pick
 from solver.solution import Solution
 from solver.status import Status
 from solver.tapping import retapped
+from solver.windings import NEUTRAL
 
 PASSES = 200  # moves of taps before it counts as hunting
 
@@ -57,6 +58,7 @@ class Regulator:
     start : notch at which it stands before
     conductor : whose volts it measures; None for the mean of its three phases
     to : conductor against which it measures; the neutral where None, earth where there is none
+    alone : it moves that conductor and no other, as single-phase regulators side by side do
     """
 
     transformer: int
@@ -73,6 +75,7 @@ class Regulator:
     start: int = 0
     conductor: int | None = 0
     to: int | None = None
+    alone: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,7 +177,8 @@ class _Rounds:
         rows, windings = [r.transformer for r in self.regulators], [r.tapped for r in self.regulators]
         network = pick(self.network, points) if self.network.batch > 1 else self.network
         if self.regulators:
-            network = retapped(network, rows, windings, factor)
+            alone = [r.conductor if r.alone else None for r in self.regulators]
+            network = retapped(network, rows, windings, factor, alone)
         generators = [replace(g, setting=_at(g.setting, points)) for g in self.generators]
         return hold(network, self.forest, generators, warm)
 
@@ -227,8 +231,11 @@ def _at_side(regulator: Regulator, own: bool, solution: Solution) -> _Side:
     far = volts[-1 if regulator.to is None else regulator.to] if network.wires is not None else 0 * volts[0]
     measured = slice(0, 3) if regulator.conductor is None else [regulator.conductor]
     across = volts[measured] - np.where(np.isnan(far), 0, far)
-    size = np.abs(across - regulator.compensation * current[measured]).mean(axis=0)
-    return _Side(size, np.nansum((volts * np.conj(current)).real, axis=0))
+    between = regulator.to is not None and regulator.to != NEUTRAL
+    through = current[measured] - (current[regulator.to] if between else 0)
+    size = np.abs(across - regulator.compensation * through).mean(axis=0)
+    given = across * np.conj(through) if regulator.alone else volts * np.conj(current)
+    return _Side(size, np.nansum(given.real, axis=0))
 
 
 def _at(values: ArrayLike, points: Index) -> Real:

@@ -11,7 +11,13 @@ from solver.network import Network
 from solver.wires import Units
 
 
-def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], factor: Real) -> Network:
+def retapped(
+    network: Network,
+    rows: Sequence[int],
+    windings: Sequence[int],
+    factor: Real,
+    phases: Sequence[int | None] = (),
+) -> Network:
     """The same network with some transformers at other taps.
 
     The tapped winding has `factor` times its rated volts; ohms stay constant on the other side, the
@@ -21,13 +27,20 @@ def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], fac
     rows : (tapped,) transformers
     windings : (tapped,) 1 or 2
     factor : (tapped, batch) float, tap factors
+    phases : (tapped,) the conductor that alone is moved, of a regulator that passes each on by itself; None
+        where all are, and for all where it is empty
     Returns : Network
     Source : see solver.transformer.equivalent
     """
     width = max(factor.shape[-1], 1)
     ratio, z, y = (_wide(getattr(network, f"transformer_{name}"), width) for name in ("ratio", "z", "y"))
     units = None if network.wires is None else _widened(network.wires.units, width)
-    for row, winding, t in zip(rows, windings, factor, strict=True):
+    for row, winding, t, phase in zip(rows, windings, factor, phases or [None] * len(rows), strict=True):
+        if phase is not None and units is not None:
+            units.gain[row, winding - 1, phase, phase] /= t
+            units.gain[row, 2 - winding, phase, phase] *= t
+            _lead_neutral(units.gain[row])
+            continue
         ratio[row] *= t if winding == 1 else 1 / t
         z[row] *= 1 if winding == 1 else t**2
         y[row, winding - 1] /= t**2
@@ -35,7 +48,8 @@ def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], fac
             own = winding - 1
             units.gain[row, own] /= t  # fed from the tapped winding
             units.gain[row, 1 - own] *= t
-            units.series[row, 1 - own] *= t**2  # seen at the tapped winding
+            earth = _to_earth(units, row, own)
+            units.series[row, 1 - own] = earth + (units.series[row, 1 - own] - earth) * t**2
             units.iron[row, own] /= t**2
             units.own_z[row, own, 0] *= t**2
             _lead_neutral(units.gain[row])
@@ -45,9 +59,17 @@ def retapped(network: Network, rows: Sequence[int], windings: Sequence[int], fac
     return replace(network, transformer_ratio=ratio, transformer_z=z, transformer_y=y, wires=wires)
 
 
+def _to_earth(units: Units, row: int, own: int) -> Complex:
+    """(k, k, batch) what of the impedance of the tapped winding is that of its neutral to earth: no coil."""
+    has = 1.0 * units.has[row, own]
+    ohms = units.own_z[row, own, 1] * units.own[row, own, 1].any()
+    return np.asarray(np.multiply.outer(np.outer(has, has), ohms))
+
+
 def _lead_neutral(gain: Complex) -> None:
-    """Where the neutral is led through, phases are moved against it: V' - VN = g (V - VN)."""
-    if gain[:, -1, -1].any():
+    """Where the neutral is led through, and is no end of a coil, phases are moved against it:
+    V' - VN = g (V - VN)."""
+    if gain[:, -1, -1].any() and not gain[:, -1, :-1].any():
         phases = np.arange(gain.shape[1] - 1)
         moved = gain[:, phases, phases]
         gain[:, phases, -1] = np.where(moved != 0, 1 - moved, 0)

@@ -32,7 +32,7 @@ from app.model.phasing import (
 )
 from app.model.profiles import Followed
 from app.model.spacing import Diameter, Gmr, HungAt, NeutralDiameter, NeutralGmr, Soil
-from app.model.stepping import Band, DropR, DropX, Hold
+from app.model.stepping import Band, DropR, DropX, Hold, Measured, MeasuredOrEach
 
 Point = tuple[float, float]
 
@@ -172,6 +172,7 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     bandwidth_percent: Band = None
     drop_r_ohm: DropR = None
     drop_x_ohm: DropX = None
+    measures: Measured = "first"
     earth_1_ohm: (
         Annotated[
             float,
@@ -209,6 +210,7 @@ class Regulator(Branch, frozen=True, kw_only=True, tag="regulator"):
     steps_down: Annotated[int, field("Steps down", "notches", ge=0, le=40)] = 16
     drop_r_ohm: DropR = None
     drop_x_ohm: DropX = None
+    measures: MeasuredOrEach = "first"
     rating_a: Annotated[float, field("Rating", "A", gt=0, le=1e6)] | None = None
 
 

@@ -14,7 +14,7 @@ SHARES = ("share_a_percent", "share_b_percent")
 STARS = {"earth_1_ohm": 0, "earth_2_ohm": 1}
 NEUTRAL_DATA = ("neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km")
 GROUPED = frozenset(
-    ("phases", "neutral", "connection", "build", "wires", "earth_ohm", *SHARES, *NEUTRAL_DATA)
+    ("phases", "neutral", "connection", "build", "wires", "earth_ohm", "measures", *SHARES, *NEUTRAL_DATA)
 )  # what only layouts need whose phases are not alike
 
 

@@ -1,8 +1,8 @@
 """The fields that tap changers and regulators share: what they hold, how closely, and where."""
 
-from typing import Annotated
+from typing import Annotated, Literal
 
-from app.model.fields import field
+from app.model.fields import field, plain
 
 Hold = (
     Annotated[
@@ -32,3 +32,21 @@ DropX = (
     ]
     | None
 )
+Measured = Annotated[
+    Literal["first", "A", "B", "C", "mean"],
+    plain(
+        "Measures",
+        help="Where phases are not alike: whose volts it holds, all phases stepping together. First: the "
+        "first phase that reaches it. Behind a centre tap A and B are the hot wires.",
+        spare=True,
+    ),
+]
+MeasuredOrEach = Annotated[
+    Literal["first", "A", "B", "C", "mean", "each"],
+    plain(
+        "Measures",
+        help="Where phases are not alike: whose volts it holds. First: the first phase that reaches it. "
+        "Each: single-phase regulators side by side, each steps by its own phase.",
+        spare=True,
+    ),
+]

@@ -1,11 +1,14 @@
 """What there is to say of changers and generators that hold volts: hunting, end stops, wrong ways round."""
 
+from dataclasses import dataclass
+
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.figures import percent, plain
 from app.model.kinds import Generator, Regulator, Transformer
 from app.study.changers import Moved, holders
 from app.study.layout import NONE, Layout
+from app.study.measuring import ends_of, missed
 from app.study.outcome import Finding, Verdict
 from app.study.results import Tables
 from app.study.rows import Rows
@@ -23,7 +26,7 @@ def hunting_findings(drawing: Drawing, layout: Layout, moved: Moved) -> list[Fin
     Returns : list of Finding that bar a solution
     """
     found = []
-    for row, rest in zip(moved.changers, moved.rest, strict=True):
+    for row, rest, phase in zip(moved.changers, moved.rest, moved.phases, strict=True):
         cases = [c for c, one in enumerate(rest) if one is Rest.HUNTING]
         if not cases:
             continue
@@ -31,11 +34,15 @@ def hunting_findings(drawing: Drawing, layout: Layout, moved: Moved) -> list[Fin
         assert isinstance(element, Transformer | Regulator)
         band = percent(assumed.value(element, "bandwidth_percent"), 2)
         words = (
-            f"{tell(drawing, id)} hunts{_case(drawing, cases[0])}: it steps to and fro and never comes to "
-            f"rest in its band of {band}, a step being {percent(_step(element), 3)}."
+            f"{tell(drawing, id)} hunts{_on(phase)}{_case(drawing, cases[0])}: it steps to and fro and never "
+            f"comes to rest in its band of {band}, a step being {percent(_step(element), 3)}."
         )
         found.append(Finding("hunting", Verdict.BLOCKS, (id,), words, case=drawing.cases[cases[0]].name))
     return found
+
+
+def _on(phase: str) -> str:
+    return f" on phase {phase}" if phase else ""
 
 
 def _case(drawing: Drawing, case: int) -> str:
@@ -67,7 +74,13 @@ def stop_findings(
         cases = [c for c, one in enumerate(moved.rest[number]) if one is Rest.AT_STOP]
         away = [c for c in cases if _source_side(layout, tables, row, c)]
         if cases:
-            found.append(_stop(drawing, layout, rows, tables, row, (away or cases)[0], bool(away)))
+            stop = _Stop(row, (away or cases)[0], bool(away), moved, number)
+            found.append(_stop(drawing, layout, tables, stop))
+    found += [
+        _unmeasured(drawing, layout, row, rows)
+        for row in dict.fromkeys(moved.changers)
+        if missed(layout, rows, row)
+    ]
     for number, row in enumerate(moved.generators):
         cases = [c for c, holds in enumerate(moved.holds[number]) if not holds]
         if cases:
@@ -114,16 +127,35 @@ def _source_side(layout: Layout, tables: Tables, row: int, case: int) -> bool:
     return layout.fed_by[other] == row and layout.fed_by[other] != NONE
 
 
-def _stop(
-    drawing: Drawing, layout: Layout, rows: Rows, tables: Tables, row: int, case: int, away: bool
-) -> Finding:
-    element, id = layout.branches[row], layout.branch_ids[row]
+@dataclass(frozen=True, slots=True)
+class _Stop:
+    """A changer at its end stop in a case; `away` where it ran there the wrong way round."""
+
+    row: int
+    case: int
+    away: bool
+    moved: Moved
+    number: int
+
+
+def _unmeasured(drawing: Drawing, layout: Layout, row: int, rows: Rows) -> Finding:
+    id, node = layout.branch_ids[row], layout.node_ids[ends_of(layout, row)[0]]
+    words = (
+        f"{tell(drawing, id)} is to measure phase {missed(layout, rows, row)}, which does not reach "
+        f"{tell(drawing, node)}: it measures the first that does."
+    )
+    return Finding("measured phase", Verdict.ADVICE, (id, node), words)
+
+
+def _stop(drawing: Drawing, layout: Layout, tables: Tables, stop: _Stop) -> Finding:
+    row, case, moved = stop.row, stop.case, stop.moved
+    element, id, phase = layout.branches[row], layout.branch_ids[row], moved.phases[stop.number]
     assert isinstance(element, Transformer | Regulator)
-    notch = int(rows.notches[row][case])
+    notch = int(moved.notch[stop.number, case])
     node = _held_end(layout, tables, row, case)
-    level = float(tables.nodes.column("percent")[node, case])
-    where = f"{plain(notch, 0, sign=True)} ({percent(notch * _step(element), 1, sign=True)})"
-    if away:
+    level = _level(tables, node, case, phase)
+    where = f"{plain(notch, 0, sign=True)} ({percent(notch * _step(element), 1, sign=True)}){_on(phase)}"
+    if stop.away:
         words = (
             f"{tell(drawing, id)} has run away to its end stop {where}{_case(drawing, case)}: it holds "
             f"{tell(drawing, layout.node_ids[node])}, which lies toward its supply, and each step moves "
@@ -136,6 +168,16 @@ def _stop(
         f"{percent(assumed.value(element, 'hold_percent'), 1)}."
     )
     return Finding("end stop", Verdict.ADVICE, (id,), words, case=drawing.cases[case].name)
+
+
+def _level(tables: Tables, node: int, case: int, phase: str) -> float:
+    """Percent of nominal of the phase that is measured; of the lowest where phases are alike or averaged."""
+    wires = tables.wires
+    if wires is None or not phase:
+        return float(tables.nodes.column("percent")[node, case])
+    letter = {"L1": "a", "L2": "b"}.get(phase, phase[0].lower())
+    volts = wires.nodes.column(f"{letter}_v")[node, case]
+    return 100 * float(volts / wires.nodes.column("base_v")[node])
 
 
 def _limited(drawing: Drawing, layout: Layout, tables: Tables, row: int, case: int) -> Finding:

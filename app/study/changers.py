@@ -9,6 +9,7 @@ from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Branch, Generator, Regulator, Transformer
 from app.study.layout import Layout, arrays_of, is_bare
+from app.study.measuring import Measure, measures_of, regulated_side
 from app.study.rows import Rows
 from app.study.zones import Zones
 from solver import Solution, Trouble, grow, solve
@@ -21,22 +22,27 @@ REVERSE = {
     "idle in reverse": controls.Reverse.IDLE,
 }
 Real = NDArray[np.float64]
+Index = NDArray[np.intp]
 
 
 @dataclass(frozen=True, slots=True)
 class Moved:
     """Where what moves by itself came to rest.
 
-    changers : (changer,) branch rows
+    changers : (changer,) branch rows, thrice where each phase steps by itself
     rest : (changer, case) each a controls.Rest
     generators : (generator,) attachment rows
     holds : (generator, case) bool, holds its volts; else it is at a limit of its reactive power
+    notch : (changer, case) int
+    phases : (changer,) the phase that each measures, such as A; blank where phases are alike, or their mean
     """
 
     changers: tuple[int, ...]
     rest: NDArray[np.object_]
     generators: tuple[int, ...]
     holds: NDArray[np.bool_]
+    notch: NDArray[np.intp]
+    phases: tuple[str, ...]
 
 
 def is_changer(branch: Branch) -> bool:
@@ -68,9 +74,10 @@ def settled(
     if isinstance(layout.forest, Trouble) or not moving:
         return rows, solve(network, forest=layout.forest), None
     found = controls.control(network, moving.regulators, moving.holdings)
-    notches = dict(zip(moving.changers, found.notch, strict=True))
-    rows = replace(rows, network=found.solution.network, notches=notches)
-    return rows, found.solution, Moved(moving.changers, found.rest, moving.generators, found.held)
+    notches, by_phase = _notches(moving, found.notch)
+    rows = replace(rows, network=found.solution.network, notches=notches, phase_notches=by_phase)
+    moved = Moved(moving.changers, found.rest, moving.generators, found.held, found.notch, moving.phases)
+    return rows, found.solution, moved
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,18 +85,33 @@ class Moving:
     """What moves by itself, as the solver takes it; false where nothing does.
 
     changers : (changer,) branch rows
+    phases : (changer,) the phase that each measures; blank where phases are alike, or their mean
     regulators : (changer,) each a controls.Regulator
     generators : (generator,) attachment rows
     holdings : (generator,) each a Holding
     """
 
     changers: tuple[int, ...]
+    phases: tuple[str, ...]
     regulators: tuple[controls.Regulator, ...]
     generators: tuple[int, ...]
     holdings: tuple[Holding, ...]
 
     def __bool__(self) -> bool:
         return bool(self.changers or self.generators)
+
+
+def _notches(moving: Moving, found: NDArray[np.intp]) -> tuple[dict[int, Index], dict[int, Real]]:
+    """By branch row: of regulators that step phase by phase the notch furthest from nought, and all three."""
+    notches: dict[int, Index] = {}
+    by_phase: dict[int, Real] = {}
+    for row, own, notch in zip(moving.changers, moving.regulators, found, strict=True):
+        before = notches.get(row, notch)
+        notches[row] = np.where(np.abs(notch) > np.abs(before), notch, before)
+        if own.alone and own.conductor is not None:
+            phases = by_phase.setdefault(row, np.full((3, len(notch)), np.nan))
+            phases[own.conductor] = notch
+    return notches, by_phase
 
 
 def moving_of(layout: Layout, zones: Zones, rows: Rows, fixed: int | None = None) -> Moving:
@@ -103,13 +125,14 @@ def moving_of(layout: Layout, zones: Zones, rows: Rows, fixed: int | None = None
     Returns : Moving
     """
     live = arrays_of(layout).live
-    changers = tuple(
-        int(b) for b in rows.units if b != fixed and is_changer(layout.branches[b]) and live[layout.start[b]]
-    )
+    rowed = [int(b) for b in rows.units if b != fixed and is_changer(layout.branches[b])]
+    measure = measures_of(layout, zones, rows)
+    found = [(b, m) for b in rowed if live[layout.start[b]] for m in measure(b)]
     held = tuple(holders(layout)[0])
     return Moving(
-        changers,
-        tuple(_changer(layout, zones, rows, b) for b in changers),
+        tuple(b for b, _ in found),
+        tuple(m.phase for _, m in found),
+        tuple(_changer(layout, rows, b, m) for b, m in found),
         held,
         tuple(_holding(layout, zones, rows, a) for a in held),
     )
@@ -158,19 +181,11 @@ def _holds(layout: Layout, row: int) -> bool:
     return isinstance(hung, Generator) and hung.hold_percent is not None
 
 
-def _volts(layout: Layout, zones: Zones, rows: Rows, node: int) -> float:
-    """The solver's volts at 1 % of nominal."""
-    return float(zones.nominal_v[layout.zone[node]] / rows.wide[node] / 100)
-
-
-def _changer(layout: Layout, zones: Zones, rows: Rows, branch: int) -> controls.Regulator:
-    """One changer as the solver takes it; ohms of two wires count out and back."""
+def _changer(layout: Layout, rows: Rows, branch: int, measure: Measure) -> controls.Regulator:
+    """One changer as the solver takes it."""
     element = layout.branches[branch]
     assert isinstance(element, Transformer | Regulator)
-    side = 1 if isinstance(element, Transformer) and element.regulates == "winding 1" else 2
-    ends = layout.start[branch], layout.end[branch]
-    unit = [_volts(layout, zones, rows, node) for node in (ends[side - 1], ends[2 - side])]
-    back = 2 if rows.phases[ends[0]] == 1 else 1
+    unit = measure.one_percent
     hold = assumed.value(element, "hold_percent")
     about = (
         (
@@ -192,11 +207,14 @@ def _changer(layout: Layout, zones: Zones, rows: Rows, branch: int) -> controls.
         highest=up,
         setting=hold * unit[0],
         bandwidth=assumed.value(element, "bandwidth_percent") * unit[0],
-        regulated=side,
-        compensation=complex(element.drop_r_ohm or 0.0, element.drop_x_ohm or 0.0) * back,
+        regulated=regulated_side(element),
+        compensation=complex(element.drop_r_ohm or 0.0, element.drop_x_ohm or 0.0) * measure.back,
         reverse=REVERSE[element.mode] if isinstance(element, Regulator) else controls.Reverse.FORWARD,
         reverse_setting=hold * unit[1],
         start=start,
+        conductor=measure.conductor,
+        to=measure.to,
+        alone=measure.alone,
     )
 
 
@@ -205,9 +223,12 @@ def _holding(layout: Layout, zones: Zones, rows: Rows, row: int) -> Holding:
     assert isinstance(element, Generator)
     node = layout.at[row]
     least, most = (assumed.value(element, name) for name in ("q_min_kvar", "q_max_kvar"))
+    leads = rows.conductors.leads[row] if rows.conductors is not None else None
+    over = rows.wide[node] if leads is None else leads.over[0]
     return Holding(
         load=int(np.flatnonzero(rows.loads == row)[0]),
-        setting=(element.hold_percent or 0.0) * _volts(layout, zones, rows, node),
+        setting=(element.hold_percent or 0.0) * float(zones.nominal_v[layout.zone[node]]) / over / 100,
         lowest=min(least, most) * 1e3 / rows.phases[node],
         highest=max(least, most) * 1e3 / rows.phases[node],
+        slots=None if leads is None else tuple(one for one, _ in leads.pairs),
     )

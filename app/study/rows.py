@@ -38,6 +38,7 @@ class Rows:
     phases : (node,) float, 3 in three-phase trees, 1 in two-wire trees
     wide : (node,) float, line volts over the solver's volts: √3 or 1
     notches : branch row of what steps by itself to (case,) int, once it has come to rest
+    phase_notches : the same of regulators that step each phase by itself, to (3, case) float
     conductors : where phases are solved one by one, with k = 4 and volts to earth; powers are then whole
     """
 
@@ -50,6 +51,7 @@ class Rows:
     phases: Real
     wide: Real
     notches: dict[int, NDArray[np.intp]] = field(default_factory=dict)
+    phase_notches: dict[int, Real] = field(default_factory=dict)
     conductors: Conductors | None = None
 
 

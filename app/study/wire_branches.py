@@ -12,12 +12,11 @@ from app.study.memory import Columns
 from app.study.outcome import BranchState, BranchWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
 from app.study.unit_wires import rated_current
-from app.study.wires import ABC, letters, slots
+from app.study.wires import ABC, N, letters, slots
 from solver import Solution
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
-FIRST = np.array([0, 0, 1, 0, 2, 0, 1, 0])  # slot of the first phase of each set of bits
 
 
 def wire_branches(
@@ -87,9 +86,21 @@ def wire_branches(
     wires = {
         "phases": np.array([letters(bits) for bits in _side_bits(layout, rows, onward)], dtype="U4"),
         **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
+        **{
+            f"{letter}_notch": notch
+            for letter, notch in zip("abc", _notches(layout, rows, cases), strict=True)
+        },
     }
     ids, row = tuple(layout.branch_ids), layout.branch_row
     return Table(BranchState, ids, columns, row), Table(BranchWires, ids, wires, row)
+
+
+def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
+    """(3, branch, case) notch of each phase, where each steps by itself."""
+    found = np.full((3, len(layout.branches), cases), np.nan)
+    for row, notches in rows.phase_notches.items():
+        found[:, row] = notches
+    return found
 
 
 def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[int]:
@@ -114,15 +125,20 @@ def _slots(bits: list[int]) -> NDArray[np.bool_]:
 
 
 def _ohms(layout: Layout, rows: Rows) -> Complex:
-    """(branch,) impedance of the first phase of a line, of a transformer seen at winding 2."""
+    """(branch,) impedance of a phase of a line without what it shares with the others, as stated or Z1; of
+    one alone without what it shares with its neutral; of a transformer seen at winding 2."""
     conductors, network = rows.conductors, rows.network
     assert conductors is not None
     found = np.full(len(layout.branches), complex(np.nan, np.nan))
     found[rows.units] = network.transformer_z[:, 0]
     bits = np.array(conductors.branch, dtype=np.intp)[rows.lines] & ABC
-    first = FIRST[bits]
-    own = network.line_z[np.arange(len(first)), first, first, 0]
-    found[rows.lines] = np.where(bits > 0, own, complex(np.nan, np.nan))
+    runs = (bits[:, None] >> np.arange(3) & 1).astype(np.float64)
+    z, count = network.line_z[..., 0], runs.sum(axis=1)
+    phases = z[:, :3, :3] * runs[:, :, None] * runs[:, None, :]
+    own = np.einsum("ijj->i", phases)
+    shared = (phases.sum(axis=(1, 2)) - own) / np.maximum(count - 1, 1)
+    shared = np.where(count == 1, (z[:, :3, N] * runs).sum(axis=1), shared)
+    found[rows.lines] = np.where(count > 0, (own - shared) / np.maximum(count, 1), complex(np.nan, np.nan))
     return found
 
 

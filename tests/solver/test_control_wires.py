@@ -8,9 +8,9 @@ from wired import ABCN, POWER, A, B, Bank, C, Layout, N, Unit, balanced
 from wired_nodal import solution as nodal
 
 from solver import solve
-from solver.control import Regulator, Rest, control
+from solver.control import Regulator, Rest, Reverse, control
 from solver.holding import Holding
-from solver.windings import Winding
+from solver.windings import Winding, passing, stacked
 
 VOLTS, LINE = 11e3 / 3**0.5, 11e3
 STEP = 0.00625
@@ -148,3 +148,34 @@ def test_a_ganged_one_holds_the_phase_it_measures_or_their_mean(conductor):
     assert in_band(volts.mean() if conductor is None else volts[conductor])
     assert not in_band(volts)
     assert found.solution.transformer_in.shape[0] == 1
+
+
+def test_one_row_whose_phases_step_alone_is_three_single_phase_units():
+    """Against three auto-transformers of next to no impedance, each a transformer of its own."""
+    lines = [(0, 1, ABCN, COUPLED), (2, 3, ABCN, COUPLED)]
+    loads = [(3, i, N, (700e3 + 250e3j) * s, VOLTS, POWER) for i, s in ((A, 0.2), (B, 1.0), (C, 2.0))]
+    units = [Bank(1, 2, [((i, N), (i, N), VOLTS, VOLTS, 1e-3j)]) for i in (A, B, C)]
+    apart = control(
+        network(loads, [*lines, (1, 2, (N,), 1e-7)], units),
+        [regulator(transformer=i, conductor=i) for i in range(3)],
+    )
+    star = Winding("Y", True, 0.0)
+    net = network(loads, lines, [Unit(1, 2, star, star, 0, LINE, LINE, Z)])
+    net = replace(net, wires=replace(net.wires, units=stacked([passing([True] * 4)])))
+    net = replace(net, transformer_z=0 * net.transformer_z)
+    together = control(net, [regulator(conductor=i, alone=True) for i in range(3)])
+    assert together.notch.tolist() == apart.notch.tolist()
+    assert len(set(together.notch[:, 0].tolist())) == 3
+    assert in_band(across(together.solution, 2))
+    assert together.solution.voltage[3] == pytest.approx(apart.solution.voltage[3], rel=1e-4)
+    assert together.solution.closure.max() < 1e-11
+
+
+def test_a_phase_that_steps_alone_goes_by_its_own_power():
+    lines = [(0, 1, ABCN, COUPLED), (2, 3, ABCN, COUPLED)]
+    loads = [(3, i, N, s, VOLTS, POWER) for i, s in ((A, 900e3), (B, -300e3), (C, 600e3))]
+    star = Winding("Y", True, 0.0)
+    net = network(loads, lines, [Unit(1, 2, star, star, 0, LINE, LINE, Z)])
+    net = replace(net, wires=replace(net.wires, units=stacked([passing([True] * 4)])))
+    idle = [regulator(conductor=i, alone=True, reverse=Reverse.IDLE) for i in range(3)]
+    assert [r is Rest.IDLE for r in control(net, idle).rest[:, 0]] == [False, True, False]
