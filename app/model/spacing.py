@@ -35,7 +35,7 @@ Diameter = Annotated[float, field("Diameter", "mm", gt=0, le=500, help="Of a pha
 NeutralGmr = Annotated[float, field("GMR of neutral", "mm", gt=0, le=200)] | None
 NeutralDiameter = Annotated[float, field("Neutral diameter", "mm", gt=0, le=500)] | None
 Soil = (
-    Annotated[float, field("Soil", "Ω·m", gt=0, le=1e6, help="Resistivity, for what returns through earth.")]
+    Annotated[float, field("Soil", "Ω·m", ge=1, le=1e5, help="Resistivity, for what returns through earth.")]
     | None
 )
 

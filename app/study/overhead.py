@@ -24,6 +24,8 @@ def matrix_of(run: OverheadLine, frequency: float, nominal_v: float = math.nan) 
 
     Modified Carson between all that hangs; a neutral earthed along is taken out by Kron, one that is carried
     stays in slot N. Y = jω·P⁻¹ of the potential coefficients, or jωC of each phase where C is stated.
+    Good where the conductors hang far lower than the depth of their return in the earth, as on any soil but
+    sea water; ground wires, skin effect and sag are not looked at.
 
     run : states its spacing; its places fill the slots of its phases, those of a lateral on `all` from A on
     frequency : float [Hz]

@@ -302,6 +302,9 @@ def test_unlike_loads_on_a_spaced_line_by_hand(volts, kva):
     for _ in range(300):
         current = np.conj(power / (there[:3] - there[3]))
         there = source - z @ np.array([*current, -current.sum()])
+    z1 = sequence_of(four, 50.0, volts)[0] * four.length_m / 1e3
+    state = outcome.branches.at("O1", 0)
+    assert (state.resistance_ohm, state.reactance_ohm) == pytest.approx((z1.real, z1.imag), rel=1e-9)
     node = outcome.wires.nodes.at("J1", 0)
     assert [node.a_v, node.b_v, node.c_v] == pytest.approx(abs(there[:3] - there[3]), rel=1e-8)
     if volts == 400.0:
