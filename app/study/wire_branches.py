@@ -86,9 +86,21 @@ def wire_branches(
     wires = {
         "phases": np.array([letters(bits) for bits in _side_bits(layout, rows, onward)], dtype="U4"),
         **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
+        **{
+            f"{letter}_notch": notch
+            for letter, notch in zip("abc", _notches(layout, rows, cases), strict=True)
+        },
     }
     ids, row = tuple(layout.branch_ids), layout.branch_row
     return Table(BranchState, ids, columns, row), Table(BranchWires, ids, wires, row)
+
+
+def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
+    """(3, branch, case) notch of each phase, where each steps by itself."""
+    found = np.full((3, len(layout.branches), cases), np.nan)
+    for row, notches in rows.phase_notches.items():
+        found[:, row] = notches
+    return found
 
 
 def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[int]:
