@@ -11,6 +11,7 @@ from app.model.drawing import Case, Drawing, Own
 from app.model.kinds import Capacitor, Element, Generator, Load, Motor, Supply
 
 Scaled = Supply | Load | Motor | Generator | Capacitor
+ONE_OF = ("percent", "demand_kva", "demand_kw")
 SCALED = "a supply, load, motor, generator or capacitor"
 
 
@@ -19,6 +20,8 @@ def percent_of(case: Case, id: str, element: Element) -> float:
     if isinstance(element, Motor) and element.state == "off":
         return 0.0
     own = case.own.get(id)
+    if own is not None and isinstance(element, Load) and states_demand(own):
+        return _share(as_in(case, id, element), element)
     if own is None or own.percent is None:
         return general_percent(case, element)
     starts = isinstance(element, Motor) and element.state == "starting"
@@ -40,11 +43,36 @@ def general_percent(case: Case, element: Element) -> float:
     return 100.0 if not isinstance(element, Capacitor) or element.connected else 0.0
 
 
+def states_demand(own: Own) -> bool:
+    """True where a case states the demand of a load itself, so that no share scales it."""
+    return own.demand_kva is not None or own.demand_kw is not None
+
+
 def as_in(case: Case, id: str, load: Load) -> Load:
-    """A load with the power factor that it has in a case."""
+    """A load with the demand and the power factor that a case states of it, before any share."""
     own = case.own.get(id)
-    factor = own.power_factor if own is not None else None
-    return load if factor is None else replace(load, power_factor=factor)
+    if own is None:
+        return load
+    if own.power_factor is not None:
+        load = replace(load, power_factor=own.power_factor)
+    return replace(load, demand_kva=own.demand_kva, demand_kw=own.demand_kw) if states_demand(own) else load
+
+
+def scale_of(case: Case, id: str, element: Element) -> float:
+    """Share at which an element stands in a case of what it is `as_in` that case, %."""
+    own = case.own.get(id)
+    return 100.0 if own is not None and states_demand(own) else percent_of(case, id, element)
+
+
+def _share(part: Load, whole: Load) -> float:
+    """Demand of a load in percent of another, in the unit of the second; 100 where that is nought."""
+    amount, unit = stated(whole)
+    given = part.demand_kw if unit == "kW" else part.demand_kva
+    if given is None and unit == "kW":
+        given = (part.demand_kva or 0.0) * part.power_factor
+    elif given is None:
+        given = (part.demand_kw or 0.0) / part.power_factor if part.power_factor else 0.0
+    return 100 * given / amount if amount else 100.0
 
 
 def stated(element: Scaled) -> tuple[float, str]:
@@ -76,6 +104,8 @@ def set_own(drawing: Drawing, number: int, id: str, **fields: Any) -> Drawing:
     if id not in drawing.elements:
         raise EditRefused(f"There is no element {shown(id)} in this drawing.")
     case = drawing.cases[number]
+    if any(fields.get(name) is not None for name in ONE_OF):
+        fields = {**dict.fromkeys(ONE_OF), **fields}
     made = replace(case.own.get(id, Own()), **fields)
     words = fault_of_own(drawing.elements, {id: made})
     if words:
@@ -87,7 +117,7 @@ def set_own(drawing: Drawing, number: int, id: str, **fields: Any) -> Drawing:
 
 
 def _says_something(own: Own) -> bool:
-    return own.percent is not None or own.power_factor is not None or bool(own.kept)
+    return own != Own()
 
 
 def fault_of_own(elements: Mapping[str, Element], own: Mapping[str, Own]) -> str | None:
@@ -108,15 +138,20 @@ def _fault_of_one(element: Element, own: Own) -> str | None:
     words = fault_of_fields(own)
     if words:
         return words
-    percent, factor = own.percent, own.power_factor
-    if isinstance(element, Supply) and percent is not None and not 0 < percent <= 200:
-        return f"Share is {percent:g} %, allowed is a number, more than 0 and at most 200 %."
-    if factor is None:
-        return None
-    if not isinstance(element, Load):
+    if isinstance(element, Supply) and own.percent is not None and not 0 < own.percent <= 200:
+        return f"Share is {own.percent:g} %, allowed is a number, more than 0 and at most 200 %."
+    if isinstance(element, Load):
+        return _fault_of_demand(as_in(Case(own={"": own}), "", element), own)
+    if own.power_factor is not None:
         return "has no power factor of its own in a case, allowed is a load."
-    if factor == 0 and element.demand_kw:
-        return f"Power factor is 0 with a demand of {element.demand_kw:g} kW, allowed is more than 0."
+    return "has no demand of its own in a case, allowed is a load." if states_demand(own) else None
+
+
+def _fault_of_demand(load: Load, own: Own) -> str | None:
+    if sum(getattr(own, name) is not None for name in ONE_OF) > 1:
+        return "Share, Demand in kVA and Demand in kW are more than one given, allowed is one of them."
+    if load.power_factor == 0 and load.demand_kw:
+        return f"Power factor is 0 with a demand of {load.demand_kw:g} kW, allowed is more than 0."
     return None
 
 

@@ -2,12 +2,10 @@
 
 import re
 
-from msgspec.structs import replace
-
 from app.model import figures
-from app.model.by_case import Scaled, percent_of, set_own, share_of, stated
+from app.model.by_case import ONE_OF, Scaled, percent_of, set_own, share_of, stated, states_demand
 from app.model.checks import EditRefused, called
-from app.model.drawing import Case, Drawing, label
+from app.model.drawing import Case, Drawing, Own, label
 from app.model.kinds import Capacitor, Load, Motor, Supply
 from app.model.units import UnitError, parse
 
@@ -25,39 +23,35 @@ def set_own_text(drawing: Drawing, number: int, id: str, text: str) -> Drawing:
     try:
         if isinstance(element, Load) and (found := FACTOR.fullmatch(words)):
             words, factor = found[1], parse(found[2], "")
-            element = replace(element, power_factor=factor)
-        percent = _percent(element, words) if words else None
+        said = {**dict.fromkeys(ONE_OF), **(_said(element, words) if words else {})}
     except UnitError as error:
         raise EditRefused(f"{called(id, element)}, in case {drawing.cases[number].name}: {error}") from None
-    return set_own(drawing, number, id, percent=percent, power_factor=factor)
+    return set_own(drawing, number, id, **said, power_factor=factor)
 
 
-def _percent(element: Scaled, words: str) -> float:
-    """The share that was typed, or that an amount makes."""
+def _said(element: Scaled, words: str) -> dict[str, float]:
+    """What was typed: a share, the demand of a load, or the share that an amount of anything else makes."""
     if words.casefold() in SWITCHED and not isinstance(element, Supply):
-        return SWITCHED[words.casefold()]
+        return {"percent": SWITCHED[words.casefold()]}
     if words.endswith("%"):
-        return parse(words, "%")
+        return {"percent": parse(words, "%")}
     whole, unit = stated(element)
-    try:
-        part = parse(words, unit)
-    except UnitError:
-        part = _in_the_other(element, words)
+    if isinstance(element, Load):
+        return _demand(words, unit)
+    part = parse(words, unit)
     if not whole:
         raise UnitError(f"nothing is a share of 0 {unit}, allowed is a percentage.")
-    return share_of(part, whole)
+    return {"percent": share_of(part, whole)}
 
 
-def _in_the_other(element: Scaled, words: str) -> float:
-    """kVA of a demand typed in kW, and the other way."""
-    unit = stated(element)[1]
-    if not isinstance(element, Load):
-        return parse(words, unit)
-    try:
-        other = parse(words, "kW" if unit == "kVA" else "kVA")
-    except UnitError:
-        return parse(words, unit)  # raises, in the words of its own unit
-    return other / element.power_factor if unit == "kVA" else other * element.power_factor
+def _demand(words: str, unit: str) -> dict[str, float]:
+    """A demand in the unit that was typed, which a bare number leaves to the drawing."""
+    for tried in (unit, "kW" if unit == "kVA" else "kVA"):
+        try:
+            return {f"demand_{tried.lower()}": parse(words, tried)}
+        except UnitError:
+            pass
+    return {"percent": parse(words, unit)}  # raises, in the words of the unit that the drawing has
 
 
 def typed_words(case: Case, id: str, element: Scaled) -> str:
@@ -65,17 +59,26 @@ def typed_words(case: Case, id: str, element: Scaled) -> str:
     own = case.own.get(id)
     if own is None:
         return ""
-    words = "" if own.percent is None else amount(case, id, element)
+    words = amount(case, id, element) if own.percent is not None or states_demand(own) else ""
     factor = "" if own.power_factor is None else f"at {figures.stated(own.power_factor)}"
     return f"{words} {factor}".strip()
 
 
 def amount(case: Case, id: str, element: Scaled) -> str:
     """What an element stands at in a case: `5 kVA`, `off`."""
+    own = case.own.get(id)
+    if own is not None and states_demand(own):
+        return _amount_of(own)
     percent, (whole, unit) = percent_of(case, id, element), stated(element)
     if percent == 0 and isinstance(element, Capacitor | Motor | Load):
         return "off"
     return figures.stated(whole * percent / 100, unit)
+
+
+def _amount_of(own: Own) -> str:
+    if own.demand_kva is None:
+        return figures.stated(own.demand_kw or 0.0, "kW")
+    return figures.stated(own.demand_kva, "kVA")
 
 
 def settings(case: Case, drawing: Drawing) -> str:
@@ -98,9 +101,9 @@ def told(case: Case, id: str, element: Scaled) -> str:
     """The same in a sentence: `5 kVA (6.25 %), power factor 0.98`."""
     own = case.own[id]
     parts = []
-    if own.percent is not None:
-        words = amount(case, id, element)
-        parts.append(words if words == "off" else f"{words} ({figures.stated(own.percent, '%')})")
+    if own.percent is not None or states_demand(own):
+        words, percent = amount(case, id, element), percent_of(case, id, element)
+        parts.append(words if words == "off" else f"{words} ({figures.stated(percent, '%')})")
     if own.power_factor is not None:
         parts.append(f"power factor {figures.stated(own.power_factor)}")
     return ", ".join(parts)

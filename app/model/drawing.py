@@ -90,12 +90,14 @@ class Limits(Struct, frozen=True, kw_only=True):
 
 
 class Own(Struct, frozen=True, kw_only=True):
-    """What a case states of one element: a share of what the drawing states of it, and a load's power
-    factor. Blank: as the case has it for all."""
+    """What a case states of one element: a share of what the drawing states of it, or the demand of a load
+    itself; and a load's power factor. Blank: as the case has it for all."""
 
     percent: (
         Annotated[float, field("Share", "%", ge=0, le=1000, help="Of what the drawing states of it.")] | None
     ) = None
+    demand_kva: Annotated[float, field("Demand", "kVA", ge=0, le=1e6)] | None = None
+    demand_kw: Annotated[float, field("Demand", "kW", ge=0, le=1e6)] | None = None
     power_factor: Annotated[float, field("Power factor", "", ge=0, le=1)] | None = None
     kept: dict[str, Any] = held(default_factory=dict)
 

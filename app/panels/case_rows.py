@@ -4,7 +4,7 @@ from collections.abc import Callable, Sequence
 
 from app.canvas.theme import Theme
 from app.model import figures
-from app.model.by_case import Scaled, stated
+from app.model.by_case import Scaled, percent_of, stated, states_demand
 from app.model.case_words import amount, typed_words
 from app.model.drawing import Case
 from app.model.fields import Field
@@ -45,7 +45,8 @@ class CaseRow(FieldRow):
         else:
             self.show_value(texts.pop(), quiet=amounts.pop() if len(amounts) == 1 else VARIOUS)
         own = case.own.get(hung[0][0]) if len(hung) == 1 else None
-        percent = None if own is None else own.percent
+        said = own is not None and (own.percent is not None or states_demand(own))
+        percent = percent_of(case, *hung[0]) if said else None
         whole, unit = stated(hung[0][1])
         of = f"{figures.stated(percent, '%')} of {figures.stated(whole, unit)}" if percent else ""
         self.share.say(of)

@@ -1,6 +1,6 @@
 """The loading cases on the sheet: what each states for all, and of single elements."""
 
-from app.model.by_case import Scaled, stated
+from app.model.by_case import Scaled, percent_of, stated, states_demand
 from app.model.case_words import amount
 from app.model.drawing import Case
 from app.sheet.subject import Subject
@@ -39,11 +39,12 @@ def _own(subject: Subject) -> dict[str, Cells]:
         for id, own in case.own.items():
             element = subject.drawing.elements[id]
             if isinstance(element, Scaled):
+                said = own.percent is not None or states_demand(own)
                 rows[_row(id, number)] = {
                     "item": text(case.name),
                     "of": text(subject.tell(id)),
-                    "stands": text("" if own.percent is None else amount(case, id, element)),
-                    "percent": BLANK if own.percent is None else given(own.percent),
+                    "stands": text(amount(case, id, element) if said else ""),
+                    "percent": given(percent_of(case, id, element)) if said else BLANK,
                     "stated": text(f"{stated(element)[0]:g} {stated(element)[1]}"),
                     "pf": BLANK if own.power_factor is None else given(own.power_factor),
                 }
@@ -70,7 +71,7 @@ def _row(id: str, case: int) -> str:
 def share_ref(subject: Subject, id: str, case: int, general: str) -> Ref:
     """Where the share of an element in a case stands: its own, or that of all; `general` is its column."""
     own = subject.drawing.cases[case].own.get(id)
-    if own is None or own.percent is None:
+    if own is None or own.percent is None and not states_demand(own):
         return Ref(general, "cases", str(case))
     return Ref("percent", OWN, _row(id, case))
 

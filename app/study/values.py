@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import assumed, taps
-from app.model.by_case import as_in, owned, percent_of
+from app.model.by_case import as_in, owned, percent_of, scale_of
 from app.model.conductors import is_hung
 from app.model.drawing import Case
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Supply, Transformer
@@ -203,7 +203,7 @@ def _own_power(element: Demand, id: str, case: Case) -> complex:
     """Power of an element of which a case states something itself."""
     as_it_is = as_in(case, id, element) if isinstance(element, Load) else element
     whole = complex(_whole(columns([_demand_row(as_it_is)], 9))[0])
-    return whole * (percent_of(case, id, element) / 100)
+    return whole * (scale_of(case, id, element) / 100)
 
 
 def scaled_values(demands: Real, nominal_v: Real, cases: Sequence[Case]) -> tuple[Complex, Real, Real]:

@@ -34,7 +34,7 @@ def test_kva_and_a_power_factor_typed_for_one_case_are_one_undo_step_and_said_ba
     assert [row.label.text() for row in rows] == [case.name for case in TWO]
     assert [row.editor.placeholderText() for row in rows] == ["80 kVA", "4.8 kVA"]
     type_into(rows[1], "5 kVA at 0.98")
-    assert set_up.drawing.cases[1].own == {"L2": Own(percent=6.25, power_factor=0.98)}
+    assert set_up.drawing.cases[1].own == {"L2": Own(demand_kva=5.0, power_factor=0.98)}
     assert set_up.session.history.undoText() == "House in case Quiet night, high intake: 5 kVA at 0.98"
     assert rows[1].editor.text() == "5 kVA at 0.98"
     assert rows[1].share.text() == "6.25 % of 80 kVA"
@@ -42,7 +42,7 @@ def test_kva_and_a_power_factor_typed_for_one_case_are_one_undo_step_and_said_ba
     assert set_up.drawing.cases[1].own == {}
     assert rows[1].share.isHidden()
     set_up.session.history.undo()
-    assert set_up.drawing.cases[1].own["L2"].percent == 6.25
+    assert set_up.drawing.cases[1].own["L2"].demand_kva == 5.0
 
 
 def test_what_cannot_be_is_refused_in_place_and_several_loads_are_set_at_once(set_up):

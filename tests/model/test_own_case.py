@@ -6,7 +6,7 @@ import pytest
 from msgspec.structs import replace
 
 from app.model import edits
-from app.model.by_case import share_of
+from app.model.by_case import percent_of, share_of
 from app.model.case_words import typed_words
 from app.model.drawing import Case, Drawing, Own
 from app.model.edits import EditRefused
@@ -53,6 +53,9 @@ def test_it_comes_back_from_the_file_with_keys_of_later_versions_and_stays_out_w
             {"L1": {"percent": -5}},
             "Case 2, L1: Share is -5 %, allowed is a number, at least 0 and at most 1000",
         ),
+        ({"L1": {"percent": 5, "demand_kva": 5}}, "are more than one given, allowed is one of them"),
+        ({"K1": {"demand_kva": 9}}, "K1 (capacitor): has no demand of its own in a case, allowed is a load"),
+        ({"L1": {"demand_kw": 5, "power_factor": 0}}, "Power factor is 0 with a demand of 5 kW"),
         ({"K1": {"power_factor": 0.9}}, "K1 (capacitor): has no power factor of its own in a case"),
         ({"S1": {"percent": 0}}, "S1 (supply): Share is 0 %, allowed is a number, more than 0"),
         ([], "Case 2: own is [], allowed is an object with ids as keys"),
@@ -114,13 +117,12 @@ def test_kva_typed_in_a_case_come_out_as_they_were_typed(part, whole):
 @pytest.mark.parametrize(
     ("id", "text", "own", "reads"),
     [
-        ("L1", "5 kVA", Own(percent=6.25), "5 kVA"),
-        ("L1", " 5 ", Own(percent=6.25), "5 kVA"),
-        ("L1", "5 kVA at 0.98", Own(percent=6.25, power_factor=0.98), "5 kVA at 0.98"),
+        ("L1", "5 kVA", Own(demand_kva=5.0), "5 kVA"),
+        ("L1", " 5 ", Own(demand_kva=5.0), "5 kVA"),
+        ("L1", "5 kVA at 0.98", Own(demand_kva=5.0, power_factor=0.98), "5 kVA at 0.98"),
         ("L1", "at 0.9", Own(power_factor=0.9), "at 0.9"),
-        ("L1", "7.6 kW", Own(percent=10.0), "8 kVA"),
-        ("L1", "4 kW at 0.5", Own(percent=10.0, power_factor=0.5), "8 kVA at 0.5"),
-        ("L1", "12.5 %", Own(percent=12.5), "10 kVA"),
+        ("L1", "7.6 kW", Own(demand_kw=7.6), "7.6 kW"),
+        ("L1", "4 kW at 0.5", Own(demand_kw=4.0, power_factor=0.5), "4 kW at 0.5"),
         ("L1", "off", Own(percent=0.0), "off"),
         ("M1", "off", Own(percent=0.0), "off"),
         ("M1", "on", Own(percent=100.0), "11 kW"),
@@ -138,13 +140,25 @@ def test_what_is_typed_for_one_case_reads_back(id, text, own, reads):
     assert edits.set_own_text(told, 1, id, "") == YARD
 
 
+def test_a_demand_typed_for_one_case_stays_when_the_stated_one_changes_and_a_share_follows_it():
+    told = edits.set_own_text(edits.set_own_text(YARD, 1, "L1", "5 kVA"), 0, "L1", "50 %")
+    told = edits.change(told, "L1", demand_kva=100.0)
+    words = [typed_words(case, "L1", told.elements["L1"]) for case in told.cases]
+    assert words == ["50 kVA", "5 kVA"]
+    assert [percent_of(case, "L1", told.elements["L1"]) for case in told.cases] == [50.0, 5.0]
+    in_kw = edits.change(told, "L1", demand_kw=10.0, power_factor=0.8)
+    assert typed_words(in_kw.cases[1], "L1", in_kw.elements["L1"]) == "5 kVA"
+    assert percent_of(in_kw.cases[1], "L1", in_kw.elements["L1"]) == 40.0
+    assert edits.set_own_text(told, 1, "L1", "10 %").cases[1].own == {"L1": Own(percent=10.0)}
+
+
 @pytest.mark.parametrize(
     ("id", "text", "words"),
     [
         ("L1", "lots", r'House, L1 \(load\), in case Night: "lots" does not begin with a number'),
         ("L1", "5 V", "in case Night: .* is not a"),
         ("L1", "5 at 2", "Power factor is 2, allowed is a number, at least 0 and at most 1, in case Night"),
-        ("L1", "-5", "Share is -6.25 %, allowed is a number, at least 0"),
+        ("L1", "-5", "Demand is -5 kVA, allowed is a number, at least 0"),
         ("S1", "off", 'in case Night: "off" does not begin with a number'),
         ("C1", "5", "has no share of its own"),
     ],

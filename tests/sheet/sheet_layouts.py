@@ -246,5 +246,7 @@ def each_for_itself() -> Drawing:
             )
         if isinstance(one, Load) and not number % 2:
             drawing = edits.set_own(drawing, 1, id, power_factor=0.98)
+    loads = [id for id, one in drawing.attachments().items() if isinstance(one, Load)]
+    drawing = edits.set_own(edits.set_own(drawing, 1, loads[0], demand_kva=3.0), 1, loads[-1], demand_kw=2.0)
     drawing = edits.set_own(drawing, 1, "K8", percent=0.0)
     return edits.set_own(drawing, 1, "K9", percent=50.0)

@@ -20,7 +20,7 @@ def test_the_list_names_case_element_amount_share_and_power_factor():
     values = [cell.value for cell in row.cells]
     assert values[0] == drawing.cases[1].name
     assert "L2" in values[1]
-    assert values[2] == "4.9 kW"  # stated in kW, as this load is
+    assert values[2] == "5 kVA"
     assert values[5] == 0.98
     assert "case_own" not in made(pair(PEAK, NIGHT))
 

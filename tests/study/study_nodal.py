@@ -7,6 +7,7 @@ import cmath
 import math
 
 import numpy as np
+from msgspec.structs import replace
 from scipy.sparse import csc_array
 from scipy.sparse.linalg import splu
 
@@ -176,6 +177,8 @@ class Nodal:
         if isinstance(e, Motor):
             return self.motor_power(e, abs(volts) / (e.rated_v or nominal))
         factor = e.power_factor if own.power_factor is None else own.power_factor
+        if own.demand_kva is not None or own.demand_kw is not None:
+            e, own = replace(e, demand_kva=own.demand_kva, demand_kw=own.demand_kw), Own(percent=100.0)
         kva = e.demand_kva if e.demand_kva is not None else e.demand_kw / factor
         phi = math.acos(factor) * (-1 if e.leading else 1)
         share = self.case.load_percent if own.percent is None else own.percent

@@ -7,6 +7,7 @@ shares nothing with app.study or solver but the classes in which rows are writte
 import math
 
 import numpy as np
+from msgspec.structs import replace
 from wired import EARTH, Bank, CentreTapped, Layout, N, Unit
 from wired_nodal import solution
 
@@ -247,6 +248,8 @@ class Wired:
             power = complex(kw, kw * math.tan(math.acos(hung.power_factor))) * 1e3 * scale
         else:
             factor = hung.power_factor if own.power_factor is None else own.power_factor
+            if own.demand_kva is not None or own.demand_kw is not None:
+                hung, scale = replace(hung, demand_kva=own.demand_kva, demand_kw=own.demand_kw), 1.0
             kva = hung.demand_kva if hung.demand_kva is not None else hung.demand_kw / factor
             power = kva * 1e3 * scale * complex(factor, math.sqrt(1 - factor**2))
         i, z = (
