@@ -21,6 +21,7 @@ BESIDE = (
     "busbars", "cables", "transformers", "loads", "supplies", "switches", "faults", "circuit_ends",
     "devices", "balance", "losses", "findings",
     "regulators", "motors", "starts", "spacing",
+    "year", "year_basis", "year_branches", "year_nodes", "year_attachments",
     "cable_list", "orders", "settings", "open_points", "laterals", "allocation",
 )  # fmt: skip
 

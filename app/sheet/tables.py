@@ -18,12 +18,14 @@ from app.sheet.spacing import spacing_tables
 from app.sheet.subject import Subject
 from app.sheet.table import SheetTable
 from app.sheet.transformers import transformer_tables
+from app.sheet.year import year_tables
 from app.study.outcome import Outcome
 
 PARTS = (
     head_tables, basis_tables, node_tables, line_tables, spacing_tables, transformer_tables,
     regulator_tables, load_tables, motor_tables,
-    source_tables, switch_tables, fault_tables, balance_tables, finding_tables, build_tables, note_tables,
+    source_tables, switch_tables, fault_tables, balance_tables, year_tables,
+    finding_tables, build_tables, note_tables,
 )  # fmt: skip
 BY_PHASE = {  # in their place where phases are solved one by one
     node_tables: phase_node_tables, line_tables: phase_line_tables, transformer_tables: phase_unit_tables,

@@ -81,6 +81,7 @@ class YearBalance:
     worst_closure: float  # of any point, of complex power
     peak_kw: float  # most that all supplies together gave
     peak_at_h: float
+    peak_loss_kw: float  # most that lines and windings lost together
     load_factor: float  # mean over peak of all supplies
     loss_factor: float  # mean over peak of what lines and windings lose: the loss load factor
     utilisation_h: float  # h at peak that would take as much energy

@@ -223,6 +223,7 @@ def _balance(drawing: Drawing, tally: Tally) -> YearBalance:
         worst_closure=tally.closure,
         peak_kw=peak,
         peak_at_h=float(tally.points.begin[at]) if at >= 0 else math.nan,
+        peak_loss_kw=most_series,
         load_factor=_share(supply, peak * hours),
         loss_factor=_share(line + copper, most_series * hours),
         utilisation_h=_share(supply, peak),
