@@ -62,9 +62,9 @@ def volts_of(row: Any, letter: str) -> float:
 
 
 def is_out_and_back(row: Any, has: str) -> bool:
-    """One current out and back, as figures read it: the amperes of the branch say it all."""
+    """One current, out alone or out and back, as figures read it: the amperes of the branch say it all."""
     told = {figures.amps(amps_of(row, letter)) for letter in has}
-    return len(has) == 2 and len(told) == 1
+    return len(has) <= 2 and len(told) == 1
 
 
 def amps_words(row: Any, has: str, system: str) -> str:

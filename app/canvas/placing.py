@@ -12,7 +12,15 @@ CELL = 80.0
 SYMBOL = 8.0  # how much worse it is to cover a symbol or a bar than words or a line
 CLEAR = 3.0  # kept free around everything
 SHARES = (0.5, 0.44, 0.56, 0.36, 0.64, 0.25, 0.75)  # along a line, from its middle outwards
-AWAY = (0.0, -1.9, 26.0, 52.0, 78.0)  # how far off a line its words may go; nearest, as near as is clear
+AWAY = (
+    0.0,
+    -1.9,
+    26.0,
+    52.0,
+    78.0,
+    104.0,
+    130.0,
+)  # how far off a line its words may go; nearest, as near as is clear
 
 
 Edges = tuple[float, float, float, float]  # left, top, right, bottom

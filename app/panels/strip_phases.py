@@ -116,8 +116,9 @@ def paint_phases(
                     painter.drawPolyline(list(stretch.points))
     for curve in curves:
         ink = palette.soft if stale else QColor(getattr(palette, COLOURS[curve.letter]))
+        led = {s.node for s in curve.stretches if s.node in main}  # not where it only starts to one side
         for id, at in curve.nodes.items():
-            if id in main or id in lit:
+            if id in main and led or id in lit:
                 _mark(painter, curve.letter, at, ink, palette.field if id not in lit else ink)
 
 
@@ -150,7 +151,7 @@ def name_phases(
     metrics, ends = QFontMetricsF(painter.font()), []
     for curve in curves:
         on = [id for id in main if id in curve.nodes]
-        if on:
+        if len(on) > 1:
             ends.append((curve.nodes[on[-1]], curve.letter))
     boxes: list[QRectF] = []
     for at, letter in sorted(ends, key=lambda e: (e[0].y(), e[1])):
