@@ -17,6 +17,7 @@ from solver import Solution
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
+NOTCHES = ("a_notch", "b_notch", "c_notch")
 
 
 def wire_branches(
@@ -86,10 +87,7 @@ def wire_branches(
     wires = {
         "phases": np.array([letters(bits) for bits in _side_bits(layout, rows, onward)], dtype="U4"),
         **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
-        **{
-            f"{letter}_notch": notch
-            for letter, notch in zip("abc", _notches(layout, rows, cases), strict=True)
-        },
+        **dict(zip(NOTCHES, _notches(layout, rows, cases), strict=True)),
     }
     ids, row = tuple(layout.branch_ids), layout.branch_row
     return Table(BranchState, ids, columns, row), Table(BranchWires, ids, wires, row)
