@@ -11,10 +11,10 @@ from app.study.year import follows_profiles, run_year
 from app.study.year_outcome import YearOutcome
 from app.study.year_points import when
 
-TAB = "Year"
+TAB = "Year"  # tables on one tab share their widths, so each has its own
 YEAR, BASIS, BRANCHES, NODES, HUNG = "year", "year_basis", "year_branches", "year_nodes", "year_attachments"
 LONG = Column("words", "What the year stands on", style=Style.LONG, width=90)
-WHEN = {"style": Style.TEXT, "width": 22}
+WHEN = {"style": Style.TEXT, "width": 25}
 
 
 def year_tables(subject: Subject) -> list[SheetTable]:
@@ -26,7 +26,7 @@ def year_tables(subject: Subject) -> list[SheetTable]:
     bad = (f.sentence for f in year.findings if f.verdict.rank <= Verdict.ADVICE.rank)
     said = dict.fromkeys((year.sentence, *year.basis, *bad))
     rows = {str(n): {"words": text(words)} for n, words in enumerate(said)}
-    basis = table(BASIS, TAB, "The year: basis, and what fails", (LONG,), rows, held=0)
+    basis = table(BASIS, "Year basis", "The year: basis, and what fails", (LONG,), rows, held=0)
     if not year.solved_h:
         return [basis]
     return [_balance(year), basis, _branches(subject, year), _nodes(subject, year), _hung(subject, year)]
@@ -126,7 +126,7 @@ def _branches(subject: Subject, year: YearOutcome) -> SheetTable:
     )
     note = "Through: energy that entered the way it is fed. Back: that entered the other way."
     rows = {id: _branch(subject, year, id) for id in year.branches.ids}
-    return table(BRANCHES, TAB, "The year: branches", columns, rows, note=note)
+    return table(BRANCHES, "Year branches", "The year: branches", columns, rows, note=note)
 
 
 def _branch(subject: Subject, year: YearOutcome, id: str) -> Cells:
@@ -175,7 +175,7 @@ def _nodes(subject: Subject, year: YearOutcome) -> SheetTable:
         Column("verdict", "Verdict", style=Style.VERDICT, width=11),
     )
     rows = {id: _node(subject, year, id) for id in year.nodes.ids}
-    return table(NODES, TAB, "The year: busbars and joints", columns, rows)
+    return table(NODES, "Year nodes", "The year: busbars and joints", columns, rows)
 
 
 def _node(subject: Subject, year: YearOutcome, id: str) -> Cells:
@@ -187,12 +187,12 @@ def _node(subject: Subject, year: YearOutcome, id: str) -> Cells:
         "nominal": Cell(state.nominal_v),
         "low": Cell(state.lowest_v),
         "low_percent": Cell(state.lowest_percent, "{low}/{nominal}*100"),
-        "low_limit": given(limits.low_percent),
+        "low_limit": given(limits.low_percent, 2),
         "low_when": text(when(state.lowest_at_h, year_h)),
         "below": Cell(state.hours_below),
         "high": Cell(state.highest_v),
         "high_percent": Cell(state.highest_percent, "{high}/{nominal}*100"),
-        "high_limit": given(limits.high_percent),
+        "high_limit": given(limits.high_percent, 2),
         "high_when": text(when(state.highest_at_h, year_h)),
         "above": Cell(state.hours_above),
         "verdict": _verdict(state.hours_below > 0 or state.hours_above > 0, "{below}+{above}>0"),
@@ -212,7 +212,7 @@ def _hung(subject: Subject, year: YearOutcome) -> SheetTable:
     )
     note = "Drawn by loads and motors, fed in by all others. Energy = mean · hours solved."
     rows = {id: _attachment(subject, year.attachments, year, id) for id in year.attachments.ids}
-    return table(HUNG, TAB, "The year: loads and infeeds", columns, rows, note=note)
+    return table(HUNG, "Year loads", "The year: loads and infeeds", columns, rows, note=note)
 
 
 def _attachment(subject: Subject, table: Table[Any], year: YearOutcome, id: str) -> Cells:
