@@ -2,7 +2,7 @@
 
 import math
 
-from app.model.by_case import percent_of
+from app.model.by_case import percent_of, stated
 from app.model.drawing import label
 from app.model.kinds import Attachment, Capacitor, Generator, Load, Supply
 from app.sheet.cases import factor_ref, share_ref
@@ -90,7 +90,8 @@ def _served(subject: Subject, id: str, load: Load, state: AttachmentState, case:
     demand, factor = "{demand}", factor_ref(subject, id, case)
     if factor is not None and load.demand_kva is not None:
         demand, refs = "{demand_kva}*{case_pf}", {**refs, "case_pf": factor}
-    found["kw"] = Cell(state.kw, demand + "*{case_percent}/100*" + share, refs)
+    formula = demand + "*{case_percent}/100*" + share if stated(load)[0] else ""  # no share of nothing
+    found["kw"] = Cell(state.kw, formula, refs)
     return found
 
 

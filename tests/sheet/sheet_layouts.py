@@ -238,6 +238,7 @@ def each_for_itself() -> Drawing:
         "K8": Capacitor(name="Bank", node="B4", rating_kvar=8.0),
         "K9": Capacitor(name="Spare bank", node="B4", rating_kvar=4.0, connected=False),
     }
+    drawing = edits.put(drawing, {"L9": Load(name="Feast", node="B4", demand_kva=0.0)})
     drawing = edits.put(drawing, banks)
     for number, (id, one) in enumerate(drawing.attachments().items()):
         if id not in banks:
@@ -247,6 +248,6 @@ def each_for_itself() -> Drawing:
         if isinstance(one, Load) and not number % 2:
             drawing = edits.set_own(drawing, 1, id, power_factor=0.98)
     loads = [id for id, one in drawing.attachments().items() if isinstance(one, Load)]
-    drawing = edits.set_own(edits.set_own(drawing, 1, loads[0], demand_kva=3.0), 1, loads[-1], demand_kw=2.0)
-    drawing = edits.set_own(drawing, 1, "K8", percent=0.0)
+    drawing = edits.set_own(edits.set_own(drawing, 1, loads[0], demand_kva=3.0), 1, loads[-2], demand_kw=2.0)
+    drawing = edits.set_own(edits.set_own(drawing, 1, "L9", demand_kva=2.5), 1, "K8", percent=0.0)
     return edits.set_own(drawing, 1, "K9", percent=50.0)
