@@ -71,7 +71,7 @@ def _branches(drawing: Drawing, outcome: Outcome, wired: Wired, case: int) -> Wr
         fed = branch.start if outcome.branches.at(id, case).forward else branch.end
         systems[id] = wired.nodes.at(fed, case).system
     title = "Branches, conductor by conductor; of a transformer, of the winding that is fed"
-    return title, *_carried(drawing, shown, systems, worst=True)
+    return title, *_carried(drawing, shown, systems)
 
 
 def _hung(drawing: Drawing, wired: Wired, case: int) -> Written:
@@ -88,9 +88,8 @@ def _carried(
     drawing: Drawing,
     shown: Mapping[str, BranchWires | AttachmentWires],
     systems: dict[str, str],
-    worst: bool = False,
 ) -> tuple[list[Line], int]:
-    """Amperes in each conductor; `worst`: and which carries most."""
+    """Amperes in each conductor; of a branch also which carries most, and where its regulators stand."""
     named = heads_of(systems.values())
     lines = [["id", "name", "conductors", *(f"{named[p]} A" for p in PHASES), "N A"]]
     for id, state in shown.items():
@@ -98,11 +97,17 @@ def _carried(
         has = "".join(letter for letter in state.phases if amps[letter] == amps[letter])
         told = [id, drawing.elements[id].name, conductors(has, systems[id])]
         lines.append([*told, *(_figure(ampere, 1) for ampere in amps.values())])
-        if worst:
-            lines[-1].append(conductor(worst_of(amps), systems[id]))
-    if worst:
-        lines[0].append("most in")
+        if isinstance(state, BranchWires):
+            lines[-1] += [conductor(worst_of(amps), systems[id]), _notches(state)]
+    if isinstance(next(iter(shown.values()), None), BranchWires):
+        lines[0] += ["most in", "notch of each"]
     return _filled(lines, 3)
+
+
+def _notches(state: BranchWires) -> str:
+    """`+16 +1 −1` of a regulator that steps each phase by itself."""
+    every = (state.a_notch, state.b_notch, state.c_notch)
+    return " ".join(plain(notch, 0, sign=True) for notch in every if notch == notch)
 
 
 def _figure(value: float, digits: int) -> str:

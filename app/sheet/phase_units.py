@@ -15,6 +15,7 @@ from app.sheet.transformers import DATA, EXTREMES, FIGURES, KEY, data_cells
 from app.sheet.wires import amps, each, node_wires, redone, spread, volts
 from app.study.changers import is_changer
 from app.study.outcome import BranchState, Verdict
+from app.study.wire_words import conductors
 
 WIRES = (
     Column("build", "Build", style=Style.TEXT, width=13),
@@ -54,7 +55,7 @@ def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
     states = [subject.state(id, c) for c in range(len(subject.cases))]
     data = data_cells(subject, id, t) | {
         "build": given(t.build),
-        "phases": given(t.phases),
+        "phases": _winding_1(subject, id, t, states[0]),
         "star_1": text(earthing_words(t, 1)),
         "star_2": text(earthing_words(t, 2)),
     }
@@ -63,6 +64,14 @@ def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
         subject, any(s.live for s in states), True, Verdict.ADVICE.value if beyond else HOLDS
     )
     return Entry(id, data, [_figures(subject, id, t, s, c) for c, s in enumerate(states)], judge)
+
+
+def _winding_1(subject: Subject, id: str, t: Transformer, state: BranchState) -> Cell:
+    """Where winding 1 is joined: as stated, else the conductors that it turns out to be fed from."""
+    if t.phases != "all" or not state.live or not state.forward:
+        return given(t.phases)
+    has = "".join(amps(branch_wires(subject, id, 0)))
+    return text(conductors(has, node_wires(subject, t.start).system))
 
 
 def earthing_words(t: Transformer, winding: int) -> str:

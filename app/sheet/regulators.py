@@ -1,10 +1,13 @@
 """Regulators, and the transformers whose tap changer steps by itself: what is set and where each stands."""
 
-from app.model.kinds import Regulator, Transformer
+from collections.abc import Iterable
+
+from app.model.kinds import Branch, Regulator, Transformer
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import volts_cell
 from app.sheet.subject import FROM_TO, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given
+from app.sheet.wires import each, notches, spread
 from app.study.changers import is_changer
 from app.study.outcome import BranchState
 
@@ -18,14 +21,24 @@ NOTE = (
     "Notches count from the middle; one up raises the winding or the end whose taps it has. R and X are of "
     "the line to the place whose volts are held. Each steps notch by notch until its volts are in its band."
 )
+BY_PHASE = (
+    " U is of the lowest phase, as between lines; I of the worst. Where each phase steps by itself, all are "
+    "told, and the one that is furthest from the middle."
+)
 
 
 def regulator_tables(subject: Subject) -> list[SheetTable]:
     """Everything that steps by itself."""
     found = {i: e for i, e in subject.drawing.branches().items() if is_changer(e)}
+    by_phase = subject.outcome.wires is not None
+    measures = (Column("measures", "Measures", style=Style.TEXT, width=9),) if by_phase else ()
+    own = (
+        each(subject, Column("notch", "Stands at", "notch", digits=0), False) if _each(found.values()) else ()
+    )
     data = (
         *FROM_TO,
         Column("holds", "Holds", style=Style.TEXT, width=22),
+        *measures,
         Column("hold", "Setting", "% of nominal", digits=1, width=10),
         Column("band", "Bandwidth", "% of nominal", digits=2, width=10),
         Column("r", "R", "Ω", digits=3),
@@ -35,6 +48,7 @@ def regulator_tables(subject: Subject) -> list[SheetTable]:
         Column("up", "Up", "notches", digits=0),
     )
     figures = (
+        *own,
         Column("notch", "Stands at", "notch", digits=0),
         Column("percent", "Stands at", "%", digits=2),
         Column("u1", "U, from", "V", style=Style.VOLTS, width=10),
@@ -46,7 +60,7 @@ def regulator_tables(subject: Subject) -> list[SheetTable]:
         Extreme("low", "notch", False, "Lowest notch"),
         Extreme("high", "notch", True, "Highest notch"),
     )
-    note = NOTE if subject.outcome.wires is None else NOTE + " U is of the lowest phase, as between lines."
+    note = NOTE + BY_PHASE if by_phase else NOTE
     plan = Plan(KEY, "Regulators", "Regulators and tap changers", data, figures, extremes, (), note)
     return by_element(subject, plan, [_entry(subject, i, e) for i, e in found.items()])  # type: ignore[arg-type]
 
@@ -60,6 +74,7 @@ def _entry(subject: Subject, id: str, changer: Transformer | Regulator) -> Entry
             "holds": given(changer.regulates)
             if isinstance(changer, Transformer)
             else given(MODES[changer.mode]),
+            "measures": given(changer.measures),
             "hold": subject.value(id, "hold_percent"),
             "band": subject.value(id, "bandwidth_percent"),
             "r": given(changer.drop_r_ohm or 0.0),
@@ -70,8 +85,13 @@ def _entry(subject: Subject, id: str, changer: Transformer | Regulator) -> Entry
         }
     )
     states = [subject.state(id, c) for c in range(len(subject.cases))]
-    figures = [_figures(subject, changer, s, c) for c, s in enumerate(states)]
+    figures = [_figures(subject, id, changer, s, c) for c, s in enumerate(states)]
     return Entry(id, data, figures, lambda worst: {})
+
+
+def _each(changers: Iterable[Branch]) -> bool:
+    """Whether any steps phase by phase."""
+    return any(getattr(changer, "measures", "") == "each" for changer in changers)
 
 
 def _ladder(changer: Transformer | Regulator) -> tuple[float, int, int]:
@@ -81,12 +101,17 @@ def _ladder(changer: Transformer | Regulator) -> tuple[float, int, int]:
     return changer.step_percent, changer.steps_down, changer.steps_up
 
 
-def _figures(subject: Subject, changer: Transformer | Regulator, state: BranchState, case: int) -> Cells:
+def _figures(
+    subject: Subject, id: str, changer: Transformer | Regulator, state: BranchState, case: int
+) -> Cells:
     if not state.live:
         return {}
     step, down, up = _ladder(changer)
     at_end = state.notch in (-down, up)
-    return {
+    found: Cells = {}
+    if subject.outcome.wires is not None:
+        found = spread("notch", notches(subject.outcome.wires.branches.at(id, case)))
+    return found | {
         "notch": Cell(state.notch),
         "percent": Cell(state.notch * step, "{notch}*{step}"),
         "u1": volts_cell(subject, changer.start, case),

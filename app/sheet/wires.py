@@ -38,6 +38,12 @@ def amps(state: BranchWires | AttachmentWires) -> dict[str, float]:
     return {letter: ampere for letter, ampere in every.items() if ampere == ampere}
 
 
+def notches(state: BranchWires) -> dict[str, float]:
+    """Where a regulator stands that steps each phase by itself."""
+    every = {"A": state.a_notch, "B": state.b_notch, "C": state.c_notch}
+    return {letter: notch for letter, notch in every.items() if notch == notch}
+
+
 def names(subject: Subject) -> dict[str, str]:
     """Every phase that is drawn anywhere: A, B, C; L1 and L2 behind a centre tap, `A, L1` where both are."""
     assert subject.outcome.wires is not None

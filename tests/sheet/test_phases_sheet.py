@@ -10,7 +10,7 @@ import pytest
 from wired_layouts import EVENING, MORNING, camp, units
 
 from app.model.drawing import Drawing
-from app.model.kinds import Joint
+from app.model.kinds import Busbar, Joint, Load, Regulator
 from app.printed import printed
 from app.sheet import write
 from app.study import run
@@ -116,6 +116,18 @@ def test_units_of_few_phases_are_told_as_what_they_are(tmp_path: Path) -> None:
     kiln = told["allocation"]["Kiln (L4)"]
     shares = [float(kiln[f"P on {name} [kW]"]) / 19.0 for name in ("A, L1", "B, L2", "C")]
     assert shares == pytest.approx([(0.5 + 0.2) / 2, (0.5 + 0.3) / 2, (0.3 + 0.2) / 2])
+
+
+def test_a_regulator_of_three_tells_where_each_stands(tmp_path: Path) -> None:
+    drawing = camp(
+        V1=Regulator(start="B3", end="B4", measures="each"), B4=Busbar(), L7=Load(node="B4", phases="A"),
+    )  # fmt: skip
+    outcome, row = run(drawing), files(drawing, tmp_path)["regulators"]["V1"]
+    wires = outcome.wires.branches.at("V1")
+    notches = [wires.a_notch, wires.b_notch, wires.c_notch]
+    assert [float(row[f"Stands at {p} [notch]"]) for p in "ABC"] == notches
+    assert len(set(notches)) > 1
+    assert " ".join(f"{n:+.0f}".replace("-", "\N{MINUS SIGN}") for n in notches) in printed(drawing, outcome)
 
 
 def test_text_tells_every_conductor(solved: Outcome) -> None:
