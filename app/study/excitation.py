@@ -1,6 +1,7 @@
 """Transformers whose core is driven beyond what is advised for continuous running."""
 
 import numpy as np
+from numpy.typing import NDArray
 
 from app.model import taps
 from app.model.drawing import Drawing
@@ -29,7 +30,7 @@ def excitation_findings(
 
     drawing : the drawing, for names
     layout : its graph
-    nodes : table, voltage_v (node, case) [V]
+    nodes : table, voltage_v (node, case) and nominal_v (node,) [V]
     branches : table, loaded_percent (branch, case) [%]
     cases : names of the cases
 
@@ -41,8 +42,11 @@ def excitation_findings(
         return []
     forward = branches.column("forward")
     rated = np.array([_rated(layout, row, branches) for row in rows])
-    graph, level = arrays_of(layout), nodes.column("voltage_v")
-    first, second = (level[at[rows]] / rated[..., n] for n, at in enumerate((graph.start, graph.end)))
+    graph, level, nominal = arrays_of(layout), nodes.column("voltage_v"), nodes.column("nominal_v")
+    first, second = (
+        level[at[rows]] / (rated[..., n] * _over(layout, n, nominal[at[rows]])[:, None])
+        for n, at in enumerate((graph.start, graph.end))
+    )
     driven = 100 * np.where(forward.reshape(len(forward), -1)[rows], first, second)
     idle = branches.column("loaded_percent")[rows] < IDLE
     ids = tuple(branches.ids[row] for row in rows)
@@ -57,6 +61,20 @@ def excitation_findings(
         check = Check("over-excitation", ids, value, limit, False, 0.0, subject, RULE)
         found += [f for f in findings_of(check, WHOSE, cases, Verdict.ADVICE) if f.verdict is Verdict.ADVICE]
     return found
+
+
+def _over(layout: Layout, winding: int, nominal: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Volts of its node for one volt across a winding: √3 where a single-phase unit stands at a phase, 2 at
+    half of a split phase."""
+    made = np.ones(len(layout.units))
+    for k, row in enumerate(layout.units):
+        unit = layout.branches[row]
+        assert isinstance(unit, Transformer)
+        single = unit.build == "centre-tapped" or unit.vector_group[:1] == "I"
+        rated = unit.v1_v if winding == 0 else unit.v2_v
+        if single and nominal[k] > 0:
+            made[k] = min((1.0, 3**0.5, 2.0), key=lambda over: abs(np.log(nominal[k] / rated / over)))
+    return made
 
 
 def _rated(layout: Layout, row: int, branches: Table[BranchState]) -> list[tuple[float, float]]:
