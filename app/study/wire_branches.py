@@ -55,10 +55,7 @@ def wire_branches(
     amps = np.where(is_unit[:, None], fed, np.maximum(at_start, at_end))
     has = _has(layout, rows, onward)
     shown = np.where(has, amps, np.nan)
-    start_a, end_a = (
-        np.where(s.any(axis=1), np.where(s, a, 0.0).max(axis=1), np.nan)
-        for s, a in ((has, at_start), (has, at_end))
-    )
+    start_a, end_a = _most(has, at_start), _most(has, at_end)
     ohms = _ohms(layout, rows)
     entering = through_of(onward, start_s, end_s)
     known = ~np.isnan(start_s)
@@ -91,6 +88,11 @@ def wire_branches(
     }
     ids, row = tuple(layout.branch_ids), layout.branch_row
     return Table(BranchState, ids, columns, row), Table(BranchWires, ids, wires, row)
+
+
+def _most(has: NDArray[np.bool_], amps: Real) -> Real:
+    """(branch, case) the most of the conductors that each has."""
+    return np.where(has.any(axis=1), np.where(has, amps, 0.0).max(axis=1), np.nan)
 
 
 def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
