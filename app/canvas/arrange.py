@@ -8,6 +8,7 @@ from app.canvas import gauge
 from app.canvas.attachment_item import AttachmentItem
 from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem
+from app.canvas.geometry import distance
 from app.canvas.lettering import LEFT, RIGHT
 from app.canvas.node_item import NodeItem
 from app.canvas.placing import SYMBOL, Homes, Spot, Taken, around, beside, strips
@@ -96,6 +97,18 @@ def nearest_of(core: QRectF, words: QRectF) -> QPointF:
     return QPointF(
         min(max(middle.x(), core.left()), core.right()), min(max(middle.y(), core.top()), core.bottom())
     )
+
+
+def nearest_on(item: ElementItem, words: QRectF) -> QPointF:
+    """The point of a branch's route that is nearest to the middle of its words."""
+    assert isinstance(item, BranchItem)
+    middle, spots = words.center(), []
+    for a, b in zip(item.points, item.points[1:], strict=False):
+        run = b - a
+        size = QPointF.dotProduct(run, run)
+        share = QPointF.dotProduct(middle - a, run) / size if size else 0.0
+        spots.append(a + run * min(max(share, 0.0), 1.0))
+    return min(spots, key=lambda spot: distance(spot, middle))
 
 
 def _half(item: BranchItem) -> float:

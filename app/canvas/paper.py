@@ -252,6 +252,8 @@ class Paper(QGraphicsScene):
             if isinstance(words, NodeFigures):
                 home = arrange.nearest_of(self.items_by_id[id].core(), words.spot.box)
                 words.lead_to(home, always=not homes.nearest_is(id, words.spot.box))
+            elif isinstance(words, Tag):
+                words.lead_to(arrange.nearest_on(self.items_by_id[id], words.spot.box))
         self._make_room()
 
     def widen(self, ids: Iterable[str]) -> None:

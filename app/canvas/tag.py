@@ -16,7 +16,6 @@ ROUNDING = 12.0  # sizes grow in steps, so that a changing figure does not make 
 SMALLEST_ZOOM = 0.45  # below it words are too small to read
 FAR_ZOOM = 0.7  # what is still written there is written as large as at this zoom
 FARTHEST = 2.5
-LEAD_FROM = 22.0  # px between words and what they belong to
 
 
 class Caption(QGraphicsItem):
@@ -25,6 +24,7 @@ class Caption(QGraphicsItem):
     PAD = QSizeF(2, 1)
     USUAL: tuple[Line, ...] = ()
     USUAL_CHANGE: Line = (Run("▼ 00 W", Style.CHANGE),)
+    LEAD_FROM = 22.0  # px between words and what they belong to
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__()
@@ -125,7 +125,7 @@ class Caption(QGraphicsItem):
             min(max(point.x(), box.left()), box.right()), min(max(point.y(), box.top()), box.bottom())
         )
         line = QLineF(near, point)
-        lead = line if always or line.length() > LEAD_FROM else None
+        lead = line if always or line.length() > self.LEAD_FROM else None
         if lead != self.lead:
             self.prepareGeometryChange()
             self.lead = lead
@@ -213,6 +213,7 @@ class Tag(Caption):
 
     PAD = QSizeF(8, 3)
     USUAL = ((Run("100.0 kW → 50.0 %"),), (Run("0.10 kW lost", Style.QUIET),))
+    LEAD_FROM = 70.0  # its line is broad and near words seldom seem another's
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__(id, look)
