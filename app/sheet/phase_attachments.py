@@ -14,7 +14,7 @@ from app.study.wire_words import conductors
 
 ON = Column("on", "On", style=Style.TEXT, width=8)
 CONNECTION = Column("connection", "Joined", style=Style.TEXT, width=9)
-NOTE = " U is of the lowest lead, of several phases to the neutral as between lines; I, most is the worst lead."
+NOTE = " U is of the lowest lead, of several phases to the neutral as between lines; I, most: worst lead."
 
 
 def hung_tables(subject: Subject, plan: Plan, entries: Sequence[Entry]) -> list[SheetTable]:
