@@ -3,6 +3,7 @@
 import json
 import math
 from dataclasses import fields
+from pathlib import Path
 
 import msgspec
 import numpy as np
@@ -381,3 +382,32 @@ def test_extremes_do_not_hang_on_the_blocks(monkeypatch):
         for column, values in getattr(whole, name).columns.items():
             got = getattr(parted, name).column(column)
             np.testing.assert_allclose(got, values, rtol=1e-9, atol=1e-6, err_msg=column)
+
+
+SAMPLES = Path(__file__).parents[2] / "samples"
+
+
+def test_the_estate_is_decided_by_its_load_factor():
+    """No-load losses run all year: two cables lose less at 0.15, the pair at 0.45; they cross near 0.30."""
+    pair, cable = load(SAMPLES / "fernhollow_year.farend"), load(SAMPLES / "fernhollow.farend")
+    for id in ("C1", "C2"):
+        cable = edits.change(cable, id, side_by_side=2)
+    more = {}
+    for factor in (0.15, 0.30, 0.45):
+        home = shape("household", factor)
+        lost = [
+            run_year(
+                edits.set_year(edits.put_profile(d, "household", home), load_profile="household")
+            ).balance
+            for d in (cable, pair)
+        ]
+        more[factor] = lost[0].loss_kwh / lost[1].loss_kwh
+        assert lost[0].iron_kwh == 0
+        assert lost[1].iron_kwh == pytest.approx(2840, abs=20)
+    assert more[0.15] < 0.65
+    assert more[0.30] == pytest.approx(1.0, abs=0.05)
+    assert more[0.45] > 1.3
+    year = run_year(pair)
+    assert year.balance.load_factor == pytest.approx(0.30, abs=2e-4)
+    assert year.balance.iron_percent == pytest.approx(65.6, abs=0.1)
+    assert not [f for f in year.findings if f.verdict is Verdict.FAILS]
