@@ -99,7 +99,7 @@ def units(*cases: Case) -> Drawing:
         "M1": Motor(name="Saw", node="B4", rated_kw=15.0),
         "L4": Load(
             name="Kiln", node="B4", demand_kva=20.0, connection="delta", share_a_percent=50.0,
-            share_b_percent=30.0, constant_impedance_percent=100.0,
+            share_b_percent=30.0,
         ),
         "K1": Capacitor(node="B4", rating_kvar=5.0, connection="delta"),
         "L5": Load(name="Pump", node="B4", demand_kva=4.0, phases="BC"),
