@@ -4,6 +4,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from app.model import edits
+from app.model.by_case import fault_of_own
 from app.model.checks import fault, misfit
 from app.model.drawing import Drawing
 from app.model.edits import EditRefused
@@ -42,6 +43,8 @@ def an_edit(draw, drawing: Drawing):
         {**fields_of(type(drawing.elements[one])), "x": None} if one in drawing.elements else {"name": None}
     )
     field = draw(st.sampled_from(sorted(fields)))
+    said = draw(st.sampled_from(["percent", "demand_kva", "demand_kw", "power_factor"]))
+    said_factor = draw(shares)
     return draw(
         st.sampled_from(
             [
@@ -65,6 +68,10 @@ def an_edit(draw, drawing: Drawing):
                 lambda d: edits.turn_bar(d, one),
                 lambda d: edits.change(d, one, **{field: draw(odd)}),
                 lambda d: edits.change_text(d, one, field, str(y)),
+                lambda d: edits.set_own(d, 0, one, **{said: draw(odd)}),
+                lambda d: edits.set_own(d, 0, one, percent=40.0),
+                lambda d: edits.set_own_text(d, 0, one, f"{y} kVA at {said_factor}"),
+                lambda d: edits.set_case(d, 1, d.cases[0], name=other),
             ]
         )
     )
@@ -90,5 +97,6 @@ def test_any_sequence_of_edits_keeps_the_drawing_whole(data):
     for id, element in drawing.elements.items():
         assert fault(id, element) is None
         assert misfit(drawing.elements, id, element) is None
+    assert all(fault_of_own(drawing.elements, case.own) is None for case in drawing.cases)
     assert decode(encode(drawing)) == drawing
     assert encode(decode(encode(drawing))) == encode(drawing)
