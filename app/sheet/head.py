@@ -8,6 +8,7 @@ from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, give
 from app.study.cautions import CAUTIONS
 from app.study.fault_basis import BASIS as BASIS_OF_FAULTS
 from app.study.outcome import Verdict
+from app.study.phase_basis import BASIS as BASIS_OF_PHASES
 from app.version import version
 from solver.line import ALPHA
 
@@ -163,7 +164,8 @@ RULES = (
 
 
 def _rules(subject: Subject) -> SheetTable:
-    told = RULES if subject.outcome.faults is None else RULES + BASIS_OF_FAULTS
+    phases = () if subject.outcome.wires is None else BASIS_OF_PHASES
+    told = RULES + phases + (() if subject.outcome.faults is None else BASIS_OF_FAULTS)
     rows = {item: {"item": text(item), "value": text(words)} for item, words in told}
     return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
 
