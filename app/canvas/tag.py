@@ -213,7 +213,7 @@ class Tag(Caption):
 
     PAD = QSizeF(8, 3)
     USUAL = ((Run("100.0 kW → 50.0 %"),), (Run("0.10 kW lost", Style.QUIET),))
-    LEAD_FROM = 70.0  # its line is broad and near words seldom seem another's
+    LEAD_FROM = 95.0  # its line is broad, and nearer by only its own name stands between
 
     def __init__(self, id: str, look: Look) -> None:
         super().__init__(id, look)

@@ -26,7 +26,8 @@ from app.panels.style import play
 from app.panels.summary import summary_rows
 from app.panels.verdict_lines import VerdictLines
 from app.panels.wire_rows import reach
-from app.panels.words import Rule
+from app.panels.wire_working import working
+from app.panels.words import Rule, Sentence
 
 WIDTH = 320
 LOADING_TIP = "Loading is by current against rated current, of the winding nearer to it."
@@ -66,6 +67,7 @@ class Card(QScrollArea):
         self.head = CardHead()
         self.project = ProjectPage(self._session, self._attention, self._theme)
         self.now = NowTable(self._theme)
+        self.working = Sentence("quiet")
         self.lines = VerdictLines(self._theme)
         self._rules = (Rule(), Rule(), Rule())
         content = QWidget()
@@ -78,6 +80,7 @@ class Card(QScrollArea):
             self.project,
             self._rules[0],
             self.now,
+            self.working,
             self._rules[1],
             self.lines,
             self._rules[2],
@@ -211,6 +214,7 @@ class Card(QScrollArea):
         self._show_tap()
         if outcome is None:
             self.now.show_rows([], (), 0, self._solving.stale)
+            self.working.say("")
             self.lines.show_findings([])
         else:
             case = min(self._attention.case, len(outcome.cases) - 1)
@@ -218,6 +222,7 @@ class Card(QScrollArea):
             made = rows(asked, self._ids[0]) if len(self._ids) == 1 else summary_rows(asked, self._ids)
             self.now.show_rows(made, outcome.cases, case, self._solving.stale)
             one = drawing.elements.get(self._ids[0]) if len(self._ids) == 1 else None
+            self.working.say(working(drawing, outcome, self._ids[0], case) if one is not None else "")
             self.now.setToolTip(LOADING_TIP if isinstance(one, Transformer) else "")
             told = self._solving.problem or outcome
             self.lines.show_findings(findings_about(told, self._ids) if self._ids else [])

@@ -73,7 +73,7 @@ def evenness(asked: Asked, id: str) -> list[Row]:
     if state is None:
         return []
     rows: tuple[tuple[str, str, Write, tuple[str, ...]], ...] = (
-        ("Unbalance V2/V1", "unbalance_percent", partial(percent, digits=2), UNBALANCE),
+        ("Unbalance", "unbalance_percent", partial(percent, digits=2), UNBALANCE),
         ("Off the mean", "spread_percent", partial(percent, digits=2), ()),
         ("Neutral to earth", "neutral_v", volts, NEUTRAL),
     )

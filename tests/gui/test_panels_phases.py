@@ -122,7 +122,7 @@ def test_a_node_tells_every_phase_how_even_they_are_and_its_neutral(at):
         assert shown(at, f"{letter.upper()} to neutral") == volts(getattr(state, f"{letter}_v"))
     assert shown(at, "Lowest") == percent(node.percent, 2)
     assert shown(at, "Highest") == percent(node.high_percent, 2)
-    assert shown(at, "Unbalance V2/V1") == percent(state.unbalance_percent, 2)
+    assert shown(at, "Unbalance") == percent(state.unbalance_percent, 2)
     assert shown(at, "Neutral to earth") == volts(state.neutral_v)
     assert shown(at, "Volts") == ""
 
@@ -130,7 +130,7 @@ def test_a_node_tells_every_phase_how_even_they_are_and_its_neutral(at):
 def test_a_single_phase_node_has_one_line_of_volts(at):
     at.attention.select(("N2",))
     assert shown(at, "A to neutral")
-    assert shown(at, "B to neutral") == shown(at, "Highest") == shown(at, "Unbalance V2/V1") == ""
+    assert shown(at, "B to neutral") == shown(at, "Highest") == shown(at, "Unbalance") == ""
 
 
 def test_a_branch_and_a_load_tell_the_amperes_of_each_conductor(at):
@@ -150,6 +150,20 @@ def test_the_change_of_each_phase_is_told_while_a_tap_is_dragged(at):
     made = rows(Asked(at.drawing, at.solving.outcome, before, 0), "LODGE")
     moved = {r.label: r.change for r in made}
     assert moved["A to neutral"].startswith("▲")
+
+
+def test_the_working_can_be_done_again_by_hand(at):
+    at.attention.select(("N2",))
+    said = at.card.working.text()
+    state = at.solving.outcome.wires.nodes.at("N2")
+    assert said.startswith(f"A: {volts(state.a_v)} ÷ 120.1 V = ")
+    assert "208.0 V ÷ √3" in said
+    assert "Unbalance" not in said
+    at.attention.select(("C1",))
+    worst = at.solving.outcome.wires.branches.at("C1").a_a
+    assert at.card.working.text().startswith(f"Loading: {amps(worst)} in A ÷ 180 A = ")
+    at.attention.select(("LODGE",))
+    assert "NEMA MG 1" in at.card.working.text()
 
 
 def test_hot_wires_are_called_l1_and_l2(qtbot):
