@@ -1,20 +1,17 @@
 """The results as text: aligned tables with units in their heads, findings, assumptions, cautions."""
 
-import math
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
 from app.model.case_words import settings
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
-from app.model.figures import amps, plain, typed
+from app.model.figures import plain, typed
 from app.model.kinds import KIND_WORDS, Branch, Regulator, Transformer, kind_of
+from app.printed_faults import fault_lines, fault_notes
 from app.printed_wires import wire_tables
 from app.sheet.table import short_digits
 from app.study.cautions import CAUTIONS
-from app.study.fault_basis import BASIS
-from app.study.fault_devices import devices
-from app.study.layout import lay_out
 from app.study.outcome import Assumption, Finding, Outcome, Table
 from app.study.words import tell
 from solver.status import Status
@@ -151,38 +148,12 @@ def aligned(lines: Sequence[Sequence[str]], figures: int) -> str:
     return "\n".join(f"  {row}".rstrip() for row in rows)
 
 
-TO_NEUTRAL = "phase-N max kA"
-FAULT_COLUMNS: tuple[Column, ...] = (
-    ("Ik3 max kA", figure("ik3_max_ka", 2)),
-    ("peak kA", figure("ip_ka", 2)),
-    ("X/R", figure("xr", 2)),
-    ("Ik2 max kA", figure("ik2_max_ka", 2)),
-    (TO_NEUTRAL, figure("ikn_max_ka", 2)),
-    ("Ik1 max kA", figure("ik1_max_ka", 2)),
-    ("Ik2 min kA", figure("ik2_min_ka", 2)),
-    ("Ik1 min kA", figure("ik1_min_ka", 2)),
-    ("Zs ohm", figure("zs_ohm", 3)),
-)
-
-
 def _faults(drawing: Drawing, outcome: Outcome) -> list[str]:
-    """Prospective fault currents, which know no case, the devices that clear them, and the basis."""
-    states = outcome.faults
-    if states is None:
+    """Prospective fault currents, which know no case."""
+    if outcome.faults is None:
         return []
-    told = [
-        f"  {tell(drawing, d.line)} trips at {amps(d.trip_a)}: "
-        + (f"not judged, because {d.why}" if d.why else f"{amps(d.current_a)} at {tell(drawing, d.node)}, margin {amps(d.current_a - d.trip_a)}")
-        for d in devices(lay_out(drawing), states)
-    ]
-    lateral = not all(math.isnan(value) for value in states.column("ikn_max_ka"))
-    columns = [c for c in FAULT_COLUMNS if lateral or c[0] != TO_NEUTRAL]
-    head = "Devices, least earth-fault current against what trips them in 5 s"
-    return [
-        _table(drawing, "Fault currents", states, columns, 0),
-        "\n".join([head, *told]) if told else "",
-        "\n".join(f"  {item}: {words}" for item, words in BASIS),
-    ]
+    lines, figures = fault_lines(drawing, outcome)
+    return [f"Fault currents\n{aligned(_without_empty(lines), figures)}", *fault_notes(drawing, outcome)]
 
 
 def _starts(drawing: Drawing, outcome: Outcome, case: int) -> str:

@@ -2,7 +2,7 @@
 
 from typing import Annotated
 
-from app.model.fields import field
+from app.model.fields import field, plain
 
 Trip = (
     Annotated[
@@ -49,6 +49,23 @@ Withstand = (
     Annotated[
         float,
         field("Fault rating", "kA", gt=0, le=1000, help="Of the board, three-phase. Blank: not judged."),
+    ]
+    | None
+)
+FeedsFaults = Annotated[
+    bool,
+    plain("Feeds faults", help="Counts towards the highest fault currents by its locked rotor.", spare=True),
+]
+FaultTimes = (
+    Annotated[
+        float,
+        field(
+            "Fault current",
+            "× rated",
+            gt=0,
+            le=20,
+            help="Of a rotating set, 1/x″d. Blank: it does not feed faults.",
+        ),
     ]
     | None
 )

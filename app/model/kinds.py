@@ -6,6 +6,8 @@ from msgspec import Struct
 from msgspec import field as held
 
 from app.model.fault_fields import (
+    FaultTimes,
+    FeedsFaults,
     HotDegc,
     LeastMva,
     MostMva,
@@ -311,6 +313,7 @@ class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
         Annotated[float, field("Power factor so", "", gt=0, le=1, help="While the starter limits.")] | None
     ) = None
     state: Annotated[Literal["running", "starting", "off"], plain("State")] = "running"
+    feeds_faults: FeedsFaults = False
     profile: Followed = ""
     phases: Phases = "all"
 
@@ -331,6 +334,7 @@ class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     ) = None
     q_min_kvar: Annotated[float, field("Least reactive", "kvar", ge=-1e6, le=1e6)] | None = None
     q_max_kvar: Annotated[float, field("Most reactive", "kvar", ge=-1e6, le=1e6)] | None = None
+    fault_current: FaultTimes = None
     phases: Phases = "all"
 
 

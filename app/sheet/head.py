@@ -6,7 +6,6 @@ from app.sheet.cases import case_tables
 from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, put_in, table, text
 from app.study.cautions import CAUTIONS
-from app.study.fault_basis import BASIS as BASIS_OF_FAULTS
 from app.study.outcome import Verdict
 from app.study.phase_basis import BASIS as BASIS_OF_PHASES
 from app.version import version
@@ -165,7 +164,7 @@ RULES = (
 
 def _rules(subject: Subject) -> SheetTable:
     phases = () if subject.outcome.wires is None else BASIS_OF_PHASES
-    told = RULES + phases + (() if subject.outcome.faults is None else BASIS_OF_FAULTS)
+    told = RULES + phases + subject.outcome.fault_basis
     rows = {item: {"item": text(item), "value": text(words)} for item, words in told}
     return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
 

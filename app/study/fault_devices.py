@@ -6,11 +6,8 @@ from app.model.kinds import Line, Transformer
 from app.study.graph import NONE, Layout
 from app.study.outcome import FaultState, Table
 
-ON_RING = (
-    "it stands in a closed ring and sees only a share of the current, so it is not judged; open the ring "
-    "to judge it"
-)
-NO_LOOP = "the earth-fault loop behind it is not known, so it is not judged"
+ON_RING = "it stands in a closed ring and sees only a share of the current; open the ring to judge it"
+NO_LOOP = "the earth-fault loop behind it is not known"
 NOT_FED = "nothing feeds it"
 
 

@@ -157,5 +157,5 @@ def _device(drawing: Drawing, device: Device) -> Finding:
 
 
 def _not_judged(drawing: Drawing, device: Device) -> Finding:
-    words = f"Device of {tell(drawing, device.line)}: {device.why}."
+    words = f"Device of {tell(drawing, device.line)}: not judged, because {device.why}."
     return Finding(DEVICE, Verdict.NOTE, (device.line,), words)

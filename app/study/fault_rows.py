@@ -1,6 +1,6 @@
 """Drawing to sequence networks: everything that a fault current meets on its way, cold and hot."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,7 +14,9 @@ from app.model.kinds import Branch, Element, Line, OverheadLine, Supply, Switch,
 from app.model.levels import SPLIT
 from app.model.wire_data import neutral_value
 from app.study.fault_conductors import PLAIN_V
+from app.study.fault_feeders import feeders
 from app.study.fault_plain import plain_branches
+from app.study.fault_ways import Ways, with_equivalent, with_feeders
 from app.study.graph import NONE, Layout, arrays_of
 from app.study.line_wires import ZERO_FIELDS
 from app.study.outcome import Assumption
@@ -26,7 +28,6 @@ from solver.sequence import Sequence
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 NEUTRAL_R = "neutral_resistance_ohm_per_km"
-EQUIVALENT = 0.4  # frequency at which R/X of a ring is taken, over the system's: 20 of 50 Hz, IEC 60909-0 8.1
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,21 +36,25 @@ class FaultRows:
 
     one : Sequence, columns: highest currents, least currents, highest at the equivalent frequency
     zero : Sequence, columns: highest currents, least currents
+    fed : as `one`, with the motors and sets that feed the highest currents; None where there are none
     c_max, c_min : (node,) float, voltage factors
     nominal_v : (node,) float [V]
     two_wire : (node,) bool
     known : (node,) bool, fed, and by supplies whose fault level is stated
     assumptions : of everything that was not given
+    counted : ids of the motors and sets that are counted
     """
 
     one: Sequence
     zero: Sequence
+    fed: Sequence | None
     c_max: Real
     c_min: Real
     nominal_v: Real
     two_wire: NDArray[np.bool_]
     known: NDArray[np.bool_]
     assumptions: tuple[Assumption, ...]
+    counted: tuple[str, ...]
 
 
 def voltage_factors(nominal_v: Real, limits: Limits) -> tuple[Real, Real]:
@@ -71,7 +76,7 @@ def voltage_factors(nominal_v: Real, limits: Limits) -> tuple[Real, Real]:
 
 
 def fault_rows(drawing: Drawing, layout: Layout, zones: Zones) -> FaultRows:
-    """Both sequence networks of a drawing; loads, motors, generators and capacitors are left out.
+    """Both sequence networks of a drawing; loads and capacitors are left out, motors and sets not marked too.
 
     Lines: R at 20 °C for the highest currents, hot for the least. Transformers: at their rated ratio, times
     KT for the highest currents. Supplies: Z = c · U² / S.
@@ -107,7 +112,18 @@ def fault_rows(drawing: Drawing, layout: Layout, zones: Zones) -> FaultRows:
         made.supply(layout.attachment_ids[row], supply, layout.at[row])
     one, zero = made.one.network(len(nominal)), made.zero.network(len(nominal))
     known = _known(layout)[graph.tree] & graph.live
-    return FaultRows(one, zero, c_max, c_min, nominal, two_wire, known, tuple(made.assumptions))
+    also = feeders(layout, nominal, c_max, known & _met(one))
+    fed = with_feeders(one, also) if also else None
+    told, counted = tuple(made.assumptions), tuple(feeder.id for feeder in also)
+    return FaultRows(one, zero, fed, c_max, c_min, nominal, two_wire, known, told, counted)
+
+
+def _met(one: Sequence) -> NDArray[np.bool_]:
+    """(node,) whether a branch or a supply of the sequence network stands there."""
+    found = np.zeros(one.node_count, dtype=bool)
+    for nodes in (one.branch_from, one.branch_to, one.earth_node):
+        found[nodes] = True
+    return found
 
 
 def is_stated(supply: Supply) -> bool:
@@ -141,39 +157,6 @@ def _known(layout: Layout) -> NDArray[np.bool_]:
     return np.array([known[first(tree)] for tree in range(len(group))], dtype=bool)
 
 
-@dataclass(slots=True)
-class _Ways:
-    """The rows of one sequence network as they come."""
-
-    width: int
-    ends: list[tuple[int, int]] = field(default_factory=list)
-    z: list[Complex] = field(default_factory=list)
-    ratio: list[complex] = field(default_factory=list)
-    earth_node: list[int] = field(default_factory=list)
-    earth_z: list[Complex] = field(default_factory=list)
-
-    def branch(self, ends: tuple[int, int], z: Complex, ratio: complex = 1.0) -> None:
-        self.ends.append(ends)
-        self.z.append(z)
-        self.ratio.append(ratio)
-
-    def earth(self, node: int, z: Complex) -> None:
-        self.earth_node.append(node)
-        self.earth_z.append(z)
-
-    def network(self, nodes: int) -> Sequence:
-        ends = np.array(self.ends, dtype=np.intp).reshape(-1, 2)
-        return Sequence(
-            node_count=nodes,
-            branch_from=ends[:, 0],
-            branch_to=ends[:, 1],
-            branch_z=np.array(self.z, dtype=complex).reshape(-1, self.width),
-            branch_ratio=np.array(self.ratio, dtype=complex),
-            earth_node=np.array(self.earth_node, dtype=np.intp),
-            earth_z=np.array(self.earth_z, dtype=complex).reshape(-1, self.width),
-        )
-
-
 class _Made:
     """Puts element by element into both networks and notes what was assumed."""
 
@@ -186,7 +169,7 @@ class _Made:
         c_max: Real,
         c_min: Real,
     ) -> None:
-        self.one, self.zero = _Ways(3), _Ways(2)
+        self.one, self.zero = Ways(3), Ways(2)
         self.assumptions: list[Assumption] = []
         self._frequency = drawing.frequency_hz
         self._nominal, self._two_wire, self._c_max, self._c_min = nominal, two_wire, c_max, c_min
@@ -222,7 +205,7 @@ class _Made:
             run.side_by_side,
             two_wire,
         )
-        self.one.branch(ends, _with_equivalent(z))
+        self.one.branch(ends, with_equivalent(z))
         r0, x0 = (self._value(id, run, name, nominal) for name in ZERO_FIELDS)
         if not two_wire:
             self.zero.branch(ends, line.series(r0, x0, run.length_m, degrees[:2], alpha, run.side_by_side))
@@ -234,7 +217,7 @@ class _Made:
             self.assumptions.append(Assumption(id, NEUTRAL_R, put.value, "Ω/km", put.basis))
         how = self._frequency, nominal
         one = np.array([series_of(run, two_wire, *how, float(at)) for at in degrees], np.complex128)
-        self.one.branch(ends, _with_equivalent(one))
+        self.one.branch(ends, with_equivalent(one))
         if not two_wire:
             zero = np.array([sequence_of(run, *how, float(at))[1] for at in degrees[:2]], np.complex128)
             self.zero.branch(ends, zero * run.length_m / 1e3 / run.side_by_side)
@@ -248,7 +231,7 @@ class _Made:
         group = taps.group(t.vector_group)
         assert group is not None  # barred before
         ratio = t.v1_v / t.v2_v
-        self.one.branch(ends, _with_equivalent(both), ratio * np.exp(1j * np.pi / 6 * group[2]))
+        self.one.branch(ends, with_equivalent(both), ratio * np.exp(1j * np.pi / 6 * group[2]))
         if group[0] != "I":
             self._zero_of(id, t, ends, both[:2], group[2])
 
@@ -280,14 +263,7 @@ class _Made:
             self._value(id, supply, "z0_ratio", volts)
         if supply.wires == SPLIT:
             return
-        self.one.earth(node, _with_equivalent(z))
+        self.one.earth(node, with_equivalent(z))
         if bool(self._two_wire[node]) or (supply.z0_ratio is None and volts > LOW_V):
             return
         self.zero.earth(node, z[:2] * self._value(id, supply, "z0_ratio", volts))
-
-
-def _with_equivalent(z: Complex) -> Complex:
-    """The last column at the equivalent frequency."""
-    made = z.copy()
-    made[2] = complex(z[2].real, z[2].imag * EQUIVALENT)
-    return made

@@ -6,7 +6,8 @@ from numpy.typing import NDArray
 from app.model.drawing import Drawing
 from app.model.levels import TWO_WIRE
 from app.study.fault_conductors import Loops, loops
-from app.study.fault_rows import EQUIVALENT, FaultRows
+from app.study.fault_rows import FaultRows
+from app.study.fault_ways import EQUIVALENT
 from app.study.graph import Layout
 from app.study.outcome import FaultState, Table
 from app.study.zones import Zones
@@ -39,6 +40,8 @@ def fault_table(drawing: Drawing, layout: Layout, zones: Zones, rows: FaultRows 
     if rows is not None:
         known = rows.known
         z1, z0 = seen(rows.one), seen(rows.zero)
+        if rows.fed is not None:
+            z1[:, [0, 2]] = seen(rows.fed)[:, [0, 2]]
         found = _sequences(rows, z1, z0)
         lacking = known & np.isinf(z1[:, 0])
         two = np.array([zones.system[zone] == TWO_WIRE for zone in layout.zone], dtype=bool)

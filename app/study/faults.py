@@ -11,6 +11,8 @@ from msgspec.structs import replace
 
 from app.model.drawing import Drawing, Limits
 from app.model.kinds import Branch, Element, Line, Node, Supply, Transformer
+from app.study.fault_basis import fault_basis
+from app.study.fault_feeders import is_marked
 from app.study.fault_findings import fault_findings, unstated
 from app.study.fault_rows import fault_rows, is_stated
 from app.study.fault_table import fault_table
@@ -26,17 +28,20 @@ class Faults:
     """Fault currents of a drawing.
 
     nodes : Table of FaultState by node id; nan where nothing is worked out
-    findings : boards and devices judged; a NOTE where it could not be
+    findings : boards and devices judged; a NOTE where any wants it and it could not be
     assumptions : what only fault currents need and was not given
     worked_out : whether any node has figures
+    basis : items and the sentences that say how it was worked out
     """
 
     nodes: Table[FaultState]
     findings: tuple[Finding, ...]
     assumptions: tuple[Assumption, ...]
     worked_out: bool
+    basis: tuple[tuple[str, str], ...] = ()
 
 
+NO_FAULTS = Faults(Table(FaultState, (), {}, {}), (), (), False)
 Bearing = dict[str, Element]
 _last: tuple[Bearing, Limits, float, Faults] | None = None
 
@@ -68,7 +73,7 @@ def faults_of(drawing: Drawing, layout: Layout, zones: Zones, barred: bool) -> F
     """
     global _last
     if barred or not any(isinstance(s, Supply) and is_stated(s) for s in layout.attachments):
-        told = unstated(drawing, layout, barred)
+        told = unstated(drawing, layout, barred) if asked_for(drawing) else ()
         return Faults(fault_table(drawing, layout, zones, None), told, (), False)
     bearing = _bearing(drawing)
     last = _last
@@ -76,8 +81,10 @@ def faults_of(drawing: Drawing, layout: Layout, zones: Zones, barred: bool) -> F
         return last[3]
     rows = fault_rows(drawing, layout, zones)
     table = fault_table(drawing, layout, zones, rows)
-    findings = fault_findings(drawing, layout, table)
-    made = Faults(table, findings, rows.assumptions, bool(rows.known.any()))
+    worked_out = bool(rows.known.any())
+    findings = fault_findings(drawing, layout, table) if worked_out or asked_for(drawing) else ()
+    basis = fault_basis(drawing, rows.counted)
+    made = Faults(table, findings, rows.assumptions, worked_out, basis)
     _last = (bearing, drawing.limits, drawing.frequency_hz, made)
     return made
 
@@ -97,7 +104,9 @@ def asked_for(drawing: Drawing) -> bool:
 
 def _bearing(drawing: Drawing) -> Bearing:
     """All that fault currents hang on."""
-    return {i: e for i, e in drawing.elements.items() if isinstance(e, Node | Branch | Supply)}
+    return {
+        i: e for i, e in drawing.elements.items() if isinstance(e, Node | Branch | Supply) or is_marked(e)
+    }
 
 
 def _same(old: Mapping[str, Element], new: Mapping[str, Element]) -> bool:

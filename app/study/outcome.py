@@ -265,6 +265,7 @@ class Outcome:
     )  # node id -> the node before it, seen from the supply
     starts: "StartTable | None" = None  # motor starts, where there are motors and figures
     faults: "Table[FaultState] | None" = None  # by node id; None where no supply states a fault level
+    fault_basis: tuple[tuple[str, str], ...] = ()  # items and sentences: how they were worked out
     wires: Wired | None = None  # phases and neutral; None where all phases are alike
 
     def fed_winding(self, id: str, case: int) -> int:

@@ -42,6 +42,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         **({} if outcome.starts is None else {"starts": _starts(drawing, outcome.starts)}),
         **({} if outcome.wires is None else _wires(drawing, outcome.wires)),
         **({} if outcome.faults is None else {"faults": table_record(drawing, outcome.faults)}),
+        **({"fault_basis": dict(outcome.fault_basis)} if outcome.fault_basis else {}),
         "findings": [finding_record(f) for f in outcome.findings],
         "assumptions": [{k: plain_value(v) for k, v in asdict(a).items()} for a in outcome.assumptions],
         "fed_by": dict(outcome.upstream),

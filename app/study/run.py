@@ -8,7 +8,7 @@ from app.study.changer_findings import barred_findings, hunting_findings, stop_f
 from app.study.changers import Moved, settled
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
-from app.study.faults import Faults, asked_for, faults_of
+from app.study.faults import NO_FAULTS, faults_of
 from app.study.findings import judge
 from app.study.idle import idle_findings
 from app.study.layout import Layout, lay_out
@@ -74,7 +74,7 @@ def _outcome(
     collapse: Collapse | None = None
     tables = tables_of(layout, zones, rows, solution if status is Status.SOLVED else None, len(cases))
     starts: StartTable | None = None
-    faulted: Faults | None = None
+    faulted = NO_FAULTS
     if status is Status.SOLVED and rows is not None and starters(layout):
         starts = start_table(drawing, layout, zones, rows)
         found = found + start_findings(drawing, starts, cases)
@@ -87,8 +87,7 @@ def _outcome(
         if moved is not None and rows is not None:
             found += stop_findings(drawing, layout, rows, tables, moved)
         faulted = faults_of(drawing, layout, zones, False)
-        if faulted.worked_out or asked_for(drawing):
-            found += faulted.findings
+        found += faulted.findings
         if layout.rings and rows is not None:
             found += idle_findings(drawing, layout, zones, rows, tables.attachments)
     elif rows is not None and solution is not None and isinstance(solution.forest, Trouble):
@@ -108,7 +107,7 @@ def _outcome(
         attachments=tables.attachments,
         balance=tables.balance,
         findings=tuple(found),
-        assumptions=assumptions_of(layout, zones) + (faulted.assumptions if faulted is not None else ()),
+        assumptions=assumptions_of(layout, zones) + faulted.assumptions,
         upstream=layout.upstream,
         zones=layout.zone_of,
         largest_share=collapse.share if collapse else None,
@@ -116,7 +115,8 @@ def _outcome(
         seconds=seconds,
         fed_from=layout.before,
         starts=starts,
-        faults=faulted.nodes if faulted is not None and faulted.worked_out else None,
+        faults=faulted.nodes if faulted.worked_out else None,
+        fault_basis=faulted.basis,
         wires=tables.wires,
     )
 

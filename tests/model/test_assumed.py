@@ -138,7 +138,7 @@ def test_every_optional_number_is_assumed_or_known_to_need_no_stand_in():
         "demand_kva",
         "demand_kw",
     }
-    no_stand_in |= {"trip_a", "earth_1_ohm", "earth_2_ohm"}
+    no_stand_in |= {"trip_a", "earth_1_ohm", "earth_2_ohm", "fault_current"}
     only_for_faults = {
         "fault_level_max_mva",
         "return_resistance_ohm_per_km",

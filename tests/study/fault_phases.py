@@ -13,7 +13,7 @@ from scipy.sparse.linalg import splu
 from study_nodal import ALPHA, Nodal
 
 from app.model import assumed
-from app.model.kinds import Line, OverheadLine, Supply, Transformer
+from app.model.kinds import Generator, Line, Motor, OverheadLine, Supply, Transformer
 
 A = cmath.rect(1, 2 * math.pi / 3)
 E = np.array([1, A**2, A])
@@ -41,6 +41,11 @@ class PhaseFaults(Nodal):
                 self.wound(e)
         for s in self.supplies.values():
             self.shorted(s)
+        for e in self.drawing.elements.values() if self.largest else ():
+            if isinstance(e, Motor) and e.feeds_faults and e.state != "off" and e.starter != "drive":
+                self.turning(e, 0.42, 0.15, self.motor_size(e))
+            elif isinstance(e, Generator) and e.fault_current is not None:
+                self.turning(e, 0.15, 0.07, self.set_size(e))
         self.solved = splu(csc_array(self.matrix))
 
     def of(self, node):
@@ -120,6 +125,22 @@ class PhaseFaults(Nodal):
             y = np.linalg.inv(phases(z, z * (s.z0_ratio or 1.0)))
         at = self.of(s.node)
         np.add.at(self.matrix, np.ix_(at, at), y)
+
+    def motor_size(self, e):
+        volts = e.rated_v or self.nominal[e.node]
+        return volts**2 / (e.rated_kw * 1e3 / e.efficiency / e.power_factor) / e.starting_current
+
+    def set_size(self, e):
+        rated, share = 1e3 * math.hypot(e.output_kw, e.output_kvar), 1 / e.fault_current
+        k = self.factors(e.node) / (1 + share * abs(e.output_kvar) * 1e3 / rated)
+        return k * share * self.nominal[e.node] ** 2 / rated
+
+    def turning(self, e, low, high, size):
+        """A motor or set: an impedance between its phases, its star point not earthed."""
+        ratio = low if self.nominal[e.node] <= 1000 else high
+        z = self.slow(size * complex(ratio, 1) / math.hypot(ratio, 1))
+        at = self.of(e.node)
+        np.add.at(self.matrix, np.ix_(at, at), (np.eye(3) - np.ones((3, 3)) / 3) / z)
 
     def seen(self, node):
         """(3, 3) impedances that the phases of a node see."""
