@@ -11,8 +11,8 @@ from app.model.kinds import Line, Node
 from app.study.outcome import Outcome
 
 EVEN = (
-    "Unbalance: negative over positive sequence of the volts, V2/V1. Off the mean: largest distance of a line "
-    "voltage from the mean of the three, over that mean (NEMA MG 1, from memory)."
+    "Unbalance: negative over positive sequence of the volts, V2/V1. Off the mean: largest distance of a "
+    "line voltage from the mean of the three, over that mean (NEMA MG 1, from memory)."
 )
 
 
