@@ -72,6 +72,8 @@ SHORTCUTS: tuple[tuple[str, str], ...] = (
     ("Ctrl + wheel, +, −", "Zoom round the hand"),
     ("F", "Fit the whole drawing"),
     ("Wheel; Space or middle button + drag", "Scroll; move the paper"),
+    ("F9, Shift + F9", "Run the year of its profiles; show it"),
+    ("Ctrl + Shift + P", "The profiles: paste, open or invent them"),
     ("Shift while placing", "Keep the part in the hand; Esc puts it away"),
 )
 

@@ -28,7 +28,7 @@ from solver import Network, Trouble, grow
 from solver.series import VALUES, solve_series
 
 Progress = Callable[[int, int], bool]
-BLOCKS = 12  # at least so many blocks, so that progress is told and a stop is heard
+BLOCKS = 24  # at least so many blocks, so that progress is told and a stop is heard
 MOST = 1 << 23  # complex values of what loads draw that are held at once
 
 
@@ -66,7 +66,8 @@ def run_year(drawing: Drawing, progress: Progress | None = None) -> YearOutcome:
         return blank_year(drawing, layout, zones, found)
     moving = moving_of(layout, zones, rows)
     tally = Tally(layout, zones, rows, drawing.limits, points, moving)
-    block = max(16, min(VALUES // max(1, rows.network.node_count), -(-points.count // BLOCKS)))
+    size = max(1, rows.network.node_count * rows.network.conductors)
+    block = max(16, min(VALUES // size, -(-points.count // BLOCKS)))
     stretch = max(block, MOST // max(1, rows.network.load_node.size))
     done, going = 0, True
     while going and done < points.count:

@@ -411,3 +411,21 @@ def test_the_estate_is_decided_by_its_load_factor():
     assert year.balance.load_factor == pytest.approx(0.30, abs=2e-4)
     assert year.balance.iron_percent == pytest.approx(65.6, abs=0.1)
     assert not [f for f in year.findings if f.verdict is Verdict.FAILS]
+
+
+def test_phases_each_for_themselves_have_a_year_too():
+    base = load(SAMPLES / "loonmarrow_camp.farend")
+    base = edits.set_year(edits.put_profile(base, "home", shape("household")), load_profile="home")
+    year = run_year(base)
+    assert year.status is Status.SOLVED
+    for point in (0, 306, 4000):
+        case = Case(load_percent=base.profiles["home"].percent[point])
+        one = run(msgspec.structs.replace(base, cases=(case,)))
+        assert one.wires is not None
+        assert year.course.line_kw[point] == pytest.approx(one.balance.line_kw[0], rel=1e-9)
+        assert year.course.lowest_percent[point] == pytest.approx(np.nanmin(one.nodes.column("percent")))
+        assert year.course.highest_percent[point] == pytest.approx(
+            np.nanmax(one.nodes.column("high_percent"))
+        )
+    assert year.balance.closure < 1e-12
+    assert {f.ids[0] for f in year.findings if f.verdict is Verdict.FAILS} == {"B4", "B5", "B6"}
