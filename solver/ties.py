@@ -93,7 +93,10 @@ class Ties:
         plus, minus = straight + turned, straight - turned
         real = np.block([[plus.real, -minus.imag], [plus.imag, minus.real]])
         asked = (np.concatenate((opened, -flow)).T * scale)[:, :, None]
+        lost = ~np.isfinite(real).all(axis=(1, 2))  # volts that ran away have no slopes
+        real[lost] = 0
         inverse = np.linalg.pinv(real, CUT)
+        inverse[lost] = np.nan
         found = (inverse @ np.concatenate((asked.real, asked.imag), axis=1))[:, :, 0]
         solved = ((found[:, :count] + 1j * found[:, count:]) * scale).T
         return solved[:ties], solved[ties:]

@@ -133,7 +133,10 @@ class _Walk:
             self._neutral(row, b) if isinstance(b, Line) else "" for row, b in enumerate(layout.branches)
         ]
         self.may = [self._allowed(row, branch) for row, branch in enumerate(layout.branches)]
-        self.earthed = self._earthed()
+        along = [row for row, kind in enumerate(self.neutral) if kind == "earthed along"]
+        ends = {layout.start[row] for row in along} | {layout.end[row] for row in along}
+        self.earthed = self._joined(ends)
+        self.to_earth = self._joined(self.earthed | {layout.at[row] for row in layout.supplies})
         self.units: dict[int, UnitWires] = {}
         self.feeders = set(layout.fed_by)
 
@@ -177,17 +180,14 @@ class _Walk:
         nominal = float(self.zones.nominal_v[self.layout.zone[node]])
         return wire_data.neutral_of(line, nominal, self.system(node) != THREE_PHASE)
 
-    def _earthed(self) -> set[int]:
-        """Nodes at lines whose neutral is earthed along them, switches and regulators let through."""
-        layout, found = self.layout, set[int]()
-        for row, kind in enumerate(self.neutral):
-            if kind == "earthed along":
-                found |= {layout.start[row], layout.end[row]}
+    def _joined(self, nodes: set[int]) -> set[int]:
+        """Some nodes, and all that switches and regulators join to them."""
+        layout = self.layout
         bare = [row for row, b in enumerate(layout.branches) if isinstance(b, Switch | Regulator)]
         ends = [{layout.start[r], layout.end[r]} for r in bare if getattr(layout.branches[r], "closed", True)]
-        while more := [pair for pair in ends if len(pair & found) == 1]:
-            found = found.union(*more)
-        return found
+        while more := [pair for pair in ends if len(pair & nodes) == 1]:
+            nodes = nodes.union(*more)
+        return nodes
 
     def _is_live(self, row: int, branch: Branch) -> bool:
         closed = not isinstance(branch, Switch) or branch.closed
@@ -268,5 +268,4 @@ class _Walk:
         """Where a load between phase and neutral goes back: the neutral, earth, or nowhere."""
         if self.drawn[node] & NEUTRAL:
             return N
-        held = node in self.earthed or any(self.layout.at[s] == node for s in self.layout.supplies)
-        return EARTH if held else None
+        return EARTH if node in self.to_earth else None

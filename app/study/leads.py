@@ -10,6 +10,7 @@ from app.model.kinds import Attachment, Load, Motor
 from app.model.levels import TWO_WIRE
 from app.study.wires import ABC, PER_PHASE, bits, slots
 
+Real = NDArray[np.float64]
 THIRDS = (1 / 3, 1 / 3, 1 / 3)
 ROUND = ((0, 1), (1, 2), (2, 0))
 
@@ -88,7 +89,8 @@ def leads_of(hung: Attachment, system: str, reach: int, back: int | None) -> Lea
         wanted = here if chosen == "all" else bits(chosen)
         if back is None:
             return Leads((), (), (), wanted & ~here, no_back=True)
-        return Leads(tuple((p, back) for p in slots(wanted)[:1]), (1.0,), (1.0,), wanted & ~here)
+        pairs = tuple((p, back) for p in slots(wanted)[:1])
+        return Leads(pairs, (1.0,) * len(pairs), (1.0,) * len(pairs), wanted & ~here)
     wanted = here if chosen == "all" else bits(chosen)
     missing = wanted & ~here
     phases = slots(wanted)
@@ -114,12 +116,14 @@ def _shares(hung: Attachment) -> tuple[float, ...]:
     return a, b, 1 - a - b
 
 
-def across(stated_v: ArrayLike, nominal_v: ArrayLike, over: ArrayLike) -> NDArray[np.float64]:
-    """Volts across one lead out of a stated voltage: of the lead itself, or between lines, as is nearer.
+def across(stated_v: ArrayLike, nominal_v: ArrayLike, over: ArrayLike, alone: ArrayLike) -> Real:
+    """Volts across one lead out of a stated voltage, which is that between lines; where an element has one
+    lead alone, that of the lead or between lines, as is nearer.
 
     stated_v : (...) float [V], nan where nothing is stated
     nominal_v : (...) float [V] of the zone
     over : (...) float, nominal voltage of the zone over that of the lead
+    alone : (...) bool, the element has no other lead
 
     Returns : (...) float [V]
     Source : common practice, no source
@@ -127,5 +131,5 @@ def across(stated_v: ArrayLike, nominal_v: ArrayLike, over: ArrayLike) -> NDArra
     stated, nominal = np.asarray(stated_v, dtype=np.float64), np.asarray(nominal_v, dtype=np.float64)
     times = np.asarray(over, dtype=np.float64)
     base = nominal / times
-    own = np.abs(stated / base - 1) <= np.abs(stated / nominal - 1)
+    own = np.asarray(alone) & (np.abs(stated / base - 1) <= np.abs(stated / nominal - 1))
     return np.where(np.isnan(stated), base, np.where(own, stated, stated / times))

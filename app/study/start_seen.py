@@ -84,7 +84,7 @@ def _wired(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen
     three = np.array([len(found.pairs) == 3 for found in leads], dtype=bool)
     stated, level = _rated(layout, zones, started), nominal_of(layout, zones, started)
     rated = [
-        float(across(volts, at, found.over[0] if len(found.pairs) == 1 else 1.0))
+        float(across(volts, at, found.over[0] if len(found.pairs) == 1 else 1.0, True))
         for volts, at, found in zip(stated, level, leads, strict=True)
     ]
 

@@ -139,7 +139,8 @@ def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _P
     ):
         was, now = (np.where(solved[:, None], _own(volts(s.voltage), cases), np.nan) for s in pair.both)
         found[f"{name}_before_v"], found[f"{name}_v"] = _deepest(was, now)
-        found[f"{name}_step_percent"] = 100 * (1 - found[f"{name}_v"] / found[f"{name}_before_v"])
+        before, there = found[f"{name}_before_v"], found[f"{name}_v"]
+        found[f"{name}_step_percent"] = 100 * (1 - there / np.where(before > 0, before, np.nan))
     motors = motors_of(layout, started)
     unknown = [source_impedance(s) == 0 for f in feeding if isinstance(s := layout.attachments[f], Supply)]
     found["supply_step_percent"][unknown] = np.nan
@@ -170,7 +171,8 @@ def _own(values: Real, cases: int) -> Real:
 
 def _deepest(was: Real, now: Real) -> tuple[Real, Real]:
     """(motor, case) volts before and during the start, of the phase that falls most."""
-    step = np.where(np.isnan(was), -np.inf, (was - now) / was)
+    known = was > 0
+    step = np.where(known, (was - now) / np.where(known, was, 1.0), -np.inf)
     row = step.argmax(axis=1)[:, None]
     return np.take_along_axis(was, row, 1)[:, 0], np.take_along_axis(now, row, 1)[:, 0]
 

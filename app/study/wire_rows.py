@@ -156,7 +156,7 @@ def loads_between(
     n, one = place[ways.row][chosen], ways.one[chosen]
     power[n, one] = ways.share[chosen, None] * whole[n]
     to[n, one] = ways.other[chosen]
-    volts[n, one, 0] = across(reference_v[n], nominal_v[n], ways.over[chosen])
+    volts[n, one, 0] = across(reference_v[n], nominal_v[n], ways.over[chosen], ways.alone[chosen])
     return power, volts, to
 
 
@@ -178,7 +178,8 @@ def _stamped(leads: Leads, rated_v: float, nominal_v: float) -> Real:
     """(k, k) which part of jQ/U² stands between which conductors."""
     matrix = np.zeros((K, K))
     for (one, other), share, over in zip(leads.pairs, leads.shares, leads.over, strict=True):
-        part = share * (rated_v / float(across(rated_v, nominal_v, over))) ** 2
+        volts = float(across(rated_v, nominal_v, over, len(leads.pairs) == 1))
+        part = share * (rated_v / volts) ** 2
         matrix[one, one] += part
         if other != EARTH:
             matrix[other, other] += part

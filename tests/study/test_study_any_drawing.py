@@ -3,10 +3,12 @@
 import json
 import random
 import warnings
+from dataclasses import replace as replaced
 
 import msgspec
 import numpy as np
 import pytest
+from unlike_drawings import sound, turned, uneven
 
 from app.model import edits
 from app.model.drawing import Case, Drawing
@@ -128,6 +130,72 @@ def test_a_run_answers_whatever_is_drawn(start):
                     curve = tap_curve(base, id)
                     assert curve.loss_kw.shape == (len(curve.notches), len(base.cases))
         assert_sound(base, outcome)
+
+
+@pytest.mark.parametrize("start", range(0, 400, 40))
+def test_a_run_answers_whatever_phases_are_drawn(start):
+    for seed in range(start, start + 40):
+        base = uneven(anything(seed), seed)
+        with warnings.catch_warnings():
+            warnings.simplefilter("error")
+            outcome = run(base)
+            json.dumps(record(base, outcome, "0"), allow_nan=False)
+            assert printed(base, outcome).endswith("\n")
+            for id, element in base.elements.items():
+                if isinstance(element, Transformer):
+                    assert tap_curve(base, id).loss_kw.shape[1] == len(base.cases)
+        assert_sound(base, outcome)
+
+
+def assert_alike(one, other, names, rel):
+    """Two tables whose live figures agree; `names` says which column of the other each is, blank
+    where there is none."""
+    for name, column in one.columns.items():
+        if column.dtype.kind == "f" and names.get(name, name):
+            live = one.columns.get("live", np.ones(len(column), dtype=bool))
+            column, found = column[live], other.column(names.get(name, name))[live]
+            scale = np.nanmax(np.abs(column), initial=1.0)
+            np.testing.assert_allclose(found, column, rtol=rel, atol=rel * scale, err_msg=name)
+
+
+@pytest.mark.parametrize("start", range(0, 60, 20))
+def test_phases_that_fit_are_solved_and_turn_with_their_letters(start):
+    turn = {"a": "b", "b": "c", "c": "a", "n": "n"}
+    shifted = {f"{a}_{what}": f"{b}_{what}" for a, b in turn.items() for what in ("v", "a", "notch")}
+    for seed in range(start, start + 20):
+        base = sound(seed)
+        outcome, other = run(base), run(turned(base))
+        assert outcome.status is Status.SOLVED, (seed, outcome.findings[0].sentence)
+        assert_sound(base, outcome)
+        assert (outcome.balance.closure < 1e-9).all()
+        assert (outcome.wires is None) == (other.wires is None)
+        if outcome.wires is not None:
+            for name in ("nodes", "branches", "attachments"):
+                assert_alike(getattr(outcome.wires, name), getattr(other.wires, name), shifted, 1e-7)
+        for name in ("nodes", "branches", "attachments"):
+            assert_alike(getattr(outcome, name), getattr(other, name), {"angle_deg": ""}, 1e-7)  # of A
+
+
+@pytest.mark.parametrize("start", range(0, 240, 60))
+def test_four_conductors_say_what_one_says(start):
+    compared = 0
+    for seed in range(start, start + 60):
+        base = anything(seed)
+        supplies = [e for e in base.elements.values() if isinstance(e, Supply)]
+        if not supplies or any(s.wires != "three-phase" for s in supplies):
+            continue
+        nothing = Load(node=supplies[0].node, demand_kva=0.0, phases="A")
+        outcome, four = run(base), run(edits.put(base, {"ZZ": nothing}))
+        assert four.status is outcome.status, seed
+        if outcome.status is Status.SOLVED:
+            compared += 1
+            assert four.wires is not None
+            for name in ("nodes", "branches", "attachments"):
+                ours, theirs = getattr(outcome, name), getattr(four, name)
+                rows = [theirs.rows[id] for id in ours.ids]
+                columns = {k: c[rows] for k, c in theirs.columns.items()}
+                assert_alike(ours, replaced(theirs, ids=ours.ids, columns=columns, rows=ours.rows), {}, 1e-7)
+    assert compared >= 5
 
 
 def assert_sound(base, outcome):
