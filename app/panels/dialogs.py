@@ -87,3 +87,9 @@ def value_file(parent: QWidget) -> Path | None:
 
     name, _ = QFileDialog.getOpenFileName(parent, "Open values", "", "Values (*.csv *.txt);;All files (*)")
     return Path(name) if name else None
+
+
+def file_name(title: str) -> str:
+    """A title as the name of a file."""
+    kept = "".join(c if c.isalnum() or c in " -_" else " " for c in title)
+    return " ".join(kept.split()) or "drawing"

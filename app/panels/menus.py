@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QMenu
 
 from app.model.drawing import Drawing
 from app.model.file import FileError
-from app.panels.dialogs import DRAWINGS, PICTURES, SHEETS, Dialogs
+from app.panels.dialogs import DRAWINGS, PICTURES, SHEETS, Dialogs, file_name
 
 Do = Callable[[], Any]
 
@@ -214,7 +214,7 @@ class Menus(QObject):
         """Ask where, and save."""
         document = self.window.document
         title = self.window.session.drawing.project.title or "drawing"
-        start = document.path or Path.home() / f"{_file_name(title)}.farend"
+        start = document.path or Path.home() / f"{file_name(title)}.farend"
         chosen = self.dialogs.file_to_write("Save drawing", start, DRAWINGS)
         return chosen is not None and self._write(chosen)
 
@@ -284,7 +284,7 @@ class Menus(QObject):
 
     def _where(self, title: str, suffix: str, kinds: str) -> Path | None:
         document = self.window.document
-        start = document.path or Path.home() / _file_name(
+        start = document.path or Path.home() / file_name(
             self.window.session.drawing.project.title or "drawing"
         )
         return self.dialogs.file_to_write(title, start.with_suffix(suffix), kinds)
@@ -304,8 +304,3 @@ class Menus(QObject):
             self.window.findings.tell("Select one element to keep it on the shelf.")
             return
         self.window.shelf.keep(next(iter(selection)))
-
-
-def _file_name(title: str) -> str:
-    kept = "".join(c if c.isalnum() or c in " -_" else " " for c in title)
-    return " ".join(kept.split()) or "drawing"

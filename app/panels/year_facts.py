@@ -16,6 +16,11 @@ from app.study.year_outcome import YearOutcome
 from app.study.year_points import when
 
 
+def cost_words(year: YearOutcome) -> str:
+    """What the losses cost, such as `5 648 EUR a year`."""
+    return f"{plain(year.balance.cost, 0, year.money or '(money not named)')} a year"
+
+
 class LossBar(QWidget):
     """Losses in lines, copper and iron, to scale; each is named where it has room, else in the tooltip."""
 
@@ -101,9 +106,7 @@ class YearFacts(QWidget):
             "Load factor": plain(b.load_factor, 3),
             "Loss load factor": plain(b.loss_factor, 3),
             "Utilisation": plain(b.utilisation_h, 0, "h"),
-            "Cost of losses": ""
-            if math.isnan(b.cost)
-            else f"{plain(b.cost, 0)} {year.money}".strip() + " a year",
+            "Cost of losses": "" if math.isnan(b.cost) else cost_words(year),
         }
         tips = {
             "Highest supply": when(b.peak_at_h, year.points.year_h),

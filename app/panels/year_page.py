@@ -1,5 +1,7 @@
 """The year in a window of its own: run it, stop it, read it, go from a row to its element."""
 
+from pathlib import Path
+
 from PySide6.QtCore import QRectF, QSize, Qt, Signal
 from PySide6.QtGui import QPainter, QPaintEvent
 from PySide6.QtWidgets import (
@@ -17,16 +19,20 @@ from app.canvas.theme import Theme
 from app.live.attention import Attention
 from app.live.session import Session
 from app.live.year_run import YearRun
+from app.model.file import FileError, write_bytes
 from app.panels.course_plot import CoursePlot
+from app.panels.dialogs import Dialogs, file_name
 from app.panels.style import play
 from app.panels.verdict_lines import VerdictLines
 from app.panels.words import Sentence, Words
 from app.panels.year_facts import YearFacts
 from app.panels.year_table import ATTACHMENTS, BRANCHES, NODES, YearTable
 from app.study.year_outcome import YearOutcome
+from app.study.year_record import course_text
 
 TABS = ("Branches", "Nodes", "Loads and infeeds", "Checks", "Basis")
 MOST_CHECKS = 60
+HOURS = "Comma-separated text (*.csv)"
 NOTHING = (
     "Not run yet. Run takes every hour of the profiles that something follows; without any, 8 760 h alike."
 )
@@ -49,6 +55,7 @@ class YearPage(QDialog):
         super().__init__(parent)
         self._session, self._run, self._attention, self._theme = session, run, attention, theme
         self._shown: YearOutcome | None = None
+        self.dialogs = Dialogs(self)
         self.setWindowTitle("The year")
         self.setModal(False)
         self._build()
@@ -63,7 +70,11 @@ class YearPage(QDialog):
     def _build(self) -> None:
         self.title, self.state = Words("The year", "title"), Words("", "quiet")
         self.profiles, self.button = QPushButton("Profiles…"), QPushButton("Run")
+        self.save = QPushButton("Save hours…")
+        self.save.setToolTip("Every point of the year as a line of comma-separated text")
         self.profiles.setAutoDefault(False)
+        self.save.setAutoDefault(False)
+        self.save.clicked.connect(self._save)
         self.button.setDefault(True)
         self.profiles.clicked.connect(self.profiles_wanted)
         self.button.clicked.connect(self._press)
@@ -71,6 +82,7 @@ class YearPage(QDialog):
         head.setSpacing(12)
         head.addWidget(self.title)
         head.addWidget(self.state, 1)
+        head.addWidget(self.save)
         head.addWidget(self.profiles)
         head.addWidget(self.button)
         self.bar = ProgressLine(self._theme)
@@ -132,6 +144,7 @@ class YearPage(QDialog):
             self.bar.show_progress(0, 1)
         there = year is not None and year.solved_h > 0
         self.figures.setVisible(there)
+        self.save.setEnabled(there)
         if year is not self._shown:
             self._shown = year
             if year is not None:
@@ -172,6 +185,23 @@ class YearPage(QDialog):
             self._run.cancel()
         else:
             self._run.start()
+
+    def _save(self) -> None:
+        year = self._run.year
+        if year is None:
+            return
+        title = self._session.drawing.project.title or "drawing"
+        path = self.dialogs.file_to_write(
+            "Save the hours", Path.home() / f"{file_name(title)} hours.csv", HOURS
+        )
+        if path is None:
+            return
+        try:
+            write_bytes(path, course_text(year).encode())
+        except FileError as error:
+            self.state.say(str(error))
+        else:
+            self.state.say(f"{year.points.count} points written to {path.name}.")
 
     def _choose(self, id: str) -> None:
         if id in self._session.drawing.elements:

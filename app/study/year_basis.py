@@ -19,9 +19,11 @@ def basis_of(drawing: Drawing, points: Points, stepping: bool) -> tuple[str, ...
     Returns : (sentence,) words
     """
     said = [_points(points)]
+    if not in_use(drawing):
+        said.append("Nothing follows a profile: all hours are alike, as the drawing states them.")
     said += [_profile(drawing, name, one, points) for name, one in in_use(drawing).items()]
     even = _ids(drawing, "")
-    if even:
+    if even and in_use(drawing):
         said.append(f"Constant at 100 % of what the drawing states: {list_of(drawing, even)}.")
     if stepping:
         said.append(

@@ -15,6 +15,7 @@ from app.model.file import load
 from app.model.shapes import shape
 from app.panels.profile_row import ProfileRow
 from app.study.year import run_year
+from app.study.year_record import course_text
 from app.window import Window
 
 SAMPLE = Path(__file__).parents[2] / "samples" / "fernhollow_pair.farend"
@@ -310,3 +311,18 @@ def test_a_window_that_closes_stops_its_year(qtbot, tmp_path):
     made.close()
     assert halted.wait(10)
     assert isinstance(made.year.run, YearRun)
+
+
+def test_the_hours_are_saved_as_the_command_writes_them(window, qtbot, tmp_path):
+    page = ran(window, qtbot)
+    asked = []
+    page.dialogs.file_to_write = lambda *question: asked.append(question) or tmp_path / "hours.csv"
+    click(page.save)
+    assert asked[0][1].name == "Fernhollow Estate 11 kV pair hours.csv"
+    assert (tmp_path / "hours.csv").read_text(encoding="utf-8") == course_text(
+        run_year(window.session.drawing)
+    )
+    assert "8760 points written to hours.csv" in page.state.text()
+    page.dialogs.file_to_write = lambda *_: tmp_path / "none" / "hours.csv"
+    click(page.save)
+    assert "cannot be saved" in page.state.text()
