@@ -11,7 +11,9 @@ import numpy as np
 import pytest
 from msgspec.structs import replace
 from sample_places import changed, failing, place, proven, told
+from test_study_fault_loops import hold
 
+from app.model import edits
 from app.model.kinds import Load
 from app.study import run
 from app.study.outcome import Verdict
@@ -138,6 +140,15 @@ def test_the_neutral_carries_what_the_phases_do_not_cancel():
     assert math.isnan(lateral.a_a)
     best = proven(camp(allocations()[0][2]))
     assert best.wires.branches.at("C1", 0).n_a < wires.n_a / 2
+
+
+def test_fault_currents_on_the_laterals_are_those_of_loops_of_the_four_wire_solution():
+    """At +10 %, for which the loops are drawn: c is 1.10 there, 1.05 in the sample."""
+    made = place("loonmarrow_camp")
+    hold(edits.set_limits(made, high_percent=110.0))
+    at = run(made).faults.at
+    assert at("B5").ik1_max_ka < at("B4").ik1_max_ka < at("B3").ik1_max_ka
+    assert math.isnan(at("B5").ik3_max_ka)
 
 
 def as_constant_power(drawing):
