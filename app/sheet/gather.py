@@ -19,9 +19,13 @@ TOGETHER = (  # tabs that may share one, and its name, the broadest first; where
     ("Faults", ("Faults", "Circuit ends", "Devices")),
     ("Balance", ("Balance", "Losses")),
 )
-APART = {  # what leaves a tab that is longer than a page, and where to
-    "Basis": ("Cases and assumed values", ("cases", "case_own", "assumed")),
-    "Build list": ("Phases", ("laterals", "allocation")),
+APART = {  # what leaves a tab that is longer than a page: where to together, and where to each where that is
+    # longer too, as heads are repeated only where a table has a tab of its own
+    "Basis": (
+        "Cases and assumed values",
+        {"cases": "Cases", "case_own": "Cases", "assumed": "Assumed values"},
+    ),
+    "Build list": ("Phases", {"laterals": "Laterals", "allocation": "Phases"}),
 }
 
 
@@ -39,8 +43,9 @@ def gathered(tables: Iterable[SheetTable]) -> tuple[SheetTable, ...]:
             home |= dict.fromkeys(members, name)
     moved: dict[str, str] = {}
     for tab, (to, keys) in APART.items():
-        if tab in tabs and not fits(tabs[tab]):
-            moved |= dict.fromkeys(keys, to)
+        leave = [t for t in tabs.get(tab, ()) if t.key in keys]
+        if leave and not fits(tabs[tab]):
+            moved |= dict.fromkeys(keys, to) if fits(leave) else keys
     return tuple(replace(t, tab=moved.get(t.key, home.get(t.tab, t.tab))) for t in tables)
 
 

@@ -94,7 +94,7 @@ NO_CLAIM = "chosen for this drawing; no standard is claimed"
 def _limits(subject: Subject) -> SheetTable:
     limits = subject.drawing.limits
     names_of = {"low": limits.name, "high": limits.name, "drop": limits.drop_name, "rise": limits.rise_name}
-    columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=66))
+    columns = (ITEM, VALUE, UNIT, Column("whose", "Whose limit", style=Style.LONG, width=84))
     rows: dict[str, Cells] = {}
     names: tuple[str, ...] = ("low", "high", "drop", "rise", "most_loaded")
     if any(isinstance(e, Motor) for e in subject.drawing.elements.values()):

@@ -10,7 +10,7 @@ MARGINS = {"left": 0.4, "right": 0.4, "top": 0.4, "bottom": 0.6}  # inches
 PAGE_PIXELS = (11.0 - 0.8) * 96  # across a landscape page; Letter is the narrower
 PAGE_LINES = (8.27 - 1.0) * 72 / (LINE + 2)  # down a landscape page; A4 is the shorter
 SMALLEST = 0.6  # of full size; what would print smaller stays apart
-ALONE = 0.8  # down to which one table is pressed onto one page
+PRESSED = 0.7  # down to which lines are pressed onto one page
 TITLE, BETWEEN = 1.7, 1.0  # lines that a title takes, and the gap before it
 
 
@@ -44,7 +44,7 @@ def lines_of(words: str, room: float) -> int:
         count, used = count + 1, 0.0
         for word in paragraph.split(" "):
             length = float(len(word))
-            if used and used + 1 + length > room:
+            if used and used + length > room:
                 count, used = count + 1, 0.0
             count += int(length // max(room, 1)) if length > room else 0
             used += length % max(room, 1) + 1 if length > room else length + 1
@@ -52,15 +52,12 @@ def lines_of(words: str, room: float) -> int:
 
 
 def fits(tables: Sequence[SheetTable]) -> bool:
-    """Whether the tables print on one page, one below the other, not too small to read."""
-    return scale(tables) >= SMALLEST
-
-
-def scale(tables: Sequence[SheetTable]) -> float:
-    """Of full size, at which the tables print on one page, one below the other."""
+    """Whether the tables print on one page, one below the other, not too small to read; wide ones may be
+    smaller than many lines may press them to."""
     across = widths(tables)
-    down = sum(_height(t, across) for t in tables) - BETWEEN
-    return min(1.0, PAGE_PIXELS / sum(7 * width + 5 for width in across), PAGE_LINES / down)
+    wide = min(1.0, PAGE_PIXELS / sum(7 * width + 5 for width in across))
+    down = PAGE_LINES / (sum(_height(t, across) for t in tables) - BETWEEN)
+    return wide >= SMALLEST and down >= min(wide, PRESSED)
 
 
 def _height(t: SheetTable, across: Sequence[float]) -> float:

@@ -13,7 +13,7 @@ from app.model.parts import is_american
 from app.sheet.formats import FAILED, HEAD, INK, VERDICTS, Formats
 from app.sheet.gather import gathered
 from app.sheet.head import program
-from app.sheet.measure import ALONE, LINE, MARGINS, SMALLEST, lines_of, room, scale
+from app.sheet.measure import LINE, MARGINS, fits, lines_of, room
 from app.sheet.measure import widths as widths_of
 from app.sheet.places import Place, Places, formula, lay
 from app.sheet.safe import shown
@@ -155,8 +155,7 @@ def _print_setup(sheet: Worksheet, stacked: list[Place], across: int, drawing: D
     sheet.set_landscape()
     sheet.set_paper(LETTER if is_american(drawing.frequency_hz) else A4)
     sheet.set_margins(**MARGINS)
-    least = SMALLEST if len(stacked) > 1 else ALONE
-    sheet.fit_to_pages(1, 1 if scale([place.table for place in stacked]) >= least else 0)
+    sheet.fit_to_pages(1, 1 if fits([place.table for place in stacked]) else 0)
     sheet.print_area(0, 0, max(stacked[-1].below - 1, 0), across - 1)
     sheet.set_footer(_footer(drawing), {"scale_with_doc": False})
     if len(stacked) == 1 and first.table.rows:

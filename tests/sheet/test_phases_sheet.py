@@ -118,6 +118,14 @@ def test_units_of_few_phases_are_told_as_what_they_are(tmp_path: Path) -> None:
     assert shares == pytest.approx([(0.5 + 0.2) / 2, (0.5 + 0.3) / 2, (0.3 + 0.2) / 2])
 
 
+def test_the_basis_says_how_phases_are_judged(tmp_path: Path) -> None:
+    files(camp(), tmp_path)
+    basis = (tmp_path / "s.csv").read_text(encoding="utf-8-sig")
+    assert "Volts of the lowest and of the highest phase" in basis
+    assert "Limits,Unbalance,2.0,%" in basis
+    assert "Limits,Neutral to earth,not judged" in basis
+
+
 def test_a_regulator_of_three_tells_where_each_stands(tmp_path: Path) -> None:
     drawing = camp(
         V1=Regulator(start="B3", end="B4", measures="each"), B4=Busbar(), L7=Load(node="B4", phases="A"),
