@@ -222,9 +222,7 @@ class Paper(QGraphicsScene):
             pass
         elif isinstance(tag, NodeFigures):
             tag.read(shown.reading(id))
-            lines = wording.node_figures(
-                *shown.rows("nodes", id), shown.wires("nodes", id), shown.limits.neutral_v
-            )
+            lines = wording.node_figures(*shown.rows("nodes", id), shown.wires("nodes", id), shown.limits)
         elif isinstance(item, BranchItem):
             figures = shown.rows("branches", id)
             element = self._laid.elements[id]

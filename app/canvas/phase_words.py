@@ -89,6 +89,12 @@ def lowest_of(row: Any) -> str:
     return min(known, key=known.__getitem__) if known else ""
 
 
+def highest_of(row: Any) -> str:
+    """The letter of the phase with the highest volts; nothing where none is live."""
+    known = {c: volts_of(row, c) for c in SLOTS if not math.isnan(volts_of(row, c))}
+    return max(known, key=known.__getitem__) if known else ""
+
+
 def are_alike(row: Any) -> bool:
     """True where all phases of three read the same: no letter says more."""
     told = {figures.volts(volts_of(row, letter)) for letter in SLOTS}

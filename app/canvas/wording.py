@@ -9,7 +9,7 @@ from app.canvas import phase_words
 from app.canvas.lettering import Line, Run, Style
 from app.model import assumed, figures, taps
 from app.model.by_case import percent_of
-from app.model.drawing import Case, Drawing
+from app.model.drawing import Case, Drawing, Limits
 from app.model.kinds import (
     AnyElement,
     Capacitor,
@@ -28,6 +28,7 @@ from app.model.kinds import (
 from app.study.outcome import AttachmentState, BranchState, NodeState
 
 Lines = tuple[Line, ...]
+ANY = Limits()
 NAME_WIDTH = 26  # letters
 LINE_WIDTH = 36
 
@@ -196,13 +197,13 @@ def node_figures(
     state: NodeState,
     before: NodeState | None,
     wires: tuple[Any, Any] | None = None,
-    limit_v: float | None = None,
+    limits: Limits = ANY,
 ) -> Lines:
-    """Volts, and percent of nominal under them; of the lowest phase where they differ."""
+    """Volts, and percent of nominal under them; of one phase where they differ."""
     if not state.live:
         return ((Run("dead", Style.QUIET),),)
     if wires is not None and phase_words.lowest_of(wires[0]):
-        return phase_figures(state, *wires, limit_v)
+        return phase_figures(state, *wires, limits)
     first: Line = (Run(figures.volts(state.voltage_v)),)
     second: Line = (Run(figures.percent(state.percent), Style.QUIET),)
     if before is not None and before.live:
@@ -210,16 +211,20 @@ def node_figures(
     return first, second
 
 
-def phase_figures(state: NodeState, now: Any, before: Any, limit_v: float | None) -> Lines:
-    """The lowest phase with its letter, its part of its own base, and the neutral where it is high."""
-    letter = phase_words.lowest_of(now)
+def phase_figures(state: NodeState, now: Any, before: Any, limits: Limits) -> Lines:
+    """The lowest phase with its letter, or the highest where that alone is beyond its limit; its part of its
+    own base, and the neutral where it is high."""
+    over = state.high_percent > limits.high_percent and state.percent >= limits.low_percent
+    letter, percent = phase_words.lowest_of(now), state.percent
+    if over:
+        letter, percent = phase_words.highest_of(now), state.high_percent
     volts = phase_words.volts_of(now, letter)
     name = "" if phase_words.are_alike(now) else f"{phase_words.phase_name(letter, now)} "
     first: Line = (Run(f"{name}{figures.volts(volts)}"),)
-    second: Line = (Run(f"{figures.percent(state.percent)} of {base_words(now.base_v)}", Style.QUIET),)
+    second: Line = (Run(f"{figures.percent(percent)} of {base_words(now.base_v)}", Style.QUIET),)
     if before is not None:
         second += changed(volts, phase_words.volts_of(before, letter), figures.volts)
-    neutral = phase_words.neutral_words(now, limit_v)
+    neutral = phase_words.neutral_words(now, limits.neutral_v)
     return (first, neutral, second) if neutral is not None else (first, second)
 
 

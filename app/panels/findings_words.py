@@ -1,5 +1,7 @@
 """What the bottom line says, from an outcome. Words only."""
 
+import math
+
 from msgspec import Struct
 
 from app.model.drawing import Drawing, label
@@ -57,9 +59,15 @@ def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
 
 
 def ordered(outcome: Outcome) -> list[Finding]:
-    """All findings, failing ones first, the tightest first among equals."""
-    far = float("inf")
-    return sorted(outcome.findings, key=lambda f: (f.verdict.rank, far if f.margin is None else f.margin))
+    """All findings, failing ones first, the tightest first among equals; what fails without a figure, such
+    as a lost neutral, before the volts that come of it."""
+
+    def tightness(finding: Finding) -> float:
+        if finding.margin is not None:
+            return finding.margin
+        return -math.inf if finding.verdict is Verdict.FAILS else math.inf
+
+    return sorted(outcome.findings, key=lambda f: (f.verdict.rank, tightness(f)))
 
 
 def assumption_words(drawing: Drawing, assumption: Assumption) -> str:
