@@ -36,6 +36,12 @@ def camp(phases=NOW, **changes):
     return replace(made, cases=made.cases[:1])
 
 
+@functools.cache
+def known(phases=NOW, stout=False):
+    """The outcome on these phases, proven; `stout` is a backbone of 350 kcmil."""
+    return proven(camp(phases, **({"C1": BACKBONE} if stout else {})))
+
+
 def volts(outcome, pedestal):
     """Of its one phase to the neutral, as a meter there reads it."""
     at = outcome.wires.nodes.at(pedestal, 0)
@@ -57,7 +63,7 @@ def allocations():
 
 
 def test_as_drawn_the_worst_pedestal_fails_and_the_finding_names_phase_and_volts():
-    outcome = proven(camp())
+    outcome = known()
     lowest, where = worst(outcome)
     assert where == "B5"
     assert LEAST - 6 < lowest < LEAST - 5
@@ -67,18 +73,18 @@ def test_as_drawn_the_worst_pedestal_fails_and_the_finding_names_phase_and_volts
 
 
 def test_re_terminating_one_lateral_gains_more_than_350_kcmil_of_backbone():
-    before = worst(proven(camp()))[0]
-    moved = worst(proven(camp(("A", "B", "B", "C"))))[0]
-    bigger = worst(proven(camp(C1=BACKBONE)))[0]
+    before = worst(known())[0]
+    moved = worst(known(("A", "B", "B", "C")))[0]
+    bigger = worst(known(stout=True))[0]
     assert before < bigger < moved < LEAST
 
 
 def test_moving_it_blindly_makes_another_phase_the_new_worst():
     """J off the loaded phase A onto B: now the showers on B are lowest; N onto C: now N itself there."""
-    assert worst(proven(camp()))[1] == "B5"
-    onto_b = proven(camp(("A", "B", "B", "C")))
+    assert worst(known())[1] == "B5"
+    onto_b = known(("A", "B", "B", "C"))
     assert worst(onto_b)[1] == "B7"
-    spread = proven(camp(("C", "A", "B", "C")))
+    spread = known(("C", "A", "B", "C"))
     assert worst(spread)[1] == "B5"
     assert spread.wires.nodes.at("B5", 0).phases == "C"
     assert worst(spread)[0] < worst(onto_b)[0]
@@ -90,11 +96,11 @@ def test_the_best_of_all_81_allocations_misses_by_a_hair_and_350_kcmil_passes():
     best, _, phases = ranked[0]
     alike = {p for v, _, p in ranked if v > best - 1e-9}  # the same camp with its letters turned
     assert alike == {("A", "B", "C", "B"), ("B", "C", "A", "C"), ("C", "A", "B", "A")}
-    outcome = proven(camp(phases))
+    outcome = known(phases)
     assert worst(outcome)[0] == pytest.approx(best, rel=1e-12)
     assert LEAST - 0.15 < best < LEAST
     assert failing(outcome)
-    stout = proven(camp(phases, C1=BACKBONE))
+    stout = known(phases, True)
     assert worst(stout)[0] > LEAST
     assert failing(stout) == set()
 
@@ -132,20 +138,20 @@ def test_a_broken_neutral_at_pad_sends_one_phase_up_and_the_other_down():
 
 
 def test_the_neutral_carries_what_the_phases_do_not_cancel():
-    outcome = proven(camp())
+    outcome = known()
     wires = outcome.wires.branches.at("C1", 0)
     assert wires.n_a > 0.4 * wires.a_a
     lateral = outcome.wires.branches.at("C5", 0)
     assert lateral.n_a == pytest.approx(lateral.b_a, rel=1e-9)
     assert math.isnan(lateral.a_a)
-    best = proven(camp(allocations()[0][2]))
+    best = known(allocations()[0][2])
     assert best.wires.branches.at("C1", 0).n_a < wires.n_a / 2
 
 
 def test_fault_currents_on_the_laterals_are_those_of_loops_of_the_four_wire_solution():
-    """At +10 %, for which the loops are drawn: c is 1.10 there, 1.05 in the sample."""
+    """At the farthest; at +10 %, for which the loops are drawn: c is 1.10 there, 1.05 in the sample."""
     made = place("loonmarrow_camp")
-    hold(edits.set_limits(made, high_percent=110.0))
+    hold(edits.set_limits(made, high_percent=110.0), skip=("B4", "B6", "B7", "B8"))
     at = run(made).faults.at
     assert at("B5").ik1_max_ka < at("B4").ik1_max_ka < at("B3").ik1_max_ka
     assert math.isnan(at("B5").ik3_max_ka)
