@@ -9,9 +9,12 @@ from numpy.typing import NDArray
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.kinds import Line, Supply, Transformer
-from app.study.graph import Layout, Ring, is_bare
+from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
+from app.study.conductors import conductors_of
+from app.study.graph import NONE, Layout, Ring, is_bare
 from app.study.trace import ring_of
 from app.study.values import line_values
+from app.study.wires import PHASORS
 from app.study.zones import Zones
 from solver.rounds import neighbours, spanning
 
@@ -70,10 +73,12 @@ def units_of(layout: Layout, ring: Ring) -> list[int]:
     return sorted(b for b in ring.branches if isinstance(layout.branches[b], Transformer))
 
 
-def turned_by(layout: Layout, ring: Ring) -> float:
-    """By how much the phases are turned where a round closes: supplies' angles less the clocks on the way.
+def turned_by(layout: Layout, zones: Zones, ring: Ring) -> float:
+    """By how much the phases are turned where a round closes: supplies' angles less the clocks on the way,
+    and from three phases into two wires and back the angle of the phases between which a winding lies.
 
     layout : the graph
+    zones : system (zone,) of each zone
     ring : a round of it
 
     Returns : float [degrees] from 0 to 180; 0 where a vector group is not known, which is barred for itself
@@ -89,8 +94,55 @@ def turned_by(layout: Layout, ring: Ring) -> float:
             read = taps.group(branch.vector_group)
             if read is None:
                 return 0.0
-            angle -= HOUR * read[2] * (1 if forward else -1)
+            clock = HOUR * read[2] + _lies_at(layout, zones, row, 2) - _lies_at(layout, zones, row, 1)
+            angle -= clock * (1 if forward else -1)
     return abs((angle + 180) % 360 - 180)
+
+
+def _lies_at(layout: Layout, zones: Zones, row: int, winding: int) -> float:
+    """Degrees by which a single-phase winding leads phase A, or the first hot wire, of its zone."""
+    unit, node = layout.branches[row], (layout.start[row], layout.end[row])[winding - 1]
+    assert isinstance(unit, Transformer)
+    system = zones.system[layout.zone[node]]
+    if system == TWO_WIRE or not is_single(unit):
+        return 0.0
+    wires = conductors_of(layout, zones).units.get(row)
+    if wires is None or not wires.ends:
+        return 0.0
+    volts = (*PHASORS[system][:3], 0.0, 0.0)  # the neutral, and earth as -1
+    one, other = wires.ends[0][winding - 1]
+    return math.degrees(cmath.phase(complex(volts[one] - volts[other])))
+
+
+def is_single(unit: Transformer) -> bool:
+    """Whether a transformer is one single-phase unit.
+
+    unit : any
+
+    Returns : bool
+    """
+    return unit.build == "centre-tapped" or unit.build == "as its group" and unit.vector_group[:1] == "I"
+
+
+def systems_by_tree(layout: Layout, zones: Zones) -> list[str]:
+    """The system of every node as the tree that reaches it makes it, were no round closed.
+
+    layout : the graph
+    zones : its voltage levels
+
+    Returns : (node,) list of three-phase, two-wire or split-phase
+    """
+    found = [THREE_PHASE] * len(layout.nodes)
+    for node in layout.order:
+        by, supply = layout.fed_by[node], layout.supply_of[layout.tree[node]]
+        if by == NONE:
+            held = None if supply == NONE else layout.attachments[supply]
+            found[node] = held.wires if isinstance(held, Supply) else zones.system[layout.zone[node]]
+            continue
+        unit, above = layout.branches[by], found[layout.fed_from[node]]
+        winding = 2 if layout.end[by] == node else 1
+        found[node] = system_behind(unit, winding, above) if isinstance(unit, Transformer) else above
+    return found
 
 
 def mismatch(layout: Layout, ring: Ring, ratio: NDArray[np.float64], rows: dict[int, int]) -> float:
@@ -146,7 +198,7 @@ def _per_unit(drawing: Drawing, layout: Layout, zones: Zones, row: int) -> compl
         uk, r = branch.uk_percent / 100, assumed.value(branch, "load_loss_w") / branch.rating_kva / 1e3
         return complex(r, math.sqrt(max(uk**2 - r**2, 0.0))) / _rating_va(layout, row)
     if isinstance(branch, Line):
-        two_wire = zones.two_wire[[layout.tree[layout.start[row]]]]
+        two_wire = np.array([zones.system[layout.zone[layout.start[row]]] != THREE_PHASE])
         nominal = zones.nominal_v[[layout.zone[layout.start[row]]]]
         z = complex(line_values([branch], two_wire, drawing.frequency_hz, nominal)[0][0])
         return z / float(nominal[0]) ** 2

@@ -59,7 +59,10 @@ def idle_findings(
 def _idle(network: Network) -> Network:
     """The same network with everything off that hangs on it."""
     names = ("load_power", "shunt_y", "line_y", "transformer_y")
-    return replace(network, **{name: np.zeros_like(getattr(network, name)) for name in names})
+    wires = network.wires
+    if wires is not None:
+        wires = replace(wires, units=replace(wires.units, iron=np.zeros_like(wires.units.iron)))
+    return replace(network, wires=wires, **{name: np.zeros_like(getattr(network, name)) for name in names})
 
 
 def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int], apart: float) -> Finding:

@@ -2,8 +2,9 @@
 
 from app.model.drawing import Drawing
 from app.model.figures import plain
-from app.model.kinds import Switch
-from app.study.around import HOUR, bare_rings, times_rated, turned_by, units_of
+from app.model.kinds import Switch, Transformer
+from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE, system_behind
+from app.study.around import HOUR, bare_rings, is_single, systems_by_tree, times_rated, turned_by, units_of
 from app.study.graph import Layout, Ring, is_bare
 from app.study.outcome import Finding, Verdict
 from app.study.rows import Rows
@@ -11,6 +12,7 @@ from app.study.words import list_of, tell
 from app.study.zones import Zones
 from solver import Trouble
 
+HAS = {THREE_PHASE: "three phases", TWO_WIRE: "two wires", SPLIT: "two hot wires and a neutral"}
 MOST = 12  # rings that are named one by one
 
 
@@ -89,21 +91,38 @@ def _looped(drawing: Drawing, layout: Layout, ring: Ring) -> Finding | None:
 
 
 def _unlike(drawing: Drawing, layout: Layout, zones: Zones, ring: Ring) -> Finding | None:
-    """Supplies of two wires and of three phases that are joined."""
-    pair = ring.supplies
-    if pair is None or len({bool(zones.two_wire[layout.tree[layout.at[s]]]) for s in pair}) == 1:
+    """Where systems of unlike wires meet: three phases, two wires, two hot wires and a neutral."""
+    met = _met(layout, zones, ring)
+    if met is None:
         return None
     ids, named = _ids(layout, ring.branches), _pair(layout, ring)
-    words = (
-        f"{list_of(drawing, named)} are joined through {list_of(drawing, ids)}, but one has two wires and "
-    )
-    words += "the other three phases. Open or remove what joins them."
-    return Finding("supplies joined", Verdict.BLOCKS, (*named, *ids), words)
+    told = f"{list_of(drawing, named)} are joined through {list_of(drawing, ids)}" if named else ""
+    told = told or f"{list_of(drawing, ids)} form{'s' if len(ids) == 1 else ''} a closed loop"
+    one, other = sorted((HAS[system] for system in met), reverse=True)
+    words = f"{told}, but one has {one} and the other {other}. Open or remove what joins them."
+    return Finding("supplies joined" if named else "closed loop", Verdict.BLOCKS, (*named, *ids), words)
+
+
+def _met(layout: Layout, zones: Zones, ring: Ring) -> tuple[str, str] | None:
+    """The two systems that meet where a round closes; None where they are one."""
+    by_tree = systems_by_tree(layout, zones)
+    for row in ring.branches:
+        unit, ends = layout.branches[row], (layout.start[row], layout.end[row])
+        if row in (layout.fed_by[ends[0]], layout.fed_by[ends[1]]):
+            continue
+        one, two = by_tree[ends[0]], by_tree[ends[1]]
+        if isinstance(unit, Transformer):
+            if system_behind(unit, 2, one) == two or system_behind(unit, 1, two) == one:
+                continue
+            return (system_behind(unit, 2, one), two)
+        if one != two:
+            return (one, two)
+    return None
 
 
 def _turned(drawing: Drawing, layout: Layout, zones: Zones, ring: Ring) -> Finding | None:
     """A round on which the phases come back turned by an hour or more."""
-    apart = turned_by(layout, ring)
+    apart = turned_by(layout, zones, ring)
     return _turned_finding(drawing, layout, zones, ring, apart) if round(apart / HOUR) else None
 
 
@@ -119,13 +138,20 @@ def _turned_finding(drawing: Drawing, layout: Layout, zones: Zones, ring: Ring, 
         told += " stand in one closed loop; the phases" if len(ids) > 1 else " closes a loop; its phases"
     words = f"{told} meet {plain(apart, 0)}° apart{_driven(drawing, layout, zones, ring, apart)}. "
     words += (
-        "Give them groups that agree, or open the loop." if ids else "Let their angles agree, or part them."
+        "Give them groups that agree, and phases, or open the loop."
+        if any(is_single(unit) for i in ids if isinstance(unit := drawing.elements[i], Transformer))
+        else "Give them groups that agree, or open the loop."
+        if ids
+        else "Let their angles agree, or part them."
     )
     return Finding("vector group", Verdict.BLOCKS, (*pair, *ids), words)
 
 
 def _group(drawing: Drawing, id: str) -> str:
-    return str(getattr(drawing.elements[id], "vector_group", ""))
+    unit = drawing.elements[id]
+    assert isinstance(unit, Transformer)
+    lies = f" on {unit.phases}" if is_single(unit) and unit.phases != "all" else ""
+    return f"{unit.vector_group}{lies}"
 
 
 def _angle(drawing: Drawing, id: str) -> float:

@@ -9,14 +9,13 @@ from numpy.typing import NDArray
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Supply
-from app.model.levels import SPLIT, THREE_PHASE
 from app.study.conductors import Conductors
 from app.study.graph import Layout, arrays_of
 from app.study.leads import Leads, across
 from app.study.line_wires import line_matrices
 from app.study.unit_ports import port_of, ratio_of, through
 from app.study.values import held_values, load_values, shunt_values, transformer_values
-from app.study.wires import PER_PHASE, N
+from app.study.wires import PER_PHASE, PHASORS, N
 from app.study.zones import Zones
 from solver.network import Network
 from solver.windings import stacked
@@ -26,8 +25,6 @@ K = 4
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
-TURN = np.exp(-2j * np.pi / 3)
-PHASORS = {THREE_PHASE: (1, TURN, TURN**2, 0), SPLIT: (1, -1, 0, 0)}
 
 
 def wire_network(
@@ -104,7 +101,7 @@ def _held(drawing: Drawing, layout: Layout, rows: Index) -> Complex:
     supplies: list[Supply] = _of(layout.attachments, rows)
     held = held_values(supplies, _of(layout.attachment_ids, rows), drawing.cases)
     size = np.array([PER_PHASE[s.wires] for s in supplies], dtype=float).reshape(-1, 1)
-    turned = np.array([PHASORS.get(s.wires, (1, 0, 0, 0)) for s in supplies], complex).reshape(-1, K)
+    turned = np.array([PHASORS[s.wires] for s in supplies], complex).reshape(-1, K)
     return np.asarray((held / size)[:, None, :] * turned[..., None])
 
 

@@ -1,5 +1,6 @@
 """Conductors as bits and letters: A 1, B 2, C 4, N 8; the systems they belong to."""
 
+import cmath
 from collections.abc import Iterable
 
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
@@ -9,6 +10,12 @@ ALL_LETTERS = tuple("".join(x for slot, x in enumerate(LETTERS) if has >> slot &
 N, NEUTRAL, ABC = 3, 0b1000, 0b0111
 OF_SYSTEM = {THREE_PHASE: ABC, TWO_WIRE: 0b0001, SPLIT: 0b0011}
 ROOT3 = 3**0.5
+TURN = cmath.exp(-2j * cmath.pi / 3)
+PHASORS = {  # volts of a balanced system of one volt, by slot
+    THREE_PHASE: (1, TURN, TURN**2, 0),
+    TWO_WIRE: (1, 0, 0, 0),
+    SPLIT: (1, -1, 0, 0),
+}
 PER_PHASE = {THREE_PHASE: ROOT3, TWO_WIRE: 1.0, SPLIT: 2.0}  # nominal volts over those of a phase to neutral
 
 
