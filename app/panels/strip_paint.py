@@ -5,12 +5,13 @@ from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPen
 
 from app.canvas.palette import Palette, font
-from app.model.drawing import Drawing, Limits, label
-from app.model.figures import length, plain
+from app.model.drawing import Drawing, label
+from app.model.figures import length
 from app.model.kinds import Busbar, Transformer
 from app.model.taps import by_hand
 from app.panels.strip_axes import Axes, Stretch, ticks_m
-from app.panels.strip_phases import PhaseCurve, base_words, name_phases, paint_phases
+from app.panels.strip_band import paint_band
+from app.panels.strip_phases import PhaseCurve, name_phases, paint_phases
 from app.panels.strip_routes import Routes
 from app.panels.style import mixed
 from app.panels.words import LEFT, RIGHT
@@ -48,7 +49,7 @@ class Shown(Struct, frozen=True):
 def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The plot under the head."""
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    _paint_band(painter, shown.axes, shown.drawing.limits, palette, shown.base_v)
+    paint_band(painter, shown.axes, shown.drawing.limits, palette, shown.base_v)
     _paint_route_axis(painter, shown, palette)
     for case, curve in enumerate(shown.curves):
         if case != shown.case:
@@ -65,25 +66,6 @@ def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     _paint_curve(painter, shown, palette)
     _paint_handles(painter, shown, palette)
     _paint_names(painter, shown, palette)
-
-
-def _paint_band(painter: QPainter, axes: Axes, limits: Limits, palette: Palette, base_v: float) -> None:
-    room = axes.room
-    top, bottom = axes.y(limits.high_percent), axes.y(limits.low_percent)
-    band = QRectF(room.left() - 10, top, room.width() + 22, bottom - top)
-    painter.fillRect(band, mixed(palette.good, palette.field, 0.13 if palette.dark else 0.07))
-    painter.setFont(font(8))
-    for percent, limit in ((limits.high_percent, True), (100.0, False), (limits.low_percent, True)):
-        y = axes.y(percent)
-        style = Qt.PenStyle.DashLine if limit else Qt.PenStyle.SolidLine
-        painter.setPen(QPen(palette.soft if limit else palette.faint, 1, style))
-        painter.drawLine(QPointF(band.left(), y), QPointF(band.right(), y))
-        painter.setPen(palette.soft)
-        text = plain(percent, 0 if percent == round(percent) else 1)
-        painter.drawText(QRectF(0, y - 8, band.left() - 6, 16), int(RIGHT), text)
-        if base_v == base_v:
-            told = base_words(percent * base_v / 100)
-            painter.drawText(QRectF(band.right() + 12, y - 8, 60, 16), int(LEFT), told)
 
 
 def _paint_route_axis(painter: QPainter, shown: Shown, palette: Palette) -> None:

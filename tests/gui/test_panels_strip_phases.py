@@ -5,11 +5,13 @@ import math
 import pytest
 from panels_stage import fernhollow, stage
 from phase_drawings import camp
-from PySide6.QtCore import QPoint, Qt
+from PySide6.QtCore import QPoint, QRectF, Qt
 from PySide6.QtTest import QTest
 
-from app.model.drawing import Case
+from app.model.drawing import Case, Limits
 from app.model.kinds import Load, Transformer
+from app.panels.strip_axes import Axes
+from app.panels.strip_band import LABEL, label_places
 
 CASES = (Case(name="Peak"), Case(name="Night", load_percent=20.0))
 
@@ -95,3 +97,13 @@ def test_the_strip_is_painted_in_both_looks(at, qtbot):
         at.attention.select(("C1",))
         picture = at.strip.grab().toImage()
         assert not picture.isNull()
+
+
+def test_figures_of_a_narrow_band_keep_apart():
+    axes = Axes(QRectF(50, 30, 600, 60), 60.0, 130.0, 1.0, 40.0)
+    limits = Limits(low_percent=97.0, high_percent=103.0)
+    places = label_places(axes, limits)
+    assert set(places) == {97.0, 103.0}  # no room for the nominal between
+    assert abs(places[97.0] - places[103.0]) >= LABEL - 1e-9
+    wide = label_places(Axes(QRectF(50, 30, 600, 200), 90.0, 112.0, 1.0, 40.0), Limits())
+    assert 100.0 in wide
