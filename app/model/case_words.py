@@ -60,6 +60,8 @@ def typed_words(case: Case, id: str, element: Scaled) -> str:
     if own is None:
         return ""
     words = amount(case, id, element) if own.percent is not None or states_demand(own) else ""
+    if own.percent and isinstance(element, Load):  # a share of a load was typed as such
+        words = figures.stated(own.percent, "%")
     factor = "" if own.power_factor is None else f"at {figures.stated(own.power_factor)}"
     return f"{words} {factor}".strip()
 
@@ -97,13 +99,18 @@ def own_told(case: Case, drawing: Drawing) -> list[str]:
     return [f"{label(drawing, i)} {told(case, i, e)}" for i, e in hung]
 
 
+def rounded(percent: float) -> str:
+    """A share to three figures: 21.4 %."""
+    return figures.stated(float(f"{percent:.3g}"), "%")
+
+
 def told(case: Case, id: str, element: Scaled) -> str:
     """The same in a sentence: `5 kVA (6.25 %), power factor 0.98`."""
     own = case.own[id]
     parts = []
     if own.percent is not None or states_demand(own):
         words, percent = amount(case, id, element), percent_of(case, id, element)
-        parts.append(words if words == "off" else f"{words} ({figures.stated(percent, '%')})")
+        parts.append(words if words == "off" else f"{words} ({rounded(percent)})")
     if own.power_factor is not None:
         parts.append(f"power factor {figures.stated(own.power_factor)}")
     return ", ".join(parts)

@@ -5,7 +5,7 @@ from collections.abc import Callable, Sequence
 from app.canvas.theme import Theme
 from app.model import figures
 from app.model.by_case import Scaled, percent_of, stated, states_demand
-from app.model.case_words import amount, typed_words
+from app.model.case_words import amount, rounded, typed_words
 from app.model.drawing import Case
 from app.model.fields import Field
 from app.model.kinds import Load, Supply
@@ -48,8 +48,8 @@ class CaseRow(FieldRow):
         said = own is not None and (own.percent is not None or states_demand(own))
         percent = percent_of(case, *hung[0]) if said else None
         whole, unit = stated(hung[0][1])
-        of = f"{figures.stated(percent, '%')} of {figures.stated(whole, unit)}" if percent else ""
-        self.share.say(of)
+        part = amount(case, *hung[0]) if self._value.endswith("%") else rounded(percent or 0.0)
+        self.share.say(f"{part} of {figures.stated(whole, unit)}" if percent else "")
 
 
 class CaseRows(Page):

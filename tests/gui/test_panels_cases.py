@@ -38,6 +38,9 @@ def test_kva_and_a_power_factor_typed_for_one_case_are_one_undo_step_and_said_ba
     assert set_up.session.history.undoText() == "House in case Quiet night, high intake: 5 kVA at 0.98"
     assert rows[1].editor.text() == "5 kVA at 0.98"
     assert rows[1].share.text() == "6.25 % of 80 kVA"
+    type_into(rows[1], "12.5 %")
+    assert (rows[1].editor.text(), rows[1].share.text()) == ("12.5 %", "10 kVA of 80 kVA")
+    set_up.session.history.undo()
     type_into(rows[1], "")
     assert set_up.drawing.cases[1].own == {}
     assert rows[1].share.isHidden()
