@@ -12,13 +12,16 @@ from solver.sweep import Sweep
 from solver.ties import Ties
 
 CLOSE = 1e-12  # largest change of any voltage in one sweep, relative to the no-load voltage there
-NEAR = 1e-7  # the same on the way to the whole load
+NEAR = 1e-5  # the same on the way to the whole load
+ROUNDING = 1e-10  # where no step brings it down any more
 MOST = 250  # steps in all
 STEPS = 12  # at one share of the load
 DIRECTIONS = 40
-FORCING = 1e-4  # how far a step closes the gap
+FORCING = 1e-3  # how far a step closes the gap, to first order
 NUDGE = 1.5e-8  # of the volts, by which the slope is felt
 LEAST = 5e-5  # share of the load below which there is no way on
+HOPELESS = 0.02  # the same of what lacks to the whole load
+FALLING = 0.6  # to which each step must bring the gap down
 DEEP = 0.3  # of the volts across a load, below which one step must not lead
 
 
@@ -109,7 +112,9 @@ class _Way:
         change = np.abs(self.gap.view(np.float64)).max(axis=(0, 1)).reshape(-1, 2).max(axis=1)
         whole = self.aim == 1
         good = change < np.where(whole, CLOSE, NEAR)
-        bad = ~good & ~((change < self.before) & (self.tries < STEPS))
+        stuck = ~((change < FALLING * self.before) & (self.tries < STEPS))
+        good |= stuck & (change < ROUNDING)
+        bad = stuck & ~good
         rows = self.points[good]
         self.answer[..., rows], self.reached[rows] = self.voltage[..., good], self.aim[good]
         if self.tied is not None and current is not None:
@@ -124,7 +129,8 @@ class _Way:
         self.tries[moved], self.before[moved] = -1, np.inf
         self.before[~moved] = change[~moved]
         self.tries += 1
-        stay = ~(good & whole) & ~(bad & ~(self.stride >= LEAST))
+        least = np.maximum(LEAST, HOPELESS * (1 - self.done))
+        stay = ~(good & whole) & ~(bad & ~(self.stride >= least))
         self.fresh = moved
         if not stay.all():
             self._keep(np.flatnonzero(stay))
