@@ -18,6 +18,8 @@ TOGETHER = (  # tabs that may share one, and its name, the broadest first; where
     ("Supplies", ("Supplies", "Switches")),
     ("Faults", ("Faults", "Circuit ends", "Devices")),
     ("Balance", ("Balance", "Losses")),
+    ("Year", ("Year", "Year basis")),
+    ("Year by element", ("Year branches", "Year nodes", "Year loads")),
 )
 APART = {  # what leaves a tab that is longer than a page: where to together, and where to each where that is
     # longer too, as heads are repeated only where a table has a tab of its own

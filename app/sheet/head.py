@@ -80,7 +80,7 @@ def result_words(subject: Subject) -> str:
 
 def basis_tables(subject: Subject) -> list[SheetTable]:
     """Limits, constants, rules, cases and every assumed value."""
-    return [_limits(subject), _rules(subject), *case_tables(subject, BASIS), _constants(), _assumed(subject)]
+    return [_limits(subject), _constants(), _rules(subject), *case_tables(subject, BASIS), _assumed(subject)]
 
 
 BASIS = "Basis"
