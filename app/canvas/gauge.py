@@ -21,6 +21,7 @@ class Reading(Struct, frozen=True):
     lowest: float
     highest: float
     shown: float
+    upper: float | None = None  # of the highest phase in the case shown, where it is another
 
 
 def height_of(percent: float, reading: Reading) -> float:
@@ -51,7 +52,10 @@ def paint(
     middle = (y(reading.highest) + y(reading.lowest)) / 2
     reach = max(y(reading.lowest) - y(reading.highest), BAR) / 2  # one case alone is a dot
     _bar(painter, x, middle - reach, middle + reach, tint)
-    _pointer(painter, x + BAR, y(reading.shown), palette.soft if stale else palette.ink)
+    ink = palette.soft if stale else palette.ink
+    if reading.upper is not None:
+        _pointer(painter, x + BAR, y(reading.upper), palette.paper, ink)
+    _pointer(painter, x + BAR, y(reading.shown), ink)
 
 
 def _bar(painter: QPainter, x: float, top: float, foot: float, fill: QColor) -> None:
@@ -60,6 +64,8 @@ def _bar(painter: QPainter, x: float, top: float, foot: float, fill: QColor) -> 
     painter.drawRoundedRect(QRectF(x - BAR / 2, top, BAR, foot - top), BAR / 2, BAR / 2)
 
 
-def _pointer(painter: QPainter, x: float, y: float, fill: QColor) -> None:
+def _pointer(painter: QPainter, x: float, y: float, fill: QColor, edge: QColor | None = None) -> None:
+    """Filled at what the words tell, hollow at the highest phase."""
+    painter.setPen(QPen(edge, 1.0) if edge is not None else Qt.PenStyle.NoPen)
     painter.setBrush(fill)
     painter.drawPolygon(QPolygonF([QPointF(x, y), QPointF(x + 7, y - 4), QPointF(x + 7, y + 4)]))

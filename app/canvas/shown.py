@@ -13,6 +13,8 @@ from app.model.kinds import Attachment, Branch, Transformer
 from app.study.outcome import Outcome, Table
 from solver.status import Status
 
+APART = 0.5  # percent from the lowest phase to the highest that the gauge tells apart
+
 
 class Row:
     """The state of one element in one case, each figure read where it is asked for."""
@@ -103,7 +105,9 @@ class Shown(Struct, frozen=True):
         high_now = nodes.column("high_percent")[nodes.rows[id]].tolist()
         known += [p for p in high_now if not math.isnan(p)]
         low, high = self.limits.low_percent, self.limits.high_percent
-        return gauge.Reading(low, high, min(known), max(known), percent[self.case])
+        upper = high_now[self.case] if self.outcome.wires is not None else percent[self.case]
+        apart = upper if upper - percent[self.case] > APART else None
+        return gauge.Reading(low, high, min(known), max(known), percent[self.case], apart)
 
 
 def column_of(table: Table[Any], name: str, case: int) -> list[Any]:

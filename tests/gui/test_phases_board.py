@@ -169,3 +169,13 @@ def test_the_gauge_reaches_up_to_the_highest_phase(bench):
     high = float(shown.outcome.nodes.column("high_percent")[shown.outcome.nodes.rows["LODGE"], 0])
     assert math.isclose(reading.highest, max(high, reading.shown))
     assert isinstance(bench.board.content(), QRectF)
+
+
+def test_the_gauge_points_at_the_highest_phase_too_where_it_is_another(bench):
+    outcome = bench.solving.outcome
+    higher = outcome.nodes.column("percent").copy()
+    higher[outcome.nodes.rows["LODGE"]] += 3.0
+    outcome.nodes.columns["high_percent"] = higher
+    reading = bench.board._shown.reading("LODGE")
+    assert math.isclose(reading.upper, reading.shown + 3.0)
+    assert bench.board._shown.reading("N1").upper is None
