@@ -11,7 +11,7 @@ from solver.solution import Solution
 from solver.solving import solve
 from solver.status import Status
 
-TRIES = 4
+NARROW = 5e-4  # of the share, to which it is found
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,9 +33,9 @@ def largest_share(network: Network, point: int = 0) -> Share:
     """Largest share of all demands at one operating point that still has an operating point.
 
     Every demand (a positive load_power) is scaled alike; generators stay as they are. The gap between the
-    last share that solves and the first that does not is cut into four, solved as one batch, until it is
-    below 0.05 %. To blame is the branch with the largest drop on the way from
-    the supply to the lowest node, percent of no-load voltage, at the largest share.
+    last share that solves and the first that does not is halved until it is below 0.05 %. To blame is the
+    branch with the largest drop on the way from the supply to the lowest node, percent of no-load voltage,
+    at the largest share.
 
     network : Network
     point : which operating point of its batch
@@ -54,12 +54,10 @@ def largest_share(network: Network, point: int = 0) -> Share:
         low, high = high, high * 4
         if high > 1e3:
             return Share(np.inf, None, None)
-    while high - low > 5e-4 * high:
-        shares = np.linspace(low, high, TRIES + 1)[1:-1]
-        status = solve(scaled(one, shares), forest=forest).status
-        firm = next((i for i, s in enumerate(status) if s is not Status.SOLVED), len(shares))
-        edges = np.concatenate(([low], shares, [high]))
-        low, high = float(edges[firm]), float(edges[firm + 1])
+    while high - low > NARROW * high:
+        middle = (low + high) / 2
+        solved = solve(scaled(one, np.array([middle])), forest=forest).solved
+        low, high = (middle, high) if solved else (low, middle)
         if high < 1e-9:
             return Share(0.0, None, None)
     line, transformer = blame(solve(scaled(one, np.array([low])), forest=forest))
