@@ -5,8 +5,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import ArrayLike
 
-from solver.arrays import Complex, Flag, Real
-from solver.forest import grow
+from solver.arrays import Complex, Flag, Index, Real
+from solver.forest import Forest, grow
 from solver.network import Network
 from solver.placed import Placed, put
 from solver.rounds import Trouble
@@ -14,6 +14,7 @@ from solver.share import pick
 from solver.sweep import Sweep
 from solver.ties import Ties, gathered
 
+AT_ONCE = 48  # nodes asked in one batch, so that memory stays small
 OPEN = 1e-9  # A of 1 A that find no way back, from which a conductor counts as not earthed
 
 
@@ -31,7 +32,10 @@ class Blocks:
 
 
 def impedance_blocks(network: Network, nodes: ArrayLike, point: int = 0) -> Blocks:
-    """Impedance matrix of each of some nodes, out of unit currents drawn there, all in one batch.
+    """Impedance matrix of each of some nodes.
+
+    Along the trees Z = Σ z, and A Z Aᵀ + Z' through each transformer; ties take T C (z + Cᵀ T C)⁻¹ (T C)ᵀ off
+    it. Where something is loose, out of unit currents drawn at the nodes, some dozens at once.
 
     network : Network with wires
     nodes : (chosen,) int
@@ -46,17 +50,49 @@ def impedance_blocks(network: Network, nodes: ArrayLike, point: int = 0) -> Bloc
         raise ValueError("two supplies stand on one node")
     placed = put(quiet, forest)
     chosen, k = np.asarray(nodes, dtype=np.intp), network.conductors
-    count = chosen.size
     place = forest.place[chosen]
     live = np.flatnonzero(place >= 0)
+    z = np.full((chosen.size, k, k), complex(np.nan, np.nan))
+    earthed = np.ones((chosen.size, k), dtype=bool)
+    ties = Ties(placed, forest) if _tied(placed) else None
+    if placed.loose is None:
+        z[live] = _summed(placed, forest, ties)[place[live]]
+        return Blocks(z, earthed)
+    for some in np.split(live, range(AT_ONCE, live.size, AT_ONCE)):
+        z[some], earthed[some] = _driven(placed, forest, ties, place[some])
+    return Blocks(z, earthed)
+
+
+def _summed(placed: Placed, forest: Forest, ties: Ties | None) -> Complex:
+    """(live, k, k) what each place sees, summed along the trees, with what ties take off it."""
+    supplied = int(forest.depth_zone[1])
+    sums = np.zeros((forest.order.size + 1, *placed.z.shape[1:3]), dtype=np.complex128)
+    sums[:-1] += placed.z[..., 0]
+    np.subtract.at(sums, forest.end, np.broadcast_to(placed.z[..., 0], sums[:-1].shape))
+    z = np.cumsum(sums[:-1], axis=0)
+    for start, stop in zip(forest.depth_zone[1:-1], forest.depth_zone[2:], strict=True):
+        assert placed.gain is not None
+        fed = slice(start - supplied, stop - supplied)
+        gain = placed.gain[fed, ..., 0]
+        above = gain @ z[forest.zone_fed[start:stop]] @ np.swapaxes(gain, 1, 2) + placed.series[fed, ..., 0]
+        places = slice(forest.zone_start[start], forest.zone_start[stop])
+        z[places] += above[forest.zone[places] - start]
+    if ties is not None:
+        drop = ties.drop[..., 0]
+        z -= np.einsum("pit,tu,pju->pij", drop, ties.inverse[0], drop, optimize=True)
+    return z
+
+
+def _driven(placed: Placed, forest: Forest, ties: Ties | None, place: Index) -> tuple[Complex, Flag]:
+    """(chosen, k, k) what some places see, out of unit currents; which of these find their way back."""
+    count, k = place.size, placed.z.shape[1]
     sweep = Sweep(replace(placed, root=np.zeros_like(placed.root)), forest, count * k)
     sweep.current[...] = 0
     unit = sweep.current.reshape(forest.order.size, k, count, k)
-    unit[place[live], :, live] = np.eye(k)
-    volts, open_ways = _answered(sweep, placed, Ties(placed, forest) if _tied(placed) else None)
-    z = np.full((count, k, k), complex(np.nan, np.nan))
-    z[live] = -volts.reshape(unit.shape)[place[live], :, live]
-    return Blocks(z, ~open_ways.reshape(count, k))
+    unit[place, :, np.arange(count)] = np.eye(k)
+    volts, open_ways = _answered(sweep, placed, ties)
+    z = -volts.reshape(unit.shape)[place, :, np.arange(count)]
+    return z, ~open_ways.reshape(count, k)
 
 
 def _tied(placed: Placed) -> bool:

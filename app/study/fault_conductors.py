@@ -12,15 +12,13 @@ from app.model.levels import TWO_WIRE
 from app.study.fault_wire_rows import Way, fault_network
 from app.study.graph import NONE, Layout
 from app.study.unit_wires import OPEN
-from app.study.wire_rows import PHASORS
-from app.study.wires import PER_PHASE, N, slots
+from app.study.wires import PER_PHASE, PHASORS, N, slots
 from app.study.zones import Zones
 from solver.fault_wires import Blocks, impedance_blocks, wire_faults
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
-AT_ONCE = 48  # nodes asked in one batch, so that memory stays small
 NONE_BACK = 1e-4  # of the current between conductors, below which a fault to earth counts as not fed
 EARTH_LAST = 1e-9  # keeps a fault to earth behind all others
 PLAIN_V = 300.0  # up to here one of two wires is taken for the neutral, above it may be two phases
@@ -140,14 +138,11 @@ def _seen(
 ) -> tuple[Blocks, NDArray[np.bool_]]:
     """What nodes see, and which conductors reach them."""
     network, conductors = fault_network(drawing, layout, zones, factors, way)
-    parts = [impedance_blocks(network, nodes[i : i + AT_ONCE]) for i in range(0, len(nodes), AT_ONCE)]
     reached = [slots(conductors.node[node] & conductors.drawn[node]) for node in nodes]
     has = np.zeros((len(nodes), N + 1), dtype=bool)
     for row, found in enumerate(reached):
         has[row, found] = True
-    return Blocks(
-        *(np.concatenate([getattr(part, name) for part in parts]) for name in ("z", "earthed"))
-    ), has
+    return impedance_blocks(network, nodes), has
 
 
 def _volts(layout: Layout, zones: Zones, c: Real, nodes: Index) -> Complex:
@@ -156,7 +151,7 @@ def _volts(layout: Layout, zones: Zones, c: Real, nodes: Index) -> Complex:
     for row, node in enumerate(nodes):
         zone = layout.zone[node]
         system = zones.system[zone]
-        turned = np.array(PHASORS.get(system, (1, 1, 1, 0)))
+        turned = np.array((1, 1, 1, 0) if system == TWO_WIRE else PHASORS[system])  # whichever phase it is
         found[row] = turned * c[node] * zones.nominal_v[zone] / PER_PHASE[system]
     return found
 

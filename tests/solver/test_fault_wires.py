@@ -6,7 +6,11 @@ from test_wires import BETWEEN, DELTA, EARTHED, FOUR, HIGH, LOW, Z, random_layou
 from wired import ABC, ABCN, A, B, C, Layout, N, Unit, balanced
 
 from solver import fault, line, solve
-from solver.fault_wires import impedance_blocks, wire_faults
+from solver.fault_wires import _driven, _quiet, impedance_blocks, wire_faults
+from solver.forest import grow
+from solver.placed import put
+from solver.share import pick
+from solver.ties import Ties
 
 
 def idle(layout):
@@ -92,3 +96,22 @@ def test_a_lateral_has_what_it_has():
     assert np.isnan(found.phase_phase[0]).all()
     assert np.isnan(found.three_phase).all()
     assert np.isnan(found.phase_earth[1]).all()
+
+
+@pytest.mark.parametrize("seed", range(8))
+def test_sums_along_the_trees_are_what_unit_currents_find(seed):
+    """Rings, electrodes, earthed stars beside deltas: what is summed against what is driven, node by node."""
+    layout = bare(random_layout(seed, rings=seed % 4))
+    network, nodes = layout.network(), np.arange(layout.nodes)
+    summed = impedance_blocks(network, nodes)
+    quiet = _quiet(pick(network, np.array([0])))
+    forest = grow(quiet)
+    placed = put(quiet, forest)
+    if placed.loose is not None:
+        pytest.skip("something is loose, so that nothing is summed")
+    ties = None if placed.joints is None else Ties(placed, forest)
+    live = nodes[forest.place >= 0]
+    driven, earthed = _driven(placed, forest, ties, forest.place[live])
+    assert earthed.all()
+    size = np.abs(driven).max(axis=(1, 2), keepdims=True)
+    assert (np.abs(summed.z[live] - driven) <= 1e-9 * size).all()
