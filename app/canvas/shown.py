@@ -6,7 +6,7 @@ from typing import Any
 from msgspec import Struct
 from numpy.typing import NDArray
 
-from app.canvas import gauge, phase_words
+from app.canvas import gauge, phase_words, wording
 from app.canvas.phase_mark import Phases
 from app.model.drawing import Limits
 from app.model.kinds import Attachment, Branch, Transformer
@@ -105,9 +105,11 @@ class Shown(Struct, frozen=True):
         high_now = nodes.column("high_percent")[nodes.rows[id]].tolist()
         known += [p for p in high_now if not math.isnan(p)]
         low, high = self.limits.low_percent, self.limits.high_percent
-        upper = high_now[self.case] if self.outcome.wires is not None else percent[self.case]
-        apart = upper if upper - percent[self.case] > APART else None
-        return gauge.Reading(low, high, min(known), max(known), percent[self.case], apart)
+        now, upper = percent[self.case], high_now[self.case]
+        apart = upper if self.outcome.wires is not None and upper - now > APART else None
+        if apart is not None and wording.is_over(now, upper, self.limits):
+            now, apart = upper, None
+        return gauge.Reading(low, high, min(known), max(known), now, apart)
 
 
 def column_of(table: Table[Any], name: str, case: int) -> list[Any]:

@@ -214,9 +214,8 @@ def node_figures(
 def phase_figures(state: NodeState, now: Any, before: Any, limits: Limits) -> Lines:
     """The lowest phase with its letter, or the highest where that alone is beyond its limit; its part of its
     own base, and the neutral where it is high."""
-    over = state.high_percent > limits.high_percent and state.percent >= limits.low_percent
     letter, percent = phase_words.lowest_of(now), state.percent
-    if over:
+    if is_over(state.percent, state.high_percent, limits):
         letter, percent = phase_words.highest_of(now), state.high_percent
     volts = phase_words.volts_of(now, letter)
     name = "" if phase_words.are_alike(now) else f"{phase_words.phase_name(letter, now)} "
@@ -226,6 +225,11 @@ def phase_figures(state: NodeState, now: Any, before: Any, limits: Limits) -> Li
         second += changed(volts, phase_words.volts_of(before, letter), figures.volts)
     neutral = phase_words.neutral_words(now, limits.neutral_v)
     return (first, neutral, second) if neutral is not None else (first, second)
+
+
+def is_over(lowest: float, highest: float, limits: Limits) -> bool:
+    """Whether the highest phase is what matters: it alone is beyond its limit."""
+    return highest > limits.high_percent and lowest >= limits.low_percent
 
 
 def base_words(volts: float) -> str:

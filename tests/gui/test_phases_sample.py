@@ -90,6 +90,7 @@ def test_a_phase_that_alone_is_too_high_is_the_one_that_is_told(desk):
     node, wires = desk.solving.outcome.nodes.at(id, case), desk.solving.outcome.wires.nodes.at(id, case)
     assert node.high_percent > desk.drawing.limits.high_percent
     assert desk.board.tags[id].text.startswith(f"B {figures.volts(wires.b_v)}")
+    assert desk.board._shown.reading(id).shown == node.high_percent
 
 
 def test_a_lost_neutral_is_told_in_the_bar_and_on_the_card(qtbot):
