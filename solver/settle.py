@@ -211,9 +211,6 @@ class _Run:
 
 def _ratio(weighted: Complex, step: Complex, before: Complex) -> Complex:
     """(k, batch) c that fits step = c conj(before) best; weighted is before, by the square of its weight."""
-    if before[0].size == 1:
-        row = weighted.reshape(-1)
-        return np.array([[row.dot(step.reshape(-1)) / np.vdot(before.reshape(-1), row).real]])
     c = np.einsum("nkb,nkb->kb", weighted, step)
     c /= np.einsum("nkb,nkb->kb", weighted, np.conj(before)).real
     return c
