@@ -10,6 +10,7 @@ from solver.placed import put
 from solver.solution import Solution
 from solver.solving import solve
 from solver.status import Status
+from solver.windings import NEUTRAL
 
 NARROW = 5e-4  # of the share, to which it is found
 
@@ -104,7 +105,9 @@ def blame(solution: Solution, point: int = 0) -> tuple[int | None, int | None]:
         raise ValueError("a layout in trouble has no share")
     level = put(network, forest).level
     level = level[forest.zone, min(point, level.shape[1] - 1)]
-    phases = solution.voltage[forest.order, : 3 if network.conductors > 1 else 1, point]
+    phases = solution.voltage[forest.order, :, point]
+    if network.conductors > 1:  # against the neutral, as loads hang there
+        phases = phases[:, :NEUTRAL] - np.nan_to_num(phases[:, NEUTRAL:])
     share = np.where(np.isnan(phases), np.inf, np.abs(phases)).min(axis=1) / level
     place = int(forest.place[forest.order[np.argmin(share)]])
     worst, to_blame = -np.inf, (None, None)  # type: float, tuple[int | None, int | None]

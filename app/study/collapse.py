@@ -3,13 +3,18 @@
 import math
 from dataclasses import dataclass
 
+import numpy as np
+
 from app.model.drawing import Drawing
 from app.model.figures import percent
 from app.study.layout import Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rows import Rows
+from app.study.wire_volts import against, base_volts, phase_name, phase_volts
 from app.study.words import tell
-from solver import Share, Solution, Status, largest_share
+from app.study.zones import Zones
+from solver import Share, Solution, Status, largest_share, solve
+from solver.share import pick, scaled
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,11 +31,12 @@ class Collapse:
     finding: Finding
 
 
-def collapse_of(drawing: Drawing, layout: Layout, rows: Rows, solution: Solution) -> Collapse:
+def collapse_of(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Collapse:
     """The largest share of the load that still solves in the case that can carry least.
 
     drawing : the drawing, for names
     layout : its graph
+    zones : its voltage levels
     rows : its rows
     solution : that has a case with no operating point
 
@@ -52,6 +58,7 @@ def collapse_of(drawing: Drawing, layout: Layout, rows: Rows, solution: Solution
         return Collapse(0.0, None, Finding("no operating point", Verdict.BLOCKS, (), words, case=name))
     words = f"The layout cannot carry its load{where}: only {percent(100 * least.share)} of it still solves"
     words += f", and {tell(drawing, branch)} stands in the way." if branch else "."
+    words += _lowest(drawing, layout, zones, rows, least.share, case)
     ids = (branch,) if branch else ()
     finding = Finding("no operating point", Verdict.BLOCKS, ids, words, case=name)
     return Collapse(least.share, branch, finding)
@@ -63,3 +70,21 @@ def _branch(layout: Layout, rows: Rows, share: Share) -> str | None:
     if share.transformer is not None:
         return layout.branch_ids[rows.units[share.transformer]]
     return None
+
+
+def _lowest(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, share: float, case: int) -> str:
+    """Which phase is lowest at the largest share, and where; nothing where phases are alike."""
+    conductors = rows.conductors
+    if conductors is None:
+        return ""
+    one = scaled(pick(rows.network, np.array([case])), np.array([share]))
+    volts = solve(one, forest=layout.forest).voltage
+    kind = against(layout, zones, conductors)
+    size = np.abs(phase_volts(volts, np.array(conductors.node, dtype=np.intp), kind))[..., 0]
+    level = np.where(np.isnan(size), np.inf, size) / base_volts(layout, zones, kind)[:, None]
+    node, phase = np.unravel_index(np.nanargmin(level), level.shape)
+    if not np.isfinite(level[node, phase]):
+        return ""
+    named = phase_name(int(phase), int(kind[node]), zones.system[layout.zone[int(node)]])
+    at = tell(drawing, layout.node_ids[int(node)])
+    return f" Lowest is then phase {named} of {at}, at {percent(100 * float(level[node, phase]))} of nominal."

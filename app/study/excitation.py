@@ -6,9 +6,10 @@ from numpy.typing import NDArray
 from app.model import taps
 from app.model.drawing import Drawing
 from app.model.kinds import Transformer
+from app.model.levels import THREE_PHASE
 from app.study.checking import Check, findings_of
 from app.study.layout import Layout, arrays_of
-from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict
+from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict, Wired
 from app.study.words import tell
 
 AT_LOAD, AT_NO_LOAD = 105.0, 110.0  # % of the rated voltage at the tap
@@ -23,16 +24,19 @@ def excitation_findings(
     nodes: Table[NodeState],
     branches: Table[BranchState],
     cases: tuple[str, ...],
+    wires: Wired | None = None,
 ) -> list[Finding]:
     """Voltage of the fed winding over its rated voltage at the tap: 105 % at load, 110 % at no load.
 
-    Advice, so that it never fails: beyond it a finding says so.
+    Advice, so that it never fails: beyond it a finding says so. Where phases are not alike, that of the
+    highest, or of the one at which a single-phase unit stands.
 
     drawing : the drawing, for names
     layout : its graph
-    nodes : table, voltage_v (node, case) and nominal_v (node,) [V]
+    nodes : table, high_percent (node, case) [% of nominal] and nominal_v (node,) [V]
     branches : table, loaded_percent (branch, case) [%]
     cases : names of the cases
+    wires : phases one by one, where they are not alike
 
     Returns : list of Finding, none where every transformer is within
     Source : IEC 60076-1, operation at a higher than rated voltage (from memory)
@@ -42,9 +46,10 @@ def excitation_findings(
         return []
     forward = branches.column("forward")
     rated = np.array([_rated(layout, row, branches) for row in rows])
-    graph, level, nominal = arrays_of(layout), nodes.column("voltage_v"), nodes.column("nominal_v")
+    graph, nominal = arrays_of(layout), nodes.column("nominal_v")
     first, second = (
-        level[at[rows]] / (rated[..., n] * _over(layout, n, nominal[at[rows]])[:, None])
+        _level(layout, nodes, at[rows], wires)
+        / (rated[..., n] * _over(layout, n, nominal[at[rows]])[:, None])
         for n, at in enumerate((graph.start, graph.end))
     )
     driven = 100 * np.where(forward.reshape(len(forward), -1)[rows], first, second)
@@ -61,6 +66,27 @@ def excitation_findings(
         check = Check("over-excitation", ids, value, limit, False, 0.0, subject, RULE)
         found += [f for f in findings_of(check, WHOSE, cases, Verdict.ADVICE) if f.verdict is Verdict.ADVICE]
     return found
+
+
+def _level(
+    layout: Layout, nodes: Table[NodeState], at: NDArray[np.intp], wires: Wired | None
+) -> NDArray[np.float64]:
+    """(transformer, case) line volts at these nodes, of the highest phase or that at which a unit stands."""
+    if wires is None:
+        return np.asarray(nodes.column("voltage_v")[at])
+    nominal = nodes.column("nominal_v")[at]
+    found = nodes.column("high_percent")[at] * nominal[:, None] / 100
+    for k, row in enumerate(layout.units):
+        unit, node = layout.branches[row], at[k]
+        phase = str(getattr(unit, "phases", "all")).lower()
+        if (
+            wires is not None
+            and phase in ("a", "b", "c")
+            and wires.nodes.column("system")[node] == THREE_PHASE
+        ):
+            own = wires.nodes.column(f"{phase}_v")[node] * nominal[k] / wires.nodes.column("base_v")[node]
+            found[k] = np.where(np.isnan(own), found[k], own)
+    return np.asarray(found)
 
 
 def _over(layout: Layout, winding: int, nominal: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -80,7 +80,7 @@ def _outcome(
         found = found + start_findings(drawing, starts, cases)
     if status is Status.SOLVED:
         found = found + judge(drawing, tables.nodes, tables.branches, cases, tables.wires)
-        found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases)
+        found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases, tables.wires)
         found += barred_findings(drawing, layout)
         if rows is not None:
             found += rise_findings(drawing, layout, zones, rows, tables, cases)
@@ -95,7 +95,7 @@ def _outcome(
     elif moved is not None and (hunting := hunting_findings(drawing, layout, moved)):
         found = hunting + found
     elif rows is not None and solution is not None:
-        collapse = collapse_of(drawing, layout, rows, solution)
+        collapse = collapse_of(drawing, layout, zones, rows, solution)
         found = [collapse.finding, *found]
     found.sort(key=lambda f: f.verdict.rank)
     return Outcome(
@@ -107,7 +107,9 @@ def _outcome(
         attachments=tables.attachments,
         balance=tables.balance,
         findings=tuple(found),
-        assumptions=assumptions_of(layout, zones) + faulted.assumptions,
+        assumptions=assumptions_of(
+            drawing, layout, zones, None if rows is None else rows.conductors, faulted.assumptions
+        ),
         upstream=layout.upstream,
         zones=layout.zone_of,
         largest_share=collapse.share if collapse else None,

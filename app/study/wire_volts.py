@@ -6,7 +6,8 @@ from numpy.typing import NDArray
 from app.model.levels import THREE_PHASE
 from app.study.conductors import Conductors
 from app.study.layout import Layout, arrays_of
-from app.study.wires import ABC, NEUTRAL, PER_PHASE, N
+from app.study.wire_words import conductor
+from app.study.wires import ABC, LETTERS, NEUTRAL, PER_PHASE, N
 from app.study.zones import Zones
 
 Real = NDArray[np.float64]
@@ -45,6 +46,19 @@ def base_volts(layout: Layout, zones: Zones, kind: Index) -> Real:
     per_phase = np.array([PER_PHASE[system] for system in zones.system])
     zone = arrays_of(layout).zone
     return np.asarray(zones.nominal_v[zone] / np.where(kind == TO_NEXT, 1.0, per_phase[zone]))
+
+
+def phase_name(phase: int, kind: int, system: str) -> str:
+    """A phase as people call it, such as B, L1 or B–C.
+
+    phase : 0 to 2
+    kind : what its volts are taken against, as `against` gives it
+    system : three-phase, two-wire or split-phase
+
+    Returns : str
+    """
+    own = conductor(LETTERS[phase], system)
+    return f"{own}–{LETTERS[(phase + 1) % 3]}" if kind == TO_NEXT else own
 
 
 def phase_volts(volts: Complex, reach: Index, kind: Index) -> Complex:

@@ -62,7 +62,13 @@ def zones_of(drawing: Drawing, layout: Layout) -> Zones:
                 settle(layout.zone[at], volts, words, True)
     two_wire = [_wires(layout, supply) == TWO_WIRE for supply in layout.supply_of]
     system = _systems(layout)
-    return Zones(np.array(nominal), np.array(two_wire, dtype=bool), system, tuple(basis), tuple(assumed))
+    return Zones(
+        np.array(nominal, dtype=np.float64),
+        np.array(two_wire, dtype=bool),
+        system,
+        tuple(basis),
+        tuple(assumed),
+    )
 
 
 def level_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
