@@ -18,7 +18,7 @@ from app.study.year_points import when
 
 def cost_words(year: YearOutcome) -> str:
     """What the losses cost, such as `5 648 EUR a year`."""
-    return f"{plain(year.balance.cost, 0, year.money or '(money not named)')} a year"
+    return f"{plain(year.balance.cost, 0, year.money or '(unit?)')} a year"
 
 
 class LossBar(QWidget):

@@ -19,7 +19,7 @@ from app.study.outcome import Table, Verdict
 from app.study.year_outcome import YearOutcome
 from app.study.year_points import date, when
 
-LINE, LEAST, NAME_LEAST, NAME_MOST = 23, 76, 110, 220
+LINE, LEAST, NAME_LEAST, NAME_MOST = 23, 88, 110, 220
 Place = QModelIndex | QPersistentModelIndex
 
 
