@@ -1,7 +1,7 @@
 """Fault currents conductor by conductor, where sequence networks do not reach: laterals, single-phase and
 split-phase parts, open banks; and the earth loop of two wires."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -9,12 +9,14 @@ from numpy.typing import NDArray
 from app.model.drawing import Drawing
 from app.model.kinds import Supply, Transformer
 from app.model.levels import TWO_WIRE
-from app.study.fault_wire_rows import Way, fault_network
+from app.study.conductors import Conductors
+from app.study.fault_wire_rows import Way, fault_network, slowed_network
 from app.study.graph import NONE, Layout
 from app.study.unit_wires import OPEN
 from app.study.wires import PER_PHASE, PHASORS, N, slots
 from app.study.zones import Zones
 from solver.fault_wires import Blocks, impedance_blocks, wire_faults
+from solver.network import Network
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -63,10 +65,10 @@ def loops(
     Returns : Loops
     Source : see solver.fault_wires
     """
-    ask = (drawing, layout, zones, factors, nodes)
-    most, least = _Currents.of(*ask, largest=True), _Currents.of(*ask, largest=False)
+    ask = _Asked(drawing, layout, zones, factors, nodes)
+    most, least = _Currents.of(ask, largest=True), _Currents.of(ask, largest=False)
     pair = most.pair()
-    slowed = _taken(_ways(*(_seen(*ask, Way(True, earth, slow))[0].z for earth in (False, True))), pair)
+    slowed = _taken(_ways(*(ask.seen(Way(True, earth), slow)[0].z for earth in (False, True))), pair)
     with np.errstate(divide="ignore", invalid="ignore"):
         rx = slowed.real / slowed.imag * slow
     both = (most, np.fmax), (least, np.fmin)
@@ -93,34 +95,16 @@ class _Currents:
     phase_v: Real
 
     @staticmethod
-    def of(
-        drawing: Drawing,
-        layout: Layout,
-        zones: Zones,
-        factors: tuple[Real, Real],
-        nodes: Index,
-        largest: bool,
-    ) -> "_Currents":
-        ask = (drawing, layout, zones, factors, nodes)
-        between, has = _seen(*ask, Way(largest, False))
-        back, has_back = _seen(*ask, Way(largest, True))
-        volts = _volts(layout, zones, factors[0 if largest else 1], nodes)
+    def of(ask: "_Asked", largest: bool) -> "_Currents":
+        (between, has), (back, has_back) = (ask.seen(Way(largest, earth)) for earth in (False, True))
+        volts = ask.volts(largest)
         found = wire_faults(between, np.where(has, volts, np.nan))
-        away = wire_faults(back, np.where(has_back, volts, np.nan))
-        closed = back.earthed[:, :N] & back.earthed[:, N:]
-        earth = np.where(has_back[:, N:], np.where(closed, away.phase_neutral, 0), away.phase_earth)
-        earth = np.where(has[:, :N], earth, np.nan)
+        earth = _to_earth(back, np.where(has_back, volts, np.nan))
         size = np.fmax.reduce(np.concatenate((found.phase_phase, found.phase_neutral), axis=1), axis=1)
-        earth = np.where(earth < NONE_BACK * size[:, None], 0.0, earth)
-        earth = np.where(_untold(layout, zones, nodes)[:, None], np.nan, earth)
-        return _Currents(
-            found.three_phase,
-            found.phase_phase,
-            found.phase_neutral,
-            earth,
-            _ways(between.z, back.z),
-            np.abs(volts[:, 0]),
-        )
+        earth = np.where(earth < NONE_BACK * size[:, None], 0.0, np.where(has[:, :N], earth, np.nan))
+        earth = np.where(ask.untold()[:, None], np.nan, earth)
+        three, two, neutral = found.three_phase, found.phase_phase, found.phase_neutral
+        return _Currents(three, two, neutral, earth, _ways(between.z, back.z), np.abs(volts).max(axis=1))
 
     def pair(self) -> Index:
         """(node,) between which conductors most flows; to earth only where nothing else is there."""
@@ -133,27 +117,88 @@ class _Currents:
         return np.where(least > 0, self.phase_v / np.where(least > 0, least, 1), np.nan)
 
 
-def _seen(
-    drawing: Drawing, layout: Layout, zones: Zones, factors: tuple[Real, Real], nodes: Index, way: Way
-) -> tuple[Blocks, NDArray[np.bool_]]:
-    """What nodes see, and which conductors reach them."""
-    network, conductors = fault_network(drawing, layout, zones, factors, way)
-    reached = [slots(conductors.node[node] & conductors.drawn[node]) for node in nodes]
-    has = np.zeros((len(nodes), N + 1), dtype=bool)
-    for row, found in enumerate(reached):
-        has[row, found] = True
-    return impedance_blocks(network, nodes), has
+def earth_loops(
+    drawing: Drawing, layout: Layout, zones: Zones, factors: tuple[Real, Real], nodes: Index
+) -> tuple[Real, Real]:
+    """Only what goes to earth, for nodes whose other figures are known.
+
+    drawing : the drawing
+    layout : its graph
+    zones : nominal_v (zone,) float [V], system (zone,)
+    factors : cmax, cmin (node,) float
+    nodes : (node,) int, live node rows on two wires
+
+    Returns : currents (node, 2) float [A], highest and least; earth loop (node,) float [ohm]
+    Source : IEC 60364-4-41, 411.4.4
+    """
+    ask = _Asked(drawing, layout, zones, factors, nodes)
+    found = []
+    for largest in (True, False):
+        back, has = ask.seen(Way(largest, True))
+        earth = _to_earth(back, np.where(has, ask.volts(largest), np.nan))
+        found.append(np.where(ask.untold(), np.nan, np.fmax.reduce(earth, axis=1)))
+    volts = np.abs(ask.volts(False)).max(axis=1)
+    zs = np.where(found[1] > 0, volts / np.where(found[1] > 0, found[1], 1), np.nan)
+    return np.stack(found, axis=1), zs
 
 
-def _volts(layout: Layout, zones: Zones, c: Real, nodes: Index) -> Complex:
-    """(node, k) volts to earth before the fault: c times the nominal."""
-    found = np.zeros((len(nodes), N + 1), dtype=np.complex128)
-    for row, node in enumerate(nodes):
-        zone = layout.zone[node]
-        system = zones.system[zone]
-        turned = np.array((1, 1, 1, 0) if system == TWO_WIRE else PHASORS[system])  # whichever phase it is
-        found[row] = turned * c[node] * zones.nominal_v[zone] / PER_PHASE[system]
-    return found
+def _to_earth(back: Blocks, volts: Complex) -> Real:
+    """(node, 3) A of each phase: by the return conductor where one is there, else through earth."""
+    found = wire_faults(back, volts)
+    closed = back.earthed[:, :N] & back.earthed[:, N:]
+    return np.where(np.isfinite(volts[:, N:]), np.where(closed, found.phase_neutral, 0), found.phase_earth)
+
+
+@dataclass(slots=True)
+class _Asked:
+    """Nodes of a drawing, and the networks that they were seen in so far."""
+
+    drawing: Drawing
+    layout: Layout
+    zones: Zones
+    factors: tuple[Real, Real]
+    nodes: Index
+    made: dict[Way, tuple[Network, Conductors]] = field(default_factory=dict)
+
+    def seen(self, way: Way, slow: float = 1.0) -> tuple[Blocks, NDArray[np.bool_]]:
+        """What the nodes see, and which conductors reach them."""
+        if way not in self.made:
+            self.made[way] = fault_network(self.drawing, self.layout, self.zones, self.factors, way)
+        network, conductors = self.made[way]
+        has = np.zeros((len(self.nodes), N + 1), dtype=bool)
+        for row, node in enumerate(self.nodes):
+            has[row, slots(conductors.node[node] & conductors.drawn[node])] = True
+        return impedance_blocks(network if slow == 1 else slowed_network(network, slow), self.nodes), has
+
+    def volts(self, largest: bool) -> Complex:
+        """(node, k) volts to earth before the fault: c times the nominal."""
+        found = np.zeros((len(self.nodes), N + 1), dtype=np.complex128)
+        for row, node in enumerate(self.nodes):
+            zone = self.layout.zone[node]
+            system = self.zones.system[zone]
+            turned = np.array((1, 1, 1, 0) if system == TWO_WIRE else PHASORS[system])  # whichever it is
+            size = self.factors[0 if largest else 1][node] * self.zones.nominal_v[zone]
+            found[row] = turned * size / PER_PHASE[system]
+        return found
+
+    def untold(self) -> NDArray[np.bool_]:
+        """Nodes where volts to earth are not known: on two wires of a supply that may be two phases, and
+        behind a corner that is earthed."""
+        layout = self.layout
+        hidden = {
+            layout.zone[node]
+            for node, row in enumerate(layout.fed_by)
+            if row != NONE
+            and isinstance(unit := layout.branches[row], Transformer)
+            and unit.build in OPEN
+            and unit.earth_2_ohm is not None
+        }
+        for row in layout.supplies:
+            supply = layout.attachments[row]
+            assert isinstance(supply, Supply)
+            if supply.wires == TWO_WIRE and supply.z0_ratio is None and supply.nominal_v > PLAIN_V:
+                hidden.add(layout.zone[layout.at[row]])
+        return np.array([layout.zone[node] in hidden for node in self.nodes], dtype=bool)
 
 
 def _ways(z: Complex, back: Complex) -> Complex:
@@ -165,22 +210,3 @@ def _ways(z: Complex, back: Complex) -> Complex:
 
 def _taken(of: Complex, pair: Index) -> Complex:
     return np.asarray(of[np.arange(len(pair)), pair])
-
-
-def _untold(layout: Layout, zones: Zones, nodes: Index) -> NDArray[np.bool_]:
-    """Nodes where volts to earth are not known: on two wires of a supply that may be two phases, and behind a
-    corner that is earthed."""
-    hidden = {
-        layout.zone[node]
-        for node, row in enumerate(layout.fed_by)
-        if row != NONE
-        and isinstance(unit := layout.branches[row], Transformer)
-        and unit.build in OPEN
-        and unit.earth_2_ohm is not None
-    }
-    for row in layout.supplies:
-        supply = layout.attachments[row]
-        assert isinstance(supply, Supply)
-        if supply.wires == TWO_WIRE and supply.z0_ratio is None and supply.nominal_v > PLAIN_V:
-            hidden.add(layout.zone[layout.at[row]])
-    return np.array([layout.zone[node] in hidden for node in nodes], dtype=bool)

@@ -5,7 +5,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.levels import TWO_WIRE
-from app.study.fault_conductors import Loops, loops
+from app.study.fault_conductors import Loops, earth_loops, loops
 from app.study.fault_rows import FaultRows
 from app.study.fault_ways import EQUIVALENT
 from app.study.graph import Layout
@@ -45,10 +45,14 @@ def fault_table(drawing: Drawing, layout: Layout, zones: Zones, rows: FaultRows 
         found = _sequences(rows, z1, z0)
         lacking = known & np.isinf(z1[:, 0])
         two = np.array([zones.system[zone] == TWO_WIRE for zone in layout.zone], dtype=bool)
-        nodes = np.flatnonzero(known & (lacking | two))
+        factors, nodes = (rows.c_max, rows.c_min), np.flatnonzero(lacking)
         if nodes.size:
-            by_loop = loops(drawing, layout, zones, (rows.c_max, rows.c_min), nodes, EQUIVALENT)
-            _put(found, _by_loop(by_loop, two[nodes]), nodes, lacking[nodes])
+            by_loop = loops(drawing, layout, zones, factors, nodes, EQUIVALENT)
+            _put(found, _by_loop(by_loop, two[nodes]), nodes)
+        nodes = np.flatnonzero(known & two & ~lacking)
+        if nodes.size:
+            earth, zs = earth_loops(drawing, layout, zones, factors, nodes)
+            _put(found, dict(zip(TO_EARTH, (*(earth.T / 1e3), zs), strict=True)), nodes)
         columns |= {name: np.where(known, value, np.nan) for name, value in found.items()}
     return Table(FaultState, ids, {**columns, "live": known}, dict(layout.node_row))
 
@@ -115,12 +119,11 @@ def _by_loop(seen_: Loops, two_wire: Flag) -> dict[str, Real]:
     }
 
 
-def _put(found: dict[str, Real], loops_: dict[str, Real], nodes: NDArray[np.intp], lacking: Flag) -> None:
-    """Everything where sequences do not reach; elsewhere only what goes to earth."""
-    for name, values in loops_.items():
-        fresh = np.array(found[name])
-        fresh[nodes] = values if name in TO_EARTH else np.where(lacking, values, fresh[nodes])
-        found[name] = fresh
+def _put(found: dict[str, Real], values: dict[str, Real], nodes: NDArray[np.intp]) -> None:
+    """Figures of some nodes in place of what stood there."""
+    for name, fresh in values.items():
+        found[name] = np.array(found[name])
+        found[name][nodes] = fresh
 
 
 def _over(above: Real, below: Real) -> Real:

@@ -33,12 +33,10 @@ class Way:
 
     largest : the highest currents are sought, else the least
     earth : the return conductor stands in the place of the neutral
-    slow : reactances at the equivalent frequency, as a share of the whole; 1 is the system's own
     """
 
     largest: bool
     earth: bool
-    slow: float = 1.0
 
 
 def fault_network(
@@ -67,8 +65,7 @@ def fault_network(
     at, among, sources, none = (np.array(r, dtype=np.intp) for r in (lines, units, layout.supplies, []))
     plain = replace(drawing, cases=(Case(),))
     network = wire_network(plain, bare, zones, conductors, (at, among, sources, none, none))
-    network = with_fields(network, source_z=_behind(layout, factors, way))
-    return (network if way.slow == 1 else _slowed(network, way.slow)), conductors
+    return with_fields(network, source_z=_behind(layout, factors, way)), conductors
 
 
 def _branch(drawing: Drawing, layout: Layout, zones: Zones, row: int, c_max: Real, way: Way) -> Branch:
@@ -157,8 +154,14 @@ def supply_z(supply: Supply, c: float, largest: bool) -> complex:
     return complex(fault.feeder(volts, level / (3**0.5 * volts), c, ratio))
 
 
-def _slowed(network: Network, share: float) -> Network:
-    """All reactances as at another frequency."""
+def slowed_network(network: Network, share: float) -> Network:
+    """All reactances as at another frequency.
+
+    network : as `fault_network` makes it
+    share : of the system's frequency
+
+    Returns : Network
+    """
 
     def slow(z: Complex) -> Complex:
         return np.asarray(z.real + 1j * share * z.imag)
