@@ -31,8 +31,8 @@ class Followed:
 
     voltage : (live, k, batch) complex [V]
     tied : (tie current, batch) complex [A]; None where nothing is tied
-    share : (batch,) float, of constant power and current that was reached; 1 is all, nan where not even
-        none of it was
+    share : (batch,) float, of constant power and current, from which there is no way on; 1 is all, nan
+        where nothing is known
     """
 
     voltage: Complex
@@ -45,7 +45,7 @@ def follow(placed: Placed, forest: Forest, start: Complex) -> Followed:
 
     A sweep turns volts V into G(V). Each step solves (1 - G') s = G(V) - V by products with G' alone, which
     two sweeps give. At first impedances alone draw, which always have an answer, then all of the load; where
-    that fails, half the way and so on. So the volts come down the upper branch and never step over its end:
+    that fails, a quarter of the way and so on. So the volts come down the upper branch and never step over its end:
     where the share cannot rise any more, there is no operating point beyond.
 
     placed : Placed
@@ -62,6 +62,7 @@ def follow(placed: Placed, forest: Forest, start: Complex) -> Followed:
             if not way.points.size:
                 break
             way.step()
+    way.reached[way.points] = np.nan  # still on the way: nothing is known
     return Followed(way.answer, way.tied, way.reached)
 
 
