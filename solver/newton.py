@@ -45,8 +45,8 @@ def follow(placed: Placed, forest: Forest, start: Complex) -> Followed:
 
     A sweep turns volts V into G(V). Each step solves (1 - G') s = G(V) - V by products with G' alone, which
     two sweeps give. At first impedances alone draw, which always have an answer, then all of the load; where
-    that fails, a quarter of the way and so on. So the volts come down the upper branch and never step over its end:
-    where the share cannot rise any more, there is no operating point beyond.
+    that fails, a quarter of the way and so on. So the volts come down the upper branch and never step over
+    its end: where the share cannot rise any more, there is no operating point beyond.
 
     placed : Placed
     forest : Forest
