@@ -13,18 +13,20 @@ from app.model.drawing import Case, Drawing
 from app.model.following import followed, in_use
 from app.model.kinds import Motor
 from app.study.changers import moving_of
+from app.study.collapse import collapse_of
 from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Verdict
 from app.study.rings import trouble_finding
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.words import list_of
+from app.study.year_findings import hunting_findings
 from app.study.year_outcome import YearOutcome
-from app.study.year_points import Points, points_of
+from app.study.year_points import Points, points_of, when
 from app.study.year_results import blank_year, year_outcome
 from app.study.year_tally import Tally
-from app.study.zones import zones_of
-from solver import Network, Trouble, grow
+from app.study.zones import Zones, zones_of
+from solver import Network, Trouble, grow, solve
 from solver.series import VALUES, solve_series
 
 Progress = Callable[[int, int], bool]
@@ -91,6 +93,9 @@ def run_year(drawing: Drawing, progress: Progress | None = None) -> YearOutcome:
         going = series.done == chosen.size
         done += series.done
     seconds = {"solve": perf_counter() - clock[0]}
+    if tally.unsolved:
+        found += hunting_findings(drawing, layout, tally.sum["hunting"])
+        found += [] if moving else _collapse(drawing, layout, zones, rows, points, list(tally.unsolved))
     outcome = year_outcome(drawing, layout, zones, tally, done, found)
     return replace(outcome, seconds=seconds | {"total": perf_counter() - clock[0]})
 
@@ -122,6 +127,21 @@ def through(
         load_power=network.load_power * factor(rows.loads),
         source_voltage=network.source_voltage * factor(rows.sources),
     )
+
+
+def _collapse(
+    drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, points: Points, unsolved: list[int]
+) -> list[Finding]:
+    """What bars the heaviest of the points that have no answer."""
+    wanted = through(drawing, layout, rows, points, np.array(unsolved)).load_power.real.sum(axis=(0, 1))
+    point = unsolved[int(np.argmax(np.broadcast_to(wanted, len(unsolved))))]
+    one = replace(rows, network=through(drawing, layout, rows, points, np.array([point])))
+    solution = solve(one.network, forest=layout.forest)
+    if solution.solved:
+        return []
+    said = collapse_of(drawing, layout, zones, one, solution).finding
+    words = f"Heaviest of the hours without an answer is {when(float(points.begin[point]), points.year_h)}. "
+    return [Finding(said.check, Verdict.FAILS, said.ids, words + said.sentence)]
 
 
 def follows_profiles(drawing: Drawing) -> bool:

@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from app.model.drawing import Drawing
 from app.model.figures import plain, volts
 from app.study.checking import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of
+from app.study.layout import Layout
 from app.study.outcome import Finding, Table, Verdict
 from app.study.words import list_of, tell
 from app.study.year_outcome import BranchYear, Gap, NodeYear
@@ -129,6 +130,30 @@ def _stops(drawing: Drawing, branches: Table[BranchYear]) -> list[Finding]:
             unit="h",
         )
         for row in np.flatnonzero(hours > 0)
+    ]
+
+
+def hunting_findings(drawing: Drawing, layout: Layout, hours: NDArray[np.float64]) -> list[Finding]:
+    """Tap changers and regulators that never come to rest.
+
+    drawing : the drawing, for names
+    layout : its graph
+    hours : (branch,) float [h] that each hunts
+
+    Returns : list of Finding that fail
+    """
+    return [
+        Finding(
+            "hunting",
+            Verdict.FAILS,
+            (id,),
+            f"{tell(drawing, id)} hunts for {plain(hours[row], 0)} h of the year: it steps to and fro and "
+            "never comes to rest in its band.",
+            value=float(hours[row]),
+            unit="h",
+        )
+        for row, id in enumerate(layout.branch_ids)
+        if hours[row] > 0
     ]
 
 

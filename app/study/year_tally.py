@@ -53,6 +53,7 @@ class Tally:
         rowed = {"low": nodes, "high": nodes, "drop": nodes, "amps": branches, "loaded": branches}
         self.most = {name: Most(count) for name, count in (rowed | {"kw": hung}).items()}
         summed = {"below": nodes, "above": nodes, "dropped": nodes, "over": branches, "stopped": branches}
+        summed["hunting"] = branches
         summed |= {name: branches for name in ("through", "back", "loss", "copper", "iron")}
         summed |= {"kwh": hung, "kwh_back": hung}
         self.sum = {name: np.zeros(count) for name, count in summed.items()}
@@ -80,7 +81,7 @@ class Tally:
         self._attachments(tables, points, hours)
         self._whole(tables, points, solved)
         if rested is not None:
-            self._stepping(rested, solved, hours)
+            self._stepping(rested, solved, hours, self.points.hours[points])
 
     def _nodes(self, tables: Tables, points: Index, hours: Real) -> None:
         low, high, drop = (tables.nodes.column(name) for name in ("percent", "high_percent", "drop_percent"))
@@ -120,7 +121,7 @@ class Tally:
             self.course[name][points] = np.where(solved, getattr(balance, name), np.nan)
         self.closure = max(self.closure, float(balance.closure[solved].max(initial=0.0)))
 
-    def _stepping(self, rested: Controlled, solved: NDArray[np.bool_], hours: Real) -> None:
+    def _stepping(self, rested: Controlled, solved: NDArray[np.bool_], hours: Real, lasts: Real) -> None:
         for number, row in enumerate(self.moving.changers):
             notch = rested.notch[number][solved]
             if notch.size:
@@ -128,6 +129,8 @@ class Tally:
                 self.notch["most"][row] = np.fmax(self.notch["most"][row], notch.max())
             at_stop = np.array([one is Rest.AT_STOP for one in rested.rest[number]])
             self.sum["stopped"][row] += float(at_stop @ hours)
+            hunting = np.array([one is Rest.HUNTING for one in rested.rest[number]])
+            self.sum["hunting"][row] += float(hunting @ lasts)
 
     def gaps(self) -> tuple[Gap, ...]:
         """The points without an answer, those in a row that say the same together."""

@@ -233,6 +233,12 @@ def test_hours_without_an_answer_are_named_and_left_out():
     (finding,) = (f for f in year.findings if f.check == "no answer")
     assert finding.verdict is Verdict.FAILS
     assert "hour 19, 1 Jan 18:00 and 2 h in all from there" in finding.sentence
+    (why,) = (f for f in year.findings if f.check == "no operating point")
+    assert why.ids == ("C1",)
+    assert (
+        "Heaviest of the hours without an answer is hour 19, 1 Jan 18:00. The layout cannot carry"
+        in why.sentence
+    )
     assert math.isfinite(year.balance.loss_kwh)
     assert year.nodes.at("B2").lowest_at_h not in (18, 19)
     never = run_year(following(base, loads=profile(1000)))
@@ -429,3 +435,15 @@ def test_phases_each_for_themselves_have_a_year_too():
         )
     assert year.balance.closure < 1e-12
     assert {f.ids[0] for f in year.findings if f.verdict is Verdict.FAILS} == {"B4", "B5", "B6"}
+
+
+def test_a_changer_that_hunts_is_named_with_its_hours():
+    base = changed(regulated(), V1=Regulator(start="B2", end="B3", bandwidth_percent=0.3, hold_percent=99.0))
+    year = run_year(base)
+    hunting = [f for f in year.findings if f.check == "hunting"]
+    hours = sum(gap.hours for gap in year.gaps)
+    assert 0 < hours < 8760
+    assert year.status is Status.NOT_SETTLED
+    assert [f.ids for f in hunting] == [("V1",)]
+    assert hunting[0].value == hours
+    assert year.solved_h == 8760 - hours
