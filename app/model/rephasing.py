@@ -40,6 +40,8 @@ def matters(one: Element, field: str) -> bool:
     if isinstance(one, Transformer):
         if field == "phases":
             return is_single_phase(one) or one.build != "as its group"
+        if field == "measures":
+            return one.regulates != "no"
         if field in STARS:
             return _has_star(one, STARS[field])
     return True

@@ -35,7 +35,7 @@ LESS_ASKED = {  # shown below the results
     "z0_ratio", "angle_deg", "area_mm2", "capacitance_uf_per_km", "conductor", "constant_current_percent",
     "constant_impedance_percent", "drop_r_ohm", "drop_x_ohm", "note", "reference_v",
     "step_percent", "steps_down", "steps_up", "notch_percent", "tapped", "taps_down", "taps_up",
-    "hung_at_m", *STAND_INS,
+    "hung_at_m", "measures", *STAND_INS,
 }  # fmt: skip
 
 

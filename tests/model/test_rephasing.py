@@ -4,7 +4,7 @@ import pytest
 
 from app.model.checks import EditRefused
 from app.model.drawing import Drawing
-from app.model.kinds import Busbar, Cable, Capacitor, Joint, Load, Motor, Supply, Transformer
+from app.model.kinds import Busbar, Cable, Capacitor, Joint, Load, Motor, Regulator, Supply, Transformer
 from app.model.rephasing import has_phases, matters, set_phases, states_phases, turned
 
 UNIT = {"start": "A", "end": "B"}
@@ -52,6 +52,9 @@ def test_fields_that_do_nothing_are_told_from_those_that_do():
     assert not matters(Cable(**UNIT, neutral="none"), "neutral_resistance_ohm_per_km")
     assert matters(Cable(**UNIT), "neutral_resistance_ohm_per_km")
     assert [matters(Transformer(**UNIT), f"earth_{k}_ohm") for k in (1, 2)] == [False, True]  # Dyn11
+    assert not matters(Transformer(**UNIT), "measures")
+    assert matters(Transformer(**UNIT, regulates="winding 2"), "measures")
+    assert matters(Regulator(**UNIT), "measures")
 
 
 def test_only_what_is_not_the_usual_is_said_to_be_stated():
