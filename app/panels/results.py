@@ -83,6 +83,14 @@ def _node(asked: Asked, id: str) -> list[Row]:
     ]
 
 
+FAULTS = {
+    "a three-phase fault": "Fault, most",
+    "a fault between the wires": "Fault between wires",
+    "a fault from phase to neutral": "Fault to neutral",
+    "a fault to earth": "Fault to earth",
+}
+
+
 def _faults(asked: Asked, id: str) -> list[Row]:
     """Fault currents at a node, which know no case; none where no supply states a fault level."""
     table = asked.outcome.faults
@@ -93,8 +101,9 @@ def _faults(asked: Asked, id: str) -> list[Row]:
         partial(plain, digits=2, unit="kA"),
         partial(plain, digits=3, unit="Ω"),
     )
+    words, most = greatest(state)
     rows = (
-        ("Fault, most", kiloamps(greatest(state)[1])),
+        (FAULTS[words], kiloamps(most)),
         ("Its peak", kiloamps(state.ip_ka)),
         ("Earth fault, least", kiloamps(state.ik1_min_ka)),
         ("Earth loop", ohms(state.zs_ohm)),

@@ -99,12 +99,16 @@ class _Currents:
         (between, has), (back, has_back) = (ask.seen(Way(largest, earth)) for earth in (False, True))
         volts = ask.volts(largest)
         found = wire_faults(between, np.where(has, volts, np.nan))
+        pairs = has[:, :N] & np.roll(has[:, :N], -1, axis=1)
+        two = np.where(pairs, found.phase_phase, np.nan)
+        neutral = np.where(has[:, :N] & has[:, N:], found.phase_neutral, np.nan)
         earth = _to_earth(back, np.where(has_back, volts, np.nan))
-        size = np.fmax.reduce(np.concatenate((found.phase_phase, found.phase_neutral), axis=1), axis=1)
+        size = np.fmax.reduce(np.concatenate((two, neutral), axis=1), axis=1)
         earth = np.where(earth < NONE_BACK * size[:, None], 0.0, np.where(has[:, :N], earth, np.nan))
         earth = np.where(ask.untold()[:, None], np.nan, earth)
-        three, two, neutral = found.three_phase, found.phase_phase, found.phase_neutral
-        return _Currents(three, two, neutral, earth, _ways(between.z, back.z), np.abs(volts).max(axis=1))
+        return _Currents(
+            found.three_phase, two, neutral, earth, _ways(between.z, back.z), np.abs(volts).max(axis=1)
+        )
 
     def pair(self) -> Index:
         """(node,) between which conductors most flows; to earth only where nothing else is there."""

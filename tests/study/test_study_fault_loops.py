@@ -149,6 +149,11 @@ def test_an_open_delta_by_closed_forms():
     most = 1.10 * 240 / abs(coil) / kt / 1e3
     assert state.ik3_max_ka == pytest.approx(math.sqrt(3) * most, rel=1e-3)
     assert state.ik2_max_ka == pytest.approx(most, rel=1e-3)
+    corner = run(edits.change(made, "T1", earth_2_ohm=0.0)).faults.at("B2")  # volts to earth are others there
+    assert corner.ik3_max_ka == pytest.approx(state.ik3_max_ka, rel=1e-9)
+    assert all(
+        math.isnan(v) for v in (corner.ikn_max_ka, corner.ikn_min_ka, corner.ik1_min_ka, corner.zs_ohm)
+    )
 
 
 def test_a_board_on_a_lateral_is_judged_by_what_it_has():
