@@ -8,12 +8,12 @@ from app.study.changer_findings import barred_findings, hunting_findings, stop_f
 from app.study.changers import Moved, settled
 from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
-from app.study.faults import NO_FAULTS, faults_of
+from app.study.faults import NO_FAULTS, Faults, faults_of
 from app.study.findings import judge
 from app.study.idle import idle_findings
 from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Outcome, Verdict
-from app.study.results import tables_of
+from app.study.results import Tables, tables_of
 from app.study.rings import trouble_finding
 from app.study.rise_findings import rise_findings
 from app.study.rows import Rows, rows_of
@@ -78,18 +78,9 @@ def _outcome(
     if status is Status.SOLVED and rows is not None and starters(layout):
         starts = start_table(drawing, layout, zones, rows)
         found = found + start_findings(drawing, starts, cases)
-    if status is Status.SOLVED:
-        found = found + judge(drawing, tables.nodes, tables.branches, cases, tables.wires)
-        found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases, tables.wires)
-        found += barred_findings(drawing, layout)
-        if rows is not None:
-            found += rise_findings(drawing, layout, zones, rows, tables, cases)
-        if moved is not None and rows is not None:
-            found += stop_findings(drawing, layout, rows, tables, moved)
+    if status is Status.SOLVED and rows is not None:
         faulted = faults_of(drawing, layout, zones, False)
-        found += faulted.findings
-        if layout.rings and rows is not None:
-            found += idle_findings(drawing, layout, zones, rows, tables.attachments)
+        found = found + _judged(drawing, layout, zones, rows, tables, moved, faulted)
     elif rows is not None and solution is not None and isinstance(solution.forest, Trouble):
         found = [trouble_finding(layout, rows, solution.forest), *found]
     elif moved is not None and (hunting := hunting_findings(drawing, layout, moved)):
@@ -121,6 +112,29 @@ def _outcome(
         fault_basis=faulted.basis,
         wires=tables.wires,
     )
+
+
+def _judged(
+    drawing: Drawing,
+    layout: Layout,
+    zones: Zones,
+    rows: Rows,
+    tables: Tables,
+    moved: Moved | None,
+    faulted: Faults,
+) -> list[Finding]:
+    """Everything that is judged of a layout that is solved."""
+    cases = tuple(case.name for case in drawing.cases)
+    found = judge(drawing, tables.nodes, tables.branches, cases, tables.wires)
+    found += excitation_findings(drawing, layout, tables.nodes, tables.branches, cases, tables.wires)
+    found += barred_findings(drawing, layout)
+    found += rise_findings(drawing, layout, zones, rows, tables, cases)
+    if moved is not None:
+        found += stop_findings(drawing, layout, rows, tables, moved)
+    found += faulted.findings
+    if layout.rings:
+        found += idle_findings(drawing, layout, zones, rows, tables.attachments)
+    return found
 
 
 def _status(solution: Solution | None) -> Status:
