@@ -10,15 +10,16 @@ from app.study.layout import lay_out
 from app.study.outcome import Outcome
 from app.study.words import tell
 
-TO_NEUTRAL = "phase-N max kA"
+TO_NEUTRAL = ("phase-N max kA", "phase-N min kA")  # only where a node has it
 COLUMNS = (
     ("Ik3 max kA", "ik3_max_ka", 2),
     ("peak kA", "ip_ka", 2),
     ("X/R", "xr", 2),
     ("Ik2 max kA", "ik2_max_ka", 2),
-    (TO_NEUTRAL, "ikn_max_ka", 2),
+    (TO_NEUTRAL[0], "ikn_max_ka", 2),
     ("Ik1 max kA", "ik1_max_ka", 2),
     ("Ik2 min kA", "ik2_min_ka", 2),
+    (TO_NEUTRAL[1], "ikn_min_ka", 2),
     ("Ik1 min kA", "ik1_min_ka", 2),
     ("Zs ohm", "zs_ohm", 3),
 )
@@ -29,7 +30,7 @@ def fault_lines(drawing: Drawing, outcome: Outcome) -> tuple[list[list[str]], in
     states = outcome.faults
     assert states is not None
     lateral = any(not math.isnan(value) for value in states.column("ikn_max_ka"))
-    columns = [c for c in COLUMNS if lateral or c[0] != TO_NEUTRAL]
+    columns = [c for c in COLUMNS if lateral or c[0] not in TO_NEUTRAL]
     lines = [["id", "name", "kind", *(head for head, _, _ in columns)]]
     for id in states.ids:
         element, state = drawing.elements[id], states.at(id)
