@@ -14,12 +14,13 @@ from app.canvas.branch_item import BranchItem
 from app.canvas.element_item import ElementItem, Look
 from app.canvas.ground import paint_ground
 from app.canvas.lettering import Line
+from app.canvas.node_figures import NodeFigures
 from app.canvas.node_item import NodeItem
 from app.canvas.phase_mark import Phases
 from app.canvas.placing import Homes, Taken, Wish, place
 from app.canvas.shown import Shown, array_of, column_of
 from app.canvas.standing import Standing
-from app.canvas.tag import Caption, NodeFigures, Tag
+from app.canvas.tag import Caption, Tag
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Busbar, Node, Transformer
 from app.study.outcome import BranchState, Outcome, Table
