@@ -6,6 +6,8 @@ import pytest
 from hand_desk import SHIFT, Desk
 from panels_stage import stage
 from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
+from test_hand_taps import spot
 
 from app.model import edits, figures
 from app.model.file import load
@@ -111,3 +113,22 @@ def test_marks_stand_only_where_phases_are_not_alike(qtbot, name):
     marked = any(item.mark is not None for item in made.board.items_by_id.values())
     assert marked is (made.solving.outcome.wires is not None)
     made.solving.stop()
+
+
+def test_while_a_tap_is_dragged_the_phase_told_says_its_change(desk):
+    unit = next(i for i, e in desk.drawing.elements.items() if isinstance(e, Transformer))
+    far = id_of(desk.drawing, "N2")
+    desk.select(unit)
+    desk.solving.settle()
+    before = desk.solving.outcome.wires.nodes.at(far, 0).a_v
+    port = desk.view.viewport()
+    QTest.mouseMove(port, spot(desk, 0, unit))
+    QTest.mousePress(port, Qt.MouseButton.LeftButton, pos=spot(desk, 0, unit))
+    QTest.mouseMove(port, spot(desk, -1, unit))
+    desk.solving.settle_solve()
+    desk.board.write_rest()
+    moved = desk.solving.outcome.wires.nodes.at(far, 0).a_v - before
+    assert desk.board.tags[far].text.endswith(f"▲ {figures.volts(moved)}")
+    QTest.mouseRelease(port, Qt.MouseButton.LeftButton, pos=spot(desk, -1, unit))
+    assert desk.drawing.elements[unit].tap == -1
+    assert desk.steps == 1
