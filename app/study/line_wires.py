@@ -14,15 +14,16 @@ from app.model.levels import THREE_PHASE
 from app.model.wire_data import neutral_of, neutral_value
 from app.study.conductors import Conductors
 from app.study.graph import Layout, arrays_of
+from app.study.memory import Columns
 from app.study.overhead import matrix_of
 from app.study.wires import ABC, letters
 from app.study.zones import Zones
 from solver import line
 
 K = 4
+Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
-NOTHING = np.zeros((K, K), dtype=np.complex128)
 NEUTRAL_FIELDS = ("neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km")
 ZERO_FIELDS = ("zero_resistance_ohm_per_km", "zero_reactance_ohm_per_km")
 
@@ -59,10 +60,11 @@ def line_matrices(
     has = (bits[:, None] >> np.arange(K) & 1).astype(bool)
     if moved:
         z, y = z.copy(), y.copy()
-        for n in moved:
-            both = np.outer(has[n], has[n])
-            for whole, part in zip((z, y), _matrices(runs[n], *told[n], drawing.frequency_hz), strict=True):
-                whole[n, ..., 0] = part * both
+        z[moved], y[moved] = _of_lines(
+            [runs[n] for n in moved], [told[n] for n in moved], drawing.frequency_hz
+        )
+        both = (has[:, :, None] & has[:, None, :])[moved][..., None]
+        z[moved], y[moved] = z[moved] * both, y[moved] * both
     _last = (runs, told, z, y, drawing.frequency_hz)
     return z, y, has
 
@@ -72,15 +74,21 @@ _last: tuple[Sequence[Branch | None], list[Told], Complex, Complex, float]
 _last = ([], [], np.zeros((0, K, K, 1), np.complex128), np.zeros((0, K, K, 1), np.complex128), 0.0)
 
 
-def _matrices(
-    run: Branch, bits: int, nominal_v: float, single: bool, frequency_hz: float
-) -> tuple[Complex, Complex]:
-    """Of one line; noughts for a switch, and where no phase reaches it."""
-    if not isinstance(run, Line) or not bits & ABC:
-        return NOTHING, NOTHING
-    if isinstance(run, OverheadLine) and run.hung_at_m:
-        return _hung(run, letters(bits & ABC), nominal_v, single, frequency_hz)
-    return matrices(run, nominal_v, single, frequency_hz)
+def _of_lines(runs: list[Branch], told: list[Told], frequency_hz: float) -> tuple[Complex, Complex]:
+    """Matrices of some lines; noughts for a switch, and where no phase reaches it."""
+    z = np.zeros((len(runs), K, K, 1), dtype=np.complex128)
+    y = np.zeros_like(z)
+    plain: list[int] = []
+    for n, (run, (bits, nominal, single)) in enumerate(zip(runs, told, strict=True)):
+        if isinstance(run, OverheadLine) and run.hung_at_m and bits & ABC:
+            z[n, ..., 0], y[n, ..., 0] = _hung(run, letters(bits & ABC), nominal, single, frequency_hz)
+        elif isinstance(run, Line) and bits & ABC:
+            plain.append(n)
+    if plain:
+        lines = [run for n in plain if isinstance(run := runs[n], Line)]
+        levels = [told[n][1:] for n in plain]
+        z[plain, ..., 0], y[plain, ..., 0] = matrices(lines, levels, frequency_hz)
+    return z, y
 
 
 def _hung(
@@ -94,36 +102,47 @@ def _hung(
     return z * length / run.side_by_side, y * length * run.side_by_side
 
 
-def matrices(run: Line, nominal_v: float, single: bool, frequency_hz: float) -> tuple[Complex, Complex]:
-    """Series impedance and shunt admittance among A, B, C and N, as if it had all of them.
+def matrices(
+    runs: Sequence[Line], levels: Sequence[tuple[float, bool]], frequency_hz: float
+) -> tuple[Complex, Complex]:
+    """Series impedance and shunt admittance among A, B, C and N, as if each had all of them.
 
-    run : cable or overhead line
-    nominal_v : float [V] of its zone
-    single : its system has no three phases
+    runs : (line,) cables and overhead lines that state no spacing
+    levels : (line,) nominal volts of the zone, and whether its system has no three phases
     frequency_hz : float [Hz]
 
-    Returns : z (k, k) complex [ohm], y (k, k) complex [S]
+    Returns : z (line, k, k) complex [ohm], y (line, k, k) complex [S]
     Source : see solver.line
     """
-    r20, x, length = run.resistance_ohm_per_km, run.reactance_ohm_per_km, run.length_m
-    hot, alpha, runs = assumed.value(run, "temperature_degc"), line.ALPHA[run.conductor], run.side_by_side
+    r20, x, length, hot, alpha, many, farads, rn, xn = _stated.of(runs)
 
-    def whole(r: float, reactance: float) -> Complex:
-        return line.series(r, reactance, length, hot, alpha, runs)
+    def whole(r: Real, reactance: Real) -> Complex:
+        return line.series(r, reactance, length, hot, alpha, many)
 
-    phase, kind = whole(r20, x), neutral_of(run, nominal_v, single)
-    z = np.zeros((K, K), dtype=np.complex128)
-    if kind == "earthed along":
-        r0, x0 = (_plain(fault_value(run, name, nominal_v, frequency_hz)) for name in ZERO_FIELDS)
-        back = line.series(r0 - r20, x0, length, 20.0, alpha, runs)  # the way back stays cold
-        zero = back + whole(r20, 0.0)
-        z[:3, :3] = line.symmetric(phase, zero)
-    else:
-        neutral = whole(*(_plain(neutral_value(run, name)) for name in NEUTRAL_FIELDS))
-        z = line.four_wire(phase, neutral)
-    farads = assumed.value(run, "capacitance_uf_per_km")
-    y = line.charging(farads, length, frequency_hz, runs) * np.diag([1.0, 1.0, 1.0, 0.0])
+    phase = whole(r20, x)
+    z = line.four_wire(phase, whole(rn, xn))
+    both = list(zip(runs, levels, strict=True))
+    along = [n for n, (run, (v, single)) in enumerate(both) if neutral_of(run, v, single) == "earthed along"]
+    if along:
+        zero = [
+            [_plain(fault_value(runs[n], f, levels[n][0], frequency_hz)) for f in ZERO_FIELDS] for n in along
+        ]
+        r0, x0 = np.array(zero).T
+        back = line.series(r0 - r20[along], x0, length[along], 20.0, alpha[along], many[along])
+        z[along] = 0  # the way back stays cold, and has no conductor of its own
+        z[along, :3, :3] = line.symmetric(phase[along], back + whole(r20, 0 * x)[along])
+    y = line.charging(farads, length, frequency_hz, many)[:, None, None] * np.diag([1.0, 1.0, 1.0, 0.0])
     return z, np.asarray(y, dtype=np.complex128)
+
+
+def _stated_row(run: Line) -> tuple[float, ...]:
+    hot, c = assumed.value(run, "temperature_degc"), assumed.value(run, "capacitance_uf_per_km")
+    own = run.resistance_ohm_per_km, run.reactance_ohm_per_km, run.length_m
+    neutral = (_plain(neutral_value(run, name)) for name in NEUTRAL_FIELDS)
+    return *own, hot, line.ALPHA[run.conductor], run.side_by_side, c, *neutral
+
+
+_stated: Columns[Line] = Columns(_stated_row, 9)
 
 
 def _plain(value: float | Put) -> float:
