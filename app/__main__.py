@@ -1,6 +1,7 @@
 """`farend [FILE]` opens the window; `farend results|year|sheet|picture FILE` works without a screen."""
 
 import argparse
+import gc
 import os
 import sys
 from pathlib import Path
@@ -64,6 +65,7 @@ def _open(path: str | None) -> int:
             "farend sheet FILE -o OUT.xlsx or farend picture FILE -o OUT.svg."
         )
         return BAD_INPUT
+    gc.disable()  # what a start loads stays: `open_window` counts it as kept and sweeps again from there
     from app.window import open_window  # Qt is loaded only for the window
 
     return int(open_window(None if path is None else Path(path)))

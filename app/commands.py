@@ -4,19 +4,20 @@ Exit codes: 0 solved, every limit holds; 1 solved, but a limit fails; 2 bad inpu
 cannot be solved as drawn; 3 no operating point.
 """
 
+from __future__ import annotations
+
 import argparse
 import os
 import sys
 from pathlib import Path
-from typing import NoReturn
+from typing import TYPE_CHECKING, NoReturn
 
-from app.model.drawing import Drawing
-from app.model.file import FileError, load, write_bytes
-from app.study import run
-from app.study.outcome import Outcome, Verdict
-from app.study.year_outcome import YearOutcome
 from app.version import version
-from solver.status import Status
+
+if TYPE_CHECKING:  # each command loads what it needs, so that help, a wrong word and the window come at once
+    from app.model.drawing import Drawing
+    from app.study.outcome import Outcome
+    from app.study.year_outcome import YearOutcome
 
 SOLVED, FAILS, BAD_INPUT, NO_OPERATING_POINT = 0, 1, 2, 3
 EXIT_CODES = """exit codes:
@@ -71,6 +72,8 @@ def parser_of(command: str) -> Parser:
 def command(name: str, arguments: list[str]) -> int:
     """Run one headless command and give its exit code."""
     chosen = parser_of(name).parse_args(arguments)
+    from app.model.file import FileError
+
     try:
         return int(COMMANDS[name][1](chosen))
     except (FileError, BadInput) as fault:
@@ -78,9 +81,21 @@ def command(name: str, arguments: list[str]) -> int:
         return BAD_INPUT
 
 
+def _drawing(chosen: argparse.Namespace) -> Drawing:
+    from app.model.file import load
+
+    return load(Path(chosen.file))
+
+
+def _run(drawing: Drawing) -> Outcome:
+    from app.study import run
+
+    return run(drawing)
+
+
 def _results(chosen: argparse.Namespace) -> int:
-    drawing = load(Path(chosen.file))
-    outcome = run(drawing)
+    drawing = _drawing(chosen)
+    outcome = _run(drawing)
     if chosen.json:
         import json
 
@@ -97,8 +112,8 @@ def _results(chosen: argparse.Namespace) -> int:
 
 def _sheet(chosen: argparse.Namespace) -> int:
     out = _checked_out(chosen, SHEETS)
-    drawing = load(Path(chosen.file))
-    outcome = run(drawing)
+    drawing = _drawing(chosen)
+    outcome = _run(drawing)
     from app.sheet import SheetError, write  # the workbook writer is loaded only for a sheet
 
     try:
@@ -110,9 +125,9 @@ def _sheet(chosen: argparse.Namespace) -> int:
 
 def _picture(chosen: argparse.Namespace) -> int:
     out = _checked_out(chosen, PICTURES)
-    drawing = load(Path(chosen.file))
+    drawing = _drawing(chosen)
     case = _case_of(drawing, chosen.case)
-    outcome = run(drawing)
+    outcome = _run(drawing)
     os.environ["QT_QPA_PLATFORM"] = "offscreen"  # a picture needs no screen
     from PySide6.QtWidgets import QApplication  # Qt is loaded only by what draws
 
@@ -130,7 +145,8 @@ def _picture(chosen: argparse.Namespace) -> int:
 
 def _year(chosen: argparse.Namespace) -> int:
     out = None if chosen.out is None else _checked_out(chosen, (".csv",))
-    drawing = load(Path(chosen.file))
+    drawing = _drawing(chosen)
+    from app.model.file import write_bytes
     from app.study.year import run_year
     from app.study.year_record import course_text, year_record
 
@@ -169,6 +185,9 @@ def _case_of(drawing: Drawing, name: str | None) -> int:
 
 def exit_code(outcome: Outcome | YearOutcome) -> int:
     """What the outcome comes to, as an exit code; a year solves where every hour of it does."""
+    from app.study.outcome import Verdict
+    from solver.status import Status
+
     if outcome.status is Status.INVALID:
         return BAD_INPUT
     if outcome.status is not Status.SOLVED:

@@ -1,5 +1,6 @@
 """The window: puts board, panels and services together. Wiring only."""
 
+import gc
 import sys
 from pathlib import Path
 
@@ -158,4 +159,6 @@ def open_window(path: Path | None = None) -> int:
     window.view.setFocus()
     if not window.menus.offer_recovery() and path is not None:
         window.menus.open_path(path)
+    gc.freeze()  # what stands now is never litter, and need not be looked through in the midst of a drag
+    gc.enable()
     return app.exec()

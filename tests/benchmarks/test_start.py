@@ -21,37 +21,37 @@ window.resize(1440, 900)
 window.show()
 app.processEvents()
 """
-OURS = f"""
+OURS = """
 import sys
-from pathlib import Path
-import app.__main__  # the installed program begins here; it brings the window in next
-from app.window import Window
 from PySide6.QtWidgets import QApplication
-from app.live.preferences import Preferences
-application = QApplication(sys.argv[:1])
-window = Window(Preferences(Path(sys.argv[1])), Path(sys.argv[1]).parent)
-window.show()
-window.menus.open_path(Path({str(SAMPLE)!r}))
-application.processEvents()
-window.solving.settle()
-application.processEvents()
-assert window.solving.outcome.status.name == "SOLVED"
-window.close()
+def usable():
+    window = next(w for w in QApplication.topLevelWidgets() if hasattr(w, "solving"))
+    QApplication.processEvents()
+    window.solving.settle()
+    QApplication.processEvents()
+    assert window.solving.outcome.status.name == "SOLVED"
+    window.close()
+    return 0
+QApplication.exec = staticmethod(usable)  # in place of waiting for the hand
+from app.__main__ import main
+sys.exit(main(sys.argv[1:]))
 """
 
 
 def seconds(script: str, folder: Path) -> float:
     """Wall seconds of one process; bytecode is kept in the folder, as an installed program keeps it."""
     env = {k: v for k, v in os.environ.items() if k != "PYTHONDONTWRITEBYTECODE"}
-    env["PYTHONPYCACHEPREFIX"] = str(folder / "bytecode")
+    env |= {"PYTHONPYCACHEPREFIX": str(folder / "bytecode"), "HOME": str(folder)}
+    env |= {f"XDG_{kind}_HOME": str(folder / kind.lower()) for kind in ("CONFIG", "DATA", "CACHE")}
     start = perf_counter()
     subprocess.run(
-        [sys.executable, "-c", script, str(folder / "likes.ini")], check=True, capture_output=True, env=env
+        [sys.executable, "-c", script, str(folder / SAMPLE.name)], check=True, capture_output=True, env=env
     )
     return perf_counter() - start
 
 
 def test_start_against_an_empty_window(tmp_path):
+    (tmp_path / SAMPLE.name).write_bytes(SAMPLE.read_bytes())
     seconds(EMPTY, tmp_path), seconds(OURS, tmp_path)  # the first start writes the bytecode
     pairs = [(seconds(EMPTY, tmp_path), seconds(OURS, tmp_path)) for _ in range(ROUNDS)]
     empty, ours = median(p[0] for p in pairs), median(p[1] for p in pairs)
