@@ -1,4 +1,4 @@
-"""Moving elements to other phases, and which fields of phases and neutral have a meaning where."""
+"""Moving elements to other phases, and which fields have a meaning as an element stands."""
 
 from collections.abc import Iterable
 
@@ -7,12 +7,15 @@ from app.model.changes import change, element
 from app.model.checks import EditRefused, called
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
-from app.model.kinds import Capacitor, Element, Line, Load, Transformer
+from app.model.kinds import Capacitor, Element, Generator, Line, Load, Motor, Transformer
 from app.model.phasing import CHOICES
 
 SHARES = ("share_a_percent", "share_b_percent")
 STARS = {"earth_1_ohm": 0, "earth_2_ohm": 1}
 NEUTRAL_DATA = ("neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km")
+CHANGER = ("hold_percent", "bandwidth_percent", "drop_r_ohm", "drop_x_ohm", "measures")
+LIMITED = ("limited_current", "limited_power_factor")
+REACH = ("q_min_kvar", "q_max_kvar")
 GROUPED = frozenset(
     ("phases", "neutral", "connection", "build", "wires", "earth_ohm", "measures", *SHARES, *NEUTRAL_DATA)
 )  # what only layouts need whose phases are not alike
@@ -40,10 +43,14 @@ def matters(one: Element, field: str) -> bool:
     if isinstance(one, Transformer):
         if field == "phases":
             return is_single_phase(one) or one.build != "as its group"
-        if field == "measures":
-            return one.regulates != "no"
         if field in STARS:
             return _has_star(one, STARS[field])
+        if field in CHANGER:
+            return one.regulates != "no"
+    if isinstance(one, Motor) and field in LIMITED:
+        return one.starter != "direct"
+    if isinstance(one, Generator) and field in REACH:
+        return one.hold_percent is not None
     return True
 
 

@@ -4,7 +4,18 @@ import pytest
 
 from app.model.checks import EditRefused
 from app.model.drawing import Drawing
-from app.model.kinds import Busbar, Cable, Capacitor, Joint, Load, Motor, Regulator, Supply, Transformer
+from app.model.kinds import (
+    Busbar,
+    Cable,
+    Capacitor,
+    Generator,
+    Joint,
+    Load,
+    Motor,
+    Regulator,
+    Supply,
+    Transformer,
+)
 from app.model.rephasing import has_phases, matters, set_phases, states_phases, turned
 
 UNIT = {"start": "A", "end": "B"}
@@ -55,6 +66,15 @@ def test_fields_that_do_nothing_are_told_from_those_that_do():
     assert not matters(Transformer(**UNIT), "measures")
     assert matters(Transformer(**UNIT, regulates="winding 2"), "measures")
     assert matters(Regulator(**UNIT), "measures")
+
+
+def test_what_a_changer_a_starter_or_a_held_voltage_needs_does_nothing_without():
+    assert not matters(Transformer(**UNIT), "hold_percent")
+    assert matters(Transformer(**UNIT, regulates="winding 2"), "hold_percent")
+    assert not matters(Motor(node="A"), "limited_current")
+    assert matters(Motor(node="A", starter="drive"), "limited_current")
+    assert not matters(Generator(node="A"), "q_max_kvar")
+    assert matters(Generator(node="A", hold_percent=100.0), "q_max_kvar")
 
 
 def test_only_what_is_not_the_usual_is_said_to_be_stated():
