@@ -75,6 +75,13 @@ def amps_words(row: Any, has: str, system: str) -> str:
     )
 
 
+def notch_words(row: Any, system: str) -> str:
+    """`A +3 · B +7 · C 0`, where each phase steps by itself; else nothing."""
+    notches = {c: getattr(row, f"{c.lower()}_notch", math.nan) for c in SLOTS}
+    known = {c: notch for c, notch in notches.items() if not math.isnan(notch)}
+    return " · ".join(f"{named(c, system)} {figures.plain(n, 0, sign=True)}" for c, n in known.items())
+
+
 def worst_of(row: Any, has: str, system: str) -> str:
     """The conductor of a line that carries most; nothing where there is but one, or they are alike."""
     known = {c: amps_of(row, c) for c in has if not math.isnan(amps_of(row, c))}

@@ -174,6 +174,9 @@ def branch_figures(
     lines = (first, *amperes) if lossless else (first, *amperes, second)
     if step is None:
         return lines
+    each = "" if wires is None else phase_words.notch_words(wires[0], wires[2])
+    if each:
+        return *lines, (Run(f"stands at {each}", Style.QUIET),)
     stands = f"stands at {figures.plain(state.notch, 0, sign=True)}"
     return *lines, (Run(f"{stands}, {figures.stated(state.notch * step, '%', sign=True)}", Style.QUIET),)
 

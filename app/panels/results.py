@@ -176,11 +176,11 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
 
 def _stands(asked: Asked, id: str, step: float) -> Row:
     """Where what steps by itself stands."""
+    return _row(asked, "branches", id, "Stands at", "notch", _notch(step), ("end stop", "runs away"))
 
-    def write(notch: float) -> str:
-        return f"{plain(notch, 0, sign=True)} ({percent(notch * step, 1, sign=True)})"
 
-    return _row(asked, "branches", id, "Stands at", "notch", write, ("end stop", "runs away"))
+def _notch(step: float) -> Write:
+    return lambda notch: f"{plain(notch, 0, sign=True)} ({percent(notch * step, 1, sign=True)})"
 
 
 def _regulator(asked: Asked, id: str) -> list[Row]:
@@ -191,7 +191,8 @@ def _regulator(asked: Asked, id: str) -> list[Row]:
         return []
     sides = (("Volts, start", element.start), ("Volts, end", element.end))
     seen = [_row(asked, "nodes", n, label, _voltage, volts) for label, n in sides if n in asked.outcome.nodes]
-    return [_stands(asked, id, element.step_percent), *seen, *made]
+    each = wire_rows.of_notches(asked, id, _notch(element.step_percent))
+    return [*(each or [_stands(asked, id, element.step_percent)]), *seen, *made]
 
 
 def _voltage(state: NodeState) -> float:

@@ -101,6 +101,17 @@ def of_leads(asked: Asked, id: str) -> list[Row]:
     ]
 
 
+def of_notches(asked: Asked, id: str, write: Write) -> list[Row]:
+    """Where each phase stands of a regulator whose phases step by themselves; else none."""
+    state, system = _first(asked.outcome, "branches", id), reach(asked.drawing, asked.outcome, id)[1]
+    slots = {f"{c.lower()}_notch": phase_words.named(c, system) for c in phase_words.SLOTS}
+    return [
+        _row(asked, "branches", id, f"Stands at, {name}", partial(_slot, slot), write, ())
+        for slot, name in slots.items()
+        if state is not None and not math.isnan(getattr(state, slot))
+    ]
+
+
 def _first(outcome: Outcome, table: str, id: str) -> Any:
     """The conductors in a case in which they are live; None where phases are alike or none is live."""
     states = [_state(outcome, table, id, case) for case in range(len(outcome.cases))]

@@ -4,6 +4,7 @@ import pytest
 from hand_desk import desk, pair
 from msgspec.structs import replace
 from panels_stage import ONE, fernhollow, stage, type_text
+from phase_drawings import camp
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
 
@@ -104,3 +105,23 @@ def test_motor_and_regulator_are_drawn_by_their_keys(desk):
 
 def _ids(desk, kind):
     return [i for i, e in desk.drawing.elements.items() if isinstance(e, kind)]
+
+
+def test_a_regulator_whose_phases_step_by_themselves_tells_each(qtbot):
+    camped = camp()
+    lane = {
+        "J9": Joint(x=52, y=0),
+        "V1": Regulator(start="LODGE", end="J9", measures="each", bandwidth_percent=2.0),
+        "L9": Load(node="J9", demand_kva=3.0),
+    }
+    made = stage(qtbot, edits.put(camped, lane))
+    made.attention.select(("V1",))
+    qtbot.waitUntil(lambda: "Stands at, A" in cells(made))
+    outcome = run(made.drawing)
+    state = outcome.wires.branches.at("V1")
+    assert state.a_notch != state.c_notch
+    assert cells(made)["Stands at, A"][0].startswith(f"+{int(state.a_notch)} (+")
+    assert {"Stands at, B", "Stands at, C"} <= set(cells(made))
+    lines = branch_figures(0.0, outcome.branches.at("V1"), None, True, 0.625, (state, "ABC", "three-phase"))
+    assert f"A +{int(state.a_notch)} · B" in "".join(run_.text for line in lines for run_ in line)
+    made.solving.stop()
