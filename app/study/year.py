@@ -27,9 +27,10 @@ from app.study.year_results import blank_year, year_outcome
 from app.study.year_tally import Tally
 from app.study.zones import Zones, zones_of
 from solver import Network, Trouble, grow, solve
-from solver.series import VALUES, solve_series
+from solver.series import solve_series
 
 Progress = Callable[[int, int], bool]
+VALUES = 1 << 16  # complex values of node volts in a block: a stop is heard soon on large layouts too
 BLOCKS = 24  # at least so many blocks, so that progress is told and a stop is heard
 MOST = 1 << 23  # complex values of what loads draw that are held at once
 
