@@ -1,7 +1,7 @@
-"""The loop that a fault closes between two conductors, out of the independent four-wire solution.
+"""The loop that a fault closes between two conductors, out of the independent four-wire equations.
 
-A drawing is made as the fault meets it, cold or hot, its supplies behind a line of their own; then a known
-impedance is put between the conductors, and from how far the volts there fall the loop follows.
+A drawing is made as the fault meets it, cold or hot, its supplies behind a line of their own; then a current
+is drawn from one conductor to another, and how far the volts between them fall is the loop.
 """
 
 import math
@@ -10,13 +10,12 @@ import numpy as np
 from msgspec.structs import replace
 from study_wired import Wired
 from wired import EARTH, N
-from wired_nodal import solution
+from wired_nodal import assemble
 
 from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.kinds import Branch, Line, Node, Supply, Transformer
 
-PUT = 0.05  # ohm
 HOT = 90.0
 
 
@@ -35,7 +34,7 @@ class FaultLoops:
         self.wired = Wired(made)
         self.wired.layout.shunts.clear()
         self.behind(made)
-        self.idle = solution(self.wired.layout)
+        self.solve()
 
     def c(self, volts):
         return self.factor[volts > 1000]
@@ -80,27 +79,44 @@ class FaultLoops:
             layout.sources[row] = (layout.nodes, volts)
             layout.nodes += 1
 
-    def loop(self, node, one, other):
-        """Complex [ohm], by how far a known impedance pulls the volts down."""
-        row = self.wired.row[node]
-        mix = (row, one, other, 1e6 / PUT, 1e3, (0.0, 0.0, 1.0))
-        self.wired.layout.loads.append(mix)
-        found = solution(self.wired.layout)
-        self.wired.layout.loads.pop()
-        before, after = (self.across(v, row, one, other) for v in (self.idle, found))
-        return PUT * (before / after - 1)
+    def solve(self):
+        """The nodal equations of every conductor, star point and coil, solved once for any current."""
+        eq = assemble(self.wired.layout)
+        for terms, _ in eq.rows:
+            for name, _ in terms:
+                eq.unknown(name)
+        self.order, self.names = {node: i for i, node in enumerate(eq.kirchhoff)}, eq.names
+        a = np.zeros((len(self.order) + len(eq.rows), len(eq.names)), dtype=complex)
+        for node, terms in eq.kirchhoff.items():
+            for name, sign in terms:
+                a[self.order[node], eq.names[name]] += sign
+        for i, (terms, _) in enumerate(eq.rows, len(self.order)):
+            for name, factor in terms:
+                a[i, eq.names[name]] += factor
+        self.size = np.abs(a).max(axis=1)
+        self.inverse = np.linalg.pinv(a / self.size[:, None], rcond=1e-14)
 
-    def across(self, found, row, one, other):
-        return found["v", row, one] - (0 if other == EARTH else found["v", row, other])
+    def loop(self, node, one, other):
+        """Complex [ohm], by how far a current of 1 A from one conductor to another pulls the volts down."""
+        drawn = np.zeros(len(self.size))
+        ends = [(("v", self.wired.row[node], c), sign) for c, sign in ((one, 1), (other, -1)) if c != EARTH]
+        for end, sign in ends:
+            drawn[self.order[end]] = -sign
+        volts = self.inverse @ (drawn / self.size)
+        return -sum(sign * volts[self.names[end]] for end, sign in ends)
 
     def currents(self, node):
-        """kA between phases, phase to neutral; phase to earth where only that is there."""
+        """kA between phases, then as `single`."""
+        phases, _, nominal = self.wired.at[node]
+        slots = ["ABC".index(p) for p in phases]
+        line = self.c(nominal) * nominal
+        pairs = [(a, b) for n, a in enumerate(slots) for b in slots[n + 1 :]]
+        return [line / abs(self.loop(node, a, b)) / 1e3 for a, b in pairs], *self.single(node)
+
+    def single(self, node):
+        """kA of each phase to the neutral, or to earth where there is none; whether there is one."""
         phases, system, nominal = self.wired.at[node]
         slots = ["ABC".index(p) for p in phases]
         own = self.c(nominal) * nominal / {"three-phase": 3**0.5, "two-wire": 1, "split-phase": 2}[system]
-        line = self.c(nominal) * nominal
-        pairs = [(a, b) for n, a in enumerate(slots) for b in slots[n + 1 :]]
-        two = [line / abs(self.loop(node, a, b)) / 1e3 for a, b in pairs]
         back = N if node in self.wired.neutral else EARTH
-        one = [own / abs(self.loop(node, a, back)) / 1e3 for a in slots]
-        return two, one, back == N
+        return [own / abs(self.loop(node, a, back)) / 1e3 for a in slots], back == N
