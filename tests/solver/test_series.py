@@ -4,11 +4,14 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from networks import POWER, build
 from random_networks import random_network
 from test_wires import random_layout
 
 from solver import solve
+from solver.control import Regulator, control
 from solver.series import solve_series
+from solver.share import pick
 
 
 def year(points=50, dead=1):
@@ -90,3 +93,31 @@ def test_four_wires():
     )
     electrodes = (np.abs(whole.earth_current) ** 2 * network.wires.earth_z.real).sum()
     assert series.supplied.sum() == pytest.approx(taken + series.iron_loss.sum() + electrodes, rel=1e-9)
+
+
+def test_what_steps_rests_in_each_point_anew_and_blocks_are_shown():
+    volts, share = 11e3 / 3**0.5, np.linspace(0.1, 1.0, 20)
+    network = build(
+        4,
+        [(0, volts)],
+        [(0, 1, 2 + 3j), (2, 3, 3 + 4j)],
+        [(1, 2, 1.0, 0.1 + 0.5j)],
+        loads=[(3, 600e3 + 250e3j, volts, POWER)],
+    )
+    network = replace(network, load_power=network.load_power * share)
+    step = Regulator(
+        transformer=0, tapped=2, step=0.00625, lowest=-16, highest=16, setting=volts, bandwidth=0.0125 * volts
+    )
+    seen = {}
+
+    def watch(points, solution, rested):
+        seen.update(zip(points.tolist(), rested.notch[0].tolist(), strict=True))
+
+    series = solve_series(network, block=6, regulators=[step], watch=watch)
+    alone = [control(pick(network, np.array([i])), [step]) for i in range(20)]
+    assert [seen[i] for i in range(20)] == [int(one.notch[0, 0]) for one in alone]
+    assert len(set(seen.values())) > 3
+    low = min(float(np.abs(one.solution.voltage[3, 0, 0])) for one in alone)
+    assert series.lowest.value[3] == pytest.approx(low, rel=1e-9)
+    lost = sum(one.solution.line_series_loss.real.sum() for one in alone)
+    assert series.line_loss.sum() == pytest.approx(lost, rel=1e-9)
