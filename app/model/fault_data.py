@@ -6,6 +6,7 @@ from app.model.assumed import NO_SOURCE
 from app.model.kinds import Element, Line, OverheadLine, Supply, Transformer
 
 LOW_V = 1000.0  # up to here a system counts as low voltage, IEC 60038
+PLAIN_V = 300.0  # up to here one of two wires is taken for the neutral, above it may be two phases
 CABLE_HOT_DEGC, OVERHEAD_HOT_DEGC = 90.0, 80.0
 EARTH_OHM_PER_KM = 0.0493  # of the way back through earth at 50 Hz, Carson; goes with the frequency
 OVERHEAD_X0 = 3.0  # X0 / X1 of a bare line

@@ -7,6 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
+from app.model.fault_data import PLAIN_V
 from app.model.kinds import Supply, Transformer
 from app.model.levels import TWO_WIRE
 from app.study.conductors import Conductors
@@ -23,7 +24,6 @@ Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
 NONE_BACK = 1e-4  # of the current between conductors, below which a fault to earth counts as not fed
 EARTH_LAST = 1e-9  # keeps a fault to earth behind all others
-PLAIN_V = 300.0  # up to here one of two wires is taken for the neutral, above it may be two phases
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,12 +8,11 @@ from numpy.typing import NDArray
 from app.model import assumed, taps
 from app.model.conductors import has_neutral
 from app.model.drawing import Drawing, Limits
-from app.model.fault_data import LOW_V, Put, fault_value, star_earth_ohm
+from app.model.fault_data import LOW_V, PLAIN_V, Put, fault_value, star_earth_ohm
 from app.model.fields import fields_of
 from app.model.kinds import Branch, Element, Line, OverheadLine, Supply, Switch, Transformer
 from app.model.levels import SPLIT
 from app.model.wire_data import neutral_value
-from app.study.fault_conductors import PLAIN_V
 from app.study.fault_feeders import feeders
 from app.study.fault_plain import plain_branches
 from app.study.fault_ways import Ways, with_equivalent, with_feeders

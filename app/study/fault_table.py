@@ -1,11 +1,14 @@
 """The figures of every node: out of sequence networks, and conductor by conductor where they do not reach."""
 
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
 import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.levels import TWO_WIRE
-from app.study.fault_conductors import Loops, earth_loops, loops
 from app.study.fault_rows import FaultRows
 from app.study.fault_ways import EQUIVALENT
 from app.study.graph import Layout
@@ -13,6 +16,9 @@ from app.study.outcome import FaultState, Table
 from app.study.zones import Zones
 from solver import fault
 from solver.sequence import seen
+
+if TYPE_CHECKING:
+    from app.study.fault_conductors import Loops  # loaded where phases are missing or wires are two
 
 Real = NDArray[np.float64]
 Flag = NDArray[np.bool_]
@@ -47,10 +53,14 @@ def fault_table(drawing: Drawing, layout: Layout, zones: Zones, rows: FaultRows 
         two = np.array([zones.system[zone] == TWO_WIRE for zone in layout.zone], dtype=bool)
         factors, nodes = (rows.c_max, rows.c_min), np.flatnonzero(lacking)
         if nodes.size:
+            from app.study.fault_conductors import loops
+
             by_loop = loops(drawing, layout, zones, factors, nodes, EQUIVALENT)
             _put(found, _by_loop(by_loop, two[nodes]), nodes)
         nodes = np.flatnonzero(known & two & ~lacking)
         if nodes.size:
+            from app.study.fault_conductors import earth_loops
+
             earth, zs = earth_loops(drawing, layout, zones, factors, nodes)
             _put(found, dict(zip(TO_EARTH, (*(earth.T / 1e3), zs), strict=True)), nodes)
         columns |= {name: np.where(known, value, np.nan) for name, value in found.items()}

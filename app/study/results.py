@@ -22,8 +22,6 @@ from app.study.memory import Columns
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table, Wired
 from app.study.rows import Rows
 from app.study.sums import size
-from app.study.wire_branches import wire_branches
-from app.study.wire_nodes import wire_attachments, wire_nodes
 from app.study.zones import Zones
 from solver import Solution
 
@@ -67,6 +65,9 @@ def tables_of(
 
 def _wired(layout: Layout, zones: Zones, rows: Rows, solution: Solution) -> Tables:
     """Phases one by one, and of each element what counts in all: its worst phase, its whole power."""
+    from app.study.wire_branches import wire_branches  # most layouts are balanced and never need them
+    from app.study.wire_nodes import wire_attachments, wire_nodes
+
     nodes, node_wires = wire_nodes(layout, zones, rows, solution)
     branches, branch_wires = wire_branches(layout, rows, solution, nodes, node_wires)
     attachments, attachment_wires = wire_attachments(layout, rows, solution, node_wires)

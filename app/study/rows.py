@@ -14,7 +14,6 @@ from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Regulator, 
 from app.study.conductors import Conductors, conductors_of, is_wired
 from app.study.layout import Layout, arrays_of
 from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
-from app.study.wire_rows import wire_network
 from app.study.wires import PER_PHASE
 from app.study.zones import Zones
 from solver.network import Network
@@ -113,6 +112,8 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
 
 
 def _wired(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
+    from app.study.wire_rows import wire_network  # most layouts are balanced and never need it
+
     kinds, sources = _sort(layout, drawing), np.array(layout.supplies, dtype=np.intp)
     rows = kinds.lines, kinds.units, sources, kinds.loads, kinds.shunts
     conductors = conductors_of(layout, zones)

@@ -1,16 +1,17 @@
 """The one path from a drawing to its outcome: window, headless commands and tests all walk it."""
 
+from __future__ import annotations
+
 from time import perf_counter
+from typing import TYPE_CHECKING
 
 from app.model.drawing import Drawing
 from app.study.assumptions import assumptions_of
 from app.study.changer_findings import barred_findings, hunting_findings, stop_findings
 from app.study.changers import Moved, settled
-from app.study.collapse import Collapse, collapse_of
 from app.study.excitation import excitation_findings
 from app.study.faults import NO_FAULTS, Faults, faults_of
 from app.study.findings import judge
-from app.study.idle import idle_findings
 from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Outcome, Verdict
 from app.study.results import Tables, tables_of
@@ -24,6 +25,9 @@ from app.study.structure import structure_findings
 from app.study.words import tally_words
 from app.study.zones import Zones, zones_of
 from solver import Solution, Status, Trouble
+
+if TYPE_CHECKING:
+    from app.study.collapse import Collapse
 
 
 def run(drawing: Drawing) -> Outcome:
@@ -86,6 +90,8 @@ def _outcome(
     elif moved is not None and (hunting := hunting_findings(drawing, layout, moved)):
         found = hunting + found
     elif rows is not None and solution is not None:
+        from app.study.collapse import collapse_of  # loaded where a layout does not stand
+
         collapse = collapse_of(drawing, layout, zones, rows, solution)
         found = [collapse.finding, *found]
     found.sort(key=lambda f: f.verdict.rank)
@@ -133,6 +139,8 @@ def _judged(
         found += stop_findings(drawing, layout, rows, tables, moved)
     found += faulted.findings
     if layout.rings:
+        from app.study.idle import idle_findings  # loaded with the first ring
+
         found += idle_findings(drawing, layout, zones, rows, tables.attachments)
     return found
 
