@@ -20,7 +20,7 @@ DIRECTIONS = 40
 FORCING = 1e-3  # how far a step closes the gap, to first order
 NUDGE = 1.5e-8  # of the volts, by which the slope is felt
 LEAST = 5e-5  # share of the load below which there is no way on
-HOPELESS = 0.02  # the same of what lacks to the whole load
+HOPELESS = 0.05  # the same of what lacks to the whole load
 FALLING = 0.6  # to which each step must bring the gap down
 DEEP = 0.3  # of the volts across a load, below which one step must not lead
 

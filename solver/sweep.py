@@ -9,7 +9,7 @@ from solver.hung import Scratch
 from solver.network import Complex, Index
 from solver.placed import Placed
 
-WIDE = 16  # values a place from which prefix sums go row by row
+WIDE = 48  # values a place from which prefix sums go row by row
 CHUNK = 1 << 15  # complex values that are worked on while they stay in cache
 
 
@@ -223,6 +223,6 @@ def accumulate(values: Complex, out: Complex) -> None:
     if values.shape[1] * values.shape[2] < WIDE:
         np.add.accumulate(values, 0, None, out)
         return
-    out[0] = values[0]
-    for row in range(1, values.shape[0]):
-        np.add(out[row - 1], values[row], out=out[row])
+    out[0] = total = values[0]
+    for value, place in zip(values[1:], out[1:], strict=True):
+        total = np.add(total, value, place)
