@@ -25,8 +25,8 @@ from app.model.drawing_on import drop, extend, join, move, remake, reroute, spli
 from app.model.hanging import free_place
 from app.model.keeping import carried, forget_part, keep_part, rename_part, set_symbol
 from app.model.parts import made_from
-from app.model.typing_in import change_text
 from app.model.profile_edits import follow, put_profile, remove_profile, rename_profile, set_year
+from app.model.typing_in import change_text
 
 __all__ = [
     "Change",
@@ -40,8 +40,8 @@ __all__ = [
     "diff",
     "drop",
     "extend",
-    "forget_part",
     "follow",
+    "forget_part",
     "free_place",
     "join",
     "keep_part",
@@ -49,17 +49,17 @@ __all__ = [
     "move",
     "paste",
     "put",
-    "reattach",
     "put_profile",
+    "reattach",
     "reconnect",
     "remake",
     "remove",
     "remove_case",
-    "rename",
     "remove_profile",
+    "rename",
     "rename_part",
-    "reroute",
     "rename_profile",
+    "reroute",
     "set_case",
     "set_frequency",
     "set_limits",
@@ -68,8 +68,8 @@ __all__ = [
     "set_project",
     "set_symbol",
     "set_tap",
+    "set_year",
     "split_branch",
     "swap_ends",
-    "set_year",
     "turn_bar",
 ]
