@@ -10,7 +10,7 @@ from app.model import assumed
 from app.model.drawing import Drawing
 from app.model.fault_data import Put, fault_value
 from app.model.kinds import Branch, Line, OverheadLine
-from app.model.levels import THREE_PHASE
+from app.model.levels import THREE_PHASE, TWO_WIRE
 from app.model.wire_data import neutral_of, neutral_value
 from app.study.conductors import Conductors
 from app.study.graph import Layout, arrays_of
@@ -24,6 +24,7 @@ K = 4
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
+PAIR = np.array([[1, 0, 0, -1], [0, 1, 0, -1], [0, 0, 1, -1], [-1, -1, -1, 1]])  # whichever phase there is
 NEUTRAL_FIELDS = ("neutral_resistance_ohm_per_km", "neutral_reactance_ohm_per_km")
 ZERO_FIELDS = ("zero_resistance_ohm_per_km", "zero_reactance_ohm_per_km")
 
@@ -48,9 +49,9 @@ def line_matrices(
     global _last
     zone = arrays_of(layout).zone[arrays_of(layout).start[rows]]
     bits = np.array(conductors.branch, dtype=np.intp)[rows]
-    nominal, single = zones.nominal_v[zone], np.array([s != THREE_PHASE for s in zones.system])[zone]
+    nominal, systems = zones.nominal_v[zone], [zones.system[z] for z in zone]
     runs = [layout.branches[row] for row in rows]
-    told = [*zip(bits.tolist(), nominal.tolist(), single.tolist(), strict=True)]
+    told = [*zip(bits.tolist(), nominal.tolist(), systems, strict=True)]
     were, told_then, z, y, frequency = _last
     if len(were) != len(runs) or frequency != drawing.frequency_hz:
         were, told_then = [None] * len(runs), told
@@ -69,7 +70,7 @@ def line_matrices(
     return z, y, has
 
 
-Told = tuple[int, float, bool]  # what a matrix hangs on besides its line: bits, nominal volts, single-phase
+Told = tuple[int, float, str]  # what a matrix hangs on besides its line: bits, nominal volts, system
 _last: tuple[Sequence[Branch | None], list[Told], Complex, Complex, float]
 _last = ([], [], np.zeros((0, K, K, 1), np.complex128), np.zeros((0, K, K, 1), np.complex128), 0.0)
 
@@ -79,9 +80,9 @@ def _of_lines(runs: list[Branch], told: list[Told], frequency_hz: float) -> tupl
     z = np.zeros((len(runs), K, K, 1), dtype=np.complex128)
     y = np.zeros_like(z)
     plain: list[int] = []
-    for n, (run, (bits, nominal, single)) in enumerate(zip(runs, told, strict=True)):
+    for n, (run, (bits, nominal, system)) in enumerate(zip(runs, told, strict=True)):
         if isinstance(run, OverheadLine) and run.hung_at_m and bits & ABC:
-            z[n, ..., 0], y[n, ..., 0] = _hung(run, letters(bits & ABC), nominal, single, frequency_hz)
+            z[n, ..., 0], y[n, ..., 0] = _hung(run, letters(bits & ABC), nominal, system, frequency_hz)
         elif isinstance(run, Line) and bits & ABC:
             plain.append(n)
     if plain:
@@ -92,23 +93,26 @@ def _of_lines(runs: list[Branch], told: list[Told], frequency_hz: float) -> tupl
 
 
 def _hung(
-    run: OverheadLine, phases: str, nominal_v: float, single: bool, frequency_hz: float
+    run: OverheadLine, phases: str, nominal_v: float, system: str, frequency_hz: float
 ) -> tuple[Complex, Complex]:
     """The same of a line that states its spacing; its places are those of the phases that reach it."""
     if run.phases == "all" and len(phases) < 3:
         run = replace(run, phases="CA" if phases == "AC" else phases)
-    z, y = matrix_of(run, frequency_hz, 0.0 if single else nominal_v)
+    z, y = matrix_of(run, frequency_hz, nominal_v if system == THREE_PHASE else 0.0)
     length = run.length_m / 1e3
     return z * length / run.side_by_side, y * length * run.side_by_side
 
 
 def matrices(
-    runs: Sequence[Line], levels: Sequence[tuple[float, bool]], frequency_hz: float
+    runs: Sequence[Line], levels: Sequence[tuple[float, str]], frequency_hz: float
 ) -> tuple[Complex, Complex]:
     """Series impedance and shunt admittance among A, B, C and N, as if each had all of them.
 
+    A capacitance is that of a phase to earth; on two wires half of it stands between them, as both have it to
+    the neutral plane.
+
     runs : (line,) cables and overhead lines that state no spacing
-    levels : (line,) nominal volts of the zone, and whether its system has no three phases
+    levels : (line,) nominal volts of the zone, and its system
     frequency_hz : float [Hz]
 
     Returns : z (line, k, k) complex [ohm], y (line, k, k) complex [S]
@@ -121,8 +125,8 @@ def matrices(
 
     phase = whole(r20, x)
     z = line.four_wire(phase, whole(rn, xn))
-    both = list(zip(runs, levels, strict=True))
-    along = [n for n, (run, (v, single)) in enumerate(both) if neutral_of(run, v, single) == "earthed along"]
+    kinds = [neutral_of(run, v, system != THREE_PHASE) for run, (v, system) in zip(runs, levels, strict=True)]
+    along = [n for n, kind in enumerate(kinds) if kind == "earthed along"]
     if along:
         zero = [
             [_plain(fault_value(runs[n], f, levels[n][0], frequency_hz)) for f in ZERO_FIELDS] for n in along
@@ -132,6 +136,8 @@ def matrices(
         z[along] = 0  # the way back stays cold, and has no conductor of its own
         z[along, :3, :3] = line.symmetric(phase[along], back + whole(r20, 0 * x)[along])
     y = line.charging(farads, length, frequency_hz, many)[:, None, None] * np.diag([1.0, 1.0, 1.0, 0.0])
+    pair = [n for n, (_, system) in enumerate(levels) if system == TWO_WIRE and kinds[n] == "carried"]
+    y[pair] = y[pair, :1, :1] / 2 * PAIR
     return z, np.asarray(y, dtype=np.complex128)
 
 

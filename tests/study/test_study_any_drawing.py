@@ -176,25 +176,47 @@ def test_phases_that_fit_are_solved_and_turn_with_their_letters(start):
             assert_alike(getattr(outcome, name), getattr(other, name), {"angle_deg": ""}, 1e-7)  # of A
 
 
+def three_phases(base, supply):
+    """Nothing on one phase makes four conductors of it."""
+    return base, edits.put(base, {"ZZ": Load(node=supply.node, demand_kva=0.0, phases="A")})
+
+
+def two_wires(base, supply):
+    """On two wires it is an electrode where the supply holds the neutral at earth anyway."""
+    single = {"Transformer": {"vector_group": "Ii0"}, "Supply": {"wires": "two-wire"}}
+    moved = {
+        i: msgspec.structs.replace(e, **single.get(type(e).__name__, {})) for i, e in base.elements.items()
+    }
+    base = msgspec.structs.replace(base, elements=moved)
+    held = msgspec.structs.replace(moved[supply.node], earth_ohm=5.0)
+    return base, edits.put(base, {supply.node: held})
+
+
 @pytest.mark.parametrize("start", range(0, 240, 60))
-def test_four_conductors_say_what_one_says(start):
+@pytest.mark.parametrize("both", [three_phases, two_wires])
+def test_four_conductors_say_what_one_says(start, both):
     compared = 0
     for seed in range(start, start + 60):
         base = anything(seed)
         supplies = [e for e in base.elements.values() if isinstance(e, Supply)]
-        if not supplies or any(s.wires != "three-phase" for s in supplies):
+        if both is three_phases and {s.wires for s in supplies} != {"three-phase"}:
             continue
-        nothing = Load(node=supplies[0].node, demand_kva=0.0, phases="A")
-        outcome, four = run(base), run(edits.put(base, {"ZZ": nothing}))
+        if not supplies or both is two_wires and len(supplies) > 1:  # whose neutrals earth would join
+            continue
+        one, other = both(base, supplies[0])
+        outcome, four = run(one), run(other)
         assert four.status is outcome.status, seed
         if outcome.status is Status.SOLVED:
             compared += 1
             assert four.wires is not None
+            ohms = {} if both is three_phases else {"resistance_ohm": "", "reactance_ohm": ""}  # of the loop
             for name in ("nodes", "branches", "attachments"):
                 ours, theirs = getattr(outcome, name), getattr(four, name)
                 rows = [theirs.rows[id] for id in ours.ids]
                 columns = {k: c[rows] for k, c in theirs.columns.items()}
-                assert_alike(ours, replaced(theirs, ids=ours.ids, columns=columns, rows=ours.rows), {}, 1e-7)
+                assert_alike(
+                    ours, replaced(theirs, ids=ours.ids, columns=columns, rows=ours.rows), ohms, 1e-7
+                )
     assert compared >= 5
 
 
