@@ -19,8 +19,8 @@ KA = {"unit": "kA", "digits": 2, "width": 8}
 MOST_COLUMNS = (
     *IDENTITY, UN,
     Column("c", "cmax", digits=2, width=6),
-    Column("r", "R1", "Ω", digits=5, width=9),
-    Column("x", "X1", "Ω", digits=5, width=9),
+    Column("r", "R seen", "Ω", digits=5, width=9),
+    Column("x", "X seen", "Ω", digits=5, width=9),
     Column("ik3", "Ik3 max", near="rating", **KA),  # type: ignore[arg-type]
     Column("xr", "X/R", digits=2, width=7),
     Column("rx", "R/X of peak", digits=3, width=8),
@@ -55,7 +55,7 @@ DEVICE_COLUMNS = (
     Column("verdict", "Verdict", style=Style.VERDICT, width=24),
 )  # fmt: skip
 MOST_NOTE = (
-    "Ik3 = cmax·Un/(√3·|Z1|), Ik2 = √3/2·Ik3, ip = κ·√2·Ik3; between two conductors I = cmax·U/|Z| of their "
+    "Ik3 = cmax·Un/(√3·|Z|), Ik2 = √3/2·Ik3, ip = κ·√2·Ik3; between two conductors I = cmax·U/|Z| of their "
     f"loop and ip = κ·√2·I. Initial symmetrical values. {CAUTION}"
 )
 LEAST_NOTE = (
