@@ -13,6 +13,7 @@ from solver.placed import Placed
 from solver.sweep import Sweep
 
 NOISE = 1e-14  # of the volts at both ends, below which their difference is rounding
+BALANCED = 1e-13  # of all that is drawn either way, below which their sum is rounding
 CUT = 1e-12  # of the largest singular value, below which a direction is not determined
 
 
@@ -107,8 +108,7 @@ class Ties:
         count = lift.shape[2]
         straight, turned = np.zeros((2, count, count, width), dtype=np.complex128)
         if self.placed.y is not None:
-            drawn = np.einsum("pijb,pjfb->pifb", self.placed.y, lift)
-            straight += np.einsum("pigb,pifb->gfb", lift, drawn)
+            straight += _drawn(self.placed.y, lift)
         if self.placed.hung is not None:
             a, b = self.placed.hung.slopes(before)
             across = self.placed.hung.across(lift)
@@ -125,6 +125,13 @@ class Ties:
             self.inverse, self.matrix = self.inverse[points], self.matrix[points]
         if self.placed.loose is not None and len(self.apart) > 1:
             self.apart = self.apart[points]
+
+
+def _drawn(y: Complex, lift: Complex) -> Complex:
+    """(loose, loose, batch) Wᵀ Y W; what hangs between conductors that move together draws nothing."""
+    found = np.einsum("pigb,pijb,pjfb->gfb", lift, y, lift, optimize=True)
+    size = np.einsum("pigb,pijb,pjfb->gfb", *(np.abs(a) for a in (lift, y, lift)), optimize=True)
+    return np.asarray(np.where(np.abs(found) < BALANCED * size, 0, found))
 
 
 def _scale(diagonal: Real) -> Real:

@@ -134,7 +134,22 @@ def one_wire():
     )  # fmt: skip
 
 
+def kiln(build, group):
+    """Impedances between the phases of a side that nothing earths: no current tells its volts to earth."""
+    quiet = {"no_load_loss_w": 0.0, "no_load_current_percent": 0.0, "tap": 0}
+    uneven = {"connection": "delta", "share_a_percent": 50.0, "share_b_percent": 30.0}
+    return drawn(
+        S=Supply(node="H", nominal_v=12470.0),
+        T=unit("H", "P", v1_v=12470.0, v2_v=240.0, build=build, vector_group=group, **quiet),
+        L=Load(node="P", demand_kva=20.0, constant_impedance_percent=100.0, **uneven),
+        K=Capacitor(node="P", rating_kvar=4.0, phases="BC"),
+        M=Motor(node="P", rated_kw=15.0),
+    )
+
+
 LAYOUTS = {
+    "impedances behind an open delta": lambda: kiln("open delta", "Ii0"),
+    "impedances behind a delta": lambda: kiln("as its group", "Dd0"),
     "one wire and the earth": one_wire,
     "street": street,
     "camp": camp,
