@@ -1,9 +1,9 @@
 """Which conductors reach every node, run in every branch and feed every attachment."""
 
-from dataclasses import dataclass
+from msgspec import Struct
 
 from app.model import wire_data
-from app.model.conductors import has_neutral
+from app.model.conductors import has_neutral, is_hung
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Line, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
@@ -16,8 +16,7 @@ from app.study.zones import Zones
 from solver.wires import EARTH
 
 
-@dataclass(frozen=True, slots=True)
-class Conductors:
+class Conductors(Struct, frozen=True):
     """Conductors as bits: A 1, B 2, C 4, N 8.
 
     node : per node row, those that a supply reaches
@@ -52,7 +51,7 @@ def is_wired(drawing: Drawing, layout: Layout, zones: Zones) -> bool:
         system = zones.system[zone]
         if layout.live[head] and (system == SPLIT or system != root[layout.tree[head]]):
             return True
-    if TWO_WIRE in root and _earth_matters(drawing, layout):
+    if TWO_WIRE in root and (_earth_matters(drawing, layout) or _unlike_back(layout, zones)):
         return True
     odd = [layout.start[row] for row, plain in enumerate(_plain_branch.of(layout.branches)) if not plain]
     odd += [layout.at[row] for row, plain in enumerate(_plain_hung.of(layout.attachments)) if not plain]
@@ -61,6 +60,23 @@ def is_wired(drawing: Drawing, layout: Layout, zones: Zones) -> bool:
 
 def _earth_matters(drawing: Drawing, layout: Layout) -> bool:
     return drawing.limits.neutral_v is not None or any(n.earth_ohm is not None for n in layout.nodes)
+
+
+def _unlike_back(layout: Layout, zones: Zones) -> bool:
+    """Whether any line of a two-wire part comes back through something else than an equal wire."""
+    odd = [layout.start[row] for row, plain in enumerate(_plain_back.of(layout.branches)) if not plain]
+    return any(layout.live[node] and zones.system[layout.zone[node]] == TWO_WIRE for node in odd)
+
+
+def _equal_back(branch: Branch) -> bool:
+    if not isinstance(branch, Line) or is_hung(branch):
+        return True
+    stated = (
+        branch.neutral_resistance_ohm_per_km,
+        branch.neutral_reactance_ohm_per_km,
+        branch.return_resistance_ohm_per_km,
+    )
+    return branch.neutral in ("usual", "carried") and all(value is None for value in stated)
 
 
 def _alike(branch: Branch) -> bool:
@@ -77,6 +93,7 @@ def _balanced(hung: Attachment) -> bool:
     return all(share is None or abs(share - third) < 1e-12 for share in shares)
 
 
+_plain_back: Memory[Branch, bool] = Memory(_equal_back)
 _plain_branch: Memory[Branch, bool] = Memory(_alike)
 _plain_hung: Memory[Attachment, bool] = Memory(_balanced)
 

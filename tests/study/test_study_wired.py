@@ -148,6 +148,11 @@ def kiln(build, group):
 
 
 LAYOUTS = {
+    "two wires, the neutral thinner": lambda: drawn(
+        S=Supply(node="H", nominal_v=230.0, wires="two-wire"),
+        C1=lv("H", "K", neutral_resistance_ohm_per_km=0.64), C2=lv("K", "M", 50.0),
+        L1=Load(node="K", demand_kva=6.0), L2=Load(node="M", demand_kva=2.0, constant_current_percent=100.0),
+    ),
     "impedances behind an open delta": lambda: kiln("open delta", "Ii0"),
     "impedances behind a delta": lambda: kiln("as its group", "Dd0"),
     "one wire and the earth": one_wire,
