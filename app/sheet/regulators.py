@@ -32,9 +32,8 @@ def regulator_tables(subject: Subject) -> list[SheetTable]:
     found = {i: e for i, e in subject.drawing.branches().items() if is_changer(e)}
     by_phase = subject.outcome.wires is not None
     measures = (Column("measures", "Measures", style=Style.TEXT, width=9),) if by_phase else ()
-    own = (
-        each(subject, Column("notch", "Stands at", "notch", digits=0), False) if _each(found.values()) else ()
-    )
+    stand = Column("notch", "Stands at", "notch", digits=0)
+    own = each(subject, stand, False) if by_phase and _each(found.values()) else []
     data = (
         *FROM_TO,
         Column("holds", "Holds", style=Style.TEXT, width=22),
@@ -49,7 +48,7 @@ def regulator_tables(subject: Subject) -> list[SheetTable]:
     )
     figures = (
         *own,
-        Column("notch", "Stands at", "notch", digits=0),
+        stand,
         Column("percent", "Stands at", "%", digits=2),
         Column("u1", "U, from", "V", style=Style.VOLTS, width=10),
         Column("u2", "U, to", "V", style=Style.VOLTS, width=10),

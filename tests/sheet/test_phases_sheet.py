@@ -10,7 +10,7 @@ import pytest
 from wired_layouts import EVENING, MORNING, camp, units
 
 from app.model.drawing import Drawing
-from app.model.kinds import Busbar, Joint, Load, Regulator
+from app.model.kinds import Busbar, Joint, Load, Regulator, Supply
 from app.printed import printed
 from app.sheet import write
 from app.study import run
@@ -136,6 +136,15 @@ def test_a_regulator_of_three_tells_where_each_stands(tmp_path: Path) -> None:
     assert [float(row[f"Stands at {p} [notch]"]) for p in "ABC"] == notches
     assert len(set(notches)) > 1
     assert " ".join(f"{n:+.0f}".replace("-", "\N{MINUS SIGN}") for n in notches) in printed(drawing, outcome)
+
+
+def test_one_that_would_step_each_phase_stands_alone_where_phases_are_alike(tmp_path: Path) -> None:
+    nodes = {"B1": Busbar(), "B2": Busbar()}
+    changer = Regulator(start="B1", end="B2", hold_percent=103.0, measures="each")
+    hung = {"S1": Supply(node="B1"), "V1": changer, "L1": Load(node="B2")}
+    drawing = Drawing(elements={**nodes, **hung})
+    row = files(drawing, tmp_path)["regulators"]["V1"]
+    assert float(row["Stands at [notch]"]) == run(drawing).branches.at("V1").notch > 0
 
 
 def test_text_tells_every_conductor(solved: Outcome) -> None:
