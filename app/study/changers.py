@@ -3,6 +3,7 @@
 from dataclasses import dataclass, replace
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model import assumed
@@ -80,8 +81,7 @@ def settled(
     return rows, found.solution, moved
 
 
-@dataclass(frozen=True, slots=True)
-class Moving:
+class Moving(Struct, frozen=True):
     """What moves by itself, as the solver takes it; false where nothing does.
 
     changers : (changer,) branch rows

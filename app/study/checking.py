@@ -1,9 +1,9 @@
 """One kind of check on many elements, judged unrounded, its worst case named."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.figures import plain
@@ -18,8 +18,7 @@ LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
 
 
-@dataclass(frozen=True, slots=True)
-class Check:
+class Check(Struct, frozen=True):
     """One kind of check on many elements.
 
     name : such as "voltage low"

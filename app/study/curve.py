@@ -1,9 +1,10 @@
 """What every notch of a transformer would do: all notches in all cases are one batch of the solver."""
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
+from msgspec import Struct
 from msgspec.structs import replace as replaced
 from numpy.typing import NDArray
 
@@ -27,8 +28,7 @@ Real = NDArray[np.float64]
 BATCHED = ("gain", "series", "iron", "own_z")  # of a two-port
 
 
-@dataclass(frozen=True, slots=True)
-class TapCurve:
+class TapCurve(Struct, frozen=True):
     """What each notch gives. Where a notch has no operating point its figures are nan and it does not hold.
 
     notches : (notch,) int, lowest first

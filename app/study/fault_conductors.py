@@ -4,6 +4,7 @@ split-phase parts, open banks; and the earth loop of two wires."""
 from dataclasses import dataclass, field
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
@@ -26,8 +27,7 @@ NONE_BACK = 1e-4  # of the current between conductors, below which a fault to ea
 EARTH_LAST = 1e-9  # keeps a fault to earth behind all others
 
 
-@dataclass(frozen=True, slots=True)
-class Loops:
+class Loops(Struct, frozen=True):
     """Figures of some nodes; nan for what a node has not.
 
     three, two, neutral, earth : (node, 2) float [A] three-phase, between two phases, phase to neutral, phase
@@ -83,8 +83,7 @@ def loops(
     )
 
 
-@dataclass(frozen=True, slots=True)
-class _Currents:
+class _Currents(Struct, frozen=True):
     """Currents [A] of nodes, phase by phase or pair by pair; loops between conductors; volts of a phase."""
 
     three: Real

@@ -1,6 +1,6 @@
 """Each device with a trip current: how far it guards, and the least earth-fault current it is left with."""
 
-from dataclasses import dataclass
+from msgspec import Struct
 
 from app.model.kinds import Line, Transformer
 from app.study.graph import NONE, Layout
@@ -11,8 +11,7 @@ NO_LOOP = "the earth-fault loop behind it is not known"
 NOT_FED = "nothing feeds it"
 
 
-@dataclass(frozen=True, slots=True)
-class Device:
+class Device(Struct, frozen=True):
     """The device at the fed end of a line.
 
     line : id of the line

@@ -1,8 +1,7 @@
 """Drawing to sequence networks: everything that a fault current meets on its way, cold and hot."""
 
-from dataclasses import dataclass
-
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model import assumed, taps
@@ -29,8 +28,7 @@ Complex = NDArray[np.complex128]
 NEUTRAL_R = "neutral_resistance_ohm_per_km"
 
 
-@dataclass(frozen=True, slots=True)
-class FaultRows:
+class FaultRows(Struct, frozen=True):
     """Both sequence networks, the voltage factors, and whatever had to be assumed for them.
 
     one : Sequence, columns: highest currents, least currents, highest at the equivalent frequency

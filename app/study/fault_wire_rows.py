@@ -1,9 +1,9 @@
 """A drawing's phases and neutral as a fault meets them: cold or hot, supplies behind their impedance."""
 
-from dataclasses import dataclass
 from dataclasses import replace as with_fields
 
 import numpy as np
+from msgspec import Struct
 from msgspec.structs import replace
 from numpy.typing import NDArray
 
@@ -27,8 +27,7 @@ COLD = 20.0
 BLOCKED = 1e6  # Z0 / Z1 of what lets no zero sequence through
 
 
-@dataclass(frozen=True, slots=True)
-class Way:
+class Way(Struct, frozen=True):
     """Which of the networks of conductors is asked for.
 
     largest : the highest currents are sought, else the least

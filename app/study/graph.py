@@ -3,6 +3,7 @@
 from dataclasses import dataclass, field
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.conductors import is_hung
@@ -13,8 +14,7 @@ NONE = -1
 Index = NDArray[np.intp]
 
 
-@dataclass(frozen=True, slots=True)
-class Ring:
+class Ring(Struct, frozen=True):
     """A round that one branch closes over the trees.
 
     branches : branch rows in the order of the round; from one supply to the other where it joins two
@@ -69,8 +69,7 @@ class Layout:
     forest: Forest | Trouble | None = None  # the solver's view of the same graph, once it was asked for
 
 
-@dataclass(frozen=True, slots=True)
-class Arrays:
+class Arrays(Struct, frozen=True):
     """The graph once more as arrays, for what is worked out of whole columns.
 
     start, end : (branch,) node rows

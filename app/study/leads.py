@@ -1,9 +1,9 @@
 """Between which conductors an attachment hangs, and how its power is shared among them."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import ArrayLike, NDArray
 
 from app.model.kinds import Attachment, Load, Motor
@@ -15,8 +15,7 @@ THIRDS = (1 / 3, 1 / 3, 1 / 3)
 ROUND = ((0, 1), (1, 2), (2, 0))
 
 
-@dataclass(frozen=True, slots=True)
-class Leads:
+class Leads(Struct, frozen=True):
     """The ways from conductor to conductor through an attachment.
 
     pairs : (lead,) of conductors, 0 to 3, the second -1 for earth
@@ -33,8 +32,7 @@ class Leads:
     no_back: bool = False
 
 
-@dataclass(frozen=True, slots=True)
-class Ways:
+class Ways(Struct, frozen=True):
     """All leads of all attachments one below the other.
 
     row : (way,) attachment row

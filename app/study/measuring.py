@@ -1,7 +1,8 @@
 """What a tap changer or regulator measures: which phase, against what, and how large a percent of it is."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+
+from msgspec import Struct
 
 from app.model.kinds import Regulator, Transformer
 from app.model.levels import SPLIT, TWO_WIRE
@@ -15,8 +16,7 @@ from app.study.zones import Zones
 WHOLE = 0  # the only conductor where phases are alike
 
 
-@dataclass(frozen=True, slots=True)
-class Measure:
+class Measure(Struct, frozen=True):
     """What one changer, or one phase of it, measures.
 
     conductor : whose volts; None for the mean of three

@@ -7,6 +7,7 @@ from enum import Enum
 from typing import TYPE_CHECKING, Any, Generic, TypeVar
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from solver.status import Status
@@ -200,8 +201,7 @@ class Verdict(Enum):
 _RANK = {verdict: rank for rank, verdict in enumerate(Verdict)}
 
 
-@dataclass(frozen=True, slots=True)
-class Finding:
+class Finding(Struct, frozen=True):
     """One judged check. `margin` is signed: negative fails. Structural findings carry only the sentence."""
 
     check: str  # such as "voltage low", "loading", "closed loop"
@@ -221,8 +221,7 @@ class Finding:
         return self.by_case[case] if self.by_case else self.verdict
 
 
-@dataclass(frozen=True, slots=True)
-class Assumption:
+class Assumption(Struct, frozen=True):
     """A value that was not given and what was put in its place."""
 
     id: str

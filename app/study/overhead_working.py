@@ -1,7 +1,8 @@
 """How the impedance of a line follows from its spacing, in numbers that can be worked out again by hand."""
 
 import math
-from dataclasses import dataclass
+
+from msgspec import Struct
 
 from app.model import assumed
 from app.model.conductors import hung, mean_distance_m
@@ -17,8 +18,7 @@ BASIS = "from spacing, Carson 1926, modified"
 BACK = {CARRIED: "back by the neutral", ALONG: "back by neutral and earth", "none": "back through earth"}
 
 
-@dataclass(frozen=True, slots=True)
-class Working:
+class Working(Struct, frozen=True):
     """Z = r + jk · Σ ln(over / under) + share, all per kilometre of one run."""
 
     r: float  # of one phase conductor, hot [ohm/km]

@@ -1,10 +1,11 @@
 """An outcome as plain data for other programs: ids as keys, units in the keys, None for no figure."""
 
 import math
-from dataclasses import asdict, fields
+from dataclasses import fields
 from typing import Any
 
 import numpy as np
+from msgspec.structs import asdict
 
 from app.model.drawing import Drawing
 from app.model.kinds import kind_of
@@ -93,7 +94,7 @@ def finding_record(finding: Finding) -> dict[str, Any]:
 
     Returns : field to value
     """
-    told = {f.name: getattr(finding, f.name) for f in fields(finding)}
+    told = asdict(finding)
     told["verdict"] = finding.verdict.value
     told["by_case"] = [verdict.value for verdict in finding.by_case]
     return {name: plain_value(value) for name, value in told.items()}

@@ -1,10 +1,11 @@
 """Solution to tables by id: volts between lines, whole powers in kW and kvar, currents in a wire."""
 
 import math
-from dataclasses import dataclass, fields
+from dataclasses import fields
 from typing import Any
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
@@ -29,8 +30,7 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 
-@dataclass(frozen=True, slots=True)
-class Tables:
+class Tables(Struct, frozen=True):
     """The three tables and the balance of one solution."""
 
     nodes: Table[NodeState]

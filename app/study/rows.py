@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.by_case import owned
@@ -154,8 +155,7 @@ def _of(elements: Sequence[Any], rows: Index) -> list[Any]:
     return [elements[i] for i in rows]
 
 
-@dataclass(frozen=True, slots=True)
-class _Kinds:
+class _Kinds(Struct, frozen=True):
     lines: Index
     units: Index
     loads: Index

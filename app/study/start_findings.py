@@ -1,9 +1,9 @@
 """What is judged of motor starts: steps at the supply and at the board, volts at the motor, torque."""
 
 from collections.abc import Callable
-from dataclasses import replace
 
 import numpy as np
+from msgspec.structs import replace
 
 from app.model.drawing import Drawing
 from app.model.figures import percent, volts

@@ -1,9 +1,9 @@
 """Volts and amperes that a motor start shows: between lines, or of each phase where they are not alike."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.study.layout import Layout, arrays_of
@@ -20,8 +20,7 @@ Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
 
 
-@dataclass(frozen=True, slots=True)
-class Seen:
+class Seen(Struct, frozen=True):
     """How to read the figures of started motors out of a solution.
 
     rated_v : (motor,) float [V] rated volts across the motor, between lines where it has three phases

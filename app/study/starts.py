@@ -1,9 +1,10 @@
 """Motor starts: each motor in turn while the rest runs, behind the impedance of the supply; one batch."""
 
-from dataclasses import dataclass, fields, replace
+from dataclasses import fields, replace
 from typing import Any
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model import assumed
@@ -77,8 +78,7 @@ def start_table(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> S
     return _judged(drawing, layout, zones, rows, _Pair(started, still, moved))
 
 
-@dataclass(frozen=True, slots=True)
-class _Pair:
+class _Pair(Struct, frozen=True):
     """Attachment rows of the motors, and the layout before and while each starts."""
 
     started: list[int]

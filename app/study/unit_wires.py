@@ -1,6 +1,6 @@
 """At which conductors a transformer is joined on each side, and how its coils lie between them."""
 
-from dataclasses import dataclass
+from msgspec import Struct
 
 from app.model import taps
 from app.model.kinds import Transformer
@@ -14,8 +14,7 @@ ROUND: dict[str, Pair] = {"AB": (0, 1), "BC": (1, 2), "CA": (2, 0)}
 OPEN = ("open delta", "open star to open delta")
 
 
-@dataclass(frozen=True, slots=True)
-class UnitWires:
+class UnitWires(Struct, frozen=True):
     """A transformer between conductors.
 
     one, two : bits, conductors at winding 1 and winding 2

@@ -1,9 +1,9 @@
 """Voltage zones: the nominal voltage of each, how many wires its supply has, and what contradicts it."""
 
 import math
-from dataclasses import dataclass
 
 import numpy as np
+from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
@@ -18,8 +18,7 @@ USUAL_RESERVE = 1.6  # of a capacitor's rated voltage over the level, as 525 V o
 APART = 1.15  # a winding this far from the level of its node is at the wrong level; 433 V on 400 V is not
 
 
-@dataclass(frozen=True, slots=True)
-class Zones:
+class Zones(Struct, frozen=True):
     """What holds in each zone and each tree.
 
     nominal_v : (zone,) float [V], between lines or between the two wires; nan where nothing says

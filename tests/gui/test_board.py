@@ -211,7 +211,7 @@ def test_several_cases_are_judged_one_by_one(bench):
     one = bench(FERNHOLLOW)
     outcome = figures(FERNHOLLOW)
     low = Finding("voltage low", Verdict.FAILS, ("HS",), "HS is low.", case=outcome.cases[0])
-    low = replace(low, by_case=(Verdict.FAILS, Verdict.NEAR))
+    low = msgspec.structs.replace(low, by_case=(Verdict.FAILS, Verdict.NEAR))
     noted = Finding("closed ring", Verdict.NOTE, ("GH",), "GH stands in a ring.")
     one.answer = lambda _: replace(outcome, findings=(low, noted))
     one.solving._owed = True
