@@ -16,7 +16,6 @@ from app.model.levels import SPLIT, TWO_WIRE
 from app.study.layout import Layout, arrays_of
 from app.study.rows import Rows
 from app.study.values import columns, load_values, motor_row, scaled_values
-from app.study.wire_rows import loads_between
 from app.study.zones import Zones
 from solver import Network, Solution
 from solver.line import symmetric
@@ -84,6 +83,8 @@ def _as_solved(
 ) -> tuple[Complex, Real, Index | None]:
     """Power and reference volts conductor by conductor, and where each lead goes where there are four."""
     if rows.conductors is not None:
+        from app.study.wire_rows import loads_between  # loaded by then
+
         return loads_between(rows.conductors, hung, power, reference, nominal_of(layout, zones, hung))
     at = arrays_of(layout).at[hung]
     one = (power / rows.phases[at, None])[:, None, :]
