@@ -70,6 +70,7 @@ def three_phase(
     z_at_2: ArrayLike,
     y: ArrayLike = ((0.0,), (0.0,)),
     zero: ArrayLike | None = None,
+    z0_over_z1: float = 1.0,
 ) -> Unit:
     """A three-phase transformer of any connection as a two-port, whichever side is fed.
 
@@ -88,6 +89,7 @@ def three_phase(
     y : (2, batch or 1) complex [S] per phase as of a star, at the terminals of each winding
     zero : (batch or 1,) complex [ohm] per phase seen at winding 2, of the core to a zero sequence where a
         star is not held; None where it is beyond all others
+    z0_over_z1 : zero over positive sequence of the windings, where the zero sequence passes them
     Returns : Unit
     Raises : ValueError where the clock number cannot come from these letters
     Source : connections as IEC 60076-1:2011, 7 and Annex D; two-port after Kersting, Distribution System
@@ -104,13 +106,14 @@ def three_phase(
         ratio = coils[far] / coils[fed]
         zs: Complex = np.asarray(z * seen, dtype=complex)
         shape = _far(sides[far], turns[far]) @ _fed(sides[fed], turns[fed])
-        own, own_z = _own(sides[fed], sides[far], zs * (volts[fed] / volts[far]) ** 2)
+        own, own_z = _own(sides[fed], sides[far], z0_over_z1 * zs * (volts[fed] / volts[far]) ** 2)
         series = _series(
             sides[fed],
             sides[far],
             zs,
             ratio,
             None if core is None else np.asarray(core * seen, dtype=complex),
+            z0_over_z1,
         )
         loose = _loose(sides[fed], sides[far], core is not None)
         ways.append((shape[..., None] * (ratio + 0j), series, loose, own, own_z))
@@ -198,9 +201,13 @@ def _far(side: Winding, turn: Real) -> Real:
     return np.vstack((turn @ phases, np.zeros((1, 3))))
 
 
-def _series(fed: Winding, far: Winding, z: Complex, ratio: Real, core: Complex | None) -> Complex:
+def _series(
+    fed: Winding, far: Winding, z: Complex, ratio: Real, core: Complex | None, z0_over_z1: float
+) -> Complex:
     """(k, k, batch) drop at the far side."""
-    matrix = _square(np.eye(3) if far.held else MEANLESS)[..., None] * z
+    passed = 1.0 if _blocked(fed, far) else z0_over_z1
+    phases = MEANLESS + passed / 3 if far.held else MEANLESS
+    matrix = _square(phases)[..., None] * z
     if far.held and far.earth is not None:
         matrix = matrix + _square(np.ones((3, 3)), far.neutral)[..., None] * far.earth
     if _blocked(fed, far):
@@ -234,7 +241,8 @@ def _loose(fed: Winding, far: Winding, core: bool) -> Real:
 
 
 def _own(fed: Winding, far: Winding, z: Complex) -> tuple[Real, Complex]:
-    """(2, k, 1) and (2, batch) currents that the fed side draws alone: zero sequence, and its earthing."""
+    """(2, k, 1) and (2, batch) currents that the fed side draws alone: zero sequence, against z, and its
+    earthing."""
     how, own_z = np.zeros((2, K, 1)), np.zeros((2, z.shape[-1]), dtype=complex)
     earth = fed.earth or 0
     if fed.held and (fed.letter == "Z" or far.letter == "D"):

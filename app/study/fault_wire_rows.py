@@ -12,7 +12,7 @@ from app.model.drawing import Case, Drawing
 from app.model.fault_data import LOW_V, Put, fault_value, star_earth_ohm
 from app.model.kinds import Branch, Line, OverheadLine, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE
-from app.model.wire_data import neutral_of
+from app.model.wire_data import is_star_star, neutral_of
 from app.study.conductors import Conductors, conductors_of
 from app.study.graph import Layout
 from app.study.wire_rows import wire_network
@@ -85,7 +85,7 @@ def _branch(drawing: Drawing, layout: Layout, zones: Zones, row: int, c_max: Rea
     made = replace(branch, tap=0, regulates="no", uk_percent=branch.uk_percent * kt, load_loss_w=pk * kt)
     earths = [star_earth_ohm(branch, winding) is not None for winding in (1, 2)]
     grouped = branch.build == "as its group" and branch.vector_group[0] != "I"
-    if grouped and not zero_path(branch.vector_group, earths[0], earths[1]).through:
+    if grouped and is_star_star(branch) and not zero_path(branch.vector_group, earths[0], earths[1]).through:
         made = replace(made, z0_ratio=BLOCKED)  # the core is not counted
     return made
 

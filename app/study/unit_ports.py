@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import taps
-from app.model.fault_data import Put, fault_value, star_earth_ohm
+from app.model.fault_data import Put, star_earth_ohm
 from app.model.kinds import Transformer
 from app.model.levels import SPLIT, THREE_PHASE
+from app.model.wire_data import is_star_star, zero_value
 from app.study.unit_wires import OPEN, UnitWires
 from app.study.wires import ROOT3, N
 from solver.banks import Coil, bank, centre_tapped
@@ -48,10 +49,25 @@ def port_of(unit: Transformer, wires: UnitWires | None, z_at_2: complex, y: Comp
         return bank([Coil(from_1, from_2, v1, v2, z_at_2, (y[0], y[1]))], *earths)
     group = taps.group(unit.vector_group)
     assert group is not None  # rows are made only of a layout whose groups were checked
-    one = _winding(unit, group[0], 1, wires.neutral[0])
-    two = _winding(unit, group[1], 2, wires.neutral[1])
-    core = z_at_2 * _value(fault_value(unit, "z0_ratio", v2)) if _limbs(group) else None
-    return three_phase(one, two, group[2], v1, v2, z_at_2, iron, core)
+    one, two = _windings(unit, group, wires)
+    passes = passes_zero(unit, wires)
+    zero = _value(zero_value(unit, passes))
+    core = None if passes else z_at_2 * zero
+    return three_phase(one, two, group[2], v1, v2, z_at_2, iron, core, zero if passes else 1.0)
+
+
+def passes_zero(unit: Transformer, wires: UnitWires) -> bool:
+    """Whether a three-phase unit lets a zero sequence pass its windings: not a star whose other is not held.
+
+    unit : the transformer
+    wires : its conductors
+
+    Returns : bool
+    """
+    group = taps.group(unit.vector_group)
+    if group is None or not is_star_star(unit):
+        return True
+    return all(winding.held for winding in _windings(unit, group, wires))
 
 
 def ratio_of(unit: Transformer, wires: UnitWires | None, systems: list[str], turned: complex) -> complex:
@@ -84,16 +100,15 @@ def through(has: int) -> Unit:
     return passing([bool(has >> slot & 1) for slot in range(4)])
 
 
+def _windings(unit: Transformer, group: tuple[str, str, int], wires: UnitWires) -> list[Winding]:
+    return [_winding(unit, (group[0], group[1])[side], side + 1, wires.neutral[side]) for side in (0, 1)]
+
+
 def _winding(unit: Transformer, letters: str, number: int, neutral: bool) -> Winding:
     letter = letters[0].upper()
     star = letters.upper().endswith("N")
     earth = star_earth_ohm(unit, number) if letter != "D" else None
     return Winding(letter, star and neutral, None if earth is None else complex(earth))
-
-
-def _limbs(group: tuple[str, str, int]) -> bool:
-    """Both windings in star: a zero sequence has the core to go through where one side lets it not pass."""
-    return all(letters[0].upper() == "Y" for letters in group[:2])
 
 
 def _earth(unit: Transformer, winding: int) -> complex:

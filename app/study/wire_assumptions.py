@@ -9,11 +9,12 @@ from app.model.fault_data import Put, fault_value
 from app.model.fields import fields_of
 from app.model.kinds import Branch, Element, Line, Motor, OverheadLine, Supply, Transformer
 from app.model.levels import THREE_PHASE
-from app.model.wire_data import neutral_of, neutral_value
+from app.model.wire_data import neutral_of, neutral_value, zero_value
 from app.study.conductors import Conductors
 from app.study.graph import Layout
 from app.study.line_wires import NEUTRAL_FIELDS, ZERO_FIELDS
 from app.study.outcome import Assumption
+from app.study.unit_ports import passes_zero
 from app.study.wires import ABC, NEUTRAL
 from app.study.zones import Zones
 
@@ -52,8 +53,9 @@ def _of_branches(
             yield from _of_line(
                 id, branch, kind, bool(conductors.branch[row] & NEUTRAL), nominal, frequency_hz
             )
-        elif isinstance(branch, Transformer) and row in conductors.units and _has_core(branch):
-            yield from _put(id, branch, "z0_ratio", fault_value(branch, "z0_ratio", branch.v2_v))
+        elif isinstance(branch, Transformer) and row in conductors.units and _has_zero(branch):
+            passes = passes_zero(branch, conductors.units[row])
+            yield from _put(id, branch, "z0_ratio", zero_value(branch, passes))
 
 
 def _of_line(
@@ -70,11 +72,12 @@ def _of_line(
             yield from _put(id, run, name, neutral_value(run, name))
 
 
-def _has_core(unit: Transformer) -> bool:
-    """Both windings in star, so that a zero sequence may have nothing but the core."""
+def _has_zero(unit: Transformer) -> bool:
+    """A three-phase unit with a star or zigzag, so that its zero sequence counts."""
     group = taps.group(unit.vector_group)
-    stars = group is not None and all(letters[0].upper() == "Y" for letters in group[:2])
-    return stars and unit.build == "as its group"
+    return (
+        group is not None and unit.build == "as its group" and group[0][0] + group[1][0] not in ("Dd", "Ii")
+    )
 
 
 def _of_supplies(layout: Layout) -> Iterator[Assumption]:

@@ -169,7 +169,7 @@ class Wired:
             )
             if out:
                 self.neutral.add(node)
-        zero = z * (t.z0_ratio or 1.0) if one[0] == "Y" and two[0] == "y" else None
+        zero = z * (t.z0_ratio or 10.0) if one[0] == "Y" and two[0] == "y" else None
         self.layout.units.append(Unit(self.row[t.start], self.row[t.end], *made, clock, v1, v2, z, zero=zero))
         self.at[there] = ("ABC", "three-phase", t.v2_v if there == t.end else t.v1_v)
         self.iron(t, made, v1, v2)

@@ -24,6 +24,7 @@ from app.study.outcome import Verdict
 from solver import Status
 
 NEAR = 1e-8
+GROUPS = ["Dyn11", "Dyn5", "YNyn0", "Yzn11", "Dzn6"]
 
 
 def lv(start, end, length=200.0, phases="all", **more):
@@ -161,6 +162,7 @@ LAYOUTS = {
     "a neutral lost": lost,
     "earthed again": lambda: street(M=Busbar(earth_ohm=5.0), Y=Joint(earth_ohm=20.0)),
     "star point through an impedance": lambda: street(T=unit("H", "B", earth_2_ohm=3.0)),
+    "Yyn0, through its core": lambda: street(T=unit("H", "B", vector_group="Yyn0")),
     "YNyn0": lambda: street(T=unit("H", "B", vector_group="YNyn0")),
     "YNd1": lambda: street(
         T=unit("H", "B", vector_group="YNd1"),
@@ -169,8 +171,8 @@ LAYOUTS = {
         C4=lv("M", "Z", neutral="none"), L1=Load(node="M", demand_kva=20.0, phases="AB"),
         L3=Load(node="Y", demand_kva=5.0, phases="BC"), L5=Load(node="Z", demand_kva=3.0),
     ),
-    "Dzn0": lambda: street(T=unit("H", "B", vector_group="Dzn0", no_load_loss_w=90.0)),
-    "Yzn5": lambda: street(T=unit("H", "B", vector_group="Yzn5")),
+    "Dzn0": lambda: street(T=unit("H", "B", vector_group="Dzn0", no_load_loss_w=90.0, z0_ratio=1.0)),
+    "Yzn5": lambda: street(T=unit("H", "B", vector_group="Yzn5", z0_ratio=1.0)),
     "Dyn5, tapped below": lambda: street(T=unit("H", "B", vector_group="Dyn5", tapped="winding 2", tap=2)),
     "through a switch": lambda: street(C2=lv("W", "X", phases="B"), W1=Switch(start="M", end="W")),
     "split-phase supply": lambda: drawn(
@@ -231,7 +233,7 @@ def test_random_streets_agree_with_the_nodal_solution(seed):
     phases, letters = ["A", "B", "C", "AB", "BC", "CA", "all"], ["A", "B", "C"]
     elements = {
         "S": Supply(node="H", nominal_v=11000.0, held_percent=made.uniform(97, 104)),
-        "T": unit("H", "N0", vector_group=str(made.choice(["Dyn11", "Dyn5", "YNyn0", "Yzn11", "Dzn6"]))),
+        "T": unit("H", "N0", vector_group=str(made.choice(GROUPS)), z0_ratio=1.0),
     }
     carries = {"N0": "ABC"}
     for n in range(1, 7):
