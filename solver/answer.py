@@ -10,7 +10,7 @@ from solver.reached import fed_conductors
 from solver.rounds import Trouble
 from solver.solution import Solution
 from solver.status import Status
-from solver.sweep import Sweep, times
+from solver.sweep import Sweep, over_conductors, times
 from solver.ties import add
 from solver.wires import EARTH
 
@@ -130,9 +130,9 @@ def _closure(source_power: Complex, load_power: Complex, taken: tuple[Complex, .
 
 def _total(power: Complex | Real) -> Complex:
     """(batch,) sum of the rows that are live."""
-    rows = power.reshape(-1, power.shape[-1])
-    total = rows.sum(axis=0)
-    return total if np.isfinite(total).all() else np.nansum(rows, axis=0)
+    rows = np.ascontiguousarray(power.reshape(-1, power.shape[-1]).T)  # a sum that knows no other column
+    total = rows.sum(axis=1)
+    return total if np.isfinite(total).all() else np.nansum(rows, axis=1)
 
 
 def _blank(rows: int, like: Complex) -> Complex:
@@ -147,13 +147,13 @@ def _lines(
     np.negative(series, series, where=(way < 0)[:, None, None])
     if (dead := way == 0).any():
         series[dead] = complex(np.nan, np.nan)
-    lost = (np.conj(series) * times(network.line_z, series)).sum(axis=1)
+    lost = over_conductors(np.conj(series) * times(network.line_z, series))
     if not network.line_y.any():
         return series, series, lost, 0 * lost
     first, last, half = voltage[network.line_from], voltage[network.line_to], network.line_y / 2
     first_charge, last_charge = times(half, first), times(half, last)
     charging = first * np.conj(first_charge) + last * np.conj(last_charge)
-    return series + first_charge, series - last_charge, lost, charging.sum(axis=1)
+    return series + first_charge, series - last_charge, lost, over_conductors(charging)
 
 
 def _transformers(
@@ -187,7 +187,7 @@ def _transformers(
     tables[1][rows] = np.where(forward, secondary, -primary) - out
     tables[2][rows] = lost
     tables[3][rows] = first * np.conj(into) + last * np.conj(out)
-    return tables[0], tables[1], tables[2].sum(axis=1), tables[3].sum(axis=1)
+    return tables[0], tables[1], over_conductors(tables[2]), over_conductors(tables[3])
 
 
 def _loads(network: Network, voltage: Complex) -> tuple[Complex, Complex]:

@@ -214,6 +214,18 @@ def times(matrix: Complex, vector: Complex, out: Complex | None = None) -> Compl
     return product if out is None else np.positive(product, out)
 
 
+def over_conductors(values: Complex) -> Complex:
+    """Sum over the conductors, one after the other, so that its last bit does not hang on the batch.
+
+    values : (row, k, batch) complex
+    Returns : (row, batch) complex
+    """
+    total = values[:, 0]
+    for slot in range(1, values.shape[1]):
+        total = total + values[:, slot]
+    return total
+
+
 def accumulate(values: Complex, out: Complex) -> None:
     """Prefix sum over the places; wide batches go row by row, which stays in cache.
 

@@ -1,6 +1,8 @@
 """What there is to say of changers and generators that hold volts: hunting, end stops, wrong ways round."""
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+
+from msgspec import Struct
 
 from app.model import assumed
 from app.model.drawing import Drawing
@@ -12,12 +14,13 @@ from app.study.measuring import ends_of, missed
 from app.study.outcome import Finding, Verdict
 from app.study.results import Tables
 from app.study.rows import Rows
+from app.study.solved_cases import among
 from app.study.words import tell
 from solver.control import Rest
 
 
 def hunting_findings(drawing: Drawing, layout: Layout, moved: Moved) -> list[Finding]:
-    """The changers that never come to rest, each in the first case in which it does not.
+    """The changers that never come to rest, each with the cases in which it does not.
 
     drawing : the drawing, for names
     layout : its graph
@@ -34,10 +37,11 @@ def hunting_findings(drawing: Drawing, layout: Layout, moved: Moved) -> list[Fin
         assert isinstance(element, Transformer | Regulator)
         band = percent(assumed.value(element, "bandwidth_percent"), 2)
         words = (
-            f"{tell(drawing, id)} hunts{_on(phase)}{_case(drawing, cases[0])}: it steps to and fro and never "
+            f"{tell(drawing, id)} hunts{_on(phase)}{_in(drawing, cases)}: it steps to and fro and never "
             f"comes to rest in its band of {band}, a step being {percent(_step(element), 3)}."
         )
-        found.append(Finding("hunting", Verdict.BLOCKS, (id,), words, case=drawing.cases[cases[0]].name))
+        named, each = drawing.cases[cases[0]].name, _by_case(drawing, cases, Verdict.BLOCKS)
+        found.append(Finding("hunting", Verdict.BLOCKS, (id,), words, case=named, by_case=each))
     return found
 
 
@@ -46,7 +50,19 @@ def _on(phase: str) -> str:
 
 
 def _case(drawing: Drawing, case: int) -> str:
-    return f" in case {drawing.cases[case].name}" if len(drawing.cases) > 1 else ""
+    return _in(drawing, [case])
+
+
+def _in(drawing: Drawing, cases: Sequence[int]) -> str:
+    """In which cases, where there are several."""
+    names = [drawing.cases[case].name for case in cases]
+    return f" in {among(names)}" if len(drawing.cases) > 1 else ""
+
+
+def _by_case(drawing: Drawing, cases: Sequence[int], verdict: Verdict) -> tuple[Verdict, ...]:
+    """A verdict on some cases, and a note on the others; nothing where there is but one."""
+    each = tuple(verdict if case in cases else Verdict.NOTE for case in range(len(drawing.cases)))
+    return each if len(each) > 1 else ()
 
 
 def _step(element: Transformer | Regulator) -> float:
@@ -127,8 +143,7 @@ def _source_side(layout: Layout, tables: Tables, row: int, case: int) -> bool:
     return layout.fed_by[other] == row and layout.fed_by[other] != NONE
 
 
-@dataclass(frozen=True, slots=True)
-class _Stop:
+class _Stop(Struct, frozen=True):
     """A changer at its end stop in a case; `away` where it ran there the wrong way round."""
 
     row: int

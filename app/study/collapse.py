@@ -1,9 +1,10 @@
 """Where there is no operating point: how much of the load could be carried, and what bars the rest."""
 
 import math
-from dataclasses import dataclass
+from collections.abc import Sequence
 
 import numpy as np
+from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.model.figures import percent
@@ -17,8 +18,7 @@ from solver import Share, Solution, Status, largest_share, solve
 from solver.share import pick, scaled
 
 
-@dataclass(frozen=True, slots=True)
-class Collapse:
+class Collapse(Struct, frozen=True):
     """What bars the operating point.
 
     share : float, largest share of the loads that still solves; None where the sweep only failed to settle
@@ -44,24 +44,50 @@ def collapse_of(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, solu
     Source : see solver.share
     """
     cases = [i for i, s in enumerate(solution.status) if s is not Status.SOLVED]
-    found = [(largest_share(rows.network, case), case) for case in cases]
-    least, case = min(found, key=lambda f: f[0].share)
-    branch = _branch(layout, rows, least)
-    name = drawing.cases[case].name
-    where = f" in case {name}" if len(drawing.cases) > 1 else ""
-    if least.share >= 1 or math.isinf(least.share):
+    return collapses_of(drawing, layout, zones, rows, cases)[0]
+
+
+def collapses_of(
+    drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, cases: Sequence[int]
+) -> list[Collapse]:
+    """The largest share of the load that still solves in each of some cases, the least first.
+
+    drawing : the drawing, for names
+    layout : its graph
+    zones : its voltage levels
+    rows : its rows
+    cases : (chosen,) those that have no operating point, at least one
+
+    Returns : list of Collapse, one a case
+    Source : see solver.share
+    """
+    found = sorted(((largest_share(rows.network, case), case) for case in cases), key=lambda f: f[0].share)
+    return [_collapse(drawing, layout, zones, rows, share, case) for share, case in found]
+
+
+def _collapse(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, most: Share, case: int) -> Collapse:
+    branch = _branch(layout, rows, most)
+    where = f" in case {drawing.cases[case].name}" if len(drawing.cases) > 1 else ""
+    if most.share >= 1 or math.isinf(most.share):
         words = f"The sweep did not settle{where}, though the load seems bearable."
-        return Collapse(None, None, Finding("not settled", Verdict.BLOCKS, (), words, case=name))
-    if least.share == 0:
+        return Collapse(None, None, _barring(drawing, "not settled", (), words, case))
+    if most.share == 0:
         words = f"No operating point{where}, not even with all loads off: the infeed or the charging is more "
         words += "than the layout can carry."
-        return Collapse(0.0, None, Finding("no operating point", Verdict.BLOCKS, (), words, case=name))
-    words = f"The layout cannot carry its load{where}: only {percent(100 * least.share)} of it still solves"
+        return Collapse(0.0, None, _barring(drawing, "no operating point", (), words, case))
+    words = f"The layout cannot carry its load{where}: only {percent(100 * most.share)} of it still solves"
     words += f", and {tell(drawing, branch)} stands in the way." if branch else "."
-    words += _lowest(drawing, layout, zones, rows, least.share, case)
+    words += _lowest(drawing, layout, zones, rows, most.share, case)
     ids = (branch,) if branch else ()
-    finding = Finding("no operating point", Verdict.BLOCKS, ids, words, case=name)
-    return Collapse(least.share, branch, finding)
+    return Collapse(most.share, branch, _barring(drawing, "no operating point", ids, words, case))
+
+
+def _barring(drawing: Drawing, check: str, ids: tuple[str, ...], words: str, case: int) -> Finding:
+    """A finding that bars one case and says nothing of the others."""
+    cases = drawing.cases
+    each = tuple(Verdict.BLOCKS if k == case else Verdict.NOTE for k in range(len(cases)))
+    by_case = each if len(cases) > 1 else ()
+    return Finding(check, Verdict.BLOCKS, ids, words, case=cases[case].name, by_case=by_case)
 
 
 def _branch(layout: Layout, rows: Rows, share: Share) -> str | None:

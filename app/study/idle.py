@@ -12,6 +12,7 @@ from app.study.layout import Layout
 from app.study.outcome import AttachmentState, Finding, Table, Verdict
 from app.study.results import Tables, tables_of
 from app.study.rows import Rows
+from app.study.solved_cases import blanked
 from app.study.words import list_of, tell
 from app.study.zones import Zones
 from solver import Network, Status, solve
@@ -49,9 +50,11 @@ def idle_findings(
     if not apart and not pairs:
         return []
     solution = solve(_idle(rows.network), forest=layout.forest)
-    if any(s is not Status.SOLVED for s in solution.status):
+    solved = np.array([s is Status.SOLVED for s in solution.status])
+    solved &= ~np.isnan(loaded.column("kw")).all(axis=0)
+    if not solved.any():
         return []
-    idle = tables_of(layout, zones, rows, solution, len(drawing.cases))
+    idle = blanked(tables_of(layout, zones, rows, solution, len(drawing.cases)), solved)
     found = [_circulating(drawing, layout, idle, list(units), gap) for units, gap in reversed(apart.items())]
     return found + [_exchange(drawing, layout, idle, list(pair), loaded) for pair in pairs]
 
@@ -67,7 +70,7 @@ def _idle(network: Network) -> Network:
 
 def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int], apart: float) -> Finding:
     share = idle.branches.column("loaded_percent")[units]
-    at, case = np.unravel_index(share.argmax(), share.shape)
+    at, case = np.unravel_index(np.nanargmax(share), share.shape)
     unit, value = layout.branches[units[at]], float(share[at, case])
     assert isinstance(unit, Transformer)
     low = unit.v2_v <= unit.v1_v
@@ -99,7 +102,10 @@ def _exchange(
     """What two joined supplies do under load, and what one gives the other with all loads off."""
     ids = tuple(layout.attachment_ids[r] for r in rows)
     kw = loaded.column("kw")[rows]
-    case = int(np.argmin(kw.min(axis=0)))  # where one gives least, or takes most back
+    known = ~np.isnan(idle.attachments.column("kw")[rows]).any(axis=0)
+    case = int(
+        np.argmin(np.where(known, kw.min(axis=0), np.inf))
+    )  # where one gives least, or takes most back
     told = " and ".join(f"{tell(drawing, i)} {_gives(float(kw[n, case]))}" for n, i in enumerate(ids))
     words = f"{told}{_in_case(drawing, case)}. {_passing(drawing, layout, idle, rows, case)}"
     return Finding("power exchanged", Verdict.NOTE, ids, words, case=drawing.cases[case].name)

@@ -6,10 +6,10 @@ from dataclasses import dataclass, field
 from enum import Enum
 from typing import TYPE_CHECKING, Any, Generic, TypeVar
 
-import numpy as np
 from msgspec import Struct
 from numpy.typing import NDArray
 
+from app.study.balance import Balance as Balance
 from solver.status import Status
 
 if TYPE_CHECKING:
@@ -166,22 +166,6 @@ class Table(Generic[State]):
         return self.columns[name]
 
 
-@dataclass(frozen=True, slots=True)
-class Balance:
-    """Where the power of all supplies goes, one entry a case. supply + generation = load + loss."""
-
-    supply_kw: NDArray[np.float64]
-    supply_kvar: NDArray[np.float64]
-    generation_kw: NDArray[np.float64]
-    load_kw: NDArray[np.float64]
-    load_kvar: NDArray[np.float64]
-    line_kw: NDArray[np.float64]
-    copper_kw: NDArray[np.float64]
-    iron_kw: NDArray[np.float64]
-    loss_kw: NDArray[np.float64]
-    closure: NDArray[np.float64]  # |supply + generation - load - loss| / supply, complex power
-
-
 class Verdict(Enum):
     """How a finding judges, worst first; differs on screen by shape as well as colour."""
 
@@ -242,8 +226,8 @@ class Wired:
 
 @dataclass(frozen=True)
 class Outcome:
-    """Everything one solve of a drawing yields. Where status is not SOLVED the tables still list every
-    element, but no figures: dead rows, with nan."""
+    """Everything one solve of a drawing yields. A case that is not solved has no figures: its columns are
+    nan and not live; `status` is the worst of all cases. Where none is solved every row is dead."""
 
     status: Status
     sentence: str
@@ -266,6 +250,16 @@ class Outcome:
     faults: "Table[FaultState] | None" = None  # by node id; None where no supply states a fault level
     fault_basis: tuple[tuple[str, str], ...] = ()  # items and sentences: how they were worked out
     wires: Wired | None = None  # phases and neutral; None where all phases are alike
+    case_status: tuple[Status, ...] = ()  # of each case
+
+    def solved(self, case: int) -> bool:
+        """Whether a case has an operating point, and so figures."""
+        return (self.case_status[case] if self.case_status else self.status) is Status.SOLVED
+
+    @property
+    def solved_cases(self) -> tuple[int, ...]:
+        """The cases that have figures."""
+        return tuple(case for case in range(len(self.cases)) if self.solved(case))
 
     def fed_winding(self, id: str, case: int) -> int:
         """The winding of a transformer that power enters, 1 or 2; 1 where nothing feeds it."""
@@ -275,14 +269,14 @@ class Outcome:
 
     def verdict(self, case: int) -> Verdict:
         """The worst in one case; a note where nothing is judged."""
-        found = (finding.in_case(case) for finding in self.findings)
+        found = (self._judged(finding, case) for finding in self.findings)
         return min(found, key=_RANK.__getitem__, default=Verdict.NOTE)
 
     def verdicts(self, case: int) -> dict[str, Verdict]:
         """The worst on each element in one case; elements that no finding names are left out."""
         worst: dict[str, Verdict] = {}
         for finding in self.findings:
-            verdict = finding.in_case(case)
+            verdict = self._judged(finding, case)
             for id in finding.ids:
                 if id not in worst or verdict.rank < worst[id].rank:
                     worst[id] = verdict
@@ -290,5 +284,11 @@ class Outcome:
 
     def verdict_of(self, id: str, case: int, checks: Container[str]) -> Verdict | None:
         """The worst of some checks on one element in one case."""
-        found = (f.in_case(case) for f in self.findings if id in f.ids and f.check in checks)
+        found = (self._judged(f, case) for f in self.findings if id in f.ids and f.check in checks)
         return min(found, key=_RANK.__getitem__, default=None)
+
+    def _judged(self, finding: Finding, case: int) -> Verdict:
+        """How a finding judges one case; what is not solved neither holds nor is near."""
+        verdict = finding.in_case(case)
+        good = verdict in (Verdict.HOLDS, Verdict.NEAR)
+        return Verdict.BLOCKS if good and not self.solved(case) else verdict

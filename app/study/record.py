@@ -35,6 +35,7 @@ def record(drawing: Drawing, outcome: Outcome, version: str) -> dict[str, Any]:
         "largest_share_percent": None if share is None else plain_value(share * 100),
         "to_blame": outcome.to_blame,
         "cases": list(outcome.cases),
+        "case_status": [status.name.lower() for status in outcome.case_status],
         "loading_cases": [body(case) for case in drawing.cases],
         "balance": {f.name: plain_value(getattr(outcome.balance, f.name)) for f in fields(outcome.balance)},
         "nodes": table_record(drawing, outcome.nodes),

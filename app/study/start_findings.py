@@ -4,6 +4,7 @@ from collections.abc import Callable
 
 import numpy as np
 from msgspec.structs import replace
+from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.figures import percent, volts
@@ -13,15 +14,19 @@ from app.study.outcome import Finding, Verdict
 from app.study.start_table import StartTable
 from app.study.words import list_of, tell
 
+Flag = NDArray[np.bool_]
 SET_HERE = "the start limit set for this drawing"
 
 
-def start_findings(drawing: Drawing, table: StartTable, cases: tuple[str, ...]) -> list[Finding]:
+def start_findings(
+    drawing: Drawing, table: StartTable, cases: tuple[str, ...], running: Flag | None = None
+) -> list[Finding]:
     """Hold every start against the limits of the drawing; where a limit is blank nothing is judged.
 
     drawing : the drawing, for its limits and names
     table : of the starts
     cases : names of the cases
+    running : (case,) bool, cases that have an operating point before any start; all where it is None
 
     Returns : list of Finding with value, limit and signed margin [%]; notes on torque and fault level
     Source : the limits are the drawing's; what counts as near is ours
@@ -32,7 +37,12 @@ def start_findings(drawing: Drawing, table: StartTable, cases: tuple[str, ...]) 
         for one in findings_of(check, whose, cases):
             row = table.rows[one.ids[0]]
             found.append(replace(one, ids=(*one.ids, places[row])) if places else one)
-    return [*found, *_stuck(drawing, table, cases), *_torque(drawing, table), *_unknown(drawing, table)]
+    return [
+        *found,
+        *_stuck(drawing, table, cases, running),
+        *_torque(drawing, table),
+        *_unknown(drawing, table),
+    ]
 
 
 def _checks(drawing: Drawing, table: StartTable) -> list[tuple[Check, tuple[str, ...]]]:
@@ -80,11 +90,14 @@ def _motor_words(drawing: Drawing, table: StartTable) -> Callable[[int, int, str
     return subject
 
 
-def _stuck(drawing: Drawing, table: StartTable, cases: tuple[str, ...]) -> list[Finding]:
+def _stuck(
+    drawing: Drawing, table: StartTable, cases: tuple[str, ...], running: Flag | None
+) -> list[Finding]:
     """Motors whose start has no operating point."""
     found = []
+    judged = np.ones(len(cases), dtype=bool) if running is None else running
     for row, id in enumerate(table.ids):
-        bad = np.flatnonzero(~table.column("solved")[row])
+        bad = np.flatnonzero(~table.column("solved")[row] & judged)
         if len(bad):
             named = f" in case {cases[bad[0]]}" if len(cases) > 1 else ""
             words = f"{tell(drawing, id)} cannot start{named}: at its starting current nothing solves."

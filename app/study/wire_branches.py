@@ -14,6 +14,7 @@ from app.study.rows import Rows
 from app.study.unit_wires import rated_current
 from app.study.wires import ABC, N, letters, slots
 from solver import Solution
+from solver.sweep import over_conductors
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -44,7 +45,7 @@ def wire_branches(
     series[rows.lines], series[rows.units] = solution.line_series_loss, solution.transformer_series_loss
     shunt[rows.lines], shunt[rows.units] = solution.line_charging, solution.transformer_magnetising_loss
     ends = [np.where(np.isnan(solution.voltage), 0, solution.voltage)[e] for e in (graph.start, graph.end)]
-    start_s, end_s = ((v * i.conj()).sum(axis=1) / 1e3 for v, i in zip(ends, (into, out), strict=True))
+    start_s, end_s = (over_conductors(v * i.conj()) / 1e3 for v, i in zip(ends, (into, out), strict=True))
     series, shunt = series / 1e3, shunt / 1e3
     at_start, at_end = np.abs(into), np.abs(out)
     forward = forward_of(layout, start_s + end_s)
@@ -60,7 +61,7 @@ def wire_branches(
     entering = through_of(onward, start_s, end_s)
     known = ~np.isnan(start_s)
     columns = {
-        "live": known.all(axis=1),
+        "live": np.asarray(known.any(axis=1)),
         "forward": forward,
         "current_a": np.where(known, np.where(has, amps, 0.0).max(axis=1), np.nan),
         "start_a": np.where(known, start_a, np.nan),

@@ -14,6 +14,7 @@ from app.study.wire_volts import against, base_volts, phase_volts
 from app.study.wires import ABC, NEUTRAL, N, letters
 from app.study.zones import Zones
 from solver import Solution
+from solver.sweep import over_conductors
 from solver.wires import EARTH
 
 Real = NDArray[np.float64]
@@ -128,9 +129,9 @@ def wire_attachments(
     power[live], amps[live] = 0, 0
     makes = np.array(roles.of(layout.attachments), dtype="U1")[rows.loads] == "g"
     sign = np.where(makes, -1.0, 1.0)[:, None]
-    power[rows.loads] = solution.load_power.sum(axis=1) * sign
-    power[rows.shunts] = -solution.shunt_power.sum(axis=1)
-    power[rows.sources] = solution.source_power.sum(axis=1)
+    power[rows.loads] = over_conductors(solution.load_power) * sign
+    power[rows.shunts] = -over_conductors(solution.shunt_power)
+    power[rows.sources] = over_conductors(solution.source_power)
     amps[rows.loads] = _in_leads(solution, network.wires.load_to if network.wires is not None else None)
     y = network.shunt_y
     amps[rows.shunts] = np.einsum(
