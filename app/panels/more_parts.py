@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QPoint, Qt
 from PySide6.QtWidgets import QMenu
 
 from app.model.drawing import Part
@@ -19,8 +19,12 @@ Take = Callable[[Part], None]
 def offer_more(tile: Tile, offered: Offered, take: Take) -> None:
     """Let a tile open the menu of these parts, from its corner or by the right button."""
     tile.has_more = True
-    beside = tile.corner().topRight().toPoint()
-    tile.more_asked.connect(lambda: menu_of(tile, offered, take).popup(tile.mapToGlobal(beside)))
+    tile.more_asked.connect(lambda: menu_of(tile, offered, take).popup(beside(tile)))
+
+
+def beside(tile: Tile) -> QPoint:
+    """Where the menu opens: at the corner of the tile as it stands now, on the screen."""
+    return tile.mapToGlobal(tile.corner().topRight().toPoint())
 
 
 def behind(kind: str, frequency_hz: float) -> tuple[Part, ...]:

@@ -106,7 +106,7 @@ def paint_phases(
     """Each phase along the main route, the other branches faint; what is chosen or under the hand broad."""
     for strong in (False, True):
         for curve in curves:
-            ink = palette.soft if stale else QColor(getattr(palette, COLOURS[curve.letter]))
+            ink = QColor(palette.soft if stale else getattr(palette, COLOURS[curve.letter]))
             if not strong:
                 ink.setAlphaF(0.4)
             for stretch in curve.stretches:
@@ -115,7 +115,7 @@ def paint_phases(
                     painter.setPen(_pen(curve.letter, ink, (3.6 if broad else 2.0) if strong else 1.2))
                     painter.drawPolyline(list(stretch.points))
     for curve in curves:
-        ink = palette.soft if stale else QColor(getattr(palette, COLOURS[curve.letter]))
+        ink = QColor(palette.soft if stale else getattr(palette, COLOURS[curve.letter]))
         led = {s.node for s in curve.stretches if s.node in main}  # not where it only starts to one side
         for id, at in curve.nodes.items():
             if id in main and led or id in lit:

@@ -17,7 +17,7 @@ from app.model import edits
 from app.model.drawing import Part
 from app.model.kinds import LETTERS, Transformer, kind_of
 from app.model.parts import builtin_parts, decode_part, load_shelf, save_shelf
-from app.panels.more_parts import menu_of
+from app.panels.more_parts import beside, menu_of
 from app.panels.shelf import Shelf
 from app.panels.terminals import Terminals
 from app.panels.tile import PART_MIME
@@ -244,3 +244,9 @@ def test_plain_parts_follow_the_habit_of_the_drawing_and_more_stand_behind_their
     action.trigger()
     assert picked[-1].element.build == "centre-tapped"
     menu.deleteLater()
+
+
+def test_the_menu_behind_a_corner_opens_beside_its_tile(shelf):
+    tile = next(t for t in shelf.tiles if t.has_more)
+    away = beside(tile) - tile.mapToGlobal(tile.rect().topLeft())
+    assert tile.rect().adjusted(0, 0, 1, 1).contains(away)

@@ -6,12 +6,15 @@ import pytest
 from panels_stage import fernhollow, stage
 from phase_drawings import camp
 from PySide6.QtCore import QPoint, QRectF, Qt
+from PySide6.QtGui import QColor, QImage, QPainter
 from PySide6.QtTest import QTest
 
+from app.canvas.palette import LIGHT
 from app.model.drawing import Case, Limits
 from app.model.kinds import Load, Transformer
 from app.panels.strip_axes import Axes
 from app.panels.strip_band import LABEL, label_places
+from app.panels.strip_phases import paint_phases
 
 CASES = (Case(name="Peak"), Case(name="Night", load_percent=20.0))
 
@@ -107,3 +110,13 @@ def test_figures_of_a_narrow_band_keep_apart():
     assert abs(places[97.0] - places[103.0]) >= LABEL - 1e-9
     wide = label_places(Axes(QRectF(50, 30, 600, 200), 90.0, 112.0, 1.0, 40.0), Limits())
     assert 100.0 in wide
+
+
+def test_curves_out_of_date_leave_the_colours_of_the_window_as_they_are(at):
+    palette = LIGHT
+    before = [QColor(getattr(palette, name)).getRgb() for name in palette.__struct_fields__]
+    image = QImage(at.strip.size(), QImage.Format.Format_ARGB32_Premultiplied)
+    painter = QPainter(image)
+    paint_phases(painter, at.strip.phases, set(), set(), palette, stale=True)
+    painter.end()
+    assert [getattr(palette, name).getRgb() for name in palette.__struct_fields__] == before
