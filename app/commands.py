@@ -1,7 +1,7 @@
 """The headless commands: results, sheet, picture. The same path and the same numbers as the window.
 
 Exit codes: 0 solved, every limit holds; 1 solved, but a limit fails; 2 bad input, or a layout that
-cannot be solved as drawn; 3 no operating point.
+cannot be solved as drawn; 3 no operating point in one case or more.
 """
 
 from __future__ import annotations
@@ -24,7 +24,7 @@ EXIT_CODES = """exit codes:
   0  solved, every limit holds
   1  solved, but a limit fails
   2  bad input, or a layout that cannot be solved as drawn
-  3  no operating point
+  3  no operating point in one case or more; what is written has the figures of the others
 """
 SHEETS = (".xlsx", ".csv")
 PICTURES = (".svg", ".png", ".pdf")

@@ -12,9 +12,8 @@ from app.printed_faults import fault_lines, fault_notes
 from app.printed_wires import wire_tables
 from app.sheet.table import short_digits
 from app.study.cautions import CAUTIONS
-from app.study.outcome import Assumption, Finding, Outcome, Table
+from app.study.outcome import Assumption, Finding, Outcome, Table, Verdict
 from app.study.words import tell
-from solver.status import Status
 
 Column = tuple[str, Callable[[Any], str]]
 SHOWN_ASSUMPTIONS = 40
@@ -78,9 +77,10 @@ START_COLUMNS: tuple[Column, ...] = (
 def printed(drawing: Drawing, outcome: Outcome) -> str:
     """The whole text."""
     parts = [_head(drawing, outcome)]
-    if outcome.status is Status.SOLVED:
+    if outcome.solved_cases:
         for case, name in enumerate(outcome.cases):
-            parts += _case(drawing, outcome, case, name)
+            told = _case if outcome.solved(case) else _no_figures
+            parts += told(drawing, outcome, case, name)
         parts += _faults(drawing, outcome)
     parts += [listed_findings(outcome.findings), _assumptions(drawing, outcome)]
     parts.append("Cautions\n" + "\n".join(f"  {c}" for c in CAUTIONS))
@@ -110,6 +110,13 @@ def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]
         _starts(drawing, outcome, case),
         _balance(outcome, case),
     ]
+
+
+def _no_figures(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]:
+    """A case without an operating point: why, in place of its tables."""
+    blocks = (f for f in outcome.findings if f.verdict is Verdict.BLOCKS and f.in_case(case) is f.verdict)
+    why = [f"  {f.sentence}" for f in blocks]
+    return ["\n".join([f"Case: {name}: NOT SOLVED", f"  {settings(drawing.cases[case], drawing)}", *why])]
 
 
 def _table(drawing: Drawing, title: str, table: Table[Any], columns: Sequence[Column], case: int) -> str:

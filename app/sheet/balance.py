@@ -1,5 +1,7 @@
 """Where the power goes: supply = loads + losses for every case, and what each branch loses."""
 
+import numpy as np
+
 from app.model.kinds import Generator, Regulator, Supply, Switch
 from app.sheet.attachments import LOADS, SOURCES
 from app.sheet.elements import figure, sum_of_case
@@ -35,12 +37,12 @@ def balance_tables(subject: Subject) -> list[SheetTable]:
     )
     rows: dict[str, Cells] = {str(c): _case(subject, c) for c in range(len(subject.cases))}
     found = [table("balance", TAB, "Power balance", COLUMNS, rows, note=note, held=1)]
-    return [*found, _split(subject)] if subject.solved else found
+    return [*found, _split(subject)] if subject.figures else found
 
 
 def _case(subject: Subject, case: int) -> Cells:
-    if not subject.solved:
-        return {"case": text(subject.cases[case] + ": not solved")}
+    if not subject.outcome.solved(case):
+        return {"case": text(subject.case_name(case))}
     b = subject.outcome.balance
     fed, lost = float(b.supply_kw[case] + b.generation_kw[case]), float(b.loss_kw[case])
     left = fed - float(b.load_kw[case]) - lost
@@ -108,11 +110,11 @@ def _split(subject: Subject) -> SheetTable:
     loss = table_.column("loss_kw")
     order = sorted(
         (i for i in table_.ids if not isinstance(subject.drawing.elements[i], Switch | Regulator)),
-        key=lambda i: -max(loss[table_.rows[i]].ravel(), default=0.0),
+        key=lambda i: -max(np.nan_to_num(loss[table_.rows[i]]).ravel(), default=0.0),
     )
     cases = range(len(subject.cases))
     for case in cases:
-        columns.append(Column(f"kw{case}", subject.cases[case], "kW", digits=2))
+        columns.append(Column(f"kw{case}", subject.case_name(case), "kW", digits=2))
         columns.append(Column(f"share{case}", "of all", "%", digits=1))
     rows = {i: _lost(subject, i) for i in order}
     return table("losses", "Losses", "Losses, branch by branch", columns, rows, held=1)

@@ -5,6 +5,7 @@ from app.model.case_words import amount
 from app.model.drawing import Case
 from app.sheet.subject import Subject
 from app.sheet.table import BLANK, Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
+from app.study.outcome import Verdict
 
 OWN = "case_own"
 SHARES = {
@@ -20,12 +21,25 @@ def case_tables(subject: Subject, basis: str) -> list[SheetTable]:
     """The case list, and after it what single cases state of single elements."""
     columns = [Column("item", "Item", style=Style.LONG, width=26)]
     columns += [Column(n, head, OF.get(n, "% of stated"), digits=1, width=14) for n, head in SHARES.items()]
+    columns += [] if subject.solved else [Column("outcome", "Outcome", style=Style.LONG, width=44)]
     rows: dict[str, Cells] = {}
     for number, case in enumerate(subject.drawing.cases):
         rows[str(number)] = {"item": given(case.name)} | {n: _share(case, n) for n in SHARES}
+        rows[str(number)]["outcome"] = text(_outcome(subject, number))
     found = [table("cases", basis, "Cases", columns, rows, held=0)]
     own = _own(subject)
     return found + [_own_table(own, basis)] if own else found
+
+
+def _outcome(subject: Subject, case: int) -> str:
+    """`solved`, or why a case is not."""
+    outcome = subject.outcome
+    if outcome.solved(case):
+        return "solved"
+    why = [
+        f.sentence for f in outcome.findings if f.verdict is Verdict.BLOCKS and f.in_case(case) is f.verdict
+    ]
+    return " ".join(["NOT SOLVED.", *(why or [outcome.case_status[case].value])])
 
 
 def _share(case: Case, name: str) -> Cell:

@@ -114,13 +114,15 @@ def _table(
         for case in range(len(entry.figures) if by_case else 1):
             cells = _cells(subject, plan, entry, case)
             if by_case:
-                cells |= {"number": Cell(case + 1), "case": text(subject.cases[case])}
+                cells |= {"number": Cell(case + 1), "case": text(subject.case_name(case))}
             row = _case_row(subject, entry.id, case) if by_case else entry.id
             rows[row] = _reaching(subject, plan, entry.id, key, columns, cells)
     tab = plan.tab + ", cases" if by_case else plan.tab
     if plan.key in WIDE and key == plan.key:
         tab = plan.tab.removesuffix("s") + " data"
-    note = plan.note if key == (results_key(subject, plan.key) if plan.key in WIDE else plan.key) else ""
+    noted = plan.note if key == (results_key(subject, plan.key) if plan.key in WIDE else plan.key) else ""
+    judged = any(column in plan.judged or column in plan.figures for column in columns)
+    note = subject.short(noted) if judged else noted
     lead = (*IDENTITY, *CASE) if by_case else IDENTITY
     return table(key, tab, plan.title + title, (*lead, *columns), rows, note=note, held=len(lead))
 

@@ -2,7 +2,7 @@
 
 import math
 
-from app.sheet.head import verdict_words
+from app.sheet.head import unsolved_words, verdict_words
 from app.sheet.nodes import VERDICT
 from app.sheet.subject import PASSED, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, table, text
@@ -30,14 +30,17 @@ def finding_tables(subject: Subject) -> list[SheetTable]:
         "One row for each element that fails or is near its limit, at its worst case; where none is, "
         "the element nearest to it. A negative margin fails, or exceeds what is advised."
         if subject.solved
-        else f"NOT SOLVED. {subject.outcome.sentence}"
+        else unsolved_words(subject)
     )
     return [table("findings", "Findings", "Findings", COLUMNS, rows, note=note, held=0)]
 
 
 def _row(subject: Subject, finding: Finding) -> Cells:
+    told = verdict_words(finding.verdict)
+    if finding.verdict is Verdict.HOLDS and finding.case:
+        told = subject.held
     found = {
-        "verdict": text(verdict_words(finding.verdict)),
+        "verdict": text(told),
         "check": text(finding.check),
         "where": text(", ".join(subject.tell(i) for i in finding.ids)),
         "unit": text(finding.unit),
@@ -50,8 +53,8 @@ def _row(subject: Subject, finding: Finding) -> Cells:
     found |= {"value": Cell(finding.value), "limit": Cell(finding.limit)}
     found["margin"] = Cell(finding.margin, _margin_formula(finding))
     if (finding.margin < 0) is (finding.verdict is Verdict.FAILS):  # advice may be passed without failing
-        held = "holds" if finding.margin < 0 else verdict_words(finding.verdict)
-        found["verdict"] = Cell(verdict_words(finding.verdict), f'IF({{margin}}{PASSED},"FAIL","{held}")')
+        held = "holds" if finding.margin < 0 else told
+        found["verdict"] = Cell(told, f'IF({{margin}}{PASSED},"FAIL","{held}")')
     return found
 
 

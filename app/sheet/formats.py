@@ -22,6 +22,7 @@ VERDICTS = (
     ("Solved. Every check holds", {"bold": True, "font_color": GOOD, "bg_color": "#DDF0EE"}),
     ("Solved. Nothing is judged", {"italic": True, "font_color": "#5B6B79", "bg_color": HEAD}),
     ("Solved.", {"bold": True, "font_color": FAILED, "bg_color": "#F6DEE7"}),
+    ("holds where", {"font_color": NEAR, "bg_color": ASSUMED_FILL}),
     ("holds", {"font_color": GOOD, "bg_color": "#DDF0EE"}),
 )
 

@@ -67,7 +67,9 @@ def result_words(subject: Subject) -> str:
     """`NOT SOLVED` with the reason, or how many checks fail and which is the worst."""
     outcome = subject.outcome
     if not subject.solved:
-        words = f"NOT SOLVED. {outcome.sentence}"
+        words = unsolved_words(subject)
+        if subject.figures:
+            return " ".join([words, *(f.sentence for f in outcome.findings if f.verdict is Verdict.BLOCKS)])
         if outcome.largest_share is not None:
             words += (
                 f" The largest share of the load that still solves is {outcome.largest_share * 100:.1f} %"
@@ -76,6 +78,11 @@ def result_words(subject: Subject) -> str:
         return words
     worst = next((f for f in outcome.findings if f.verdict is Verdict.FAILS), None)
     return f"{outcome.sentence.removesuffix('.')}: {worst.sentence}" if worst else outcome.sentence
+
+
+def unsolved_words(subject: Subject) -> str:
+    """`NOT SOLVED` and what the outcome says; where some cases are solved, in which."""
+    return f"NOT SOLVED{' in ' + subject.unsolved if subject.unsolved else ''}. {subject.outcome.sentence}"
 
 
 def basis_tables(subject: Subject) -> list[SheetTable]:

@@ -9,7 +9,7 @@ from app.model.kinds import Line, OverheadLine
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT, node_cell
 from app.sheet.spacing import KEY as SPACING
-from app.sheet.subject import FAIL, FROM_TO, HOLDS, PASSED, Subject, kind_name, limit
+from app.sheet.subject import FAIL, FROM_TO, PASSED, Subject, kind_name, limit
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, text
 from app.study.checking import margin_of
 from app.study.outcome import BranchState
@@ -168,11 +168,12 @@ def _series_current(subject: Subject, line: Line, state: BranchState, case: int)
 
 
 def judge_loading(
-    subject: Subject, live: bool, rated: bool, held: str = HOLDS
+    subject: Subject, live: bool, rated: bool, held: str = ""
 ) -> Callable[[dict[str, float]], Cells]:
     """Loading against its limit: margin and verdict, `held` where it holds; `no rating` where none is
     given."""
     most = subject.drawing.limits.most_loaded_percent
+    held = held or subject.held
 
     def judge(worst: dict[str, float]) -> Cells:
         if not live:

@@ -10,7 +10,7 @@ from app.sheet.cases import share_ref
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.nodes import VERDICT
 from app.sheet.phase_attachments import hung_tables
-from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
+from app.sheet.subject import FAIL, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.checking import margin_of
 from app.study.outcome import AttachmentState
@@ -124,7 +124,8 @@ def _start(subject: Subject, id: str, row: int) -> Entry:
         "supply": text(label(subject.drawing, table.supplies[row])),
     }
     states = [table.at(id, c) for c in range(len(subject.cases))]
-    return Entry(id, data, [_figures(s) for s in states], _judge(subject, all(s.solved for s in states)))
+    solved = all(states[case].solved for case in subject.outcome.solved_cases)
+    return Entry(id, data, [_figures(s) for s in states], _judge(subject, solved))
 
 
 def _figures(state: StartState) -> Cells:
@@ -160,6 +161,7 @@ def _judge(subject: Subject, solved: bool) -> Callable[[dict[str, float]], Cells
             refs[short] = limit(short)
         if not tests:
             return {"verdict": text("not judged" if worst else "no start")}
-        return {"verdict": Cell(FAIL if broken else HOLDS, f'IF(OR({",".join(tests)}),"FAIL","holds")', refs)}
+        good = subject.held
+        return {"verdict": Cell(FAIL if broken else good, f'IF(OR({",".join(tests)}),"FAIL","{good}")', refs)}
 
     return judge

@@ -4,7 +4,7 @@ import math
 from collections.abc import Callable
 
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
-from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
+from app.sheet.subject import FAIL, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style
 from app.study.checking import margin_of
 from app.study.outcome import NodeState
@@ -119,13 +119,13 @@ def _judge(subject: Subject, un: float, live: bool) -> Callable[[dict[str, float
         redo = "MIN({u_min}/{un}*100-{low},{high}-{u_max}/{un}*100)"
         found["margin"] = Cell(margin, redo, low | high)
         found["margin_v"] = Cell(margin * un / 100, "{margin}*{un}/100")
-        least, verdict = margin, f'IF({{margin}}{PASSED},"FAIL","holds")'
+        least, verdict = margin, f'IF({{margin}}{PASSED},"FAIL","{subject.held}")'
         if limits.drop_percent is not None:
             spare = float(margin_of(worst["drop_max"], limits.drop_percent, False))
             found["drop_margin"] = Cell(spare, "{most}-{drop_max}", {"most": limit("drop")})
             least = min(margin, spare)
-            verdict = f'IF(MIN({{margin}},{{drop_margin}}){PASSED},"FAIL","holds")'
-        found["verdict"] = Cell(FAIL if least < 0 else HOLDS, verdict)
+            verdict = f'IF(MIN({{margin}},{{drop_margin}}){PASSED},"FAIL","{subject.held}")'
+        found["verdict"] = Cell(FAIL if least < 0 else subject.held, verdict)
         return found
 
     return judge

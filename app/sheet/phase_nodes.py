@@ -5,7 +5,7 @@ from collections.abc import Callable
 
 from app.model.drawing import Limits
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
-from app.sheet.subject import FAIL, HOLDS, PASSED, Subject, limit
+from app.sheet.subject import FAIL, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, text
 from app.sheet.wires import each, greatest, listed, node_wires, redone, spread, volts
 from app.study.checking import margin_of
@@ -165,7 +165,8 @@ def _judge(subject: Subject, base_v: float, live: bool) -> Callable[[dict[str, f
                 least.append(float(margin_of(worst[extreme], allowed, False)))
                 found[key] = Cell(least[-1], f"{{most}}-{{{extreme}}}", {"most": limit(name)})
         held = ",".join(f"{{{key}}}" for key in found if key != "margin_v")
-        found["verdict"] = Cell(FAIL if min(least) < 0 else HOLDS, f'IF(MIN({held}){PASSED},"FAIL","holds")')
+        good = subject.held
+        found["verdict"] = Cell(FAIL if min(least) < 0 else good, f'IF(MIN({held}){PASSED},"FAIL","{good}")')
         return found
 
     return judge

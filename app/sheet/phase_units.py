@@ -9,7 +9,7 @@ from app.sheet.elements import Entry, Plan, by_element, figure
 from app.sheet.lines import MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
 from app.sheet.phase_lines import branch_wires
-from app.sheet.subject import HOLDS, Subject
+from app.sheet.subject import Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.sheet.transformers import DATA, EXTREMES, FIGURES, KEY, data_cells
 from app.sheet.wires import amps, each, node_wires, redone, spread, volts
@@ -55,13 +55,13 @@ def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
     states = [subject.state(id, c) for c in range(len(subject.cases))]
     data = data_cells(subject, id, t) | {
         "build": given(t.build),
-        "phases": _winding_1(subject, id, t, states[0]),
+        "phases": _winding_1(subject, id, t, states[subject.first]),
         "star_1": text(earthing_words(t, 1)),
         "star_2": text(earthing_words(t, 2)),
     }
     beyond = any(f.verdict is Verdict.ADVICE and id in f.ids for f in subject.outcome.findings)
     judge = judge_loading(
-        subject, any(s.live for s in states), True, Verdict.ADVICE.value if beyond else HOLDS
+        subject, any(s.live for s in states), True, Verdict.ADVICE.value if beyond else subject.held
     )
     return Entry(id, data, [_figures(subject, id, t, s, c) for c, s in enumerate(states)], judge)
 
@@ -70,7 +70,7 @@ def _winding_1(subject: Subject, id: str, t: Transformer, state: BranchState) ->
     """Where winding 1 is joined: as stated, else the conductors that it turns out to be fed from."""
     if t.phases != "all" or not state.live or not state.forward:
         return given(t.phases)
-    has = "".join(amps(branch_wires(subject, id, 0)))
+    has = "".join(amps(branch_wires(subject, id, subject.first)))
     return text(conductors(has, node_wires(subject, t.start).system))
 
 

@@ -21,11 +21,13 @@ from app.sheet.table import (
 from app.study.checking import NOISE
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Assumption, BranchState, Outcome
+from app.study.solved_cases import among
 from app.study.words import tell
 from solver.status import Status
 
 FAIL = "FAIL"
 HOLDS = "holds"
+HOLDS_THERE = "holds where solved"
 PASSED = f"<=-{NOISE:.0E}"  # what a formula says of a margin that fails
 CASE = (Column("number", "No.", digits=0, width=5), Column("case", "Case", style=Style.TEXT, width=23))
 
@@ -38,6 +40,33 @@ class Subject:
         self.outcome = outcome
         self.cases = outcome.cases
         self.solved = outcome.status is Status.SOLVED
+        self.figures = bool(outcome.solved_cases)
+
+    @property
+    def first(self) -> int:
+        """The first case that has figures."""
+        return next(iter(self.outcome.solved_cases), 0)
+
+    @cached_property
+    def unsolved(self) -> str:
+        """The cases without figures where others have them: `case Heavy`."""
+        count = range(len(self.cases))
+        names = [self.cases[case] for case in count if not self.outcome.solved(case)]
+        return among(names) if names and self.figures else ""
+
+    @property
+    def held(self) -> str:
+        """The verdict of what holds: in all cases, or where a case is missing only in the others."""
+        return HOLDS_THERE if self.unsolved else HOLDS
+
+    def case_name(self, case: int) -> str:
+        """The name of a case, which says so where it is not solved."""
+        return self.cases[case] + ("" if self.outcome.solved(case) else ": not solved")
+
+    def short(self, note: str) -> str:
+        """A note on a table of figures, which says what it lacks."""
+        lacks = f"Without {self.unsolved}, not solved: worst figures and verdicts are of the other cases."
+        return f"{note} {lacks}".strip() if self.unsolved else note
 
     @property
     def one_case(self) -> bool:
@@ -101,7 +130,7 @@ class Subject:
 
     def unfed(self) -> Cell:
         """The verdict of what carries no figures."""
-        return text("dead" if self.solved else "not solved")
+        return text("dead" if self.figures else "not solved")
 
 
 IDENTITY = (Column("id", "Id", style=Style.TEXT, width=7), Column("name", "Name", style=Style.TEXT, width=16))

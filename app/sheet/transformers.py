@@ -7,7 +7,7 @@ from app.model.kinds import Transformer
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import LOADING, LOSS, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT, node_cell
-from app.sheet.subject import FROM_TO, HOLDS, Subject
+from app.sheet.subject import FROM_TO, Subject
 from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
 from app.study.changers import is_changer
 from app.study.outcome import BranchState, Verdict
@@ -64,14 +64,15 @@ def transformer_tables(subject: Subject) -> list[SheetTable]:
 
 def fed_winding(subject: Subject, id: str) -> int:
     """The winding that power enters; 1 where nothing feeds it."""
-    return max(subject.outcome.fed_winding(id, case) for case in range(len(subject.cases)))
+    cases = subject.outcome.solved_cases or range(len(subject.cases))
+    return max(subject.outcome.fed_winding(id, case) for case in cases)
 
 
 def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
     states = [subject.state(id, c) for c in range(len(subject.cases))]
     figures = [_figures(subject, id, t, s, c) for c, s in enumerate(states)]
     beyond = any(f.verdict is Verdict.ADVICE and id in f.ids for f in subject.outcome.findings)
-    held = Verdict.ADVICE.value if beyond else HOLDS
+    held = Verdict.ADVICE.value if beyond else subject.held
     judge = judge_loading(subject, any(s.live for s in states), True, held)
     return Entry(id, data_cells(subject, id, t), figures, judge)
 

@@ -20,10 +20,10 @@ def redone(value: float, formula: str, meant: float, refs: Mapping[str, Ref] | N
     return Cell(value, formula, refs or {})
 
 
-def node_wires(subject: Subject, node: str, case: int = 0) -> NodeWires:
-    """One node, conductor by conductor."""
+def node_wires(subject: Subject, node: str, case: int | None = None) -> NodeWires:
+    """One node, conductor by conductor; in the first case that has figures where none is named."""
     assert subject.outcome.wires is not None
-    return subject.outcome.wires.nodes.at(node, case)
+    return subject.outcome.wires.nodes.at(node, subject.first if case is None else case)
 
 
 def volts(state: NodeWires) -> dict[str, float]:
