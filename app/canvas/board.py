@@ -187,12 +187,14 @@ class Board(Paper):
         wanted = {i for i in self.attention.selection if by_hand(elements.get(i))}
         for id in self.ladders.keys() - wanted:
             self.take_away(self.ladders.pop(id))
-        for id in wanted - self.ladders.keys():
+        fresh = wanted - self.ladders.keys()
+        for id in fresh:
             ladder = TapLadder(self, id, self.session, self.solving, self.theme)
             ladder.setZValue(8)
             self.ladders[id] = ladder
             self.addItem(ladder)
-        self._place_ladders()
+        if fresh or self.solving.reference is None:  # it stays where the hand holds it
+            self._place_ladders()
 
     def _place_ladders(self) -> None:
         """Where a ladder covers no symbol and no bar, if there is such a place, and few words."""

@@ -170,25 +170,30 @@ class Paper(QGraphicsScene):
         return changed
 
     def _show_standings(self, table: Table[Any], case: int, worst: Mapping[str, Standing]) -> None:
-        blaming = self.look.blaming
+        blaming, items = self.look.blaming, self.items_by_id
         for id, live in zip(table.ids, column_of(table, "live", case), strict=True):
-            item = self.items_by_id.get(id)
+            item = items.get(id)
             if item is None:
                 continue
-            element = self._laid.elements.get(id)
-            if isinstance(element, Branch) and isinstance(item, BranchItem) and item.parted:
-                live = self._shown is not None and self._shown.between_live(element)
-            item.stand(standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst))
+            if isinstance(item, BranchItem) and item.parted:
+                live = self._is_between_live(id)
+            now = standing.unsolved(id, worst) if blaming else standing.of_row(live, id, worst)
+            if now is not item.standing:
+                item.stand(now)
+
+    def _is_between_live(self, id: str) -> bool:
+        element = self._laid.elements.get(id)
+        return isinstance(element, Branch) and self._shown is not None and self._shown.between_live(element)
 
     def _owed_in(self, sight: Iterable[QRectF]) -> list[str]:
         """Those whose words lie in one of these parts of the paper."""
         parts = list(sight)
         mode = Qt.ItemSelectionMode.IntersectsItemBoundingRect
         near = {item.id for part in parts for item in self.items(part, mode) if isinstance(item, Caption)}
-        words = {**self.captions, **self.tags}
-        for id in self.owed:  # the scene finds none that is hidden as it has no words yet
-            if not words[id].lines and any(part.intersects(words[id].spot.box) for part in parts):
-                near.add(id)
+        words = (self.tags[id] if id in self.tags else self.captions[id] for id in self.owed)
+        hidden = [one for one in words if not one.lines]  # the scene finds none that has no words yet
+        for part in parts:
+            near.update([one.id for one in hidden if part.intersects(one.spot.box)])
         return [id for id in self.owed if id in near]
 
     def write_owed(self, most: int | None = None) -> set[str]:
