@@ -14,13 +14,11 @@ RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 def plain(value: float, digits: int, unit: str = "", *, sign: bool = False) -> str:
     """A number with a true minus, thousands set apart, and its unit; `–` where there is none."""
-    if math.isnan(value):
-        return "–"
-    if math.isinf(value):
-        return f"{'' if value > 0 else MINUS}∞{' ' + unit if unit else ''}"
-    shown = f"{abs(value):,.{digits}f}".replace(",", THIN)
-    nought = float(f"{abs(value):.{digits}f}") == 0.0
-    mark = MINUS if value < 0 and not nought else "+" if sign and not nought else ""
+    if not math.isfinite(value):
+        return "–" if math.isnan(value) else f"{'' if value > 0 else MINUS}∞{' ' + unit if unit else ''}"
+    shown, mark = f"{abs(value):,.{digits}f}".replace(",", THIN), ""
+    if (value < 0 or sign) and shown.strip("0."):  # not nought as it is written
+        mark = MINUS if value < 0 else "+"
     return f"{mark}{shown} {unit}" if unit else f"{mark}{shown}"
 
 

@@ -1,6 +1,7 @@
 """What was put in place of data that only phases and neutral need, wherever figures hang on it."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+from itertools import chain
 
 from app.model import taps
 from app.model.conductors import has_neutral
@@ -20,7 +21,7 @@ from app.study.zones import Zones
 
 Made = tuple[Assumption, ...]
 SOURCE_Z0 = "as Z1; common practice, no source"
-_last: tuple[Conductors, float, list[Branch], Made] | None = None
+_last: tuple[Conductors, float, list[Branch], list[Made]] | None = None
 
 
 def wire_assumptions(drawing: Drawing, layout: Layout, zones: Zones, conductors: Conductors) -> Made:
@@ -35,27 +36,33 @@ def wire_assumptions(drawing: Drawing, layout: Layout, zones: Zones, conductors:
     """
     global _last
     last, frequency = _last, drawing.frequency_hz
-    known = last is not None and last[0] is conductors and last[1] == frequency
-    if last is None or not known or any(a is not b for a, b in zip(last[2], layout.branches, strict=True)):
-        made = tuple(_of_branches(layout, zones, conductors, frequency))
-        _last = last = (conductors, frequency, layout.branches, made)
-    return (*last[3], *_of_supplies(layout))
+    branches = layout.branches
+    were: Sequence[Branch | None] = ()
+    done: Sequence[Made] = ()
+    if last is not None and last[0] is conductors and last[1] == frequency:  # and so at the same levels
+        were, done = last[2], last[3]
+    if len(were) != len(branches):
+        were, done = [None] * len(branches), [()] * len(branches)
+    made = [
+        known if was is now else tuple(_of_branch(layout, zones, conductors, row, frequency))
+        for row, (was, now, known) in enumerate(zip(were, branches, done, strict=True))
+    ]
+    _last = (conductors, frequency, branches, made)
+    return (*chain.from_iterable(made), *_of_supplies(layout))
 
 
-def _of_branches(
-    layout: Layout, zones: Zones, conductors: Conductors, frequency_hz: float
+def _of_branch(
+    layout: Layout, zones: Zones, conductors: Conductors, row: int, frequency_hz: float
 ) -> Iterator[Assumption]:
-    for row, branch in enumerate(layout.branches):
-        id, zone = layout.branch_ids[row], layout.zone[layout.start[row]]
-        nominal = float(zones.nominal_v[zone])
-        if isinstance(branch, Line) and conductors.branch[row] & ABC:
-            kind = neutral_of(branch, nominal, zones.system[zone] != THREE_PHASE)
-            yield from _of_line(
-                id, branch, kind, bool(conductors.branch[row] & NEUTRAL), nominal, frequency_hz
-            )
-        elif isinstance(branch, Transformer) and row in conductors.units and _has_zero(branch):
-            passes = passes_zero(branch, conductors.units[row])
-            yield from _put(id, branch, "z0_ratio", zero_value(branch, passes))
+    branch, id, zone = layout.branches[row], layout.branch_ids[row], layout.zone[layout.start[row]]
+    nominal = float(zones.nominal_v[zone])
+    if isinstance(branch, Line) and conductors.branch[row] & ABC:
+        kind = neutral_of(branch, nominal, zones.system[zone] != THREE_PHASE)
+        carried = bool(conductors.branch[row] & NEUTRAL)
+        yield from _of_line(id, branch, kind, carried, nominal, frequency_hz)
+    elif isinstance(branch, Transformer) and row in conductors.units and _has_zero(branch):
+        passes = passes_zero(branch, conductors.units[row])
+        yield from _put(id, branch, "z0_ratio", zero_value(branch, passes))
 
 
 def _of_line(

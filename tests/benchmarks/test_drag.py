@@ -135,9 +135,8 @@ def test_drag_against_repaint(qtbot, capsys, tmp_path, surface, zoom, phases):
     assert bench.session.drawing.elements["T1"].tap == 1
     drag, repaint, solve = (1e3 * median(times) for times in (drags, repaints, solves))
     with capsys.disabled():
-        print(
-            f"\ntap drag, {BRANCHES} branches, phases {phases}, {surface}, {zoom}: {drag:.1f} ms to the "
-            f"painted frame, repaint {repaint:.1f} ms, ratio {drag / repaint:.2f}; the study within it {solve:.1f} ms"
-        )
+        print(f"\ntap drag, {BRANCHES} branches, phases {phases}, {surface}, {zoom}:", end=" ")
+        print(f"{drag:.1f} ms to the painted frame, repaint {repaint:.1f} ms, ", end="")
+        print(f"ratio {drag / repaint:.2f}; the study within it {solve:.1f} ms")
     bench.session.history.setClean()  # the window may close without asking
     bench.solving.stop()
