@@ -101,7 +101,8 @@ def spread_starts(table: StartTable, solved: Flag) -> StartTable:
     columns: dict[str, NDArray[Any]] = {}
     for name, column in table.columns.items():
         shape = (len(table.ids), len(solved))
-        whole: NDArray[Any] = np.zeros(shape, dtype=bool) if name == "solved" else np.full(shape, np.nan)
+        known = column.dtype.kind == "f"
+        whole: NDArray[Any] = np.full(shape, np.nan) if known else np.zeros(shape, dtype=column.dtype)
         whole[:, solved] = column
         columns[name] = whole
     return replace(table, columns=columns)

@@ -73,10 +73,12 @@ def _step_words(
     drawing: Drawing, table: StartTable, name: str, places: tuple[str, ...]
 ) -> Callable[[int, int, str], str]:
     def subject(row: int, case: int, value: str) -> str:
-        was, now = (float(table.column(f"{name}_{when}v")[row, case]) for when in ("before_", ""))
+        over = (table.board_over if name == "board" else table.supply_over) or None
+        own = 1.0 if over is None else over[row]
+        was, now = (float(table.column(f"{name}_{when}v")[row, case]) / own for when in ("before_", ""))
         return (
-            f"Starting {tell(drawing, table.ids[row])} pulls {tell(drawing, places[row])} down by {value}, "
-            f"from {volts(was)} to {volts(now)}"
+            f"Starting {tell(drawing, table.ids[row])} pulls {tell(drawing, places[row])} down by {value}"
+            f"{_on(table, name, row, case)}, from {volts(was)} to {volts(now)}"
         )
 
     return subject
@@ -85,9 +87,16 @@ def _step_words(
 def _motor_words(drawing: Drawing, table: StartTable) -> Callable[[int, int, str], str]:
     def subject(row: int, case: int, value: str) -> str:
         now = volts(float(table.column("motor_v")[row, case]))
-        return f"{tell(drawing, table.ids[row])} has {value} of its rated voltage to start with, {now}"
+        on = _on(table, "motor", row, case)
+        return f"{tell(drawing, table.ids[row])} has {value} of its rated voltage to start with{on}, {now}"
 
     return subject
+
+
+def _on(table: StartTable, name: str, row: int, case: int) -> str:
+    """The phase that falls most, such as ` on B`; nothing where phases are alike."""
+    phase = str(table.column(f"{name}_phase")[row, case])
+    return f" on {phase}" if phase else ""
 
 
 def _stuck(

@@ -10,7 +10,9 @@ from app.study.layout import Layout, arrays_of
 from app.study.leads import across
 from app.study.rows import ROOT3, Rows
 from app.study.start_rows import motors_of, nominal_of
-from app.study.wire_volts import against, base_volts, phase_volts
+from app.study.wire_volts import against, base_volts, phase_name, phase_volts
+from app.study.wire_words import conductor
+from app.study.wires import LETTERS, N
 from app.study.zones import Zones
 from solver import Solution
 from solver.wires import EARTH
@@ -18,6 +20,7 @@ from solver.wires import EARTH
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
+Names = list[list[str]]
 
 
 class Seen(Struct, frozen=True):
@@ -28,6 +31,9 @@ class Seen(Struct, frozen=True):
     motors : volts (node, k, batch) to volts (motor, way, batch) across each way through a motor
     nodes : (motor,) node rows to the same at these nodes, of every phase, as line volts
     amps : solution to amperes (motor, 1, batch) in the lead that carries most; the motors are its last loads
+    over : (node,) float, the volts of `nodes` over those of a phase itself
+    motor_ways : names of the ways (motor, way), such as B or B–C; None where phases are alike
+    node_ways : node rows to the same at these nodes
     """
 
     rated_v: Real
@@ -35,6 +41,9 @@ class Seen(Struct, frozen=True):
     motors: Callable[[Complex], Real]
     nodes: Callable[[Index], Callable[[Complex], Real]]
     amps: Callable[[Solution], Real]
+    over: Real | None = None
+    motor_ways: Names | None = None
+    node_ways: Callable[[Index], Names] | None = None
 
 
 def start_seen(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen:
@@ -112,4 +121,21 @@ def _wired(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen
                     total[n, other] -= drawn[n, one]
         return np.asarray(np.abs(total).max(axis=1, keepdims=True))
 
-    return Seen(np.array(rated), np.where(three, ROOT3, 1.0), motors, nodes, amps)
+    systems = [zones.system[zone] for zone in layout.zone]
+
+    def node_ways(which: Index) -> Names:
+        return [[phase_name(p, int(kind[n]), systems[n]) for p in range(3)] for n in which]
+
+    ways = [
+        [_way(*pair, systems[layout.at[row]]) for pair in found.pairs]
+        for row, found in zip(started, leads, strict=True)
+    ]
+    return Seen(
+        np.array(rated), np.where(three, ROOT3, 1.0), motors, nodes, amps, over, ways, node_ways
+    )  # fmt: skip
+
+
+def _way(one: int, other: int, system: str) -> str:
+    """Between which conductors, such as B, or B–C."""
+    ends = (one, other) if 0 <= other < N else (one,)
+    return "–".join(conductor(LETTERS[slot], system) for slot in ends)

@@ -25,6 +25,9 @@ class StartState:
     current_a: float
     times_rated: float
     torque_percent: float  # of the locked-rotor torque at rated voltage; nan for a drive, which makes its own
+    motor_phase: str = ""  # the way that falls most, such as B, L1 or B–C; blank where phases are alike
+    board_phase: str = ""
+    supply_phase: str = ""
 
 
 @dataclass(frozen=True)
@@ -33,7 +36,10 @@ class StartTable(Table[StartState]):
 
     boards : (motor,) id of the nearest node towards the supply that serves something else too
     supplies : (motor,) id of the supply that feeds it
+    board_over, supply_over : (motor,) float, the volts told over those of one phase; empty where alike
     """
 
     boards: tuple[str, ...] = ()
     supplies: tuple[str, ...] = ()
+    board_over: tuple[float, ...] = ()
+    supply_over: tuple[float, ...] = ()

@@ -15,7 +15,7 @@ from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.rows import Rows, rows_of
 from app.study.start_rows import behind, motors_of, source_impedance, without
-from app.study.start_seen import start_seen
+from app.study.start_seen import Names, start_seen
 from app.study.start_table import StartState, StartTable
 from app.study.structure import structure_findings
 from app.study.zones import Zones, zones_of
@@ -132,13 +132,15 @@ def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _P
     ended = zip(pair.still.status, pair.moved.status, strict=True)
     solved = np.array([a is Status.SOLVED and b is Status.SOLVED for a, b in ended]).reshape(count, cases)
     seen = start_seen(layout, zones, rows, started)
-    for name, volts in (
-        ("motor", seen.motors),
-        ("board", seen.nodes(boards)),
-        ("supply", seen.nodes(points)),
+    of_nodes = seen.node_ways
+    for name, volts, ways in (
+        ("motor", seen.motors, seen.motor_ways),
+        ("board", seen.nodes(boards), of_nodes and of_nodes(boards)),
+        ("supply", seen.nodes(points), of_nodes and of_nodes(points)),
     ):
         was, now = (np.where(solved[:, None], _own(volts(s.voltage), cases), np.nan) for s in pair.both)
-        found[f"{name}_before_v"], found[f"{name}_v"] = _deepest(was, now)
+        found[f"{name}_before_v"], found[f"{name}_v"], way = _deepest(was, now)
+        found[f"{name}_phase"] = _named(ways, way)
         before, there = found[f"{name}_before_v"], found[f"{name}_v"]
         found[f"{name}_step_percent"] = 100 * (1 - there / np.where(before > 0, before, np.nan))
     motors = motors_of(layout, started)
@@ -151,9 +153,12 @@ def _judged(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, pair: _P
     found["torque_percent"] = _torque(motors, found["motor_percent"])
     idle = np.array([[_stands_still(c, layout.attachment_ids[i]) for c in drawing.cases] for i in started])
     for column in found.values():
-        column[idle] = np.nan
+        column[idle] = np.nan if column.dtype.kind == "f" else column.dtype.type()
     table = _table(layout, started, found | {"solved": solved | idle}, [layout.node_ids[n] for n in boards])
-    return replace(table, supplies=tuple(layout.attachment_ids[f] for f in feeding))
+    table = replace(table, supplies=tuple(layout.attachment_ids[f] for f in feeding))
+    if seen.over is None:
+        return table
+    return replace(table, board_over=tuple(seen.over[boards]), supply_over=tuple(seen.over[points]))
 
 
 def _stands_still(case: Case, id: str) -> bool:
@@ -169,12 +174,21 @@ def _own(values: Real, cases: int) -> Real:
     return np.asarray(own[np.arange(count), :, np.arange(count)])
 
 
-def _deepest(was: Real, now: Real) -> tuple[Real, Real]:
-    """(motor, case) volts before and during the start, of the phase that falls most."""
+def _deepest(was: Real, now: Real) -> tuple[Real, Real, NDArray[np.intp]]:
+    """(motor, case) volts before and at the start, of the phase that falls most, and which: -1 for none."""
     known = was > 0
     step = np.where(known, (was - now) / np.where(known, was, 1.0), -np.inf)
     row = step.argmax(axis=1)[:, None]
-    return np.take_along_axis(was, row, 1)[:, 0], np.take_along_axis(now, row, 1)[:, 0]
+    found = np.where(known.any(axis=1), row[:, 0], -1)
+    return np.take_along_axis(was, row, 1)[:, 0], np.take_along_axis(now, row, 1)[:, 0], found
+
+
+def _named(ways: Names | None, way: NDArray[np.intp]) -> NDArray[np.str_]:
+    """(motor, case) the name of the phase that falls most; blank where none does or all are alike."""
+    if ways is None:
+        return np.zeros(way.shape, dtype="U5")
+    told = [["" if at < 0 else own[at] for at in row] for own, row in zip(ways, way, strict=True)]
+    return np.array(told, dtype="U5").reshape(way.shape)
 
 
 def _torque(motors: list[Motor], percent: Real) -> Real:
@@ -192,6 +206,7 @@ def _torque(motors: list[Motor], percent: Real) -> Real:
 
 def _nothing(count: int, cases: int) -> dict[str, NDArray[Any]]:
     none = {f.name: np.full((count, cases), np.nan) for f in fields(StartState)}
+    none |= {name: np.zeros((count, cases), dtype="U5") for name in none if name.endswith("_phase")}
     return {**none, "solved": np.zeros((count, cases), dtype=bool)}
 
 
