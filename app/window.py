@@ -48,6 +48,7 @@ class Window(QMainWindow):
         self.document = Document(self.session, self, recovery_folder=recovery_folder)
         self.solving = Solving(self.session, parent=self)
         self.attention = Attention(self.session, self)
+        self.attention.case_shown.connect(self.solving.look)  # before any panel asks what to show of it
         self.theme = Theme(self)
         self.theme.wear(self.preferences.theme, self.preferences.symbols)
         self._make_parts()

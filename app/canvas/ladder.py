@@ -10,7 +10,7 @@ from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsObject
 
 from app.canvas.element_item import halo_colour
-from app.canvas.ladder_curve import WIDTH, Prospect, paint_losses, paint_safe
+from app.canvas.ladder_curve import WIDTH, Prospect, left_out_words, paint_losses, paint_safe
 from app.canvas.ladder_scale import Scale
 from app.canvas.lettering import Run, Style, line_height, paint
 from app.canvas.theme import Theme
@@ -24,6 +24,7 @@ from app.model.kinds import Transformer
 
 if TYPE_CHECKING:
     from app.canvas.board import Board
+    from app.study import TapCurve
 
 EDGE = 13.0  # above and below the rail, for the end labels and the rung
 RAIL_X = 8.0 + WIDTH + 16.0
@@ -47,7 +48,7 @@ class TapLadder(QGraphicsObject):
         self._turned = 0  # of the wheel, short of a notch
         self._pointed: int | None = None
         self._shown: tuple | None = None
-        self._curve: object = None
+        self._curve: TapCurve | None = None
         self._bounds = QRectF()
         self.setAcceptHoverEvents(True)
         self.setFlag(QGraphicsItem.GraphicsItemFlag.ItemIsFocusable)
@@ -122,6 +123,7 @@ class TapLadder(QGraphicsObject):
         if prospect is None or best is None:
             return f"{label(self._session.drawing, self.id)}, {said}"
         holds = "" if prospect.holding(best) else " (no notch holds every voltage limit)"
+        holds += left_out_words(self._curve, self._session.drawing.cases)
         least = f"least loss at {self.words(best)}: {loss(prospect.loss(best) or 0.0)}{holds}"
         return f"{label(self._session.drawing, self.id)}, {said}; {least}"
 

@@ -1,6 +1,9 @@
 """Painting what the taps would do: the loss against notch, the best one, the notches that hold."""
 
-from collections.abc import Iterator
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from typing import TYPE_CHECKING
 
 import numpy as np
 from msgspec import Struct
@@ -10,6 +13,11 @@ from PySide6.QtGui import QColor, QPainter, QPen, QPolygonF
 
 from app.canvas.ladder_scale import Scale
 from app.canvas.palette import Palette
+from app.model.drawing import Case
+from app.study.words import among
+
+if TYPE_CHECKING:
+    from app.study import TapCurve
 
 WIDTH = 24.0
 MOST_DOTS = 9
@@ -48,6 +56,12 @@ class Prospect(Struct, frozen=True):
             last = next((k for k, n in enumerate(held) if n != held[0] + k), len(held)) - 1
             yield held[0], held[last]
             held = held[last + 1 :]
+
+
+def left_out_words(curve: TapCurve | None, cases: Sequence[Case]) -> str:
+    """Which cases the bands pass over, as no notch solves them."""
+    names = [cases[c].name for c in (curve.left_out if curve is not None else ()) if c < len(cases)]
+    return f"; notches are judged without {among(names)}, which none of them solves" if names else ""
 
 
 def paint_safe(painter: QPainter, scale: Scale, prospect: Prospect, rail: QPointF, palette: Palette) -> None:

@@ -30,7 +30,6 @@ from app.model.drawing import Drawing
 from app.study.cautions import CAUTIONS
 from app.study.outcome import Outcome, Verdict
 from app.study.words import tally_words
-from solver.status import Status
 
 MARGIN = 36.0
 NARROWEST = 760.0  # the foot needs this much
@@ -75,7 +74,7 @@ class Page:
         self.palette = palette
         self._paper = Paper(Look(palette, symbols, printing=True))
         self._paper.lay_out(drawing)
-        if outcome is not None and outcome.status is Status.SOLVED:
+        if outcome is not None and outcome.solved(case):
             self._paper.show_outcome(drawing, outcome, case, None)
             self._paper.arrange()
         self.title = drawing.project.title or "Drawing"
@@ -120,9 +119,12 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
     ]
     lines: list[Line] = [(Run(project.title or "Untitled drawing", Style.NAME),)]
     lines.append((Run(" · ".join(m for m in marks if m), Style.QUIET),))
-    if outcome is None or outcome.status is not Status.SOLVED:
+    if outcome is None or not outcome.solved(case):
         sentence = outcome.sentence if outcome is not None else "Not solved."
-        return *lines, (Run(sentence, Style.FIGURE),)
+        of_case = (
+            ((Run(f"Case: {outcome.cases[case]}", Style.QUIET),),) if outcome and outcome.solved_cases else ()
+        )
+        return *lines, (Run(sentence, Style.FIGURE),), *of_case
     balance = outcome.balance
     supply, lost = figures.power(balance.supply_kw[case]), figures.loss(balance.loss_kw[case])
     lines.append((Run(f"Supply {supply} · lost {lost}", Style.FIGURE),))
@@ -132,7 +134,11 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
     )
     named = f": {limits.name}" if limits.name else ""
     words = f"Case: {outcome.cases[case]} · voltage limits {low} to {high}{named}"
-    return *lines, (Run(words, Style.QUIET),), (_verdict(outcome),)
+    lines += [(Run(words, Style.QUIET),), (_verdict(outcome),)]
+    lines += (
+        [(Run(outcome.sentence, Style.FAILED),)] if len(outcome.solved_cases) < len(outcome.cases) else []
+    )
+    return tuple(lines)
 
 
 def _verdict(outcome: Outcome) -> Run:

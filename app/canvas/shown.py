@@ -11,7 +11,6 @@ from app.canvas.phase_mark import Phases
 from app.model.drawing import Limits
 from app.model.kinds import Attachment, Branch, Transformer
 from app.study.outcome import Outcome, Table
-from solver.status import Status
 
 APART = 0.5  # percent from the lowest phase to the highest that the gauge tells apart
 
@@ -42,8 +41,8 @@ class Shown(Struct, frozen=True):
 
     @property
     def solved(self) -> bool:
-        """False where the outcome holds no figures."""
-        return self.outcome.status is Status.SOLVED
+        """False where the outcome holds no figures of the case."""
+        return self.outcome.solved(self.case)
 
     def rows(self, name: str, id: str) -> tuple[Any, Any]:
         """The state of an element, and its state before where that is known."""

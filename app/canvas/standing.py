@@ -41,7 +41,12 @@ _DASH = {Standing.NEAR: (18.0, 5.0), Standing.FAILED: (7.0, 4.0), Standing.DEAD:
 
 
 def standings(outcome: Outcome, case: int) -> dict[str, Standing]:
-    """How each element stands in one case that a check names; a note says nothing of that."""
+    """How each element stands in one case that a check names; a note says nothing of that. Of a case that is
+    not solved only what fails whatever the load, or stands in the way."""
+    if not outcome.solved(case):
+        own = (f for f in outcome.findings if f.in_case(case) is f.verdict)
+        barring = [f for f in own if _STANDING.get(f.verdict) is Standing.FAILED]
+        return {id: Standing.FAILED for finding in barring for id in finding.ids}
     worst = outcome.verdicts(case).items()
     return {id: _STANDING[verdict] for id, verdict in worst if verdict in _STANDING}
 

@@ -14,7 +14,6 @@ from app.model.drawing import Drawing
 from app.model.edits import Change
 from app.model.kinds import Supply
 from app.study.outcome import Outcome
-from solver.status import Status
 
 if TYPE_CHECKING:
     from app.study import TapCurve
@@ -38,10 +37,7 @@ def _tap_curve(drawing: Drawing, id: str) -> TapCurve:
 class Solving(QObject):
     """Listens to the session, solves, tells. Latest wins.
 
-    outcome: the newest outcome whose status is solved, or the first unsolved one, or the one of a drawing
-        that nothing feeds; shown grey when `stale`
-    problem: the newest outcome when it is not solved, else None
-    stale: the figures shown do not belong to the drawing as it stands
+    newest: the newest outcome, whatever its status
     reference: the outcome when the drag began, while one goes on, else None
     """
 
@@ -51,9 +47,7 @@ class Solving(QObject):
     _arrived = Signal(object)  # Job, from the worker
     _asked = Signal()
 
-    outcome: Outcome | None
-    problem: Outcome | None
-    stale: bool
+    newest: Outcome | None
     reference: Outcome | None
 
     def __init__(
@@ -71,7 +65,8 @@ class Solving(QObject):
         self._lane = Lane(self._arrived.emit)
         self._curves = Curves(session.drawing)
         self._waiting = False
-        self._newest = 0  # counts the drawings that differ electrically
+        self._count = 0  # counts the drawings that differ electrically
+        self._case = 0
         self._forget()
         self._stopped = False
         self._rest = QTimer(self, singleShot=True, interval=PAUSE_MS)
@@ -86,10 +81,38 @@ class Solving(QObject):
         self._ask()
 
     @property
+    def outcome(self) -> Outcome | None:
+        """What is shown of the case looked at: the newest outcome where the case is solved in it or nothing
+        feeds the drawing, else the last in which it was, which is `stale`, else the newest all the same."""
+        newest = self.newest
+        if newest is None or newest.solved(self._case_of(newest)) or not self._is_fed():
+            return newest
+        last = self._good.get(self._case_of(newest))
+        return newest if last is None else last
+
+    @property
+    def problem(self) -> Outcome | None:
+        """The newest outcome where the case looked at is not solved in it, else None."""
+        newest = self.newest
+        return None if newest is None or newest.solved(self._case_of(newest)) else newest
+
+    @property
     def figures(self) -> Outcome | None:
-        """The outcome, where it is solved and so has figures."""
-        solved = self.outcome is not None and self.outcome.status is Status.SOLVED
-        return self.outcome if solved else None
+        """The outcome shown, where it has figures of the case looked at."""
+        shown = self.outcome
+        return shown if shown is not None and shown.solved(self._case_of(shown)) else None
+
+    @property
+    def stale(self) -> bool:
+        """Whether the figures shown do not belong to the drawing as it stands."""
+        return self._aged or self.outcome is not self.newest
+
+    def look(self, case: int) -> None:
+        """Tell of another case: of one that is not solved its last figures stand, grey."""
+        self._case = case
+
+    def _case_of(self, outcome: Outcome) -> int:
+        return min(self._case, len(outcome.cases) - 1)
 
     def begin_drag(self) -> None:
         """Remember the figures as they stand, for the change shown while dragging."""
@@ -137,13 +160,14 @@ class Solving(QObject):
     # what happens -------------------------------------------------------------------------------
 
     def _forget(self) -> None:
-        self.outcome = self.problem = self.reference = None
-        self.stale = True
-        self._shape = self._newest  # since which of them the topology stands
+        self.newest = self.reference = None
+        self._good: dict[int, Outcome] = {}  # by case, the last outcome in which it was solved
+        self._aged = True
+        self._shape = self._count  # since which of them the topology stands
         self._owed = True
 
     def _start_over(self) -> None:
-        self._newest += 1
+        self._count += 1
         self._forget()
         self._curves = Curves(self._session.drawing)
         self.went_stale.emit()
@@ -153,10 +177,10 @@ class Solving(QObject):
         self._curves.follow(self._session.drawing, change)
         if not (change.topology or change.parameter or change.rest):
             return
-        self._newest += 1
+        self._count += 1
         if change.topology or change.rest:
-            self._shape = self._newest
-        self._owed = self.stale = True
+            self._shape = self._count
+        self._owed = self._aged = True
         self._rest.stop()
         self._ask()
 
@@ -196,7 +220,7 @@ class Solving(QObject):
     def _solve_job(self) -> Job:
         self._owed = False
         drawing = self._session.drawing
-        return Job("", self._newest, lambda: self._run(drawing))
+        return Job("", self._count, lambda: self._run(drawing))
 
     def _curve_job(self, id: str) -> Job:
         drawing = self._session.drawing
@@ -228,11 +252,9 @@ class Solving(QObject):
         outcome: Outcome = job.answer()
         if job.number < self._shape:
             return
-        solved = outcome.status is Status.SOLVED
-        self.problem = None if solved else outcome
-        if solved or self.figures is None or not self._is_fed():
-            self.outcome = outcome
-        self.stale = self.outcome is not outcome or job.number < self._newest
+        self.newest, self._aged = outcome, job.number < self._count
+        kept = {c: o for c, o in self._good.items() if o.cases[c : c + 1] == outcome.cases[c : c + 1]}
+        self._good = kept | dict.fromkeys(outcome.solved_cases, outcome)
         if not self.stale or self.problem is not None:
             self._late.stop()
         if self.stale:

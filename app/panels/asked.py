@@ -1,11 +1,12 @@
 """What rows of results are made from, and what a row is."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 
 from msgspec import Struct
 
 from app.model.drawing import Drawing
 from app.study.outcome import Outcome, Verdict
+from solver.status import Status
 
 Write = Callable[[float], str]
 
@@ -26,6 +27,18 @@ class Asked(Struct, frozen=True):
     outcome: Outcome
     before: Outcome | None
     case: int
+
+    def lacking(self, case: int) -> str:
+        """What stands where a case has no figure."""
+        barred = self.outcome.status is Status.INVALID  # in all cases
+        return "dead" if barred or self.outcome.solved(case) else "not solved"
+
+    def cells(self, figures: Iterable[float], write: Write) -> tuple[str, ...]:
+        """A figure of each case, written."""
+        return tuple(
+            write(float(figure)) if self.outcome.solved(case) else self.lacking(case)
+            for case, figure in enumerate(figures)
+        )
 
     def verdict(self, id: str, check: tuple[str, ...]) -> Verdict | None:
         """The worst verdict of the case shown among the element's findings of these checks."""

@@ -17,6 +17,7 @@ from app.panels.style import mixed
 from app.panels.verdicts import paint_mark
 from app.panels.words import LEFT, plain_tip
 from app.study.outcome import Verdict
+from solver.status import Status
 
 
 class Chip(QPushButton):
@@ -120,9 +121,9 @@ class CaseChips(QWidget):
         self._arrange()
 
     def _verdict(self, case: int) -> Verdict:
-        """The worst in a case; a note for one that is not solved."""
-        outcome = self._solving.figures
-        if outcome is None or self._solving.problem is not None or case >= len(outcome.cases):
+        """The worst in a case, that it is not solved among them; a note where nothing can be."""
+        outcome = self._solving.newest
+        if outcome is None or outcome.status is Status.INVALID or case >= len(outcome.cases):
             return Verdict.NOTE
         return outcome.verdict(case)
 

@@ -123,10 +123,6 @@ class FindingsBar(QWidget):
         return self.fold_out
 
     # -- what is shown --------------------------------------------------------------------------
-    @property
-    def _newest(self):
-        return self._solving.problem or self._solving.outcome
-
     def _changed(self) -> None:
         """New findings come with the next outcome; what was told passes at once."""
         told, self._told = self._told, ""
@@ -141,7 +137,7 @@ class FindingsBar(QWidget):
         self._follow()
 
     def _follow(self) -> None:
-        made = line(self._session.drawing, self._newest)
+        made = line(self._session.drawing, self._solving.newest)
         self._line = Line(Verdict.NOTE, "", self._told) if self._told else made
         self.mark.say(self._line.verdict)
         self.headline.say(self._line.headline)
@@ -152,7 +148,7 @@ class FindingsBar(QWidget):
             ink = self._theme.palette.soft
         self.headline.colour(ink)
         self.sentence.say(self._line.sentence)
-        outcome = self._newest
+        outcome = self._solving.newest
         count = len(outcome.assumptions) if outcome is not None else 0
         self.assumed.setVisible(bool(count))
         self.assumed.setText(count_words(count))
@@ -175,7 +171,7 @@ class FindingsBar(QWidget):
         self.left.emit()
 
     def _fill(self) -> None:
-        outcome = self._newest
+        outcome = self._solving.newest
         if outcome is None or (self.folded_out == "assumed" and not outcome.assumptions):
             self.folded_out = ""
         self.fold_out.setVisible(bool(self.folded_out))

@@ -49,6 +49,8 @@ def line(drawing: Drawing, outcome: Outcome | None) -> Line:
 
 def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
     blocks = [f for f in ordered(outcome) if f.verdict is Verdict.BLOCKS]
+    if blocks and outcome.solved_cases:
+        return _partly(outcome, blocks)
     if blocks:
         more = f" And {len(blocks) - 1} more." if len(blocks) > 1 else ""
         return Line(Verdict.BLOCKS, "Not solved.", blocks[0].sentence + more, blocks[0].ids)
@@ -56,6 +58,17 @@ def _unsolved(drawing: Drawing, outcome: Outcome) -> Line:
     if outcome.to_blame and label(drawing, outcome.to_blame) not in words:
         words += f" {label(drawing, outcome.to_blame)} sets it."
     return Line(Verdict.BLOCKS, "Not solved.", words, (outcome.to_blame,) if outcome.to_blame else ())
+
+
+def _partly(outcome: Outcome, blocks: list[Finding]) -> Line:
+    """How many cases are not solved, how the others came out, and why the worst is not."""
+    count = len(outcome.cases)
+    rest = tally_words(f for f in outcome.findings if f.verdict is not Verdict.BLOCKS)
+    head = (
+        f"{count - len(outcome.solved_cases)} of {count} cases not solved; else {rest[0].lower()}{rest[1:]}."
+    )
+    more = f" And {len(blocks) - 1} more." if len(blocks) > 1 else ""
+    return Line(Verdict.BLOCKS, head, blocks[0].sentence + more, blocks[0].ids)
 
 
 def ordered(outcome: Outcome) -> list[Finding]:

@@ -53,7 +53,7 @@ def _row(
     """A row from one figure of a table's state; `figure` is a column name or a function of the state."""
     read = figure if callable(figure) else lambda state: getattr(state, figure)
     states = _states(getattr(asked.outcome, table), id, len(asked.outcome.cases))
-    cells = tuple(write(read(s)) if s.live else "dead" for s in states)
+    cells = tuple(write(read(s)) if s.live else asked.lacking(case) for case, s in enumerate(states))
     moved = ""
     if asked.before is not None and asked.case < len(states):
         then = getattr(asked.before, table)
@@ -238,14 +238,17 @@ def _start(asked: Asked, id: str) -> list[Row]:
     then = before.at(id, asked.case) if before is not None and id in before else None
     made = []
     for label, name, write, check in _START:
-        cells = tuple("no start" if s.motor_v != s.motor_v else write(getattr(s, name)) for s in states)
-        if all(
-            cell == "no start" or math.isnan(getattr(s, name)) for cell, s in zip(cells, states, strict=True)
-        ):
+        figures = [getattr(s, name) for s in states]
+        if all(math.isnan(figure) for figure in figures):
             continue
+        cells = asked.cells(figures, partial(_of_start, write))
         moved = change(getattr(states[asked.case], name), getattr(then, name), write) if then else ""
         made.append(Row(label, cells, moved, asked.verdict(id, check)))
     return made
+
+
+def _of_start(write: Write, figure: float) -> str:
+    return "no start" if math.isnan(figure) else write(figure)
 
 
 _kvar = partial(power, unit="kvar")

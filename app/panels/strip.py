@@ -17,12 +17,11 @@ from app.model.edits import Change
 from app.model.taps import by_hand
 from app.panels.results import tap_words
 from app.panels.strip_axes import Axes, Stretch, axes, node_points, span, stretches
-from app.panels.strip_paint import Curve, Shown, paint_strip
+from app.panels.strip_paint import Curve, Shown, paint_head, paint_strip
 from app.panels.strip_phases import PhaseCurve, base_of, phase_curves, system_of
 from app.panels.strip_routes import Routes, routes
 from app.panels.strip_tap import TapDrag
 from app.panels.strip_words import spoken
-from app.panels.words import LEFT
 from app.study.outcome import Outcome
 
 HEAD = 34.0
@@ -61,7 +60,7 @@ class VoltageStrip(QWidget):
         solving.solved.connect(self._follow)
         solving.went_stale.connect(self.update)
         attention.selected.connect(self._follow)
-        attention.hovered.connect(self._look)
+        attention.hovered.connect(lambda _id: self.update())
         attention.case_shown.connect(self._follow)
         theme.changed.connect(self.update)
         self._follow()
@@ -75,15 +74,22 @@ class VoltageStrip(QWidget):
     # -- what is shown --------------------------------------------------------------------------
     @property
     def _outcome(self) -> Outcome | None:
-        return self._solving.figures
+        """The figures shown; where the case has none and never had, those of the cases that are solved."""
+        shown = self._solving.outcome
+        return shown if shown is not None and shown.solved_cases else None
+
+    @property
+    def _lacking(self) -> bool:
+        """True where the curves are those of other cases alone."""
+        return self._outcome is not None and self._solving.figures is None
 
     @property
     def case(self) -> int:
-        """The case shown."""
-        return min(self._attention.case, len(self._outcome.cases) - 1) if self._outcome else 0
-
-    def _look(self) -> None:
-        self.update()
+        """The case drawn whole: the one shown, or the first that is solved."""
+        outcome = self._outcome
+        if outcome is None:
+            return 0
+        return outcome.solved_cases[0] if self._lacking else min(self._attention.case, len(outcome.cases) - 1)
 
     def _changed(self, change: Change) -> None:
         """New figures come with the next outcome; only what is gone must go at once."""
@@ -115,6 +121,8 @@ class VoltageStrip(QWidget):
         backbone = self.routes.backbone
         self.curves = [
             self._curve(outcome, case, self.routes if case == self.case else backbone)
+            if outcome.solved(case)
+            else Curve(outcome.cases[case], [], {})
             for case in range(len(outcome.cases))
         ]
         shown = self.curves[self.case].nodes
@@ -151,7 +159,7 @@ class VoltageStrip(QWidget):
             selection=self._attention.selection,
             hover=self._attention.hover,
             held=self.tap.id or (self._keyed() if self.hasFocus() else ""),
-            stale=self._solving.stale,
+            stale=self._solving.stale or self._lacking,
             phases=self.phases,
             system=system_of(self._outcome, self.routes) if self.phases and self._outcome else "",
             base_v=base_of(self._outcome, self.routes) if self._outcome else math.nan,
@@ -160,23 +168,14 @@ class VoltageStrip(QWidget):
 
     def _paint_head(self, painter: QPainter) -> None:
         palette = self._theme.palette
-        painter.setFont(font(9, bold=True))
-        painter.setPen(palette.ink)
-        room = QRectF(18, 8, self.width() - 36, 18)
-        painter.drawText(room, int(LEFT), "Volts along the route")
-        room.setLeft(room.left() + painter.fontMetrics().horizontalAdvance("Volts along the route") + 16)
         held = self.tap.id or (self._keyed() if self.hasFocus() else "")
         text = "% of nominal; volts at the right" if self.phases else "% of nominal"
+        if self._lacking:
+            text += f"; case {self._session.drawing.cases[self._attention.case].name} is not solved"
         if held:
             drawing = self._session.drawing
             text = f"{label(drawing, held)}  {tap_words(drawing, self._outcome, held, self.case)}"
-        painter.setFont(font(8.5, bold=bool(held)))
-        painter.setPen(palette.tap if held else palette.soft)
-        painter.drawText(
-            room,
-            int(LEFT),
-            painter.fontMetrics().elidedText(text, Qt.TextElideMode.ElideRight, int(room.width())),
-        )
+        paint_head(painter, self.width(), text, bool(held), palette)
 
     def _why_empty(self) -> str:
         if not self._session.drawing.elements:

@@ -46,6 +46,22 @@ class Shown(Struct, frozen=True):
     base_v: float  # that the limits are told in, at the far end; nan where percent say enough
 
 
+def paint_head(painter: QPainter, width: int, text: str, held: bool, palette: Palette) -> None:
+    """The title of the strip and what is told beside it."""
+    title = "Volts along the route"
+    painter.setFont(font(9, bold=True))
+    painter.setPen(palette.ink)
+    room = QRectF(18, 8, width - 36, 18)
+    painter.drawText(room, int(LEFT), title)
+    room.setLeft(room.left() + painter.fontMetrics().horizontalAdvance(title) + 16)
+    painter.setFont(font(8.5, bold=held))
+    painter.setPen(palette.tap if held else palette.soft)
+    metrics = painter.fontMetrics()
+    painter.drawText(
+        room, int(LEFT), metrics.elidedText(text, Qt.TextElideMode.ElideRight, int(room.width()))
+    )
+
+
 def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
     """The plot under the head."""
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)

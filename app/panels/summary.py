@@ -3,6 +3,8 @@
 from collections.abc import Callable
 from functools import partial
 
+import numpy as np
+
 from app.model.figures import change, closure, length, loss, power, volts
 from app.model.kinds import Branch, Line, Load, Node
 from app.panels.asked import Asked, Row
@@ -41,7 +43,7 @@ def _sum(asked: Asked, table: str, ids: list[str], name: str, label: str, write)
     moved = ""
     if asked.before is not None:
         moved = change(total(asked.outcome, asked.case), total(asked.before, asked.case), write)
-    return Row(label, tuple(write(total(asked.outcome, case)) for case in cases), moved)
+    return Row(label, asked.cells([total(asked.outcome, case) for case in cases], write), moved)
 
 
 def _levels(asked: Asked, nodes: list[str]) -> list[Row]:
@@ -50,11 +52,11 @@ def _levels(asked: Asked, nodes: list[str]) -> list[Row]:
     highest: list[str] = []
     for case in range(len(asked.outcome.cases)):
         states = [s for s in (asked.outcome.nodes.at(i, case) for i in known) if s.live]
-        if not states:
+        if not states and asked.outcome.solved(case):
             return []
         for kept, pick in ((lowest, min), (highest, max)):
-            state = pick(states, key=lambda s: s.percent)
-            kept.append(f"{volts(state.voltage_v)}")
+            state = pick(states, key=lambda s: s.percent, default=None)
+            kept.append(asked.lacking(case) if state is None else volts(state.voltage_v))
     return [Row("Lowest", tuple(lowest)), Row("Highest", tuple(highest))] if len(known) > 1 else []
 
 
@@ -74,11 +76,11 @@ def _whole(asked: Asked) -> list[Row]:
     made = []
     for label, name, write in rows:
         values = getattr(asked.outcome.balance, name)
-        if name == "generation_kw" and not values.any():
+        if name == "generation_kw" and not np.nan_to_num(values).any():
             continue
         moved = ""
         if asked.before is not None and asked.case < len(asked.before.cases):
             moved = change(values[asked.case], getattr(asked.before.balance, name)[asked.case], write)
-        made.append(Row(label, tuple(write(float(v)) for v in values), moved))
-    made.append(Row("Closes to", tuple(closure(float(v)) for v in asked.outcome.balance.closure)))
+        made.append(Row(label, asked.cells(values, write), moved))
+    made.append(Row("Closes to", asked.cells(asked.outcome.balance.closure, closure)))
     return made

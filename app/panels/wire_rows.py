@@ -58,7 +58,7 @@ def highest(asked: Asked, id: str) -> list[Row]:
     if state is None or len(state.phases) < 2:
         return []
     column = asked.outcome.nodes.column("high_percent")[asked.outcome.nodes.rows[id]]
-    return [Row("Highest", tuple(percent(float(value), 2) for value in column), "", asked.verdict(id, HIGH))]
+    return [Row("Highest", asked.cells(column, partial(percent, digits=2)), "", asked.verdict(id, HIGH))]
 
 
 def _against(state: Any, letter: str) -> str:
@@ -143,4 +143,4 @@ def _row(
     states = [_state(asked.outcome, table, id, case) for case in range(len(asked.outcome.cases))]
     then, now = _state(asked.before, table, id, asked.case), states[asked.case]
     moved = change(read(now), read(then), write) if then is not None else ""
-    return Row(label, tuple(write(read(state)) for state in states), moved, asked.verdict(id, check))
+    return Row(label, asked.cells(map(read, states), write), moved, asked.verdict(id, check))

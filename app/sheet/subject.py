@@ -21,8 +21,7 @@ from app.sheet.table import (
 from app.study.checking import NOISE
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Assumption, BranchState, Outcome
-from app.study.solved_cases import among
-from app.study.words import tell
+from app.study.words import among, tell
 from solver.status import Status
 
 FAIL = "FAIL"

@@ -14,8 +14,7 @@ from app.study.measuring import ends_of, missed
 from app.study.outcome import Finding, Verdict
 from app.study.results import Tables
 from app.study.rows import Rows
-from app.study.solved_cases import among
-from app.study.words import tell
+from app.study.words import among, tell
 from solver.control import Rest
 
 

@@ -38,6 +38,7 @@ class TapCurve(Struct, frozen=True):
     lowest_percent, highest_percent : (notch,) float [% of nominal] over all nodes fed through it, all cases,
         all phases
     holds : (notch,) bool, every voltage limit holds at every node fed through it, in every case
+    left_out : (chosen,) cases that have an operating point at no notch, which bounds and verdicts pass over
     """
 
     notches: NDArray[np.intp]
@@ -47,6 +48,7 @@ class TapCurve(Struct, frozen=True):
     lowest_percent: Real
     highest_percent: Real
     holds: NDArray[np.bool_]
+    left_out: tuple[int, ...] = ()
 
 
 def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
@@ -73,14 +75,16 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
     rows = replace(rows, network=_spread(layout, zones, rows, branch, notches, cases))
     rows, solution, _ = settled(drawing, layout, zones, rows, fixed=branch)
     tables = tables_of(layout, zones, rows, solution, len(notches) * cases)
-    solved = np.array([s is Status.SOLVED for s in solution.status])
-    loss = np.where(solved, tables.balance.loss_kw, np.nan).reshape(len(notches), cases)
+    solved = np.array([s is Status.SOLVED for s in solution.status]).reshape(len(notches), cases)
+    loss = np.where(solved, tables.balance.loss_kw.reshape(solved.shape), np.nan)
     below = _fed_through(layout, branch)
+    known = solved.any(axis=0) if solved.any() else np.ones(cases, dtype=bool)
     low, high, drop = (
-        tables.nodes.column(name)[below].reshape(-1, len(notches), cases)
+        np.where(solved, tables.nodes.column(name)[below].reshape(-1, *solved.shape), np.nan)[..., known]
         for name in ("percent", "high_percent", "drop_percent")
     )
-    return _curve(unit, notches, loss, (low, high), _holds(drawing, low, high, drop))
+    made = _curve(unit, notches, loss, (low, high), _holds(drawing, low, high, drop))
+    return replaced(made, left_out=tuple(np.flatnonzero(~known).tolist()))
 
 
 def _spread(layout: Layout, zones: Zones, rows: Rows, branch: int, notches: list[int], cases: int) -> Network:

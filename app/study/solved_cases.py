@@ -14,7 +14,7 @@ from app.study.outcome import Finding, Table, Verdict, Wired
 from app.study.results import Tables
 from app.study.rows import Rows
 from app.study.start_table import StartTable
-from app.study.words import tally_words
+from app.study.words import among, tally_words
 from solver import Status
 from solver.control import Rest
 from solver.share import pick
@@ -137,16 +137,6 @@ def partly_words(statuses: Sequence[Status], cases: Sequence[str], findings: Ite
     count = sum(status is Status.SOLVED for status in statuses)
     rest = "The other case is solved" if count == 1 else f"The other {count} cases are solved"
     return " ".join([*made, f"{rest}: {judged[0].lower()}{judged[1:]}."])
-
-
-def among(names: Sequence[str]) -> str:
-    """Cases by name: `case Night`, `cases Peak, Noon and Night`.
-
-    names : at least one
-
-    Returns : words
-    """
-    return f"case {names[0]}" if len(names) == 1 else f"cases {', '.join(names[:-1])} and {names[-1]}"
 
 
 def _told(finding: Finding, solved: Flag) -> Finding:

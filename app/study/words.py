@@ -65,6 +65,16 @@ def list_of(drawing: Drawing, ids: Sequence[str], last: str = "and") -> str:
     return told[0] if len(told) == 1 else ", ".join(told[:-1]) + f" {last} " + told[-1]
 
 
+def among(names: Sequence[str]) -> str:
+    """Cases by name: `case Night`, `cases Peak, Noon and Night`.
+
+    names : at least one
+
+    Returns : words
+    """
+    return f"case {names[0]}" if len(names) == 1 else f"cases {', '.join(names[:-1])} and {names[-1]}"
+
+
 def slip(stated: float, other: float) -> str:
     """The likely slip behind two voltages that should agree: kV for V, or phase for line volts.
 

@@ -78,6 +78,7 @@ def stage(qtbot, drawing: Drawing, size: tuple[int, int] = (1200, 760), look: st
     session, theme = Session(drawing), Theme()
     theme.wear(look)
     solving, attention = Solving(session), Attention(session)
+    attention.case_shown.connect(solving.look)
     window = QWidget()
     shared = (session, solving, attention, theme)
     made = Stage(

@@ -165,7 +165,7 @@ def test_a_drag_shows_changes_since_it_began_and_nothing_jumps(bench):
 def test_stale_figures_look_grey(bench):
     one = bench(FERNHOLLOW)
     fresh = one.image()
-    one.solving.stale = True
+    one.solving._aged = True
     one.solving.went_stale.emit()
     assert one.image() != fresh
     one.solve()

@@ -21,6 +21,14 @@ class Answer:
 
     drawing: Drawing
     status: Status = Status.SOLVED
+    cases = ("As drawn",)
+
+    def solved(self, case):
+        return self.status is Status.SOLVED
+
+    @property
+    def solved_cases(self):
+        return (0,) if self.solved(0) else ()
 
     @property
     def tap(self):
