@@ -228,6 +228,7 @@ class Card(QScrollArea):
             self.lines.show_findings(findings_about(told, self._ids) if self._ids else [])
         if isinstance(self._page, ElementPage) and self._ids:
             self._page.show_reach(*reach(drawing, outcome, self._ids[0]))
+            self._page.show_ledger(() if outcome is None else outcome.assumptions)
         self.now.setVisible(bool(self.now.rows))
         self._rules[0].setVisible(bool(self.now.rows))
         self._rules[1].setVisible(not self.lines.isHidden())

@@ -1,8 +1,7 @@
 """The fields of one element, or of several of one kind at once."""
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from functools import reduce
-from typing import Any
 
 from PySide6.QtCore import Signal
 
@@ -27,8 +26,11 @@ from app.panels.phase_row import PhaseRow
 from app.panels.profile_row import ProfileRow
 from app.panels.spacing_row import SpacingRow
 from app.panels.special_rows import DemandRow, TapRow
+from app.study.outcome import Assumption
 
+StandIns = Mapping[str, assumed.Blank | Assumption]
 NOT_GIVEN = "not given"
+FOLLOW_THE_NODE = ("reference_v", "rated_v")
 LESS_ASKED = {  # shown below the results
     "earth_1_ohm", "earth_2_ohm", "earth_ohm", "fault_degc", "zero_resistance_ohm_per_km",
     "return_resistance_ohm_per_km", "zero_reactance_ohm_per_km",
@@ -48,6 +50,7 @@ class ElementPage(Page):
         super().__init__(theme)
         self.kind = KINDS[kind]
         self.ids: tuple[str, ...] = ()
+        self._ledger: tuple[Assumption, ...] = ()
         self._session = session
         self.more = Page(theme)
         fields = [f for f in fields_of(self.kind).values() if f.name != "name"]
@@ -105,7 +108,7 @@ class ElementPage(Page):
         elements = [drawing.elements[i] for i in self.ids if i in drawing.elements]
         if not elements:
             return
-        stand_ins = {b.field: b for b in assumed.blank(elements[0], nominal(drawing, self.ids[0]))}
+        stand_ins = self._stand_ins(elements[0], nominal(drawing, self.ids[0]))
         if self.fold.page.rows:
             self.fold.follow(drawing, elements)
         for name, row in self.rows.items():
@@ -129,7 +132,7 @@ class ElementPage(Page):
         constant = bool(usual) or any(getattr(element, "profile", "") == CONSTANT for element in elements)
         row.offer(list(drawing.profiles), f"as usual: {usual}" if usual else "constant 100 %", constant)
 
-    def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: dict[str, Any]) -> None:
+    def _show(self, row: FieldRow, name: str, elements: Sequence[Element], stand_ins: StandIns) -> None:
         values = [getattr(element, name) for element in elements]
         value, field = values[0], row.field
         if name in FOLLOWING:
@@ -160,6 +163,17 @@ class ElementPage(Page):
         if level is None:
             return "as fed", ""
         return written(level.volts), level.how if level.assumed else ""
+
+    def show_ledger(self, assumptions: Iterable[Assumption]) -> None:
+        """Volts that were put in place of blanks: the study knows between which wires an element hangs."""
+        told = tuple(a for a in assumptions if a.id in self.ids[:1] and a.field in FOLLOW_THE_NODE)
+        if told != self._ledger:
+            self._ledger = told
+            self.refresh()
+
+    def _stand_ins(self, element: Element, volts: float) -> StandIns:
+        found: dict[str, assumed.Blank | Assumption] = {b.field: b for b in assumed.blank(element, volts)}
+        return found | {a.field: a for a in self._ledger if a.id == self.ids[0]}
 
     def show_reach(self, letters: str, system: str) -> None:
         """Which phases reach the elements shown."""

@@ -8,8 +8,8 @@ from PySide6.QtTest import QTest
 
 from app.model import edits
 from app.model.drawing import Drawing
-from app.model.figures import amps, percent, volts
-from app.model.kinds import Busbar, Load, Supply, Transformer
+from app.model.figures import amps, percent, stated, volts
+from app.model.kinds import Busbar, Load, Motor, Supply, Transformer
 from app.panels.asked import Asked
 from app.panels.results import rows
 
@@ -189,4 +189,26 @@ def test_a_single_phase_unit_offers_its_phases(qtbot):
     at = stage(qtbot, camp(T1=unit))
     at.attention.select(("T1",))
     assert not row(at, "phases").isHidden()
+    at.solving.stop()
+
+
+def test_the_volts_that_stand_in_a_blank_box_are_those_of_the_list_of_assumed_values(qtbot):
+    drawing = Drawing(
+        elements={
+            "B1": Busbar(), "S1": Supply(node="B1", nominal_v=208.0),
+            "L1": Load(node="B1", demand_kva=1.0, phases="B"),
+            "L2": Load(node="B1", demand_kva=1.0, phases="AB"),
+            "M1": Motor(node="B1", rated_kw=1.0, phases="C"),
+        }
+    )  # fmt: skip
+    at = stage(qtbot, drawing)
+    for id, field in (("L1", "reference_v"), ("L2", "reference_v"), ("M1", "rated_v")):
+        at.attention.select((id,))
+        ledger = {(a.id, a.field): a.value for a in at.solving.outcome.assumptions}
+        assert row(at, field).editor.placeholderText() == stated(ledger[id, field])
+    at.attention.select(("L1",))
+    assert row(at, "reference_v").editor.placeholderText() == "120.089"
+    QTest.mouseClick(row(at, "phases").chips["CA"], LEFT)
+    at.solving.settle()
+    assert row(at, "reference_v").editor.placeholderText() == "208"
     at.solving.stop()
