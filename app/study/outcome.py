@@ -55,7 +55,8 @@ class BranchState:
     loss_kvar: float
     loaded_percent: float  # nan where no rating is given
     drop_percent: float  # voltage lost along it, % of nominal of each end; negative is a rise
-    resistance_ohm: float  # at operating temperature, parallel runs merged; transformer: seen at winding 2
+    resistance_ohm: float  # at operating temperature, parallel runs merged, of one phase, or of both wires of
+    # a two-wire system; transformer: seen at winding 2
     reactance_ohm: float
     notch: float  # where the tap of a transformer or a regulator stands; nan for other branches
 

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
+from app.model.levels import TWO_WIRE
 from app.study.flows import forward_of, notches_of, through_of
 from app.study.layout import Layout, arrays_of
 from app.study.memory import Columns
@@ -57,7 +58,7 @@ def wire_branches(
     has = _has(layout, rows, onward)
     shown = np.where(has, amps, np.nan)
     start_a, end_a = _most(has, at_start), _most(has, at_end)
-    ohms = _ohms(layout, rows)
+    ohms = _ohms(layout, rows, phases)
     entering = through_of(onward, start_s, end_s)
     known = ~np.isnan(start_s)
     columns = {
@@ -125,9 +126,10 @@ def _slots(bits: list[int]) -> NDArray[np.bool_]:
     return (found[:, None] >> np.arange(4) & 1).astype(bool)[..., None]
 
 
-def _ohms(layout: Layout, rows: Rows) -> Complex:
+def _ohms(layout: Layout, rows: Rows, nodes: Table[NodeWires]) -> Complex:
     """(branch,) impedance of a phase of a line without what it shares with the others, as stated or Z1; of
-    one alone without what it shares with its neutral; of a transformer seen at winding 2."""
+    one alone without what it shares with its neutral; of a two-wire system out and back, Zpp − 2 ZpN + ZNN;
+    of a transformer seen at winding 2."""
     conductors, network = rows.conductors, rows.network
     assert conductors is not None
     found = np.full(len(layout.branches), complex(np.nan, np.nan))
@@ -139,7 +141,10 @@ def _ohms(layout: Layout, rows: Rows) -> Complex:
     own = np.einsum("ijj->i", phases)
     shared = (phases.sum(axis=(1, 2)) - own) / np.maximum(count - 1, 1)
     shared = np.where(count == 1, (z[:, :3, N] * runs).sum(axis=1), shared)
-    found[rows.lines] = np.where(count > 0, (own - shared) / np.maximum(count, 1), complex(np.nan, np.nan))
+    each = (own - shared) / np.maximum(count, 1)
+    system = nodes.column("system")[arrays_of(layout).start[rows.lines]]
+    each = np.where(system == TWO_WIRE, own - 2 * shared + z[:, N, N], each)
+    found[rows.lines] = np.where(count > 0, each, complex(np.nan, np.nan))
     return found
 
 
