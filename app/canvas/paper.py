@@ -40,7 +40,8 @@ class Paper(QGraphicsScene):
         self.owed: dict[str, None] = {}  # ids whose figures are still to be written, in order
         self._laid = Drawing()
         self._shown: Shown | None = None
-        self._wired = False
+        self._told: tuple[list[Any], ...] = ()  # of phases, by the outcome shown
+        self._reread: set[str] = set()  # ids read since then
         self._leaving: list[QGraphicsItem] = []
         self._swept = QTimer(self, singleShot=True, interval=0)
         self._swept.timeout.connect(self._leaving.clear)
@@ -50,7 +51,7 @@ class Paper(QGraphicsScene):
 
     def lay_out(self, drawing: Drawing) -> None:
         """Show another drawing."""
-        self._shown = None
+        self._shown, self._told = None, ()
         for id in list(self.items_by_id):
             self._take_off(id)
         self.lay(drawing, drawing.elements)
@@ -80,6 +81,7 @@ class Paper(QGraphicsScene):
 
     def _read(self, id: str) -> bool:
         item, element = self.items_by_id[id], self._laid.elements[id]
+        self._reread.add(id)
         covered = item.boundingRect()
         item.read(self._laid)
         remarked = item.say_phases(self._phases(id))
@@ -152,21 +154,25 @@ class Paper(QGraphicsScene):
         for table in tables:
             self._show_standings(table, case, worst)
         self._show_flows(outcome.branches, case)
-        marked = self._show_phases(outcome.wires is not None)
+        marked = self._show_phases(phase_words.told(outcome.wires, case))
         self.owed = {id: None for table in tables for id in table.ids if id in self.items_by_id}
         return marked | self._write(list(self.owed) if sight is None else self._owed_in(sight))
 
-    def _show_phases(self, wired: bool) -> set[str]:
+    def _show_phases(self, told: tuple[list[Any], ...]) -> set[str]:
         """Mark the phases that reach each element, where they differ; the ids of marks that changed."""
         assert self._shown is not None
-        before, self._wired = self._wired, wired
-        if not (wired or before):
+        before, self._told = self._told, told
+        fresh, self._reread = self._reread, set()
+        if not (told or before):
             return set()
-        changed = set()
-        for id, item in self.items_by_id.items():
-            element = self._laid.elements.get(id)
-            if isinstance(element, Branch | Attachment) and item.say_phases(self._shown.phases(id, element)):
-                changed.add(id)
+        changed, same = set(), told == before
+        for id, element in self._laid.elements.items():
+            if same and id not in fresh and not isinstance(element, Transformer):
+                continue
+            item = self.items_by_id.get(id)
+            if item is not None and isinstance(element, Branch | Attachment):
+                if item.say_phases(self._shown.phases(id, element)):
+                    changed.add(id)
         return changed
 
     def _show_standings(self, table: Table[Any], case: int, worst: Mapping[str, Standing]) -> None:

@@ -9,6 +9,7 @@ from app.canvas.phase_mark import Phases
 from app.model import figures
 from app.model.kinds import Attachment, Branch, Line, Transformer
 from app.model.rephasing import has_phases
+from app.study.outcome import Wired
 
 HOTS = {"A": "L1", "B": "L2"}
 SPLIT = "split-phase"
@@ -42,6 +43,15 @@ def reaching(element: Branch | Attachment, has: str, system: str) -> Phases | No
     letters = [named(letter, system) for letter in phases] + (["N"] if "N" in has else [])
     text = (" " if system == SPLIT else "").join(letters)
     return Phases(text, len(phases), "N" in has, said is not None)
+
+
+def told(wires: Wired | None, case: int) -> tuple[list[Any], ...]:
+    """All that the marks of phases say of conductors; of a transformer it also hangs on which side is fed."""
+    if wires is None:
+        return ()
+    tables = ((wires.nodes, "system"), (wires.branches, "phases"), (wires.attachments, "phases"))
+    columns = ((table.ids, table.column(name)) for table, name in tables)
+    return tuple([*ids, *(c if c.ndim == 1 else c[:, case]).tolist()] for ids, c in columns)
 
 
 def conductors(row: Any, element: object) -> str:

@@ -80,15 +80,18 @@ def stretches(drawing: Drawing, routes: Routes, spots: dict[str, QPointF]) -> li
     """Every branch as a polyline between the spots, those that feed a node first; a transformer is a step."""
     made = []
     for stop in routes.stops.values():
-        if stop.parent not in spots or stop.id not in spots:
-            continue
-        ends = spots[stop.parent], spots[stop.id]
-        made.append(Stretch(stop.feeder, stop.id, _points(drawing, stop.feeder, *ends, 0.5)))
+        if stop.parent in spots and stop.id in spots:
+            made.append(stretch(drawing, stop, spots[stop.parent], spots[stop.id]))
     for k, tie in enumerate(routes.ties):
         if tie.near in spots and tie.far in spots:
             ends = spots[tie.near], spots[tie.far]
             made.append(Stretch(tie.branch, "", _points(drawing, tie.branch, *ends, BESIDE[k % 2])))
     return made
+
+
+def stretch(drawing: Drawing, stop: Stop, before: QPointF, at: QPointF) -> Stretch:
+    """The branch that feeds a node, from the spot of the node before it."""
+    return Stretch(stop.feeder, stop.id, _points(drawing, stop.feeder, before, at, 0.5))
 
 
 def _points(drawing: Drawing, branch: str, a: QPointF, b: QPointF, share: float) -> tuple[QPointF, ...]:

@@ -12,7 +12,7 @@ from app.canvas.phase_words import SLOTS, named
 from app.model.drawing import Drawing
 from app.model.figures import level
 from app.model.kinds import Transformer
-from app.panels.strip_axes import Axes, Stretch, stretches
+from app.panels.strip_axes import Axes, Stretch, stretch
 from app.panels.strip_routes import Routes, Stop
 from app.panels.words import LEFT
 from app.study.outcome import Outcome
@@ -70,18 +70,18 @@ def _joined(
             continue
         before = spots[_fed_by(drawing, outcome, stop, letter)].get(stop.parent, lowest.get(stop.parent))
         if before is not None:
-            part = Routes({stop.parent: routes.stops[stop.parent], stop.id: stop}, ())
-            ends = {stop.parent: before, stop.id: own[stop.id]}
-            made += [s for s in stretches(drawing, part, ends) if s.node == stop.id]
+            made.append(stretch(drawing, stop, before, own[stop.id]))
     return made
 
 
 def _fed_by(drawing: Drawing, outcome: Outcome, stop: Stop, letter: str) -> str:
     """The phase before a branch that goes on as this one behind it."""
     unit = drawing.elements.get(stop.feeder)
+    if not isinstance(unit, Transformer):
+        return letter
     assert outcome.wires is not None
     systems = {outcome.wires.nodes.at(node).system for node in (stop.parent, stop.id)}
-    if not isinstance(unit, Transformer) or len(systems) == 1:
+    if len(systems) == 1:
         return letter
     return "A" if unit.phases == "all" else unit.phases[0]
 
@@ -109,11 +109,12 @@ def paint_phases(
             ink = QColor(palette.soft if stale else getattr(palette, COLOURS[curve.letter]))
             if not strong:
                 ink.setAlphaF(0.4)
-            for stretch in curve.stretches:
-                if (stretch.node in main) is strong:
-                    broad = stretch.branch in lit
-                    painter.setPen(_pen(curve.letter, ink, (3.6 if broad else 2.0) if strong else 1.2))
-                    painter.drawPolyline(list(stretch.points))
+            plain = _pen(curve.letter, ink, 2.0 if strong else 1.2)
+            broad = _pen(curve.letter, ink, 3.6) if strong else plain
+            for run in curve.stretches:
+                if (run.node in main) is strong:
+                    painter.setPen(broad if run.branch in lit else plain)
+                    painter.drawPolyline(run.points)
     for curve in curves:
         ink = QColor(palette.soft if stale else getattr(palette, COLOURS[curve.letter]))
         led = {s.node for s in curve.stretches if s.node in main}  # not where it only starts to one side
