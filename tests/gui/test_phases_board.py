@@ -12,7 +12,10 @@ from app.canvas.paper import Paper
 from app.canvas.symbol_shapes import glyph
 from app.canvas.symbol_units import variant
 from app.model import edits
-from app.model.kinds import Transformer
+from app.model.drawing import Drawing
+from app.model.kinds import Busbar, Cable, Joint, Load, Supply, Transformer
+from app.study import run
+from solver.status import Status
 
 
 @pytest.fixture
@@ -179,3 +182,48 @@ def test_the_gauge_points_at_the_highest_phase_too_where_it_is_another(bench):
     reading = bench.board._shown.reading("LODGE")
     assert math.isclose(reading.upper, reading.shown + 3.0)
     assert bench.board._shown.reading("N1").upper is None
+
+
+def _street() -> Drawing:
+    elements = {
+        "B1": Busbar(),
+        "S1": Supply(node="B1", nominal_v=11000.0),
+        "B2": Busbar(x=200.0),
+        "T1": Transformer(start="B1", end="B2", rating_kva=100.0),
+    }
+    for k, phases in enumerate(("all", "BC", "all", "C", "all")):
+        elements[f"J{k}"] = Joint(x=400.0 + 200 * k)
+        start = f"J{k - 1}" if k else "B2"
+        elements[f"C{k}"] = Cable(start=start, end=f"J{k}", length_m=50.0, phases=phases)
+        elements[f"L{k}"] = Load(node=f"J{k}", demand_kva=2.0)
+    return Drawing(elements=elements)
+
+
+def test_marks_that_were_carried_along_are_those_of_a_board_drawn_afresh(qapp):
+    made = Bench(_street())
+    made.answer = run
+    steps = (
+        lambda d: edits.set_tap(d, "T1", 1),
+        lambda d: edits.change(d, "C1", length_m=70.0),  # states BC, and all of it is there
+        lambda d: edits.change(d, "C3", length_m=70.0),
+        lambda d: edits.change(d, "C1", phases="AB"),  # what follows has no C, and L3 nothing
+        lambda d: edits.change(d, "C3", phases="B"),
+        lambda d: edits.set_tap(d, "T1", -1),
+        lambda d: edits.change(d, "C1", phases="all"),
+        lambda d: edits.change(d, "C3", phases="all"),  # all alike again
+    )
+    seen = set()
+    for step in steps:
+        assert made.session.edit("Step", step) == ""
+        made.solving.settle_solve()
+        made.board.write_rest()
+        drawing = made.session.drawing
+        outcome, afresh = made.solving.outcome, Paper(made.board.look)
+        assert outcome.status is Status.SOLVED, outcome.sentence
+        afresh.lay_out(drawing)
+        afresh.show_outcome(drawing, outcome, 0, None)
+        marks = {i: item.phases for i, item in made.board.items_by_id.items()}
+        assert marks == {i: item.phases for i, item in afresh.items_by_id.items()}
+        seen.add(tuple(mark.letters if mark else "" for mark in marks.values()))
+    assert len(seen) >= 4
+    made.solving.stop()
