@@ -81,9 +81,9 @@ class TapLadder(QGraphicsObject):
 
     @property
     def fed_winding(self) -> int:
-        """1, or 2 where the power comes in at winding 2."""
+        """1, or 2 where a supply holds winding 2."""
         outcome = self._solving.outcome
-        return outcome.fed_winding(self.id, self._board.attention.case) if outcome is not None else 1
+        return outcome.supply_winding(self.id, self._board.attention.case) if outcome is not None else 1
 
     def words(self, notch: int) -> str:
         """`10 725 V −2.5 %`."""

@@ -277,5 +277,5 @@ def tap_words(drawing: Drawing, outcome: Outcome | None, id: str, case: int) -> 
     assert isinstance(element, Transformer)
     if element.regulates != "no":
         return "begins here and steps by itself"
-    fed = outcome.fed_winding(id, case) if outcome is not None else 1
+    fed = outcome.supply_winding(id, case) if outcome is not None else 1
     return taps.words(element, element.tap, fed)

@@ -63,5 +63,5 @@ class TapDrag:
     def _way(self, id: str) -> int:
         """+1 where a higher notch raises the voltage of the side that is fed through the transformer."""
         transformer, outcome = self._hold.transformer, self._solving.outcome
-        fed = outcome.fed_winding(id, self._attention.case) if outcome is not None else 1
+        fed = outcome.supply_winding(id, self._attention.case) if outcome is not None else 1
         return 1 if transformer is not None and taps.effect(transformer, 1, fed) == "raises" else -1

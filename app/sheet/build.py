@@ -13,7 +13,7 @@ from app.sheet.phase_lines import branch_wires
 from app.sheet.regulators import setting_words
 from app.sheet.subject import FROM_TO, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
-from app.sheet.transformers import fed_winding
+from app.sheet.transformers import supply_winding
 from app.sheet.wires import amps, each, spread
 from app.study.changers import is_changer
 
@@ -190,7 +190,7 @@ def _settings(subject: Subject) -> SheetTable:
             "words": text(
                 setting_words(subject, id, t)
                 if is_changer(t)
-                else taps.words(t, t.tap, fed_winding(subject, id))
+                else taps.words(t, t.tap, supply_winding(subject, id))
             ),
         }
         for id, t in _transformers(subject).items()

@@ -62,10 +62,10 @@ def transformer_tables(subject: Subject) -> list[SheetTable]:
     return by_element(subject, plan, [_entry(subject, i, e) for i, e in found.items()])
 
 
-def fed_winding(subject: Subject, id: str) -> int:
-    """The winding that power enters; 1 where nothing feeds it."""
+def supply_winding(subject: Subject, id: str) -> int:
+    """The winding that a supply holds; 1 where nothing feeds it."""
     cases = subject.outcome.solved_cases or range(len(subject.cases))
-    return max(subject.outcome.fed_winding(id, case) for case in cases)
+    return max(subject.outcome.supply_winding(id, case) for case in cases)
 
 
 def _entry(subject: Subject, id: str, t: Transformer) -> Entry:
@@ -96,7 +96,7 @@ def data_cells(subject: Subject, id: str, t: Transformer) -> Cells:
             "tapped": given(t.tapped),
             "notch": given(t.tap),
             "tap_percent": Cell(percent, f"{{notch}}*{t.notch_percent!r}"),
-            "words": text(taps.words(t, t.tap, fed_winding(subject, id))),
+            "words": text(taps.words(t, t.tap, supply_winding(subject, id))),
         }
     )
 

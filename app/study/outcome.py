@@ -252,6 +252,7 @@ class Outcome:
     fault_basis: tuple[tuple[str, str], ...] = ()  # items and sentences: how they were worked out
     wires: Wired | None = None  # phases and neutral; None where all phases are alike
     case_status: tuple[Status, ...] = ()  # of each case
+    supply_sides: dict[str, int] = field(default_factory=dict)  # transformer id on a ring -> that winding
 
     def solved(self, case: int) -> bool:
         """Whether a case has an operating point, and so figures."""
@@ -267,6 +268,10 @@ class Outcome:
         if id not in self.branches:
             return 1
         return 1 if self.branches.at(id, min(case, len(self.cases) - 1)).forward else 2
+
+    def supply_winding(self, id: str, case: int) -> int:
+        """The winding of a transformer that a supply holds, 1 or 2; a tap moves the volts of the other."""
+        return self.supply_sides.get(id) or self.fed_winding(id, case)
 
     def verdict(self, case: int) -> Verdict:
         """The worst in one case; a note where nothing is judged."""

@@ -26,6 +26,7 @@ from app.study.start_findings import start_findings
 from app.study.start_table import StartTable
 from app.study.starts import start_table, starters
 from app.study.structure import structure_findings
+from app.study.trace import supply_sides
 from app.study.words import tally_words
 from app.study.zones import Zones, zones_of
 from solver import Solution, Status, Trouble
@@ -120,6 +121,7 @@ def _outcome(
         fault_basis=faulted.basis,
         wires=tables.wires,
         case_status=statuses,
+        supply_sides=supply_sides(layout) if layout.rings else {},
     )
 
 

@@ -94,6 +94,31 @@ def _joined(node: int, near: dict[int, Ends], is_unit: list[bool]) -> Iterable[i
     return found
 
 
+def supply_sides(layout: Layout) -> dict[str, int]:
+    """Which winding of each transformer lies nearer to a supply, by the transformers between.
+
+    layout : the graph of the drawing, traced
+
+    Returns : dict of transformer id to winding, 1 or 2; without those that lie between zones equally near
+    Source : common practice, no source
+    """
+    ends = {unit: (layout.zone[layout.start[unit]], layout.zone[layout.end[unit]]) for unit in layout.units}
+    beside: dict[int, list[int]] = {}
+    for one, other in ends.values():
+        beside.setdefault(one, []).append(other)
+        beside.setdefault(other, []).append(one)
+    fed = [root for root, supply in zip(layout.roots, layout.supply_of, strict=True) if supply != NONE]
+    depth = {layout.zone[root]: 0 for root in fed}
+    waiting = list(depth)
+    for zone in waiting:
+        for other in beside.get(zone, ()):
+            if other not in depth:
+                depth[other] = depth[zone] + 1
+                waiting.append(other)
+    known = {unit: (depth[a], depth[b]) for unit, (a, b) in ends.items() if a in depth and b in depth}
+    return {layout.branch_ids[unit]: 1 if a < b else 2 for unit, (a, b) in known.items() if a != b}
+
+
 def _rings(layout: Layout, ends: dict[int, tuple[int, int]], feeder: dict[int, int]) -> None:
     supply = dict(zip(layout.roots, layout.supply_of, strict=True))
     for branch in sorted(ends.keys() - feeder.values()):
