@@ -3,7 +3,7 @@
 from msgspec import Struct
 
 from app.model import wire_data
-from app.model.conductors import has_neutral, is_hung
+from app.model.conductors import is_hung, wires_of
 from app.model.drawing import Drawing
 from app.model.kinds import Attachment, Branch, Line, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
@@ -123,7 +123,7 @@ def conductors_of(layout: Layout, zones: Zones) -> Conductors:
 def _of_branch(branch: Branch) -> tuple[object, ...]:
     """All of a branch that bears on conductors."""
     if isinstance(branch, Line):
-        return branch.phases, branch.neutral, has_neutral(branch)
+        return branch.phases, branch.neutral, wires_of(branch)
     if isinstance(branch, Transformer):
         return branch.build, branch.phases, branch.vector_group, branch.v1_v, branch.v2_v
     return (type(branch),)

@@ -32,10 +32,9 @@ def pole(start, end, **fields):
     return OverheadLine(
         start=start,
         end=end,
-        neutral="earthed along",
         resistance_ohm_per_km=0.4,
         reactance_ohm_per_km=0.38,
-        **{"length_m": 3000.0, "temperature_degc": 20.0, **fields},
+        **{"neutral": "earthed along", "length_m": 3000.0, "temperature_degc": 20.0, **fields},
     )
 
 
