@@ -86,7 +86,7 @@ class Controlled:
     notch : (regulator, batch) int
     rest : (regulator, batch) each a Rest
     reactive : (generator, batch) float [VA] made
-    held : (generator, batch) bool, the generator holds its setting; else it is at a limit
+    held : (generator, batch) bool, the generator holds its setting; else it is at a limit, or stands still
     """
 
     solution: Solution
@@ -139,8 +139,8 @@ class _Rounds:
     def __init__(
         self, network: Network, forest: Forest, regulators: Sequence[Regulator], generators: Sequence[Holding]
     ) -> None:
-        settings = [np.size(r.setting) for r in regulators] + [np.size(g.setting) for g in generators]
-        self.width = max(network.batch, *settings, 1)
+        settings = [r.setting for r in regulators] + [v for g in generators for v in (g.setting, g.on)]
+        self.width = max(network.batch, *(np.size(values) for values in settings), 1)
         self.network, self.forest = network, forest
         self.regulators, self.generators = regulators, generators
         self.notch = np.array([[r.start] * self.width for r in regulators], dtype=np.intp)
@@ -179,7 +179,9 @@ class _Rounds:
         if self.regulators:
             alone = [r.conductor if r.alone else None for r in self.regulators]
             network = retapped(network, rows, windings, factor, alone)
-        generators = [replace(g, setting=_at(g.setting, points)) for g in self.generators]
+        generators = [
+            replace(g, setting=_at(g.setting, points), on=_at(g.on, points) > 0) for g in self.generators
+        ]
         return hold(network, self.forest, generators, warm)
 
     def _moves(self, solution: Solution, points: Index) -> Index:

@@ -33,6 +33,7 @@ class Holding:
     lowest : [VA] least reactive power made, of all conductors; negative where it takes some
     highest : [VA] most
     slots : conductors of a machine among four, (0, 1, 2) or one of them; those with output where None
+    on : (batch or 1,) bool, false where it stands still and makes no reactive power
     """
 
     load: int
@@ -40,6 +41,7 @@ class Holding:
     lowest: float
     highest: float
     slots: tuple[int, ...] | None = None
+    on: ArrayLike = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,7 +50,7 @@ class Held:
 
     solution : Solution
     reactive : (generator, batch) float [VA] made
-    holds : (generator, batch) bool, whether it holds its setting; else it is at a limit
+    holds : (generator, batch) bool, whether it holds its setting; else it is at a limit, or stands still
     """
 
     solution: Solution
@@ -70,14 +72,17 @@ def hold(
     Returns : Held
     Source : common practice, no source
     """
-    width = max(network.batch, *(np.size(g.setting) for g in generators), 1)
+    width = max(network.batch, *(max(np.size(g.setting), np.size(g.on)) for g in generators), 1)
     if not generators:
         nothing = np.zeros((0, width))
         return Held(solve(network, forest=forest, warm=warm), nothing, nothing > 0)
     rows = np.array([g.load for g in generators])
     share = _shares(network, generators)
     setting = np.array([np.broadcast_to(np.asarray(g.setting, dtype=float), width) for g in generators])
-    low, high = (np.array([[getattr(g, n)] for g in generators]) for n in ("lowest", "highest"))
+    on = np.array([np.broadcast_to(np.asarray(g.on, dtype=bool), width) for g in generators])
+    low, high = (
+        np.where(on, np.array([[getattr(g, n)] for g in generators]), 0.0) for n in ("lowest", "highest")
+    )
     seen = _seen(network, forest, rows, share, setting[:, :1])
     made = np.clip(np.zeros((rows.size, width)), low, high)
     for _ in range(ROUNDS):
@@ -85,7 +90,7 @@ def hold(
         warm = solution.voltage
         size = _volts(network, rows, share, warm)
         lacks = setting - size
-        free = ~((made <= low) & (lacks < 0)) & ~((made >= high) & (lacks > 0)) & np.isfinite(size)
+        free = on & ~((made <= low) & (lacks < 0)) & ~((made >= high) & (lacks > 0)) & np.isfinite(size)
         if not (free & (np.abs(lacks) > NEAR * setting)).any():
             break
         made = np.clip(made + _steps(seen, free, np.where(free, size * lacks, 0.0)), low, high)

@@ -1,7 +1,7 @@
 """A year, or any long series of operating points: solved block by block, kept as energies and extremes."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -93,7 +93,7 @@ def solve_series(
     progress : called after each block with points done and points in all; stops where it says False
     block : points in a block; as many as stay quick where it is None
     regulators : each a Regulator with one setting for all points
-    generators : each a Holding with one setting for all points, k = 1
+    generators : each a Holding with one setting for all points; on (batch or 1,)
     watch : called after each block with its points, its Solution, and where its controls came to rest, or
         None where there are none
     Returns : Series
@@ -107,7 +107,8 @@ def solve_series(
     for start in range(0, width, size):
         points = np.arange(start, min(start + size, width))
         part = network if points.size == width else pick(network, points)
-        rested = control(part, regulators, generators) if regulators or generators else None
+        running = [replace(g, on=np.broadcast_to(g.on, width)[points]) for g in generators]
+        rested = control(part, regulators, running) if regulators or generators else None
         solution = solve(part, forest=forest) if rested is None else rested.solution
         tally.add(solution, points, lasts[points])
         if watch is not None:

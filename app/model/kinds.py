@@ -328,7 +328,15 @@ class Generator(Attachment, frozen=True, kw_only=True, tag="generator"):
     profile: Followed = ""
     hold_percent: (
         Annotated[
-            float, field("Holds", "% of nominal", gt=0, le=200, help="Volts. Blank: fixed reactive output.")
+            float,
+            field(
+                "Holds",
+                "% of nominal",
+                gt=0,
+                le=200,
+                help="Volts, while it runs: not where a case or its profile has it at 0 %. "
+                "Blank: fixed reactive output.",
+            ),
         ]
         | None
     ) = None

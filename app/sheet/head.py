@@ -144,6 +144,11 @@ RULES = (
         "are within half its bandwidth of its setting, or until its end stop.",
     ),
     (
+        "Generator that holds volts",
+        "Makes the reactive power that holds its node, within its limits. At 0 % in a case, or of its "
+        "profile, it is off and holds nothing; drawn with no output it is a condenser, and holds.",
+    ),
+    (
         "Conductor temperature",
         "R = R20·[1 + α·(θ − 20 °C)] at the stated operating temperature, the same in every case "
         "(IEC 60287-1-1:2006, from memory). R20 is the maker's or the table's value as typed in.",

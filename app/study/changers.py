@@ -4,9 +4,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from msgspec import Struct
+from msgspec.structs import replace as replaced
 from numpy.typing import NDArray
 
 from app.model import assumed
+from app.model.by_case import percent_of
 from app.model.drawing import Drawing
 from app.model.kinds import Branch, Generator, Regulator, Transformer
 from app.study.layout import Layout, arrays_of, is_bare
@@ -33,7 +35,7 @@ class Moved:
     changers : (changer,) branch rows, thrice where each phase steps by itself
     rest : (changer, case) each a controls.Rest
     generators : (generator,) attachment rows
-    holds : (generator, case) bool, holds its volts; else it is at a limit of its reactive power
+    holds : (generator, case) bool, holds its volts, or is off; else it is at a limit of its reactive power
     notch : (changer, case) int
     phases : (changer,) the phase that each measures, such as A; blank where phases are alike, or their mean
     """
@@ -72,12 +74,15 @@ def settled(
     """
     layout.forest = layout.forest or grow(rows.network)
     network, moving = rows.network, moving_of(layout, zones, rows, fixed)
+    on = _running(drawing, layout, moving, network.batch)
+    moving = replaced(moving, holdings=stood_still(moving.holdings, on))
     if isinstance(layout.forest, Trouble) or not moving:
         return rows, solve(network, forest=layout.forest), None
     found = controls.control(network, moving.regulators, moving.holdings)
-    notches, by_phase = _notches(moving, found.notch)
+    notches, by_phase = branch_notches(moving, found.notch)
     rows = replace(rows, network=found.solution.network, notches=notches, phase_notches=by_phase)
-    moved = Moved(moving.changers, found.rest, moving.generators, found.held, found.notch, moving.phases)
+    held = found.held | ~on
+    moved = Moved(moving.changers, found.rest, moving.generators, held, found.notch, moving.phases)
     return rows, found.solution, moved
 
 
@@ -101,8 +106,37 @@ class Moving(Struct, frozen=True):
         return bool(self.changers or self.generators)
 
 
-def _notches(moving: Moving, found: NDArray[np.intp]) -> tuple[dict[int, Index], dict[int, Real]]:
-    """By branch row: of regulators that step phase by phase the notch furthest from nought, and all three."""
+def stood_still(holdings: tuple[Holding, ...], on: NDArray[np.bool_]) -> tuple[Holding, ...]:
+    """Generators that hold volts only where they run: at nought percent of what is drawn one is off.
+
+    One that is drawn with no output runs all the same, as a condenser.
+
+    holdings : (generator,) each a Holding
+    on : (generator, batch) bool, it runs
+
+    Returns : (generator,) each a Holding
+    """
+    return tuple(replace(one, on=own) for one, own in zip(holdings, on, strict=True))
+
+
+def _running(drawing: Drawing, layout: Layout, moving: Moving, width: int) -> NDArray[np.bool_]:
+    """(generator, batch) whether it runs, cases over and over."""
+    cases = drawing.cases * max(1, width // len(drawing.cases))
+    found = [
+        [percent_of(case, layout.attachment_ids[row], layout.attachments[row]) != 0 for case in cases]
+        for row in moving.generators
+    ]
+    return np.array(found, dtype=bool).reshape(len(found), len(cases))
+
+
+def branch_notches(moving: Moving, found: NDArray[np.intp]) -> tuple[dict[int, Index], dict[int, Real]]:
+    """Where changers stand: of those that step phase by phase the notch furthest from nought, and all three.
+
+    moving : what moves
+    found : (changer, batch) int, notches
+
+    Returns : by branch row (batch,) int; and (3, batch) float, of those that step phase by phase
+    """
     notches: dict[int, Index] = {}
     by_phase: dict[int, Real] = {}
     for row, own, notch in zip(moving.changers, moving.regulators, found, strict=True):

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from app.model.drawing import Case, Drawing
 from app.model.following import followed, in_use
 from app.model.kinds import Motor
-from app.study.changers import moving_of
+from app.study.changers import Moving, moving_of, stood_still
 from app.study.collapse import collapse_of
 from app.study.layout import Layout, lay_out
 from app.study.outcome import Finding, Verdict
@@ -88,7 +88,7 @@ def run_year(drawing: Drawing, progress: Progress | None = None) -> YearOutcome:
             told,
             block,
             regulators=moving.regulators,
-            generators=moving.holdings,
+            generators=stood_still(moving.holdings, _running(drawing, layout, moving, points, chosen)),
             watch=watch,
         )
         going = series.done == chosen.size
@@ -128,6 +128,15 @@ def through(
         load_power=network.load_power * factor(rows.loads),
         source_voltage=network.source_voltage * factor(rows.sources),
     )
+
+
+def _running(
+    drawing: Drawing, layout: Layout, moving: Moving, points: Points, chosen: NDArray[np.intp]
+) -> NDArray[np.bool_]:
+    """(generator, chosen) whether it runs: not at 0 % of its profile."""
+    names = [followed(drawing, layout.attachments[row]) for row in moving.generators]
+    found = [points.values[name][chosen] != 0 if name else np.ones(chosen.size, bool) for name in names]
+    return np.array(found, dtype=bool).reshape(len(found), chosen.size)
 
 
 def _collapse(

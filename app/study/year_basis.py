@@ -28,7 +28,8 @@ def basis_of(drawing: Drawing, points: Points, stepping: bool) -> tuple[str, ...
     if stepping:
         said.append(
             "Tap changers, regulators and generators that hold volts come to rest in every point anew, "
-            "from their position as drawn."
+            "from their position as drawn. A generator whose profile is at 0 % is off and holds no volts; "
+            "one that is drawn with no output is a condenser, and does."
         )
     return tuple(said)
 

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Limits
 from app.model.kinds import Generator, Load, Motor, Supply, Transformer
-from app.study.changers import Moving
+from app.study.changers import Moving, branch_notches
 from app.study.checking import margin_of
 from app.study.layout import Layout
 from app.study.results import Tables, tables_of
@@ -73,8 +73,8 @@ class Tally:
         self.unsolved |= {int(points[i]): solution.status[i] for i in bad}
         hours = np.where(solved, self.points.hours[points], 0.0)
         self.hours += float(hours.sum())
-        notches = {} if rested is None else dict(zip(self.moving.changers, rested.notch, strict=True))
-        rows = replace(self.rows, network=solution.network, notches=notches)
+        at, by_phase = ({}, {}) if rested is None else branch_notches(self.moving, rested.notch)
+        rows = replace(self.rows, network=solution.network, notches=at, phase_notches=by_phase)
         tables = tables_of(self.layout, self.zones, rows, solution, points.size)
         self._nodes(tables, points, hours)
         self._branches(tables, points, hours)
@@ -122,15 +122,16 @@ class Tally:
         self.closure = max(self.closure, float(balance.closure[solved].max(initial=0.0)))
 
     def _stepping(self, rested: Controlled, solved: NDArray[np.bool_], hours: Real, lasts: Real) -> None:
-        for number, row in enumerate(self.moving.changers):
-            notch = rested.notch[number][solved]
+        changers = np.array(self.moving.changers, dtype=np.intp)
+        for row in dict.fromkeys(self.moving.changers):
+            own = changers == row  # several, where each phase steps by itself
+            notch = rested.notch[own][:, solved]
             if notch.size:
                 self.notch["least"][row] = np.fmin(self.notch["least"][row], notch.min())
                 self.notch["most"][row] = np.fmax(self.notch["most"][row], notch.max())
-            at_stop = np.array([one is Rest.AT_STOP for one in rested.rest[number]])
-            self.sum["stopped"][row] += float(at_stop @ hours)
-            hunting = np.array([one is Rest.HUNTING for one in rested.rest[number]])
-            self.sum["hunting"][row] += float(hunting @ lasts)
+            rest = rested.rest[own]
+            self.sum["stopped"][row] += float((rest == Rest.AT_STOP).any(axis=0) @ hours)
+            self.sum["hunting"][row] += float((rest == Rest.HUNTING).any(axis=0) @ lasts)
 
     def gaps(self) -> tuple[Gap, ...]:
         """The points without an answer, those in a row that say the same together."""

@@ -9,12 +9,13 @@ import msgspec
 import numpy as np
 import pytest
 from study_layouts import changed, drawing, line, meshed_town, town, two_nodes
+from unlike_layouts import pole
 
 from app.__main__ import main
 from app.model import edits
 from app.model.drawing import Case, Drawing, Limits
 from app.model.file import load, save
-from app.model.kinds import Busbar, Generator, Load, Motor, Regulator, Supply, Transformer
+from app.model.kinds import Busbar, Generator, Joint, Load, Motor, Regulator, Supply, Transformer
 from app.model.profiles import Profile
 from app.model.shapes import shape
 from app.study import run
@@ -447,3 +448,51 @@ def test_a_changer_that_hunts_is_named_with_its_hours():
     assert [f.ids for f in hunting] == [("V1",)]
     assert hunting[0].value == hours
     assert year.solved_h == 8760 - hours
+
+
+def each_phase():
+    """A regulator that steps each phase by itself, each phase loaded otherwise."""
+    base = drawing(
+        B1=Busbar(), S1=Supply(node="B1", nominal_v=12470.0), P1=Joint(), P2=Joint(), P3=Joint(),
+        O1=pole("B1", "P1", length_m=9e3), O2=pole("P2", "P3"),
+        V1=Regulator(start="P1", end="P2", measures="each"),
+        L1=Load(node="P3", demand_kva=900.0, phases="A"), L2=Load(node="P3", demand_kva=120.0, phases="B"),
+        L3=Load(node="P3", demand_kva=300.0, phases="C"),
+    )  # fmt: skip
+    return following(base, loads=profile(*np.linspace(10, 190, 24)))
+
+
+def test_notches_of_a_year_span_all_phases_and_its_stops_are_counted_once():
+    base = each_phase()
+    year, singles = run_year(base).branches.at("V1"), [at_point(base, h) for h in range(24)]
+    stood = [s.wires.branches.at("V1") for s in singles if s.status is Status.SOLVED]
+    assert len(stood) > 12
+    every = [n for s in stood for n in (s.a_notch, s.b_notch, s.c_notch)]
+    assert (year.least_notch, year.most_notch) == (min(every), max(every))
+    assert min(every) < max(s.b_notch for s in stood) < max(every)
+    narrow = edits.change(base, "V1", steps_down=0, steps_up=1)
+    at_stop = [any(f.check == "end stop" for f in at_point(narrow, h).findings) for h in range(24)]
+    solved = [at_point(narrow, h).status is Status.SOLVED for h in range(24)]
+    assert 0 < sum(at_stop) < 24
+    hours = run_year(narrow).branches.at("V1").hours_at_stop
+    assert hours == 365 * sum(a and s for a, s in zip(at_stop, solved, strict=True))
+
+
+def test_a_generator_at_nought_percent_is_off_and_a_condenser_is_not():
+    base = changed(regulated(), V1=None, B3=None, C2=line("B2", "B4"))
+    plant = Generator(node="B4", output_kw=8.0, hold_percent=99.0, q_min_kvar=-90.0, q_max_kvar=90.0)
+    lit = following(changed(base, G1=plant), G1=profile(*[0] * 9, *[50] * 15))
+    year, dark = run_year(lit), run_year(changed(base, G1=None))
+    assert year.course.lowest_percent[:9] == pytest.approx(dark.course.lowest_percent[:9], rel=1e-12)
+    assert year.attachments.at("G1").kwh == pytest.approx(15 * 365 * 4.0)
+    assert not any(f.check == "reactive limit" for f in year.findings)
+    cases = (Case(name="Night", generation_percent=0.0), Case(name="Day", generation_percent=50.0))
+    outcome = run(msgspec.structs.replace(changed(base, G1=plant), cases=cases))
+    assert outcome.attachments.at("G1", 0).kvar == 0
+    without = run(changed(base, G1=None))
+    assert outcome.nodes.at("B4", 0).percent == pytest.approx(without.nodes.at("B4").percent, rel=1e-12)
+    assert outcome.nodes.at("B4", 1).percent == pytest.approx(99.0, abs=1e-6)
+    assert not any(f.check == "reactive limit" for f in outcome.findings)
+    idle = run(changed(base, G1=msgspec.structs.replace(plant, output_kw=0.0)))
+    assert idle.nodes.at("B4").percent == pytest.approx(99.0, abs=1e-6)
+    assert any("0 % is off" in words for words in year.basis)
