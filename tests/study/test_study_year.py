@@ -493,6 +493,6 @@ def test_a_generator_at_nought_percent_is_off_and_a_condenser_is_not():
     assert outcome.nodes.at("B4", 0).percent == pytest.approx(without.nodes.at("B4").percent, rel=1e-12)
     assert outcome.nodes.at("B4", 1).percent == pytest.approx(99.0, abs=1e-6)
     assert not any(f.check == "reactive limit" for f in outcome.findings)
-    idle = run(changed(base, G1=msgspec.structs.replace(plant, output_kw=0.0)))
+    idle = run(changed(base, G1=msgspec.structs.replace(plant, output_kw=0.0, q_max_kvar=900.0)))
     assert idle.nodes.at("B4").percent == pytest.approx(99.0, abs=1e-6)
     assert any("0 % is off" in words for words in year.basis)
