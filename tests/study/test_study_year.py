@@ -459,23 +459,24 @@ def each_phase():
         L1=Load(node="P3", demand_kva=900.0, phases="A"), L2=Load(node="P3", demand_kva=120.0, phases="B"),
         L3=Load(node="P3", demand_kva=300.0, phases="C"),
     )  # fmt: skip
-    return following(base, loads=profile(*np.linspace(10, 190, 24)))
+    return following(base, loads=profile(*np.linspace(10, 190, 8), hours=1095.0))
 
 
 def test_notches_of_a_year_span_all_phases_and_its_stops_are_counted_once():
     base = each_phase()
-    year, singles = run_year(base).branches.at("V1"), [at_point(base, h) for h in range(24)]
+    year, singles = run_year(base).branches.at("V1"), [at_point(base, h) for h in range(8)]
     stood = [s.wires.branches.at("V1") for s in singles if s.status is Status.SOLVED]
-    assert len(stood) > 12
+    assert len(stood) > 4
     every = [n for s in stood for n in (s.a_notch, s.b_notch, s.c_notch)]
     assert (year.least_notch, year.most_notch) == (min(every), max(every))
     assert min(every) < max(s.b_notch for s in stood) < max(every)
     narrow = edits.change(base, "V1", steps_down=0, steps_up=1)
-    at_stop = [any(f.check == "end stop" for f in at_point(narrow, h).findings) for h in range(24)]
-    solved = [at_point(narrow, h).status is Status.SOLVED for h in range(24)]
-    assert 0 < sum(at_stop) < 24
-    hours = run_year(narrow).branches.at("V1").hours_at_stop
-    assert hours == 365 * sum(a and s for a, s in zip(at_stop, solved, strict=True))
+    ends = [at_point(narrow, h) for h in range(8)]
+    at_stop = [
+        any(f.check == "end stop" for f in one.findings) for one in ends if one.status is Status.SOLVED
+    ]
+    assert 0 < sum(at_stop) < len(at_stop)
+    assert run_year(narrow).branches.at("V1").hours_at_stop == 1095 * sum(at_stop)
 
 
 def test_a_generator_at_nought_percent_is_off_and_a_condenser_is_not():
