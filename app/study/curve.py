@@ -16,6 +16,7 @@ from app.study.checking import margin_of
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.results import tables_of
+from app.study.rise_findings import rise_of
 from app.study.rows import Rows, rows_of
 from app.study.structure import structure_findings
 from app.study.unit_ports import port_of, ratio_of
@@ -79,11 +80,13 @@ def tap_curve(drawing: Drawing, transformer_id: str) -> TapCurve:
     loss = np.where(solved, tables.balance.loss_kw.reshape(solved.shape), np.nan)
     below = _fed_through(layout, branch)
     known = solved.any(axis=0) if solved.any() else np.ones(cases, dtype=bool)
-    low, high, drop = (
-        np.where(solved, tables.nodes.column(name)[below].reshape(-1, *solved.shape), np.nan)[..., known]
-        for name in ("percent", "high_percent", "drop_percent")
+    column, rise = tables.nodes.column, rise_of(drawing, layout, zones, rows, tables)
+    whole = [column(name) for name in ("percent", "high_percent", "drop_percent")]
+    low, high, drop, lifted = (
+        np.where(solved, figures[below].reshape(-1, *solved.shape), np.nan)[..., known]
+        for figures in (*whole, np.zeros_like(whole[0]) if rise is None else rise)
     )
-    made = _curve(unit, notches, loss, (low, high), _holds(drawing, low, high, drop))
+    made = _curve(unit, notches, loss, (low, high), _holds(drawing, low, high, drop, lifted))
     return replaced(made, left_out=tuple(np.flatnonzero(~known).tolist()))
 
 
@@ -141,13 +144,15 @@ def _fed_through(layout: Layout, branch: int) -> NDArray[np.intp]:
     return np.flatnonzero(through)
 
 
-def _holds(drawing: Drawing, low: Real, high: Real, drop: Real) -> NDArray[np.bool_]:
+def _holds(drawing: Drawing, low: Real, high: Real, drop: Real, rise: Real) -> NDArray[np.bool_]:
     limits = drawing.limits
     good = (margin_of(low, limits.low_percent, True) >= 0) & (
         margin_of(high, limits.high_percent, False) >= 0
     )
     if limits.drop_percent is not None:
         good &= margin_of(drop, limits.drop_percent, False) >= 0
+    if limits.rise_percent is not None:  # where there is no answer without generation it is not judged
+        good &= ~(margin_of(rise, limits.rise_percent, False) < 0)
     return np.asarray(good.all(axis=(0, 2)))
 
 

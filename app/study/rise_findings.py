@@ -37,15 +37,9 @@ def rise_findings(
     Returns : list of Finding; none where no limit is set or nothing generates
     Source : the limit is the drawing's; the change of voltage is taken as VDE-AR-N 4105 does (from memory)
     """
-    limit = drawing.limits.rise_percent
-    makes = np.array([isinstance(layout.attachments[row], Generator) for row in rows.loads], dtype=bool)
-    if limit is None or not makes.any():
+    limit, rise = drawing.limits.rise_percent, rise_of(drawing, layout, zones, rows, tables)
+    if limit is None or rise is None:
         return []
-    still = rows.network.load_power * ~makes[:, None, None]
-    solution = solve(replace(rows.network, load_power=still), forest=layout.forest)
-    without = tables_of(layout, zones, rows, solution, len(cases))
-    unsolved = np.array([s is not Status.SOLVED for s in solution.status])
-    rise = np.where(unsolved, np.nan, _rise(tables, without))
     ids = tables.nodes.ids
 
     def subject(row: int, case: int, value: str) -> str:
@@ -54,6 +48,28 @@ def rise_findings(
     near = limit * (1 - NEAR_SHARE)
     check = Check("voltage rise", ids, rise, limit, False, near, subject, "the most allowed is")
     return findings_of(check, drawing.limits.rise_name or SET_HERE, cases)
+
+
+def rise_of(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, tables: Tables) -> Real | None:
+    """How far all generators together lift every node; nothing where no limit is set or nothing generates.
+
+    drawing : the drawing, for its limit
+    layout : its graph
+    zones : its voltage levels
+    rows : of the solver, at rest
+    tables : percent (node, batch) [% of nominal] as solved
+
+    Returns : (node, batch) float [% of nominal], nan where a point has no answer without its generators
+    Source : see rise_findings
+    """
+    makes = np.array([isinstance(layout.attachments[row], Generator) for row in rows.loads], dtype=bool)
+    if drawing.limits.rise_percent is None or not makes.any():
+        return None
+    still = rows.network.load_power * ~makes[:, None, None]
+    solution = solve(replace(rows.network, load_power=still), forest=layout.forest)
+    without = tables_of(layout, zones, rows, solution, tables.nodes.column("percent").shape[1])
+    unsolved = np.array([s is not Status.SOLVED for s in solution.status])
+    return np.where(unsolved, np.nan, _rise(tables, without))
 
 
 def _rise(tables: Tables, without: Tables) -> Real:

@@ -6,7 +6,7 @@ from study_nodal import Nodal
 from app.model import edits
 from app.model.drawing import Case, Drawing, Limits
 from app.model.kinds import Busbar, Cable, Generator, Load, Supply, Transformer
-from app.study import run
+from app.study import run, tap_curve
 from app.study.outcome import Verdict
 
 
@@ -65,3 +65,18 @@ def test_phase_by_phase_it_is_that_of_the_phase_that_rises_most():
     off = run(edits.set_case(lone, 0, generation_percent=0.0)).wires.nodes.at("B3", 0)
     on = run(lone).wires.nodes.at("B3", 0)
     assert finding.value == pytest.approx(100 * (on.b_v - off.b_v) / on.base_v, rel=1e-9)
+
+
+def test_the_safe_notches_of_a_ladder_keep_the_limit_of_the_rise():
+    """A notch up lowers the amperes of the same power, and so the rise in percent of nominal."""
+
+    def worst(drawing):
+        return max(f.value for f in rises(drawing))
+
+    tight = farm(rise_percent=0.1)
+    each = [worst(edits.set_tap(tight, "T1", notch)) for notch in range(-2, 3)]
+    limit = (max(each) + min(each)) / 2
+    curve, free = tap_curve(farm(rise_percent=limit), "T1"), tap_curve(farm(), "T1")
+    assert free.holds.all()
+    assert curve.holds.tolist() == [value <= limit for value in each]
+    assert 0 < curve.holds.sum() < 5
