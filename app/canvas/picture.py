@@ -142,9 +142,10 @@ def _head(drawing: Drawing, outcome: Outcome | None, case: int) -> tuple[Line, .
 
 
 def _verdict(outcome: Outcome) -> Run:
-    """How the checks of all cases came out."""
-    words = tally_words(outcome.findings)
-    worst = min((f.verdict for f in outcome.findings), key=lambda v: v.rank, default=Verdict.NOTE)
+    """How the checks came out, in all cases that are solved."""
+    judged = [f for f in outcome.findings if f.verdict is not Verdict.BLOCKS]
+    words = tally_words(judged)
+    worst = min((f.verdict for f in judged), key=lambda v: v.rank, default=Verdict.NOTE)
     sign, style = _TALLY.get(worst, ("", Style.QUIET))
     return Run(sign + words, style)
 
