@@ -11,8 +11,9 @@ from app.model.figures import percent
 from app.study.layout import Layout
 from app.study.outcome import Finding, Verdict
 from app.study.rows import Rows
+from app.study.wire_findings import NO_NEUTRAL, on_lost_neutral
 from app.study.wire_volts import against, base_volts, phase_name, phase_volts
-from app.study.words import tell
+from app.study.words import list_of, tell
 from app.study.zones import Zones
 from solver import Share, Solution, Status, largest_share, solve
 from solver.share import pick, scaled
@@ -71,6 +72,11 @@ def _collapse(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, most: 
     if most.share >= 1 or math.isinf(most.share):
         words = f"The sweep did not settle{where}, though the load seems bearable."
         return Collapse(None, None, _barring(drawing, "not settled", (), words, case))
+    if most.share == 0 and rows.conductors is not None:
+        at, hung = on_lost_neutral(layout, rows.conductors)
+        if hung:
+            words = _lost(drawing, at, hung, where)
+            return Collapse(0.0, None, _barring(drawing, NO_NEUTRAL, (*at, *hung), words, case))
     if most.share == 0:
         words = f"No operating point{where}, not even with all loads off: the infeed or the charging is more "
         words += "than the layout can carry."
@@ -80,6 +86,15 @@ def _collapse(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, most: 
     words += _lowest(drawing, layout, zones, rows, most.share, case)
     ids = (branch,) if branch else ()
     return Collapse(most.share, branch, _barring(drawing, "no operating point", ids, words, case))
+
+
+def _lost(drawing: Drawing, at: list[str], hung: list[str], where: str) -> str:
+    verb, they = ("hangs", "it states") if len(hung) == 1 else ("hang", "they state")
+    return (
+        f"No operating point{where}: {list_of(drawing, hung)} {verb} on a lost neutral, whose volts nothing "
+        f"holds against the power {they}. Lead a neutral from a supply or star point to "
+        f"{list_of(drawing, at)}."
+    )
 
 
 def _barring(drawing: Drawing, check: str, ids: tuple[str, ...], words: str, case: int) -> Finding:

@@ -119,6 +119,25 @@ def _hung(drawing: Drawing, layout: Layout, conductors: Conductors) -> list[Find
 
 def _lost(drawing: Drawing, layout: Layout, conductors: Conductors) -> list[Finding]:
     """Loads on a neutral that no supply or star point reaches: they share the volts between phases."""
+    at, hung = on_lost_neutral(layout, conductors)
+    if not hung:
+        return []
+    words = (
+        f"No neutral leads from a supply or star point to {list_of(drawing, at)}: {list_of(drawing, hung)} "
+        f"{'hangs' if len(hung) == 1 else 'hang'} on a lost neutral. The lighter loaded phase rises, towards "
+        "line voltage; close the neutral before anything is energised."
+    )
+    return [Finding(NO_NEUTRAL, Verdict.FAILS, (*at, *hung), words)]
+
+
+def on_lost_neutral(layout: Layout, conductors: Conductors) -> tuple[list[str], list[str]]:
+    """Where a neutral stands that no supply or star point reaches, and what hangs on it.
+
+    layout : the graph
+    conductors : of every node and attachment
+
+    Returns : ids of nodes and of attachments; none of either where nothing hangs there
+    """
     nodes = [
         node
         for node, drawn in enumerate(conductors.drawn)
@@ -129,15 +148,7 @@ def _lost(drawing: Drawing, layout: Layout, conductors: Conductors) -> list[Find
         for row, leads in conductors.leads.items()
         if layout.at[row] in nodes and any(N in pair for pair in leads.pairs)
     ]
-    if not hung:
-        return []
-    at = [layout.node_ids[node] for node in nodes]
-    words = (
-        f"No neutral leads from a supply or star point to {list_of(drawing, at)}: {list_of(drawing, hung)} "
-        f"{'hangs' if len(hung) == 1 else 'hang'} on a lost neutral. The lighter loaded phase rises, towards "
-        "line voltage; close the neutral before anything is energised."
-    )
-    return [Finding(NO_NEUTRAL, Verdict.FAILS, (*at, *hung), words)]
+    return ([layout.node_ids[node] for node in nodes], hung) if hung else ([], [])
 
 
 def node_words(drawing: Drawing, nodes: Table[NodeWires], low: bool) -> Subject:

@@ -2,11 +2,12 @@
 
 import pytest
 from msgspec.structs import replace
-from study_layouts import changed, line
+from study_layouts import changed, drawing, line
 from unlike_layouts import feeder, street
 
-from app.model.kinds import Joint, Load, Transformer
+from app.model.kinds import Busbar, Generator, Joint, Load, Supply, Transformer
 from app.study import run
+from app.study.outcome import Verdict
 from solver.status import Status
 
 
@@ -99,3 +100,30 @@ def test_a_core_is_judged_by_its_own_volts():
     assert whole.value == pytest.approx(three.high_percent)
     assert three.high_percent > three.percent
     assert found.value == pytest.approx(100 * fed / 7200.0)
+
+
+@pytest.mark.parametrize(
+    "hung",
+    [
+        {"G1": Generator(node="B3", output_kw=3.0, phases="A")},
+        {
+            "L1": Load(node="B3", demand_kva=6.0, phases="A"),
+            "L2": Load(node="B3", demand_kva=3.0, phases="B"),
+        },
+    ],
+)
+def test_where_a_lost_neutral_bars_the_operating_point_that_is_said_first(hung):
+    base = drawing(
+        B1=Busbar(), S1=Supply(node="B1"), C1=line("B1", "B2", neutral="none"), B2=Busbar(),
+        C2=line("B2", "B3"), B3=Busbar(), **hung,
+    )  # fmt: skip
+    outcome = run(base)
+    assert outcome.status is Status.NO_OPERATING_POINT
+    first = outcome.findings[0]
+    assert first.check == "no neutral"
+    assert first.verdict is Verdict.BLOCKS
+    assert first.ids == ("B2", "B3", *hung)
+    assert "on a lost neutral" in first.sentence
+    assert not any("infeed" in finding.sentence for finding in outcome.findings)
+    whole = run(changed(base, C1=line("B1", "B2")))
+    assert whole.status is Status.SOLVED
