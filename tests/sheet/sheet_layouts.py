@@ -22,6 +22,7 @@ from app.model.kinds import (
 HOSTILE = '=HYPERLINK("http://example.invalid","Barn feeder")'
 NIGHT = Case(name="Quiet night, high intake", supply_percent=109.0, load_percent=10.0, generation_percent=0.0)
 PEAK = Case(name="Full load, low intake")
+HEAVY = Case(name="Heavy", load_percent=1000.0, motor_percent=1000.0)  # more than the layouts can carry
 SHORT = 216.2 * math.sqrt(3) / 400 * 100  # 216.2 V phase, of 400 V between lines
 
 

@@ -5,6 +5,7 @@ from pathlib import Path
 import openpyxl
 import pytest
 from sheet_layouts import (
+    HEAVY,
     NIGHT,
     PEAK,
     blocked,
@@ -27,6 +28,7 @@ pytestmark = needs_spreadsheet
 LAYOUTS = {
     "pair.xlsx": (pair(), 120),
     "pair by night.xlsx": (pair(PEAK, NIGHT), 280),
+    "pair, one case unsolved.xlsx": (pair(PEAK, HEAVY, NIGHT), 280),
     "three cables.xlsx": (three_cables(), 60),
     "two wires.xlsx": (two_wire(), 60),
     "meshed.xlsx": (meshed(), 80),
@@ -36,6 +38,7 @@ LAYOUTS = {
     "faulty.xlsx": (faulty(), 160),
     "each for itself.xlsx": (each_for_itself(), 280),
     "camp.xlsx": (camp(), 270),
+    "camp, one case unsolved.xlsx": (camp(HEAVY, EVENING, MORNING), 500),
     "camp by morning.xlsx": (camp(EVENING, MORNING), 500),
     "few phases.xlsx": (units(), 220),
     "few phases by morning.xlsx": (units(EVENING, MORNING), 420),
