@@ -20,6 +20,11 @@ class Put(NamedTuple):
     basis: str
 
 
+def figure(value: float | Put) -> float:
+    """The figure itself, whether it was given or put in its place."""
+    return value.value if isinstance(value, Put) else value
+
+
 def fault_value(element: Element, field: str, nominal_v: float, frequency_hz: float = 50.0) -> float | Put:
     """The given value of a field that fault currents need, or what is put in its place."""
     given = getattr(element, field)

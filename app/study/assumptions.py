@@ -9,7 +9,7 @@ from app.study.conductors import Conductors
 from app.study.layout import Layout, arrays_of
 from app.study.outcome import Assumption
 from app.study.wire_assumptions import wire_assumptions
-from app.study.zones import Zones, level_assumptions
+from app.study.zones import Zones, level_assumptions, nominal_of
 
 Made = tuple[Assumption, ...]
 _last: tuple[list[str], list[Element], list[float], list[Made]] = ([], [], [], [])
@@ -41,7 +41,7 @@ def assumptions_of(
 
 def _blank(layout: Layout, zones: Zones, conductors: Conductors | None) -> Made:
     global _last
-    nominal = zones.nominal_v[arrays_of(layout).zone]
+    nominal = nominal_of(layout, zones)
     ids = layout.branch_ids + layout.attachment_ids
     elements: list[Element] = [*layout.branches, *layout.attachments]
     hung = nominal[arrays_of(layout).at]

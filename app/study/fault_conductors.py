@@ -15,7 +15,7 @@ from app.study.conductors import Conductors
 from app.study.fault_wire_rows import Way, fault_network, slowed_network
 from app.study.graph import NONE, Layout
 from app.study.unit_wires import OPEN
-from app.study.wires import PER_PHASE, PHASORS, N, slots
+from app.study.wires import PER_PHASE, PHASORS, N, flags
 from app.study.zones import Zones
 from solver.fault_wires import Blocks, impedance_blocks, wire_faults
 from solver.network import Network
@@ -168,9 +168,7 @@ class _Asked:
         if way not in self.made:
             self.made[way] = fault_network(self.drawing, self.layout, self.zones, self.factors, way)
         network, conductors = self.made[way]
-        has = np.zeros((len(self.nodes), N + 1), dtype=bool)
-        for row, node in enumerate(self.nodes):
-            has[row, slots(conductors.node[node] & conductors.drawn[node])] = True
+        has = flags(np.array(conductors.node)[self.nodes] & np.array(conductors.drawn)[self.nodes])
         return impedance_blocks(network if slow == 1 else slowed_network(network, slow), self.nodes), has
 
     def volts(self, largest: bool) -> Complex:

@@ -88,7 +88,7 @@ def fault_rows(drawing: Drawing, layout: Layout, zones: Zones) -> FaultRows:
     graph = arrays_of(layout)
     nominal, two_wire = zones.nominal_v[graph.zone], zones.two_wire[graph.tree]
     c_max, c_min = voltage_factors(nominal, drawing.limits)
-    made = _Made(drawing, layout, nominal, two_wire, c_max, c_min)
+    made = _Made(drawing, nominal, two_wire, c_max, c_min)
     plain = plain_branches(layout, zones)
     for row, branch in enumerate(layout.branches):
         if not graph.live[graph.start[row]] or isinstance(branch, Switch) and not branch.closed:
@@ -160,7 +160,6 @@ class _Made:
     def __init__(
         self,
         drawing: Drawing,
-        layout: Layout,
         nominal: Real,
         two_wire: NDArray[np.bool_],
         c_max: Real,

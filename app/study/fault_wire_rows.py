@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from app.model import assumed
 from app.model.drawing import Case, Drawing
-from app.model.fault_data import LOW_V, Put, fault_value, star_earth_ohm
+from app.model.fault_data import LOW_V, fault_value, figure, star_earth_ohm
 from app.model.kinds import Branch, Line, OverheadLine, Regulator, Supply, Switch, Transformer
 from app.model.levels import SPLIT, THREE_PHASE
 from app.model.wire_data import is_star_star, neutral_of
@@ -72,7 +72,7 @@ def _branch(drawing: Drawing, layout: Layout, zones: Zones, row: int, c_max: Rea
     if isinstance(branch, Line):
         zone = layout.zone[layout.start[row]]
         single, nominal = zones.system[zone] != THREE_PHASE, float(zones.nominal_v[zone])
-        hot = COLD if way.largest else _given(fault_value(branch, "fault_degc", nominal))
+        hot = COLD if way.largest else figure(fault_value(branch, "fault_degc", nominal))
         branch = replace(branch, temperature_degc=hot)
         return _returning(branch, nominal, single, drawing.frequency_hz) if way.earth else branch
     if not isinstance(branch, Transformer):
@@ -90,10 +90,6 @@ def _branch(drawing: Drawing, layout: Layout, zones: Zones, row: int, c_max: Rea
     return made
 
 
-def _given(value: float | Put) -> float:
-    return value.value if isinstance(value, Put) else value
-
-
 def _returning(run: Line, nominal_v: float, single: bool, frequency_hz: float) -> Line:
     """The line with its return conductor where its neutral was."""
     if isinstance(run, OverheadLine) and run.hung_at_m:
@@ -104,7 +100,7 @@ def _returning(run: Line, nominal_v: float, single: bool, frequency_hz: float) -
     if kind == "earthed along":
         return run
     r0, x0 = (
-        _given(fault_value(run, f"zero_{name}_ohm_per_km", nominal_v, frequency_hz))
+        figure(fault_value(run, f"zero_{name}_ohm_per_km", nominal_v, frequency_hz))
         for name in ("resistance", "reactance")
     )
     return replace(
@@ -127,7 +123,7 @@ def _behind(layout: Layout, factors: tuple[Real, Real], way: Way) -> Complex:
         z = supply_z(supply, float(c), way.largest)
         if supply.wires == THREE_PHASE:
             open_ = supply.z0_ratio is None and supply.nominal_v > LOW_V
-            z0 = z * (BLOCKED if open_ else _given(fault_value(supply, "z0_ratio", supply.nominal_v)))
+            z0 = z * (BLOCKED if open_ else figure(fault_value(supply, "z0_ratio", supply.nominal_v)))
             found[n, :3, :3, 0] = line.symmetric(z, z0)
         else:
             legs = 2 if supply.wires == SPLIT else 1
@@ -148,8 +144,8 @@ def supply_z(supply: Supply, c: float, largest: bool) -> complex:
     Source : IEC 60909-0:2016, 6.2
     """
     name, volts = f"fault_level_{'max' if largest else 'min'}_mva", supply.nominal_v
-    level = _given(fault_value(supply, name, volts)) * 1e6
-    ratio = _given(fault_value(supply, "xr", volts))
+    level = figure(fault_value(supply, name, volts)) * 1e6
+    ratio = figure(fault_value(supply, "xr", volts))
     return complex(fault.feeder(volts, level / (3**0.5 * volts), c, ratio))
 
 

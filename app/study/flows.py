@@ -11,23 +11,11 @@ from app.study.memory import Memory
 from app.study.outcome import AttachmentState, Balance, BranchState, Table
 from app.study.rows import Rows
 from app.study.sums import size, total
-from app.study.zones import Zones
 from solver import Solution
 
 FAINT = 1e-9  # of the largest power on any ring, below which a flow has no direction
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
-
-
-def nominal_of(layout: Layout, zones: Zones) -> Real:
-    """Nominal voltage of the zone of every node.
-
-    layout : the graph
-    zones : nominal_v (zone,) float [V]
-
-    Returns : (node,) float [V]
-    """
-    return zones.nominal_v[arrays_of(layout).zone]
 
 
 _lengths: Memory[Branch, float] = Memory(lambda b: b.length_m if isinstance(b, Line) else 0.0)

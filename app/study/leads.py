@@ -9,8 +9,10 @@ from numpy.typing import ArrayLike, NDArray
 from app.model.kinds import Attachment, Load, Motor
 from app.model.levels import TWO_WIRE
 from app.study.wires import ABC, PER_PHASE, bits, slots
+from solver.wires import EARTH
 
 Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
 THIRDS = (1 / 3, 1 / 3, 1 / 3)
 ROUND = ((0, 1), (1, 2), (2, 0))
 
@@ -92,14 +94,12 @@ def leads_of(hung: Attachment, system: str, reach: int, back: int | None) -> Lea
     wanted = here if chosen == "all" else bits(chosen)
     missing = wanted & ~here
     phases = slots(wanted)
-    if chosen != "all" and len(phases) == 2:
+    closed = isinstance(hung, Motor) or getattr(hung, "connection", "star") == "delta" or back is None
+    if len(phases) == 3 and closed:
+        return Leads(ROUND, _shares(hung), (1.0, 1.0, 1.0))
+    if len(phases) == 2 and (closed or chosen != "all"):
         pair = (2, 0) if phases == [0, 2] else (phases[0], phases[1])
         return Leads((pair,), (1.0,), (1.0,), missing)
-    closed = isinstance(hung, Motor) or getattr(hung, "connection", "star") == "delta"
-    if len(phases) == 3 and (closed or back is None):
-        return Leads(ROUND, _shares(hung), (1.0, 1.0, 1.0))
-    if len(phases) == 2 and (closed or back is None):
-        return Leads(((2, 0) if phases == [0, 2] else (phases[0], phases[1]),), (1.0,), (1.0,))
     if back is None:
         return Leads((), (), (), missing, no_back=True)
     shares = _shares(hung) if len(phases) == 3 else (1 / max(len(phases), 1),) * len(phases)
@@ -112,6 +112,21 @@ def _shares(hung: Attachment) -> tuple[float, ...]:
         return THIRDS
     a, b = hung.share_a_percent / 100, hung.share_b_percent / 100
     return a, b, 1 - a - b
+
+
+def in_leads(drawn: Complex, to: NDArray[np.intp]) -> Complex:
+    """Amperes into each conductor's lead: what one brings the other takes back.
+
+    drawn : (load, k, batch) complex [A] into the lead that begins at each conductor; nan counts as none
+    to : (load, k) int, conductor at which that lead ends, -1 for earth
+
+    Returns : (load, k, batch) complex [A]
+    """
+    drawn = np.where(np.isnan(drawn), 0, drawn)
+    total = drawn.copy()
+    row, slot = np.nonzero(to != EARTH)
+    np.subtract.at(total, (row, to[row, slot]), drawn[row, slot])
+    return total
 
 
 def across(stated_v: ArrayLike, nominal_v: ArrayLike, over: ArrayLike, alone: ArrayLike) -> Real:

@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from app.model import assumed
 from app.model.drawing import Drawing
-from app.model.fault_data import Put, fault_value
+from app.model.fault_data import fault_value, figure
 from app.model.kinds import Branch, Line, OverheadLine
 from app.model.levels import THREE_PHASE, TWO_WIRE
 from app.model.wire_data import neutral_of, neutral_value
@@ -16,7 +16,7 @@ from app.study.conductors import Conductors
 from app.study.graph import Layout, arrays_of
 from app.study.memory import Columns
 from app.study.overhead import matrix_of
-from app.study.wires import ABC, letters
+from app.study.wires import ABC, flags, letters
 from app.study.zones import Zones
 from solver import line
 
@@ -58,7 +58,7 @@ def line_matrices(
         z = np.zeros((len(rows), K, K, 1), dtype=np.complex128)
         y = np.zeros_like(z)
     moved = [n for n, run in enumerate(runs) if run is not were[n] or told[n] != told_then[n]]
-    has = (bits[:, None] >> np.arange(K) & 1).astype(bool)
+    has = flags(bits)
     if moved:
         z, y = z.copy(), y.copy()
         z[moved], y[moved] = _of_lines(
@@ -129,7 +129,7 @@ def matrices(
     along = [n for n, kind in enumerate(kinds) if kind == "earthed along"]
     if along:
         zero = [
-            [_plain(fault_value(runs[n], f, levels[n][0], frequency_hz)) for f in ZERO_FIELDS] for n in along
+            [figure(fault_value(runs[n], f, levels[n][0], frequency_hz)) for f in ZERO_FIELDS] for n in along
         ]
         r0, x0 = np.array(zero).T
         back = line.series(r0 - r20[along], x0, length[along], 20.0, alpha[along], many[along])
@@ -144,12 +144,8 @@ def matrices(
 def _stated_row(run: Line) -> tuple[float, ...]:
     hot, c = assumed.value(run, "temperature_degc"), assumed.value(run, "capacitance_uf_per_km")
     own = run.resistance_ohm_per_km, run.reactance_ohm_per_km, run.length_m
-    neutral = (_plain(neutral_value(run, name)) for name in NEUTRAL_FIELDS)
+    neutral = (figure(neutral_value(run, name)) for name in NEUTRAL_FIELDS)
     return *own, hot, line.ALPHA[run.conductor], run.side_by_side, c, *neutral
 
 
 _stated: Columns[Line] = Columns(_stated_row, 9)
-
-
-def _plain(value: float | Put) -> float:
-    return value.value if isinstance(value, Put) else value

@@ -94,9 +94,7 @@ def sequence_of(
     return own - mutual, zero
 
 
-def loop_of(
-    run: OverheadLine, frequency: float, nominal_v: float = math.nan, temperature: float = math.nan
-) -> complex:
+def loop_of(run: OverheadLine, frequency: float, temperature: float = math.nan) -> complex:
     """Impedance per kilometre of one run out and back in a two-wire system.
 
     Out on the first wire and back on the last: Z = Z11 - 2 Z12 + Z22. A single wire, or one beside a neutral
@@ -104,7 +102,6 @@ def loop_of(
 
     run : states its spacing
     frequency : float [Hz]
-    nominal_v : float [V], see matrix_of
     temperature : float [°C] of both wires; nan: as it operates
 
     Returns : complex [ohm/km]
@@ -132,7 +129,7 @@ def series_of(
     Source : see solver.carson
     """
     if two_wire:
-        per_km = loop_of(run, frequency, nominal_v, temperature)
+        per_km = loop_of(run, frequency, temperature)
     else:
         per_km = sequence_of(run, frequency, nominal_v, temperature)[0]
     return per_km * run.length_m / 1e3 / run.side_by_side

@@ -53,7 +53,7 @@ def working_of(run: OverheadLine, frequency: float, nominal_v: float, two_wire: 
     through_earth = single and (len(it.letters) == 1 or kind == ALONG)
     z, zero = sequence_of(run, frequency, nominal_v)
     if two_wire:
-        z = loop_of(run, frequency, nominal_v)
+        z = loop_of(run, frequency)
     if through_earth:
         over, under = carson.earth_depth(frequency, it.soil_ohm_m), it.gmr_m[:1]
     elif single:

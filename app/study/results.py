@@ -9,21 +9,13 @@ from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
-from app.study.flows import (
-    balance_of,
-    forward_of,
-    nominal_of,
-    notches_of,
-    roles,
-    routes_of,
-    through_of,
-)
+from app.study.flows import balance_of, forward_of, notches_of, roles, routes_of, through_of
 from app.study.layout import Layout, arrays_of
 from app.study.memory import Columns
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table, Wired
 from app.study.rows import Rows
 from app.study.sums import size
-from app.study.zones import Zones
+from app.study.zones import Zones, nominal_of
 from solver import Solution
 
 Real = NDArray[np.float64]

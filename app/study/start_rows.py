@@ -16,7 +16,7 @@ from app.model.levels import SPLIT, TWO_WIRE
 from app.study.layout import Layout, arrays_of
 from app.study.rows import Rows
 from app.study.values import columns, load_values, motor_row, scaled_values
-from app.study.zones import Zones
+from app.study.zones import Zones, nominal_of
 from solver import Network, Solution
 from solver.line import symmetric
 from solver.share import pick
@@ -56,7 +56,7 @@ def _running(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> tupl
     if not any(isinstance(a, Motor) and a.state == "starting" for a in hung):
         return network.load_power, network.load_reference, network.load_mix
     run: list[Any] = [msgspec.structs.replace(a, state="running") if _starts(a) else a for a in hung]
-    ids, nominal = [layout.attachment_ids[i] for i in rows.loads], nominal_of(layout, zones, rows.loads)
+    ids, nominal = [layout.attachment_ids[i] for i in rows.loads], nominal_at(layout, zones, rows.loads)
     power, reference, mix = load_values(run, ids, nominal, drawing.cases)
     return *_as_solved(layout, zones, rows, rows.loads, power, reference)[:2], mix
 
@@ -65,7 +65,7 @@ def _starts(hung: Any) -> bool:
     return isinstance(hung, Motor) and hung.state == "starting"
 
 
-def nominal_of(layout: Layout, zones: Zones, hung: Any) -> Real:
+def nominal_at(layout: Layout, zones: Zones, hung: Any) -> Real:
     """Nominal volts where attachments hang.
 
     layout : the graph
@@ -74,8 +74,7 @@ def nominal_of(layout: Layout, zones: Zones, hung: Any) -> Real:
 
     Returns : (attachment,) float [V]
     """
-    graph = arrays_of(layout)
-    return np.nan_to_num(zones.nominal_v[graph.zone[graph.at[hung]]], nan=1.0)
+    return np.nan_to_num(nominal_of(layout, zones)[arrays_of(layout).at[hung]], nan=1.0)
 
 
 def _as_solved(
@@ -85,7 +84,7 @@ def _as_solved(
     if rows.conductors is not None:
         from app.study.wire_rows import loads_between  # loaded by then
 
-        return loads_between(rows.conductors, hung, power, reference, nominal_of(layout, zones, hung))
+        return loads_between(rows.conductors, hung, power, reference, nominal_at(layout, zones, hung))
     at = arrays_of(layout).at[hung]
     one = (power / rows.phases[at, None])[:, None, :]
     return one, (reference / rows.wide[at])[:, None, None], None
@@ -179,7 +178,7 @@ def _starting(
     """A row a motor: what it draws at its start in its own columns, else nothing."""
     cases = len(drawing.cases)
     demands = columns([motor_row(m, True) for m in motors_of(layout, started)], 9)
-    power, reference, mix = scaled_values(demands, nominal_of(layout, zones, started), drawing.cases)
+    power, reference, mix = scaled_values(demands, nominal_at(layout, zones, started), drawing.cases)
     one, reference, to = _as_solved(layout, zones, rows, started, power, reference)
     whole = np.zeros((*one.shape[:-1], len(started) * cases), dtype=np.complex128)
     for number in range(len(started)):

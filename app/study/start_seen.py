@@ -7,13 +7,13 @@ from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.study.layout import Layout, arrays_of
-from app.study.leads import across
+from app.study.leads import across, in_leads
 from app.study.rows import ROOT3, Rows
-from app.study.start_rows import motors_of, nominal_of
+from app.study.start_rows import motors_of, nominal_at
 from app.study.wire_volts import against, base_volts, phase_name, phase_volts
 from app.study.wire_words import conductor
 from app.study.wires import LETTERS, N
-from app.study.zones import Zones
+from app.study.zones import Zones, nominal_of
 from solver import Solution
 from solver.wires import EARTH
 
@@ -63,14 +63,14 @@ def start_seen(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> 
     )
 
 
-def _rated(layout: Layout, zones: Zones, started: list[int]) -> Real:
+def _rated(layout: Layout, started: list[int]) -> Real:
     stated = [np.nan if m.rated_v is None else m.rated_v for m in motors_of(layout, started)]
     return np.array(stated, dtype=np.float64)
 
 
 def _balanced(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen:
     at = arrays_of(layout).at[started]
-    nominal, rated = nominal_of(layout, zones, started), _rated(layout, zones, started)
+    nominal, rated = nominal_at(layout, zones, started), _rated(layout, started)
 
     def nodes(which: Index) -> Callable[[Complex], Real]:
         return lambda volts: np.abs(volts[which]) * rows.wide[which, None, None]
@@ -86,11 +86,10 @@ def _wired(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen
     conductors = rows.conductors
     assert conductors is not None
     reach, kind = np.array(conductors.node, dtype=np.intp), against(layout, zones, conductors)
-    nominal = zones.nominal_v[arrays_of(layout).zone]
-    over = nominal / base_volts(layout, zones, kind)
+    over = nominal_of(layout, zones) / base_volts(layout, zones, kind)
     leads = [conductors.leads[row] for row in started]
     three = np.array([len(found.pairs) == 3 for found in leads], dtype=bool)
-    stated, level = _rated(layout, zones, started), nominal_of(layout, zones, started)
+    stated, level = _rated(layout, started), nominal_at(layout, zones, started)
     rated = [
         float(across(volts, at, found.over[0] if len(found.pairs) == 1 else 1.0, True))
         for volts, at, found in zip(stated, level, leads, strict=True)
@@ -113,12 +112,9 @@ def _wired(layout: Layout, zones: Zones, rows: Rows, started: list[int]) -> Seen
         return seen
 
     def amps(solution: Solution) -> Real:
-        drawn = np.nan_to_num(solution.load_current[-len(started) :])
-        total = drawn.copy()
-        for n, found in enumerate(leads):
-            for one, other in found.pairs:
-                if other != EARTH:
-                    total[n, other] -= drawn[n, one]
+        wires, last = solution.network.wires, slice(-len(started), None)
+        assert wires is not None
+        total = in_leads(solution.load_current[last], wires.load_to[last])
         return np.asarray(np.abs(total).max(axis=1, keepdims=True))
 
     systems = [zones.system[zone] for zone in layout.zone]

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.model import taps
-from app.model.fault_data import Put, star_earth_ohm
+from app.model.fault_data import figure, star_earth_ohm
 from app.model.kinds import Transformer
 from app.model.levels import SPLIT, THREE_PHASE
 from app.model.wire_data import is_star_star, zero_value
@@ -51,7 +51,7 @@ def port_of(unit: Transformer, wires: UnitWires | None, z_at_2: complex, y: Comp
     assert group is not None  # rows are made only of a layout whose groups were checked
     one, two = _windings(unit, group, wires)
     passes = passes_zero(unit, wires)
-    zero = _value(zero_value(unit, passes))
+    zero = figure(zero_value(unit, passes))
     core = None if passes else z_at_2 * zero
     return three_phase(one, two, group[2], v1, v2, z_at_2, iron, core, zero if passes else 1.0)
 
@@ -127,7 +127,3 @@ def _held(ends: tuple[int, int], unit: Transformer, winding: int, fed: int) -> t
 def _corner(unit: Transformer) -> tuple[int, complex] | None:
     """An open delta is earthed at its corner b where an impedance is given, else not at all."""
     return None if unit.earth_2_ohm is None else (1, complex(unit.earth_2_ohm))
-
-
-def _value(given: float | Put) -> float:
-    return given.value if isinstance(given, Put) else given

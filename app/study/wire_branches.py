@@ -13,7 +13,7 @@ from app.study.memory import Columns
 from app.study.outcome import BranchState, BranchWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
 from app.study.unit_wires import rated_current
-from app.study.wires import ABC, N, letters, slots
+from app.study.wires import N, flags, letters, slots
 from solver import Solution
 from solver.sweep import over_conductors
 
@@ -55,7 +55,8 @@ def wire_branches(
     is_unit[rows.units] = True
     fed = np.where(onward[:, None], at_start, at_end)
     amps = np.where(is_unit[:, None], fed, np.maximum(at_start, at_end))
-    has = _has(layout, rows, onward)
+    sides = _side_bits(rows, onward)
+    has = flags(sides)[..., None]
     shown = np.where(has, amps, np.nan)
     start_a, end_a = _most(has, at_start), _most(has, at_end)
     ohms = _ohms(layout, rows, phases)
@@ -78,13 +79,13 @@ def wire_branches(
         "iron_kw": np.where(is_unit, shunt.real, np.where(known, 0.0, np.nan)),
         "loss_kvar": series.imag + shunt.imag,
         "loaded_percent": np.where(known, _loading(layout, rows, at_start, at_end), np.nan),
-        "drop_percent": _drop(layout, rows, onward, nodes, phases),
+        "drop_percent": _drop(layout, onward, nodes, phases),
         "resistance_ohm": ohms.real,
         "reactance_ohm": ohms.imag,
         "notch": notches_of(layout, rows, cases),
     }
     wires = {
-        "phases": np.array([letters(bits) for bits in _side_bits(layout, rows, onward)], dtype="U4"),
+        "phases": np.array([letters(bits) for bits in sides], dtype="U4"),
         **{f"{letter}_a": shown[:, i] for i, letter in enumerate("abcn")},
         **dict(zip(NOTCHES, _notches(layout, rows, cases), strict=True)),
     }
@@ -105,7 +106,7 @@ def _notches(layout: Layout, rows: Rows, cases: int) -> Real:
     return found
 
 
-def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[int]:
+def _side_bits(rows: Rows, onward: NDArray[np.bool_]) -> list[int]:
     """Conductors of each branch; of a transformer those of the winding that is fed in the first case."""
     conductors = rows.conductors
     assert conductors is not None
@@ -113,17 +114,6 @@ def _side_bits(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> list[in
     for row, unit in conductors.units.items():
         found[row] = unit.one if onward[row, 0] else unit.two
     return found
-
-
-def _has(layout: Layout, rows: Rows, onward: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """(branch, k, 1)"""
-    return _slots(_side_bits(layout, rows, onward))
-
-
-def _slots(bits: list[int]) -> NDArray[np.bool_]:
-    """(branch, k, 1) conductors out of bits."""
-    found = np.array(bits, dtype=np.intp).reshape(-1)
-    return (found[:, None] >> np.arange(4) & 1).astype(bool)[..., None]
 
 
 def _ohms(layout: Layout, rows: Rows, nodes: Table[NodeWires]) -> Complex:
@@ -134,8 +124,7 @@ def _ohms(layout: Layout, rows: Rows, nodes: Table[NodeWires]) -> Complex:
     assert conductors is not None
     found = np.full(len(layout.branches), complex(np.nan, np.nan))
     found[rows.units] = network.transformer_z[:, 0]
-    bits = np.array(conductors.branch, dtype=np.intp)[rows.lines] & ABC
-    runs = (bits[:, None] >> np.arange(3) & 1).astype(np.float64)
+    runs = flags(conductors.branch, 3)[rows.lines].astype(np.float64)
     z, count = network.line_z[..., 0], runs.sum(axis=1)
     phases = z[:, :3, :3] * runs[:, :, None] * runs[:, None, :]
     own = np.einsum("ijj->i", phases)
@@ -163,7 +152,7 @@ def _loading(layout: Layout, rows: Rows, at_start: Real, at_end: Real) -> Real:
     transformer of the worst coil of both windings. nan where no rating is given."""
     conductors = rows.conductors
     assert conductors is not None
-    has = _slots(conductors.branch)
+    has = flags(conductors.branch)[..., None]
     most = np.where(has, np.maximum(at_start, at_end), -math.inf).max(axis=1)
     rated = np.where(np.array(conductors.branch) > 0, _rated.of(layout.branches)[0], np.nan)
     found: Real = np.asarray(100 * most / rated[:, None])
@@ -179,11 +168,7 @@ def _loading(layout: Layout, rows: Rows, at_start: Real, at_end: Real) -> Real:
 
 
 def _drop(
-    layout: Layout,
-    rows: Rows,
-    onward: NDArray[np.bool_],
-    nodes: Table[NodeState],
-    phases: Table[NodeWires],
+    layout: Layout, onward: NDArray[np.bool_], nodes: Table[NodeState], phases: Table[NodeWires]
 ) -> Real:
     """(branch, case) % lost along it, of the phase that loses most where both ends have it."""
     graph, percent = arrays_of(layout), nodes.column("percent")

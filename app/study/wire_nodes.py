@@ -5,14 +5,16 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from app.model.kinds import Supply
 from app.model.levels import THREE_PHASE
-from app.study.flows import nominal_of, roles, routes_of
+from app.study.flows import roles, routes_of
 from app.study.layout import Layout, arrays_of
+from app.study.leads import in_leads
 from app.study.outcome import AttachmentState, AttachmentWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
 from app.study.wire_volts import against, base_volts, phase_volts
-from app.study.wires import ABC, NEUTRAL, N, letters
-from app.study.zones import Zones
+from app.study.wires import ABC, NEUTRAL, N, flags, letters
+from app.study.zones import Zones, nominal_of
 from solver import Solution
 from solver.sweep import over_conductors
 from solver.wires import EARTH
@@ -132,7 +134,8 @@ def wire_attachments(
     power[rows.loads] = over_conductors(solution.load_power) * sign
     power[rows.shunts] = -over_conductors(solution.shunt_power)
     power[rows.sources] = over_conductors(solution.source_power)
-    amps[rows.loads] = _in_leads(solution, network.wires.load_to if network.wires is not None else None)
+    assert network.wires is not None
+    amps[rows.loads] = in_leads(solution.load_current, network.wires.load_to)
     y = network.shunt_y
     amps[rows.shunts] = np.einsum(
         "rijb,rjb->rib", y + np.zeros(cases), _known(solution.voltage[at[rows.shunts]])
@@ -160,16 +163,6 @@ def _known(values: Complex) -> Complex:
     return np.where(np.isnan(values), 0, values)
 
 
-def _in_leads(solution: Solution, to: NDArray[np.intp] | None) -> Complex:
-    """(load, k, case) current into each conductor's lead: what one brings the other takes back."""
-    drawn = _known(solution.load_current)
-    total = drawn.copy()
-    if to is not None:
-        row, slot = np.nonzero(to != EARTH)
-        np.subtract.at(total, (row, to[row, slot]), drawn[row, slot])
-    return total
-
-
 def _hung_on(layout: Layout, rows: Rows) -> NDArray[np.bool_]:
     """(attachment, k) conductors between which each hangs; a supply on all that lead away."""
     conductors = rows.conductors
@@ -178,9 +171,8 @@ def _hung_on(layout: Layout, rows: Rows) -> NDArray[np.bool_]:
     has[ways.row, ways.one] = True
     between = ways.other != EARTH
     has[ways.row[between], ways.other[between]] = True
-    for row in rows.sources:
-        node = layout.at[row]
-        has[row] = [bool((conductors.node[node] & conductors.drawn[node]) >> slot & 1) for slot in range(4)]
+    at = arrays_of(layout).at[rows.sources]
+    has[rows.sources] = flags(np.array(conductors.node)[at] & np.array(conductors.drawn)[at])
     return has
 
 
@@ -196,13 +188,9 @@ def _across(layout: Layout, rows: Rows, solution: Solution, nodes: Table[NodeWir
     np.minimum.at(lowest, ways.row, size)
     found = np.where(np.isinf(lowest), np.nan, lowest)
     for row in rows.sources:
-        node = layout.at[row]
+        node, supply = layout.at[row], layout.attachments[row]
+        assert isinstance(supply, Supply)
         base = nodes.column("base_v")[node]
         each = np.array([nodes.column(f"{letter}_v")[node] for letter in "abc"])
-        found[row] = _least(each[None])[0] / base * _nominal(layout, rows, int(row))
+        found[row] = _least(each[None])[0] / base * float(supply.nominal_v)
     return found
-
-
-def _nominal(layout: Layout, rows: Rows, row: int) -> float:
-    supply = layout.attachments[row]
-    return float(getattr(supply, "nominal_v", np.nan))

@@ -7,7 +7,7 @@ from app.model.levels import THREE_PHASE
 from app.study.conductors import Conductors
 from app.study.layout import Layout, arrays_of
 from app.study.wire_words import conductor
-from app.study.wires import ABC, LETTERS, NEUTRAL, PER_PHASE, N
+from app.study.wires import ABC, LETTERS, NEUTRAL, PER_PHASE, N, flags
 from app.study.zones import Zones
 
 Real = NDArray[np.float64]
@@ -70,7 +70,7 @@ def phase_volts(volts: Complex, reach: Index, kind: Index) -> Complex:
 
     Returns : (node, 3, batch) complex [V], nan where no such phase reaches
     """
-    there = (reach[:, None] >> np.arange(3) & 1).astype(bool)
+    there = flags(reach, 3)
     neutral = np.where(np.isnan(volts[:, N]), 0, volts[:, N])
     to_neutral = volts[:, :3] - np.where((kind == TO_NEUTRAL)[:, None], neutral, 0)[:, None]
     between = volts[:, :3] - np.roll(volts[:, :3], -1, axis=1)

@@ -3,6 +3,9 @@
 import cmath
 from collections.abc import Iterable
 
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
 from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE
 
 LETTERS = "ABCN"
@@ -47,3 +50,14 @@ def slots(has: int) -> list[int]:
     Returns : list of int, lowest first
     """
     return [slot for slot in range(4) if has >> slot & 1]
+
+
+def flags(has: ArrayLike, count: int = 4) -> NDArray[np.bool_]:
+    """Conductors of many rows as yes or no.
+
+    has : (row,) int, bits
+    count : 4, or 3 for the phases alone
+
+    Returns : (row, count) bool
+    """
+    return (np.asarray(has, dtype=np.intp).reshape(-1, 1) >> np.arange(count) & 1).astype(bool)

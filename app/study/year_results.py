@@ -25,7 +25,7 @@ from app.study.year_outcome import (
 )
 from app.study.year_points import Points
 from app.study.year_tally import Most, Tally
-from app.study.zones import Zones
+from app.study.zones import Zones, nominal_of
 from solver.status import Status
 
 Real = NDArray[np.float64]
@@ -52,7 +52,7 @@ def blank_year(drawing: Drawing, layout: Layout, zones: Zones, found: list[Findi
         points=none,
         done=0,
         solved_h=0.0,
-        nodes=_table(NodeYear, layout.node_row, {"nominal_v": _nominal(layout, zones)}),
+        nodes=_table(NodeYear, layout.node_row, {"nominal_v": nominal_of(layout, zones)}),
         branches=_table(BranchYear, layout.branch_row, {}),
         attachments=_table(AttachmentYear, layout.attachment_row, {}),
         balance=YearBalance(*[math.nan] * len(fields(YearBalance))),
@@ -122,10 +122,6 @@ def _table(state: Any, row: dict[str, int], columns: dict[str, NDArray[Any]]) ->
     return Table(state, tuple(row), whole, row)
 
 
-def _nominal(layout: Layout, zones: Zones) -> Real:
-    return np.asarray(zones.nominal_v[arrays_of(layout).zone])
-
-
 def _at(most: Most, points: Points) -> Real:
     """When the extremes were, in hours since the year began; nan where never."""
     begin = points.begin[np.maximum(most.point, 0)]
@@ -133,7 +129,7 @@ def _at(most: Most, points: Points) -> Real:
 
 
 def _nodes(layout: Layout, zones: Zones, tally: Tally) -> Table[NodeYear]:
-    nominal, most, sums = _nominal(layout, zones), tally.most, tally.sum
+    nominal, most, sums = nominal_of(layout, zones), tally.most, tally.sum
     live = tally.node_live
     low, high = -most["low"].value, most["high"].value
     limited = tally.limits.drop_percent is not None

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Load, Motor, Supply, Transformer
 from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
-from app.study.layout import NONE, Layout
+from app.study.layout import NONE, Layout, arrays_of
 from app.study.outcome import Assumption, Finding, Verdict
 from app.study.wires import PER_PHASE
 from app.study.words import slip, tell
@@ -170,6 +170,17 @@ def stated_voltages(drawing: Drawing, layout: Layout, zones: Zones) -> list[Find
         sentence += f"{level:g} V.{slip(volts, level)}"
         found.append(Finding("stated voltage", Verdict.NOTE, (id, at), sentence))
     return found
+
+
+def nominal_of(layout: Layout, zones: Zones) -> NDArray[np.float64]:
+    """Nominal voltage of the zone of every node.
+
+    layout : the graph
+    zones : nominal_v (zone,) float [V]
+
+    Returns : (node,) float [V]
+    """
+    return np.asarray(zones.nominal_v[arrays_of(layout).zone])
 
 
 def level_assumptions(layout: Layout, zones: Zones) -> list[Assumption]:
