@@ -145,20 +145,25 @@ def stand_in(element: Element, field: str, nominal_v: float = math.nan) -> tuple
     if isinstance(element, Motor) and field != "rated_v":
         return _of_motor(element, field)
     if field in ("constant_current_percent", "constant_impedance_percent"):
-        return 0.0, "constant power, which draws most at low voltage"
+        return 0.0, "what is left over is constant power, which draws most at low voltage"
     if field in ("reference_v", "rated_v"):
         return nominal_v, "nominal voltage of its node"
     raise KeyError(field)
 
 
 def _idle(element: Element, field: str) -> bool:
-    """Nothing hangs on the field: no starter, no fault level stated, no tap changer that steps by itself."""
+    """Nothing hangs on the field: no starter, no fault level stated, no share of a load left to state, no tap
+    changer that steps by itself."""
     if isinstance(element, Supply):
         return element.fault_level_min_mva is None
     if isinstance(element, OverheadLine) and field in conductors.STAND_INS:
         return conductors.is_idle(element, field)
     if isinstance(element, Generator):
         return element.hold_percent is None
+    if isinstance(element, Load):
+        return 100 in (element.constant_current_percent, element.constant_impedance_percent) and (
+            field != "reference_v"
+        )
     if isinstance(element, Transformer):
         return element.regulates == "no" and field in ("hold_percent", "bandwidth_percent")
     return isinstance(element, Motor) and field != "rated_v" and element.starter == "direct"

@@ -10,7 +10,7 @@ from app.sheet.elements import Entry, Extreme, Plan
 from app.sheet.nodes import node_cell
 from app.sheet.phase_attachments import hung_tables
 from app.sheet.subject import Subject, kind_name
-from app.sheet.table import Cell, Cells, Column, SheetTable, Style, given, text
+from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, text
 from app.study.outcome import AttachmentState
 
 LOADS = "loads"
@@ -53,8 +53,8 @@ def _load(subject: Subject, id: str, load: Load) -> Entry:
         "node": text(label(subject.drawing, load.node)),
         "pf": subject.value(id, "power_factor"),
         "side": given("leading" if load.leading else "lagging" if load.power_factor < 1 else ""),
-        "i_share": subject.value(id, "constant_current_percent"),
-        "z_share": subject.value(id, "constant_impedance_percent"),
+        "i_share": _share(subject, id, "constant_current_percent"),
+        "z_share": _share(subject, id, "constant_impedance_percent"),
         "reference": subject.value(id, "reference_v"),
         "model": text(model_words(load)),
     }
@@ -67,6 +67,12 @@ def _load(subject: Subject, id: str, load: Load) -> Entry:
         data["demand"] = Cell(load.demand_kva * load.power_factor, "{demand_kva}*{pf}")
     figures = [_served(subject, id, load, s, c) for c, s in enumerate(states)]
     return Entry(id, data, figures, lambda worst: {"state": text("fed") if worst else subject.unfed()})
+
+
+def _share(subject: Subject, id: str, field: str) -> Cell:
+    """A share of a load; none is left where all of it is stated to be the other."""
+    found = subject.value(id, field)
+    return Cell(0.0) if found.value is None else found
 
 
 def model_words(load: Load) -> str:
@@ -151,8 +157,10 @@ def _stated(subject: Subject, id: str, hung: Supply | Generator | Capacitor) -> 
         if hung.hold_percent is not None:
             words = f"holds {hung.hold_percent:g} % of nominal"
         return {"rating": subject.value(id, "output_kw"), "unit": text("kW"), "rest": given(words)}
-    words = f"at {hung.rated_v:g} V" if hung.rated_v is not None else "at nominal voltage, assumed"
-    return {"rating": subject.value(id, "rating_kvar"), "unit": text("kvar"), "rest": given(words)}
+    rest = text("at nominal voltage, assumed", Origin.ASSUMED)
+    if hung.rated_v is not None:
+        rest = given(f"at {hung.rated_v:g} V")
+    return {"rating": subject.value(id, "rating_kvar"), "unit": text("kvar"), "rest": rest}
 
 
 def _fed_in(

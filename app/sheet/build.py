@@ -3,14 +3,14 @@
 from collections import defaultdict
 
 from app.model import taps
-from app.model.kinds import Line, Switch, Transformer
+from app.model.kinds import Line, Regulator, Switch, Transformer
 from app.sheet.elements import Entry, Extreme, Plan, by_element
 from app.sheet.lines import KEY as LINES
 from app.sheet.lines import LOADING, MARGIN, judge_loading
 from app.sheet.nodes import VERDICT
 from app.sheet.phase_build import allocation_tables, line_words, unit_words
 from app.sheet.phase_lines import branch_wires
-from app.sheet.regulators import setting_words
+from app.sheet.regulators import regulator_words, setting_words
 from app.sheet.subject import FROM_TO, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Ref, SheetTable, Style, given, table, text
 from app.sheet.transformers import supply_winding
@@ -180,7 +180,7 @@ def _settings(subject: Subject) -> SheetTable:
         Column("plate", "Nameplate volts", "V", digits=0, width=14),
         Column("words", "Tap to set", style=Style.LONG, width=40),
     )
-    rows = {
+    rows: dict[str, Cells] = {
         id: {
             "item": text(subject.tell(id)),
             "winding": given(t.tapped),
@@ -195,8 +195,11 @@ def _settings(subject: Subject) -> SheetTable:
         }
         for id, t in _transformers(subject).items()
     }
+    for id, e in subject.drawing.elements.items():
+        if isinstance(e, Regulator):
+            rows[id] = {"item": text(subject.tell(id)), "words": text(regulator_words(subject, id, e))}
     note = "Positions count from the highest nameplate volts. Makers number differently: go by the volts."
-    return table("settings", TAB, "Taps to set on site", columns, rows, note=note, held=0)
+    return table("settings", TAB, "Taps and regulators to set on site", columns, rows, note=note, held=0)
 
 
 def _open_points(subject: Subject) -> SheetTable:

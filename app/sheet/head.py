@@ -1,11 +1,13 @@
 """The head of the sheet, the basis it stands on, what was assumed, and the cautions."""
 
+from app.model.conductors import is_hung
 from app.model.fields import fields_of
-from app.model.kinds import Motor
+from app.model.kinds import Branch, Generator, Line, Motor, Transformer
 from app.sheet.cases import case_tables
 from app.sheet.subject import FAIL, Subject, kind_name
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, given, put_in, table, text
 from app.study.cautions import CAUTIONS
+from app.study.changers import is_changer
 from app.study.outcome import Verdict
 from app.study.phase_basis import BASIS as BASIS_OF_PHASES
 from app.version import version
@@ -87,7 +89,13 @@ def unsolved_words(subject: Subject) -> str:
 
 def basis_tables(subject: Subject) -> list[SheetTable]:
     """Limits, constants, rules, cases and every assumed value."""
-    return [_limits(subject), _constants(), _rules(subject), *case_tables(subject, BASIS), _assumed(subject)]
+    return [
+        _limits(subject),
+        *_constants(subject),
+        _rules(subject),
+        *case_tables(subject, BASIS),
+        _assumed(subject),
+    ]
 
 
 BASIS = "Basis"
@@ -176,15 +184,30 @@ RULES = (
 
 def _rules(subject: Subject) -> SheetTable:
     phases = () if subject.outcome.wires is None else BASIS_OF_PHASES
-    told = RULES + phases + subject.outcome.fault_basis
+    told = (*_applying(subject), *phases, *subject.outcome.fault_basis)
     rows = {item: {"item": text(item), "value": text(words)} for item, words in told}
     return table("rules", BASIS, "Methods and standards", (ITEM, SAYS), rows, held=0, plain=True)
 
 
-def _constants() -> SheetTable:
+def _applying(subject: Subject) -> list[tuple[str, str]]:
+    """The rules of what the drawing has."""
+    elements = subject.drawing.elements.values()
+    has = {
+        "Motor": any(isinstance(e, Motor) for e in elements),
+        "Tap changer, regulator": any(is_changer(e) for e in elements if isinstance(e, Branch)),
+        "Generator that holds volts": any(isinstance(e, Generator) and e.hold_percent for e in elements),
+        "Overhead line with a spacing": any(is_hung(e) for e in elements),
+        "Transformer": any(isinstance(e, Transformer) for e in elements),
+    }
+    return [(item, words) for item, words in RULES if has.get(item, True)]
+
+
+def _constants(subject: Subject) -> list[SheetTable]:
+    """Of the metals that lines are drawn in."""
+    metals = {e.conductor for e in subject.drawing.elements.values() if isinstance(e, Line)}
     columns = (ITEM, VALUE, UNIT, Column("source", "Source", style=Style.LONG, width=40))
     names = {"Cu": "α of copper", "Al": "α of aluminium"}
-    rows = {
+    rows: dict[str, Cells] = {
         metal: {
             "item": text(names[metal]),
             "value": given(alpha),
@@ -192,8 +215,9 @@ def _constants() -> SheetTable:
             "source": text("IEC 60287-1-1, from memory"),
         }
         for metal, alpha in sorted(ALPHA.items())
+        if metal in metals
     }
-    return table("constants", BASIS, "Constants", columns, rows, held=0)
+    return [table("constants", BASIS, "Constants", columns, rows, held=0)] if rows else []
 
 
 def _assumed(subject: Subject) -> SheetTable:

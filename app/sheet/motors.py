@@ -78,7 +78,7 @@ def _starts(subject: Subject) -> list[SheetTable]:
     data = (
         Column("starter", "Starter", style=Style.TEXT, width=12),
         Column("times", "Start, locked or limited", "× rated", digits=1, width=12),
-        Column("factor", "Power factor so", digits=2, width=9),
+        Column("factor", "Power factor at start", digits=2, width=9),
         Column("rated_v", "Rated", "V", digits=0),
         Column("board", "Board", style=Style.TEXT, width=16),
         Column("supply", "Supply", style=Style.TEXT, width=16),

@@ -44,6 +44,7 @@ def phase_node_tables(subject: Subject) -> list[SheetTable]:
     bases = [Column("u_120", "U lowest, 120 V base", "V", digits=1, near="low_120", width=10)]
     figures = [
         *each(subject, Column("u", "U", "V", style=Style.VOLTS, width=9), neutral=False),
+        Column("angle", "Angle, first phase", "°", digits=1, width=9),
         *low_high,
         *(bases if subject.american else ()),
         NEUTRAL,
@@ -109,6 +110,7 @@ def _figures(subject: Subject, id: str, state: NodeState, wires: NodeWires, case
     found = spread("u", there) | {
         "percent": redone(state.percent, f"{least}/{{base}}*100", lowest),
         "high_percent": redone(state.high_percent, f"{greatest(span)}/{{base}}*100", highest),
+        "angle": Cell(state.angle_deg),
         "u_120": Cell(1.2 * state.percent, "1.2*{percent}"),
         "neutral": Cell(wires.neutral_v),
         "unbalance": Cell(wires.unbalance_percent),

@@ -35,6 +35,7 @@ FIGURES = (
     Column("s", "S fed in", "kVA", digits=2),
     Column("stands", "Tap stands at", "notch", digits=0, width=8),
     LOADING,
+    Column("u_idle", "U given out, no load", "V", style=Style.VOLTS, width=10),
     Column("u_out", "U given out", "V", style=Style.VOLTS, width=10),
     Column("iron", "Iron", "W", digits=0, width=7),
     Column("copper", "Copper", "W", digits=0, width=8),
@@ -111,7 +112,8 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
     s_kw, s_kvar = (state.start_kw, state.start_kvar) if state.forward else (state.end_kw, state.end_kvar)
     fed_cell = {"fed": node_cell(subject, fed, "u", case)}
     tapped = _tapped(t, 1 if state.forward else 2)
-    rated = taps.windings(t, int(state.notch))[0 if state.forward else 1]
+    away = 2 if state.forward else 1
+    rated, given_out = taps.windings(t, int(state.notch))[:: 1 if state.forward else -1]
     high = 1 if t.v1_v >= t.v2_v else 2
     high_cell = {"high": node_cell(subject, t.start if high == 1 else t.end, "u", case)}
     iron = f"{{units}}*{{p0}}*({{high}}/({_tapped(t, high)}))^2"
@@ -121,6 +123,7 @@ def _figures(subject: Subject, id: str, t: Transformer, state: BranchState, case
         "stands": Cell(state.notch) if is_changer(t) else Cell(state.notch, "{notch}"),
         "s": Cell(math.hypot(s_kw, s_kvar), f"{root}*{{fed}}*{{{i_fed}}}/1000", fed_cell),
         "loading": Cell(state.loaded_percent, _loading(root)),
+        "u_idle": Cell(fed_volts * given_out / rated, f"{{fed}}*({_tapped(t, away)})/({tapped})", fed_cell),
         "u_out": Cell(
             subject.outcome.nodes.at(out, case).voltage_v,
             "{out}",

@@ -16,8 +16,14 @@ BASIS = (
         "conductors, least fault level of the supply. Transformers at their rated ratio, whatever the tap.",
     ),
     (
+        "Voltage factors",
+        "Up to 1 kV cmax is 1.05, or 1.10 where the highest voltage allowed is above 108 % of nominal; cmin "
+        "0.95, or 0.90 where the lowest is below 92 %. Above 1 kV 1.10 and 1.00 (IEC 60909-0:2016, from "
+        "memory).",
+    ),
+    (
         "Peak of a fault",
-        "κ = 1.02 + 0.98·e^(−3R/X), R/X at the equivalent frequency (20 Hz of 50), which holds on rings.",
+        "κ = 1.02 + 0.98·e^(−3R/X), R/X at 0.4 of the system's frequency, which holds on rings.",
     ),
     (
         "Faults to earth",

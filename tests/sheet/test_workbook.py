@@ -34,7 +34,7 @@ def words(book: Any) -> list[str]:
 def test_sections_stand_in_the_order_of_reading(workbook: Reader) -> None:
     assert workbook(pair()).sheetnames == [
         "Head", "Basis", "Cases and assumed values", "Busbars", "Cables", "Transformers",
-        "Loads and supplies", "Motors", "Switches", "Balance", "Findings", "Build list",
+        "Loads and supplies", "Motors", "Switches", "Balance", "Findings", "Build list", "Site",
     ]  # fmt: skip
 
 
