@@ -1,5 +1,6 @@
 """What flows with all loads off: round loops whose transformers do not agree, and between supplies."""
 
+from collections.abc import Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -7,12 +8,14 @@ import numpy as np
 from app.model.drawing import Drawing
 from app.model.figures import amps, nameplate, percent, power
 from app.model.kinds import Transformer
+from app.model.levels import TWO_WIRE
 from app.study.around import mismatch, units_of
 from app.study.layout import Layout
 from app.study.outcome import AttachmentState, Finding, Table, Verdict
 from app.study.results import Tables, tables_of
 from app.study.rows import Rows
 from app.study.solved_cases import blanked
+from app.study.wires import NEUTRAL
 from app.study.words import list_of, tell
 from app.study.zones import Zones
 from solver import Network, Status, solve
@@ -21,6 +24,11 @@ AGREE = 1e-7  # %, ratios closer than this are one ratio
 MUCH = 10.0  # % of rating
 WHOSE = "common practice, no source"
 NOTHING_KVA = 1e-3
+BY_EARTH = (
+    " Both hold their neutral at earth, so that earth stands beside the neutral between them as a way back "
+    "without impedance: through the two wires alone less would pass, and their earths carry what the neutral "
+    "is spared."
+)
 
 
 def idle_findings(
@@ -56,7 +64,29 @@ def idle_findings(
         return []
     idle = blanked(tables_of(layout, zones, rows, solution, len(drawing.cases)), solved)
     found = [_circulating(drawing, layout, idle, list(units), gap) for units, gap in reversed(apart.items())]
-    return found + [_exchange(drawing, layout, idle, list(pair), loaded) for pair in pairs]
+    earthed = {pair for pair in pairs if _earth_between(layout, rows, pair)}
+    return found + [
+        _exchange(drawing, layout, idle, list(pair), loaded, BY_EARTH if pair in earthed else "")
+        for pair in pairs
+    ]
+
+
+def _earth_between(layout: Layout, rows: Rows, pair: Sequence[int]) -> bool:
+    """Whether earth is a way back between two two-wire supplies beside the neutral that joins them."""
+    conductors = rows.conductors
+    if conductors is None or any(getattr(layout.attachments[r], "wires", "") != TWO_WIRE for r in pair):
+        return False
+    reached: set[int] = set()
+    first = {layout.at[pair[0]]}
+    ends = [
+        {layout.start[row], layout.end[row]}
+        for row, has in enumerate(conductors.branch)
+        if has & NEUTRAL and not isinstance(layout.branches[row], Transformer)
+    ]
+    while first != reached:
+        reached = first
+        first = reached.union(*(two for two in ends if two & reached))
+    return layout.at[pair[1]] in reached
 
 
 def _idle(network: Network) -> Network:
@@ -97,7 +127,12 @@ def _in_case(drawing: Drawing, case: int) -> str:
 
 
 def _exchange(
-    drawing: Drawing, layout: Layout, idle: Tables, rows: list[int], loaded: Table[AttachmentState]
+    drawing: Drawing,
+    layout: Layout,
+    idle: Tables,
+    rows: list[int],
+    loaded: Table[AttachmentState],
+    besides: str,
 ) -> Finding:
     """What two joined supplies do under load, and what one gives the other with all loads off."""
     ids = tuple(layout.attachment_ids[r] for r in rows)
@@ -107,7 +142,7 @@ def _exchange(
         np.argmin(np.where(known, kw.min(axis=0), np.inf))
     )  # where one gives least, or takes most back
     told = " and ".join(f"{tell(drawing, i)} {_gives(float(kw[n, case]))}" for n, i in enumerate(ids))
-    words = f"{told}{_in_case(drawing, case)}. {_passing(drawing, layout, idle, rows, case)}"
+    words = f"{told}{_in_case(drawing, case)}. {_passing(drawing, layout, idle, rows, case)}{besides}"
     return Finding("power exchanged", Verdict.NOTE, ids, words, case=drawing.cases[case].name)
 
 

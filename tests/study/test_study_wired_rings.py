@@ -3,10 +3,11 @@
 import numpy as np
 import pytest
 from msgspec.structs import replace
-from study_layouts import changed, line
+from study_layouts import changed, drawing, line
 from unlike_layouts import feeder, pole, street
 
-from app.model.kinds import Joint, Load, Supply, Transformer
+from app.model.drawing import Case, Limits
+from app.model.kinds import Busbar, Joint, Load, Supply, Transformer
 from app.study import run
 from app.study.outcome import Verdict
 from solver.status import Status
@@ -126,3 +127,28 @@ def test_laterals_of_two_phases_meet_without_a_short_circuit():
     assert outcome.status is Status.SOLVED
     assert outcome.balance.closure.max() < 1e-9
     assert outcome.wires.nodes.at("P8").phases == "AB"
+
+
+def test_two_wire_supplies_that_both_earth_their_neutral_exchange_by_earth_and_it_is_said():
+    """Against nodal equations of phase and neutral between them, the neutral at earth at both ends."""
+    load = Load(node="M", demand_kva=8.0, power_factor=1.0, constant_impedance_percent=100.0)
+    base = drawing(
+        (Case(),), Limits(neutral_v=50.0), B1=Busbar(), M=Joint(), B2=Busbar(), L1=load,
+        S1=Supply(node="B1", nominal_v=230.0, wires="two-wire"), C1=line("B1", "M"),
+        S2=Supply(node="B2", nominal_v=230.0, wires="two-wire", held_percent=98.0), C2=line("M", "B2"),
+    )  # fmt: skip
+    outcome = run(base)
+    z = outcome.branches.at("C1").resistance_ohm / 2 + 1j * outcome.branches.at("C1").reactance_ohm / 2
+    own = 8000 / 230.0**2
+    matrix = np.array([[2 / z + own, -own], [-own, 2 / z + own]])
+    phase, neutral = np.linalg.solve(matrix, [(230.0 + 225.4) / z, 0])
+    wires = outcome.wires.branches
+    assert wires.at("C1").a_a == pytest.approx(abs((230.0 - phase) / z), rel=1e-9)
+    assert wires.at("C2").a_a == pytest.approx(abs((phase - 225.4) / z), rel=1e-9)
+    assert [wires.at(c).n_a for c in ("C1", "C2")] == pytest.approx([abs(neutral / z)] * 2, rel=1e-9)
+    (said,) = told(base, "power exchanged")
+    assert f"{4.6 / abs(2 * z):.1f} A pass from S1 to S2." in said.sentence  # phase wires alone
+    assert "Both hold their neutral at earth" in said.sentence
+    (balanced,) = told(replace(base, limits=Limits()), "power exchanged")
+    assert "earth" not in balanced.sentence
+    assert f"{4.6 / abs(4 * z):.1f} A pass" in balanced.sentence  # out and back
