@@ -27,6 +27,8 @@ class Hung:
     start : (target,) where the ends of each conductor begin in that order; runs of like far ends where it
         is empty
     target : (target,) conductors
+    slot : (live · k,) where each conductor finds its current: element, elements + target, or 2 · elements for
+        none; empty where some conductor is near to one element and far from another
     """
 
     place: Index
@@ -38,6 +40,7 @@ class Hung:
     order: Index
     start: Index
     target: Index
+    slot: Index
 
     def take(self, points: Index) -> "Hung":
         """The same with some operating points only."""
@@ -55,8 +58,8 @@ class Hung:
     def scratch(self, width: int) -> "Scratch":
         """Memory for `draw` at so many operating points."""
         count = self.place.size
-        both, ends = (np.empty((2 * count, width), np.complex128) for _ in range(2))
-        return Scratch(both, ends, np.empty((count, width)))
+        both, ends = (np.zeros((2 * count + rows, width), np.complex128) for rows in (1, 0))
+        return Scratch(both, ends, np.empty((count, width)), np.empty((count, width)))
 
     def draw(self, voltage: Complex, out: Complex, scratch: "Scratch") -> None:
         """What is drawn at these volts, as currents that leave each place.
@@ -66,14 +69,15 @@ class Hung:
         scratch : Scratch, of this batch
         """
         flat, count = voltage.reshape(-1, voltage.shape[-1]), self.place.size
-        u, drawn, size = scratch.both[:count], scratch.both[count:], scratch.size
+        u, drawn, size = scratch.both[:count], scratch.both[count:-1], scratch.size
         flat.take(self.near, axis=0, out=u, mode="clip")
         flat.take(self.far, axis=0, out=drawn, mode="clip")
         if not self.between.all():
             drawn *= self.between[:, None]
         np.subtract(u, drawn, u)
         np.multiply(u.real, u.real, size)
-        size += u.imag**2
+        np.multiply(u.imag, u.imag, scratch.spare)
+        np.add(size, scratch.spare, size)
         np.maximum(size, np.finfo(float).tiny, out=size)
         np.reciprocal(size, size)
         np.multiply(self.power, size, drawn)
@@ -81,8 +85,13 @@ class Hung:
             np.sqrt(size, size)
             drawn += self.current * size
         np.multiply(drawn, u, u)
-        out[...] = 0
         flat = out.reshape(-1, out.shape[-1])
+        if self.slot.size:
+            far = u if self.between.all() else np.multiply(u, self.between[:, None], drawn)
+            np.negative(_summed(far, self.start), scratch.both[count : count + self.target.size])
+            scratch.both.take(self.slot, axis=0, out=flat, mode="clip")
+            return
+        out[...] = 0
         if not self.order.size:
             flat[self.near] = u
             if not self.between.all():
@@ -108,14 +117,16 @@ class Hung:
 class Scratch:
     """Memory that is taken once.
 
-    both : (2 · element, batch) complex
+    both : (2 · element + 1, batch) complex, the last 0
     flat : (2 · element, batch) complex
     size : (element, batch) float
+    spare : (element, batch) float
     """
 
     both: Complex
     flat: Complex
     size: Real
+    spare: Real
 
 
 def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Complex] | None]:
@@ -153,7 +164,7 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
     power = total(stated * mix[:, 0])
     near, far = place * k + near, place * k + np.where(between, far, near)
     start = _runs(far)
-    order = np.zeros(0, dtype=np.intp)
+    order = slot = np.zeros(0, dtype=np.intp)
     if _repeats(near) or _repeats(far[start]):
         ends = np.concatenate((near, far))
         order = np.argsort(ends, kind="stable")
@@ -161,7 +172,17 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
         target = ends[order][start]
     else:
         target = far[start]
-    return Hung(place, near, far, 1.0 * between, power, current, order, start, target), stamps
+        slot = _slots(forest.order.size * k, near, target)
+    return Hung(place, near, far, 1.0 * between, power, current, order, start, target, slot), stamps
+
+
+def _slots(size: int, near: Index, target: Index) -> Index:
+    slot = np.full(size, 2 * near.size)
+    slot[near] = np.arange(near.size)
+    if (slot[target] < near.size).any():
+        return slot[:0]
+    slot[target] = near.size + np.arange(target.size)
+    return slot
 
 
 def _runs(values: Index) -> Index:

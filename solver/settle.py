@@ -18,8 +18,10 @@ PLAIN = 8  # sweeps before acceleration
 MOST = 30  # sweeps in all
 WILD = 50.0  # growth of the change that makes the acceleration start afresh
 FAR = 0.5  # |c|² from which a geometric series is not worth following
+TELLING = 128  # places whose steps stand for all
 LOW = 0.02  # share of the no-load voltage that no guess may fall below
 NAN = complex(np.nan, np.nan)
+TINY = np.finfo(float).tiny
 BLOCK = 1 << 15  # complex values in one array that stay in cache
 
 
@@ -85,11 +87,10 @@ class _Run:
 
     def _memory(self, voltage: Complex) -> None:
         """Takes the memory for as many operating points as still move."""
-        self.voltage, self.image = voltage, np.empty_like(voltage)
-        self.sweep = Sweep(self.placed, self.forest, voltage.shape[-1])
-        _, k, width = voltage.shape
-        rows = self.sweep.parts[0].stop
-        self.step, self.size = np.empty((rows, k, width), np.complex128), np.empty((rows, k, 2 * width))
+        self.voltage, (_, k, width) = voltage, voltage.shape
+        self.image, self.step, self.other, self.spare = (np.empty_like(voltage) for _ in range(4))
+        self.sweep = Sweep(self.placed, self.forest, width)
+        self.size = np.empty((self.sweep.parts[0].stop, k, 2 * width))
         level = self.placed.level
         self.weight = None if level.shape[0] == 1 else 1 / level[self.forest.zone][:, None, :]
 
@@ -101,7 +102,7 @@ class _Run:
                 if self.ties is not None:
                     self.current = self.ties.correct(self.image, self.voltage, self.sweep.flow)
                 change = self._change()
-                if not (change.min() >= CLOSE and change.max() < np.inf):
+                if not _all_move(change):
                     stay = (change >= CLOSE) & np.isfinite(change)
                     self._leave(change < CLOSE, ~stay, count)
                     if not stay.any():
@@ -109,7 +110,7 @@ class _Run:
                     change = change[stay]
                     self._keep(np.flatnonzero(stay))
                 if count < PLAIN:
-                    self._extrapolate(count)
+                    self._extrapolate()
                     self.voltage, self.image = self.image, self.voltage
                 else:
                     self.voltage = self._accelerated(change)
@@ -125,21 +126,23 @@ class _Run:
 
     def _largest(self, part: slice) -> Real:
         """(batch,) the same in a run of places, by the level where there is more than one."""
-        image = self.image[part]
-        step, size = self.step[: image.shape[0]], self.size[: image.shape[0]]
-        np.subtract(image, self.voltage[part], step)
+        step = np.subtract(self.image[part], self.voltage[part], self.step[part])
+        size = self.size[: step.shape[0]]
         np.abs(step.view(np.float64), size)
         if self.weight is not None:
             np.multiply(
                 size.reshape(*step.shape, 2), self.weight[part, ..., None], size.reshape(*step.shape, 2)
             )
         if self.points.size == 1:
-            return np.asarray(np.maximum.reduce(size, None, keepdims=True)[0, 0])
+            return np.array([size.item(size.argmax())])
         return np.asarray(size.max(axis=(0, 1)).reshape(-1, 2).max(axis=1))
 
     def _leave(self, done: Flag, gone: Flag, count: int) -> None:
         rows = self.points[done]
-        self.answer[..., rows] = self.image[..., done]
+        if rows.size == self.answer.shape[-1]:
+            self.answer[...] = self.image
+        else:
+            self.answer[..., rows] = self.image[..., done]
         self.status[rows] = Status.SOLVED
         if self.tied is not None and self.current is not None:
             self.tied[:, rows] = self.current[:, done]
@@ -147,41 +150,51 @@ class _Run:
 
     def _keep(self, rows: Index) -> None:
         self.placed, self.points, self.best = self.placed.take(rows), self.points[rows], self.best[rows]
-        image = self.image.take(rows, axis=-1)
+        image, step = self.image.take(rows, axis=-1), self.step.take(rows, axis=-1)
         self._memory(self.voltage.take(rows, axis=-1))
-        self.image = image
+        self.image, self.step = image, step
         self.before = None if self.before is None else self.before.take(rows, axis=-1)
         if self.anderson is not None:
             self.anderson.keep(rows)
         if self.ties is not None:
             self.ties.keep(rows, self.placed)
 
-    def _extrapolate(self, count: int) -> None:
+    def _extrapolate(self) -> None:
         """Goes to the end of the geometric series that two sweeps in a row begin, each conductor to its own.
 
         Currents follow the conjugate of the voltage, so each step is c times the conjugate of the one
         before: d2 = c conj(d1), and all steps to come add up to (c conj(d2) + |c|² d2) / (1 - |c|²).
         """
-        before, self.before = self.before, None
-        step = np.subtract(self.image, self.voltage, self.voltage)
-        if count % 2:
-            self.before = step.copy()
-        elif before is not None:
-            c = _ratio(before if self.weight is None else before * self.weight**2, step, before)
-            size = c.real**2 + c.imag**2
-            far = ~(size < FAR)
-            c[far] = size[far] = 0
-            spare = np.conj(step, out=before)
-            spare *= c / (1 - size)
-            self.image += spare
-            step *= size / (1 - size)
-            self.image += step
+        step, before = self.step, self.before
+        if before is None:
+            self.before, self.step = step, self.other
+            return
+        self.before, self.other = None, before
+        spare = np.conj(before, self.spare)
+        c = self._ratio(before, step, spare)
+        size = c.real**2 + c.imag**2
+        near = (size < FAR) / np.maximum(1 - size, 1 - FAR)
+        np.conj(step, spare)
+        spare *= c * near
+        self.image += spare
+        step *= size * near
+        self.image += step
+
+    def _ratio(self, before: Complex, step: Complex, turned: Complex) -> Complex:
+        """(k, batch) c that fits step = c turned best, turned being conj(before); some of the places tell."""
+        some = slice(None, None, 1 + before.shape[0] // TELLING)
+        weighted, turned = before[some], turned[some]
+        if self.weight is not None:
+            weighted = weighted * self.weight[some] ** 2
+        c = np.einsum("nkb,nkb->kb", weighted, step[some])
+        c /= np.einsum("nkb,nkb->kb", weighted, turned).real + TINY  # what stands still has 0
+        return c
 
     def _accelerated(self, change: Real) -> Complex:
         if self.anderson is None:
             self.anderson = Anderson(1 / self.placed.level[self.forest.zone][:, None, :])
-        image, step = self.image.copy(), self.image - self.voltage
-        guess = self.anderson.next(image, step)
+        image = self.image.copy()
+        guess = self.anderson.next(image, self.step)
         wild = (change > WILD * self.best) | ~np.isfinite(guess).all(axis=(0, 1))
         if self.placed.asks:
             wild |= self._lowest(guess) < LOW
@@ -209,8 +222,8 @@ class _Run:
             self.tied[:, left[solved]] = found.tied[:, solved]
 
 
-def _ratio(weighted: Complex, step: Complex, before: Complex) -> Complex:
-    """(k, batch) c that fits step = c conj(before) best; weighted is before, by the square of its weight."""
-    c = np.einsum("nkb,nkb->kb", weighted, step)
-    c /= np.einsum("nkb,nkb->kb", weighted, np.conj(before)).real
-    return c
+def _all_move(change: Real) -> bool:
+    """Whether every operating point still moves, and none without bounds."""
+    if change.size == 1:
+        return CLOSE <= change.item() < np.inf
+    return bool(change.min() >= CLOSE and change.max() < np.inf)
