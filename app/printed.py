@@ -101,11 +101,14 @@ def _revision(revision: str) -> str:
 def _case(drawing: Drawing, outcome: Outcome, case: int, name: str) -> list[str]:
     nodes = NODE_COLUMNS if outcome.wires is None else WIRED_NODE_COLUMNS
     wires = wire_tables(drawing, outcome, case)
+    hung = "Loads and infeeds"
+    if outcome.wires is not None:
+        hung += "; V of the lowest lead, of several phases to the neutral as between lines"
     return [
         f"Case: {name}\n  {settings(drawing.cases[case], drawing)}",
         _table(drawing, "Nodes", outcome.nodes, nodes, case),
         _table(drawing, "Branches", outcome.branches, BRANCH_COLUMNS, case),
-        _table(drawing, "Loads and infeeds", outcome.attachments, ATTACHMENT_COLUMNS, case),
+        _table(drawing, hung, outcome.attachments, ATTACHMENT_COLUMNS, case),
         *(f"{title}\n{aligned(lines, figures)}" for title, lines, figures in wires),
         _starts(drawing, outcome, case),
         _balance(outcome, case),

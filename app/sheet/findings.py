@@ -48,9 +48,11 @@ def _row(subject: Subject, finding: Finding) -> Cells:
         "whose": text(finding.whose),
         "sentence": text(finding.sentence),
     }
+    if finding.value is not None:
+        found["value"] = Cell(finding.value)
     if finding.value is None or finding.limit is None or finding.margin is None:
         return found
-    found |= {"value": Cell(finding.value), "limit": Cell(finding.limit)}
+    found["limit"] = Cell(finding.limit)
     found["margin"] = Cell(finding.margin, _margin_formula(finding))
     if (finding.margin < 0) is (finding.verdict is Verdict.FAILS):  # advice may be passed without failing
         held = "holds" if finding.margin < 0 else told

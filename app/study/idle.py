@@ -21,6 +21,7 @@ from app.study.zones import Zones
 from solver import Network, Status, solve
 
 AGREE = 1e-7  # %, ratios closer than this are one ratio
+UNLIKE = 1.001  # of two windings, by which the one is more loaded than the other
 MUCH = 10.0  # % of rating
 WHOSE = "common practice, no source"
 NOTHING_KVA = 1e-3
@@ -104,13 +105,17 @@ def _circulating(drawing: Drawing, layout: Layout, idle: Tables, units: list[int
     unit, value = layout.branches[units[at]], float(share[at, case])
     assert isinstance(unit, Transformer)
     low = unit.v2_v <= unit.v1_v
-    current = idle.branches.column("end_a" if low else "start_a")[units[at], case]
+    first, second = (float(idle.branches.column(end)[units[at], case]) for end in ("start_a", "end_a"))
+    current = second if low else first
+    loads = (first * unit.v1_v, second * unit.v2_v)
+    by_other = loads[not low] > UNLIKE * loads[low]
+    by = f" at its {nameplate(max(unit.v1_v, unit.v2_v))} winding" if by_other else ""
     ids = tuple(layout.branch_ids[u] for u in units)
     stand = "stand" if len(ids) > 1 else "stands"
     words = (
         f"{list_of(drawing, ids)} {stand} in a closed loop whose ratios are {percent(apart)} apart: with all "
         f"loads off {amps(float(current))} circulates at {nameplate(min(unit.v1_v, unit.v2_v))}, "
-        f"{percent(value)} of the rating of {tell(drawing, ids[at])}{_in_case(drawing, int(case))}."
+        f"{percent(value)} of the rating of {tell(drawing, ids[at])}{by}{_in_case(drawing, int(case))}."
     )
     name = drawing.cases[int(case)].name
     verdict = Verdict.ADVICE if value > MUCH else Verdict.NOTE

@@ -129,3 +129,12 @@ def test_the_basis_of_every_sample_fits_one_page() -> None:
         drawing = load(path)
         basis = [t for t in gathered(tables(drawing, run(drawing))) if t.tab == "Basis"]
         assert fits(basis), path.name
+
+
+def test_the_value_of_a_note_stands_beside_its_words() -> None:
+    drawing = place("hobscar_cured")
+    outcome = run(drawing)
+    made = next(t for t in tables(drawing, outcome) if t.key == "findings")
+    row = next(str(n) for n, f in enumerate(outcome.findings) if f.check == "start torque")
+    assert made.at(row, "value").value == pytest.approx(outcome.starts.at("M1", 0).torque_percent)
+    assert made.at(row, "limit").value is None
