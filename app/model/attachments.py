@@ -88,7 +88,7 @@ class Motor(Attachment, frozen=True, kw_only=True, tag="motor"):
         | None
     ) = None
     limited_power_factor: (
-        Annotated[float, field("Power factor so", "", gt=0, le=1, help="While the starter limits.")] | None
+        Annotated[float, field("Power factor then", "", gt=0, le=1, help="While the starter limits.")] | None
     ) = None
     state: Annotated[Literal["running", "starting", "off"], plain("State")] = "running"
     feeds_faults: FeedsFaults = False

@@ -90,7 +90,7 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
     regulates: Annotated[
         Literal["no", "winding 1", "winding 2"],
         plain(
-            "Holds volts of", help="An on-load tap changer steps by itself; no: the tap stays where it is."
+            "Tap changer holds", help="An on-load tap changer steps by itself; no: the tap stays where it is."
         ),
     ] = "no"
     hold_percent: Hold = None

@@ -35,7 +35,7 @@ class Limits(Struct, frozen=True, kw_only=True):
         Annotated[float, field("Drop in all", "%", gt=0, le=100, help="Below the supply. Blank: not judged.")]
         | None
     ) = None
-    drop_name: Annotated[str, text("Drop limit", help="Whose limit of the drop it is.")] = ""
+    drop_name: Annotated[str, text("Drop limit from", help="Whose limit of the drop it is.")] = ""
     rise_percent: (
         Annotated[
             float,
@@ -45,7 +45,7 @@ class Limits(Struct, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    rise_name: Annotated[str, text("Rise limit", help="Whose limit of the rise it is.")] = ""
+    rise_name: Annotated[str, text("Rise limit from", help="Whose limit of the rise it is.")] = ""
     most_loaded_percent: Annotated[float, field("Highest loading", "%", gt=0, le=1000)] = 100.0
     unbalance_percent: (
         Annotated[
@@ -54,7 +54,7 @@ class Limits(Struct, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    unbalance_name: Annotated[str, text("Unbalance limit", help="Whose limit of unbalance it is.")] = ""
+    unbalance_name: Annotated[str, text("Unbalance limit from", help="Whose limit of unbalance it is.")] = ""
     neutral_v: (
         Annotated[
             float,
@@ -62,8 +62,8 @@ class Limits(Struct, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    neutral_name: Annotated[str, text("Neutral limit", help="Whose limit of the neutral it is.")] = ""
-    start_name: Annotated[str, text("Start limits", help="Whose limits of motor starts these are.")] = ""
+    neutral_name: Annotated[str, text("Neutral limit from", help="Whose limit of the neutral it is.")] = ""
+    start_name: Annotated[str, text("Start limits from", help="Whose limits of motor starts these are.")] = ""
     start_supply_percent: (
         Annotated[
             float, field("Step at the supply", "%", gt=0, le=100, help="At a motor start. Blank: not judged.")
@@ -82,7 +82,13 @@ class Limits(Struct, frozen=True, kw_only=True):
     start_motor_percent: (
         Annotated[
             float,
-            field("Volts to start", "% of rated", gt=0, le=100, help="At the motor. Blank: not judged."),
+            field(
+                "Volts to start",
+                "% of rated",
+                gt=0,
+                le=100,
+                help="At the motor, of its rated volts. Blank: not judged.",
+            ),
         ]
         | None
     ) = None

@@ -80,7 +80,7 @@ Electrode = (
     Annotated[
         float,
         field(
-            "Neutral to earth",
+            "Earth electrode",
             "Ω",
             ge=0,
             le=1e6,

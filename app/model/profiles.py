@@ -84,7 +84,7 @@ class Year(Struct, frozen=True, kw_only=True):
         ]
         | None
     ) = None
-    money: Annotated[str, text("Money", longest=12, help="Unit of the price, such as EUR or £.")] = ""
+    money: Annotated[str, text("Currency", longest=12, help="Unit of the price, such as EUR or £.")] = ""
     kept: dict[str, Any] = held(default_factory=dict)
 
 

@@ -94,7 +94,7 @@ class FieldRow(QWidget):
             across.addWidget(self.editor)
             holder.setFixedHeight(BOX_HEIGHT)
             return holder
-        return Box(self.editor, self.field.unit.removesuffix(" of nominal"))
+        return Box(self.editor, self.field.unit.removesuffix(" of nominal").removesuffix(" of rated"))
 
     def _lay_out(self) -> None:
         self.grid = grid = QGridLayout(self)
