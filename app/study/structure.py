@@ -28,11 +28,15 @@ def structure_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[F
     if not layout.supplies:
         words = "No supply: nothing feeds this layout. Put a supply on the node where power comes in."
         return [Finding("no supply", Verdict.BLOCKS, (), words)]
-    return [
+    first = [
         *ring_findings(drawing, layout, zones),
         *level_findings(drawing, layout, zones),
         *_groups(drawing, layout, zones),
-        *phase_findings(drawing, layout, zones),
+    ]
+    blamed = {id for finding in first if finding.verdict is Verdict.BLOCKS for id in finding.ids}
+    return [
+        *first,
+        *phase_findings(drawing, layout, zones, blamed),
         *spacing_findings(drawing, layout, zones),
         *_plates(drawing, layout),
         *_dead(drawing, layout),

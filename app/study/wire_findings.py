@@ -1,7 +1,7 @@
 """What there is to say of phases and neutral: those that are not there, and how unlike the phases are."""
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 
 import numpy as np
 
@@ -21,12 +21,17 @@ Subject = Callable[[int, int, str], str]
 NO_PHASE, NO_NEUTRAL = "no such phase", "no neutral"
 
 
-def phase_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Finding]:
+def phase_findings(
+    drawing: Drawing, layout: Layout, zones: Zones, blamed: Collection[str] = ()
+) -> list[Finding]:
     """Phases and neutrals that elements are drawn on and that do not reach them.
+
+    What only follows is left out: of elements that are blamed for more, and where no phase reaches at all.
 
     drawing : the drawing
     layout : its graph
     zones : system (zone,) of each zone
+    blamed : ids of elements that something else bars already
 
     Returns : list of Finding; BLOCKS where a phase or a way back is missing, FAILS where a neutral is lost
     Source : common practice, no source
@@ -34,12 +39,18 @@ def phase_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Findi
     if not is_wired(drawing, layout, zones) and not _stated(layout):
         return []
     conductors = conductors_of(layout, zones)
-    return [
+    barring = [
         *_lines(drawing, layout, conductors),
         *_units(drawing, layout, conductors),
         *_hung(drawing, layout, conductors),
-        *_lost(drawing, layout, conductors),
     ]
+    causes = [f for f in barring if f.ids[0] not in blamed and not _follows(layout, conductors, f)]
+    return [*(causes if causes or blamed else barring), *_lost(drawing, layout, conductors)]
+
+
+def _follows(layout: Layout, conductors: Conductors, finding: Finding) -> bool:
+    """Whether no phase at all reaches where something lacks one: what is amiss lies before it."""
+    return any(not conductors.node[layout.node_row[id]] & ABC for id in finding.ids[1:])
 
 
 def _stated(layout: Layout) -> bool:
@@ -142,6 +153,7 @@ def on_lost_neutral(layout: Layout, conductors: Conductors) -> tuple[list[str], 
         node
         for node, drawn in enumerate(conductors.drawn)
         if layout.live[node] and drawn & NEUTRAL and not conductors.node[node] & NEUTRAL
+        if conductors.node[node] & ABC
     ]
     hung = [
         layout.attachment_ids[row]

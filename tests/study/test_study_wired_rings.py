@@ -7,7 +7,7 @@ from study_layouts import changed, drawing, line
 from unlike_layouts import feeder, pole, street
 
 from app.model.drawing import Case, Limits
-from app.model.kinds import Busbar, Joint, Load, Supply, Transformer
+from app.model.kinds import Busbar, Joint, Load, Motor, Supply, Transformer
 from app.study import run
 from app.study.outcome import Verdict
 from solver.status import Status
@@ -152,3 +152,39 @@ def test_two_wire_supplies_that_both_earth_their_neutral_exchange_by_earth_and_i
     (balanced,) = told(replace(base, limits=Limits()), "power exchanged")
     assert "earth" not in balanced.sentence
     assert f"{4.6 / abs(4 * z):.1f} A pass" in balanced.sentence  # out and back
+
+
+UNLIKE = {
+    "a loop": (
+        {"T2": unit("B2", "B3", v1_v=208.0, v2_v=208.0, phases="AB"), "C3": line("B3", "B2")},
+        "closed loop",
+    ),
+    "a group": (
+        {"T2": Transformer(start="B2", end="B3", v1_v=208.0, v2_v=400.0), "S1": "two-wire"},
+        "vector group",
+    ),
+    "a split": (
+        {"T2": Transformer(start="B2", end="B3", v1_v=208.0, v2_v=400.0), "S1": "split-phase"},
+        "no such phase",
+    ),
+    "a lateral": ({"T2": line("B2", "B3", phases="B"), "C3": line("B3", "B4", phases="C")}, "no such phase"),
+}
+
+
+@pytest.mark.parametrize("which", UNLIKE)
+def test_where_unlike_systems_meet_the_cause_alone_is_told(which):
+    """Not all that lies beyond: lines, loads and motors that no phase reaches on that account."""
+    extra, check = UNLIKE[which]
+    wires = extra.get("S1", "three-phase")
+    parts = {id: part for id, part in extra.items() if id != "S1"}
+    base = drawing(
+        B1=Busbar(), S1=Supply(node="B1", nominal_v=208.0, wires=wires), C1=line("B1", "B2"), B2=Busbar(),
+        B3=Busbar(), L1=Load(node="B3", demand_kva=1.0, phases="B"), M1=Motor(node="B3", rated_kw=1.0),
+        C9=line("B3", "B4", phases="C"), B4=Busbar(), L2=Load(node="B4", demand_kva=1.0, phases="C"), **parts,
+    )  # fmt: skip
+    if which == "a lateral":
+        base = changed(base, C9=None, M1=None)
+    found = barred(base)
+    assert [f.check for f in found] == [check], [f.sentence for f in found]
+    assert not told(base, "no neutral")
+    assert set(found[0].ids) & {"T2", "C3"}
