@@ -125,10 +125,10 @@ class Paper(QGraphicsScene):
 
     def _name(self, id: str) -> bool:
         """Write the caption; supplies and scaled loads say their power in it."""
-        drawing = self._laid
-        lines, element = wording.caption(drawing, id), drawing.elements[id]
+        drawing, shown = self._laid, 0 if self._shown is None else self._shown.case
+        case = drawing.cases[min(shown, len(drawing.cases) - 1)]
+        lines, element = wording.caption(drawing, id, case), drawing.elements[id]
         if self._shown is not None and id in self._shown.outcome.attachments:
-            case = drawing.cases[min(self._shown.case, len(drawing.cases) - 1)]
             lines += wording.attachment_figures(id, element, case, *self._shown.rows("attachments", id))
         return self.captions[id].write(lines)
 

@@ -33,13 +33,15 @@ NAME_WIDTH = 26  # letters
 LINE_WIDTH = 36
 
 
-def caption(drawing: Drawing, id: str) -> Lines:
-    """The name, and what it is in a line or two."""
+def caption(drawing: Drawing, id: str, case: Case) -> Lines:
+    """The name, and what it is in a line or two; a capacitor that is off in the case says so."""
     element = drawing.elements[id]
     bare = isinstance(element, Joint) and not element.name
     style = Style.QUIET if bare else Style.NAME
     name = tuple((Run(text, style),) for text in wrapped(element.name, NAME_WIDTH) or [id])
     said = [text for line in describe(element) for text in wrapped(line, LINE_WIDTH)]
+    if isinstance(element, Capacitor) and not percent_of(case, id, element):
+        said[-1] += ", off"
     return name + tuple((Run(text, Style.QUIET),) for text in said)
 
 
@@ -81,7 +83,7 @@ def describe(element: AnyElement) -> tuple[str, ...]:
                 kvar = f", holds {figures.typed(element.hold_percent)} %"
             return (f"{figures.typed(element.output_kw)} kW{kvar}",)
         case Capacitor():
-            return (f"{figures.typed(element.rating_kvar)} kvar" + ("" if element.connected else ", off"),)
+            return (f"{figures.typed(element.rating_kvar)} kvar",)
     return ()
 
 
@@ -250,7 +252,8 @@ def attachment_figures(
     if not told or not state.live:
         return ()
     if not percent and not isinstance(element, Generator):
-        return () if getattr(element, "state", "") == "off" else ((Run("off"),),)  # once is enough
+        said = isinstance(element, Capacitor) or getattr(element, "state", "") == "off"
+        return () if said else ((Run("off"),),)  # once is enough
     if isinstance(element, Capacitor):
         return ((Run(figures.power(state.kvar, "kvar")),),)
     line: Line = (Run(figures.power(state.kw)),)

@@ -14,7 +14,7 @@ from app.model import edits
 from app.model.case_words import own_told
 from app.model.drawing import Case, Drawing, Limits, Project
 from app.model.fields import Field, fields_of
-from app.model.kinds import KINDS, kind_of
+from app.model.kinds import KINDS, Switch, kind_of
 from app.model.typing_in import limit_percent, value_of
 from app.model.units import UnitError
 from app.panels.element_words import many, step_text
@@ -48,6 +48,8 @@ class ProjectPage(Page):
         self.own = Sentence("quiet")
         self.down.addWidget(self.own)
         self._add_links()
+        self.alike = Sentence("quiet")
+        self.down.addWidget(self.alike)
         self.counts = Sentence("quiet")
         self.down.addWidget(self.counts)
 
@@ -67,6 +69,7 @@ class ProjectPage(Page):
         self.year.refresh()
         self.own.say(own_words(drawing, case))
         self.away.setVisible(len(drawing.cases) > 1)
+        self.alike.say(alike_words(drawing))
         self.counts.say(drawn(drawing))
 
     def commit(self) -> None:
@@ -125,6 +128,13 @@ class ProjectPage(Page):
 
     def _set_case(self, drawing: Drawing, **fields: Any) -> Drawing:
         return edits.set_case(drawing, self._attention.case, **fields)
+
+
+def alike_words(drawing: Drawing) -> str:
+    """That no case opens or closes a switch, where there are several and a switch is drawn."""
+    if len(drawing.cases) < 2 or not any(isinstance(e, Switch) for e in drawing.elements.values()):
+        return ""
+    return "Switches stand alike in all cases; another switching is a drawing of its own."
 
 
 def own_words(drawing: Drawing, case: int) -> str:

@@ -9,9 +9,9 @@ from app.canvas.element_item import Look
 from app.canvas.lettering import words
 from app.canvas.paper import Paper
 from app.canvas.standing import Standing
-from app.model.drawing import Case, Drawing
+from app.model.drawing import Case, Drawing, Own
 from app.model.figures import change, power
-from app.model.kinds import Busbar, Cable, Joint, Load, Supply, Switch
+from app.model.kinds import Busbar, Cable, Capacitor, Joint, Load, Supply, Switch
 from app.study import run
 
 
@@ -63,3 +63,21 @@ def test_a_supply_tells_its_change_as_the_head_does(then):
     said = change(89.57, then, power)
     assert said
     assert words((line,)) == f"{power(89.57)} {said}"
+
+
+def test_a_capacitor_is_off_in_the_cases_in_which_it_is(qapp):
+    own = {"Q1": Own(percent=100.0)}, {"Q2": Own(percent=0.0)}
+    drawing = Drawing(
+        elements={
+            "B1": Busbar(), "S1": Supply(node="B1", dx=-4, dy=0), "L1": Load(node="B1"),
+            "Q1": Capacitor(node="B1", connected=False), "Q2": Capacitor(node="B1"),
+        },
+        cases=(Case(name="Peak", own=own[0]), Case(name="Night", own=own[1])),
+    )  # fmt: skip
+    paper, outcome = Paper(Look()), run(drawing)
+    paper.lay_out(drawing)
+    for case, off in ((0, (False, False)), (1, (True, True)), (0, (False, False))):
+        paper.show_outcome(drawing, outcome, case, None)
+        told = tuple(paper.captions[id].text for id in ("Q1", "Q2"))
+        assert tuple(text.count("off") for text in told) == off
+        assert all(", off" in text for text, is_off in zip(told, off, strict=True) if is_off)

@@ -5,7 +5,9 @@ from panels_stage import ONE, TWO, fernhollow, stage, type_text
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
 
+from app.model import edits
 from app.model.drawing import Own
+from app.model.kinds import Switch
 
 
 @pytest.fixture
@@ -90,3 +92,16 @@ def test_a_single_case_shows_no_rows_until_there_is_another_made_and_removed_wit
     made.session.history.undo()
     assert made.drawing.cases[1].own["L2"].percent == 0
     made.solving.stop()
+
+
+def test_the_card_says_that_switches_stand_alike_in_all_cases(set_up):
+    card, session = set_up.card, set_up.session
+    set_up.attention.select(())
+    assert card.project.alike.isHidden()
+    switch = Switch(start="B1", end="J1", closed=False)
+    session.edit("Add a switch", lambda drawing: edits.put(drawing, {"W9": switch}))
+    set_up.solving.settle()
+    assert "Switches stand alike in all cases" in card.project.alike.text()
+    session.edit("One case", lambda drawing: edits.remove_case(drawing, 1))
+    set_up.solving.settle()
+    assert card.project.alike.isHidden()
