@@ -1,7 +1,9 @@
 """Boards held against the highest fault current, devices against the least earth-fault current."""
 
 from app.model.drawing import Drawing
+from app.model.fault_data import LOW_V
 from app.model.figures import amps, plain
+from app.model.kinds import Supply
 from app.study.fault_devices import NOT_FED, Device, devices
 from app.study.graph import Layout
 from app.study.outcome import FaultState, Finding, Table, Verdict
@@ -9,6 +11,7 @@ from app.study.words import list_of, tell
 
 RATING, DEVICE, UNSTATED = "fault rating", "earth fault", "fault level"
 NEAR = 0.1  # of the limit: a margin below this is near it
+NONE_KA = 0.005  # prints as 0.00 kA
 BOARD_RULE = "the fault rating stated for it"
 DEVICE_RULE = "the trip current stated for its device"
 
@@ -55,8 +58,39 @@ def fault_findings(drawing: Drawing, layout: Layout, table: Table[FaultState]) -
         for row in layout.supplies
         if (s := layout.attachments[row]).fault_level_max_mva is None and s.fault_level_min_mva is None  # type: ignore[attr-defined]
     ]
-    found = _worst(_boards(drawing, table)) + _devices(drawing, layout, table)
+    open_ = _without_z0(drawing, layout)
+    unseen = [id for id in drawing.nodes() if open_ and _unseen(table.at(id))]
+    found = _worst(_boards(drawing, table, unseen)) + _devices(drawing, layout, table)
+    if unseen:
+        found.append(_no_way_back(drawing, unseen, open_))
     return tuple(found + ([_unstated(drawing, silent)] if silent else []))
+
+
+def _without_z0(drawing: Drawing, layout: Layout) -> list[str]:
+    """Supplies above 1 kV that count as unearthed because nobody stated their zero sequence."""
+    supplies = {layout.attachment_ids[row]: layout.attachments[row] for row in layout.supplies}
+    return [
+        id
+        for id, s in supplies.items()
+        if isinstance(s, Supply) and s.z0_ratio is None and s.nominal_v > LOW_V and s.wires != "split-phase"
+    ]
+
+
+def _unseen(state: FaultState) -> bool:
+    """On few phases, and no fault of any sort draws a current worth telling."""
+    return state.live and state.ik3_max_ka != state.ik3_max_ka and state.ip_ka < NONE_KA
+
+
+def _no_way_back(drawing: Drawing, nodes: list[str], supplies: list[str]) -> Finding:
+    one = len(supplies) == 1
+    words = (
+        f"Faults at {list_of(drawing, nodes)} find next to no current, because {list_of(drawing, supplies)} "
+    )
+    words += (
+        f"{'has' if one else 'have'} no Z0/Z1 and so {'counts' if one else 'count'} as unearthed: what hangs "
+    )
+    words += "between a phase and earth is fed through it. No board there is judged; ask the utility."
+    return Finding(UNSTATED, Verdict.NOTE, (*nodes, *supplies), words)
 
 
 def _worst(found: list[Finding]) -> list[Finding]:
@@ -72,11 +106,11 @@ def _verdict(margin: float, limit: float) -> Verdict:
     return Verdict.NEAR if margin < NEAR * limit else Verdict.HOLDS
 
 
-def _boards(drawing: Drawing, table: Table[FaultState]) -> list[Finding]:
+def _boards(drawing: Drawing, table: Table[FaultState], unseen: list[str]) -> list[Finding]:
     found = []
     for id, node in drawing.nodes().items():
         limit, state = node.withstand_ka, table.at(id)
-        if limit is None or not state.live:
+        if limit is None or not state.live or id in unseen:
             continue
         words, value = greatest(state)
         if value != value:

@@ -1,10 +1,10 @@
 """Fault currents where phases are not alike: against the independent four-wire solution, and closed forms."""
 
 import math
-from dataclasses import asdict
 
 import pytest
 from fault_loops import FaultLoops
+from msgspec.structs import asdict
 from study_layouts import changed, drawing, line
 
 from app.model import edits
@@ -178,3 +178,20 @@ def test_the_peak_of_a_radial_lateral_needs_no_equivalent_frequency():
     kappa = 1.02 + 0.98 * math.exp(-3 * state.rx_peak)
     assert state.ip_ka == pytest.approx(kappa * math.sqrt(2) * state.ikn_max_ka, rel=1e-9)
     assert hold(ringed, skip=("B5", "B6", "B7")) == 2
+
+
+def test_a_service_behind_a_supply_without_zero_sequence_is_not_passed_off_as_safe():
+    """A unit from phase to earth is fed through the zero sequence: where nobody states it no board holds."""
+    service = dict(
+        B1=Busbar(), S1=Supply(node="B1", nominal_v=12470.0, **LEVEL),
+        T1=Transformer(start="B1", end="B2", v1_v=7200.0, v2_v=240.0, vector_group="Ii0",
+        build="centre-tapped", phases="A", rating_kva=25.0), B2=Busbar(withstand_ka=0.5),
+    )  # fmt: skip
+    blank = run(drawing(**service)).findings
+    (told,) = (f for f in blank if f.check == "fault level")
+    assert told.ids == ("B2", "S1")
+    assert "because S1 has no Z0/Z1" in told.sentence
+    assert not [f for f in blank if f.check == "fault rating"]
+    stated = run(edits.change(drawing(**service), "S1", z0_ratio=1.0)).findings
+    assert [f.verdict for f in stated if f.check == "fault rating"] == [Verdict.FAILS]
+    assert not [f for f in stated if f.check == "fault level"]
