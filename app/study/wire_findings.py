@@ -12,6 +12,7 @@ from app.study.checking import NEAR_SHARE, SET_HERE, Check
 from app.study.conductors import Conductors, conductors_of, is_wired
 from app.study.graph import NONE, Layout
 from app.study.outcome import BranchWires, Finding, NodeWires, Table, Verdict, Wired
+from app.study.unit_wires import OPEN
 from app.study.wire_words import conductor
 from app.study.wires import ABC, NEUTRAL, N, bits, letters
 from app.study.words import list_of, tell
@@ -19,6 +20,10 @@ from app.study.zones import Zones
 
 Subject = Callable[[int, int, str], str]
 NO_PHASE, NO_NEUTRAL = "no such phase", "no neutral"
+OF_BANK = {
+    OPEN[0]: "AB, BC or CA, the pair that no coil bridges, or all, which leaves CA open",
+    OPEN[1]: "AB, BC or CA, the phases of its star, or all, which takes A and B",
+}
 
 
 def phase_findings(
@@ -95,6 +100,13 @@ def _units(drawing: Drawing, layout: Layout, conductors: Conductors) -> list[Fin
             continue
         assert isinstance(unit, Transformer)
         id, wires = layout.branch_ids[row], conductors.units.get(row)
+        if unit.build in OPEN and len(unit.phases) == 1:
+            words = (
+                f"{tell(drawing, id)} ({unit.build}) states phase {unit.phases}, but has two coils. "
+                f"Allowed are {OF_BANK[unit.build]}."
+            )
+            found.append(Finding(NO_PHASE, Verdict.BLOCKS, (id,), words))
+            continue
         fed = layout.end[row] if layout.fed_by[node] == row else node
         if wires is None:
             words = (

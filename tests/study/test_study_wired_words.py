@@ -127,3 +127,24 @@ def test_where_a_lost_neutral_bars_the_operating_point_that_is_said_first(hung):
     assert not any("infeed" in finding.sentence for finding in outcome.findings)
     whole = run(changed(base, C1=line("B1", "B2")))
     assert whole.status is Status.SOLVED
+
+
+@pytest.mark.parametrize("build", ["open delta", "open star to open delta"])
+def test_a_bank_of_two_coils_on_one_letter_says_what_is_allowed(build):
+    unit = Transformer(
+        start="B1", end="B2", v1_v=12470.0, v2_v=240.0, build=build, vector_group="Dd0", rating_kva=50.0
+    )
+    base = drawing(
+        B1=Busbar(),
+        S1=Supply(node="B1", nominal_v=12470.0),
+        T1=unit,
+        B2=Busbar(),
+        L1=Load(node="B2", demand_kva=5.0),
+    )
+    assert run(base).status is Status.SOLVED
+    assert run(changed(base, T1=replace(unit, phases="BC"))).status is Status.SOLVED
+    outcome = run(changed(base, T1=replace(unit, phases="B")))
+    (found,) = [f for f in outcome.findings if f.verdict is Verdict.BLOCKS]
+    assert found.ids == ("T1",)
+    assert f"({build}) states phase B" in found.sentence
+    assert "Allowed are AB, BC or CA" in found.sentence
