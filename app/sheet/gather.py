@@ -16,6 +16,7 @@ TOGETHER = (  # tabs that may share one, and its name, the broadest first; where
     ("Loads and supplies", ("Loads", "Supplies")),
     ("Motors", ("Motors", "Motor starts")),
     ("Supplies", ("Supplies", "Switches")),
+    ("Faults", ("Faults", "Circuit ends", "Devices", "Withstand")),
     ("Faults", ("Faults", "Circuit ends", "Devices")),
     ("Balance", ("Balance", "Losses")),
     ("Year", ("Year", "Year basis")),

@@ -20,13 +20,14 @@ from app.sheet.spacing import spacing_tables
 from app.sheet.subject import Subject
 from app.sheet.table import SheetTable
 from app.sheet.transformers import transformer_tables
+from app.sheet.withstand import withstand_tables
 from app.sheet.year import year_tables
 from app.study.outcome import Outcome
 
 PARTS = (
     head_tables, basis_tables, node_tables, line_tables, spacing_tables, transformer_tables,
     regulator_tables, load_tables, motor_tables,
-    source_tables, intake_tables, switch_tables, fault_tables, balance_tables, year_tables,
+    source_tables, intake_tables, switch_tables, fault_tables, withstand_tables, balance_tables, year_tables,
     finding_tables, build_tables, site_tables, note_tables,
 )  # fmt: skip
 BY_PHASE = {  # in their place where phases are solved one by one

@@ -138,3 +138,16 @@ def test_the_value_of_a_note_stands_beside_its_words() -> None:
     row = next(str(n) for n, f in enumerate(outcome.findings) if f.check == "start torque")
     assert made.at(row, "value").value == pytest.approx(outcome.starts.at("M1", 0).torque_percent)
     assert made.at(row, "limit").value is None
+
+
+def test_how_long_a_cable_bears_the_highest_fault(tmp_path: Path) -> None:
+    """k·S = 94·240 A·√s (Al, XLPE) against the earth fault at Board A, which is above the three-phase one."""
+    told, at = files(place("kettlewick_ring"), tmp_path)["withstand"], run(place("kettlewick_ring")).faults
+    row = told["C2"]
+    most = max(at.at("B3").ik2e_max_ka, at.at("B3").ik1_max_ka, at.at("B3").ik3_max_ka)
+    assert float(row["Ik max at its ends [kA]"]) == most > at.at("B3").ik3_max_ka
+    assert float(row["Bears that for [s]"]) == pytest.approx((94 * 240 / (most * 1e3)) ** 2, rel=1e-12)
+    plastic = edits.change(place("kettlewick_ring"), "C2", fault_degc=70.0)
+    assert float(files(plastic, tmp_path)["withstand"]["C2"]["k [A·√s/mm²]"]) == 76
+    copper = files(place("hobscar_quarry"), tmp_path)["withstand"]["C1"]
+    assert (copper["k [A·√s/mm²]"], copper["Bears for 1 s [kA]"]) == ("143.0", "26.455")
