@@ -18,8 +18,7 @@ if TYPE_CHECKING:
 State = TypeVar("State")
 
 
-@dataclass(frozen=True, slots=True)
-class NodeState:
+class NodeState(Struct, frozen=True):
     """One node in one case. Volts are between lines (three-phase) or between the two wires; where phases
     are solved one by one, those of the lowest phase as if the others were like it."""
 
@@ -33,8 +32,7 @@ class NodeState:
     route_m: float  # route length from the supply
 
 
-@dataclass(frozen=True, slots=True)
-class BranchState:
+class BranchState(Struct, frozen=True):
     """One branch in one case. Powers are those that enter at `start` and leave at `end`, so a branch
     fed from its end carries negative power. `forward`: fed from its start; on a ring, as the power flows."""
 
@@ -61,8 +59,7 @@ class BranchState:
     notch: float  # where the tap of a transformer or a regulator stands; nan for other branches
 
 
-@dataclass(frozen=True, slots=True)
-class AttachmentState:
+class AttachmentState(Struct, frozen=True):
     """One attachment in one case. Power is drawn by loads (positive) and fed in by supplies,
     generators and capacitors (positive)."""
 
@@ -73,8 +70,7 @@ class AttachmentState:
     voltage_v: float
 
 
-@dataclass(frozen=True, slots=True)
-class FaultState:
+class FaultState(Struct, frozen=True):
     """Fault currents at one node, initial symmetrical, without a loading case; nan for what a node has not.
     Two-wire: between the wires, and to earth. `live`: worked out; else all are nan."""
 
@@ -98,8 +94,7 @@ class FaultState:
     ikn_min_ka: float
 
 
-@dataclass(frozen=True, slots=True)
-class NodeWires:
+class NodeWires(Struct, frozen=True):
     """One node in one case, conductor by conductor: nan where there is no such conductor."""
 
     system: str  # three-phase, two-wire or split-phase
@@ -114,8 +109,7 @@ class NodeWires:
     spread_percent: float  # largest deviation of a line voltage from the mean of the three, over the mean
 
 
-@dataclass(frozen=True, slots=True)
-class BranchWires:
+class BranchWires(Struct, frozen=True):
     """One branch in one case, conductor by conductor: amperes at the worst of both ends, of all parallel runs
     together; of a transformer those of the winding that is fed."""
 
@@ -129,8 +123,7 @@ class BranchWires:
     c_notch: float = math.nan
 
 
-@dataclass(frozen=True, slots=True)
-class AttachmentWires:
+class AttachmentWires(Struct, frozen=True):
     """One attachment in one case, conductor by conductor: amperes in its leads."""
 
     phases: str  # conductors it hangs on, such as ABCN, BN or CA

@@ -80,7 +80,7 @@ def _dead(layout: Layout, zones: Zones, cases: int) -> Tables:
 
 def _dead_table(state: Any, row: dict[str, int], cases: int, known: dict[str, NDArray[Any]]) -> Table[Any]:
     nothing, no = np.full((len(row), cases), np.nan), np.zeros(len(row), dtype=bool)
-    columns = {f.name: known.get(f.name, no if f.name == "live" else nothing) for f in fields(state)}
+    columns = {f: known.get(f, no if f == "live" else nothing) for f in state.__annotations__}
     return Table(state, tuple(row), columns, row)
 
 

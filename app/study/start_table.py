@@ -2,11 +2,12 @@
 
 from dataclasses import dataclass
 
+from msgspec import Struct
+
 from app.study.outcome import Table
 
 
-@dataclass(frozen=True, slots=True)
-class StartState:
+class StartState(Struct, frozen=True):
     """One motor's start in one case; nan where it finds no operating point, and then not solved, or where
     motors stand still in the case. Steps are falls from the volts
     before, in percent of these; volts are between lines, or between the two wires."""

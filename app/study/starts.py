@@ -1,6 +1,6 @@
 """Motor starts: each motor in turn while the rest runs, behind the impedance of the supply; one batch."""
 
-from dataclasses import fields, replace
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -205,7 +205,7 @@ def _torque(motors: list[Motor], percent: Real) -> Real:
 
 
 def _nothing(count: int, cases: int) -> dict[str, NDArray[Any]]:
-    none = {f.name: np.full((count, cases), np.nan) for f in fields(StartState)}
+    none = {name: np.full((count, cases), np.nan) for name in StartState.__struct_fields__}
     none |= {name: np.zeros((count, cases), dtype="U5") for name in none if name.endswith("_phase")}
     return {**none, "solved": np.zeros((count, cases), dtype=bool)}
 

@@ -113,7 +113,7 @@ def figures(
         "drop_percent": 100 - percent,
         "route_m": np.zeros(len(nodes)),
     }
-    names = BranchState.__dataclass_fields__
+    names = BranchState.__struct_fields__
     shape = (len(branches), len(cases))
     branch = {n: made.uniform(0.1, 1.0, shape) for n in names}
     branch["live"] = np.array([[i not in dead for _ in cases] for i in branches]).reshape(shape)
@@ -123,7 +123,7 @@ def figures(
     branch["through_kw"] = branch["start_kw"]
     branch["loaded_percent"] = made.uniform(5, 95, shape)
     shape = (len(attachments), len(cases))
-    attachment = {n: made.uniform(1, 9, shape) for n in AttachmentState.__dataclass_fields__}
+    attachment = {n: made.uniform(1, 9, shape) for n in AttachmentState.__struct_fields__}
     attachment["live"] = np.ones(shape, bool)
     nought = np.zeros(len(cases))
     found = [Finding("loading", Verdict.FAILS, (i,), f"{i} fails.") for i in failing]

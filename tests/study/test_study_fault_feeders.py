@@ -1,10 +1,10 @@
 """Motors and sets that feed faults: closed form, one nodal matrix, and never in the least currents."""
 
 import math
-from dataclasses import asdict
 
 import pytest
 from fault_phases import PhaseFaults
+from msgspec.structs import asdict
 from study_layouts import changed, drawing, line
 
 from app.model import edits
