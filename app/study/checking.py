@@ -6,8 +6,10 @@ import numpy as np
 from msgspec import Struct
 from numpy.typing import NDArray
 
+from app.model.drawing import Drawing
 from app.model.figures import plain
 from app.study.outcome import Finding, Verdict
+from app.study.words import list_of
 
 NEAR_VOLTAGE = 1.0  # % of nominal: a voltage this close to its limit is near it
 NEAR_SHARE = 0.9  # of the limit: a drop or a loading beyond this is near it
@@ -16,6 +18,7 @@ NOISE = 1e-9  # %, what the arithmetic leaves open: a value this close to its li
 SET_HERE = "the limit set for this drawing"
 LOADING = "the loading limit set for this drawing"
 Real = NDArray[np.float64]
+Subject = Callable[[int, int, str], str]  # row, case and value as text, to words
 
 
 class Check(Struct, frozen=True):
@@ -38,7 +41,7 @@ class Check(Struct, frozen=True):
     limit: float
     low: bool
     near: float
-    subject: Callable[[int, int, str], str]
+    subject: Subject
     rule: str
     unit: str = "%"
 
@@ -72,6 +75,20 @@ def findings_of(
         _finding(check, int(row), int(worst_case[row]), float(worst[row]), whose, cases, tuple(verdicts))
         for row, verdicts in zip(rows, by_case, strict=True)
     ]
+
+
+def unrated(drawing: Drawing, ids: tuple[str, ...]) -> list[Finding]:
+    """One note on all branches whose loading nobody can judge.
+
+    drawing : the drawing, for names
+    ids : of live branches without a rating
+
+    Returns : list of one NOTE, or of none
+    """
+    if not ids:
+        return []
+    words = f"The loading of {list_of(drawing, ids)} is not judged: no rating is given."
+    return [Finding("not judged", Verdict.NOTE, ids, words)]
 
 
 def margin_of(value: Real | float, limit: float, low: bool) -> Real:

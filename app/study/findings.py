@@ -13,10 +13,11 @@ from app.study.checking import (
     SET_HERE,
     Check,
     findings_of,
+    unrated,
 )
-from app.study.outcome import BranchState, Finding, NodeState, Table, Verdict, Wired
+from app.study.outcome import BranchState, Finding, NodeState, Table, Wired
 from app.study.wire_findings import branch_words, node_words, wire_checks
-from app.study.words import list_of, tell
+from app.study.words import tell
 
 Real = NDArray[np.float64]
 
@@ -54,20 +55,15 @@ def judge(
     if wires is not None:
         checks += wire_checks(drawing, wires)
     found = [one for check, whose in checks for one in findings_of(check, whose, cases)]
-    return found + _unrated(drawing, branches)
+    return found + unrated(drawing, _without_rating(branches))
 
 
-def _unrated(drawing: Drawing, branches: Table[BranchState]) -> list[Finding]:
-    """One note on all live branches whose loading nobody can judge."""
+def _without_rating(branches: Table[BranchState]) -> tuple[str, ...]:
     if not branches.ids:
-        return []
+        return ()
     live = branches.column("live").reshape(len(branches.ids), -1).any(axis=1)
     unknown = live & np.isnan(branches.column("loaded_percent")).all(axis=1)
-    ids = tuple(branches.ids[row] for row in np.flatnonzero(unknown))
-    if not ids:
-        return []
-    words = f"The loading of {list_of(drawing, ids)} is not judged: no rating is given."
-    return [Finding("not judged", Verdict.NOTE, ids, words)]
+    return tuple(branches.ids[row] for row in np.flatnonzero(unknown))
 
 
 def _voltage(

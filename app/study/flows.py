@@ -1,6 +1,7 @@
 """What balanced layouts and those with phases share: ways of flow, notches, routes, the balance."""
 
 import math
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -65,6 +66,37 @@ def through_of(onward: NDArray[np.bool_], start_s: Complex, end_s: Complex) -> C
     """
     here, there = np.where(onward, start_s, -end_s), np.where(onward, end_s, -start_s)
     return np.where(here.real >= 0, here, there)
+
+
+def powers_of(
+    onward: NDArray[np.bool_],
+    is_unit: NDArray[np.bool_],
+    ends: tuple[Complex, Complex],
+    losses: tuple[NDArray[Any], NDArray[Any]],
+) -> dict[str, Real]:
+    """The powers of every branch.
+
+    onward : (branch, case or 1) bool, fed from its start
+    is_unit : (branch, 1) bool, transformers and regulators
+    ends : (branch, case) complex [kVA] entering at start, and leaving at end; nan where dead
+    losses : (branch, case) complex [kVA] in series, and in shunt
+
+    Returns : columns of BranchState (branch, case) float [kW, kvar, kVA]
+    """
+    (start_s, end_s), (series, shunt) = ends, losses
+    entering = through_of(onward, start_s, end_s)
+    return {
+        "start_kw": start_s.real,
+        "start_kvar": start_s.imag,
+        "end_kw": end_s.real,
+        "end_kvar": end_s.imag,
+        "through_kw": entering.real,
+        "through_kva": np.abs(entering),
+        "loss_kw": series.real + shunt.real,
+        "copper_kw": series.real,
+        "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_s), np.nan, 0.0)),
+        "loss_kvar": series.imag + shunt.imag,
+    }
 
 
 def forward_of(layout: Layout, through: Complex) -> NDArray[np.bool_]:

@@ -8,8 +8,7 @@ from app.model.kinds import Regulator, Transformer
 from app.model.levels import SPLIT, TWO_WIRE
 from app.study.layout import Layout
 from app.study.rows import Rows
-from app.study.wire_volts import TO_NEUTRAL, TO_NEXT, against, base_volts
-from app.study.wire_words import conductor as named
+from app.study.wire_volts import TO_NEUTRAL, TO_NEXT, against, base_volts, phase_name
 from app.study.wires import ABC, LETTERS, letters, slots
 from app.study.zones import Zones
 
@@ -75,7 +74,7 @@ def measures_of(layout: Layout, zones: Zones, rows: Rows) -> Callable[[int], lis
             following = (slot + 1) % 3
             between = kind[held] == TO_NEXT and not alone and following in here
             to = following if between else None
-            phase = named(LETTERS[slot], system) + (f"–{LETTERS[following]}" if between else "")
+            phase = phase_name(slot, TO_NEXT if between else TO_NEUTRAL, system)
             size = unit if between or kind[held] != TO_NEXT else (unit[0] / 3**0.5, unit[1] / 3**0.5)
             return Measure(slot, to, size, back, alone, phase)
 

@@ -9,7 +9,7 @@ from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
-from app.study.flows import balance_of, forward_of, notches_of, roles, routes_of, through_of
+from app.study.flows import balance_of, forward_of, notches_of, powers_of, roles, routes_of
 from app.study.layout import Layout, arrays_of
 from app.study.memory import Columns
 from app.study.outcome import AttachmentState, Balance, BranchState, NodeState, Table, Wired
@@ -71,15 +71,27 @@ def _dead(layout: Layout, zones: Zones, cases: int) -> Tables:
     known = {"nominal_v": nominal_of(layout, zones), "route_m": routes_of(layout)}
     none = np.full(cases, np.nan)
     return Tables(
-        _dead_table(NodeState, layout.node_row, cases, known),
-        _dead_table(BranchState, layout.branch_row, cases, {"forward": arrays_of(layout).forward}),
-        _dead_table(AttachmentState, layout.attachment_row, cases, {}),
+        blank_table(NodeState, layout.node_row, known, cases),
+        blank_table(BranchState, layout.branch_row, {"forward": arrays_of(layout).forward}, cases),
+        blank_table(AttachmentState, layout.attachment_row, {}, cases),
         Balance(*[none] * len(fields(Balance))),
     )
 
 
-def _dead_table(state: Any, row: dict[str, int], cases: int, known: dict[str, NDArray[Any]]) -> Table[Any]:
-    nothing, no = np.full((len(row), cases), np.nan), np.zeros(len(row), dtype=bool)
+def blank_table(
+    state: Any, row: dict[str, int], known: dict[str, NDArray[Any]], cases: int | None = None
+) -> Table[Any]:
+    """A table in which nothing lives.
+
+    state : class of its rows
+    row : id to row
+    known : columns that are known all the same
+    cases : number of loading cases; None where figures have none
+
+    Returns : Table of nan
+    """
+    size = (len(row),) if cases is None else (len(row), cases)
+    nothing, no = np.full(size, np.nan), np.zeros(len(row), dtype=bool)
     columns = {f: known.get(f, no if f == "live" else nothing) for f in state.__annotations__}
     return Table(state, tuple(row), columns, row)
 
@@ -127,22 +139,13 @@ def _branches(layout: Layout, rows: Rows, solution: Solution, percent: Real) -> 
     is_unit[rows.units] = True
     ohms = np.full(count, complex(np.nan, np.nan))
     ohms[rows.lines], ohms[rows.units] = rows.network.line_z[:, 0, 0, 0], rows.network.transformer_z[:, 0]
-    columns = {
-        "live": ~np.isnan(start_a).all(axis=1) if cases else np.zeros(count, dtype=bool),
+    columns: dict[str, NDArray[Any]] = {
+        "live": np.asarray(~np.isnan(start_a).all(axis=1)) if cases else np.zeros(count, dtype=bool),
         "forward": forward,
         "current_a": np.where(is_unit, fed_a, np.maximum(start_a, end_a)),
         "start_a": start_a,
         "end_a": end_a,
-        "start_kw": start_s.real,
-        "start_kvar": start_s.imag,
-        "end_kw": end_s.real,
-        "end_kvar": end_s.imag,
-        "through_kw": through_of(onward, start_s, end_s).real,
-        "through_kva": np.abs(through_of(onward, start_s, end_s)),
-        "loss_kw": series.real + shunt.real,
-        "copper_kw": series.real,
-        "iron_kw": np.where(is_unit, shunt.real, np.where(np.isnan(start_a), np.nan, 0.0)),
-        "loss_kvar": series.imag + shunt.imag,
+        **powers_of(onward, is_unit, (start_s, end_s), (series, shunt)),
         "loaded_percent": _loading(layout, rows, start_a, end_a),
         "drop_percent": np.where(onward, 1.0, -1.0) * (percent[start] - percent[end]),
         "resistance_ohm": ohms.real,

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from app.model.kinds import Branch, Line, Regulator, Switch, Transformer
 from app.model.levels import TWO_WIRE
-from app.study.flows import forward_of, notches_of, through_of
+from app.study.flows import forward_of, notches_of, powers_of
 from app.study.layout import Layout, arrays_of
 from app.study.memory import Columns
 from app.study.outcome import BranchState, BranchWires, NodeState, NodeWires, Table
@@ -60,7 +60,6 @@ def wire_branches(
     shown = np.where(has, amps, np.nan)
     start_a, end_a = _most(has, at_start), _most(has, at_end)
     ohms = _ohms(layout, rows, phases)
-    entering = through_of(onward, start_s, end_s)
     known = ~np.isnan(start_s)
     columns = {
         "live": np.asarray(known.any(axis=1)),
@@ -68,16 +67,7 @@ def wire_branches(
         "current_a": np.where(known, np.where(has, amps, 0.0).max(axis=1), np.nan),
         "start_a": np.where(known, start_a, np.nan),
         "end_a": np.where(known, end_a, np.nan),
-        "start_kw": start_s.real,
-        "start_kvar": start_s.imag,
-        "end_kw": end_s.real,
-        "end_kvar": end_s.imag,
-        "through_kw": entering.real,
-        "through_kva": np.abs(entering),
-        "loss_kw": series.real + shunt.real,
-        "copper_kw": series.real,
-        "iron_kw": np.where(is_unit, shunt.real, np.where(known, 0.0, np.nan)),
-        "loss_kvar": series.imag + shunt.imag,
+        **powers_of(onward, is_unit, (start_s, end_s), (series, shunt)),
         "loaded_percent": np.where(known, _loading(layout, rows, at_start, at_end), np.nan),
         "drop_percent": _drop(layout, onward, nodes, phases),
         "resistance_ohm": ohms.real,

@@ -12,7 +12,7 @@ from app.study.layout import Layout, arrays_of
 from app.study.leads import in_leads
 from app.study.outcome import AttachmentState, AttachmentWires, NodeState, NodeWires, Table
 from app.study.rows import Rows
-from app.study.wire_volts import against, base_volts, phase_volts
+from app.study.wire_volts import KINDS, TO_NEXT, against, base_volts, phase_volts
 from app.study.wires import ABC, NEUTRAL, N, flags, letters
 from app.study.zones import Zones, nominal_of
 from solver import Solution
@@ -25,7 +25,6 @@ THIRD = np.exp(2j * np.pi / 3)
 TO_SEQUENCE = (
     np.array([[1, 1, 1], [1, THIRD, THIRD**2], [1, THIRD**2, THIRD]]) / 3
 )  # zero, positive, negative
-KINDS = ("neutral", "earth", "next phase")
 
 
 def wire_nodes(
@@ -58,7 +57,7 @@ def wire_nodes(
     low, high = _least(percent), -_least(-percent)
     sequence = np.abs(np.einsum("sp,npb->nsb", TO_SEQUENCE, volts[:, :3]))
     has_neutral = (drawn & NEUTRAL > 0)[:, None]
-    first = np.where((kind == 2)[:, None], volts[:, 0], _least_of_first(pairs))
+    first = np.where((kind == TO_NEXT)[:, None], volts[:, 0], _least_of_first(pairs))
     nodes = {
         "live": graph.live,
         "nominal_v": nominal,

@@ -14,6 +14,7 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
 TO_NEUTRAL, TO_EARTH, TO_NEXT = range(3)
+KINDS = ("neutral", "earth", "next phase")  # the same as tables have it
 
 
 def against(layout: Layout, zones: Zones, conductors: Conductors) -> Index:

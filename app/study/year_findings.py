@@ -1,20 +1,17 @@
 """A year held against the drawing's limits: how far, when, and for how many hours."""
 
-from collections.abc import Callable
-
 import numpy as np
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.figures import plain, volts
-from app.study.checking import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of
+from app.study.checking import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of, unrated
 from app.study.layout import Layout
 from app.study.outcome import Finding, Table, Verdict
-from app.study.words import list_of, tell
+from app.study.words import tell
 from app.study.year_outcome import BranchYear, Gap, NodeYear
 from app.study.year_points import Points, when
 
-Words = Callable[[int, int, str], str]
 NAMED = 4  # gaps that are named one by one
 
 
@@ -46,18 +43,13 @@ def year_findings(
         checks.append((_drop(drawing, nodes, limits.drop_percent, year_h), limits.drop_name or SET_HERE))
     checks.append((_loading(drawing, branches, year_h), LOADING))
     found += [one for check, whose in checks for one in findings_of(check, whose, ("The year",))]
-    return found + _stops(drawing, branches) + _unrated(drawing, branches)
+    unknown = branches.column("live") & np.isnan(branches.column("most_loaded_percent"))
+    ids = tuple(branches.ids[row] for row in np.flatnonzero(unknown))
+    return found + _stops(drawing, branches) + unrated(drawing, ids)
 
 
 def _for(hours: float, what: str) -> str:
     return f", {what} for {plain(hours, 0 if hours >= 10 else 1)} h of the year" if hours > 0 else ""
-
-
-def _check(
-    name: str, ids: tuple[str, ...], value: NDArray[np.float64], limit: float, low: bool, near: float,
-    subject: Words, rule: str,
-) -> Check:  # fmt: skip
-    return Check(name, ids, value[:, None], limit, low, near, subject, rule)
 
 
 def _voltage(drawing: Drawing, nodes: Table[NodeYear], low: bool, year_h: float) -> Check:
@@ -71,8 +63,8 @@ def _voltage(drawing: Drawing, nodes: Table[NodeYear], low: bool, year_h: float)
         who = tell(drawing, nodes.ids[row])
         return f"{who} {verb} to {value} of nominal, {volts(level)}, at {when(at, year_h)}{long}"
 
-    value = nodes.column(f"{side}_percent")
-    return _check(name, nodes.ids, value, limit, low, NEAR_VOLTAGE, subject, f"the {side} allowed is")
+    value = nodes.column(f"{side}_percent")[:, None]
+    return Check(name, nodes.ids, value, limit, low, NEAR_VOLTAGE, subject, f"the {side} allowed is")
 
 
 def _drop(drawing: Drawing, nodes: Table[NodeYear], limit: float, year_h: float) -> Check:
@@ -81,8 +73,8 @@ def _drop(drawing: Drawing, nodes: Table[NodeYear], limit: float, year_h: float)
         long = _for(float(nodes.column("hours_drop")[row]), "beyond the limit")
         return f"{tell(drawing, nodes.ids[row])} lies {value} of nominal below its supply at {at}{long}"
 
-    value, near = nodes.column("most_drop_percent"), limit * (1 - NEAR_SHARE)
-    return _check("voltage drop", nodes.ids, value, limit, False, near, subject, "the most allowed is")
+    value, near = nodes.column("most_drop_percent")[:, None], limit * (1 - NEAR_SHARE)
+    return Check("voltage drop", nodes.ids, value, limit, False, near, subject, "the most allowed is")
 
 
 def _loading(drawing: Drawing, branches: Table[BranchYear], year_h: float) -> Check:
@@ -93,8 +85,8 @@ def _loading(drawing: Drawing, branches: Table[BranchYear], year_h: float) -> Ch
         long = _for(float(branches.column("hours_over")[row]), "overloaded")
         return f"{tell(drawing, branches.ids[row])} is loaded to {value} of its rating at {at}{long}"
 
-    value, near = branches.column("most_loaded_percent"), limit * (1 - NEAR_SHARE)
-    return _check("loading", branches.ids, value, limit, False, near, subject, "the most allowed is")
+    value, near = branches.column("most_loaded_percent")[:, None], limit * (1 - NEAR_SHARE)
+    return Check("loading", branches.ids, value, limit, False, near, subject, "the most allowed is")
 
 
 def _gaps(gaps: tuple[Gap, ...], points: Points) -> list[Finding]:
@@ -155,12 +147,3 @@ def hunting_findings(drawing: Drawing, layout: Layout, hours: NDArray[np.float64
         for row, id in enumerate(layout.branch_ids)
         if hours[row] > 0
     ]
-
-
-def _unrated(drawing: Drawing, branches: Table[BranchYear]) -> list[Finding]:
-    live, loaded = branches.column("live"), branches.column("most_loaded_percent")
-    ids = tuple(branches.ids[row] for row in np.flatnonzero(live & np.isnan(loaded)))
-    if not ids:
-        return []
-    words = f"The loading of {list_of(drawing, ids)} is not judged: no rating is given."
-    return [Finding("not judged", Verdict.NOTE, ids, words)]

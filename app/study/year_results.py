@@ -2,7 +2,6 @@
 
 import math
 from dataclasses import fields
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +10,7 @@ from app.model.drawing import Drawing
 from app.study.changer_findings import barred_findings
 from app.study.layout import Layout, arrays_of
 from app.study.outcome import Finding, Table, Verdict
+from app.study.results import blank_table
 from app.study.words import tally_words
 from app.study.year_basis import basis_of
 from app.study.year_findings import year_findings
@@ -52,9 +52,9 @@ def blank_year(drawing: Drawing, layout: Layout, zones: Zones, found: list[Findi
         points=none,
         done=0,
         solved_h=0.0,
-        nodes=_table(NodeYear, layout.node_row, {"nominal_v": nominal_of(layout, zones)}),
-        branches=_table(BranchYear, layout.branch_row, {}),
-        attachments=_table(AttachmentYear, layout.attachment_row, {}),
+        nodes=blank_table(NodeYear, layout.node_row, {"nominal_v": nominal_of(layout, zones)}),
+        branches=blank_table(BranchYear, layout.branch_row, {}),
+        attachments=blank_table(AttachmentYear, layout.attachment_row, {}),
         balance=YearBalance(*[math.nan] * len(fields(YearBalance))),
         course=Course(*[empty] * len(fields(Course))),  # type: ignore[arg-type]
         gaps=(),
@@ -114,12 +114,6 @@ def _sentence(found: list[Finding], gaps: tuple[Gap, ...], tally: Tally, done: i
     if gaps:
         return f"Solved but for {sum(g.hours for g in gaps):g} h. {tally_words(found)}."
     return f"Solved. {tally_words(found)}."
-
-
-def _table(state: Any, row: dict[str, int], columns: dict[str, NDArray[Any]]) -> Table[Any]:
-    nothing, no = np.full(len(row), np.nan), np.zeros(len(row), dtype=bool)
-    whole = {f.name: columns.get(f.name, no if f.name == "live" else nothing) for f in fields(state)}
-    return Table(state, tuple(row), whole, row)
 
 
 def _at(most: Most, points: Points) -> Real:
