@@ -168,6 +168,7 @@ class PullTool(Tool):
             self.field.feed(event)
             if self.field.text():
                 self._aim_ahead()
+            self.view.float_again()  # the hint gives way to what is typed, and comes back
         return True
 
     def _aim_ahead(self) -> None:

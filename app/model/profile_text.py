@@ -111,6 +111,7 @@ def _comma(written: Sequence[tuple[int, str]]) -> str | None:
         return None
     decimals = [re.fullmatch(r"([+\-−]?\d+),(\d+)\s*%?", line) for _, line in with_comma]
     if not all(decimals):
+        _no_points_of_thousands(with_comma)
         spaced = [[f for f in line.split() if f] for _, line in with_comma]
         if all(re.fullmatch(r"[+\-−]?\d+,\d+%?", f) for row in spaced for f in row if "," in f):
             if any(len(row) > 1 for row in spaced) and not any("." in line for _, line in written):
@@ -125,6 +126,16 @@ def _comma(written: Sequence[tuple[int, str]]) -> str | None:
             "allowed is a semicolon between columns, or a point as decimal sign."
         )
     return None
+
+
+def _no_points_of_thousands(written: Sequence[tuple[int, str]]) -> None:
+    """Refuse 1.234,5 where every line may be one number: it would be read as two."""
+    if all(re.fullmatch(r"[+\-−]?(\d+|[1-9]\d{0,2}(\.\d{3})+),\d+\s*%?", line) for _, line in written):
+        number, line = next((n, line) for n, line in written if "." in line)
+        raise EditRefused(
+            f"Line {number}: {shown(line)} may be one number or two; "
+            "allowed is a number without a sign between thousands, or a semicolon between columns."
+        )
 
 
 def _fields(line: str, mark: str | None) -> tuple[str, ...]:

@@ -191,7 +191,8 @@ class FindingsBar(QWidget):
         self.list.setAccessibleName(self.fold_title.text())
         if row >= 0:
             self.list.setCurrentRow(min(row, self.list.count() - 1))
-        self.list.setFixedHeight(min(FOLD_HEIGHT, self.list.sizeHintForRow(0) * self.list.count() + 6))
+        most = min(FOLD_HEIGHT, self.window().height() // 5)  # a small window keeps room for the paper
+        self.list.setFixedHeight(min(most, self.list.sizeHintForRow(0) * self.list.count() + 6))
         self._enable_confirm()
 
     def _add(

@@ -79,7 +79,8 @@ class Head(QWidget):
         self.title.say(project.title or self._file or "New drawing")
         revision = f"rev {project.revision}" if project.revision else ""
         unsaved = "" if self._clean else "not saved"
-        self.about.say(" · ".join(part for part in (project.place, revision, self._file, unsaved) if part))
+        file = self._file if project.title else ""  # else it is the title already
+        self.about.say(" · ".join(part for part in (project.place, revision, file, unsaved) if part))
 
 
 class Totals(QWidget):

@@ -209,7 +209,7 @@ def _crossings(room: QRectF, shown: Shown) -> int:
     limits, main = shown.drawing.limits, set(shown.routes.main)
     levels = [shown.axes.y(p) for p in (limits.low_percent, limits.high_percent)]
     crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
-    crossed += 2 * (room.bottom() > shown.axes.room.bottom() + 3)
+    crossed += 5 * (room.bottom() > shown.axes.room.bottom() + 3)  # names of nodes stand there
     inner = room.adjusted(2, 2, -2, -2)
     for curve in shown.curves:
         for stretch in curve.stretches:

@@ -165,6 +165,24 @@ def test_the_head_says_what_is_not_saved(set_up):
     assert "not saved" not in set_up.head.about.text()
 
 
+def test_the_head_says_the_name_of_the_file_once(set_up):
+    set_up.session.edit("Title", lambda d: edits.set_project(d, title="", place="Camp"))
+    set_up.head.show_file("camp.farend")
+    assert set_up.head.title.text() == "camp.farend"
+    assert "camp.farend" not in set_up.head.about.text()
+    set_up.session.edit("Title", lambda d: edits.set_project(d, title="Lake camp"))
+    assert "camp.farend" in set_up.head.about.text()
+
+
+def test_the_list_leaves_a_small_window_room_for_the_paper(qtbot):
+    made = stage(qtbot, fernhollow(TWO), size=(1024, 500))
+    made.findings.fold("findings")
+    made.findings.fold("assumed")
+    assert made.findings.list.count() > 5
+    assert made.findings.list.height() <= made.findings.window().height() / 5
+    made.solving.stop()
+
+
 @pytest.mark.parametrize("look", ["light", "dark"])
 def test_everything_paints_in_both_looks_and_small(qtbot, look):
     made = stage(qtbot, fernhollow(TWO), size=(760, 500), look=look)

@@ -70,6 +70,7 @@ def test_a_log_in_any_unit_and_a_column_that_is_chosen():
         ("1\ninf", 'Line 2: "inf" is not a number'),
         ("1e400\n2", 'Line 1: "1e400" is too large'),
         ("0,50\n1,60\n2,70", 'Line 1: "0,50" may be one number or two'),
+        ("987,5\n1.234,5", 'Line 2: "1.234,5" may be one number or two'),
         ("1 234\n987", "without spaces inside a number"),
         ("d;a;b\n1.1.20;2;3\n2.1.20;3;4", "Line 2: there are 2 columns of numbers, .* column 2 or 3"),
         ("1;;3", "Line 1: a blank is not a number"),
