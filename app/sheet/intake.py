@@ -27,8 +27,8 @@ COLUMNS = (
     Column("said", "Stated by", style=Style.LONG, width=26),
 )  # fmt: skip
 NOTE = (
-    "kA = MVA / (√3·Un), two-wire MVA / Un. Faults see the highest and the least level, motor starts the "
-    "least; a supply without one is stiff to a start, and no fault currents are worked out behind it."
+    "kA = MVA / (√3·Un), of two or split wires MVA / Un. Faults see the highest and the least level, motor "
+    "starts the least; a supply without one is stiff to a start, and no faults are worked out behind it."
 )
 
 
@@ -57,8 +57,8 @@ def _supply(subject: Subject, id: str, supply: Supply) -> Cells:
     for name, field in (("most", "fault_level_max_mva"), ("least", "fault_level_min_mva")):
         level = subject.value(id, field)
         if isinstance(level.value, float):
-            wide = 1.0 if supply.wires == "two-wire" else math.sqrt(3)
-            formula = f"{{{name}}}*1000/({subject.root(supply.node)}*{{un}})"
+            wide, root = (math.sqrt(3), "SQRT(3)*") if supply.wires == "three-phase" else (1.0, "")
+            formula = f"{{{name}}}*1000/({root}{{un}})"
             found |= {
                 name: level,
                 f"{name}_ka": Cell(level.value * 1e3 / (wide * supply.nominal_v), formula),

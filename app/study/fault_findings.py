@@ -120,9 +120,10 @@ def _boards(drawing: Drawing, table: Table[FaultState], unseen: list[str]) -> li
         shown, allowed = _apart(value, limit)
         told = f"{tell(drawing, id)} sees up to {shown} of {words}, peak {plain(state.ip_ka, 1, 'kA')}; "
         told += f"the most allowed is {allowed} ({BOARD_RULE})."
-        if margin >= 0 and to_earth(state) > limit:
-            verdict = Verdict.NEAR
-            most = plain(to_earth(state), 2, "kA")
+        earth = to_earth(state)
+        if earth > max(limit, value):
+            verdict = Verdict.NEAR if margin >= 0 else verdict
+            most = plain(earth, 2, "kA")
             told += f" A fault to earth drives more, up to {most}: check the board for it."
         found.append(Finding(RATING, verdict, (id,), told, value, limit, margin, "kA", BOARD_RULE))
     return found

@@ -151,3 +151,19 @@ def test_how_long_a_cable_bears_the_highest_fault(tmp_path: Path) -> None:
     assert float(files(plastic, tmp_path)["withstand"]["C2"]["k [A·√s/mm²]"]) == 76
     copper = files(place("hobscar_quarry"), tmp_path)["withstand"]["C1"]
     assert (copper["k [A·√s/mm²]"], copper["Bears for 1 s [kA]"]) == ("143.0", "26.455")
+
+
+def test_the_fault_level_of_two_wires_is_no_three_phase_one(tmp_path: Path) -> None:
+    two = edits.change(place("saltmere_two_wire"), "S1", fault_level_max_mva=0.46)
+    row = files(two, tmp_path)["intake"]["S1"]
+    volts = two.elements["S1"].nominal_v
+    assert float(row["so [kA]"]) == pytest.approx(0.46e3 / volts, rel=1e-12)
+    current = run(two).faults.at(two.elements["S1"].node)
+    assert current.ik2_max_ka == pytest.approx(0.46e3 / volts, rel=1e-9)
+
+
+def test_a_board_that_fails_hears_of_an_earth_fault_that_is_greater_still() -> None:
+    outcome = run(place("kettlewick_ring"))
+    board = next(f for f in outcome.findings if f.check == "fault rating")
+    assert (board.ids, board.verdict.value) == (("B3",), "fails")
+    assert "A fault to earth drives more, up to 20.12 kA" in board.sentence
