@@ -133,11 +133,3 @@ def _power(shares: list[float], wanted: float) -> float:
         mean = math.fsum(count * share**2**middle for share, count in counts.items()) / len(shares)
         low, high = (middle, high) if mean > wanted else (low, middle)
     return float(2**low)
-
-
-def to_peak(profile: Profile) -> Profile:
-    """The profile with its highest value at 100 %, as for a log in kW."""
-    highest = profile.highest
-    if not highest:
-        raise EditRefused("Highest value is 0, allowed is a profile with a peak.")
-    return replace(profile, percent=tuple(100 * value / highest for value in profile.percent))

@@ -6,15 +6,7 @@ from numpy.typing import NDArray
 from app.model.drawing import Drawing
 from app.model.figures import volts
 from app.model.kinds import Generator
-from app.study.checking import (
-    LOADING,
-    NEAR_SHARE,
-    NEAR_VOLTAGE,
-    SET_HERE,
-    Check,
-    findings_of,
-    unrated,
-)
+from app.study.checking import LOADING, NEAR_SHARE, NEAR_VOLTAGE, SET_HERE, Check, findings_of, unrated
 from app.study.outcome import BranchState, Finding, NodeState, Table, Wired
 from app.study.wire_findings import branch_words, node_words, wire_checks
 from app.study.words import tell

@@ -1,24 +1,23 @@
 """What there is to say of phases and neutral: those that are not there, and how unlike the phases are."""
 
 import math
-from collections.abc import Callable, Collection
+from collections.abc import Collection
 
 import numpy as np
 
 from app.model.drawing import Drawing
 from app.model.figures import volts
 from app.model.kinds import Line, Transformer
-from app.study.checking import NEAR_SHARE, SET_HERE, Check
+from app.study.checking import NEAR_SHARE, SET_HERE, Check, Subject
 from app.study.conductors import Conductors, conductors_of, is_wired
 from app.study.graph import NONE, Layout
 from app.study.outcome import BranchWires, Finding, NodeWires, Table, Verdict, Wired
 from app.study.unit_wires import OPEN
-from app.study.wire_words import conductor
+from app.study.wire_volts import KINDS, TO_NEXT, phase_name
 from app.study.wires import ABC, NEUTRAL, N, bits, letters
 from app.study.words import list_of, tell
 from app.study.zones import Zones
 
-Subject = Callable[[int, int, str], str]
 NO_PHASE, NO_NEUTRAL = "no such phase", "no neutral"
 OF_BANK = {
     OPEN[0]: "AB, BC or CA, the pair that no coil bridges, or all, which leaves CA open",
@@ -191,10 +190,9 @@ def node_words(drawing: Drawing, nodes: Table[NodeWires], low: bool) -> Subject:
     against = nodes.column("against")
 
     def subject(row: int, case: int, value: str) -> str:
-        phase, system = int(worst[row, case]), str(nodes.column("system")[row])
-        kind = str(against[row])
-        named = f"{'ABC'[phase]}–{'BCA'[phase]}" if kind == "next phase" else conductor("ABC"[phase], system)
-        behind = "between phases" if kind == "next phase" else f"to {kind}"
+        phase, kind = int(worst[row, case]), KINDS.index(against[row])
+        named = phase_name(phase, kind, str(nodes.column("system")[row]))
+        behind = "between phases" if kind == TO_NEXT else f"to {KINDS[kind]}"
         told = f"{tell(drawing, nodes.ids[row])} is at {value} of nominal on {named}, "
         return told + f"{volts(float(each[row, phase, case]))} {behind}"
 
