@@ -211,16 +211,22 @@ def _crossings(room: QRectF, shown: Shown) -> int:
     crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
     crossed += 5 * (room.bottom() > shown.axes.room.bottom() + 3)  # names of nodes stand there
     inner = room.adjusted(2, 2, -2, -2)
-    for curve in shown.curves:
+    for curve in (*shown.curves, *shown.phases):
         for stretch in curve.stretches:
             if stretch.node in main:
                 pairs = zip(stretch.points, stretch.points[1:], strict=False)
-                crossed += sum(inner.intersects(_box(a, b)) for a, b in pairs)
+                crossed += sum(passes(a, b, inner) for a, b in pairs)
     return crossed
 
 
-def _box(a: QPointF, b: QPointF) -> QRectF:
-    return QRectF(a, b).normalized().adjusted(-0.5, -0.5, 0.5, 0.5)
+def passes(a: QPointF, b: QPointF, room: QRectF) -> bool:
+    """True where the straight line between two points passes through a room."""
+    left, right = max(min(a.x(), b.x()), room.left()), min(max(a.x(), b.x()), room.right())
+    if left > right:
+        return False
+    run = b.x() - a.x()
+    heights = [a.y() + (b.y() - a.y()) * (x - a.x()) / run for x in (left, right)] if run else [a.y(), b.y()]
+    return min(heights) <= room.bottom() and max(heights) >= room.top()
 
 
 def _paint_handles(painter: QPainter, shown: Shown, palette: Palette) -> None:

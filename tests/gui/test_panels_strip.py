@@ -2,12 +2,13 @@
 
 import pytest
 from panels_stage import ONE, TWO, fernhollow, stage
-from PySide6.QtCore import QPoint, QPointF, Qt
+from PySide6.QtCore import QPoint, QPointF, QRectF, Qt
 from PySide6.QtTest import QTest
 
 from app.model.drawing import Drawing
 from app.model.kinds import Busbar, Cable, Load, Supply, Transformer
 from app.panels.strip_axes import ticks_m
+from app.panels.strip_paint import passes
 from app.panels.strip_routes import routes
 
 
@@ -199,3 +200,18 @@ def test_transformers_side_by_side_have_a_handle_each(qtbot):
 
 def test_a_drawing_of_trees_has_no_ties(set_up):
     assert set_up.strip.routes.ties == ()
+
+
+@pytest.mark.parametrize(
+    ("a", "b", "through"),
+    [
+        ((0, 0), (100, 50), True),  # through the middle
+        ((0, 30), (100, 80), False),  # below, though its box holds the room
+        ((0, 20), (39, 20), False),  # ends before it
+        ((50, 0), (50, 100), True),  # a step
+        ((50, 40), (50, 100), False),
+        ((100, 50), (0, 0), True),  # the other way
+    ],
+)
+def test_a_name_minds_the_line_itself_and_not_the_box_around_it(a, b, through):
+    assert passes(QPointF(*a), QPointF(*b), QRectF(40, 15, 20, 14)) is through
