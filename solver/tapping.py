@@ -8,7 +8,10 @@ import numpy as np
 
 from solver.arrays import Complex, Real
 from solver.network import Network
+from solver.windings import NEUTRAL
 from solver.wires import Units
+
+NONE = 1e-9  # of a gain, what rounding leaves of a zero sequence that does not pass
 
 
 def retapped(
@@ -46,12 +49,14 @@ def retapped(
         y[row, winding - 1] /= t**2
         if units is not None:
             own = winding - 1
+            units.series[row, own] += _star_beyond(units, row, own) * (1 / t**2 - 1)
             units.gain[row, own] /= t  # fed from the tapped winding
             units.gain[row, 1 - own] *= t
             earth = _to_earth(units, row, own)
             units.series[row, 1 - own] = earth + (units.series[row, 1 - own] - earth) * t**2
             units.iron[row, own] /= t**2
-            units.own_z[row, own, 0] *= t**2
+            around = 9 * units.star[row, own] * units.own[row, own, 0].any()
+            units.own_z[row, own, 0] = around + (units.own_z[row, own, 0] - around) * t**2
             _lead_neutral(units.gain[row])
     wires = network.wires
     if wires is not None and units is not None:
@@ -60,10 +65,18 @@ def retapped(
 
 
 def _to_earth(units: Units, row: int, own: int) -> Complex:
-    """(k, k, batch) what of the impedance of the tapped winding is that of its neutral to earth: no coil."""
+    """(k, k, batch) what of the tapped winding's ohms is no coil: from neutral or star point to earth."""
     has = 1.0 * units.has[row, own]
     ohms = units.own_z[row, own, 1] * units.own[row, own, 1].any()
-    return np.asarray(np.multiply.outer(np.outer(has, has), ohms))
+    return np.asarray(np.multiply.outer(np.outer(has, has), ohms + units.star[row, own]))
+
+
+def _star_beyond(units: Units, row: int, own: int) -> Complex:
+    """(k, k, batch) ohms of the same star point seen at the other winding, where a zero sequence passes."""
+    passed = units.gain[row, own, :NEUTRAL, :NEUTRAL].sum(axis=(0, 1)) / NEUTRAL
+    passed = np.where(np.abs(passed) > NONE * np.abs(units.gain[row, own]).max(), np.abs(passed), 0)
+    phases = np.append(np.ones(NEUTRAL), 0)
+    return np.asarray(np.multiply.outer(np.outer(phases, phases), units.star[row, own] * passed**2))
 
 
 def _lead_neutral(gain: Complex) -> None:

@@ -1,7 +1,7 @@
 """Three-phase transformers with any connection, as two-ports between phases and neutral."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, field, fields
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -50,6 +50,7 @@ class Unit:
     loose : (2, 2, k) float
     own : (2, 2, k) float
     own_z : (2, 2, batch) complex [ohm]
+    star : (2,) complex [ohm]
     """
 
     gain: Complex
@@ -59,6 +60,7 @@ class Unit:
     loose: Real
     own: Real
     own_z: Complex
+    star: Complex = field(default_factory=lambda: np.zeros(2, dtype=complex))
 
 
 def three_phase(
@@ -126,6 +128,7 @@ def three_phase(
         loose=parts[2][..., 0].real,
         own=parts[3][..., 0].real,
         own_z=parts[4],
+        star=np.array([(side.earth or 0) * (side.held and not side.neutral) for side in sides], complex),
     )
 
 
@@ -140,7 +143,7 @@ def stacked(units: Sequence[Unit]) -> Units:
     found: dict[str, Any] = {}
     for name in (f.name for f in fields(Unit)):
         rows = [getattr(unit, name) for unit in units]
-        found[name] = np.stack(rows) if name in ("has", "loose", "own") else even(rows)
+        found[name] = np.stack(rows) if name in ("has", "loose", "own", "star") else even(rows)
     return Units(**found)
 
 
@@ -164,7 +167,8 @@ def none() -> Units:
     """
     square, flat = np.zeros((0, 2, K, K, 1), dtype=complex), np.zeros((0, 2, 2, K))
     has = np.zeros((0, 2, K), dtype=bool)
-    return Units(square, square, square, has, flat, flat, np.zeros((0, 2, 2, 1), dtype=complex))
+    own_z, star = np.zeros((0, 2, 2, 1), dtype=complex), np.zeros((0, 2), dtype=complex)
+    return Units(square, square, square, has, flat, flat, own_z, star)
 
 
 def even(rows: Sequence[Complex | Real]) -> Complex:

@@ -70,6 +70,8 @@ class Units:
     own : (transformer, 2, 2, k) float, how the fed side draws each current of its own: the zero sequence of
         an earthed star beside a delta, an earthed neutral; 0 where there is none
     own_z : (transformer, 2, 2, B or 1) complex [ohm] of those
+    star : (transformer, 2) complex [ohm], in series and own_z, from the star point of each winding to earth
+        where no neutral is led out; 0 where there is none
     """
 
     gain: Complex
@@ -79,6 +81,7 @@ class Units:
     loose: Real
     own: Real
     own_z: Complex
+    star: Complex
 
 
 @dataclass(frozen=True, slots=True)
@@ -136,6 +139,7 @@ class Wires:
             "loose": (*pair, 2, k),
             "own": (*pair, 2, k),
             "own_z": (*pair, 2),
+            "star": pair,
         }
         for name, shape in wanted.items():
             array = getattr(self if name in OWN else self.units, name)

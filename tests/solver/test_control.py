@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 from networks import POWER, build
-from wired import ABCN, A, B, Bank, C, Layout, N, Unit, balanced
+from wired import ABCN, EARTH, IMPEDANCE, A, B, Bank, C, Layout, N, Unit, balanced
 from wired_nodal import solution as nodal
 
 from solver import Status, solve
@@ -82,6 +82,46 @@ def test_retapping_two_ports(one, two, clock, winding):
     plain = stacked([unit(*((t, 1) if winding == 1 else (1, t)), y / (t**2 if winding == 1 else 1)).port()])
     for name in ("gain", "series", "iron", "own_z"):
         assert np.allclose(getattr(moved, name), getattr(plain, name), rtol=1e-12)
+
+
+BEHIND_OHMS = Winding("Y", False, 5.0)
+LED_OUT = Winding("Y", True, 2.0)
+SIDES = [
+    (Winding("D"), BEHIND_OHMS, 11), (BEHIND_OHMS, Winding("D"), 1),
+    (BEHIND_OHMS, Winding("Y", False, 3.0), 0),
+    (BEHIND_OHMS, LED_OUT, 0), (LED_OUT, BEHIND_OHMS, 0), (Winding("Z", False, 5.0), Winding("Y"), 11),
+    (Winding("Y"), Winding("Z", False, 5.0), 11), (Winding("Y"), BEHIND_OHMS, 0), (Winding("D"), LED_OUT, 11),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize("winding", [1, 2])
+@pytest.mark.parametrize(("one", "two", "clock"), SIDES)
+def test_ohms_from_a_star_point_to_earth_know_no_tap(one, two, clock, winding):
+    """Whichever winding is tapped, and though no neutral is led out."""
+    z, t = 0.02 + 0.05j, np.array([0.95, 1.0, 1.075])
+
+    def unit(t1, t2):
+        return Unit(0, 1, one, two, clock, 11e3 * t1, 400.0 * t2, z * np.asarray(t2) ** 2)
+
+    layout = Layout(2, [(0, balanced(VOLTS))], [], [unit(1, 1)])
+    moved = retapped(layout.network(), [0], [winding], t[None]).wires.units
+    plain = stacked([unit(*((t, 1) if winding == 1 else (1, t))).port()])
+    for name in ("gain", "series", "own_z", "star"):
+        assert np.allclose(getattr(moved, name), getattr(plain, name), rtol=1e-12, atol=1e-15), name
+
+
+@pytest.mark.parametrize("t", [0.95, 1.05])
+def test_an_earthed_star_at_its_tap_in_closed_form(t):
+    """A phase to earth behind delta and star: I = t V / (t² z + R + Z of the load)."""
+    z, ohms, load = 0.02 + 0.05j, 5.0, 10.0
+    unit = Unit(0, 1, Winding("D"), BEHIND_OHMS, 11, 11e3, 400.0, z)
+    phase = 400 / 3**0.5
+    rows = [(1, A, EARTH, phase**2 / load, phase, IMPEDANCE)]
+    network = Layout(2, [(0, balanced(VOLTS))], [], [unit], rows).network()
+    found = solve(retapped(network, [0], [2], np.array([[t]])))
+    assert abs(found.load_current[0, A, 0]) == pytest.approx(
+        abs(t * phase / (t**2 * z + ohms + load)), rel=1e-9
+    )
 
 
 def test_it_stops_at_its_end_stop():
