@@ -211,11 +211,10 @@ def _crossings(room: QRectF, shown: Shown) -> int:
     crossed = 2 * sum(room.top() - 1 <= y <= room.bottom() + 1 for y in levels)
     crossed += 5 * (room.bottom() > shown.axes.room.bottom() + 3)  # names of nodes stand there
     inner = room.adjusted(2, 2, -2, -2)
-    for curve in (*shown.curves, *shown.phases):
-        for stretch in curve.stretches:
-            if stretch.node in main:
-                pairs = zip(stretch.points, stretch.points[1:], strict=False)
-                crossed += sum(passes(a, b, inner) for a, b in pairs)
+    drawn = [c.stretches for c in shown.curves] + [p.stretches for p in shown.phases]
+    for stretch in (s for stretches in drawn for s in stretches if s.node in main):
+        pairs = zip(stretch.points, stretch.points[1:], strict=False)
+        crossed += sum(passes(a, b, inner) for a, b in pairs)
     return crossed
 
 
