@@ -21,7 +21,7 @@ from app.study.results import Tables, tables_of
 from app.study.rings import trouble_finding
 from app.study.rise_findings import rise_findings
 from app.study.rows import Rows, rows_of
-from app.study.solved_cases import at_rest, blanked, of_solved, partly_words, spread_starts, told
+from app.study.solved_cases import at_rest, blanked, partly_words, told
 from app.study.start_findings import start_findings
 from app.study.start_table import StartTable
 from app.study.starts import start_table, starters
@@ -91,7 +91,7 @@ def _outcome(
     faulted = NO_FAULTS
     if rows is not None and solved.any():
         tables = tables if solved.all() else blanked(tables, solved)
-        starts = _starts(drawing, layout, zones, rows, solved)
+        starts = start_table(drawing, layout, zones, rows, solved) if starters(layout) else None
         faulted = faults_of(drawing, layout, zones, False)
         found = found + _judged(drawing, layout, zones, rows, tables, starts, moved, faulted, solved)
     if rows is not None and solution is not None and not solved.all():
@@ -123,16 +123,6 @@ def _outcome(
         case_status=statuses,
         supply_sides=supply_sides(layout) if layout.rings else {},
     )
-
-
-def _starts(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, solved: Flag) -> StartTable | None:
-    """Motor starts in the cases that are solved, where there are motors."""
-    if not starters(layout):
-        return None
-    if solved.all():
-        return start_table(drawing, layout, zones, rows)
-    own, own_rows = of_solved(drawing, rows, solved)
-    return spread_starts(start_table(own, layout, zones, own_rows), solved)
 
 
 def _barring(

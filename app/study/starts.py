@@ -14,6 +14,7 @@ from app.study.changers import settled
 from app.study.layout import NONE, Layout, lay_out
 from app.study.outcome import Verdict
 from app.study.rows import Rows, rows_of
+from app.study.solved_cases import of_solved, spread_starts
 from app.study.start_rows import behind, motors_of, source_impedance, without
 from app.study.start_seen import Names, start_seen
 from app.study.start_table import StartState, StartTable
@@ -42,8 +43,9 @@ def starts(drawing: Drawing) -> StartTable:
     found = structure_findings(drawing, layout, zones)
     if not layout.supplies or any(f.verdict is Verdict.BLOCKS for f in found):
         return _table(layout, [], _nothing(0, len(drawing.cases)), [])
-    rows, _, _ = settled(drawing, layout, zones, rows_of(drawing, layout, zones))
-    return start_table(drawing, layout, zones, rows)
+    rows, solution, _ = settled(drawing, layout, zones, rows_of(drawing, layout, zones))
+    solved = np.array([status is Status.SOLVED for status in solution.status])
+    return start_table(drawing, layout, zones, rows, solved)
 
 
 def starters(layout: Layout) -> list[int]:
@@ -57,17 +59,26 @@ def starters(layout: Layout) -> list[int]:
     return [i for i, a in hung if isinstance(a, Motor) and a.state != "off" and layout.live[layout.at[i]]]
 
 
-def start_table(drawing: Drawing, layout: Layout, zones: Zones, rows: Rows) -> StartTable:
+def start_table(
+    drawing: Drawing, layout: Layout, zones: Zones, rows: Rows, running: NDArray[np.bool_]
+) -> StartTable:
     """The same where the rows of the solver are known already.
 
     drawing : the drawing
     layout : its graph
     zones : nominal_v (zone,) float [V]
     rows : its rows
+    running : (case,) bool, cases that have an operating point before any start; the others have no figures
 
     Returns : StartTable, columns (motor, case)
     Source : see starts
     """
+    if not running.any():
+        return _table(layout, [], _nothing(0, len(drawing.cases)), [])
+    if not running.all():
+        own, own_rows = of_solved(drawing, rows, running)
+        table = start_table(own, layout, zones, own_rows, running[running])
+        return spread_starts(table, running)
     started, cases = starters(layout), len(drawing.cases)
     if not started:
         return _table(layout, [], _nothing(0, cases), [])

@@ -14,7 +14,7 @@ from app.model.drawing import Case, Limits, Own
 from app.model.file import save
 from app.model.kinds import Busbar, Generator, Load, Motor, Supply, Transformer
 from app.printed import printed
-from app.study import run, tap_curve
+from app.study import run, starts, tap_curve
 from app.study.outcome import Verdict
 from app.study.record import record
 from app.study.solved_cases import HOLDS_THERE
@@ -192,6 +192,10 @@ def test_a_motor_is_not_said_to_fail_to_start_where_nothing_runs():
     assert not any("cannot start" in f.sentence for f in outcome.findings)
     state = outcome.starts.at("M1", 1)
     assert (state.solved, math.isnan(state.motor_v)) == (False, True)
+    table = starts(ringed(PEAK, HEAVY))
+    for name, column in table.columns.items():
+        assert column.tobytes() == outcome.starts.column(name).tobytes()
+    assert starts(ringed(HEAVY)).ids == ()
 
 
 def test_tap_bands_pass_over_a_case_that_no_notch_solves_and_name_it():
