@@ -26,6 +26,7 @@ class Hung:
         conductor is near to two elements, so that each near end stands alone
     start : (target,) where the ends of each conductor begin in that order; runs of like far ends where it
         is empty
+    length : of those runs of like far ends where all are as long, 0 elsewhere
     target : (target,) conductors
     slot : (live · k,) where each conductor finds its current: element, elements + target, or 2 · elements for
         none; empty where some conductor is near to one element and far from another
@@ -39,6 +40,7 @@ class Hung:
     current: Complex | None
     order: Index
     start: Index
+    length: int
     target: Index
     slot: Index
 
@@ -88,7 +90,7 @@ class Hung:
         flat = out.reshape(-1, out.shape[-1])
         if self.slot.size:
             far = u if self.between.all() else np.multiply(u, self.between[:, None], drawn)
-            np.negative(_summed(far, self.start), scratch.both[count : count + self.target.size])
+            np.negative(_summed(far, self.start, self.length), scratch.both[count : count + self.target.size])
             scratch.both.take(self.slot, axis=0, out=flat, mode="clip")
             return
         out[...] = 0
@@ -146,11 +148,12 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
     stated, mix = np.conj(slots[row, near]), network.load_mix[row, :, None]
     reference = network.load_reference[row, near]
     keys = (place * k + near) * (k + 1) + far + 1
-    order = np.argsort(keys, kind="stable")
+    order = _sorted(keys)
     begun = _runs(keys[order])
 
     def total(values: Complex | Real) -> Complex:
-        return np.asarray(np.add.reduceat(values[order], begun, axis=0), dtype=np.complex128)
+        ordered = np.asarray(values[order], dtype=np.complex128)
+        return ordered if begun.size == order.size else _summed(ordered, begun)
 
     first = order[begun]
     place, near, far = place[first], near[first], far[first]
@@ -163,26 +166,37 @@ def hang(network: Network, forest: Forest) -> tuple[Hung | None, tuple[Index, Co
     between = far != EARTH
     power = total(stated * mix[:, 0])
     near, far = place * k + near, place * k + np.where(between, far, near)
-    start = _runs(far)
-    order = slot = np.zeros(0, dtype=np.intp)
+    gathered = _gathered(near, far, forest.order.size * k)
+    return Hung(place, near, far, 1.0 * between, power, current, *gathered), stamps
+
+
+def _gathered(near: Index, far: Index, conductors: int) -> tuple[Index, Index, int, Index, Index]:
+    """Order, start, length, target and slot of a Hung."""
+    start, none = _runs(far), np.zeros(0, dtype=np.intp)
     if _repeats(near) or _repeats(far[start]):
         ends = np.concatenate((near, far))
-        order = np.argsort(ends, kind="stable")
+        order = _sorted(ends)
         start = _runs(ends[order])
-        target = ends[order][start]
-    else:
-        target = far[start]
-        slot = _slots(forest.order.size * k, near, target)
-    return Hung(place, near, far, 1.0 * between, power, current, order, start, target, slot), stamps
+        return order, start, 0, ends[order][start], none
+    length = int(np.diff(start, append=far.size).max())
+    length = length if length * start.size == far.size else 0
+    return none, start, length, far[start], _slots(conductors, near, far[start])
 
 
 def _slots(size: int, near: Index, target: Index) -> Index:
+    """Where each conductor finds its current, see Hung."""
     slot = np.full(size, 2 * near.size)
     slot[near] = np.arange(near.size)
     if (slot[target] < near.size).any():
         return slot[:0]
     slot[target] = near.size + np.arange(target.size)
     return slot
+
+
+def _sorted(values: Index) -> Index:
+    """The order that sorts values from 0 on, like ones as they stand; packed with it they sort quickest."""
+    bits = values.size.bit_length()
+    return np.sort((values << bits) | np.arange(values.size)) & ((1 << bits) - 1)
 
 
 def _runs(values: Index) -> Index:
@@ -194,8 +208,13 @@ def _repeats(values: Index) -> bool:
     return bool(np.bincount(values).max() > 1)
 
 
-def _summed(values: Complex, start: Index) -> Complex:
-    """(target, batch) sums of runs; one row of values is summed up far quicker than a column."""
+def _summed(values: Complex, start: Index, length: int = 0) -> Complex:
+    """(target, batch) sums of runs; runs of one length quickest, one row of values quicker than a column."""
+    if length:
+        total = values[::length]
+        for step in range(1, length):
+            total = total + values[step::length]
+        return total
     if values.shape[-1] == 1:
         return np.asarray(np.add.reduceat(values.reshape(-1), start)[:, None])
     return np.asarray(np.add.reduceat(values, start, axis=0))

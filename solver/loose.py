@@ -50,8 +50,8 @@ def conductors(network: Network, wires: Wires, forest: Forest) -> tuple[Flag, Fl
         (network.transformer_from, wires.units.has[:, 0]),
         (network.transformer_to, wires.units.has[:, 1]),
     ):
-        row, conductor = np.nonzero(has)
-        meet[ends[row], conductor] = True
+        for conductor, some in enumerate(has.T):
+            meet[ends[some], conductor] = True
     here = meet[forest.order]
     here[forest.tie_place] = by[forest.tie_place]
     return by, here

@@ -92,7 +92,9 @@ def put(network: Network, forest: Forest) -> Placed:
         by, here = conductors(network, network.wires, forest)
         loose = find_loose(network.wires, forest, by, here)
     lines = network.line_z if network.line_z.shape[0] else np.zeros((1, *network.line_z.shape[1:]), complex)
-    z = lines[forest.feeder]
+    z = lines.take(forest.feeder, axis=0, mode="wrap")  # -1 is any: roots have none
+    if network.conductors > 1:  # column by column, as `times` reads them
+        z = np.moveaxis(np.ascontiguousarray(np.moveaxis(z, 2, 0)), 0, 2)
     z[forest.zone_start[:-1]] = 0
     if network.source_z is not None:  # a supply's own impedance leads into its root
         width = max(z.shape[-1], network.source_z.shape[-1])
