@@ -25,11 +25,16 @@ class Level(NamedTuple):
         return self.how.endswith("assumed")
 
 
+def is_single(t: Transformer) -> bool:
+    """Whether a transformer is one single-phase unit, two windings on one core."""
+    return t.build == "centre-tapped" or t.build == "as its group" and t.vector_group.startswith("I")
+
+
 def system_behind(t: Transformer, winding: int, wires: str) -> str:
     """The system at a winding of a transformer, where its other winding stands in `wires`."""
     if t.build == "centre-tapped":
         return SPLIT if winding == 2 else TWO_WIRE
-    if t.build == "as its group" and t.vector_group.startswith("I"):
+    if is_single(t):
         return TWO_WIRE
     return wires if t.build == "as its group" else THREE_PHASE
 

@@ -8,6 +8,7 @@ from app.model.checks import EditRefused, called
 from app.model.drawing import Drawing
 from app.model.fields import fields_of
 from app.model.kinds import Capacitor, Element, Generator, Line, Load, Motor, Transformer
+from app.model.levels import is_single
 from app.model.phasing import CHOICES
 
 SHARES = ("share_a_percent", "share_b_percent")
@@ -26,12 +27,6 @@ def has_phases(one: Element) -> bool:
     return "phases" in one.__struct_fields__ and matters(one, "phases")
 
 
-def is_single_phase(unit: Transformer) -> bool:
-    """One unit of its own: two windings, not six."""
-    group = taps.group(unit.vector_group)
-    return unit.build == "centre-tapped" or (group is not None and group[0] == "I")
-
-
 def matters(one: Element, field: str) -> bool:
     """Whether a field does anything, as the element stands."""
     if isinstance(one, Load) and field in SHARES:
@@ -42,7 +37,7 @@ def matters(one: Element, field: str) -> bool:
         return one.neutral in ("usual", "carried")
     if isinstance(one, Transformer):
         if field == "phases":
-            return is_single_phase(one) or one.build != "as its group"
+            return is_single(one) or one.build != "as its group"
         if field in STARS:
             return _has_star(one, STARS[field])
         if field in CHANGER:

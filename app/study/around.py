@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from app.model import assumed, taps
 from app.model.drawing import Drawing
 from app.model.kinds import Line, Supply, Transformer
-from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
+from app.model.levels import THREE_PHASE, TWO_WIRE, is_single, system_behind
 from app.study.conductors import conductors_of
 from app.study.graph import NONE, Layout, Ring, is_bare
 from app.study.trace import ring_of
@@ -112,16 +112,6 @@ def _lies_at(layout: Layout, zones: Zones, row: int, winding: int) -> float:
     volts = (*PHASORS[system][:3], 0.0, 0.0)  # the neutral, and earth as -1
     one, other = wires.ends[0][winding - 1]
     return math.degrees(cmath.phase(complex(volts[one] - volts[other])))
-
-
-def is_single(unit: Transformer) -> bool:
-    """Whether a transformer is one single-phase unit.
-
-    unit : any
-
-    Returns : bool
-    """
-    return unit.build == "centre-tapped" or unit.build == "as its group" and unit.vector_group[:1] == "I"
 
 
 def systems_by_tree(layout: Layout, zones: Zones) -> list[str]:

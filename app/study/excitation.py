@@ -79,11 +79,7 @@ def _level(
     for k, row in enumerate(layout.units):
         unit, node = layout.branches[row], at[k]
         phase = str(getattr(unit, "phases", "all")).lower()
-        if (
-            wires is not None
-            and phase in ("a", "b", "c")
-            and wires.nodes.column("system")[node] == THREE_PHASE
-        ):
+        if phase in ("a", "b", "c") and wires.nodes.column("system")[node] == THREE_PHASE:
             own = wires.nodes.column(f"{phase}_v")[node] * nominal[k] / wires.nodes.column("base_v")[node]
             found[k] = np.where(np.isnan(own), found[k], own)
     return np.asarray(found)

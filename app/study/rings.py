@@ -3,8 +3,8 @@
 from app.model.drawing import Drawing
 from app.model.figures import plain
 from app.model.kinds import Switch, Transformer
-from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE, system_behind
-from app.study.around import HOUR, bare_rings, is_single, systems_by_tree, times_rated, turned_by, units_of
+from app.model.levels import SPLIT, THREE_PHASE, TWO_WIRE, is_single, system_behind
+from app.study.around import HOUR, bare_rings, systems_by_tree, times_rated, turned_by, units_of
 from app.study.graph import Layout, Ring, is_bare
 from app.study.outcome import Finding, Verdict
 from app.study.rows import Rows

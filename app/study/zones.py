@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Load, Motor, Supply, Transformer
-from app.model.levels import THREE_PHASE, TWO_WIRE, system_behind
+from app.model.levels import THREE_PHASE, TWO_WIRE, is_single, system_behind
 from app.study.layout import NONE, Layout, arrays_of
 from app.study.outcome import Assumption, Finding, Verdict
 from app.study.wires import PER_PHASE
@@ -128,8 +128,7 @@ def _winding_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
 
 def _fits(unit: Transformer, level: float, system: str) -> list[float]:
     """Volts that a winding may be rated for at a level: those of a phase too, where it is single-phase."""
-    single = unit.build == "centre-tapped" or unit.build == "as its group" and unit.vector_group[:1] == "I"
-    if not single or system == TWO_WIRE:
+    if not is_single(unit) or system == TWO_WIRE:
         return [level]
     phase = level / PER_PHASE[system]
     if unit.phases == "all" or system != THREE_PHASE:  # its phases are those of the three-phase side
