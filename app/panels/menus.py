@@ -201,7 +201,7 @@ class Menus(QObject):
             return False
         self.window.preferences.add_recent(path)
         if warning:
-            self.dialogs.tell(warning)
+            self.dialogs.tell(f"{warning} If it is saved there meanwhile, saving here asks first.")
         return True
 
     def save(self) -> bool:

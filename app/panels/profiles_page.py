@@ -77,7 +77,7 @@ class ProfilesPage(QDialog):
         self.list.setFixedWidth(190)
         play(self.list, "list")
         self.list.currentTextChanged.connect(self._turn)
-        self.fresh, self.invent = QPushButton("New…"), QPushButton("Invented shape…")
+        self.fresh, self.invent = QPushButton("New"), QPushButton("Invented shape…")
         menu = QMenu(self.invent)
         for name, made in SHAPES.items():
             menu.addAction(f"{name}: {made.words}", partial(self.add_shape, name))

@@ -58,7 +58,7 @@ def head_tables(subject: Subject) -> list[SheetTable]:
         word: {"item": Cell(word, origin=origin), "value": text(meaning)}
         for word, origin, meaning in KINDS_OF_CELL
     }
-    title = project.title or "Untitled layout"
+    title = project.title or "Untitled drawing"
     return [
         table("head", "Head", title, (ITEM, SAYS), rows, held=0, plain=True),
         table("key", "Head", "How cells are marked", (ITEM, SAYS), key, held=0, plain=True),

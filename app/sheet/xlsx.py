@@ -171,6 +171,6 @@ def _footer(drawing: Drawing) -> str:
     def plain(text: str) -> str:
         return " ".join(shown(text).split())[:FOOTER_LONGEST].replace("&", "&&")
 
-    named = plain(project.title) or "Untitled layout"
+    named = plain(project.title) or "Untitled drawing"
     revision = f", rev {plain(project.revision)}" if project.revision else ""
     return f"&L&9{named}{revision}&C&9&A&R&9Page &P of &N"
