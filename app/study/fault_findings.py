@@ -4,7 +4,9 @@ from app.model.drawing import Drawing
 from app.model.fault_data import LOW_V
 from app.model.figures import amps, plain
 from app.model.kinds import Supply
+from app.model.levels import SPLIT
 from app.study.fault_devices import NOT_FED, Device, devices
+from app.study.fault_rows import is_stated
 from app.study.graph import Layout
 from app.study.outcome import FaultState, Finding, Table, Verdict
 from app.study.words import list_of, tell
@@ -53,12 +55,8 @@ def fault_findings(drawing: Drawing, layout: Layout, table: Table[FaultState]) -
     Returns : tuple of Finding
     Source : IEC 60364-4-41, 411.4.4 for devices; what counts as near is ours
     """
-    silent = [
-        layout.attachment_ids[row]
-        for row in layout.supplies
-        if (s := layout.attachments[row]).fault_level_max_mva is None and s.fault_level_min_mva is None  # type: ignore[attr-defined]
-    ]
-    open_ = _without_z0(drawing, layout)
+    silent = [id for id, supply in _supplies(layout) if not is_stated(supply)]
+    open_ = [id for id, supply in _supplies(layout) if _is_open(supply)]
     unseen = [id for id in drawing.nodes() if open_ and _unseen(table.at(id))]
     found = _worst(_boards(drawing, table, unseen)) + _devices(drawing, layout, table)
     if unseen:
@@ -66,14 +64,14 @@ def fault_findings(drawing: Drawing, layout: Layout, table: Table[FaultState]) -
     return tuple(found + ([_unstated(drawing, silent)] if silent else []))
 
 
-def _without_z0(drawing: Drawing, layout: Layout) -> list[str]:
-    """Supplies above 1 kV that count as unearthed because nobody stated their zero sequence."""
-    supplies = {layout.attachment_ids[row]: layout.attachments[row] for row in layout.supplies}
-    return [
-        id
-        for id, s in supplies.items()
-        if isinstance(s, Supply) and s.z0_ratio is None and s.nominal_v > LOW_V and s.wires != "split-phase"
-    ]
+def _supplies(layout: Layout) -> list[tuple[str, Supply]]:
+    ids, hung = layout.attachment_ids, layout.attachments
+    return [(ids[row], supply) for row in layout.supplies if isinstance(supply := hung[row], Supply)]
+
+
+def _is_open(supply: Supply) -> bool:
+    """Above 1 kV, and counting as unearthed because nobody stated its zero sequence."""
+    return supply.z0_ratio is None and supply.nominal_v > LOW_V and supply.wires != SPLIT
 
 
 def _unseen(state: FaultState) -> bool:
