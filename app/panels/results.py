@@ -66,6 +66,9 @@ def _states(table: Table, id: str, cases: int) -> list:
     return [table.at(id, case) for case in range(cases)]
 
 
+_degrees = partial(plain, digits=1, unit="°")
+
+
 def _node(asked: Asked, id: str) -> list[Row]:
     if id not in asked.outcome.nodes:
         return []
@@ -77,7 +80,7 @@ def _node(asked: Asked, id: str) -> list[Row]:
         row("Margin to limit", partial(_margin, asked), partial(percent, digits=2, sign=True)),
         row("Total drop", "drop_percent", partial(percent, digits=2), DROP),
         *wire_rows.evenness(asked, id),
-        row("Angle", "angle_deg", partial(plain, digits=1, unit="°")),
+        *(wire_rows.angles(asked, id, _degrees) or [row("Angle", "angle_deg", _degrees)]),
         _once(row("Route", "route_m", length)),
         *_faults(asked, id),
     ]

@@ -61,6 +61,20 @@ def highest(asked: Asked, id: str) -> list[Row]:
     return [Row("Highest", asked.cells(column, partial(percent, digits=2)), "", asked.verdict(id, HIGH))]
 
 
+def angles(asked: Asked, id: str, write: Write) -> list[Row]:
+    """The angle of the volts of each phase, where there are several."""
+    state = _first(asked.outcome, "nodes", id)
+    slots = {} if state is None else {c: f"{c.lower()}_deg" for c in phase_words.SLOTS}
+    known = {c: slot for c, slot in slots.items() if not math.isnan(getattr(state, slot))}
+    return [
+        _row(
+            asked, "nodes", id, f"Angle, {phase_words.phase_name(c, state)}", partial(_slot, slot), write, ()
+        )
+        for c, slot in known.items()
+        if len(known) > 1
+    ]
+
+
 def _against(state: Any, letter: str) -> str:
     """`A to neutral`, `A to B`, `L1 to neutral`."""
     name = phase_words.phase_name(letter, state)

@@ -7,7 +7,7 @@ from app.model.drawing import Limits
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
 from app.sheet.subject import FAIL, PASSED, Subject, limit
 from app.sheet.table import Cell, Cells, Column, Origin, SheetTable, Style, text
-from app.sheet.wires import each, greatest, listed, node_wires, redone, spread, volts
+from app.sheet.wires import degrees, each, greatest, listed, node_wires, redone, spread, volts
 from app.study.checking import margin_of
 from app.study.outcome import NodeState, NodeWires
 from app.study.wire_words import AGAINST, conductors
@@ -44,7 +44,7 @@ def phase_node_tables(subject: Subject) -> list[SheetTable]:
     bases = [Column("u_120", "U lowest, 120 V base", "V", digits=1, near="low_120", width=10)]
     figures = [
         *each(subject, Column("u", "U", "V", style=Style.VOLTS, width=9), neutral=False),
-        Column("angle", "Angle, first phase", "°", digits=1, width=9),
+        *each(subject, Column("angle", "Angle", "°", digits=1, width=8), neutral=False),
         *low_high,
         *(bases if subject.american else ()),
         NEUTRAL,
@@ -107,10 +107,10 @@ def _figures(subject: Subject, id: str, state: NodeState, wires: NodeWires, case
     lowest, highest = (f(there.values(), default=math.nan) / wires.base_v * 100 for f in (min, max))
     span = listed("u", there)
     least = greatest(span).replace("MAX", "MIN")
-    found = spread("u", there) | {
+    phases = spread("u", there) | spread("angle", degrees(wires))
+    return phases | {
         "percent": redone(state.percent, f"{least}/{{base}}*100", lowest),
         "high_percent": redone(state.high_percent, f"{greatest(span)}/{{base}}*100", highest),
-        "angle": Cell(state.angle_deg),
         "u_120": Cell(1.2 * state.percent, "1.2*{percent}"),
         "neutral": Cell(wires.neutral_v),
         "unbalance": Cell(wires.unbalance_percent),
@@ -124,7 +124,6 @@ def _figures(subject: Subject, id: str, state: NodeState, wires: NodeWires, case
         "most_unbalance": Cell(limits.unbalance_percent),
         "most_neutral": Cell(limits.neutral_v),
     }
-    return found
 
 
 def _spread(wires: NodeWires, there: dict[str, float], span: str) -> Cell:

@@ -32,6 +32,12 @@ def volts(state: NodeWires) -> dict[str, float]:
     return {letter: v for letter, v in every.items() if v == v}
 
 
+def degrees(state: NodeWires) -> dict[str, float]:
+    """Angles of the volts of the phases that are there."""
+    every = {"A": state.a_deg, "B": state.b_deg, "C": state.c_deg}
+    return {letter: angle for letter, angle in every.items() if angle == angle}
+
+
 def amps(state: BranchWires | AttachmentWires) -> dict[str, float]:
     """Amperes in the conductors that are there."""
     every = {"A": state.a_a, "B": state.b_a, "C": state.c_a, "N": state.n_a}

@@ -107,6 +107,9 @@ class NodeWires(Struct, frozen=True):
     neutral_v: float  # neutral to earth; nan where none is carried
     unbalance_percent: float  # negative over positive sequence of the volts; nan unless three phases
     spread_percent: float  # largest deviation of a line voltage from the mean of the three, over the mean
+    a_deg: float = math.nan  # angles of a_v, b_v and c_v
+    b_deg: float = math.nan
+    c_deg: float = math.nan
 
 
 class BranchWires(Struct, frozen=True):

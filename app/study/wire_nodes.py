@@ -82,6 +82,7 @@ def wire_nodes(
         "neutral_v": np.where(has_neutral, np.abs(volts[:, N]), np.nan),
         "unbalance_percent": np.where(three[:, None], unbalance, np.nan),
         "spread_percent": np.where(three[:, None], _spread(volts), np.nan),
+        **{f"{letter}_deg": np.degrees(np.angle(pairs[:, slot])) for slot, letter in enumerate("abc")},
     }
     ids = tuple(layout.node_ids)
     return Table(NodeState, ids, nodes, layout.node_row), Table(NodeWires, ids, wires, layout.node_row)

@@ -8,7 +8,7 @@ from PySide6.QtTest import QTest
 
 from app.model import edits
 from app.model.drawing import Drawing
-from app.model.figures import amps, percent, stated, volts
+from app.model.figures import amps, percent, plain, stated, volts
 from app.model.kinds import Busbar, Load, Motor, Supply, Transformer
 from app.panels.asked import Asked
 from app.panels.results import rows
@@ -125,6 +125,12 @@ def test_a_node_tells_every_phase_how_even_they_are_and_its_neutral(at):
     assert shown(at, "Unbalance") == percent(state.unbalance_percent, 2)
     assert shown(at, "Neutral to earth") == volts(state.neutral_v)
     assert shown(at, "Volts") == ""
+    for letter in "abc":
+        assert shown(at, f"Angle, {letter.upper()}") == plain(getattr(state, f"{letter}_deg"), 1, "°")
+    assert shown(at, "Angle") == ""
+    at.attention.select(("N1",))
+    assert shown(at, "Angle") == plain(at.solving.outcome.nodes.at("N1").angle_deg, 1, "°")
+    assert shown(at, "Angle, A") == ""
 
 
 def test_a_single_phase_node_has_one_line_of_volts(at):

@@ -44,6 +44,7 @@ def test_every_phase_of_a_node_has_its_volts(told: dict, solved: Outcome) -> Non
     lodge = told["busbars"]["B3"]
     wires = solved.wires.nodes.at("B3")
     assert [float(lodge[f"U {p} [V]"]) for p in "ABC"] == [wires.a_v, wires.b_v, wires.c_v]
+    assert [float(lodge[f"Angle {p} [°]"]) for p in "ABC"] == [wires.a_deg, wires.b_deg, wires.c_deg]
     assert (lodge["Conductors"], lodge["Volts"]) == ("ABCN", "to neutral")
     assert float(lodge["U lowest [% of base]"]) == pytest.approx(wires.a_v / wires.base_v * 100, rel=1e-12)
     assert float(lodge["U lowest, 120 V base [V]"]) == pytest.approx(120 * wires.a_v / wires.base_v)
@@ -172,6 +173,8 @@ def test_json_tells_every_conductor(solved: Outcome) -> None:
     told = json.loads(json.dumps(record(camp(), solved, "1"), allow_nan=False))
     assert told["node_wires"]["J2"]["a_v"] == [solved.wires.nodes.at("J2").a_v]
     assert told["node_wires"]["J2"]["b_v"] == [None]
+    assert told["node_wires"]["J2"]["a_deg"] == [solved.nodes.at("J2").angle_deg]
+    assert told["node_wires"]["J2"]["b_deg"] == [None]
     assert told["node_wires"]["J2"]["against"] == "neutral"
     assert told["branch_wires"]["C1"]["n_a"] == [solved.wires.branches.at("C1").n_a]
     assert told["attachment_wires"]["L4"]["phases"] == "BN"

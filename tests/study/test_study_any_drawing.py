@@ -162,6 +162,7 @@ def assert_alike(one, other, names, rel):
 def test_phases_that_fit_are_solved_and_turn_with_their_letters(start):
     turn = {"a": "b", "b": "c", "c": "a", "n": "n"}
     shifted = {f"{a}_{what}": f"{b}_{what}" for a, b in turn.items() for what in ("v", "a", "notch")}
+    shifted |= {f"{phase}_deg": "" for phase in "abc"}  # of A, however turned
     for seed in range(start, start + 20):
         base = sound(seed)
         outcome, other = run(base), run(turned(base))

@@ -195,12 +195,13 @@ def compare(drawing):
         phases = known.at[id][0]
         assert told.phases == "".join(sorted(phases))
         for i, letter in enumerate("ABC"):
-            got = getattr(told, f"{letter.lower()}_v")
+            size, angle = (getattr(told, f"{letter.lower()}_{what}") for what in ("v", "deg"))
+            got = size * np.exp(1j * np.radians(angle))
             here = letter in phases
             if told.against == "next phase":
-                here, want = here and "BCA"[i] in phases, abs(v[i] - v[(i + 1) % 3])
+                here, want = here and "BCA"[i] in phases, v[i] - v[(i + 1) % 3]
             else:
-                want = abs(v[i] - (v[N] if told.against == "neutral" else 0))
+                want = v[i] - (v[N] if told.against == "neutral" else 0)
             assert got == pytest.approx(want, rel=NEAR) if here else np.isnan(got), (id, letter)
         if told.against == "neutral":
             assert told.neutral_v == pytest.approx(abs(v[N]), abs=NEAR * told.base_v)
