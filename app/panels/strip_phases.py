@@ -114,7 +114,7 @@ def paint_phases(
             for run in curve.stretches:
                 if (run.node in main) is strong:
                     painter.setPen(broad if run.branch in lit else plain)
-                    painter.drawPolyline(run.points)
+                    painter.drawPolyline(list(run.points))
     for curve in curves:
         ink = QColor(palette.soft if stale else getattr(palette, COLOURS[curve.letter]))
         led = {s.node for s in curve.stretches if s.node in main}  # not where it only starts to one side
