@@ -209,15 +209,15 @@ def _margin(finding: Finding) -> str:
 
 def _assumptions(drawing: Drawing, outcome: Outcome) -> str:
     told = [
-        f"  {tell(drawing, a.id)}: {_field(drawing, a)} {_short(a.value)} {a.unit} ({a.basis})"
+        f"  {tell(drawing, a.id)}: {_field(drawing, a)} {_short(a)} ({a.basis})"
         for a in outcome.assumptions[:SHOWN_ASSUMPTIONS]
     ]
     return "Assumed, to be confirmed\n" + "\n".join([*told, *_more(outcome.assumptions)]) if told else ""
 
 
-def _short(value: float) -> str:
-    """A value that was put in, to four figures where it was worked out."""
-    return typed(round(value, short_digits(value)))
+def _short(put: Assumption) -> str:
+    """What was put in, to four figures where it was worked out, with its unit."""
+    return f"{typed(round(put.value, short_digits(put.value)))} {put.unit}".rstrip()
 
 
 def _field(drawing: Drawing, assumption: Assumption) -> str:

@@ -162,12 +162,12 @@ def _nodes(subject: Subject, year: YearOutcome) -> SheetTable:
     columns = (
         *IDENTITY,
         Column("nominal", "Un", "V", style=Style.NUMBER, digits=0),
-        Column("low", "Lowest", "V", digits=1),
+        Column("low", "Lowest", "V", style=Style.VOLTS),
         Column("low_percent", "Of Un", "%", digits=2, near="low_limit"),
         Column("low_limit", "Allowed", "%", digits=2),
         Column("low_when", "When", **WHEN),  # type: ignore[arg-type]
         Column("below", "Below it", "h", digits=0),
-        Column("high", "Highest", "V", digits=1),
+        Column("high", "Highest", "V", style=Style.VOLTS),
         Column("high_percent", "Of Un", "%", digits=2, near="high_limit"),
         Column("high_limit", "Allowed", "%", digits=2),
         Column("high_when", "When", **WHEN),  # type: ignore[arg-type]

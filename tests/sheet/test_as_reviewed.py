@@ -4,11 +4,13 @@ import csv
 import math
 from pathlib import Path
 
+import openpyxl
 import pytest
 
 from app.model import edits
 from app.model.drawing import Drawing
 from app.model.file import load
+from app.printed import printed
 from app.sheet import write
 from app.sheet.gather import gathered
 from app.sheet.measure import fits
@@ -167,3 +169,19 @@ def test_a_board_that_fails_hears_of_an_earth_fault_that_is_greater_still() -> N
     board = next(f for f in outcome.findings if f.check == "fault rating")
     assert (board.ids, board.verdict.value) == (("B3",), "fails")
     assert "A fault to earth drives more, up to 20.12 kA" in board.sentence
+
+
+def test_what_is_assumed_is_told_with_its_unit_and_no_gap_where_it_has_none() -> None:
+    drawing = place("fernhollow_pair")
+    told = printed(drawing, run(drawing)).split("Assumed, to be confirmed\n")[1].split("\n\n")[0]
+    assert "T1 step-up (T1): Z0/Z1 1 (usual of a three-limb core" in told
+    assert "least fault level 8.314 MVA (as the highest" in told
+    assert not [line for line in told.split("\n") if "  " in line.strip()]
+
+
+def test_a_year_tells_high_volts_in_kilovolts(tmp_path: Path) -> None:
+    write(place("fernhollow_year"), run(place("fernhollow_year")), tmp_path / "year.xlsx")
+    cells = [c for sheet in openpyxl.load_workbook(tmp_path / "year.xlsx") for row in sheet for c in row]
+    lowest = [c for c in cells if isinstance(c.value, float) and 10_850 < c.value < 10_900]
+    assert lowest
+    assert all("k" in c.number_format for c in lowest)
