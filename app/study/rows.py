@@ -14,7 +14,14 @@ from app.model.drawing import Drawing
 from app.model.kinds import Capacitor, Generator, Line, Load, Motor, Regulator, Switch
 from app.study.conductors import Conductors, conductors_of, is_wired
 from app.study.layout import Layout, arrays_of
-from app.study.values import held_values, line_values, load_values, shunt_values, transformer_values
+from app.study.values import (
+    held_values,
+    line_values,
+    load_values,
+    shunt_values,
+    transformer_values,
+    with_regulators,
+)
 from app.study.wires import PER_PHASE
 from app.study.zones import Zones
 from solver.network import Network
@@ -79,9 +86,8 @@ def rows_of(drawing: Drawing, layout: Layout, zones: Zones) -> Rows:
     kinds, sources = _sort(layout, drawing), np.array(layout.supplies, dtype=np.intp)
     lines, units, loads, shunts = kinds.lines, kinds.units, kinds.loads, kinds.shunts
     line_z, line_y = _lines(drawing, layout, lines, two_wire[start[lines]], nominal[start[lines]])
-    ratio, unit_z, unit_y = _with_regulators(
-        transformer_values(_of(layout.branches, np.array(layout.units, dtype=np.intp))), units
-    )
+    plates = transformer_values(_of(layout.branches, units[: len(layout.units)]))
+    ratio, unit_z, unit_y = with_regulators(plates, len(units))
     ids, cases = layout.attachment_ids, drawing.cases
     held = held_values(_of(layout.attachments, sources), _of(ids, sources), cases)
     hung = _of(layout.attachments, loads)
@@ -133,22 +139,6 @@ def _lines(
     lines = [b for b in branches if isinstance(b, Line)]
     z[real], y[real] = line_values(lines, two_wire[real], drawing.frequency_hz, nominal_v[real])
     return z, y
-
-
-def _with_regulators(
-    values: tuple[Complex, Complex, Complex], units: Index
-) -> tuple[Complex, Complex, Complex]:
-    """Transformers, and after them regulators: of ratio 1 and without impedance."""
-    ratio, z, y = values
-    more = len(units) - len(ratio)
-    if not more:
-        return values
-    none = np.zeros(more, dtype=np.complex128)
-    return (
-        np.append(ratio, none + 1),
-        np.append(z, none),
-        np.append(y, np.zeros((2, more), np.complex128), axis=1),
-    )
 
 
 def _of(elements: Sequence[Any], rows: Index) -> list[Any]:

@@ -115,6 +115,19 @@ def _equivalent(plates: Real) -> tuple[Complex, Complex, Complex]:
     return transformer.equivalent(v1, v2, z, y, clock, tap_1, tap_2, parallel)
 
 
+def with_regulators(values: tuple[Complex, Complex, Complex], count: int) -> tuple[Complex, Complex, Complex]:
+    """Transformers, and after them regulators: of ratio 1 and without impedance.
+
+    values : ratio, z and y of the transformers
+    count : of both together
+
+    Returns : ratio (count,) complex, z (count,) complex [ohm], y (2, count) complex [S]
+    """
+    ratio, z, y = values
+    none = np.zeros(count - len(ratio), dtype=np.complex128)
+    return np.append(ratio, none + 1), np.append(z, none), np.append(y, [none, none], axis=1)
+
+
 def held_values(supplies: Sequence[Supply], ids: Sequence[str], cases: Sequence[Case]) -> Complex:
     """Volts that each supply holds in each case: nominal · held % · case %, or its own % in that case.
 

@@ -14,7 +14,7 @@ from app.study.graph import Layout, arrays_of
 from app.study.leads import Leads, across
 from app.study.line_wires import line_matrices
 from app.study.unit_ports import port_of, ratio_of, through
-from app.study.values import held_values, load_values, shunt_values, transformer_values
+from app.study.values import held_values, load_values, shunt_values, transformer_values, with_regulators
 from app.study.wires import PER_PHASE, PHASORS, N
 from app.study.zones import Zones
 from solver.network import Network
@@ -118,16 +118,8 @@ def _units(
         systems = [zones.system[layout.zone[node]] for node in ends]
         ports.append(port_of(unit, wires, z[n], y[:, n]))
         ratio[n] = ratio_of(unit, wires, systems, ratio[n])
-    more = len(rows) - len(real)
-    none = np.zeros(more, dtype=np.complex128)
-    for row in rows[len(real) :]:
-        ports.append(through(conductors.branch[row]))
-    return (
-        np.append(ratio, none + 1),
-        np.append(z, none),
-        np.append(y, np.zeros((2, more), np.complex128), axis=1),
-        ports,
-    )
+    ports += [through(conductors.branch[row]) for row in rows[len(real) :]]
+    return *with_regulators((ratio, z, y), len(rows)), ports
 
 
 def loads_between(
