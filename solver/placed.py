@@ -126,8 +126,10 @@ def fed_transformers(network: Network, forest: Forest) -> tuple[Complex, Complex
     Returns : ratio (fed zone, batch) complex, impedance (fed zone, batch) complex [ohm]
     """
     rows = forest.zone_transformer[int(forest.depth_zone[1]) :]
-    back = (forest.transformer_way[rows] < 0)[:, None]
     a, z = network.transformer_ratio[rows], network.transformer_z[rows]
+    if not rows.size:
+        return a, z
+    back = (forest.transformer_way[rows] < 0)[:, None]
     return np.where(back, 1 / a, a), np.where(back, z * np.abs(a) ** 2, z)
 
 
@@ -208,7 +210,8 @@ def _admittance(network: Network, forest: Forest, stamps: tuple[Index, Complex] 
         parts.append((forest.place[network.line_from[lines]], half))
         parts.append((forest.place[network.line_to[lines]], half))
     live_units = np.flatnonzero(forest.transformer_way)
-    for side, ends in enumerate((network.transformer_from, network.transformer_to)):
+    sides = (network.transformer_from, network.transformer_to) if live_units.size else ()
+    for side, ends in enumerate(sides):
         if network.wires is not None:
             iron = network.wires.units.iron[live_units, side]
         else:
