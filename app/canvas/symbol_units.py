@@ -3,9 +3,12 @@
 After IEC 60617 and ANSI/IEEE 315 (from memory of both): an open bank is a delta or star with a limb missing.
 """
 
+import math
+
 from PySide6.QtCore import QPointF
 from PySide6.QtGui import QPainterPath
 
+from app.model.fault_data import stated_earth_ohm
 from app.model.kinds import Transformer
 
 STEPPING = "↕"  # in the variant of a transformer whose tap changer steps by itself
@@ -17,11 +20,11 @@ _BUILDS = {"centre-tapped": TAPPED, "open delta": OPEN_DELTA, "open star to open
 def variant(unit: Transformer) -> str:
     """Its vector group and the signs of all that its symbol shows besides."""
     signs = _BUILDS.get(unit.build, "") + (STEPPING if unit.regulates != "no" else "")
-    given = (unit.earth_1_ohm, unit.earth_2_ohm)
+    given = (stated_earth_ohm(unit, winding) for winding in (1, 2))
     return (
         unit.vector_group
         + signs
-        + "".join(s for s, ohm in zip(EARTHS, given, strict=True) if ohm is not None)
+        + "".join(s for s, ohm in zip(EARTHS, given, strict=True) if ohm is not None and ohm < math.inf)
     )
 
 

@@ -102,7 +102,11 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
         Annotated[
             float,
             field(
-                "Star 1 to earth", "Ω", ge=0, le=1e6, help="Blank: solid where the group has N, else open."
+                "Star 1 to earth",
+                "Ω",
+                ge=0,
+                le=1e6,
+                help="Blank: solid where the group has N, else open. 1 MΩ: not earthed.",
             ),
         ]
         | None
@@ -111,7 +115,11 @@ class Transformer(Branch, frozen=True, kw_only=True, tag="transformer"):
         Annotated[
             float,
             field(
-                "Star 2 to earth", "Ω", ge=0, le=1e6, help="Blank: solid where the group has n, else open."
+                "Star 2 to earth",
+                "Ω",
+                ge=0,
+                le=1e6,
+                help="Blank: solid where the group has n, else open. 1 MΩ: not earthed.",
             ),
         ]
         | None

@@ -1,10 +1,12 @@
 """What stands in for data that only fault currents need, and on what basis; listed only with these."""
 
+import math
 from typing import NamedTuple
 
 from app.model.assumed import NO_SOURCE
 from app.model.kinds import Element, Line, OverheadLine, Supply, Transformer
 
+OPEN_OHM = 1e6  # between a star point and earth: not earthed
 LOW_V = 1000.0  # up to here a system counts as low voltage, IEC 60038
 PLAIN_V = 300.0  # up to here one of two wires is taken for the neutral, above it may be two phases
 CABLE_HOT_DEGC, OVERHEAD_HOT_DEGC = 90.0, 80.0
@@ -90,10 +92,22 @@ def _of_supply(supply: Supply, field: str) -> Put:
     raise KeyError(field)
 
 
+def stated_earth_ohm(t: Transformer, winding: int) -> float | None:
+    """Resistance to earth that is stated of a winding; infinite from 1 MΩ, None where nothing is stated."""
+    given = t.earth_1_ohm if winding == 1 else t.earth_2_ohm
+    return math.inf if given is not None and given >= OPEN_OHM else given
+
+
 def star_earth_ohm(t: Transformer, winding: int) -> float | None:
     """Resistance between a star point and earth; None where it is not earthed."""
-    given = t.earth_1_ohm if winding == 1 else t.earth_2_ohm
+    given = stated_earth_ohm(t, winding)
     if given is not None:
-        return given
+        return given if given < math.inf else None
     mark = "N" if winding == 1 else "n"
     return 0.0 if mark in t.vector_group else None
+
+
+def corner_earth_ohm(t: Transformer) -> float | None:
+    """Resistance to earth of corner b of an open delta at winding 2; None where it is not earthed."""
+    given = stated_earth_ohm(t, 2)
+    return given if given is not None and given < math.inf else None

@@ -5,7 +5,7 @@ from collections.abc import Mapping
 
 from app.model import taps
 from app.model.drawing import Drawing
-from app.model.fault_data import star_earth_ohm
+from app.model.fault_data import corner_earth_ohm, star_earth_ohm
 from app.model.figures import level
 from app.model.kinds import Transformer
 from app.model.levels import THREE_PHASE
@@ -49,12 +49,30 @@ def earthing_findings(drawing: Drawing, layout: Layout, zones: Zones) -> list[Fi
 def unreferenced(layout: Layout) -> list[int]:
     """The zones that nothing holds to earth; of those that hang on one another only the first.
 
-    A zone is held by a supply, by an earthed star that feeds it, by any earthed star beside a delta or any
-    earthed zigzag, and by an earthed star whose other winding is an earthed star in a zone that is held.
-
     layout : the graph; its vector groups are known
 
     Returns : list of zone numbers, live ones
+    Source : see held_zones
+    """
+    reached, linked = held_zones(layout)
+    lost = []
+    for zone, head in enumerate(layout.zone_heads):
+        if zone not in reached and layout.live[head]:
+            lost.append(zone)
+            reached |= _joined(linked, {zone})
+    return lost
+
+
+def held_zones(layout: Layout) -> tuple[set[int], Mapping[int, list[int]]]:
+    """The zones that something holds to earth, and which zones are linked through two earthed stars.
+
+    A zone is held by a supply, by an earthed star that feeds it, by an electrode on the neutral of its star,
+    by any earthed star beside a delta or any earthed zigzag, and by an earthed star whose other winding is an
+    earthed star in a zone that is held.
+
+    layout : the graph; its vector groups are known
+
+    Returns : set of zone numbers; zone to the zones linked to it
     Source : IEC 60076-8:1997, 5 (from memory)
     """
     held = {layout.zone[layout.at[supply]] for supply in layout.supplies}
@@ -69,14 +87,19 @@ def unreferenced(layout: Layout) -> list[int]:
             continue
         for side, zone in ((0, one), (1, two)):
             feeds = layout.fed_by[ends[side]] == row
-            if path[1 + side] or feeds and _winding(layout, row, side)[1]:
+            if path[1 + side] or feeds and (_winding(layout, row, side)[1] or _electrode(layout, row, side)):
                 held.add(zone)
-    reached, lost = _joined(linked, held), []
-    for zone, head in enumerate(layout.zone_heads):
-        if zone not in reached and layout.live[head]:
-            lost.append(zone)
-            reached |= _joined(linked, {zone})
-    return lost
+    return _joined(linked, held), linked
+
+
+def _electrode(layout: Layout, row: int, side: int) -> bool:
+    """Whether the star point of a winding is led out to a neutral that an electrode holds."""
+    unit = _unit(layout, row)
+    group = None if unit.build != AS_GROUP else taps.group(unit.vector_group)
+    if group is None or not str(group[side]).upper().endswith("N"):
+        return False
+    zone = layout.zone[(layout.start[row], layout.end[row])[side]]
+    return any(node.earth_ohm is not None and layout.zone[n] == zone for n, node in enumerate(layout.nodes))
 
 
 def _joined(linked: Mapping[int, list[int]], first: set[int]) -> set[int]:
@@ -100,7 +123,7 @@ def _winding(layout: Layout, row: int, side: int) -> tuple[str, bool]:
     """The letter of a winding, and whether its star, zigzag or corner is earthed."""
     unit = _unit(layout, row)
     if unit.build in OPEN:
-        return "V", side == 1 and unit.earth_2_ohm is not None
+        return "V", side == 1 and corner_earth_ohm(unit) is not None
     group = taps.group(unit.vector_group)
     letter = "?" if group is None or unit.build != AS_GROUP else str(group[side])[0].upper()
     return letter, letter in "YZ" and star_earth_ohm(unit, side + 1) is not None

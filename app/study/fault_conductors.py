@@ -8,7 +8,7 @@ from msgspec import Struct
 from numpy.typing import NDArray
 
 from app.model.drawing import Drawing
-from app.model.fault_data import PLAIN_V
+from app.model.fault_data import PLAIN_V, corner_earth_ohm
 from app.model.kinds import Supply, Transformer
 from app.model.levels import TWO_WIRE
 from app.study.conductors import Conductors
@@ -192,7 +192,7 @@ class _Asked:
             if row != NONE
             and isinstance(unit := layout.branches[row], Transformer)
             and unit.build in OPEN
-            and unit.earth_2_ohm is not None
+            and corner_earth_ohm(unit) is not None
         }
         for row in layout.supplies:
             supply = layout.attachments[row]

@@ -104,7 +104,7 @@ class NodeWires(Struct, frozen=True):
     a_v: float
     b_v: float
     c_v: float
-    neutral_v: float  # neutral to earth; nan where none is carried
+    neutral_v: float  # neutral to earth; nan where none is carried, or nothing holds that side to earth
     unbalance_percent: float  # negative over positive sequence of the volts; nan unless three phases
     spread_percent: float  # largest deviation of a line voltage from the mean of the three, over the mean
     a_deg: float = math.nan  # angles of a_v, b_v and c_v

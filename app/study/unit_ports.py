@@ -1,12 +1,13 @@
 """Transformers and regulators as two-ports between phases and neutral."""
 
+import math
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.model import taps
-from app.model.fault_data import figure, star_earth_ohm
+from app.model.fault_data import corner_earth_ohm, figure, star_earth_ohm, stated_earth_ohm
 from app.model.kinds import Transformer
 from app.model.levels import SPLIT, THREE_PHASE
 from app.model.wire_data import is_star_star, zero_value
@@ -111,19 +112,20 @@ def _winding(unit: Transformer, letters: str, number: int, neutral: bool) -> Win
     return Winding(letter, star and neutral, None if earth is None else complex(earth))
 
 
-def _earth(unit: Transformer, winding: int) -> complex:
+def _earth(unit: Transformer, winding: int) -> complex | None:
     """Of a single-phase winding that feeds: solid where nothing is said."""
-    given = unit.earth_1_ohm if winding == 1 else unit.earth_2_ohm
-    return complex(given or 0.0)
+    given = stated_earth_ohm(unit, winding) or 0.0
+    return complex(given) if given < math.inf else None
 
 
 def _held(ends: tuple[int, int], unit: Transformer, winding: int, fed: int) -> tuple[int, complex] | None:
     """The neutral of the side that feeds, or that is stated, is earthed."""
-    given = unit.earth_1_ohm if winding == 1 else unit.earth_2_ohm
-    held = ends[1] == N and (given is not None or winding - 1 != fed)
-    return (N, _earth(unit, winding)) if held else None
+    earth = _earth(unit, winding)
+    held = ends[1] == N and (stated_earth_ohm(unit, winding) is not None or winding - 1 != fed)
+    return (N, earth) if held and earth is not None else None
 
 
 def _corner(unit: Transformer) -> tuple[int, complex] | None:
     """An open delta is earthed at its corner b where an impedance is given, else not at all."""
-    return None if unit.earth_2_ohm is None else (1, complex(unit.earth_2_ohm))
+    earth = corner_earth_ohm(unit)
+    return None if earth is None else (1, complex(earth))

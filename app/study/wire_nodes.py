@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from app.model.kinds import Supply
 from app.model.levels import THREE_PHASE
+from app.study.earthing import held_zones
 from app.study.flows import roles, routes_of
 from app.study.layout import Layout, arrays_of
 from app.study.leads import in_leads
@@ -25,6 +26,12 @@ THIRD = np.exp(2j * np.pi / 3)
 TO_SEQUENCE = (
     np.array([[1, 1, 1], [1, THIRD, THIRD**2], [1, THIRD**2, THIRD]]) / 3
 )  # zero, positive, negative
+
+
+def _told_to_earth(layout: Layout, three: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """(node,) whether volts to earth mean anything: not where nothing holds three phases to it."""
+    held, _ = held_zones(layout)
+    return np.array([zone in held for zone in layout.zone], dtype=bool) | ~three
 
 
 def wire_nodes(
@@ -56,7 +63,7 @@ def wire_nodes(
     percent = 100 * np.abs(pairs) / base[:, None, None]
     low, high = _least(percent), -_least(-percent)
     sequence = np.abs(np.einsum("sp,npb->nsb", TO_SEQUENCE, volts[:, :3]))
-    has_neutral = (drawn & NEUTRAL > 0)[:, None]
+    has_neutral = ((drawn & NEUTRAL > 0) & _told_to_earth(layout, three))[:, None]
     first = np.where((kind == TO_NEXT)[:, None], volts[:, 0], _least_of_first(pairs))
     nodes = {
         "live": graph.live,

@@ -164,6 +164,7 @@ class Wired:
             star = letters.endswith("N")
             out = star and (node in self.neutral or volts[node] <= 1000)
             earth = given if given is not None else 0.0 if star else None
+            earth = None if earth is not None and earth >= 1e6 else earth
             made.append(
                 Winding(letters[0], out, complex(earth) if earth is not None and letters[0] in far else None)
             )
