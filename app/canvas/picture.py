@@ -147,7 +147,8 @@ def _verdict(outcome: Outcome) -> Run:
     words = tally_words(judged)
     worst = min((f.verdict for f in judged), key=lambda v: v.rank, default=Verdict.NOTE)
     sign, style = _TALLY.get(worst, ("", Style.QUIET))
-    return Run(sign + words, style)
+    every = " (all cases)" if len(outcome.solved_cases) > 1 else ""
+    return Run(sign + words + every, style)
 
 
 _TALLY = {

@@ -112,8 +112,8 @@ def _sentence(found: list[Finding], gaps: tuple[Gap, ...], tally: Tally, done: i
     if not tally.hours:
         return gaps[0].status.value if gaps else "Nothing was solved."
     if gaps:
-        return f"Solved but for {sum(g.hours for g in gaps):g} h. {tally_words(found)}."
-    return f"Solved. {tally_words(found)}."
+        return f"Solved but for {sum(g.hours for g in gaps):g} h. Of the year: {tally_words(found).lower()}."
+    return f"Solved. Of the year: {tally_words(found).lower()}."
 
 
 def _at(most: Most, points: Points) -> Real:

@@ -42,7 +42,7 @@ def test_svg_holds_the_figures_as_text(qapp, tmp_path):
     assert any("rev B" in t for t in found)
     assert any("licensed practitioner" in t for t in found)
     assert "Case: Full load, low intake · voltage limits 94 % to 110 %" in found
-    assert "Nothing is judged" in found
+    assert "Nothing is judged (all cases)" in found
 
 
 def test_the_foot_says_how_the_checks_came_out(qapp, tmp_path):
@@ -52,7 +52,7 @@ def test_the_foot_says_how_the_checks_came_out(qapp, tmp_path):
         ({"near": ("C1",)}, "▲ Every check holds, 1 near the limit"),
     ):
         picture(TITLED, figures(TITLED, **given), tmp_path / "f.svg")
-        assert words in texts(tmp_path / "f.svg")
+        assert f"{words} (all cases)" in texts(tmp_path / "f.svg")
 
 
 def test_svg_of_another_case_and_of_no_answer(qapp, tmp_path):
