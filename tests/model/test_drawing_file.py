@@ -246,6 +246,19 @@ def test_older_files_climb_one_version_at_a_time():
     assert migrate({"farend": CURRENT}) == {"farend": CURRENT}
 
 
+def test_a_file_of_version_1_has_all_phases_and_is_saved_as_today():
+    old = b'{"farend": 1, "elements": [{"id": "J1", "kind": "joint"}, {"id": "J2", "kind": "joint"},'
+    old += b'{"id": "C1", "kind": "cable", "start": "J1", "end": "J2", "length_m": 250},'
+    old += b'{"id": "L1", "kind": "load", "node": "J2", "demand_kva": 12}]}'
+    drawing = decode(old)
+    assert (drawing.elements["C1"].phases, drawing.elements["C1"].neutral) == ("all", "usual")
+    assert drawing.elements["L1"].phases == "all"
+    text = encode(drawing).decode()
+    assert text.startswith('{\n"farend": 2,')
+    assert "phases" not in text
+    assert decode(text.encode()) == drawing
+
+
 def test_everything_a_drawing_holds_is_in_the_file():
     drawing = Drawing(
         project=Project(title="Yard", number="7", revision="B", status="as built", note="n"),
