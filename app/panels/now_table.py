@@ -62,10 +62,10 @@ class NowTable(QWidget):
     def minimumSizeHint(self) -> QSize:
         return QSize(120, self.sizeHint().height())
 
-    def event(self, event: QEvent) -> bool:
+    def changeEvent(self, event: QEvent) -> None:
+        super().changeEvent(event)
         if event.type() == QEvent.Type.FontChange:
             self.updateGeometry()
-        return super().event(event)
 
     def contextMenuEvent(self, event) -> None:
         menu = QMenu(self)

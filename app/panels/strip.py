@@ -3,8 +3,8 @@
 import math
 
 from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
-from PySide6.QtGui import QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent
-from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
+from PySide6.QtGui import QKeyEvent, QMouseEvent, QPainter, QPaintEvent
+from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from app.canvas.geometry import segment_gap
 from app.canvas.palette import font
@@ -22,6 +22,7 @@ from app.panels.strip_phases import PhaseCurve, base_of, phase_curves, system_of
 from app.panels.strip_routes import Routes, routes
 from app.panels.strip_tap import TapDrag
 from app.panels.strip_words import spoken
+from app.panels.words import plain_tip
 from app.study.outcome import Outcome
 
 HEAD = 34.0
@@ -230,15 +231,6 @@ class VoltageStrip(QWidget):
         """A node or branch in words, for the tooltip."""
         return spoken(self._session.drawing, self._outcome, self.case, id)
 
-    def event(self, event: QEvent) -> bool:
-        if isinstance(event, QHelpEvent) and event.type() == QEvent.Type.ToolTip:
-            point = QPointF(event.pos())
-            QToolTip.showText(
-                event.globalPos(), self.words(self._handle_at(point) or self._thing_at(point)), self
-            )
-            return True
-        return super().event(event)
-
     # -- hand -----------------------------------------------------------------------------------
     def mousePressEvent(self, event: QMouseEvent) -> None:
         if event.button() != Qt.MouseButton.LeftButton:
@@ -257,7 +249,9 @@ class VoltageStrip(QWidget):
             self.tap.drag(event.position().y())
             return
         handle = self._handle_at(event.position())
-        self._attention.look_at(handle or self._thing_at(event.position()))
+        met = handle or self._thing_at(event.position())
+        self._attention.look_at(met)
+        self.setToolTip(plain_tip(self.words(met)))
         self.setCursor(Qt.CursorShape.SizeVerCursor if handle else Qt.CursorShape.ArrowCursor)
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:

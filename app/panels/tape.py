@@ -1,8 +1,8 @@
 """The loss tape at the foot: where every kilowatt goes, to scale."""
 
 from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
-from PySide6.QtGui import QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent
-from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
+from PySide6.QtGui import QKeyEvent, QMouseEvent, QPainter, QPaintEvent
+from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from app.canvas.theme import Theme
 from app.live.attention import Attention
@@ -136,6 +136,7 @@ class LossTape(QWidget):
 
     def mouseMoveEvent(self, event: QMouseEvent) -> None:
         piece = self.piece_at(event.position())
+        self.setToolTip(plain_tip(self.words(piece)) if piece else "")
         self._attention.look_at(piece.ids[0] if piece and len(piece.ids) == 1 else "")
         self.setCursor(
             Qt.CursorShape.PointingHandCursor if piece and piece.ids else Qt.CursorShape.ArrowCursor
@@ -174,13 +175,6 @@ class LossTape(QWidget):
         share = percent(100 * piece.kw / self.cut.total_kw, 2)
         size = power(piece.kw) if piece.what in ("load", "export") else loss(piece.kw)
         return f"{piece.name}: {what.get(piece.what, '')} {size}, {share} of all".replace(":  ", ": ")
-
-    def event(self, event: QEvent) -> bool:
-        if isinstance(event, QHelpEvent) and event.type() == QEvent.Type.ToolTip:
-            piece = self.piece_at(QPointF(event.pos()))
-            QToolTip.showText(event.globalPos(), plain_tip(self.words(piece)) if piece else "", self)
-            return True
-        return super().event(event)
 
 
 def _two(kw: float) -> str:

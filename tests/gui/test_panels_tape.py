@@ -47,6 +47,7 @@ def test_hover_lights_the_branch_and_click_selects(set_up):
     spot = tape.rect_of(piece(tape, "copper", "T2")).center().toPoint()
     QTest.mouseMove(tape, spot)
     assert set_up.attention.hover == "T2"
+    assert "copper loss" in tape.toolTip()
     QTest.mouseClick(tape, Qt.MouseButton.LeftButton, pos=spot)
     assert set_up.attention.selection == {"T2"}
 
