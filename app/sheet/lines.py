@@ -79,23 +79,31 @@ def _entry(subject: Subject, id: str, line: Line) -> Entry:
     )
 
 
+def stated(subject: Subject, id: str, line: Line) -> Cells:
+    """What the drawing says of a line, however many of its conductors are solved."""
+    return (
+        subject.identity(id)
+        | subject.ends(id, line)
+        | {
+            "kind": text(kind_name(line)),
+            "type": given(line.type),
+            "conductor": given(line.conductor),
+            "area": subject.value(id, "area_mm2"),
+            "runs": given(line.side_by_side),
+            "length": subject.value(id, "length_m"),
+            "r20": subject.value(id, "resistance_ohm_per_km"),
+            "x": subject.value(id, "reactance_ohm_per_km"),
+            "theta": subject.value(id, "temperature_degc"),
+            "c": subject.value(id, "capacitance_uf_per_km"),
+            "iz": subject.value(id, "rating_a"),
+        }
+    )
+
+
 def _data(subject: Subject, id: str, line: Line, state: BranchState) -> Cells:
     ways = 2 if subject.two_wire(line.start) else 1
     twice = "2*" if ways == 2 else ""
-    found = subject.identity(id) | subject.ends(id, line)
-    found |= {
-        "kind": text(kind_name(line)),
-        "type": given(line.type),
-        "conductor": given(line.conductor),
-        "area": subject.value(id, "area_mm2"),
-        "runs": given(line.side_by_side),
-        "length": subject.value(id, "length_m"),
-        "r20": subject.value(id, "resistance_ohm_per_km"),
-        "x": subject.value(id, "reactance_ohm_per_km"),
-        "theta": subject.value(id, "temperature_degc"),
-        "c": subject.value(id, "capacitance_uf_per_km"),
-        "iz": subject.value(id, "rating_a"),
-    }
+    found = stated(subject, id, line)
     if is_hung(line):
         return found | _by_spacing(subject, id, state)
     found["basis"] = text("as stated")

@@ -5,11 +5,11 @@ from app.model.conductors import is_hung
 from app.model.kinds import Line, OverheadLine
 from app.model.wire_data import neutral_of, neutral_value
 from app.sheet.elements import Entry, Extreme, Plan, by_element, figure
-from app.sheet.lines import DATA, DROP, KEY, LOADING, LOSS, MARGIN, judge_loading
+from app.sheet.lines import DATA, DROP, KEY, LOADING, LOSS, MARGIN, judge_loading, stated
 from app.sheet.nodes import VERDICT
 from app.sheet.spacing import KEY as SPACING
-from app.sheet.subject import Subject, kind_name
-from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style, given, text
+from app.sheet.subject import Subject
+from app.sheet.table import Cell, Cells, Column, Origin, Ref, SheetTable, Style, text
 from app.sheet.wires import amps, each, greatest, most, node_wires, redone, spread, volts
 from app.study.outcome import BranchState, BranchWires
 from app.study.overhead_working import BASIS, working_in
@@ -93,23 +93,11 @@ def _data(subject: Subject, id: str, line: Line, ohms: tuple[float, float]) -> C
         "*(1+{alpha}*({theta}-20))*{length}/1000/{runs}",
         {"alpha": Ref("value", "constants", line.conductor)},
     )
-    found = subject.identity(id) | subject.ends(id, line)
-    found |= {
-        "kind": text(kind_name(line)),
+    found = stated(subject, id, line) | {
         "has": text(conductors(has, system)),
         "neutral": text(neutral_kind(subject, line)),
-        "type": given(line.type),
-        "conductor": given(line.conductor),
-        "area": subject.value(id, "area_mm2"),
-        "runs": given(line.side_by_side),
-        "length": subject.value(id, "length_m"),
-        "r20": subject.value(id, "resistance_ohm_per_km"),
-        "x": subject.value(id, "reactance_ohm_per_km"),
-        "theta": subject.value(id, "temperature_degc"),
-        "c": subject.value(id, "capacitance_uf_per_km"),
-        "iz": subject.value(id, "rating_a"),
         "r": Cell(ohms[0], "{r20}" + hot, size),
-    }  # fmt: skip
+    }
     found["basis"] = text("as stated")
     if isinstance(line, OverheadLine) and is_hung(line):
         found["x"] = Cell(working_in(subject.drawing, line).z.imag, "{x1}", {"x1": Ref("x1", SPACING, id)})
