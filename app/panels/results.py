@@ -167,7 +167,7 @@ def _transformer(asked: Asked, id: str) -> list[Row]:
         *wire_rows.of_leads(asked, id),
     ]
     if low in asked.outcome.nodes:
-        made.append(_row(asked, "nodes", low, "Volts, lower side", _voltage, volts, VOLTAGE))
+        made.append(_row(asked, "nodes", low, "Lower side", _voltage, volts, VOLTAGE))
     if element.regulates != "no":
         made.append(_stands(asked, id, element.notch_percent))
     return made + [

@@ -19,6 +19,8 @@ from app.panels.words import LEFT, RIGHT
 CENTRE = Qt.AlignmentFlag.AlignHCenter | Qt.AlignmentFlag.AlignVCenter
 HANDLE = 4.6
 
+BEFORE = "before the drag"
+
 
 class Curve(Struct, frozen=True):
     """One case on the strip."""
@@ -78,7 +80,7 @@ def paint_strip(painter: QPainter, shown: Shown, palette: Palette) -> None:
         if case != shown.case:
             _name_curve(painter, curve, shown, palette.soft, names)
     if shown.before is not None:
-        _paint_before(painter, shown.before, shown, palette)
+        _paint_before(painter, shown.before, shown, palette, names)
     _paint_curve(painter, shown, palette)
     _paint_handles(painter, shown, palette)
     _paint_names(painter, shown, palette)
@@ -131,7 +133,10 @@ def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, 
     _polyline(painter, curve.stretches, set(shown.routes.main))
 
 
-def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palette) -> None:
+def _paint_before(
+    painter: QPainter, curve: Curve, shown: Shown, palette: Palette, names: list[QRectF]
+) -> None:
+    """The curve as it was, and its name where no other stands."""
     painter.setPen(QPen(palette.tap, 1.2, Qt.PenStyle.DotLine))
     _polyline(painter, curve.stretches, set(shown.routes.main))
     end = curve.nodes.get(shown.routes.main[-1]) if shown.routes.main else None
@@ -140,9 +145,12 @@ def _paint_before(painter: QPainter, curve: Curve, shown: Shown, palette: Palett
         return
     painter.setFont(font(7.5))
     painter.setPen(palette.soft)
-    below = end.y() > now.y()
-    room = QRectF(end.x() - 150, end.y() + (1 if below else -15), 150, 14)
-    painter.drawText(room, int(RIGHT), "before the drag")
+    wide = QFontMetricsF(painter.font()).horizontalAdvance(BEFORE) + 2
+    sides = (1, -15) if end.y() > now.y() else (-15, 1)
+    rooms = [QRectF(end.x() - wide, end.y() + dy, wide, 14) for dy in sides]
+    room = next((r for r in rooms if not any(r.intersects(n) for n in names)), None)
+    if room is not None:
+        painter.drawText(room, int(RIGHT), BEFORE)
 
 
 def _paint_curve(painter: QPainter, shown: Shown, palette: Palette) -> None:

@@ -205,7 +205,7 @@ def test_results_of_a_transformer(set_up):
     assert cells["Loading"] == (f"{state.loaded_percent:.1f} %",)
     assert cells["Copper loss"] == (f"{state.copper_kw:.2f} kW",)
     node = set_up.solving.outcome.nodes.at("B2")
-    assert cells["Volts, lower side"] == (f"{node.voltage_v:.1f} V",)
+    assert cells["Lower side"] == (f"{node.voltage_v:.1f} V",)
 
 
 def test_card_and_board_tell_the_same_power_where_it_runs_back(qtbot):
