@@ -18,7 +18,6 @@ from app.panels.words import LEFT, RIGHT
 
 CENTRE = Qt.AlignmentFlag.AlignHCenter | Qt.AlignmentFlag.AlignVCenter
 HANDLE = 4.6
-
 BEFORE = "before the drag"
 
 
@@ -136,7 +135,7 @@ def _paint_other_case(painter: QPainter, curve: Curve, case: int, shown: Shown, 
 def _paint_before(
     painter: QPainter, curve: Curve, shown: Shown, palette: Palette, names: list[QRectF]
 ) -> None:
-    """The curve as it was, and its name where no other stands."""
+    """The curve as it was, and its name where nothing else is."""
     painter.setPen(QPen(palette.tap, 1.2, Qt.PenStyle.DotLine))
     _polyline(painter, curve.stretches, set(shown.routes.main))
     end = curve.nodes.get(shown.routes.main[-1]) if shown.routes.main else None
@@ -148,7 +147,8 @@ def _paint_before(
     wide = QFontMetricsF(painter.font()).horizontalAdvance(BEFORE) + 2
     sides = (1, -15) if end.y() > now.y() else (-15, 1)
     rooms = [QRectF(end.x() - wide, end.y() + dy, wide, 14) for dy in sides]
-    room = next((r for r in rooms if not any(r.intersects(n) for n in names)), None)
+    free = (r for r in rooms if not _crossings(r, shown) and not any(r.intersects(n) for n in names))
+    room = next(free, None)
     if room is not None:
         painter.drawText(room, int(RIGHT), BEFORE)
 
